@@ -1,0 +1,4 @@
+//! Bytes to checked values and back: the only floor that touches files.
+
+pub mod raster;
+pub mod wind_table;

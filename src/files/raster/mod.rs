@@ -1,0 +1,5 @@
+//! Raster files, read by window and level.
+
+mod bands;
+
+pub use bands::Bands;

@@ -1,0 +1,93 @@
+//! Wind records as text: how a table is to be read, guessed first and then the user's to edit.
+
+use serde::{Deserialize, Serialize};
+
+/// How to read a wind file. Columns are counted from 0.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct WindImport {
+    /// `','`, `';'`, `'\t'`, or `' '` for any run of white space.
+    pub delimiter: char,
+    /// Lines before the first row of data.
+    pub header_lines: usize,
+    pub layout: WindLayout,
+    pub speed_unit: SpeedUnit,
+    /// Whether directions say where the wind comes from (the rule) or goes to.
+    pub direction: DirectionSense,
+    /// Numbers that stand for "no value" in the speed or direction column.
+    pub missing: Vec<f64>,
+    /// What direction 0 (with 360 = north) stands for.
+    pub zero_direction: ZeroDirection,
+}
+
+/// What the columns hold.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+#[serde(rename_all = "lowercase", deny_unknown_fields)]
+pub enum WindLayout {
+    /// One row a time. `time` lists the columns that together make the time stamp, in the order
+    /// year, month, day, hour, minute, or one column with a whole date or date and time, or two
+    /// with date and time of day; empty when the record has no clock.
+    Series { time: Vec<usize>, speed: usize, direction: usize },
+    /// One row a sector: its azimuth (or compass point) in column `sector`, then one column of
+    /// frequencies (percent or counts) for each speed class [low, high), in the speed unit.
+    Frequencies { sector: usize, classes: Vec<SpeedClass> },
+}
+
+/// A column of a frequency table.
+#[derive(Clone, Copy, Debug, PartialEq, Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct SpeedClass {
+    pub column: usize,
+    pub low: f64,
+    pub high: f64,
+}
+
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
+#[serde(rename_all = "lowercase")]
+pub enum SpeedUnit {
+    #[serde(rename = "m/s")]
+    MetrePerSecond,
+    #[serde(rename = "km/h")]
+    KilometrePerHour,
+    #[serde(rename = "mph")]
+    MilePerHour,
+    #[serde(rename = "knot")]
+    Knot,
+}
+
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
+#[serde(rename_all = "lowercase")]
+pub enum DirectionSense {
+    From,
+    Toward,
+}
+
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
+#[serde(rename_all = "lowercase")]
+pub enum ZeroDirection {
+    /// 0 is north, like 360.
+    North,
+    /// 0 is calm or unknown; north is coded 360.
+    NoDirection,
+}
+
+impl SpeedUnit {
+    /// Metres per second in one unit. Exact: international mile and nautical mile.
+    pub fn metres_per_second(self) -> f64 {
+        match self {
+            Self::MetrePerSecond => 1.0,
+            Self::KilometrePerHour => 1.0 / 3.6,
+            Self::MilePerHour => 0.447_04,
+            Self::Knot => 1852.0 / 3600.0,
+        }
+    }
+
+    pub fn label(self) -> &'static str {
+        match self {
+            Self::MetrePerSecond => "m/s",
+            Self::KilometrePerHour => "km/h",
+            Self::MilePerHour => "mph",
+            Self::Knot => "knot",
+        }
+    }
+}

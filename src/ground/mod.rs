@@ -1,0 +1,28 @@
+//! The words every floor uses: angles, grids, bodies, places, shapes, running work, seeds,
+//! cautions, and the records that say which method made a number and who published it.
+
+mod angle;
+mod body;
+mod caution;
+mod flow;
+mod grid;
+mod method;
+mod place;
+mod projection;
+mod seed;
+mod shape;
+mod wind_record;
+mod work;
+
+pub use angle::{Axis, Azimuth};
+pub use body::{Air, Body, BodyShape};
+pub use caution::Caution;
+pub use flow::SandFlow;
+pub use grid::Grid;
+pub use method::{Method, Read, Source, Symbol};
+pub use place::{Affine, Frame, LengthUnit, LocalFrame, Place, PlaceError};
+pub use projection::{LonLat, Projection, ProjectionError};
+pub use seed::Seed;
+pub use shape::{Bounds, Point, Polygon, Polyline};
+pub use wind_record::{WindRecord, WindSample};
+pub use work::{Progress, Stopped, Work};

@@ -1,0 +1,2 @@
+//! Ventifact.
+fn main() {}

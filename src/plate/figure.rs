@@ -1,0 +1,76 @@
+//! A figure: drawing items in millimetres, y down, from the upper left corner.
+
+use std::sync::Arc;
+
+use crate::ground::Point;
+
+/// sRGB with straight alpha.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Rgba(pub [u8; 4]);
+
+/// A line of `width_mm`, solid or dashed (on, off in mm).
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Stroke {
+    pub color: Rgba,
+    pub width_mm: f64,
+    pub dash_mm: Option<[f64; 2]>,
+}
+
+pub type Fill = Rgba;
+
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum TextAnchor {
+    Start,
+    Middle,
+    End,
+}
+
+/// One thing to draw, in order.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Item {
+    /// Straight segments through the points.
+    Path {
+        points: Vec<Point>,
+        closed: bool,
+        fill: Option<Fill>,
+        stroke: Option<Stroke>,
+    },
+    Circle {
+        centre: Point,
+        radius_mm: f64,
+        fill: Option<Fill>,
+        stroke: Option<Stroke>,
+    },
+    /// One line of text; `at` is the anchor on the baseline; `turn_deg` clockwise about it.
+    Text {
+        at: Point,
+        text: String,
+        size_mm: f64,
+        bold: bool,
+        color: Rgba,
+        anchor: TextAnchor,
+        turn_deg: f64,
+    },
+    /// RGBA pixels, row by row, stretched over the box.
+    Image {
+        min: Point,
+        max: Point,
+        width: usize,
+        height: usize,
+        rgba: Arc<[u8]>,
+    },
+    /// Items clipped to a box.
+    Clip {
+        min: Point,
+        max: Point,
+        items: Vec<Item>,
+    },
+}
+
+/// A page or a part of one.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Figure {
+    pub width_mm: f64,
+    pub height_mm: f64,
+    pub items: Vec<Item>,
+}

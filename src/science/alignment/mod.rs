@@ -1,0 +1,6 @@
+//! The alignment family.
+
+use crate::ground::Method;
+
+/// The methods of this family.
+pub const METHODS: &[&Method] = &[];

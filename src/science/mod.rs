@@ -1,0 +1,14 @@
+//! The methods, one a file, families side by side. A family uses no other but `axial`.
+
+pub mod alignment;
+pub mod axial;
+pub mod orientation;
+pub mod scene;
+pub mod wind;
+
+use crate::ground::Method;
+
+/// Every method of the program, in the order of the reasoning: trend, spacing, statistics, wind, verdict.
+pub fn methods() -> Vec<&'static Method> {
+    [orientation::METHODS, axial::METHODS, wind::METHODS, alignment::METHODS].concat()
+}

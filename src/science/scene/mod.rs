@@ -1,0 +1,1 @@
+//! Synthetic ground and wind with known truth: for the demo, for tests, and for injection and recovery.

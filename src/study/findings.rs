@@ -1,0 +1,257 @@
+//! What the executor returns: per patch the trend, the spacing, the verdicts, the sentence, and the
+//! evidence behind each, so that window, plates and tables draw from one place.
+//!
+//! Angles are true azimuths. Lengths are in metres, or in pixels where the raster has no ground
+//! size; `PatchFinding::unit` says which.
+
+use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
+
+use super::Id;
+
+/// All results of one run.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Findings {
+    /// SHA-256 of the sheet that made them, hex.
+    pub sheet_fingerprint: String,
+    pub rasters: Vec<RasterFinding>,
+    pub winds: Vec<WindFinding>,
+    pub patches: Vec<PatchFinding>,
+    /// What failed, by name; everything else is complete.
+    pub failures: Vec<Failure>,
+}
+
+#[derive(Clone, Debug, PartialEq)]
+pub struct Failure {
+    /// `"patch Long dunes"`, `"raster north.tif"`.
+    pub what: String,
+    pub why: String,
+}
+
+/// What a raster is, as used.
+#[derive(Clone, Debug, PartialEq)]
+pub struct RasterFinding {
+    pub id: Id,
+    pub name: String,
+    pub path: String,
+    pub width: usize,
+    pub height: usize,
+    pub bands: usize,
+    pub sample: String,
+    /// Ground size of the centre pixel; `None` in pixel units.
+    pub pixel_m: Option<[f64; 2]>,
+    pub body: String,
+    /// Projection definition, or a phrase that says there is none.
+    pub projection: String,
+    pub nodata: Option<f64>,
+    /// Valid share of all pixels at the level looked at; `None` when not counted.
+    pub valid_fraction: Option<f64>,
+    pub cautions: Vec<Caution>,
+}
+
+/// Everything about one patch.
+#[derive(Clone, Debug, PartialEq)]
+pub struct PatchFinding {
+    pub id: Id,
+    pub name: String,
+    pub raster: Id,
+    /// Fingerprint of all that made this finding; differs from the sheet's when out of date.
+    pub fingerprint: String,
+    pub unit: LengthUnit,
+    pub area: f64,
+    pub valid_fraction: f64,
+    pub centre: Option<LonLat>,
+    pub trend: TrendFinding,
+    pub spectrum: SpectrumFinding,
+    pub verdicts: Vec<VerdictFinding>,
+    /// One plain sentence with uncertainty and caveat.
+    pub sentence: String,
+    pub cautions: Vec<Caution>,
+}
+
+/// The trend from the structure tensor.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct TrendFinding {
+    /// Whether a preferred trend is claimed at the sheet's level.
+    pub defined: bool,
+    /// The mean axis; `None` whenever `defined` is false.
+    pub axis: Option<Axis>,
+    /// Half width of the 95 % interval, degrees (axial); `None` when the interval is all axes.
+    pub ci95_half_deg: Option<f64>,
+    /// Which interval: `"block bootstrap"` or `"effective n"`.
+    pub ci95_source: &'static str,
+    /// Of the doubled angle, in [0, 1].
+    pub resultant_length: f64,
+    /// κ of the doubled angle, and which estimator.
+    pub kappa_doubled: Option<f64>,
+    /// Axial standard deviation, degrees.
+    pub spread_deg: Option<f64>,
+    /// Nodes that passed the noise floor, and all nodes looked at.
+    pub n: usize,
+    pub n_all: usize,
+    pub n_eff: f64,
+    /// e-folding length of the trend field, in `unit`.
+    pub correlation_length: Option<f64>,
+    pub rayleigh_p: Option<f64>,
+    pub modes: Vec<ModeFinding>,
+    pub nodes: Vec<Node>,
+    /// Share of weight per bin of `rose_bin_deg`, from axis 0°.
+    pub rose: Vec<f64>,
+    pub rose_bin_deg: f64,
+    /// Kernel density of axes at every degree 0..180 (per degree of axis).
+    pub density: Vec<f64>,
+    /// Scales used, in pixels.
+    pub gradient_scale_px: f64,
+    pub integration_scale_px: f64,
+    pub node_step_px: f64,
+    /// The coherence a node had to pass.
+    pub coherence_floor: f64,
+}
+
+/// One component of the mixture.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct ModeFinding {
+    pub axis: Axis,
+    pub weight: f64,
+    pub kappa_doubled: f64,
+}
+
+/// A place where the trend was measured.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Node {
+    /// Full-resolution pixel coordinates.
+    pub at: Point,
+    pub axis: Axis,
+    pub coherence: f64,
+    /// Passed the noise floor.
+    pub significant: bool,
+}
+
+/// Dominant spacing and trend from windowed spectra.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct SpectrumFinding {
+    /// Whether a peak passed the test.
+    pub defined: bool,
+    pub axis: Option<Axis>,
+    pub axis_ci95_half_deg: Option<f64>,
+    /// In `PatchFinding::unit`.
+    pub spacing: Option<f64>,
+    pub spacing_ci95: Option<[f64; 2]>,
+    /// Global p of the strongest peak.
+    pub p: Option<f64>,
+    /// Axial angular spread of the peak, degrees.
+    pub spread_deg: Option<f64>,
+    pub windows: usize,
+    pub windows_with_peak: usize,
+    pub window_px: usize,
+    /// Wavelengths per window.
+    pub cycles: Option<f64>,
+    /// Mean log₁₀(power / background), frequency origin in the middle, for show.
+    pub picture: Option<SpectrumPicture>,
+    /// (wavelength in `unit`, power / background) along the peak's direction ± 15°.
+    pub profile: Vec<[f64; 2]>,
+}
+
+/// A north-up spectrum: x = east frequency, y = −north frequency, centre = 0.
+#[derive(Clone, Debug, PartialEq)]
+pub struct SpectrumPicture {
+    pub log_ratio: Grid<f32>,
+    /// Frequency at the right and upper edge, cycles per `unit`.
+    pub edge_frequency: f64,
+}
+
+/// A wind record after quality control, and the sand it moves.
+#[derive(Clone, Debug, PartialEq)]
+pub struct WindFinding {
+    pub id: Id,
+    pub name: String,
+    pub rows: usize,
+    pub used: usize,
+    pub calm: usize,
+    /// What was set aside, and why: code, count, text naming the first lines.
+    pub set_aside: Vec<SetAside>,
+    /// (first, last) seconds since 1970, in the record's clock.
+    pub span: Option<[i64; 2]>,
+    pub interval_s: Option<f64>,
+    /// Drift potential by the Earth practice in knots (vector units); `None` off Earth.
+    pub fryberger: Option<DriftFinding>,
+    /// By the sheet's transport law and threshold.
+    pub flux: DriftFinding,
+    pub law: String,
+    pub threshold_ustar: f64,
+    pub threshold_speed_at_height: f64,
+    /// Sand flow by 5° sectors of direction TOWARD, in the flux unit, for roses and theories.
+    pub rose: Vec<SandFlow>,
+    pub seasons: Vec<SeasonFinding>,
+    pub cautions: Vec<Caution>,
+}
+
+#[derive(Clone, Debug, PartialEq)]
+pub struct SetAside {
+    pub code: &'static str,
+    pub count: usize,
+    pub text: String,
+}
+
+/// Totals of a record.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct DriftFinding {
+    /// `"vector units (knots)"` or `"kg/m/yr"`.
+    pub unit: &'static str,
+    /// Sum over all directions: drift potential or gross flux.
+    pub total: f64,
+    /// Length of the vector sum.
+    pub resultant: f64,
+    /// resultant / total; `None` when total is 0.
+    pub ratio: Option<f64>,
+    /// Where the sand goes; `None` when there is none.
+    pub toward: Option<Azimuth>,
+    /// 95 % bootstrap half width of `toward`, degrees, and interval of the ratio.
+    pub toward_ci95_half_deg: Option<f64>,
+    pub ratio_ci95: Option<[f64; 2]>,
+}
+
+#[derive(Clone, Debug, PartialEq)]
+pub struct SeasonFinding {
+    /// `"Dec–Feb"`.
+    pub name: &'static str,
+    pub drift: DriftFinding,
+}
+
+/// A patch judged by one wind record.
+#[derive(Clone, Debug, PartialEq)]
+pub struct VerdictFinding {
+    pub winds: Id,
+    pub winds_name: String,
+    /// Why there is no verdict; then the rest is empty.
+    pub refused: Option<String>,
+    pub toward: Option<Azimuth>,
+    pub ratio: Option<f64>,
+    pub obliquity_deg: Option<f64>,
+    pub obliquity_ci95_deg: Option<[f64; 2]>,
+    /// Longitudinal, oblique, transverse.
+    pub probabilities: Option<[f64; 3]>,
+    /// The same for a random axis, so that probability can be read as a ratio.
+    pub class_priors: [f64; 3],
+    pub theories: Vec<TheoryFinding>,
+    /// (T_max − T_min)/(T_max + T_min) of the regime.
+    pub alignment_strength: Option<f64>,
+    pub cautions: Vec<Caution>,
+}
+
+#[derive(Clone, Debug, PartialEq)]
+pub struct TheoryFinding {
+    pub name: &'static str,
+    pub method: &'static str,
+    /// Mean predicted axis; `None` for the random reference or when undefined.
+    pub axis: Option<Axis>,
+    /// Other axes that tie with it.
+    pub ties: Vec<Axis>,
+    /// Axial standard deviation of the bootstrap cloud, degrees.
+    pub spread_deg: Option<f64>,
+    pub prior: f64,
+    pub posterior: f64,
+    /// ln of the Bayes factor against a random axis.
+    pub ln_bayes_factor: f64,
+    /// Predicted obliquities (degrees from the resultant) of the bootstrap draws, thinned for show.
+    pub cloud_deg: Vec<f32>,
+}

@@ -1,0 +1,171 @@
+//! The sheet: everything the user decided, as plain data. It is what is saved and undone.
+
+use std::path::PathBuf;
+
+use serde::{Deserialize, Serialize};
+
+use crate::files::raster::Bands;
+use crate::files::wind_table::WindImport;
+use crate::ground::{Azimuth, Body, Polygon, Seed};
+
+use super::Settings;
+
+/// The saved document.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct Sheet {
+    pub title: String,
+    #[serde(default, skip_serializing_if = "String::is_empty")]
+    pub notes: String,
+    pub seed: Seed,
+    #[serde(default)]
+    pub rasters: Vec<RasterEntry>,
+    #[serde(default)]
+    pub patches: Vec<Patch>,
+    #[serde(default)]
+    pub winds: Vec<WindEntry>,
+    #[serde(default)]
+    pub settings: Settings,
+}
+
+/// Names a raster, patch or wind record within one sheet; never reused.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize, Deserialize)]
+#[serde(transparent)]
+pub struct Id(pub u32);
+
+/// A raster of the study and what the user said about it.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct RasterEntry {
+    pub id: Id,
+    pub name: String,
+    /// In memory absolute or relative to the working folder; in the file relative to the sheet.
+    pub path: PathBuf,
+    #[serde(default)]
+    pub bands: Bands,
+    #[serde(default)]
+    pub kind: ImageKind,
+    #[serde(default)]
+    pub placement: Placement,
+    #[serde(default)]
+    pub tone: Tone,
+    /// Radar look direction or sun azimuth (where the light comes from), when known.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub light_from: Option<Azimuth>,
+}
+
+/// What the user adds where the file is silent (or wrong).
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct Placement {
+    /// Ground size of a pixel (x, y), metres; replaces any georeference.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub pixel_m: Option<[f64; 2]>,
+    /// Azimuth of image-up for rasters without georeference; north when absent.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub north_deg: Option<f64>,
+    /// The body the raster lies on: replaces name, gravity and air, and the shape where the file
+    /// has none.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub body: Option<Body>,
+}
+
+/// What the pixels are, as far as the methods care.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
+#[serde(rename_all = "lowercase")]
+pub enum ImageKind {
+    /// Brightness from light; used as it is.
+    #[default]
+    Optical,
+    /// Radar backscatter with speckle; the logarithm is used.
+    Radar,
+    /// Heights in metres.
+    Elevation,
+}
+
+/// How the raster is shown; never touches a number.
+#[derive(Clone, Copy, Debug, PartialEq, Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct Tone {
+    /// Percentiles of valid pixels shown black and white.
+    pub low_percent: f64,
+    pub high_percent: f64,
+    pub gamma: f64,
+    #[serde(default)]
+    pub inverted: bool,
+}
+
+impl Default for Tone {
+    fn default() -> Self {
+        Self { low_percent: 1.0, high_percent: 99.0, gamma: 1.0, inverted: false }
+    }
+}
+
+/// A region the user outlined, in pixel coordinates of its raster.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct Patch {
+    pub id: Id,
+    pub name: String,
+    pub raster: Id,
+    pub outline: Polygon,
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub tags: Vec<String>,
+    /// The wind record to judge it by; all records of the sheet when absent.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub wind: Option<Id>,
+}
+
+/// A wind record of the study and how to read it.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct WindEntry {
+    pub id: Id,
+    pub name: String,
+    pub path: PathBuf,
+    pub import: WindImport,
+    /// Height of the anemometer above ground, m.
+    pub height_m: f64,
+    /// Aerodynamic roughness of the ground, m.
+    pub roughness_m: f64,
+    /// The body whose air and gravity apply; Earth when absent.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub body: Option<Body>,
+}
+
+impl Sheet {
+    pub fn empty(title: impl Into<String>) -> Self {
+        Self {
+            title: title.into(),
+            notes: String::new(),
+            seed: Seed(1),
+            rasters: Vec::new(),
+            patches: Vec::new(),
+            winds: Vec::new(),
+            settings: Settings::default(),
+        }
+    }
+
+    /// An id no entry of this sheet has.
+    pub fn fresh_id(&self) -> Id {
+        let used = self
+            .rasters
+            .iter()
+            .map(|r| r.id)
+            .chain(self.patches.iter().map(|p| p.id))
+            .chain(self.winds.iter().map(|w| w.id));
+        Id(used.max().map_or(1, |Id(n)| n + 1))
+    }
+
+    pub fn raster(&self, id: Id) -> Option<&RasterEntry> {
+        self.rasters.iter().find(|r| r.id == id)
+    }
+
+    pub fn patch(&self, id: Id) -> Option<&Patch> {
+        self.patches.iter().find(|p| p.id == id)
+    }
+
+    pub fn wind(&self, id: Id) -> Option<&WindEntry> {
+        self.winds.iter().find(|w| w.id == id)
+    }
+}

@@ -1,0 +1,1 @@
+//! The engine as a whole: guards, properties, hostile files, the command line.

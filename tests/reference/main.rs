@@ -1,0 +1,1 @@
+//! Numbers from outside the project, each with its source and tolerance.

@@ -1,0 +1,1 @@
+//! The window, driven by role and label, and pictured by the CPU painter.
