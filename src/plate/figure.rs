@@ -25,6 +25,9 @@ pub enum TextAnchor {
     End,
 }
 
+/// Reach of a text halo beyond the letters, in text sizes.
+pub const HALO: f64 = 0.14;
+
 /// One thing to draw, in order.
 #[derive(Clone, Debug, PartialEq)]
 pub enum Item {
@@ -42,6 +45,8 @@ pub enum Item {
         stroke: Option<Stroke>,
     },
     /// One line of text; `at` is the anchor on the baseline; `turn_deg` clockwise about it.
+    /// `halo` is the colour of an outline under the letters, reaching [`HALO`] × `size_mm` beyond
+    /// them on every side, so that they stay legible over an image.
     Text {
         at: Point,
         text: String,
@@ -50,6 +55,7 @@ pub enum Item {
         color: Rgba,
         anchor: TextAnchor,
         turn_deg: f64,
+        halo: Option<Rgba>,
     },
     /// RGBA pixels, row by row, stretched over the box.
     Image {

@@ -3,4 +3,4 @@
 
 mod figure;
 
-pub use figure::{Figure, Fill, Item, Rgba, Stroke, TextAnchor};
+pub use figure::{Figure, Fill, HALO, Item, Rgba, Stroke, TextAnchor};
