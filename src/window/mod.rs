@@ -1,1 +1,3 @@
 //! The window floor.
+
+pub mod painter;

@@ -1,1 +1,4 @@
 //! The window, driven by role and label, and pictured by the CPU painter.
+
+mod harness;
+mod pictures;
