@@ -1,0 +1,75 @@
+//! Fingerprints: what made a result, in 64 hex digits. A result whose fingerprint differs from the
+//! sheet's is out of date.
+
+use serde_json::{Value, json};
+use sha2::{Digest as _, Sha256};
+
+use super::{Patch, RasterEntry, Sheet, WindEntry};
+
+/// SHA-256 of the sheet without what only changes how it looks (tone, notes) and without folders, so
+/// that a colleague's copy elsewhere has the same fingerprint.
+pub fn of_sheet(sheet: &Sheet) -> String {
+    let rasters: Vec<_> = sheet.rasters.iter().map(raster).collect();
+    let winds: Vec<_> = sheet.winds.iter().map(wind).collect();
+    digest(&json!([sheet.seed, rasters, sheet.patches, winds, sheet.settings]))
+}
+
+/// SHA-256 of all that makes a patch's finding: its outline, its raster, the settings, the winds it
+/// is judged by, the seed.
+pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
+    let winds: Vec<_> =
+        sheet.winds.iter().filter(|w| patch.wind.is_none_or(|id| id == w.id)).map(wind).collect();
+    digest(&json!([
+        sheet.seed,
+        patch.id,
+        patch.outline,
+        sheet.raster(patch.raster).map(raster),
+        winds,
+        sheet.settings
+    ]))
+}
+
+/// SHA-256 of all that makes a record's finding.
+pub fn of_wind(sheet: &Sheet, entry: &WindEntry) -> String {
+    digest(&json!([sheet.seed, wind(entry), sheet.settings.wind]))
+}
+
+fn raster(r: &RasterEntry) -> Value {
+    json!([r.id, r.path.file_name().map(|n| n.to_string_lossy()), r.bands, r.kind, r.placement, r.light_from])
+}
+
+fn wind(w: &WindEntry) -> Value {
+    let file = w.path.file_name().map(|n| n.to_string_lossy());
+    json!([w.id, file, w.import, w.height_m, w.roughness_m, w.body])
+}
+
+fn digest(value: &Value) -> String {
+    Sha256::digest(value.to_string()).iter().map(|byte| format!("{byte:02x}")).collect()
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::ground::Polygon;
+    use crate::study::Id;
+
+    #[test]
+    fn renaming_keeps_a_patch_current_and_moving_a_vertex_does_not() {
+        let mut sheet = Sheet::empty("t");
+        let patch = Patch {
+            id: Id(1),
+            name: "a".into(),
+            raster: Id(2),
+            outline: Polygon::rectangle(10.0, 10.0),
+            tags: vec![],
+            wind: None,
+        };
+        sheet.patches.push(patch.clone());
+        let before = of_patch(&sheet, &patch);
+        let renamed = Patch { name: "b".into(), ..patch.clone() };
+        assert_eq!(of_patch(&sheet, &renamed), before);
+        let mut moved = patch;
+        moved.outline.outer[0].x += 1e-9;
+        assert_ne!(of_patch(&sheet, &moved), before);
+    }
+}
