@@ -1,4 +1,5 @@
 //! Bytes to checked values and back: the only floor that touches files.
 
+pub mod georef;
 pub mod raster;
 pub mod wind_table;
