@@ -1,1 +1,5 @@
 //! The desk floor.
+
+mod tiles;
+
+pub use tiles::{TILE, TileKey, TileReader, TileShelf};
