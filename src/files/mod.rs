@@ -1,5 +1,7 @@
 //! Bytes to checked values and back: the only floor that touches files.
 
 pub mod georef;
+pub mod places;
 pub mod raster;
+pub mod text;
 pub mod wind_table;

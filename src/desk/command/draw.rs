@@ -1,0 +1,246 @@
+//! Outlining on the table, by pointer or by keyboard.
+
+use crate::desk::{Draft, Model, Tool};
+use crate::ground::{Point, Polygon};
+
+use super::{Command, PatchCommand, Record, apply};
+
+#[derive(Clone, Debug, PartialEq)]
+pub enum DrawCommand {
+    Take(Tool),
+    /// Lays a point, in pixels of the raster on the table.
+    Lay(Point),
+    /// Takes the last point away.
+    Retract,
+    Finish,
+    Cancel,
+    /// A drag has ended: the next change is an undo step of its own.
+    Settle,
+}
+
+impl DrawCommand {
+    pub(super) const LISTED: &[Self] = &[
+        Self::Take(Tool::Hand),
+        Self::Take(Tool::Polygon),
+        Self::Take(Tool::Rectangle),
+        Self::Take(Tool::Ellipse),
+        Self::Take(Tool::Hole),
+        Self::Take(Tool::Corners),
+        Self::Finish,
+        Self::Retract,
+        Self::Cancel,
+    ];
+
+    pub(super) fn record(&self) -> Record {
+        match self {
+            Self::Take(tool) => tool_record(*tool),
+            Self::Lay(_) => Record::new("draw.lay", "Lay a corner", "Adds a corner to the outline."),
+            Self::Retract => {
+                Record::new("draw.retract", "Take back a corner", "Removes the last corner.").key("Backspace")
+            }
+            Self::Finish => {
+                Record::new("draw.finish", "Close the outline", "Makes a patch of the outline.").key("Enter")
+            }
+            Self::Cancel => {
+                Record::new("draw.cancel", "Stop outlining", "Drops the outline and takes up the hand.")
+                    .key("Escape")
+            }
+            Self::Settle => Record::new("draw.settle", "End of a drag", "Ends a drag as one undo step."),
+        }
+    }
+
+    pub(super) fn refusal(&self, model: &Model) -> Option<&'static str> {
+        let draft = model.session.draft.as_ref();
+        match self {
+            Self::Take(Tool::Hole | Tool::Corners) if model.selected_patch().is_none() => {
+                Some("no patch is selected")
+            }
+            Self::Take(tool) if tool.draws() && model.shown_raster().is_none() => Some("no raster is open"),
+            Self::Lay(_) if !model.session.tool.draws() || model.shown_raster().is_none() => {
+                Some("no outlining tool is in hand")
+            }
+            Self::Retract | Self::Finish if draft.is_none() => Some("no outline is under way"),
+            Self::Finish if draft.and_then(Draft::finished).is_none() => {
+                Some("an outline needs three corners that enclose some ground")
+            }
+            Self::Cancel if draft.is_none() && model.session.tool == Tool::Hand => {
+                Some("no outline is under way")
+            }
+            _ => None,
+        }
+    }
+
+    pub(super) fn apply(self, model: &mut Model) {
+        match self {
+            Self::Take(tool) => {
+                model.session.tool = tool;
+                model.session.draft = None;
+            }
+            Self::Lay(point) => lay(model, point),
+            Self::Retract => {
+                if let Some(draft) = &mut model.session.draft {
+                    draft.points.pop();
+                }
+                model.session.draft.take_if(|draft| draft.points.is_empty());
+            }
+            Self::Finish => finish(model),
+            Self::Cancel => {
+                // First the outline goes, then the tool.
+                if model.session.draft.take().is_none() {
+                    model.session.tool = Tool::Hand;
+                }
+            }
+            Self::Settle => {}
+        }
+    }
+}
+
+fn tool_record(tool: Tool) -> Record {
+    match tool {
+        Tool::Hand => Record::new("draw.hand", "Hand", "Moves the raster and selects patches.").key("M"),
+        Tool::Polygon => {
+            Record::new("draw.polygon", "Outline polygon", "Click corners; close with Enter.").key("P")
+        }
+        Tool::Rectangle => {
+            Record::new("draw.rectangle", "Outline rectangle", "Two opposite corners.").key("R")
+        }
+        Tool::Ellipse => {
+            Record::new("draw.ellipse", "Outline ellipse", "Two opposite corners of its box.").key("E")
+        }
+        Tool::Hole => {
+            Record::new("draw.hole", "Cut a hole", "Outlines ground that does not belong to the patch.")
+                .key("H")
+        }
+        Tool::Corners => {
+            Record::new("draw.corners", "Edit corners", "Drag corners; click an edge to add one.").key("V")
+        }
+    }
+}
+
+fn lay(model: &mut Model, point: Point) {
+    let Some(raster) = model.shown_raster().map(|r| r.id) else { return };
+    let tool = model.session.tool;
+    let draft = model.session.draft.get_or_insert_with(|| Draft { tool, raster, points: Vec::new() });
+    draft.points.push(point);
+    if tool.is_box() && draft.points.len() == 2 {
+        apply(model, Command::Draw(DrawCommand::Finish));
+    }
+}
+
+fn finish(model: &mut Model) {
+    let Some(draft) = model.session.draft.take() else { return };
+    let Some(ring) = draft.finished() else { return };
+    let command = match (draft.tool, model.selected_patch()) {
+        (Tool::Hole, Some(patch)) => {
+            let mut outline = patch.outline.clone();
+            outline.holes.push(ring);
+            PatchCommand::Reshape { id: patch.id, outline }
+        }
+        _ => PatchCommand::Add { raster: draft.raster, outline: Polygon { outer: ring, holes: Vec::new() } },
+    };
+    model.session.tool = Tool::Hand;
+    model.session.history.settle();
+    apply(model, Command::Patch(command));
+    model.session.history.settle();
+}
+
+#[cfg(test)]
+mod tests {
+    use std::sync::Arc;
+
+    use super::DrawCommand;
+    use crate::desk::{
+        Command, Laid, Model, Opened, PatchCommand, SheetCommand, TileKey, TileReader, TileShelf, Tool, apply,
+    };
+    use crate::ground::{Grid, Place, Point, Work};
+    use crate::study::{Id, ImageKind, RasterEntry};
+
+    struct Blank;
+
+    impl TileReader for Blank {
+        fn size(&self) -> [usize; 2] {
+            [100, 80]
+        }
+
+        fn read(&self, _: TileKey, _: &Work) -> Result<Grid<f32>, String> {
+            Ok(Grid::filled(100, 80, 0.5))
+        }
+    }
+
+    /// A desk with one raster of 100 × 80 pixels laid on the table.
+    fn desk() -> Model {
+        let mut model = Model::new(Arc::new(|| ()));
+        model.sheet.rasters.push(RasterEntry {
+            id: Id(1),
+            name: "mosaic".into(),
+            path: "mosaic.tif".into(),
+            bands: Default::default(),
+            kind: ImageKind::Optical,
+            placement: Default::default(),
+            tone: Default::default(),
+            light_from: None,
+        });
+        let tiles = TileShelf::new(Arc::new(Blank), Arc::new(|| ()));
+        let laid = Laid { size: [100, 80], place: Place::pixels(0.0), tiles };
+        model.session.rasters.insert(Id(1), Opened::Open(Box::new(laid)));
+        model
+    }
+
+    fn draw(model: &mut Model, tool: Tool, points: &[[f64; 2]]) {
+        apply(model, Command::Draw(DrawCommand::Take(tool)));
+        for point in points {
+            apply(model, Command::Draw(DrawCommand::Lay(Point::from(*point))));
+        }
+    }
+
+    #[test]
+    fn a_polygon_closes_on_finish_and_undo_takes_it_back() {
+        let mut model = desk();
+        draw(&mut model, Tool::Polygon, &[[10.0, 10.0], [60.0, 10.0], [60.0, 50.0]]);
+        apply(&mut model, Command::Draw(DrawCommand::Finish));
+        assert_eq!(model.selected_patch().map(|p| p.name.as_str()), Some("Patch 1"));
+        assert_eq!(model.session.tool, Tool::Hand);
+        apply(&mut model, Command::Sheet(SheetCommand::Undo));
+        assert!(model.sheet.patches.is_empty() && model.view.patch.is_none());
+    }
+
+    #[test]
+    fn a_hole_goes_into_the_selected_patch_as_its_own_step() {
+        let mut model = desk();
+        draw(&mut model, Tool::Rectangle, &[[10.0, 10.0], [60.0, 50.0]]);
+        draw(&mut model, Tool::Hole, &[[20.0, 20.0], [30.0, 20.0], [30.0, 30.0]]);
+        apply(&mut model, Command::Draw(DrawCommand::Finish));
+        assert_eq!(model.selected_patch().unwrap().outline.area(), 2000.0 - 50.0);
+        apply(&mut model, Command::Sheet(SheetCommand::Undo));
+        assert_eq!(model.selected_patch().unwrap().outline.area(), 2000.0);
+    }
+
+    #[test]
+    fn two_drags_of_one_patch_are_two_steps() {
+        let mut model = desk();
+        draw(&mut model, Tool::Rectangle, &[[10.0, 10.0], [60.0, 50.0]]);
+        let patch = model.selected_patch().unwrap().clone();
+        for drag in 0..2 {
+            for step in 1..4 {
+                let by = f64::from(drag * 3 + step);
+                let outline = patch.outline.map(|p| Point::new(p.x + by, p.y));
+                apply(&mut model, Command::Patch(PatchCommand::Reshape { id: patch.id, outline }));
+            }
+            apply(&mut model, Command::Draw(DrawCommand::Settle));
+        }
+        let left = |model: &Model| model.selected_patch().unwrap().outline.outer[0].x;
+        assert_eq!(left(&model), 16.0);
+        apply(&mut model, Command::Sheet(SheetCommand::Undo));
+        assert_eq!(left(&model), 13.0);
+        apply(&mut model, Command::Sheet(SheetCommand::Undo));
+        assert_eq!(left(&model), 10.0);
+    }
+
+    #[test]
+    fn a_command_that_is_not_allowed_says_why_and_changes_nothing() {
+        let mut model = Model::new(Arc::new(|| ()));
+        apply(&mut model, Command::Draw(DrawCommand::Take(Tool::Polygon)));
+        assert_eq!(model.session.tool, Tool::Hand);
+        assert!(model.session.notices.shown()[0].text.contains("no raster is open"));
+    }
+}

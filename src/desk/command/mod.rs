@@ -1,0 +1,180 @@
+//! Commands: each described once, and `apply`, the only door to the model.
+
+mod ask;
+mod draw;
+mod patch;
+mod sheet;
+mod view;
+
+pub use ask::AskCommand;
+pub use draw::DrawCommand;
+pub use patch::PatchCommand;
+pub use sheet::SheetCommand;
+pub use view::ViewCommand;
+
+use std::fmt;
+
+use super::{MergeKey, Model};
+
+/// Everything a user can ask for, by area.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Command {
+    Sheet(SheetCommand),
+    Ask(AskCommand),
+    Patch(PatchCommand),
+    Draw(DrawCommand),
+    View(ViewCommand),
+}
+
+/// A command described once; buttons, keys, the finder, help and tests read this.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Record {
+    /// Stable, `"patch.delete"`.
+    pub id: &'static str,
+    /// On buttons and in the finder; ends in `…` when more will be asked.
+    pub label: &'static str,
+    pub hint: &'static str,
+    pub key: Option<Chord>,
+    /// Changes the sheet, so that undo takes it back.
+    pub editing: bool,
+}
+
+/// A key with its modifiers. `key` is a letter, a digit or a name such as `"Delete"`.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Chord {
+    /// Ctrl, or ⌘ where that is the habit.
+    pub command: bool,
+    pub shift: bool,
+    pub alt: bool,
+    pub key: &'static str,
+}
+
+impl Record {
+    const fn new(id: &'static str, label: &'static str, hint: &'static str) -> Self {
+        Self { id, label, hint, key: None, editing: false }
+    }
+
+    const fn editing(self) -> Self {
+        Self { editing: true, ..self }
+    }
+
+    const fn key(self, key: &'static str) -> Self {
+        Self { key: Some(Chord { command: false, shift: false, alt: false, key }), ..self }
+    }
+
+    const fn ctrl(self, key: &'static str) -> Self {
+        Self { key: Some(Chord { command: true, shift: false, alt: false, key }), ..self }
+    }
+
+    const fn ctrl_shift(self, key: &'static str) -> Self {
+        Self { key: Some(Chord { command: true, shift: true, alt: false, key }), ..self }
+    }
+
+    const fn alt(self, key: &'static str) -> Self {
+        Self { key: Some(Chord { command: false, shift: false, alt: true, key }), ..self }
+    }
+}
+
+impl fmt::Display for Chord {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        for (held, name) in [(self.command, "Ctrl"), (self.shift, "Shift"), (self.alt, "Alt")] {
+            if held {
+                write!(f, "{name} + ")?;
+            }
+        }
+        f.write_str(self.key)
+    }
+}
+
+impl Command {
+    /// What the command is called and which key it has.
+    pub fn record(&self) -> Record {
+        match self {
+            Self::Sheet(c) => c.record(),
+            Self::Ask(c) => c.record(),
+            Self::Patch(c) => c.record(),
+            Self::Draw(c) => c.record(),
+            Self::View(c) => c.record(),
+        }
+    }
+
+    /// Why the command cannot be given now; `None` when it can.
+    pub fn refusal(&self, model: &Model) -> Option<&'static str> {
+        match self {
+            Self::Sheet(c) => c.refusal(model),
+            Self::Ask(c) => c.refusal(model),
+            Self::Patch(c) => c.refusal(model),
+            Self::Draw(c) => c.refusal(model),
+            Self::View(c) => c.refusal(model),
+        }
+    }
+
+    /// Commands with equal keys that follow one another are one undo step.
+    fn merge_key(&self) -> Option<MergeKey> {
+        match self {
+            Self::Patch(c) => c.merge_key(),
+            Self::Sheet(_) | Self::Ask(_) | Self::Draw(_) | Self::View(_) => None,
+        }
+    }
+
+    /// Whether the command says nothing about the sheet while a drag goes on (pointer moves).
+    fn is_passive(&self) -> bool {
+        matches!(self, Self::View(_))
+    }
+}
+
+/// The commands that need no further data, in the order of the finder.
+pub fn listed() -> Vec<Command> {
+    let sheet = SheetCommand::LISTED.iter().cloned().map(Command::Sheet);
+    let draw = DrawCommand::LISTED.iter().cloned().map(Command::Draw);
+    let patch = PatchCommand::LISTED.iter().cloned().map(Command::Patch);
+    let view = ViewCommand::LISTED.iter().cloned().map(Command::View);
+    sheet.chain(draw).chain(patch).chain(view).collect()
+}
+
+/// Does what `command` asks. The only way the sheet and the view change.
+pub fn apply(model: &mut Model, command: Command) {
+    if let Some(why) = command.refusal(model) {
+        model.session.notices.problem(format!("{}: {why}", command.record().label));
+        return;
+    }
+    let record = command.record();
+    if record.editing {
+        model.session.history.remember(&model.sheet, record.label, command.merge_key());
+    } else if !command.is_passive() {
+        model.session.history.settle();
+    }
+    match command {
+        Command::Sheet(c) => c.apply(model),
+        Command::Ask(c) => c.apply(model),
+        Command::Patch(c) => c.apply(model),
+        Command::Draw(c) => c.apply(model),
+        Command::View(c) => c.apply(model),
+    }
+    if record.editing {
+        model.session.history.forget_if_unchanged(&model.sheet);
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use std::collections::BTreeMap;
+
+    use super::listed;
+
+    #[test]
+    fn listed_commands_have_their_own_id_label_and_key() {
+        let mut seen = BTreeMap::new();
+        for command in listed() {
+            let record = command.record();
+            assert!(!record.hint.is_empty(), "{} has no hint", record.id);
+            let key = record.key.map(|chord| format!("{chord}"));
+            for name in [Some(record.id.to_owned()), Some(record.label.to_owned()), key].into_iter().flatten()
+            {
+                if let Some(other) = seen.insert(name.clone(), record.id) {
+                    assert_eq!(other, record.id, "“{name}” is used twice");
+                }
+            }
+        }
+    }
+}

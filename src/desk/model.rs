@@ -1,0 +1,89 @@
+//! Everything the program knows, in three parts with three lives: the sheet is saved and undone,
+//! the view is saved only, the session can always be rebuilt.
+
+use std::path::PathBuf;
+
+use crate::study::{Id, Patch, RasterEntry, Sheet};
+
+use super::{Session, View, Wake, engine};
+
+/// What panels draw from. It changes only in [`super::apply`] and [`super::absorb`].
+#[derive(Debug)]
+pub struct Model {
+    pub sheet: Sheet,
+    pub view: View,
+    pub session: Session,
+}
+
+impl Model {
+    /// An empty sheet. `wake` is called from other threads when an answer has come.
+    pub fn new(wake: Wake) -> Self {
+        let sheet = Sheet::empty("Untitled");
+        let session = Session::new(&sheet, wake);
+        Self { sheet, view: View::default(), session }
+    }
+
+    /// Reads the list of recent sheets and keeps it from now on.
+    pub fn keeping_recent(mut self) -> Self {
+        self.session.recent = engine::recent_sheets();
+        self.session.keeps_recent = true;
+        self
+    }
+
+    /// The raster on the table.
+    pub fn shown_raster(&self) -> Option<&RasterEntry> {
+        self.view.raster.and_then(|id| self.sheet.raster(id)).or(self.sheet.rasters.first())
+    }
+
+    pub fn selected_patch(&self) -> Option<&Patch> {
+        self.view.patch.and_then(|id| self.sheet.patch(id))
+    }
+
+    /// Whether the sheet differs from what is on disk.
+    pub fn is_dirty(&self) -> bool {
+        self.session.saved != self.sheet
+    }
+
+    /// The raster on the table and its width and height, once it is open.
+    pub fn shown_size(&self) -> Option<(Id, [usize; 2])> {
+        let id = self.shown_raster()?.id;
+        Some((id, self.session.rasters.get(&id)?.size()?))
+    }
+
+    /// Puts another sheet on the desk; everything of the old one is dropped.
+    pub(super) fn replace(&mut self, sheet: Sheet, view: View, path: Option<PathBuf>) {
+        let theme = self.view.theme;
+        self.sheet = sheet;
+        self.view = View { theme, ..view };
+        self.session.start_over(&self.sheet, path);
+    }
+
+    /// Puts `path` first among the recent sheets.
+    pub(super) fn remember_recent(&mut self, path: PathBuf) {
+        if self.session.keeps_recent {
+            match engine::remember_sheet(&path) {
+                Ok(list) => self.session.recent = list,
+                Err(why) => {
+                    self.session.notices.problem(format!("The list of recent sheets was not written: {why}"));
+                }
+            }
+        } else {
+            self.session.recent.retain(|known| *known != path);
+            self.session.recent.insert(0, path);
+        }
+    }
+
+    /// After undo or redo: what is selected must still be there.
+    pub(super) fn drop_lost_selection(&mut self) {
+        let Self { sheet, view, .. } = self;
+        view.patch = view.patch.filter(|id| sheet.patch(*id).is_some());
+        view.raster = view.raster.filter(|id| sheet.raster(*id).is_some());
+        view.wind = view.wind.filter(|id| sheet.wind(*id).is_some());
+    }
+
+    /// The sheet's file name, or its title while it has none.
+    pub fn name(&self) -> String {
+        let file = self.session.path.as_ref().and_then(|p| p.file_name());
+        file.map_or_else(|| self.sheet.title.clone(), |name| name.to_string_lossy().into_owned())
+    }
+}

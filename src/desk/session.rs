@@ -1,0 +1,255 @@
+//! What lasts only while the window is open and can always be rebuilt.
+
+use std::collections::BTreeMap;
+use std::path::PathBuf;
+
+use crate::ground::{Place, Point, Polygon};
+use crate::study::{Id, Sheet};
+
+use super::{Answer, Command, History, Jobs, Notices, Slot, TileShelf, Wake};
+
+/// Never saved.
+#[derive(Debug)]
+pub struct Session {
+    /// Where the sheet is saved; `None` until it is.
+    pub path: Option<PathBuf>,
+    /// The sheet as it is on disk (or as it was new).
+    pub saved: Sheet,
+    pub history: History,
+    pub jobs: Jobs<Answer>,
+    /// What came of opening each raster of the sheet.
+    pub rasters: BTreeMap<Id, Opened>,
+    pub notices: Notices,
+    pub tool: Tool,
+    /// The outline under way.
+    pub draft: Option<Draft>,
+    /// Where the pointer (or the keyboard cross) is on the raster.
+    pub cursor: Option<Cursor>,
+    /// Size of the table in screen points, as last drawn.
+    pub viewport: [f64; 2],
+    pub dialog: Option<Dialog>,
+    /// A path is wanted from the user.
+    pub ask: Option<Ask>,
+    /// What goes on once the sheet is saved.
+    pub after_save: Option<Box<Command>>,
+    /// Sheets opened or saved lately, latest first.
+    pub recent: Vec<PathBuf>,
+    /// Whether that list is written down for the next session.
+    pub keeps_recent: bool,
+    /// Set when the window may close.
+    pub leaving: bool,
+}
+
+/// What came of opening a raster.
+#[derive(Debug)]
+pub enum Opened {
+    Opening,
+    Open(Box<Laid>),
+    /// Why it cannot be opened, in words.
+    Failed(String),
+}
+
+/// An open raster.
+#[derive(Debug)]
+pub struct Laid {
+    /// Width and height, full-resolution pixels.
+    pub size: [usize; 2],
+    pub place: Place,
+    /// Its pixels, for the table.
+    pub tiles: TileShelf,
+}
+
+/// What the pointer does on the table.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub enum Tool {
+    /// Moves the raster and selects patches.
+    #[default]
+    Hand,
+    Polygon,
+    Rectangle,
+    Ellipse,
+    /// A hole in the selected patch.
+    Hole,
+    /// Moves, adds and removes the corners of the selected patch.
+    Corners,
+}
+
+/// An outline under way.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Draft {
+    pub tool: Tool,
+    pub raster: Id,
+    /// Full-resolution pixel coordinates.
+    pub points: Vec<Point>,
+}
+
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Cursor {
+    pub raster: Id,
+    /// Full-resolution pixel coordinates.
+    pub pixel: Point,
+}
+
+/// The one thing that lies over the window.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Dialog {
+    Finder,
+    Keys,
+    Settings,
+    /// The sheet has changes that would be lost by this command.
+    Unsaved(Box<Command>),
+}
+
+/// A path is wanted.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Ask {
+    pub purpose: Purpose,
+    /// File name offered when saving.
+    pub suggested: String,
+    /// Whether the in-window field is shown instead of the system's dialog.
+    pub typed: bool,
+}
+
+/// What the path is for.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Purpose {
+    OpenSheet,
+    SaveSheet,
+}
+
+impl Ask {
+    pub fn new(purpose: Purpose, suggested: impl Into<String>) -> Self {
+        Self { purpose, suggested: suggested.into(), typed: false }
+    }
+}
+
+impl Session {
+    /// Another sheet begins: jobs of the old one are dropped, notices and recent sheets stay.
+    pub fn start_over(&mut self, sheet: &Sheet, path: Option<PathBuf>) {
+        Slot::ALL.into_iter().for_each(|slot| self.jobs.abandon(slot));
+        self.path = path;
+        self.saved = sheet.clone();
+        self.history = History::default();
+        self.rasters.clear();
+        self.tool = Tool::default();
+        self.draft = None;
+        self.cursor = None;
+        self.dialog = None;
+        self.ask = None;
+        self.after_save = None;
+    }
+
+    /// Nothing open, nothing running, `sheet` as on disk.
+    pub fn new(sheet: &Sheet, wake: Wake) -> Self {
+        Self {
+            path: None,
+            saved: sheet.clone(),
+            history: History::default(),
+            jobs: Jobs::new(wake),
+            rasters: BTreeMap::new(),
+            notices: Notices::default(),
+            tool: Tool::default(),
+            draft: None,
+            cursor: None,
+            viewport: [0.0, 0.0],
+            dialog: None,
+            ask: None,
+            after_save: None,
+            recent: Vec::new(),
+            keeps_recent: false,
+            leaving: false,
+        }
+    }
+}
+
+impl Opened {
+    /// Width and height, once open.
+    pub fn size(&self) -> Option<[usize; 2]> {
+        self.laid().map(|laid| laid.size)
+    }
+
+    pub fn laid(&self) -> Option<&Laid> {
+        match self {
+            Self::Open(laid) => Some(laid),
+            Self::Opening | Self::Failed(_) => None,
+        }
+    }
+}
+
+impl Tool {
+    pub const ALL: [Self; 6] =
+        [Self::Hand, Self::Polygon, Self::Rectangle, Self::Ellipse, Self::Hole, Self::Corners];
+
+    /// Whether the tool lays down points that become an outline.
+    pub fn draws(self) -> bool {
+        !matches!(self, Self::Hand | Self::Corners)
+    }
+
+    /// Whether two points make the whole outline.
+    pub fn is_box(self) -> bool {
+        matches!(self, Self::Rectangle | Self::Ellipse)
+    }
+}
+
+impl Draft {
+    /// The ring as it would be with `next` (the pointer) as its last point; empty when there is
+    /// not yet anything to show.
+    pub fn ring(&self, next: Option<Point>) -> Vec<Point> {
+        let points: Vec<Point> = self.points.iter().copied().chain(next).collect();
+        match (self.tool, points.as_slice()) {
+            (Tool::Rectangle, [a, .., b]) => {
+                vec![*a, Point::new(b.x, a.y), *b, Point::new(a.x, b.y)]
+            }
+            (Tool::Ellipse, [a, .., b]) => ellipse(*a, *b),
+            _ => points,
+        }
+    }
+
+    /// The finished ring, when it encloses any ground.
+    pub fn finished(&self) -> Option<Vec<Point>> {
+        let mut ring = self.ring(None);
+        ring.dedup();
+        let area = Polygon { outer: ring.clone(), holes: Vec::new() }.area();
+        (ring.len() >= 3 && area >= 1.0).then_some(ring)
+    }
+}
+
+/// Corners of a drawn ellipse: its area is 0.4 % short of the true one.
+const ELLIPSE_CORNERS: usize = 40;
+
+/// The ellipse inscribed in the box of two opposite corners.
+fn ellipse(a: Point, b: Point) -> Vec<Point> {
+    let (cx, cy) = (0.5 * (a.x + b.x), 0.5 * (a.y + b.y));
+    let (rx, ry) = (0.5 * (a.x - b.x).abs(), 0.5 * (a.y - b.y).abs());
+    let corner = |i| {
+        let (sin, cos) = (std::f64::consts::TAU * i as f64 / ELLIPSE_CORNERS as f64).sin_cos();
+        Point::new(cx + rx * cos, cy + ry * sin)
+    };
+    (0..ELLIPSE_CORNERS).map(corner).collect()
+}
+
+#[cfg(test)]
+mod tests {
+    use super::{Draft, Tool};
+    use crate::ground::{Place, Point, Polygon};
+    use crate::study::Id;
+
+    fn draft(tool: Tool, points: &[[f64; 2]]) -> Draft {
+        Draft { tool, raster: Id(1), points: points.iter().map(|p| Point::from(*p)).collect() }
+    }
+
+    #[test]
+    fn two_corners_make_a_box_or_an_ellipse_in_it() {
+        let corners = [[2.0, 3.0], [12.0, 9.0]];
+        let area = |tool| Polygon { outer: draft(tool, &corners).finished().unwrap(), holes: vec![] }.area();
+        assert_eq!(area(Tool::Rectangle), 60.0);
+        let want = std::f64::consts::PI * 5.0 * 3.0;
+        crate::assert_close!(area(Tool::Ellipse), want, 0.005 * want, "ellipse of 10 × 6");
+    }
+
+    #[test]
+    fn a_line_is_no_outline() {
+        assert_eq!(draft(Tool::Polygon, &[[0.0, 0.0], [5.0, 5.0]]).finished(), None);
+        assert_eq!(draft(Tool::Rectangle, &[[1.0, 1.0], [9.0, 1.0]]).finished(), None);
+    }
+}
