@@ -1,11 +1,14 @@
 //! The words every floor uses: angles, grids, bodies, places, shapes, running work, seeds,
 //! cautions, and the records that say which method made a number and who published it.
 
+mod affine;
 mod angle;
 mod body;
 mod caution;
 mod flow;
+mod geodesic;
 mod grid;
+mod local_frame;
 mod method;
 mod place;
 mod projection;
@@ -14,13 +17,16 @@ mod shape;
 mod wind_record;
 mod work;
 
+pub use affine::Affine;
 pub use angle::{Axis, Azimuth};
 pub use body::{Air, Body, BodyShape};
 pub use caution::Caution;
 pub use flow::SandFlow;
+pub use geodesic::Geodesic;
 pub use grid::Grid;
+pub use local_frame::LocalFrame;
 pub use method::{Method, Read, Source, Symbol};
-pub use place::{Affine, Frame, LengthUnit, LocalFrame, Place, PlaceError};
+pub use place::{Frame, LatitudeKind, LengthUnit, Place, PlaceError};
 pub use projection::{LonLat, Projection, ProjectionError};
 pub use seed::Seed;
 pub use shape::{Bounds, Point, Polygon, Polyline};

@@ -3,35 +3,37 @@
 //!
 //! Pixel coordinates are continuous, (0, 0) the outer corner of the upper-left pixel.
 
-use super::{Azimuth, Body, LonLat, Point, Projection};
+use serde::{Deserialize, Serialize};
 
-/// map = (a·col + b·row + c, d·col + e·row + f).
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct Affine {
-    pub a: f64,
-    pub b: f64,
-    pub c: f64,
-    pub d: f64,
-    pub e: f64,
-    pub f: f64,
-}
+use super::{Affine, Body, BodyShape, LocalFrame, LonLat, Point, Projection};
 
 /// What the map coordinates of a raster mean.
 #[derive(Clone, Debug, PartialEq)]
 pub enum Frame {
     /// Map coordinates times `unit_m` are metres of a projection.
     Projected { projection: Projection, unit_m: f64 },
-    /// Map x, y times `unit_deg` are longitude (east positive) and planetographic latitude, degrees.
-    Geographic { unit_deg: f64 },
-    /// No georeference, but the user stated a ground size: map coordinates are metres in a plane
-    /// whose +y axis points to azimuth `north_deg`.
+    /// Map x, y times `unit_deg` are longitude (east positive) and latitude, degrees.
+    Geographic { unit_deg: f64, latitude: LatitudeKind },
+    /// No reference system, but a ground size: map coordinates are metres in a plane whose +y axis
+    /// points to azimuth `north_deg`.
     Plane { north_deg: f64 },
     /// No georeference and no size: everything is in pixels, image-up is azimuth `north_deg`.
     Pixels { north_deg: f64 },
 }
 
+/// Which angle a latitude is. On a sphere they are one.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
+#[serde(rename_all = "lowercase")]
+pub enum LatitudeKind {
+    /// Between the equator's plane and the ellipsoid's normal (geodetic).
+    #[default]
+    Planetographic,
+    /// Between the equator's plane and the line to the body's centre.
+    Planetocentric,
+}
+
 /// The unit of lengths on this raster.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, serde::Serialize, serde::Deserialize)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
 #[serde(rename_all = "lowercase")]
 pub enum LengthUnit {
     Metre,
@@ -46,16 +48,6 @@ pub struct Place {
     pub body: Body,
 }
 
-/// The linear map from a pixel step (Δcol, Δrow) to ground (east, north) at one point, in metres
-/// (or pixels where the raster has no ground size). East and north are true.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct LocalFrame {
-    pub east_per_col: f64,
-    pub east_per_row: f64,
-    pub north_per_col: f64,
-    pub north_per_row: f64,
-}
-
 /// A place that cannot be used.
 #[derive(Clone, Debug, PartialEq, thiserror::Error)]
 pub enum PlaceError {
@@ -63,6 +55,10 @@ pub enum PlaceError {
     Singular(Affine),
     #[error("pixel size {0} must be a positive number of metres")]
     PixelSize(f64),
+    #[error("north at {0}° is not an angle")]
+    North(f64),
+    #[error("a body with axes {equatorial_m} m and {polar_m} m is not a sphere or an oblate ellipsoid")]
+    Shape { equatorial_m: f64, polar_m: f64 },
 }
 
 impl LengthUnit {
@@ -75,33 +71,48 @@ impl LengthUnit {
     }
 }
 
-impl Affine {
-    pub fn apply(&self, p: Point) -> Point {
-        Point::new(self.a * p.x + self.b * p.y + self.c, self.d * p.x + self.e * p.y + self.f)
-    }
-
-    pub fn determinant(&self) -> f64 {
-        self.a * self.e - self.b * self.d
-    }
-
-    /// The inverse; `None` when singular.
-    pub fn inverse(&self) -> Option<Self> {
-        let det = self.determinant();
-        if !det.is_finite() || det == 0.0 {
-            return None;
+impl LatitudeKind {
+    /// The planetographic latitude of a latitude of this kind, degrees.
+    pub fn to_planetographic(self, shape: BodyShape, deg: f64) -> f64 {
+        match self {
+            Self::Planetographic => deg,
+            Self::Planetocentric => shape.planetographic(deg),
         }
-        let (a, b, d, e) = (self.e / det, -self.b / det, -self.d / det, self.a / det);
-        Some(Self { a, b, c: -(a * self.c + b * self.f), d, e, f: -(d * self.c + e * self.f) })
+    }
+
+    /// The latitude of this kind of a planetographic one, degrees.
+    pub fn of_planetographic(self, shape: BodyShape, deg: f64) -> f64 {
+        match self {
+            Self::Planetographic => deg,
+            Self::Planetocentric => shape.planetocentric(deg),
+        }
+    }
+
+    /// d(planetographic)/d(this kind) at a latitude of this kind: k sec² c / (1 + k² tan² c),
+    /// k = 1/(1 − f)².
+    fn stretch(self, shape: BodyShape, deg: f64) -> f64 {
+        match self {
+            Self::Planetographic => 1.0,
+            Self::Planetocentric => {
+                let k = (shape.equatorial_m / shape.polar_m).powi(2);
+                let (sin, cos) = deg.to_radians().sin_cos();
+                k / (cos * cos + k * k * sin * sin)
+            }
+        }
     }
 }
 
 impl Place {
-    /// Checks that pixels have area.
+    /// Checks that pixels have area and the body has a shape.
     ///
     /// # Errors
-    /// [`PlaceError::Singular`].
+    /// [`PlaceError::Singular`], [`PlaceError::Shape`].
     pub fn new(affine: Affine, frame: Frame, body: Body) -> Result<Self, PlaceError> {
         affine.inverse().ok_or(PlaceError::Singular(affine))?;
+        let BodyShape { equatorial_m, polar_m } = body.shape;
+        if !(polar_m > 0.0 && equatorial_m >= polar_m && equatorial_m.is_finite()) {
+            return Err(PlaceError::Shape { equatorial_m, polar_m });
+        }
         Ok(Self { affine, frame, body })
     }
 
@@ -119,8 +130,86 @@ impl Place {
         if let Some(bad) = pixel_m.into_iter().find(|s| !(s.is_finite() && *s > 0.0)) {
             return Err(PlaceError::PixelSize(bad));
         }
+        if !north_deg.is_finite() {
+            return Err(PlaceError::North(north_deg));
+        }
         let affine = Affine { a: pixel_m[0], b: 0.0, c: 0.0, d: 0.0, e: -pixel_m[1], f: 0.0 };
-        Ok(Self { affine, frame: Frame::Plane { north_deg }, body })
+        Self::new(affine, Frame::Plane { north_deg }, body)
+    }
+
+    /// The place a study works with: what the file says, then what the user said.
+    ///
+    /// - `pixel_m` replaces any georeference by a plane with image-up at `north_deg` (0 if unsaid).
+    /// - `north_deg`, the azimuth of image-up, counts only where the file names no reference system.
+    /// - `body` replaces name, gravity and air; its shape counts only where the file has none.
+    ///
+    /// # Errors
+    /// [`PlaceError::PixelSize`], [`PlaceError::North`], [`PlaceError::Shape`].
+    pub fn settled(
+        file: Option<&Self>,
+        pixel_m: Option<[f64; 2]>,
+        north_deg: Option<f64>,
+        body: Option<&Body>,
+    ) -> Result<Self, PlaceError> {
+        if let Some(bad) = north_deg.filter(|deg| !deg.is_finite()) {
+            return Err(PlaceError::North(bad));
+        }
+        let image_up = north_deg.unwrap_or(0.0);
+        let file_body = file.map(|place| &place.body);
+        let mut place = match (pixel_m, file) {
+            (Some(size), _) => Self::plane(size, image_up, file_body.cloned().unwrap_or_else(Body::earth))?,
+            (None, Some(place)) => place.clone(),
+            (None, None) => Self::pixels(image_up),
+        };
+        if pixel_m.is_none() && north_deg.is_some() {
+            place = place.with_image_up(image_up);
+        }
+        if let Some(stated) = body {
+            let shape = if place.is_georeferenced() { place.body.shape } else { stated.shape };
+            place.body = Body { shape, ..stated.clone() };
+        }
+        Self::new(place.affine, place.frame, place.body)
+    }
+
+    /// Turns a plane or pixel frame so that image-up points to `image_up_deg`; georeferenced
+    /// places know their north and stay.
+    fn with_image_up(mut self, image_up_deg: f64) -> Self {
+        let now = self.local_frame(Point::new(0.0, 0.0)).map_or(0.0, |frame| frame.azimuth(0.0, -1.0).deg());
+        match &mut self.frame {
+            Frame::Plane { north_deg } | Frame::Pixels { north_deg } => *north_deg += image_up_deg - now,
+            Frame::Projected { .. } | Frame::Geographic { .. } => {}
+        }
+        self
+    }
+
+    /// The same raster when its longitudes count positive toward WEST: a geographic frame is
+    /// mirrored, a projection gets the other sign at its central meridian. Files hardly ever say
+    /// so; the user must.
+    ///
+    /// # Errors
+    /// [`super::ProjectionError`] when the projection cannot be rebuilt.
+    pub fn with_west_longitudes(&self) -> Result<Self, super::ProjectionError> {
+        let mut place = self.clone();
+        match &self.frame {
+            Frame::Geographic { .. } => {
+                let Affine { a, b, c, .. } = self.affine;
+                place.affine = Affine { a: -a, b: -b, c: -c, ..self.affine };
+            }
+            Frame::Projected { projection, unit_m } => {
+                let centre = projection.central_longitude();
+                let mut words: Vec<String> = projection
+                    .definition()
+                    .split_whitespace()
+                    .filter(|word| !word.starts_with("+lon_0=") && !word.starts_with("+pm="))
+                    .map(str::to_owned)
+                    .collect();
+                words.push(format!("+lon_0={}", -centre));
+                let projection = Projection::new(&words.join(" "), self.body.shape)?;
+                place.frame = Frame::Projected { projection, unit_m: *unit_m };
+            }
+            Frame::Plane { .. } | Frame::Pixels { .. } => {}
+        }
+        Ok(place)
     }
 
     pub fn unit(&self) -> LengthUnit {
@@ -146,51 +235,74 @@ impl Place {
 
     /// Longitude and latitude of a pixel; `None` without georeference or outside the domain.
     pub fn lonlat_of(&self, pixel: Point) -> Option<LonLat> {
+        Some(self.unfolded_lonlat_of(pixel)?.folded())
+    }
+
+    /// As [`Self::lonlat_of`], the longitude on the turn the pixel lies on.
+    fn unfolded_lonlat_of(&self, pixel: Point) -> Option<LonLat> {
         let map = self.map_of(pixel);
         match &self.frame {
             Frame::Projected { projection, unit_m } => {
-                projection.to_lonlat(Point::new(map.x * unit_m, map.y * unit_m))
+                projection.to_lonlat_unfolded(Point::new(map.x * unit_m, map.y * unit_m))
             }
-            Frame::Geographic { unit_deg } => {
+            Frame::Geographic { unit_deg, latitude } => {
                 let (lon, lat) = (map.x * unit_deg, map.y * unit_deg);
-                (lat.abs() <= 90.0 && lon.is_finite()).then_some(LonLat { lon, lat })
+                (lat.abs() <= 90.0 && lon.abs() <= 720.0)
+                    .then(|| LonLat { lon, lat: latitude.to_planetographic(self.body.shape, lat) })
             }
             Frame::Plane { .. } | Frame::Pixels { .. } => None,
         }
     }
 
     /// The pixel of a longitude and latitude; `None` without georeference or outside the domain.
-    pub fn pixel_of_lonlat(&self, at: LonLat) -> Option<Point> {
+    /// Where the map repeats after a whole turn (0–360° rasters, rasters over the antimeridian)
+    /// the answer is the one nearest `near`: hand in the raster's centre.
+    pub fn pixel_of_lonlat(&self, at: LonLat, near: Point) -> Option<Point> {
+        let at = at.folded();
+        let repeats = match &self.frame {
+            Frame::Projected { projection, .. } => projection.repeats(),
+            Frame::Geographic { .. } => true,
+            Frame::Plane { .. } | Frame::Pixels { .. } => false,
+        };
+        if !repeats {
+            return self.pixel_on_turn(at, true);
+        }
+        (-2..=2)
+            .filter_map(|turn| {
+                self.pixel_on_turn(LonLat { lon: at.lon + 360.0 * f64::from(turn), ..at }, false)
+            })
+            .min_by(|p, q| p.distance(near).total_cmp(&q.distance(near)))
+    }
+
+    fn pixel_on_turn(&self, at: LonLat, fold: bool) -> Option<Point> {
         let map = match &self.frame {
             Frame::Projected { projection, unit_m } => {
-                let metres = projection.to_map(at)?;
+                let metres = if fold { projection.to_map(at)? } else { projection.to_map_unfolded(at)? };
                 Point::new(metres.x / unit_m, metres.y / unit_m)
             }
-            Frame::Geographic { unit_deg } => Point::new(at.lon / unit_deg, at.lat / unit_deg),
+            Frame::Geographic { unit_deg, latitude } => {
+                let lat = latitude.of_planetographic(self.body.shape, at.lat);
+                Point::new(at.lon / unit_deg, lat / unit_deg)
+            }
             Frame::Plane { .. } | Frame::Pixels { .. } => return None,
         };
         self.pixel_of_map(map)
     }
 
     /// The local frame at a pixel; `None` where the place has no longitude and latitude there
-    /// (outside a projection's domain) or within a hair of a pole.
-    ///
-    /// For a projection: J⁻¹ by central differences of the forward projection (h = 1e-4°).
+    /// (outside a projection's domain) or at a pole itself.
     pub fn local_frame(&self, pixel: Point) -> Option<LocalFrame> {
         let Affine { a, b, d, e, .. } = self.affine;
         match &self.frame {
-            Frame::Pixels { north_deg } => {
-                let (sin, cos) = north_deg.to_radians().sin_cos();
-                Some(turned(a, b, d, e, sin, cos))
+            Frame::Pixels { north_deg } | Frame::Plane { north_deg } => {
+                Some(turned(self.affine, north_deg.to_radians()))
             }
-            Frame::Plane { north_deg } => {
-                let (sin, cos) = north_deg.to_radians().sin_cos();
-                Some(turned(a, b, d, e, sin, cos))
-            }
-            Frame::Geographic { unit_deg } => {
-                let at = self.lonlat_of(pixel)?;
-                let (per_lon, per_lat) = metres_per_degree(&self.body, at.lat);
-                let (x, y) = (per_lon * unit_deg, per_lat * unit_deg);
+            Frame::Geographic { unit_deg, latitude } => {
+                let at = self.unfolded_lonlat_of(pixel)?;
+                let (per_lon, per_lat) = self.body.shape.metres_per_degree(at.lat);
+                let own_lat = self.map_of(pixel).y * unit_deg;
+                let x = per_lon * unit_deg;
+                let y = per_lat * unit_deg * latitude.stretch(self.body.shape, own_lat);
                 (per_lon > 1e-9 * per_lat).then_some(LocalFrame {
                     east_per_col: a * x,
                     east_per_row: b * x,
@@ -199,27 +311,16 @@ impl Place {
                 })
             }
             Frame::Projected { projection, unit_m } => {
-                let at = self.lonlat_of(pixel)?;
-                const H: f64 = 1e-4;
-                if at.lat.abs() > 90.0 - 2.0 * H {
-                    return None;
-                }
-                let diff = |dlon: f64, dlat: f64| -> Option<(f64, f64)> {
-                    let p = projection.to_map(LonLat { lon: at.lon + dlon, lat: at.lat + dlat })?;
-                    let q = projection.to_map(LonLat { lon: at.lon - dlon, lat: at.lat - dlat })?;
-                    Some(((p.x - q.x) / (2.0 * H), (p.y - q.y) / (2.0 * H)))
-                };
-                let (per_lon, per_lat) = metres_per_degree(&self.body, at.lat);
-                let (xe, ye) = diff(H, 0.0).map(|(x, y)| (x / per_lon, y / per_lon))?;
-                let (xn, yn) = diff(0.0, H).map(|(x, y)| (x / per_lat, y / per_lat))?;
-                let det = xe * yn - xn * ye;
+                let at = self.unfolded_lonlat_of(pixel)?;
+                let (east, north) = map_per_ground_metre(projection, self.body.shape, at)?;
+                let det = east.x * north.y - north.x * east.y;
                 if !det.is_finite() || det == 0.0 {
                     return None;
                 }
                 // Rows of J⁻¹ applied to the map steps of one column and one row.
                 let ground = |x: f64, y: f64| {
                     let (x, y) = (x * unit_m, y * unit_m);
-                    ((yn * x - xn * y) / det, (xe * y - ye * x) / det)
+                    ((north.y * x - north.x * y) / det, (east.x * y - east.y * x) / det)
                 };
                 let (east_per_col, north_per_col) = ground(a, d);
                 let (east_per_row, north_per_row) = ground(b, e);
@@ -243,10 +344,51 @@ impl Place {
         };
         Self { affine, frame: self.frame.clone(), body: self.body.clone() }
     }
+
+    /// The map's meaning in words: "UTM zone 33N", "longitude and latitude", "pixels".
+    pub fn frame_in_words(&self) -> String {
+        match &self.frame {
+            Frame::Projected { projection, .. } => projection.in_words(),
+            Frame::Geographic { latitude: LatitudeKind::Planetographic, .. } => {
+                "longitude and latitude".to_owned()
+            }
+            Frame::Geographic { latitude: LatitudeKind::Planetocentric, .. } => {
+                "longitude and planetocentric latitude".to_owned()
+            }
+            Frame::Plane { .. } => "a plane in metres, without a reference system".to_owned(),
+            Frame::Pixels { .. } => "pixels, without ground size".to_owned(),
+        }
+    }
+
+    /// One paragraph for `look`: frame, body, pixel size and where image-up points, at `centre`.
+    pub fn description(&self, centre: Point) -> String {
+        let shape = self.body.shape;
+        let form = if shape.is_sphere() {
+            format!("sphere of {} km", shape.equatorial_m / 1e3)
+        } else {
+            format!("ellipsoid {} × {:.3} km", shape.equatorial_m / 1e3, shape.polar_m / 1e3)
+        };
+        let mut text = self.frame_in_words();
+        if self.is_georeferenced() {
+            text.push_str(&format!("; {}, {form}", self.body.name));
+        }
+        let Some(frame) = self.local_frame(centre) else {
+            return text + "; the raster's centre lies outside the projection's domain";
+        };
+        let [col, row] = frame.pixel_size();
+        let up = frame.azimuth(0.0, -1.0);
+        let hand = if frame.is_mirrored() { "; the image is mirrored" } else { "" };
+        match self.unit() {
+            LengthUnit::Metre => text.push_str(&format!("; pixels of {col:.6} m × {row:.6} m at the centre")),
+            LengthUnit::Pixel => {}
+        }
+        text + &format!("; image-up lies at azimuth {:.3}°{hand}", up.deg())
+    }
 }
 
-/// Plane axes (x right of image-up, y along it) turned so that +y points to the stated azimuth.
-fn turned(a: f64, b: f64, d: f64, e: f64, sin: f64, cos: f64) -> LocalFrame {
+/// Plane axes turned so that +y points to azimuth `north` (radians).
+fn turned(Affine { a, b, d, e, .. }: Affine, north: f64) -> LocalFrame {
+    let (sin, cos) = north.sin_cos();
     LocalFrame {
         east_per_col: a * cos + d * sin,
         east_per_row: b * cos + e * sin,
@@ -255,92 +397,25 @@ fn turned(a: f64, b: f64, d: f64, e: f64, sin: f64, cos: f64) -> LocalFrame {
     }
 }
 
-/// Metres of one degree of longitude and of latitude at planetographic latitude `lat_deg`:
-/// N cos φ and M of the reference ellipsoid, times π/180.
-fn metres_per_degree(body: &Body, lat_deg: f64) -> (f64, f64) {
-    let (a, f) = (body.shape.equatorial_m, body.shape.flattening());
-    let e2 = f * (2.0 - f);
-    let (sin, cos) = lat_deg.to_radians().sin_cos();
-    let w2 = 1.0 - e2 * sin * sin;
-    let prime_vertical = a / w2.sqrt();
-    let meridian = a * (1.0 - e2) / (w2 * w2.sqrt());
-    let degree = std::f64::consts::PI / 180.0;
-    (prime_vertical * cos * degree, meridian * degree)
-}
-
-impl LocalFrame {
-    /// Ground (east, north) of a pixel step.
-    pub fn ground(&self, dcol: f64, drow: f64) -> (f64, f64) {
-        (
-            self.east_per_col * dcol + self.east_per_row * drow,
-            self.north_per_col * dcol + self.north_per_row * drow,
-        )
+/// Map metres per metre of true east and of true north: the columns of J, by central differences
+/// of the forward projection. The step is 1e-4°, of longitude more toward a pole (its degrees
+/// shrink) and of latitude less (so as not to step over the pole).
+fn map_per_ground_metre(projection: &Projection, shape: BodyShape, at: LonLat) -> Option<(Point, Point)> {
+    const STEP: f64 = 1e-4;
+    let dlat = STEP.min(0.25 * (90.0 - at.lat.abs()));
+    let dlon = (STEP / at.lat.to_radians().cos()).min(0.05);
+    // Comparison written so that NaN fails it too.
+    if !(dlat > 1e-9) {
+        return None;
     }
-
-    /// Pixel step (Δcol, Δrow) of a ground vector.
-    pub fn pixel(&self, east: f64, north: f64) -> (f64, f64) {
-        let det = self.determinant();
-        (
-            (self.north_per_row * east - self.east_per_row * north) / det,
-            (self.east_per_col * north - self.north_per_col * east) / det,
-        )
-    }
-
-    /// Ground gradient (∂/∂E, ∂/∂N) of a pixel gradient (∂/∂col, ∂/∂row): M⁻ᵀ g. Wave vectors
-    /// transform the same way.
-    pub fn gradient(&self, per_col: f64, per_row: f64) -> (f64, f64) {
-        let det = self.determinant();
-        (
-            (self.north_per_row * per_col - self.north_per_col * per_row) / det,
-            (self.east_per_col * per_row - self.east_per_row * per_col) / det,
-        )
-    }
-
-    /// True azimuth of a pixel step.
-    pub fn azimuth(&self, dcol: f64, drow: f64) -> Azimuth {
-        let (east, north) = self.ground(dcol, drow);
-        Azimuth::from_east_north(east, north)
-    }
-
-    /// Ground length of a pixel step.
-    pub fn length(&self, dcol: f64, drow: f64) -> f64 {
-        let (east, north) = self.ground(dcol, drow);
-        east.hypot(north)
-    }
-
-    /// Ground size of one column step and one row step.
-    pub fn pixel_size(&self) -> [f64; 2] {
-        [self.length(1.0, 0.0), self.length(0.0, 1.0)]
-    }
-
-    /// Ground area of one pixel.
-    pub fn pixel_area(&self) -> f64 {
-        self.determinant().abs()
-    }
-
-    fn determinant(&self) -> f64 {
-        self.east_per_col * self.north_per_row - self.east_per_row * self.north_per_col
-    }
+    let slope = |dlon: f64, dlat: f64, step_m: f64| -> Option<Point> {
+        let p = projection.to_map_unfolded(LonLat { lon: at.lon + dlon, lat: at.lat + dlat })?;
+        let q = projection.to_map_unfolded(LonLat { lon: at.lon - dlon, lat: at.lat - dlat })?;
+        Some(Point::new((p.x - q.x) / (2.0 * step_m), (p.y - q.y) / (2.0 * step_m)))
+    };
+    let (per_lon, per_lat) = shape.metres_per_degree(at.lat);
+    Some((slope(dlon, 0.0, dlon * per_lon)?, slope(0.0, dlat, dlat * per_lat)?))
 }
 
 #[cfg(test)]
-mod tests {
-    use super::*;
-
-    #[test]
-    fn image_up_points_to_the_stated_north() {
-        let place = Place::pixels(30.0);
-        let frame = place.local_frame(Point::new(5.0, 5.0)).expect("pixels have a frame");
-        assert!((frame.azimuth(0.0, -1.0).deg() - 30.0).abs() < 1e-12);
-        assert!((frame.azimuth(1.0, 0.0).deg() - 120.0).abs() < 1e-12);
-    }
-
-    #[test]
-    fn pixel_and_ground_steps_invert() {
-        let body = Body::earth();
-        let frame = Place::plane([2.0, 3.0], 17.0, body).unwrap().local_frame(Point::new(0.0, 0.0)).unwrap();
-        let (e, n) = frame.ground(1.5, -2.5);
-        let (c, r) = frame.pixel(e, n);
-        assert!((c - 1.5).abs() < 1e-12 && (r + 2.5).abs() < 1e-12);
-    }
-}
+mod tests;

@@ -1,1 +1,3 @@
 //! Numbers from outside the project, each with its source and tolerance.
+
+mod place;

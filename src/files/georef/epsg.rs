@@ -2,7 +2,7 @@
 
 use proj4rs::Proj;
 
-use crate::ground::{Body, BodyShape, Frame, Projection};
+use crate::ground::{Body, BodyShape, Frame, LatitudeKind, Projection};
 
 use super::GeorefError;
 
@@ -21,7 +21,10 @@ pub(super) fn system(code: u16) -> Result<System, GeorefError> {
     let shape = BodyShape { equatorial_m, polar_m };
     let body = Body { shape, ..Body::earth() };
     if proj.is_latlong() {
-        return Ok(System { frame: Frame::Geographic { unit_deg: 1.0 }, body });
+        return Ok(System {
+            frame: Frame::Geographic { unit_deg: 1.0, latitude: LatitudeKind::Planetographic },
+            body,
+        });
     }
     let plain = without_datum(definition, shape);
     let projection = Projection::new(&plain, shape).map_err(|e| refused(e.to_string()))?;
