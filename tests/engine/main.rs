@@ -1,1 +1,3 @@
 //! The engine as a whole: guards, properties, hostile files, the command line.
+
+mod guards;

@@ -51,7 +51,7 @@ impl Dunes {
 
     /// Relative brightening by dunes at a mosaic pixel, about −0.5 … 1.
     pub fn contrast(&self, p: Point) -> f64 {
-        let rough_edge = 14.0 * self.edge.at(p);
+        let rough_edge = (14.0 * self.edge.at(p)).clamp(-22.0, 22.0);
         let long = cover(p, (10.0, 690.0), (-20.0, 575.0), rough_edge);
         let corridor = cover(p, (748.0, 1178.0), (18.0, 478.0), rough_edge);
         let mut contrast = 0.0;
