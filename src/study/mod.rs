@@ -7,7 +7,13 @@ mod settings;
 mod sheet;
 pub mod sheet_file;
 
-pub use findings::*;
+pub use findings::{
+    DriftFinding, Failure, Findings, ModeFinding, Node, PatchFinding, RasterFinding, SeasonFinding, SetAside,
+    SpectrumFinding, SpectrumPicture, TheoryFinding, TrendFinding, VerdictFinding, WindFinding,
+};
 pub use records::{SETTINGS, Setting, SettingKind, SettingValue};
-pub use settings::*;
-pub use sheet::*;
+pub use settings::{
+    Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw, TrendSettings,
+    VerdictSettings, WindSettings,
+};
+pub use sheet::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindEntry};
