@@ -80,3 +80,37 @@ pub struct Figure {
     pub height_mm: f64,
     pub items: Vec<Item>,
 }
+
+impl Figure {
+    /// An empty page of one colour.
+    pub fn blank(width_mm: f64, height_mm: f64, paper: Rgba) -> Self {
+        let corners = [(0.0, 0.0), (width_mm, 0.0), (width_mm, height_mm), (0.0, height_mm)];
+        let points = corners.map(|(x, y)| Point::new(x, y)).to_vec();
+        let page = Item::Path { points, closed: true, fill: Some(paper), stroke: None };
+        Self { width_mm, height_mm, items: vec![page] }
+    }
+
+    /// Adds another figure's items, its upper left corner at `at`.
+    pub fn place(&mut self, part: &Figure, at: Point) {
+        self.items.extend(part.items.iter().map(|item| item.moved(at)));
+    }
+}
+
+impl Item {
+    /// The item moved by a vector.
+    pub fn moved(&self, by: Point) -> Self {
+        let shift = |p: &Point| Point::new(p.x + by.x, p.y + by.y);
+        let mut item = self.clone();
+        match &mut item {
+            Self::Path { points, .. } => points.iter_mut().for_each(|p| *p = shift(p)),
+            Self::Circle { centre, .. } => *centre = shift(centre),
+            Self::Text { at, .. } => *at = shift(at),
+            Self::Image { min, max, .. } => (*min, *max) = (shift(min), shift(max)),
+            Self::Clip { min, max, items } => {
+                (*min, *max) = (shift(min), shift(max));
+                items.iter_mut().for_each(|inner| *inner = inner.moved(by));
+            }
+        }
+        item
+    }
+}

@@ -1,6 +1,21 @@
 //! Plates: findings as figures in millimetres, written as SVG, PNG and PDF. The window paints the
 //! same figures, so that a rose looks the same on screen and in print.
 
+mod bars;
+mod dial;
 mod figure;
+pub mod font;
+pub mod numbers;
+mod rose;
+mod sand_rose;
+mod sketch;
+mod theme;
+mod write;
 
+pub use bars::{posterior_bars, verdict_bar};
+pub use dial::{CLASS_LIMITS_DEG, CLASS_NAMES, dial};
 pub use figure::{Figure, Fill, HALO, Item, Rgba, Stroke, TextAnchor};
+pub use rose::{rose, small_rose};
+pub use sand_rose::sand_rose;
+pub use theme::{TextSizes, Theme, Widths};
+pub use write::{PngSize, WriteError, pdf, png, rgba, svg};

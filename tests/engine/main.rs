@@ -1,3 +1,4 @@
 //! The engine as a whole: guards, properties, hostile files, the command line.
 
 mod guards;
+mod plates;
