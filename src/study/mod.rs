@@ -2,7 +2,9 @@
 
 mod findings;
 pub mod fingerprint;
+pub mod handover;
 mod records;
+mod sentence;
 mod settings;
 mod sheet;
 pub mod sheet_file;

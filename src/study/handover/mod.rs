@@ -1,0 +1,7 @@
+//! What leaves the program: the findings as JSON, tables and layers, the methods as a page.
+
+mod json;
+mod methods;
+
+pub use json::findings_json;
+pub use methods::{bibtex, citation, methods_markdown};

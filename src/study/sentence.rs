@@ -1,0 +1,136 @@
+//! The finding in one plain sentence: what was measured, how sure it is, and the caveat that matters most.
+
+use crate::ground::LengthUnit;
+
+use super::{PatchFinding, SpectrumFinding, TrendFinding, VerdictFinding};
+
+/// The sentence of a patch.
+pub fn of_patch(finding: &PatchFinding) -> String {
+    let mut parts = vec![trend(&finding.trend)];
+    parts.extend(spacing(&finding.spectrum, finding.unit));
+    let mut sentence = format!("{}: {}", finding.name, parts.join(", "));
+    for verdict in &finding.verdicts {
+        sentence.push_str("; ");
+        sentence.push_str(&judged(verdict));
+    }
+    sentence.push('.');
+    sentence
+}
+
+fn trend(t: &TrendFinding) -> String {
+    let (Some(axis), true) = (t.axis, t.defined) else {
+        return match t.rayleigh_p {
+            Some(p) => format!(
+                "no preferred trend (p = {}, resultant length {:.2}, effective n {:.0})",
+                probability(p),
+                t.resultant_length,
+                t.n_eff
+            ),
+            None if t.n == 0 => "no place passes the noise floor, so there is no trend to state".into(),
+            None => format!("too little independent ground to tell a trend (effective n {:.1})", t.n_eff),
+        };
+    };
+    let interval =
+        t.ci95_half_deg.map_or("interval unknown".to_owned(), |half| format!("± {}°", degrees(half)));
+    let strength = match t.resultant_length {
+        r if r >= 0.7 => "strongly aligned",
+        r if r >= 0.4 => "aligned",
+        _ => "weakly aligned",
+    };
+    let mut text = format!("trend {:.0}° {interval} (95 %), {strength}", axis.deg() % 180.0);
+    if t.modes.len() > 1 {
+        let axes: Vec<_> =
+            t.modes.iter().map(|m| format!("{:.0}° ({:.0} %)", m.axis.deg(), 100.0 * m.weight)).collect();
+        text.push_str(&format!(", in {} trends: {}", t.modes.len(), axes.join(", ")));
+    }
+    text
+}
+
+fn spacing(s: &SpectrumFinding, unit: LengthUnit) -> Option<String> {
+    let (Some(spacing), true) = (s.spacing, s.defined) else {
+        return Some("no dominant spacing".into());
+    };
+    let interval = s
+        .spacing_ci95
+        .map_or(String::new(), |[low, high]| format!(" ({} to {})", length(low, unit), length(high, unit)));
+    Some(format!("spacing {}{interval}", length(spacing, unit)))
+}
+
+fn judged(v: &VerdictFinding) -> String {
+    if let Some(reason) = &v.refused {
+        return format!("no verdict on {}: {reason}", v.winds_name);
+    }
+    let (Some(obliquity), Some(classes)) = (v.obliquity_deg, v.probabilities) else {
+        return format!("no verdict on {}", v.winds_name);
+    };
+    let names = ["longitudinal", "oblique", "transverse"];
+    let best = (0..3).max_by(|a, b| classes[*a].total_cmp(&classes[*b])).unwrap_or(1);
+    let interval =
+        v.obliquity_ci95_deg.map_or(String::new(), |[low, high]| format!(" ({low:.0}° to {high:.0}°)"));
+    let theory = v
+        .theories
+        .iter()
+        .max_by(|a, b| a.posterior.total_cmp(&b.posterior))
+        .map_or(String::new(), |t| format!(", best told by “{}” ({:.0} %)", t.name, 100.0 * t.posterior));
+    format!(
+        "{obliquity:.0}°{interval} from the resultant drift of {}: {} with probability {:.0} % (random axis: {:.0} %){theory}",
+        v.winds_name,
+        names[best],
+        100.0 * classes[best],
+        100.0 * v.class_priors[best]
+    )
+}
+
+/// A length with three significant figures, in kilometres from 10 km on.
+fn length(value: f64, unit: LengthUnit) -> String {
+    match unit {
+        LengthUnit::Pixel => format!("{} px", figures(value)),
+        LengthUnit::Metre if value >= 10_000.0 => format!("{} km", figures(value / 1000.0)),
+        LengthUnit::Metre => format!("{} m", figures(value)),
+    }
+}
+
+/// Three significant figures without an exponent.
+fn figures(value: f64) -> String {
+    if !value.is_finite() || value == 0.0 {
+        return value.to_string();
+    }
+    let decimals = 2 - value.abs().log10().floor() as i32;
+    if decimals >= 0 {
+        format!("{value:.*}", decimals as usize)
+    } else {
+        let step = 10f64.powi(-decimals);
+        format!("{:.0}", (value / step).round() * step)
+    }
+}
+
+/// Whole degrees from 10° on, one decimal below.
+fn degrees(half: f64) -> String {
+    if half >= 9.95 { format!("{half:.0}") } else { format!("{half:.1}") }
+}
+
+fn probability(p: f64) -> String {
+    if p < 1e-4 { "below 0.0001".into() } else { format!("{p:.2}") }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn three_figures_without_exponent() {
+        assert_eq!(figures(1763.4), "1760");
+        assert_eq!(figures(17.634), "17.6");
+        assert_eq!(figures(0.17634), "0.176");
+        assert_eq!(figures(99.96), "100.0");
+        assert_eq!(length(12_345.0, LengthUnit::Metre), "12.3 km");
+    }
+
+    #[test]
+    fn an_undefined_trend_is_a_sentence_not_a_number() {
+        let trend = TrendFinding { rayleigh_p: Some(0.4), n: 100, n_eff: 31.0, ..Default::default() };
+        let text = super::trend(&trend);
+        assert!(text.starts_with("no preferred trend (p = 0.40"), "{text}");
+        assert!(!text.contains('°'), "{text}");
+    }
+}
