@@ -1,3 +1,4 @@
 //! Numbers from outside the project, each with its source and tolerance.
 
+mod axial;
 mod place;

@@ -1,6 +1,35 @@
-//! The axial family.
+//! Statistics of axes: everything runs on the doubled angle and is halved on the way out, except κ.
+//!
+//! The functions take circle angles φ in radians, so that they serve directions too. [`summarise`]
+//! is the face for the executor.
+
+pub mod blocks;
+pub mod density;
+pub mod effective;
+pub mod interval;
+pub mod kappa;
+pub mod mean;
+pub mod rayleigh;
+pub mod rose;
+mod sources;
+pub mod spread;
+mod summary;
+pub mod v_test;
+
+pub use summary::{AxialSample, Interval, Nodes, Summary, SummarySettings, summarise};
 
 use crate::ground::Method;
 
 /// The methods of this family.
-pub const METHODS: &[&Method] = &[];
+pub const METHODS: &[&Method] = &[
+    &mean::METHOD,
+    &spread::METHOD,
+    &kappa::METHOD,
+    &rayleigh::METHOD,
+    &v_test::METHOD,
+    &interval::METHOD,
+    &effective::METHOD,
+    &blocks::METHOD,
+    &density::METHOD,
+    &rose::METHOD,
+];
