@@ -1,11 +1,16 @@
 //! Mathematics without meaning: special functions, tails of distributions, sums in a fixed order,
-//! quantiles, roots and maxima.
+//! quantiles, roots and maxima, kernels, transforms, small matrices.
 
 pub mod bessel;
+pub mod eigen;
+pub mod fft;
 pub mod gamma;
+pub mod gauss;
 pub mod lattice;
 pub mod maximum;
 pub mod quantile;
 pub mod root;
+pub mod separable;
 pub mod sum;
 pub mod tail;
+pub mod taper;

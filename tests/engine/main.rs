@@ -3,3 +3,4 @@
 mod docs;
 mod guards;
 mod plates;
+mod gratings;

@@ -1,6 +1,15 @@
-//! The orientation family.
+//! Trend and spacing of a texture: the structure tensor, windowed spectra, and what speckle and
+//! illumination do to both.
+
+mod contrast;
+mod gradient;
+pub mod noise;
+mod tensor;
+
+pub use gradient::Tone;
+pub use tensor::{NodeField, TensorSettings, TrendNode, trend_nodes};
 
 use crate::ground::Method;
 
 /// The methods of this family.
-pub const METHODS: &[&Method] = &[];
+pub const METHODS: &[&Method] = &[&tensor::METHOD, &noise::METHOD];
