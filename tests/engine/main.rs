@@ -1,6 +1,6 @@
 //! The engine as a whole: guards, properties, hostile files, the command line.
 
 mod docs;
+mod gratings;
 mod guards;
 mod plates;
-mod gratings;
