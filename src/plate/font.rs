@@ -6,7 +6,7 @@
 use std::sync::LazyLock;
 
 use rustybuzz::ttf_parser::{GlyphId, OutlineBuilder};
-use rustybuzz::{Face, UnicodeBuffer};
+use rustybuzz::{BufferClusterLevel, Face, UnicodeBuffer};
 
 /// The family name written into SVG.
 pub const FAMILY: &str = "IBM Plex Sans";
@@ -19,74 +19,115 @@ pub const CAP_HEIGHT: f64 = 0.698;
 static FACES: LazyLock<[Option<Face<'static>>; 2]> =
     LazyLock::new(|| [Face::from_slice(REGULAR, 0), Face::from_slice(BOLD, 0)]);
 
+/// One glyph of a shaped line, in thousandths of the text size.
+#[derive(Clone, Debug, PartialEq)]
+pub(super) struct Glyph {
+    pub id: u16,
+    /// The characters it stands for.
+    pub text: String,
+    pub advance: f64,
+    /// Where it is drawn relative to the pen, y up.
+    pub offset: (f64, f64),
+}
+
+/// The parsed face.
+pub(super) fn face(bold: bool) -> Option<&'static Face<'static>> {
+    FACES[usize::from(bold)].as_ref()
+}
+
+/// One line of text as glyphs from left to right, kerned.
+pub(super) fn shape(text: &str, bold: bool) -> Vec<Glyph> {
+    // The bytes are part of the program, so the faces always parse (a test says so).
+    let Some(face) = face(bold) else { return Vec::new() };
+    let mut buffer = UnicodeBuffer::new();
+    buffer.set_cluster_level(BufferClusterLevel::Characters);
+    buffer.push_str(text);
+    let shaped = rustybuzz::shape(face, &[], buffer);
+    let scale = 1000.0 / f64::from(face.units_per_em());
+    let (infos, positions) = (shaped.glyph_infos(), shaped.glyph_positions());
+    let mut starts: Vec<usize> = infos.iter().map(|g| g.cluster as usize).collect();
+    starts.push(text.len());
+    starts.sort_unstable();
+    starts.dedup();
+    let part = |start: usize| {
+        let end = starts.iter().copied().find(|s| *s > start).unwrap_or(text.len());
+        text.get(start..end).unwrap_or_default().to_owned()
+    };
+    infos
+        .iter()
+        .zip(positions)
+        .map(|(glyph, at)| Glyph {
+            id: u16::try_from(glyph.glyph_id).unwrap_or(0),
+            text: part(glyph.cluster as usize),
+            advance: f64::from(at.x_advance) * scale,
+            offset: (f64::from(at.x_offset) * scale, f64::from(at.y_offset) * scale),
+        })
+        .collect()
+}
+
 /// Advance width of one line of text, millimetres.
 pub fn text_width(text: &str, size_mm: f64, bold: bool) -> f64 {
-    // The bytes are part of the program, so the faces always parse (a test says so).
-    let Some(face) = &FACES[usize::from(bold)] else { return 0.0 };
-    let mut buffer = UnicodeBuffer::new();
-    buffer.push_str(text);
-    let shaped = rustybuzz::shape(face, &[], buffer);
-    let advance: i64 = shaped.glyph_positions().iter().map(|g| i64::from(g.x_advance)).sum();
-    advance as f64 / f64::from(face.units_per_em()) * size_mm
+    shape(text, bold).iter().map(|g| g.advance).sum::<f64>() / 1000.0 * size_mm
 }
 
-/// The letters of one line as SVG path data in millimetres, y down, from the anchor (0, 0).
-pub(super) fn outline(text: &str, size_mm: f64, bold: bool) -> String {
-    let Some(face) = &FACES[usize::from(bold)] else { return String::new() };
-    let mut buffer = UnicodeBuffer::new();
-    buffer.push_str(text);
-    let shaped = rustybuzz::shape(face, &[], buffer);
+/// A step of a letter's outline, millimetres, y down.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub(super) enum Segment {
+    Move([f64; 2]),
+    Line([f64; 2]),
+    Quad([f64; 2], [f64; 2]),
+    Cubic([f64; 2], [f64; 2], [f64; 2]),
+    Close,
+}
+
+/// The outlines of one line's letters, from the anchor (0, 0) on the baseline.
+pub(super) fn outline(text: &str, size_mm: f64, bold: bool) -> Vec<Segment> {
+    let Some(face) = face(bold) else { return Vec::new() };
+    let to_units = f64::from(face.units_per_em()) / 1000.0;
     let scale = size_mm / f64::from(face.units_per_em());
-    let mut pen = OutlinePen { data: String::new(), scale, x: 0.0, y: 0.0 };
-    let (mut x, mut y) = (0i32, 0i32);
-    for (glyph, at) in shaped.glyph_infos().iter().zip(shaped.glyph_positions()) {
-        (pen.x, pen.y) = (f64::from(x + at.x_offset), f64::from(y + at.y_offset));
-        if let Ok(id) = u16::try_from(glyph.glyph_id) {
-            face.outline_glyph(GlyphId(id), &mut pen);
-        }
-        (x, y) = (x + at.x_advance, y + at.y_advance);
+    let mut pen = OutlinePen { segments: Vec::new(), scale, x: 0.0, y: 0.0 };
+    let mut x = 0.0;
+    for glyph in shape(text, bold) {
+        (pen.x, pen.y) = ((x + glyph.offset.0) * to_units, glyph.offset.1 * to_units);
+        face.outline_glyph(GlyphId(glyph.id), &mut pen);
+        x += glyph.advance;
     }
-    pen.data
+    pen.segments
 }
 
-/// Collects glyph outlines as path data.
+/// Collects the outlines of glyphs set side by side.
 struct OutlinePen {
-    data: String,
+    segments: Vec<Segment>,
     scale: f64,
     x: f64,
     y: f64,
 }
 
 impl OutlinePen {
-    fn push(&mut self, letter: char, points: &[(f32, f32)]) {
-        self.data.push(letter);
-        for (i, (x, y)) in points.iter().enumerate() {
-            let (px, py) = ((self.x + f64::from(*x)) * self.scale, -(self.y + f64::from(*y)) * self.scale);
-            let blank = if i == 0 { "" } else { " " };
-            self.data.push_str(&format!("{blank}{px:.4} {py:.4}"));
-        }
+    fn at(&self, x: f32, y: f32) -> [f64; 2] {
+        [(self.x + f64::from(x)) * self.scale, -(self.y + f64::from(y)) * self.scale]
     }
 }
 
 impl OutlineBuilder for OutlinePen {
     fn move_to(&mut self, x: f32, y: f32) {
-        self.push('M', &[(x, y)]);
+        self.segments.push(Segment::Move(self.at(x, y)));
     }
 
     fn line_to(&mut self, x: f32, y: f32) {
-        self.push('L', &[(x, y)]);
+        self.segments.push(Segment::Line(self.at(x, y)));
     }
 
     fn quad_to(&mut self, x1: f32, y1: f32, x: f32, y: f32) {
-        self.push('Q', &[(x1, y1), (x, y)]);
+        self.segments.push(Segment::Quad(self.at(x1, y1), self.at(x, y)));
     }
 
     fn curve_to(&mut self, x1: f32, y1: f32, x2: f32, y2: f32, x: f32, y: f32) {
-        self.push('C', &[(x1, y1), (x2, y2), (x, y)]);
+        self.segments.push(Segment::Cubic(self.at(x1, y1), self.at(x2, y2), self.at(x, y)));
     }
 
     fn close(&mut self) {
-        self.data.push('Z');
+        self.segments.push(Segment::Close);
     }
 }
 
@@ -147,6 +188,14 @@ mod tests {
     #[test]
     fn the_bundled_faces_parse_and_cover_what_plates_say() {
         assert!(covers("κχφλρσθμΔ±×°≥≤·–—−²³½√π→←″′…R\u{304}“”"));
+    }
+
+    #[test]
+    fn glyphs_know_their_characters() {
+        let said: String = shape("R\u{304} fi 84°", false).iter().map(|g| g.text.as_str()).collect();
+        assert_eq!(said, "R\u{304} fi 84°");
+        let macron = &shape("R\u{304}", false)[1];
+        assert_eq!((macron.advance, macron.text.as_str()), (0.0, "\u{304}"));
     }
 
     #[test]

@@ -195,6 +195,7 @@ fn small_figures_render_the_same_bytes_twice_and_have_every_glyph() {
         assert_eq!(svg(&page), svg(&contact_sheet(&small_figures(&theme), 3, &theme)));
         let size = PngSize::WidthPx(500);
         assert!(png(&page, size) == png(&page, size), "PNG bytes differ");
+        assert!(pdf(&page) == pdf(&page), "PDF bytes differ");
         for text in texts(&page.items) {
             assert!(font::covers(&text), "no glyph for a character of {text:?}");
         }

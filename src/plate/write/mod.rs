@@ -1,7 +1,9 @@
-//! Figures to bytes: SVG as text, PNG and PDF through one renderer with the bundled typeface only.
+//! Figures to bytes: SVG as text, PNG through a renderer that knows the bundled typeface only, PDF
+//! written directly.
 
 mod bitmap;
 mod pdf;
+mod pdf_font;
 mod svg;
 
 use std::sync::{Arc, LazyLock};
@@ -38,12 +40,18 @@ static FONTS: LazyLock<Arc<usvg::fontdb::Database>> = LazyLock::new(|| {
     Arc::new(fonts)
 });
 
+/// Refuses a figure that has no area.
+fn check_area(figure: &Figure) -> Result<(), WriteError> {
+    let (width_mm, height_mm) = (figure.width_mm, figure.height_mm);
+    if width_mm > 0.0 && height_mm > 0.0 && width_mm.is_finite() && height_mm.is_finite() {
+        return Ok(());
+    }
+    Err(WriteError::NoArea { width_mm, height_mm })
+}
+
 /// The figure as the renderer's tree, in CSS pixels.
 fn tree(figure: &Figure) -> Result<usvg::Tree, WriteError> {
-    let (width_mm, height_mm) = (figure.width_mm, figure.height_mm);
-    if !(width_mm > 0.0 && height_mm > 0.0 && width_mm.is_finite() && height_mm.is_finite()) {
-        return Err(WriteError::NoArea { width_mm, height_mm });
-    }
+    check_area(figure)?;
     let options = usvg::Options {
         fontdb: FONTS.clone(),
         font_family: font::FAMILY.into(),
@@ -51,4 +59,15 @@ fn tree(figure: &Figure) -> Result<usvg::Tree, WriteError> {
         ..usvg::Options::default()
     };
     usvg::Tree::from_str(&svg(figure), &options).map_err(|e| WriteError::Render(e.to_string()))
+}
+
+/// zlib, always at the same level.
+fn deflated(data: &[u8]) -> Vec<u8> {
+    let level = libdeflater::CompressionLvl::default();
+    let mut compressor = libdeflater::Compressor::new(level);
+    let mut out = vec![0; compressor.zlib_compress_bound(data.len())];
+    // The bound is the library's own, so there is always room.
+    let written = compressor.zlib_compress(data, &mut out).unwrap_or(0);
+    out.truncate(written);
+    out
 }

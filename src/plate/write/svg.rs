@@ -3,7 +3,8 @@
 use std::fmt::Write as _;
 
 use crate::ground::Point;
-use crate::plate::{Figure, Fill, HALO, Item, Rgba, Stroke, TextAnchor, font};
+use crate::plate::font::{self, Segment};
+use crate::plate::{Figure, Fill, HALO, Item, Rgba, Stroke, TextAnchor};
 
 /// The figure as an SVG document. The same figure gives the same bytes.
 pub fn svg(figure: &Figure) -> String {
@@ -134,7 +135,7 @@ impl Writer<'_> {
 
     /// The letters' outlines, stroked and filled in the halo's colour.
     fn halo(&mut self, at: Point, text: &str, look: TextLook, halo: Rgba, anchor: TextAnchor, turn_deg: f64) {
-        let data = font::outline(text, look.size_mm, look.bold);
+        let data = path_data(&font::outline(text, look.size_mm, look.bold));
         if data.is_empty() {
             return;
         }
@@ -176,8 +177,25 @@ struct TextLook {
     halo: Option<Rgba>,
 }
 
+fn path_data(outline: &[Segment]) -> String {
+    let mut data = String::new();
+    for segment in outline {
+        let (letter, points): (char, &[[f64; 2]]) = match segment {
+            Segment::Move(p) => ('M', &[*p]),
+            Segment::Line(p) => ('L', &[*p]),
+            Segment::Quad(c, p) => ('Q', &[*c, *p]),
+            Segment::Cubic(c, d, p) => ('C', &[*c, *d, *p]),
+            Segment::Close => ('Z', &[]),
+        };
+        data.push(letter);
+        let numbers: Vec<String> = points.iter().flatten().map(|v| number(*v)).collect();
+        data.push_str(&numbers.join(" "));
+    }
+    data
+}
+
 /// Ten-thousandths of a millimetre, without trailing zeros; what is not finite becomes 0.
-pub(in crate::plate) fn number(value: f64) -> String {
+fn number(value: f64) -> String {
     let value = if value.is_finite() { value } else { 0.0 };
     let text = format!("{value:.4}");
     let text = text.trim_end_matches('0').trim_end_matches('.');
