@@ -5,7 +5,7 @@ use crate::ground::{Axis, Point};
 use crate::study::TrendFinding;
 
 use super::sketch::{Sketch, Type, arc, sector, toward};
-use super::{Figure, TextAnchor, Theme, numbers};
+use super::{Figure, Stroke, TextAnchor, Theme, numbers};
 
 /// What a rose shows, free of any size.
 #[derive(Debug, PartialEq)]
@@ -43,7 +43,8 @@ pub fn rose(trend: &TrendFinding, size_mm: f64, theme: &Theme) -> Figure {
     };
     let mut sketch = Sketch::default();
     frame(&mut sketch, &model, &layout, theme);
-    petals(&mut sketch, &model, &layout, theme);
+    let edge = theme.stroke(theme.paper, theme.widths.hair);
+    petals(&mut sketch, &model, &layout, Some(edge), theme);
     labels(&mut sketch, &model, &layout, theme);
     mean(&mut sketch, &model, &layout, theme, theme.widths.bold);
 
@@ -75,7 +76,7 @@ pub fn small_rose(trend: &TrendFinding, size_mm: f64, theme: &Theme) -> Figure {
     };
     let mut sketch = Sketch::default();
     sketch.circle(layout.centre, rim, None, Some(theme.stroke(theme.rule, theme.widths.hair)));
-    petals(&mut sketch, &model, &layout, theme);
+    petals(&mut sketch, &model, &layout, None, theme);
     mean(&mut sketch, &model, &layout, theme, 0.5 * theme.widths.bold);
     sketch.finish(size_mm, size_mm)
 }
@@ -127,16 +128,15 @@ fn frame(sketch: &mut Sketch, model: &Model, at: &Layout, theme: &Theme) {
     }
 }
 
-fn petals(sketch: &mut Sketch, model: &Model, at: &Layout, theme: &Theme) {
+fn petals(sketch: &mut Sketch, model: &Model, at: &Layout, edge: Option<Stroke>, theme: &Theme) {
     let fill = match model.mean {
         Some(_) => theme.tint(theme.measured, 0.38),
         None => theme.tint(theme.ink_soft, 0.35),
     };
-    let edge = theme.stroke(theme.paper, theme.widths.hair);
     for (from, to, radius) in &model.petals {
         for turn in [0.0, 180.0] {
             let outline = sector(at.centre, 0.0, radius * at.rim, from + turn, to + turn);
-            sketch.polygon(outline, Some(fill), Some(edge));
+            sketch.polygon(outline, Some(fill), edge);
         }
     }
 }
