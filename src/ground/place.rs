@@ -212,6 +212,15 @@ impl Place {
         Ok(place)
     }
 
+    /// The same raster when its latitudes are of `kind`, which a file can hardly say; only
+    /// geographic frames have a choice.
+    pub fn with_latitude(mut self, kind: LatitudeKind) -> Self {
+        if let Frame::Geographic { latitude, .. } = &mut self.frame {
+            *latitude = kind;
+        }
+        self
+    }
+
     pub fn unit(&self) -> LengthUnit {
         match self.frame {
             Frame::Pixels { .. } => LengthUnit::Pixel,

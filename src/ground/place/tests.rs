@@ -156,6 +156,14 @@ fn west_longitudes_mirror_azimuths() {
 }
 
 #[test]
+fn latitudes_of_the_other_kind_move_north_on_an_ellipsoid() {
+    let affine = Affine { a: 0.1, b: 0.0, c: 0.0, d: 0.0, e: -0.1, f: 44.661_768_05 };
+    let place = geographic(affine, Body::mars().shape, LatitudeKind::Planetographic);
+    let moved = place.with_latitude(LatitudeKind::Planetocentric);
+    assert_close!(moved.lonlat_of(Point::new(0.0, 0.0)).expect("inside").lat, 45.0, 1e-5, "latitude");
+}
+
+#[test]
 fn a_description_says_where_up_is() {
     let affine = Affine { a: -30.0, b: 0.0, c: 5e5, d: 0.0, e: 30.0, f: 5.8e6 };
     let place = projected("+proj=utm +zone=33", Body::earth().shape, affine);
