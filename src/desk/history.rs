@@ -8,7 +8,7 @@ pub enum MergeKey {
     Outline(Id),
     Tone(Id),
     Setting(&'static str),
-    Height(Id),
+    Mast(Id),
 }
 
 /// The sheets before and after now.

@@ -2,15 +2,25 @@
 
 mod ask;
 mod draw;
+mod measure;
 mod patch;
+mod plate;
+mod raster;
+mod setting;
 mod sheet;
 mod view;
+mod wind;
 
 pub use ask::AskCommand;
 pub use draw::DrawCommand;
+pub use measure::MeasureCommand;
 pub use patch::PatchCommand;
+pub use plate::PlateCommand;
+pub use raster::RasterCommand;
+pub use setting::SettingCommand;
 pub use sheet::SheetCommand;
 pub use view::ViewCommand;
+pub use wind::WindCommand;
 
 use std::fmt;
 
@@ -21,8 +31,13 @@ use super::{MergeKey, Model};
 pub enum Command {
     Sheet(SheetCommand),
     Ask(AskCommand),
+    Raster(RasterCommand),
     Patch(PatchCommand),
     Draw(DrawCommand),
+    Wind(WindCommand),
+    Setting(SettingCommand),
+    Measure(MeasureCommand),
+    Plate(PlateCommand),
     View(ViewCommand),
 }
 
@@ -92,8 +107,13 @@ impl Command {
         match self {
             Self::Sheet(c) => c.record(),
             Self::Ask(c) => c.record(),
+            Self::Raster(c) => c.record(),
             Self::Patch(c) => c.record(),
             Self::Draw(c) => c.record(),
+            Self::Wind(c) => c.record(),
+            Self::Setting(c) => c.record(),
+            Self::Measure(c) => c.record(),
+            Self::Plate(c) => c.record(),
             Self::View(c) => c.record(),
         }
     }
@@ -103,8 +123,13 @@ impl Command {
         match self {
             Self::Sheet(c) => c.refusal(model),
             Self::Ask(c) => c.refusal(model),
+            Self::Raster(c) => c.refusal(model),
             Self::Patch(c) => c.refusal(model),
             Self::Draw(c) => c.refusal(model),
+            Self::Wind(c) => c.refusal(model),
+            Self::Setting(c) => c.refusal(model),
+            Self::Measure(c) => c.refusal(model),
+            Self::Plate(c) => c.refusal(model),
             Self::View(c) => c.refusal(model),
         }
     }
@@ -112,8 +137,16 @@ impl Command {
     /// Commands with equal keys that follow one another are one undo step.
     fn merge_key(&self) -> Option<MergeKey> {
         match self {
+            Self::Raster(c) => c.merge_key(),
             Self::Patch(c) => c.merge_key(),
-            Self::Sheet(_) | Self::Ask(_) | Self::Draw(_) | Self::View(_) => None,
+            Self::Wind(c) => c.merge_key(),
+            Self::Setting(c) => c.merge_key(),
+            Self::Sheet(_)
+            | Self::Ask(_)
+            | Self::Draw(_)
+            | Self::Measure(_)
+            | Self::Plate(_)
+            | Self::View(_) => None,
         }
     }
 
@@ -126,10 +159,16 @@ impl Command {
 /// The commands that need no further data, in the order of the finder.
 pub fn listed() -> Vec<Command> {
     let sheet = SheetCommand::LISTED.iter().cloned().map(Command::Sheet);
+    let raster = RasterCommand::LISTED.iter().cloned().map(Command::Raster);
+    let wind = WindCommand::LISTED.iter().cloned().map(Command::Wind);
+    let measure = MeasureCommand::LISTED.iter().cloned().map(Command::Measure);
+    let plate = PlateCommand::LISTED.iter().cloned().map(Command::Plate);
+    let setting = SettingCommand::LISTED.iter().cloned().map(Command::Setting);
     let draw = DrawCommand::LISTED.iter().cloned().map(Command::Draw);
     let patch = PatchCommand::LISTED.iter().cloned().map(Command::Patch);
     let view = ViewCommand::LISTED.iter().cloned().map(Command::View);
-    sheet.chain(draw).chain(patch).chain(view).collect()
+    let making = sheet.chain(raster).chain(wind).chain(draw).chain(patch);
+    making.chain(measure).chain(plate).chain(setting).chain(view).collect()
 }
 
 /// Does what `command` asks. The only way the sheet and the view change.
@@ -147,13 +186,19 @@ pub fn apply(model: &mut Model, command: Command) {
     match command {
         Command::Sheet(c) => c.apply(model),
         Command::Ask(c) => c.apply(model),
+        Command::Raster(c) => c.apply(model),
         Command::Patch(c) => c.apply(model),
         Command::Draw(c) => c.apply(model),
+        Command::Wind(c) => c.apply(model),
+        Command::Setting(c) => c.apply(model),
+        Command::Measure(c) => c.apply(model),
+        Command::Plate(c) => c.apply(model),
         Command::View(c) => c.apply(model),
     }
     if record.editing {
         model.session.history.forget_if_unchanged(&model.sheet);
     }
+    model.keep_up();
 }
 
 #[cfg(test)]

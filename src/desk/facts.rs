@@ -1,0 +1,221 @@
+//! The evidence as rows of label and value, page by page; the window sets them in type.
+
+use crate::ground::LengthUnit;
+use crate::plate::numbers;
+use crate::study::{DriftFinding, PatchFinding, VerdictFinding, WindFinding};
+
+/// One row of a bench page.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Fact {
+    pub label: &'static str,
+    pub value: String,
+    /// What the number is, for hovering.
+    pub hint: &'static str,
+}
+
+fn fact(label: &'static str, value: impl Into<String>, hint: &'static str) -> Fact {
+    Fact { label, value: value.into(), hint }
+}
+
+/// The trend page.
+pub fn trend(finding: &PatchFinding) -> Vec<Fact> {
+    let t = &finding.trend;
+    let mut facts = vec![fact(
+        "Trend",
+        super::ledger::trend_words(finding),
+        "Mean axis of the structure tensor, clockwise from true north, with its 95 % interval.",
+    )];
+    if t.ci95_half_deg.is_some() {
+        facts.push(fact("Interval from", t.ci95_source, "How the 95 % interval was made."));
+    }
+    facts.push(fact(
+        "Test for a trend",
+        t.rayleigh_p.map_or("not possible".into(), numbers::p_value),
+        "Rayleigh test on the effective number of samples: how often axes without preference would look as aligned.",
+    ));
+    facts.push(fact(
+        "Resultant length",
+        numbers::fixed(t.resultant_length, 3),
+        "Of the doubled angle: 0 = no alignment, 1 = all axes equal.",
+    ));
+    if let Some(kappa) = t.kappa_doubled {
+        facts.push(fact("κ (doubled angle)", numbers::significant(kappa, 3), "Concentration of the axes."));
+    }
+    if let Some(spread) = t.spread_deg {
+        facts.push(fact("Spread", degrees(spread), "Axial standard deviation."));
+    }
+    facts.push(fact(
+        "Nodes used",
+        format!("{} of {}", t.n, t.n_all),
+        "Places that passed the noise floor, of all places looked at.",
+    ));
+    facts.push(fact(
+        "Effective samples",
+        numbers::significant(t.n_eff, 3),
+        "Pixels are not samples: neighbours say the same thing.",
+    ));
+    if let Some(length) = t.correlation_length {
+        facts.push(fact(
+            "Correlation length",
+            numbers::length(length, finding.unit, 3),
+            "Distance over which the trend field forgets itself.",
+        ));
+    }
+    facts.push(fact(
+        "Scales",
+        format!(
+            "gradient {} px, integration {} px, nodes every {} px",
+            numbers::plain(t.gradient_scale_px, 1),
+            numbers::plain(t.integration_scale_px, 1),
+            numbers::plain(t.node_step_px, 1)
+        ),
+        "As used; settings left open follow the spacing.",
+    ));
+    facts.push(fact(
+        "Coherence floor",
+        numbers::fixed(t.coherence_floor, 3),
+        "Coherence that pure noise reaches; nodes below it are not used.",
+    ));
+    facts
+}
+
+/// The spacing page.
+pub fn spacing(finding: &PatchFinding) -> Vec<Fact> {
+    let s = &finding.spectrum;
+    let spacing = s.spacing.map_or_else(
+        || "no dominant spacing".to_owned(),
+        |value| numbers::length_with_interval(value, s.spacing_ci95, finding.unit),
+    );
+    let mut facts =
+        vec![fact("Spacing", spacing, "Dominant wavelength across the crests, with its 95 % interval.")];
+    if let Some(axis) = s.axis {
+        facts.push(fact(
+            "Trend of the peak",
+            numbers::axis_with_interval(axis, s.axis_ci95_half_deg),
+            "Trend by the spectrum: a second opinion on the structure tensor.",
+        ));
+    }
+    if let Some(p) = s.p {
+        facts.push(fact("Chance of such a peak", numbers::p_value(p), "Over the whole search range."));
+    }
+    if let Some(spread) = s.spread_deg {
+        facts.push(fact("Spread of the peak", degrees(spread), "Angular width of the peak."));
+    }
+    facts.push(fact(
+        "Windows",
+        format!("{} of {} show the peak, {} px a side", s.windows_with_peak, s.windows, s.window_px),
+        "Squares inside the patch whose spectra are averaged.",
+    ));
+    if let Some(cycles) = s.cycles {
+        facts.push(fact(
+            "Wavelengths a window",
+            numbers::plain(cycles, 1),
+            "Fewer than about four make a spacing doubtful.",
+        ));
+    }
+    facts
+}
+
+/// The winds page.
+pub fn winds(finding: &WindFinding) -> Vec<Fact> {
+    let rows = format!("{} used of {}, {} calm", finding.used, finding.rows, finding.calm);
+    let mut facts = vec![fact("Record", rows, "Rows after quality control.")];
+    if let Some([first, last]) = finding.span {
+        let years = (last - first) as f64 / (365.25 * 86_400.0);
+        facts.push(fact(
+            "Span",
+            format!("{} years", numbers::significant(years, 3)),
+            "From the first to the last row.",
+        ));
+    }
+    if let Some(step) = finding.interval_s {
+        let hours = numbers::significant(step / 3600.0, 3);
+        facts.push(fact("Interval", format!("{hours} h"), "Usual time between rows."));
+    }
+    facts.push(fact("Transport law", finding.law.clone(), "Turns wind into moving sand."));
+    facts.push(fact(
+        "Threshold",
+        format!(
+            "{} m/s at the mast (u* {} m/s)",
+            numbers::significant(finding.threshold_speed_at_height, 3),
+            numbers::significant(finding.threshold_ustar, 3)
+        ),
+        "Wind at which sand starts to move.",
+    ));
+    facts.extend(drift("Sand flux", &finding.flux));
+    if let Some(earth) = &finding.fryberger {
+        facts.extend(drift("Drift potential", earth));
+    }
+    facts
+}
+
+fn drift(name: &'static str, drift: &DriftFinding) -> Vec<Fact> {
+    let mut facts = vec![fact(
+        name,
+        format!("{} {}", numbers::significant(drift.total, 3), drift.unit),
+        "Sum over all directions.",
+    )];
+    if let Some(toward) = drift.toward {
+        facts.push(fact(
+            "Resultant toward",
+            numbers::azimuth_with_interval(toward, drift.toward_ci95_half_deg),
+            "Where the sand goes on balance, with its 95 % bootstrap interval.",
+        ));
+    }
+    if let Some(ratio) = drift.ratio {
+        let interval = drift
+            .ratio_ci95
+            .map(|[lo, hi]| format!(" ({} to {})", numbers::fixed(lo, 2), numbers::fixed(hi, 2)))
+            .unwrap_or_default();
+        facts.push(fact(
+            "Resultant / total",
+            numbers::fixed(ratio, 2) + &interval,
+            "1 = one direction, 0 = directions cancel.",
+        ));
+    }
+    facts
+}
+
+/// The verdict page, for one wind record.
+pub fn verdict(verdict: &VerdictFinding) -> Vec<Fact> {
+    let mut facts = Vec::new();
+    if let Some(toward) = verdict.toward {
+        facts.push(fact(
+            "Sand goes toward",
+            numbers::azimuth_with_interval(toward, None),
+            "Resultant drift direction of the record.",
+        ));
+    }
+    if let Some(obliquity) = verdict.obliquity_deg {
+        let interval = verdict
+            .obliquity_ci95_deg
+            .map(|[lo, hi]| format!(" ({}° to {}°)", numbers::fixed(lo, 0), numbers::fixed(hi, 0)))
+            .unwrap_or_default();
+        facts.push(fact(
+            "Obliquity",
+            format!("{}°{interval}", numbers::fixed(obliquity, 1)),
+            "Angle between the trend and the resultant: 0° along, 90° across.",
+        ));
+    }
+    if let Some(strength) = verdict.alignment_strength {
+        facts.push(fact(
+            "Alignment strength",
+            numbers::fixed(strength, 2),
+            "How much better the best trend is than the worst; near 0 any trend would do.",
+        ));
+    }
+    facts
+}
+
+/// Area with its unit squared.
+pub fn area(value: f64, unit: LengthUnit) -> String {
+    match unit {
+        LengthUnit::Metre if value >= 1e5 => format!("{} km²", numbers::significant(value / 1e6, 3)),
+        LengthUnit::Metre => format!("{} m²", numbers::significant(value, 3)),
+        LengthUnit::Pixel => format!("{} px²", numbers::significant(value, 3)),
+    }
+}
+
+fn degrees(value: f64) -> String {
+    format!("{}°", numbers::fixed(value, 1))
+}

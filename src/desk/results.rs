@@ -1,0 +1,104 @@
+//! What was measured, kept with the fingerprint of what made it: a result that the sheet has moved
+//! away from is shown as out of date, never hidden.
+
+use std::collections::BTreeMap;
+
+use crate::study::{Id, PatchFinding, Sheet, WindFinding, fingerprint};
+
+/// All results of the session.
+#[derive(Debug, Default)]
+pub struct Results {
+    patches: BTreeMap<Id, Measured>,
+    winds: BTreeMap<Id, Result<WindFinding, String>>,
+    /// Fingerprints of the patches as the sheet stands now.
+    now: BTreeMap<Id, String>,
+}
+
+/// The latest measurement of a patch.
+#[derive(Debug)]
+pub struct Measured {
+    /// The finding, or why there is none.
+    pub outcome: Result<PatchFinding, String>,
+    /// Of what was measured, even when it failed.
+    pub fingerprint: String,
+    /// Measured on the full raster, not on the quick reduced one.
+    pub exact: bool,
+}
+
+/// How far a patch's result may be relied on.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Standing {
+    Unmeasured,
+    /// Exact, and the sheet is still as measured.
+    Current,
+    /// A quick look at a reduced raster; the exact one follows.
+    Coarse,
+    /// The sheet has moved on.
+    OutOfDate,
+    Failed,
+}
+
+impl Results {
+    /// Takes note of how the sheet stands; call after each change of it.
+    pub fn follow(&mut self, sheet: &Sheet) {
+        self.now = sheet.patches.iter().map(|p| (p.id, fingerprint::of_patch(sheet, p))).collect();
+        self.winds.retain(|id, _| sheet.wind(*id).is_some());
+    }
+
+    pub fn take_patch(&mut self, id: Id, measured: Measured) {
+        self.patches.insert(id, measured);
+    }
+
+    pub fn take_wind(&mut self, id: Id, outcome: Result<WindFinding, String>) {
+        self.winds.insert(id, outcome);
+    }
+
+    /// The finding of a patch, current or not.
+    pub fn patch(&self, id: Id) -> Option<&PatchFinding> {
+        self.patches.get(&id)?.outcome.as_ref().ok()
+    }
+
+    pub fn measured(&self, id: Id) -> Option<&Measured> {
+        self.patches.get(&id)
+    }
+
+    pub fn wind(&self, id: Id) -> Option<&Result<WindFinding, String>> {
+        self.winds.get(&id)
+    }
+
+    pub fn standing(&self, id: Id) -> Standing {
+        let Some(measured) = self.patches.get(&id) else { return Standing::Unmeasured };
+        if self.now.get(&id) != Some(&measured.fingerprint) {
+            return Standing::OutOfDate;
+        }
+        match (&measured.outcome, measured.exact) {
+            (Err(_), _) => Standing::Failed,
+            (Ok(_), true) => Standing::Current,
+            (Ok(_), false) => Standing::Coarse,
+        }
+    }
+
+    /// Patches whose exact result is wanting, in the order of the sheet.
+    pub fn wanting(&self, sheet: &Sheet) -> Vec<Id> {
+        let done = |id| matches!(self.standing(id), Standing::Current | Standing::Failed);
+        sheet.patches.iter().map(|p| p.id).filter(|id| !done(*id)).collect()
+    }
+
+    /// Whether every patch of the sheet is measured exactly and as the sheet stands.
+    pub fn is_complete(&self, sheet: &Sheet) -> bool {
+        self.wanting(sheet).is_empty()
+    }
+}
+
+impl Standing {
+    /// A word for the ledger; empty when there is nothing to say.
+    pub fn remark(self) -> &'static str {
+        match self {
+            Self::Unmeasured => "not measured yet",
+            Self::Current => "",
+            Self::Coarse => "first look, exact follows",
+            Self::OutOfDate => "out of date",
+            Self::Failed => "failed",
+        }
+    }
+}
