@@ -3,7 +3,7 @@
 
 use std::path::PathBuf;
 
-use crate::study::{Id, Patch, RasterEntry, Sheet};
+use crate::study::{Id, Patch, RasterEntry, Sheet, WindEntry};
 
 use super::{Session, View, Wake, engine};
 
@@ -39,6 +39,13 @@ impl Model {
         self.view.patch.and_then(|id| self.sheet.patch(id))
     }
 
+    /// The wind record on the bench: the user's choice, the selected patch's own, or the first.
+    pub fn shown_wind(&self) -> Option<&WindEntry> {
+        let own = self.selected_patch().and_then(|patch| patch.wind);
+        let chosen = self.view.wind.or(own).and_then(|id| self.sheet.wind(id));
+        chosen.or(self.sheet.winds.first())
+    }
+
     /// Whether the sheet differs from what is on disk.
     pub fn is_dirty(&self) -> bool {
         self.session.saved != self.sheet
@@ -56,6 +63,11 @@ impl Model {
         self.sheet = sheet;
         self.view = View { theme, ..view };
         self.session.start_over(&self.sheet, path);
+    }
+
+    /// After each command: what follows from the sheet as it stands now.
+    pub(super) fn keep_up(&mut self) {
+        self.session.results.follow(&self.sheet);
     }
 
     /// Puts `path` first among the recent sheets.

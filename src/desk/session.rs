@@ -6,7 +6,7 @@ use std::path::PathBuf;
 use crate::ground::{Place, Point, Polygon};
 use crate::study::{Id, Sheet};
 
-use super::{Answer, Command, History, Jobs, Notices, Slot, TileShelf, Wake};
+use super::{Answer, Command, History, Jobs, Notices, Results, Slot, TileShelf, Wake};
 
 /// Never saved.
 #[derive(Debug)]
@@ -16,6 +16,7 @@ pub struct Session {
     /// The sheet as it is on disk (or as it was new).
     pub saved: Sheet,
     pub history: History,
+    pub results: Results,
     pub jobs: Jobs<Answer>,
     /// What came of opening each raster of the sheet.
     pub rasters: BTreeMap<Id, Opened>,
@@ -115,6 +116,7 @@ pub struct Ask {
 pub enum Purpose {
     OpenSheet,
     SaveSheet,
+    OpenRaster,
 }
 
 impl Ask {
@@ -123,13 +125,55 @@ impl Ask {
     }
 }
 
+impl Purpose {
+    pub fn title(self) -> &'static str {
+        match self {
+            Self::OpenSheet => "Open sheet",
+            Self::SaveSheet => "Save sheet as",
+            Self::OpenRaster => "Open raster",
+        }
+    }
+
+    pub fn hint(self) -> &'static str {
+        match self {
+            Self::OpenSheet => "A saved sheet, NAME.sheet.json.",
+            Self::SaveSheet => "The sheet is written as NAME.sheet.json; rasters stay where they are.",
+            Self::OpenRaster => "GeoTIFF, TIFF, PNG or JPEG; a world file beside it is read too.",
+        }
+    }
+
+    /// What the button says.
+    pub fn verb(self) -> &'static str {
+        if self.saves() { "Save" } else { "Open" }
+    }
+
+    /// Whether the path may be new.
+    pub fn saves(self) -> bool {
+        matches!(self, Self::SaveSheet)
+    }
+
+    /// Names and endings of the files that fit.
+    pub fn filters(self) -> &'static [(&'static str, &'static [&'static str])] {
+        match self {
+            Self::OpenSheet | Self::SaveSheet => &[("Sheets", &["json"])],
+            Self::OpenRaster => &[("Rasters", &["tif", "tiff", "png", "jpg", "jpeg"]), ("All files", &["*"])],
+        }
+    }
+}
+
 impl Session {
+    /// Whether something lies over the window and has the keyboard.
+    pub fn is_covered(&self) -> bool {
+        self.dialog.is_some() || self.ask.is_some()
+    }
+
     /// Another sheet begins: jobs of the old one are dropped, notices and recent sheets stay.
     pub fn start_over(&mut self, sheet: &Sheet, path: Option<PathBuf>) {
         Slot::ALL.into_iter().for_each(|slot| self.jobs.abandon(slot));
         self.path = path;
         self.saved = sheet.clone();
         self.history = History::default();
+        self.results = Results::default();
         self.rasters.clear();
         self.tool = Tool::default();
         self.draft = None;
@@ -145,6 +189,7 @@ impl Session {
             path: None,
             saved: sheet.clone(),
             history: History::default(),
+            results: Results::default(),
             jobs: Jobs::new(wake),
             rasters: BTreeMap::new(),
             notices: Notices::default(),

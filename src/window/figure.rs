@@ -4,7 +4,10 @@ use std::collections::BTreeMap;
 use std::sync::Arc;
 
 use egui::epaint::{Mesh, PathShape, PathStroke, TextShape};
-use egui::{Color32, ColorImage, Context, FontFamily, FontId, Painter, Pos2, Rect, Shape, TextureHandle, Ui, pos2, vec2};
+use egui::{
+    Color32, ColorImage, Context, FontFamily, FontId, Painter, Pos2, Rect, Shape, TextureHandle, Ui, pos2,
+    vec2,
+};
 
 use super::theme::{bold, color};
 use crate::ground::Point;
@@ -169,7 +172,8 @@ fn turn(a: Pos2, b: Pos2, c: Pos2) -> f32 {
 fn is_convex(points: &[Pos2]) -> bool {
     let n = points.len();
     let corner = |i: usize| turn(points[i], points[(i + 1) % n], points[(i + 2) % n]);
-    let (left, right) = (0..n).map(corner).fold((false, false), |(l, r), t| (l | (t > 1e-3), r | (t < -1e-3)));
+    let (left, right) =
+        (0..n).map(corner).fold((false, false), |(l, r), t| (l | (t > 1e-3), r | (t < -1e-3)));
     let bearing = |i: usize| (points[(i + 1) % n] - points[i]).angle();
     let total: f32 = (0..n)
         .map(|i| {
@@ -193,9 +197,8 @@ fn ears(points: &[Pos2]) -> Vec<[usize; 3]> {
         let is_ear = |i: usize| {
             let [a, b, c] = corner(i);
             let (pa, pb, pc) = (points[a], points[b], points[c]);
-            let inside = |p: Pos2| {
-                [turn(pa, pb, p), turn(pb, pc, p), turn(pc, pa, p)].iter().all(|t| t * sense > 0.0)
-            };
+            let inside =
+                |p: Pos2| [turn(pa, pb, p), turn(pb, pc, p), turn(pc, pa, p)].iter().all(|t| t * sense > 0.0);
             turn(pa, pb, pc) * sense >= 0.0
                 && !left.iter().any(|k| ![a, b, c].contains(k) && inside(points[*k]))
         };
@@ -216,7 +219,7 @@ struct Pictures(BTreeMap<usize, (Arc<[u8]>, TextureHandle)>);
 const MOST_PICTURES: usize = 24;
 
 fn texture(ctx: &Context, size: [usize; 2], rgba: &Arc<[u8]>) -> TextureHandle {
-    let key = egui::Id::new("figure pictures");
+    let key = egui::Id::unique("figure pictures");
     let name = Arc::as_ptr(rgba).cast::<u8>() as usize;
     let known = ctx.data(|data| data.get_temp::<Pictures>(key)).unwrap_or_default();
     if let Some((_, texture)) = known.0.get(&name) {
@@ -236,7 +239,10 @@ mod tests {
     use egui::{Pos2, pos2};
 
     fn area(points: &[Pos2], triangles: &[[usize; 3]]) -> f64 {
-        triangles.iter().map(|[a, b, c]| f64::from(0.5 * turn(points[*a], points[*b], points[*c]).abs())).sum()
+        triangles
+            .iter()
+            .map(|[a, b, c]| f64::from(0.5 * turn(points[*a], points[*b], points[*c]).abs()))
+            .sum()
     }
 
     #[test]
@@ -250,11 +256,13 @@ mod tests {
 
     #[test]
     fn a_five_pointed_star_drawn_in_one_line_is_not_convex() {
-        let star: Vec<_> =
-            (0..5).map(|i| Pos2::ZERO + 10.0 * egui::Vec2::angled(i as f32 * 2.0 * std::f32::consts::TAU / 5.0)).collect();
+        let star: Vec<_> = (0..5)
+            .map(|i| Pos2::ZERO + 10.0 * egui::Vec2::angled(i as f32 * 2.0 * std::f32::consts::TAU / 5.0))
+            .collect();
         assert!(!is_convex(&star));
-        let ring: Vec<_> =
-            (0..5).map(|i| Pos2::ZERO + 10.0 * egui::Vec2::angled(i as f32 * std::f32::consts::TAU / 5.0)).collect();
+        let ring: Vec<_> = (0..5)
+            .map(|i| Pos2::ZERO + 10.0 * egui::Vec2::angled(i as f32 * std::f32::consts::TAU / 5.0))
+            .collect();
         assert!(is_convex(&ring));
     }
 }

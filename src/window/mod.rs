@@ -1,3 +1,21 @@
-//! The window floor.
+//! The window: draws from the model and answers with commands. The only floor that knows egui.
 
+mod app;
+mod ask;
+mod bench;
+mod controls;
+mod dialogs;
+mod figure;
+mod finder;
+mod foot;
+mod head;
+mod keys;
+mod ledger;
+mod notices;
+mod open;
 pub mod painter;
+mod start_page;
+mod theme;
+
+pub use app::App;
+pub use open::{Start, WindowError, open};

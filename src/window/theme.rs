@@ -49,7 +49,7 @@ pub fn install_fonts(ctx: &Context) {
 /// Colours, type and spacing of one look. Setting the same look again costs nothing.
 pub fn dress(ctx: &Context, theme: desk::Theme) {
     let look = of(theme);
-    let known = egui::Id::new("dressed");
+    let known = egui::Id::unique("dressed");
     if ctx.data(|data| data.get_temp::<bool>(known)) == Some(look.is_dark) {
         return;
     }

@@ -4,7 +4,7 @@ use std::path::PathBuf;
 
 use crate::desk::{Ask, Model, Purpose};
 
-use super::{Command, Record, SheetCommand, apply};
+use super::{Command, RasterCommand, Record, SheetCommand, apply};
 
 #[derive(Clone, Debug, PartialEq)]
 pub enum AskCommand {
@@ -55,5 +55,6 @@ fn follow_up(purpose: Purpose, path: PathBuf) -> Command {
     match purpose {
         Purpose::OpenSheet => Command::Sheet(SheetCommand::Open(path)),
         Purpose::SaveSheet => Command::Sheet(SheetCommand::SaveAs(path)),
+        Purpose::OpenRaster => Command::Raster(RasterCommand::Open(path)),
     }
 }

@@ -2,27 +2,24 @@
 
 mod ask;
 mod draw;
-mod measure;
+mod job;
 mod patch;
-mod plate;
 mod raster;
 mod setting;
 mod sheet;
 mod view;
-mod wind;
 
 pub use ask::AskCommand;
 pub use draw::DrawCommand;
-pub use measure::MeasureCommand;
+pub use job::JobCommand;
 pub use patch::PatchCommand;
-pub use plate::PlateCommand;
 pub use raster::RasterCommand;
 pub use setting::SettingCommand;
 pub use sheet::SheetCommand;
 pub use view::ViewCommand;
-pub use wind::WindCommand;
 
 use std::fmt;
+use std::path::PathBuf;
 
 use super::{MergeKey, Model};
 
@@ -34,10 +31,8 @@ pub enum Command {
     Raster(RasterCommand),
     Patch(PatchCommand),
     Draw(DrawCommand),
-    Wind(WindCommand),
     Setting(SettingCommand),
-    Measure(MeasureCommand),
-    Plate(PlateCommand),
+    Job(JobCommand),
     View(ViewCommand),
 }
 
@@ -110,11 +105,18 @@ impl Command {
             Self::Raster(c) => c.record(),
             Self::Patch(c) => c.record(),
             Self::Draw(c) => c.record(),
-            Self::Wind(c) => c.record(),
             Self::Setting(c) => c.record(),
-            Self::Measure(c) => c.record(),
-            Self::Plate(c) => c.record(),
+            Self::Job(c) => c.record(),
             Self::View(c) => c.record(),
+        }
+    }
+
+    /// Opening a file as what its ending says it is.
+    pub fn of_file(path: PathBuf) -> Self {
+        let ending = path.extension().map(|e| e.to_string_lossy().to_lowercase()).unwrap_or_default();
+        match ending.as_str() {
+            "json" => Self::Sheet(SheetCommand::Open(path)),
+            _ => Self::Raster(RasterCommand::Open(path)),
         }
     }
 
@@ -126,10 +128,8 @@ impl Command {
             Self::Raster(c) => c.refusal(model),
             Self::Patch(c) => c.refusal(model),
             Self::Draw(c) => c.refusal(model),
-            Self::Wind(c) => c.refusal(model),
             Self::Setting(c) => c.refusal(model),
-            Self::Measure(c) => c.refusal(model),
-            Self::Plate(c) => c.refusal(model),
+            Self::Job(c) => c.refusal(model),
             Self::View(c) => c.refusal(model),
         }
     }
@@ -139,14 +139,8 @@ impl Command {
         match self {
             Self::Raster(c) => c.merge_key(),
             Self::Patch(c) => c.merge_key(),
-            Self::Wind(c) => c.merge_key(),
             Self::Setting(c) => c.merge_key(),
-            Self::Sheet(_)
-            | Self::Ask(_)
-            | Self::Draw(_)
-            | Self::Measure(_)
-            | Self::Plate(_)
-            | Self::View(_) => None,
+            Self::Sheet(_) | Self::Ask(_) | Self::Draw(_) | Self::Job(_) | Self::View(_) => None,
         }
     }
 
@@ -160,15 +154,13 @@ impl Command {
 pub fn listed() -> Vec<Command> {
     let sheet = SheetCommand::LISTED.iter().cloned().map(Command::Sheet);
     let raster = RasterCommand::LISTED.iter().cloned().map(Command::Raster);
-    let wind = WindCommand::LISTED.iter().cloned().map(Command::Wind);
-    let measure = MeasureCommand::LISTED.iter().cloned().map(Command::Measure);
-    let plate = PlateCommand::LISTED.iter().cloned().map(Command::Plate);
     let setting = SettingCommand::LISTED.iter().cloned().map(Command::Setting);
+    let job = JobCommand::LISTED.iter().cloned().map(Command::Job);
     let draw = DrawCommand::LISTED.iter().cloned().map(Command::Draw);
     let patch = PatchCommand::LISTED.iter().cloned().map(Command::Patch);
     let view = ViewCommand::LISTED.iter().cloned().map(Command::View);
-    let making = sheet.chain(raster).chain(wind).chain(draw).chain(patch);
-    making.chain(measure).chain(plate).chain(setting).chain(view).collect()
+    let making = sheet.chain(raster).chain(draw).chain(patch);
+    making.chain(setting).chain(job).chain(view).collect()
 }
 
 /// Does what `command` asks. The only way the sheet and the view change.
@@ -183,22 +175,23 @@ pub fn apply(model: &mut Model, command: Command) {
     } else if !command.is_passive() {
         model.session.history.settle();
     }
+    let passive = command.is_passive();
     match command {
         Command::Sheet(c) => c.apply(model),
         Command::Ask(c) => c.apply(model),
         Command::Raster(c) => c.apply(model),
         Command::Patch(c) => c.apply(model),
         Command::Draw(c) => c.apply(model),
-        Command::Wind(c) => c.apply(model),
         Command::Setting(c) => c.apply(model),
-        Command::Measure(c) => c.apply(model),
-        Command::Plate(c) => c.apply(model),
+        Command::Job(c) => c.apply(model),
         Command::View(c) => c.apply(model),
     }
     if record.editing {
         model.session.history.forget_if_unchanged(&model.sheet);
     }
-    model.keep_up();
+    if !passive {
+        model.keep_up();
+    }
 }
 
 #[cfg(test)]

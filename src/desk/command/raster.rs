@@ -15,13 +15,34 @@ pub enum RasterCommand {
     /// Adds the raster at a path to the sheet and opens it.
     Open(PathBuf),
     /// Looks for the file at another path.
-    Relocate { id: Id, path: PathBuf },
-    Rename { id: Id, name: String },
-    Read { id: Id, bands: Bands },
-    Kind { id: Id, kind: ImageKind },
-    Place { id: Id, placement: Placement },
-    Tone { id: Id, tone: Tone },
-    Light { id: Id, from: Option<Azimuth> },
+    Relocate {
+        id: Id,
+        path: PathBuf,
+    },
+    Rename {
+        id: Id,
+        name: String,
+    },
+    Read {
+        id: Id,
+        bands: Bands,
+    },
+    Kind {
+        id: Id,
+        kind: ImageKind,
+    },
+    Place {
+        id: Id,
+        placement: Placement,
+    },
+    Tone {
+        id: Id,
+        tone: Tone,
+    },
+    Light {
+        id: Id,
+        from: Option<Azimuth>,
+    },
     /// Takes the raster and its patches off the sheet.
     Remove(Id),
 }
@@ -35,9 +56,12 @@ impl RasterCommand {
                 Record::new("raster.open", "Open raster…", "Lays an image or elevation file on the table.")
                     .ctrl_shift("O")
             }
-            Self::Open(_) => Record::new("raster.add", "Open this raster", "Opens the raster at a path.").editing(),
+            Self::Open(_) => {
+                Record::new("raster.add", "Open this raster", "Opens the raster at a path.").editing()
+            }
             Self::Relocate { .. } => {
-                Record::new("raster.relocate", "Find raster elsewhere", "Reads it from another path.").editing()
+                Record::new("raster.relocate", "Find raster elsewhere", "Reads it from another path.")
+                    .editing()
             }
             Self::Rename { .. } => {
                 Record::new("raster.rename", "Rename raster", "Gives the raster another name.").editing()
@@ -46,19 +70,22 @@ impl RasterCommand {
                 Record::new("raster.bands", "Choose bands", "One band, or a weighted mix.").editing()
             }
             Self::Kind { .. } => {
-                Record::new("raster.kind", "Say what the pixels are", "Brightness, radar or heights.").editing()
+                Record::new("raster.kind", "Say what the pixels are", "Brightness, radar or heights.")
+                    .editing()
             }
             Self::Place { .. } => {
                 Record::new("raster.place", "State size, north, body", "Where the file is silent.").editing()
             }
             Self::Tone { .. } => {
-                Record::new("raster.tone", "Change tone", "How it is shown; never touches a number.").editing()
+                Record::new("raster.tone", "Change tone", "How it is shown; never touches a number.")
+                    .editing()
             }
             Self::Light { .. } => {
                 Record::new("raster.light", "State the light", "Where sun or radar looks from.").editing()
             }
             Self::Remove(_) => {
-                Record::new("raster.remove", "Remove raster", "Takes it and its patches off the sheet.").editing()
+                Record::new("raster.remove", "Remove raster", "Takes it and its patches off the sheet.")
+                    .editing()
             }
         }
     }

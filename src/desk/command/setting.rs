@@ -8,7 +8,10 @@ use super::Record;
 #[derive(Clone, Debug, PartialEq)]
 pub enum SettingCommand {
     /// A value for the setting of this key.
-    Set { key: &'static str, value: SettingValue },
+    Set {
+        key: &'static str,
+        value: SettingValue,
+    },
     /// Prior weights of the theories, in the order of the verdict page.
     Priors([f64; 4]),
     Reset(&'static str),
@@ -20,22 +23,29 @@ impl SettingCommand {
 
     pub(super) fn record(&self) -> Record {
         match self {
-            Self::Set { .. } => Record::new("setting.set", "Change setting", "Tells a method something.").editing(),
+            Self::Set { .. } => {
+                Record::new("setting.set", "Change setting", "Tells a method something.").editing()
+            }
             Self::Priors(_) => {
-                Record::new("setting.priors", "Change priors", "What was believed of the theories before.").editing()
+                Record::new("setting.priors", "Change priors", "What was believed of the theories before.")
+                    .editing()
             }
             Self::Reset(_) => Record::new("setting.reset", "Reset setting", "Back to the default.").editing(),
             Self::ResetAll => {
-                Record::new("setting.reset-all", "Reset all settings", "Every setting back to its default.").editing()
+                Record::new("setting.reset-all", "Reset all settings", "Every setting back to its default.")
+                    .editing()
             }
         }
     }
 
     pub(super) fn refusal(&self, _: &Model) -> Option<&'static str> {
         match self {
-            Self::Set { key, .. } | Self::Reset(key) if find(key).is_none() => Some("there is no such setting"),
+            Self::Set { key, .. } | Self::Reset(key) if find(key).is_none() => {
+                Some("there is no such setting")
+            }
             Self::Priors(weights)
-                if weights.iter().any(|w| !(w.is_finite() && *w >= 0.0)) || weights.iter().sum::<f64>() <= 0.0 =>
+                if weights.iter().any(|w| !(w.is_finite() && *w >= 0.0))
+                    || weights.iter().sum::<f64>() <= 0.0 =>
             {
                 Some("priors are weights of zero or more, not all zero")
             }

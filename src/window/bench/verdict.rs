@@ -1,0 +1,73 @@
+//! The verdict page: the dial, the classes, the theories with their priors, and why there may be
+//! no verdict.
+
+use egui::{Grid, RichText, Ui};
+
+use super::{figure_mm, say};
+use crate::desk::{Model, facts};
+use crate::plate::{CLASS_NAMES, dial, numbers, posterior_bars};
+use crate::study::{PatchFinding, VerdictFinding};
+use crate::window::controls::{self, caution, heading, look, rule};
+use crate::window::{figure, theme};
+
+pub fn show(ui: &mut Ui, model: &Model, finding: &PatchFinding) {
+    if finding.verdicts.is_empty() {
+        say(ui, model, "No wind record is on the sheet. Import winds to judge this patch by them.");
+    }
+    for verdict in &finding.verdicts {
+        one(ui, model, verdict);
+    }
+}
+
+fn one(ui: &mut Ui, model: &Model, verdict: &VerdictFinding) {
+    let look = look(model);
+    heading(ui, &format!("By {}", verdict.winds_name));
+    if let Some(why) = &verdict.refused {
+        ui.label(format!("No verdict: {why}"));
+    } else {
+        let mm = figure_mm(ui);
+        let picture = dial(verdict, mm, &look);
+        let spoken = format!("Dial of obliquity by {}", verdict.winds_name);
+        ui.vertical_centered(|ui| figure::show(ui, &picture, theme::POINTS_PER_MM, &spoken));
+        classes(ui, model, verdict);
+        rule(ui, &look);
+        controls::facts(ui, &look, &facts::verdict(verdict));
+        heading(ui, "Theories against chance");
+        let bars = posterior_bars(verdict, mm, &look);
+        figure::show(ui, &bars, theme::POINTS_PER_MM, "Posterior of each theory beside its prior");
+        theories(ui, model, verdict);
+    }
+    verdict.cautions.iter().for_each(|c| caution(ui, &look, &c.text));
+}
+
+fn classes(ui: &mut Ui, model: &Model, verdict: &VerdictFinding) {
+    let Some(probabilities) = verdict.probabilities else { return };
+    let soft = theme::color(look(model).ink_soft);
+    for ((name, p), prior) in CLASS_NAMES.iter().zip(probabilities).zip(verdict.class_priors) {
+        ui.horizontal(|ui| {
+            ui.label(RichText::new(format!("{name} {}", numbers::percent(p))));
+            ui.label(RichText::new(format!("by chance {}", numbers::percent(prior))).small().color(soft));
+        });
+    }
+}
+
+fn theories(ui: &mut Ui, model: &Model, verdict: &VerdictFinding) {
+    let soft = theme::color(look(model).ink_soft);
+    ui.add_space(6.0);
+    Grid::new(("theories", verdict.winds.0)).num_columns(5).spacing([12.0, 4.0]).show(ui, |ui| {
+        for title in ["theory", "axis", "prior", "posterior", "ln B"] {
+            ui.label(RichText::new(title).small().color(soft));
+        }
+        ui.end_row();
+        for theory in &verdict.theories {
+            ui.label(theory.name).on_hover_text(theory.method);
+            let axis = theory.axis.map(|axis| numbers::axis_with_interval(axis, theory.spread_deg));
+            ui.label(axis.unwrap_or_else(|| "any".into()));
+            ui.label(numbers::percent(theory.prior));
+            ui.label(numbers::percent(theory.posterior));
+            ui.label(numbers::fixed(theory.ln_bayes_factor, 1))
+                .on_hover_text("Natural logarithm of the Bayes factor against a random axis.");
+            ui.end_row();
+        }
+    });
+}

@@ -1,0 +1,171 @@
+//! The few controls all panels share: a button that is a command, a line of text, a number, a row
+//! of label and value, a thin rule.
+
+use egui::{Align, Button, Color32, Layout, Response, RichText, Stroke, TextEdit, Ui, WidgetInfo, vec2};
+
+use super::theme;
+use crate::desk::facts::Fact;
+use crate::desk::{Command, Model};
+use crate::plate::Theme;
+
+/// What a panel answers with.
+pub type Commands = Vec<Command>;
+
+/// The look of the model.
+pub fn look(model: &Model) -> Theme {
+    theme::of(model.view.theme)
+}
+
+/// A button for `command`: its label, its hint and key on hover, grey with the reason when it is
+/// not allowed.
+pub fn button(ui: &mut Ui, model: &Model, out: &mut Commands, command: Command) -> Response {
+    let label = command.record().label;
+    place(ui, model, out, command, Button::new(label))
+}
+
+/// The same without a frame, for rows of words.
+pub fn quiet(ui: &mut Ui, model: &Model, out: &mut Commands, command: Command, label: &str) -> Response {
+    let ink = theme::color(look(model).ink_soft);
+    place(ui, model, out, command, Button::new(RichText::new(label).color(ink)).frame(false))
+}
+
+/// The one thing to do next.
+pub fn main_button(ui: &mut Ui, model: &Model, out: &mut Commands, command: Command) -> Response {
+    let look = look(model);
+    let label = RichText::new(command.record().label).color(theme::color(look.paper));
+    place(ui, model, out, command, Button::new(label).fill(theme::color(look.ink)))
+}
+
+/// A word that is on or off, underlined when on.
+pub fn toggle(
+    ui: &mut Ui,
+    model: &Model,
+    out: &mut Commands,
+    command: Command,
+    label: &str,
+    on: bool,
+) -> Response {
+    let look = look(model);
+    let ink = theme::color(if on { look.ink } else { look.ink_soft });
+    let response = place(ui, model, out, command, Button::new(RichText::new(label).color(ink)).frame(false));
+    if on {
+        let line = response.rect.shrink2(vec2(2.0, 0.0));
+        ui.painter().hline(
+            line.x_range(),
+            line.bottom() - 1.0,
+            Stroke::new(1.5, theme::color(look.measured)),
+        );
+    }
+    response.widget_info(|| WidgetInfo::selected(egui::Role::Button, ui.is_enabled(), on, label));
+    response
+}
+
+fn place(ui: &mut Ui, model: &Model, out: &mut Commands, command: Command, button: Button<'_>) -> Response {
+    let record = command.record();
+    let refusal = command.refusal(model);
+    let key = record.key.map(|chord| format!("  ({chord})")).unwrap_or_default();
+    let response = ui.add_enabled(refusal.is_none(), button);
+    if response.clicked() {
+        out.push(command);
+    }
+    let hover = format!("{}{key}", record.hint);
+    response.on_hover_text(hover).on_disabled_hover_text(refusal.unwrap_or_default())
+}
+
+/// A line of text named `label`. Edits a copy; gives the new text when the user leaves the line or
+/// presses Enter, if it differs.
+pub fn line(ui: &mut Ui, label: &str, value: &str, width: f32) -> Option<String> {
+    let id = ui.make_persistent_id(("line", label));
+    let mut text = ui.data(|data| data.get_temp::<String>(id)).unwrap_or_else(|| value.to_owned());
+    let response = ui.add(TextEdit::singleline(&mut text).id(id).desired_width(width));
+    response.widget_info(|| WidgetInfo {
+        label: Some(label.to_owned()),
+        ..WidgetInfo::text_edit(ui.is_enabled(), value, text.as_str(), "")
+    });
+    if response.has_focus() {
+        ui.data_mut(|data| data.insert_temp(id, text));
+        return None;
+    }
+    ui.data_mut(|data| data.remove_temp::<String>(id));
+    (response.lost_focus() && text != value).then_some(text)
+}
+
+/// A number named `label`, typed; gives the new one when it parses and differs.
+pub fn number(ui: &mut Ui, label: &str, value: f64, width: f32) -> Option<f64> {
+    let text = line(ui, label, &format!("{value}"), width)?;
+    parse(&text).filter(|typed| *typed != value)
+}
+
+/// A number that may be left to the program: an empty line is `None`.
+pub fn optional_number(ui: &mut Ui, label: &str, value: Option<f64>, width: f32) -> Option<Option<f64>> {
+    let text = line(ui, label, &value.map(|v| v.to_string()).unwrap_or_default(), width)?;
+    let typed = if text.trim().is_empty() { Some(None) } else { parse(&text).map(Some) };
+    typed.filter(|typed| *typed != value)
+}
+
+/// A decimal number with a point or a comma.
+fn parse(text: &str) -> Option<f64> {
+    text.trim().replace(',', ".").replace('−', "-").parse().ok().filter(|v: &f64| v.is_finite())
+}
+
+/// Rows of label and value; the label explains itself on hover.
+pub fn facts(ui: &mut Ui, look: &Theme, facts: &[Fact]) {
+    for fact in facts {
+        ui.horizontal_top(|ui| {
+            let soft = theme::color(look.ink_soft);
+            let width = (0.4 * ui.available_width()).min(150.0);
+            ui.allocate_ui_with_layout(vec2(width, 0.0), Layout::left_to_right(Align::TOP), |ui| {
+                ui.set_min_width(width);
+                ui.label(RichText::new(fact.label).color(soft)).on_hover_text(fact.hint);
+            });
+            let value = ui.label(&fact.value).on_hover_text(fact.hint);
+            value.widget_info(|| {
+                WidgetInfo::labeled(egui::Role::Label, true, format!("{}: {}", fact.label, fact.value))
+            });
+        });
+    }
+}
+
+/// A heading inside a page.
+pub fn heading(ui: &mut Ui, text: &str) {
+    ui.add_space(10.0);
+    ui.label(RichText::new(text).family(theme::bold()).size(15.0));
+    ui.add_space(2.0);
+}
+
+/// A thin rule across.
+pub fn rule(ui: &mut Ui, look: &Theme) {
+    let (rect, _) = ui.allocate_exact_size(vec2(ui.available_width(), 9.0), egui::Sense::hover());
+    ui.painter().hline(rect.x_range(), rect.center().y, Stroke::new(1.0, theme::color(look.rule)));
+}
+
+/// A weakness of the result: a mark and the sentence.
+pub fn caution(ui: &mut Ui, look: &Theme, text: &str) {
+    let ink = theme::color(look.caution);
+    ui.horizontal_top(|ui| {
+        mark(ui, ink);
+        ui.label(RichText::new(text).color(ink)).on_hover_text("A caution: printed wherever the result is.");
+    });
+}
+
+/// A small triangle, so that a caution is seen without colour.
+fn mark(ui: &mut Ui, ink: Color32) {
+    let (rect, _) = ui.allocate_exact_size(vec2(14.0, 18.0), egui::Sense::hover());
+    let c = rect.center();
+    let corners = vec![c + vec2(0.0, -5.0), c + vec2(5.5, 4.5), c + vec2(-5.5, 4.5)];
+    ui.painter().add(egui::Shape::closed_line(corners, Stroke::new(1.3, ink)));
+    ui.painter().vline(c.x, c.y - 2.0..=c.y + 2.0, Stroke::new(1.3, ink));
+}
+
+#[cfg(test)]
+mod tests {
+    use super::parse;
+
+    #[test]
+    fn numbers_may_carry_a_comma_and_a_true_minus() {
+        assert_eq!(parse(" 0,25 "), Some(0.25));
+        assert_eq!(parse("−3e-4"), Some(-3e-4));
+        assert_eq!(parse("inf"), None);
+        assert_eq!(parse("ten"), None);
+    }
+}
