@@ -65,7 +65,12 @@ impl FileError {
         Self::Malformed { path: path.into(), at, problem: problem.into() }
     }
 
-    pub(crate) fn unsupported(path: &Path, at: Spot, feature: impl Into<String>, advice: &'static str) -> Self {
+    pub(crate) fn unsupported(
+        path: &Path,
+        at: Spot,
+        feature: impl Into<String>,
+        advice: &'static str,
+    ) -> Self {
         Self::Unsupported { path: path.into(), at, feature: feature.into(), advice }
     }
 

@@ -1,5 +1,6 @@
 //! Bytes to checked values and back: the only floor that touches files.
 
+pub mod error;
 pub mod georef;
 pub mod places;
 pub mod raster;

@@ -108,14 +108,12 @@ fn lzw(stored: &[u8], need: usize) -> Result<Vec<u8>, String> {
 
 fn deflate(stored: &[u8], full: usize) -> Result<Vec<u8>, String> {
     let mut out = vec![0; full];
-    let made = libdeflater::Decompressor::new()
-        .zlib_decompress(stored, &mut out)
-        .map_err(|e| match e {
-            libdeflater::DecompressionError::BadData => "the Deflate stream is damaged".to_owned(),
-            libdeflater::DecompressionError::InsufficientSpace => {
-                format!("the Deflate stream holds more than the {full} bytes of a chunk")
-            }
-        })?;
+    let made = libdeflater::Decompressor::new().zlib_decompress(stored, &mut out).map_err(|e| match e {
+        libdeflater::DecompressionError::BadData => "the Deflate stream is damaged".to_owned(),
+        libdeflater::DecompressionError::InsufficientSpace => {
+            format!("the Deflate stream holds more than the {full} bytes of a chunk")
+        }
+    })?;
     out.truncate(made);
     Ok(out)
 }
@@ -139,7 +137,10 @@ fn webp(layout: &Layout, stored: &[u8], rows: usize) -> Result<Vec<u8>, String> 
     let mut decoder = image_webp::WebPDecoder::new(std::io::Cursor::new(stored)).map_err(fail)?;
     let (width, height) = decoder.dimensions();
     let wanted = layout.chunk_samples();
-    if width as usize != layout.chunk_width || (height as usize) < rows || height as usize > layout.chunk_height {
+    if width as usize != layout.chunk_width
+        || (height as usize) < rows
+        || height as usize > layout.chunk_height
+    {
         let want = layout.chunk_width;
         return Err(format!("{want} × {rows} pixels are expected, the WebP picture is {width} × {height}"));
     }
@@ -162,10 +163,11 @@ mod tests {
 
     #[test]
     fn packbits_follows_the_example_of_the_format() {
-        let stored = [0xFE, 0xAA, 0x02, 0x80, 0x00, 0x2A, 0xFD, 0xAA, 0x03, 0x80, 0x00, 0x2A, 0x22, 0xF7, 0xAA];
+        let stored =
+            [0xFE, 0xAA, 0x02, 0x80, 0x00, 0x2A, 0xFD, 0xAA, 0x03, 0x80, 0x00, 0x2A, 0x22, 0xF7, 0xAA];
         let want = [
-            0xAA, 0xAA, 0xAA, 0x80, 0x00, 0x2A, 0xAA, 0xAA, 0xAA, 0xAA, 0x80, 0x00, 0x2A, 0x22, 0xAA, 0xAA, 0xAA, 0xAA, 0xAA,
-            0xAA, 0xAA, 0xAA, 0xAA, 0xAA,
+            0xAA, 0xAA, 0xAA, 0x80, 0x00, 0x2A, 0xAA, 0xAA, 0xAA, 0xAA, 0x80, 0x00, 0x2A, 0x22, 0xAA, 0xAA,
+            0xAA, 0xAA, 0xAA, 0xAA, 0xAA, 0xAA, 0xAA, 0xAA,
         ];
         assert_eq!(packbits(&stored, want.len()).unwrap(), want);
         assert!(packbits(&stored[..5], want.len()).is_err());

@@ -160,7 +160,12 @@ impl Directory {
 
     /// All values of a tag as unsigned numbers, or `None` when the tag is absent. At most
     /// `most` values are accepted.
-    pub(super) fn unsigned(&self, source: &Source, tag: u16, most: usize) -> Result<Option<Vec<u64>>, FileError> {
+    pub(super) fn unsigned(
+        &self,
+        source: &Source,
+        tag: u16,
+        most: usize,
+    ) -> Result<Option<Vec<u64>>, FileError> {
         let Some((kind, bytes)) = self.bytes(source, tag, most)? else { return Ok(None) };
         let d = self.dialect;
         let values = match kind {
@@ -187,9 +192,7 @@ impl Directory {
             12 => bytes.chunks_exact(8).map(|b| f64::from_bits(d.u64(b))).collect(),
             3 => bytes.chunks_exact(2).map(|b| d.u16(b).into()).collect(),
             4 => bytes.chunks_exact(4).map(|b| d.u32(b).into()).collect(),
-            5 => {
-                bytes.chunks_exact(8).map(|b| f64::from(d.u32(b)) / f64::from(d.u32(&b[4..]))).collect()
-            }
+            5 => bytes.chunks_exact(8).map(|b| f64::from(d.u32(b)) / f64::from(d.u32(&b[4..]))).collect(),
             _ => return Err(self.wrong_type(source, tag, kind, "a real number")),
         };
         Ok(values)

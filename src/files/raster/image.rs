@@ -79,7 +79,9 @@ impl Image {
         let rows = layout.stored_rows(index % (layout.across() * layout.down()));
         // What lies past the pixels of an uncompressed chunk is padding.
         let most = match layout.compression {
-            super::layout::Compression::None => layout.row_bytes().map_or(count, |b| count.min((b * rows) as u64)),
+            super::layout::Compression::None => {
+                layout.row_bytes().map_or(count, |b| count.min((b * rows) as u64))
+            }
             _ => count,
         };
         STORED.with_borrow_mut(|stored| {

@@ -5,42 +5,8 @@ use super::ifd::Directory;
 use super::info::SampleType;
 use super::limits::Limits;
 use super::source::Source;
+use super::tag;
 use crate::files::error::{FileError, Spot};
-
-pub(super) mod tag {
-    //! Numbers of the tags this program reads.
-    pub(crate) const NEW_SUBFILE_TYPE: u16 = 254;
-    pub(crate) const SUBFILE_TYPE: u16 = 255;
-    pub(crate) const WIDTH: u16 = 256;
-    pub(crate) const HEIGHT: u16 = 257;
-    pub(crate) const BITS_PER_SAMPLE: u16 = 258;
-    pub(crate) const COMPRESSION: u16 = 259;
-    pub(crate) const PHOTOMETRIC: u16 = 262;
-    pub(crate) const FILL_ORDER: u16 = 266;
-    pub(crate) const STRIP_OFFSETS: u16 = 273;
-    pub(crate) const SAMPLES_PER_PIXEL: u16 = 277;
-    pub(crate) const ROWS_PER_STRIP: u16 = 278;
-    pub(crate) const STRIP_BYTE_COUNTS: u16 = 279;
-    pub(crate) const PLANAR_CONFIGURATION: u16 = 284;
-    pub(crate) const PREDICTOR: u16 = 317;
-    pub(crate) const COLOR_MAP: u16 = 320;
-    pub(crate) const TILE_WIDTH: u16 = 322;
-    pub(crate) const TILE_LENGTH: u16 = 323;
-    pub(crate) const TILE_OFFSETS: u16 = 324;
-    pub(crate) const TILE_BYTE_COUNTS: u16 = 325;
-    pub(crate) const SUB_IFDS: u16 = 330;
-    pub(crate) const EXTRA_SAMPLES: u16 = 338;
-    pub(crate) const SAMPLE_FORMAT: u16 = 339;
-    pub(crate) const JPEG_TABLES: u16 = 347;
-    pub(crate) const PIXEL_SCALE: u16 = 33550;
-    pub(crate) const TIE_POINTS: u16 = 33922;
-    pub(crate) const TRANSFORMATION: u16 = 34264;
-    pub(crate) const GEO_KEYS: u16 = 34735;
-    pub(crate) const GEO_DOUBLES: u16 = 34736;
-    pub(crate) const GEO_ASCII: u16 = 34737;
-    pub(crate) const METADATA_XML: u16 = 42112;
-    pub(crate) const NODATA: u16 = 42113;
-}
 
 /// The codecs this program decodes.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -113,20 +79,34 @@ const RESAVE: &str = "save it as grey, RGB or separate bands of 8 to 32 bits";
 
 impl Layout {
     /// Reads and checks the layout tags of `dir`.
-    pub(super) fn read(source: &Source, dir: &Directory, big_endian: bool, limits: &Limits) -> Result<Self, FileError> {
+    pub(super) fn read(
+        source: &Source,
+        dir: &Directory,
+        big_endian: bool,
+        limits: &Limits,
+    ) -> Result<Self, FileError> {
         let path = source.path();
         let number = |tag: u16, default: u64| dir.first(source, tag).map(|v| v.unwrap_or(default));
-        let refuse = |tag: u16, feature: String, advice| Err(FileError::unsupported(path, dir.spot(tag), feature, advice));
+        let refuse = |tag: u16, feature: String, advice| {
+            Err(FileError::unsupported(path, dir.spot(tag), feature, advice))
+        };
         let damaged = |tag: u16, problem: String| FileError::malformed(path, dir.spot(tag), problem);
 
-        let width = size(number(tag::WIDTH, 0)?).ok_or_else(|| damaged(tag::WIDTH, "the width must be 1 or more".into()))?;
-        let height = size(number(tag::HEIGHT, 0)?).ok_or_else(|| damaged(tag::HEIGHT, "the height must be 1 or more".into()))?;
+        let width = size(number(tag::WIDTH, 0)?)
+            .ok_or_else(|| damaged(tag::WIDTH, "the width must be 1 or more".into()))?;
+        let height = size(number(tag::HEIGHT, 0)?)
+            .ok_or_else(|| damaged(tag::HEIGHT, "the height must be 1 or more".into()))?;
         let samples = number(tag::SAMPLES_PER_PIXEL, 1)?;
         if samples == 0 {
             return Err(damaged(tag::SAMPLES_PER_PIXEL, "a pixel must have 1 sample or more".into()));
         }
         if samples > limits.samples as u64 {
-            return Err(FileError::too_large(path, "the number of samples per pixel", samples, limits.samples as u64));
+            return Err(FileError::too_large(
+                path,
+                "the number of samples per pixel",
+                samples,
+                limits.samples as u64,
+            ));
         }
         let samples = samples as usize;
 
@@ -176,7 +156,9 @@ impl Layout {
             return refuse(tag::PHOTOMETRIC, "printing colours (CMYK) inside JPEG".into(), RESAVE);
         }
         let predictor = match number(tag::PREDICTOR, 1)? {
-            _ if !matches!(compression, Compression::Lzw | Compression::Deflate | Compression::Zstd) => Predictor::None,
+            _ if !matches!(compression, Compression::Lzw | Compression::Deflate | Compression::Zstd) => {
+                Predictor::None
+            }
             1 => Predictor::None,
             2 if bits.is_multiple_of(8) => Predictor::Horizontal,
             3 if matches!(sample, SampleType::F16 | SampleType::F32 | SampleType::F64) => Predictor::Float,
@@ -188,16 +170,30 @@ impl Layout {
         let planar = match number(tag::PLANAR_CONFIGURATION, 1)? {
             1 => false,
             2 => samples > 1,
-            other => return Err(damaged(tag::PLANAR_CONFIGURATION, format!("1 or 2 is expected, here it is {other}"))),
+            other => {
+                return Err(damaged(
+                    tag::PLANAR_CONFIGURATION,
+                    format!("1 or 2 is expected, here it is {other}"),
+                ));
+            }
         };
         if planar && lossy && samples > 1 && matches!(colour, Colour::YCbCr) {
-            return refuse(tag::PLANAR_CONFIGURATION, "luminance and chroma in separate planes".into(), RESAVE);
+            return refuse(
+                tag::PLANAR_CONFIGURATION,
+                "luminance and chroma in separate planes".into(),
+                RESAVE,
+            );
         }
 
         let alpha = alpha_sample(source, dir, samples, colour)?;
-        let palette = if colour == Colour::Palette { Some(palette(source, dir, bits, sample)?) } else { None };
+        let palette =
+            if colour == Colour::Palette { Some(palette(source, dir, bits, sample)?) } else { None };
         if palette.is_some() && (samples - usize::from(alpha.is_some())) != 1 {
-            return refuse(tag::SAMPLES_PER_PIXEL, format!("a palette over {samples} samples per pixel"), RESAVE);
+            return refuse(
+                tag::SAMPLES_PER_PIXEL,
+                format!("a palette over {samples} samples per pixel"),
+                RESAVE,
+            );
         }
 
         let mut layout = Self {
@@ -256,7 +252,12 @@ impl Layout {
         }
     }
 
-    fn read_chunk_tables(&mut self, source: &Source, dir: &Directory, limits: &Limits) -> Result<(), FileError> {
+    fn read_chunk_tables(
+        &mut self,
+        source: &Source,
+        dir: &Directory,
+        limits: &Limits,
+    ) -> Result<(), FileError> {
         let path = source.path();
         if self.tiled {
             for (tag, name, into) in [
@@ -287,7 +288,8 @@ impl Layout {
         };
         self.offsets = dir.unsigned(source, at, limits.chunks)?.unwrap_or_default();
         if self.offsets.len() < expected {
-            let problem = format!("{expected} strips or tiles are expected, {} are listed", self.offsets.len());
+            let problem =
+                format!("{expected} strips or tiles are expected, {} are listed", self.offsets.len());
             return Err(FileError::malformed(path, dir.spot(at), problem));
         }
         self.counts = match dir.unsigned(source, sizes, limits.chunks)? {
@@ -301,7 +303,12 @@ impl Layout {
         self.split_large_strips(source);
         let bytes = self.chunk_bytes().map_or(u64::MAX, |n| n as u64);
         if bytes > limits.chunk_bytes as u64 {
-            return Err(FileError::too_large(path, "a decoded strip or tile in bytes", bytes, limits.chunk_bytes as u64));
+            return Err(FileError::too_large(
+                path,
+                "a decoded strip or tile in bytes",
+                bytes,
+                limits.chunk_bytes as u64,
+            ));
         }
         Ok(())
     }
@@ -312,7 +319,8 @@ impl Layout {
         match (self.compression, self.offsets.as_slice()) {
             (Compression::None, offsets) => {
                 let rows = |i: usize| self.stored_rows(i % (self.across() * self.down()));
-                let bytes = |i: usize| self.row_bytes().and_then(|b| b.checked_mul(rows(i))).unwrap_or(0) as u64;
+                let bytes =
+                    |i: usize| self.row_bytes().and_then(|b| b.checked_mul(rows(i))).unwrap_or(0) as u64;
                 (0..offsets.len()).map(bytes).collect()
             }
             (_, [only]) => vec![source.len().saturating_sub(*only)],
@@ -334,7 +342,8 @@ impl Layout {
         let whole = |i: usize| {
             let need = (row as u64).checked_mul(self.stored_rows(i % per_plane) as u64);
             need.is_some_and(|need| {
-                self.counts[i] >= need && self.offsets[i].checked_add(need).is_some_and(|end| end <= source.len())
+                self.counts[i] >= need
+                    && self.offsets[i].checked_add(need).is_some_and(|end| end <= source.len())
             })
         };
         if !(0..per_plane * planes).all(whole) || !self.chunk_height.is_multiple_of(rows) && per_plane > 1 {
@@ -421,7 +430,12 @@ fn sample_type(source: &Source, dir: &Directory) -> Result<(usize, SampleType), 
         let values = dir.unsigned(source, tag, 1 << 16)?.unwrap_or_default();
         let first = values.first().copied().unwrap_or(default);
         if values.iter().any(|v| *v != first) {
-            return Err(FileError::unsupported(path, dir.spot(tag), format!("bands of different sample {what}"), RESAVE));
+            return Err(FileError::unsupported(
+                path,
+                dir.spot(tag),
+                format!("bands of different sample {what}"),
+                RESAVE,
+            ));
         }
         Ok(first)
     };
@@ -437,8 +451,12 @@ fn sample_type(source: &Source, dir: &Directory) -> Result<(usize, SampleType), 
         (3, 16) => SampleType::F16,
         (3, 32) => SampleType::F32,
         (3, 64) => SampleType::F64,
-        (5 | 6, _) => return Err(FileError::unsupported(path, dir.spot(tag::SAMPLE_FORMAT), "complex samples", RESAVE)),
-        (_, 0) => return Err(FileError::malformed(path, dir.spot(tag::BITS_PER_SAMPLE), "samples of 0 bits")),
+        (5 | 6, _) => {
+            return Err(FileError::unsupported(path, dir.spot(tag::SAMPLE_FORMAT), "complex samples", RESAVE));
+        }
+        (_, 0) => {
+            return Err(FileError::malformed(path, dir.spot(tag::BITS_PER_SAMPLE), "samples of 0 bits"));
+        }
         _ => {
             let kind = match format {
                 1 | 4 => "unsigned",
@@ -454,7 +472,12 @@ fn sample_type(source: &Source, dir: &Directory) -> Result<(usize, SampleType), 
 }
 
 /// The first extra sample that is declared an opacity.
-fn alpha_sample(source: &Source, dir: &Directory, samples: usize, colour: Colour) -> Result<Option<usize>, FileError> {
+fn alpha_sample(
+    source: &Source,
+    dir: &Directory,
+    samples: usize,
+    colour: Colour,
+) -> Result<Option<usize>, FileError> {
     let extras = dir.unsigned(source, tag::EXTRA_SAMPLES, 1 << 16)?.unwrap_or_default();
     let Some(first) = samples.checked_sub(extras.len()) else { return Ok(None) };
     let least = match colour {
@@ -467,7 +490,12 @@ fn alpha_sample(source: &Source, dir: &Directory, samples: usize, colour: Colour
 }
 
 /// The colour map, 16-bit colours cut to 8 unless the writer stored 8-bit ones.
-fn palette(source: &Source, dir: &Directory, bits: usize, sample: SampleType) -> Result<[Vec<u8>; 3], FileError> {
+fn palette(
+    source: &Source,
+    dir: &Directory,
+    bits: usize,
+    sample: SampleType,
+) -> Result<[Vec<u8>; 3], FileError> {
     let path = source.path();
     if !matches!(sample, SampleType::U8 | SampleType::U16) {
         let feature = format!("a palette over {} samples", sample.name());

@@ -50,7 +50,11 @@ fn attribute(head: &str, name: &str) -> Option<String> {
 }
 
 fn plain(text: &str) -> String {
-    text.replace("&lt;", "<").replace("&gt;", ">").replace("&quot;", "\"").replace("&apos;", "'").replace("&amp;", "&")
+    text.replace("&lt;", "<")
+        .replace("&gt;", ">")
+        .replace("&quot;", "\"")
+        .replace("&apos;", "'")
+        .replace("&amp;", "&")
 }
 
 #[cfg(test)]
@@ -64,6 +68,9 @@ mod tests {
         let got = items(xml);
         assert_eq!(got.len(), 2);
         assert_eq!((got[0].name.as_str(), got[0].text.as_str()), ("A&B", "x < y"));
-        assert_eq!((got[1].sample, got[1].role.as_deref(), got[1].text.as_str()), (Some(1), Some("offset"), "-2.5"));
+        assert_eq!(
+            (got[1].sample, got[1].role.as_deref(), got[1].text.as_str()),
+            (Some(1), Some("offset"), "-2.5")
+        );
     }
 }

@@ -47,7 +47,12 @@ pub(super) fn describe(source: &Source, kind: Kind, limits: &Limits) -> Result<(
     }
     let bytes = layout.chunk_bytes().map_or(u64::MAX, |n| n as u64);
     if bytes > limits.chunk_bytes as u64 {
-        return Err(FileError::too_large(source.path(), "the decoded picture in bytes", bytes, limits.chunk_bytes as u64));
+        return Err(FileError::too_large(
+            source.path(),
+            "the decoded picture in bytes",
+            bytes,
+            limits.chunk_bytes as u64,
+        ));
     }
     Ok((layout, stored_bits))
 }
@@ -63,7 +68,9 @@ pub(super) fn decode(source: &Source, kind: Kind, layout: &Layout) -> Result<Vec
         }
         Kind::Png => {
             let mut reader = png_reader(source, need)?;
-            let size = reader.output_buffer_size().ok_or_else(|| damaged("the picture does not fit in memory".into()))?;
+            let size = reader
+                .output_buffer_size()
+                .ok_or_else(|| damaged("the picture does not fit in memory".into()))?;
             let mut bytes = vec![0; size];
             guarded(|| reader.next_frame(&mut bytes).map_err(|e| format!("PNG: {e}"))).map_err(damaged)?;
             unpack::to_native(&mut bytes, layout.sample.bytes(), true);
@@ -77,7 +84,10 @@ pub(super) fn decode(source: &Source, kind: Kind, layout: &Layout) -> Result<Vec
 }
 
 /// A reader that expands palettes, transparency and small bit depths.
-fn png_reader(source: &Source, bytes: usize) -> Result<png::Reader<std::io::BufReader<std::fs::File>>, FileError> {
+fn png_reader(
+    source: &Source,
+    bytes: usize,
+) -> Result<png::Reader<std::io::BufReader<std::fs::File>>, FileError> {
     let limits = png::Limits { bytes: bytes.max(1 << 20) };
     let mut decoder = png::Decoder::new_with_limits(source.stream()?, limits);
     decoder.set_transformations(png::Transformations::EXPAND);
@@ -96,5 +106,6 @@ fn whole_file(source: &Source, limit: usize) -> Result<Vec<u8>, FileError> {
 
 /// Runs a decoder; a panic inside it on damaged bytes becomes an error.
 fn guarded<T>(decode: impl FnOnce() -> Result<T, String>) -> Result<T, String> {
-    catch_unwind(AssertUnwindSafe(decode)).unwrap_or_else(|_| Err("the decoder gave up on these bytes".into()))
+    catch_unwind(AssertUnwindSafe(decode))
+        .unwrap_or_else(|_| Err("the decoder gave up on these bytes".into()))
 }

@@ -15,7 +15,11 @@ pub(super) fn bits(packed: &[u8], per_row: usize, row_bytes: usize, bits: usize)
             }
             count -= bits;
             let value = held >> count & mask;
-            if bits > 8 { out.extend_from_slice(&(value as u16).to_ne_bytes()) } else { out.push(value as u8) }
+            if bits > 8 {
+                out.extend_from_slice(&(value as u16).to_ne_bytes())
+            } else {
+                out.push(value as u8)
+            }
         }
     }
     out

@@ -1,0 +1,33 @@
+//! Numbers of the TIFF tags this program reads.
+
+pub(super) const NEW_SUBFILE_TYPE: u16 = 254;
+pub(super) const SUBFILE_TYPE: u16 = 255;
+pub(super) const WIDTH: u16 = 256;
+pub(super) const HEIGHT: u16 = 257;
+pub(super) const BITS_PER_SAMPLE: u16 = 258;
+pub(super) const COMPRESSION: u16 = 259;
+pub(super) const PHOTOMETRIC: u16 = 262;
+pub(super) const FILL_ORDER: u16 = 266;
+pub(super) const STRIP_OFFSETS: u16 = 273;
+pub(super) const SAMPLES_PER_PIXEL: u16 = 277;
+pub(super) const ROWS_PER_STRIP: u16 = 278;
+pub(super) const STRIP_BYTE_COUNTS: u16 = 279;
+pub(super) const PLANAR_CONFIGURATION: u16 = 284;
+pub(super) const PREDICTOR: u16 = 317;
+pub(super) const COLOR_MAP: u16 = 320;
+pub(super) const TILE_WIDTH: u16 = 322;
+pub(super) const TILE_LENGTH: u16 = 323;
+pub(super) const TILE_OFFSETS: u16 = 324;
+pub(super) const TILE_BYTE_COUNTS: u16 = 325;
+pub(super) const SUB_IFDS: u16 = 330;
+pub(super) const EXTRA_SAMPLES: u16 = 338;
+pub(super) const SAMPLE_FORMAT: u16 = 339;
+pub(super) const JPEG_TABLES: u16 = 347;
+pub(super) const PIXEL_SCALE: u16 = 33550;
+pub(super) const TIE_POINTS: u16 = 33922;
+pub(super) const TRANSFORMATION: u16 = 34264;
+pub(super) const GEO_KEYS: u16 = 34735;
+pub(super) const GEO_DOUBLES: u16 = 34736;
+pub(super) const GEO_ASCII: u16 = 34737;
+pub(super) const METADATA_XML: u16 = 42112;
+pub(super) const NODATA: u16 = 42113;
