@@ -1,6 +1,8 @@
 //! Real rasters and records from `../shared/data` (or the folder in `FIELD_DATA`); each test says so
 //! when the data is absent and it is skipped.
 
+mod look;
+
 use std::path::PathBuf;
 
 /// The folder of field data, or `None` with a note that the caller's test is skipped.

@@ -13,26 +13,26 @@ pub(super) struct Picture {
     pub(super) bytes: Vec<u8>,
 }
 
-/// Width, height and components (1 or 3 after conversion) of a JPEG stream.
+/// Width, height and components of a JPEG stream.
 pub(super) fn header(stream: &[u8]) -> Result<(usize, usize, usize), String> {
     let mut decoder = JpegDecoder::new_with_options(ZCursor::new(stream), options(65_535, 65_535));
     decoder.decode_headers().map_err(|e| format!("JPEG: {e}"))?;
     let info = decoder.info().ok_or("the JPEG has no header")?;
-    let components = if info.components == 1 { 1 } else { 3 };
-    Ok((info.width.into(), info.height.into(), components))
+    Ok((info.width.into(), info.height.into(), info.components.into()))
 }
 
-/// Decodes a stream of one component as grey, of three as red, green and blue. Pictures larger than
-/// the given size are refused before memory is taken.
+/// Decodes a stream of one component as grey, of three as red, green and blue, of two or four as they
+/// are stored. Pictures larger than the given size are refused before memory is taken.
 pub(super) fn decode(stream: &[u8], most_width: usize, most_height: usize) -> Result<Picture, String> {
     let fail = |e: zune_jpeg::errors::DecodeErrors| format!("JPEG: {e}");
     let mut decoder = JpegDecoder::new_with_options(ZCursor::new(stream), options(most_width, most_height));
     decoder.decode_headers().map_err(fail)?;
     let info = decoder.info().ok_or("the JPEG has no header")?;
-    let (space, components) = match info.components {
-        1 => (ColorSpace::Luma, 1),
-        3 => (ColorSpace::RGB, 3),
-        n => return Err(format!("a JPEG of {n} components is not read, only grey and three colours")),
+    let components = usize::from(info.components);
+    let space = match components {
+        1 => ColorSpace::Luma,
+        3 => ColorSpace::RGB,
+        _ => decoder.input_colorspace().ok_or("the JPEG has no header")?,
     };
     decoder.set_options(options(most_width, most_height).jpeg_set_out_colorspace(space));
     let bytes = decoder.decode().map_err(fail)?;
@@ -64,7 +64,7 @@ pub(super) fn with_tables(
     let mut stream = Vec::with_capacity(chunk.len() + tables.len() + 18);
     stream.extend_from_slice(&START);
     stream.extend_from_slice(tables);
-    if components == 3 {
+    if components >= 3 {
         stream.extend_from_slice(&[0xFF, 0xEE, 0, 14]);
         stream.extend_from_slice(b"Adobe\0\x64\0\0\0\0");
         stream.push(u8::from(ycbcr));

@@ -4,6 +4,7 @@
 use super::ifd::Directory;
 use super::info::SampleType;
 use super::limits::Limits;
+use super::samples::{self, RESAVE};
 use super::source::Source;
 use super::tag;
 use crate::files::error::{FileError, Spot};
@@ -75,7 +76,6 @@ pub(super) struct Layout {
 }
 
 const CONVERT: &str = "convert the file with a general-purpose tool to Deflate, LZW or no compression";
-const RESAVE: &str = "save it as grey, RGB or separate bands of 8 to 32 bits";
 
 impl Layout {
     /// Reads and checks the layout tags of `dir`.
@@ -126,7 +126,7 @@ impl Layout {
         if number(tag::FILL_ORDER, 1)? == 2 {
             return refuse(tag::FILL_ORDER, "bits stored from the least significant end".into(), RESAVE);
         }
-        let (bits, sample) = sample_type(source, dir)?;
+        let (bits, sample) = samples::kind(source, dir)?;
         let colour = match number(tag::PHOTOMETRIC, 1)? {
             0 => Colour::Grey { white_is_zero: true },
             1 => Colour::Grey { white_is_zero: false },
@@ -151,6 +151,9 @@ impl Layout {
         }
         if colour == Colour::YCbCr && !lossy {
             return refuse(tag::PHOTOMETRIC, "luminance and chroma outside JPEG".into(), RESAVE);
+        }
+        if colour == Colour::YCbCr && samples != 3 {
+            return refuse(tag::PHOTOMETRIC, format!("luminance and chroma in {samples} samples"), RESAVE);
         }
         if colour == Colour::Cmyk && lossy {
             return refuse(tag::PHOTOMETRIC, "printing colours (CMYK) inside JPEG".into(), RESAVE);
@@ -185,9 +188,9 @@ impl Layout {
             );
         }
 
-        let alpha = alpha_sample(source, dir, samples, colour)?;
+        let alpha = samples::alpha(source, dir, samples, colour)?;
         let palette =
-            if colour == Colour::Palette { Some(palette(source, dir, bits, sample)?) } else { None };
+            if colour == Colour::Palette { Some(samples::palette(source, dir, bits, sample)?) } else { None };
         if palette.is_some() && (samples - usize::from(alpha.is_some())) != 1 {
             return refuse(
                 tag::SAMPLES_PER_PIXEL,
@@ -421,93 +424,4 @@ fn unread_codec(code: u64) -> &'static str {
         50002 | 52546 => "JPEG XL",
         _ => "unknown",
     }
-}
-
-/// Stored bits and unpacked type of the samples, the same for every band or refused.
-fn sample_type(source: &Source, dir: &Directory) -> Result<(usize, SampleType), FileError> {
-    let path = source.path();
-    let same = |tag: u16, default: u64, what: &str| -> Result<u64, FileError> {
-        let values = dir.unsigned(source, tag, 1 << 16)?.unwrap_or_default();
-        let first = values.first().copied().unwrap_or(default);
-        if values.iter().any(|v| *v != first) {
-            return Err(FileError::unsupported(
-                path,
-                dir.spot(tag),
-                format!("bands of different sample {what}"),
-                RESAVE,
-            ));
-        }
-        Ok(first)
-    };
-    let bits = same(tag::BITS_PER_SAMPLE, 1, "size")?;
-    let format = same(tag::SAMPLE_FORMAT, 1, "type")?;
-    let sample = match (format, bits) {
-        (1 | 4, 1..=8) => SampleType::U8,
-        (1 | 4, 9..=16) => SampleType::U16,
-        (1 | 4, 32) => SampleType::U32,
-        (2, 8) => SampleType::I8,
-        (2, 16) => SampleType::I16,
-        (2, 32) => SampleType::I32,
-        (3, 16) => SampleType::F16,
-        (3, 32) => SampleType::F32,
-        (3, 64) => SampleType::F64,
-        (5 | 6, _) => {
-            return Err(FileError::unsupported(path, dir.spot(tag::SAMPLE_FORMAT), "complex samples", RESAVE));
-        }
-        (_, 0) => {
-            return Err(FileError::malformed(path, dir.spot(tag::BITS_PER_SAMPLE), "samples of 0 bits"));
-        }
-        _ => {
-            let kind = match format {
-                1 | 4 => "unsigned",
-                2 => "signed",
-                3 => "floating-point",
-                _ => "unknown",
-            };
-            let feature = format!("{kind} samples of {bits} bits");
-            return Err(FileError::unsupported(path, dir.spot(tag::BITS_PER_SAMPLE), feature, RESAVE));
-        }
-    };
-    Ok((bits as usize, sample))
-}
-
-/// The first extra sample that is declared an opacity.
-fn alpha_sample(
-    source: &Source,
-    dir: &Directory,
-    samples: usize,
-    colour: Colour,
-) -> Result<Option<usize>, FileError> {
-    let extras = dir.unsigned(source, tag::EXTRA_SAMPLES, 1 << 16)?.unwrap_or_default();
-    let Some(first) = samples.checked_sub(extras.len()) else { return Ok(None) };
-    let least = match colour {
-        Colour::Rgb | Colour::YCbCr => 3,
-        Colour::Cmyk => 4,
-        _ => 1,
-    };
-    let found = extras.iter().position(|kind| matches!(kind, 1 | 2)).map(|i| first + i);
-    Ok(found.filter(|i| *i >= least))
-}
-
-/// The colour map, 16-bit colours cut to 8 unless the writer stored 8-bit ones.
-fn palette(
-    source: &Source,
-    dir: &Directory,
-    bits: usize,
-    sample: SampleType,
-) -> Result<[Vec<u8>; 3], FileError> {
-    let path = source.path();
-    if !matches!(sample, SampleType::U8 | SampleType::U16) {
-        let feature = format!("a palette over {} samples", sample.name());
-        return Err(FileError::unsupported(path, dir.spot(tag::COLOR_MAP), feature, RESAVE));
-    }
-    let size = 1 << bits;
-    let map = dir.unsigned(source, tag::COLOR_MAP, 3 << 16)?.unwrap_or_default();
-    if map.len() < 3 * size {
-        let problem = format!("{} palette entries are expected, {} are listed", 3 * size, map.len());
-        return Err(FileError::malformed(path, dir.spot(tag::COLOR_MAP), problem));
-    }
-    let shift = if map.iter().all(|v| *v < 256) { 0 } else { 8 };
-    let channel = |c: usize| map[c * size..(c + 1) * size].iter().map(|v| (v >> shift) as u8).collect();
-    Ok([channel(0), channel(1), channel(2)])
 }

@@ -19,6 +19,7 @@ mod open;
 mod picture;
 mod read;
 mod reduce;
+mod samples;
 mod source;
 mod tag;
 mod tiff;

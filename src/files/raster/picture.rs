@@ -38,6 +38,15 @@ pub(super) fn describe(source: &Source, kind: Kind, limits: &Limits) -> Result<(
         Kind::Jpeg => {
             let stream = whole_file(source, limits.chunk_bytes)?;
             let (width, height, components) = guarded(|| jpeg::header(&stream)).map_err(damaged)?;
+            if !matches!(components, 1 | 3) {
+                let feature = format!("a JPEG of {components} components (printing colours)");
+                return Err(FileError::unsupported(
+                    source.path(),
+                    Spot::File,
+                    feature,
+                    "save it as grey or RGB",
+                ));
+            }
             let colour = if components == 3 { Colour::Rgb } else { Colour::Grey { white_is_zero: false } };
             (Layout::whole((width, height), components, SampleType::U8, colour, None), 8)
         }
