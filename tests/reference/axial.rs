@@ -117,7 +117,7 @@ fn a11_dispersion_interval_of_set_2() {
     assert_close!(mean, 247.616_562_9, 1e-5, "mean, scipy");
     let delta = dispersion(&phi, None);
     assert_close!(delta, 0.517_961_46, 1e-5, "δ, scipy");
-    let half = half_width(delta, 30.0, 1.959_963_984_540_054).expect("an arc");
+    let half = half_width(delta, 1.959_963_984_540_054 / 30f64.sqrt()).expect("an arc");
     assert_close!(half.to_degrees(), 14.923_845_4, 1e-5, "half width, scipy, Fisher 4.4.4");
 }
 

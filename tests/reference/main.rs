@@ -2,4 +2,5 @@
 
 mod axial;
 mod georef;
+mod axial_field;
 mod place;

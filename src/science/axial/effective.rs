@@ -8,6 +8,7 @@ use rayon::prelude::*;
 
 use crate::ground::{Bounds, Method, Point, Source, Stopped, Symbol, Work};
 use crate::numeric::lattice::Lattice;
+use crate::numeric::tail::{normal_quantile, student_two_sided};
 
 use super::mean::Resultant;
 use super::sources::DERIVED;
@@ -47,28 +48,60 @@ pub static METHOD: Method = Method {
     sources: &[Source { locator: "autocovariance of residuals", ..DERIVED }],
 };
 
-/// The effective number of nodes, and how well it is known.
+/// A number of independent axes, and how well it is known.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Number {
+    /// From the residuals.
+    pub estimated: f64,
+    /// Degrees of freedom of that estimate; infinite when independence was given.
+    pub df: f64,
+    /// The most that the smoothing of the field and the weights allow.
+    pub most: f64,
+}
+
+/// The effective number of nodes for the two uses it has.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct EffectiveNumber {
     /// For the interval of the mean axis: from the residual component across the mean.
-    pub for_mean: f64,
-    /// Degrees of freedom of `for_mean`; infinite when independence was given.
-    pub mean_df: f64,
+    pub mean: Number,
     /// For the test of a preferred trend: from both components of the residual unit vector, the
     /// field as it would be without a mean.
-    pub for_test: f64,
-    /// Degrees of freedom of `for_test`.
-    pub test_df: f64,
+    pub test: Number,
     /// Lag where the correlation of the across-mean residual falls to 1/e, unit of the positions.
     pub correlation_length: f64,
     /// The patch is too small for its correlation: the sum was held before the nodes were unrelated.
     pub held: bool,
 }
 
+impl Number {
+    /// `n` axes known to be independent.
+    pub fn known(n: f64) -> Self {
+        Self { estimated: n, df: f64::INFINITY, most: n }
+    }
+
+    /// The number to report.
+    pub fn value(self) -> f64 {
+        self.estimated.min(self.most)
+    }
+
+    /// q/√n for a two-sided interval of `level`: Student's quantile with the estimated number or the
+    /// normal quantile with the bound, whichever is wider. The bound is known, so it is not charged
+    /// for the uncertainty of an estimate.
+    pub fn standard_reach(self, level: f64) -> f64 {
+        let known = normal_quantile(0.5 + 0.5 * level) / self.most.sqrt();
+        if self.df.is_infinite() {
+            return known;
+        }
+        known.max(student_two_sided(level, self.df) / self.estimated.sqrt())
+    }
+}
+
 /// Rings of lags looked at before the lattice is made coarser.
 const RINGS: usize = 16;
 /// Correlation at which nodes count as unrelated.
 const UNRELATED: f64 = 0.05;
+/// e-folding lengths the sum may reach out to.
+const MOST_FOLDS: f64 = 5.0;
 /// The least number of independent discs the sum may leave.
 const LEAST_DISCS: f64 = 3.0;
 /// Most cells of a lattice; a longer one is made coarser at once.
@@ -113,10 +146,8 @@ pub fn effective_number(
             continue;
         }
         return Ok(EffectiveNumber {
-            for_mean: field.number(&rings, ACROSS, &across, kernel_sigma),
-            mean_df: across.discs - 1.0,
-            for_test: field.number(&rings, WHOLE, &whole, kernel_sigma),
-            test_df: whole.discs - 1.0,
+            mean: field.number(&rings, ACROSS, &across, kernel_sigma),
+            test: field.number(&rings, WHOLE, &whole, kernel_sigma),
             correlation_length: across.e_fold,
             held: across.held,
         });
@@ -125,14 +156,8 @@ pub fn effective_number(
 
 /// The number for `n` angles known to be independent.
 pub fn independent(n: f64) -> EffectiveNumber {
-    EffectiveNumber {
-        for_mean: n,
-        mean_df: f64::INFINITY,
-        for_test: n,
-        test_df: f64::INFINITY,
-        correlation_length: 0.0,
-        held: false,
-    }
+    let number = Number::known(n);
+    EffectiveNumber { mean: number, test: number, correlation_length: 0.0, held: false }
 }
 
 /// The residual across the mean direction.
@@ -259,40 +284,59 @@ impl Field {
         Ok(rings)
     }
 
-    /// The lag H: where the correlation has sunk below [`UNRELATED`], at most 3 e-folds out.
+    /// The lag H: where the correlation has sunk below [`UNRELATED`], at most [`MOST_FOLDS`] e-folds
+    /// out.
     fn reach(&self, rings: &[Ring], part: usize, kernel_sigma: f64) -> Reach {
         let own = self.square[part] / self.square_weight;
-        // (lag, correlation) outwards, skipping rings no pair falls in.
+        // Removing the mean lowers the covariance at every lag by the variance of the mean. It is
+        // added back, from the sum so far, before asking where the correlation ends.
+        let mut removed = 0.0;
+        let mut reach = self.reach_above(rings, part, kernel_sigma, own, removed);
+        for _ in 0..2 {
+            removed = (self.covered(rings, part, &reach) / (self.total * self.total)).clamp(0.0, own);
+            reach = self.reach_above(rings, part, kernel_sigma, own, removed);
+        }
+        reach
+    }
+
+    fn reach_above(&self, rings: &[Ring], part: usize, kernel_sigma: f64, own: f64, removed: f64) -> Reach {
+        let varies = own > 0.0;
+        // Correlations outwards, skipping rings no pair falls in.
         let correlations: Vec<(f64, f64)> = rings
             .iter()
             .skip(1)
-            .filter(|r| r.pairs > 0.0 && own > 0.0)
-            .map(|r| (r.lag, r.products[part] / r.pairs / own))
+            .filter(|r| r.pairs > 0.0 && varies)
+            .map(|r| (r.lag, (r.products[part] / r.pairs + removed) / (own + removed)))
             .collect();
         let e_fold = crossing(&correlations, (-1f64).exp());
         let end = crossing(&correlations, UNRELATED);
-        let kernel_fold = 2.0 * kernel_sigma;
         let far = rings.iter().map(|r| r.lag).fold(0.0, f64::max);
-        let fold = e_fold.unwrap_or(if own > 0.0 { far } else { 0.0 }).max(kernel_fold);
-        let limit = (3.0 * fold).min(end.unwrap_or(f64::INFINITY).max(1.5 * fold));
+        let fold = e_fold.unwrap_or(if varies { far } else { 0.0 }).max(2.0 * kernel_sigma);
+        let limit = (MOST_FOLDS * fold).min(end.unwrap_or(f64::INFINITY).max(1.5 * fold));
         let wanted = rings.iter().take_while(|r| r.lag <= limit + 1e-9 * self.cell).count().max(1);
-        let all = self.total * self.total;
-        let mut rings_summed = wanted;
-        let discs = |count: usize| all / rings[..count].iter().map(|r| r.pairs).sum::<f64>();
-        while rings_summed > 1 && discs(rings_summed) < LEAST_DISCS {
-            rings_summed -= 1;
+        let discs =
+            |count: usize| self.total * self.total / rings[..count].iter().map(|r| r.pairs).sum::<f64>();
+        let mut summed = wanted;
+        while summed > 1 && discs(summed) < LEAST_DISCS {
+            summed -= 1;
         }
         Reach {
-            rings: rings_summed,
+            rings: summed,
             e_fold: fold,
-            discs: discs(rings_summed).max(LEAST_DISCS),
-            held: rings_summed < wanted || e_fold.is_none() && own > 0.0,
-            out_of_rings: limit > far && own > 0.0,
+            discs: discs(summed).max(LEAST_DISCS),
+            held: summed < wanted || e_fold.is_none() && varies,
+            out_of_rings: limit > far && varies,
         }
     }
 
-    fn number(&self, rings: &[Ring], part: usize, reach: &Reach, kernel_sigma: f64) -> f64 {
-        let most = self.total * self.total / self.square_weight;
+    /// Σ N(h) C(h) out to H, with what removing the mean took and what lies beyond H restored.
+    fn covered(&self, rings: &[Ring], part: usize, reach: &Reach) -> f64 {
+        let products: f64 = rings[..reach.rings].iter().map(|r| r.products[part]).sum();
+        // A Gaussian fall-off that has sunk to UNRELATED has that share of its volume still to come.
+        products / (1.0 - 1.0 / reach.discs) / (1.0 - UNRELATED)
+    }
+
+    fn number(&self, rings: &[Ring], part: usize, reach: &Reach, kernel_sigma: f64) -> Number {
         let variance = self.variance[part];
         // White noise smoothed by the kernel is correlated as exp(−h²/4σ²); unit vectors of pure
         // noise keep at least π/4 of it.
@@ -309,9 +353,9 @@ impl Field {
         let least = self.square_weight
             + within
             + rings[1..].iter().map(|r| r.pairs * smoothed(r.square_lag)).sum::<f64>();
-        let products: f64 = rings[..reach.rings].iter().map(|r| r.products[part]).sum();
-        let relative = if variance > 0.0 { products / (1.0 - 1.0 / reach.discs) / variance } else { 0.0 };
-        (self.total * self.total / relative.max(least)).clamp(1.0, most.max(1.0))
+        let relative = if variance > 0.0 { self.covered(rings, part, reach) / variance } else { 0.0 };
+        let number = |sum: f64| (self.total * self.total / sum.max(self.square_weight)).max(1.0);
+        Number { estimated: number(relative), df: reach.discs - 1.0, most: number(least) }
     }
 }
 

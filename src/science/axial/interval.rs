@@ -60,10 +60,12 @@ pub fn dispersion(phi: &[f64], weights: Option<&[f64]>) -> f64 {
     if resultant.weight > 0.0 { square / resultant.weight / (length * length) } else { f64::INFINITY }
 }
 
-/// Half width (radians of the circle angle) of the interval from the dispersion `delta` of `n`
-/// independent angles and the quantile `q`; `None` when it is the whole circle.
-pub fn half_width(delta: f64, n: f64, q: f64) -> Option<f64> {
-    let sine = q * (delta / n).sqrt();
+/// Half width (radians of the circle angle) of the interval from the dispersion `delta` and
+/// `reach` = q/√n, the quantile over the root of the number of independent angles
+/// ([`Number::standard_reach`](super::effective::Number::standard_reach)); `None` when it is the
+/// whole circle.
+pub fn half_width(delta: f64, reach: f64) -> Option<f64> {
+    let sine = reach * delta.sqrt();
     (sine <= 1.0).then(|| sine.asin())
 }
 
@@ -91,7 +93,7 @@ mod tests {
     #[test]
     fn opposite_angles_leave_the_whole_circle() {
         let phi = [0.0, std::f64::consts::PI];
-        assert_eq!(half_width(dispersion(&phi, None), 2.0, 1.96), None);
+        assert_eq!(half_width(dispersion(&phi, None), 1.96 / 2f64.sqrt()), None);
         assert_eq!(half_width_chi2(0.1, 10.0, 3.841), None);
     }
 
@@ -100,7 +102,7 @@ mod tests {
         let phi: Vec<f64> =
             (0..400).map(|i| crate::numeric::tail::normal_quantile((f64::from(i) + 0.5) / 400.0)).collect();
         let r = Resultant::of(&phi, None).mean_length();
-        let a = half_width(dispersion(&phi, None), 400.0, 1.959_964).expect("narrow");
+        let a = half_width(dispersion(&phi, None), 1.959_964 / 20.0).expect("narrow");
         let b = half_width_chi2(r, 400.0, 3.841_459).expect("narrow");
         assert_close!(a / b, 1.0, 0.04, "dispersion over χ²");
     }

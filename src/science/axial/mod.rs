@@ -8,6 +8,7 @@ pub mod density;
 pub mod effective;
 pub mod interval;
 pub mod kappa;
+pub mod known_correlation;
 pub mod mean;
 pub mod rayleigh;
 pub mod rose;

@@ -3,6 +3,7 @@
 use crate::ground::{Method, Read, Source, Symbol};
 use crate::numeric::tail::f_above;
 
+use super::effective::Number;
 use super::sources::{DERIVED, ZAR};
 
 pub static METHOD: Method = Method {
@@ -58,11 +59,11 @@ pub fn rayleigh_p(mean_length: f64, n: f64) -> f64 {
     p.clamp(0.0, 1.0)
 }
 
-/// The same where `n` was estimated from the data with `df` degrees of freedom: Z is then a ratio of
-/// two mean squares, F(2, 2ν), with tail (1 + Z/ν)^(−ν).
-pub fn rayleigh_p_estimated(mean_length: f64, n: f64, df: f64) -> f64 {
-    let z = n * mean_length * mean_length;
-    rayleigh_p(mean_length, n).max(f_above(z, 2.0, 2.0 * df))
+/// The same where the number of independent angles was itself estimated: Z is then a ratio of two
+/// mean squares, F(2, 2ν), with tail (1 + Z/ν)^(−ν). The larger of the two p.
+pub fn rayleigh_p_estimated(mean_length: f64, number: Number) -> f64 {
+    let z = number.estimated * mean_length * mean_length;
+    rayleigh_p(mean_length, number.value()).max(f_above(z, 2.0, 2.0 * number.df))
 }
 
 /// Zar's closed form exp(√(1 + 4n + 4(n² − R²)) − (1 + 2n)), for comparison.
@@ -79,14 +80,14 @@ mod tests {
     proptest! {
         #[test]
         fn p_is_a_probability(r in 0.0..=1.0f64, n in 0.0..1e5f64, df in 1.0..1e4f64) {
-            for p in [rayleigh_p(r, n), rayleigh_p_estimated(r, n, df), rayleigh_p_closed(r, n)] {
+            for p in [rayleigh_p(r, n), rayleigh_p_estimated(r, Number { estimated: n, df, most: n }), rayleigh_p_closed(r, n)] {
                 prop_assert!((0.0..=1.0).contains(&p), "{p}");
             }
         }
 
         #[test]
         fn an_uncertain_number_never_sharpens_the_test(r in 0.0..=1.0f64, n in 1.0..1e4f64) {
-            prop_assert!(rayleigh_p_estimated(r, n, 5.0) >= rayleigh_p(r, n));
+            prop_assert!(rayleigh_p_estimated(r, Number { estimated: n, df: 5.0, most: n }) >= rayleigh_p(r, n));
         }
     }
 }

@@ -1,7 +1,6 @@
 //! The family's one face: everything a finding says about a set of axes.
 
 use crate::ground::{Axis, Caution, Point, Seed, Stopped, Work};
-use crate::numeric::tail::{normal_quantile, student_two_sided};
 
 use super::blocks::{self, BlockBootstrap};
 use super::effective::{EffectiveNumber, effective_number, independent};
@@ -102,29 +101,25 @@ pub fn summarise(
         None => independent(kish(weights, phi.len())),
     };
     let delta = dispersion(&phi, weights);
-    let q = if effective.mean_df.is_finite() {
-        student_two_sided(LEVEL, effective.mean_df)
-    } else {
-        normal_quantile(0.5 + 0.5 * LEVEL)
-    };
-    let by_number = half_width(delta, effective.for_mean, q).filter(|_| n > 0);
+    let by_number = half_width(delta, effective.mean.standard_reach(LEVEL)).filter(|_| n > 0);
     let [blocks, double_blocks] = match sample.nodes {
         Some(nodes) => block_bootstraps(&phi, weights, nodes, &effective, settings, seed, work)?,
         None => [None; 2],
     };
     let interval = interval(by_number, blocks, double_blocks, sample.nodes.is_some());
-    let p = rayleigh_p_estimated(length, effective.for_test, effective.test_df);
-    let estimator = Kappa::recommended(effective.for_mean);
+    let p = rayleigh_p_estimated(length, effective.test);
+    let n_eff_mean = effective.mean.value();
+    let estimator = Kappa::recommended(n_eff_mean);
     Ok(Summary {
         preferred: n > 0 && p <= settings.significance,
         mean: (n > 0).then(|| resultant.axis()),
         resultant_length: length,
-        kappa: estimator.of(length, effective.for_mean),
+        kappa: estimator.of(length, n_eff_mean),
         kappa_estimator: estimator.name(),
         spread_deg: Spread::Standard.axial_deg(length),
         n,
-        n_eff_mean: effective.for_mean,
-        n_eff_test: effective.for_test,
+        n_eff_mean,
+        n_eff_test: effective.test.value(),
         correlation_length: sample.nodes.map(|_| effective.correlation_length),
         rayleigh_p: (sample.nodes.is_none() || blocks.is_some()).then_some(p),
         cautions: cautions(&effective, blocks, sample.nodes.is_some(), n),
