@@ -84,7 +84,8 @@ impl PowerPlan {
     }
 }
 
-/// The smallest even number ≥ `n` whose only prime factors are 2, 3 and 5: quick to transform.
+/// The largest even number ≤ `n` (at least 2) whose only prime factors are 2, 3 and 5: quick to
+/// transform, and so is its double.
 pub fn quick_size(n: usize) -> usize {
     let smooth = |mut m: usize| {
         for p in [2, 3, 5] {
@@ -94,7 +95,7 @@ pub fn quick_size(n: usize) -> usize {
         }
         m == 1
     };
-    (n.max(2)..).find(|m| m.is_multiple_of(2) && smooth(*m)).unwrap_or(n)
+    (2..=n).rev().find(|m| m.is_multiple_of(2) && smooth(*m)).unwrap_or(2)
 }
 
 #[cfg(test)]
@@ -131,6 +132,6 @@ mod tests {
 
     #[test]
     fn quick_sizes() {
-        assert_eq!([1, 7, 61, 127, 256].map(quick_size), [2, 8, 64, 128, 256]);
+        assert_eq!([1, 7, 61, 127, 256].map(quick_size), [2, 6, 60, 120, 256]);
     }
 }

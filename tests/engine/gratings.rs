@@ -1,7 +1,7 @@
 //! Gratings at every azimuth: the tensor and the spectrum must return what was drawn.
 
 use ventifact::ground::{Axis, Body, Grid, Place, Point, Polygon, Work};
-use ventifact::science::orientation::{TensorSettings, trend_nodes};
+use ventifact::science::orientation::{SpectrumSettings, TensorSettings, spectrum, trend_nodes};
 use ventifact::science::scene::{Grating, picture};
 
 fn place(pixel: [f64; 2]) -> Place {
@@ -50,6 +50,46 @@ fn the_tensor_returns_the_trend_of_gratings() {
             let worst = tensor_error(spacing, pixel, size, 5);
             println!("tensor, pixel {pixel:?}, spacing {spacing}: worst {worst:.4}°");
             assert!(worst <= 0.05, "pixel {pixel:?}, spacing {spacing}: got {worst}, bound 0.05");
+        }
+    }
+}
+
+/// Worst (trend error in degrees, spacing error as a share) of the spectrum over azimuths.
+fn spectrum_error(spacing: f64, pixel: [f64; 2], size: [usize; 2], every: usize) -> (f64, f64) {
+    let place = place(pixel);
+    let settings = SpectrumSettings {
+        window_px: None,
+        shortest_spacing_px: 4.0,
+        longest_spacing_px: None,
+        significance: 0.05,
+        logarithm: false,
+    };
+    let mut worst = (0.0f64, 0.0f64);
+    for deg in (0..180).step_by(every) {
+        let trend = Axis::from_deg(deg as f64);
+        let mut grating = Grating::new(trend, spacing);
+        grating.phase = 0.1 * deg as f64;
+        let image = draw(size, &place, grating);
+        let found = spectrum(&image, &whole(&image), &place, &settings, &Work::quiet()).expect("not stopped");
+        assert!(found.defined, "{deg}°, spacing {spacing}: {found:?}");
+        let peak = found.peak.expect("a peak");
+        worst.0 = worst.0.max(peak.axis.separation(trend));
+        worst.1 = worst.1.max((peak.spacing / spacing - 1.0).abs());
+    }
+    worst
+}
+
+#[test]
+fn the_spectrum_returns_trend_and_spacing_of_gratings() {
+    for (pixel, size) in [([1.0, 1.0], [256, 256]), ([1.0, 2.0], [256, 128])] {
+        for spacing in [6.0, 9.0, 14.5, 24.0] {
+            let (trend, share) = spectrum_error(spacing, pixel, size, 5);
+            println!(
+                "spectrum, pixel {pixel:?}, spacing {spacing}: worst {trend:.4}°, {:.3} %",
+                100.0 * share
+            );
+            assert!(trend <= 0.3, "pixel {pixel:?}, spacing {spacing}: got {trend}°, bound 0.3°");
+            assert!(share <= 0.01, "pixel {pixel:?}, spacing {spacing}: got {share}, bound 0.01");
         }
     }
 }

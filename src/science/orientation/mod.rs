@@ -4,12 +4,14 @@
 mod contrast;
 mod gradient;
 pub mod noise;
+pub mod spectrum;
 mod tensor;
 
 pub use gradient::Tone;
+pub use spectrum::{Peak, Spectrum, SpectrumSettings, spectrum};
 pub use tensor::{NodeField, TensorSettings, TrendNode, trend_nodes};
 
 use crate::ground::Method;
 
 /// The methods of this family.
-pub const METHODS: &[&Method] = &[&tensor::METHOD, &noise::METHOD];
+pub const METHODS: &[&Method] = &[&tensor::METHOD, &noise::METHOD, &spectrum::METHOD];

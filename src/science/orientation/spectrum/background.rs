@@ -1,0 +1,110 @@
+//! The smooth background of a power spectrum, from medians in rings of ground frequency.
+
+use super::bins::Bins;
+
+/// A ring is at least this wide (ratio of frequencies) and holds at least this many bins.
+const RING_RATIO: f64 = 1.3;
+const RING_BINS: usize = 24;
+
+/// Bins an axis line is followed to either side, as a ratio of frequencies.
+const LINE_RATIO: f64 = 2.0;
+
+/// Which bins make up each ring and each axis line; the same for all windows of a size.
+#[derive(Clone, Debug)]
+pub(super) struct Rings {
+    /// Ends of the rings in `Bins::all`, and the mean ln f of each.
+    ends: Vec<usize>,
+    middle: Vec<f64>,
+    /// Bins on each axis line, by rising frequency (indices into `Bins::all`).
+    lines: [Vec<usize>; 2],
+    /// For each bin of a line its neighbours on it: range into `lines`.
+    reach: [Vec<(usize, usize)>; 2],
+}
+
+impl Rings {
+    pub fn new(bins: &Bins) -> Self {
+        let (mut ends, mut middle) = (Vec::new(), Vec::new());
+        let mut from = 0;
+        for to in 1..=bins.all.len() {
+            let wide = bins.all[to - 1].ln_f - bins.all[from].ln_f >= RING_RATIO.ln();
+            // What is left at the end must make a ring of its own, or join the last one.
+            let enough = to - from >= RING_BINS && bins.all.len() - to >= RING_BINS;
+            if (wide && enough) || to == bins.all.len() {
+                let ring = &bins.all[from..to];
+                middle.push(ring.iter().map(|b| b.ln_f).sum::<f64>() / ring.len() as f64);
+                ends.push(to);
+                from = to;
+            }
+        }
+        let lines = [0, 1].map(|line| {
+            let on = |i: &usize| bins.all[*i].line == Some(line);
+            (0..bins.all.len()).filter(on).collect::<Vec<usize>>()
+        });
+        let reach = [0, 1].map(|line| {
+            let ln_f = |i: &usize| bins.all[*i].ln_f;
+            let on: &Vec<usize> = &lines[line];
+            on.iter()
+                .map(|i| {
+                    let (low, high) = (ln_f(i) - LINE_RATIO.ln(), ln_f(i) + LINE_RATIO.ln());
+                    (on.partition_point(|j| ln_f(j) < low), on.partition_point(|j| ln_f(j) <= high))
+                })
+                .collect()
+        });
+        Self { ends, middle, lines, reach }
+    }
+
+    /// Mean background power at every bin of `Bins::all`: median ÷ ln 2 of each ring, joined by straight
+    /// lines in ln P over ln f. Bins on an axis line are held against the line's own median where
+    /// that is higher: stripes and seams fill the whole line, a grating only one place on it.
+    pub fn background(&self, bins: &Bins, power: &[f32], floor: f64, scratch: &mut Vec<f32>) -> Vec<f64> {
+        let mut from = 0;
+        let level: Vec<f64> = self
+            .ends
+            .iter()
+            .map(|to| {
+                let median = median_of(bins.all[from..*to].iter().map(|b| power[b.index]), scratch);
+                from = *to;
+                mean_of_median(median, floor).ln()
+            })
+            .collect();
+        let mut ring = 0;
+        let mut background: Vec<f64> = bins
+            .all
+            .iter()
+            .map(|bin| {
+                while ring + 2 < self.middle.len() && bin.ln_f > self.middle[ring + 1] {
+                    ring += 1;
+                }
+                match self.middle.get(ring + 1) {
+                    None => level[ring].exp(),
+                    Some(next) => {
+                        let t = (bin.ln_f - self.middle[ring]) / (next - self.middle[ring]);
+                        (level[ring] + t * (level[ring + 1] - level[ring])).exp()
+                    }
+                }
+            })
+            .collect();
+        for (line, reach) in self.lines.iter().zip(&self.reach) {
+            for (i, (from, to)) in line.iter().zip(reach) {
+                let median = median_of(line[*from..*to].iter().map(|j| power[bins.all[*j].index]), scratch);
+                background[*i] = background[*i].max(mean_of_median(median, floor));
+            }
+        }
+        background
+    }
+}
+
+/// The mean of an exponential distribution of this median, not below `floor`.
+fn mean_of_median(median: f32, floor: f64) -> f64 {
+    (f64::from(median) / std::f64::consts::LN_2).max(floor)
+}
+
+fn median_of(values: impl Iterator<Item = f32>, scratch: &mut Vec<f32>) -> f32 {
+    scratch.clear();
+    scratch.extend(values);
+    if scratch.is_empty() {
+        return 0.0;
+    }
+    let middle = scratch.len() / 2;
+    *scratch.select_nth_unstable_by(middle, f32::total_cmp).1
+}

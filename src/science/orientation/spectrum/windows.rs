@@ -1,0 +1,221 @@
+//! Windows over a patch: where they lie, and the tapered power of each.
+
+use rayon::prelude::*;
+
+use crate::ground::{Bounds, Grid, LocalFrame, Place, Point, Polygon, Stopped, Work};
+use crate::numeric::fft::{PowerPlan, PowerScratch};
+use crate::numeric::taper::{Plane, hann, hann_overlap};
+
+use super::super::gradient::Tone;
+
+/// Share of a window's taper that must fall on valid pixels inside the patch.
+const LEAST_SHARE: f64 = 0.9;
+
+/// Windows handled together; their results are taken in order, so that sums are the same for any
+/// number of threads.
+const BATCH: usize = 32;
+
+/// The patch as a picture: tone, and which pixels count.
+pub(super) struct Scene<'a> {
+    pub image: &'a Grid<f32>,
+    pub tone: Tone,
+    pub place: &'a Place,
+    /// Inside the patch and valid.
+    inside: Vec<bool>,
+    bounds: [usize; 4],
+}
+
+/// Upper left pixel of each window.
+#[derive(Clone, Debug, PartialEq)]
+pub(super) struct Windows {
+    pub size: [usize; 2],
+    pub origins: Vec<[usize; 2]>,
+}
+
+/// What is left of a window for its transform.
+pub(super) struct Tapered {
+    pub level: f64,
+    /// Σ taper² over what counts.
+    pub square: f64,
+    pub frame: LocalFrame,
+}
+
+impl<'a> Scene<'a> {
+    /// `None` when the patch does not touch the raster.
+    pub fn new(image: &'a Grid<f32>, patch: &Polygon, tone: Tone, place: &'a Place) -> Option<Self> {
+        let Bounds { min, max } = patch.bounds()?;
+        let clamp = |v: f64, limit: usize| v.clamp(0.0, limit as f64) as usize;
+        let bounds = [
+            clamp(min.x.floor(), image.width()),
+            clamp(min.y.floor(), image.height()),
+            clamp(max.x.ceil(), image.width()),
+            clamp(max.y.ceil(), image.height()),
+        ];
+        let width = image.width();
+        let mut inside = vec![false; image.len()];
+        for row in bounds[1]..bounds[3] {
+            for (from, to) in patch.row_spans(row, width) {
+                for col in from..to {
+                    inside[row * width + col] = image.is_valid(col, row);
+                }
+            }
+        }
+        (bounds[0] < bounds[2] && bounds[1] < bounds[3]).then_some(Self {
+            image,
+            tone,
+            place,
+            inside,
+            bounds,
+        })
+    }
+
+    /// Columns and rows of the patch's box on the raster.
+    pub fn extent(&self) -> [usize; 2] {
+        [self.bounds[2] - self.bounds[0], self.bounds[3] - self.bounds[1]]
+    }
+
+    pub fn centre(&self) -> Point {
+        Point::new(
+            0.5 * (self.bounds[0] + self.bounds[2]) as f64,
+            0.5 * (self.bounds[1] + self.bounds[3]) as f64,
+        )
+    }
+
+    /// Windows half overlapping that lie on the raster and nine tenths in the patch.
+    pub fn windows(&self, size: [usize; 2], work: &Work) -> Result<Windows, Stopped> {
+        let starts = |i: usize| -> Vec<usize> {
+            let extent = self.extent()[i];
+            if size[i] > extent || size[i] < 2 {
+                return Vec::new();
+            }
+            let spare = extent - size[i];
+            let steps = spare.div_ceil((size[i] / 2).max(1));
+            (0..=steps)
+                .map(|k| self.bounds[i] + (spare * k).checked_div(steps).unwrap_or(spare / 2))
+                .collect()
+        };
+        let tapers = size.map(hann);
+        let (cols, rows) = (starts(0), starts(1));
+        let corners: Vec<[usize; 2]> = rows.iter().flat_map(|r| cols.iter().map(|c| [*c, *r])).collect();
+        let keep: Result<Vec<bool>, Stopped> = corners
+            .par_iter()
+            .map(|origin| {
+                work.advance(0)?;
+                let middle = [0, 1]
+                    .map(|i| (origin[i] + size[i] / 2).min([self.image.width(), self.image.height()][i] - 1));
+                let has_frame =
+                    self.place.local_frame(Point::new(middle[0] as f64, middle[1] as f64)).is_some();
+                Ok(has_frame && self.share(*origin, &tapers) >= LEAST_SHARE)
+            })
+            .collect();
+        let origins = corners.into_iter().zip(keep?).filter(|(_, keep)| *keep).map(|(o, _)| o).collect();
+        Ok(Windows { size, origins })
+    }
+
+    /// Share of the taper on pixels that count.
+    fn share(&self, origin: [usize; 2], tapers: &[Vec<f64>; 2]) -> f64 {
+        let (mut sum, mut all) = (0.0, 0.0);
+        let whole: f64 = tapers[0].iter().sum();
+        for (r, wr) in tapers[1].iter().enumerate() {
+            let line = &self.inside[(origin[1] + r) * self.image.width() + origin[0]..][..tapers[0].len()];
+            let part: f64 = tapers[0].iter().zip(line).filter(|(_, inside)| **inside).map(|(w, _)| w).sum();
+            sum += wr * part;
+            all += wr * whole;
+        }
+        sum / all
+    }
+
+    /// Takes the plane out of a window, fills what is missing with it, and tapers the rest into `out`.
+    fn taper(
+        &self,
+        origin: [usize; 2],
+        size: [usize; 2],
+        tapers: &[Vec<f64>; 2],
+        out: &mut [f32],
+    ) -> Option<Tapered> {
+        let width = self.image.width();
+        let value = |col: usize, row: usize| {
+            let at = (origin[1] + row) * width + origin[0] + col;
+            self.inside[at].then(|| f64::from(self.tone.of(self.image.values()[at])))
+        };
+        let plane = Plane::fit([&tapers[0], &tapers[1]], value)?;
+        let mut square = 0.0;
+        for (row, (line, wr)) in out.chunks_exact_mut(size[0]).zip(&tapers[1]).enumerate() {
+            for (col, (v, wc)) in line.iter_mut().zip(&tapers[0]).enumerate() {
+                let w = wr * wc;
+                *v = 0.0;
+                if let Some(tone) = value(col, row) {
+                    *v = (w * (tone - plane.at(col, row, size))) as f32;
+                    square += w * w;
+                }
+            }
+        }
+        let centre = Point::new((origin[0] + size[0] / 2) as f64, (origin[1] + size[1] / 2) as f64);
+        Some(Tapered { level: plane.level, square, frame: self.place.local_frame(centre)? })
+    }
+
+    /// Hands each window's number and power to `read` (in parallel) and what that returns to `take` (in
+    /// order).
+    pub fn powers<T: Send>(
+        &self,
+        windows: &Windows,
+        plan: &PowerPlan,
+        work: &Work,
+        read: impl Fn(usize, &Tapered, &[f32]) -> T + Sync,
+        mut take: impl FnMut(T),
+    ) -> Result<(), Stopped> {
+        struct Buffers {
+            window: Vec<f32>,
+            power: Vec<f32>,
+            scratch: PowerScratch,
+        }
+        let size = windows.size;
+        let tapers = size.map(hann);
+        let numbered: Vec<(usize, [usize; 2])> = windows.origins.iter().copied().enumerate().collect();
+        for batch in numbered.chunks(BATCH) {
+            let results: Result<Vec<Option<T>>, Stopped> = batch
+                .par_iter()
+                .map_init(
+                    || Buffers {
+                        window: vec![0.0; size[0] * size[1]],
+                        power: vec![0.0; plan.len()],
+                        scratch: plan.scratch(),
+                    },
+                    |buffers, (number, origin)| {
+                        work.advance(1)?;
+                        let Some(tapered) = self.taper(*origin, size, &tapers, &mut buffers.window) else {
+                            return Ok(None);
+                        };
+                        plan.power(&buffers.window, size[0], &mut buffers.scratch, &mut buffers.power);
+                        work.advance(0)?;
+                        Ok(Some(read(*number, &tapered, &buffers.power)))
+                    },
+                )
+                .collect();
+            results?.into_iter().flatten().for_each(&mut take);
+        }
+        Ok(())
+    }
+}
+
+impl Windows {
+    /// The number of independent windows: K² / ΣΣ ρ, ρ the correlation of the power of two overlapping
+    /// Hann windows over white noise.
+    pub fn independent(&self) -> f64 {
+        let overlap = self.size.map(|n| (0..=n).map(|shift| hann_overlap(n, shift)).collect::<Vec<f64>>());
+        let k = self.origins.len() as f64;
+        let mut sum = 0.0;
+        for (i, a) in self.origins.iter().enumerate() {
+            sum += 1.0;
+            for b in &self.origins[i + 1..] {
+                let rho = |d: usize| overlap[d][a[d].abs_diff(b[d]).min(self.size[d])];
+                sum += 2.0 * rho(0) * rho(1);
+                // Rows come in order: nothing further down overlaps.
+                if b[1] >= a[1] + self.size[1] {
+                    break;
+                }
+            }
+        }
+        if k > 0.0 { k * k / sum } else { 0.0 }
+    }
+}
