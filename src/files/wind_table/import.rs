@@ -1,4 +1,4 @@
-//! Wind records as text: how a table is to be read, guessed first and then the user's to edit.
+//! How a wind table is to be read: guessed first, then the user's to edit, and kept in the sheet.
 
 use serde::{Deserialize, Serialize};
 
@@ -18,6 +18,9 @@ pub struct WindImport {
     pub missing: Vec<f64>,
     /// What direction 0 (with 360 = north) stands for.
     pub zero_direction: ZeroDirection,
+    /// Whether dates with slashes, dots or dashes and the year last put the day before the month.
+    #[serde(default)]
+    pub day_first: bool,
 }
 
 /// What the columns hold.
