@@ -1,6 +1,36 @@
-//! The wind family.
+//! Winds to sand: quality control, profile, threshold, transport laws, drift, and its bootstrap.
+
+pub mod air;
+mod assess;
+mod bootstrap;
+pub mod drift_potential;
+pub mod law;
+pub mod log_law;
+pub mod quality;
+pub mod regime;
+pub mod saturation;
+pub mod threshold;
+
+pub use assess::{Sensitivity, Site, Transport, WindAssessment, WindError, WindSettings, assess};
+pub use law::Law;
+pub use quality::SetAside;
+pub use regime::{Drift, Season};
+pub use threshold::{Bed, Threshold};
 
 use crate::ground::Method;
 
 /// The methods of this family.
-pub const METHODS: &[&Method] = &[];
+pub const METHODS: &[&Method] = &[
+    &quality::METHOD,
+    &air::METHOD,
+    &log_law::METHOD,
+    &threshold::BAGNOLD,
+    &threshold::IVERSEN_WHITE,
+    &threshold::SHAO_LU,
+    &law::METHOD,
+    &drift_potential::METHOD,
+    &regime::METHOD,
+    &bootstrap::METHOD,
+    &saturation::SETTLING,
+    &saturation::WAVELENGTH,
+];

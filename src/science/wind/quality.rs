@@ -1,0 +1,494 @@
+//! Quality control of a wind record: what is set aside, named by line and value, and what is merely doubtful.
+
+use crate::ground::{Caution, Method, Read, Source, Stopped, Symbol, WindRecord, WindSample, Work};
+
+/// The rules of quality control.
+pub const METHOD: Method = Method {
+    id: "wind.quality-control",
+    name: "Quality control of a wind record",
+    question: "Which rows of the record can be believed?",
+    formula: "set aside: no speed; v < 0; v > v_max; v > 2 q₉₉.₉ and v > 3 max(neighbours); repeated time; run of ≥ 24 equal \
+              windy rows beyond the first",
+    symbols: &[
+        Symbol { symbol: "v", meaning: "wind speed", unit: "m s⁻¹" },
+        Symbol { symbol: "v_max", meaning: "greatest speed believed", unit: "m s⁻¹" },
+        Symbol {
+            symbol: "q₉₉.₉", meaning: "99.9 % quantile of the speeds below v_max", unit: "m s⁻¹"
+        },
+    ],
+    assumptions: &["Bad records are rare and stand alone"],
+    limits: &[
+        "Slow drift of an instrument is not seen",
+        "A true gust alone in a calm is set aside, and named",
+    ],
+    sources: &[Source {
+        key: "ventifact-quality",
+        authors: "Ventifact",
+        year: 2026,
+        title: "Rules for wind records",
+        published: "set for this program",
+        locator: "",
+        read: Read::Derived,
+    }],
+};
+
+/// Rows set aside for one reason.
+#[derive(Clone, Debug, PartialEq)]
+pub struct SetAside {
+    pub code: &'static str,
+    pub count: usize,
+    /// What, why, and the first lines with their values.
+    pub text: String,
+}
+
+/// A record after quality control.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Checked {
+    /// In order of time where the record has a clock. All have a speed; some have no direction.
+    pub kept: Vec<WindSample>,
+    pub set_aside: Vec<SetAside>,
+    pub cautions: Vec<Caution>,
+    /// Commonest step between records, s.
+    pub interval_s: Option<f64>,
+    /// First and last time kept.
+    pub span: Option<[i64; 2]>,
+}
+
+/// Rows with the same speed and direction this often in a row are a stuck instrument.
+const STUCK_RUN: usize = 24;
+/// Rows named in full.
+const NAMED: usize = 5;
+/// Fewest rows from which a spike can be told.
+const FEWEST_FOR_SPIKES: usize = 100;
+const DAY: i64 = 86_400;
+
+/// Checks a record. Speeds above `greatest_speed` m s⁻¹ are impossible.
+///
+/// # Errors
+/// [`Stopped`] when asked to.
+pub fn check(record: &WindRecord, greatest_speed: f64, work: &Work) -> Result<Checked, Stopped> {
+    work.phase("checking winds", record.samples.len() as u64);
+    let mut rejected = Rejected::default();
+    let mut cautions = Vec::new();
+    let has_clock = record.samples.iter().any(|s| s.time.is_some());
+    let mut kept = Vec::with_capacity(record.samples.len());
+    for (at, sample) in record.samples.iter().enumerate() {
+        if at % 4096 == 0 {
+            work.advance(4096)?;
+        }
+        match sample.speed {
+            None => rejected.add(Fault::NoSpeed, sample),
+            Some(v) if v < 0.0 => rejected.add(Fault::Negative, sample),
+            Some(v) if v > greatest_speed => rejected.add(Fault::Impossible, sample),
+            Some(_) if has_clock && sample.time.is_none() => rejected.add(Fault::NoTime, sample),
+            Some(_) => kept.push(*sample),
+        }
+    }
+    if has_clock {
+        let backward = kept.windows(2).filter(|w| w[1].time < w[0].time).count();
+        if backward > 0 {
+            cautions.push(Caution::new(
+                "time-disorder",
+                format!("Time runs backward at {backward} places of the file; the rows were put in order."),
+            ));
+        }
+        kept.sort_by_key(|s| (s.time, s.line));
+        let mut last = None;
+        kept.retain(|s| {
+            let repeated = s.time == last;
+            last = s.time;
+            if repeated {
+                rejected.add(Fault::Repeated, s);
+            }
+            !repeated
+        });
+    }
+    work.advance(0)?;
+    let interval_s = interval(&kept);
+    if !record.is_table {
+        set_spikes_aside(&mut kept, interval_s, &mut rejected);
+        set_stuck_aside(&mut kept, &mut rejected);
+    }
+    let span = kept.first().and_then(|s| s.time).zip(kept.last().and_then(|s| s.time)).map(|(a, b)| [a, b]);
+    if !record.is_table {
+        time_cautions(&kept, interval_s, span, &mut cautions);
+    }
+    cautions.extend(rounding(&kept));
+    Ok(Checked { kept, set_aside: rejected.into_list(greatest_speed), cautions, interval_s, span })
+}
+
+#[derive(Clone, Copy, PartialEq)]
+enum Fault {
+    NoSpeed,
+    Negative,
+    Impossible,
+    NoTime,
+    Repeated,
+    Spike,
+    Stuck,
+}
+
+#[derive(Default)]
+struct Rejected(Vec<(Fault, WindSample)>);
+
+impl Rejected {
+    fn add(&mut self, fault: Fault, sample: &WindSample) {
+        self.0.push((fault, *sample));
+    }
+
+    fn into_list(mut self, greatest_speed: f64) -> Vec<SetAside> {
+        self.0.sort_by_key(|(_, s)| s.line);
+        let about = |fault| match fault {
+            Fault::NoSpeed => ("no-speed", "no speed (blank or coded missing)".to_owned()),
+            Fault::Negative => ("negative-speed", "speed below zero".to_owned()),
+            Fault::Impossible => ("impossible-speed", format!("speed above {greatest_speed} m/s")),
+            Fault::NoTime => ("no-time", "no time, though the record has a clock".to_owned()),
+            Fault::Repeated => ("repeated-time", "the same time as an earlier row".to_owned()),
+            Fault::Spike => {
+                ("spike", "more than twice the 99.9 % speed and three times its neighbours".to_owned())
+            }
+            Fault::Stuck => {
+                ("stuck", format!("the same speed and direction {STUCK_RUN} times or more in a row"))
+            }
+        };
+        let faults = [
+            Fault::NoSpeed,
+            Fault::Negative,
+            Fault::Impossible,
+            Fault::NoTime,
+            Fault::Repeated,
+            Fault::Spike,
+            Fault::Stuck,
+        ];
+        let mut list = Vec::new();
+        for fault in faults {
+            let rows: Vec<&WindSample> = self.0.iter().filter(|(f, _)| *f == fault).map(|(_, s)| s).collect();
+            if rows.is_empty() {
+                continue;
+            }
+            let (code, why) = about(fault);
+            let named: Vec<String> = rows
+                .iter()
+                .take(NAMED)
+                .map(|s| match s.speed {
+                    Some(v) => format!("line {} ({v:.2} m/s)", s.line),
+                    None => format!("line {}", s.line),
+                })
+                .collect();
+            let more =
+                if rows.len() > NAMED { format!(" and {} more", rows.len() - NAMED) } else { String::new() };
+            list.push(SetAside {
+                code,
+                count: rows.len(),
+                text: format!("{why}: {}{more}", named.join(", ")),
+            });
+        }
+        list
+    }
+}
+
+/// Median step of a record with a clock.
+fn interval(kept: &[WindSample]) -> Option<f64> {
+    let mut steps: Vec<i64> =
+        kept.windows(2).filter_map(|w| Some(w[1].time? - w[0].time?)).filter(|s| *s > 0).collect();
+    if steps.is_empty() {
+        return None;
+    }
+    let middle = steps.len() / 2;
+    Some(*steps.select_nth_unstable(middle).1 as f64)
+}
+
+fn set_spikes_aside(kept: &mut Vec<WindSample>, interval_s: Option<f64>, rejected: &mut Rejected) {
+    if kept.len() < FEWEST_FOR_SPIKES {
+        return;
+    }
+    let speed = |s: &WindSample| s.speed.unwrap_or(0.0);
+    let mut speeds: Vec<f64> = kept.iter().map(speed).collect();
+    let at = (speeds.len() - 1) * 999 / 1000;
+    let bar = 2.0 * *speeds.select_nth_unstable_by(at, f64::total_cmp).1;
+    // A neighbour across a gap says nothing.
+    let near = |a: &WindSample, b: &WindSample| match (a.time, b.time, interval_s) {
+        (Some(a), Some(b), Some(step)) => (b - a).abs() as f64 <= 2.0 * step,
+        _ => true,
+    };
+    let spiky: Vec<bool> = (0..kept.len())
+        .map(|i| {
+            let around = [i.checked_sub(1), (i + 1 < kept.len()).then_some(i + 1)];
+            let neighbours: Vec<f64> = around
+                .into_iter()
+                .flatten()
+                .filter(|&j| near(&kept[i], &kept[j]))
+                .map(|j| speed(&kept[j]))
+                .collect();
+            let v = speed(&kept[i]);
+            v > bar && !neighbours.is_empty() && neighbours.iter().all(|n| v > 3.0 * n)
+        })
+        .collect();
+    drop_marked(kept, &spiky, Fault::Spike, rejected);
+}
+
+fn set_stuck_aside(kept: &mut Vec<WindSample>, rejected: &mut Rejected) {
+    let same = |a: &WindSample, b: &WindSample| {
+        a.speed == b.speed && a.from == b.from && a.speed > Some(0.0) && a.from.is_some()
+    };
+    let mut stuck = vec![false; kept.len()];
+    let mut start = 0;
+    for i in 1..=kept.len() {
+        if i < kept.len() && same(&kept[i], &kept[start]) {
+            continue;
+        }
+        if i - start >= STUCK_RUN {
+            stuck[start + 1..i].fill(true);
+        }
+        start = i;
+    }
+    drop_marked(kept, &stuck, Fault::Stuck, rejected);
+}
+
+fn drop_marked(kept: &mut Vec<WindSample>, marked: &[bool], fault: Fault, rejected: &mut Rejected) {
+    let mut marks = marked.iter();
+    kept.retain(|s| {
+        let bad = marks.next().copied().unwrap_or(false);
+        if bad {
+            rejected.add(fault, s);
+        }
+        !bad
+    });
+}
+
+/// Cautions on length, season, gaps and sampling.
+fn time_cautions(
+    kept: &[WindSample],
+    interval_s: Option<f64>,
+    span: Option<[i64; 2]>,
+    cautions: &mut Vec<Caution>,
+) {
+    let (Some([first, last]), Some(step)) = (span, interval_s) else {
+        cautions.push(Caution::new(
+            "no-clock",
+            "The record has no clock: length, gaps and seasons cannot be checked, and rows that belong together may be \
+             drawn apart.",
+        ));
+        return;
+    };
+    let months: Vec<(i32, usize)> = kept.iter().filter_map(|s| s.time).map(year_and_month).collect();
+    let spliced = spliced_years(&months);
+    let days = if spliced { 365.0 } else { (last - first) as f64 / DAY as f64 + step / DAY as f64 };
+    if spliced {
+        let (from, to) = months.iter().fold((i32::MAX, i32::MIN), |(a, b), (y, _)| (a.min(*y), b.max(*y)));
+        cautions.push(Caution::new(
+            "typical-year",
+            format!(
+                "The record is put together from months of {from} to {to}: it shows a usual year, with the extremes \
+                 and the differences between years taken out."
+            ),
+        ));
+    } else if days < 350.0 {
+        cautions.push(Caution::new(
+            "short-record",
+            format!("The record spans {days:.0} days, less than a year: seasons are missing and the drift may turn."),
+        ));
+    } else if days < 5.0 * 365.0 {
+        cautions.push(Caution::new(
+            "few-years",
+            format!(
+                "The record spans {:.1} years: differences between years are not in the interval.",
+                days / 365.25
+            ),
+        ));
+    }
+    let expected = days * DAY as f64 / step;
+    let share = kept.len() as f64 / expected.max(1.0);
+    if share < 0.9 {
+        cautions.push(Caution::new(
+            "gaps",
+            format!("{:.0} % of the expected rows are missing.", 100.0 * (1.0 - share)),
+        ));
+    }
+    if days >= 350.0 {
+        let mut counts = [0usize; 12];
+        for (_, month) in &months {
+            counts[*month] += 1;
+        }
+        let mean = months.len() as f64 / 12.0;
+        let thin: Vec<&str> =
+            (0..12).filter(|m| (counts[*m] as f64) < 0.5 * mean).map(|m| MONTHS[m]).collect();
+        if !thin.is_empty() {
+            cautions.push(Caution::new(
+                "uneven-seasons",
+                format!("{} have less than half their share of rows.", thin.join(", ")),
+            ));
+        }
+        let years = days / 365.25;
+        if years < 5.0 && (years - years.round()).abs() > 0.1 {
+            cautions.push(Caution::new(
+                "part-year",
+                format!("The record spans {years:.1} years: some seasons count once more than others."),
+            ));
+        }
+    }
+    if step > 3600.0 {
+        cautions.push(Caution::new(
+            "coarse-sampling",
+            format!(
+                "A row every {:.1} hours: strong winds of shorter life are lost, and with them most sand.",
+                step / 3600.0
+            ),
+        ));
+    }
+}
+
+const MONTHS: [&str; 12] = [
+    "January",
+    "February",
+    "March",
+    "April",
+    "May",
+    "June",
+    "July",
+    "August",
+    "September",
+    "October",
+    "November",
+    "December",
+];
+
+/// Whether each calendar month comes from one year only, and the years differ without running on.
+fn spliced_years(months: &[(i32, usize)]) -> bool {
+    let mut year_of = [None; 12];
+    for (year, month) in months {
+        // The last hour of a month, written 24:00, falls into the next.
+        match year_of[*month] {
+            None => year_of[*month] = Some((*year, 1usize)),
+            Some((y, ref mut n)) if y == *year => *n += 1,
+            Some((_, n)) if n <= 1 => year_of[*month] = Some((*year, 1)),
+            Some(_) => {}
+        }
+    }
+    let years: Vec<i32> = year_of.iter().flatten().map(|(y, _)| *y).collect();
+    let in_own_year = months.iter().filter(|(y, m)| year_of[*m].is_some_and(|(year, _)| year == *y)).count();
+    let turns = years.windows(2).filter(|w| w[0] != w[1]).count();
+    years.len() == 12 && turns >= 2 && in_own_year * 1000 >= months.len() * 995
+}
+
+/// Year and month (0 = January) of a time.
+pub(super) fn year_and_month(time: i64) -> (i32, usize) {
+    // Days since 0000-03-01 in 400-year cycles of the Gregorian calendar.
+    let days = time.div_euclid(DAY) + 719_468;
+    let cycle = days.div_euclid(146_097);
+    let of_cycle = days.rem_euclid(146_097);
+    let year = (of_cycle - of_cycle / 1460 + of_cycle / 36_524 - of_cycle / 146_096) / 365;
+    let of_year = of_cycle - (365 * year + year / 4 - year / 100);
+    let month = (5 * of_year + 2) / 153;
+    let (month, carry) = if month < 10 { (month + 2, 0) } else { (month - 10, 1) };
+    ((year + 400 * cycle + carry) as i32, month as usize)
+}
+
+/// Directions that all lie on a coarse compass.
+fn rounding(kept: &[WindSample]) -> Option<Caution> {
+    let directions: Vec<f64> =
+        kept.iter().filter(|s| s.speed > Some(0.0)).filter_map(|s| s.from).map(|a| a.deg()).collect();
+    if directions.len() < 50 {
+        return None;
+    }
+    let on = |step: f64| {
+        let hits = directions.iter().filter(|d| (*d - step * (*d / step).round()).abs() < 0.01).count();
+        hits * 1000 >= directions.len() * 995
+    };
+    let step = [90.0, 45.0, 30.0, 22.5, 20.0, 10.0, 5.0].into_iter().find(|s| on(*s))?;
+    Some(Caution::new(
+        "rounded-direction",
+        format!(
+            "Directions are multiples of {step}°: each may be off by {}°, and finer sectors mean nothing.",
+            0.5 * step
+        ),
+    ))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::ground::Azimuth;
+
+    fn hourly(speeds: &[f64]) -> WindRecord {
+        let samples = speeds
+            .iter()
+            .enumerate()
+            .map(|(i, v)| WindSample {
+                line: i as u32 + 2,
+                time: Some(3600 * i as i64),
+                speed: Some(*v),
+                from: Some(Azimuth::from_deg(7.3 * i as f64)),
+                weight: 1.0,
+            })
+            .collect();
+        WindRecord { samples, is_table: false }
+    }
+
+    fn breeze(n: usize) -> Vec<f64> {
+        (0..n).map(|i| 4.0 + 3.0 * (0.7 * i as f64).sin()).collect()
+    }
+
+    #[test]
+    fn an_impossible_speed_and_a_lone_spike_are_named_and_a_storm_is_kept() {
+        let mut speeds = breeze(3000);
+        speeds[500] = 400.0;
+        speeds[700] = 60.0;
+        for (i, v) in [14.0, 25.0, 22.0, 12.0].into_iter().enumerate() {
+            speeds[900 + i] = v;
+        }
+        let checked = check(&hourly(&speeds), 75.0, &Work::quiet()).expect("not stopped");
+        let texts: Vec<(&str, &str)> = checked.set_aside.iter().map(|s| (s.code, s.text.as_str())).collect();
+        assert_eq!(texts.len(), 2, "{texts:?}");
+        assert!(
+            texts[0].0 == "impossible-speed" && texts[0].1.contains("line 502 (400.00 m/s)"),
+            "{texts:?}"
+        );
+        assert!(texts[1].0 == "spike" && texts[1].1.contains("line 702 (60.00 m/s)"), "{texts:?}");
+        assert_eq!(checked.kept.len(), 2998);
+    }
+
+    #[test]
+    fn repeated_times_disorder_blanks_and_stuck_runs_are_found() {
+        let mut record = hourly(&breeze(400));
+        record.samples[10].speed = None;
+        record.samples[20].time = record.samples[19].time;
+        record.samples.swap(30, 31);
+        for i in 100..140 {
+            record.samples[i].speed = Some(3.3);
+            record.samples[i].from = Some(Azimuth::from_deg(10.5));
+        }
+        let checked = check(&record, 75.0, &Work::quiet()).expect("not stopped");
+        let counts: Vec<(&str, usize)> = checked.set_aside.iter().map(|s| (s.code, s.count)).collect();
+        assert_eq!(counts, vec![("no-speed", 1), ("repeated-time", 1), ("stuck", 39)]);
+        let codes: Vec<&str> = checked.cautions.iter().map(|c| c.code).collect();
+        assert!(codes.contains(&"time-disorder") && codes.contains(&"short-record"), "{codes:?}");
+        assert_eq!(checked.interval_s, Some(3600.0));
+    }
+
+    #[test]
+    fn coarse_compasses_are_seen() {
+        let mut record = hourly(&breeze(400));
+        for (i, sample) in record.samples.iter_mut().enumerate() {
+            sample.from = Some(Azimuth::from_deg(22.5 * (i * 7 % 16) as f64));
+        }
+        let checked = check(&record, 75.0, &Work::quiet()).expect("not stopped");
+        let caution = checked.cautions.iter().find(|c| c.code == "rounded-direction").expect("a caution");
+        assert!(caution.text.contains("22.5"), "{}", caution.text);
+    }
+
+    #[test]
+    fn months_follow_the_calendar() {
+        assert_eq!(year_and_month(0), (1970, 0));
+        assert_eq!(year_and_month(951_782_400), (2000, 1)); // 29 February 2000
+        assert_eq!(year_and_month(951_868_800), (2000, 2));
+        assert_eq!(year_and_month(-1), (1969, 11));
+    }
+
+    #[test]
+    fn stop_is_heard() {
+        let work = Work::quiet();
+        work.stop();
+        assert_eq!(check(&hourly(&breeze(10)), 75.0, &work), Err(Stopped));
+    }
+}
