@@ -1,6 +1,25 @@
-//! The alignment family.
+//! Alignment theories, and the weighing of a measured trend against them.
+
+pub mod equivalence;
+pub mod gross_normal;
+mod judge;
+pub mod likelihood;
+pub mod obliquity;
+pub mod resultant;
+mod theory;
+
+pub use judge::{Judgement, Refusal, TheoryJudgement, TrendEvidence, VerdictSettings, judge};
+pub use theory::Theory;
 
 use crate::ground::Method;
 
 /// The methods of this family.
-pub const METHODS: &[&Method] = &[];
+pub const METHODS: &[&Method] = &[
+    &resultant::TRANSVERSE,
+    &resultant::ALONG,
+    &gross_normal::METHOD,
+    &obliquity::METHOD,
+    &likelihood::METHOD,
+    &equivalence::METHOD,
+    &equivalence::FALSE_DISCOVERY,
+];

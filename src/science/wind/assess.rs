@@ -412,7 +412,7 @@ fn drift_cautions(
                 "few-storms",
                 format!(
                     "Half of the sand moves in {days} of {} spells: the drift hangs on a few storms.",
-                    cells.len()
+                    cells.count()
                 ),
             ));
         }
