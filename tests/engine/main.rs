@@ -3,4 +3,8 @@
 mod docs;
 mod gratings;
 mod guards;
+mod hostile;
+mod jpeg_writer;
+mod layouts;
 mod plates;
+mod tiff_writer;

@@ -25,6 +25,7 @@ mod tag;
 mod tiff;
 mod unpack;
 mod window;
+mod write;
 
 use std::path::Path;
 use std::sync::Arc;
@@ -36,6 +37,7 @@ pub use bands::Bands;
 pub use info::{BandInfo, LevelInfo, Light, RasterInfo, SampleType, WorldFile};
 pub use limits::Limits;
 pub use window::Window;
+pub use write::{write_png_gray, write_tiff};
 
 /// What can go wrong with a raster file.
 pub type RasterError = FileError;
