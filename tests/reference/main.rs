@@ -2,8 +2,8 @@
 
 mod alignment;
 mod axial;
-mod georef;
 mod axial_field;
+mod georef;
 mod place;
 mod verdict;
 mod wind;
