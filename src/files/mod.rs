@@ -2,7 +2,9 @@
 
 pub mod error;
 pub mod georef;
+pub mod layers;
 pub mod places;
 pub mod raster;
+pub mod save;
 pub mod text;
 pub mod wind_table;

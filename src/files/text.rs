@@ -1,8 +1,10 @@
 //! Small text files: sheets and the list of recent ones.
 
 use std::fs;
-use std::io::{self, Read as _, Write as _};
+use std::io::{self, Read as _};
 use std::path::{Path, PathBuf};
+
+use super::save;
 
 /// A text file that cannot be read or written.
 #[derive(Debug, thiserror::Error)]
@@ -37,17 +39,8 @@ pub fn read(path: &Path) -> Result<String, TextError> {
 /// # Errors
 /// [`TextError::Io`].
 pub fn write(path: &Path, text: &str, backup: Option<&Path>) -> Result<(), TextError> {
-    let fail = |source| TextError::Io { path: path.to_owned(), source };
-    let folder = path.parent().filter(|p| !p.as_os_str().is_empty()).unwrap_or(Path::new("."));
-    fs::create_dir_all(folder).map_err(fail)?;
-    let mut fresh = tempfile::NamedTempFile::new_in(folder).map_err(fail)?;
-    fresh.write_all(text.as_bytes()).map_err(fail)?;
-    fresh.as_file().sync_all().map_err(fail)?;
-    if let Some(backup) = backup.filter(|_| path.exists()) {
-        fs::copy(path, backup).map_err(fail)?;
-    }
-    fresh.persist(path).map_err(|e| fail(e.error))?;
-    Ok(())
+    save::bytes(path, text.as_bytes(), backup)
+        .map_err(|source| TextError::Io { path: path.to_owned(), source })
 }
 
 #[cfg(test)]

@@ -276,11 +276,13 @@ impl Place {
         if !repeats {
             return self.pixel_on_turn(at, true);
         }
-        (-2..=2)
-            .filter_map(|turn| {
-                self.pixel_on_turn(LonLat { lon: at.lon + 360.0 * f64::from(turn), ..at }, false)
-            })
-            .min_by(|p, q| p.distance(near).total_cmp(&q.distance(near)))
+        let turned = |turn: f64| self.pixel_on_turn(LonLat { lon: at.lon + 360.0 * turn, ..at }, false);
+        // The stated turn first: it wins where another is equally near.
+        let candidates = [0.0, -1.0, 1.0, -2.0, 2.0].into_iter().filter_map(turned);
+        candidates.fold(None, |best: Option<Point>, p| match best {
+            Some(best) if best.distance(near) <= p.distance(near) * (1.0 + 1e-9) => Some(best),
+            _ => Some(p),
+        })
     }
 
     fn pixel_on_turn(&self, at: LonLat, fold: bool) -> Option<Point> {

@@ -110,6 +110,11 @@ impl Projection {
         self.central_deg
     }
 
+    /// The meridian the definition counts from, degrees east of the body's reference meridian.
+    pub fn prime_meridian(&self) -> f64 {
+        self.plane.from_greenwich().to_degrees()
+    }
+
     /// Whether a longitude a whole turn further lies elsewhere on the map.
     pub fn repeats(&self) -> bool {
         self.reach_deg.is_some_and(|reach| reach > 360.0)
