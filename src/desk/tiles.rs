@@ -5,6 +5,7 @@
 
 use std::collections::{HashMap, HashSet, VecDeque};
 use std::panic::{AssertUnwindSafe, catch_unwind};
+use std::sync::atomic::{AtomicU64, Ordering};
 use std::sync::{Arc, Condvar, Mutex, MutexGuard, PoisonError};
 use std::thread;
 
@@ -17,6 +18,8 @@ pub const TILE: usize = 256;
 const KEPT: usize = 400;
 /// Background threads of one shelf.
 const READERS: usize = 2;
+
+static NEXT_SERIAL: AtomicU64 = AtomicU64::new(1);
 
 /// A tile: texels of 2^level × 2^level pixels, `TILE` a side, counted from the upper left corner.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
@@ -40,6 +43,7 @@ pub trait TileReader: Send + Sync {
 
 /// Tiles at hand, tiles under way, and the threads that read them. Dropping it stops them.
 pub struct TileShelf {
+    serial: u64,
     size: [usize; 2],
     shared: Arc<Shared>,
 }
@@ -115,7 +119,13 @@ impl TileShelf {
                 }
             });
         }
-        Self { size, shared }
+        Self { serial: NEXT_SERIAL.fetch_add(1, Ordering::Relaxed), size, shared }
+    }
+
+    /// Tells this shelf from every other of this run, so that what was made of its tiles is not
+    /// taken for another's.
+    pub fn serial(&self) -> u64 {
+        self.serial
     }
 
     /// Full-resolution width and height, pixels.
@@ -131,6 +141,22 @@ impl TileShelf {
         let (tile, used) = state.tiles.get_mut(&key)?;
         *used = now;
         Some(Arc::clone(tile))
+    }
+
+    /// The value of the pixel at full-resolution (col, row), from the finest tile at hand, and the
+    /// pixels a texel of that tile. `None` where nothing is at hand or the pixel is missing.
+    pub fn value_at(&self, col: usize, row: usize) -> Option<(f32, usize)> {
+        if col >= self.size[0] || row >= self.size[1] {
+            return None;
+        }
+        let state = self.shared.lock();
+        let (key, tile) = (0..=TileKey::level_within(self.size, TILE)).find_map(|level| {
+            let side = TILE << level;
+            let key = TileKey { level, col: (col / side) as u32, row: (row / side) as u32 };
+            Some((key, &state.tiles.get(&key)?.0))
+        })?;
+        let side = TILE << key.level;
+        Some((tile.get((col % side) >> key.level, (row % side) >> key.level)?, key.factor()))
     }
 
     /// Replaces what is waiting to be read by `keys`, the most urgent first. Tiles at hand, under

@@ -5,6 +5,8 @@ use egui::{CentralPanel, Context, Frame, Margin, Panel, Ui, ViewportCommand};
 use super::ask::AskPath;
 use super::controls::{Commands, look};
 use super::finder::Finder;
+use super::software::Face;
+use super::table::{self, TableState};
 use super::{bench, dialogs, foot, head, keys, ledger, notices, start_page, theme};
 use crate::desk::{Command, Dialog, Model, SheetCommand, absorb, apply};
 
@@ -14,13 +16,14 @@ pub struct App {
     model: Model,
     finder: Finder,
     ask: AskPath,
+    table: TableState,
 }
 
 impl App {
     /// A window on `model`. `native` says whether system dialogs are tried.
     pub fn new(ctx: &Context, model: Model, native: bool) -> Self {
         theme::install_fonts(ctx);
-        Self { model, finder: Finder::default(), ask: AskPath::new(native) }
+        Self { model, finder: Finder::default(), ask: AskPath::new(native), table: TableState::default() }
     }
 
     pub fn model(&self) -> &Model {
@@ -46,8 +49,9 @@ impl App {
         let mut out = Commands::new();
         self.closing(&ctx, &mut out);
         dropped_files(&ctx, &mut out);
-        keys::commands(&ctx, &self.model, &mut out);
         self.panels(ui, &mut out);
+        // Last, so that what has the keyboard takes its own keys first.
+        keys::commands(&ctx, &self.model, &mut out);
         self.overlays(&ctx, &mut out);
         for command in out {
             apply(&mut self.model, command);
@@ -78,6 +82,8 @@ impl App {
         CentralPanel::default().frame(frame(0, 0)).show(ui, |ui| {
             if model.sheet.rasters.is_empty() {
                 start_page::show(ui, model, out);
+            } else {
+                out.extend(table::show(ui, model, &mut self.table));
             }
             notices::show(ui.ctx(), model, out, ui.max_rect().right_bottom());
         });
@@ -103,6 +109,16 @@ impl App {
             }
             out.push(Command::Sheet(SheetCommand::Quit));
         }
+    }
+}
+
+impl Face for App {
+    fn take_in(&mut self, ctx: &Context) {
+        Self::take_in(self, ctx);
+    }
+
+    fn show(&mut self, ui: &mut Ui) {
+        Self::show(self, ui);
     }
 }
 

@@ -14,7 +14,9 @@ mod ledger;
 mod notices;
 mod open;
 pub mod painter;
+mod software;
 mod start_page;
+pub mod table;
 mod theme;
 
 pub use app::App;

@@ -4,6 +4,7 @@ use std::path::PathBuf;
 use std::sync::Arc;
 
 use super::App;
+use super::software::{self, SoftwareError};
 use crate::desk::{Command, Model, SheetCommand};
 
 /// What the window begins with.
@@ -17,28 +18,54 @@ pub enum Start {
     Empty,
 }
 
+/// Set to `cpu` to draw without OpenGL.
+const RENDERER: &str = "VENTIFACT_RENDERER";
+
 /// The window cannot be opened.
 #[derive(Debug, thiserror::Error)]
 pub enum WindowError {
-    #[error("no window could be opened: {0}")]
-    Screen(String),
+    #[error(transparent)]
+    Software(#[from] SoftwareError),
+    #[error("no window could be opened: {opengl}; nor without OpenGL: {without}")]
+    Screen { opengl: String, without: String },
 }
 
-/// Opens the window and returns when it is closed.
+/// Opens the window and returns when it is closed. Where OpenGL fails, the program is started once
+/// more to draw on the processor: a process can have only one event loop in its life.
 ///
 /// # Errors
-/// [`WindowError::Screen`] when there is no display or no OpenGL.
+/// [`WindowError`] when there is no display.
 pub fn open(start: Start) -> Result<(), WindowError> {
     let viewport = egui::ViewportBuilder::default()
         .with_title("Ventifact")
         .with_app_id("ventifact")
         .with_inner_size([1440.0, 900.0])
         .with_min_inner_size([960.0, 600.0]);
+    if std::env::var_os(RENDERER).is_some_and(|renderer| renderer == "cpu") {
+        return Ok(software::run(viewport, |ctx| begin(ctx, start))?);
+    }
+    let again = start.clone();
     let options = eframe::NativeOptions { viewport, ..Default::default() };
     let begin = move |cc: &eframe::CreationContext<'_>| -> Result<Box<dyn eframe::App>, _> {
         Ok(Box::new(begin(&cc.egui_ctx, start)))
     };
-    eframe::run_native("ventifact", options, Box::new(begin)).map_err(|e| WindowError::Screen(e.to_string()))
+    eframe::run_native("ventifact", options, Box::new(begin)).or_else(|opengl| {
+        let opengl = opengl.to_string();
+        eprintln!("The window is drawn without OpenGL ({opengl}).");
+        open_on_processor(again).map_err(|without| WindowError::Screen { opengl, without })
+    })
+}
+
+/// Starts the program again with the CPU renderer and waits for it to end.
+fn open_on_processor(start: Start) -> Result<(), String> {
+    let program = std::env::current_exe().map_err(|e| e.to_string())?;
+    let mut command = std::process::Command::new(program);
+    command.env(RENDERER, "cpu");
+    if let Start::File(path) = start {
+        command.arg(path);
+    }
+    let status = command.status().map_err(|e| e.to_string())?;
+    if status.success() { Ok(()) } else { Err(format!("it ended with {status}")) }
 }
 
 /// The application as it starts: its jobs wake the window, its recent sheets are kept.

@@ -27,5 +27,9 @@ impl TestRenderer for CpuRenderer {
 
 /// A harness of a window of `size` points that can be pictured.
 pub fn window<State>(size: [f32; 2], theme: egui::Theme) -> HarnessBuilder<State> {
-    Harness::builder().with_size(size).with_theme(theme).renderer(CpuRenderer::default())
+    Harness::builder()
+        .with_size(size)
+        .with_theme(theme)
+        .with_step_dt(1.0 / 60.0)
+        .renderer(CpuRenderer::default())
 }

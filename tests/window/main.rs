@@ -2,3 +2,5 @@
 
 mod harness;
 mod pictures;
+mod scene;
+mod table;
