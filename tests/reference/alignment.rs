@@ -2,6 +2,8 @@
 
 use ventifact::assert_close;
 use ventifact::ground::{Azimuth, SandFlow};
+use ventifact::science::alignment::bed_instability::bed_instability;
+use ventifact::science::alignment::fingering::fingering;
 use ventifact::science::alignment::gross_normal::{gross_normal, two_wind_obliquity, two_wind_ratio};
 use ventifact::science::alignment::resultant::resultant;
 
@@ -132,4 +134,90 @@ fn equal_winds_switch_at_right_angles() {
 fn alignment_strength() {
     let found = gross_normal(&two(1.0, 90.0)).expect("a trend");
     assert_close!(found.strength(), 0.171_572_875_3, 1e-9, "strength");
+}
+
+/// Maximum of σ(α) at Γ = 1.6 on a 0.01° grid; for N = 1 the bisector, by symmetry.
+#[test]
+fn bed_instability_of_two_winds() {
+    for (n, divergence, want) in [
+        (2.0, 60.0, 106.33),
+        (2.0, 90.0, 78.99),
+        (2.0, 120.0, 73.67),
+        (3.0, 135.0, 80.35),
+        (5.0, 150.0, 85.43),
+        (1.0, 120.0, 60.0),
+    ] {
+        let got = bed_instability(&two(n, divergence), 1.6).expect("a trend");
+        assert_close!(got.axis.deg(), want, 0.02, "N {n}, divergence {divergence}");
+    }
+    // Γ → ∞: across ½ arg Σ q e^{2iθ}, 75.0° for N = 2, 120°.
+    let got = bed_instability(&two(2.0, 120.0), 1e7).expect("a trend");
+    assert_close!(got.axis.deg(), 75.0, 1e-4, "Γ → ∞");
+}
+
+/// Root of Q⊥ at Γ = 1.6 with Q∥ > 0, by an independent solver; for N = 1 the bisector.
+#[test]
+fn fingering_of_two_winds() {
+    for (n, divergence, want) in [
+        (2.0, 60.0, 22.213),
+        (2.0, 90.0, 32.352),
+        (2.0, 120.0, 39.242),
+        (3.0, 135.0, 27.504),
+        (5.0, 150.0, 12.001),
+        (1.0, 60.0, 30.0),
+    ] {
+        let got = fingering(&two(n, divergence), 1.6);
+        assert_close!(got[0].toward.deg(), want, 0.002, "N {n}, divergence {divergence}");
+    }
+}
+
+/// Γ = 0 is the resultant; Γ → ∞ gives tan α = sin γ/(√N + cos γ).
+#[test]
+fn limits_of_fingering() {
+    assert_close!(fingering(&two(2.0, 120.0), 0.0)[0].toward.deg(), 30.0, 1e-6, "Γ = 0");
+    assert_close!(fingering(&two(2.0, 120.0), 1e9)[0].toward.deg(), 43.449_475_53, 1e-6, "Γ → ∞");
+}
+
+/// The three winds above under both rules, Γ = 1.6; independent grid and solver.
+#[test]
+fn three_winds_under_both_modes() {
+    let winds = flows(&[(3.0, 10.0), (2.0, 140.0), (1.0, 250.0)]);
+    assert_close!(bed_instability(&winds, 1.6).expect("a trend").axis.deg(), 88.6, 0.02, "bed instability");
+    assert_close!(fingering(&winds, 1.6)[0].toward.deg(), 57.646, 0.002, "fingering");
+}
+
+/// Bed instability of equal winds switches at 90° for every Γ, by symmetry.
+#[test]
+fn bed_instability_of_equal_winds_switches_at_right_angles() {
+    for flux_up in [0.0, 1.6, 3.0] {
+        for (divergence, want) in [(89.9, 90.0), (90.1, 0.0)] {
+            let winds = two(1.0, divergence);
+            let trend = bed_instability(&winds, flux_up).expect("a trend").axis;
+            let (toward, _) = resultant(&winds).expect("a resultant");
+            assert_close!(
+                trend.separation(toward.axis()),
+                want,
+                1e-6,
+                "Γ {flux_up}, divergence {divergence}"
+            );
+        }
+    }
+}
+
+/// Greatest departure of fingering from the resultant over N 1.05–10, divergence 5–178°: 12.585° at
+/// Γ = 1.6 and 13.548° at 2, by an independent grid.
+#[test]
+fn fingering_is_not_the_resultant() {
+    for (flux_up, want) in [(1.6, 12.585), (2.0, 13.548)] {
+        let mut greatest = 0.0f64;
+        // Near its greatest the departure is sought closely: N 1.05 to 1.5, divergence 160 to 178°.
+        for i in 0..=18 {
+            for j in 0..=36 {
+                let winds = two(1.05 + 0.025 * f64::from(i), 160.0 + 0.5 * f64::from(j));
+                let (toward, _) = resultant(&winds).expect("a resultant");
+                greatest = greatest.max(fingering(&winds, flux_up)[0].toward.turn_from(toward).abs());
+            }
+        }
+        assert_close!(greatest, want, 0.1, "Γ {flux_up}");
+    }
 }

@@ -41,6 +41,18 @@ pub fn guess(path: &Path) -> Result<WindGuess, WindFileError> {
     guess_text(&load(path)?)
 }
 
+/// The first rows of the file at `path`, header lines included, cut by another delimiter.
+///
+/// # Errors
+/// [`WindFileError`] when it cannot be opened.
+pub fn preview(path: &Path, delimiter: char) -> Result<Vec<Vec<String>>, WindFileError> {
+    Ok(first_rows(&load(path)?, delimiter))
+}
+
+fn first_rows(text: &str, delimiter: char) -> Vec<Vec<String>> {
+    layout::rows(text, delimiter).into_iter().take(PREVIEW_ROWS).map(|(_, cells)| cells).collect()
+}
+
 /// [`guess`] for text at hand.
 ///
 /// # Errors
@@ -60,11 +72,7 @@ pub fn guess_text(text: &str) -> Result<WindGuess, WindFileError> {
     };
     Ok(WindGuess {
         import,
-        preview: layout::rows(text, shape.delimiter)
-            .into_iter()
-            .take(PREVIEW_ROWS)
-            .map(|(_, cells)| cells)
-            .collect(),
+        preview: first_rows(text, shape.delimiter),
         column_names: shape.names,
         reasons: notes.reasons,
         cautions: notes.cautions,

@@ -11,7 +11,7 @@ mod read;
 mod text;
 mod units;
 
-pub use guess::{WindGuess, guess, guess_text};
+pub use guess::{WindGuess, guess, guess_text, preview};
 pub use import::{DirectionSense, SpeedClass, SpeedUnit, WindImport, WindLayout, ZeroDirection};
 pub use read::{read, read_text};
 

@@ -1,6 +1,8 @@
 //! Alignment theories, and the weighing of a measured trend against them.
 
+pub mod bed_instability;
 pub mod equivalence;
+pub mod fingering;
 pub mod gross_normal;
 mod judge;
 pub mod likelihood;
@@ -18,6 +20,8 @@ pub const METHODS: &[&Method] = &[
     &resultant::TRANSVERSE,
     &resultant::ALONG,
     &gross_normal::METHOD,
+    &bed_instability::METHOD,
+    &fingering::METHOD,
     &obliquity::METHOD,
     &likelihood::METHOD,
     &equivalence::METHOD,

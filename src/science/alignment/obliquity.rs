@@ -68,9 +68,10 @@ pub struct Obliquity {
 }
 
 impl Obliquity {
-    /// `trend` known to `blur` degrees, against drift axes of which each counts the same.
+    /// `trend` known to `blur` degrees, against drift axes of which each counts the same. A blur
+    /// of 180° is already as good as any axis.
     pub fn of(trend: Axis, blur: f64, drifts: &[Axis]) -> Self {
-        Self { turns: drifts.iter().map(|d| trend.turn_from(*d)).collect(), blur: blur.max(1e-9) }
+        Self { turns: drifts.iter().map(|d| trend.turn_from(*d)).collect(), blur: blur.clamp(1e-9, 180.0) }
     }
 
     /// Chance that the obliquity is below `phi` degrees in [0, 90].
@@ -78,9 +79,8 @@ impl Obliquity {
         if phi >= 90.0 {
             return 1.0;
         }
-        // Obliquity folds at 0 and 90, so "below φ" is "within φ of a multiple of 180". Beyond
-        // three turns a blur is as good as uniform.
-        let reach = ((6.0 * self.blur.min(90.0) + 90.0) / 180.0).ceil() as i32;
+        // Obliquity folds at 0 and 90, so "below φ" is "within φ of a multiple of 180".
+        let reach = ((6.0 * self.blur + 90.0) / 180.0).ceil() as i32;
         let mass: f64 = self
             .turns
             .iter()

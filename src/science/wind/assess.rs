@@ -1,52 +1,13 @@
 //! The one face of the family: a record in, checked winds and sand flow with intervals out.
 
-use crate::ground::{Air, Caution, SandFlow, Seed, Stopped, WindRecord, WindSample, Work};
+use crate::ground::{Caution, SandFlow, Seed, WindRecord, WindSample, Work};
 
 use super::bootstrap::{CELLS_PER_BLOCK, Cells, FEWEST_BLOCKS, intervals, starts};
 use super::drift_potential;
-use super::law::Law;
-use super::log_law::{friction_ratio, speed_at};
+use super::mill::{Mill, Variant};
 use super::quality::{self, Checked, SetAside};
 use super::regime::{Drift, Season, flows, gathered, rose, seasons};
-use super::threshold::{Bed, Threshold};
-
-/// Where the mast stands.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct Site {
-    /// Height of the anemometer above ground, m.
-    pub height_m: f64,
-    /// Aerodynamic roughness of the ground, m.
-    pub roughness_m: f64,
-    /// Near-surface air; needed by the physical laws.
-    pub air: Option<Air>,
-    /// m s⁻²; needed by the physical laws.
-    pub gravity: Option<f64>,
-    /// Whether the Earth practice of drift potential applies.
-    pub is_earth: bool,
-}
-
-/// How winds are turned into sand.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct WindSettings {
-    /// Grain diameter, m.
-    pub grain_m: f64,
-    /// kg m⁻³.
-    pub grain_density: f64,
-    pub threshold: Threshold,
-    pub transport: Transport,
-    /// Speeds above this are set aside as impossible, m s⁻¹.
-    pub greatest_speed: f64,
-    /// Length of a bootstrap block, days.
-    pub block_days: f64,
-    pub resamples: u32,
-}
-
-/// Drift potential or a physical law.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum Transport {
-    DriftPotential,
-    Physical(Law),
-}
+use super::settings::{Site, Transport, WindError, WindSettings};
 
 /// What a record says about sand.
 #[derive(Clone, Debug, PartialEq)]
@@ -87,33 +48,6 @@ pub struct Sensitivity {
     pub drift: Drift,
     pub regime: Vec<SandFlow>,
 }
-
-/// Why there is no assessment.
-#[derive(Clone, Debug, PartialEq, thiserror::Error)]
-pub enum WindError {
-    #[error(
-        "the body has no air: no wind moves sand there; give its air's density and viscosity, or another body"
-    )]
-    NoAir,
-    #[error("the body's gravity is not known; give it in m/s², or choose drift potential")]
-    NoGravity,
-    #[error(
-        "the anemometer stands at {height_m} m over a roughness of {roughness_m} m; the height must be the greater"
-    )]
-    Height { height_m: f64, roughness_m: f64 },
-    #[error("{what} is {value}; it must be above zero")]
-    NotPositive { what: &'static str, value: f64 },
-    #[error("no row of the record can be used: {reasons}")]
-    NothingLeft { reasons: String },
-    #[error(transparent)]
-    Stopped(#[from] Stopped),
-}
-
-const YEAR_S: f64 = 365.25 * 86_400.0;
-const FLUX_UNIT: &str = "kg/m/yr";
-/// Impact threshold over fluid threshold (Bagnold's A 0.08 over 0.10): between them lies what keeps
-/// sand moving, so both enter the spread of predictions.
-const IMPACT_SHARE: f64 = 0.8;
 
 /// Checks a record and finds the sand it moves.
 ///
@@ -158,7 +92,7 @@ pub fn assess(
     };
     let mut draws = Vec::new();
     let variants = mill.variants();
-    let sensitivity = variants.iter().map(|v| v.sensitivity(&kept)).collect();
+    let sensitivity = variants.iter().map(|v| sensitivity(v, &kept)).collect();
     if can_draw {
         intervals(&mut flux, &cells, settings.resamples, seed, work)?;
         let cut: Vec<Cells> =
@@ -199,139 +133,15 @@ pub fn assess(
     })
 }
 
-/// Everything that turns a speed into sand.
-#[derive(Clone, Copy, Debug)]
-struct Mill {
-    transport: Transport,
-    /// `None` when the body has no air or gravity on record; then only drift potential works.
-    bed: Option<Bed>,
-    /// Threshold friction velocity, m s⁻¹.
-    threshold: f64,
-    model: Threshold,
-    /// Friction velocity for each m s⁻¹ at the anemometer.
-    friction: f64,
-    /// Knots at 10 m for each m s⁻¹ at the anemometer.
-    knots: f64,
-}
-
-struct Variant {
-    mill: Mill,
-    threshold: String,
-}
-
-impl Mill {
-    fn new(site: &Site, settings: &WindSettings) -> Result<Self, WindError> {
-        let Site { height_m, roughness_m, .. } = *site;
-        for (what, value) in [
-            ("roughness", roughness_m),
-            ("grain size", settings.grain_m),
-            ("grain density", settings.grain_density),
-            ("block length", settings.block_days),
-            ("greatest speed", settings.greatest_speed),
-        ] {
-            if !(value > 0.0 && value.is_finite()) {
-                return Err(WindError::NotPositive { what, value });
-            }
-        }
-        if !(height_m > roughness_m && height_m.is_finite()) {
-            return Err(WindError::Height { height_m, roughness_m });
-        }
-        if let Some(air) = site.air {
-            for (what, value) in [("air density", air.density), ("air viscosity", air.viscosity)] {
-                if !(value > 0.0 && value.is_finite()) {
-                    return Err(WindError::NotPositive { what, value });
-                }
-            }
-        }
-        if let Some(value) = site.gravity.filter(|g| !(*g > 0.0 && g.is_finite())) {
-            return Err(WindError::NotPositive { what: "gravity", value });
-        }
-        let bed = site.air.zip(site.gravity).map(|(air, gravity)| Bed {
-            grain: settings.grain_m,
-            grain_density: settings.grain_density,
-            air,
-            gravity,
-        });
-        let friction = friction_ratio(height_m, roughness_m);
-        let to_ten = speed_at(friction, drift_potential::HEIGHT, roughness_m);
-        let knots = to_ten / drift_potential::KNOT;
-        let threshold = match (settings.transport, bed) {
-            (Transport::DriftPotential, _) => drift_potential::THRESHOLD_KNOTS / knots * friction,
-            (Transport::Physical(_), Some(bed)) => settings.threshold.friction_velocity(&bed),
-            (Transport::Physical(_), None) if site.air.is_none() => return Err(WindError::NoAir),
-            (Transport::Physical(_), None) => return Err(WindError::NoGravity),
-        };
-        Ok(Self { transport: settings.transport, bed, threshold, model: settings.threshold, friction, knots })
-    }
-
-    fn drift_potential(&self, speed: f64) -> f64 {
-        drift_potential::weight(speed * self.knots)
-    }
-
-    /// Vector units, or kg m⁻¹ yr⁻¹, for a wind of `speed` m s⁻¹ at the anemometer all the time.
-    fn flux(&self, speed: f64) -> f64 {
-        match (self.transport, &self.bed) {
-            (Transport::Physical(law), Some(bed)) => {
-                law.flux(speed * self.friction, self.threshold, bed) * YEAR_S
-            }
-            _ => self.drift_potential(speed),
-        }
-    }
-
-    fn unit(&self) -> &'static str {
-        match self.transport {
-            Transport::DriftPotential => drift_potential::UNIT,
-            Transport::Physical(_) => FLUX_UNIT,
-        }
-    }
-
-    fn law_label(&self) -> &'static str {
-        match self.transport {
-            Transport::DriftPotential => "drift potential",
-            Transport::Physical(law) => law.label(),
-        }
-    }
-
-    fn label(&self) -> String {
-        match self.transport {
-            Transport::DriftPotential => "drift potential over 12 knots".to_owned(),
-            Transport::Physical(law) => {
-                format!("{} over the threshold of {}", law.label(), self.model.label())
-            }
-        }
-    }
-
-    /// All laws × thresholds; the chosen law alone when nothing physical is known.
-    fn variants(&self) -> Vec<Variant> {
-        let Some(bed) = self.bed else {
-            return vec![Variant { mill: *self, threshold: "12 knots".to_owned() }];
-        };
-        let mut variants = Vec::new();
-        for law in Law::ALL {
-            for model in Threshold::ALL {
-                for (share, kind) in [(1.0, "fluid"), (IMPACT_SHARE, "impact")] {
-                    let threshold = share * model.friction_velocity(&bed);
-                    variants.push(Variant {
-                        mill: Self { transport: Transport::Physical(law), threshold, model, ..*self },
-                        threshold: format!("{}, {kind}", model.label()),
-                    });
-                }
-            }
-        }
-        variants
-    }
-}
-
-impl Variant {
-    fn sensitivity(&self, kept: &[WindSample]) -> Sensitivity {
-        let regime = gathered(&flows(kept, |v| self.mill.flux(v)).0);
-        Sensitivity {
-            law: self.mill.law_label(),
-            threshold: self.threshold.clone(),
-            threshold_ustar: self.mill.threshold,
-            drift: Drift::of(&regime, self.mill.unit()),
-            regime,
-        }
+/// The drift of the checked winds under a variant.
+fn sensitivity(variant: &Variant, kept: &[WindSample]) -> Sensitivity {
+    let regime = gathered(&flows(kept, |v| variant.mill.flux(v)).0);
+    Sensitivity {
+        law: variant.mill.law_label(),
+        threshold: variant.threshold.clone(),
+        threshold_ustar: variant.mill.threshold,
+        drift: Drift::of(&regime, variant.mill.unit()),
+        regime,
     }
 }
 

@@ -3,6 +3,7 @@
 use rand::Rng as _;
 
 use crate::ground::{Azimuth, Method, Read, SandFlow, Seed, Source, Stopped, Symbol, Work};
+use crate::numeric::quantile::of_sorted;
 
 use super::regime::{Drift, SECTOR_DEG, SECTORS, sector_of};
 
@@ -151,18 +152,13 @@ pub fn intervals(
     }
     turns.sort_by(f64::total_cmp);
     ratios.sort_by(f64::total_cmp);
-    drift.toward_ci95_half_deg = quantile(&turns, 0.95);
-    drift.ratio_ci95 = quantile(&ratios, 0.025).zip(quantile(&ratios, 0.975)).map(|(a, b)| [a, b]);
+    if !turns.is_empty() {
+        drift.toward_ci95_half_deg = Some(of_sorted(&turns, 0.95));
+    }
+    if !ratios.is_empty() {
+        drift.ratio_ci95 = Some([of_sorted(&ratios, 0.025), of_sorted(&ratios, 0.975)]);
+    }
     Ok(())
-}
-
-/// Quantile of sorted values by linear interpolation.
-fn quantile(sorted: &[f64], share: f64) -> Option<f64> {
-    let last = sorted.len().checked_sub(1)?;
-    let at = share * last as f64;
-    let low = at.floor() as usize;
-    let high = (low + 1).min(last);
-    Some(sorted[low] + (at - low as f64) * (sorted[high] - sorted[low]))
 }
 
 #[cfg(test)]

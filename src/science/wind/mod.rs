@@ -3,18 +3,22 @@
 pub mod air;
 mod assess;
 mod bootstrap;
+mod coverage;
 pub mod drift_potential;
 pub mod law;
 pub mod log_law;
+mod mill;
 pub mod quality;
 pub mod regime;
 pub mod saturation;
+mod settings;
 pub mod threshold;
 
-pub use assess::{Sensitivity, Site, Transport, WindAssessment, WindError, WindSettings, assess};
+pub use assess::{Sensitivity, WindAssessment, assess};
 pub use law::Law;
 pub use quality::SetAside;
 pub use regime::{Drift, Season};
+pub use settings::{Site, Transport, WindError, WindSettings};
 pub use threshold::{Bed, Threshold};
 
 use crate::ground::Method;

@@ -4,7 +4,7 @@ use std::collections::BTreeMap;
 
 use crate::ground::{Azimuth, Method, Read, SandFlow, Source, Symbol, WindSample};
 
-use super::quality::year_and_month;
+use super::coverage::year_and_month;
 
 /// Resultant drift.
 pub const METHOD: Method = Method {

@@ -1,0 +1,65 @@
+//! What the user says about a mast and its sand, and how that can be wrong.
+
+use crate::ground::{Air, Stopped};
+
+use super::law::Law;
+use super::threshold::Threshold;
+
+/// Where the mast stands.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Site {
+    /// Height of the anemometer above ground, m.
+    pub height_m: f64,
+    /// Aerodynamic roughness of the ground, m.
+    pub roughness_m: f64,
+    /// Near-surface air; needed by the physical laws.
+    pub air: Option<Air>,
+    /// m s⁻²; needed by the physical laws.
+    pub gravity: Option<f64>,
+    /// Whether the Earth practice of drift potential applies.
+    pub is_earth: bool,
+}
+
+/// How winds are turned into sand.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct WindSettings {
+    /// Grain diameter, m.
+    pub grain_m: f64,
+    /// kg m⁻³.
+    pub grain_density: f64,
+    pub threshold: Threshold,
+    pub transport: Transport,
+    /// Speeds above this are set aside as impossible, m s⁻¹.
+    pub greatest_speed: f64,
+    /// Length of a bootstrap block, days.
+    pub block_days: f64,
+    pub resamples: u32,
+}
+
+/// Drift potential or a physical law.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Transport {
+    DriftPotential,
+    Physical(Law),
+}
+
+/// Why there is no assessment.
+#[derive(Clone, Debug, PartialEq, thiserror::Error)]
+pub enum WindError {
+    #[error(
+        "the body has no air: no wind moves sand there; give its air's density and viscosity, or another body"
+    )]
+    NoAir,
+    #[error("the body's gravity is not known; give it in m/s², or choose drift potential")]
+    NoGravity,
+    #[error(
+        "the anemometer stands at {height_m} m over a roughness of {roughness_m} m; the height must be the greater"
+    )]
+    Height { height_m: f64, roughness_m: f64 },
+    #[error("{what} is {value}; it must be above zero")]
+    NotPositive { what: &'static str, value: f64 },
+    #[error("no row of the record can be used: {reasons}")]
+    NothingLeft { reasons: String },
+    #[error(transparent)]
+    Stopped(#[from] Stopped),
+}
