@@ -1,5 +1,6 @@
 //! The study: the sheet (document), its settings, the one executor, and the findings it returns.
 
+pub mod check;
 mod findings;
 pub mod fingerprint;
 pub mod handover;
@@ -8,6 +9,7 @@ mod sentence;
 mod settings;
 mod sheet;
 pub mod sheet_file;
+pub mod sources;
 
 pub use findings::{
     DriftFinding, Failure, Findings, ModeFinding, Node, PatchFinding, RasterFinding, SeasonFinding, SetAside,
@@ -18,4 +20,5 @@ pub use settings::{
     Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw, TrendSettings,
     VerdictSettings, WindSettings,
 };
+pub use sources::{OpenRaster, Sources};
 pub use sheet::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindEntry};

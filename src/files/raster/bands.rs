@@ -17,3 +17,13 @@ impl Default for Bands {
         Self::One(0)
     }
 }
+
+impl Bands {
+    /// The bands it reads.
+    pub fn indices(&self) -> Vec<usize> {
+        match self {
+            Self::One(band) => vec![*band],
+            Self::Mix(parts) => parts.iter().map(|(band, _)| *band).collect(),
+        }
+    }
+}

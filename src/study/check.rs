@@ -1,0 +1,54 @@
+//! All problems of a sheet at once.
+
+use std::collections::BTreeSet;
+
+use super::{Failure, Id, SETTINGS, Sheet, Sources};
+
+/// What would fail or mislead when the sheet is run: files that do not open, names that point nowhere,
+/// outlines without area or off their raster, settings out of range.
+pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
+    let mut found = sources.failures.clone();
+    let mut say = |what: String, why: String| found.push(Failure { what, why });
+    let mut ids = BTreeSet::new();
+    let all = sheet.rasters.iter().map(|r| (r.id, &r.name)).chain(sheet.patches.iter().map(|p| (p.id, &p.name)));
+    for (Id(id), name) in all.chain(sheet.winds.iter().map(|w| (w.id, &w.name))) {
+        if !ids.insert(id) {
+            say(name.clone(), format!("its id {id} is used twice; every raster, patch and record needs its own"));
+        }
+    }
+    for setting in SETTINGS {
+        if let Some(problem) = setting.problem(&sheet.settings) {
+            say("settings".into(), problem);
+        }
+    }
+    if !sheet.settings.verdict.priors.iter().all(|p| p.is_finite() && *p >= 0.0)
+        || sheet.settings.verdict.priors.iter().sum::<f64>() <= 0.0
+    {
+        say("settings".into(), "verdict.priors must be numbers ≥ 0, not all zero".into());
+    }
+    let bins = 180.0 / sheet.settings.statistics.rose_bin_deg;
+    if (bins - bins.round()).abs() > 1e-9 {
+        say("settings".into(), "statistics.rose_bin_deg must divide 180".into());
+    }
+    for patch in &sheet.patches {
+        let what = format!("patch {}", patch.name);
+        if patch.outline.outer.len() < 3 || patch.outline.area() <= 0.0 {
+            say(what.clone(), "its outline has no area; outline it again".into());
+        }
+        if let Some(wind) = patch.wind.filter(|id| sheet.wind(*id).is_none()) {
+            say(what.clone(), format!("it names wind record {}, which the sheet does not have", wind.0));
+        }
+        match (sheet.raster(patch.raster), sources.rasters.get(&patch.raster), patch.outline.bounds()) {
+            (None, ..) => say(what, format!("it lies on raster {}, which the sheet does not have", patch.raster.0)),
+            (Some(_), Some(open), Some(b)) => {
+                let info = open.raster.info();
+                let (w, h) = (info.width as f64, info.height as f64);
+                if b.max.x <= 0.0 || b.max.y <= 0.0 || b.min.x >= w || b.min.y >= h {
+                    say(what, format!("it lies outside its raster of {w} × {h} pixels"));
+                }
+            }
+            _ => {}
+        }
+    }
+    found
+}
