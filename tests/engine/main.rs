@@ -1,5 +1,7 @@
 //! The engine as a whole: guards, properties, hostile files, the command line.
 
+mod command_line;
+mod demo;
 mod docs;
 mod gratings;
 mod guards;

@@ -23,8 +23,9 @@ use super::smooth::{SampledField, SmoothField};
 pub const SIZE: (usize, usize) = (1200, 900);
 /// Ground size of a mosaic pixel, m.
 pub const PIXEL_M: f64 = 80.0;
-/// The map definition: sinusoidal on Halvane's sphere, so that true north leans off the middle.
-pub const PROJECTION: &str = "+proj=sinu +lon_0=64 +x_0=0 +y_0=0 +R=1420000 +units=m +no_defs";
+/// Central meridian of the map, degrees east: sinusoidal on Halvane's sphere, so that true north
+/// leans off the middle.
+pub const CENTRE_LON: f64 = 64.0;
 /// Upper left corner of the mosaic on that map, m.
 pub const ORIGIN: (f64, f64) = (-31_000.0, 452_000.0);
 /// Where the radar looks from.

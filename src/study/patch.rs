@@ -1,0 +1,215 @@
+//! One patch measured: pixels, spectrum, trend, statistics, verdicts, sentence.
+
+use std::sync::Arc;
+
+use crate::files::raster::RasterError;
+use crate::ground::{Axis, Caution, Point, Seed, Stopped, Work};
+use crate::science::axial::{self, AxialSample, Nodes, Summary, SummarySettings};
+use crate::science::orientation::{self, NodeField, Spectrum, TensorSettings};
+
+use super::cautions;
+use super::verdict::verdict;
+use super::window::{self, Detail, PatchPixels};
+use super::winds::{self, WindStudy};
+use super::{
+    ImageKind, ModeFinding, Node, OpenRaster, Patch, PatchFinding, RasterEntry, Sheet, SpectrumFinding,
+    SpectrumPicture, TrendFinding, fingerprint, sentence,
+};
+
+/// Measures and judges a patch; in words what stood against it.
+///
+/// # Errors
+/// [`Stopped`].
+pub fn patch_finding(
+    sheet: &Sheet,
+    patch: &Patch,
+    entry: &RasterEntry,
+    open: &OpenRaster,
+    judges: &[&Arc<WindStudy>],
+    detail: Detail,
+    work: &Work,
+) -> Result<Result<PatchFinding, String>, Stopped> {
+    work.phase(&format!("reading {}", patch.name), 0);
+    let pixels = match window::read(open, entry, patch, detail, work) {
+        Ok(pixels) => pixels,
+        Err(RasterError::Stopped(stopped)) => return Err(stopped),
+        Err(error) => return Ok(Err(error.to_string())),
+    };
+    if pixels.image.is_empty() || pixels.valid_fraction == 0.0 {
+        return Ok(Err("no valid pixel lies inside its outline".into()));
+    }
+    let seed = sheet.seed.child(&format!("patch {}", patch.id.0));
+    let spectrum = measure_spectrum(sheet, entry, &pixels, seed, work)?;
+    let field = measure_trend(sheet, entry, &pixels, &spectrum, work)?;
+    let (trend, summary) = summarise(sheet, &pixels, &field, seed, work)?;
+    let spectrum_finding = spectrum_finding(&spectrum, &pixels);
+    let mut verdicts = Vec::new();
+    for winds in judges {
+        let mut judged = verdict(sheet, &trend, winds, work)?;
+        judged.cautions.extend(
+            sheet.wind(winds.finding.id).and_then(|w| winds::other_body(w, &open.place.body)),
+        );
+        verdicts.push(judged);
+    }
+    let mut cautions = open.cautions.clone();
+    cautions.extend(summary.cautions.iter().cloned());
+    cautions.extend(spectrum.cautions.iter().cloned());
+    cautions.extend(cautions::of_patch(&trend, &spectrum_finding, &field, &pixels, entry));
+    cautions.dedup_by(|a, b| a.code == b.code && a.text == b.text);
+    let mut finding = PatchFinding {
+        id: patch.id,
+        name: patch.name.clone(),
+        raster: patch.raster,
+        fingerprint: fingerprint::of_patch(sheet, patch),
+        unit: open.place.unit(),
+        area: pixels.area,
+        valid_fraction: pixels.valid_fraction,
+        centre: patch.outline.bounds().and_then(|b| open.place.lonlat_of(b.centre())),
+        trend,
+        spectrum: spectrum_finding,
+        verdicts,
+        sentence: String::new(),
+        cautions,
+    };
+    finding.sentence = sentence::of_patch(&finding);
+    Ok(Ok(finding))
+}
+
+fn measure_spectrum(
+    sheet: &Sheet,
+    entry: &RasterEntry,
+    pixels: &PatchPixels,
+    seed: Seed,
+    work: &Work,
+) -> Result<Spectrum, Stopped> {
+    let (s, factor) = (&sheet.settings.spectrum, pixels.factor as f64);
+    let settings = orientation::SpectrumSettings {
+        window_px: s.window_px.map(|px| px / factor),
+        // Averaged pixels still hold waves of four of their own.
+        shortest_spacing_px: (s.shortest_spacing_px / factor).max(4.0f64.min(s.shortest_spacing_px)),
+        longest_spacing_px: s.longest_spacing_px.map(|px| px / factor),
+        significance: s.significance,
+        logarithm: entry.kind == ImageKind::Radar,
+    };
+    orientation::spectrum(&pixels.image, &pixels.outline, &pixels.place, &settings, seed, work)
+}
+
+fn measure_trend(
+    sheet: &Sheet,
+    entry: &RasterEntry,
+    pixels: &PatchPixels,
+    spectrum: &Spectrum,
+    work: &Work,
+) -> Result<NodeField, Stopped> {
+    let (s, factor) = (&sheet.settings.trend, pixels.factor as f64);
+    let own = TensorSettings::from_spacing(spectrum.spacing_px.filter(|_| spectrum.defined), &pixels.outline);
+    let stated = |setting: Option<f64>, own: f64| setting.map_or(own, |px| px / factor);
+    let settings = TensorSettings {
+        gradient_scale_px: stated(s.gradient_scale_px, own.gradient_scale_px),
+        integration_scale_px: stated(s.integration_scale_px, own.integration_scale_px),
+        node_step_px: stated(s.node_step_px, own.node_step_px),
+        significance: s.significance,
+        logarithm: entry.kind == ImageKind::Radar,
+    };
+    orientation::trend_nodes(&pixels.image, &pixels.outline, &pixels.place, &settings, work)
+}
+
+/// Statistics over the nodes that passed the noise floor, at their places on the ground.
+fn summarise(
+    sheet: &Sheet,
+    pixels: &PatchPixels,
+    field: &NodeField,
+    seed: Seed,
+    work: &Work,
+) -> Result<(TrendFinding, Summary), Stopped> {
+    let s = &sheet.settings.statistics;
+    let passed: Vec<_> = field.nodes.iter().filter(|n| n.significant).collect();
+    let axes: Vec<Axis> = passed.iter().map(|n| n.axis).collect();
+    let centre = pixels.outline.bounds().map_or(Point::default(), |b| b.centre());
+    let frame = pixels.place.local_frame(centre);
+    let at: Vec<Point> = passed
+        .iter()
+        .map(|n| {
+            frame.map_or(n.at, |f| {
+                let (east, north) = f.ground(n.at.x - centre.x, n.at.y - centre.y);
+                Point::new(east, north)
+            })
+        })
+        .collect();
+    let ground_per_px = field.integration_scale_ground / field.integration_scale_px;
+    let nodes =
+        Nodes { at: &at, spacing: field.node_step_px * ground_per_px, kernel_sigma: field.integration_scale_ground };
+    let sample = AxialSample { axes: &axes, weights: None, nodes: Some(nodes) };
+    let settings = SummarySettings { significance: s.significance, resamples: s.resamples };
+    let summary = axial::summarise(&sample, settings, seed, work)?;
+    let modes = if summary.preferred || summary.n_eff_test >= 10.0 {
+        axial::modes(&axes, None, summary.n_eff_mean, s.most_modes, seed, work)?
+    } else {
+        Vec::new()
+    };
+    let factor = pixels.factor as f64;
+    let defined = summary.preferred && summary.rayleigh_p.is_some();
+    let trend = TrendFinding {
+        defined,
+        axis: summary.mean.filter(|_| defined),
+        ci95_half_deg: summary.interval.half_deg.filter(|_| defined),
+        ci95_source: summary.interval.source,
+        resultant_length: summary.resultant_length,
+        kappa_doubled: (summary.n > 0).then_some(summary.kappa),
+        spread_deg: summary.spread_deg,
+        n: summary.n,
+        n_all: field.nodes.len(),
+        n_eff: summary.n_eff_mean,
+        correlation_length: summary.correlation_length,
+        rayleigh_p: summary.rayleigh_p,
+        modes: modes
+            .iter()
+            .map(|m| ModeFinding { axis: m.axis, weight: m.weight, kappa_doubled: m.kappa })
+            .collect(),
+        nodes: field
+            .nodes
+            .iter()
+            .map(|n| Node {
+                at: Point::new(pixels.origin.x + factor * n.at.x, pixels.origin.y + factor * n.at.y),
+                axis: n.axis,
+                coherence: n.coherence,
+                significant: n.significant,
+            })
+            .collect(),
+        rose: axial::rose::rose(&axes, None, s.rose_bin_deg),
+        rose_bin_deg: s.rose_bin_deg,
+        density: axial::density::density_by_degree(&axes, None, density_bandwidth(&summary)),
+        gradient_scale_px: factor * field.gradient_scale_px,
+        integration_scale_px: factor * field.integration_scale_px,
+        node_step_px: factor * field.node_step_px,
+        coherence_floor: field.coherence_floor,
+    };
+    Ok((trend, summary))
+}
+
+/// The plug-in bandwidth with the effective number, since nodes repeat one another.
+fn density_bandwidth(summary: &Summary) -> f64 {
+    axial::density::plug_in(summary.n_eff_mean.max(2.0), summary.kappa.max(0.05))
+}
+
+fn spectrum_finding(s: &Spectrum, pixels: &PatchPixels) -> SpectrumFinding {
+    let factor = pixels.factor;
+    SpectrumFinding {
+        defined: s.defined,
+        axis: s.axis.filter(|_| s.defined),
+        axis_ci95_half_deg: s.axis_ci95_half_deg.filter(|_| s.defined),
+        spacing: s.spacing.filter(|_| s.defined),
+        spacing_ci95: s.spacing_ci95.filter(|_| s.defined),
+        p: s.p,
+        spread_deg: s.spread_deg.filter(|_| s.defined),
+        windows: s.windows,
+        windows_with_peak: s.windows_with_peak,
+        window_px: s.window_px * factor,
+        cycles: s.cycles.filter(|_| s.defined),
+        picture: s
+            .picture
+            .as_ref()
+            .map(|p| SpectrumPicture { log_ratio: p.log_ratio.clone(), edge_frequency: p.edge_frequency }),
+        profile: s.profile.clone(),
+    }
+}

@@ -1,0 +1,141 @@
+//! The one executor. Window and command line both come through here, so they give the same bits.
+
+use std::collections::HashMap;
+use std::sync::{Arc, Mutex, PoisonError};
+
+use crate::ground::{Stopped, Work};
+
+use super::patch::patch_finding;
+use super::window::Detail;
+use super::winds::{self, WindStudy};
+use super::{
+    Failure, Findings, Id, OpenRaster, PatchFinding, RasterEntry, RasterFinding, Sheet, Sources, fingerprint,
+};
+
+/// Results kept by fingerprint, so that an edit recomputes only what it touches. With or without
+/// it a run gives the same bits.
+#[derive(Debug, Default)]
+pub struct Memo {
+    winds: Mutex<HashMap<String, Arc<WindStudy>>>,
+    patches: Mutex<HashMap<String, Arc<PatchFinding>>>,
+}
+
+/// Everything the sheet asks for. A part that fails is named in `failures`; the rest is complete.
+///
+/// # Errors
+/// [`Stopped`].
+pub fn run(sheet: &Sheet, sources: &Sources, memo: &Memo, work: &Work) -> Result<Findings, Stopped> {
+    let (winds, mut failures) = run_winds(sheet, sources, memo, work)?;
+    failures.splice(0..0, sources.failures.iter().cloned());
+    let mut patches = Vec::new();
+    for patch in &sheet.patches {
+        match run_patch(sheet, sources, patch.id, &winds, Detail::Exact, memo, work)? {
+            Ok(finding) => patches.push((*finding).clone()),
+            Err(why) => failures.push(Failure { what: format!("patch {}", patch.name), why }),
+        }
+    }
+    let rasters = sheet.rasters.iter().filter_map(|entry| Some(raster(entry, sources.rasters.get(&entry.id)?)));
+    Ok(Findings {
+        sheet_fingerprint: fingerprint::of_sheet(sheet),
+        rasters: rasters.collect(),
+        winds: winds.into_iter().map(|w| w.finding.clone()).collect(),
+        patches,
+        failures,
+    })
+}
+
+/// All wind records of the sheet.
+///
+/// # Errors
+/// [`Stopped`].
+pub fn run_winds(
+    sheet: &Sheet,
+    sources: &Sources,
+    memo: &Memo,
+    work: &Work,
+) -> Result<(Vec<Arc<WindStudy>>, Vec<Failure>), Stopped> {
+    let (mut studies, mut failures) = (Vec::new(), Vec::new());
+    for entry in &sheet.winds {
+        let Some(record) = sources.winds.get(&entry.id) else { continue };
+        // Names stand in findings, so a renamed entry is computed anew.
+        let key = format!("{} {}", fingerprint::of_wind(sheet, entry), entry.name);
+        if let Some(known) = recall(&memo.winds, &key) {
+            studies.push(known);
+            continue;
+        }
+        match winds::study(sheet, entry, record, work) {
+            Ok(study) => studies.push(keep(&memo.winds, key, study)),
+            Err(error) => {
+                let why = winds::in_words(error)?;
+                failures.push(Failure { what: format!("wind record {}", entry.name), why });
+            }
+        }
+    }
+    Ok((studies, failures))
+}
+
+/// One patch, or in words why it cannot be measured.
+///
+/// # Errors
+/// [`Stopped`].
+pub fn run_patch(
+    sheet: &Sheet,
+    sources: &Sources,
+    id: Id,
+    winds: &[Arc<WindStudy>],
+    detail: Detail,
+    memo: &Memo,
+    work: &Work,
+) -> Result<Result<Arc<PatchFinding>, String>, Stopped> {
+    let Some(patch) = sheet.patch(id) else { return Ok(Err(format!("the sheet has no patch {}", id.0))) };
+    let Some(entry) = sheet.raster(patch.raster) else {
+        return Ok(Err(format!("it lies on raster {}, which the sheet does not have", patch.raster.0)));
+    };
+    let Some(open) = sources.rasters.get(&patch.raster) else {
+        return Ok(Err(format!("its raster “{}” is not open", entry.name)));
+    };
+    let exact = detail == Detail::Exact;
+    let judges: Vec<_> = winds.iter().filter(|w| patch.wind.is_none_or(|id| id == w.finding.id)).collect();
+    let names: Vec<_> = judges.iter().map(|w| w.finding.name.as_str()).collect();
+    let key = format!("{} {} {}", fingerprint::of_patch(sheet, patch), patch.name, names.join(" "));
+    if let Some(known) = recall(&memo.patches, &key).filter(|_| exact) {
+        return Ok(Ok(known));
+    }
+    match patch_finding(sheet, patch, entry, open, &judges, detail, work)? {
+        Ok(finding) if exact => Ok(Ok(keep(&memo.patches, key, finding))),
+        Ok(finding) => Ok(Ok(Arc::new(finding))),
+        Err(why) => Ok(Err(why)),
+    }
+}
+
+/// What a raster is, as used.
+pub fn raster(entry: &RasterEntry, open: &OpenRaster) -> RasterFinding {
+    let info = open.raster.info();
+    let centre = crate::ground::Point::new(0.5 * info.width as f64, 0.5 * info.height as f64);
+    let metres = open.place.unit() == crate::ground::LengthUnit::Metre;
+    RasterFinding {
+        id: entry.id,
+        name: entry.name.clone(),
+        path: entry.path.file_name().map_or(String::new(), |n| n.to_string_lossy().into_owned()),
+        width: info.width,
+        height: info.height,
+        bands: info.bands.len(),
+        sample: info.sample.name().to_owned(),
+        pixel_m: open.place.local_frame(centre).filter(|_| metres).map(|f| f.pixel_size()),
+        body: open.place.body.name.clone(),
+        projection: open.label.clone(),
+        nodata: info.nodata,
+        valid_fraction: None,
+        cautions: open.cautions.clone(),
+    }
+}
+
+fn recall<T>(shelf: &Mutex<HashMap<String, Arc<T>>>, key: &str) -> Option<Arc<T>> {
+    shelf.lock().unwrap_or_else(PoisonError::into_inner).get(key).cloned()
+}
+
+fn keep<T>(shelf: &Mutex<HashMap<String, Arc<T>>>, key: String, value: T) -> Arc<T> {
+    let value = Arc::new(value);
+    shelf.lock().unwrap_or_else(PoisonError::into_inner).insert(key, Arc::clone(&value));
+    value
+}

@@ -1,0 +1,114 @@
+//! Sorrel Reach measured and held against the truth it was made from.
+
+use std::sync::OnceLock;
+
+use ventifact::ground::{Axis, Point, Work};
+use ventifact::science::scene::reach::{self, PatchTruth};
+use ventifact::study::run::{Memo, run};
+use ventifact::study::sheet_file::SheetFile;
+use ventifact::study::{Findings, PatchFinding, Sheet, Sources, demo};
+
+/// The demo's sheet and findings, made once for all tests of this file.
+fn reach_findings() -> &'static (Sheet, Findings, tempfile::TempDir) {
+    static MADE: OnceLock<(Sheet, Findings, tempfile::TempDir)> = OnceLock::new();
+    MADE.get_or_init(|| {
+        let folder = tempfile::tempdir().unwrap();
+        let path = demo::lay_out(folder.path()).unwrap();
+        let text = std::fs::read_to_string(&path).unwrap();
+        let sheet = SheetFile::parse(&text, path.parent().unwrap()).unwrap().sheet;
+        let findings = run(&sheet, &Sources::open(&sheet), &Memo::default(), &Work::quiet()).unwrap();
+        (sheet, findings, folder)
+    })
+}
+
+fn patch(name: &str) -> (&'static PatchFinding, PatchTruth) {
+    let (_, findings, _) = reach_findings();
+    let finding = findings.patches.iter().find(|p| p.name == name).expect("the patch was measured");
+    let truth = reach::patches().into_iter().find(|t| t.name == name).expect("the patch has a truth");
+    (finding, truth)
+}
+
+/// The stated grid trend as a true azimuth at the middle of the patch.
+fn true_trend(truth: &PatchTruth, grid_trend: Axis) -> Axis {
+    let (sheet, ..) = reach_findings();
+    let sources = Sources::open(sheet);
+    let place = &sources.rasters[&sheet.rasters[0].id].place;
+    let b = truth.outline.bounds().unwrap();
+    let frame = place.local_frame(b.centre()).unwrap();
+    let (sin, cos) = grid_trend.rad().sin_cos();
+    frame.azimuth(sin, -cos).axis()
+}
+
+#[test]
+fn nothing_of_the_demo_fails() {
+    let (_, findings, _) = reach_findings();
+    assert_eq!(findings.failures, vec![]);
+    assert_eq!(findings.patches.len(), 3);
+    assert_eq!(findings.winds.len(), 2);
+}
+
+#[test]
+fn trends_and_spacings_hold_the_truth_within_their_intervals() {
+    for name in ["Long dunes", "Corridor dunes"] {
+        let (finding, truth) = patch(name);
+        let bedforms = truth.bedforms.unwrap();
+        let want = true_trend(&truth, bedforms.grid_trend);
+        let trend = &finding.trend;
+        assert!(trend.defined, "{name}: {}", finding.sentence);
+        let (axis, half) = (trend.axis.unwrap(), trend.ci95_half_deg.unwrap());
+        println!("{name}: trend {:.2} ± {half:.2}, truth {:.2}", axis.deg(), want.deg());
+        assert!(axis.separation(want) <= half, "{name}: trend {axis:?} ± {half}, truth {want:?}");
+        assert!(half < 6.0, "{name}: the interval ± {half}° says too little");
+        let (spacing, [low, high]) = (finding.spectrum.spacing.unwrap(), finding.spectrum.spacing_ci95.unwrap());
+        println!("{name}: spacing {spacing:.0} m ({low:.0} to {high:.0}), truth {}", bedforms.spacing_m);
+        assert!((low..=high).contains(&bedforms.spacing_m), "{name}: spacing {low} to {high}, truth {}", bedforms.spacing_m);
+        assert!(high - low < 0.3 * spacing, "{name}: spacing interval {low} to {high} says too little");
+    }
+}
+
+#[test]
+fn the_bare_plain_has_no_preferred_trend() {
+    let (finding, _) = patch("Bare plain");
+    assert!(!finding.trend.defined, "{}", finding.sentence);
+    assert_eq!(finding.trend.axis, None);
+    assert!(!finding.spectrum.defined, "{}", finding.sentence);
+    assert!(finding.sentence.contains("no preferred trend"), "{}", finding.sentence);
+    assert!(finding.verdicts.iter().all(|v| v.refused.is_some()), "{}", finding.sentence);
+}
+
+#[test]
+fn the_classes_are_the_ones_the_winds_were_made_for() {
+    for name in ["Long dunes", "Corridor dunes"] {
+        let (finding, truth) = patch(name);
+        let verdict = &finding.verdicts[0];
+        let p = verdict.probabilities.unwrap_or_else(|| panic!("{name}: {:?}", verdict.refused));
+        let class = ["longitudinal", "oblique", "transverse"]
+            [(0..3).max_by(|a, b| p[*a].total_cmp(&p[*b])).unwrap()];
+        println!("{name}: {p:?}, obliquity {:?} {:?}", verdict.obliquity_deg, verdict.obliquity_ci95_deg);
+        assert_eq!(Some(class), truth.class, "{name}: {}", finding.sentence);
+    }
+}
+
+#[test]
+fn one_thread_and_two_give_the_same_bits_and_so_does_the_memo() {
+    let (sheet, findings, _) = reach_findings();
+    let sources = Sources::open(sheet);
+    let memo = Memo::default();
+    let with = |threads: usize| {
+        let pool = rayon::ThreadPoolBuilder::new().num_threads(threads).build().unwrap();
+        pool.install(|| run(sheet, &sources, &memo, &Work::quiet()).unwrap())
+    };
+    assert!(with(1) == *findings, "one thread");
+    assert!(with(2) == *findings, "from the memo");
+    let fresh = rayon::ThreadPoolBuilder::new().num_threads(2).build().unwrap();
+    assert!(fresh.install(|| run(sheet, &sources, &Memo::default(), &Work::quiet()).unwrap()) == *findings, "two threads");
+}
+
+#[test]
+fn nodes_lie_inside_their_patch() {
+    let (sheet, findings, _) = reach_findings();
+    for finding in &findings.patches {
+        let outline = &sheet.patch(finding.id).unwrap().outline;
+        assert!(finding.trend.nodes.iter().all(|n| outline.contains(Point::new(n.at.x, n.at.y))), "{}", finding.name);
+    }
+}
