@@ -1,7 +1,10 @@
 //! What leaves the program: the findings as JSON, tables and layers, the methods as a page.
 
 mod json;
+mod layers;
 mod methods;
+mod write;
 
 pub use json::findings_json;
 pub use methods::{bibtex, citation, methods_markdown};
+pub use write::{HandoverError, write_all};
