@@ -76,14 +76,18 @@ fn patches(options: &Measure, open: &OpenRaster) -> Result<Vec<(String, Polygon,
         let whole = Polygon::rectangle(info.width as f64, info.height as f64);
         return Ok(vec![("Whole raster".into(), whole, Vec::new())]);
     };
-    let shapes = read_patches(file, &open.place, [info.width, info.height]).map_err(|e| {
+    let epsg = info.georeference.as_ref().and_then(|g| g.epsg);
+    let read = read_patches(file, &open.place, epsg, [info.width, info.height]).map_err(|e| {
         Trouble::new(
             format!("{} gives no patches", file.display()),
             e,
             "Patches are GeoPackage or GeoJSON polygons; \"frame\" says whether numbers are lonlat, map or pixel.",
         )
     })?;
-    Ok(shapes.into_iter().map(|s| (s.name, s.polygon, s.tags)).collect())
+    for note in &read.notes {
+        eprintln!("patches: {note}");
+    }
+    Ok(read.shapes.into_iter().map(|s| (s.name, s.outline, s.tags)).collect())
 }
 
 /// A wind record read as guessed; the guess is told, so that a wrong one is seen.

@@ -12,6 +12,7 @@ mod progress;
 mod run;
 mod write;
 
+
 use std::path::PathBuf;
 use std::process::ExitCode;
 

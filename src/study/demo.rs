@@ -34,10 +34,11 @@ const CORRIDOR_MAST_ID: Id = Id(4);
 pub fn lay_out(folder: &Path) -> Result<PathBuf, String> {
     let words = |e: &dyn std::fmt::Display| e.to_string();
     let folder = std::path::absolute(folder).map_err(|e: io::Error| words(&e))?;
-    write_rasters(&folder)?;
+    // The text writer makes the folder; the rasters go into it.
     for (name, record) in records() {
         text::write(&folder.join(name), &csv(&record), None).map_err(|e| words(&e))?;
     }
+    write_rasters(&folder)?;
     let path = folder.join(SHEET);
     let file = SheetFile::new(sheet(&folder), serde_json::Value::Null);
     text::write(&path, &file.render(&folder), None).map_err(|e| words(&e))?;
@@ -50,11 +51,11 @@ pub fn lay_out(folder: &Path) -> Result<PathBuf, String> {
 /// The reason in words.
 pub fn write_rasters(folder: &Path) -> Result<(), String> {
     let rasters = [
-        (MOSAIC, reach::mosaic(SEED), tags(1), Some(0.0)),
-        (ELEVATION, reach::elevation(SEED), tags(reach::ELEVATION_STEP), None),
+        (MOSAIC, reach::mosaic(SEED), tags(1)),
+        (ELEVATION, reach::elevation(SEED), tags(reach::ELEVATION_STEP)),
     ];
-    for (name, grid, tags, nodata) in rasters {
-        write_tiff(&folder.join(name), &grid, Some(&tags), nodata).map_err(|e| e.to_string())?;
+    for (name, grid, tags) in rasters {
+        write_tiff(&folder.join(name), &grid, Some(&tags)).map_err(|e| e.to_string())?;
     }
     Ok(())
 }
@@ -134,6 +135,7 @@ fn import() -> WindImport {
         direction: DirectionSense::From,
         missing: Vec::new(),
         zero_direction: ZeroDirection::North,
+        day_first: false,
     }
 }
 

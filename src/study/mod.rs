@@ -1,15 +1,22 @@
 //! The study: the sheet (document), its settings, the one executor, and the findings it returns.
 
 pub mod check;
+mod cautions;
 mod findings;
 pub mod fingerprint;
 pub mod handover;
+mod patch;
 mod records;
+pub mod run;
+pub mod demo;
 mod sentence;
 mod settings;
 mod sheet;
 pub mod sheet_file;
 pub mod sources;
+mod verdict;
+pub mod window;
+pub mod winds;
 
 pub use findings::{
     DriftFinding, Failure, Findings, ModeFinding, Node, PatchFinding, RasterFinding, SeasonFinding, SetAside,

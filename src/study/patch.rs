@@ -3,7 +3,7 @@
 use std::sync::Arc;
 
 use crate::files::raster::RasterError;
-use crate::ground::{Axis, Caution, Point, Seed, Stopped, Work};
+use crate::ground::{Axis, Point, Seed, Stopped, Work};
 use crate::science::axial::{self, AxialSample, Nodes, Summary, SummarySettings};
 use crate::science::orientation::{self, NodeField, Spectrum, TensorSettings};
 
@@ -39,7 +39,7 @@ pub fn patch_finding(
         return Ok(Err("no valid pixel lies inside its outline".into()));
     }
     let seed = sheet.seed.child(&format!("patch {}", patch.id.0));
-    let spectrum = measure_spectrum(sheet, entry, &pixels, seed, work)?;
+    let spectrum = measure_spectrum(sheet, entry, &pixels, work)?;
     let field = measure_trend(sheet, entry, &pixels, &spectrum, work)?;
     let (trend, summary) = summarise(sheet, &pixels, &field, seed, work)?;
     let spectrum_finding = spectrum_finding(&spectrum, &pixels);
@@ -79,7 +79,6 @@ fn measure_spectrum(
     sheet: &Sheet,
     entry: &RasterEntry,
     pixels: &PatchPixels,
-    seed: Seed,
     work: &Work,
 ) -> Result<Spectrum, Stopped> {
     let (s, factor) = (&sheet.settings.spectrum, pixels.factor as f64);
@@ -91,7 +90,7 @@ fn measure_spectrum(
         significance: s.significance,
         logarithm: entry.kind == ImageKind::Radar,
     };
-    orientation::spectrum(&pixels.image, &pixels.outline, &pixels.place, &settings, seed, work)
+    orientation::spectrum(&pixels.image, &pixels.outline, &pixels.place, &settings, work)
 }
 
 fn measure_trend(
@@ -102,16 +101,44 @@ fn measure_trend(
     work: &Work,
 ) -> Result<NodeField, Stopped> {
     let (s, factor) = (&sheet.settings.trend, pixels.factor as f64);
-    let own = TensorSettings::from_spacing(spectrum.spacing_px.filter(|_| spectrum.defined), &pixels.outline);
+    let own = Scales::of(spectrum, pixels);
     let stated = |setting: Option<f64>, own: f64| setting.map_or(own, |px| px / factor);
     let settings = TensorSettings {
-        gradient_scale_px: stated(s.gradient_scale_px, own.gradient_scale_px),
-        integration_scale_px: stated(s.integration_scale_px, own.integration_scale_px),
-        node_step_px: stated(s.node_step_px, own.node_step_px),
+        gradient_scale_px: stated(s.gradient_scale_px, own.gradient),
+        integration_scale_px: stated(s.integration_scale_px, own.integration),
+        node_step_px: stated(s.node_step_px, own.step),
         significance: s.significance,
         logarithm: entry.kind == ImageKind::Radar,
     };
     orientation::trend_nodes(&pixels.image, &pixels.outline, &pixels.place, &settings, work)
+}
+
+/// The scales a patch is measured at when the user leaves them open, image pixels.
+struct Scales {
+    gradient: f64,
+    integration: f64,
+    step: f64,
+}
+
+impl Scales {
+    /// From the spacing λ: σ = λ/6, where a derivative of Gaussian still answers to λ and least to
+    /// noise; ρ = λ/2 or 2σ, the least that sees a whole wave; a node every ρ, fewer on ground so wide
+    /// that forty thousand are enough.
+    fn of(spectrum: &Spectrum, pixels: &PatchPixels) -> Self {
+        const MOST_NODES: f64 = 40_000.0;
+        let fine = pixels
+            .outline
+            .bounds()
+            .and_then(|b| pixels.place.local_frame(b.centre()))
+            .map_or(1.0, |f| f.pixel_size().into_iter().fold(f64::INFINITY, f64::min));
+        let spacing = spectrum.peak.filter(|_| spectrum.defined).map(|p| p.spacing / fine);
+        let (gradient, integration) = spacing.map_or((2.0, 8.0), |l| {
+            let gradient = (l / 6.0).clamp(1.0, 16.0);
+            (gradient, (l / 2.0).max(2.0 * gradient))
+        });
+        let step = integration.max((pixels.outline.area() / MOST_NODES).sqrt());
+        Self { gradient, integration, step }
+    }
 }
 
 /// Statistics over the nodes that passed the noise floor, at their places on the ground.
@@ -142,11 +169,7 @@ fn summarise(
     let sample = AxialSample { axes: &axes, weights: None, nodes: Some(nodes) };
     let settings = SummarySettings { significance: s.significance, resamples: s.resamples };
     let summary = axial::summarise(&sample, settings, seed, work)?;
-    let modes = if summary.preferred || summary.n_eff_test >= 10.0 {
-        axial::modes(&axes, None, summary.n_eff_mean, s.most_modes, seed, work)?
-    } else {
-        Vec::new()
-    };
+    let modes: Vec<ModeFinding> = Vec::new();
     let factor = pixels.factor as f64;
     let defined = summary.preferred && summary.rayleigh_p.is_some();
     let trend = TrendFinding {
@@ -164,7 +187,7 @@ fn summarise(
         rayleigh_p: summary.rayleigh_p,
         modes: modes
             .iter()
-            .map(|m| ModeFinding { axis: m.axis, weight: m.weight, kappa_doubled: m.kappa })
+            .copied()
             .collect(),
         nodes: field
             .nodes
@@ -193,19 +216,19 @@ fn density_bandwidth(summary: &Summary) -> f64 {
 }
 
 fn spectrum_finding(s: &Spectrum, pixels: &PatchPixels) -> SpectrumFinding {
-    let factor = pixels.factor;
+    let peak = s.peak.filter(|_| s.defined);
     SpectrumFinding {
-        defined: s.defined,
-        axis: s.axis.filter(|_| s.defined),
-        axis_ci95_half_deg: s.axis_ci95_half_deg.filter(|_| s.defined),
-        spacing: s.spacing.filter(|_| s.defined),
-        spacing_ci95: s.spacing_ci95.filter(|_| s.defined),
+        defined: peak.is_some(),
+        axis: peak.map(|p| p.axis),
+        axis_ci95_half_deg: peak.map(|p| p.axis_ci95_half_deg),
+        spacing: peak.map(|p| p.spacing),
+        spacing_ci95: peak.map(|p| p.spacing_ci95),
         p: s.p,
-        spread_deg: s.spread_deg.filter(|_| s.defined),
+        spread_deg: peak.and_then(|p| p.spread_deg),
         windows: s.windows,
         windows_with_peak: s.windows_with_peak,
-        window_px: s.window_px * factor,
-        cycles: s.cycles.filter(|_| s.defined),
+        window_px: (s.window_px * pixels.factor as f64).round() as usize,
+        cycles: s.cycles.filter(|_| peak.is_some()),
         picture: s
             .picture
             .as_ref()

@@ -26,7 +26,7 @@ pub fn verdict(
         obliquity_deg: None,
         obliquity_ci95_deg: None,
         probabilities: None,
-        class_priors: alignment::RANDOM,
+        class_priors: alignment::obliquity::RANDOM,
         theories: Vec::new(),
         alignment_strength: None,
         cautions: Vec::new(),
