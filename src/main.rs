@@ -16,7 +16,9 @@ fn window(sheet: Option<std::path::PathBuf>) -> ExitCode {
     match ventifact::window::open(sheet) {
         Ok(()) => ExitCode::SUCCESS,
         Err(error) => {
-            eprintln!("ventifact: the window cannot be opened\n  {error}\n  The commands work without it: ventifact --help");
+            eprintln!(
+                "ventifact: the window cannot be opened\n  {error}\n  The commands work without it: ventifact --help"
+            );
             ExitCode::from(2)
         }
     }

@@ -31,7 +31,12 @@ pub fn check(path: &Path) -> Result<Outcome, Trouble> {
         println!("{}: {}", problem.what, problem.why);
     }
     if problems.is_empty() {
-        println!("no problems: {} rasters, {} patches, {} wind records", sheet.rasters.len(), sheet.patches.len(), sheet.winds.len());
+        println!(
+            "no problems: {} rasters, {} patches, {} wind records",
+            sheet.rasters.len(),
+            sheet.patches.len(),
+            sheet.winds.len()
+        );
         return Ok(Outcome::Done);
     }
     Ok(Outcome::PartFailed)

@@ -21,7 +21,11 @@ pub fn look(path: &Path, as_json: bool) -> Result<Outcome, Trouble> {
     };
     let raster = Raster::open(path, &Limits::default()).map_err(|e| trouble(e.to_string()))?;
     let open = place_raster(raster, &Placement::default()).map_err(trouble)?;
-    if as_json { print_json(&open) } else { print_words(&open) }
+    if as_json {
+        print_json(&open)
+    } else {
+        print_words(&open)
+    }
     Ok(Outcome::Done)
 }
 

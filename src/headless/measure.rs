@@ -24,12 +24,10 @@ pub fn measure(options: &Measure) -> Result<Outcome, Trouble> {
             "`ventifact look` says what a file is; docs/formats.md lists what is read.",
         )
     })?;
-    let placement = Placement {
-        pixel_m: options.pixel_size.map(|m| [m, m]),
-        north_deg: options.north,
-        body: None,
-    };
-    let wrong = |why: String| Trouble::new("the options do not fit the raster", why, "See ventifact measure --help.");
+    let placement =
+        Placement { pixel_m: options.pixel_size.map(|m| [m, m]), north_deg: options.north, body: None };
+    let wrong =
+        |why: String| Trouble::new("the options do not fit the raster", why, "See ventifact measure --help.");
     let band = options.band.unwrap_or(1);
     let open = place_raster(raster, &placement).map_err(wrong)?;
     let bands = open.raster.info().bands.len();
@@ -59,9 +57,8 @@ pub fn measure(options: &Measure) -> Result<Outcome, Trouble> {
     let out = absolute(&options.out)?;
     let sheet_path = out.join(format!("{name}.sheet.json"));
     let file = SheetFile::new(sheet.clone(), serde_json::Value::Null);
-    text::write(&sheet_path, &file.render(&out), None).map_err(|e| {
-        Trouble::new("the sheet cannot be written", e, "Give another folder with --out.")
-    })?;
+    text::write(&sheet_path, &file.render(&out), None)
+        .map_err(|e| Trouble::new("the sheet cannot be written", e, "Give another folder with --out."))?;
     study(&sheet, &out)
 }
 

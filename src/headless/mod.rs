@@ -12,7 +12,6 @@ mod progress;
 mod run;
 mod write;
 
-
 use std::path::PathBuf;
 use std::process::ExitCode;
 
@@ -88,5 +87,7 @@ pub fn main() -> Next {
 /// Whether a window could be shown at all.
 fn has_display() -> bool {
     cfg!(not(target_os = "linux"))
-        || ["DISPLAY", "WAYLAND_DISPLAY"].iter().any(|name| std::env::var_os(name).is_some_and(|v| !v.is_empty()))
+        || ["DISPLAY", "WAYLAND_DISPLAY"]
+            .iter()
+            .any(|name| std::env::var_os(name).is_some_and(|v| !v.is_empty()))
 }

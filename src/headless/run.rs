@@ -48,8 +48,12 @@ fn print(findings: &Findings) {
             let half = wind.flux.toward_ci95_half_deg.map_or(String::new(), |h| format!(" ± {h:.0}°"));
             format!("sand goes toward {:.0}°{half}", a.deg())
         });
-        let ratio = wind.flux.ratio.map_or(String::new(), |r| format!(", {:.0} % of it on balance", 100.0 * r));
-        println!("Winds of {}: {} of {} rows used, {toward}{ratio} ({}).", wind.name, wind.used, wind.rows, wind.law);
+        let ratio =
+            wind.flux.ratio.map_or(String::new(), |r| format!(", {:.0} % of it on balance", 100.0 * r));
+        println!(
+            "Winds of {}: {} of {} rows used, {toward}{ratio} ({}).",
+            wind.name, wind.used, wind.rows, wind.law
+        );
         if let Some(dp) = &wind.fryberger {
             println!("  drift potential {:.1} {}", dp.total, dp.unit);
         }

@@ -28,7 +28,13 @@ pub fn of_patch(
         );
     }
     if pixels.valid_fraction < 0.9 {
-        say("gaps", format!("Only {:.0} % of the pixels inside the outline are valid.", 100.0 * pixels.valid_fraction));
+        say(
+            "gaps",
+            format!(
+                "Only {:.0} % of the pixels inside the outline are valid.",
+                100.0 * pixels.valid_fraction
+            ),
+        );
     }
     if let Some(axis) = trend.axis {
         if trend.resultant_length < 0.4 {
@@ -43,7 +49,10 @@ pub fn of_patch(
         if trend.modes.len() > 1 && apart(trend) > 25.0 {
             say(
                 "several-trends",
-                format!("{} trends share the patch: the mean trend may follow none of them.", trend.modes.len()),
+                format!(
+                    "{} trends share the patch: the mean trend may follow none of them.",
+                    trend.modes.len()
+                ),
             );
         }
         if let Some(text) = disagreement(axis, trend, spectrum) {
@@ -66,10 +75,15 @@ pub fn of_patch(
     if trend.n_all > 0 && share < 0.25 {
         say(
             "few-nodes",
-            format!("{} of {} nodes pass the noise floor: most of the patch has no texture to read.", trend.n, trend.n_all),
+            format!(
+                "{} of {} nodes pass the noise floor: most of the patch has no texture to read.",
+                trend.n, trend.n_all
+            ),
         );
     }
-    if let Some(contrast) = field.contrast.filter(|c| *c < FAINT_CONTRAST && (trend.defined || spectrum.defined)) {
+    if let Some(contrast) =
+        field.contrast.filter(|c| *c < FAINT_CONTRAST && (trend.defined || spectrum.defined))
+    {
         say(
             "faint-texture",
             format!(
@@ -79,7 +93,13 @@ pub fn of_patch(
         );
     }
     if field.shear_deg > 1.0 {
-        say("sheared", format!("The pixel grid is {:.1}° off square: smoothing is not isotropic on the ground.", field.shear_deg));
+        say(
+            "sheared",
+            format!(
+                "The pixel grid is {:.1}° off square: smoothing is not isotropic on the ground.",
+                field.shear_deg
+            ),
+        );
     }
     found
 }

@@ -10,10 +10,14 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
     let mut found = sources.failures.clone();
     let mut say = |what: String, why: String| found.push(Failure { what, why });
     let mut ids = BTreeSet::new();
-    let all = sheet.rasters.iter().map(|r| (r.id, &r.name)).chain(sheet.patches.iter().map(|p| (p.id, &p.name)));
+    let all =
+        sheet.rasters.iter().map(|r| (r.id, &r.name)).chain(sheet.patches.iter().map(|p| (p.id, &p.name)));
     for (Id(id), name) in all.chain(sheet.winds.iter().map(|w| (w.id, &w.name))) {
         if !ids.insert(id) {
-            say(name.clone(), format!("its id {id} is used twice; every raster, patch and record needs its own"));
+            say(
+                name.clone(),
+                format!("its id {id} is used twice; every raster, patch and record needs its own"),
+            );
         }
     }
     for setting in SETTINGS {
@@ -39,7 +43,9 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
             say(what.clone(), format!("it names wind record {}, which the sheet does not have", wind.0));
         }
         match (sheet.raster(patch.raster), sources.rasters.get(&patch.raster), patch.outline.bounds()) {
-            (None, ..) => say(what, format!("it lies on raster {}, which the sheet does not have", patch.raster.0)),
+            (None, ..) => {
+                say(what, format!("it lies on raster {}, which the sheet does not have", patch.raster.0))
+            }
             (Some(_), Some(open), Some(b)) => {
                 let info = open.raster.info();
                 let (w, h) = (info.width as f64, info.height as f64);

@@ -69,7 +69,10 @@ pub fn records() -> [(&'static str, WindRecord); 2] {
 pub fn csv(record: &WindRecord) -> String {
     let mut table = String::from("time,speed_m_per_s,from_deg\n");
     for s in &record.samples {
-        let time = s.time.and_then(|t| chrono::DateTime::from_timestamp(t, 0)).map(|t| t.format("%Y-%m-%dT%H:%M").to_string());
+        let time = s
+            .time
+            .and_then(|t| chrono::DateTime::from_timestamp(t, 0))
+            .map(|t| t.format("%Y-%m-%dT%H:%M").to_string());
         let from = s.from.map(|a| format!("{:.0}", a.deg()));
         table.push_str(&format!(
             "{},{:.1},{}\n",

@@ -1,14 +1,14 @@
 //! The study: the sheet (document), its settings, the one executor, and the findings it returns.
 
-pub mod check;
 mod cautions;
+pub mod check;
+pub mod demo;
 mod findings;
 pub mod fingerprint;
 pub mod handover;
 mod patch;
 mod records;
 pub mod run;
-pub mod demo;
 mod sentence;
 mod settings;
 mod sheet;
@@ -27,5 +27,5 @@ pub use settings::{
     Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw, TrendSettings,
     VerdictSettings, WindSettings,
 };
-pub use sources::{OpenRaster, Sources};
 pub use sheet::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindEntry};
+pub use sources::{OpenRaster, Sources};

@@ -3,9 +3,9 @@
 use std::sync::Arc;
 
 use crate::files::raster::RasterError;
-use crate::ground::{Axis, Point, Seed, Stopped, Work};
+use crate::ground::{Axis, Caution, Point, Seed, Stopped, Work};
 use crate::science::axial::{self, AxialSample, Nodes, Summary, SummarySettings};
-use crate::science::orientation::{self, NodeField, Spectrum, TensorSettings};
+use crate::science::orientation::{self, NodeField, Spectrum, TensorSettings, TrendNode};
 
 use super::cautions;
 use super::verdict::verdict;
@@ -41,18 +41,18 @@ pub fn patch_finding(
     let seed = sheet.seed.child(&format!("patch {}", patch.id.0));
     let spectrum = measure_spectrum(sheet, entry, &pixels, work)?;
     let field = measure_trend(sheet, entry, &pixels, &spectrum, work)?;
-    let (trend, summary) = summarise(sheet, &pixels, &field, seed, work)?;
+    let (trend, axial_cautions) = summarise(sheet, &pixels, &field, seed, work)?;
     let spectrum_finding = spectrum_finding(&spectrum, &pixels);
     let mut verdicts = Vec::new();
     for winds in judges {
         let mut judged = verdict(sheet, &trend, winds, work)?;
-        judged.cautions.extend(
-            sheet.wind(winds.finding.id).and_then(|w| winds::other_body(w, &open.place.body)),
-        );
+        judged
+            .cautions
+            .extend(sheet.wind(winds.finding.id).and_then(|w| winds::other_body(w, &open.place.body)));
         verdicts.push(judged);
     }
     let mut cautions = open.cautions.clone();
-    cautions.extend(summary.cautions.iter().cloned());
+    cautions.extend(axial_cautions);
     cautions.extend(spectrum.cautions.iter().cloned());
     cautions.extend(cautions::of_patch(&trend, &spectrum_finding, &field, &pixels, entry));
     cautions.dedup_by(|a, b| a.code == b.code && a.text == b.text);
@@ -141,54 +141,58 @@ impl Scales {
     }
 }
 
-/// Statistics over the nodes that passed the noise floor, at their places on the ground.
+/// Statistics of the trend field.
+///
+/// Whether a trend is preferred is asked of ALL nodes: noise has no say in which are counted, so
+/// the test keeps its level on ground without texture. The trend itself is that of the nodes that
+/// passed the noise floor, since the others only blur it.
 fn summarise(
     sheet: &Sheet,
     pixels: &PatchPixels,
     field: &NodeField,
     seed: Seed,
     work: &Work,
-) -> Result<(TrendFinding, Summary), Stopped> {
+) -> Result<(TrendFinding, Vec<Caution>), Stopped> {
     let s = &sheet.settings.statistics;
-    let passed: Vec<_> = field.nodes.iter().filter(|n| n.significant).collect();
-    let axes: Vec<Axis> = passed.iter().map(|n| n.axis).collect();
-    let centre = pixels.outline.bounds().map_or(Point::default(), |b| b.centre());
-    let frame = pixels.place.local_frame(centre);
-    let at: Vec<Point> = passed
-        .iter()
-        .map(|n| {
-            frame.map_or(n.at, |f| {
-                let (east, north) = f.ground(n.at.x - centre.x, n.at.y - centre.y);
-                Point::new(east, north)
-            })
-        })
-        .collect();
-    let ground_per_px = field.integration_scale_ground / field.integration_scale_px;
-    let nodes =
-        Nodes { at: &at, spacing: field.node_step_px * ground_per_px, kernel_sigma: field.integration_scale_ground };
-    let sample = AxialSample { axes: &axes, weights: None, nodes: Some(nodes) };
     let settings = SummarySettings { significance: s.significance, resamples: s.resamples };
-    let summary = axial::summarise(&sample, settings, seed, work)?;
-    let modes: Vec<ModeFinding> = Vec::new();
+    let positions = ground_positions(pixels, &field.nodes);
+    let passed: Vec<usize> = (0..field.nodes.len()).filter(|i| field.nodes[*i].significant).collect();
+    let every: Vec<usize> = (0..field.nodes.len()).collect();
+    let axes_of = |picked: &[usize]| picked.iter().map(|i| field.nodes[*i].axis).collect::<Vec<Axis>>();
+    let spacing = field.node_step_px * field.integration_scale_ground / field.integration_scale_px;
+    let summary_of = |picked: &[usize]| {
+        let at: Vec<Point> = picked.iter().map(|i| positions[*i]).collect();
+        let nodes = Nodes { at: &at, spacing, kernel_sigma: field.integration_scale_ground };
+        let axes = axes_of(picked);
+        axial::summarise(
+            &AxialSample { axes: &axes, weights: None, nodes: Some(nodes) },
+            settings,
+            seed,
+            work,
+        )
+    };
+    let test = summary_of(&every)?;
+    let shown = summary_of(&passed)?;
+    // By chance alone `significance` of the nodes pass; a texture must show at several times as many.
+    let has_texture = passed.len() as f64 > 5.0 * sheet.settings.trend.significance * every.len() as f64;
+    let defined = test.preferred && has_texture;
+    let axes = axes_of(&passed);
+    let modes = if has_texture { Vec::<ModeFinding>::new() } else { Vec::new() };
     let factor = pixels.factor as f64;
-    let defined = summary.preferred && summary.rayleigh_p.is_some();
     let trend = TrendFinding {
         defined,
-        axis: summary.mean.filter(|_| defined),
-        ci95_half_deg: summary.interval.half_deg.filter(|_| defined),
-        ci95_source: summary.interval.source,
-        resultant_length: summary.resultant_length,
-        kappa_doubled: (summary.n > 0).then_some(summary.kappa),
-        spread_deg: summary.spread_deg,
-        n: summary.n,
+        axis: shown.mean.filter(|_| defined),
+        ci95_half_deg: shown.interval.half_deg.filter(|_| defined),
+        ci95_source: shown.interval.source,
+        resultant_length: shown.resultant_length,
+        kappa_doubled: (shown.n > 0).then_some(shown.kappa),
+        spread_deg: shown.spread_deg,
+        n: shown.n,
         n_all: field.nodes.len(),
-        n_eff: summary.n_eff_mean,
-        correlation_length: summary.correlation_length,
-        rayleigh_p: summary.rayleigh_p,
-        modes: modes
-            .iter()
-            .copied()
-            .collect(),
+        n_eff: shown.n_eff_mean,
+        correlation_length: shown.correlation_length,
+        rayleigh_p: test.rayleigh_p,
+        modes: modes.iter().copied().collect(),
         nodes: field
             .nodes
             .iter()
@@ -201,13 +205,26 @@ fn summarise(
             .collect(),
         rose: axial::rose::rose(&axes, None, s.rose_bin_deg),
         rose_bin_deg: s.rose_bin_deg,
-        density: axial::density::density_by_degree(&axes, None, density_bandwidth(&summary)),
+        density: axial::density::density_by_degree(&axes, None, density_bandwidth(&shown)),
         gradient_scale_px: factor * field.gradient_scale_px,
         integration_scale_px: factor * field.integration_scale_px,
         node_step_px: factor * field.node_step_px,
         coherence_floor: field.coherence_floor,
     };
-    Ok((trend, summary))
+    Ok((trend, if defined { shown.cautions } else { test.cautions }))
+}
+
+/// Nodes on a plane that touches the ground at the middle of the patch, ground units.
+fn ground_positions(pixels: &PatchPixels, nodes: &[TrendNode]) -> Vec<Point> {
+    let centre = pixels.outline.bounds().map_or(Point::default(), |b| b.centre());
+    let frame = pixels.place.local_frame(centre);
+    let on_ground = |p: Point| {
+        frame.map_or(p, |f| {
+            let (east, north) = f.ground(p.x - centre.x, p.y - centre.y);
+            Point::new(east, north)
+        })
+    };
+    nodes.iter().map(|n| on_ground(n.at)).collect()
 }
 
 /// The plug-in bandwidth with the effective number, since nodes repeat one another.

@@ -34,7 +34,8 @@ pub fn run(sheet: &Sheet, sources: &Sources, memo: &Memo, work: &Work) -> Result
             Err(why) => failures.push(Failure { what: format!("patch {}", patch.name), why }),
         }
     }
-    let rasters = sheet.rasters.iter().filter_map(|entry| Some(raster(entry, sources.rasters.get(&entry.id)?)));
+    let rasters =
+        sheet.rasters.iter().filter_map(|entry| Some(raster(entry, sources.rasters.get(&entry.id)?)));
     Ok(Findings {
         sheet_fingerprint: fingerprint::of_sheet(sheet),
         rasters: rasters.collect(),

@@ -19,15 +19,11 @@ pub fn of_patch(finding: &PatchFinding) -> String {
 
 fn trend(t: &TrendFinding) -> String {
     let (Some(axis), true) = (t.axis, t.defined) else {
+        let share = format!("{} of {} places pass the noise floor", t.n, t.n_all);
         return match t.rayleigh_p {
-            Some(p) => format!(
-                "no preferred trend (p = {}, resultant length {:.2}, effective n {:.0})",
-                probability(p),
-                t.resultant_length,
-                t.n_eff
-            ),
-            None if t.n == 0 => "no place passes the noise floor, so there is no trend to state".into(),
-            None => format!("too little independent ground to tell a trend (effective n {:.1})", t.n_eff),
+            Some(p) => format!("no preferred trend (p = {}, {share})", probability(p)),
+            None if t.n_all == 0 => "no place in it can be measured, so there is no trend to state".into(),
+            None => format!("too little independent ground to tell a trend ({share})"),
         };
     };
     let interval =
@@ -128,7 +124,7 @@ mod tests {
 
     #[test]
     fn an_undefined_trend_is_a_sentence_not_a_number() {
-        let trend = TrendFinding { rayleigh_p: Some(0.4), n: 100, n_eff: 31.0, ..Default::default() };
+        let trend = TrendFinding { rayleigh_p: Some(0.4), n: 9, n_all: 100, ..Default::default() };
         let text = super::trend(&trend);
         assert!(text.starts_with("no preferred trend (p = 0.40"), "{text}");
         assert!(!text.contains('°'), "{text}");

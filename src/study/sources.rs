@@ -43,7 +43,9 @@ impl Sources {
                 Ok(record) => {
                     sources.winds.insert(entry.id, record);
                 }
-                Err(why) => sources.failures.push(Failure { what: format!("wind record {}", entry.name), why }),
+                Err(why) => {
+                    sources.failures.push(Failure { what: format!("wind record {}", entry.name), why })
+                }
             }
         }
         sources

@@ -54,12 +54,15 @@ pub fn read(
 ) -> Result<PatchPixels, RasterError> {
     const MARGIN: f64 = 16.0;
     let info = open.raster.info();
-    let bounds = patch.outline.bounds().unwrap_or_else(|| crate::ground::Bounds {
-        min: Point::new(0.0, 0.0),
-        max: Point::new(0.0, 0.0),
-    });
+    let bounds = patch
+        .outline
+        .bounds()
+        .unwrap_or_else(|| crate::ground::Bounds { min: Point::new(0.0, 0.0), max: Point::new(0.0, 0.0) });
     let clamp = |x: f64, most: usize| x.clamp(0.0, most as f64) as usize;
-    let (col, row) = (clamp((bounds.min.x - MARGIN).floor(), info.width), clamp((bounds.min.y - MARGIN).floor(), info.height));
+    let (col, row) = (
+        clamp((bounds.min.x - MARGIN).floor(), info.width),
+        clamp((bounds.min.y - MARGIN).floor(), info.height),
+    );
     let right = clamp((bounds.max.x + MARGIN).ceil(), info.width);
     let lower = clamp((bounds.max.y + MARGIN).ceil(), info.height);
     let window = Window { col, row, width: right.saturating_sub(col), height: lower.saturating_sub(row) };

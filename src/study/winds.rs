@@ -68,7 +68,11 @@ pub fn study(
         rows: a.rows,
         used: a.used,
         calm: a.calm,
-        set_aside: a.set_aside.into_iter().map(|s| SetAside { code: s.code, count: s.count, text: s.text }).collect(),
+        set_aside: a
+            .set_aside
+            .into_iter()
+            .map(|s| SetAside { code: s.code, count: s.count, text: s.text })
+            .collect(),
         span: a.span,
         interval_s: a.interval_s,
         fryberger: a.fryberger.map(drift),
@@ -77,7 +81,11 @@ pub fn study(
         threshold_ustar: a.threshold_ustar,
         threshold_speed_at_height: a.threshold_speed_at_height,
         rose: a.rose,
-        seasons: a.seasons.into_iter().map(|s| SeasonFinding { name: s.name, drift: drift(s.drift) }).collect(),
+        seasons: a
+            .seasons
+            .into_iter()
+            .map(|s| SeasonFinding { name: s.name, drift: drift(s.drift) })
+            .collect(),
         cautions: a.cautions,
     };
     Ok(WindStudy { finding, regime: a.regime, draws: a.draws })
@@ -112,7 +120,10 @@ pub fn other_body(entry: &WindEntry, raster_body: &Body) -> Option<Caution> {
     (body != raster_body.name).then(|| {
         Caution::new(
             "other-body",
-            format!("The record “{}” is taken on {body}, the raster lies on {}.", entry.name, raster_body.name),
+            format!(
+                "The record “{}” is taken on {body}, the raster lies on {}.",
+                entry.name, raster_body.name
+            ),
         )
     })
 }

@@ -28,10 +28,24 @@ fn the_demo_prints_its_findings_and_leaves_everything_behind() {
         assert!(out.contains(words), "{words} is missing in\n{out}");
     }
     let findings = folder.path().join("reach/findings");
-    for file in ["findings.json", "patches.csv", "nodes.csv", "winds.csv", "findings.gpkg", "overview.svg", "overview.png", "overview.pdf"] {
-        assert!(findings.join(file).is_file(), "{file} is missing; there is {:?}", fs::read_dir(&findings).unwrap().map(|e| e.unwrap().file_name()).collect::<Vec<_>>());
+    for file in [
+        "findings.json",
+        "patches.csv",
+        "nodes.csv",
+        "winds.csv",
+        "findings.gpkg",
+        "overview.svg",
+        "overview.png",
+        "overview.pdf",
+    ] {
+        assert!(
+            findings.join(file).is_file(),
+            "{file} is missing; there is {:?}",
+            fs::read_dir(&findings).unwrap().map(|e| e.unwrap().file_name()).collect::<Vec<_>>()
+        );
     }
-    let json: serde_json::Value = serde_json::from_str(&fs::read_to_string(findings.join("findings.json")).unwrap()).unwrap();
+    let json: serde_json::Value =
+        serde_json::from_str(&fs::read_to_string(findings.join("findings.json")).unwrap()).unwrap();
     assert_eq!(json["format"], 1);
     assert_eq!(json["patches"].as_array().unwrap().len(), 3);
     // The sheet it left gives the same findings again.
@@ -49,7 +63,12 @@ fn the_demo_prints_its_findings_and_leaves_everything_behind() {
 fn a_file_that_is_no_raster_is_refused_in_words() {
     let folder = tempfile::tempdir().unwrap();
     fs::write(folder.path().join("notes.tif"), "these are notes").unwrap();
-    for args in [vec!["look", "notes.tif"], vec!["measure", "notes.tif"], vec!["look", "absent.tif"], vec!["run", "notes.tif"]] {
+    for args in [
+        vec!["look", "notes.tif"],
+        vec!["measure", "notes.tif"],
+        vec!["look", "absent.tif"],
+        vec!["run", "notes.tif"],
+    ] {
         let output = ventifact(&args, folder.path());
         let err = text(&output.stderr);
         assert_eq!(output.status.code(), Some(2), "{args:?}: {err}");

@@ -59,9 +59,14 @@ fn trends_and_spacings_hold_the_truth_within_their_intervals() {
         println!("{name}: trend {:.2} ± {half:.2}, truth {:.2}", axis.deg(), want.deg());
         assert!(axis.separation(want) <= half, "{name}: trend {axis:?} ± {half}, truth {want:?}");
         assert!(half < 6.0, "{name}: the interval ± {half}° says too little");
-        let (spacing, [low, high]) = (finding.spectrum.spacing.unwrap(), finding.spectrum.spacing_ci95.unwrap());
+        let (spacing, [low, high]) =
+            (finding.spectrum.spacing.unwrap(), finding.spectrum.spacing_ci95.unwrap());
         println!("{name}: spacing {spacing:.0} m ({low:.0} to {high:.0}), truth {}", bedforms.spacing_m);
-        assert!((low..=high).contains(&bedforms.spacing_m), "{name}: spacing {low} to {high}, truth {}", bedforms.spacing_m);
+        assert!(
+            (low..=high).contains(&bedforms.spacing_m),
+            "{name}: spacing {low} to {high}, truth {}",
+            bedforms.spacing_m
+        );
         assert!(high - low < 0.3 * spacing, "{name}: spacing interval {low} to {high} says too little");
     }
 }
@@ -82,8 +87,8 @@ fn the_classes_are_the_ones_the_winds_were_made_for() {
         let (finding, truth) = patch(name);
         let verdict = &finding.verdicts[0];
         let p = verdict.probabilities.unwrap_or_else(|| panic!("{name}: {:?}", verdict.refused));
-        let class = ["longitudinal", "oblique", "transverse"]
-            [(0..3).max_by(|a, b| p[*a].total_cmp(&p[*b])).unwrap()];
+        let class =
+            ["longitudinal", "oblique", "transverse"][(0..3).max_by(|a, b| p[*a].total_cmp(&p[*b])).unwrap()];
         println!("{name}: {p:?}, obliquity {:?} {:?}", verdict.obliquity_deg, verdict.obliquity_ci95_deg);
         assert_eq!(Some(class), truth.class, "{name}: {}", finding.sentence);
     }
@@ -101,7 +106,10 @@ fn one_thread_and_two_give_the_same_bits_and_so_does_the_memo() {
     assert!(with(1) == *findings, "one thread");
     assert!(with(2) == *findings, "from the memo");
     let fresh = rayon::ThreadPoolBuilder::new().num_threads(2).build().unwrap();
-    assert!(fresh.install(|| run(sheet, &sources, &Memo::default(), &Work::quiet()).unwrap()) == *findings, "two threads");
+    assert!(
+        fresh.install(|| run(sheet, &sources, &Memo::default(), &Work::quiet()).unwrap()) == *findings,
+        "two threads"
+    );
 }
 
 #[test]
@@ -109,6 +117,10 @@ fn nodes_lie_inside_their_patch() {
     let (sheet, findings, _) = reach_findings();
     for finding in &findings.patches {
         let outline = &sheet.patch(finding.id).unwrap().outline;
-        assert!(finding.trend.nodes.iter().all(|n| outline.contains(Point::new(n.at.x, n.at.y))), "{}", finding.name);
+        assert!(
+            finding.trend.nodes.iter().all(|n| outline.contains(Point::new(n.at.x, n.at.y))),
+            "{}",
+            finding.name
+        );
     }
 }

@@ -239,7 +239,13 @@ fn srs(open: &OpenRaster) -> Srs {
     Srs::of_place(&open.place, &open.label, epsg)
 }
 
-fn patch_layer(sheet: &Sheet, open: &OpenRaster, patches: &[&PatchFinding], srs: &Srs, suffix: &str) -> Layer {
+fn patch_layer(
+    sheet: &Sheet,
+    open: &OpenRaster,
+    patches: &[&PatchFinding],
+    srs: &Srs,
+    suffix: &str,
+) -> Layer {
     let rows = patches
         .iter()
         .filter_map(|finding| {
@@ -263,7 +269,8 @@ fn stroke_layer(open: &OpenRaster, patches: &[&PatchFinding], srs: &Srs, suffix:
     let mut rows = Vec::new();
     for patch in patches {
         for node in patch.trend.nodes.iter().filter(|n| n.significant) {
-            let Some(line) = stroke(&open.place, node.at, node.axis.deg(), 0.8 * patch.trend.node_step_px) else {
+            let Some(line) = stroke(&open.place, node.at, node.axis.deg(), 0.8 * patch.trend.node_step_px)
+            else {
                 continue;
             };
             rows.push(Row {
