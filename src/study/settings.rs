@@ -122,7 +122,7 @@ impl Default for WindSettings {
             threshold_law: ThresholdLaw::ShaoLu,
             transport_law: TransportLaw::Kok,
             greatest_speed: 75.0,
-            block_days: 30.0,
+            block_days: 7.0,
             resamples: 1000,
         }
     }

@@ -2,9 +2,9 @@
 
 use crate::ground::{Caution, SandFlow, Seed, WindRecord, WindSample, Work};
 
-use super::bootstrap::{CELLS_PER_BLOCK, Cells, FEWEST_BLOCKS, intervals, starts};
+use super::bootstrap::{CELLS_PER_BLOCK, Cells, FEWEST_BLOCKS, Plan, intervals};
 use super::drift_potential;
-use super::mill::{Mill, Variant};
+use super::mill::{Mill, Variant, YEAR_S};
 use super::quality::{self, Checked, SetAside};
 use super::regime::{Drift, Season, flows, gathered, rose, seasons};
 use super::settings::{Site, Transport, WindError, WindSettings};
@@ -76,6 +76,7 @@ pub fn assess(
 
     let per_cell = rows_per_cell(kept.len(), interval_s, settings.block_days);
     let cells = Cells::cut(&flows_of_rows, per_cell);
+    let plan = Plan::new(cells.count(), interval_s.map(|step| YEAR_S / step / per_cell as f64));
     let can_draw = !record.is_table && cells.count() >= FEWEST_BLOCKS * CELLS_PER_BLOCK && flux.total > 0.0;
     let fryberger = site.is_earth.then(|| {
         let (dp, _) = flows(&kept, |v| mill.drift_potential(v));
@@ -84,7 +85,7 @@ pub fn assess(
     let fryberger = match fryberger {
         Some((mut drift, dp_cells)) => {
             if can_draw && drift.total > 0.0 {
-                intervals(&mut drift, &dp_cells, settings.resamples, seed, work)?;
+                intervals(&mut drift, &dp_cells, &plan, settings.resamples, seed, work)?;
             }
             Some(drift)
         }
@@ -94,14 +95,14 @@ pub fn assess(
     let variants = mill.variants();
     let sensitivity = variants.iter().map(|v| sensitivity(v, &kept)).collect();
     if can_draw {
-        intervals(&mut flux, &cells, settings.resamples, seed, work)?;
+        intervals(&mut flux, &cells, &plan, settings.resamples, seed, work)?;
         let cut: Vec<Cells> =
             variants.iter().map(|v| Cells::cut(&flows(&kept, |u| v.mill.flux(u)).0, per_cell)).collect();
         work.phase("resampling winds under all laws", u64::from(settings.resamples));
         for index in 0..settings.resamples {
             work.advance(1)?;
             let which = &cut[index as usize % cut.len()];
-            draws.push(which.draw(&starts(which.count(), seed, u64::from(index))));
+            draws.push(which.draw(&plan.starts(seed, u64::from(index))));
         }
     }
     if settings.transport == Transport::DriftPotential && !site.is_earth {

@@ -13,15 +13,16 @@ pub const METHOD: Method = Method {
     name: "Circular block bootstrap of the wind record",
     question: "How far could drift and prediction differ had another stretch of weather been recorded?",
     formula: "record = cells of b/30 of block length b, in order of time, closed to a ring; each draw = ⌈n/30⌉ blocks from \
-              random starts; interval = 95 % of |turn| about the estimate, and percentiles of the ratio",
+              random starts, each within a month of the time of year it stands for; interval = 95 % of |turn| \
+              about the estimate, and percentiles of the ratio",
     symbols: &[
         Symbol { symbol: "b", meaning: "block length", unit: "d" },
         Symbol { symbol: "n", meaning: "number of cells", unit: "1" },
     ],
     assumptions: &["Blocks are longer than weather remembers", "The years to come are like the record"],
     limits: &[
-        "In a record of one year, seasons are drawn as if they were chance: the interval errs on the wide side",
         "Change between years is not in a short record",
+        "Without a clock, or in less than a year, the seasons are drawn as if they were chance",
     ],
     sources: &[
         Source {
@@ -124,10 +125,41 @@ impl Cells {
     }
 }
 
-/// Block starts of draw `index` for a record of `cells` cells.
-pub fn starts(cells: usize, seed: Seed, index: u64) -> Vec<usize> {
-    let mut stream = seed.stream("wind.block-bootstrap", index);
-    (0..cells.div_ceil(CELLS_PER_BLOCK)).map(|_| stream.random_range(0..cells)).collect()
+/// Which blocks may stand at which place of a draw.
+///
+/// The seasons come every year: drawn freely they would be treated as chance, and a record of two
+/// opposite seasons would seem to say nothing. So a block is drawn from the same time of year as
+/// the place it fills (seasonal block bootstrap).
+#[derive(Clone, Debug)]
+pub struct Plan {
+    /// Per block of the record, the cells it may begin at.
+    candidates: Vec<Vec<usize>>,
+}
+
+impl Plan {
+    /// For a record of `cells` cells; `cells_per_year` when it has a clock.
+    pub fn new(cells: usize, cells_per_year: Option<f64>) -> Self {
+        let year = cells_per_year.filter(|year| cells as f64 >= 0.95 * year);
+        let candidates = (0..cells.div_ceil(CELLS_PER_BLOCK))
+            .map(|block| {
+                let place = (block * CELLS_PER_BLOCK) as f64;
+                let same_season = |cell: &usize| {
+                    year.is_none_or(|year| {
+                        let apart = (*cell as f64 - place).rem_euclid(year);
+                        apart.min(year - apart) <= year / 12.0
+                    })
+                };
+                (0..cells).filter(same_season).collect()
+            })
+            .collect();
+        Self { candidates }
+    }
+
+    /// Block starts of draw `index`.
+    pub fn starts(&self, seed: Seed, index: u64) -> Vec<usize> {
+        let mut stream = seed.stream("wind.block-bootstrap", index);
+        self.candidates.iter().map(|cells| cells[stream.random_range(0..cells.len())]).collect()
+    }
 }
 
 /// Fills in the intervals of `drift` from `resamples` draws of `cells`.
@@ -137,6 +169,7 @@ pub fn starts(cells: usize, seed: Seed, index: u64) -> Vec<usize> {
 pub fn intervals(
     drift: &mut Drift,
     cells: &Cells,
+    plan: &Plan,
     resamples: u32,
     seed: Seed,
     work: &Work,
@@ -146,7 +179,7 @@ pub fn intervals(
     let mut ratios = Vec::with_capacity(resamples as usize);
     for index in 0..u64::from(resamples) {
         work.advance(1)?;
-        let drawn = Drift::of(&cells.draw(&starts(cells.count(), seed, index)), drift.unit);
+        let drawn = Drift::of(&cells.draw(&plan.starts(seed, index)), drift.unit);
         ratios.extend(drawn.ratio);
         turns.extend(drift.toward.zip(drawn.toward).map(|(a, b)| b.turn_from(a).abs()));
     }
@@ -174,7 +207,7 @@ mod tests {
         let flows = vec![flow(33.0, 2.0); 400];
         let cells = Cells::cut(&flows, 2);
         for index in 0..5 {
-            let drawn = cells.draw(&starts(cells.count(), Seed(1), index));
+            let drawn = cells.draw(&Plan::new(cells.count(), None).starts(Seed(1), index));
             assert_eq!(drawn.len(), 1);
             crate::assert_close!(drawn[0].weight, 800.0, 1e-9, "total");
             crate::assert_close!(drawn[0].toward.deg(), 33.0, 1e-9, "mean direction inside the sector");
@@ -183,9 +216,26 @@ mod tests {
 
     #[test]
     fn draws_depend_on_seed_and_index_only() {
-        assert_eq!(starts(100, Seed(4), 7), starts(100, Seed(4), 7));
-        assert_ne!(starts(100, Seed(4), 7), starts(100, Seed(4), 8));
-        assert_ne!(starts(100, Seed(4), 7), starts(100, Seed(5), 7));
+        let plan = Plan::new(100, None);
+        assert_eq!(plan.starts(Seed(4), 7), plan.starts(Seed(4), 7));
+        assert_ne!(plan.starts(Seed(4), 7), plan.starts(Seed(4), 8));
+        assert_ne!(plan.starts(Seed(4), 7), plan.starts(Seed(5), 7));
+    }
+
+    #[test]
+    fn opposite_seasons_stay_in_every_draw() {
+        // Half a year toward 20°, half toward 140°: the resultant is 80° in every draw, near enough.
+        let flows: Vec<_> = (0..1500).map(|i| flow(if i < 750 { 20.0 } else { 140.0 }, 1.0)).collect();
+        let regime: Vec<SandFlow> = flows.iter().flatten().copied().collect();
+        let cells = Cells::cut(&flows, 1);
+        let half_with = |year: Option<f64>| {
+            let mut drift = Drift::of(&regime, "u");
+            let plan = Plan::new(cells.count(), year);
+            intervals(&mut drift, &cells, &plan, 500, Seed(3), &Work::quiet()).expect("not stopped");
+            drift.toward_ci95_half_deg.expect("an interval")
+        };
+        let (seasonal, free) = (half_with(Some(1500.0)), half_with(None));
+        assert!(seasonal < 0.6 * free, "with the seasons kept ± {seasonal}, without ± {free}");
     }
 
     /// Two directions at random a cell at a time: the ratio's scatter is known from counting.
@@ -201,7 +251,9 @@ mod tests {
             .collect();
         let regime: Vec<SandFlow> = flows.iter().flatten().copied().collect();
         let mut drift = Drift::of(&regime, "u");
-        intervals(&mut drift, &Cells::cut(&flows, 1), 1000, Seed(2), &Work::quiet()).expect("not stopped");
+        let cells = Cells::cut(&flows, 1);
+        let plan = Plan::new(cells.count(), None);
+        intervals(&mut drift, &cells, &plan, 1000, Seed(2), &Work::quiet()).expect("not stopped");
         // toward = atan(p/(1−p)) near 45°: sd = sd(p)·d/dp = √(¼/200)·2 rad = 4.05°. Starts inside
         // blocks mix neighbours, which lowers the variance by a third.
         let half = drift.toward_ci95_half_deg.expect("an interval");

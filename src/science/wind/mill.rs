@@ -6,7 +6,8 @@ use super::log_law::{friction_ratio, speed_at};
 use super::settings::{Site, Transport, WindError, WindSettings};
 use super::threshold::{Bed, Threshold};
 
-const YEAR_S: f64 = 365.25 * 86_400.0;
+/// Seconds in a year.
+pub(super) const YEAR_S: f64 = 365.25 * 86_400.0;
 const FLUX_UNIT: &str = "kg/m/yr";
 /// Impact threshold over fluid threshold (Bagnold's A 0.08 over 0.10): between them lies what keeps
 /// sand moving, so both enter the spread of predictions.
