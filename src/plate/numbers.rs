@@ -92,7 +92,7 @@ pub fn azimuth_with_interval(azimuth: Azimuth, half_deg: Option<f64>) -> String 
 }
 
 /// Never prints the period itself: 179.97 with one decimal is 0.0.
-fn angle(deg: f64, decimals: usize, period: f64) -> String {
+pub(super) fn angle(deg: f64, decimals: usize, period: f64) -> String {
     let step = 10f64.powi(decimals as i32);
     fixed((deg * step).round() / step % period, decimals)
 }
@@ -147,6 +147,14 @@ pub fn round_up(value: f64) -> f64 {
     let steps = [1.0, 1.2, 1.6, 2.0, 2.4, 2.8, 3.2, 3.6, 4.0, 5.0, 6.0, 8.0, 10.0];
     let step = steps.into_iter().find(|s| s * decade >= value * (1.0 - 1e-9)).unwrap_or(10.0);
     step * decade
+}
+
+/// The number of 1, 1.5, 2, 2.5, 3, 4, 5, 6, 8 times a power of ten nearest to `value` by ratio.
+pub(super) fn round_spacing(value: f64) -> f64 {
+    let decade = 10f64.powf(value.log10().floor());
+    let off = |step: f64| (step * decade / value).ln().abs();
+    let steps = [1.0, 1.5, 2.0, 2.5, 3.0, 4.0, 5.0, 6.0, 8.0, 10.0];
+    steps.into_iter().min_by(|a, b| off(*a).total_cmp(&off(*b))).unwrap_or(1.0) * decade
 }
 
 /// The largest of 1, 2, 5 times a power of ten that is not above `value`; 0 for 0.

@@ -1,10 +1,14 @@
 //! Plates of invented findings from Sorrel Reach: exact bytes twice, real text, no tofu. Set
 //! `VENTIFACT_PICTURES` to a folder to look at them.
 
-use ventifact::ground::{Axis, Azimuth, SandFlow};
+use ventifact::ground::{Axis, Azimuth, Grid, LengthUnit, Point, SandFlow};
 use ventifact::plate::{Figure, Item, PngSize, Theme, font};
-use ventifact::plate::{dial, pdf, png, posterior_bars, rose, sand_rose, small_rose, svg, verdict_bar};
-use ventifact::study::{DriftFinding, Id, ModeFinding, TheoryFinding, TrendFinding, VerdictFinding};
+use ventifact::plate::{
+    dial, modes, pdf, png, posterior_bars, profile, rose, sand_rose, small_rose, spectrum,
+};
+use ventifact::plate::{svg, verdict_bar};
+use ventifact::study::{DriftFinding, Id, ModeFinding, SpectrumFinding, SpectrumPicture};
+use ventifact::study::{TheoryFinding, TrendFinding, VerdictFinding};
 
 /// A trend about `axis` with the given spread of the rose.
 pub fn trend(axis: f64, spread: f64) -> TrendFinding {
@@ -121,6 +125,46 @@ pub fn verdict() -> VerdictFinding {
     }
 }
 
+/// A peak across an axis of 84° at `spacing` metres, on 25 m pixels.
+pub fn peak(spacing: f64) -> SpectrumFinding {
+    let (size, edge) = (129usize, 0.02);
+    let normal = Axis::from_deg(84.0).perpendicular().azimuth();
+    let (e, n) = normal.east_north();
+    let log_ratio = Grid::from_fn(size, size, |col, row| {
+        let f = |i: usize| (i as f64 - 64.0) / 64.0 * edge;
+        let (x, y) = (f(col), -f(row));
+        let bump = |sign: f64| {
+            let (dx, dy) = (x - sign * e / spacing, y - sign * n / spacing);
+            let (across, along) = (dx * e + dy * n, dx * n - dy * e);
+            1.6 * (-0.5 * ((across / 0.0005).powi(2) + (along / 0.0007).powi(2))).exp()
+        };
+        let ripple = 0.12 * ((col * 37 + row * 91) % 17) as f64 / 17.0;
+        (bump(1.0) + bump(-1.0) + ripple) as f32
+    });
+    let profile = (0..60)
+        .map(|i| {
+            let wavelength = 100.0 * 40f64.powf(f64::from(i) / 59.0);
+            let bump = 34.0 * (-0.5 * ((wavelength / spacing).ln() / 0.12).powi(2)).exp();
+            [wavelength, bump + 0.8 + 0.3 * f64::from(i * 7 % 5) / 5.0]
+        })
+        .collect();
+    SpectrumFinding {
+        defined: true,
+        axis: Some(Axis::from_deg(84.0)),
+        axis_ci95_half_deg: Some(2.2),
+        spacing: Some(spacing),
+        spacing_ci95: Some([0.95 * spacing, 1.06 * spacing]),
+        p: Some(3e-9),
+        spread_deg: Some(7.0),
+        windows: 14,
+        windows_with_peak: 12,
+        window_px: 256,
+        cycles: Some(9.8),
+        picture: Some(SpectrumPicture { log_ratio, edge_frequency: edge }),
+        profile,
+    }
+}
+
 fn refused() -> VerdictFinding {
     VerdictFinding {
         refused: Some(
@@ -132,6 +176,11 @@ fn refused() -> VerdictFinding {
         obliquity_ci95_deg: None,
         ..verdict()
     }
+}
+
+fn two_trends() -> TrendFinding {
+    let mode = |deg, weight| ModeFinding { axis: Axis::from_deg(deg), weight, kappa_doubled: 7.2 };
+    TrendFinding { modes: vec![mode(12.0, 0.31), mode(96.0, 0.69)], ..trend(96.0, 20.0) }
 }
 
 /// Figures in rows on one page, for looking at.
@@ -148,7 +197,7 @@ fn contact_sheet(figures: &[Figure], columns: usize, theme: &Theme) -> Figure {
     let width = gap + columns as f64 * (cell + gap);
     let mut page = Figure::blank(width, y, theme.paper);
     for (x, y, figure) in items {
-        page.place(figure, ventifact::ground::Point::new(x, y));
+        page.place(figure, Point::new(x, y));
     }
     page
 }
@@ -181,6 +230,9 @@ fn small_figures(theme: &Theme) -> Vec<Figure> {
         dial(&verdict(), 56.0, theme),
         dial(&refused(), 56.0, theme),
         posterior_bars(&verdict(), 56.0, theme),
+        spectrum(&peak(650.0), LengthUnit::Metre, 56.0, theme),
+        profile(&peak(650.0), LengthUnit::Metre, 56.0, theme),
+        modes(&two_trends(), 56.0, theme),
         small_rose(&trend(84.2, 14.0), 12.0, theme),
         small_rose(&no_trend(), 12.0, theme),
         verdict_bar(Some(&verdict()), [30.0, 2.4], theme),
