@@ -2,11 +2,16 @@
 //! same figures, so that a rose looks the same on screen and in print.
 
 mod bars;
+mod caption;
 mod dial;
 mod figure;
 pub mod font;
+pub mod map;
 mod modes;
 pub mod numbers;
+mod overview_plate;
+mod page;
+mod patch_plate;
 mod profile;
 mod rose;
 mod sand_rose;
@@ -16,9 +21,12 @@ mod theme;
 mod write;
 
 pub use bars::{posterior_bars, verdict_bar};
+pub use caption::Recipe;
 pub use dial::{CLASS_LIMITS_DEG, CLASS_NAMES, dial};
 pub use figure::{Figure, Fill, HALO, Item, Rgba, Stroke, TextAnchor};
 pub use modes::modes;
+pub use overview_plate::{OverviewPlate, overview_plate};
+pub use patch_plate::{PatchPlate, patch_plate};
 pub use profile::profile;
 pub use rose::{rose, small_rose};
 pub use sand_rose::sand_rose;

@@ -1,0 +1,196 @@
+//! What is printed under a plate: methods with their sources, cautions, and the recipe that
+//! reproduces it.
+
+use crate::ground::{Caution, Method, Read, Source};
+use crate::study::{PatchFinding, WindFinding};
+
+/// What made a plate.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Recipe {
+    /// Name and version, `"Ventifact 0.1.0"`.
+    pub program: String,
+    pub sheet_title: String,
+    pub sheet_fingerprint: String,
+    pub seed: u64,
+}
+
+/// Methods that stand behind every trend.
+const TREND: &[&str] =
+    &["orientation.structure-tensor", "orientation.noise-floor", "axial.mean", "axial.rayleigh"];
+const INTERVAL: &[&str] = &["axial.interval", "axial.effective-number"];
+const BOOTSTRAP: &str = "axial.block-bootstrap";
+const MIXTURE: &str = "axial.mixture";
+const SPECTRUM: &[&str] = &["orientation.spectrum"];
+const WINDS: &[&str] = &["wind.log-law", "wind.transport-law", "wind.resultant-drift"];
+const VERDICT: &[&str] = &["alignment.obliquity", "alignment.bayes-factor"];
+
+/// Where sand moves, people may be in its way.
+pub(super) const SAFETY: &str = "Where roads, buildings or people may lie in the path of moving sand, local codes and \
+     licensed practice decide; this plate is evidence for them and no design.";
+
+/// The keys of the methods a patch's results rest on, in the order of the reasoning.
+pub(super) fn methods_of(patch: &PatchFinding) -> Vec<&'static str> {
+    let mut keys: Vec<&'static str> = TREND.to_vec();
+    keys.extend(INTERVAL);
+    if patch.trend.ci95_source == "block bootstrap" {
+        keys.push(BOOTSTRAP);
+    }
+    if patch.trend.modes.len() > 1 {
+        keys.push(MIXTURE);
+    }
+    if patch.spectrum.windows > 0 {
+        keys.extend(SPECTRUM);
+    }
+    if !patch.verdicts.is_empty() {
+        keys.extend(WINDS);
+        keys.extend(VERDICT);
+        for theory in patch.verdicts.iter().flat_map(|v| &v.theories) {
+            if !keys.contains(&theory.method) {
+                keys.push(theory.method);
+            }
+        }
+    }
+    keys
+}
+
+/// `"Methods: structure tensor (Bigün & Granlund 1987*); … * cited from memory."` for the keys that
+/// `known` holds, each method once.
+pub(super) fn cited(keys: &[&str], known: &[&Method]) -> String {
+    let mut remarks: Vec<Read> = Vec::new();
+    let mut parts = Vec::new();
+    for key in keys {
+        let Some(method) = known.iter().find(|m| m.id == *key) else { continue };
+        let sources: Vec<String> = method.sources.iter().map(|s| short(s, &mut remarks)).collect();
+        let name = method.name;
+        parts.push(if sources.is_empty() {
+            name.to_owned()
+        } else {
+            format!("{name} ({})", sources.join("; "))
+        });
+    }
+    if parts.is_empty() {
+        return String::new();
+    }
+    let mut text = format!("Methods: {}.", parts.join("; "));
+    let notes: Vec<String> =
+        remarks.iter().map(|read| format!("{} {}", mark(*read), read.remark())).collect();
+    if !notes.is_empty() {
+        text += &format!(" {}.", notes.join(", "));
+    }
+    text
+}
+
+/// `"Bigün & Granlund 1987*"`; three authors or more become "et al.".
+fn short(source: &Source, remarks: &mut Vec<Read>) -> String {
+    if !source.read.remark().is_empty() && !remarks.contains(&source.read) {
+        remarks.push(source.read);
+    }
+    if source.read == Read::Derived {
+        return format!("this program{}", mark(source.read));
+    }
+    let authors: Vec<&str> = source.authors.split("; ").flat_map(|part| part.split(" and ")).collect();
+    let surname = |author: &str| author.split(',').next().unwrap_or(author).trim().to_owned();
+    let names = match authors.as_slice() {
+        [] => String::new(),
+        [one] => surname(one),
+        [one, two] => format!("{} & {}", surname(one), surname(two)),
+        [first, ..] => format!("{} et al.", surname(first)),
+    };
+    let locator = if source.locator.is_empty() { String::new() } else { format!(", {}", source.locator) };
+    format!("{names} {}{locator}{}", source.year, mark(source.read))
+}
+
+fn mark(read: Read) -> &'static str {
+    match read {
+        Read::Opened => "",
+        Read::Abstract => "†",
+        Read::Memory => "*",
+        Read::Derived => "‡",
+    }
+}
+
+/// All cautions of a patch, its verdicts and the winds behind them; each text once.
+pub(super) fn cautions(patch: &PatchFinding, winds: &[WindFinding]) -> Vec<Caution> {
+    let of_verdicts = patch.verdicts.iter().flat_map(|v| &v.cautions);
+    let of_winds =
+        winds.iter().filter(|w| patch.verdicts.iter().any(|v| v.winds == w.id)).flat_map(|w| &w.cautions);
+    let mut all: Vec<Caution> = Vec::new();
+    for caution in patch.cautions.iter().chain(of_verdicts).chain(of_winds) {
+        if !all.iter().any(|c| c.text == caution.text) {
+            all.push(caution.clone());
+        }
+    }
+    all
+}
+
+/// `"Ventifact 0.1.0 · sheet “Sorrel Reach” 1f3a9c2e04b7 · seed 1"`.
+pub(super) fn recipe_line(recipe: &Recipe, finding: Option<&str>) -> String {
+    let brief = |hash: &str| hash.chars().take(12).collect::<String>();
+    let mut line = format!(
+        "{} · sheet “{}” {} · seed {}",
+        recipe.program,
+        recipe.sheet_title,
+        brief(&recipe.sheet_fingerprint),
+        recipe.seed
+    );
+    if let Some(finding) = finding {
+        line += &format!(" · finding {}", brief(finding));
+    }
+    line
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    const SOURCE: Source = Source {
+        key: "bigun1987",
+        authors: "Bigün, J. and Granlund, G. H.",
+        year: 1987,
+        title: "Optimal orientation detection of linear symmetry",
+        published: "ICCV",
+        locator: "",
+        read: Read::Memory,
+    };
+    const METHOD: Method = Method {
+        id: "orientation.structure-tensor",
+        name: "structure tensor",
+        question: "",
+        formula: "",
+        symbols: &[],
+        assumptions: &[],
+        limits: &[],
+        sources: &[
+            SOURCE,
+            Source {
+                authors: "A, B.; C, D.; E, F.",
+                year: 2001,
+                locator: "eq. 3",
+                read: Read::Opened,
+                ..SOURCE
+            },
+        ],
+    };
+
+    #[test]
+    fn citations_are_short_and_say_how_they_were_read() {
+        let text = cited(&["orientation.structure-tensor", "no.such"], &[&METHOD]);
+        assert_eq!(
+            text,
+            "Methods: structure tensor (Bigün & Granlund 1987*; A et al. 2001, eq. 3). * cited from memory."
+        );
+        assert_eq!(cited(&["no.such"], &[&METHOD]), "");
+    }
+
+    #[test]
+    fn the_recipe_names_program_sheet_and_seed() {
+        let recipe = Recipe {
+            program: "Ventifact 0.1.0".into(),
+            sheet_title: "Sorrel Reach".into(),
+            sheet_fingerprint: "0123456789abcdef".into(),
+            seed: 7,
+        };
+        let line = recipe_line(&recipe, Some("ff00"));
+        assert_eq!(line, "Ventifact 0.1.0 · sheet “Sorrel Reach” 0123456789ab · seed 7 · finding ff00");
+    }
+}

@@ -1,0 +1,148 @@
+//! The plate of one patch: its map, trend, spacing, winds and verdicts, the finding in words, the
+//! cautions, and what it rests on.
+
+use crate::ground::{LengthUnit, Polygon};
+use crate::science;
+use crate::study::{PatchFinding, RasterFinding, WindFinding};
+
+use super::caption::{self, Recipe};
+use super::map::{MapPatch, MapView, map};
+use super::page::{Block, GAP_MM, Page};
+use super::sketch::Type;
+use super::{Figure, Theme, bars, dial, modes, numbers, profile, rose, sand_rose, spectrum};
+
+/// All that a patch plate shows.
+#[derive(Clone, Debug)]
+pub struct PatchPlate<'a> {
+    pub patch: &'a PatchFinding,
+    /// In full-resolution pixels, like the outlines of the neighbours.
+    pub outline: &'a Polygon,
+    /// Other patches of the raster, by name.
+    pub neighbours: Vec<(&'a str, &'a Polygon)>,
+    pub raster: &'a RasterFinding,
+    pub view: MapView<'a>,
+    /// The records its verdicts name; others are left out.
+    pub winds: &'a [WindFinding],
+    pub recipe: &'a Recipe,
+}
+
+const COLUMNS: usize = 3;
+
+/// The plate, `width_mm` wide (180 suits two journal columns), as high as it needs.
+pub fn patch_plate(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Figure {
+    let patch = plate.patch;
+    let mut page = Page::new(width_mm, theme);
+    page.title(&patch.name, &format!("{} · {}", plate.raster.name, plate.raster.body));
+    page.paragraph(&patch.sentence, Type::new(theme.text.heading, theme.ink));
+    page.space(2.0);
+
+    let column = (page.room() - (COLUMNS - 1) as f64 * GAP_MM) / COLUMNS as f64;
+    let wide = 2.0 * column + GAP_MM;
+    let top = page.y;
+    let trend = Block { heading: "Trend".into(), figure: rose(&patch.trend, column, theme) };
+    let picture = patch_map(plate, [wide, 1.05 * wide], theme);
+    page.put(&picture, 0.0, top + 0.6);
+    let below = top + picture.height_mm + 0.7 * GAP_MM;
+    let mut tops = [below, below, top];
+    page.columns(&[trend], column, &mut tops);
+    page.columns(&evidence(plate, column, theme), column, &mut tops);
+
+    let cautions = caption::cautions(patch, plate.winds);
+    if !cautions.is_empty() {
+        let head = page.heading("Cautions", 0.0, page.y, page.room());
+        page.space(head);
+        page.cautions(&cautions);
+    }
+    page.finish(&notes(plate), plate.recipe, Some(&patch.fingerprint))
+}
+
+fn patch_map(plate: &PatchPlate, size_mm: [f64; 2], theme: &Theme) -> Figure {
+    let neighbours = plate.neighbours.iter().map(|(name, outline)| MapPatch {
+        name,
+        outline,
+        nodes: &[],
+        rose: None,
+        is_subject: false,
+    });
+    let subject = MapPatch {
+        name: &plate.patch.name,
+        outline: plate.outline,
+        nodes: &plate.patch.trend.nodes,
+        rose: None,
+        is_subject: true,
+    };
+    let patches: Vec<MapPatch> = neighbours.chain([subject]).collect();
+    map(&plate.view, &patches, size_mm, theme)
+}
+
+/// What follows the rose, in the order of the reasoning.
+fn evidence(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
+    let patch = plate.patch;
+    let block = |heading: String, figure: Figure| Block { heading, figure };
+    let mut blocks = Vec::new();
+    if patch.trend.modes.len() > 1 {
+        blocks.push(block("Several trends".into(), modes(&patch.trend, width_mm, theme)));
+    }
+    if patch.spectrum.windows > 0 {
+        blocks.push(block("Spacing".into(), spectrum(&patch.spectrum, patch.unit, width_mm, theme)));
+        let figure = profile(&patch.spectrum, patch.unit, width_mm, theme);
+        blocks.push(block("Power across the crests".into(), figure));
+    }
+    for verdict in &patch.verdicts {
+        let winds = plate.winds.iter().find(|w| w.id == verdict.winds);
+        if let Some(winds) = winds {
+            let figure = sand_rose(&winds.rose, &winds.flux, width_mm, theme);
+            blocks.push(block(format!("Winds: {}", winds.name), figure));
+        }
+        let of = if patch.verdicts.len() > 1 || winds.is_none() {
+            format!(": {}", verdict.winds_name)
+        } else {
+            String::new()
+        };
+        blocks.push(block(format!("Verdict{of}"), dial(verdict, width_mm, theme)));
+        if verdict.refused.is_none() {
+            let figure = bars::posterior_bars(verdict, width_mm, theme);
+            blocks.push(block(format!("Theories weighed{of}"), figure));
+        }
+    }
+    blocks
+}
+
+fn notes(plate: &PatchPlate) -> Vec<String> {
+    let patch = plate.patch;
+    let mut notes = vec![map_note(plate)];
+    notes.push(caption::cited(&caption::methods_of(patch), &science::methods()));
+    if !patch.verdicts.is_empty() {
+        notes.push(caption::SAFETY.into());
+    }
+    notes
+}
+
+fn map_note(plate: &PatchPlate) -> String {
+    let (patch, raster) = (plate.patch, plate.raster);
+    let area = match patch.unit {
+        LengthUnit::Metre => format!("{} km²", numbers::significant(patch.area / 1e6, 3)),
+        LengthUnit::Pixel => format!("{} px²", numbers::significant(patch.area, 3)),
+    };
+    let pixel = raster.pixel_m.map_or("no ground size".to_owned(), |[x, y]| {
+        format!("{} × {} m", numbers::significant(x, 3), numbers::significant(y, 3))
+    });
+    let margin = if plate.view.place.is_georeferenced() {
+        "longitude and latitude in degrees"
+    } else {
+        "distance from the raster’s upper left corner"
+    };
+    format!(
+        "Map: {} ({} × {} pixels of {pixel}; {}). Margin: {margin}; angles from true north. Patch of {area}, \
+         {} valid. Strokes: trend where the coherence passes {}, longer where it is higher, thinned for print; \
+         scales {} and {} px.",
+        raster.name,
+        raster.width,
+        raster.height,
+        raster.projection,
+        numbers::percent(patch.valid_fraction),
+        numbers::significant(patch.trend.coherence_floor, 2),
+        numbers::plain(patch.trend.gradient_scale_px, 2),
+        numbers::plain(patch.trend.integration_scale_px, 2),
+    )
+}
