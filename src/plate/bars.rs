@@ -15,28 +15,24 @@ pub(super) struct Row {
     pub prior: f64,
 }
 
-/// Rows of label, bar with the prior as a tick across it, percent.
+/// Rows of label, bar with the prior as a tick across it, percent. Labels too long to leave the bar
+/// half the width stand above their bars.
 pub(super) fn bars(rows: &[Row], width_mm: f64, accent: Rgba, theme: &Theme) -> Figure {
     let size = theme.text.small;
-    let widest = |f: &dyn Fn(&Row) -> f64| rows.iter().map(f).fold(0.0, f64::max);
-    let label_room = widest(&|r| font::text_width(&r.label, size, false)).min(0.6 * width_mm);
+    let widest = rows.iter().map(|r| font::text_width(&r.label, size, false)).fold(0.0, f64::max);
+    let stacked = widest + 1.6 > 0.45 * width_mm;
     let value_room = font::text_width(">99 %", size, true);
-    let (left, right) = (label_room + 1.6, width_mm - value_room - 1.2);
-    let pitch = 1.75 * size;
+    let (left, right) = (if stacked { 0.0 } else { widest + 1.6 }, width_mm - value_room - 1.2);
+    let (above, pitch) = if stacked { (1.3 * size, 2.9 * size) } else { (0.0, 1.75 * size) };
     let mut sketch = Sketch::default();
     for (i, row) in rows.iter().enumerate() {
-        let middle = (i as f64 + 0.5) * pitch;
+        let top = i as f64 * pitch;
+        let middle = top + above + 0.5 * (pitch - above);
         let base = middle + 0.5 * font::CAP_HEIGHT * size;
-        let label = font::shortened(&row.label, size, false, label_room + 0.01);
-        sketch.text(Point::new(0.0, base), label, Type::new(size, theme.ink));
-        let x = |share: f64| left + share.clamp(0.0, 1.0) * (right - left);
-        let (top, bottom) = (middle - 0.3 * size, middle + 0.3 * size);
-        sketch.rectangle(Point::new(left, top), Point::new(right, bottom), Some(theme.panel), None);
-        sketch.rectangle(Point::new(left, top), Point::new(x(row.value), bottom), Some(accent), None);
-        let reach = 0.25 * size;
-        let (from, to) = (Point::new(x(row.prior), top - reach), Point::new(x(row.prior), bottom + reach));
-        sketch.line(from, to, theme.stroke(theme.paper, 3.0 * theme.widths.thin));
-        sketch.line(from, to, theme.stroke(theme.ink, theme.widths.thin));
+        let label = font::shortened(&row.label, size, false, width_mm);
+        let label_base = if stacked { top + 1.15 * size } else { base };
+        sketch.text(Point::new(0.0, label_base), label, Type::new(size, theme.ink));
+        bar(&mut sketch, row, [left, right], middle, accent, theme);
         let look = Type::new(size, theme.ink).bold().anchored(TextAnchor::End);
         sketch.text(Point::new(width_mm, base), numbers::percent(row.value), look);
     }
@@ -44,6 +40,19 @@ pub(super) fn bars(rows: &[Row], width_mm: f64, accent: Rgba, theme: &Theme) -> 
     let look = Type::new(0.92 * size, theme.ink_soft);
     let used = sketch.paragraph(Point::new(left, y), "tick: before the data", look, width_mm - left);
     sketch.finish(width_mm, y + used)
+}
+
+/// The share as a bar between two places, the prior as a tick across it.
+fn bar(sketch: &mut Sketch, row: &Row, [left, right]: [f64; 2], middle: f64, accent: Rgba, theme: &Theme) {
+    let size = theme.text.small;
+    let x = |share: f64| left + share.clamp(0.0, 1.0) * (right - left);
+    let (top, bottom) = (middle - 0.3 * size, middle + 0.3 * size);
+    sketch.rectangle(Point::new(left, top), Point::new(right, bottom), Some(theme.panel), None);
+    sketch.rectangle(Point::new(left, top), Point::new(x(row.value), bottom), Some(accent), None);
+    let reach = 0.25 * size;
+    let (from, to) = (Point::new(x(row.prior), top - reach), Point::new(x(row.prior), bottom + reach));
+    sketch.line(from, to, theme.stroke(theme.paper, 3.0 * theme.widths.thin));
+    sketch.line(from, to, theme.stroke(theme.ink, theme.widths.thin));
 }
 
 /// Weights of the theories after the data, each with its prior; empty for a refused verdict.

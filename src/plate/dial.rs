@@ -29,8 +29,6 @@ struct Needle {
     at_deg: Vec<f64>,
     /// Share of the bootstrap draws in bins of [`CLOUD_BIN_DEG`].
     cloud: Vec<f64>,
-    posterior: f64,
-    prior: f64,
 }
 
 /// Where the parts lie, millimetres.
@@ -44,6 +42,30 @@ const CLOUD_BIN_DEG: f64 = 3.0;
 /// The dial of one verdict with legend and bars: `size_mm` wide, as high as it needs. A refusal is
 /// given in words over the empty dial.
 pub fn dial(verdict: &VerdictFinding, size_mm: f64, theme: &Theme) -> Figure {
+    let face = dial_face(verdict, size_mm, theme);
+    let classes = class_bars(verdict, size_mm, theme);
+    let mut sketch = Sketch::default();
+    sketch.place(&face, Point::new(0.0, 0.0));
+    let top = face.height_mm + if classes.height_mm > 0.0 { 1.6 } else { 0.0 };
+    sketch.place(&classes, Point::new(0.0, top));
+    sketch.finish(size_mm, top + classes.height_mm)
+}
+
+/// The classes of obliquity after the data, each with its prior; no height for a refused verdict.
+pub(super) fn class_bars(verdict: &VerdictFinding, width_mm: f64, theme: &Theme) -> Figure {
+    let Some(probabilities) = verdict.probabilities.filter(|_| verdict.refused.is_none()) else {
+        return Sketch::default().finish(width_mm, 0.0);
+    };
+    let rows: Vec<bars::Row> = CLASS_NAMES
+        .iter()
+        .zip(probabilities.iter().zip(verdict.class_priors))
+        .map(|(name, (value, prior))| bars::Row { label: (*name).to_owned(), value: *value, prior })
+        .collect();
+    bars::bars(&rows, width_mm, theme.measured, theme)
+}
+
+/// The dial with its legend and no bars.
+pub(super) fn dial_face(verdict: &VerdictFinding, size_mm: f64, theme: &Theme) -> Figure {
     let margin_left = 3.2;
     let rim = size_mm - margin_left - 8.2;
     let layout = Layout { centre: Point::new(margin_left, rim + 7.0), rim };
@@ -59,17 +81,6 @@ pub fn dial(verdict: &VerdictFinding, size_mm: f64, theme: &Theme) -> Figure {
     measured(&mut sketch, &model, &layout, theme);
     y += 1.0;
     y += legend(&mut sketch, &model, verdict, Point::new(0.0, y), size_mm, theme);
-    if let Some(probabilities) = verdict.probabilities {
-        let rows: Vec<bars::Row> = CLASS_NAMES
-            .iter()
-            .zip(probabilities.iter().zip(verdict.class_priors))
-            .map(|(name, (value, prior))| bars::Row { label: (*name).to_owned(), value: *value, prior })
-            .collect();
-        y += 1.6;
-        let part = bars::bars(&rows, size_mm, theme.measured, theme);
-        sketch.place(&part, Point::new(0.0, y));
-        y += part.height_mm;
-    }
     sketch.finish(size_mm, y)
 }
 
@@ -88,8 +99,6 @@ fn model(verdict: &VerdictFinding) -> Model {
                 name: theory.name,
                 at_deg,
                 cloud: cloud(&theory.cloud_deg),
-                posterior: theory.posterior,
-                prior: theory.prior,
             })
         })
         .collect();
@@ -243,10 +252,12 @@ fn legend(
         let value = degrees.join(" or ");
         let look = Type::new(theme.text.small, theme.ink);
         let room = width_mm - 4.4 - font::text_width(&value, theme.text.small, false) - 1.5;
-        let name = font::shortened(needle.name, theme.text.small, false, room);
-        sketch.text(Point::new(at.x + 4.2, base), name, look);
+        let lines = font::wrap(needle.name, theme.text.small, false, room);
+        for (i, line) in lines.iter().enumerate() {
+            sketch.text(Point::new(at.x + 4.2, base + i as f64 * look.leading()), line.as_str(), look);
+        }
         sketch.text(Point::new(at.x + width_mm, base), value, look.anchored(TextAnchor::End));
-        y += pitch;
+        y += pitch + (lines.len() - 1) as f64 * look.leading();
     }
     y - at.y
 }

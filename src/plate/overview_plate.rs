@@ -11,7 +11,7 @@ use super::map::{MapPatch, MapView, map};
 use super::page::Page;
 use super::rose::NO_TREND;
 use super::sketch::{Sketch, Type};
-use super::{Figure, TextAnchor, Theme, font, numbers};
+use super::{Figure, TextAnchor, Theme, numbers};
 
 /// All that an overview shows.
 #[derive(Clone, Debug)]
@@ -74,8 +74,8 @@ fn notes(patches: &[&PatchFinding]) -> Vec<String> {
     notes
 }
 
-/// One cell: lines of text.
-type Cell = Vec<String>;
+/// One cell: lines of text, each with its look.
+type Cell = Vec<(String, Type)>;
 
 /// Heading, share of the width, whether numbers stand at the right.
 const COLUMNS: [(&str, f64, bool); 6] = [
@@ -90,43 +90,38 @@ const COLUMN_GAP: f64 = 3.0;
 
 fn table(patches: &[&PatchFinding], width_mm: f64, theme: &Theme) -> Figure {
     let mut sketch = Sketch::default();
-    let size = theme.text.body;
-    let heads = Type::new(theme.text.small, theme.ink_soft);
     let mut y = 0.0;
-    let rows: Vec<Vec<Cell>> = patches.iter().map(|p| cells(p)).collect();
-    let head: Vec<Cell> = COLUMNS.iter().map(|c| vec![c.0.to_owned()]).collect();
-    y += row(&mut sketch, &head, y, width_mm, heads);
-    for cells in &rows {
+    let heads = Type::new(theme.text.small, theme.ink_soft);
+    let head: Vec<Cell> = COLUMNS.iter().map(|c| vec![(c.0.to_owned(), heads)]).collect();
+    y += row(&mut sketch, &head, y, width_mm);
+    for patch in patches {
         let rule = theme.stroke(theme.rule, theme.widths.hair);
         sketch.line(Point::new(0.0, y), Point::new(width_mm, y), rule);
-        y += 0.8 + row(&mut sketch, cells, y + 0.6, width_mm, Type::new(size, theme.ink));
+        y += 0.9 + row(&mut sketch, &cells(patch, theme), y + 0.6, width_mm);
     }
     sketch.finish(width_mm, y)
 }
 
 /// Sets one row; returns its height.
-fn row(sketch: &mut Sketch, cells: &[Cell], y: f64, width_mm: f64, look: Type) -> f64 {
+fn row(sketch: &mut Sketch, cells: &[Cell], y: f64, width_mm: f64) -> f64 {
     let mut x = 0.0;
     let mut height: f64 = 0.0;
     for ((_, share, at_right), lines) in COLUMNS.into_iter().zip(cells) {
         let room = share * width_mm - COLUMN_GAP;
-        let wrapped: Vec<String> =
-            lines.iter().flat_map(|l| font::wrap(l, look.size_mm, look.bold, room)).collect();
-        for (i, line) in wrapped.iter().enumerate() {
-            let base = y + (i as f64 * super::sketch::LEADING + 1.0) * look.size_mm;
-            if at_right {
-                sketch.text(Point::new(x + room, base), line.as_str(), look.anchored(TextAnchor::End));
-            } else {
-                sketch.text(Point::new(x, base), line.as_str(), look);
-            }
+        let mut used = 0.0;
+        for (text, look) in lines {
+            let (at, look) = if at_right { (x + room, look.anchored(TextAnchor::End)) } else { (x, *look) };
+            used += sketch.paragraph(Point::new(at, y + used), text, look, room);
         }
-        height = height.max(wrapped.len() as f64 * look.leading());
+        height = height.max(used);
         x += share * width_mm;
     }
     height
 }
 
-fn cells(patch: &PatchFinding) -> Vec<Cell> {
+fn cells(patch: &PatchFinding, theme: &Theme) -> Vec<Cell> {
+    let look = Type::new(theme.text.body, theme.ink);
+    let plain = |text: String| vec![(text, look)];
     let area = match patch.unit {
         LengthUnit::Metre => format!("{} km²", numbers::significant(patch.area / 1e6, 3)),
         LengthUnit::Pixel => format!("{} px²", numbers::significant(patch.area, 3)),
@@ -146,22 +141,24 @@ fn cells(patch: &PatchFinding) -> Vec<Cell> {
         .iter()
         .map(|v| {
             let by = if several { format!("{}: ", v.winds_name) } else { String::new() };
-            match (&v.refused, v.probabilities) {
+            let text = match (&v.refused, v.probabilities) {
                 (Some(_), _) => format!("{by}no verdict"),
                 (None, Some(p)) => {
                     let likely = (0..3).max_by(|a, b| p[*a].total_cmp(&p[*b])).unwrap_or(0);
                     format!("{by}{} {}", CLASS_NAMES[likely], numbers::percent(p[likely]))
                 }
                 (None, None) => format!("{by}–"),
-            }
+            };
+            (text, look)
         })
         .collect();
-    let verdicts = if verdicts.is_empty() { vec!["–".to_owned()] } else { verdicts };
-    let name = match patch.cautions.len() {
-        0 => vec![patch.name.clone()],
-        1 => vec![patch.name.clone(), "1 caution".into()],
-        n => vec![patch.name.clone(), format!("{n} cautions")],
-    };
+    let verdicts = if verdicts.is_empty() { plain("–".into()) } else { verdicts };
+    let mut name = vec![(patch.name.clone(), look.bold())];
+    if !patch.cautions.is_empty() {
+        let codes: Vec<&str> = patch.cautions.iter().map(|c| c.code).collect();
+        let small = Type::new(theme.text.small, theme.caution);
+        name.push((format!("cautions: {}", codes.join(", ")), small));
+    }
     let n_eff = numbers::significant(patch.trend.n_eff, 2);
-    vec![name, vec![area], vec![trend], vec![spacing], vec![n_eff], verdicts]
+    vec![name, plain(area), plain(trend), plain(spacing), plain(n_eff), verdicts]
 }

@@ -6,10 +6,11 @@ use crate::science;
 use crate::study::{PatchFinding, RasterFinding, WindFinding};
 
 use super::caption::{self, Recipe};
+use super::dial::{class_bars, dial_face};
 use super::map::{MapPatch, MapView, map};
 use super::page::{Block, GAP_MM, Page};
 use super::sketch::Type;
-use super::{Figure, Theme, bars, dial, modes, numbers, profile, rose, sand_rose, spectrum};
+use super::{Figure, Theme, bars, modes, numbers, profile, rose, sand_rose, spectrum};
 
 /// All that a patch plate shows.
 #[derive(Clone, Debug)]
@@ -26,7 +27,8 @@ pub struct PatchPlate<'a> {
     pub recipe: &'a Recipe,
 }
 
-const COLUMNS: usize = 3;
+/// Columns are about this wide, millimetres.
+const COLUMN_MM: f64 = 54.0;
 
 /// The plate, `width_mm` wide (180 suits two journal columns), as high as it needs.
 pub fn patch_plate(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Figure {
@@ -36,14 +38,16 @@ pub fn patch_plate(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Figure {
     page.paragraph(&patch.sentence, Type::new(theme.text.heading, theme.ink));
     page.space(2.0);
 
-    let column = (page.room() - (COLUMNS - 1) as f64 * GAP_MM) / COLUMNS as f64;
+    let columns = ((page.room() / COLUMN_MM).floor() as usize).max(3);
+    let column = (page.room() - (columns - 1) as f64 * GAP_MM) / columns as f64;
     let wide = 2.0 * column + GAP_MM;
     let top = page.y;
     let trend = Block { heading: "Trend".into(), figure: rose(&patch.trend, column, theme) };
     let picture = patch_map(plate, [wide, 1.05 * wide], theme);
-    page.put(&picture, 0.0, top + 0.6);
+    page.put(&picture, 0.5 * (wide - picture.width_mm), top + 0.6);
     let below = top + picture.height_mm + 0.7 * GAP_MM;
-    let mut tops = [below, below, top];
+    let mut tops = vec![top; columns];
+    tops[..2].fill(below);
     page.columns(&[trend], column, &mut tops);
     page.columns(&evidence(plate, column, theme), column, &mut tops);
 
@@ -99,8 +103,9 @@ fn evidence(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
         } else {
             String::new()
         };
-        blocks.push(block(format!("Verdict{of}"), dial(verdict, width_mm, theme)));
+        blocks.push(block(format!("Verdict{of}"), dial_face(verdict, width_mm, theme)));
         if verdict.refused.is_none() {
+            blocks.push(block(format!("Classes of obliquity{of}"), class_bars(verdict, width_mm, theme)));
             let figure = bars::posterior_bars(verdict, width_mm, theme);
             blocks.push(block(format!("Theories weighed{of}"), figure));
         }
@@ -133,7 +138,7 @@ fn map_note(plate: &PatchPlate) -> String {
         "distance from the raster’s upper left corner"
     };
     format!(
-        "Map: {} ({} × {} pixels of {pixel}; {}). Margin: {margin}; angles from true north. Patch of {area}, \
+        "Map: {} ({} × {} pixels of {pixel}; {}). Margin: {margin}; angles from true north; intervals are 95 %. Patch of {area}, \
          {} valid. Strokes: trend where the coherence passes {}, longer where it is higher, thinned for print; \
          scales {} and {} px.",
         raster.name,

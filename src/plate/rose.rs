@@ -81,10 +81,14 @@ pub fn small_rose(trend: &TrendFinding, size_mm: f64, theme: &Theme) -> Figure {
     sketch.finish(size_mm, size_mm)
 }
 
-/// n, effective n, R̄, bin width, and how to read the petals.
+/// n, effective n, R̄, which interval, bin width, and how to read the petals.
 fn caption(trend: &TrendFinding) -> String {
+    let interval = match trend.ci95_half_deg {
+        Some(_) if trend.defined => format!("95 % interval by {} · ", trend.ci95_source),
+        _ => String::new(),
+    };
     format!(
-        "n {} of {} nodes, effective n {} · R\u{304} {:.2} · {}° bins\npetal area = share, drawn both ways",
+        "{} of {} nodes, effective n {} · R\u{304} {:.2}\n{interval}{}° bins\npetal area = share, drawn both ways",
         trend.n,
         trend.n_all,
         numbers::significant(trend.n_eff, 3),

@@ -119,11 +119,11 @@ fn words(sketch: &mut Sketch, model: &Model, drift: &DriftFinding, size_mm: f64,
     y += sketch.paragraph(middle(y), &headline, look, size_mm);
     let mut caption = format!("total {} {}", numbers::significant(drift.total, 3), drift.unit);
     if let Some(ratio) = drift.ratio {
-        caption += &format!(" · resultant/total {ratio:.2}");
+        caption += &format!("\nresultant/total {ratio:.2}");
         if let Some([low, high]) = drift.ratio_ci95 {
-            caption += &format!(" ({low:.2}–{high:.2})");
+            caption += &format!(" (95 %: {low:.2}–{high:.2})");
         }
-        caption += "\npetals point where the sand goes, petal area = share; arrow: rim = ratio 1";
+        caption += "\npetals point where the sand goes, area = share\narrow: rim = ratio 1";
     }
     let look = Type::new(theme.text.small, theme.ink_soft).anchored(TextAnchor::Middle);
     y + sketch.paragraph(middle(y), &caption, look, size_mm)

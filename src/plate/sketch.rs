@@ -6,7 +6,7 @@ use super::font;
 use super::{Figure, Fill, Item, Rgba, Stroke, TextAnchor};
 
 /// Line spacing in text sizes.
-pub(super) const LEADING: f64 = 1.38;
+const LEADING: f64 = 1.38;
 
 /// How a text looks.
 #[derive(Clone, Copy, Debug, PartialEq)]

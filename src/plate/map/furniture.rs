@@ -65,12 +65,12 @@ pub(super) fn draw_north(sketch: &mut Sketch, direction: Point, centre: Point, r
             centre.y + radius * (s * direction.y + side * direction.x),
         )
     };
-    let tip = along(0.42, 0.0);
+    let tip = along(0.3, 0.0);
     let stroke = theme.stroke(theme.over_image, theme.widths.thin);
-    sketch.polygon(vec![tip, along(-0.72, 0.3), along(-0.5, 0.0)], Some(theme.over_image), Some(stroke));
-    sketch.polygon(vec![tip, along(-0.72, -0.3), along(-0.5, 0.0)], None, Some(stroke));
-    let size = 0.5 * radius;
-    let letter = along(0.68, 0.0);
+    sketch.polygon(vec![tip, along(-0.76, 0.28), along(-0.56, 0.0)], Some(theme.over_image), Some(stroke));
+    sketch.polygon(vec![tip, along(-0.76, -0.28), along(-0.56, 0.0)], None, Some(stroke));
+    let size = 0.46 * radius;
+    let letter = along(0.62, 0.0);
     let look = Type::new(size, theme.over_image).bold().anchored(TextAnchor::Middle);
     sketch.text(Point::new(letter.x, letter.y + 0.5 * font::CAP_HEIGHT * size), "N", look);
 }

@@ -133,7 +133,7 @@ fn rose_label(
     }
     // Over an image the look is always ink on light paper.
     let light = Theme::light();
-    sketch.circle(middle, 0.5 * ROSE_MM, Some(theme.halo.with_alpha(235)), None);
+    sketch.circle(middle, 0.5 * ROSE_MM, Some(theme.halo.with_alpha(250)), None);
     let rose = small_rose(trend, ROSE_MM, &light);
     sketch.place(&rose, Point::new(middle.x - 0.5 * ROSE_MM, middle.y - 0.5 * ROSE_MM));
     let look = Type::new(size, theme.over_image).bold().anchored(TextAnchor::Middle).haloed(theme.halo);
@@ -151,15 +151,20 @@ fn overlap(a: Bounds, b: Bounds) -> bool {
     a.min.x < b.max.x && b.min.x < a.max.x && a.min.y < b.max.y && b.min.y < a.max.y
 }
 
-/// The pixels around a patch that its map shows: its bounds and a third more on every side, within
-/// the raster of `raster_px` (width, height). The whole raster for an empty outline.
+/// The pixels around a patch that its map shows: its bounds and a third more on every side, widened
+/// to a landscape shape where the raster of `raster_px` (width, height) allows. The whole raster for
+/// an empty outline.
 pub fn surroundings(outline: &Polygon, raster_px: [f64; 2]) -> Bounds {
     let [width, height] = raster_px;
     let whole = Bounds { min: Point::new(0.0, 0.0), max: Point::new(width, height) };
     let Some(bounds) = outline.bounds() else { return whole };
     let pad = 0.33 * bounds.width().max(bounds.height());
-    let min = Point::new((bounds.min.x - pad).max(0.0).floor(), (bounds.min.y - pad).max(0.0).floor());
-    let max = Point::new((bounds.max.x + pad).min(width).ceil(), (bounds.max.y + pad).min(height).ceil());
+    let (top, bottom) = ((bounds.min.y - pad).max(0.0).floor(), (bounds.max.y + pad).min(height).ceil());
+    const LANDSCAPE: f64 = 1.25;
+    let across = (bounds.width() + 2.0 * pad).max(LANDSCAPE * (bounds.height() + 2.0 * pad)).min(width);
+    let left = (bounds.centre().x - 0.5 * across).clamp(0.0, width - across).floor();
+    let right = (left + across).min(width).ceil();
+    let (min, max) = (Point::new(left, top), Point::new(right, bottom));
     if max.x > min.x && max.y > min.y { Bounds { min, max } } else { whole }
 }
 
@@ -206,7 +211,9 @@ mod tests {
     fn surroundings_stay_on_the_raster() {
         let outline = Polygon::rectangle(30.0, 60.0).map(|p| Point::new(p.x + 80.0, p.y));
         let bounds = surroundings(&outline, [100.0, 500.0]);
-        assert_eq!((bounds.min, bounds.max.x), (Point::new(60.0, 0.0), 100.0));
+        assert_eq!((bounds.min, bounds.max), (Point::new(0.0, 0.0), Point::new(100.0, 80.0)));
+        let wide = surroundings(&outline, [1000.0, 500.0]);
+        assert!(wide.width() >= 1.2 * wide.height() && wide.min.x >= 0.0, "{wide:?}");
         assert_eq!(surroundings(&Polygon::default(), [10.0, 20.0]).height(), 20.0);
     }
 }

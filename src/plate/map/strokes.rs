@@ -42,10 +42,10 @@ pub(super) fn strokes(nodes: &[Node], sheet: &Sheet, place: &Place, pitch_mm: f6
 /// All halos first, so that no halo cuts a neighbour.
 pub(super) fn draw(sketch: &mut Sketch, strokes: &[Stroke], theme: &Theme) {
     for [from, to] in strokes {
-        sketch.line(*from, *to, theme.stroke(theme.halo, 2.6 * theme.widths.line));
+        sketch.line(*from, *to, theme.stroke(theme.halo, 2.1 * theme.widths.line));
     }
     for [from, to] in strokes {
-        sketch.line(*from, *to, theme.stroke(theme.over_image, theme.widths.line));
+        sketch.line(*from, *to, theme.stroke(theme.over_image, 0.85 * theme.widths.line));
     }
 }
 
