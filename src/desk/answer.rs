@@ -1,13 +1,31 @@
 //! What jobs send back, and what becomes of it.
 
-use crate::study::Id;
+use std::path::PathBuf;
+use std::sync::Arc;
 
-use super::{Delivery, Model, Opened};
+use crate::plate::Figure;
+use crate::study::{Id, OpenRaster};
+
+use super::{
+    Command, Delivery, Import, Measured, Model, Opened, Reading, SheetCommand, Slot, WindResult, apply,
+};
 
 /// An answer from a job.
 #[derive(Debug)]
 pub enum Answer {
-    Raster(Id, Opened),
+    /// A raster, open to be measured and laid to be seen, or why not.
+    Raster(Id, Option<OpenRaster>, Opened),
+    Patch(Id, Box<Measured>),
+    Winds(Vec<WindResult>),
+    /// A wind file with what it is taken for.
+    Preview(Box<Result<Import, String>>),
+    /// What the file in the preview gives.
+    Reading(Result<Reading, String>),
+    Plate(Result<Arc<Figure>, String>),
+    /// What was written, or why not.
+    Written(Result<String, String>),
+    /// The sheet of the demo, laid out on disk.
+    Demo(Result<PathBuf, String>),
 }
 
 /// Takes in every answer that waits; says whether there was any.
@@ -16,15 +34,47 @@ pub fn absorb(model: &mut Model) -> bool {
     while let Some(delivery) = model.session.jobs.next_delivery() {
         any = true;
         match delivery {
-            Delivery::Answer(_, Answer::Raster(id, opened)) => {
-                model.session.rasters.insert(id, opened);
-            }
+            Delivery::Answer(_, answer) => take(model, answer),
             Delivery::Ended(_) => {}
             Delivery::Broke(slot, text) => {
+                if slot == Slot::Measure {
+                    model.session.pause_measuring(&model.sheet);
+                }
                 let text = format!("A fault in the program ended the work “{slot:?}”: {text}");
                 model.session.notices.problem(text);
             }
         }
     }
+    if any {
+        model.keep_up();
+    }
     any
+}
+
+fn take(model: &mut Model, answer: Answer) {
+    let session = &mut model.session;
+    match answer {
+        Answer::Raster(id, open, opened) => {
+            if let Some(open) = open {
+                session.sources.insert(id, open);
+            }
+            session.rasters.insert(id, opened);
+        }
+        Answer::Patch(id, measured) => session.results.take_patch(id, *measured),
+        Answer::Winds(results) => results.into_iter().for_each(|r| session.results.take_wind(r)),
+        Answer::Preview(import) => match *import {
+            Ok(import) => session.import = Some(import),
+            Err(why) => session.notices.problem(format!("No winds could be read: {why}")),
+        },
+        Answer::Reading(outcome) => {
+            if let Some(import) = &mut session.import {
+                import.outcome = Some(outcome);
+            }
+        }
+        Answer::Plate(outcome) => session.preview.outcome = Some(outcome),
+        Answer::Written(Ok(done)) => session.notices.done(done),
+        Answer::Written(Err(why)) => session.notices.problem(format!("Nothing was written: {why}")),
+        Answer::Demo(Ok(path)) => apply(model, Command::Sheet(SheetCommand::Open(path))),
+        Answer::Demo(Err(why)) => session.notices.problem(format!("The demo could not be laid out: {why}")),
+    }
 }

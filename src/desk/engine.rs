@@ -2,9 +2,9 @@
 
 use std::path::{Path, PathBuf};
 
-use crate::files::{places, text};
-use crate::study::Sheet;
+use crate::files::{places, save, text};
 use crate::study::sheet_file::{SheetFile, SheetFileError};
+use crate::study::{Sheet, demo};
 
 use super::View;
 
@@ -26,16 +26,14 @@ pub fn read_sheet(path: &Path) -> Result<(Sheet, View), SheetError> {
     Ok((file.sheet, serde_json::from_value(file.view).unwrap_or_default()))
 }
 
-/// Writes the sheet and the view; the previous text stays beside it as `….bak`.
+/// Writes the sheet and the view; the previous text stays beside it as its one backup.
 ///
 /// # Errors
 /// [`SheetError::Text`].
 pub fn write_sheet(path: &Path, sheet: &Sheet, view: &View) -> Result<(), SheetError> {
     let view = serde_json::to_value(view).unwrap_or_default();
     let text = SheetFile::new(sheet.clone(), view).render(folder_of(path));
-    let mut backup = path.as_os_str().to_owned();
-    backup.push(".bak");
-    Ok(text::write(path, &text, Some(Path::new(&backup)))?)
+    Ok(text::write(path, &text, Some(&save::backup_of(path)))?)
 }
 
 /// The recent sheets, latest first.
@@ -49,6 +47,14 @@ pub fn recent_sheets() -> Vec<PathBuf> {
 /// [`text::TextError`].
 pub fn remember_sheet(path: &Path) -> Result<Vec<PathBuf>, text::TextError> {
     places::remember_sheet(path)
+}
+
+/// Makes the demo's files in the program's own folder and says where its sheet is.
+///
+/// # Errors
+/// The reason in words.
+pub fn lay_out_demo() -> Result<PathBuf, String> {
+    demo::lay_out(&places::demo_folder())
 }
 
 fn folder_of(path: &Path) -> &Path {

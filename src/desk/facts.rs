@@ -2,7 +2,7 @@
 
 use crate::ground::LengthUnit;
 use crate::plate::numbers;
-use crate::study::{DriftFinding, PatchFinding, VerdictFinding, WindFinding};
+use crate::study::{DriftFinding, OpenRaster, PatchFinding, RasterEntry, VerdictFinding, WindFinding, run};
 
 /// One row of a bench page.
 #[derive(Clone, Debug, PartialEq)]
@@ -15,6 +15,39 @@ pub struct Fact {
 
 fn fact(label: &'static str, value: impl Into<String>, hint: &'static str) -> Fact {
     Fact { label, value: value.into(), hint }
+}
+
+/// The ground page: what the file is and where it lies.
+pub fn ground(entry: &RasterEntry, open: &OpenRaster) -> Vec<Fact> {
+    let (info, raster) = (open.raster.info(), run::raster(entry, open));
+    let bands = if raster.bands == 1 { "1 band".to_owned() } else { format!("{} bands", raster.bands) };
+    let mut facts = vec![
+        fact("File", raster.path, "Read where it lies; never copied."),
+        fact(
+            "Pixels",
+            format!("{} × {}, {bands} of {}", raster.width, raster.height, raster.sample),
+            "Columns × rows.",
+        ),
+        fact(
+            "Stored as",
+            format!("{}, {}, {}, {} levels", info.format, info.compression, info.layout, info.levels.len()),
+            "Coarse levels that are missing are made while the raster opens.",
+        ),
+    ];
+    let size = raster
+        .pixel_m
+        .map(|[x, y]| format!("{} × {} m", numbers::significant(x, 4), numbers::significant(y, 4)));
+    facts.push(fact(
+        "Pixel on the ground",
+        size.unwrap_or_else(|| "not known: lengths are in pixels".into()),
+        "At the centre of the raster, after the projection's own stretch.",
+    ));
+    facts.push(fact("Body", raster.body, "Whose shape, gravity and air are used."));
+    facts.push(fact("Reference", raster.projection, "Angles are turned to true north point by point."));
+    if let Some(nodata) = raster.nodata {
+        facts.push(fact("No data", nodata.to_string(), "Pixels of this value are missing."));
+    }
+    facts
 }
 
 /// The trend page.
@@ -205,6 +238,12 @@ pub fn verdict(verdict: &VerdictFinding) -> Vec<Fact> {
         ));
     }
     facts
+}
+
+/// A second since 1970 as date and time of day.
+pub fn clock(seconds: i64) -> String {
+    chrono::DateTime::from_timestamp(seconds, 0)
+        .map_or_else(|| "–".to_owned(), |at| at.format("%Y-%m-%d %H:%M").to_string())
 }
 
 /// Area with its unit squared.

@@ -104,7 +104,9 @@ impl Import {
         match &self.outcome {
             None => Some("the file is still being read"),
             Some(Err(_)) => Some("the file cannot be read this way"),
-            Some(Ok(reading)) if reading.with_speed == 0 => Some("no row has a wind speed when read this way"),
+            Some(Ok(reading)) if reading.with_speed == 0 => {
+                Some("no row has a wind speed when read this way")
+            }
             Some(Ok(_)) => None,
         }
     }

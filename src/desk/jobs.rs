@@ -19,21 +19,13 @@ pub enum Slot {
     Demo,
     Measure,
     ReadWinds,
-    Winds,
     Plate,
     Export,
 }
 
 impl Slot {
-    pub const ALL: [Self; 7] = [
-        Self::OpenRaster,
-        Self::Demo,
-        Self::Measure,
-        Self::ReadWinds,
-        Self::Winds,
-        Self::Plate,
-        Self::Export,
-    ];
+    pub const ALL: [Self; 6] =
+        [Self::OpenRaster, Self::Demo, Self::Measure, Self::ReadWinds, Self::Plate, Self::Export];
 }
 
 /// The running jobs and the way their answers come back.
@@ -116,6 +108,11 @@ impl<A: Send + 'static> Jobs<A> {
             };
             post.send(content);
         });
+    }
+
+    /// What jobs and tile shelves call when an answer waits.
+    pub fn wake(&self) -> Wake {
+        Arc::clone(&self.wake)
     }
 
     /// Asks the job in `slot` to stop; it ends within a tenth of a second.
@@ -242,8 +239,8 @@ mod tests {
     #[test]
     fn a_panic_is_an_answer() {
         let mut jobs = Jobs::new(Arc::new(|| ()));
-        jobs.start(Slot::Winds, "breaks", |_, _| std::panic::resume_unwind(Box::new("lost its way")));
-        assert_eq!(wait(&mut jobs), [Delivery::Broke(Slot::Winds, "lost its way".into())]);
+        jobs.start(Slot::ReadWinds, "breaks", |_, _| std::panic::resume_unwind(Box::new("lost its way")));
+        assert_eq!(wait(&mut jobs), [Delivery::Broke(Slot::ReadWinds, "lost its way".into())]);
     }
 
     #[test]

@@ -6,26 +6,35 @@ mod command;
 mod engine;
 pub mod facts;
 mod history;
+mod import;
 mod jobs;
+mod laying;
 pub mod ledger;
+mod measuring;
 mod model;
 mod notices;
+mod plates;
+pub mod readout;
 mod results;
 mod session;
 mod tiles;
 mod view;
 
+pub use crate::files::raster::Bands;
+pub use crate::files::wind_table::{DirectionSense, SpeedUnit, WindImport, WindLayout, ZeroDirection};
 pub use answer::{Answer, absorb};
 pub use command::{
-    AskCommand, Chord, Command, DrawCommand, JobCommand, PatchCommand, RasterCommand, Record, SettingCommand,
-    SheetCommand, ViewCommand, apply, listed,
+    AskCommand, Chord, Command, DrawCommand, JobCommand, PatchCommand, PlateCommand, RasterCommand, Record,
+    SettingCommand, SheetCommand, ViewCommand, WindCommand, apply, listed,
 };
 pub use engine::SheetError;
 pub use history::{History, MergeKey};
+pub use import::{Import, ReadRow, Reading};
 pub use jobs::{Delivery, Jobs, Post, Running, Slot, Wake};
 pub use model::Model;
 pub use notices::{Notice, NoticeKind, Notices};
-pub use results::{Measured, Results, Standing};
+pub use plates::{Format, Motif, PlateChoice, Preview};
+pub use results::{Measured, Results, Standing, WindResult};
 pub use session::{Ask, Cursor, Dialog, Draft, Laid, Opened, Purpose, Session, Tool};
 pub use tiles::{TILE, TileKey, TileReader, TileShelf};
 pub use view::{Camera, Layers, Page, Theme, View};

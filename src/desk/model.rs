@@ -3,9 +3,10 @@
 
 use std::path::PathBuf;
 
+use crate::ground::Body;
 use crate::study::{Id, Patch, RasterEntry, Sheet, WindEntry};
 
-use super::{Session, View, Wake, engine};
+use super::{Opened, Session, View, Wake, engine, laying, measuring, plates};
 
 /// What panels draw from. It changes only in [`super::apply`] and [`super::absorb`].
 #[derive(Debug)]
@@ -65,9 +66,19 @@ impl Model {
         self.session.start_over(&self.sheet, path);
     }
 
-    /// After each command: what follows from the sheet as it stands now.
+    /// The body whose air moves the sand: the one the raster on the table lies on.
+    pub(super) fn wind_body(&self) -> Option<Body> {
+        let raster = self.shown_raster()?;
+        let laid = self.session.rasters.get(&raster.id).and_then(Opened::laid);
+        raster.placement.body.clone().or_else(|| laid.map(|laid| laid.place.body.clone()))
+    }
+
+    /// After each command and each answer: what follows from the sheet as it stands now.
     pub(super) fn keep_up(&mut self) {
         self.session.results.follow(&self.sheet);
+        laying::follow(self);
+        measuring::follow(self);
+        plates::follow(self);
     }
 
     /// Puts `path` first among the recent sheets.

@@ -3,13 +3,13 @@
 
 use std::collections::BTreeMap;
 
-use crate::study::{Id, PatchFinding, Sheet, WindFinding, fingerprint};
+use crate::study::{Failure, Id, PatchFinding, Sheet, WindEntry, WindFinding, fingerprint};
 
 /// All results of the session.
 #[derive(Debug, Default)]
 pub struct Results {
     patches: BTreeMap<Id, Measured>,
-    winds: BTreeMap<Id, Result<WindFinding, String>>,
+    winds: BTreeMap<Id, WindResult>,
     /// Fingerprints of the patches as the sheet stands now.
     now: BTreeMap<Id, String>,
 }
@@ -23,6 +23,15 @@ pub struct Measured {
     pub fingerprint: String,
     /// Measured on the full raster, not on the quick reduced one.
     pub exact: bool,
+}
+
+/// What came of a wind record.
+#[derive(Debug)]
+pub struct WindResult {
+    pub id: Id,
+    /// Of what was asked.
+    pub fingerprint: String,
+    pub outcome: Result<WindFinding, String>,
 }
 
 /// How far a patch's result may be relied on.
@@ -49,8 +58,8 @@ impl Results {
         self.patches.insert(id, measured);
     }
 
-    pub fn take_wind(&mut self, id: Id, outcome: Result<WindFinding, String>) {
-        self.winds.insert(id, outcome);
+    pub fn take_wind(&mut self, result: WindResult) {
+        self.winds.insert(result.id, result);
     }
 
     /// The finding of a patch, current or not.
@@ -62,8 +71,16 @@ impl Results {
         self.patches.get(&id)
     }
 
-    pub fn wind(&self, id: Id) -> Option<&Result<WindFinding, String>> {
+    pub fn wind(&self, id: Id) -> Option<&WindResult> {
         self.winds.get(&id)
+    }
+
+    /// Whether every wind record of the sheet is worked out as the sheet stands.
+    pub fn has_winds(&self, sheet: &Sheet) -> bool {
+        let current = |entry: &WindEntry| {
+            self.winds.get(&entry.id).is_some_and(|r| r.fingerprint == fingerprint::of_wind(sheet, entry))
+        };
+        sheet.winds.iter().all(current)
     }
 
     pub fn standing(&self, id: Id) -> Standing {
@@ -72,10 +89,29 @@ impl Results {
             return Standing::OutOfDate;
         }
         match (&measured.outcome, measured.exact) {
-            (Err(_), _) => Standing::Failed,
+            (_, false) => Standing::Coarse,
             (Ok(_), true) => Standing::Current,
-            (Ok(_), false) => Standing::Coarse,
+            (Err(_), true) => Standing::Failed,
         }
+    }
+
+    /// A text that changes whenever the result of a patch or its standing does.
+    pub fn stamp(&self, id: Id) -> String {
+        let of = self.patches.get(&id).map_or("", |measured| measured.fingerprint.as_str());
+        format!("{}{:?}{of}", id.0, self.standing(id))
+    }
+
+    /// What failed, as the sheet stands.
+    pub fn failures(&self, sheet: &Sheet) -> Vec<Failure> {
+        let patches = sheet.patches.iter().filter_map(|p| {
+            let why = self.patches.get(&p.id)?.outcome.as_ref().err()?.clone();
+            Some(Failure { what: format!("patch {}", p.name), why })
+        });
+        let winds = sheet.winds.iter().filter_map(|w| {
+            let why = self.winds.get(&w.id)?.outcome.as_ref().err()?.clone();
+            Some(Failure { what: format!("wind record {}", w.name), why })
+        });
+        winds.chain(patches).collect()
     }
 
     /// Patches whose exact result is wanting, in the order of the sheet.
@@ -83,14 +119,13 @@ impl Results {
         let done = |id| matches!(self.standing(id), Standing::Current | Standing::Failed);
         sheet.patches.iter().map(|p| p.id).filter(|id| !done(*id)).collect()
     }
-
-    /// Whether every patch of the sheet is measured exactly and as the sheet stands.
-    pub fn is_complete(&self, sheet: &Sheet) -> bool {
-        self.wanting(sheet).is_empty()
-    }
 }
 
 impl Standing {
+    pub fn is_current(self) -> bool {
+        self == Self::Current
+    }
+
     /// A word for the ledger; empty when there is nothing to say.
     pub fn remark(self) -> &'static str {
         match self {

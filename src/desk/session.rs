@@ -2,11 +2,14 @@
 
 use std::collections::BTreeMap;
 use std::path::PathBuf;
+use std::sync::Arc;
 
 use crate::ground::{Place, Point, Polygon};
-use crate::study::{Id, Sheet};
+use crate::study::{Id, OpenRaster, Sheet, fingerprint};
 
-use super::{Answer, Command, History, Jobs, Notices, Results, Slot, TileShelf, Wake};
+use super::laying::OpenedAs;
+use super::measuring::{Kept, Task};
+use super::{Answer, Command, History, Import, Jobs, Notices, Preview, Results, Slot, TileShelf, Wake};
 
 /// Never saved.
 #[derive(Debug)]
@@ -20,6 +23,21 @@ pub struct Session {
     pub jobs: Jobs<Answer>,
     /// What came of opening each raster of the sheet.
     pub rasters: BTreeMap<Id, Opened>,
+    /// The open files, for measuring.
+    pub sources: BTreeMap<Id, OpenRaster>,
+    /// What each raster was opened as.
+    pub(super) opened_as: BTreeMap<Id, OpenedAs>,
+    pub(super) kept: Arc<Kept>,
+    /// What the measuring job is about.
+    pub(super) measuring: Option<Task>,
+    /// Fingerprint of the sheet at which the user stopped measuring.
+    pub(super) stopped_at: Option<String>,
+    /// Whether patches are measured as they change.
+    pub measures: bool,
+    /// The plate on the bench.
+    pub preview: Preview,
+    /// The wind file in the preview.
+    pub import: Option<Import>,
     pub notices: Notices,
     pub tool: Tool,
     /// The outline under way.
@@ -117,6 +135,11 @@ pub enum Purpose {
     OpenSheet,
     SaveSheet,
     OpenRaster,
+    ImportWinds,
+    BringPatches,
+    ExportPlate,
+    /// A folder for everything.
+    HandOver,
 }
 
 impl Ask {
@@ -131,6 +154,10 @@ impl Purpose {
             Self::OpenSheet => "Open sheet",
             Self::SaveSheet => "Save sheet as",
             Self::OpenRaster => "Open raster",
+            Self::ImportWinds => "Import winds",
+            Self::BringPatches => "Bring in patches",
+            Self::ExportPlate => "Export plate",
+            Self::HandOver => "Hand everything over",
         }
     }
 
@@ -138,33 +165,63 @@ impl Purpose {
         match self {
             Self::OpenSheet => "A saved sheet, NAME.sheet.json.",
             Self::SaveSheet => "The sheet is written as NAME.sheet.json; rasters stay where they are.",
+            Self::ImportWinds => "A time series (CSV or blanks) or a table of sectors and speed classes.",
+            Self::BringPatches => "GeoPackage, or GeoJSON whose \"frame\" says what its numbers are.",
+            Self::ExportPlate => "The ending is that of the chosen format when left out.",
+            Self::HandOver => "A folder; files of the same names in it are replaced.",
             Self::OpenRaster => "GeoTIFF, TIFF, PNG or JPEG; a world file beside it is read too.",
         }
     }
 
     /// What the button says.
     pub fn verb(self) -> &'static str {
-        if self.saves() { "Save" } else { "Open" }
+        match self {
+            Self::OpenSheet | Self::OpenRaster | Self::BringPatches => "Open",
+            Self::ImportWinds => "Read",
+            Self::SaveSheet => "Save",
+            Self::ExportPlate | Self::HandOver => "Write",
+        }
     }
 
     /// Whether the path may be new.
     pub fn saves(self) -> bool {
-        matches!(self, Self::SaveSheet)
+        matches!(self, Self::SaveSheet | Self::ExportPlate)
+    }
+
+    pub fn is_folder(self) -> bool {
+        self == Self::HandOver
     }
 
     /// Names and endings of the files that fit.
     pub fn filters(self) -> &'static [(&'static str, &'static [&'static str])] {
         match self {
             Self::OpenSheet | Self::SaveSheet => &[("Sheets", &["json"])],
+            Self::BringPatches => &[("Outlines", &["gpkg", "geojson", "json"])],
+            Self::ExportPlate => &[("Figures", &["svg", "png", "pdf"])],
+            Self::HandOver => &[],
+            Self::ImportWinds => &[("Tables", &["csv", "txt", "dat", "tsv"]), ("All files", &["*"])],
             Self::OpenRaster => &[("Rasters", &["tif", "tiff", "png", "jpg", "jpeg"]), ("All files", &["*"])],
         }
     }
 }
 
 impl Session {
+    /// Drops every result and all that was kept for the next one.
+    pub(super) fn forget_measured(&mut self) {
+        self.results = Results::default();
+        self.kept = Arc::default();
+        self.measuring = None;
+        self.stopped_at = None;
+    }
+
+    /// Measures nothing more until the sheet changes or the user asks.
+    pub(super) fn pause_measuring(&mut self, sheet: &Sheet) {
+        self.stopped_at = Some(fingerprint::of_sheet(sheet));
+    }
+
     /// Whether something lies over the window and has the keyboard.
     pub fn is_covered(&self) -> bool {
-        self.dialog.is_some() || self.ask.is_some()
+        self.dialog.is_some() || self.ask.is_some() || self.import.is_some()
     }
 
     /// Another sheet begins: jobs of the old one are dropped, notices and recent sheets stay.
@@ -173,8 +230,12 @@ impl Session {
         self.path = path;
         self.saved = sheet.clone();
         self.history = History::default();
-        self.results = Results::default();
         self.rasters.clear();
+        self.sources.clear();
+        self.opened_as.clear();
+        self.forget_measured();
+        self.import = None;
+        self.preview = Preview::default();
         self.tool = Tool::default();
         self.draft = None;
         self.cursor = None;
@@ -192,6 +253,14 @@ impl Session {
             results: Results::default(),
             jobs: Jobs::new(wake),
             rasters: BTreeMap::new(),
+            sources: BTreeMap::new(),
+            opened_as: BTreeMap::new(),
+            kept: Arc::default(),
+            measuring: None,
+            stopped_at: None,
+            measures: true,
+            preview: Preview::default(),
+            import: None,
             notices: Notices::default(),
             tool: Tool::default(),
             draft: None,

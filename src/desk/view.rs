@@ -7,6 +7,8 @@ use serde::{Deserialize, Serialize};
 use crate::ground::{Bounds, Point};
 use crate::study::Id;
 
+use super::PlateChoice;
+
 /// Saved beside the sheet; unknown or missing fields fall back to the default.
 #[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
 #[serde(default)]
@@ -22,6 +24,7 @@ pub struct View {
     /// One camera a raster; a raster without one is shown whole.
     pub cameras: BTreeMap<Id, Camera>,
     pub layers: Layers,
+    pub plate: PlateChoice,
 }
 
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]

@@ -3,6 +3,7 @@
 
 mod bars;
 mod caption;
+pub mod compose;
 mod dial;
 mod figure;
 pub mod font;

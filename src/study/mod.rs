@@ -5,6 +5,7 @@ pub mod check;
 pub mod demo;
 mod findings;
 pub mod fingerprint;
+pub mod glance;
 pub mod handover;
 mod patch;
 mod records;

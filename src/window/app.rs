@@ -1,5 +1,7 @@
 //! The frame, in order: take in what jobs answered, turn keys into commands, draw, apply.
 
+use std::time::Duration;
+
 use egui::{CentralPanel, Context, Frame, Margin, Panel, Ui, ViewportCommand};
 
 use super::ask::AskPath;
@@ -7,7 +9,7 @@ use super::controls::{Commands, look};
 use super::finder::Finder;
 use super::software::Face;
 use super::table::{self, TableState};
-use super::{bench, dialogs, foot, head, keys, ledger, notices, start_page, theme};
+use super::{bench, dialogs, foot, head, keys, ledger, notices, start_page, theme, winds_import};
 use crate::desk::{Command, Dialog, Model, SheetCommand, absorb, apply};
 
 /// The window: the model and the little that only drawing needs.
@@ -17,13 +19,19 @@ pub struct App {
     finder: Finder,
     ask: AskPath,
     table: TableState,
+    /// As the window bears it.
+    title: String,
 }
+
+/// How often running work is drawn anew.
+const PROGRESS_STEP: Duration = Duration::from_millis(100);
 
 impl App {
     /// A window on `model`. `native` says whether system dialogs are tried.
     pub fn new(ctx: &Context, model: Model, native: bool) -> Self {
         theme::install_fonts(ctx);
-        Self { model, finder: Finder::default(), ask: AskPath::new(native), table: TableState::default() }
+        let (finder, ask) = (Finder::default(), AskPath::new(native));
+        Self { model, finder, ask, table: TableState::default(), title: String::new() }
     }
 
     pub fn model(&self) -> &Model {
@@ -60,7 +68,10 @@ impl App {
         if self.model.session.leaving {
             ctx.send_viewport_cmd(ViewportCommand::Close);
         }
-        ctx.send_viewport_cmd(ViewportCommand::Title(title(&self.model)));
+        self.follow_title(&ctx);
+        if !self.model.session.jobs.is_idle() {
+            ctx.request_repaint_after(PROGRESS_STEP);
+        }
     }
 
     fn panels(&mut self, ui: &mut Ui, out: &mut Commands) {
@@ -97,7 +108,19 @@ impl App {
             Some(Dialog::Unsaved(_)) => dialogs::unsaved(ctx, &self.model, out),
             None => {}
         }
+        if let Some(import) = &self.model.session.import {
+            winds_import::show(ctx, &self.model, import, out);
+        }
         self.ask.show(ctx, &self.model, out);
+    }
+
+    /// Only when it has changed: a window that is told something draws again.
+    fn follow_title(&mut self, ctx: &Context) {
+        let title = title(&self.model);
+        if title != self.title {
+            ctx.send_viewport_cmd(ViewportCommand::Title(title.clone()));
+            self.title = title;
+        }
     }
 
     /// The window's own close button goes through the same door as Quit.

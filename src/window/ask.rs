@@ -105,7 +105,11 @@ impl Waiting {
             if !ask.suggested.is_empty() {
                 dialog = dialog.set_file_name(&ask.suggested);
             }
-            let chosen = if ask.purpose.saves() { dialog.save_file() } else { dialog.pick_file() };
+            let chosen = match (ask.purpose.is_folder(), ask.purpose.saves()) {
+                (true, _) => dialog.pick_folder(),
+                (false, true) => dialog.save_file(),
+                (false, false) => dialog.pick_file(),
+            };
             // A window closed meanwhile no longer listens.
             if sender.send(chosen).is_ok() {
                 ctx.request_repaint();

@@ -1,10 +1,10 @@
 //! The foot of the window: the finding in words, what is running, where the pointer is.
 
-use egui::{ProgressBar, RichText, Ui};
+use egui::{Align, Layout, ProgressBar, RichText, Ui};
 
 use super::controls::{Commands, caution, look};
 use super::theme;
-use crate::desk::{Command, JobCommand, Model, Running, Standing};
+use crate::desk::{Command, JobCommand, Model, Running, Standing, readout};
 
 pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
     finding(ui, model);
@@ -13,6 +13,10 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
         for running in model.session.jobs.running() {
             job(ui, model, out, &running);
         }
+        ui.with_layout(Layout::right_to_left(Align::Center), |ui| {
+            let ink = theme::color(look(model).ink_soft);
+            ui.label(RichText::new(readout::of_cursor(model).unwrap_or_default()).small().color(ink));
+        });
     });
 }
 

@@ -8,7 +8,7 @@ use egui::{
 use super::controls::{Commands, button, look, rule};
 use super::{figure, theme};
 use crate::desk::ledger::{Entry, entries};
-use crate::desk::{Command, Model, PatchCommand, RasterCommand, Standing, ViewCommand};
+use crate::desk::{Command, Model, PatchCommand, RasterCommand, Standing, ViewCommand, WindCommand};
 use crate::plate::{Theme, small_rose, verdict_bar};
 use crate::study::Id;
 
@@ -125,6 +125,7 @@ fn winds(ui: &mut Ui, model: &Model, out: &mut Commands, look: &Theme) {
             out.push(Command::View(ViewCommand::ShowWind(wind.id)));
         }
     }
+    button(ui, model, out, Command::Wind(WindCommand::AskImport));
 }
 
 fn section(ui: &mut Ui, look: &Theme, title: &str) {

@@ -10,7 +10,7 @@ use crate::desk::{Command, Model, SheetCommand};
 /// What the window begins with.
 #[derive(Clone, Debug, Default, PartialEq, Eq)]
 pub enum Start {
-    /// The sheet opened last, or an empty table at first start.
+    /// The sheet opened last, or the demo at first start.
     #[default]
     Last,
     /// The sheet (or raster, or wind record) at a path.
@@ -20,6 +20,13 @@ pub enum Start {
 
 /// Set to `cpu` to draw without OpenGL.
 const RENDERER: &str = "VENTIFACT_RENDERER";
+
+impl From<Option<PathBuf>> for Start {
+    /// The file at a path, or where the last session ended.
+    fn from(path: Option<PathBuf>) -> Self {
+        path.map_or(Self::Last, Self::File)
+    }
+}
 
 /// The window cannot be opened.
 #[derive(Debug, thiserror::Error)]
@@ -35,7 +42,8 @@ pub enum WindowError {
 ///
 /// # Errors
 /// [`WindowError`] when there is no display.
-pub fn open(start: Start) -> Result<(), WindowError> {
+pub fn open(start: impl Into<Start>) -> Result<(), WindowError> {
+    let start = start.into();
     let viewport = egui::ViewportBuilder::default()
         .with_title("Ventifact")
         .with_app_id("ventifact")
@@ -77,7 +85,8 @@ pub(super) fn begin(ctx: &egui::Context, start: Start) -> App {
     match (start, last) {
         (Start::File(path), _) => app.give(Command::of_file(path)),
         (Start::Last, Some(path)) => app.give(Command::Sheet(SheetCommand::Open(path))),
-        (Start::Last | Start::Empty, _) => {}
+        (Start::Last, None) => app.give(Command::Sheet(SheetCommand::Demo)),
+        (Start::Empty, _) => {}
     }
     app
 }

@@ -39,6 +39,7 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
             ui.add_space(14.0);
             ui.horizontal(|ui| {
                 main_button(ui, model, out, Command::Raster(RasterCommand::AskOpen));
+                button(ui, model, out, Command::Sheet(SheetCommand::Demo));
                 button(ui, model, out, Command::Sheet(SheetCommand::AskOpen));
             });
             recent(ui, model, out);

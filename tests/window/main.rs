@@ -1,5 +1,6 @@
 //! The window, driven by role and label, and pictured by the CPU painter.
 
+mod desk;
 mod harness;
 mod pictures;
 mod scene;

@@ -4,7 +4,7 @@ use std::path::PathBuf;
 
 use crate::desk::{Ask, Model, Purpose};
 
-use super::{Command, RasterCommand, Record, SheetCommand, apply};
+use super::{Command, PatchCommand, PlateCommand, RasterCommand, Record, SheetCommand, WindCommand, apply};
 
 #[derive(Clone, Debug, PartialEq)]
 pub enum AskCommand {
@@ -55,6 +55,10 @@ fn follow_up(purpose: Purpose, path: PathBuf) -> Command {
     match purpose {
         Purpose::OpenSheet => Command::Sheet(SheetCommand::Open(path)),
         Purpose::SaveSheet => Command::Sheet(SheetCommand::SaveAs(path)),
+        Purpose::BringPatches => Command::Patch(PatchCommand::Bring(path)),
+        Purpose::ExportPlate => Command::Plate(PlateCommand::Export(path)),
+        Purpose::HandOver => Command::Plate(PlateCommand::HandOver(path)),
+        Purpose::ImportWinds => Command::Wind(WindCommand::Preview(path)),
         Purpose::OpenRaster => Command::Raster(RasterCommand::Open(path)),
     }
 }

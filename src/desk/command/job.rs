@@ -8,14 +8,19 @@ use super::Record;
 pub enum JobCommand {
     Stop(Slot),
     StopAll,
+    /// Forgets what was measured and measures everything again.
+    MeasureAgain,
 }
 
 impl JobCommand {
-    pub(super) const LISTED: &[Self] = &[Self::StopAll];
+    pub(super) const LISTED: &[Self] = &[Self::MeasureAgain, Self::StopAll];
 
     pub(super) fn record(&self) -> Record {
         match self {
             Self::Stop(_) => Record::new("job.stop", "Stop", "Ends this work; what is done stays."),
+            Self::MeasureAgain => {
+                Record::new("job.measure", "Measure again", "Measures every patch anew.").key("F5")
+            }
             Self::StopAll => {
                 Record::new("job.stop-all", "Stop all work", "Ends everything that runs.").ctrl("Period")
             }
@@ -26,14 +31,29 @@ impl JobCommand {
         match self {
             Self::Stop(slot) if !model.session.jobs.is_running(*slot) => Some("it is over"),
             Self::StopAll if model.session.jobs.is_idle() => Some("nothing is running"),
+            Self::MeasureAgain if model.sheet.patches.is_empty() => Some("the sheet has no patch"),
             _ => None,
         }
     }
 
     pub(super) fn apply(self, model: &mut Model) {
         match self {
-            Self::Stop(slot) => model.session.jobs.stop(slot),
-            Self::StopAll => Slot::ALL.into_iter().for_each(|slot| model.session.jobs.stop(slot)),
+            Self::Stop(slot) => stop(model, &[slot]),
+            Self::StopAll => stop(model, &Slot::ALL),
+            Self::MeasureAgain => {
+                model.session.jobs.abandon(Slot::Measure);
+                model.session.forget_measured();
+            }
         }
+    }
+}
+
+fn stop(model: &mut Model, slots: &[Slot]) {
+    for slot in slots {
+        model.session.jobs.stop(*slot);
+    }
+    // What was stopped stays stopped until the sheet changes.
+    if slots.contains(&Slot::Measure) {
+        model.session.pause_measuring(&model.sheet);
     }
 }

@@ -4,24 +4,28 @@ mod ask;
 mod draw;
 mod job;
 mod patch;
+mod plate;
 mod raster;
 mod setting;
 mod sheet;
 mod view;
+mod wind;
 
 pub use ask::AskCommand;
 pub use draw::DrawCommand;
 pub use job::JobCommand;
 pub use patch::PatchCommand;
+pub use plate::PlateCommand;
 pub use raster::RasterCommand;
 pub use setting::SettingCommand;
 pub use sheet::SheetCommand;
 pub use view::ViewCommand;
+pub use wind::WindCommand;
 
 use std::fmt;
 use std::path::PathBuf;
 
-use super::{MergeKey, Model};
+use super::{MergeKey, Model, plates};
 
 /// Everything a user can ask for, by area.
 #[derive(Clone, Debug, PartialEq)]
@@ -31,6 +35,8 @@ pub enum Command {
     Raster(RasterCommand),
     Patch(PatchCommand),
     Draw(DrawCommand),
+    Wind(WindCommand),
+    Plate(PlateCommand),
     Setting(SettingCommand),
     Job(JobCommand),
     View(ViewCommand),
@@ -105,6 +111,8 @@ impl Command {
             Self::Raster(c) => c.record(),
             Self::Patch(c) => c.record(),
             Self::Draw(c) => c.record(),
+            Self::Wind(c) => c.record(),
+            Self::Plate(c) => c.record(),
             Self::Setting(c) => c.record(),
             Self::Job(c) => c.record(),
             Self::View(c) => c.record(),
@@ -115,6 +123,8 @@ impl Command {
     pub fn of_file(path: PathBuf) -> Self {
         let ending = path.extension().map(|e| e.to_string_lossy().to_lowercase()).unwrap_or_default();
         match ending.as_str() {
+            "csv" | "txt" | "dat" | "tsv" => Self::Wind(WindCommand::Preview(path)),
+            "gpkg" | "geojson" => Self::Patch(PatchCommand::Bring(path)),
             "json" => Self::Sheet(SheetCommand::Open(path)),
             _ => Self::Raster(RasterCommand::Open(path)),
         }
@@ -128,6 +138,8 @@ impl Command {
             Self::Raster(c) => c.refusal(model),
             Self::Patch(c) => c.refusal(model),
             Self::Draw(c) => c.refusal(model),
+            Self::Wind(c) => c.refusal(model),
+            Self::Plate(c) => c.refusal(model),
             Self::Setting(c) => c.refusal(model),
             Self::Job(c) => c.refusal(model),
             Self::View(c) => c.refusal(model),
@@ -139,8 +151,11 @@ impl Command {
         match self {
             Self::Raster(c) => c.merge_key(),
             Self::Patch(c) => c.merge_key(),
+            Self::Wind(c) => c.merge_key(),
             Self::Setting(c) => c.merge_key(),
-            Self::Sheet(_) | Self::Ask(_) | Self::Draw(_) | Self::Job(_) | Self::View(_) => None,
+            Self::Sheet(_) | Self::Ask(_) | Self::Draw(_) | Self::Job(_) | Self::Plate(_) | Self::View(_) => {
+                None
+            }
         }
     }
 
@@ -155,12 +170,14 @@ pub fn listed() -> Vec<Command> {
     let sheet = SheetCommand::LISTED.iter().cloned().map(Command::Sheet);
     let raster = RasterCommand::LISTED.iter().cloned().map(Command::Raster);
     let setting = SettingCommand::LISTED.iter().cloned().map(Command::Setting);
+    let plate = PlateCommand::LISTED.iter().cloned().map(Command::Plate);
     let job = JobCommand::LISTED.iter().cloned().map(Command::Job);
+    let wind = WindCommand::LISTED.iter().cloned().map(Command::Wind);
     let draw = DrawCommand::LISTED.iter().cloned().map(Command::Draw);
     let patch = PatchCommand::LISTED.iter().cloned().map(Command::Patch);
     let view = ViewCommand::LISTED.iter().cloned().map(Command::View);
-    let making = sheet.chain(raster).chain(draw).chain(patch);
-    making.chain(setting).chain(job).chain(view).collect()
+    let making = sheet.chain(raster).chain(wind).chain(draw).chain(patch);
+    making.chain(plate).chain(setting).chain(job).chain(view).collect()
 }
 
 /// Does what `command` asks. The only way the sheet and the view change.
@@ -182,6 +199,8 @@ pub fn apply(model: &mut Model, command: Command) {
         Command::Raster(c) => c.apply(model),
         Command::Patch(c) => c.apply(model),
         Command::Draw(c) => c.apply(model),
+        Command::Wind(c) => c.apply(model),
+        Command::Plate(c) => c.apply(model),
         Command::Setting(c) => c.apply(model),
         Command::Job(c) => c.apply(model),
         Command::View(c) => c.apply(model),
@@ -189,7 +208,9 @@ pub fn apply(model: &mut Model, command: Command) {
     if record.editing {
         model.session.history.forget_if_unchanged(&model.sheet);
     }
-    if !passive {
+    if passive {
+        plates::follow(model);
+    } else {
         model.keep_up();
     }
 }

@@ -1,6 +1,9 @@
 //! Patches: outlines and what belongs to them.
 
-use crate::desk::{MergeKey, Model};
+use std::path::{Path, PathBuf};
+
+use crate::desk::{Ask, MergeKey, Model, Purpose};
+use crate::files::layers::read_patches;
 use crate::ground::{Point, Polygon};
 use crate::study::{Id, Patch};
 
@@ -30,6 +33,9 @@ pub enum PatchCommand {
         id: Id,
         wind: Option<Id>,
     },
+    AskBring,
+    /// Adds the outlines of a GeoPackage or GeoJSON file to the raster on the table.
+    Bring(PathBuf),
     Select(Option<Id>),
     SelectNext,
     SelectPrevious,
@@ -40,7 +46,7 @@ pub enum PatchCommand {
 
 impl PatchCommand {
     pub(super) const LISTED: &[Self] =
-        &[Self::Whole, Self::SelectNext, Self::SelectPrevious, Self::Duplicate, Self::Delete];
+        &[Self::Whole, Self::AskBring, Self::SelectNext, Self::SelectPrevious, Self::Duplicate, Self::Delete];
 
     pub(super) fn record(&self) -> Record {
         match self {
@@ -55,6 +61,14 @@ impl PatchCommand {
             Self::JudgeBy { .. } => {
                 Record::new("patch.judge-by", "Judge by wind", "Which wind record the verdict uses.")
                     .editing()
+            }
+            Self::AskBring => Record::new(
+                "patch.bring",
+                "Bring in patches…",
+                "Adds outlines from a GeoPackage or GeoJSON file to the raster on the table.",
+            ),
+            Self::Bring(_) => {
+                Record::new("patch.bring-path", "Bring in patches", "Adds the outlines of a file.").editing()
             }
             Self::Select(_) => Record::new("patch.select", "Select patch", "Shows the patch on the bench."),
             Self::SelectNext => {
@@ -92,7 +106,9 @@ impl PatchCommand {
             Self::SelectNext | Self::SelectPrevious if model.sheet.patches.is_empty() => {
                 Some("the sheet has no patch")
             }
-            Self::Whole if model.shown_size().is_none() => Some("no raster is open"),
+            Self::Whole | Self::AskBring | Self::Bring(_) if model.shown_size().is_none() => {
+                Some("no raster is open")
+            }
             Self::Reshape { id, .. }
             | Self::Rename { id, .. }
             | Self::Tag { id, .. }
@@ -119,6 +135,8 @@ impl PatchCommand {
             Self::Rename { id, name } => change(model, id, |patch| patch.name = name),
             Self::Tag { id, tags } => change(model, id, |patch| patch.tags = tags),
             Self::JudgeBy { id, wind } => change(model, id, |patch| patch.wind = wind),
+            Self::AskBring => model.session.ask = Some(Ask::new(Purpose::BringPatches, "")),
+            Self::Bring(path) => bring(model, &path),
             Self::Select(id) => select(model, id),
             Self::SelectNext => step(model, 1),
             Self::SelectPrevious => step(model, -1),
@@ -131,6 +149,32 @@ impl PatchCommand {
             Self::Delete => delete(model),
         }
     }
+}
+
+fn bring(model: &mut Model, path: &Path) {
+    let Some((raster, size)) = model.shown_size() else { return };
+    let Some(open) = model.session.sources.get(&raster) else { return };
+    let epsg = open.raster.info().georeference.as_ref().and_then(|g| g.epsg);
+    let read = match read_patches(path, &open.place, epsg, size) {
+        Ok(read) => read,
+        Err(why) => {
+            return model.session.notices.problem(format!("{} gives no patches: {why}", path.display()));
+        }
+    };
+    let count = read.shapes.len();
+    for shape in read.shapes {
+        let (id, tags) = (model.sheet.fresh_id(), shape.tags);
+        model.sheet.patches.push(Patch {
+            id,
+            name: shape.name,
+            raster,
+            outline: shape.outline,
+            tags,
+            wind: None,
+        });
+    }
+    read.notes.iter().for_each(|note| model.session.notices.problem(note.as_str()));
+    model.session.notices.done_with_undo(format!("Brought in {count} patches"));
 }
 
 fn change(model: &mut Model, id: Id, f: impl FnOnce(&mut Patch)) {

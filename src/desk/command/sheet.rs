@@ -3,7 +3,7 @@
 use std::path::PathBuf;
 
 use crate::desk::engine;
-use crate::desk::{Ask, Dialog, Model, Purpose};
+use crate::desk::{Answer, Ask, Dialog, Model, Purpose, Slot};
 use crate::ground::Seed;
 
 use super::{Command, Record, apply};
@@ -13,6 +13,8 @@ pub enum SheetCommand {
     New,
     AskOpen,
     Open(PathBuf),
+    /// Lays out Sorrel Reach on disk and opens it.
+    Demo,
     Save,
     AskSaveAs,
     SaveAs(PathBuf),
@@ -29,14 +31,27 @@ pub enum SheetCommand {
 }
 
 impl SheetCommand {
-    pub(super) const LISTED: &[Self] =
-        &[Self::New, Self::AskOpen, Self::Save, Self::AskSaveAs, Self::Undo, Self::Redo, Self::Quit];
+    pub(super) const LISTED: &[Self] = &[
+        Self::New,
+        Self::AskOpen,
+        Self::Demo,
+        Self::Save,
+        Self::AskSaveAs,
+        Self::Undo,
+        Self::Redo,
+        Self::Quit,
+    ];
 
     pub(super) fn record(&self) -> Record {
         match self {
             Self::New => Record::new("sheet.new", "New sheet", "Starts an empty sheet.").ctrl("N"),
             Self::AskOpen => Record::new("sheet.open", "Open sheet…", "Opens a saved sheet.").ctrl("O"),
             Self::Open(_) => Record::new("sheet.open-path", "Open this sheet", "Opens the sheet at a path."),
+            Self::Demo => Record::new(
+                "sheet.demo",
+                "Open the demo",
+                "Sorrel Reach: an invented sand sea with known truth.",
+            ),
             Self::Save => {
                 Record::new("sheet.save", "Save sheet", "Writes the sheet, keeping one backup.").ctrl("S")
             }
@@ -87,6 +102,9 @@ impl SheetCommand {
             }
             Self::New => model.replace(crate::study::Sheet::empty("Untitled"), Default::default(), None),
             Self::Open(path) => open(model, path),
+            Self::Demo => model.session.jobs.start(Slot::Demo, "Laying out Sorrel Reach", |_, post| {
+                post.answer(Answer::Demo(engine::lay_out_demo()));
+            }),
             Self::Quit => model.session.leaving = true,
             Self::AskOpen => model.session.ask = Some(Ask::new(Purpose::OpenSheet, "")),
             Self::AskSaveAs => ask_save(model),
@@ -94,7 +112,7 @@ impl SheetCommand {
                 Some(path) => save(model, path),
                 None => ask_save(model),
             },
-            Self::SaveAs(path) => save(model, path),
+            Self::SaveAs(path) => save(model, with_ending(path)),
             Self::Undo => {
                 if let Some(label) = model.session.history.undo(&mut model.sheet) {
                     model.session.notices.done(format!("Taken back: {}", label.to_lowercase()));
@@ -129,6 +147,11 @@ fn ask_save(model: &mut Model) {
     model.session.ask = Some(Ask::new(Purpose::SaveSheet, format!("{}.sheet.json", stem.to_lowercase())));
 }
 
+/// `path` with the ending of sheets, when it has none.
+fn with_ending(path: PathBuf) -> PathBuf {
+    if path.extension().is_some() { path } else { path.with_extension("sheet.json") }
+}
+
 fn open(model: &mut Model, path: PathBuf) {
     match engine::read_sheet(&path) {
         Ok((sheet, view)) => {
@@ -154,5 +177,61 @@ fn save(model: &mut Model, path: PathBuf) {
             model.session.after_save = None;
             model.session.notices.problem(format!("Cannot save {}: {why}", path.display()));
         }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use std::sync::Arc;
+
+    use super::SheetCommand;
+    use crate::desk::{Command, Dialog, Model, Theme, ViewCommand, apply};
+
+    fn give(model: &mut Model, command: SheetCommand) {
+        apply(model, Command::Sheet(command));
+    }
+
+    #[test]
+    fn changes_are_not_lost_without_a_word() {
+        let mut model = Model::new(Arc::new(|| ()));
+        give(&mut model, SheetCommand::Retitle("North plain".into()));
+        give(&mut model, SheetCommand::Quit);
+        assert!(!model.session.leaving);
+        assert!(matches!(model.session.dialog, Some(Dialog::Unsaved(_))));
+        apply(&mut model, Command::View(ViewCommand::Close));
+        assert!(!model.session.leaving, "closing the question stays here");
+        give(&mut model, SheetCommand::Quit);
+        give(&mut model, SheetCommand::Discard);
+        assert!(model.session.leaving);
+    }
+
+    #[test]
+    fn a_saved_sheet_reopens_the_same_with_its_view() {
+        let folder = tempfile::tempdir().unwrap();
+        let mut model = Model::new(Arc::new(|| ()));
+        give(&mut model, SheetCommand::Retitle("North plain".into()));
+        apply(&mut model, Command::View(ViewCommand::Page(crate::desk::Page::Verdict)));
+        give(&mut model, SheetCommand::SaveAs(folder.path().join("north")));
+        assert!(!model.is_dirty());
+        let (sheet, view) = (model.sheet.clone(), model.view.clone());
+        give(&mut model, SheetCommand::New);
+        assert_eq!(model.sheet.title, "Untitled");
+        give(&mut model, SheetCommand::Open(folder.path().join("north.sheet.json")));
+        assert_eq!((&model.sheet, &model.view), (&sheet, &view));
+        assert_eq!(model.view.theme, Theme::Light);
+        assert!(!model.is_dirty() && !model.session.history.can_undo());
+    }
+
+    #[test]
+    fn saving_first_goes_on_with_what_was_asked() {
+        let folder = tempfile::tempdir().unwrap();
+        let mut model = Model::new(Arc::new(|| ()));
+        give(&mut model, SheetCommand::SaveAs(folder.path().join("a.sheet.json")));
+        give(&mut model, SheetCommand::Retitle("changed".into()));
+        give(&mut model, SheetCommand::New);
+        give(&mut model, SheetCommand::SaveFirst);
+        assert_eq!(model.sheet.title, "Untitled");
+        let text = std::fs::read_to_string(folder.path().join("a.sheet.json")).unwrap();
+        assert!(text.contains("changed"), "{text}");
     }
 }

@@ -19,13 +19,28 @@ pub enum WindCommand {
     /// Another reading of the file in the preview.
     Reread(WindImport),
     /// Mast and name in the preview.
-    Describe { name: String, height_m: f64, roughness_m: f64, body: Option<Body> },
+    Describe {
+        name: String,
+        height_m: f64,
+        roughness_m: f64,
+        body: Option<Body>,
+    },
     /// Puts the record of the preview on the sheet.
     Accept,
     Forget,
-    Rename { id: Id, name: String },
-    Mast { id: Id, height_m: f64, roughness_m: f64 },
-    Body { id: Id, body: Option<Body> },
+    Rename {
+        id: Id,
+        name: String,
+    },
+    Mast {
+        id: Id,
+        height_m: f64,
+        roughness_m: f64,
+    },
+    Body {
+        id: Id,
+        body: Option<Body>,
+    },
     Remove(Id),
 }
 
@@ -34,14 +49,20 @@ impl WindCommand {
 
     pub(super) fn record(&self) -> Record {
         match self {
-            Self::AskImport => {
-                Record::new("wind.import", "Import winds…", "Reads a wind record and shows what it is taken for.")
-                    .ctrl("I")
-            }
+            Self::AskImport => Record::new(
+                "wind.import",
+                "Import winds…",
+                "Reads a wind record and shows what it is taken for.",
+            )
+            .ctrl("I"),
             Self::Preview(_) => Record::new("wind.preview", "Preview winds", "Shows how a file is read."),
             Self::Review(_) => Record::new("wind.review", "Review reading…", "Shows the preview again."),
-            Self::Reread(_) => Record::new("wind.reread", "Read differently", "Changes how the file is read."),
-            Self::Describe { .. } => Record::new("wind.describe", "Describe the mast", "Height and roughness."),
+            Self::Reread(_) => {
+                Record::new("wind.reread", "Read differently", "Changes how the file is read.")
+            }
+            Self::Describe { .. } => {
+                Record::new("wind.describe", "Describe the mast", "Height and roughness.")
+            }
             Self::Accept => {
                 Record::new("wind.accept", "Use this record", "Puts the record on the sheet.").editing()
             }
@@ -50,7 +71,8 @@ impl WindCommand {
                 Record::new("wind.rename", "Rename winds", "Gives the record another name.").editing()
             }
             Self::Mast { .. } => {
-                Record::new("wind.mast", "Change mast", "Height of the mast and roughness of the ground.").editing()
+                Record::new("wind.mast", "Change mast", "Height of the mast and roughness of the ground.")
+                    .editing()
             }
             Self::Body { .. } => {
                 Record::new("wind.body", "Change body of the winds", "Whose air and gravity apply.").editing()
@@ -69,7 +91,11 @@ impl WindCommand {
                 Some("no file is in the preview")
             }
             Self::Accept => model.session.import.as_ref().and_then(Import::hindrance),
-            Self::Review(id) | Self::Rename { id, .. } | Self::Mast { id, .. } | Self::Body { id, .. } | Self::Remove(id)
+            Self::Review(id)
+            | Self::Rename { id, .. }
+            | Self::Mast { id, .. }
+            | Self::Body { id, .. }
+            | Self::Remove(id)
                 if model.sheet.wind(*id).is_none() =>
             {
                 Some("the record is gone")

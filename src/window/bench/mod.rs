@@ -1,16 +1,18 @@
 //! The bench: the evidence for the selected patch, page by page, in the order of the reasoning.
 
 mod ground;
+mod plate;
 mod spacing;
 mod trend;
 mod verdict;
+mod winds;
 
 use egui::{RichText, ScrollArea, Ui};
 
-use super::controls::{Commands, caution, look, rule, toggle};
+use super::controls::{Commands, caution, line, look, quiet, rule, toggle};
 use super::theme;
-use crate::desk::{Command, Model, Page, ViewCommand};
-use crate::study::PatchFinding;
+use crate::desk::{Command, Model, Page, PatchCommand, ViewCommand};
+use crate::study::{Patch, PatchFinding};
 
 pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
     ui.horizontal_wrapped(|ui| {
@@ -24,33 +26,58 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
     ScrollArea::vertical().id_salt(model.view.page.label()).auto_shrink([false, false]).show(ui, |ui| {
         match model.view.page {
             Page::Ground => ground::show(ui, model, out),
-            Page::Trend => with_finding(ui, model, trend::show),
-            Page::Spacing => with_finding(ui, model, spacing::show),
-            Page::Winds => {}
-            Page::Verdict => with_finding(ui, model, verdict::show),
-            Page::Plate => {}
+            Page::Winds => winds::show(ui, model, out),
+            Page::Plate => plate::show(ui, model, out),
+            Page::Trend | Page::Spacing | Page::Verdict => {
+                let Some(finding) = subject(ui, model, out) else { return };
+                match model.view.page {
+                    Page::Trend => trend::show(ui, model, finding),
+                    Page::Spacing => spacing::show(ui, model, finding),
+                    _ => verdict::show(ui, model, finding, out),
+                }
+            }
         }
     });
 }
 
-/// Shows a page of the selected patch's finding, or says why there is none.
-fn with_finding(ui: &mut Ui, model: &Model, page: impl Fn(&mut Ui, &Model, &PatchFinding)) {
-    let look = look(model);
+/// The selected patch's head and its finding; says why there is none.
+fn subject<'a>(ui: &mut Ui, model: &'a Model, out: &mut Commands) -> Option<&'a PatchFinding> {
     let Some(patch) = model.selected_patch() else {
         say(ui, model, "Select a patch in the ledger, or outline one on the table.");
-        return;
+        return None;
     };
-    ui.label(RichText::new(&patch.name).family(theme::bold()).size(17.0));
-    let results = &model.session.results;
+    patch_head(ui, model, patch, out);
+    let (look, results) = (look(model), &model.session.results);
     let standing = results.standing(patch.id);
     if !standing.remark().is_empty() {
         caution(ui, &look, standing.remark());
     }
-    match results.measured(patch.id).map(|m| &m.outcome) {
-        Some(Ok(finding)) => page(ui, model, finding),
-        Some(Err(why)) => caution(ui, &look, why),
-        None => {}
+    match &results.measured(patch.id)?.outcome {
+        Ok(finding) => Some(finding),
+        Err(why) => {
+            caution(ui, &look, why);
+            None
+        }
     }
+}
+
+/// The patch's name and tags, and what can be done with it.
+fn patch_head(ui: &mut Ui, model: &Model, patch: &Patch, out: &mut Commands) {
+    ui.horizontal(|ui| {
+        if let Some(name) = line(ui, "Name of the patch", &patch.name, 170.0) {
+            out.push(Command::Patch(PatchCommand::Rename { id: patch.id, name }));
+        }
+        ui.label(RichText::new("tags").small().color(theme::color(look(model).ink_soft)));
+        if let Some(tags) = line(ui, "Tags of the patch", &patch.tags.join(" "), 90.0) {
+            let tags = tags.split_whitespace().map(str::to_owned).collect();
+            out.push(Command::Patch(PatchCommand::Tag { id: patch.id, tags }));
+        }
+    });
+    ui.horizontal(|ui| {
+        quiet(ui, model, out, Command::View(ViewCommand::WholePatch), "Show large");
+        quiet(ui, model, out, Command::Patch(PatchCommand::Duplicate), "Duplicate");
+        quiet(ui, model, out, Command::Patch(PatchCommand::Delete), "Delete");
+    });
 }
 
 /// A quiet sentence where there is nothing to show yet.

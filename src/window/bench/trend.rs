@@ -4,7 +4,7 @@ use egui::Ui;
 
 use super::figure_mm;
 use crate::desk::{Model, facts, ledger};
-use crate::plate::{numbers, rose};
+use crate::plate::{modes, numbers, rose};
 use crate::study::PatchFinding;
 use crate::window::controls::{self, caution, heading, look, rule};
 use crate::window::{figure, theme};
@@ -18,6 +18,8 @@ pub fn show(ui: &mut Ui, model: &Model, finding: &PatchFinding) {
     controls::facts(ui, &look, &facts::trend(finding));
     if finding.trend.modes.len() > 1 {
         heading(ui, "More than one trend");
+        let bars = modes(&finding.trend, figure_mm(ui), &look);
+        figure::show(ui, &bars, theme::POINTS_PER_MM, "Components of the mixture of trends");
         for mode in &finding.trend.modes {
             let words = format!(
                 "{}° with {} of the weight, κ {}",

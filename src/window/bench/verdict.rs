@@ -4,18 +4,25 @@
 use egui::{Grid, RichText, Ui};
 
 use super::{figure_mm, say};
-use crate::desk::{Model, facts};
+use crate::desk::{Command, Model, SettingCommand, facts};
 use crate::plate::{CLASS_NAMES, dial, numbers, posterior_bars};
 use crate::study::{PatchFinding, VerdictFinding};
-use crate::window::controls::{self, caution, heading, look, rule};
+use crate::window::controls::{self, Commands, caution, heading, look, number, rule};
 use crate::window::{figure, theme};
 
-pub fn show(ui: &mut Ui, model: &Model, finding: &PatchFinding) {
+/// The theories in the order of their priors.
+const THEORIES: [&str; 4] =
+    ["across the resultant", "along the resultant", "gross bedform-normal", "random axis"];
+
+pub fn show(ui: &mut Ui, model: &Model, finding: &PatchFinding, out: &mut Commands) {
     if finding.verdicts.is_empty() {
         say(ui, model, "No wind record is on the sheet. Import winds to judge this patch by them.");
     }
     for verdict in &finding.verdicts {
         one(ui, model, verdict);
+    }
+    if !finding.verdicts.is_empty() {
+        priors(ui, model, out);
     }
 }
 
@@ -38,6 +45,24 @@ fn one(ui: &mut Ui, model: &Model, verdict: &VerdictFinding) {
         theories(ui, model, verdict);
     }
     verdict.cautions.iter().for_each(|c| caution(ui, &look, &c.text));
+}
+
+/// What was believed before the ground was looked at; weights, only their ratios count.
+fn priors(ui: &mut Ui, model: &Model, out: &mut Commands) {
+    heading(ui, "Priors");
+    let mut weights = model.sheet.settings.verdict.priors;
+    Grid::new("priors").num_columns(2).spacing([12.0, 4.0]).show(ui, |ui| {
+        for (name, weight) in THEORIES.iter().zip(&mut weights) {
+            ui.label(*name);
+            if let Some(typed) = number(ui, &format!("Prior weight of {name}"), *weight, 60.0) {
+                *weight = typed;
+            }
+            ui.end_row();
+        }
+    });
+    if weights != model.sheet.settings.verdict.priors {
+        out.push(Command::Setting(SettingCommand::Priors(weights)));
+    }
 }
 
 fn classes(ui: &mut Ui, model: &Model, verdict: &VerdictFinding) {

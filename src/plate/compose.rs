@@ -1,0 +1,94 @@
+//! Plates straight from a study: the pixels read, toned and set among the findings.
+
+use crate::ground::{Bounds, Point, Polygon, Work};
+use crate::study::glance::{Glance, glance};
+use crate::study::{
+    Findings, Id, OpenRaster, PatchFinding, RasterEntry, Sheet, Sources, WindFinding, fingerprint, run,
+};
+
+use super::map::{MapView, surroundings, toned};
+use super::{Figure, OverviewPlate, PatchPlate, Recipe, Theme, overview_plate, patch_plate};
+
+/// Cells a side of the picture on a plate: 300 dpi over half a page and some.
+const LONGEST: usize = 1400;
+
+/// The recipe printed on every plate of a sheet.
+pub fn recipe(sheet: &Sheet) -> Recipe {
+    Recipe {
+        program: concat!("Ventifact ", env!("CARGO_PKG_VERSION")).into(),
+        sheet_title: sheet.title.clone(),
+        sheet_fingerprint: fingerprint::of_sheet(sheet),
+        seed: sheet.seed.0,
+    }
+}
+
+/// The plate of one patch.
+///
+/// # Errors
+/// Why it cannot be made, in words: the raster is not open, its pixels cannot be read.
+pub fn of_patch(
+    sheet: &Sheet,
+    sources: &Sources,
+    finding: &PatchFinding,
+    winds: &[WindFinding],
+    width_mm: f64,
+    theme: &Theme,
+    work: &Work,
+) -> Result<Figure, String> {
+    let (entry, open) = raster_of(sheet, sources, finding.raster)?;
+    let patch = sheet.patch(finding.id).ok_or("the sheet no longer has this patch")?;
+    let info = open.raster.info();
+    let bounds = surroundings(&patch.outline, [info.width as f64, info.height as f64]);
+    let Glance { grid, covers } = glance(entry, open, bounds, LONGEST, work)?;
+    let picture = toned(&grid, &entry.tone);
+    let others = sheet.patches.iter().filter(|p| p.raster == finding.raster && p.id != finding.id);
+    let plate = PatchPlate {
+        patch: finding,
+        outline: &patch.outline,
+        neighbours: others.map(|p| (p.name.as_str(), &p.outline)).collect(),
+        raster: &run::raster(entry, open),
+        view: MapView { picture: &picture, covers, place: &open.place },
+        winds,
+        recipe: &recipe(sheet),
+    };
+    Ok(patch_plate(&plate, width_mm, theme))
+}
+
+/// The overview plate of one raster.
+///
+/// # Errors
+/// As [`of_patch`].
+pub fn overview(
+    sheet: &Sheet,
+    sources: &Sources,
+    findings: &Findings,
+    raster: Id,
+    width_mm: f64,
+    theme: &Theme,
+    work: &Work,
+) -> Result<Figure, String> {
+    let (entry, open) = raster_of(sheet, sources, raster)?;
+    let info = open.raster.info();
+    let whole = Bounds { min: Point::default(), max: Point::new(info.width as f64, info.height as f64) };
+    let Glance { grid, covers } = glance(entry, open, whole, LONGEST, work)?;
+    let picture = toned(&grid, &entry.tone);
+    let outlines: Vec<(Id, &Polygon)> = sheet.patches.iter().map(|p| (p.id, &p.outline)).collect();
+    let plate = OverviewPlate {
+        findings,
+        raster: &run::raster(entry, open),
+        outlines,
+        view: MapView { picture: &picture, covers, place: &open.place },
+        recipe: &recipe(sheet),
+    };
+    Ok(overview_plate(&plate, width_mm, theme))
+}
+
+fn raster_of<'a>(
+    sheet: &'a Sheet,
+    sources: &'a Sources,
+    id: Id,
+) -> Result<(&'a RasterEntry, &'a OpenRaster), String> {
+    let entry = sheet.raster(id).ok_or("the sheet no longer has this raster")?;
+    let open = sources.rasters.get(&id).ok_or_else(|| format!("the raster {} is not open", entry.name))?;
+    Ok((entry, open))
+}

@@ -1,0 +1,175 @@
+//! The whole window, driven as a user would: by role and label, by pointer, by keys.
+
+use std::path::PathBuf;
+use std::time::{Duration, Instant};
+
+use egui::accesskit::Role;
+use egui::{Key, Modifiers, Pos2, vec2};
+use egui_kittest::Harness;
+use egui_kittest::kittest::{NodeT as _, Queryable as _};
+use ventifact::desk::{Command, Model, Page, SheetCommand, Standing, ViewCommand, listed};
+use ventifact::study::demo;
+use ventifact::window::App;
+
+use crate::harness::window;
+use crate::scene::sorrel_reach;
+
+/// The window and the model it starts with.
+struct Desk {
+    model: Option<Model>,
+    app: Option<App>,
+}
+
+impl Desk {
+    fn app(&self) -> &App {
+        self.app.as_ref().expect("the first frame makes the application")
+    }
+}
+
+/// A window of `size` points on `model`, with no system dialogs.
+fn open(model: Model, size: [f32; 2]) -> Harness<'static, Desk> {
+    let mut harness = window(size, egui::Theme::Light).build_ui_state(
+        |ui, desk: &mut Desk| match &mut desk.app {
+            Some(app) => {
+                app.take_in(ui.ctx());
+                app.show(ui);
+            }
+            // Fonts set in a frame are there in the next one.
+            None => desk.app = desk.model.take().map(|model| App::new(ui.ctx(), model, false)),
+        },
+        Desk { model: Some(model), app: None },
+    );
+    harness.run_steps(3);
+    harness
+}
+
+fn give(harness: &mut Harness<'_, Desk>, command: Command) {
+    if let Some(app) = &mut harness.state_mut().app {
+        app.give(command);
+    }
+    harness.run_steps(2);
+}
+
+/// Draws frames until `done`.
+fn wait(harness: &mut Harness<'_, Desk>, what: &str, done: impl Fn(&Model) -> bool) {
+    let end = Instant::now() + Duration::from_secs(120);
+    while !done(harness.state().app().model()) {
+        assert!(Instant::now() < end, "waited in vain for {what}");
+        harness.step();
+        std::thread::sleep(Duration::from_millis(10));
+    }
+    harness.run_steps(2);
+}
+
+fn key(harness: &mut Harness<'_, Desk>, modifiers: Modifiers, key: Key) {
+    harness.key_press_modifiers(modifiers, key);
+    harness.run_steps(3);
+}
+
+fn blank() -> Model {
+    Model::new(std::sync::Arc::new(|| ()))
+}
+
+/// The demo laid out in a folder of its own, which goes when the guard is dropped.
+fn demo_on_disk() -> (tempfile::TempDir, PathBuf) {
+    let folder = tempfile::tempdir().expect("a temporary folder");
+    let sheet = demo::lay_out(folder.path()).expect("the demo is laid out");
+    (folder, sheet)
+}
+
+fn click(harness: &mut Harness<'_, Desk>, role: Role, label: &str) {
+    harness.get_by_role_and_label(role, label).click();
+    harness.run_steps(3);
+}
+
+/// Presses and releases the pointer.
+fn click_at(harness: &mut Harness<'_, Desk>, at: Pos2) {
+    harness.drag_at(at);
+    harness.run_steps(1);
+    harness.drop_at(at);
+    harness.run_steps(2);
+}
+
+#[test]
+fn outline_a_patch_on_the_demo_see_numbers_undo_and_export_a_plate() {
+    let (folder, sheet) = demo_on_disk();
+    let mut harness = open(blank(), [1440.0, 900.0]);
+    give(&mut harness, Command::Sheet(SheetCommand::Open(sheet)));
+    wait(&mut harness, "the mosaic", |model| model.shown_size().is_some());
+    let before = harness.state().app().model().sheet.patches.len();
+
+    key(&mut harness, Modifiers::NONE, Key::R);
+    let table = harness.get_by_role(Role::Canvas).rect();
+    let centre = table.center();
+    click_at(&mut harness, centre - vec2(110.0, 90.0));
+    click_at(&mut harness, centre + vec2(60.0, 70.0));
+    let model = harness.state().app().model();
+    assert_eq!(model.sheet.patches.len(), before + 1, "two corners make a patch");
+    let id = model.view.patch.expect("the new patch is selected");
+    wait(&mut harness, "the new patch's numbers", move |model| {
+        model.session.results.standing(id) == Standing::Current
+    });
+    let entry = harness.get_by_label_contains("Patch 1");
+    let spoken = entry.accesskit_node().label().unwrap_or_default();
+    assert!(spoken.contains('°') || spoken.contains("no preferred trend"), "{spoken}");
+
+    let plate = folder.path().join("patch.svg");
+    give(&mut harness, Command::View(ViewCommand::Page(Page::Plate)));
+    click(&mut harness, Role::Button, "Export plate…");
+    harness.get_by_role_and_label(Role::TextInput, "Path").focus();
+    harness.run_steps(2);
+    key(&mut harness, Modifiers::COMMAND, Key::A);
+    harness.get_by_role_and_label(Role::TextInput, "Path").type_text(&plate.to_string_lossy());
+    harness.run_steps(2);
+    key(&mut harness, Modifiers::NONE, Key::Enter);
+    wait(&mut harness, "the plate", |_| plate.is_file());
+    let svg = std::fs::read_to_string(&plate).expect("the plate is text");
+    assert!(svg.contains("<svg") && svg.contains("Patch 1"), "{}", &svg[..200.min(svg.len())]);
+
+    key(&mut harness, Modifiers::COMMAND, Key::Z);
+    assert_eq!(harness.state().app().model().sheet.patches.len(), before, "undo takes the patch away");
+}
+
+#[test]
+fn every_command_is_found_by_its_words_and_says_why_it_cannot_be_given() {
+    let mut harness = open(blank(), [1280.0, 800.0]);
+    for command in listed() {
+        key(&mut harness, Modifiers::COMMAND, Key::K);
+        let record = command.record();
+        harness.get_by_role_and_label(Role::TextInput, "Find a command").type_text(record.label);
+        harness.run_steps(3);
+        assert!(
+            harness.query_by_role_and_label(Role::MenuItem, record.label).is_some(),
+            "{} is not in the finder",
+            record.id
+        );
+        key(&mut harness, Modifiers::NONE, Key::Escape);
+        assert!(harness.state().app().model().session.dialog.is_none(), "Escape closes the finder");
+    }
+}
+
+#[test]
+fn the_keyboard_alone_outlines_renames_and_deletes() {
+    let mut model = sorrel_reach(0.0);
+    model.session.measures = false;
+    model.sheet.patches.clear();
+    model.session.saved = model.sheet.clone();
+    let mut harness = open(model, [1440.0, 900.0]);
+    key(&mut harness, Modifiers::COMMAND, Key::A);
+    assert_eq!(harness.state().app().model().sheet.patches.len(), 1, "Ctrl + A outlines the whole raster");
+    key(&mut harness, Modifiers::COMMAND, Key::D);
+    assert_eq!(harness.state().app().model().sheet.patches.len(), 2);
+    key(&mut harness, Modifiers::ALT, Key::ArrowUp);
+    key(&mut harness, Modifiers::NONE, Key::Delete);
+    assert_eq!(harness.state().app().model().sheet.patches.len(), 1);
+    key(&mut harness, Modifiers::COMMAND, Key::Z);
+    assert_eq!(harness.state().app().model().sheet.patches.len(), 2, "the notice's promise: undo");
+    for page in [Key::Num1, Key::Num4, Key::Num6] {
+        key(&mut harness, Modifiers::ALT, page);
+    }
+    assert_eq!(harness.state().app().model().view.page, Page::Plate);
+    key(&mut harness, Modifiers::COMMAND, Key::N);
+    assert!(harness.query_by_label("Unsaved changes").is_some(), "changes are not lost without a word");
+    key(&mut harness, Modifiers::NONE, Key::Escape);
+    assert_eq!(harness.state().app().model().sheet.patches.len(), 2);
+}
