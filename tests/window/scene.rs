@@ -70,7 +70,8 @@ pub fn desk(grid: Grid<f32>, place: Place, patches: Vec<Patch>) -> Model {
 
 /// Sorrel Reach with the demo's patches; the raster turned by `turn_deg` on the map.
 pub fn sorrel_reach(turn_deg: f64) -> Model {
-    let projection = Projection::new(reach::PROJECTION, halvane().shape).expect("the demo's projection");
+    let definition = format!("+proj=sinu +lon_0={} +R=1420000 +units=m +no_defs", reach::CENTRE_LON);
+    let projection = Projection::new(&definition, halvane().shape).expect("the demo's projection");
     let (sin, cos) = turn_deg.to_radians().sin_cos();
     let Affine { a, c, e, f, .. } = reach::affine(1);
     let affine = Affine { a: a * cos, b: -e * sin, c, d: a * sin, e: e * cos, f };
