@@ -53,7 +53,7 @@ pub struct Preview {
 
 impl Default for PlateChoice {
     fn default() -> Self {
-        Self { motif: Motif::default(), width_mm: 180.0, format: Format::default(), dpi: 300.0 }
+        Self { motif: Motif::default(), width_mm: compose::WIDTH_MM, format: Format::default(), dpi: 300.0 }
     }
 }
 
@@ -160,27 +160,7 @@ impl Subject {
     /// # Errors
     /// What could not be made or written, in words.
     pub fn hand_over(&self, folder: &Path, work: &crate::ground::Work) -> Result<usize, String> {
-        let theme = Theme::print();
-        let width = PlateChoice::default().width_mm;
-        let mut plates = Vec::new();
-        for finding in &self.findings.patches {
-            let figure = compose::of_patch(
-                &self.sheet,
-                &self.sources,
-                finding,
-                &self.findings.winds,
-                width,
-                &theme,
-                work,
-            )?;
-            plates.push((format!("patch-{}.svg", file_stem(&finding.name)), svg(&figure).into_bytes()));
-        }
-        for id in self.sources.rasters.keys() {
-            let figure =
-                compose::overview(&self.sheet, &self.sources, &self.findings, *id, width, &theme, work)?;
-            let name = self.sheet.raster(*id).map_or("raster", |r| r.name.as_str());
-            plates.push((format!("overview-{}.svg", file_stem(name)), svg(&figure).into_bytes()));
-        }
+        let plates = compose::all(&self.sheet, &self.sources, &self.findings, work)?;
         let written = write_all(folder, &self.sheet, &self.sources, &self.findings, &plates);
         written.map(|names| names.len()).map_err(|e| e.to_string())
     }
@@ -217,9 +197,4 @@ pub fn export(figure: &Figure, choice: &PlateChoice, path: &Path) -> Result<(), 
 /// `path` with the ending of `format`, when it has none.
 pub fn with_ending(path: PathBuf, format: Format) -> PathBuf {
     if path.extension().is_some() { path } else { path.with_extension(format.ending()) }
-}
-
-/// A name as a file name: letters, digits and dashes.
-pub fn file_stem(name: &str) -> String {
-    name.chars().map(|c| if c.is_alphanumeric() { c } else { '-' }).collect::<String>().to_lowercase()
 }

@@ -7,10 +7,13 @@ use crate::study::{
 };
 
 use super::map::{MapView, surroundings, toned};
-use super::{Figure, OverviewPlate, PatchPlate, Recipe, Theme, overview_plate, patch_plate};
+use super::{Figure, OverviewPlate, PatchPlate, Recipe, Theme, overview_plate, patch_plate, pdf, svg};
 
 /// Cells a side of the picture on a plate: 300 dpi over half a page and some.
 const LONGEST: usize = 1400;
+
+/// Two columns of a journal.
+pub const WIDTH_MM: f64 = 180.0;
 
 /// The recipe printed on every plate of a sheet.
 pub fn recipe(sheet: &Sheet) -> Recipe {
@@ -81,6 +84,43 @@ pub fn overview(
         recipe: &recipe(sheet),
     };
     Ok(overview_plate(&plate, width_mm, theme))
+}
+
+/// Every plate of a study as files: name and bytes. One a patch and one a raster that has patches,
+/// each as SVG and as PDF.
+///
+/// # Errors
+/// As [`of_patch`], and when a figure cannot be written, naming the plate.
+pub fn all(
+    sheet: &Sheet,
+    sources: &Sources,
+    findings: &Findings,
+    work: &Work,
+) -> Result<Vec<(String, Vec<u8>)>, String> {
+    let theme = Theme::print();
+    let mut figures = Vec::new();
+    for patch in &findings.patches {
+        let figure = of_patch(sheet, sources, patch, &findings.winds, WIDTH_MM, &theme, work)?;
+        figures.push((format!("patch-{}-{}", patch.id.0, file_stem(&patch.name)), figure));
+    }
+    for raster in &findings.rasters {
+        if findings.patches.iter().any(|p| p.raster == raster.id) {
+            let figure = overview(sheet, sources, findings, raster.id, WIDTH_MM, &theme, work)?;
+            figures.push((format!("overview-{}-{}", raster.id.0, file_stem(&raster.name)), figure));
+        }
+    }
+    let mut files = Vec::new();
+    for (name, figure) in figures {
+        let page = pdf(&figure).map_err(|e| format!("the plate {name}: {e}"))?;
+        files.push((format!("{name}.svg"), svg(&figure).into_bytes()));
+        files.push((format!("{name}.pdf"), page));
+    }
+    Ok(files)
+}
+
+/// A name as a file name: letters, digits and dashes.
+pub fn file_stem(name: &str) -> String {
+    name.chars().map(|c| if c.is_alphanumeric() { c } else { '-' }).collect::<String>().to_lowercase()
 }
 
 fn raster_of<'a>(

@@ -3,6 +3,7 @@
 use std::path::PathBuf;
 
 use crate::desk::plates::{self, Subject};
+use crate::plate::compose::file_stem;
 use crate::desk::{Answer, Ask, Model, Motif, PlateChoice, Purpose, Slot};
 
 use super::Record;
@@ -73,7 +74,7 @@ impl PlateCommand {
                     Motif::Patch => model.selected_patch().map_or("plate", |p| p.name.as_str()),
                     Motif::Overview => model.shown_raster().map_or("plate", |r| r.name.as_str()),
                 };
-                let suggested = format!("{}.{}", plates::file_stem(name), model.view.plate.format.ending());
+                let suggested = format!("{}.{}", file_stem(name), model.view.plate.format.ending());
                 model.session.ask = Some(Ask::new(Purpose::ExportPlate, suggested));
             }
             Self::Export(path) => export(model, path),
