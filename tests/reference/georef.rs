@@ -4,6 +4,7 @@
 use serde_json::Value;
 use ventifact::assert_close;
 use ventifact::files::georef::{GeoTags, from_tiff};
+use ventifact::files::layers::{Column, Geometry, GeometryKind, Layer, Row, Srs, write_geopackage};
 use ventifact::ground::Point;
 
 fn numbers(value: &Value) -> Vec<f64> {
@@ -51,4 +52,33 @@ fn keys_of_many_systems_give_the_positions_pyproj_gives() {
             assert_close!(back.distance(Point::new(col, row)), 0.0, 1e-4, "{system}: pixel");
         }
     }
+}
+
+/// Writes the points of every case into one GeoPackage, in the raster's own system, with the
+/// longitudes and latitudes pyproj gave as columns: `geopackage_readers.py` opens it with
+/// general-purpose readers and compares.
+#[test]
+#[ignore = "writes a file for geopackage_readers.py"]
+fn write_points_of_all_systems() {
+    let cases: Vec<Value> = serde_json::from_str(include_str!("georef_cases.json")).expect("table");
+    let layers = cases.iter().enumerate().map(|(index, case)| {
+        let found = from_tiff(&tags(&case["tags"]), 120, 80).expect("sound").expect("something");
+        let srs = Srs::of_place(&found.place, &found.label, found.epsg);
+        let rows = case["points"].as_array().expect("points").iter().map(|point| {
+            let [col, row, lon, lat] = numbers(point)[..] else { panic!("point") };
+            let at = srs.geometry(&found.place, &Geometry::Point(Point::new(col, row)));
+            Row { geometry: at, values: vec![lon.into(), lat.into()] }
+        });
+        Layer {
+            name: format!("case {index}"),
+            description: case["system"].as_str().expect("system").to_owned(),
+            kind: GeometryKind::Point,
+            columns: vec![Column::real("lon_deg"), Column::real("lat_deg")],
+            rows: rows.collect(),
+            srs,
+        }
+    });
+    let path = std::path::Path::new(env!("CARGO_TARGET_TMPDIR")).join("systems.gpkg");
+    write_geopackage(&path, &layers.collect::<Vec<_>>()).expect("written");
+    println!("{}", path.display());
 }
