@@ -415,8 +415,7 @@ fn map_per_ground_metre(projection: &Projection, shape: BodyShape, at: LonLat) -
     const STEP: f64 = 1e-4;
     let dlat = STEP.min(0.25 * (90.0 - at.lat.abs()));
     let dlon = (STEP / at.lat.to_radians().cos()).min(0.05);
-    // Comparison written so that NaN fails it too.
-    if !(dlat > 1e-9) {
+    if dlat.is_nan() || dlat <= 1e-9 {
         return None;
     }
     let slope = |dlon: f64, dlat: f64, step_m: f64| -> Option<Point> {

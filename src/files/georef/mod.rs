@@ -105,27 +105,26 @@ pub fn from_tiff(tags: &GeoTags, width: usize, height: usize) -> Result<Option<G
     Ok(Some(reference))
 }
 
-/// A place of which only the affine is known, as from a world file: a plane whose map unit is taken
-/// as the metre and whose +y as north, with a caution that says so.
+/// A place of which only the affine is known: a plane whose map unit is taken as the metre and whose
+/// +y as north, or pixels where the numbers look like degrees; a caution says which.
 ///
 /// # Errors
 /// [`GeorefError::Singular`].
 pub fn from_affine(affine: Affine, width: usize, height: usize) -> Result<Georeference, GeorefError> {
-    let place = Place::new(affine, Frame::Plane { north_deg: 0.0 }, Body::earth())
+    let plane = Place::new(affine, Frame::Plane { north_deg: 0.0 }, Body::earth())
         .map_err(|_| GeorefError::Singular(affine))?;
-    let degrees = corners(width, height).into_iter().all(|corner| {
-        let map = affine.apply(corner);
-        map.x.abs() <= 360.0 && map.y.abs() <= 90.0
-    });
-    let hint = if degrees && affine.determinant().abs().sqrt() < 1.0 {
-        "; the numbers look like degrees, so state the pixel size in metres"
+    let like_degrees = affine.determinant().abs().sqrt() < 1.0
+        && corners(width, height).into_iter().all(|corner| {
+            let map = affine.apply(corner);
+            map.x.abs() <= 360.0 && map.y.abs() <= 90.0
+        });
+    let (place, taken) = if like_degrees {
+        let taken = "its numbers look like degrees on an unknown body, so lengths stay in pixels; state the pixel size";
+        (Place::pixels(0.0), taken)
     } else {
-        ""
+        (plane, "its map unit is taken as the metre and its +y axis as north")
     };
-    let text = format!(
-        "the file says where its pixels lie but names no reference system: its map unit is taken as the \
-         metre and its +y axis as north{hint}"
-    );
+    let text = format!("the file says where its pixels lie but names no reference system: {taken}");
     Ok(Georeference {
         place,
         label: "no reference system".to_owned(),

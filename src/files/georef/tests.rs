@@ -100,7 +100,9 @@ fn an_affine_without_a_system_is_a_plane_in_metres_and_says_so() {
     let mut degrees = with_keys(&[], &[]);
     degrees.pixel_scale = vec![0.01, 0.01, 0.0];
     degrees.tie_points = vec![0.0, 0.0, 0.0, -100.0, 40.0, 0.0];
-    assert!(read(&degrees).cautions[0].text.contains("look like degrees"));
+    let found = read(&degrees);
+    assert!(found.cautions[0].text.contains("look like degrees"));
+    assert_eq!(found.place.unit(), LengthUnit::Pixel);
 }
 
 #[test]

@@ -45,7 +45,7 @@ fn image_up_points_to_the_stated_north() {
 #[test]
 fn pixel_and_ground_steps_invert() {
     let frame = Place::plane([2.0, 3.0], 17.0, Body::earth())
-        .and_then(|place| Ok(place.local_frame(Point::new(0.0, 0.0))))
+        .map(|place| place.local_frame(Point::new(0.0, 0.0)))
         .expect("place")
         .expect("frame");
     let (e, n) = frame.ground(1.5, -2.5);

@@ -119,7 +119,7 @@ fn read_table(
     let fail =
         |source| LayerError::Database { path: path.to_owned(), doing: "reading the GeoPackage", source };
     let mut query = database.prepare(&format!("SELECT * FROM {}", quoted(&table.name))).map_err(fail)?;
-    let columns: Vec<String> = query.column_names().into_iter().map(str::to_lowercase).collect();
+    let columns: Vec<String> = query.column_names().map(|name| name.to_lowercase()).collect();
     let column = |name: &str| columns.iter().position(|column| *column == name);
     let (name_column, tags_column) = (column("name"), column("tags"));
     let geometry_column = column(&table.geometry.to_lowercase()).ok_or_else(|| LayerError::Feature {
