@@ -201,6 +201,7 @@ pub(super) mod tests {
             axis: Some(Axis::from_deg(84.2)),
             ci95_half_deg: Some(3.4),
             resultant_length: 0.83,
+            resultant_length_all: 0.79,
             n: 412,
             n_all: 520,
             n_eff: 38.2,

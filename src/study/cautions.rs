@@ -8,6 +8,9 @@ use super::{RasterEntry, SpectrumFinding, TrendFinding};
 
 /// Texture fainter than this share of the tone may be swell, sensor or processing rather than relief.
 const FAINT_CONTRAST: f64 = 0.03;
+/// R̄ over all nodes below which a field counts as weakly aligned: light from one side alone makes a
+/// field without preference seem as aligned as ½ (B7).
+pub const WEAK_ALIGNMENT: f64 = 0.5;
 /// Trends within this of look + 90° are suspect (B7).
 const LOOK_MARGIN_DEG: f64 = 15.0;
 
@@ -37,12 +40,12 @@ pub fn of_patch(
         );
     }
     if let Some(axis) = trend.axis {
-        if trend.resultant_length < 0.4 {
+        if trend.resultant_length_all < WEAK_ALIGNMENT {
             say(
                 "weak-alignment",
                 format!(
-                    "Weak alignment (resultant length {:.2}): the mean trend stands for a wide spread of axes.",
-                    trend.resultant_length
+                    "Weak alignment (resultant length {:.2} over all nodes): light from one side can make ground without preference seem as aligned as 0.5.",
+                    trend.resultant_length_all
                 ),
             );
         }

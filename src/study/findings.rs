@@ -79,8 +79,10 @@ pub struct TrendFinding {
     pub ci95_half_deg: Option<f64>,
     /// Which interval: `"block bootstrap"` or `"effective n"`.
     pub ci95_source: &'static str,
-    /// Of the doubled angle, in [0, 1].
+    /// R̄ of the doubled angle over the nodes that passed, in [0, 1].
     pub resultant_length: f64,
+    /// The same over all nodes: how aligned the ground as a whole is, faint places included.
+    pub resultant_length_all: f64,
     /// κ of the doubled angle, and which estimator.
     pub kappa_doubled: Option<f64>,
     /// Axial standard deviation, degrees.

@@ -5,7 +5,8 @@ use std::sync::Arc;
 use crate::files::raster::RasterError;
 use crate::ground::{Axis, Caution, Point, Seed, Stopped, Work};
 use crate::science::axial::{self, AxialSample, Nodes, Summary, SummarySettings};
-use crate::science::orientation::{self, NodeField, Spectrum, TensorSettings, TrendNode};
+use crate::science::orientation::scale::{INTEGRATION_RATIO, coherent_scale, scale_sweep};
+use crate::science::orientation::{self, NodeField, Peak, Spectrum, TensorSettings, TrendNode};
 
 use super::cautions;
 use super::verdict::verdict;
@@ -39,8 +40,8 @@ pub fn patch_finding(
         return Ok(Err("no valid pixel lies inside its outline".into()));
     }
     let seed = sheet.seed.child(&format!("patch {}", patch.id.0));
-    let spectrum = measure_spectrum(sheet, entry, &pixels, work)?;
-    let field = measure_trend(sheet, entry, &pixels, &spectrum, work)?;
+    let (spectrum, scales) = choose_scale(sheet, entry, &pixels, work)?;
+    let field = measure_trend(sheet, entry, &pixels, &scales, work)?;
     let (trend, axial_cautions) = summarise(sheet, &pixels, &field, seed, work)?;
     let spectrum_finding = spectrum_finding(&spectrum, &pixels);
     let mut verdicts = Vec::new();
@@ -75,33 +76,78 @@ pub fn patch_finding(
     Ok(Ok(finding))
 }
 
-fn measure_spectrum(
+/// Spectrum and tensor looked at together: the spectrum's spacing sets the scale unless the texture is
+/// clearly more coherent at another, as with broad dunes under fine grain; then the spacing is
+/// looked for anew around that scale.
+fn choose_scale(
     sheet: &Sheet,
     entry: &RasterEntry,
     pixels: &PatchPixels,
     work: &Work,
-) -> Result<Spectrum, Stopped> {
+) -> Result<(Spectrum, Scales), Stopped> {
     let (s, factor) = (&sheet.settings.spectrum, pixels.factor as f64);
+    let logarithm = entry.kind == ImageKind::Radar;
     let settings = orientation::SpectrumSettings {
         window_px: s.window_px.map(|px| px / factor),
         // Averaged pixels still hold waves of four of their own.
         shortest_spacing_px: (s.shortest_spacing_px / factor).max(4.0f64.min(s.shortest_spacing_px)),
         longest_spacing_px: s.longest_spacing_px.map(|px| px / factor),
         significance: s.significance,
-        logarithm: entry.kind == ImageKind::Radar,
+        logarithm,
     };
-    orientation::spectrum(&pixels.image, &pixels.outline, &pixels.place, &settings, work)
+    let (image, outline, place) = (&pixels.image, &pixels.outline, &pixels.place);
+    let mut spectrum = orientation::spectrum(image, outline, place, &settings, work)?;
+    let fine = fine_pixel(pixels);
+    let of_spacing = regular_peak(&spectrum).map(|p| (p.spacing / fine / 6.0).clamp(1.0, 16.0));
+    let noise_level = sheet.settings.trend.significance;
+    let steps = scale_sweep(image, outline, place, logarithm, noise_level, work)?;
+    let sigma = coherent_scale(&steps, of_spacing);
+    if let Some(sigma) = sigma.filter(|sigma| of_spacing.is_none_or(|own| (sigma / own).ln().abs() > 0.4)) {
+        let around = orientation::SpectrumSettings {
+            shortest_spacing_px: settings.shortest_spacing_px.max(3.0 * sigma),
+            longest_spacing_px: Some(settings.longest_spacing_px.unwrap_or(f64::INFINITY).min(15.0 * sigma)),
+            ..settings
+        };
+        let first = spectrum;
+        spectrum = orientation::spectrum(image, outline, place, &around, work)?;
+        if let Some(fine_texture) = regular_peak(&first) {
+            spectrum.cautions.push(Caution::new(
+                "other-scale",
+                format!(
+                    "A texture at {:.0}° and {:.1} pixels is as regular, but the ground is more coherent at a scale of {:.0} pixels, where trend and spacing are taken.",
+                    fine_texture.axis.deg(),
+                    fine_texture.spacing / fine,
+                    6.0 * sigma
+                ),
+            ));
+        }
+    }
+    Ok((spectrum, Scales::of(sigma, pixels)))
+}
+
+/// A peak that passed its test and is a texture too: with power around it, one axis and one spacing. A
+/// camera's grain or a resampling can raise a single bin without either.
+fn regular_peak(s: &Spectrum) -> Option<Peak> {
+    s.peak.filter(|p| {
+        let [low, high] = p.spacing_ci95;
+        s.defined && p.contrast > 0.0 && p.axis_ci95_half_deg < 45.0 && high < 3.0 * low
+    })
+}
+
+/// Ground size of the finer pixel direction at the middle of the patch.
+fn fine_pixel(pixels: &PatchPixels) -> f64 {
+    let frame = pixels.outline.bounds().and_then(|b| pixels.place.local_frame(b.centre()));
+    frame.map_or(1.0, |f| f.pixel_size().into_iter().fold(f64::INFINITY, f64::min))
 }
 
 fn measure_trend(
     sheet: &Sheet,
     entry: &RasterEntry,
     pixels: &PatchPixels,
-    spectrum: &Spectrum,
+    own: &Scales,
     work: &Work,
 ) -> Result<NodeField, Stopped> {
     let (s, factor) = (&sheet.settings.trend, pixels.factor as f64);
-    let own = Scales::of(spectrum, pixels);
     let stated = |setting: Option<f64>, own: f64| setting.map_or(own, |px| px / factor);
     let settings = TensorSettings {
         gradient_scale_px: stated(s.gradient_scale_px, own.gradient),
@@ -121,21 +167,13 @@ struct Scales {
 }
 
 impl Scales {
-    /// From the spacing λ: σ = λ/6, where a derivative of Gaussian still answers to λ and least to
-    /// noise; ρ = λ/2 or 2σ, the least that sees a whole wave; a node every ρ, fewer on ground so wide
-    /// that forty thousand are enough.
-    fn of(spectrum: &Spectrum, pixels: &PatchPixels) -> Self {
+    /// From the gradient scale: σ = λ/6, where a derivative of Gaussian still answers to a spacing λ and
+    /// least to noise; ρ = 3σ, half a wave; a node every ρ, fewer on ground so wide that forty thousand
+    /// are enough. Ground without texture is looked at with σ = 2 px.
+    fn of(sigma: Option<f64>, pixels: &PatchPixels) -> Self {
         const MOST_NODES: f64 = 40_000.0;
-        let fine = pixels
-            .outline
-            .bounds()
-            .and_then(|b| pixels.place.local_frame(b.centre()))
-            .map_or(1.0, |f| f.pixel_size().into_iter().fold(f64::INFINITY, f64::min));
-        let spacing = spectrum.peak.filter(|_| spectrum.defined).map(|p| p.spacing / fine);
-        let (gradient, integration) = spacing.map_or((2.0, 8.0), |l| {
-            let gradient = (l / 6.0).clamp(1.0, 16.0);
-            (gradient, (l / 2.0).max(2.0 * gradient))
-        });
+        let gradient = sigma.unwrap_or(2.0);
+        let integration = INTEGRATION_RATIO * gradient;
         let step = integration.max((pixels.outline.area() / MOST_NODES).sqrt());
         Self { gradient, integration, step }
     }
@@ -185,6 +223,7 @@ fn summarise(
         ci95_half_deg: shown.interval.half_deg.filter(|_| defined),
         ci95_source: shown.interval.source,
         resultant_length: shown.resultant_length,
+        resultant_length_all: test.resultant_length,
         kappa_doubled: (shown.n > 0).then_some(shown.kappa),
         spread_deg: shown.spread_deg,
         n: shown.n,
@@ -233,7 +272,7 @@ fn density_bandwidth(summary: &Summary) -> f64 {
 }
 
 fn spectrum_finding(s: &Spectrum, pixels: &PatchPixels) -> SpectrumFinding {
-    let peak = s.peak.filter(|_| s.defined);
+    let peak = regular_peak(s);
     SpectrumFinding {
         defined: peak.is_some(),
         axis: peak.map(|p| p.axis),

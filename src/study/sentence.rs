@@ -2,6 +2,7 @@
 
 use crate::ground::LengthUnit;
 
+use super::cautions::WEAK_ALIGNMENT;
 use super::{PatchFinding, SpectrumFinding, TrendFinding, VerdictFinding};
 
 /// The sentence of a patch.
@@ -28,9 +29,9 @@ fn trend(t: &TrendFinding) -> String {
     };
     let interval =
         t.ci95_half_deg.map_or("interval unknown".to_owned(), |half| format!("± {}°", degrees(half)));
-    let strength = match t.resultant_length {
+    let strength = match t.resultant_length_all {
         r if r >= 0.7 => "strongly aligned",
-        r if r >= 0.4 => "aligned",
+        r if r >= WEAK_ALIGNMENT => "aligned",
         _ => "weakly aligned",
     };
     let mut text = format!("trend {:.0}° {interval} (95 %), {strength}", axis.deg() % 180.0);

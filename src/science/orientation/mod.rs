@@ -4,6 +4,7 @@
 mod contrast;
 mod gradient;
 pub mod noise;
+pub mod scale;
 pub mod spectrum;
 mod tensor;
 
@@ -14,4 +15,4 @@ pub use tensor::{NodeField, TensorSettings, TrendNode, trend_nodes};
 use crate::ground::Method;
 
 /// The methods of this family.
-pub const METHODS: &[&Method] = &[&tensor::METHOD, &noise::METHOD, &spectrum::METHOD];
+pub const METHODS: &[&Method] = &[&tensor::METHOD, &noise::METHOD, &spectrum::METHOD, &scale::METHOD];

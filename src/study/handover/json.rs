@@ -70,7 +70,7 @@ fn trend(t: &TrendFinding) -> Value {
     json!({
         "defined": t.defined, "axis_deg": degrees(t.axis), "ci95_half_deg": t.ci95_half_deg,
         "ci95_source": t.ci95_source,
-        "resultant_length": t.resultant_length, "kappa_doubled": t.kappa_doubled, "spread_deg": t.spread_deg,
+        "resultant_length": t.resultant_length, "resultant_length_all": t.resultant_length_all, "kappa_doubled": t.kappa_doubled, "spread_deg": t.spread_deg,
         "n": t.n, "n_all": t.n_all, "n_eff": t.n_eff, "rayleigh_p": t.rayleigh_p,
         "modes": t.modes.iter().map(|m| json!({
             "axis_deg": m.axis.deg(), "weight": m.weight, "kappa_doubled": m.kappa_doubled,

@@ -25,6 +25,7 @@ pub fn trend(axis: f64, spread: f64) -> TrendFinding {
         ci95_half_deg: Some(3.4),
         ci95_source: "block bootstrap",
         resultant_length: 0.83,
+        resultant_length_all: 0.79,
         kappa_doubled: Some(3.3),
         spread_deg: Some(spread),
         n: 412,
@@ -51,6 +52,7 @@ pub fn no_trend() -> TrendFinding {
         axis: None,
         ci95_half_deg: None,
         resultant_length: 0.07,
+        resultant_length_all: 0.03,
         n_eff: 29.0,
         rayleigh_p: Some(0.61),
         ..trend(40.0, 60.0)
