@@ -9,6 +9,7 @@ pub mod gauss;
 pub mod lattice;
 pub mod maximum;
 pub mod quantile;
+pub mod resample;
 pub mod root;
 pub mod separable;
 pub mod sum;

@@ -3,6 +3,7 @@
 mod alignment;
 mod axial;
 mod axial_field;
+mod axial_tests;
 mod georef;
 mod place;
 mod verdict;

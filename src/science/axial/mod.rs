@@ -4,18 +4,28 @@
 //! is the face for the executor.
 
 pub mod blocks;
+pub mod bootstrap;
 pub mod density;
 pub mod effective;
+pub mod equal_kappa;
 pub mod interval;
 pub mod kappa;
 pub mod known_correlation;
+pub mod kuiper;
+pub mod mardia_watson_wheeler;
 pub mod mean;
+pub mod mixture;
 pub mod rayleigh;
 pub mod rose;
 mod sources;
 pub mod spread;
 mod summary;
 pub mod v_test;
+pub mod von_mises;
+pub mod wallraff;
+pub mod watson;
+pub mod watson_two;
+pub mod watson_williams;
 
 pub use summary::{AxialSample, Interval, Nodes, Summary, SummarySettings, summarise};
 
@@ -31,6 +41,15 @@ pub const METHODS: &[&Method] = &[
     &interval::METHOD,
     &effective::METHOD,
     &blocks::METHOD,
+    &bootstrap::METHOD,
+    &mixture::METHOD,
     &density::METHOD,
     &rose::METHOD,
+    &watson::METHOD,
+    &kuiper::METHOD,
+    &watson_two::METHOD,
+    &watson_williams::METHOD,
+    &mardia_watson_wheeler::METHOD,
+    &wallraff::METHOD,
+    &equal_kappa::METHOD,
 ];

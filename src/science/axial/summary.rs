@@ -3,6 +3,7 @@
 use crate::ground::{Axis, Caution, Point, Seed, Stopped, Work};
 
 use super::blocks::{self, BlockBootstrap};
+use super::bootstrap;
 use super::effective::{EffectiveNumber, effective_number, independent};
 use super::interval::{dispersion, half_width};
 use super::kappa::Kappa;
@@ -70,7 +71,8 @@ pub struct Summary {
 pub struct Interval {
     /// Half width, degrees of axis; `None` when it is all axes.
     pub half_deg: Option<f64>,
-    /// `"effective n"`, `"block bootstrap"` (the wider of the two) or `"independent axes"`.
+    /// `"effective n"`, `"block bootstrap"` (the wider of the two), `"independent axes"` or
+    /// `"bootstrap of few axes"`.
     pub source: &'static str,
     /// By the effective number alone.
     pub effective_deg: Option<f64>,
@@ -102,11 +104,21 @@ pub fn summarise(
     };
     let delta = dispersion(&phi, weights);
     let by_number = half_width(delta, effective.mean.standard_reach(LEVEL)).filter(|_| n > 0);
+    // A large-sample form would be too narrow for few axes.
+    let few = sample.nodes.is_none() && n < 25 && by_number.is_some();
+    let resampled = if few {
+        Some(bootstrap::half_width(&phi, weights, settings.resamples, LEVEL, seed, work)?)
+    } else {
+        None
+    };
     let [blocks, double_blocks] = match sample.nodes {
         Some(nodes) => block_bootstraps(&phi, weights, nodes, &effective, settings, seed, work)?,
         None => [None; 2],
     };
-    let interval = interval(by_number, blocks, double_blocks, sample.nodes.is_some());
+    let interval = match resampled {
+        Some(half) => few_axes_interval(by_number, half),
+        None => interval(by_number, blocks, double_blocks, sample.nodes.is_some()),
+    };
     let p = rayleigh_p_estimated(length, effective.test);
     let n_eff_mean = effective.mean.value();
     let estimator = Kappa::recommended(n_eff_mean);
@@ -155,6 +167,18 @@ fn block_bootstraps(
         }
     }
     Ok(results)
+}
+
+/// The wider of the bootstrap and the large-sample form.
+fn few_axes_interval(by_number: Option<f64>, resampled: f64) -> Interval {
+    let half = by_number.map_or(resampled, |h| h.max(resampled));
+    Interval {
+        half_deg: Some(0.5 * half.to_degrees()),
+        source: "bootstrap of few axes",
+        effective_deg: by_number.map(|h| 0.5 * h.to_degrees()),
+        blocks: None,
+        double_blocks: None,
+    }
 }
 
 /// The wider of the two intervals.
@@ -207,7 +231,7 @@ fn cautions(
     if !correlated && n < 25 {
         cautions.push(Caution::new(
             "few-axes",
-            format!("Only {n} axes: the interval is a large-sample one, and the bootstrap is better."),
+            format!("Only {n} axes: the interval comes from redrawing them, and below 8 it is too narrow."),
         ));
     }
     cautions
