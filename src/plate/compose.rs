@@ -7,13 +7,16 @@ use crate::study::{
 };
 
 use super::map::{MapView, surroundings, toned};
-use super::{Figure, OverviewPlate, PatchPlate, Recipe, Theme, overview_plate, patch_plate, pdf, svg};
+use super::{Figure, OverviewPlate, PatchPlate, PngSize, Recipe, Theme};
+use super::{overview_plate, patch_plate, pdf, png, svg};
 
 /// Cells a side of the picture on a plate: 300 dpi over half a page and some.
 const LONGEST: usize = 1400;
 
 /// Two columns of a journal.
 pub const WIDTH_MM: f64 = 180.0;
+/// Resolution of the PNG beside SVG and PDF.
+const PNG_DPI: f64 = 200.0;
 
 /// The recipe printed on every plate of a sheet.
 pub fn recipe(sheet: &Sheet) -> Recipe {
@@ -112,7 +115,9 @@ pub fn all(
     let mut files = Vec::new();
     for (name, figure) in figures {
         let page = pdf(&figure).map_err(|e| format!("the plate {name}: {e}"))?;
+        let picture = png(&figure, PngSize::Dpi(PNG_DPI)).map_err(|e| format!("the plate {name}: {e}"))?;
         files.push((format!("{name}.svg"), svg(&figure).into_bytes()));
+        files.push((format!("{name}.png"), picture));
         files.push((format!("{name}.pdf"), page));
     }
     Ok(files)

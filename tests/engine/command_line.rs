@@ -34,9 +34,9 @@ fn the_demo_prints_its_findings_and_leaves_everything_behind() {
         "nodes.csv",
         "winds.csv",
         "findings.gpkg",
-        "overview.svg",
-        "overview.png",
-        "overview.pdf",
+        "overview-1-radar-mosaic.svg",
+        "overview-1-radar-mosaic.png",
+        "patch-5-long-dunes.pdf",
     ] {
         assert!(
             findings.join(file).is_file(),

@@ -9,4 +9,5 @@ mod hostile;
 mod jpeg_writer;
 mod layouts;
 mod plates;
+mod samples;
 mod tiff_writer;

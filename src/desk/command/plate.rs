@@ -3,8 +3,8 @@
 use std::path::PathBuf;
 
 use crate::desk::plates::{self, Subject};
-use crate::plate::compose::file_stem;
 use crate::desk::{Answer, Ask, Model, Motif, PlateChoice, Purpose, Slot};
+use crate::plate::compose::file_stem;
 
 use super::Record;
 
