@@ -4,6 +4,7 @@ use std::sync::Arc;
 
 use crate::files::raster::RasterError;
 use crate::ground::{Axis, Caution, Point, Seed, Stopped, Work};
+use crate::science::axial::mixture::{MixtureSettings, mixtures};
 use crate::science::axial::{self, AxialSample, Nodes, Summary, SummarySettings};
 use crate::science::orientation::scale::{INTEGRATION_RATIO, coherent_scale, scale_sweep};
 use crate::science::orientation::{self, NodeField, Peak, Spectrum, TensorSettings, TrendNode};
@@ -215,7 +216,8 @@ fn summarise(
     let has_texture = passed.len() as f64 > 5.0 * sheet.settings.trend.significance * every.len() as f64;
     let defined = test.preferred && has_texture;
     let axes = axes_of(&passed);
-    let modes = if has_texture { Vec::<ModeFinding>::new() } else { Vec::new() };
+    let modes =
+        if has_texture { modes(&axes, shown.n_eff_mean, s.most_modes, seed, work)? } else { Vec::new() };
     let factor = pixels.factor as f64;
     let trend = TrendFinding {
         defined,
@@ -231,7 +233,7 @@ fn summarise(
         n_eff: shown.n_eff_mean,
         correlation_length: shown.correlation_length,
         rayleigh_p: test.rayleigh_p,
-        modes: modes.iter().copied().collect(),
+        modes,
         nodes: field
             .nodes
             .iter()
@@ -251,6 +253,23 @@ fn summarise(
         coherence_floor: field.coherence_floor,
     };
     Ok((trend, if defined { shown.cautions } else { test.cautions }))
+}
+
+/// The components of the mixture that the criterion prefers; an even background takes what belongs to none.
+fn modes(
+    axes: &[Axis],
+    n_eff: f64,
+    most_modes: u32,
+    seed: Seed,
+    work: &Work,
+) -> Result<Vec<ModeFinding>, Stopped> {
+    let settings = MixtureSettings { most_modes, background: true, n_eff };
+    let models = mixtures(&axial::mean::doubled(axes), None, settings, seed, work)?;
+    let components = models.into_iter().next().map_or(Vec::new(), |best| best.components);
+    Ok(components
+        .into_iter()
+        .map(|c| ModeFinding { axis: Axis::from_doubled(c.mean), weight: c.weight, kappa_doubled: c.kappa })
+        .collect())
 }
 
 /// Nodes on a plane that touches the ground at the middle of the patch, ground units.
