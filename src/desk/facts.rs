@@ -30,7 +30,7 @@ pub fn ground(entry: &RasterEntry, open: &OpenRaster) -> Vec<Fact> {
         ),
         fact(
             "Stored as",
-            format!("{}, {}, {}, {} levels", info.format, info.compression, info.layout, info.levels.len()),
+            format!("{}, {}, {}, levels: {}", info.format, info.compression, info.layout, info.levels.len()),
             "Coarse levels that are missing are made while the raster opens.",
         ),
     ];
@@ -45,7 +45,8 @@ pub fn ground(entry: &RasterEntry, open: &OpenRaster) -> Vec<Fact> {
     facts.push(fact("Body", raster.body, "Whose shape, gravity and air are used."));
     facts.push(fact("Reference", raster.projection, "Angles are turned to true north point by point."));
     if let Some(nodata) = raster.nodata {
-        facts.push(fact("No data", nodata.to_string(), "Pixels of this value are missing."));
+        let nodata = if nodata.is_nan() { "not a number".to_owned() } else { nodata.to_string() };
+        facts.push(fact("No data", nodata, "Pixels of this value are missing."));
     }
     facts
 }

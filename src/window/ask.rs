@@ -7,7 +7,7 @@ use std::time::{Duration, Instant};
 
 use egui::{Context, Key, Modifiers, RichText, TextEdit, WidgetInfo};
 
-use super::controls::{Commands, look};
+use super::controls::{Commands, button, look, overlay};
 use super::theme;
 use crate::desk::{Ask, AskCommand, Command, Model};
 
@@ -52,7 +52,7 @@ impl AskPath {
             .resizable(false)
             .anchor(egui::Align2::CENTER_TOP, [0.0, 60.0])
             .show(ctx, |ui| {
-                super::controls::button(ui, model, out, Command::Ask(AskCommand::Type));
+                button(ui, model, out, Command::Ask(AskCommand::Type));
             });
     }
 
@@ -60,8 +60,7 @@ impl AskPath {
         let typed = self.typed.get_or_insert_with(|| ask.suggested.clone());
         let soft = theme::color(look(model).ink_soft);
         let mut go = false;
-        let modal = egui::Modal::new(egui::Id::unique("ask path")).show(ctx, |ui| {
-            ui.set_width(540.0);
+        let close = overlay(ctx, "ask path", 540.0, |ui| {
             ui.heading(ask.purpose.title());
             ui.label(RichText::new(ask.purpose.hint()).color(soft));
             ui.add_space(6.0);
@@ -86,7 +85,7 @@ impl AskPath {
         });
         if go && !typed.trim().is_empty() {
             out.push(Command::Ask(AskCommand::Answer(PathBuf::from(typed.trim()))));
-        } else if modal.should_close() {
+        } else if close {
             out.push(Command::Ask(AskCommand::Cancel));
         }
     }

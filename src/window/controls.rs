@@ -1,7 +1,9 @@
 //! The few controls all panels share: a button that is a command, a line of text, a number, a row
 //! of label and value, a thin rule.
 
-use egui::{Align, Button, Color32, Layout, Response, RichText, Stroke, TextEdit, Ui, WidgetInfo, vec2};
+use egui::{
+    Align, Button, Color32, Label, Layout, Response, RichText, Stroke, TextEdit, Ui, WidgetInfo, vec2,
+};
 
 use super::theme;
 use crate::desk::facts::Fact;
@@ -110,20 +112,52 @@ fn parse(text: &str) -> Option<f64> {
 
 /// Rows of label and value; the label explains itself on hover.
 pub fn facts(ui: &mut Ui, look: &Theme, facts: &[Fact]) {
+    let width = (0.4 * ui.available_width()).min(150.0);
     for fact in facts {
         ui.horizontal_top(|ui| {
-            let soft = theme::color(look.ink_soft);
-            let width = (0.4 * ui.available_width()).min(150.0);
-            ui.allocate_ui_with_layout(vec2(width, 0.0), Layout::left_to_right(Align::TOP), |ui| {
-                ui.set_min_width(width);
-                ui.label(RichText::new(fact.label).color(soft)).on_hover_text(fact.hint);
-            });
-            let value = ui.label(&fact.value).on_hover_text(fact.hint);
+            let label = RichText::new(fact.label).color(theme::color(look.ink_soft));
+            column(ui, width, |ui| ui.add(Label::new(label).wrap())).on_hover_text(fact.hint);
+            let value = rest(ui, |ui| ui.add(Label::new(&fact.value).wrap())).on_hover_text(fact.hint);
             value.widget_info(|| {
                 WidgetInfo::labeled(egui::Role::Label, true, format!("{}: {}", fact.label, fact.value))
             });
         });
     }
+}
+
+/// A column of fixed width inside a row, its text wrapped and set from the left.
+pub fn column<R>(ui: &mut Ui, width: f32, content: impl FnOnce(&mut Ui) -> R) -> R {
+    ui.allocate_ui_with_layout(vec2(width, 0.0), Layout::top_down(Align::LEFT), |ui| {
+        ui.set_width(width);
+        content(ui)
+    })
+    .inner
+}
+
+/// What is left of a row, as a column.
+pub fn rest<R>(ui: &mut Ui, content: impl FnOnce(&mut Ui) -> R) -> R {
+    let width = ui.available_width();
+    column(ui, width, content)
+}
+
+/// A label of fixed width and the field beside it.
+pub fn field_row(ui: &mut Ui, label: &str, width: f32, field: impl FnOnce(&mut Ui)) -> egui::Response {
+    ui.horizontal(|ui| {
+        let response = column(ui, width, |ui| ui.label(label));
+        field(ui);
+        response
+    })
+    .inner
+}
+
+/// What lies over the window, `width` points wide; says whether the user wants it closed.
+pub fn overlay(ctx: &egui::Context, name: &str, width: f32, content: impl FnOnce(&mut Ui)) -> bool {
+    let frame = egui::Frame::popup(&ctx.global_style()).inner_margin(egui::Margin::symmetric(24, 20));
+    let modal = egui::Modal::new(egui::Id::unique(name)).frame(frame).show(ctx, |ui| {
+        ui.set_width(width);
+        content(ui);
+    });
+    modal.should_close()
 }
 
 /// A heading inside a page.
@@ -144,7 +178,8 @@ pub fn caution(ui: &mut Ui, look: &Theme, text: &str) {
     let ink = theme::color(look.caution);
     ui.horizontal_top(|ui| {
         mark(ui, ink);
-        ui.label(RichText::new(text).color(ink)).on_hover_text("A caution: printed wherever the result is.");
+        let words = Label::new(RichText::new(text).color(ink)).wrap();
+        rest(ui, |ui| ui.add(words)).on_hover_text("A caution: printed wherever the result is.");
     });
 }
 

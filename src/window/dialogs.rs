@@ -1,15 +1,16 @@
 //! The settings form, made from the records, and the question before changes are lost.
 
-use egui::{ComboBox, Context, Id, Modal, RichText, ScrollArea, Ui};
+use egui::{ComboBox, Context, RichText, ScrollArea, Ui};
 
-use super::controls::{Commands, button, look, main_button, number, optional_number, rule};
+use super::controls::{
+    Commands, button, field_row, look, main_button, number, optional_number, overlay, rule,
+};
 use super::theme;
 use crate::desk::{Command, Model, SettingCommand, SheetCommand, ViewCommand};
 use crate::study::{SETTINGS, Setting, SettingKind, SettingValue, Settings};
 
 pub fn settings(ctx: &Context, model: &Model, out: &mut Commands) {
-    let modal = Modal::new(Id::unique("settings")).show(ctx, |ui| {
-        ui.set_width(620.0);
+    let close = overlay(ctx, "settings", 640.0, |ui| {
         ui.heading("Settings");
         ui.label(
             RichText::new("Saved with the sheet. A change makes findings out of date until measured again.")
@@ -37,7 +38,7 @@ pub fn settings(ctx: &Context, model: &Model, out: &mut Commands) {
             button(ui, model, out, Command::Setting(SettingCommand::ResetAll));
         });
     });
-    if modal.should_close() {
+    if close {
         out.push(Command::View(ViewCommand::Close));
     }
 }
@@ -55,9 +56,7 @@ fn title_of(area: &str) -> &str {
 
 fn row(ui: &mut Ui, model: &Model, setting: &'static Setting, out: &mut Commands) {
     let soft = theme::color(look(model).ink_soft);
-    ui.horizontal(|ui| {
-        let name = ui.add_sized([230.0, 22.0], egui::Label::new(setting.label).halign(egui::Align::LEFT));
-        name.on_hover_text(setting.help);
+    let name = field_row(ui, setting.label, 210.0, |ui| {
         if let Some(value) = field(ui, model, setting) {
             out.push(Command::Setting(SettingCommand::Set { key: setting.key, value }));
         }
@@ -70,6 +69,7 @@ fn row(ui: &mut Ui, model: &Model, setting: &'static Setting, out: &mut Commands
         }
         ui.label(RichText::new(range(setting)).small().color(soft));
     });
+    name.on_hover_text(setting.help);
 }
 
 fn field(ui: &mut Ui, model: &Model, setting: &'static Setting) -> Option<SettingValue> {
@@ -106,8 +106,7 @@ fn range(setting: &Setting) -> String {
 
 /// Before changes are lost.
 pub fn unsaved(ctx: &Context, model: &Model, out: &mut Commands) {
-    let modal = Modal::new(Id::unique("unsaved")).show(ctx, |ui| {
-        ui.set_width(420.0);
+    let close = overlay(ctx, "unsaved", 420.0, |ui| {
         ui.heading("Unsaved changes");
         ui.label(format!("“{}” has changes that are not on disk.", model.name()));
         ui.add_space(10.0);
@@ -119,7 +118,7 @@ pub fn unsaved(ctx: &Context, model: &Model, out: &mut Commands) {
             }
         });
     });
-    if modal.should_close() {
+    if close {
         out.push(Command::View(ViewCommand::Close));
     }
 }

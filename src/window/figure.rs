@@ -64,8 +64,8 @@ impl Brush {
         match item {
             Item::Path { points, closed, fill, stroke } => {
                 let points: Vec<Pos2> = points.iter().map(|p| self.at(*p)).collect();
-                if let Some(fill) = fill.filter(|_| points.len() >= 3) {
-                    painter.add(filled(&points, color(fill)));
+                if let Some(fill) = fill {
+                    painter.extend(filled(&points, color(*fill)));
                 }
                 if let Some(stroke) = stroke {
                     self.line(painter, points, *closed, stroke);
@@ -148,11 +148,23 @@ fn ring(centre: Pos2, radius: f32) -> Vec<Pos2> {
     (0..72).map(|i| centre + egui::Vec2::angled(i as f32 * std::f32::consts::TAU / 72.0) * radius).collect()
 }
 
-/// A filled ring: smooth-edged when convex, triangles when not.
-fn filled(points: &[Pos2], fill: Color32) -> Shape {
-    if is_convex(points) {
-        return Shape::convex_polygon(points.to_vec(), fill, egui::Stroke::NONE);
+/// A filled ring: smooth-edged when convex, triangles when not; nothing when it has no area.
+///
+/// egui smooths an edge along its corners' normals; equal neighbours have none, and a sliver's
+/// shoot far out. So equal neighbours become one, and slivers are left sharp.
+fn filled(points: &[Pos2], fill: Color32) -> Option<Shape> {
+    let mut points = points.to_vec();
+    points.dedup_by(|a, b| a.distance(*b) < 0.01);
+    while points.len() > 1 && points[0].distance(points[points.len() - 1]) < 0.01 {
+        points.pop();
     }
+    if points.len() < 3 || ring_area(&points) < 1e-3 {
+        return None;
+    }
+    if is_convex(&points) && thickness(&points) > 1.0 {
+        return Some(Shape::convex_polygon(points, fill, egui::Stroke::NONE));
+    }
+    let points = points.as_slice();
     let mut mesh = Mesh::default();
     for point in points {
         mesh.colored_vertex(*point, fill);
@@ -160,7 +172,18 @@ fn filled(points: &[Pos2], fill: Color32) -> Shape {
     for [a, b, c] in ears(points) {
         mesh.add_triangle(a as u32, b as u32, c as u32);
     }
-    Shape::mesh(mesh)
+    Some(Shape::mesh(mesh))
+}
+
+fn ring_area(points: &[Pos2]) -> f32 {
+    let n = points.len();
+    0.5 * (0..n).map(|i| turn(points[0], points[i], points[(i + 1) % n])).sum::<f32>().abs()
+}
+
+/// Area over the longest reach: about the width of a sliver.
+fn thickness(points: &[Pos2]) -> f32 {
+    let reach = points.iter().map(|p| p.distance(points[0])).fold(0.0, f32::max);
+    ring_area(points) / reach.max(1e-3)
 }
 
 /// Twice the signed area of a triangle.
@@ -235,8 +258,17 @@ fn texture(ctx: &Context, size: [usize; 2], rgba: &Arc<[u8]>) -> TextureHandle {
 
 #[cfg(test)]
 mod tests {
-    use super::{ears, is_convex, turn};
-    use egui::{Pos2, pos2};
+    use super::{ears, filled, is_convex, turn};
+    use egui::{Color32, Pos2, Shape, pos2};
+
+    #[test]
+    fn a_bar_of_no_width_is_not_drawn_and_a_sliver_stays_within_itself() {
+        let bar =
+            |width: f32| [pos2(5.0, 0.0), pos2(5.0 + width, 0.0), pos2(5.0 + width, 8.0), pos2(5.0, 8.0)];
+        assert!(filled(&bar(0.0), Color32::RED).is_none());
+        assert!(matches!(filled(&bar(0.2), Color32::RED), Some(Shape::Mesh(_))));
+        assert!(matches!(filled(&bar(20.0), Color32::RED), Some(Shape::Path(_))));
+    }
 
     fn area(points: &[Pos2], triangles: &[[usize; 3]]) -> f64 {
         triangles

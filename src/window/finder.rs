@@ -4,7 +4,7 @@ use egui::{
     Align, Context, Key, Layout, Modifiers, RichText, ScrollArea, Sense, TextEdit, Ui, WidgetInfo, vec2,
 };
 
-use super::controls::{Commands, look, rule};
+use super::controls::{Commands, look, overlay, rule};
 use super::theme;
 use crate::desk::{Command, Model, ViewCommand, listed};
 
@@ -20,8 +20,7 @@ impl Finder {
     pub fn show(&mut self, ctx: &Context, model: &Model, out: &mut Commands) {
         let found = matching(&self.typed);
         let mut chosen = None;
-        let modal = egui::Modal::new(egui::Id::unique("finder")).show(ctx, |ui| {
-            ui.set_width(520.0);
+        let close = overlay(ctx, "finder", 540.0, |ui| {
             self.keys(ui, &found, &mut chosen);
             let field = ui.add(
                 TextEdit::singleline(&mut self.typed)
@@ -37,7 +36,7 @@ impl Finder {
                 self.marked = 0;
             }
             rule(ui, &look(model));
-            ScrollArea::vertical().max_height(380.0).auto_shrink([false, true]).show(ui, |ui| {
+            ScrollArea::vertical().max_height(420.0).auto_shrink([false, true]).show(ui, |ui| {
                 for (at, command) in found.iter().enumerate() {
                     if row(ui, model, command, at == self.marked) {
                         chosen = Some(command.clone());
@@ -48,7 +47,7 @@ impl Finder {
                 }
             });
         });
-        if chosen.is_some() || modal.should_close() {
+        if chosen.is_some() || close {
             *self = Self::default();
             out.push(Command::View(ViewCommand::Close));
         }
@@ -90,7 +89,7 @@ fn matching(typed: &str) -> Vec<Command> {
 
 fn row(ui: &mut Ui, model: &Model, command: &Command, marked: bool) -> bool {
     let (record, refusal, look) = (command.record(), command.refusal(model), look(model));
-    let (rect, response) = ui.allocate_exact_size(vec2(ui.available_width(), 40.0), Sense::click());
+    let (rect, response) = ui.allocate_exact_size(vec2(ui.available_width(), 44.0), Sense::click());
     response
         .widget_info(|| WidgetInfo::selected(egui::Role::MenuItem, refusal.is_none(), marked, record.label));
     if marked || response.hovered() {
@@ -103,7 +102,8 @@ fn row(ui: &mut Ui, model: &Model, command: &Command, marked: bool) -> bool {
     let mut inner = ui.new_child(
         egui::UiBuilder::new().max_rect(rect.shrink2(vec2(8.0, 3.0))).layout(Layout::top_down(Align::LEFT)),
     );
-    inner.spacing_mut().item_spacing.y = 1.0;
+    inner.spacing_mut().item_spacing.y = 2.0;
+    inner.spacing_mut().interact_size.y = 18.0;
     inner.horizontal(|ui| {
         ui.add(egui::Label::new(RichText::new(record.label).color(theme::color(ink))).selectable(false));
         ui.with_layout(Layout::right_to_left(Align::Center), |ui| {

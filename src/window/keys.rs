@@ -2,7 +2,7 @@
 
 use egui::{Context, Event, InputState, Key, Modifiers, RichText, Ui};
 
-use super::controls::{Commands, look, rule};
+use super::controls::{Commands, column, look, overlay, rule};
 use super::theme;
 use crate::desk::{Chord, Command, Model, ViewCommand, listed};
 
@@ -42,8 +42,7 @@ fn take(input: &mut InputState, chord: Chord) -> bool {
 
 /// All keys, in two columns.
 pub fn show(ctx: &Context, model: &Model, out: &mut Commands) {
-    let modal = egui::Modal::new(egui::Id::unique("keys")).show(ctx, |ui| {
-        ui.set_width(660.0);
+    let close = overlay(ctx, "keys", 680.0, |ui| {
         ui.heading("Keys");
         rule(ui, &look(model));
         let keyed: Vec<_> = listed().into_iter().filter(|c| c.record().key.is_some()).collect();
@@ -60,7 +59,7 @@ pub fn show(ctx: &Context, model: &Model, out: &mut Commands) {
             out.push(Command::View(ViewCommand::Close));
         }
     });
-    if modal.should_close() {
+    if close {
         out.push(Command::View(ViewCommand::Close));
     }
 }
@@ -69,11 +68,8 @@ fn row(ui: &mut Ui, model: &Model, command: &Command) {
     let record = command.record();
     ui.horizontal(|ui| {
         let key = record.key.map(|chord| chord.to_string()).unwrap_or_default();
-        let ink = theme::color(look(model).ink_soft);
-        ui.add_sized(
-            [110.0, 18.0],
-            egui::Label::new(RichText::new(key).color(ink)).halign(egui::Align::LEFT),
-        );
+        let key = RichText::new(key).color(theme::color(look(model).ink_soft));
+        column(ui, 120.0, |ui| ui.label(key));
         ui.label(record.label).on_hover_text(record.hint);
     });
 }

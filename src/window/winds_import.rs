@@ -1,9 +1,11 @@
 //! The import of a wind record: what the file was taken for and why, its first rows, and what they
 //! give; every guess can be changed.
 
-use egui::{ComboBox, Context, Grid, Id, Modal, RichText, ScrollArea, Ui};
+use egui::{ComboBox, Context, Grid, RichText, ScrollArea, Ui};
 
-use super::controls::{Commands, caution, heading, line, look, main_button, number, rule};
+use super::controls::{
+    Commands, caution, field_row, heading, line, look, main_button, number, overlay, rule,
+};
 use super::theme;
 use crate::desk::{
     Command, DirectionSense, Import, Model, ReadRow, Reading, SpeedUnit, WindCommand, WindImport, WindLayout,
@@ -16,9 +18,8 @@ const UNITS: [SpeedUnit; 4] =
     [SpeedUnit::MetrePerSecond, SpeedUnit::KilometrePerHour, SpeedUnit::MilePerHour, SpeedUnit::Knot];
 
 pub fn show(ctx: &Context, model: &Model, import: &Import, out: &mut Commands) {
-    let modal = Modal::new(Id::unique("import winds")).show(ctx, |ui| {
-        let room = ctx.content_rect().size();
-        ui.set_width((room.x - 120.0).clamp(640.0, 980.0));
+    let room = ctx.content_rect().size();
+    let close = overlay(ctx, "import winds", (room.x - 120.0).clamp(640.0, 980.0), |ui| {
         ui.heading("Import winds");
         ui.label(
             RichText::new(import.path.to_string_lossy()).small().color(theme::color(look(model).ink_soft)),
@@ -45,7 +46,7 @@ pub fn show(ctx: &Context, model: &Model, import: &Import, out: &mut Commands) {
             }
         });
     });
-    if modal.should_close() {
+    if close {
         out.push(Command::Wind(WindCommand::Forget));
     }
 }
@@ -214,12 +215,8 @@ fn file(ui: &mut Ui, model: &Model, import: &Import) {
     });
 }
 
-/// A label and its field in one line.
 fn row(ui: &mut Ui, label: &str, field: impl FnOnce(&mut Ui)) {
-    ui.horizontal(|ui| {
-        ui.add_sized([140.0, 22.0], egui::Label::new(label).halign(egui::Align::LEFT));
-        field(ui);
-    });
+    field_row(ui, label, 140.0, field);
 }
 
 fn choice<T: PartialEq + Clone, L: Into<String>>(

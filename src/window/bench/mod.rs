@@ -16,7 +16,7 @@ use crate::study::{Patch, PatchFinding};
 
 pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
     ui.horizontal_wrapped(|ui| {
-        ui.spacing_mut().item_spacing.x = 4.0;
+        ui.spacing_mut().item_spacing.x = 10.0;
         for page in Page::ALL {
             let command = Command::View(ViewCommand::Page(page));
             toggle(ui, model, out, command, page.label(), model.view.page == page);
