@@ -1,7 +1,6 @@
 //! Axial statistics of correlated fields: effective numbers, block bootstraps, and how often
 //! intervals cover and tests reject, on simulated fields of known truth.
 
-use rand::Rng as _;
 use rand_distr::StandardNormal;
 use rayon::prelude::*;
 use ventifact::assert_close;

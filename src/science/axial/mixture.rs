@@ -35,7 +35,7 @@ pub static METHOD: Method = Method {
     limits: &[
         "κ is held at 500 and shares at 0.02, lest a mode shrink onto one axis.",
         "Twenty seeded starts; the best of them may still be a local maximum.",
-        "Above 720 axes they are gathered into cells of 0.25°, each at its own mean.",
+        "Above 360 axes they are gathered into cells of 0.5°, each at its own mean.",
     ],
     sources: &[
         at(FISHER, "§4.6, mixtures"),
@@ -88,11 +88,13 @@ pub struct MixtureSettings {
 const STARTS: u64 = 20;
 /// Steps of each start, and how many of the best go on to the end.
 const SHORT: usize = 15;
-const FINALISTS: usize = 3;
+const FINALISTS: usize = 2;
 const LONG: usize = 2000;
+/// A step that gains less than this in the likelihood of the independent axes is the last.
+const LEAST_GAIN: f64 = 1e-9;
 const MOST_KAPPA: f64 = 500.0;
 const LEAST_WEIGHT: f64 = 0.02;
-const CELLS: usize = 720;
+const CELLS: usize = 360;
 
 /// All models asked for, the least BIC first. Empty for no axes.
 ///
@@ -181,7 +183,7 @@ fn best_fit(
             work.advance(0)?;
             let before = model.log_likelihood;
             model = step(data, &model);
-            if (model.log_likelihood - before).abs() <= 1e-11 * (1.0 + before.abs()) {
+            if (model.log_likelihood - before) * n_eff / data.weight <= LEAST_GAIN {
                 break;
             }
         }

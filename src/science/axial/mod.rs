@@ -15,6 +15,7 @@ pub mod kuiper;
 pub mod mardia_watson_wheeler;
 pub mod mean;
 pub mod mixture;
+mod modes;
 pub mod rayleigh;
 pub mod rose;
 mod sources;
@@ -27,6 +28,7 @@ pub mod watson;
 pub mod watson_two;
 pub mod watson_williams;
 
+pub use modes::{Mode, modes};
 pub use summary::{AxialSample, Interval, Nodes, Summary, SummarySettings, summarise};
 
 use crate::ground::Method;
