@@ -214,7 +214,8 @@ fn summarise(
     let shown = summary_of(&passed)?;
     // By chance alone `significance` of the nodes pass; a texture must show at several times as many.
     let has_texture = passed.len() as f64 > 5.0 * sheet.settings.trend.significance * every.len() as f64;
-    let defined = test.preferred && has_texture;
+    // An interval of all axes leaves no line to draw.
+    let defined = test.preferred && has_texture && shown.interval.half_deg.is_some();
     let axes = axes_of(&passed);
     let modes =
         if has_texture { modes(&axes, shown.n_eff_mean, s.most_modes, seed, work)? } else { Vec::new() };

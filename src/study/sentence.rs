@@ -22,7 +22,8 @@ fn trend(t: &TrendFinding) -> String {
     let (Some(axis), true) = (t.axis, t.defined) else {
         let share = format!("{} of {} places pass the noise floor", t.n, t.n_all);
         return match t.rayleigh_p {
-            Some(p) => format!("no preferred trend (p = {}, {share})", probability(p)),
+            Some(p) if p > 0.05 => format!("no preferred trend (p = {}, {share})", probability(p)),
+            Some(_) => format!("axes are uneven, but too little independent ground places a trend ({share})"),
             None if t.n_all == 0 => "no place in it can be measured, so there is no trend to state".into(),
             None => format!("too little independent ground to tell a trend ({share})"),
         };

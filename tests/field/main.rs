@@ -2,6 +2,7 @@
 //! when the data is absent and it is skipped.
 
 mod look;
+mod measure;
 mod winds;
 
 use std::path::PathBuf;

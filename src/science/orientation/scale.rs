@@ -50,7 +50,7 @@ const MOST_SIDE: usize = 2048;
 /// Share of the nodes that must be above the noise before a scale counts as the ground's own.
 const LEAST_SHARE: f64 = 1.0 / 3.0;
 /// How much more coherent another scale must be before the preferred one is given up.
-const CLEARLY: f64 = 1.5;
+const CLEARLY: f64 = 1.25;
 
 /// One scale of the sweep.
 #[derive(Clone, Copy, Debug, PartialEq)]
