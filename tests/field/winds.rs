@@ -169,6 +169,7 @@ fn typical_year_drifts_to_the_east_north_east_and_mostly_cancels() {
     print_table(&found);
     assert!(found.cautions.iter().any(|c| c.code == "typical-year"), "{:?}", found.cautions);
     assert!(found.cautions.iter().any(|c| c.code == "rounded-direction"));
+    assert!(found.cautions.iter().any(|c| c.code == "law-dependent-drift"));
     assert!(found.set_aside.iter().map(|s| s.count).sum::<usize>() <= 5, "{:?}", found.set_aside);
     assert_eq!(found.draws.len(), 200);
     assert!(found.flux.toward_ci95_half_deg.is_some_and(|h| h > 5.0));

@@ -99,7 +99,7 @@ fn by_values(
             .copied()
             .filter(|at| {
                 let (low, high) = range(at);
-                low >= 0.0 && low < 10.0 && (0.5..60.0).contains(&high)
+                (0.0..10.0).contains(&low) && (0.5..60.0).contains(&high)
             })
             .collect(),
     };
@@ -255,11 +255,11 @@ fn speed_score(name: &str) -> u32 {
     if spoilt(&words) || has(&["dir", "direction"]) {
         return 0;
     }
-    if has(&["wspd", "windspeed", "wspeed", "windspd", "windspeedavg", "sknt", "wndspd"]) {
+    if has(&["wspd", "windspeed", "wspeed", "windspd", "windspeedavg", "sknt", "wndspd"])
+        || has(&["wind", "wnd"]) && has(&["speed", "spd", "velocity", "vel"])
+    {
         4
-    } else if has(&["wind", "wnd"]) && has(&["speed", "spd", "velocity", "vel"]) {
-        4
-    } else if has(&["ws", "ff", "ws10m", "u10", "wspd10"]) {
+    } else if has(&["ws", "ff", "ws10m", "wspd10"]) {
         3
     } else if has(&["speed", "spd", "velocity"]) {
         2
@@ -275,9 +275,9 @@ fn direction_score(name: &str) -> u32 {
     if spoilt(&words) {
         return 0;
     }
-    if has(&["wdir", "winddir", "winddirection", "wnddir", "drct", "wdr"]) {
-        4
-    } else if has(&["wind", "wnd"]) && has(&["dir", "direction", "from", "toward", "bearing"]) {
+    if has(&["wdir", "winddir", "winddirection", "wnddir", "drct", "wdr"])
+        || has(&["wind", "wnd"]) && has(&["dir", "direction", "from", "toward", "bearing"])
+    {
         4
     } else if has(&["wd", "dd", "wd10m"]) {
         3

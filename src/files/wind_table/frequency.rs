@@ -8,7 +8,8 @@ use super::number::{Cell, cell, sector};
 use super::read::oriented;
 use super::text::for_each_row;
 
-/// Reads a table: each cell above 0 becomes a sample at the middle of its class.
+/// Reads a table: each cell above 0 becomes a sample at the middle of its class. Frequencies that
+/// add to less than 1, or than 100, are shares or percents of all time: what is missing is calm.
 pub(super) fn read(
     text: &str,
     import: &WindImport,
@@ -64,8 +65,26 @@ pub(super) fn read(
     match failure {
         Some(error) => Err(error),
         None if samples.is_empty() => Err(WindFileError::Empty { needed: 1 }),
-        None => Ok(WindRecord { samples, is_table: true }),
+        None => {
+            samples.extend(unlisted_calm(&samples));
+            Ok(WindRecord { samples, is_table: true })
+        }
     }
+}
+
+/// The time a table of shares or percents does not list; `None` for counts and full tables.
+fn unlisted_calm(samples: &[WindSample]) -> Option<WindSample> {
+    let listed: f64 = samples.iter().map(|s| s.weight).sum();
+    let whole = if listed <= 1.005 { 1.0 } else { 100.0 };
+    let weight = whole - listed;
+    // Half a percent is rounding.
+    (weight > 0.005 * whole).then(|| WindSample {
+        line: samples.last().map_or(0, |s| s.line),
+        time: None,
+        speed: Some(0.0),
+        from: None,
+        weight,
+    })
 }
 
 /// The speed classes named in the cells of a header row, with the columns they head. An open

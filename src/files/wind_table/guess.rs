@@ -306,6 +306,7 @@ fn day_order(text: &str, shape: &Shape, time: &[usize], notes: &mut Notes) -> bo
 #[cfg(test)]
 mod tests {
     use super::*;
+    use proptest::prelude::*;
 
     #[test]
     fn a_frequency_table_is_seen_and_read() {
@@ -314,7 +315,9 @@ mod tests {
         assert_eq!(guess.import.speed_unit, SpeedUnit::Knot);
         let record = super::super::read_text(text, &guess.import).expect("a record");
         assert!(record.is_table);
-        assert_eq!(record.samples.iter().map(|s| s.weight).sum::<f64>(), 22.0);
+        // 22 % are listed; the rest of the time is calm.
+        assert_eq!(record.samples.iter().map(|s| s.weight).sum::<f64>(), 100.0);
+        assert_eq!(record.samples.last().and_then(|s| s.speed), Some(0.0));
         let speed = record.samples[1].speed.expect("a speed");
         crate::assert_close!(speed, 13.5 * 1852.0 / 3600.0, 1e-12, "middle of 11-16 kt");
     }
@@ -342,6 +345,16 @@ mod tests {
             "toward 10 is from 190"
         );
         assert_eq!(record.samples[0].time, Some(1_359_676_800));
+    }
+
+    proptest! {
+        #[test]
+        fn any_text_gives_a_guess_or_a_reason(text in "([0-9]{1,5}|-9999|NA|N|wind|dir|speed|[ ,;/:.T\"\t\r\n-]){0,120}") {
+            if let Ok(guess) = guess_text(&text) {
+                let outcome = super::super::read_text(&text, &guess.import);
+                prop_assert!(outcome.is_err() || !outcome.is_ok_and(|r| r.samples.is_empty()));
+            }
+        }
     }
 
     #[test]

@@ -32,7 +32,7 @@ pub enum WindLayout {
     /// with date and time of day; empty when the record has no clock.
     Series { time: Vec<usize>, speed: usize, direction: usize },
     /// One row a sector: its azimuth (or compass point) in column `sector`, then one column of
-    /// frequencies (percent or counts) for each speed class [low, high), in the speed unit.
+    /// frequencies for each speed class [low, high), in the speed unit: shares, percents or counts.
     Frequencies { sector: usize, classes: Vec<SpeedClass> },
 }
 

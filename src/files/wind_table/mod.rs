@@ -22,6 +22,8 @@ pub enum WindFileError {
     Io { path: String, source: std::io::Error },
     #[error("{path} holds {bytes} bytes; a wind table may hold at most {limit}")]
     TooLarge { path: String, bytes: u64, limit: u64 },
+    #[error("line {line} is {bytes} bytes long; a row of a wind table may have at most {limit}")]
+    LongLine { line: usize, bytes: usize, limit: usize },
     #[error("the file holds no rows of data; a wind table needs at least {needed}")]
     Empty { needed: usize },
     #[error(

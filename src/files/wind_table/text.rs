@@ -8,6 +8,9 @@ use super::WindFileError;
 /// A century of minutes in a wide layout stays below this.
 const LARGEST_BYTES: u64 = 1 << 30;
 
+/// Rows of data are shorter; a file without line ends is no table and would only fill the memory.
+const LONGEST_LINE: usize = 1 << 15;
+
 /// The text of a file: UTF-8 or UTF-16 by its mark, else one byte a character.
 pub(super) fn load(path: &Path) -> Result<String, WindFileError> {
     let name = path.display().to_string();
@@ -19,7 +22,14 @@ pub(super) fn load(path: &Path) -> Result<String, WindFileError> {
     }
     let mut raw = Vec::new();
     file.take(LARGEST_BYTES).read_to_end(&mut raw).map_err(io)?;
-    Ok(decode(raw))
+    let text = decode(raw);
+    let too_long = text.split('\n').enumerate().find(|(_, line)| line.len() > LONGEST_LINE);
+    match too_long {
+        Some((at, line)) => {
+            Err(WindFileError::LongLine { line: at + 1, bytes: line.len(), limit: LONGEST_LINE })
+        }
+        None => Ok(text),
+    }
 }
 
 fn decode(raw: Vec<u8>) -> String {
@@ -45,7 +55,7 @@ pub(super) fn for_each_row(
     mut each: impl FnMut(u32, &[&str]) -> bool,
 ) {
     let body = text.split_inclusive('\n').skip(skip);
-    if delimiter.is_ascii() && !delimiter.is_whitespace() || delimiter == '\t' {
+    if delimiter == '\t' || delimiter.is_ascii() && !delimiter.is_whitespace() {
         let offset = text.split_inclusive('\n').take(skip).map(str::len).sum::<usize>();
         let bytes = &text.as_bytes()[offset..];
         // The reader's own line count falls behind at blank lines and at CR LF, so lines are
@@ -72,8 +82,12 @@ pub(super) fn for_each_row(
         return;
     }
     for (at, line) in body.enumerate() {
-        let cells: Vec<&str> = line.split_whitespace().map(|c| c.trim_matches('"')).collect();
-        if !cells.is_empty() && !each((at + skip + 1) as u32, &cells) {
+        let cells: Vec<&str> = if delimiter.is_whitespace() {
+            line.split_whitespace().map(|c| c.trim_matches('"')).collect()
+        } else {
+            line.split(delimiter).map(str::trim).collect()
+        };
+        if cells.iter().any(|c| !c.is_empty()) && !each((at + skip + 1) as u32, &cells) {
             return;
         }
     }

@@ -29,6 +29,7 @@ pub const METHOD: Method = Method {
     ],
     limits: &[
         "Random axes fall into the classes as 1/6, 2/3, 1/6: \"oblique\" wins by default, so compare with that",
+        "Large dunes turn in thousands of years and may remember other winds than those recorded",
     ],
     sources: &[
         HUNTER,

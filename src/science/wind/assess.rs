@@ -4,7 +4,7 @@ use crate::ground::{Caution, SandFlow, Seed, WindRecord, WindSample, Work};
 
 use super::bootstrap::{CELLS_PER_BLOCK, Cells, FEWEST_BLOCKS, Plan, intervals};
 use super::drift_potential;
-use super::mill::{Mill, Variant, YEAR_S};
+use super::mill::{Mill, YEAR_S};
 use super::quality::{self, Checked, SetAside};
 use super::regime::{Drift, Season, flows, gathered, rose, seasons};
 use super::settings::{Site, Transport, WindError, WindSettings};
@@ -31,8 +31,8 @@ pub struct WindAssessment {
     pub seasons: Vec<Season>,
     /// Flow by exact direction, for the theories.
     pub regime: Vec<SandFlow>,
-    /// Bootstrap regimes, each under one law and threshold of `sensitivity` in turn; empty when the
-    /// record cannot be resampled.
+    /// Bootstrap regimes, each under one law and threshold of `sensitivity` in turn (White's law, which
+    /// has Kawamura's form, is not drawn twice); empty when the record cannot be resampled.
     pub draws: Vec<Vec<SandFlow>>,
     /// The drift under every law and threshold.
     pub sensitivity: Vec<Sensitivity>,
@@ -48,6 +48,9 @@ pub struct Sensitivity {
     pub drift: Drift,
     pub regime: Vec<SandFlow>,
 }
+
+/// Resultants of the laws that lie farther apart than this, degrees, call for a caution.
+const WIDE_TURN_DEG: f64 = 20.0;
 
 /// Checks a record and finds the sand it moves.
 ///
@@ -76,7 +79,7 @@ pub fn assess(
 
     let per_cell = rows_per_cell(kept.len(), interval_s, settings.block_days);
     let cells = Cells::cut(&flows_of_rows, per_cell);
-    let plan = Plan::new(cells.count(), interval_s.map(|step| YEAR_S / step / per_cell as f64));
+    let plan = Plan::new(cells.count(), seasons_of_cells(&kept, per_cell).as_deref());
     let can_draw = !record.is_table && cells.count() >= FEWEST_BLOCKS * CELLS_PER_BLOCK && flux.total > 0.0;
     let fryberger = site.is_earth.then(|| {
         let (dp, _) = flows(&kept, |v| mill.drift_potential(v));
@@ -91,13 +94,27 @@ pub fn assess(
         }
         None => None,
     };
-    let mut draws = Vec::new();
     let variants = mill.variants();
-    let sensitivity = variants.iter().map(|v| sensitivity(v, &kept)).collect();
+    let (mut sensitivity, mut cut) = (Vec::new(), Vec::new());
+    work.phase("trying laws and thresholds", variants.len() as u64);
+    for variant in &variants {
+        work.advance(1)?;
+        let (moved, _) = flows(&kept, |v| variant.mill.flux(v));
+        let regime = gathered(&moved);
+        if can_draw && variant.mill.is_of_its_own_form() {
+            cut.push(Cells::cut(&moved, per_cell));
+        }
+        sensitivity.push(Sensitivity {
+            law: variant.mill.law_label(),
+            threshold: variant.threshold.clone(),
+            threshold_ustar: variant.mill.threshold,
+            drift: Drift::of(&regime, variant.mill.unit()),
+            regime,
+        });
+    }
+    let mut draws = Vec::new();
     if can_draw {
         intervals(&mut flux, &cells, &plan, settings.resamples, seed, work)?;
-        let cut: Vec<Cells> =
-            variants.iter().map(|v| Cells::cut(&flows(&kept, |u| v.mill.flux(u)).0, per_cell)).collect();
         work.phase("resampling winds under all laws", u64::from(settings.resamples));
         for index in 0..settings.resamples {
             work.advance(1)?;
@@ -105,6 +122,7 @@ pub fn assess(
             draws.push(which.draw(&plan.starts(seed, u64::from(index))));
         }
     }
+    cautions.extend(law_caution(&flux, &sensitivity));
     if settings.transport == Transport::DriftPotential && !site.is_earth {
         cautions.push(Caution::new(
             "drift-potential-off-earth",
@@ -134,24 +152,21 @@ pub fn assess(
     })
 }
 
-/// The drift of the checked winds under a variant.
-fn sensitivity(variant: &Variant, kept: &[WindSample]) -> Sensitivity {
-    let regime = gathered(&flows(kept, |v| variant.mill.flux(v)).0);
-    Sensitivity {
-        law: variant.mill.law_label(),
-        threshold: variant.threshold.clone(),
-        threshold_ustar: variant.mill.threshold,
-        drift: Drift::of(&regime, variant.mill.unit()),
-        regime,
-    }
-}
-
 /// Rows in a bootstrap cell; without a clock, a 360th of the record.
 fn rows_per_cell(rows: usize, interval_s: Option<f64>, block_days: f64) -> usize {
     match interval_s {
         Some(step) => (block_days * 86_400.0 / CELLS_PER_BLOCK as f64 / step).round().max(1.0) as usize,
         None => rows.div_ceil(360),
     }
+}
+
+/// The time of year at which each cell begins, as a share of the year; `None` for a record without
+/// a clock or of less than a year.
+fn seasons_of_cells(kept: &[WindSample], per_cell: usize) -> Option<Vec<f64>> {
+    let times: Vec<f64> = kept.iter().map(|s| s.time.map(|t| t as f64)).collect::<Option<_>>()?;
+    let (first, last) = times.iter().fold((f64::MAX, f64::MIN), |(a, b), t| (a.min(*t), b.max(*t)));
+    (last - first >= 0.95 * YEAR_S)
+        .then(|| times.iter().step_by(per_cell).map(|t| (t / YEAR_S).rem_euclid(1.0)).collect())
 }
 
 /// Strong winds without a direction, set aside by name.
@@ -169,6 +184,24 @@ fn without_direction(kept: &[WindSample], lost: &[usize]) -> Option<SetAside> {
         code: "no-direction",
         count: lost.len(),
         text: format!("wind above threshold without a direction: {}{more}", named.join(", ")),
+    })
+}
+
+/// Says so when another law or threshold would turn the resultant.
+fn law_caution(flux: &Drift, sensitivity: &[Sensitivity]) -> Option<Caution> {
+    let chosen = flux.toward?;
+    let turns = sensitivity.iter().filter_map(|s| s.drift.toward).map(|toward| toward.turn_from(chosen));
+    let (left, right) = turns.fold((0.0f64, 0.0f64), |(l, r), turn| (l.min(turn), r.max(turn)));
+    (right - left > WIDE_TURN_DEG).then(|| {
+        Caution::new(
+            "law-dependent-drift",
+            format!(
+                "Under other laws and thresholds the resultant points anywhere from {:.0}° to {:.0}° (here {:.0}°).",
+                chosen.rotated(left).deg(),
+                chosen.rotated(right).deg(),
+                chosen.deg()
+            ),
+        )
     })
 }
 
@@ -229,4 +262,97 @@ fn drift_cautions(
         }
     }
     cautions
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::law::Law;
+    use super::super::threshold::Threshold;
+    use super::*;
+    use crate::ground::{Azimuth, Body, Stopped};
+    use rand::Rng as _;
+
+    fn site() -> Site {
+        let earth = Body::earth();
+        Site { height_m: 10.0, roughness_m: 1e-3, air: earth.air, gravity: earth.gravity, is_earth: true }
+    }
+
+    fn settings() -> WindSettings {
+        WindSettings {
+            grain_m: 250e-6,
+            grain_density: 2650.0,
+            threshold: Threshold::ShaoLu,
+            transport: Transport::Physical(Law::Kok),
+            greatest_speed: 75.0,
+            block_days: 30.0,
+            resamples: 60,
+        }
+    }
+
+    /// Three-hourly winds of a year: westerly in winter, southerly in summer, turned by `turn`.
+    fn two_seasons(turn: f64) -> WindRecord {
+        let mut stream = Seed(3).stream("two seasons", 0);
+        let samples = (0..8 * 365)
+            .map(|i| {
+                let winter = !(90 * 8..270 * 8).contains(&i);
+                let from = if winter { 270.0 } else { 180.0 } + 40.0 * (stream.random::<f64>() - 0.5);
+                WindSample {
+                    line: i + 1,
+                    time: Some(i64::from(i) * 10_800),
+                    speed: Some(12.0 * stream.random::<f64>()),
+                    from: Some(Azimuth::from_deg(from + turn)),
+                    weight: 1.0,
+                }
+            })
+            .collect();
+        WindRecord { samples, is_table: false }
+    }
+
+    #[test]
+    fn turning_the_record_by_whole_sectors_turns_everything() {
+        let found =
+            |turn| assess(&two_seasons(turn), &site(), &settings(), Seed(1), &Work::quiet()).expect("one");
+        let (a, b) = (found(0.0), found(35.0));
+        let turned = |p: Option<Azimuth>, q: Option<Azimuth>| {
+            p.zip(q).map_or(f64::NAN, |(p, q)| q.rotated(-35.0).turn_from(p).abs())
+        };
+        assert!(turned(a.flux.toward, b.flux.toward) < 1e-9);
+        crate::assert_close!(a.flux.total, b.flux.total, 1e-9 * a.flux.total, "total");
+        let half = |w: &WindAssessment| w.flux.toward_ci95_half_deg.unwrap_or(f64::NAN);
+        crate::assert_close!(half(&a), half(&b), 1e-6, "interval");
+        for (p, q) in a.draws.iter().zip(&b.draws) {
+            assert!(turned(Drift::of(p, "").toward, Drift::of(q, "").toward) < 1e-6);
+        }
+        let summer = &a.seasons[2].drift;
+        assert!(summer.toward.is_some_and(|t| t.turn_from(Azimuth::from_deg(0.0)).abs() < 5.0), "{summer:?}");
+        assert!(a.cautions.iter().any(|c| c.code == "coarse-sampling"));
+    }
+
+    #[test]
+    fn what_is_missing_is_named() {
+        let record = two_seasons(0.0);
+        let run = |site: Site| assess(&record, &site, &settings(), Seed(1), &Work::quiet());
+        assert_eq!(run(Site { air: None, ..site() }), Err(WindError::NoAir));
+        assert_eq!(run(Site { gravity: None, ..site() }), Err(WindError::NoGravity));
+        assert!(matches!(run(Site { height_m: 1e-4, ..site() }), Err(WindError::Height { .. })));
+        let stopping = Work::quiet();
+        stopping.stop();
+        let stopped = assess(&record, &site(), &settings(), Seed(1), &stopping);
+        assert_eq!(stopped, Err(WindError::Stopped(Stopped)));
+    }
+
+    #[test]
+    fn drift_potential_needs_no_air() {
+        let bare = Site { air: None, gravity: None, is_earth: false, ..site() };
+        let by_practice = WindSettings { transport: Transport::DriftPotential, ..settings() };
+        let found = assess(&two_seasons(0.0), &bare, &by_practice, Seed(1), &Work::quiet()).expect("one");
+        assert!(found.fryberger.is_none() && found.flux.total > 0.0 && found.draws.len() == 60);
+        assert!(found.cautions.iter().any(|c| c.code == "drift-potential-off-earth"));
+        crate::assert_close!(
+            found.threshold_speed_at_height,
+            12.0 * 1852.0 / 3600.0,
+            1e-9,
+            "12 knots at 10 m"
+        );
+    }
 }

@@ -137,16 +137,16 @@ pub struct Plan {
 }
 
 impl Plan {
-    /// For a record of `cells` cells; `cells_per_year` when it has a clock.
-    pub fn new(cells: usize, cells_per_year: Option<f64>) -> Self {
-        let year = cells_per_year.filter(|year| cells as f64 >= 0.95 * year);
-        let candidates = (0..cells.div_ceil(CELLS_PER_BLOCK))
-            .map(|block| {
-                let place = (block * CELLS_PER_BLOCK) as f64;
+    /// For a record of `cells` cells; `seasons` holds the time of year at which each begins, as a share
+    /// of the year, where the record has a clock and spans the year.
+    pub fn new(cells: usize, seasons: Option<&[f64]>) -> Self {
+        let candidates = (0..cells)
+            .step_by(CELLS_PER_BLOCK)
+            .map(|place| {
                 let same_season = |cell: &usize| {
-                    year.is_none_or(|year| {
-                        let apart = (*cell as f64 - place).rem_euclid(year);
-                        apart.min(year - apart) <= year / 12.0
+                    seasons.is_none_or(|at| {
+                        let apart = (at[*cell] - at[place]).abs();
+                        apart.min(1.0 - apart) <= 1.0 / 12.0
                     })
                 };
                 (0..cells).filter(same_season).collect()
@@ -228,13 +228,14 @@ mod tests {
         let flows: Vec<_> = (0..1500).map(|i| flow(if i < 750 { 20.0 } else { 140.0 }, 1.0)).collect();
         let regime: Vec<SandFlow> = flows.iter().flatten().copied().collect();
         let cells = Cells::cut(&flows, 1);
-        let half_with = |year: Option<f64>| {
+        let year: Vec<f64> = (0..1500).map(|i| f64::from(i) / 1500.0).collect();
+        let half_with = |seasons: Option<&[f64]>| {
             let mut drift = Drift::of(&regime, "u");
-            let plan = Plan::new(cells.count(), year);
+            let plan = Plan::new(cells.count(), seasons);
             intervals(&mut drift, &cells, &plan, 500, Seed(3), &Work::quiet()).expect("not stopped");
             drift.toward_ci95_half_deg.expect("an interval")
         };
-        let (seasonal, free) = (half_with(Some(1500.0)), half_with(None));
+        let (seasonal, free) = (half_with(Some(&year)), half_with(None));
         assert!(seasonal < 0.6 * free, "with the seasons kept ± {seasonal}, without ± {free}");
     }
 

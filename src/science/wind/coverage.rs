@@ -124,6 +124,15 @@ fn spliced_years(months: &[(i32, usize)]) -> bool {
     years.len() == 12 && turns >= 2 && in_own_year * 1000 >= months.len() * 995
 }
 
+/// Seconds since the year of a time began.
+pub(super) fn time_of_year(time: i64) -> i64 {
+    let (year, _) = year_and_month(time);
+    let before = i64::from(year) - 1;
+    // Days from 1970 to the first of January.
+    let days = 365 * (before - 1969) + (before / 4 - before / 100 + before / 400) - 477;
+    time - DAY * days
+}
+
 /// Year and month (0 = January) of a time.
 pub(super) fn year_and_month(time: i64) -> (i32, usize) {
     // Days since 0000-03-01 in 400-year cycles of the Gregorian calendar.
@@ -168,6 +177,9 @@ mod tests {
         assert_eq!(year_and_month(951_782_400), (2000, 1)); // 29 February 2000
         assert_eq!(year_and_month(951_868_800), (2000, 2));
         assert_eq!(year_and_month(-1), (1969, 11));
+        assert_eq!(time_of_year(0), 0);
+        assert_eq!(time_of_year(951_868_800), 60 * DAY); // 1 March 2000, after 31 + 29 days
+        assert_eq!(time_of_year(1_356_998_399), 366 * DAY - 1); // the last second of 2012
     }
 
     #[test]

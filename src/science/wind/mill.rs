@@ -108,6 +108,11 @@ impl Mill {
         }
     }
 
+    /// Whether no other law gives the same shares of flux: White's is Kawamura's times a constant.
+    pub fn is_of_its_own_form(&self) -> bool {
+        self.transport != Transport::Physical(Law::White)
+    }
+
     pub fn label(&self) -> String {
         match self.transport {
             Transport::DriftPotential => "drift potential over 12 knots".to_owned(),

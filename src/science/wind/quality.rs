@@ -2,7 +2,7 @@
 
 use crate::ground::{Caution, Method, Read, Source, Stopped, Symbol, WindRecord, WindSample, Work};
 
-use super::coverage::{is_spliced, rounding, time_cautions};
+use super::coverage::{is_spliced, rounding, time_cautions, time_of_year};
 
 /// The rules of quality control.
 pub const METHOD: Method = Method {
@@ -10,7 +10,7 @@ pub const METHOD: Method = Method {
     name: "Quality control of a wind record",
     question: "Which rows of the record can be believed?",
     formula: "set aside: no speed; v < 0; v > v_max; v > 2 q₉₉.₉ and v > 3 max(neighbours); repeated time; run of ≥ 24 equal \
-              windy rows beyond the first",
+              windy rows over ≥ 12 h, beyond the first",
     symbols: &[
         Symbol { symbol: "v", meaning: "wind speed", unit: "m s⁻¹" },
         Symbol { symbol: "v_max", meaning: "greatest speed believed", unit: "m s⁻¹" },
@@ -46,7 +46,7 @@ pub struct SetAside {
 /// A record after quality control.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Checked {
-    /// In order of time where the record has a clock. All have a speed; some have no direction.
+    /// In order of time where the record has a clock, a year put together from years by the calendar. All have a speed; some have no direction.
     pub kept: Vec<WindSample>,
     pub set_aside: Vec<SetAside>,
     pub cautions: Vec<Caution>,
@@ -56,8 +56,11 @@ pub struct Checked {
     pub span: Option<[i64; 2]>,
 }
 
-/// Rows with the same speed and direction this often in a row are a stuck instrument.
+/// Rows with the same speed and direction this often in a row, and for this long, are a stuck
+/// instrument.
 const STUCK_RUN: usize = 24;
+/// Half a day, s.
+const STUCK_S: f64 = 43_200.0;
 /// Rows named in full.
 const NAMED: usize = 5;
 /// Fewest rows from which a spike can be told.
@@ -79,6 +82,7 @@ pub fn check(record: &WindRecord, greatest_speed: f64, work: &Work) -> Result<Ch
         }
         match sample.speed {
             None => rejected.add(Fault::NoSpeed, sample),
+            Some(v) if !v.is_finite() => rejected.add(Fault::NoSpeed, sample),
             Some(v) if v < 0.0 => rejected.add(Fault::Negative, sample),
             Some(v) if v > greatest_speed => rejected.add(Fault::Impossible, sample),
             Some(_) if has_clock && sample.time.is_none() => rejected.add(Fault::NoTime, sample),
@@ -87,14 +91,20 @@ pub fn check(record: &WindRecord, greatest_speed: f64, work: &Work) -> Result<Ch
     }
     if has_clock {
         let backward = kept.windows(2).filter(|w| w[1].time < w[0].time).count();
-        // A year put together from months of several years runs backward by design.
-        if backward > 0 && !is_spliced(&kept) {
-            cautions.push(Caution::new(
-                "time-disorder",
-                format!("Time runs backward at {backward} places of the file; the rows were put in order."),
-            ));
+        if is_spliced(&kept) {
+            // Such a year runs backward by design; its order is that of the calendar.
+            kept.sort_by_key(|s| (s.time.map(time_of_year), s.line));
+        } else {
+            if backward > 0 {
+                cautions.push(Caution::new(
+                    "time-disorder",
+                    format!(
+                        "Time runs backward at {backward} places of the file; the rows were put in order."
+                    ),
+                ));
+            }
+            kept.sort_by_key(|s| (s.time, s.line));
         }
-        kept.sort_by_key(|s| (s.time, s.line));
         let mut last = None;
         kept.retain(|s| {
             let repeated = s.time == last;
@@ -109,9 +119,10 @@ pub fn check(record: &WindRecord, greatest_speed: f64, work: &Work) -> Result<Ch
     let interval_s = interval(&kept);
     if !record.is_table {
         set_spikes_aside(&mut kept, interval_s, &mut rejected);
-        set_stuck_aside(&mut kept, &mut rejected);
+        set_stuck_aside(&mut kept, interval_s, &mut rejected);
     }
-    let span = kept.first().and_then(|s| s.time).zip(kept.last().and_then(|s| s.time)).map(|(a, b)| [a, b]);
+    let times = || kept.iter().filter_map(|s| s.time);
+    let span = times().min().zip(times().max()).map(|(a, b)| [a, b]);
     if !record.is_table {
         time_cautions(&kept, interval_s, span, &mut cautions);
     }
@@ -149,9 +160,10 @@ impl Rejected {
             Fault::Spike => {
                 ("spike", "more than twice the 99.9 % speed and three times its neighbours".to_owned())
             }
-            Fault::Stuck => {
-                ("stuck", format!("the same speed and direction {STUCK_RUN} times or more in a row"))
-            }
+            Fault::Stuck => (
+                "stuck",
+                format!("the same speed and direction {STUCK_RUN} times or more in a row, over half a day"),
+            ),
         };
         let faults = [
             Fault::NoSpeed,
@@ -229,7 +241,8 @@ fn set_spikes_aside(kept: &mut Vec<WindSample>, interval_s: Option<f64>, rejecte
     drop_marked(kept, &spiky, Fault::Spike, rejected);
 }
 
-fn set_stuck_aside(kept: &mut Vec<WindSample>, rejected: &mut Rejected) {
+fn set_stuck_aside(kept: &mut Vec<WindSample>, interval_s: Option<f64>, rejected: &mut Rejected) {
+    let run = interval_s.map_or(STUCK_RUN, |step| STUCK_RUN.max((STUCK_S / step).ceil() as usize));
     let same = |a: &WindSample, b: &WindSample| {
         a.speed == b.speed && a.from == b.from && a.speed > Some(0.0) && a.from.is_some()
     };
@@ -239,7 +252,7 @@ fn set_stuck_aside(kept: &mut Vec<WindSample>, rejected: &mut Rejected) {
         if i < kept.len() && same(&kept[i], &kept[start]) {
             continue;
         }
-        if i - start >= STUCK_RUN {
+        if i - start >= run {
             stuck[start + 1..i].fill(true);
         }
         start = i;
