@@ -6,6 +6,9 @@ use realfft::{RealFftPlanner, RealToComplex};
 use rustfft::num_complex::Complex;
 use rustfft::{Fft, FftPlanner};
 
+/// Rows transformed before they are turned into columns.
+const BAND: usize = 16;
+
 /// A planned transform of `cols` × `rows` real samples; shared by threads.
 #[derive(Clone)]
 pub struct PowerPlan {
@@ -38,7 +41,7 @@ impl PowerPlan {
     pub fn scratch(&self) -> PowerScratch {
         PowerScratch {
             line: self.along.make_input_vec(),
-            line_out: self.along.make_output_vec(),
+            line_out: vec![Complex::default(); BAND * (self.cols / 2 + 1)],
             along: self.along.make_scratch_vec(),
             columns: vec![Complex::default(); (self.cols / 2 + 1) * self.rows],
             across: vec![Complex::default(); self.across.get_inplace_scratch_len()],
@@ -68,13 +71,20 @@ impl PowerPlan {
         assert_eq!(out.len(), self.len(), "power length");
         let PowerScratch { line, line_out, along, columns, across } = scratch;
         columns.fill(Complex::default());
-        for (row, samples) in window.chunks_exact(width).enumerate() {
-            line[..width].copy_from_slice(samples);
-            line[width..].fill(0.0);
-            // Lengths come from the plan itself, and the input is real: no error is possible.
-            self.along.process_with_scratch(line, line_out, along).expect("planned lengths");
-            for (kc, z) in line_out.iter().enumerate() {
-                columns[kc * self.rows + row] = *z;
+        let length = self.cols / 2 + 1;
+        for (band, samples) in window.chunks(width * BAND).enumerate() {
+            let rows = samples.len() / width;
+            for (samples, out) in samples.chunks_exact(width).zip(line_out.chunks_exact_mut(length)) {
+                line[..width].copy_from_slice(samples);
+                line[width..].fill(0.0);
+                // Lengths come from the plan itself, and the input is real: no error is possible.
+                self.along.process_with_scratch(line, out, along).expect("planned lengths");
+            }
+            // Several rows at once, so that each column takes a run of neighbours.
+            for (kc, column) in columns.chunks_exact_mut(self.rows).enumerate() {
+                for (i, z) in column[band * BAND..][..rows].iter_mut().enumerate() {
+                    *z = line_out[i * length + kc];
+                }
             }
         }
         self.across.process_with_scratch(columns, across);

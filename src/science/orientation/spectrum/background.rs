@@ -1,13 +1,17 @@
 //! The smooth background of a power spectrum, from medians in rings of ground frequency.
 
+use std::ops::Range;
+
 use super::bins::Bins;
 
 /// A ring is at least this wide (ratio of frequencies) and holds at least this many bins.
 const RING_RATIO: f64 = 1.3;
 const RING_BINS: usize = 24;
 
-/// Bins an axis line is followed to either side, as a ratio of frequencies.
+/// How far an axis line is followed to either side for its own median, and the stretch that shares
+/// one, as ratios of frequencies.
 const LINE_RATIO: f64 = 2.0;
+const STRETCH_RATIO: f64 = 1.15;
 
 /// Which bins make up each ring and each axis line; the same for all windows of a size.
 #[derive(Clone, Debug)]
@@ -17,8 +21,15 @@ pub(super) struct Rings {
     middle: Vec<f64>,
     /// Bins on each axis line, by rising frequency (indices into `Bins::all`).
     lines: [Vec<usize>; 2],
-    /// For each bin of a line its neighbours on it: range into `lines`.
-    reach: [Vec<(usize, usize)>; 2],
+    /// Stretches of each line that share one median.
+    stretches: [Vec<Stretch>; 2],
+}
+
+/// Bins `own` of a line are held against the median of its bins `around` (both ranges of the line).
+#[derive(Clone, Debug)]
+struct Stretch {
+    own: Range<usize>,
+    around: Range<usize>,
 }
 
 impl Rings {
@@ -40,17 +51,22 @@ impl Rings {
             let on = |i: &usize| bins.all[*i].line == Some(line);
             (0..bins.all.len()).filter(on).collect::<Vec<usize>>()
         });
-        let reach = [0, 1].map(|line| {
-            let ln_f = |i: &usize| bins.all[*i].ln_f;
+        let stretches = [0, 1].map(|line| {
             let on: &Vec<usize> = &lines[line];
-            on.iter()
-                .map(|i| {
-                    let (low, high) = (ln_f(i) - LINE_RATIO.ln(), ln_f(i) + LINE_RATIO.ln());
-                    (on.partition_point(|j| ln_f(j) < low), on.partition_point(|j| ln_f(j) <= high))
-                })
-                .collect()
+            let ln_f = |i: &usize| bins.all[*i].ln_f;
+            let mut stretches = Vec::new();
+            let mut from = 0;
+            while from < on.len() {
+                let low = ln_f(&on[from]);
+                let to = on.partition_point(|i| ln_f(i) < low + STRETCH_RATIO.ln());
+                let around = on.partition_point(|i| ln_f(i) < low - LINE_RATIO.ln())
+                    ..on.partition_point(|i| ln_f(i) <= low + LINE_RATIO.ln());
+                stretches.push(Stretch { own: from..to, around });
+                from = to;
+            }
+            stretches
         });
-        Self { ends, middle, lines, reach }
+        Self { ends, middle, lines, stretches }
     }
 
     /// Mean background power at every bin of `Bins::all`: median ÷ ln 2 of each ring, joined by straight
@@ -84,10 +100,13 @@ impl Rings {
                 }
             })
             .collect();
-        for (line, reach) in self.lines.iter().zip(&self.reach) {
-            for (i, (from, to)) in line.iter().zip(reach) {
-                let median = median_of(line[*from..*to].iter().map(|j| power[bins.all[*j].index]), scratch);
-                background[*i] = background[*i].max(mean_of_median(median, floor));
+        for (line, stretches) in self.lines.iter().zip(&self.stretches) {
+            for Stretch { own, around } in stretches {
+                let powers = line[around.clone()].iter().map(|i| power[bins.all[*i].index]);
+                let level = mean_of_median(median_of(powers, scratch), floor);
+                for i in &line[own.clone()] {
+                    background[*i] = background[*i].max(level);
+                }
             }
         }
         background

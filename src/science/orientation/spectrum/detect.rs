@@ -6,18 +6,19 @@ use crate::numeric::tail::chi2_above;
 
 use super::background::Rings;
 use super::bins::Bins;
-use super::windows::{Scene, Windows};
+use super::windows::Scene;
 
 /// The mean ratio spectrum of one window size and its highest peak.
 pub(super) struct Survey {
-    pub windows: Windows,
     pub bins: Bins,
-    pub independent_windows: f64,
     /// Highest bin of the band (index into `Bins::all`).
     pub peak: usize,
     /// ln of the probability that noise of this background has a peak as high anywhere in the band.
     pub ln_p: f64,
 }
+
+/// Windows looked at per size; more would not change the answer.
+const MOST_WINDOWS: usize = 256;
 
 /// Power below this share of a window's greatest power is rounding of the transform, not background.
 const ROUNDING: f64 = 1e-9;
@@ -30,7 +31,7 @@ pub(super) fn survey(
     band: [f64; 2],
     work: &Work,
 ) -> Result<Option<Survey>, Stopped> {
-    let windows = scene.windows(window, work)?;
+    let windows = scene.windows(window, MOST_WINDOWS, work)?;
     let bins = Bins::new(window, window, frame, band);
     if windows.origins.is_empty() || bins.band().is_empty() {
         return Ok(None);
@@ -61,7 +62,7 @@ pub(super) fn survey(
         return Ok(None);
     };
     let ln_p = ln_global_p(sum[peak] / taken as f64, independent_windows, bins.independent());
-    Ok(Some(Survey { windows, bins, independent_windows, peak, ln_p }))
+    Ok(Some(Survey { bins, peak, ln_p }))
 }
 
 /// Power over background at every bin.

@@ -15,15 +15,6 @@ pub(super) struct Share {
     pub excess: Vec<f32>,
 }
 
-/// A located peak.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub(super) struct Centre {
-    /// Ground wave vector (east, north), cycles per ground unit.
-    pub at: [f64; 2],
-    /// 95 % half widths: direction in radians, spacing as a share.
-    pub half: Option<[f64; 2]>,
-}
-
 /// Sub-bin offset of a peak from three log powers: δ = ½(l₋ − l₊)/(l₋ − 2l₀ + l₊); 0 unless the middle
 /// one is the highest.
 pub fn log_parabola(below: f64, middle: f64, above: f64) -> f64 {
@@ -91,7 +82,7 @@ pub(super) fn settle(shares: &[Share], bins: &[Bin], start: [f64; 2], h: f64) ->
         if (centre[0] - start[0]).hypot(centre[1] - start[1]) > 4.0 * h {
             return None;
         }
-        if step[0].hypot(step[1]) < 1e-7 * h {
+        if step[0].hypot(step[1]) < 1e-5 * h {
             break;
         }
     }

@@ -17,6 +17,9 @@ const HALF_OCTAVE: f64 = 0.5 * std::f64::consts::LN_2;
 /// Standard deviation of the Hann taper's own peak, in bins of the window: √(⟨w′²⟩/⟨w²⟩)/2π.
 const TAPER_BINS: f64 = 0.577_350_269;
 
+/// Windows measured; they are set apart on larger patches.
+const MOST_WINDOWS: usize = 1024;
+
 /// Other peaks listed, and how much weaker than the first they may be.
 const OTHERS: usize = 3;
 const WEAKEST: f64 = 0.05;
@@ -59,7 +62,7 @@ pub(super) fn measure(
     work: &Work,
 ) -> Result<Spectrum, Stopped> {
     let window = scale.window(size);
-    let windows = scene.windows(window, work)?;
+    let windows = scene.windows(window, MOST_WINDOWS, work)?;
     let padded = window.map(|n| 2 * n);
     let seen = best.bins.all[best.peak];
     let mut band = scale.band(size, settings);

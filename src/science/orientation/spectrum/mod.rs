@@ -224,7 +224,7 @@ fn sizes(
     let extent = scene.extent();
     let least = LEAST.max(FEW_CYCLES * settings.shortest_spacing_px);
     let mut size = LARGEST.min(extent[0] as f64 * scale.pixel[0]).min(extent[1] as f64 * scale.pixel[1]);
-    while size >= least && scene.windows(scale.window(size), work)?.origins.is_empty() {
+    while size >= least && scene.windows(scale.window(size), 64, work)?.origins.is_empty() {
         size *= std::f64::consts::FRAC_1_SQRT_2;
     }
     let halves = std::iter::successors(Some(size), |s| Some(s / 2.0));
@@ -238,7 +238,8 @@ fn fitted(best: &Survey, scale: &Scale, scene: &Scene, size: f64) -> f64 {
     let room = (extent[0] as f64 * scale.pixel[0]).min(extent[1] as f64 * scale.pixel[1]).min(LARGEST);
     let wanted = (CYCLES * spacing_px).clamp(LEAST, room.max(LEAST));
     // A window larger than the one that was seen to fit may not fit an odd-shaped patch.
-    let fits = |s: f64| scene.windows(scale.window(s), &Work::quiet()).is_ok_and(|w| !w.origins.is_empty());
+    let fits =
+        |s: f64| scene.windows(scale.window(s), 64, &Work::quiet()).is_ok_and(|w| !w.origins.is_empty());
     if wanted <= size || fits(wanted) { wanted } else { size }
 }
 

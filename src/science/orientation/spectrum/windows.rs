@@ -17,15 +17,17 @@ const BATCH: usize = 32;
 
 /// The patch as a picture: tone, and which pixels count.
 pub(super) struct Scene<'a> {
-    pub image: &'a Grid<f32>,
     pub tone: Tone,
     pub place: &'a Place,
-    /// Inside the patch and valid.
+    /// The patch's box: first column and row, columns and rows.
+    first: [usize; 2],
+    size: [usize; 2],
+    /// Tone and whether it counts (inside the patch and valid), row by row within the box.
+    tones: Vec<f32>,
     inside: Vec<bool>,
-    bounds: [usize; 4],
 }
 
-/// Upper left pixel of each window.
+/// Upper left corner of each window within the patch's box.
 #[derive(Clone, Debug, PartialEq)]
 pub(super) struct Windows {
     pub size: [usize; 2],
@@ -45,54 +47,52 @@ impl<'a> Scene<'a> {
     pub fn new(image: &'a Grid<f32>, patch: &Polygon, tone: Tone, place: &'a Place) -> Option<Self> {
         let Bounds { min, max } = patch.bounds()?;
         let clamp = |v: f64, limit: usize| v.clamp(0.0, limit as f64) as usize;
-        let bounds = [
-            clamp(min.x.floor(), image.width()),
-            clamp(min.y.floor(), image.height()),
-            clamp(max.x.ceil(), image.width()),
-            clamp(max.y.ceil(), image.height()),
-        ];
-        let width = image.width();
-        let mut inside = vec![false; image.len()];
-        for row in bounds[1]..bounds[3] {
-            for (from, to) in patch.row_spans(row, width) {
-                for col in from..to {
-                    inside[row * width + col] = image.is_valid(col, row);
+        let first = [clamp(min.x.floor(), image.width()), clamp(min.y.floor(), image.height())];
+        let end = [clamp(max.x.ceil(), image.width()), clamp(max.y.ceil(), image.height())];
+        let size = [0, 1].map(|i| end[i].saturating_sub(first[i]));
+        let mut inside = vec![false; size[0] * size[1]];
+        let mut tones = vec![0.0f32; size[0] * size[1]];
+        for row in 0..size[1] {
+            for (from, to) in patch.row_spans(first[1] + row, image.width()) {
+                for col in from.max(first[0])..to.min(end[0]) {
+                    let at = row * size[0] + col - first[0];
+                    if let Some(value) = image.get(col, first[1] + row) {
+                        inside[at] = true;
+                        tones[at] = tone.of(value);
+                    }
                 }
             }
         }
-        (bounds[0] < bounds[2] && bounds[1] < bounds[3]).then_some(Self {
-            image,
-            tone,
-            place,
-            inside,
-            bounds,
-        })
+        inside.contains(&true).then_some(Self { tone, place, first, size, tones, inside })
     }
 
     /// Columns and rows of the patch's box on the raster.
     pub fn extent(&self) -> [usize; 2] {
-        [self.bounds[2] - self.bounds[0], self.bounds[3] - self.bounds[1]]
+        self.size
     }
 
     pub fn centre(&self) -> Point {
-        Point::new(
-            0.5 * (self.bounds[0] + self.bounds[2]) as f64,
-            0.5 * (self.bounds[1] + self.bounds[3]) as f64,
-        )
+        self.middle([0, 0], self.size)
     }
 
-    /// Windows half overlapping that lie on the raster and nine tenths in the patch.
-    pub fn windows(&self, size: [usize; 2], work: &Work) -> Result<Windows, Stopped> {
+    /// The middle of a window of the box, in pixel coordinates of the raster.
+    fn middle(&self, origin: [usize; 2], size: [usize; 2]) -> Point {
+        let along = |i: usize| (self.first[i] + origin[i]) as f64 + 0.5 * size[i] as f64;
+        Point::new(along(0), along(1))
+    }
+
+    /// Windows half overlapping that lie on the raster and nine tenths in the patch; set further apart
+    /// where there would be many more than `most`.
+    pub fn windows(&self, size: [usize; 2], most: usize, work: &Work) -> Result<Windows, Stopped> {
+        if (0..2).any(|i| size[i] > self.size[i] || size[i] < 2) {
+            return Ok(Windows { size, origins: Vec::new() });
+        }
+        let spare = [0, 1].map(|i| self.size[i] - size[i]);
+        let steps = [0, 1].map(|i| spare[i].div_ceil(size[i] / 2));
+        let surplus = (((steps[0] + 1) * (steps[1] + 1)) as f64 / most as f64).max(1.0).sqrt();
         let starts = |i: usize| -> Vec<usize> {
-            let extent = self.extent()[i];
-            if size[i] > extent || size[i] < 2 {
-                return Vec::new();
-            }
-            let spare = extent - size[i];
-            let steps = spare.div_ceil((size[i] / 2).max(1));
-            (0..=steps)
-                .map(|k| self.bounds[i] + (spare * k).checked_div(steps).unwrap_or(spare / 2))
-                .collect()
+            let steps = (steps[i] as f64 / surplus).ceil() as usize;
+            (0..=steps).map(|k| (spare[i] * k).checked_div(steps).unwrap_or(spare[i] / 2)).collect()
         };
         let tapers = size.map(hann);
         let (cols, rows) = (starts(0), starts(1));
@@ -101,10 +101,7 @@ impl<'a> Scene<'a> {
             .par_iter()
             .map(|origin| {
                 work.advance(0)?;
-                let middle = [0, 1]
-                    .map(|i| (origin[i] + size[i] / 2).min([self.image.width(), self.image.height()][i] - 1));
-                let has_frame =
-                    self.place.local_frame(Point::new(middle[0] as f64, middle[1] as f64)).is_some();
+                let has_frame = self.place.local_frame(self.middle(*origin, size)).is_some();
                 Ok(has_frame && self.share(*origin, &tapers) >= LEAST_SHARE)
             })
             .collect();
@@ -117,7 +114,7 @@ impl<'a> Scene<'a> {
         let (mut sum, mut all) = (0.0, 0.0);
         let whole: f64 = tapers[0].iter().sum();
         for (r, wr) in tapers[1].iter().enumerate() {
-            let line = &self.inside[(origin[1] + r) * self.image.width() + origin[0]..][..tapers[0].len()];
+            let line = &self.inside[(origin[1] + r) * self.size[0] + origin[0]..][..tapers[0].len()];
             let part: f64 = tapers[0].iter().zip(line).filter(|(_, inside)| **inside).map(|(w, _)| w).sum();
             sum += wr * part;
             all += wr * whole;
@@ -133,10 +130,9 @@ impl<'a> Scene<'a> {
         tapers: &[Vec<f64>; 2],
         out: &mut [f32],
     ) -> Option<Tapered> {
-        let width = self.image.width();
         let value = |col: usize, row: usize| {
-            let at = (origin[1] + row) * width + origin[0] + col;
-            self.inside[at].then(|| f64::from(self.tone.of(self.image.values()[at])))
+            let at = (origin[1] + row) * self.size[0] + origin[0] + col;
+            self.inside[at].then(|| f64::from(self.tones[at]))
         };
         let plane = Plane::fit([&tapers[0], &tapers[1]], value)?;
         let mut square = 0.0;
@@ -150,7 +146,7 @@ impl<'a> Scene<'a> {
                 }
             }
         }
-        let centre = Point::new((origin[0] + size[0] / 2) as f64, (origin[1] + size[1] / 2) as f64);
+        let centre = self.middle(origin, size);
         Some(Tapered { level: plane.level, square, frame: self.place.local_frame(centre)? })
     }
 
