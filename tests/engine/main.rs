@@ -8,6 +8,7 @@ mod guards;
 mod hostile;
 mod jpeg_writer;
 mod layouts;
+mod orientation;
 mod plates;
 mod samples;
 mod tiff_writer;

@@ -5,6 +5,8 @@ mod axial;
 mod axial_field;
 mod axial_tests;
 mod georef;
+mod orientation;
 mod place;
+mod spectrum;
 mod verdict;
 mod wind;

@@ -2,9 +2,12 @@
 //! illumination do to both.
 
 mod contrast;
+pub mod crossing;
 mod gradient;
+pub mod look;
 pub mod noise;
 pub mod scale;
+pub mod speckle;
 pub mod spectrum;
 mod tensor;
 
@@ -15,4 +18,11 @@ pub use tensor::{NodeField, TensorSettings, TrendNode, trend_nodes};
 use crate::ground::Method;
 
 /// The methods of this family.
-pub const METHODS: &[&Method] = &[&tensor::METHOD, &noise::METHOD, &spectrum::METHOD, &scale::METHOD];
+pub const METHODS: &[&Method] = &[
+    &tensor::METHOD,
+    &noise::METHOD,
+    &spectrum::METHOD,
+    &scale::METHOD,
+    &speckle::METHOD,
+    &look::METHOD,
+];

@@ -3,9 +3,9 @@
 use std::f64::consts::PI;
 
 use rand::Rng;
-use rand_distr::{Distribution as _, StandardNormal};
 
 use crate::ground::{Axis, Grid, LocalFrame};
+use crate::numeric::tail::normal_quantile;
 
 /// What the texture is like on average.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -19,6 +19,9 @@ pub struct DuneTexture {
     pub bandwidth: f64,
 }
 
+/// Steps of the golden section spread evenly whatever their number.
+const GOLDEN: f64 = 0.618_033_988_749_894_9;
+
 /// Waves; enough for a nearly Gaussian field.
 const WAVES: usize = 300;
 
@@ -27,9 +30,12 @@ impl DuneTexture {
     pub fn draw(&self, width: usize, height: usize, frame: LocalFrame, rng: &mut impl Rng) -> Grid<f32> {
         let mut field = vec![0.0f64; width * height];
         let amplitude = (2.0 / WAVES as f64).sqrt();
-        for _ in 0..WAVES {
-            let turn: f64 = StandardNormal.sample(rng);
-            let stretch: f64 = StandardNormal.sample(rng);
+        for wave in 0..WAVES {
+            // Even shares of both distributions, so that every field has the stated trend and spacing; only
+            // the phases are left to chance.
+            let share = (wave as f64 + 0.5) / WAVES as f64;
+            let turn = normal_quantile(share);
+            let stretch = normal_quantile((share * WAVES as f64 * GOLDEN).fract().clamp(1e-4, 1.0 - 1e-4));
             let normal = self.trend.perpendicular().rotated(self.spread_deg * turn).azimuth();
             let wavenumber = 2.0 * PI / (self.spacing * (self.bandwidth * stretch).exp());
             let (east, north) = normal.east_north();

@@ -1,8 +1,10 @@
 //! The smooth background of a power spectrum, from medians in rings of ground frequency.
 
+use std::f64::consts::FRAC_1_SQRT_2;
 use std::ops::Range;
 
-use super::bins::Bins;
+use super::bins::{Bin, Bins};
+use crate::ground::LocalFrame;
 
 /// A ring is at least this wide (ratio of frequencies) and holds at least this many bins.
 const RING_RATIO: f64 = 1.3;
@@ -16,8 +18,8 @@ const STRETCH_RATIO: f64 = 1.15;
 /// Which bins make up each ring and each axis line; the same for all windows of a size.
 #[derive(Clone, Debug)]
 pub(super) struct Rings {
-    /// Ends of the rings in `Bins::all`, and the mean ln f of each.
-    ends: Vec<usize>,
+    /// Bins whose median is taken, and the mean ln f, of each ring.
+    members: Vec<Vec<usize>>,
     middle: Vec<f64>,
     /// Bins on each axis line, by rising frequency (indices into `Bins::all`).
     lines: [Vec<usize>; 2],
@@ -33,8 +35,17 @@ struct Stretch {
 }
 
 impl Rings {
-    pub fn new(bins: &Bins) -> Self {
-        let (mut ends, mut middle) = (Vec::new(), Vec::new());
+    /// With `texture` (the pixel wave vector of a texture already seen) only bins more than 45° from its
+    /// direction on the ground stand for the background, so that a broad texture is not taken for it.
+    pub fn new(bins: &Bins, frame: LocalFrame, texture: Option<[f64; 2]>) -> Self {
+        let away = |bin: &Bin| {
+            texture.is_none_or(|t| {
+                let ((e, n), (te, tn)) =
+                    (frame.gradient(bin.pixel[0], bin.pixel[1]), frame.gradient(t[0], t[1]));
+                (e * te + n * tn).abs() < FRAC_1_SQRT_2 * e.hypot(n) * te.hypot(tn)
+            })
+        };
+        let (mut members, mut middle) = (Vec::new(), Vec::new());
         let mut from = 0;
         for to in 1..=bins.all.len() {
             let wide = bins.all[to - 1].ln_f - bins.all[from].ln_f >= RING_RATIO.ln();
@@ -43,7 +54,8 @@ impl Rings {
             if (wide && enough) || to == bins.all.len() {
                 let ring = &bins.all[from..to];
                 middle.push(ring.iter().map(|b| b.ln_f).sum::<f64>() / ring.len() as f64);
-                ends.push(to);
+                let apart: Vec<usize> = (from..to).filter(|i| away(&bins.all[*i])).collect();
+                members.push(if apart.len() >= RING_BINS / 3 { apart } else { (from..to).collect() });
                 from = to;
             }
         }
@@ -66,20 +78,18 @@ impl Rings {
             }
             stretches
         });
-        Self { ends, middle, lines, stretches }
+        Self { members, middle, lines, stretches }
     }
 
     /// Mean background power at every bin of `Bins::all`: median ÷ ln 2 of each ring, joined by straight
     /// lines in ln P over ln f. Bins on an axis line are held against the line's own median where
     /// that is higher: stripes and seams fill the whole line, a grating only one place on it.
     pub fn background(&self, bins: &Bins, power: &[f32], floor: f64, scratch: &mut Vec<f32>) -> Vec<f64> {
-        let mut from = 0;
         let level: Vec<f64> = self
-            .ends
+            .members
             .iter()
-            .map(|to| {
-                let median = median_of(bins.all[from..*to].iter().map(|b| power[b.index]), scratch);
-                from = *to;
+            .map(|ring| {
+                let median = median_of(ring.iter().map(|i| power[bins.all[*i].index]), scratch);
                 mean_of_median(median, floor).ln()
             })
             .collect();

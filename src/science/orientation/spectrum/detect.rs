@@ -36,7 +36,7 @@ pub(super) fn survey(
     if windows.origins.is_empty() || bins.band().is_empty() {
         return Ok(None);
     }
-    let rings = Rings::new(&bins);
+    let rings = Rings::new(&bins, frame, None);
     let plan = PowerPlan::new(window[0], window[1]);
     let mut sum = vec![0.0f64; bins.all.len()];
     let mut taken = 0usize;

@@ -26,6 +26,12 @@ pub fn log_parabola(below: f64, middle: f64, above: f64) -> f64 {
     if bend < 0.0 { 0.5 * (b - a) / bend } else { 0.0 }
 }
 
+/// How far off a peak read from its bin alone may be, with `cycles` wavelengths in the window: share of the
+/// spacing, and radians of trend; both 1/2m.
+pub fn half_bin(cycles: f64) -> f64 {
+    0.5 / cycles
+}
+
 /// Steps of the mean shift; it settles in far fewer.
 const STEPS: usize = 60;
 
@@ -89,27 +95,29 @@ pub(super) fn settle(shares: &[Share], bins: &[Bin], start: [f64; 2], h: f64) ->
     Some(centre)
 }
 
-/// The width of the mean peak: the distance from its centre where the power averaged around it falls to half,
-/// as a standard deviation, looked at in steps of half the taper's bin `bin`.
-pub(super) fn width(shares: &[Share], bins: &[Bin], centre: [f64; 2], bin: f64) -> f64 {
+/// Directions, degrees, and ln frequency within which the width of a peak is read.
+const WIDTH_DEG: f64 = 25.0;
+const WIDTH_LN: f64 = 0.35;
+
+/// The width of the mean peak, as the standard deviation of its excess power in one direction: from the
+/// second moments about the centre, within 25° and half an octave of it. 0 without excess.
+pub(super) fn width(shares: &[Share], bins: &[Bin], centre: [f64; 2]) -> f64 {
     let length = centre[0].hypot(centre[1]);
-    let steps = (0.6 * length / (0.5 * bin)).ceil().max(2.0) as usize;
-    let mut sums = vec![(0.0f64, 0usize); steps + 1];
+    let (mut sum, mut square) = (0.0, 0.0);
     for share in shares {
-        for (b, excess) in bins.iter().zip(&share.excess) {
-            let (e, n) = share.frame.gradient(b.pixel[0], b.pixel[1]);
-            let near = (e - centre[0]).hypot(n - centre[1]).min((e + centre[0]).hypot(n + centre[1]));
-            let ring = (near / (0.5 * bin)).round() as usize;
-            if let Some(sum) = sums.get_mut(ring) {
-                sum.0 += f64::from(*excess);
-                sum.1 += 1;
+        for (bin, excess) in bins.iter().zip(&share.excess) {
+            let (e, n) = share.frame.gradient(bin.pixel[0], bin.pixel[1]);
+            let f = e.hypot(n);
+            let along = (e * centre[0] + n * centre[1]).abs() / length;
+            if (f / length).ln().abs() > WIDTH_LN || along < f * WIDTH_DEG.to_radians().cos() {
+                continue;
             }
+            let near = (e - centre[0]).hypot(n - centre[1]).min((e + centre[0]).hypot(n + centre[1]));
+            sum += f64::from(*excess);
+            square += f64::from(*excess) * near * near;
         }
     }
-    let mean = |i: usize| if sums[i].1 == 0 { None } else { Some(sums[i].0 / sums[i].1 as f64) };
-    let top = (0..2).filter_map(mean).fold(f64::MIN, f64::max);
-    let half = (1..=steps).find(|i| mean(*i).is_some_and(|m| m < 0.5 * top)).unwrap_or(steps);
-    half as f64 * 0.5 * bin / (2.0 * std::f64::consts::LN_2).sqrt()
+    if sum > 0.0 { (0.5 * square / sum).max(0.0).sqrt() } else { 0.0 }
 }
 
 /// 95 % half widths of direction (radians) and spacing (share) from the scatter between windows.

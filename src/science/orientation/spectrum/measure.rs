@@ -6,7 +6,7 @@ use crate::numeric::fft::PowerPlan;
 use super::background::Rings;
 use super::bins::{Bin, Bins};
 use super::detect::{Survey, floor, ln_global_p, ratio_floor, ratios};
-use super::locate::{Share, log_parabola, scatter, settle, width};
+use super::locate::{Share, half_bin, log_parabola, scatter, settle, width};
 use super::windows::{Scene, Windows};
 use super::{Peak, Scale, Spectrum, SpectrumSettings, picture};
 
@@ -77,7 +77,7 @@ pub(super) fn measure(
         to: bins.all.partition_point(|b| b.ln_f <= seen.ln_f + STRETCH),
         seen: seen.pixel,
     };
-    let rings = Rings::new(&bins);
+    let rings = Rings::new(&bins, scale.frame, Some(seen.pixel));
     let plan = PowerPlan::new(padded[0], padded[1]);
     let mut ratio = vec![0.0f64; bins.all.len()];
     let mut readings = Vec::new();
@@ -179,13 +179,13 @@ fn locate(
     let start = sub_bin(mean, stretch, top);
     let first = settle(&shares, near, start, 1.5 * bin).unwrap_or(start);
     let length = first[0].hypot(first[1]);
-    let h = width(&shares, near, first, bin).clamp(1.2 * bin, (0.35 * length).max(1.2 * bin));
+    let h = width(&shares, near, first).clamp(1.2 * bin, (0.35 * length).max(1.2 * bin));
     let centre = settle(&shares, near, first, h).unwrap_or(first);
     let frequency = centre[0].hypot(centre[1]);
     let cycles = frequency / bin;
     let ratio = mean.ratio[top];
     // Half-bin limit, the whole story for a few windows; otherwise the bound for one wave in noise.
-    let limit = 0.5 / cycles;
+    let limit = half_bin(cycles);
     let bound = 1.96 * (24.0 / (9.0 * ratio.max(1e-9))).sqrt()
         / (2.0 * std::f64::consts::PI * cycles)
         / independent.max(1.0).sqrt();

@@ -9,7 +9,7 @@ mod picture;
 mod windows;
 
 pub use detect::{ln_global_p, ratio_floor};
-pub use locate::log_parabola;
+pub use locate::{half_bin, log_parabola};
 pub use picture::NorthUp;
 
 use crate::ground::{
@@ -254,8 +254,8 @@ fn cautions(found: &Spectrum, scale: &Scale) -> Vec<Caution> {
             "few-cycles",
             format!(
                 "Only {cycles:.1} wavelengths fit a window: trend and spacing are uncertain by up to {:.0}° and {:.0} %.",
-                (0.5 / cycles).to_degrees(),
-                50.0 / cycles
+                half_bin(cycles).to_degrees(),
+                100.0 * half_bin(cycles)
             ),
         ));
     }
