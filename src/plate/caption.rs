@@ -183,6 +183,15 @@ mod tests {
     }
 
     #[test]
+    fn every_method_a_caption_may_cite_is_known() {
+        let known = crate::science::methods();
+        let keys = [TREND, INTERVAL, &[BOOTSTRAP, MIXTURE], SPECTRUM, WINDS, VERDICT].concat();
+        for key in keys {
+            assert!(known.iter().any(|m| m.id == key), "{key}");
+        }
+    }
+
+    #[test]
     fn the_recipe_names_program_sheet_and_seed() {
         let recipe = Recipe {
             program: "Ventifact 0.1.0".into(),

@@ -131,14 +131,14 @@ impl OutlineBuilder for OutlinePen {
     }
 }
 
-/// Breaks text into lines no wider than `width_mm`. Breaks at blanks; a word too long for a line is
+/// Breaks text into lines no wider than `width_mm`. Breaks at blanks but not at no-break ones; a word too long for a line is
 /// broken inside. Line feeds in the text are kept.
 pub fn wrap(text: &str, size_mm: f64, bold: bool, width_mm: f64) -> Vec<String> {
     let fits = |line: &str| text_width(line, size_mm, bold) <= width_mm;
     let mut lines = Vec::new();
     for paragraph in text.split('\n') {
         let mut line = String::new();
-        for word in paragraph.split_whitespace() {
+        for word in paragraph.split([' ', '\t']).filter(|w| !w.is_empty()) {
             let longer = if line.is_empty() { word.to_owned() } else { format!("{line} {word}") };
             if fits(&longer) {
                 line = longer;

@@ -140,7 +140,7 @@ fn map_note(plate: &PatchPlate) -> String {
     format!(
         "Map: {} ({} × {} pixels of {pixel}; {}). Margin: {margin}; angles from true north; intervals are 95 %. Patch of {area}, \
          {} valid. Strokes: trend where the coherence passes {}, longer where it is higher, thinned for print; \
-         scales {} and {} px.",
+         scales {} and {}\u{a0}px.",
         raster.name,
         raster.width,
         raster.height,

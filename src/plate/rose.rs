@@ -81,11 +81,11 @@ pub fn small_rose(trend: &TrendFinding, size_mm: f64, theme: &Theme) -> Figure {
     sketch.finish(size_mm, size_mm)
 }
 
-/// n, effective n, R̄, which interval, bin width, and how to read the petals.
+/// n, effective n, R̄, which interval (or the test that found no trend), bin width, and how to read the petals.
 fn caption(trend: &TrendFinding) -> String {
     let interval = match trend.ci95_half_deg {
         Some(_) if trend.defined => format!("95 % interval by {} · ", trend.ci95_source),
-        _ => String::new(),
+        _ => trend.rayleigh_p.map(|p| format!("Rayleigh {} · ", numbers::p_value(p))).unwrap_or_default(),
     };
     format!(
         "{} of {} nodes, effective n {} · R\u{304} {:.2}\n{interval}{}° bins\npetal area = share, drawn both ways",

@@ -3,7 +3,7 @@
 
 mod sorrel;
 
-use ventifact::ground::{Bounds, LengthUnit, Point, Polygon};
+use ventifact::ground::{Bounds, LengthUnit, Place, Point, Polygon};
 use ventifact::plate::map::{MapView, Picture, surroundings};
 use ventifact::plate::{Figure, Item, PngSize, TextAnchor, Theme, font};
 use ventifact::plate::{OverviewPlate, PatchPlate, overview_plate, patch_plate};
@@ -11,7 +11,7 @@ use ventifact::plate::{
     dial, modes, pdf, png, posterior_bars, profile, rose, sand_rose, small_rose, spectrum,
 };
 use ventifact::plate::{svg, verdict_bar};
-use ventifact::study::{Findings, Id, PatchFinding};
+use ventifact::study::{Findings, Id, PatchFinding, RasterFinding};
 
 use sorrel::{
     Reach, drift, flow, no_trend, patch_finding, peak, plain_finding, raster_finding, reach, recipe,
@@ -151,6 +151,38 @@ fn composed_plates_say_what_they_must_and_render_the_same_bytes_twice() {
     let again = plate_of(&long, &reach.outline, &reach, &print);
     assert!(svg(&again) == svg(&plates[0].1), "SVG bytes differ");
     assert!(pdf(&again) == pdf(&plates[0].1), "PDF bytes differ");
+}
+
+#[test]
+fn a_raster_without_ground_size_has_its_plate_in_pixels_and_landscape() {
+    let scene = reach();
+    let scene = Reach { place: Place::pixels(35.0), ..scene };
+    let mut finding = patch_finding(&scene);
+    finding.unit = LengthUnit::Pixel;
+    finding.area = 243_000.0;
+    finding.spectrum.spacing = Some(26.0);
+    finding.spectrum.spacing_ci95 = Some([24.9, 27.4]);
+    finding.verdicts.clear();
+    let covers = surroundings(&scene.outline, scene.size);
+    let picture = cut(&scene.picture, covers, 2);
+    let view = MapView { picture: &picture, covers, place: &scene.place };
+    let raster = RasterFinding { pixel_m: None, projection: "no georeference".into(), ..raster_finding() };
+    let recipe = recipe();
+    let plate = PatchPlate {
+        patch: &finding,
+        outline: &scene.outline,
+        neighbours: Vec::new(),
+        raster: &raster,
+        view,
+        winds: &[],
+        recipe: &recipe,
+    };
+    let figure = patch_plate(&plate, 277.0, &Theme::print());
+    keep("pixels", &figure, 2400);
+    assert_inside("pixels", &figure);
+    let said = texts(&figure.items).join(" ");
+    assert!(said.contains("26.0 px (24.9–27.4)") && said.contains("px along image rows"), "{said}");
+    assert!(!said.contains("local codes"), "no sand is said to move: {said}");
 }
 
 /// No text leaves the page.

@@ -18,7 +18,7 @@ pub(super) struct ScaleBar {
 pub(super) fn scale_bar(sheet: &Sheet, place: &Place) -> Option<ScaleBar> {
     let frame = place.local_frame(sheet.covers.centre())?;
     let per_mm = frame.length(1.0, 0.0) / sheet.scale()[0];
-    let length = numbers::round_down(0.3 * sheet.width() * per_mm);
+    let length = round_length(0.3 * sheet.width() * per_mm);
     if length <= 0.0 {
         return None;
     }
@@ -28,6 +28,14 @@ pub(super) fn scale_bar(sheet: &Sheet, place: &Place) -> Option<ScaleBar> {
         LengthUnit::Pixel => format!("{} px", numbers::plain(length, 4)),
     };
     Some(ScaleBar { length_mm: length / per_mm, label })
+}
+
+/// The largest of 1, 2, 4, 5, 8 times a power of ten that is not above `value`; 0 for 0.
+fn round_length(value: f64) -> f64 {
+    let coarse = numbers::round_down(value);
+    let decade = if coarse > 0.0 { 10f64.powf(coarse.log10().floor()) } else { return 0.0 };
+    let finer = [8.0, 4.0].into_iter().map(|s| s * decade).find(|l| *l <= value);
+    finer.map_or(coarse, |l| l.max(coarse))
 }
 
 /// The bar from `at` to the right, its label and what it holds for after it.
@@ -113,6 +121,7 @@ mod tests {
         assert_close!(bar.length_mm, 20.0, 1e-9);
         let pixels = scale_bar(&sheet(), &Place::pixels(0.0)).expect("a bar");
         assert_eq!((pixels.label.as_str(), pixels.length_mm.round()), ("200 px", 20.0));
+        assert_eq!([430.0, 0.55, 9999.0, 0.0].map(round_length), [400.0, 0.5, 8000.0, 0.0]);
     }
 
     #[test]
