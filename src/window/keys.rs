@@ -53,7 +53,7 @@ pub fn show(ctx: &Context, model: &Model, out: &mut Commands) {
             }
         });
         rule(ui, &look(model));
-        ui.label("On the table: arrows move, + and − zoom, Enter lays a corner at the cross.");
+        ui.label("On the table: arrows move, + and − zoom, Space lays a corner at the cross.");
         ui.add_space(8.0);
         if ui.button("Close").clicked() {
             out.push(Command::View(ViewCommand::Close));

@@ -6,11 +6,12 @@ use egui::{
     Event, EventFilter, Key, Modifiers, MouseWheelSource, MouseWheelUnit, PointerButton, Pos2, Response, Role,
 };
 
-use crate::desk::{Camera, Command, Cursor, DrawCommand, PatchCommand, Tool, ViewCommand};
+use crate::desk::{Camera, Command, Cursor, Draft, DrawCommand, PatchCommand, Tool, ViewCommand};
 use crate::ground::{Point, Polygon};
 use crate::study::{Id, Patch};
 
 use super::draw::{self, Standing};
+use super::lens::Lens;
 use super::pick::{self, Corner};
 use super::{Table, TableState};
 
@@ -32,6 +33,12 @@ pub enum Drag {
     Corner(Corner, Vec2),
     /// The whole patch, as it was, from where it was taken up.
     Whole { outline: Polygon, from: Point },
+}
+
+/// The pointer while it is within the frame, also over the names and handles that lie on it.
+pub fn pointer(response: &Response, lens: &Lens) -> Option<Pos2> {
+    let at = response.contains_pointer().then(|| response.ctx.pointer_hover_pos()).flatten();
+    at.filter(|at| lens.frame.contains(*at))
 }
 
 /// Turns what the user does in one frame into commands.
@@ -72,14 +79,14 @@ impl Hand<'_> {
 
     /// The pointer while it is within the frame.
     fn pointer(&self) -> Option<Pos2> {
-        self.response.hover_pos().filter(|at| self.table.lens.frame.contains(*at))
+        pointer(self.response, &self.table.lens)
     }
 
     /// The camera after wheel, pinch and a panning drag.
     fn looked(&mut self, state: &mut TableState) -> Camera {
         let lens = &self.table.lens;
         let mut camera = self.table.camera;
-        if let Some(at) = self.response.contains_pointer().then(|| self.pointer()).flatten() {
+        if let Some(at) = self.pointer() {
             let (scroll, pinch) = self.ui.input(|input| {
                 for event in &input.events {
                     if let Event::MouseWheel { unit, source, .. } = event {
@@ -331,7 +338,10 @@ impl Hand<'_> {
         }
         if let Some(cross) = state.cross {
             draw::cross(&self.ui.painter_at(lens.frame), lens.to_screen(cross), &self.table.ink);
-            if self.pressed(Key::Space) {
+            let draft = self.table.model.session.draft.as_ref();
+            let is_whole = draft.and_then(Draft::finished).is_some();
+            // Enter closes an outline that can be closed; until then it lays corners too.
+            if self.pressed(Key::Space) || (!is_whole && self.pressed(Key::Enter)) {
                 let at = lens.to_screen(cross);
                 match self.tool() {
                     tool if tool.draws() => self.lay(at, false),

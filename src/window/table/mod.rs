@@ -147,7 +147,7 @@ fn paint(painter: &Painter, response: &Response, table: &Table<'_>, state: &mut 
     if layers.strokes {
         draw::strokes(&inside, &state.fields.on_screen(table), ink);
     }
-    let pointer = response.hover_pos().filter(|at| frame.contains(*at));
+    let pointer = hand::pointer(response, lens);
     let hovered = pointer
         .filter(|_| !model.session.tool.draws())
         .and_then(|at| pick::patch_at(table.patches(), lens, at));

@@ -18,6 +18,8 @@ use super::tone::{ToneCurve, ToneSample};
 const KEPT: usize = 320;
 /// Tiles turned into textures in one frame; the rest come in the next ones.
 const PER_FRAME: usize = 24;
+/// Tiles in sight and round it, up to which the ring round it is read ahead.
+const MOST_AHEAD: usize = 200;
 /// Texels of the level the tone is read from, longer side.
 const TONE_TEXELS: usize = 1024;
 /// Values the percentiles are read from.
@@ -37,6 +39,8 @@ pub struct TileTextures {
     /// Tiles the sample was taken from.
     sampled: usize,
     curve: Option<ToneCurve>,
+    /// Counts the curves, so that textures of an older one can be told.
+    curves: u64,
     textures: HashMap<TileKey, Entry>,
     frame: u64,
 }
@@ -47,6 +51,7 @@ struct Entry {
     size: [usize; 2],
     has_gaps: bool,
     square: bool,
+    curve: u64,
     used: u64,
 }
 
@@ -123,7 +128,8 @@ impl TileTextures {
         budget == 0
     }
 
-    /// Brings tone sample and curve up to date; textures of another tone or raster are dropped.
+    /// Brings tone sample and curve up to date. Textures of another raster are dropped; those of
+    /// another tone stay until they are made anew, so that nothing flickers.
     fn retune(&mut self, shelf: &TileShelf, tone: &Tone, coarsest: u8) {
         if self.shelf != Some(shelf.serial()) {
             *self = Self { shelf: Some(shelf.serial()), frame: self.frame, ..Self::default() };
@@ -145,7 +151,7 @@ impl TileTextures {
         if self.tone != Some(*tone) && !self.sample.is_empty() {
             self.curve = Some(ToneCurve::new(tone, &self.sample));
             self.tone = Some(*tone);
-            self.textures.clear();
+            self.curves += 1;
         }
     }
 
@@ -165,12 +171,19 @@ impl TileTextures {
             max: Point::new(part.max.x + reach, part.max.y + reach),
         };
         let coarse = TileKey { level: coarsest, col: 0, row: 0 };
-        let ring = tiles_within(around, size, level).into_iter().filter(|key| !sharp.contains(key));
-        shelf.want(std::iter::once(coarse).chain(sharp.iter().copied()).chain(toning).chain(ring));
+        // What has its texture needs no values; a ring that would crowd the shelf is not read ahead.
+        let is_current = |key: &TileKey| {
+            self.textures.get(key).is_some_and(|entry| self.curve.is_none() || entry.curve == self.curves)
+        };
+        let seen = sharp.iter().copied().filter(|key| !is_current(key));
+        let ring = tiles_within(around, size, level);
+        let ring = if ring.len() <= MOST_AHEAD { ring } else { Vec::new() };
+        let ahead = ring.into_iter().filter(|key| !sharp.contains(key) && !is_current(key));
+        shelf.want(std::iter::once(coarse).chain(seen).chain(toning).chain(ahead));
     }
 
-    /// Makes the tile's texture if it is not there and the frame's budget allows; whether it can be
-    /// painted.
+    /// Makes the tile's texture if it is not there or of another tone, and the frame's budget
+    /// allows; whether it can be painted.
     fn prepare(
         &mut self,
         painter: &Painter,
@@ -179,15 +192,18 @@ impl TileTextures {
         square: bool,
         budget: &mut usize,
     ) -> bool {
-        let frame = self.frame;
-        if let Some(entry) = self.textures.get_mut(&key).filter(|entry| entry.square == square) {
-            entry.used = frame;
-            return true;
+        let known = self.textures.get_mut(&key);
+        let is_known = known.is_some();
+        if let Some(entry) = known {
+            entry.used = self.frame;
+            if entry.square == square && entry.curve == self.curves {
+                return true;
+            }
         }
-        let (Some(curve), Some(tile)) = (&self.curve, shelf.get(key)) else { return false };
         if *budget == 0 {
-            return self.textures.contains_key(&key);
+            return is_known;
         }
+        let (Some(curve), Some(tile)) = (&self.curve, shelf.get(key)) else { return is_known };
         *budget -= 1;
         let image = curve.image(&tile);
         let size = image.size;
@@ -195,7 +211,8 @@ impl TileTextures {
         let magnification = if square { TextureFilter::Nearest } else { TextureFilter::Linear };
         let options = TextureOptions { magnification, ..TextureOptions::LINEAR };
         let handle = painter.ctx().load_texture("tile", image, options);
-        self.textures.insert(key, Entry { handle, size, has_gaps, square, used: frame });
+        let entry = Entry { handle, size, has_gaps, square, curve: self.curves, used: self.frame };
+        self.textures.insert(key, entry);
         true
     }
 
