@@ -345,7 +345,7 @@ fn ellipse(a: Point, b: Point) -> Vec<Point> {
 #[cfg(test)]
 mod tests {
     use super::{Draft, Tool};
-    use crate::ground::{Place, Point, Polygon};
+    use crate::ground::{Point, Polygon};
     use crate::study::Id;
 
     fn draft(tool: Tool, points: &[[f64; 2]]) -> Draft {

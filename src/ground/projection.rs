@@ -179,7 +179,7 @@ impl Projection {
             "moll" => "Mollweide",
             "mill" => "Miller cylindrical",
             "omerc" | "somerc" => "oblique Mercator",
-            "cass" => "Cassini",
+            "cass" => "transverse equidistant",
             "gnom" => "gnomonic",
             "poly" => "polyconic",
             other => other,
