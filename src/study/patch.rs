@@ -4,7 +4,6 @@ use std::sync::Arc;
 
 use crate::files::raster::RasterError;
 use crate::ground::{Axis, Caution, Point, Seed, Stopped, Work};
-use crate::science::axial::mixture::{MixtureSettings, mixtures};
 use crate::science::axial::{self, AxialSample, Nodes, Summary, SummarySettings};
 use crate::science::orientation::scale::{INTEGRATION_RATIO, coherent_scale, scale_sweep};
 use crate::science::orientation::{self, NodeField, Peak, Spectrum, TensorSettings, TrendNode};
@@ -217,8 +216,12 @@ fn summarise(
     // An interval of all axes leaves no line to draw.
     let defined = test.preferred && has_texture && shown.interval.half_deg.is_some();
     let axes = axes_of(&passed);
-    let modes =
-        if has_texture { modes(&axes, shown.n_eff_mean, s.most_modes, seed, work)? } else { Vec::new() };
+    let modes = if has_texture {
+        let sample = AxialSample { axes: &axes, weights: None, nodes: None };
+        axial::modes(&sample, shown.n_eff_test, s.most_modes, seed, work)?
+    } else {
+        Vec::new()
+    };
     let factor = pixels.factor as f64;
     let trend = TrendFinding {
         defined,
@@ -234,7 +237,10 @@ fn summarise(
         n_eff: shown.n_eff_mean,
         correlation_length: shown.correlation_length,
         rayleigh_p: test.rayleigh_p,
-        modes,
+        modes: modes
+            .into_iter()
+            .map(|m| ModeFinding { axis: m.axis, weight: m.weight, kappa_doubled: m.kappa_doubled })
+            .collect(),
         nodes: field
             .nodes
             .iter()
@@ -254,23 +260,6 @@ fn summarise(
         coherence_floor: field.coherence_floor,
     };
     Ok((trend, if defined { shown.cautions } else { test.cautions }))
-}
-
-/// The components of the mixture that the criterion prefers; an even background takes what belongs to none.
-fn modes(
-    axes: &[Axis],
-    n_eff: f64,
-    most_modes: u32,
-    seed: Seed,
-    work: &Work,
-) -> Result<Vec<ModeFinding>, Stopped> {
-    let settings = MixtureSettings { most_modes, background: true, n_eff };
-    let models = mixtures(&axial::mean::doubled(axes), None, settings, seed, work)?;
-    let components = models.into_iter().next().map_or(Vec::new(), |best| best.components);
-    Ok(components
-        .into_iter()
-        .map(|c| ModeFinding { axis: Axis::from_doubled(c.mean), weight: c.weight, kappa_doubled: c.kappa })
-        .collect())
 }
 
 /// Nodes on a plane that touches the ground at the middle of the patch, ground units.
