@@ -49,7 +49,7 @@ pub fn write(
             }
         }
     }
-    while bits.len() % 8 != 0 {
+    while !bits.len().is_multiple_of(8) {
         bits.push(true);
     }
     for byte in bits.chunks(8).map(|b| b.iter().fold(0u8, |v, bit| v << 1 | u8::from(*bit))) {

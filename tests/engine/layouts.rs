@@ -212,7 +212,7 @@ fn opacity_scaling_and_left_out_chunks_make_the_mask() {
             tile: Some((16, 16)),
             codec: Codec::Deflate,
             more: vec![(338, Extra::Short(vec![2])), (42112, Extra::Text(xml.into()))],
-            sparse: vec![4],
+            sparse: 4..5,
             ..Recipe::default()
         };
         let bytes = write(

@@ -20,7 +20,7 @@ pub struct Recipe {
     /// Further tags: number, values as 16-bit numbers or text.
     pub more: Vec<(u16, Extra)>,
     /// Chunks left out (offset and count zero).
-    pub sparse: Vec<usize>,
+    pub sparse: std::ops::Range<usize>,
 }
 
 /// Value of a further tag.
@@ -63,7 +63,7 @@ impl Default for Recipe {
             predictor: 1,
             photometric: 1,
             more: Vec::new(),
-            sparse: Vec::new(),
+            sparse: 0..0,
         }
     }
 }
@@ -137,13 +137,14 @@ pub fn write(recipe: &Recipe, value: impl Fn(usize, usize, usize) -> f64) -> Vec
                         .collect();
                     packed(recipe, &samples, lanes.len())
                 };
+                if recipe.sparse.contains(&chunks.len()) {
+                    chunks.push(Vec::new());
+                    continue;
+                }
                 let bytes: Vec<u8> = (0..rows).flat_map(row).collect();
                 chunks.push(recipe.codec.encode(&bytes));
             }
         }
-    }
-    for i in &recipe.sparse {
-        chunks[*i].clear();
     }
     assemble(recipe, &chunks, (cw, ch))
 }

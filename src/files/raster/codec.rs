@@ -35,7 +35,7 @@ fn decode_unguarded(layout: &Layout, stored: &[u8], rows: usize) -> Result<Vec<u
     let mut bytes = bytes;
     bytes.truncate(need);
     let stride = layout.chunk_samples();
-    if layout.bits % 8 != 0 {
+    if !layout.bits.is_multiple_of(8) {
         return Ok(unpack::bits(&bytes, layout.chunk_width * stride, row, layout.bits));
     }
     match layout.predictor {

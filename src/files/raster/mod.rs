@@ -72,7 +72,7 @@ impl Raster {
     }
 
     /// The pixels of `window` at a stored level (0 = full resolution, the window in pixels of that
-    /// level), with scale and offset applied. Cells outside the level are missing. 64-bit floats and
+    /// level), with scale and offset applied. Cells outside the level are missing; missing cells hold 0. 64-bit floats and
     /// integers past 2²⁴ are rounded to 32-bit floats.
     ///
     /// # Errors

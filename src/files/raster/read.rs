@@ -50,7 +50,7 @@ struct Piece {
 /// Validity of a piece: `None` when all of it is valid.
 type PieceMask = Option<Vec<bool>>;
 
-/// Reads `window` of `level`. Cells outside the level are missing.
+/// Reads `window` of `level`. Cells outside the level are missing; missing cells hold 0.
 pub(super) fn window(
     level: &Level,
     window: Window,
@@ -58,6 +58,7 @@ pub(super) fn window(
     cache: &ChunkCache,
     work: &Work,
 ) -> Result<Grid<f32>, FileError> {
+    work.advance(0)?;
     let layout = &level.image.layout;
     let inside = window.clipped(layout.width, layout.height);
     let mut values = vec![0f32; inside.width * inside.height];
@@ -72,6 +73,10 @@ pub(super) fn window(
             Some(valid) => valid.iter_mut().zip(&opaque).for_each(|(v, o)| *v &= o),
             None => valid = Some(opaque),
         }
+    }
+    if let Some(valid) = &valid {
+        // A fill value or NaN under the mask would spread through sums that weigh it by zero.
+        values.iter_mut().zip(valid).filter(|(_, ok)| !**ok).for_each(|(v, _)| *v = 0.0);
     }
     if inside.width == window.width && inside.height == window.height {
         return Ok(Grid::from_parts(window.width, window.height, values, valid));

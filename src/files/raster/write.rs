@@ -8,6 +8,7 @@ use rayon::iter::{IntoParallelIterator, ParallelIterator};
 use super::tag;
 use crate::files::error::FileError;
 use crate::files::georef::GeoTags;
+use crate::files::save;
 use crate::ground::Grid;
 
 const TILE: usize = 256;
@@ -28,7 +29,7 @@ pub fn write_tiff(path: &Path, grid: &Grid<f32>, geo: Option<&GeoTags>) -> Resul
     let bytes = tiff(grid, geo).ok_or_else(|| {
         FileError::too_large(path, "the file in bytes", 4 * grid.len() as u64, u64::from(u32::MAX))
     })?;
-    std::fs::write(path, bytes).map_err(|e| FileError::io(path, "writing", e))
+    save::bytes(path, &bytes, None).map_err(|e| FileError::io(path, "writing", e))
 }
 
 /// Saves `grid` as an 8-bit grey PNG; missing cells are transparent.
@@ -62,7 +63,7 @@ pub fn write_png_gray(path: &Path, grid: &Grid<u8>) -> Result<(), FileError> {
     let mut writer = encoder.write_header().map_err(fail)?;
     writer.write_image_data(&pixels).map_err(fail)?;
     writer.finish().map_err(fail)?;
-    std::fs::write(path, bytes).map_err(|e| FileError::io(path, "writing", e))
+    save::bytes(path, &bytes, None).map_err(|e| FileError::io(path, "writing", e))
 }
 
 /// The whole file, or `None` when an offset would pass 32 bits.
