@@ -1,7 +1,8 @@
 //! The evidence as rows of label and value, page by page; the window sets them in type.
 
-use crate::ground::LengthUnit;
+use crate::ground::{LengthUnit, Method};
 use crate::plate::numbers;
+use crate::science;
 use crate::study::{DriftFinding, OpenRaster, PatchFinding, RasterEntry, VerdictFinding, WindFinding, run};
 
 /// One row of a bench page.
@@ -11,10 +12,23 @@ pub struct Fact {
     pub value: String,
     /// What the number is, for hovering.
     pub hint: &'static str,
+    /// Key of the method that made it, for its record; empty for what no method made.
+    pub method: &'static str,
+}
+
+impl Fact {
+    fn by(self, method: &'static str) -> Self {
+        Self { method, ..self }
+    }
+
+    /// The record of the method that made the value.
+    pub fn record(&self) -> Option<&'static Method> {
+        science::methods().into_iter().find(|m| m.id == self.method)
+    }
 }
 
 fn fact(label: &'static str, value: impl Into<String>, hint: &'static str) -> Fact {
-    Fact { label, value: value.into(), hint }
+    Fact { label, value: value.into(), hint, method: "" }
 }
 
 /// The ground page: what the file is and where it lies.
@@ -54,40 +68,54 @@ pub fn ground(entry: &RasterEntry, open: &OpenRaster) -> Vec<Fact> {
 /// The trend page.
 pub fn trend(finding: &PatchFinding) -> Vec<Fact> {
     let t = &finding.trend;
-    let mut facts = vec![fact(
-        "Trend",
-        super::ledger::trend_words(finding),
-        "Mean axis of the structure tensor, clockwise from true north, with its 95 % interval.",
-    )];
+    let mut facts = vec![
+        fact(
+            "Trend",
+            super::ledger::trend_words(finding),
+            "Mean axis of the structure tensor, clockwise from true north, with its 95 % interval.",
+        )
+        .by("axial.mean"),
+    ];
     if t.ci95_half_deg.is_some() {
-        facts.push(fact("Interval from", t.ci95_source, "How the 95 % interval was made."));
+        facts.push(
+            fact("Interval from", t.ci95_source, "How the 95 % interval was made.").by("axial.interval"),
+        );
     }
     facts.push(fact(
         "Test for a trend",
         t.rayleigh_p.map_or("not possible".into(), numbers::p_value),
         "Rayleigh test on the effective number of samples: how often axes without preference would look as aligned.",
-    ));
-    facts.push(fact(
-        "Resultant length",
-        numbers::fixed(t.resultant_length, 3),
-        "Of the doubled angle: 0 = no alignment, 1 = all axes equal.",
-    ));
+    ).by("axial.rayleigh"));
+    facts.push(
+        fact(
+            "Resultant length",
+            numbers::fixed(t.resultant_length, 3),
+            "Of the doubled angle: 0 = no alignment, 1 = all axes equal.",
+        )
+        .by("axial.mean"),
+    );
     if let Some(kappa) = t.kappa_doubled {
-        facts.push(fact("κ (doubled angle)", numbers::significant(kappa, 3), "Concentration of the axes."));
+        facts.push(
+            fact("κ (doubled angle)", numbers::significant(kappa, 3), "Concentration of the axes.")
+                .by("axial.kappa"),
+        );
     }
     if let Some(spread) = t.spread_deg {
-        facts.push(fact("Spread", degrees(spread), "Axial standard deviation."));
+        facts.push(fact("Spread", degrees(spread), "Axial standard deviation.").by("axial.spread"));
     }
     facts.push(fact(
         "Nodes used",
         format!("{} of {}", t.n, t.n_all),
         "Places that passed the noise floor, of all places looked at.",
     ));
-    facts.push(fact(
-        "Effective samples",
-        numbers::significant(t.n_eff, 3),
-        "Pixels are not samples: neighbours say the same thing.",
-    ));
+    facts.push(
+        fact(
+            "Effective samples",
+            numbers::significant(t.n_eff, 3),
+            "Pixels are not samples: neighbours say the same thing.",
+        )
+        .by("axial.effective-number"),
+    );
     if let Some(length) = t.correlation_length {
         facts.push(fact(
             "Correlation length",
@@ -95,21 +123,27 @@ pub fn trend(finding: &PatchFinding) -> Vec<Fact> {
             "Distance over which the trend field forgets itself.",
         ));
     }
-    facts.push(fact(
-        "Scales",
-        format!(
-            "gradient {} px, integration {} px, nodes every {} px",
-            numbers::plain(t.gradient_scale_px, 1),
-            numbers::plain(t.integration_scale_px, 1),
-            numbers::plain(t.node_step_px, 1)
-        ),
-        "As used; settings left open follow the spacing.",
-    ));
-    facts.push(fact(
-        "Coherence floor",
-        numbers::fixed(t.coherence_floor, 3),
-        "Coherence that pure noise reaches; nodes below it are not used.",
-    ));
+    facts.push(
+        fact(
+            "Scales",
+            format!(
+                "gradient {} px, integration {} px, nodes every {} px",
+                numbers::plain(t.gradient_scale_px, 1),
+                numbers::plain(t.integration_scale_px, 1),
+                numbers::plain(t.node_step_px, 1)
+            ),
+            "As used; settings left open follow the spacing.",
+        )
+        .by("orientation.structure-tensor"),
+    );
+    facts.push(
+        fact(
+            "Coherence floor",
+            numbers::fixed(t.coherence_floor, 3),
+            "Coherence that pure noise reaches; nodes below it are not used.",
+        )
+        .by("orientation.noise-floor"),
+    );
     facts
 }
 
@@ -120,17 +154,25 @@ pub fn spacing(finding: &PatchFinding) -> Vec<Fact> {
         || "no dominant spacing".to_owned(),
         |value| numbers::length_with_interval(value, s.spacing_ci95, finding.unit),
     );
-    let mut facts =
-        vec![fact("Spacing", spacing, "Dominant wavelength across the crests, with its 95 % interval.")];
+    let mut facts = vec![
+        fact("Spacing", spacing, "Dominant wavelength across the crests, with its 95 % interval.")
+            .by("orientation.spectrum"),
+    ];
     if let Some(axis) = s.axis {
-        facts.push(fact(
-            "Trend of the peak",
-            numbers::axis_with_interval(axis, s.axis_ci95_half_deg),
-            "Trend by the spectrum: a second opinion on the structure tensor.",
-        ));
+        facts.push(
+            fact(
+                "Trend of the peak",
+                numbers::axis_with_interval(axis, s.axis_ci95_half_deg),
+                "Trend by the spectrum: a second opinion on the structure tensor.",
+            )
+            .by("orientation.spectrum"),
+        );
     }
     if let Some(p) = s.p {
-        facts.push(fact("Chance of such a peak", numbers::p_value(p), "Over the whole search range."));
+        facts.push(
+            fact("Chance of such a peak", numbers::p_value(p), "Over the whole search range.")
+                .by("orientation.spectrum"),
+        );
     }
     if let Some(spread) = s.spread_deg {
         facts.push(fact("Spread of the peak", degrees(spread), "Angular width of the peak."));
@@ -153,7 +195,7 @@ pub fn spacing(finding: &PatchFinding) -> Vec<Fact> {
 /// The winds page.
 pub fn winds(finding: &WindFinding) -> Vec<Fact> {
     let rows = format!("{} used of {}, {} calm", finding.used, finding.rows, finding.calm);
-    let mut facts = vec![fact("Record", rows, "Rows after quality control.")];
+    let mut facts = vec![fact("Record", rows, "Rows after quality control.").by("wind.quality-control")];
     if let Some([first, last]) = finding.span {
         let years = (last - first) as f64 / (365.25 * 86_400.0);
         facts.push(fact(
@@ -166,7 +208,9 @@ pub fn winds(finding: &WindFinding) -> Vec<Fact> {
         let hours = numbers::significant(step / 3600.0, 3);
         facts.push(fact("Interval", format!("{hours} h"), "Usual time between rows."));
     }
-    facts.push(fact("Transport law", finding.law.clone(), "Turns wind into moving sand."));
+    facts.push(
+        fact("Transport law", finding.law.clone(), "Turns wind into moving sand.").by("wind.transport-law"),
+    );
     facts.push(fact(
         "Threshold",
         format!(
@@ -190,11 +234,14 @@ fn drift(name: &'static str, drift: &DriftFinding) -> Vec<Fact> {
         "Sum over all directions.",
     )];
     if let Some(toward) = drift.toward {
-        facts.push(fact(
-            "Resultant toward",
-            numbers::azimuth_with_interval(toward, drift.toward_ci95_half_deg),
-            "Where the sand goes on balance, with its 95 % bootstrap interval.",
-        ));
+        facts.push(
+            fact(
+                "Resultant toward",
+                numbers::azimuth_with_interval(toward, drift.toward_ci95_half_deg),
+                "Where the sand goes on balance, with its 95 % bootstrap interval.",
+            )
+            .by("wind.resultant-drift"),
+        );
     }
     if let Some(ratio) = drift.ratio {
         let interval = drift
@@ -225,18 +272,24 @@ pub fn verdict(verdict: &VerdictFinding) -> Vec<Fact> {
             .obliquity_ci95_deg
             .map(|[lo, hi]| format!(" ({}° to {}°)", numbers::fixed(lo, 0), numbers::fixed(hi, 0)))
             .unwrap_or_default();
-        facts.push(fact(
-            "Obliquity",
-            format!("{}°{interval}", numbers::fixed(obliquity, 1)),
-            "Angle between the trend and the resultant: 0° along, 90° across.",
-        ));
+        facts.push(
+            fact(
+                "Obliquity",
+                format!("{}°{interval}", numbers::fixed(obliquity, 1)),
+                "Angle between the trend and the resultant: 0° along, 90° across.",
+            )
+            .by("alignment.obliquity"),
+        );
     }
     if let Some(strength) = verdict.alignment_strength {
-        facts.push(fact(
-            "Alignment strength",
-            numbers::fixed(strength, 2),
-            "How much better the best trend is than the worst; near 0 any trend would do.",
-        ));
+        facts.push(
+            fact(
+                "Alignment strength",
+                numbers::fixed(strength, 2),
+                "How much better the best trend is than the worst; near 0 any trend would do.",
+            )
+            .by("alignment.gross-normal"),
+        );
     }
     facts
 }
@@ -258,4 +311,34 @@ pub fn area(value: f64, unit: LengthUnit) -> String {
 
 fn degrees(value: f64) -> String {
     format!("{}°", numbers::fixed(value, 1))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::{spacing, trend};
+    use crate::ground::LengthUnit;
+    use crate::study::{Id, PatchFinding, SpectrumFinding, TrendFinding};
+
+    #[test]
+    fn every_method_that_a_fact_names_has_a_record() {
+        let finding = PatchFinding {
+            id: Id(1),
+            name: "a".into(),
+            raster: Id(2),
+            fingerprint: String::new(),
+            unit: LengthUnit::Metre,
+            area: 1e6,
+            valid_fraction: 1.0,
+            centre: None,
+            trend: TrendFinding::default(),
+            spectrum: SpectrumFinding::default(),
+            verdicts: Vec::new(),
+            sentence: String::new(),
+            cautions: Vec::new(),
+        };
+        let facts = trend(&finding).into_iter().chain(spacing(&finding));
+        for fact in facts.filter(|fact| !fact.method.is_empty()) {
+            assert!(fact.record().is_some(), "{} names {}, which has no record", fact.label, fact.method);
+        }
+    }
 }

@@ -116,12 +116,30 @@ pub fn facts(ui: &mut Ui, look: &Theme, facts: &[Fact]) {
     for fact in facts {
         ui.horizontal_top(|ui| {
             let label = RichText::new(fact.label).color(theme::color(look.ink_soft));
-            column(ui, width, |ui| ui.add(Label::new(label).wrap())).on_hover_text(fact.hint);
-            let value = rest(ui, |ui| ui.add(Label::new(&fact.value).wrap())).on_hover_text(fact.hint);
+            let label = column(ui, width, |ui| ui.add(Label::new(label).wrap()));
+            label.on_hover_ui(|ui| explain(ui, look, fact));
+            let value = rest(ui, |ui| ui.add(Label::new(&fact.value).wrap()));
+            let value = value.on_hover_ui(|ui| explain(ui, look, fact));
             value.widget_info(|| {
                 WidgetInfo::labeled(egui::Role::Label, true, format!("{}: {}", fact.label, fact.value))
             });
         });
+    }
+}
+
+/// What a number is, and which published method made it.
+fn explain(ui: &mut Ui, look: &Theme, fact: &Fact) {
+    ui.label(fact.hint);
+    let Some(method) = fact.record() else { return };
+    let soft = theme::color(look.ink_soft);
+    rule(ui, look);
+    ui.label(RichText::new(method.name).family(theme::bold()));
+    ui.label(method.formula);
+    for source in method.sources {
+        let remark = source.read.remark();
+        let remark = if remark.is_empty() { String::new() } else { format!(" ({remark})") };
+        let words = format!("{} {}. {}{remark}", source.authors, source.year, source.title);
+        ui.label(RichText::new(words).small().color(soft));
     }
 }
 
