@@ -27,7 +27,7 @@ pub static METHOD: Method = Method {
         at(FISHER, "eq. 4.40 and 4.41"),
         Source {
             key: "best1981",
-            authors: "Best, D. J. and Fisher, N. I.",
+            authors: "Best, D. J.; Fisher, N. I.",
             year: 1981,
             title: "The bias of the maximum likelihood estimators of the von Mises–Fisher concentration parameters",
             published: "Communications in Statistics – Simulation and Computation 10, 493–502",

@@ -14,7 +14,7 @@ pub(super) const FISHER: Source = Source {
 
 pub(super) const MARDIA_JUPP: Source = Source {
     key: "mardia2000",
-    authors: "Mardia, K. V. and Jupp, P. E.",
+    authors: "Mardia, K. V.; Jupp, P. E.",
     year: 2000,
     title: "Directional Statistics",
     published: "Wiley",

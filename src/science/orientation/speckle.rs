@@ -23,7 +23,7 @@ pub static METHOD: Method = Method {
     sources: &[
         Source {
             key: "oliver2004",
-            authors: "Oliver, C. and Quegan, S.",
+            authors: "Oliver, C.; Quegan, S.",
             year: 2004,
             title: "Understanding Synthetic Aperture Radar Images",
             published: "SciTech Publishing",
@@ -41,7 +41,7 @@ pub static METHOD: Method = Method {
         },
         Source {
             key: "lopes1990",
-            authors: "Lopes, A., Nezry, E., Touzi, R. and Laur, H.",
+            authors: "Lopes, A.; Nezry, E.; Touzi, R.; Laur, H.",
             year: 1990,
             title: "Maximum a posteriori speckle filtering and first order texture models in SAR images",
             published: "Proc. IGARSS 1990, 2409",

@@ -38,7 +38,7 @@ pub static METHOD: Method = Method {
     sources: &[
         Source {
             key: "bigun1987",
-            authors: "Bigün, J. and Granlund, G. H.",
+            authors: "Bigün, J.; Granlund, G. H.",
             year: 1987,
             title: "Optimal orientation detection of linear symmetry",
             published: "Proc. 1st International Conference on Computer Vision, London, 433",
@@ -47,7 +47,7 @@ pub static METHOD: Method = Method {
         },
         Source {
             key: "forstner1987",
-            authors: "Förstner, W. and Gülch, E.",
+            authors: "Förstner, W.; Gülch, E.",
             year: 1987,
             title: "A fast operator for detection and precise location of distinct points, corners and centres of circular features",
             published: "Proc. ISPRS Intercommission Conference, Interlaken, 281",

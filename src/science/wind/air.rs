@@ -39,7 +39,7 @@ pub const METHOD: Method = Method {
         },
         Source {
             key: "standardatmosphere1976",
-            authors: "NOAA, NASA and USAF",
+            authors: "NOAA; NASA; USAF",
             year: 1976,
             title: "U.S. Standard Atmosphere, 1976",
             published: "U.S. Government Printing Office",

@@ -69,7 +69,7 @@ pub fn bibtex() -> String {
 
 fn entry(s: &Source) -> String {
     let mut fields = vec![
-        ("author", s.authors.replace(" & ", " and ").replace(", ", " and ")),
+        ("author", s.authors.replace("; ", " and ")),
         ("year", s.year.to_string()),
         ("title", s.title.to_owned()),
         ("howpublished", s.published.to_owned()),

@@ -52,7 +52,7 @@ pub static METHOD: Method = Method {
     sources: &[
         Source {
             key: "rife1974",
-            authors: "Rife, D. C. and Boorstyn, R. R.",
+            authors: "Rife, D. C.; Boorstyn, R. R.",
             year: 1974,
             title: "Single-tone parameter estimation from discrete-time observations",
             published: "IEEE Transactions on Information Theory 20, 591",
