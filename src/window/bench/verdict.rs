@@ -5,9 +5,9 @@ use egui::{Grid, RichText, Ui};
 
 use super::{figure_mm, say};
 use crate::desk::{Command, Model, SettingCommand, facts};
-use crate::plate::{CLASS_NAMES, dial, numbers, posterior_bars};
+use crate::plate::{dial, numbers, posterior_bars};
 use crate::study::{PatchFinding, VerdictFinding};
-use crate::window::controls::{self, Commands, caution, heading, look, number, rule};
+use crate::window::controls::{self, Commands, caution, column, heading, look, number, rule};
 use crate::window::{figure, theme};
 
 /// The theories in the order of their priors.
@@ -36,7 +36,6 @@ fn one(ui: &mut Ui, model: &Model, verdict: &VerdictFinding) {
         let picture = dial(verdict, mm, &look);
         let spoken = format!("Dial of obliquity by {}", verdict.winds_name);
         ui.vertical_centered(|ui| figure::show(ui, &picture, theme::POINTS_PER_MM, &spoken));
-        classes(ui, model, verdict);
         rule(ui, &look);
         controls::facts(ui, &look, &facts::verdict(verdict));
         heading(ui, "Theories against chance");
@@ -65,31 +64,20 @@ fn priors(ui: &mut Ui, model: &Model, out: &mut Commands) {
     }
 }
 
-fn classes(ui: &mut Ui, model: &Model, verdict: &VerdictFinding) {
-    let Some(probabilities) = verdict.probabilities else { return };
-    let soft = theme::color(look(model).ink_soft);
-    for ((name, p), prior) in CLASS_NAMES.iter().zip(probabilities).zip(verdict.class_priors) {
-        ui.horizontal(|ui| {
-            ui.label(RichText::new(format!("{name} {}", numbers::percent(p))));
-            ui.label(RichText::new(format!("by chance {}", numbers::percent(prior))).small().color(soft));
-        });
-    }
-}
-
 fn theories(ui: &mut Ui, model: &Model, verdict: &VerdictFinding) {
     let soft = theme::color(look(model).ink_soft);
     ui.add_space(6.0);
-    Grid::new(("theories", verdict.winds.0)).num_columns(5).spacing([12.0, 4.0]).show(ui, |ui| {
-        for title in ["theory", "axis", "prior", "posterior", "ln B"] {
+    Grid::new(("theories", verdict.winds.0)).num_columns(4).spacing([12.0, 4.0]).show(ui, |ui| {
+        for title in ["theory", "axis", "posterior", "ln B"] {
             ui.label(RichText::new(title).small().color(soft));
         }
         ui.end_row();
         for theory in &verdict.theories {
-            ui.label(theory.name).on_hover_text(theory.method);
+            column(ui, 130.0, |ui| ui.label(theory.name)).on_hover_text(theory.method);
             let axis = theory.axis.map(|axis| numbers::axis_with_interval(axis, theory.spread_deg));
             ui.label(axis.unwrap_or_else(|| "any".into()));
-            ui.label(numbers::percent(theory.prior));
-            ui.label(numbers::percent(theory.posterior));
+            let prior = format!("Before the data: {}.", numbers::percent(theory.prior));
+            ui.label(numbers::percent(theory.posterior)).on_hover_text(prior);
             ui.label(numbers::fixed(theory.ln_bayes_factor, 1))
                 .on_hover_text("Natural logarithm of the Bayes factor against a random axis.");
             ui.end_row();
