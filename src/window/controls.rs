@@ -161,9 +161,13 @@ pub fn rest<R>(ui: &mut Ui, content: impl FnOnce(&mut Ui) -> R) -> R {
 /// A label of fixed width and the field beside it.
 pub fn field_row(ui: &mut Ui, label: &str, width: f32, field: impl FnOnce(&mut Ui)) -> egui::Response {
     ui.horizontal(|ui| {
-        let response = column(ui, width, |ui| ui.label(label));
+        let size = vec2(width, ui.spacing().interact_size.y);
+        let response = ui.allocate_ui_with_layout(size, Layout::left_to_right(Align::Center), |ui| {
+            ui.set_min_width(width);
+            ui.label(label)
+        });
         field(ui);
-        response
+        response.inner
     })
     .inner
 }

@@ -1,6 +1,6 @@
 //! Keys: every listed command by its chord, and the overlay that lists them.
 
-use egui::{Context, Event, InputState, Key, Modifiers, RichText, Ui};
+use egui::{Context, Event, InputState, Key, Modifiers, RichText, ScrollArea, Ui};
 
 use super::controls::{Commands, column, look, overlay, rule};
 use super::theme;
@@ -47,10 +47,14 @@ pub fn show(ctx: &Context, model: &Model, out: &mut Commands) {
         rule(ui, &look(model));
         let keyed: Vec<_> = listed().into_iter().filter(|c| c.record().key.is_some()).collect();
         let half = keyed.len().div_ceil(2);
-        ui.columns(2, |columns| {
-            for (ui, part) in columns.iter_mut().zip(keyed.chunks(half)) {
-                part.iter().for_each(|command| row(ui, model, command));
-            }
+        let height = (ctx.content_rect().height() - 220.0).max(200.0);
+        ScrollArea::vertical().max_height(height).show(ui, |ui| {
+            ui.spacing_mut().item_spacing.y = 3.0;
+            ui.columns(2, |columns| {
+                for (ui, part) in columns.iter_mut().zip(keyed.chunks(half)) {
+                    part.iter().for_each(|command| row(ui, model, command));
+                }
+            });
         });
         rule(ui, &look(model));
         ui.label("On the table: arrows move, + and − zoom, Space lays a corner at the cross.");
@@ -66,7 +70,7 @@ pub fn show(ctx: &Context, model: &Model, out: &mut Commands) {
 
 fn row(ui: &mut Ui, model: &Model, command: &Command) {
     let record = command.record();
-    ui.horizontal(|ui| {
+    ui.horizontal_top(|ui| {
         let key = record.key.map(|chord| chord.to_string()).unwrap_or_default();
         let key = RichText::new(key).color(theme::color(look(model).ink_soft));
         column(ui, 120.0, |ui| ui.label(key));
