@@ -94,7 +94,8 @@ fn edges_in_longitude_and_latitude_bend_on_the_map() {
         for t in [0.0, 0.25, 0.5, 0.75] {
             let at = place.lonlat_of(Point::new(a.x + t * (b.x - a.x), a.y + t * (b.y - a.y))).unwrap();
             let shrink = at.lat.to_radians().cos();
-            let off = (shrink * ((at.lon - 40.0).abs() - 10.0).abs()).min(((at.lat - 50.0).abs() - 8.0).abs());
+            let off =
+                (shrink * ((at.lon - 40.0).abs() - 10.0).abs()).min(((at.lat - 50.0).abs() - 8.0).abs());
             assert!(off < 0.3 / 24.8, "{at:?} is {off}° off");
         }
     }
