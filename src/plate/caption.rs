@@ -185,7 +185,7 @@ mod tests {
     #[test]
     fn every_method_a_caption_may_cite_is_known() {
         let known = crate::science::methods();
-        let keys = [TREND, INTERVAL, &[BOOTSTRAP], SPECTRUM, WINDS, VERDICT].concat();
+        let keys = [TREND, INTERVAL, &[BOOTSTRAP, MIXTURE], SPECTRUM, WINDS, VERDICT].concat();
         for key in keys {
             assert!(known.iter().any(|m| m.id == key), "{key}");
         }

@@ -50,7 +50,7 @@ fn grouped(text: &str) -> String {
     }
     let mut out = text[..text.len() - digits.len()].to_owned();
     for (i, c) in digits.chars().enumerate() {
-        if i > 0 && (digits.len() - i) % 3 == 0 {
+        if i > 0 && (digits.len() - i).is_multiple_of(3) {
             out.push('\u{202f}');
         }
         out.push(c);

@@ -129,16 +129,16 @@ fn map_note(plate: &PatchPlate) -> String {
         LengthUnit::Metre => format!("{} km²", numbers::significant(patch.area / 1e6, 3)),
         LengthUnit::Pixel => format!("{} px²", numbers::significant(patch.area, 3)),
     };
-    let pixel = raster.pixel_m.map_or("no ground size".to_owned(), |[x, y]| {
-        format!("{} × {} m", numbers::significant(x, 3), numbers::significant(y, 3))
+    let pixel = raster.pixel_m.map_or("without ground size".to_owned(), |[x, y]| {
+        format!("of {} × {} m", numbers::significant(x, 3), numbers::significant(y, 3))
     });
     let margin = if plate.view.place.is_georeferenced() {
-        "longitude and latitude in degrees"
+        "longitude and latitude in degrees; angles from true north"
     } else {
-        "distance from the raster’s upper left corner"
+        "distance from the raster’s upper left corner; angles from the north stated for it"
     };
     format!(
-        "Map: {} ({} × {} pixels of {pixel}; {}). Margin: {margin}; angles from true north; intervals are 95 %. Patch of {area}, \
+        "Map: {} ({} × {} pixels {pixel}; {}). Margin: {margin}; intervals are 95 %. Patch of {area}, \
          {} valid. Strokes: trend where the coherence passes {}, longer where it is higher, thinned for print; \
          scales {} and {}\u{a0}px.",
         raster.name,

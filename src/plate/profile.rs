@@ -77,7 +77,9 @@ fn clean(profile: &[[f64; 2]]) -> Vec<[f64; 2]> {
 
 /// The spacing as a line, its interval as a band.
 fn band(sketch: &mut Sketch, finding: &SpectrumFinding, x: &LogAxis, rows: [f64; 2], theme: &Theme) {
-    let Some(spacing) = finding.spacing.filter(|_| finding.defined) else { return };
+    let Some(spacing) = finding.spacing.filter(|s| finding.defined && (x.min..=x.max).contains(s)) else {
+        return;
+    };
     let [top, bottom] = rows;
     let clamp = |v: f64| x.at(v.clamp(x.min, x.max));
     if let Some([low, high]) = finding.spacing_ci95 {

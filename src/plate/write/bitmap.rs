@@ -39,7 +39,8 @@ pub fn rgba(figure: &Figure, size: PngSize) -> Result<(u32, u32, Vec<u8>), Write
     };
     let (width, height) =
         ((figure.width_mm * per_mm).round().max(1.0), (figure.height_mm * per_mm).round().max(1.0));
-    if !(width * height <= MOST_PIXELS as f64) {
+    let pixels = width * height;
+    if pixels.is_nan() || pixels > MOST_PIXELS as f64 {
         return Err(WriteError::TooLarge { width: width as u64, height: height as u64, limit: MOST_PIXELS });
     }
     let mut pixmap = resvg::tiny_skia::Pixmap::new(width as u32, height as u32)
@@ -47,11 +48,11 @@ pub fn rgba(figure: &Figure, size: PngSize) -> Result<(u32, u32, Vec<u8>), Write
     let scale = (per_mm / CSS_PER_MM) as f32;
     let transform = resvg::tiny_skia::Transform::from_scale(scale, scale);
     resvg::render(&tree, transform, &mut pixmap.as_mut());
-    let pixels = pixmap.pixels().iter().flat_map(|p| {
+    let straight = pixmap.pixels().iter().flat_map(|p| {
         let c = p.demultiply();
         [c.red(), c.green(), c.blue(), c.alpha()]
     });
-    Ok((width as u32, height as u32, pixels.collect()))
+    Ok((width as u32, height as u32, straight.collect()))
 }
 
 /// PNG bytes; opaque pictures are written without alpha. `None` when lengths disagree.

@@ -303,6 +303,7 @@ impl Picture {
         let data = super::deflated(&self.rgb);
         let mut object = pdf.image_xobject(reference, &data);
         object.width(width).height(height).bits_per_component(8).filter(Filter::FlateDecode);
+        object.interpolate(true);
         object.color_space().device_rgb();
         if let Some(mask) = mask {
             object.s_mask(mask);
