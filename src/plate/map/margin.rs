@@ -274,6 +274,18 @@ mod tests {
         .expect("a place");
         let labels: Vec<String> =
             ticks(&sheet(1000.0, 1000.0), &place, Side::Bottom).into_iter().map(|t| t.label).collect();
+        assert!(
+            labels.iter().any(|l| l.ends_with('W')) && labels.iter().any(|l| l.ends_with('E')),
+            "{labels:?}"
+        );
+    }
+
+    #[test]
+    fn without_georeference_the_margin_counts_pixels_or_metres() {
+        let sheet = sheet(1000.0, 1000.0);
+        let labels = |place: &Place| -> Vec<String> {
+            ticks(&sheet, place, Side::Bottom).into_iter().map(|t| t.label).collect()
+        };
         let pixels = labels(&Place::pixels(0.0));
         assert!(pixels.contains(&"200 px".to_owned()), "{pixels:?}");
         let plane = Place::plane([25.0, 25.0], 40.0, Body::earth()).expect("a place");
