@@ -109,8 +109,11 @@ fn outline_a_patch_on_the_demo_see_numbers_undo_and_export_a_plate() {
     wait(&mut harness, "the new patch's numbers", move |model| {
         model.session.results.standing(id) == Standing::Current
     });
-    let entry = harness.get_by_label_contains("Patch 1");
-    let spoken = entry.accesskit_node().label().unwrap_or_default();
+    let spoken = harness
+        .get_all_by_role(Role::ListItem)
+        .filter_map(|entry| entry.accesskit_node().label())
+        .find(|label| label.starts_with("Patch 1"))
+        .expect("the ledger has an entry for the new patch");
     assert!(spoken.contains('°') || spoken.contains("no preferred trend"), "{spoken}");
 
     let plate = folder.path().join("patch.svg");
