@@ -8,7 +8,10 @@ use egui::{Key, Modifiers, Pos2, vec2};
 use egui_kittest::Harness;
 use egui_kittest::kittest::{NodeT as _, Queryable as _};
 use ventifact::desk::{Command, Model, Page, SheetCommand, Standing, ViewCommand, listed};
-use ventifact::study::demo;
+use ventifact::ground::Work;
+use ventifact::study::run::{Memo, run};
+use ventifact::study::sheet_file::SheetFile;
+use ventifact::study::{Patch, Sources, demo};
 use ventifact::window::App;
 
 use crate::harness::window;
@@ -175,4 +178,30 @@ fn the_keyboard_alone_outlines_renames_and_deletes() {
     assert!(harness.query_by_label("Unsaved changes").is_some(), "changes are not lost without a word");
     key(&mut harness, Modifiers::NONE, Key::Escape);
     assert_eq!(harness.state().app().model().sheet.patches.len(), 2);
+}
+
+/// Window and command line go through one executor and must give the same bits; written out with
+/// every digit, since a missing cell of a picture is NaN and so equals nothing.
+#[test]
+fn the_window_finds_what_the_command_line_finds() {
+    let (_folder, path) = demo_on_disk();
+    let text = std::fs::read_to_string(&path).expect("the sheet is there");
+    let sheet = SheetFile::parse(&text, path.parent().expect("a folder")).expect("a sheet").sheet;
+    let want = run(&sheet, &Sources::open(&sheet), &Memo::default(), &Work::quiet()).expect("not stopped");
+
+    let mut harness = open(blank(), [1280.0, 800.0]);
+    give(&mut harness, Command::Sheet(SheetCommand::Open(path)));
+    wait(&mut harness, "all findings", |model| {
+        let current = |p: &Patch| model.session.results.standing(p.id) == Standing::Current;
+        !model.sheet.patches.is_empty() && model.sheet.patches.iter().all(current)
+    });
+    let results = &harness.state().app().model().session.results;
+    for patch in &want.patches {
+        let got = results.patch(patch.id).expect("the window has measured it");
+        assert_eq!(format!("{got:?}"), format!("{patch:?}"), "{}", patch.name);
+    }
+    for wind in &want.winds {
+        let got = results.wind(wind.id).and_then(|w| w.outcome.as_ref().ok()).expect("the window has it");
+        assert_eq!(format!("{got:?}"), format!("{wind:?}"), "{}", wind.name);
+    }
 }
