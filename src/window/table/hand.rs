@@ -1,7 +1,7 @@
 //! What pointer and keys do on the table, as commands. One drag is one undo step: its end is
 //! announced by `Settle`.
 
-use egui::{CursorIcon, Sense, Ui, Vec2, WidgetInfo, vec2};
+use egui::{CursorIcon, Sense, Ui, Vec2, WidgetInfo};
 use egui::{
     Event, EventFilter, Key, Modifiers, MouseWheelSource, MouseWheelUnit, PointerButton, Pos2, Response, Role,
 };
@@ -17,6 +17,8 @@ use super::{Table, TableState};
 
 /// Points of one press of an arrow key; with Shift one point.
 const NUDGE: f32 = 12.0;
+/// The same for corners and whole patches, which are near their place already.
+const FINE: f32 = 3.0;
 /// Points the raster moves at one press.
 const PAN: f32 = 60.0;
 /// Points of wheel travel that make the raster e times larger.
@@ -298,7 +300,7 @@ impl Hand<'_> {
             self.reshape(patch.id, pick::with_corner_added(&patch.outline, next, middle));
             self.draw(DrawCommand::Settle);
         }
-        let step = self.arrows(NUDGE / 4.0);
+        let step = self.arrows(false, FINE);
         if step != Vec2::ZERO {
             let ring = patch.outline.rings().nth(corner.ring).unwrap_or_default();
             let (dcol, drow) = self.table.lens.pixel_step(step);
@@ -315,7 +317,7 @@ impl Hand<'_> {
     }
 
     /// Keys while the table has the focus: arrows move the raster, or the cross when a tool is in
-    /// hand; Space does at the cross what a click does.
+    /// hand, with Ctrl the selected patch; Space does at the cross what a click does.
     fn keys(&mut self, state: &mut TableState, camera: Camera) -> Camera {
         if !self.response.has_focus() {
             return camera;
@@ -323,11 +325,18 @@ impl Hand<'_> {
         self.keep_arrows(self.response);
         let lens = self.table.lens;
         if self.tool() == Tool::Hand {
-            let step = self.arrows(PAN);
+            let step = self.arrows(false, PAN);
             return camera.panned(lens.unstretched(-step));
         }
         let mut camera = camera;
-        let step = self.arrows(NUDGE);
+        if let Some(patch) = self.table.selected().filter(|_| self.tool() == Tool::Corners) {
+            let step = self.arrows(true, FINE);
+            if step != Vec2::ZERO {
+                let (dcol, drow) = lens.pixel_step(step);
+                self.reshape(patch.id, pick::shifted(&patch.outline, dcol, drow));
+            }
+        }
+        let step = self.arrows(false, NUDGE);
         if step != Vec2::ZERO {
             let from = state.cross.map_or(lens.frame.center(), |p| lens.to_screen(p));
             let to = from + step;
@@ -391,22 +400,27 @@ impl Hand<'_> {
         self.ui.input_mut(|input| input.consume_key(Modifiers::NONE, key))
     }
 
-    /// Screen step of the arrow keys pressed in this frame: `far` points, with Shift one.
-    fn arrows(&self, far: f32) -> Vec2 {
-        let keys = [
-            (Key::ArrowLeft, vec2(-1.0, 0.0)),
-            (Key::ArrowRight, vec2(1.0, 0.0)),
-            (Key::ArrowUp, vec2(0.0, -1.0)),
-            (Key::ArrowDown, vec2(0.0, 1.0)),
-        ];
+    /// Screen step of the arrow keys pressed in this frame, with or without Ctrl: `far` points, with
+    /// Shift one. Those with Alt belong to the desk.
+    fn arrows(&self, command: bool, far: f32) -> Vec2 {
+        let mut sum = Vec2::ZERO;
         self.ui.input_mut(|input| {
-            keys.into_iter()
-                .map(|(key, step)| {
-                    let plain = input.count_and_consume_key(Modifiers::NONE, key) as f32;
-                    let fine = input.count_and_consume_key(Modifiers::SHIFT, key) as f32;
-                    step * (plain * far + fine)
-                })
-                .fold(Vec2::ZERO, |sum, step| sum + step)
-        })
+            input.events.retain(|event| {
+                let Event::Key { key, pressed: true, modifiers, .. } = event else { return true };
+                let step = match key {
+                    Key::ArrowLeft => Vec2::LEFT,
+                    Key::ArrowRight => Vec2::RIGHT,
+                    Key::ArrowUp => Vec2::UP,
+                    Key::ArrowDown => Vec2::DOWN,
+                    _ => return true,
+                };
+                if modifiers.alt || modifiers.command != command {
+                    return true;
+                }
+                sum += step * if modifiers.shift { 1.0 } else { far };
+                false
+            });
+        });
+        sum
     }
 }

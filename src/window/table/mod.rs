@@ -23,6 +23,7 @@ use draw::Standing;
 use hand::{Drag, Hand};
 use ink::Ink;
 use lens::Lens;
+use margin::Graticule;
 use pick::Corner;
 
 /// What the table keeps between frames; all of it can be rebuilt.
@@ -37,6 +38,8 @@ pub struct TableState {
     cross: Option<Point>,
     /// Whether what scrolled last was a wheel: a wheel zooms, fingers pan.
     wheel: bool,
+    /// The margin of the last frame, and what it was worked out for.
+    graticule: Option<(u64, Lens, Graticule)>,
 }
 
 /// The raster on the table and how it is looked at in this frame.
@@ -139,7 +142,10 @@ fn paint(painter: &Painter, response: &Response, table: &Table<'_>, state: &mut 
     if state.tiles.draw(&inside, &laid.tiles, &table.entry.tone, lens, ink) {
         painter.ctx().request_repaint();
     }
-    let graticule = margin::graticule(&laid.place, lens);
+    let known =
+        state.graticule.take().filter(|(serial, seen, _)| *serial == laid.tiles.serial() && seen == lens);
+    let (serial, lens_seen, graticule) =
+        known.unwrap_or_else(|| (laid.tiles.serial(), *lens, margin::graticule(&laid.place, lens)));
     let layers = model.view.layers;
     if layers.graticule {
         draw::crosses(&inside, &graticule.crosses, ink);
@@ -165,6 +171,7 @@ fn paint(painter: &Painter, response: &Response, table: &Table<'_>, state: &mut 
     }
     draw::furniture(&inside, &laid.place, lens, ink);
     draw::margin(painter, response.rect, frame, &graticule.ticks, ink);
+    state.graticule = Some((serial, lens_seen, graticule));
     if response.has_focus() {
         painter.rect_stroke(frame, 0.0, egui::Stroke::new(2.0, ink.measured), egui::StrokeKind::Inside);
     }
