@@ -336,42 +336,8 @@ impl Field {
         products / (1.0 - 1.0 / reach.discs) / (1.0 - UNRELATED)
     }
 
-    /// The trough that follows the correlated core: where crests wander about one trend, the turn of one
-    /// stretch is undone by the next, neighbours beyond the core are anticorrelated, and the mean is known
-    /// better than the core alone says. Summed from H to where the correlation comes back to nought.
-    fn trough(&self, rings: &[Ring], part: usize, reach: &Reach) -> (f64, usize) {
-        let end = MOST_FOLDS * reach.e_fold;
-        let beyond = rings[reach.rings..].iter().take_while(|r| r.lag <= end && r.products[part] < 0.0);
-        let (sum, count) = beyond.fold((0.0, 0), |(sum, n), r| (sum + r.products[part], n + 1));
-        (sum, reach.rings + count)
-    }
-
     fn number(&self, rings: &[Ring], part: usize, reach: &Reach, kernel_sigma: f64) -> Number {
         let variance = self.variance[part];
-        // The test must not claim too much, so it keeps to the core.
-        let (trough, summed) = if part == ACROSS { self.trough(rings, part, reach) } else { (0.0, 0) };
-        if trough < 0.0 {
-            let disc = rings[..summed].iter().map(|r| r.pairs).sum::<f64>();
-            let discs = (self.total * self.total / disc).max(LEAST_DISCS);
-            let core: f64 = rings[..reach.rings].iter().map(|r| r.products[part]).sum();
-            // At least a third of the core stays: what a trough takes away is itself known with chance.
-            let sum = (core + trough).max(core / 3.0) / (1.0 - 1.0 / discs) / variance;
-            let most = self.most(rings, part, kernel_sigma);
-            let estimated = (self.total * self.total / sum.max(self.square_weight)).max(1.0);
-            return Number { estimated, df: 1.5 * reach.discs - 1.0, most };
-        }
-        let relative = if variance > 0.0 { self.covered(rings, part, reach) / variance } else { 0.0 };
-        let number = |sum: f64| (self.total * self.total / sum.max(self.square_weight)).max(1.0);
-        // The spectrum of a smooth field falls within the band that a sum over one disc looks at, so that
-        // chance enters less than for white noise: 1.8 ν degrees for a Gaussian fall-off. The test,
-        // which must not claim too much, keeps to ν.
-        let per_disc = if part == ACROSS { 1.5 } else { 1.0 };
-        let most = self.most(rings, part, kernel_sigma);
-        Number { estimated: number(relative), df: per_disc * reach.discs - 1.0, most }
-    }
-
-    /// The most independent axes that the smoothing of the field and the weights allow.
-    fn most(&self, rings: &[Ring], part: usize, kernel_sigma: f64) -> f64 {
         // White noise smoothed by the kernel is correlated as exp(−h²/4σ²); unit vectors of pure
         // noise keep at least π/4 of it.
         let kept = if part == WHOLE { std::f64::consts::FRAC_PI_4 } else { 1.0 };
@@ -387,7 +353,13 @@ impl Field {
         let least = self.square_weight
             + within
             + rings[1..].iter().map(|r| r.pairs * smoothed(r.square_lag)).sum::<f64>();
-        (self.total * self.total / least.max(self.square_weight)).max(1.0)
+        let relative = if variance > 0.0 { self.covered(rings, part, reach) / variance } else { 0.0 };
+        let number = |sum: f64| (self.total * self.total / sum.max(self.square_weight)).max(1.0);
+        // The spectrum of a smooth field falls within the band that a sum over one disc looks at, so that
+        // chance enters less than for white noise: 1.8 ν degrees for a Gaussian fall-off. The test,
+        // which must not claim too much, keeps to ν.
+        let per_disc = if part == ACROSS { 1.5 } else { 1.0 };
+        Number { estimated: number(relative), df: per_disc * reach.discs - 1.0, most: number(least) }
     }
 }
 
