@@ -35,7 +35,7 @@ pub fn run(kind: Kind, size: usize, index: u64) -> Outcome {
     let trend = Axis::from_deg(rng.random_range(0.0..180.0));
     let texture = DuneTexture { trend, spacing: kind.spacing, spread_deg: kind.spread_deg, bandwidth: 0.15 };
     let tone = if kind.amplitude > 0.0 {
-        let field = texture.draw(size, size, frame, &mut rng);
+        let field = texture.sample(size, size, frame, &mut rng);
         field.map(|v| (kind.amplitude * f64::from(v)).exp() as f32)
     } else {
         Grid::filled(size, size, 1.0)

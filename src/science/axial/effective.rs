@@ -41,7 +41,7 @@ pub static METHOD: Method = Method {
         "Correlation is no shorter than the smoothing of the field implies.",
     ],
     limits: &[
-        "Known to about 25 % for 300 effective axes: intervals use Student's quantile with 1.5 ν − 1, the test ν − 1.",
+        "Known to about 25 % for 300 effective axes: intervals use Student's quantile with ν − 1 degrees of freedom.",
         "Removing the mean removes 1/ν of the sum; the factor 1 − 1/ν restores it.",
         "H is held where ν would fall below 3: a patch smaller than that cannot tell.",
     ],
@@ -100,6 +100,9 @@ impl Number {
 const RINGS: usize = 16;
 /// Correlation at which nodes count as unrelated.
 const UNRELATED: f64 = 0.05;
+/// Share of the correlation's volume still to come where it has sunk to [`UNRELATED`]: (1 + 3) e⁻³ for the
+/// exponential fall-off of natural textures (a Gaussian one would leave 0.05).
+const TAIL: f64 = 0.2;
 /// e-folding lengths the sum may reach out to.
 const MOST_FOLDS: f64 = 5.0;
 /// The least number of independent discs the sum may leave.
@@ -332,8 +335,7 @@ impl Field {
     /// Σ N(h) C(h) out to H, with what removing the mean took and what lies beyond H restored.
     fn covered(&self, rings: &[Ring], part: usize, reach: &Reach) -> f64 {
         let products: f64 = rings[..reach.rings].iter().map(|r| r.products[part]).sum();
-        // A Gaussian fall-off that has sunk to UNRELATED has that share of its volume still to come.
-        products / (1.0 - 1.0 / reach.discs) / (1.0 - UNRELATED)
+        products / (1.0 - 1.0 / reach.discs) / (1.0 - TAIL)
     }
 
     fn number(&self, rings: &[Ring], part: usize, reach: &Reach, kernel_sigma: f64) -> Number {
@@ -355,11 +357,7 @@ impl Field {
             + rings[1..].iter().map(|r| r.pairs * smoothed(r.square_lag)).sum::<f64>();
         let relative = if variance > 0.0 { self.covered(rings, part, reach) / variance } else { 0.0 };
         let number = |sum: f64| (self.total * self.total / sum.max(self.square_weight)).max(1.0);
-        // The spectrum of a smooth field falls within the band that a sum over one disc looks at, so that
-        // chance enters less than for white noise: 1.8 ν degrees for a Gaussian fall-off. The test,
-        // which must not claim too much, keeps to ν.
-        let per_disc = if part == ACROSS { 1.5 } else { 1.0 };
-        Number { estimated: number(relative), df: per_disc * reach.discs - 1.0, most: number(least) }
+        Number { estimated: number(relative), df: reach.discs - 1.0, most: number(least) }
     }
 }
 
