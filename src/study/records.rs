@@ -352,10 +352,10 @@ fn key_of<T: Copy + PartialEq>(laws: &[(T, &'static str, &'static str)], law: T)
 }
 
 fn choose<T: Copy>(laws: &[(T, &'static str, &'static str)], value: SettingValue, field: &mut T) {
-    if let SettingValue::Choice(key) = value {
-        if let Some((law, ..)) = laws.iter().find(|(_, k, _)| *k == key) {
-            *field = *law;
-        }
+    if let SettingValue::Choice(key) = value
+        && let Some((law, ..)) = laws.iter().find(|(_, k, _)| *k == key)
+    {
+        *field = *law;
     }
 }
 

@@ -29,11 +29,11 @@ pub fn show(ctx: &Context, model: &Model, out: &mut Commands, corner: egui::Pos2
             frame.show(ui, |ui| {
                 ui.label(RichText::new(&notice.text));
                 ui.horizontal(|ui| {
-                    if let Some(offer) = &notice.offer {
-                        if ui.button(Command::Sheet(offer.clone()).record().label).clicked() {
-                            out.push(Command::Sheet(offer.clone()));
-                            out.push(Command::View(ViewCommand::Dismiss(notice.number)));
-                        }
+                    if let Some(offer) = &notice.offer
+                        && ui.button(Command::Sheet(offer.clone()).record().label).clicked()
+                    {
+                        out.push(Command::Sheet(offer.clone()));
+                        out.push(Command::View(ViewCommand::Dismiss(notice.number)));
                     }
                     if ui.small_button("Dismiss").clicked() {
                         out.push(Command::View(ViewCommand::Dismiss(notice.number)));

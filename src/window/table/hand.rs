@@ -243,9 +243,7 @@ impl Hand<'_> {
             return;
         };
         let painter = self.ui.painter_at(self.table.lens.frame);
-        let mut number = 0;
-        for (corner, place) in pick::corners(&patch.outline) {
-            number += 1;
+        for (number, (corner, place)) in (1..).zip(pick::corners(&patch.outline)) {
             let at = self.table.lens.to_screen(place);
             if !self.table.lens.frame.contains(at)
                 && !matches!(state.drag, Some(Drag::Corner(held, _)) if held == corner)

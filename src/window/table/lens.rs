@@ -35,7 +35,7 @@ impl Lens {
         Self { frame, centre, per_col: scale, per_row: scale * stretch }
     }
 
-    pub fn to_screen(&self, pixel: Point) -> Pos2 {
+    pub fn to_screen(self, pixel: Point) -> Pos2 {
         let middle = self.frame.center();
         pos2(
             (f64::from(middle.x) + (pixel.x - self.centre.x) * self.per_col) as f32,
@@ -43,7 +43,7 @@ impl Lens {
         )
     }
 
-    pub fn to_pixel(&self, at: Pos2) -> Point {
+    pub fn to_pixel(self, at: Pos2) -> Point {
         let from_middle = at - self.frame.center();
         Point::new(
             self.centre.x + f64::from(from_middle.x) / self.per_col,
