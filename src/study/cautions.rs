@@ -39,16 +39,17 @@ pub fn of_patch(
             ),
         );
     }
+    // Said too where the axes are uneven but no interval can be given.
+    if trend.rayleigh_p.is_some_and(|p| p <= 0.05) && trend.resultant_length_all < WEAK_ALIGNMENT {
+        say(
+            "weak-alignment",
+            format!(
+                "Weak alignment (resultant length {:.2} over all nodes): light from one side can make ground without preference seem as aligned as 0.5.",
+                trend.resultant_length_all
+            ),
+        );
+    }
     if let Some(axis) = trend.axis {
-        if trend.resultant_length_all < WEAK_ALIGNMENT {
-            say(
-                "weak-alignment",
-                format!(
-                    "Weak alignment (resultant length {:.2} over all nodes): light from one side can make ground without preference seem as aligned as 0.5.",
-                    trend.resultant_length_all
-                ),
-            );
-        }
         if trend.modes.len() > 1 && apart(trend) > 25.0 {
             say(
                 "several-trends",
