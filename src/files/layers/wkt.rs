@@ -108,7 +108,6 @@ fn method(projection: &Projection) -> Option<(&'static str, Vec<(&'static str, f
         "eqdc" => ("Equidistant_Conic", conic("latitude_of_center", "longitude_of_center")?),
         "ortho" => ("Orthographic", origin(lat_0)),
         "gnom" => ("Gnomonic", origin(lat_0)),
-        "cass" => ("Cassini_Soldner", origin(lat_0)),
         "poly" => ("Polyconic", origin(lat_0)),
         "cea" => {
             let parallel = number("lat_ts").unwrap_or(0.0);
