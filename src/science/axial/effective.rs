@@ -41,7 +41,7 @@ pub static METHOD: Method = Method {
         "Correlation is no shorter than the smoothing of the field implies.",
     ],
     limits: &[
-        "Known to about 25 % for 300 effective axes: intervals use Student's quantile with 1.5 ν − 1, the test ν − 1.",
+        "Known to about 25 % for 300 effective axes: intervals use Student's quantile with ν − 1 degrees of freedom.",
         "Removing the mean removes 1/ν of the sum; the factor 1 − 1/ν restores it.",
         "H is held where ν would fall below 3: a patch smaller than that cannot tell.",
     ],
@@ -357,11 +357,7 @@ impl Field {
             + rings[1..].iter().map(|r| r.pairs * smoothed(r.square_lag)).sum::<f64>();
         let relative = if variance > 0.0 { self.covered(rings, part, reach) / variance } else { 0.0 };
         let number = |sum: f64| (self.total * self.total / sum.max(self.square_weight)).max(1.0);
-        // The spectrum of a smooth field falls within the band that a sum over one disc looks at, so that
-        // chance enters less than for white noise: 1.8 ν degrees for a Gaussian fall-off. The test,
-        // which must not claim too much, keeps to ν.
-        let per_disc = if part == ACROSS { 1.5 } else { 1.0 };
-        Number { estimated: number(relative), df: per_disc * reach.discs - 1.0, most: number(least) }
+        Number { estimated: number(relative), df: reach.discs - 1.0, most: number(least) }
     }
 }
 
