@@ -2,6 +2,7 @@
 
 use crate::ground::{Axis, Caution};
 use crate::science::orientation::NodeField;
+use crate::science::orientation::look::{NEAR_DEG, Weighting, look_bias};
 
 use super::window::PatchPixels;
 use super::{RasterEntry, SpectrumFinding, TrendFinding};
@@ -11,8 +12,6 @@ const FAINT_CONTRAST: f64 = 0.03;
 /// R̄ over all nodes below which a field counts as weakly aligned: light from one side alone makes a
 /// field without preference seem as aligned as ½ (B7).
 pub const WEAK_ALIGNMENT: f64 = 0.5;
-/// Trends within this of look + 90° are suspect (B7).
-const LOOK_MARGIN_DEG: f64 = 15.0;
 
 /// Cautions of trend, spectrum and pixels together.
 pub fn of_patch(
@@ -63,8 +62,8 @@ pub fn of_patch(
             say("tensor-spectrum", text);
         }
         if let Some(light) = entry.light_from {
-            let off = axis.separation(light.axis().perpendicular());
-            if off <= LOOK_MARGIN_DEG {
+            let off = look_bias(axis, trend.resultant_length, light, Weighting::Energy).from_bias_deg;
+            if off <= NEAR_DEG {
                 say(
                     "look",
                     format!(

@@ -6,7 +6,7 @@
 
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
-use super::Id;
+use super::{DriftFinding, Id, SeasonFinding, SetAside};
 
 /// All results of one run.
 #[derive(Clone, Debug, Default, PartialEq)]
@@ -185,38 +185,6 @@ pub struct WindFinding {
     pub rose: Vec<SandFlow>,
     pub seasons: Vec<SeasonFinding>,
     pub cautions: Vec<Caution>,
-}
-
-#[derive(Clone, Debug, PartialEq)]
-pub struct SetAside {
-    pub code: &'static str,
-    pub count: usize,
-    pub text: String,
-}
-
-/// Totals of a record.
-#[derive(Clone, Debug, Default, PartialEq)]
-pub struct DriftFinding {
-    /// `"vector units (knots)"` or `"kg/m/yr"`.
-    pub unit: &'static str,
-    /// Sum over all directions: drift potential or gross flux.
-    pub total: f64,
-    /// Length of the vector sum.
-    pub resultant: f64,
-    /// resultant / total; `None` when total is 0.
-    pub ratio: Option<f64>,
-    /// Where the sand goes; `None` when there is none.
-    pub toward: Option<Azimuth>,
-    /// 95 % bootstrap half width of `toward`, degrees, and interval of the ratio.
-    pub toward_ci95_half_deg: Option<f64>,
-    pub ratio_ci95: Option<[f64; 2]>,
-}
-
-#[derive(Clone, Debug, PartialEq)]
-pub struct SeasonFinding {
-    /// `"Dec–Feb"`.
-    pub name: &'static str,
-    pub drift: DriftFinding,
 }
 
 /// A patch judged by one wind record.

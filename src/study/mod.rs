@@ -19,9 +19,11 @@ mod verdict;
 pub mod window;
 pub mod winds;
 
+pub use crate::science::wind::quality::SetAside;
+pub use crate::science::wind::regime::{Drift as DriftFinding, Season as SeasonFinding};
 pub use findings::{
-    DriftFinding, Failure, Findings, ModeFinding, Node, PatchFinding, RasterFinding, SeasonFinding, SetAside,
-    SpectrumFinding, SpectrumPicture, TheoryFinding, TrendFinding, VerdictFinding, WindFinding,
+    Failure, Findings, ModeFinding, Node, PatchFinding, RasterFinding, SpectrumFinding, SpectrumPicture,
+    TheoryFinding, TrendFinding, VerdictFinding, WindFinding,
 };
 pub use records::{SETTINGS, Setting, SettingKind, SettingValue};
 pub use settings::{

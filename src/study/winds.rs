@@ -2,13 +2,10 @@
 
 use crate::ground::{Body, Caution, SandFlow, Stopped, WindRecord, Work};
 use crate::science::wind::law::Law;
-use crate::science::wind::regime::Drift;
 use crate::science::wind::threshold::Threshold;
 use crate::science::wind::{self, Site, Transport, WindError};
 
-use super::{
-    DriftFinding, SeasonFinding, SetAside, Sheet, ThresholdLaw, TransportLaw, WindEntry, WindFinding,
-};
+use super::{Sheet, ThresholdLaw, TransportLaw, WindEntry, WindFinding};
 
 /// A record's finding and what the theories need of it.
 #[derive(Clone, Debug, PartialEq)]
@@ -68,39 +65,19 @@ pub fn study(
         rows: a.rows,
         used: a.used,
         calm: a.calm,
-        set_aside: a
-            .set_aside
-            .into_iter()
-            .map(|s| SetAside { code: s.code, count: s.count, text: s.text })
-            .collect(),
+        set_aside: a.set_aside,
         span: a.span,
         interval_s: a.interval_s,
-        fryberger: a.fryberger.map(drift),
-        flux: drift(a.flux),
+        fryberger: a.fryberger,
+        flux: a.flux,
         law: a.law,
         threshold_ustar: a.threshold_ustar,
         threshold_speed_at_height: a.threshold_speed_at_height,
         rose: a.rose,
-        seasons: a
-            .seasons
-            .into_iter()
-            .map(|s| SeasonFinding { name: s.name, drift: drift(s.drift) })
-            .collect(),
+        seasons: a.seasons,
         cautions: a.cautions,
     };
     Ok(WindStudy { finding, regime: a.regime, draws: a.draws })
-}
-
-fn drift(d: Drift) -> DriftFinding {
-    DriftFinding {
-        unit: d.unit,
-        total: d.total,
-        resultant: d.resultant,
-        ratio: d.ratio,
-        toward: d.toward,
-        toward_ci95_half_deg: d.toward_ci95_half_deg,
-        ratio_ci95: d.ratio_ci95,
-    }
 }
 
 /// Splits a failure into a stop, which ends the run, and words, which name the record.

@@ -46,10 +46,7 @@ pub struct LookBias {
 }
 
 /// Degrees within which a trend is held against the look.
-const NEAR_DEG: f64 = 15.0;
-
-/// Least |sin| that is corrected for; below it detection has failed.
-const LEAST_SINE: f64 = 0.3;
+pub const NEAR_DEG: f64 = 15.0;
 
 /// Doubled resultant length of a uniform trend field: −∫ w cos 2t / ∫ w over trends t from the look.
 pub fn resultant_by_look(weighting: Weighting) -> f64 {
@@ -68,12 +65,6 @@ pub fn look_bias(mean: Axis, resultant_length: f64, look: Azimuth, weighting: We
         resultant_by_look: by_look,
         suspect: from_bias_deg <= NEAR_DEG && resultant_length < resultant_by_look(Weighting::Energy),
     }
-}
-
-/// Weight that gives a trend back what the look took: 1/max(|sin(trend − look)|, 0.3).
-pub fn compensation(trend: Axis, look: Azimuth) -> f64 {
-    let sine = trend.separation(look.axis()).to_radians().sin();
-    1.0 / sine.max(LEAST_SINE)
 }
 
 #[cfg(test)]

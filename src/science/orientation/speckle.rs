@@ -64,11 +64,6 @@ pub fn logarithm_moments(looks: f64) -> (f64, f64) {
     (digamma(looks) - looks.ln(), trigamma(looks))
 }
 
-/// Equivalent number of looks of homogeneous intensities: mean²/variance.
-pub fn looks_of_moments(mean: f64, variance: f64) -> f64 {
-    mean * mean / variance
-}
-
 /// Equivalent number of looks from the variance of ln I: ψ′(L) = variance. `None` outside 0.01 … 10⁶ looks.
 pub fn looks_of_logarithm(variance: f64) -> Option<f64> {
     brent(|ln_l| trigamma(ln_l.exp()) - variance, 0.01f64.ln(), 1e6f64.ln(), 1e-12).map(f64::exp)

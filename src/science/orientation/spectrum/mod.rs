@@ -47,6 +47,8 @@ pub static METHOD: Method = Method {
     limits: &[
         "m wavelengths per window cannot tell trends closer than about 1.5/m rad, nor place a peak better than 1/2m without interpolation",
         "spacings below four pixels are not looked for unless asked",
+        "on textures of widely spread trends the 95 % intervals are too narrow: in simulated scenes the axis was held by 69–91 %, the spacing by 50–78 % of them",
+        "speckle blurred by 1.5 pixels passes the 5 % level about twice as often as stated",
         "the interval comes from the scatter between windows; with fewer than four independent windows it is the half-bin limit",
     ],
     sources: &[
