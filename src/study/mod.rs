@@ -27,8 +27,8 @@ pub use findings::{
 };
 pub use records::{SETTINGS, Setting, SettingKind, SettingValue};
 pub use settings::{
-    Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw, TrendSettings,
-    VerdictSettings, WindSettings,
+    LettauConstant, Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw,
+    TrendSettings, VerdictSettings, WindSettings,
 };
 pub use sheet::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindEntry};
 pub use sources::{OpenRaster, Sources};

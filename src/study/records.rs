@@ -1,7 +1,7 @@
 //! Each setting described once: key, label, unit, range, default, help. Forms, `check`, the
 //! documents and hover texts read these records.
 
-use super::{Settings, ThresholdLaw, TransportLaw};
+use super::{LettauConstant, Settings, ThresholdLaw, TransportLaw};
 
 /// One setting.
 pub struct Setting {
@@ -127,6 +127,9 @@ const TRANSPORT_LAWS: [(TransportLaw, &str, &str); 6] = [
     (TransportLaw::Lettau, "lettau", "Lettau & Lettau 1978"),
     (TransportLaw::Kok, "kok", "Kok et al. 2012, linear in stress"),
 ];
+
+const LETTAU_CONSTANTS: [(LettauConstant, &str, &str); 2] =
+    [(LettauConstant::High, "6.7", "6.7"), (LettauConstant::Low, "4.2", "4.2")];
 
 /// Every setting, in the order of the reasoning.
 pub const SETTINGS: &[Setting] = &[
@@ -309,6 +312,51 @@ pub const SETTINGS: &[Setting] = &[
         wind.resamples,
         "Draws of the record behind drift intervals and theory clouds."
     ),
+    number!(
+        "wind.cohesion_kg_s2",
+        "Cohesion γ",
+        "kg/s²",
+        1e-5,
+        1e-2,
+        wind.cohesion_kg_s2,
+        "What holds grains together in Shao and Lu's threshold; 1.65e-4 to 5e-4 is published. Under low gravity it decides the threshold."
+    ),
+    number!(
+        "wind.grain_doubt",
+        "Doubt of the grain diameter",
+        "1",
+        1.0,
+        10.0,
+        wind.grain_doubt,
+        "The diameter is known to within this factor: it may be the value divided by it, or times it."
+    ),
+    number!(
+        "wind.grain_density_doubt",
+        "Doubt of the grain density",
+        "1",
+        1.0,
+        10.0,
+        wind.grain_density_doubt,
+        "The grain density is known to within this factor."
+    ),
+    number!(
+        "wind.cohesion_doubt",
+        "Doubt of the cohesion",
+        "1",
+        1.0,
+        10.0,
+        wind.cohesion_doubt,
+        "The cohesion is known to within this factor; 1.7 spans what is published."
+    ),
+    Setting {
+        key: "wind.lettau_constant",
+        label: "Lettau's constant",
+        unit: "1",
+        help: "Sources differ: 6.7 or 4.2. It scales the flux and leaves trends alone.",
+        kind: SettingKind::Choice(&[("6.7", "6.7"), ("4.2", "4.2")]),
+        get: |s| SettingValue::Choice(key_of(&LETTAU_CONSTANTS, s.wind.lettau_constant)),
+        set: |s, v| choose(&LETTAU_CONSTANTS, v, &mut s.wind.lettau_constant),
+    },
     number!(
         "verdict.model_error_deg",
         "Model error",

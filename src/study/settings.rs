@@ -2,6 +2,8 @@
 
 use serde::{Deserialize, Serialize};
 
+use crate::science::wind::threshold::COHESION;
+
 /// All settings of a sheet.
 #[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
 #[serde(default, deny_unknown_fields)]
@@ -58,6 +60,14 @@ pub struct WindSettings {
     /// Length of the blocks drawn together in the bootstrap, days.
     pub block_days: f64,
     pub resamples: u32,
+    /// Cohesion γ of Shao and Lu, kg s⁻².
+    pub cohesion_kg_s2: f64,
+    /// Grain diameter, grain density and cohesion are known to within these factors, each ≥ 1: the truth
+    /// is taken to lie between value/factor and value × factor.
+    pub grain_doubt: f64,
+    pub grain_density_doubt: f64,
+    pub cohesion_doubt: f64,
+    pub lettau_constant: LettauConstant,
 }
 
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
@@ -78,6 +88,15 @@ pub enum TransportLaw {
     White,
     Lettau,
     Kok,
+}
+
+/// Sources print two constants for Lettau's law.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
+pub enum LettauConstant {
+    #[serde(rename = "6.7")]
+    High,
+    #[serde(rename = "4.2")]
+    Low,
 }
 
 /// The weighing of theories.
@@ -124,6 +143,11 @@ impl Default for WindSettings {
             greatest_speed: 75.0,
             block_days: 7.0,
             resamples: 1000,
+            cohesion_kg_s2: COHESION,
+            grain_doubt: 1.3,
+            grain_density_doubt: 1.05,
+            cohesion_doubt: 1.7,
+            lettau_constant: LettauConstant::High,
         }
     }
 }

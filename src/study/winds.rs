@@ -5,7 +5,7 @@ use crate::science::wind::law::Law;
 use crate::science::wind::threshold::Threshold;
 use crate::science::wind::{self, Site, Transport, WindError};
 
-use super::{Sheet, ThresholdLaw, TransportLaw, WindEntry, WindFinding};
+use super::{LettauConstant, Sheet, ThresholdLaw, TransportLaw, WindEntry, WindFinding};
 
 /// A record's finding and what the theories need of it.
 #[derive(Clone, Debug, PartialEq)]
@@ -40,6 +40,7 @@ pub fn study(
     let settings = wind::WindSettings {
         grain_m: s.grain_m,
         grain_density: s.grain_density,
+        cohesion: s.cohesion_kg_s2,
         threshold: match s.threshold_law {
             ThresholdLaw::Bagnold => Threshold::Bagnold,
             ThresholdLaw::IversenWhite => Threshold::IversenWhite,
@@ -50,7 +51,10 @@ pub fn study(
             TransportLaw::Bagnold => Transport::Physical(Law::Bagnold),
             TransportLaw::Kawamura => Transport::Physical(Law::Kawamura),
             TransportLaw::White => Transport::Physical(Law::White),
-            TransportLaw::Lettau => Transport::Physical(Law::Lettau),
+            TransportLaw::Lettau => Transport::Physical(match s.lettau_constant {
+                LettauConstant::High => Law::Lettau,
+                LettauConstant::Low => Law::LettauLow,
+            }),
             TransportLaw::Kok => Transport::Physical(Law::Kok),
         },
         greatest_speed: s.greatest_speed,

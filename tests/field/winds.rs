@@ -7,6 +7,7 @@ use ventifact::science::alignment::gross_normal::gross_normal;
 use ventifact::science::alignment::{Refusal, TrendEvidence, VerdictSettings, judge};
 use ventifact::science::wind::quality;
 use ventifact::science::wind::regime::{flows, gathered};
+use ventifact::science::wind::threshold::COHESION;
 use ventifact::science::wind::{
     Drift, Law, Site, Threshold, Transport, WindAssessment, WindSettings, assess,
 };
@@ -95,6 +96,7 @@ fn settings(transport: Transport) -> WindSettings {
     WindSettings {
         grain_m: 250e-6,
         grain_density: 2650.0,
+        cohesion: COHESION,
         threshold: Threshold::ShaoLu,
         transport,
         greatest_speed: 75.0,

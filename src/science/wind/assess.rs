@@ -267,7 +267,7 @@ fn drift_cautions(
 #[cfg(test)]
 mod tests {
     use super::super::law::Law;
-    use super::super::threshold::Threshold;
+    use super::super::threshold::{self, Threshold};
     use super::*;
     use crate::ground::{Azimuth, Body, Stopped};
     use rand::Rng as _;
@@ -281,6 +281,7 @@ mod tests {
         WindSettings {
             grain_m: 250e-6,
             grain_density: 2650.0,
+            cohesion: threshold::COHESION,
             threshold: Threshold::ShaoLu,
             transport: Transport::Physical(Law::Kok),
             greatest_speed: 75.0,

@@ -42,6 +42,7 @@ impl Mill {
             ("roughness", roughness_m),
             ("grain size", settings.grain_m),
             ("grain density", settings.grain_density),
+            ("cohesion", settings.cohesion),
             ("block length", settings.block_days),
             ("greatest speed", settings.greatest_speed),
         ] {
@@ -67,6 +68,7 @@ impl Mill {
             grain_density: settings.grain_density,
             air,
             gravity,
+            cohesion: settings.cohesion,
         });
         let friction = friction_ratio(height_m, roughness_m);
         let to_ten = speed_at(friction, drift_potential::HEIGHT, roughness_m);
@@ -108,9 +110,10 @@ impl Mill {
         }
     }
 
-    /// Whether no other law gives the same shares of flux: White's is Kawamura's times a constant.
+    /// Whether no other law gives the same shares of flux: White's is Kawamura's times a constant,
+    /// Lettau's differ by theirs.
     pub fn is_of_its_own_form(&self) -> bool {
-        self.transport != Transport::Physical(Law::White)
+        !matches!(self.transport, Transport::Physical(Law::White | Law::LettauLow))
     }
 
     pub fn label(&self) -> String {

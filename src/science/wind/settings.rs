@@ -27,6 +27,8 @@ pub struct WindSettings {
     pub grain_m: f64,
     /// kg m⁻³.
     pub grain_density: f64,
+    /// Cohesion γ of the grains, kg s⁻².
+    pub cohesion: f64,
     pub threshold: Threshold,
     pub transport: Transport,
     /// Speeds above this are set aside as impossible, m s⁻¹.
