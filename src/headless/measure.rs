@@ -48,7 +48,7 @@ pub fn measure(options: &Measure) -> Result<Outcome, Trouble> {
     });
     for (name, outline, tags) in patches(options, &open)? {
         let id = sheet.fresh_id();
-        sheet.patches.push(Patch { id, name, raster: Id(1), outline, tags, wind: None });
+        sheet.patches.push(Patch { id, name, raster: Id(1), outline, tags, wind: None, stated_axis: None });
     }
     if let Some(file) = &options.winds {
         let entry = wind(file, sheet.fresh_id(), &open.place.body)?;

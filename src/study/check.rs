@@ -25,10 +25,8 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
             say("settings".into(), problem);
         }
     }
-    if !sheet.settings.verdict.priors.iter().all(|p| p.is_finite() && *p >= 0.0)
-        || sheet.settings.verdict.priors.iter().sum::<f64>() <= 0.0
-    {
-        say("settings".into(), "verdict.priors must be numbers ≥ 0, not all zero".into());
+    if sheet.settings.verdict.priors.weights().iter().sum::<f64>() <= 0.0 {
+        say("settings".into(), "verdict.priors are all zero; at least one theory needs a weight".into());
     }
     let bins = 180.0 / sheet.settings.statistics.rose_bin_deg;
     if (bins - bins.round()).abs() > 1e-9 {

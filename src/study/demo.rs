@@ -124,6 +124,7 @@ pub fn sheet(folder: &Path) -> Sheet {
             outline: truth.outline,
             tags: Vec::new(),
             wind: Some(wind),
+            stated_axis: None,
         });
     }
     sheet

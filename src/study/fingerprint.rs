@@ -23,6 +23,7 @@ pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
         sheet.seed,
         patch.id,
         patch.outline,
+        patch.stated_axis,
         sheet.raster(patch.raster).map(raster),
         winds,
         sheet.settings
@@ -31,7 +32,8 @@ pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
 
 /// SHA-256 of all that makes a record's finding.
 pub fn of_wind(sheet: &Sheet, entry: &WindEntry) -> String {
-    digest(&json!([sheet.seed, wind(entry), sheet.settings.wind]))
+    let v = &sheet.settings.verdict;
+    digest(&json!([sheet.seed, wind(entry), sheet.settings.wind, v.flux_up, v.flux_up_doubt]))
 }
 
 fn raster(r: &RasterEntry) -> Value {
@@ -63,6 +65,7 @@ mod tests {
             outline: Polygon::rectangle(10.0, 10.0),
             tags: vec![],
             wind: None,
+            stated_axis: None,
         };
         sheet.patches.push(patch.clone());
         let before = of_patch(&sheet, &patch);

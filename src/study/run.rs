@@ -6,6 +6,7 @@ use std::sync::{Arc, Mutex, PoisonError};
 use crate::ground::{Stopped, Work};
 
 use super::patch::patch_finding;
+use super::together::together;
 use super::window::Detail;
 use super::winds::{self, WindStudy};
 use super::{
@@ -39,6 +40,7 @@ pub fn run(sheet: &Sheet, sources: &Sources, memo: &Memo, work: &Work) -> Result
     Ok(Findings {
         sheet_fingerprint: fingerprint::of_sheet(sheet),
         rasters: rasters.collect(),
+        together: together(sheet, &patches.iter().collect::<Vec<_>>(), &winds),
         winds: winds.into_iter().map(|w| w.finding.clone()).collect(),
         patches,
         failures,

@@ -6,7 +6,7 @@ use serde::{Deserialize, Serialize};
 
 use crate::files::raster::Bands;
 use crate::files::wind_table::WindImport;
-use crate::ground::{Azimuth, Body, Polygon, Seed};
+use crate::ground::{Axis, Azimuth, Body, Polygon, Seed};
 
 use super::Settings;
 
@@ -114,6 +114,9 @@ pub struct Patch {
     /// The wind record to judge it by; all records of the sheet when absent.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub wind: Option<Id>,
+    /// An axis known from elsewhere, weighed like a theory.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub stated_axis: Option<Axis>,
 }
 
 /// A wind record of the study and how to read it.

@@ -35,6 +35,7 @@ fn sheet(path: &Path, patches: &[(&str, Polygon)]) -> Sheet {
             outline: outline.clone(),
             tags: Vec::new(),
             wind: None,
+            stated_axis: None,
         });
     }
     sheet

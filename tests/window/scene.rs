@@ -87,6 +87,7 @@ pub fn sorrel_reach(turn_deg: f64) -> Model {
             outline: truth.outline,
             tags: Vec::new(),
             wind: None,
+            stated_axis: None,
         })
         .collect();
     desk(reach::mosaic(Seed(1)), place, patches)

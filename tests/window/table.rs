@@ -49,7 +49,7 @@ fn small() -> Harness<'static, Bench> {
         outer: [[50.0, 50.0], [150.0, 50.0], [150.0, 150.0], [50.0, 150.0]].map(Point::from).to_vec(),
         holes: vec![],
     };
-    let patch = Patch { id: Id(2), name: "Waves".into(), raster: Id(1), outline, tags: vec![], wind: None };
+    let patch = Patch { id: Id(2), name: "Waves".into(), raster: Id(1), outline, tags: vec![], wind: None, stated_axis: None };
     open(scene::desk(waves, Place::pixels(0.0), vec![patch]), [700.0, 560.0], Theme::Light)
 }
 

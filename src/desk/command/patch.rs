@@ -171,6 +171,7 @@ fn bring(model: &mut Model, path: &Path) {
             outline: shape.outline,
             tags,
             wind: None,
+            stated_axis: None,
         });
     }
     read.notes.iter().for_each(|note| model.session.notices.problem(note.as_str()));
@@ -186,7 +187,7 @@ fn change(model: &mut Model, id: Id, f: impl FnOnce(&mut Patch)) {
 fn add(model: &mut Model, raster: Id, outline: Polygon) {
     let id = model.sheet.fresh_id();
     let name = free_name(model, "Patch");
-    model.sheet.patches.push(Patch { id, name, raster, outline, tags: Vec::new(), wind: None });
+    model.sheet.patches.push(Patch { id, name, raster, outline, tags: Vec::new(), wind: None, stated_axis: None });
     select(model, Some(id));
 }
 

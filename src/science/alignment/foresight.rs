@@ -42,6 +42,20 @@ pub struct Foresight {
     pub drawn: bool,
 }
 
+impl Foresight {
+    /// The same, taken as certain: the whole record is the only draw.
+    pub fn without_draws(&self) -> Self {
+        Self {
+            clouds: self.whole.iter().map(|p| vec![p.clone()]).collect(),
+            drifts: self.drift.map(|(toward, _)| toward.axis()).into_iter().collect(),
+            drawn: false,
+            drift: self.drift,
+            strength: self.strength,
+            whole: self.whole.clone(),
+        }
+    }
+}
+
 /// Lets every theory predict from a regime and its draws. The same bits for any number of threads.
 ///
 /// # Errors

@@ -151,7 +151,7 @@ mod tests {
     }
 
     fn patch(id: u32, outline: Polygon) -> Patch {
-        Patch { id: Id(id), name: format!("Patch {id}"), raster: Id(1), outline, tags: vec![], wind: None }
+        Patch { id: Id(id), name: format!("Patch {id}"), raster: Id(1), outline, tags: vec![], wind: None, stated_axis: None }
     }
 
     #[test]
