@@ -1,11 +1,13 @@
 //! Alignment theories, and the weighing of a measured trend against them.
 
 pub mod bed_instability;
+pub mod discriminator;
 pub mod equivalence;
 pub mod fingering;
 pub mod gross_normal;
 mod judge;
 pub mod likelihood;
+pub mod migration;
 pub mod obliquity;
 pub mod resultant;
 mod theory;
@@ -22,6 +24,8 @@ pub const METHODS: &[&Method] = &[
     &gross_normal::METHOD,
     &bed_instability::METHOD,
     &fingering::METHOD,
+    &discriminator::METHOD,
+    &migration::METHOD,
     &obliquity::METHOD,
     &likelihood::METHOD,
     &equivalence::METHOD,
