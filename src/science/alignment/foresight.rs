@@ -6,7 +6,9 @@ use rayon::prelude::*;
 
 use crate::ground::{Axis, Azimuth, Regime, Seed, Stopped, Work};
 
+use super::discriminator::growth_discriminator;
 use super::gross_normal::gross_normal;
+use super::migration::{Migration, migration};
 use super::resultant::resultant;
 use super::theory::{Prediction, Theory};
 
@@ -40,6 +42,10 @@ pub struct Foresight {
     pub drifts: Vec<Axis>,
     /// Whether the clouds come from draws.
     pub drawn: bool,
+    /// Growth of the fingering trend over that of the bed-instability trend.
+    pub growth_ratio: Option<f64>,
+    /// Which way crests built by bed instability move, at their trend and those that tie with it.
+    pub migration: Vec<Migration>,
 }
 
 impl Foresight {
@@ -49,6 +55,8 @@ impl Foresight {
             clouds: self.whole.iter().map(|p| vec![p.clone()]).collect(),
             drifts: self.drift.map(|(toward, _)| toward.axis()).into_iter().collect(),
             drawn: false,
+            growth_ratio: self.growth_ratio,
+            migration: self.migration.clone(),
             drift: self.drift,
             strength: self.strength,
             whole: self.whole.clone(),
@@ -95,6 +103,8 @@ pub fn foresee(
         clouds,
         drifts,
         drawn,
+        growth_ratio: growth_discriminator(&regime.all, flux_up.ratio),
+        migration: migration(&regime.all, flux_up.ratio),
     })
 }
 

@@ -2,12 +2,14 @@
 
 pub mod bed_instability;
 mod cautions;
+pub mod discriminator;
 pub mod equivalence;
 pub mod fingering;
 mod foresight;
 pub mod gross_normal;
 mod judge;
 pub mod likelihood;
+pub mod migration;
 pub mod obliquity;
 pub mod resultant;
 mod stated;
@@ -35,6 +37,8 @@ pub const METHODS: &[&Method] = &[
     &subsets::STORMS,
     &subsets::SEASON,
     &stated::METHOD,
+    &discriminator::METHOD,
+    &migration::METHOD,
     &obliquity::METHOD,
     &likelihood::METHOD,
     &together::METHOD,
