@@ -9,7 +9,7 @@ use crate::files::wind_table;
 use crate::ground::{Azimuth, Body, Polygon};
 use crate::study::sheet_file::SheetFile;
 use crate::study::sources::{OpenRaster, place_raster};
-use crate::study::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindEntry};
+use crate::study::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
 
 use super::args::Measure;
 use super::run::study;
@@ -48,7 +48,7 @@ pub fn measure(options: &Measure) -> Result<Outcome, Trouble> {
     });
     for (name, outline, tags) in patches(options, &open)? {
         let id = sheet.fresh_id();
-        sheet.patches.push(Patch { id, name, raster: Id(1), outline, tags, wind: None });
+        sheet.patches.push(Patch { id, name, raster: Id(1), outline, tags, winds: WindChoice::All });
     }
     if let Some(file) = &options.winds {
         let entry = wind(file, sheet.fresh_id(), &open.place.body)?;
@@ -111,5 +111,6 @@ fn wind(file: &Path, id: Id, body: &Body) -> Result<WindEntry, Trouble> {
         height_m: 10.0,
         roughness_m: 1e-3,
         body: Some(body.clone()),
+        at: None,
     })
 }

@@ -11,7 +11,7 @@ use crate::ground::{Body, Seed, WindRecord};
 use crate::science::scene::reach;
 
 use super::sheet_file::SheetFile;
-use super::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindEntry};
+use super::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
 
 /// Everything of the demo grows from this seed.
 pub const SEED: Seed = Seed(1);
@@ -113,6 +113,7 @@ pub fn sheet(folder: &Path) -> Sheet {
             height_m: 10.0,
             roughness_m: 1e-3,
             body: Some(Body::halvane()),
+            at: None,
         });
     }
     for (i, truth) in reach::patches().into_iter().enumerate() {
@@ -123,7 +124,7 @@ pub fn sheet(folder: &Path) -> Sheet {
             raster: MOSAIC_ID,
             outline: truth.outline,
             tags: Vec::new(),
-            wind: Some(wind),
+            winds: WindChoice::Chosen(vec![wind]),
         });
     }
     sheet

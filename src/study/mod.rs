@@ -7,6 +7,8 @@ mod findings;
 pub mod fingerprint;
 pub mod glance;
 pub mod handover;
+pub mod judges;
+mod migrate;
 mod patch;
 mod records;
 pub mod run;
@@ -30,5 +32,5 @@ pub use settings::{
     Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw, TrendSettings,
     VerdictSettings, WindSettings,
 };
-pub use sheet::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindEntry};
+pub use sheet::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
 pub use sources::{OpenRaster, Sources};

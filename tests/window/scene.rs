@@ -6,7 +6,7 @@ use std::time::{Duration, Instant};
 use ventifact::desk::{Laid, Model, Opened, TILE, TileKey, TileReader, TileShelf};
 use ventifact::ground::{Affine, Body, BodyShape, Frame, Grid, Place, Projection, Seed, Work};
 use ventifact::science::scene::reach;
-use ventifact::study::{Id, ImageKind, Patch, RasterEntry};
+use ventifact::study::{Id, ImageKind, Patch, RasterEntry, WindChoice};
 
 /// Serves tiles of a grid, coarser ones by averaging the valid pixels.
 pub struct InMemory(pub Grid<f32>);
@@ -86,7 +86,7 @@ pub fn sorrel_reach(turn_deg: f64) -> Model {
             raster: Id(1),
             outline: truth.outline,
             tags: Vec::new(),
-            wind: None,
+            winds: WindChoice::All,
         })
         .collect();
     desk(reach::mosaic(Seed(1)), place, patches)
