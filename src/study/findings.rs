@@ -7,7 +7,7 @@
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
 use super::{
-    BuildingFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id, SeasonFinding, SensitivityFinding,
+    BuildingFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id, MigrationFinding, SeasonFinding, SensitivityFinding,
     SetAside,
 };
 
@@ -221,6 +221,10 @@ pub struct VerdictFinding {
     /// ln of the factor by which bed instability is better than fingering: above 0 speaks for full sand
     /// cover, below for starved ground.
     pub supply_ln: Option<f64>,
+    /// Growth of the fingering trend over that of the bed-instability trend, at the stated flux-up ratio.
+    pub growth_ratio: Option<f64>,
+    /// Which way crests built by bed instability move, at their trend and those that tie with it.
+    pub migration: Vec<MigrationFinding>,
     /// (T_max − T_min)/(T_max + T_min) of the regime.
     pub alignment_strength: Option<f64>,
     /// What would change the verdict, the nearest change first.

@@ -7,6 +7,8 @@ mod findings;
 pub mod fingerprint;
 pub mod glance;
 pub mod handover;
+pub mod judges;
+mod migrate;
 mod patch;
 mod records;
 pub mod run;
@@ -22,6 +24,7 @@ pub mod window;
 pub mod winds;
 
 pub use crate::science::alignment::equivalence::Equivalence as EquivalenceFinding;
+pub use crate::science::alignment::migration::Migration as MigrationFinding;
 pub use crate::science::alignment::{Building as BuildingFinding, Elongation as ElongationFinding};
 pub use crate::science::wind::Sensitivity as SensitivityFinding;
 pub use crate::science::wind::quality::SetAside;
@@ -36,5 +39,5 @@ pub use settings::{
     LettauConstant, Priors, Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw,
     TrendSettings, VerdictSettings, WindSettings,
 };
-pub use sheet::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindEntry};
+pub use sheet::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
 pub use sources::{OpenRaster, Sources};

@@ -5,6 +5,7 @@ use std::sync::{Arc, Mutex, PoisonError};
 
 use crate::ground::{Stopped, Work};
 
+use super::judges::{self, Judges};
 use super::patch::patch_finding;
 use super::together::together;
 use super::window::Detail;
@@ -98,15 +99,18 @@ pub fn run_patch(
         return Ok(Err(format!("its raster “{}” is not open", entry.name)));
     };
     let exact = detail == Detail::Exact;
-    let judges: Vec<_> = winds.iter().filter(|w| patch.wind.is_none_or(|id| id == w.finding.id)).collect();
+    let Judges { records, cautions } = judges::of_patch(sheet, patch, Some(&open.place));
+    let judges: Vec<_> = winds.iter().filter(|w| records.contains(&w.finding.id)).collect();
     let names: Vec<_> = judges.iter().map(|w| w.finding.name.as_str()).collect();
     let key = format!("{} {} {}", fingerprint::of_patch(sheet, patch), patch.name, names.join(" "));
     if let Some(known) = recall(&memo.patches, &key).filter(|_| exact) {
         return Ok(Ok(known));
     }
     match patch_finding(sheet, patch, entry, open, &judges, detail, work)? {
-        Ok(finding) if exact => Ok(Ok(keep(&memo.patches, key, finding))),
-        Ok(finding) => Ok(Ok(Arc::new(finding))),
+        Ok(mut finding) => {
+            finding.cautions.extend(cautions);
+            Ok(Ok(if exact { keep(&memo.patches, key, finding) } else { Arc::new(finding) }))
+        }
         Err(why) => Ok(Err(why)),
     }
 }

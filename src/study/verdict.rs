@@ -91,6 +91,8 @@ fn refused(winds: &WindStudy, why: String) -> VerdictFinding {
         theories: Vec::new(),
         building: alignment::Building::default(),
         supply_ln: None,
+        growth_ratio: winds.foresight.growth_ratio,
+        migration: winds.foresight.migration.clone(),
         alignment_strength: None,
         flips: Vec::new(),
         cautions: Vec::new(),
