@@ -7,8 +7,8 @@
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
 use super::{
-    BuildingFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id, MigrationFinding, SeasonFinding, SensitivityFinding,
-    SetAside,
+    BuildingFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id, MigrationFinding,
+    SeasonFinding, SensitivityFinding, SetAside,
 };
 
 /// All results of one run.

@@ -30,9 +30,9 @@ pub use crate::science::wind::Sensitivity as SensitivityFinding;
 pub use crate::science::wind::quality::SetAside;
 pub use crate::science::wind::regime::{Drift as DriftFinding, Season as SeasonFinding};
 pub use findings::{
-    Discovery, Failure, Findings, Flip, JointFinding, JointTheory, JointTrend, ModeFinding, Node, PatchFinding,
-    RasterFinding, SpectrumFinding, SpectrumPicture, TheoryFinding, TogetherFinding, TrendFinding,
-    VerdictFinding, WindFinding,
+    Discovery, Failure, Findings, Flip, JointFinding, JointTheory, JointTrend, ModeFinding, Node,
+    PatchFinding, RasterFinding, SpectrumFinding, SpectrumPicture, TheoryFinding, TogetherFinding,
+    TrendFinding, VerdictFinding, WindFinding,
 };
 pub use records::{SETTINGS, Setting, SettingKind, SettingValue};
 pub use settings::{

@@ -48,6 +48,7 @@ pub fn study(
             ThresholdLaw::IversenWhite => Threshold::IversenWhite,
             ThresholdLaw::ShaoLu => Threshold::ShaoLu,
         },
+        threshold_ustar: s.threshold_ustar,
         transport: match s.transport_law {
             TransportLaw::DriftPotential => Transport::DriftPotential,
             TransportLaw::Bagnold => Transport::Physical(Law::Bagnold),

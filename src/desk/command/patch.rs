@@ -4,7 +4,7 @@ use std::path::{Path, PathBuf};
 
 use crate::desk::{Ask, MergeKey, Model, Purpose};
 use crate::files::layers::read_patches;
-use crate::ground::{Point, Polygon};
+use crate::ground::{Axis, Point, Polygon};
 use crate::study::{Id, Patch, WindChoice};
 
 use super::Record;
@@ -32,6 +32,11 @@ pub enum PatchCommand {
     JudgeBy {
         id: Id,
         winds: WindChoice,
+    },
+    /// An axis to weigh like a theory, or none.
+    StateAxis {
+        id: Id,
+        axis: Option<Axis>,
     },
     AskBring,
     /// Adds the outlines of a GeoPackage or GeoJSON file to the raster on the table.
@@ -62,6 +67,12 @@ impl PatchCommand {
                 Record::new("patch.judge-by", "Judge by wind", "Which wind records the verdicts use.")
                     .editing()
             }
+            Self::StateAxis { .. } => Record::new(
+                "patch.state-axis",
+                "State an axis",
+                "An axis known from elsewhere, weighed like a theory.",
+            )
+            .editing(),
             Self::AskBring => Record::new(
                 "patch.bring",
                 "Bring in patches…",
@@ -113,6 +124,7 @@ impl PatchCommand {
             | Self::Rename { id, .. }
             | Self::Tag { id, .. }
             | Self::JudgeBy { id, .. }
+            | Self::StateAxis { id, .. }
                 if model.sheet.patch(*id).is_none() =>
             {
                 Some("the patch is gone")
@@ -135,6 +147,7 @@ impl PatchCommand {
             Self::Rename { id, name } => change(model, id, |patch| patch.name = name),
             Self::Tag { id, tags } => change(model, id, |patch| patch.tags = tags),
             Self::JudgeBy { id, winds } => change(model, id, |patch| patch.winds = winds),
+            Self::StateAxis { id, axis } => change(model, id, |patch| patch.stated_axis = axis),
             Self::AskBring => model.session.ask = Some(Ask::new(Purpose::BringPatches, "")),
             Self::Bring(path) => bring(model, &path),
             Self::Select(id) => select(model, id),
