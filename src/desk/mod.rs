@@ -16,6 +16,7 @@ mod notices;
 mod plates;
 pub mod readout;
 mod results;
+pub mod sand;
 mod session;
 mod tiles;
 mod view;

@@ -3,6 +3,7 @@
 use serde::{Deserialize, Serialize};
 
 use super::GasState;
+use super::gas::tidy;
 
 /// A planet or moon. Lengths in metres, gravity in m s⁻².
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
@@ -45,6 +46,16 @@ impl BodyShape {
 
     pub fn is_sphere(self) -> bool {
         self.equatorial_m == self.polar_m
+    }
+
+    /// `"sphere of radius 1420 km"`.
+    pub fn in_words(self) -> String {
+        let km = |m: f64| m / 1e3;
+        if self.is_sphere() {
+            format!("sphere of radius {} km", km(self.equatorial_m))
+        } else {
+            format!("ellipsoid of {} × {:.3} km", km(self.equatorial_m), km(self.polar_m))
+        }
     }
 
     /// (a − b) / a.
@@ -99,6 +110,13 @@ impl Body {
     /// The same body under air of which density and viscosity are stated, or none.
     pub fn with_air(self, air: Option<Air>) -> Self {
         Self { air, gas: None, ..self }
+    }
+
+    /// The gas and the air it makes, in one line.
+    pub fn air_in_words(&self) -> String {
+        let Some(Air { density, viscosity }) = self.air else { return "none that is known".into() };
+        let air = format!("density {} kg/m³, viscosity {viscosity:.3e} Pa s", tidy(density));
+        self.gas.as_ref().map_or(air.clone(), |gas| format!("{}: {air}", gas.in_words()))
     }
 
     /// What makes the body impossible; `None` when nothing does.

@@ -35,7 +35,7 @@ pub enum Gas {
 #[serde(deny_unknown_fields)]
 pub struct GasShare {
     pub gas: Gas,
-    /// Share of the molecules (mole fraction), above 0; all shares together make 1.
+    /// Share of the molecules (mole fraction), above 0 and at most 1; counted relative to the sum of all.
     pub share: f64,
 }
 
@@ -178,12 +178,11 @@ impl GasState {
 
     /// What makes the state impossible; `None` when nothing does.
     pub fn problem(&self) -> Option<String> {
+        if self.mix.is_empty() {
+            return Some("no gas is named; give at least one with its share".into());
+        }
         if let Some(bad) = self.mix.iter().find(|part| !(part.share > 0.0 && part.share <= 1.0)) {
             return Some(format!("the share of {} is {}; it must lie in 0 to 1", bad.gas.label(), bad.share));
-        }
-        let sum: f64 = self.mix.iter().map(|part| part.share).sum();
-        if !(0.98..=1.02).contains(&sum) {
-            return Some(format!("the shares of its gases make {sum}; together they must make 1"));
         }
         for (what, value, least, greatest, unit) in [
             ("pressure", self.pressure_pa, 1e-3, 1e9, "Pa"),
@@ -199,11 +198,9 @@ impl GasState {
 
     /// `"N2 98.5 %, CH4 1.5 %; 1.467 bar, 94 K"`.
     pub fn in_words(&self) -> String {
-        let mix: Vec<_> = self
-            .mix
-            .iter()
-            .map(|part| format!("{} {} %", part.gas.label(), tidy(100.0 * part.share)))
-            .collect();
+        let sum: f64 = self.mix.iter().map(|part| part.share).sum();
+        let percent = |part: &GasShare| format!("{} {} %", part.gas.label(), tidy(100.0 * part.share / sum));
+        let mix: Vec<_> = self.mix.iter().map(percent).collect();
         let pressure = match self.pressure_pa {
             p if p >= 1e4 => format!("{} bar", tidy(p / 1e5)),
             p => format!("{} Pa", tidy(p)),
@@ -212,9 +209,9 @@ impl GasState {
     }
 }
 
-/// Six significant digits at most, so that 100 × 0.985 reads 98.5.
-fn tidy(value: f64) -> f64 {
-    format!("{value:.5e}").parse().unwrap_or(value)
+/// Four significant digits, so that 100 × 0.985 reads 98.5.
+pub(super) fn tidy(value: f64) -> f64 {
+    format!("{value:.3e}").parse().unwrap_or(value)
 }
 
 /// Density of an ideal gas, kg m⁻³: `pressure` Pa, `molar_mass` kg mol⁻¹, `temperature` K.
@@ -279,12 +276,20 @@ mod tests {
         let good = GasState::ideal(&[(Gas::Nitrogen, 0.985), (Gas::Methane, 0.015)], 1.467e5, 94.0);
         assert_eq!(good.problem(), None);
         assert_eq!(good.in_words(), "N2 98.5 %, CH4 1.5 %; 1.467 bar, 94 K");
-        let half = GasState::ideal(&[(Gas::Nitrogen, 0.5)], 1e5, 94.0);
-        assert!(half.problem().expect("a problem").contains("make 0.5"));
+        let percent = GasState::ideal(&[(Gas::Nitrogen, 98.5)], 1e5, 94.0);
+        assert!(percent.problem().expect("a problem").contains("share of N2 is 98.5"));
         let empty = GasState { mix: Vec::new(), ..good.clone() };
-        assert!(empty.problem().expect("a problem").contains("make 0"));
+        assert!(empty.problem().expect("a problem").contains("no gas"));
         let negative = GasState { temperature_k: -3.0, ..good };
         assert!(negative.problem().expect("a problem").contains("temperature is -3 K"));
+    }
+
+    #[test]
+    fn shares_count_relative_to_their_sum() {
+        let whole = GasState::ideal(&[(Gas::CarbonDioxide, 0.8), (Gas::Argon, 0.2)], 1e5, 250.0).air();
+        let half = GasState::ideal(&[(Gas::CarbonDioxide, 0.4), (Gas::Argon, 0.1)], 1e5, 250.0).air();
+        assert_close!(half.density, whole.density, 1e-12, "density");
+        assert_close!(half.viscosity, whole.viscosity, 1e-18, "viscosity");
     }
 
     proptest! {

@@ -6,7 +6,7 @@
 
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
-use super::{DriftFinding, Id, SeasonFinding, SetAside};
+use super::{BirthFinding, DriftFinding, Id, SandFinding, SeasonFinding, SetAside};
 
 /// All results of one run.
 #[derive(Clone, Debug, Default, PartialEq)]
@@ -66,6 +66,8 @@ pub struct PatchFinding {
     /// One plain sentence with uncertainty and caveat.
     pub sentence: String,
     pub cautions: Vec<Caution>,
+    /// The spacing against that of first dunes, by each wind record whose air is known.
+    pub birth: Vec<BirthFinding>,
 }
 
 /// The trend from the structure tensor.
@@ -185,6 +187,8 @@ pub struct WindFinding {
     pub rose: Vec<SandFlow>,
     pub seasons: Vec<SeasonFinding>,
     pub cautions: Vec<Caution>,
+    /// The sand under this air; `None` without air or gravity.
+    pub sand: Option<SandFinding>,
 }
 
 /// A patch judged by one wind record.

@@ -6,6 +6,7 @@ pub mod demo;
 mod findings;
 pub mod fingerprint;
 pub mod glance;
+mod grains;
 pub mod handover;
 mod patch;
 mod records;
@@ -25,6 +26,7 @@ pub use findings::{
     Failure, Findings, ModeFinding, Node, PatchFinding, RasterFinding, SpectrumFinding, SpectrumPicture,
     TheoryFinding, TrendFinding, VerdictFinding, WindFinding,
 };
+pub use grains::{Birth, BirthFinding, Doubtful, FirstWave, SandFinding, SandThreshold};
 pub use records::{SETTINGS, Setting, SettingKind, SettingValue};
 pub use settings::{
     LettauConstant, Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw,

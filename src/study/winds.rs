@@ -5,7 +5,7 @@ use crate::science::wind::law::Law;
 use crate::science::wind::threshold::Threshold;
 use crate::science::wind::{self, Site, Transport, WindError};
 
-use super::{LettauConstant, Sheet, ThresholdLaw, TransportLaw, WindEntry, WindFinding};
+use super::{LettauConstant, Sheet, ThresholdLaw, TransportLaw, WindEntry, WindFinding, grains};
 
 /// A record's finding and what the theories need of it.
 #[derive(Clone, Debug, PartialEq)]
@@ -80,6 +80,7 @@ pub fn study(
         rose: a.rose,
         seasons: a.seasons,
         cautions: a.cautions,
+        sand: grains::sand(entry, s),
     };
     Ok(WindStudy { finding, regime: a.regime, draws: a.draws })
 }

@@ -3,6 +3,7 @@
 
 use serde_json::{Value, json};
 
+use super::sand;
 use crate::ground::{Axis, Caution, LengthUnit};
 use crate::study::{
     DriftFinding, Findings, PatchFinding, RasterFinding, Sheet, SpectrumFinding, TrendFinding,
@@ -62,6 +63,7 @@ fn patch(p: &PatchFinding) -> Value {
         "centre_lonlat_deg": p.centre.map(|c| [c.lon, c.lat]),
         "trend": trend(&p.trend), "spectrum": spectrum(&p.spectrum, metres),
         "verdicts": p.verdicts.iter().map(verdict).collect::<Vec<_>>(),
+        "birth": p.birth.iter().map(sand::birth).collect::<Vec<_>>(),
         "finding": p.sentence, "cautions": cautions(&p.cautions),
     })
 }
@@ -116,6 +118,7 @@ fn wind(w: &WindFinding) -> Value {
         "drift_potential": w.fryberger.as_ref().map(drift), "flux": drift(&w.flux), "law": w.law,
         "threshold_ustar_m_per_s": w.threshold_ustar, "threshold_speed_m_per_s": w.threshold_speed_at_height,
         "seasons": w.seasons.iter().map(|s| json!({ "name": s.name, "flux": drift(&s.drift) })).collect::<Vec<_>>(),
+        "sand": w.sand.as_ref().map(sand::sand),
         "cautions": cautions(&w.cautions),
     })
 }

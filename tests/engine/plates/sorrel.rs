@@ -307,6 +307,7 @@ pub fn wind_finding() -> WindFinding {
             "short-record",
             "The wind record spans two years; the dunes may be older than its winds.",
         )],
+        sand: None,
     }
 }
 
@@ -332,6 +333,7 @@ pub fn patch_finding(reach: &Reach) -> PatchFinding {
             Caution::new("look-bias", "The trend lies within 12° of the direction that the radar look favours; part of the alignment may be the look’s."),
             Caution::new("tensor-spectrum", "Tensor and spectrum agree within their intervals, but the spectrum rests on 12 windows only."),
         ],
+        birth: Vec::new(),
     }
 }
 
