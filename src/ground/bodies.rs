@@ -139,6 +139,11 @@ impl Body {
             .map_or_else(|| Self::unnamed(shape), |body| Self { shape, ..body })
     }
 
+    /// Whether it is the Earth by its size, under whatever name and air.
+    pub fn is_earth(&self) -> bool {
+        Self::of_shape(self.shape).name == Self::earth().name
+    }
+
     /// Where a figure of this body comes from; `None` when it is not the one this program knows the body
     /// with, so that file or user stated it.
     pub fn source(&self, figure: BodyFigure) -> Option<&'static str> {
@@ -171,6 +176,13 @@ mod tests {
         assert_eq!(Body::of_shape(BodyShape::sphere(3_389_500.0)).name, "Mars");
         assert_eq!(Body::of_shape(BodyShape::sphere(2_439_700.0)).name, "Mercury");
         assert_eq!(Body::of_shape(BodyShape::sphere(2_575_000.0)).name, "unnamed body");
+    }
+
+    #[test]
+    fn the_earth_is_known_by_its_size() {
+        let hot = Body { name: "hot desert".into(), ..Body::earth() }.with_air(None);
+        assert!(hot.is_earth());
+        assert!(!Body { name: "Earth".into(), ..Body::venus() }.is_earth());
     }
 
     #[test]

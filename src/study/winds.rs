@@ -28,7 +28,7 @@ pub fn study(
     work: &Work,
 ) -> Result<WindStudy, WindError> {
     let body = entry.body.clone().unwrap_or_else(Body::earth);
-    let is_earth = body.name == Body::earth().name;
+    let is_earth = body.is_earth();
     let s = &sheet.settings.wind;
     let site = Site {
         height_m: entry.height_m,
