@@ -24,7 +24,7 @@ pub use angle::{Axis, Azimuth};
 pub use bodies::BodyFigure;
 pub use body::{Air, Body, BodyShape};
 pub use caution::Caution;
-pub use flow::SandFlow;
+pub use flow::{Regime, SandFlow};
 pub use gas::{Gas, GasShare, GasState, Sutherland};
 pub use geodesic::Geodesic;
 pub use grid::Grid;

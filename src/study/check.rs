@@ -4,7 +4,7 @@ use std::collections::BTreeSet;
 
 use crate::ground::Body;
 
-use super::{Failure, Id, SETTINGS, Sheet, Sources};
+use super::{Failure, Id, SETTINGS, Sheet, Sources, WindChoice, judges};
 
 /// Bodies that cannot be, and names that mean two of them.
 fn bodies(sheet: &Sheet, say: &mut impl FnMut(String, String)) {
@@ -48,10 +48,8 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
             say("settings".into(), problem);
         }
     }
-    if !sheet.settings.verdict.priors.iter().all(|p| p.is_finite() && *p >= 0.0)
-        || sheet.settings.verdict.priors.iter().sum::<f64>() <= 0.0
-    {
-        say("settings".into(), "verdict.priors must be numbers ≥ 0, not all zero".into());
+    if sheet.settings.verdict.priors.weights().iter().sum::<f64>() <= 0.0 {
+        say("settings".into(), "verdict.priors are all zero; at least one theory needs a weight".into());
     }
     bodies(sheet, &mut say);
     let bins = 180.0 / sheet.settings.statistics.rose_bin_deg;
@@ -63,8 +61,15 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
         if patch.outline.outer.len() < 3 || patch.outline.area() <= 0.0 {
             say(what.clone(), "its outline has no area; outline it again".into());
         }
-        if let Some(wind) = patch.wind.filter(|id| sheet.wind(*id).is_none()) {
+        for wind in patch.winds.named().iter().filter(|id| sheet.wind(**id).is_none()) {
             say(what.clone(), format!("it names wind record {}, which the sheet does not have", wind.0));
+        }
+        if matches!(&patch.winds, WindChoice::Chosen(ids) if ids.is_empty()) {
+            say(what.clone(), "it chooses its wind records, but names none".into());
+        }
+        if let (WindChoice::Nearest, Some(open)) = (&patch.winds, sources.rasters.get(&patch.raster)) {
+            let judges = judges::of_patch(sheet, patch, Some(&open.place));
+            judges.cautions.into_iter().for_each(|c| say(what.clone(), c.text));
         }
         match (sheet.raster(patch.raster), sources.rasters.get(&patch.raster), patch.outline.bounds()) {
             (None, ..) => {

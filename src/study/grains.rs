@@ -280,6 +280,7 @@ mod tests {
             height_m: 5.0,
             roughness_m: 1e-3,
             body,
+            at: None,
         }
     }
 

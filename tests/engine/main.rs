@@ -12,4 +12,5 @@ mod layouts;
 mod orientation;
 mod plates;
 mod samples;
+mod theories;
 mod tiff_writer;

@@ -3,6 +3,7 @@
 use ventifact::assert_close;
 use ventifact::ground::{Azimuth, SandFlow};
 use ventifact::science::alignment::bed_instability::bed_instability;
+use ventifact::science::alignment::discriminator::growth_discriminator;
 use ventifact::science::alignment::fingering::fingering;
 use ventifact::science::alignment::gross_normal::{gross_normal, two_wind_obliquity, two_wind_ratio};
 use ventifact::science::alignment::resultant::resultant;
@@ -219,5 +220,21 @@ fn fingering_is_not_the_resultant() {
             }
         }
         assert_close!(greatest, want, 0.1, "Γ {flux_up}");
+    }
+}
+
+/// σ(α_F)/σ(α_BI) at Γ = 1.6, worked for this program with an independent grid and root solver.
+#[test]
+fn growth_of_fingers_over_the_fastest() {
+    for (n, divergence, want) in [
+        (1.0, 60.0, 0.4356),
+        (2.0, 60.0, 0.3776),
+        (1.0, 120.0, 1.0),
+        (2.0, 120.0, 0.7922),
+        (3.0, 135.0, 0.5070),
+        (5.0, 150.0, 0.1830),
+    ] {
+        let got = growth_discriminator(&two(n, divergence), 1.6).expect("a ratio");
+        assert_close!(got, want, 6e-5, "N {n}, divergence {divergence}");
     }
 }

@@ -3,7 +3,7 @@
 use std::f64::consts::PI;
 
 use crate::ground::{Axis, Method, Read, SandFlow, Source, Symbol};
-use crate::numeric::root::brent;
+use crate::numeric::harmonics::Harmonics;
 
 /// The bed-instability rule.
 pub const METHOD: Method = Method {
@@ -14,7 +14,10 @@ pub const METHOD: Method = Method {
               σ = Im(z e^{−iα}) + ½Γ (Q − Re(w e^{−2iα})), z = Σ sᵢ qᵢ e^{iθᵢ}, w = Σ qᵢ e^{2iθᵢ}",
     symbols: SYMBOLS,
     assumptions: &["Full sand cover", "Flux over a crest is 1 + Γ |sin| times that over flat ground"],
-    limits: &["Γ is 1.5 to 2 by source; with Γ = 0 the rule is that of gross bedform-normal transport"],
+    limits: &[
+        "Γ is 1.5 to 2 by source; with Γ = 0 the rule is that of gross bedform-normal transport",
+        "Trends whose growth agrees to one part in 10⁹ tie, and all are given",
+    ],
     sources: &[
         COURRECH,
         Source {
@@ -72,6 +75,11 @@ pub fn growth(flows: &[SandFlow], flux_up: f64, axis: Axis) -> f64 {
         .sum()
 }
 
+/// Values of σ closer than this share tie.
+const TIE: f64 = 1e-9;
+/// Trends closer than this, degrees, are one.
+const SAME_DEG: f64 = 1e-5;
+
 /// The trend that grows fastest; `None` without flow.
 pub fn bed_instability(flows: &[SandFlow], flux_up: f64) -> Option<BedInstability> {
     let mut folded: Vec<(f64, f64)> =
@@ -87,28 +95,28 @@ pub fn bed_instability(flows: &[SandFlow], flux_up: f64) -> Option<BedInstabilit
     let (mut x, mut y) = folded.iter().map(single).fold((0.0, 0.0), |(x, y), (a, b)| (x + a, y + b));
 
     // Sector by sector, from the last flow's azimuth less 180° to the first, then on. A kink of |sin|
-    // points down, so every maximum lies inside a sector, where dσ/dα crosses zero downward.
+    // points down, so every maximum lies inside a sector, at a root of the slope.
+    let nothing = 1e-14 * total * (1.0 + flux_up);
     let mut from = folded[folded.len() - 1].0 - PI;
-    let mut maxima: Vec<(f64, f64)> = Vec::new();
+    let (mut greatest, mut maxima, mut roots) = (0.0f64, Vec::new(), Vec::new());
     for flow in &folded {
         let to = flow.0;
-        // dσ/dα = −Re(z e^{−iα}) − Γ Im(w e^{−2iα})
-        let slope = |a: f64| {
-            let (s, c) = a.sin_cos();
-            let (s2, c2) = (2.0 * a).sin_cos();
-            -(x * c + y * s) - flux_up * (wy * c2 - wx * s2)
+        let growth = Harmonics {
+            mean: 0.5 * flux_up * total,
+            one: (y, -x),
+            two: (-0.5 * flux_up * wx, -0.5 * flux_up * wy),
         };
-        let value = |a: f64| {
-            let (s, c) = a.sin_cos();
-            let (s2, c2) = (2.0 * a).sin_cos();
-            (y * c - x * s) + 0.5 * flux_up * (total - (wx * c2 + wy * s2))
-        };
-        let steps = ((to - from).to_degrees() / 2.0).ceil().max(1.0) as usize;
-        for k in 0..steps {
-            let at = |k: usize| from + (to - from) * k as f64 / steps as f64;
-            let (a, b) = (at(k), at(k + 1));
-            if slope(a) > 0.0 && slope(b) <= 0.0 {
-                maxima.extend(brent(slope, a, b, 1e-13).map(|peak| (value(peak), peak)));
+        let slope = growth.derivative();
+        let (middle, half) = (0.5 * (from + to), 0.5 * (to - from));
+        let reach =
+            growth.at(middle) + slope.at(middle).abs() * half + 0.5 * growth.curvature_bound() * half * half;
+        if half > 0.0 && reach >= greatest * (1.0 - 2.0 * TIE) {
+            roots.clear();
+            slope.roots(from, to, nothing, &mut roots);
+            for peak in &roots {
+                let value = growth.at(*peak);
+                greatest = greatest.max(value);
+                maxima.push((value, *peak));
             }
         }
         let (a, b) = single(flow);
@@ -116,11 +124,10 @@ pub fn bed_instability(flows: &[SandFlow], flux_up: f64) -> Option<BedInstabilit
         y -= 2.0 * b;
         from = to;
     }
-    let greatest = maxima.iter().map(|m| m.0).fold(0.0, f64::max);
     let mut axes: Vec<Axis> = Vec::new();
-    for (_, peak) in maxima.iter().filter(|m| m.0 >= greatest * (1.0 - 1e-9)) {
+    for (_, peak) in maxima.iter().filter(|m| m.0 >= greatest * (1.0 - TIE)) {
         let axis = Axis::from_deg(peak.to_degrees());
-        if axes.iter().all(|a| a.separation(axis) > 1e-4) {
+        if axes.iter().all(|a| a.separation(axis) > SAME_DEG) {
             axes.push(axis);
         }
     }

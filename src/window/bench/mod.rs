@@ -2,6 +2,7 @@
 
 mod body;
 mod ground;
+mod judges;
 mod plate;
 mod sand;
 mod spacing;
