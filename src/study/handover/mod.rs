@@ -5,6 +5,7 @@ mod json;
 mod layers;
 mod methods;
 mod sand;
+mod weighing;
 mod write;
 
 pub use json::findings_json;
