@@ -17,7 +17,7 @@ pub fn body(body: &Body) -> Vec<Fact> {
         hint: body.source(figure).unwrap_or(STATED),
         method: "",
     };
-    let gravity = body.gravity.map_or("not known".into(), |g| format!("{} m/s²", numbers::significant(g, 4)));
+    let gravity = body.gravity.map_or("not known".into(), |g| format!("{} m/s²", numbers::plain(g, 4)));
     let mut facts = vec![
         row("Shape", body.shape.in_words(), BodyFigure::Shape),
         row("Gravity", gravity, BodyFigure::Gravity),
@@ -107,17 +107,23 @@ pub fn sand(sand: &SandFinding) -> Vec<Fact> {
     ]
 }
 
-/// `"0.278"` and `"0.24–0.33"`.
+/// `"0.278"` and `"0.241–0.331"`, with as many decimals as the value bears.
 pub fn doubtful(figure: Doubtful) -> [String; 2] {
     let Doubtful { value, low, high } = figure;
-    let figures = |v| numbers::significant(v, if v < 0.1 { 2 } else { 3 });
-    [figures(value), format!("{}–{}", figures(low), figures(high))]
+    let decimals = match value {
+        v if v < 0.5 => 3,
+        v if v < 20.0 => 2,
+        _ => 1,
+    };
+    let [value, low, high] = [value, low, high].map(|v| numbers::fixed(v, decimals));
+    [value, format!("{low}–{high}")]
 }
 
 #[cfg(test)]
 mod tests {
-    use super::body;
+    use super::{body, doubtful};
     use crate::ground::Body;
+    use crate::study::Doubtful;
 
     #[test]
     fn every_figure_says_where_it_is_from() {
@@ -128,6 +134,14 @@ mod tests {
         assert!(moon.iter().all(|fact| fact.method.is_empty() || fact.record().is_some()));
         let changed = body(&Body { gravity: Some(1.0), ..Body::cold_nitrogen_moon() });
         assert!(changed[1].hint.contains("this sheet"), "{}", changed[1].hint);
+    }
+
+    #[test]
+    fn a_range_has_the_decimals_of_its_value() {
+        let thin = doubtful(Doubtful { value: 0.092, low: 0.0781, high: 0.1188 });
+        assert_eq!(thin, ["0.092", "0.078–0.119"]);
+        let fast = doubtful(Doubtful { value: 38.02, low: 30.0, high: 51.27 });
+        assert_eq!(fast, ["38.0", "30.0–51.3"]);
     }
 
     #[test]

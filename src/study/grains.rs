@@ -209,7 +209,7 @@ pub fn birth(
     let [first, last] = sand.first_wave_m;
     let ratio = [least / last, greatest / first];
     let span = format!("{} to {}", length(first, unit), length(last, unit));
-    let sand_of = format!("sand under the air of {}", sand.body);
+    let sand_of = format!("sand under the air of “{}”", sand.body);
     let (standing, sentence) = if ratio[0] > 1.0 {
         let times = format!("{} to {} times", times(ratio[0]), times(ratio[1]));
         (Birth::Grown, format!("{times} the spacing of first dunes ({span} for {sand_of}): grown, not new."))

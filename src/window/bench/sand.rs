@@ -1,7 +1,7 @@
 //! The sand on the winds page, as a table of thresholds and what follows; whether a spacing is new, on the
 //! spacing page; and the body of a record.
 
-use egui::{Grid, RichText, Ui};
+use egui::{Grid, Label, RichText, Ui};
 
 use super::body::pick;
 use crate::desk::{Command, Model, WindCommand, sand};
@@ -19,7 +19,7 @@ pub fn show(ui: &mut Ui, model: &Model, finding: &WindFinding) {
     let grain = 1e6 * model.sheet.settings.wind.grain_m;
     ui.label(
         RichText::new(format!(
-            "Wind that starts grains of {grain:.0} µm on {}, and how far in doubt.",
+            "{}: wind that starts grains of {grain:.0} µm, and how far in doubt.",
             sand.body
         ))
         .small()
@@ -48,8 +48,8 @@ fn row(ui: &mut Ui, threshold: &SandThreshold, soft: egui::Color32) {
         let [value, range] = sand::doubtful(figure);
         ui.vertical(|ui| {
             ui.spacing_mut().item_spacing.y = 0.0;
-            ui.label(value);
-            ui.label(RichText::new(range).small().color(soft));
+            ui.add(Label::new(value).extend());
+            ui.add(Label::new(RichText::new(range).small().color(soft)).extend());
         });
     }
     ui.end_row();
