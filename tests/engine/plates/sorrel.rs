@@ -1,13 +1,13 @@
 //! Invented findings from Sorrel Reach on Halvane, as a run would return them.
 
-use ventifact::ground::{
-    Affine, Air, Axis, Azimuth, Body, BodyShape, Caution, Frame, Grid, LengthUnit, Place,
-};
+use ventifact::ground::{Affine, Axis, Azimuth, Body, Caution, Frame, Grid, LengthUnit, Place};
 use ventifact::ground::{Point, Polygon, Projection, SandFlow};
 use ventifact::plate::Recipe;
 use ventifact::plate::map::{Picture, toned};
+use ventifact::study::{
+    BuildingFinding, SpectrumPicture, TheoryFinding, Tone, TrendFinding, VerdictFinding, WindFinding,
+};
 use ventifact::study::{DriftFinding, Id, ModeFinding, Node, PatchFinding, RasterFinding, SpectrumFinding};
-use ventifact::study::{BuildingFinding, SpectrumPicture, TheoryFinding, Tone, TrendFinding, VerdictFinding, WindFinding};
 
 /// A trend about `axis` with the given spread of the rose.
 pub fn trend(axis: f64, spread: f64) -> TrendFinding {
@@ -220,21 +220,12 @@ pub struct Reach {
     pub size: [f64; 2],
 }
 
-pub fn halvane() -> Body {
-    Body {
-        name: "Halvane".into(),
-        shape: BodyShape::sphere(1_420_000.0),
-        gravity: Some(1.1),
-        air: Some(Air { density: 2.8, viscosity: 1.7e-5 }),
-    }
-}
-
 pub fn points(list: &[(f64, f64)]) -> Vec<Point> {
     list.iter().map(|(x, y)| Point::new(*x, *y)).collect()
 }
 
 pub fn reach() -> Reach {
-    let body = halvane();
+    let body = Body::halvane();
     let projection =
         Projection::new("+proj=stere +lat_0=12 +lon_0=40 +R=1420000", body.shape).expect("stere");
     let (sin, cos) = 20f64.to_radians().sin_cos();
