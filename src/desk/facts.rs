@@ -386,6 +386,7 @@ mod tests {
             verdicts: Vec::new(),
             sentence: String::new(),
             cautions: Vec::new(),
+            birth: Vec::new(),
         };
         let facts = trend(&finding).into_iter().chain(spacing(&finding));
         for fact in facts.filter(|fact| !fact.method.is_empty()) {

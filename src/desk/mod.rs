@@ -16,6 +16,7 @@ mod notices;
 mod plates;
 pub mod readout;
 mod results;
+pub mod sand;
 mod session;
 mod tiles;
 mod view;
@@ -24,8 +25,8 @@ pub use crate::files::raster::Bands;
 pub use crate::files::wind_table::{DirectionSense, SpeedUnit, WindImport, WindLayout, ZeroDirection};
 pub use answer::{Answer, absorb};
 pub use command::{
-    AskCommand, Chord, Command, DrawCommand, JobCommand, PatchCommand, PlateCommand, RasterCommand, Record,
-    SettingCommand, SheetCommand, ViewCommand, WindCommand, apply, listed,
+    AskCommand, BodyCommand, Chord, Command, DrawCommand, JobCommand, PatchCommand, PlateCommand,
+    RasterCommand, Record, SettingCommand, SheetCommand, ViewCommand, WindCommand, apply, listed,
 };
 pub use engine::SheetError;
 pub use history::{History, MergeKey};

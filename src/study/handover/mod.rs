@@ -1,8 +1,10 @@
 //! What leaves the program: the findings as JSON, tables and layers, the methods as a page.
 
+mod bodies;
 mod json;
 mod layers;
 mod methods;
+mod sand;
 mod weighing;
 mod write;
 
