@@ -6,7 +6,7 @@
 
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
-use super::{DriftFinding, Id, SeasonFinding, SetAside};
+use super::{CalendarFinding, DriftFinding, Id, RoundingFinding, SeasonFinding, SetAside, ThinningFinding};
 
 /// All results of one run.
 #[derive(Clone, Debug, Default, PartialEq)]
@@ -185,6 +185,11 @@ pub struct WindFinding {
     pub rose: Vec<SandFlow>,
     pub seasons: Vec<SeasonFinding>,
     pub cautions: Vec<Caution>,
+    /// By years, months and seasons; `None` without a clock or without sand.
+    pub calendar: Option<CalendarFinding>,
+    /// What longer intervals and coarser classes would have hidden.
+    pub thinning: Option<ThinningFinding>,
+    pub rounding: RoundingFinding,
 }
 
 /// A patch judged by one wind record.

@@ -21,8 +21,11 @@ mod verdict;
 pub mod window;
 pub mod winds;
 
+pub use crate::science::wind::calendar::{Calendar as CalendarFinding, Period as PeriodFinding};
 pub use crate::science::wind::quality::SetAside;
 pub use crate::science::wind::regime::{Drift as DriftFinding, Season as SeasonFinding};
+pub use crate::science::wind::rounding::Rounding as RoundingFinding;
+pub use crate::science::wind::thinning::{Changed as ChangedFinding, Thinning as ThinningFinding};
 pub use findings::{
     Failure, Findings, ModeFinding, Node, PatchFinding, RasterFinding, SpectrumFinding, SpectrumPicture,
     TheoryFinding, TrendFinding, VerdictFinding, WindFinding,

@@ -76,6 +76,9 @@ pub fn study(
         rose: a.rose,
         seasons: a.seasons,
         cautions: a.cautions,
+        calendar: a.calendar,
+        thinning: a.thinning,
+        rounding: a.rounding,
     };
     Ok(WindStudy { finding, regime: a.regime, draws: a.draws })
 }

@@ -9,6 +9,8 @@ use crate::study::{
     VerdictFinding, WindFinding,
 };
 
+use super::records;
+
 /// The version of the layout.
 pub const FORMAT: u32 = 1;
 
@@ -116,11 +118,14 @@ fn wind(w: &WindFinding) -> Value {
         "drift_potential": w.fryberger.as_ref().map(drift), "flux": drift(&w.flux), "law": w.law,
         "threshold_ustar_m_per_s": w.threshold_ustar, "threshold_speed_m_per_s": w.threshold_speed_at_height,
         "seasons": w.seasons.iter().map(|s| json!({ "name": s.name, "flux": drift(&s.drift) })).collect::<Vec<_>>(),
+        "calendar": w.calendar.as_ref().map(records::calendar),
+        "thinning": w.thinning.as_ref().map(records::thinning),
+        "rounding": records::rounding(&w.rounding),
         "cautions": cautions(&w.cautions),
     })
 }
 
-fn drift(d: &DriftFinding) -> Value {
+pub(super) fn drift(d: &DriftFinding) -> Value {
     json!({
         "unit": d.unit, "total": d.total, "resultant": d.resultant, "ratio": d.ratio, "ratio_ci95": d.ratio_ci95,
         "toward_deg": d.toward.map(|a| a.deg()), "toward_ci95_half_deg": d.toward_ci95_half_deg,
