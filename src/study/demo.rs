@@ -140,6 +140,7 @@ fn import() -> WindImport {
         missing: Vec::new(),
         zero_direction: ZeroDirection::North,
         day_first: false,
+        only: None,
     }
 }
 

@@ -9,6 +9,8 @@ mod guards;
 mod hostile;
 mod jpeg_writer;
 mod layouts;
+mod netcdf;
+mod netcdf_writer;
 mod orientation;
 mod plates;
 mod samples;

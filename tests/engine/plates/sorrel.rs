@@ -307,6 +307,9 @@ pub fn wind_finding() -> WindFinding {
             "short-record",
             "The wind record spans two years; the dunes may be older than its winds.",
         )],
+        calendar: None,
+        thinning: None,
+        rounding: Default::default(),
     }
 }
 
