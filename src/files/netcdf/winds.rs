@@ -39,8 +39,8 @@ pub struct Winds {
     pub reasons: Vec<String>,
 }
 
-/// A grid of the whole globe in quarter degrees has a million.
-const MOST_CELLS: u64 = 2_000_000;
+/// The whole globe in half degrees; of finer grids a region is taken out first.
+const MOST_CELLS: u64 = 300_000;
 const KNOT: f64 = 1852.0 / 3600.0;
 
 const EAST: [&str; 9] = ["u10", "u10m", "10u", "uas", "u10n", "u", "uwnd", "ugrd", "u_wind"];
