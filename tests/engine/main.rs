@@ -13,5 +13,6 @@ mod netcdf;
 mod netcdf_writer;
 mod orientation;
 mod plates;
+mod records;
 mod samples;
 mod tiff_writer;

@@ -91,7 +91,7 @@ pub(super) fn grid(path: &Path) -> Result<Option<WindGuess>, WindFileError> {
 }
 
 fn grid_stand(stem: &str, winds: &GridWinds, cell: &GridCell) -> Stand {
-    let placed = cell.at.map(|at| format!("{stem} {:.2} {:.2}", at.lon, at.lat));
+    let placed = cell.at.map(|at| format!("{stem} {:.3} {:.3}", at.lon, at.lat));
     let listed = || cell.index.iter().map(u64::to_string).collect::<Vec<_>>().join(" ");
     let name =
         cell.name.clone().or(placed).unwrap_or_else(|| format!("{stem} {}", listed()).trim().to_owned());

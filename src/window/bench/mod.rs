@@ -1,5 +1,6 @@
 //! The bench: the evidence for the selected patch, page by page, in the order of the reasoning.
 
+mod calendar;
 mod ground;
 mod judges;
 mod plate;
