@@ -6,6 +6,7 @@ pub mod eigen;
 pub mod fft;
 pub mod gamma;
 pub mod gauss;
+pub mod huber;
 pub mod lattice;
 pub mod maximum;
 pub mod quantile;
