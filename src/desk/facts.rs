@@ -335,6 +335,7 @@ mod tests {
             verdicts: Vec::new(),
             sentence: String::new(),
             cautions: Vec::new(),
+            obstacles: None,
         };
         let facts = trend(&finding).into_iter().chain(spacing(&finding));
         for fact in facts.filter(|fact| !fact.method.is_empty()) {

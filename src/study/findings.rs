@@ -6,7 +6,7 @@
 
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
-use super::{DriftFinding, Id, SeasonFinding, SetAside};
+use super::{DriftFinding, Id, ObstaclesFinding, SeasonFinding, SetAside};
 
 /// All results of one run.
 #[derive(Clone, Debug, Default, PartialEq)]
@@ -66,6 +66,8 @@ pub struct PatchFinding {
     /// One plain sentence with uncertainty and caveat.
     pub sentence: String,
     pub cautions: Vec<Caution>,
+    /// What the outcrops in it say; `None` where the sheet has none there, or at a first look.
+    pub obstacles: Option<ObstaclesFinding>,
 }
 
 /// The trend from the structure tensor.

@@ -11,15 +11,18 @@ use super::{Patch, RasterEntry, Sheet, WindEntry};
 pub fn of_sheet(sheet: &Sheet) -> String {
     let rasters: Vec<_> = sheet.rasters.iter().map(raster).collect();
     let winds: Vec<_> = sheet.winds.iter().map(wind).collect();
-    digest(&json!([sheet.seed, rasters, sheet.patches, winds, sheet.settings]))
+    digest(&json!([sheet.seed, rasters, sheet.patches, winds, sheet.settings, sheet.obstacles]))
 }
 
-/// SHA-256 of all that makes a patch's finding: its outline, its raster, the settings, the winds it
-/// is judged by, the seed.
+/// SHA-256 of all that makes a patch's finding: its outline, its raster, the outcrops on it, the settings,
+/// the winds it is judged by, the seed.
 pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
     let winds: Vec<_> =
         sheet.winds.iter().filter(|w| patch.wind.is_none_or(|id| id == w.id)).map(wind).collect();
+    // Their names too: findings print them.
+    let obstacles: Vec<_> = sheet.obstacles.iter().filter(|o| o.raster == patch.raster).collect();
     digest(&json!([
+        obstacles,
         sheet.seed,
         patch.id,
         patch.outline,

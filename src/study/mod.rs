@@ -7,6 +7,7 @@ mod findings;
 pub mod fingerprint;
 pub mod glance;
 pub mod handover;
+mod obstacles;
 mod patch;
 mod records;
 pub mod run;
@@ -25,10 +26,11 @@ pub use findings::{
     Failure, Findings, ModeFinding, Node, PatchFinding, RasterFinding, SpectrumFinding, SpectrumPicture,
     TheoryFinding, TrendFinding, VerdictFinding, WindFinding,
 };
+pub use obstacles::{NodeAround, ObstacleFinding, ObstaclesFinding};
 pub use records::{SETTINGS, Setting, SettingKind, SettingValue};
 pub use settings::{
-    Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw, TrendSettings,
+    ObstacleGround, ObstacleSettings, Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw, TrendSettings,
     VerdictSettings, WindSettings,
 };
-pub use sheet::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindEntry};
+pub use sheet::{Id, ImageKind, Obstacle, Patch, Placement, RasterEntry, Sheet, Tone, WindEntry};
 pub use sources::{OpenRaster, Sources};

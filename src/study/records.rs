@@ -1,7 +1,7 @@
 //! Each setting described once: key, label, unit, range, default, help. Forms, `check`, the
 //! documents and hover texts read these records.
 
-use super::{Settings, ThresholdLaw, TransportLaw};
+use super::{ObstacleGround, Settings, ThresholdLaw, TransportLaw};
 
 /// One setting.
 pub struct Setting {
@@ -126,6 +126,11 @@ const TRANSPORT_LAWS: [(TransportLaw, &str, &str); 6] = [
     (TransportLaw::White, "white", "White 1979, corrected"),
     (TransportLaw::Lettau, "lettau", "Lettau & Lettau 1978"),
     (TransportLaw::Kok, "kok", "Kok et al. 2012, linear in stress"),
+];
+
+const OBSTACLE_GROUNDS: [(ObstacleGround, &str, &str); 2] = [
+    (ObstacleGround::Grained, "grained", "moved only"),
+    (ObstacleGround::Homogeneous, "homogeneous", "moved and turned"),
 ];
 
 /// Every setting, in the order of the reasoning.
@@ -345,6 +350,59 @@ pub const SETTINGS: &[Setting] = &[
         verdict.least_strength,
         "Below this contrast of bedform-normal transport a predicted trend is not meaningful and no verdict is given."
     ),
+    number!(
+        "obstacle.inner_radii",
+        "Annulus from",
+        "radii",
+        1.0,
+        3.0,
+        obstacle.inner_radii,
+        "Inner edge of the ground looked at round an outcrop. State it before looking: do not pick the one that works."
+    ),
+    number!(
+        "obstacle.outer_radii",
+        "Annulus to",
+        "radii",
+        1.5,
+        8.0,
+        obstacle.outer_radii,
+        "Outer edge of the ground looked at round an outcrop; the regional trend is taken beyond it."
+    ),
+    number!(
+        "obstacle.radius_doubt",
+        "Doubt in the radius",
+        "1",
+        0.05,
+        0.6,
+        obstacle.radius_doubt,
+        "Share by which the outlined radius may be wrong: the amplitude is given over this range."
+    ),
+    whole!(
+        "obstacle.virtual_count",
+        "Virtual outcrops",
+        0,
+        20_000,
+        obstacle.virtual_count,
+        "How often the outline is set down where no outcrop stands, to see what the ground gives by itself. Below 999 no p is given."
+    ),
+    number!(
+        "obstacle.least_amplitude",
+        "Least turn",
+        "1",
+        0.05,
+        1.0,
+        obstacle.least_amplitude,
+        "Amplitude of the turn round an outcrop (1 = as the flow turns) below which nothing is decided."
+    ),
+    Setting {
+        key: "obstacle.ground",
+        label: "Virtual outcrops are",
+        unit: "1",
+        help: "Turned too only where the field is alike in all directions.",
+        kind: SettingKind::Choice(&[("grained", "moved only"), ("homogeneous", "moved and turned")]),
+        get: |s| SettingValue::Choice(key_of(&OBSTACLE_GROUNDS, s.obstacle.ground)),
+        set: |s, v| choose(&OBSTACLE_GROUNDS, v, &mut s.obstacle.ground),
+    },
 ];
 
 fn key_of<T: Copy + PartialEq>(laws: &[(T, &'static str, &'static str)], law: T) -> &'static str {

@@ -81,6 +81,7 @@ fn finding(mosaic: &Grid<f32>, place: &Place, patch: &Patch, fingerprint: String
         verdicts: Vec::new(),
         sentence: String::new(),
         cautions: Vec::<Caution>::new(),
+        obstacles: None,
     }
 }
 

@@ -3,6 +3,7 @@
 mod ask;
 mod draw;
 mod job;
+mod obstacle;
 mod patch;
 mod plate;
 mod raster;
@@ -14,6 +15,7 @@ mod wind;
 pub use ask::AskCommand;
 pub use draw::DrawCommand;
 pub use job::JobCommand;
+pub use obstacle::ObstacleCommand;
 pub use patch::PatchCommand;
 pub use plate::PlateCommand;
 pub use raster::RasterCommand;
@@ -34,6 +36,7 @@ pub enum Command {
     Ask(AskCommand),
     Raster(RasterCommand),
     Patch(PatchCommand),
+    Obstacle(ObstacleCommand),
     Draw(DrawCommand),
     Wind(WindCommand),
     Plate(PlateCommand),
@@ -110,6 +113,7 @@ impl Command {
             Self::Ask(c) => c.record(),
             Self::Raster(c) => c.record(),
             Self::Patch(c) => c.record(),
+            Self::Obstacle(c) => c.record(),
             Self::Draw(c) => c.record(),
             Self::Wind(c) => c.record(),
             Self::Plate(c) => c.record(),
@@ -137,6 +141,7 @@ impl Command {
             Self::Ask(c) => c.refusal(model),
             Self::Raster(c) => c.refusal(model),
             Self::Patch(c) => c.refusal(model),
+            Self::Obstacle(c) => c.refusal(model),
             Self::Draw(c) => c.refusal(model),
             Self::Wind(c) => c.refusal(model),
             Self::Plate(c) => c.refusal(model),
@@ -153,9 +158,13 @@ impl Command {
             Self::Patch(c) => c.merge_key(),
             Self::Wind(c) => c.merge_key(),
             Self::Setting(c) => c.merge_key(),
-            Self::Sheet(_) | Self::Ask(_) | Self::Draw(_) | Self::Job(_) | Self::Plate(_) | Self::View(_) => {
-                None
-            }
+            Self::Sheet(_)
+            | Self::Ask(_)
+            | Self::Obstacle(_)
+            | Self::Draw(_)
+            | Self::Job(_)
+            | Self::Plate(_)
+            | Self::View(_) => None,
         }
     }
 
@@ -176,7 +185,8 @@ pub fn listed() -> Vec<Command> {
     let draw = DrawCommand::LISTED.iter().cloned().map(Command::Draw);
     let patch = PatchCommand::LISTED.iter().cloned().map(Command::Patch);
     let view = ViewCommand::LISTED.iter().cloned().map(Command::View);
-    let making = sheet.chain(raster).chain(wind).chain(draw).chain(patch);
+    let obstacle = ObstacleCommand::LISTED.iter().cloned().map(Command::Obstacle);
+    let making = sheet.chain(raster).chain(wind).chain(draw).chain(patch).chain(obstacle);
     making.chain(plate).chain(setting).chain(job).chain(view).collect()
 }
 
@@ -198,6 +208,7 @@ pub fn apply(model: &mut Model, command: Command) {
         Command::Ask(c) => c.apply(model),
         Command::Raster(c) => c.apply(model),
         Command::Patch(c) => c.apply(model),
+        Command::Obstacle(c) => c.apply(model),
         Command::Draw(c) => c.apply(model),
         Command::Wind(c) => c.apply(model),
         Command::Plate(c) => c.apply(model),

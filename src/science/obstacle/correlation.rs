@@ -1,6 +1,6 @@
 //! How residuals of the trend are related over distance, so that nodes are not taken for samples.
 
-use crate::ground::{Method, Point, Symbol};
+use crate::ground::{Bounds, Method, Point, Symbol};
 
 use super::sources::{DERIVED, at};
 
@@ -33,10 +33,14 @@ pub struct Correlation {
     pub shape: f64,
 }
 
-/// Most residuals whose pairs are looked at: two million pairs tell a length of any use.
-const MOST: usize = 2000;
+/// Most residuals whose pairs are looked at: half a million pairs tell a length of any use.
+const MOST: usize = 1000;
 /// Lags of the table the fit is made to.
 const BINS: usize = 30;
+/// Most lags of the whole table.
+const MOST_BINS: f64 = 3000.0;
+/// χ² a relation must explain, the 99 % point for three parameters.
+const LEAST_GAIN: f64 = 11.34;
 const SHAPES: [f64; 3] = [1.0, 1.5, 2.0];
 
 impl Correlation {
@@ -48,43 +52,53 @@ impl Correlation {
         if distance == 0.0 {
             return 1.0;
         }
-        (1.0 - self.noise_share) * (-(distance / self.length).powf(self.shape)).exp()
+        let x = distance / self.length;
+        // The three shapes without a general power, for millions of pairs.
+        let power = match self.shape {
+            1.0 => x,
+            2.0 => x * x,
+            shape if shape == 1.5 => x * x.sqrt(),
+            shape => x.powf(shape),
+        };
+        (1.0 - self.noise_share) * (-power).exp()
     }
 
-    /// From residuals (any unit, mean removed) at `places`, pairs up to `reach` apart. [`Self::NONE`] for
-    /// fewer than three or without variance.
-    pub fn fit(residuals: &[f64], places: &[Point], reach: f64) -> Self {
+    /// From residuals (any unit, mean removed) at `places`, pairs up to `reach` apart, with the mean of ρ over all
+    /// pairs: the variance of the mean over that of one residual. [`Self::NONE`] for fewer than three or without
+    /// variance.
+    pub fn fit(residuals: &[f64], places: &[Point], reach: f64) -> (Self, f64) {
         let picked: Vec<usize> = thinned(residuals.len(), MOST);
         let n = picked.len();
         let variance = picked.iter().map(|i| residuals[*i].powi(2)).sum::<f64>() / n.max(1) as f64;
         if n < 3 || !(variance > 0.0) || !(reach > 0.0) {
-            return Self::NONE;
+            return (Self::NONE, 1.0 / n.max(1) as f64);
         }
-        let mut table = [Bin::default(); BINS];
+        let extent = Bounds::of(places.iter().copied()).map_or(reach, |b| b.width().hypot(b.height()));
+        let width = (reach / BINS as f64).max(extent / MOST_BINS);
+        let mut table = vec![Bin::default(); (extent / width) as usize + 1];
         for (k, i) in picked.iter().enumerate() {
             for j in &picked[..k] {
                 let lag = places[*i].distance(places[*j]);
-                if lag < reach {
-                    let bin = &mut table[((lag / reach * BINS as f64) as usize).min(BINS - 1)];
-                    bin.pairs += 1.0;
-                    bin.lag += lag;
-                    bin.product += residuals[*i] * residuals[*j];
-                }
+                let bin = &mut table[(lag / width) as usize];
+                bin.pairs += 1.0;
+                bin.lag += lag;
+                bin.product += residuals[*i] * residuals[*j];
             }
         }
-        let bins: Vec<Bin> = table.into_iter().filter(|b| b.pairs > 0.0).map(Bin::mean).collect();
+        let all: Vec<Bin> = table.into_iter().filter(|b| b.pairs > 0.0).map(Bin::mean).collect();
+        let near = &all[..all.iter().filter(|b| b.lag < reach).count()];
         let mut removed = 0.0;
-        let mut best = Self::NONE;
+        let (mut best, mut mean) = (Self::NONE, 0.0);
         for _ in 0..3 {
-            best = Self::nearest(&bins, variance, removed, reach);
-            // What removing the mean took from every product: the variance of the mean.
-            let mean: f64 =
-                picked.iter().map(|i| picked.iter().map(|j| best.at(places[*i].distance(places[*j]))).sum::<f64>()).sum::<f64>()
-                    / (n * n) as f64;
-            // Beyond half of the variance the patch is too small to know; more would run away.
+            best = Self::nearest(near, variance, removed, reach);
+            let own = 1.0 / places.len() as f64;
+            let pairs: f64 = all.iter().map(|b| b.pairs).sum();
+            mean = own + (1.0 - own) * all.iter().map(|b| b.pairs * best.at(b.lag)).sum::<f64>() / pairs;
+            // What removing the mean took from every product: the variance of the mean. Beyond half of the
+            // variance the patch is too small to know; more would run away.
             removed = variance * (mean / (1.0 - mean).max(0.5)).min(0.5);
         }
-        best
+        (best, mean)
     }
 
     /// The least squares fit over lengths and shapes, pairs as weights.
@@ -113,7 +127,10 @@ impl Correlation {
                 }
             }
         }
-        best.1
+        // Products of unrelated residuals scatter with variance 1/pairs, so these sums are χ²: a relation that
+        // explains no more than chance among three parameters is none.
+        let white: f64 = bins.iter().map(|b| b.pairs * (b.product / own).powi(2)).sum();
+        if white - best.0 < LEAST_GAIN { Self::NONE } else { best.1 }
     }
 }
 
@@ -170,7 +187,7 @@ mod tests {
             let field: Vec<f64> = places.iter().map(value).collect();
             let mean = field.iter().sum::<f64>() / field.len() as f64;
             let residuals: Vec<f64> = field.iter().map(|v| v - mean).collect();
-            lengths.push(Correlation::fit(&residuals, &places, 20.0).length);
+            lengths.push(Correlation::fit(&residuals, &places, 20.0).0.length);
         }
         let mean = lengths.iter().sum::<f64>() / lengths.len() as f64;
         assert_close!(mean, 4.0, 0.6, "length over eight fields: {lengths:?}");

@@ -63,8 +63,9 @@ impl Field {
         let places: Vec<Point> = regional.iter().map(|n| n.at).collect();
         let residuals: Vec<f64> = regional.iter().map(|n| residual(n.axis, crest)).collect();
         let widest = outcrops.iter().map(|o| 2.0 * outer * o.radius()).fold(0.0, f64::max);
-        let correlation = Correlation::fit(&residuals, &places, widest);
-        let crest_se_deg = mean_error(&residuals, &places, &correlation).to_degrees();
+        let (correlation, mean) = Correlation::fit(&residuals, &places, widest);
+        let variance = residuals.iter().map(|e| e * e).sum::<f64>() / residuals.len() as f64;
+        let crest_se_deg = (variance * mean).sqrt().to_degrees();
         let regional = regional.len();
         Some(Self { nodes, crest, strength, crest_se_deg, correlation, regional, crowded })
     }
@@ -79,16 +80,4 @@ impl Field {
 /// wrapped and halved.
 pub fn residual(axis: Axis, crest: Axis) -> f64 {
     -axis.turn_from(crest).to_radians()
-}
-
-/// Standard error of the mean of related residuals.
-fn mean_error(residuals: &[f64], places: &[Point], correlation: &Correlation) -> f64 {
-    let picked = super::correlation::thinned(residuals.len(), 1500);
-    let n = picked.len() as f64;
-    let variance = picked.iter().map(|i| residuals[*i].powi(2)).sum::<f64>() / n;
-    let related: f64 = picked
-        .iter()
-        .map(|i| picked.iter().map(|j| correlation.at(places[*i].distance(places[*j]))).sum::<f64>())
-        .sum();
-    (variance * related).sqrt() / n
 }

@@ -35,7 +35,7 @@ pub static METHOD: Method = Method {
 #[derive(Clone, Copy, Debug)]
 pub struct Flow {
     ellipse: Ellipse,
-    /// c², negative never: the real axis is the longer one.
+    /// c² ≥ 0: the longer axis is the real one.
     c2: f64,
     /// R.
     mean: f64,

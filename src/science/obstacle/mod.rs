@@ -21,7 +21,7 @@ pub use obliquity::{
     Annulus, AtRadius, Estimate, LEAST_NODES, Obliquity, Quadrupole, WIDEST_HALF_DEG, estimate, quadrupole,
 };
 pub use outline::Ellipse;
-pub use test::{Outcome, TestSettings, test};
+pub use test::{Outcome, TestSettings, test, undecided};
 
 use crate::ground::Method;
 

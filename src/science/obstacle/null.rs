@@ -66,6 +66,8 @@ const LEAST_COVER: f64 = 0.75;
 const TRIES: usize = 40;
 /// Independent places below which a rank says nothing at the 5 % level.
 const LEAST_INDEPENDENT: f64 = 19.0;
+/// Virtual outcrops below which no p is given.
+const LEAST_COUNT: usize = 999;
 
 /// Sets down virtual copies of `outcrops[which]` and ranks `amplitude` and `dipole_size` among theirs.
 /// `step` is the distance of neighbouring nodes.
@@ -121,7 +123,7 @@ pub fn null(
     let found: Vec<_> = drawn.into_iter().flatten().collect();
     let count = found.len();
     let independent = independent(&found, own.radius() * annulus.outer);
-    let enough = count >= placing.count && independent >= LEAST_INDEPENDENT;
+    let enough = count >= placing.count.max(LEAST_COUNT) && independent >= LEAST_INDEPENDENT;
     let rank = |observed: f64, values: &mut dyn Iterator<Item = f64>| {
         let reached = values.filter(|v| *v >= observed).count();
         (1.0 + reached as f64) / (count as f64 + 1.0)
@@ -145,13 +147,11 @@ fn independent(found: &[(Point, [f64; 2], Option<f64>)], reach: f64) -> f64 {
         return picked.len() as f64;
     }
     let places: Vec<Point> = picked.iter().map(|i| found[*i].0).collect();
-    // Both coefficients fall off alike; their places doubled far apart make one sample of both.
-    let far = 1e6 * reach;
-    let both: Vec<Point> =
-        places.iter().copied().chain(places.iter().map(|p| Point::new(p.x + far, p.y))).collect();
-    let b: Vec<f64> =
-        picked.iter().map(|i| found[*i].1[0]).chain(picked.iter().map(|i| found[*i].1[1])).collect();
-    let rho = Correlation::fit(&b, &both, 2.0 * reach);
+    // Both coefficients fall off alike; one of them is enough to tell how fast.
+    let b: Vec<f64> = picked.iter().map(|i| found[*i].1[0]).collect();
+    let mean = b.iter().sum::<f64>() / b.len() as f64;
+    let b: Vec<f64> = b.into_iter().map(|x| x - mean).collect();
+    let (rho, _) = Correlation::fit(&b, &places, 2.0 * reach);
     let n = places.len();
     let mut sum = n as f64;
     for i in 0..n {

@@ -63,6 +63,7 @@ fn patch(p: &PatchFinding) -> Value {
         "trend": trend(&p.trend), "spectrum": spectrum(&p.spectrum, metres),
         "verdicts": p.verdicts.iter().map(verdict).collect::<Vec<_>>(),
         "finding": p.sentence, "cautions": cautions(&p.cautions),
+        "obstacles": p.obstacles.as_ref().map(|o| super::obstacles::json(o, metres)),
     })
 }
 

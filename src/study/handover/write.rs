@@ -7,6 +7,7 @@ use crate::files::save;
 use crate::study::{Findings, Sheet, Sources};
 
 use super::layers::{layers, lonlat_patches, node_table, patch_table, verdict_table, wind_table};
+use super::obstacles::{lonlat_outcrops, obstacle_table};
 use super::{bibtex, findings_json};
 
 /// A file that could not be written.
@@ -42,8 +43,13 @@ pub fn write_all(
     for (name, content) in extra {
         bytes(name, content)?;
     }
-    let tables =
-        [patch_table(findings), node_table(findings, sources), verdict_table(findings), wind_table(findings)];
+    let tables = [
+        patch_table(findings),
+        node_table(findings, sources),
+        verdict_table(findings),
+        wind_table(findings),
+        obstacle_table(findings),
+    ];
     for table in tables.iter().filter(|t| !t.rows.is_empty()) {
         let name = format!("{}.csv", table.name);
         write_csv(&folder.join(&name), &table.columns, &table.rows)?;
@@ -57,6 +63,10 @@ pub fn write_all(
     if let Some(layer) = lonlat_patches(sheet, findings, sources) {
         write_geojson(&folder.join("patches.geojson"), &layer)?;
         written.push("patches.geojson".into());
+    }
+    if let Some(layer) = lonlat_outcrops(sheet, findings, sources) {
+        write_geojson(&folder.join("outcrops.geojson"), &layer)?;
+        written.push("outcrops.geojson".into());
     }
     Ok(written)
 }

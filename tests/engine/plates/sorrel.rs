@@ -332,6 +332,7 @@ pub fn patch_finding(reach: &Reach) -> PatchFinding {
             Caution::new("look-bias", "The trend lies within 12° of the direction that the radar look favours; part of the alignment may be the look’s."),
             Caution::new("tensor-spectrum", "Tensor and spectrum agree within their intervals, but the spectrum rests on 12 windows only."),
         ],
+        obstacles: None,
     }
 }
 
