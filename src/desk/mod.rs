@@ -24,8 +24,8 @@ pub use crate::files::raster::Bands;
 pub use crate::files::wind_table::{DirectionSense, SpeedUnit, WindImport, WindLayout, ZeroDirection};
 pub use answer::{Answer, absorb};
 pub use command::{
-    AskCommand, Chord, Command, DrawCommand, JobCommand, ObstacleCommand, PatchCommand, PlateCommand, RasterCommand, Record,
-    SettingCommand, SheetCommand, ViewCommand, WindCommand, apply, listed,
+    AskCommand, Chord, Command, DrawCommand, JobCommand, ObstacleCommand, PatchCommand, PlateCommand,
+    RasterCommand, Record, SettingCommand, SheetCommand, ViewCommand, WindCommand, apply, listed,
 };
 pub use engine::SheetError;
 pub use history::{History, MergeKey};

@@ -293,15 +293,8 @@ impl Opened {
 }
 
 impl Tool {
-    pub const ALL: [Self; 7] = [
-        Self::Hand,
-        Self::Polygon,
-        Self::Rectangle,
-        Self::Ellipse,
-        Self::Hole,
-        Self::Corners,
-        Self::Outcrop,
-    ];
+    pub const ALL: [Self; 7] =
+        [Self::Hand, Self::Polygon, Self::Rectangle, Self::Ellipse, Self::Hole, Self::Corners, Self::Outcrop];
 
     /// Whether the tool lays down points that become an outline.
     pub fn draws(self) -> bool {

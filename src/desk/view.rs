@@ -86,15 +86,8 @@ impl Theme {
 }
 
 impl Page {
-    pub const ALL: [Self; 7] = [
-        Self::Ground,
-        Self::Trend,
-        Self::Spacing,
-        Self::Winds,
-        Self::Verdict,
-        Self::Obstacles,
-        Self::Plate,
-    ];
+    pub const ALL: [Self; 7] =
+        [Self::Ground, Self::Trend, Self::Spacing, Self::Winds, Self::Verdict, Self::Obstacles, Self::Plate];
 
     pub fn label(self) -> &'static str {
         match self {

@@ -123,8 +123,11 @@ mod tests {
     #[test]
     fn a_wild_value_hardly_moves_the_line() {
         let rows: Vec<[f64; 2]> = (0..40).map(|i| [1.0, f64::from(i) / 10.0]).collect();
-        let mut y: Vec<f64> =
-            rows.iter().enumerate().map(|(i, r)| 2.0 - 0.5 * r[1] + 0.01 * ((i * 7 % 5) as f64 - 2.0)).collect();
+        let mut y: Vec<f64> = rows
+            .iter()
+            .enumerate()
+            .map(|(i, r)| 2.0 - 0.5 * r[1] + 0.01 * ((i * 7 % 5) as f64 - 2.0))
+            .collect();
         y[3] += 50.0;
         let plain = solve(&rows, &y, |_| 1.0).unwrap();
         let fit = huber(&rows, &y).unwrap();

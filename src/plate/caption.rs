@@ -192,7 +192,9 @@ mod tests {
     #[test]
     fn every_method_a_caption_may_cite_is_known() {
         let known = crate::science::methods();
-        let keys = [TREND, INTERVAL, &[BOOTSTRAP, MIXTURE, SEVERAL_OBSTACLES], SPECTRUM, WINDS, VERDICT, OBSTACLES].concat();
+        let keys =
+            [TREND, INTERVAL, &[BOOTSTRAP, MIXTURE, SEVERAL_OBSTACLES], SPECTRUM, WINDS, VERDICT, OBSTACLES]
+                .concat();
         for key in keys {
             assert!(known.iter().any(|m| m.id == key), "{key}");
         }

@@ -55,7 +55,11 @@ pub fn obstacles_together(finding: &ObstaclesFinding, width_mm: f64, theme: &The
     let rows = finding.outcrops.len() as f64 + 1.0;
     let foot = 1.0 + row * rows;
     for deg in [0.0, 15.0, 45.0, 75.0, 90.0] {
-        sketch.line(Point::new(x(deg), 0.6), Point::new(x(deg), foot), theme.stroke(theme.rule, theme.widths.hair));
+        sketch.line(
+            Point::new(x(deg), 0.6),
+            Point::new(x(deg), foot),
+            theme.stroke(theme.rule, theme.widths.hair),
+        );
         let text = format!("{deg:.0}°");
         sketch.text(
             Point::new(x(deg), foot + 1.3 * theme.text.small),
@@ -69,7 +73,15 @@ pub fn obstacles_together(finding: &ObstaclesFinding, width_mm: f64, theme: &The
         sketch.text(Point::new(0.0, y + 0.35 * theme.text.body), name, body);
         match &outcrop.outcome {
             Ok(o) if o.undecided.is_none() => {
-                whisker(&mut sketch, o.obliquity.folded_deg(), o.obliquity.interval_deg(), y, &x, theme, false);
+                whisker(
+                    &mut sketch,
+                    o.obliquity.folded_deg(),
+                    o.obliquity.interval_deg(),
+                    y,
+                    &x,
+                    theme,
+                    false,
+                );
             }
             _ => sketch.text(Point::new(x(2.0), y + 0.35 * theme.text.small), "no decision", small),
         }
@@ -94,7 +106,8 @@ pub fn obstacles_together(finding: &ObstaclesFinding, width_mm: f64, theme: &The
         combined.count,
         numbers::fixed(combined.sign_p, 2),
     );
-    below += sketch.paragraph(Point::new(0.0, below), &text, Type::new(theme.text.small, theme.ink), width_mm);
+    below +=
+        sketch.paragraph(Point::new(0.0, below), &text, Type::new(theme.text.small, theme.ink), width_mm);
     sketch.finish(width_mm, below)
 }
 
@@ -113,7 +126,12 @@ fn whisker(
         sketch.line(Point::new(x(low), y), Point::new(x(high), y), theme.stroke(theme.measured, width));
     }
     let radius = if strong { 1.1 } else { 0.8 };
-    sketch.circle(Point::new(x(at), y), radius, Some(theme.measured), Some(theme.stroke(theme.paper, theme.widths.thin)));
+    sketch.circle(
+        Point::new(x(at), y),
+        radius,
+        Some(theme.measured),
+        Some(theme.stroke(theme.paper, theme.widths.thin)),
+    );
 }
 
 /// The plan: outcrop, lines of the flow, crests, axes on the rim.
@@ -262,15 +280,32 @@ fn turns(
     let limit = (1.12 * highest.max(measured)).min(60.0);
     let x = |deg: f64| left + (right - left) * deg / 360.0;
     let y = |turn: f64| foot - height * (turn.clamp(-limit, limit) + limit) / (2.0 * limit);
-    sketch.rectangle(Point::new(left, top), Point::new(right, foot), None, Some(theme.stroke(theme.rule, theme.widths.thin)));
-    sketch.line(Point::new(left, y(0.0)), Point::new(right, y(0.0)), theme.stroke(theme.rule, theme.widths.thin));
+    sketch.rectangle(
+        Point::new(left, top),
+        Point::new(right, foot),
+        None,
+        Some(theme.stroke(theme.rule, theme.widths.thin)),
+    );
+    sketch.line(
+        Point::new(left, y(0.0)),
+        Point::new(right, y(0.0)),
+        theme.stroke(theme.rule, theme.widths.thin),
+    );
     let tick = if limit > 24.0 { 20.0 } else { 10.0 };
     for turn in [-tick, 0.0, tick] {
         let text = format!("{}°", numbers::fixed(turn, 0));
-        sketch.text(Point::new(left - 0.8, y(turn) + 0.35 * theme.text.small), text, small.anchored(TextAnchor::End));
+        sketch.text(
+            Point::new(left - 0.8, y(turn) + 0.35 * theme.text.small),
+            text,
+            small.anchored(TextAnchor::End),
+        );
     }
     for deg in [0.0, 90.0, 180.0, 270.0, 360.0] {
-        sketch.line(Point::new(x(deg), foot), Point::new(x(deg), foot + 0.7), theme.stroke(theme.ink_soft, theme.widths.hair));
+        sketch.line(
+            Point::new(x(deg), foot),
+            Point::new(x(deg), foot + 0.7),
+            theme.stroke(theme.ink_soft, theme.widths.hair),
+        );
         let anchor = match deg {
             0.0 => TextAnchor::Start,
             360.0 => TextAnchor::End,
@@ -290,16 +325,22 @@ fn turns(
         predicted(o.signed_deg).iter().map(|v| outcome.estimate.offset_deg + o.amplitude * v).collect();
     sketch.polyline(curve(&fitted), theme.stroke(theme.measured, 1.4 * theme.widths.line));
     for (deg, [low, middle, high]) in sectors {
-        sketch.line(Point::new(x(deg), y(low)), Point::new(x(deg), y(high)), theme.stroke(theme.ink, theme.widths.line));
+        sketch.line(
+            Point::new(x(deg), y(low)),
+            Point::new(x(deg), y(high)),
+            theme.stroke(theme.ink, theme.widths.line),
+        );
         sketch.circle(Point::new(x(deg), y(middle)), 0.55, Some(theme.ink), None);
     }
     let mut used = foot + 1.2 + 1.2 * theme.text.small - at.y;
     let look = |color| Type::new(theme.text.small, color);
     let key = at.y + used + theme.text.small;
     let mut from = at.x;
-    for (word, color) in
-        [("– – along: wraps round", theme.predicted), ("– – across", theme.caution), ("— fitted", theme.measured)]
-    {
+    for (word, color) in [
+        ("– – along: wraps round", theme.predicted),
+        ("– – across", theme.caution),
+        ("— fitted", theme.measured),
+    ] {
         sketch.text(Point::new(from, key), word, look(color));
         from += super::font::text_width(word, theme.text.small, false) + 2.4;
     }

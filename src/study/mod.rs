@@ -29,8 +29,8 @@ pub use findings::{
 pub use obstacles::{NodeAround, ObstacleFinding, ObstaclesFinding};
 pub use records::{SETTINGS, Setting, SettingKind, SettingValue};
 pub use settings::{
-    ObstacleGround, ObstacleSettings, Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw, TrendSettings,
-    VerdictSettings, WindSettings,
+    ObstacleGround, ObstacleSettings, Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw,
+    TransportLaw, TrendSettings, VerdictSettings, WindSettings,
 };
 pub use sheet::{Id, ImageKind, Obstacle, Patch, Placement, RasterEntry, Sheet, Tone, WindEntry};
 pub use sources::{OpenRaster, Sources};

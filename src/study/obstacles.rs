@@ -3,7 +3,8 @@
 
 use crate::ground::{Axis, Azimuth, Caution, LocalFrame, Place, Point, Seed, Stopped, Work};
 use crate::science::obstacle::{
-    Annulus, Combined, Dipole, Ellipse, Field, LEAST_NODES, Node, Outcome, TestSettings, combine, test, undecided,
+    Annulus, Combined, Dipole, Ellipse, Field, LEAST_NODES, Node, Outcome, TestSettings, combine, test,
+    undecided,
 };
 
 use super::{Id, Obstacle, ObstacleGround, ObstacleSettings, Patch, Sheet, TrendFinding};
@@ -133,7 +134,9 @@ pub fn belongs(obstacle: &Obstacle, patch: &Patch, place: &Place, s: &ObstacleSe
     const RINGS: usize = 6;
     const BEARINGS: usize = 24;
     let Some(middle) = Ellipse::of_ring(&obstacle.outline.outer).map(|e| e.centre) else { return false };
-    let Some(plane) = Plane::at(place, middle).filter(|_| patch.raster == obstacle.raster) else { return false };
+    let Some(plane) = Plane::at(place, middle).filter(|_| patch.raster == obstacle.raster) else {
+        return false;
+    };
     let Some(shape) = plane.shape(&obstacle.outline.outer) else { return false };
     let (from, to) = (s.inner_radii.powi(2), s.outer_radii.powi(2));
     let held = |k: usize| {
@@ -229,9 +232,9 @@ impl Plane {
 /// they read the outcrop itself.
 fn nodes(trend: &TrendFinding, outcrops: &[&Obstacle], plane: &Plane, place: &Place) -> Vec<Node> {
     let reads_outcrop = |p: Point| {
-        outcrops.iter().any(|o| {
-            o.outline.contains(p) || o.outline.distance_to_edge(p) < trend.integration_scale_px
-        })
+        outcrops
+            .iter()
+            .any(|o| o.outline.contains(p) || o.outline.distance_to_edge(p) < trend.integration_scale_px)
     };
     trend
         .nodes
@@ -322,7 +325,9 @@ fn cautions(finding: &ObstaclesFinding, field: Option<&Field>, s: &ObstacleSetti
         if let Some(factor) = outcome.best_radius.filter(|f| (f - 1.0).abs() > 1e-9) {
             say(
                 "outcrop-radius",
-                format!("The turn of the crests round {name} fits best with {factor:.2} of its outlined radius."),
+                format!(
+                    "The turn of the crests round {name} fits best with {factor:.2} of its outlined radius."
+                ),
             );
         }
         if let Some(null) = outcome.null.as_ref().filter(|n| n.p.is_none()) {

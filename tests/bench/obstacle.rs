@@ -51,17 +51,34 @@ fn main() {
     for (name, scene) in [
         ("independent", scene(Ellipse::circle(middle, 3.0), Kind::Independent, 0.0, 10.0)),
         ("Gaussian L = 3", scene(Ellipse::circle(middle, 3.0), Kind::Gaussian { length: 3.0 }, 8.0, 3.0)),
-        ("exponential L = 3", scene(Ellipse::circle(middle, 3.0), Kind::Exponential { length: 3.0 }, 8.0, 3.0)),
-        ("exponential L = 3, a = 4", scene(Ellipse::circle(middle, 4.0), Kind::Exponential { length: 3.0 }, 8.0, 3.0)),
+        (
+            "exponential L = 3",
+            scene(Ellipse::circle(middle, 3.0), Kind::Exponential { length: 3.0 }, 8.0, 3.0),
+        ),
+        (
+            "exponential L = 3, a = 4",
+            scene(Ellipse::circle(middle, 4.0), Kind::Exponential { length: 3.0 }, 8.0, 3.0),
+        ),
     ] {
         let outcomes: Vec<_> = (0..NULL_RUNS).into_par_iter().map(|i| scene.run(50_000 + i, 999)).collect();
         let by_rank: Vec<f64> = outcomes.iter().filter_map(|o| o.null.as_ref()?.p).collect();
         let by_error: Vec<f64> = outcomes.iter().map(|o| o.pattern_p).collect();
-        let worth: f64 = outcomes.iter().filter_map(|o| Some(o.null.as_ref()?.independent)).sum::<f64>() / NULL_RUNS as f64;
-        println!("no turn, {name}: virtual outcrops worth {worth:.0} independent, p given in {} of {NULL_RUNS}", by_rank.len());
+        let worth: f64 = outcomes.iter().filter_map(|o| Some(o.null.as_ref()?.independent)).sum::<f64>()
+            / NULL_RUNS as f64;
+        println!(
+            "no turn, {name}: virtual outcrops worth {worth:.0} independent, p given in {} of {NULL_RUNS}",
+            by_rank.len()
+        );
         for (what, p) in [("by virtual outcrops", by_rank), ("by its own error", by_error)] {
-            let below = |level: f64| 100.0 * p.iter().filter(|p| **p <= level).count() as f64 / p.len().max(1) as f64;
-            println!("  p {what}: below 5/10/50 % in {:.1}/{:.1}/{:.1} %, KS p {:.3}", below(0.05), below(0.1), below(0.5), uniform_p(&p));
+            let below =
+                |level: f64| 100.0 * p.iter().filter(|p| **p <= level).count() as f64 / p.len().max(1) as f64;
+            println!(
+                "  p {what}: below 5/10/50 % in {:.1}/{:.1}/{:.1} %, KS p {:.3}",
+                below(0.05),
+                below(0.1),
+                below(0.5),
+                uniform_p(&p)
+            );
         }
     }
 }

@@ -6,18 +6,20 @@ use rand::Rng as _;
 use rand_distr::{Distribution as _, StandardNormal};
 
 use ventifact::ground::{Axis, Point, Seed, Work};
-use ventifact::science::obstacle::{
-    Annulus, Ellipse, Field, Flow, Node, Outcome, TestSettings, test,
-};
+use ventifact::science::obstacle::{Annulus, Ellipse, Field, Flow, Node, Outcome, TestSettings, test};
 
 /// How residuals fall out of relation.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub enum Kind {
     Independent,
     /// exp(−h²/L²), as a smoothing kernel leaves.
-    Gaussian { length: f64 },
+    Gaussian {
+        length: f64,
+    },
     /// exp(−h/L), as natural textures have.
-    Exponential { length: f64 },
+    Exponential {
+        length: f64,
+    },
 }
 
 /// A field of nodes one unit apart.
@@ -77,9 +79,9 @@ impl Scene {
                     sum * (2.0 / WAVES as f64).sqrt()
                 }
             };
-            let turn = self.phi_deg.map_or(0.0, |phi| {
-                flow.turn(at, crest_turn - phi.to_radians()).deflection.to_degrees()
-            });
+            let turn = self
+                .phi_deg
+                .map_or(0.0, |phi| flow.turn(at, crest_turn - phi.to_radians()).deflection.to_degrees());
             // Turns are counter-clockwise, axes clockwise.
             let axis = crest - (turn + self.related_deg * related + self.noise_deg * noise);
             nodes.push(Node { at, axis: Axis::from_deg(axis), significant: true, presence: 1.0 });

@@ -9,6 +9,7 @@ mod guards;
 mod hostile;
 mod jpeg_writer;
 mod layouts;
+mod obstacle;
 mod orientation;
 mod plates;
 mod samples;

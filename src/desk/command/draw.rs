@@ -164,7 +164,8 @@ mod tests {
 
     use super::DrawCommand;
     use crate::desk::{
-        Command, Laid, Model, ObstacleCommand, Opened, PatchCommand, SheetCommand, TileKey, TileReader, TileShelf, Tool, apply,
+        Command, Laid, Model, ObstacleCommand, Opened, PatchCommand, SheetCommand, TileKey, TileReader,
+        TileShelf, Tool, apply,
     };
     use crate::ground::{Grid, Place, Point, Work};
     use crate::study::{Id, ImageKind, RasterEntry};

@@ -105,7 +105,8 @@ pub fn combine(estimates: &[Estimate], crest_se_deg: f64) -> Option<Combined> {
 
 /// Weighted mean and its variance.
 fn weighed(part: &[(f64, f64)], tau2: f64) -> (f64, f64) {
-    let (top, bottom) = part.iter().fold((0.0, 0.0), |(t, w), (b, v)| (t + b / (v + tau2), w + 1.0 / (v + tau2)));
+    let (top, bottom) =
+        part.iter().fold((0.0, 0.0), |(t, w), (b, v)| (t + b / (v + tau2), w + 1.0 / (v + tau2)));
     (top / bottom, 1.0 / bottom)
 }
 

@@ -15,7 +15,11 @@ pub static METHOD: Method = Method {
     formula: "m₁ = Σ wₖ e^{iϕₖ} / Σ wₖ over four sectors of ± 30° about ϕₖ = 0, 90, 180, 270° from the crest axis; wₖ mean presence of the nodes in a sector",
     symbols: &[
         Symbol { symbol: "ϕₖ", meaning: "bearing of a sector from the crest axis", unit: "rad" },
-        Symbol { symbol: "wₖ", meaning: "mean over all nodes of a sector: coherence where the noise floor is passed, else 0", unit: "1" },
+        Symbol {
+            symbol: "wₖ",
+            meaning: "mean over all nodes of a sector: coherence where the noise floor is passed, else 0",
+            unit: "1",
+        },
     ],
     assumptions: &["Without the outcrop bedforms would be as many on every side."],
     limits: &[

@@ -17,7 +17,11 @@ pub static METHOD: Method = Method {
         Symbol { symbol: "ζ", meaning: "the root with |ζ| > R", unit: "m" },
         Symbol { symbol: "c²", meaning: "(a² − b²)/4 of the semi-axes a, b", unit: "m2" },
         Symbol { symbol: "R", meaning: "(a + b)/2", unit: "m" },
-        Symbol { symbol: "χ", meaning: "wind direction from the longer axis, counter-clockwise", unit: "rad" },
+        Symbol {
+            symbol: "χ",
+            meaning: "wind direction from the longer axis, counter-clockwise",
+            unit: "rad",
+        },
         Symbol { symbol: "δ", meaning: "turn of the flow, counter-clockwise", unit: "rad" },
         Symbol { symbol: "r, ϑ", meaning: "distance, and angle from downwind", unit: "m, rad" },
     ],

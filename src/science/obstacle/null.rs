@@ -22,8 +22,16 @@ pub static METHOD: Method = Method {
     formula: "p = (1 + #{Aₖ ≥ A})/(K + 1) over K virtual outcrops; worth M = 1/mean ρ_b² independent ones, ρ_b the correlation of b between virtual outcrops",
     symbols: &[
         Symbol { symbol: "A", meaning: "amplitude at the outcrop, and Aₖ at the virtual ones", unit: "1" },
-        Symbol { symbol: "K", meaning: "virtual outcrops: same outline, at least 4 radii from every real one, in the patch", unit: "1" },
-        Symbol { symbol: "M", meaning: "how many independent ones they are worth, since they overlap", unit: "1" },
+        Symbol {
+            symbol: "K",
+            meaning: "virtual outcrops: same outline, at least 4 radii from every real one, in the patch",
+            unit: "1",
+        },
+        Symbol {
+            symbol: "M",
+            meaning: "how many independent ones they are worth, since they overlap",
+            unit: "1",
+        },
     ],
     assumptions: &["Without the outcrop its place would be like the rest of the patch."],
     limits: &[
@@ -93,9 +101,8 @@ pub fn null(
         field.nodes.iter().filter(|n| within(n.at)).count() as f64
     };
     let wanted = LEAST_COVER * held(&own);
-    let clear = |p: Point| {
-        outcrops.iter().all(|o| p.distance(o.centre) >= CLEARANCE * own.radius().max(o.radius()))
-    };
+    let clear =
+        |p: Point| outcrops.iter().all(|o| p.distance(o.centre) >= CLEARANCE * own.radius().max(o.radius()));
     let drawn: Vec<Option<(Point, [f64; 2], Option<f64>)>> = (0..placing.count)
         .into_par_iter()
         .map(|k| {

@@ -20,14 +20,40 @@ pub static METHOD: Method = Method {
     question: "Do the crests run along, across or oblique to the wind that parts round this outcrop?",
     formula: "e = β₀ + A δ(z; α − φ), Huber's weights; far out δ = −(a/r)² sin 2(ϕ + φ), so e = β₀ + b_s (a/r)² sin 2ϕ + b_c (a/r)² cos 2ϕ with b_s = −A cos 2φ, b_c = −A sin 2φ; Cov = (JᵀJ)⁻¹ Jᵀ Σ J (JᵀJ)⁻¹, Σ = σ² ρ(h); half width of φ = ½ arcsin(t s⊥/A)",
     symbols: &[
-        Symbol { symbol: "e", meaning: "residual trend: the doubled angle from the crest axis wrapped and halved, counter-clockwise", unit: "rad" },
+        Symbol {
+            symbol: "e",
+            meaning: "residual trend: the doubled angle from the crest axis wrapped and halved, counter-clockwise",
+            unit: "rad",
+        },
         Symbol { symbol: "α", meaning: "crest axis: mean trend beyond every annulus", unit: "rad" },
-        Symbol { symbol: "ϕ", meaning: "bearing of a place from the outcrop, counter-clockwise from the crest axis", unit: "rad" },
-        Symbol { symbol: "φ", meaning: "angle from the wind axis to the crest axis, counter-clockwise", unit: "rad" },
-        Symbol { symbol: "A", meaning: "amplitude: 1 for one wind that must go round, less for several winds or a low hill", unit: "1" },
-        Symbol { symbol: "b", meaning: "along the wind (crests wrap round) b_s = −1; across it b_s = +1", unit: "1" },
-        Symbol { symbol: "σ², ρ(h)", meaning: "variance of residuals, and their correlation", unit: "rad2, 1" },
-        Symbol { symbol: "s⊥", meaning: "standard error of (A cos 2φ, A sin 2φ) across itself", unit: "1" },
+        Symbol {
+            symbol: "ϕ",
+            meaning: "bearing of a place from the outcrop, counter-clockwise from the crest axis",
+            unit: "rad",
+        },
+        Symbol {
+            symbol: "φ",
+            meaning: "angle from the wind axis to the crest axis, counter-clockwise",
+            unit: "rad",
+        },
+        Symbol {
+            symbol: "A",
+            meaning: "amplitude: 1 for one wind that must go round, less for several winds or a low hill",
+            unit: "1",
+        },
+        Symbol {
+            symbol: "b",
+            meaning: "along the wind (crests wrap round) b_s = −1; across it b_s = +1",
+            unit: "1",
+        },
+        Symbol {
+            symbol: "σ², ρ(h)",
+            meaning: "variance of residuals, and their correlation",
+            unit: "rad2, 1",
+        },
+        Symbol {
+            symbol: "s⊥", meaning: "standard error of (A cos 2φ, A sin 2φ) across itself", unit: "1"
+        },
     ],
     assumptions: &[
         "Crests keep one angle to the local flow close to the outcrop as they do far from it.",
@@ -118,7 +144,8 @@ impl Obliquity {
         let amplitude = p.hypot(q);
         let double = q.atan2(p);
         let (sin, cos) = double.sin_cos();
-        let across = (sin * sin * variance[0] + cos * cos * variance[1] - 2.0 * sin * cos * variance[2]).max(0.0);
+        let across =
+            (sin * sin * variance[0] + cos * cos * variance[1] - 2.0 * sin * cos * variance[2]).max(0.0);
         let reach = t * across.sqrt();
         let half_deg = (reach < amplitude).then(|| 0.5 * (reach / amplitude).asin().to_degrees());
         Self { amplitude, signed_deg: 0.5 * double.to_degrees(), half_deg }
@@ -242,7 +269,12 @@ fn annulus_residuals(field: &Field, flow: &Flow, annulus: &Annulus) -> (Vec<Poin
 
 /// The published regression on s = (a/r)² sin 2ϕ and c = (a/r)² cos 2ϕ with intercept, a the radius of equal
 /// area, `crest_turn` counter-clockwise from east; radians.
-pub fn quadrupole(crest_turn: f64, outcrop: &Ellipse, places: &[Point], residuals: &[f64]) -> Option<Quadrupole> {
+pub fn quadrupole(
+    crest_turn: f64,
+    outcrop: &Ellipse,
+    places: &[Point],
+    residuals: &[f64],
+) -> Option<Quadrupole> {
     if places.len() < LEAST_NODES {
         return None;
     }

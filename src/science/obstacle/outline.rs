@@ -138,6 +138,8 @@ mod tests {
 
     #[test]
     fn a_line_is_no_outcrop() {
-        assert!(Ellipse::of_ring(&[Point::new(0.0, 0.0), Point::new(1.0, 1.0), Point::new(2.0, 2.0)]).is_none());
+        assert!(
+            Ellipse::of_ring(&[Point::new(0.0, 0.0), Point::new(1.0, 1.0), Point::new(2.0, 2.0)]).is_none()
+        );
     }
 }

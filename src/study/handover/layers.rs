@@ -2,9 +2,9 @@
 
 use std::collections::BTreeMap;
 
+use super::obstacles::outcrop_layer;
 use crate::files::layers::{Column, Geometry, GeometryKind, Layer, Row, Srs, Value};
 use crate::ground::{LengthUnit, Place, Point, Polyline};
-use super::obstacles::outcrop_layer;
 use crate::study::{Findings, Id, OpenRaster, PatchFinding, Sheet, Sources, VerdictFinding};
 
 /// The columns of a table and its rows, without geometry.
@@ -215,8 +215,10 @@ pub fn layers(sheet: &Sheet, findings: &Findings, sources: &Sources) -> Vec<Laye
             let suffix = if many { format!("_{}", raster.0) } else { String::new() };
             let srs = srs(open);
             let outcrops = outcrop_layer(sheet, open, &patches, &srs, &suffix);
-            let own =
-                [patch_layer(sheet, open, &patches, &srs, &suffix), stroke_layer(open, &patches, &srs, &suffix)];
+            let own = [
+                patch_layer(sheet, open, &patches, &srs, &suffix),
+                stroke_layer(open, &patches, &srs, &suffix),
+            ];
             own.into_iter().chain(outcrops)
         })
         .collect()

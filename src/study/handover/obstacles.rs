@@ -4,9 +4,7 @@ use serde_json::{Value as Json, json};
 
 use crate::files::layers::{Column, Geometry, GeometryKind, Layer, Row, Srs, Value};
 use crate::science::obstacle::{Obliquity, Outcome};
-use crate::study::{
-    Findings, ObstacleFinding, ObstaclesFinding, OpenRaster, PatchFinding, Sheet, Sources,
-};
+use crate::study::{Findings, ObstacleFinding, ObstaclesFinding, OpenRaster, PatchFinding, Sheet, Sources};
 
 use super::layers::Table;
 
@@ -100,8 +98,7 @@ pub fn outcrop_layer(
 /// Outcrops in longitude and latitude, for GeoJSON; only for rasters on Earth.
 pub fn lonlat_outcrops(sheet: &Sheet, findings: &Findings, sources: &Sources) -> Option<Layer> {
     let earth = crate::ground::Body::earth();
-    let on_earth =
-        |open: &&OpenRaster| open.place.is_georeferenced() && open.place.body.shape == earth.shape;
+    let on_earth = |open: &&OpenRaster| open.place.is_georeferenced() && open.place.body.shape == earth.shape;
     let mut layers = sources.rasters.iter().filter(|(_, open)| on_earth(open)).filter_map(|(id, open)| {
         let patches: Vec<_> = findings.patches.iter().filter(|p| p.raster == *id).collect();
         outcrop_layer(sheet, open, &patches, &Srs::lonlat(&open.place.body), "")
