@@ -1,5 +1,6 @@
 //! Alignment theories, and the weighing of a measured trend against them.
 
+pub mod backwards;
 pub mod bed_instability;
 pub mod discriminator;
 pub mod equivalence;
@@ -26,6 +27,8 @@ pub const METHODS: &[&Method] = &[
     &fingering::METHOD,
     &discriminator::METHOD,
     &migration::METHOD,
+    &backwards::METHOD,
+    &backwards::FORKS,
     &obliquity::METHOD,
     &likelihood::METHOD,
     &equivalence::METHOD,
