@@ -4,7 +4,7 @@ use std::path::PathBuf;
 use std::sync::Arc;
 
 use crate::plate::Figure;
-use crate::study::{Id, OpenRaster};
+use crate::study::{Id, OpenRaster, TogetherFinding};
 
 use super::{
     Command, Delivery, Import, Measured, Model, Opened, Reading, SheetCommand, Slot, WindResult, apply,
@@ -17,6 +17,8 @@ pub enum Answer {
     Raster(Id, Option<OpenRaster>, Opened),
     Patch(Id, Box<Measured>),
     Winds(Vec<WindResult>),
+    /// What all patches say together, as the sheet of this fingerprint stood.
+    Together(String, Box<TogetherFinding>),
     /// A wind file with what it is taken for.
     Preview(Box<Result<Import, String>>),
     /// What the file in the preview gives.
@@ -62,6 +64,7 @@ fn take(model: &mut Model, answer: Answer) {
         }
         Answer::Patch(id, measured) => session.results.take_patch(id, *measured),
         Answer::Winds(results) => results.into_iter().for_each(|r| session.results.take_wind(r)),
+        Answer::Together(sheet, together) => session.results.take_together(sheet, *together),
         Answer::Preview(import) => match *import {
             Ok(import) => session.import = Some(import),
             Err(why) => session.notices.problem(format!("No winds could be read: {why}")),

@@ -4,7 +4,7 @@
 use std::path::{Path, PathBuf};
 
 use crate::files::wind_table::{self, WindImport};
-use crate::ground::{Azimuth, Body, Caution, WindRecord};
+use crate::ground::{Azimuth, Body, Caution, LonLat, WindRecord};
 use crate::study::{Id, WindEntry};
 
 /// The file in the preview.
@@ -17,6 +17,7 @@ pub struct Import {
     pub height_m: f64,
     pub roughness_m: f64,
     pub body: Option<Body>,
+    pub at: Option<LonLat>,
     /// How it is read; the user's to change.
     pub import: WindImport,
     /// The first rows of the file as cells, header lines included.
@@ -73,6 +74,7 @@ impl Import {
             height_m: MAST_M,
             roughness_m: ROUGHNESS_M,
             body,
+            at: None,
             import: guess.import,
             cells: guess.preview,
             column_names: guess.column_names,
@@ -94,6 +96,7 @@ impl Import {
             name: entry.name.clone(),
             height_m: entry.height_m,
             roughness_m: entry.roughness_m,
+            at: entry.at,
             import: entry.import.clone(),
             ..guessed
         })
@@ -120,6 +123,7 @@ impl Import {
             height_m: self.height_m,
             roughness_m: self.roughness_m,
             body: self.body,
+            at: self.at,
         }
     }
 }

@@ -9,7 +9,8 @@ use crate::study::run::{Memo, run_patch, run_winds};
 use crate::study::sources::read_wind;
 use crate::study::window::Detail;
 use crate::study::winds::WindStudy;
-use crate::study::{Failure, Id, OpenRaster, Sheet, Sources, WindEntry, fingerprint};
+use crate::study::together::together;
+use crate::study::{Failure, Id, OpenRaster, PatchFinding, Sheet, Sources, WindEntry, fingerprint};
 
 use super::{Answer, Measured, Model, Opened, Post, Slot, Standing, WindResult};
 
@@ -52,7 +53,8 @@ pub fn follow(model: &mut Model) {
     } else if !model.session.history.is_merging() {
         let wanting = model.session.results.wanting(&model.sheet);
         let winds_wanting = !model.session.results.has_winds(&model.sheet);
-        if !wanting.is_empty() || winds_wanting {
+        let together_wanting = model.session.results.together(&now).is_none();
+        if !wanting.is_empty() || winds_wanting || together_wanting {
             // The patch in hand comes first.
             let (first, rest): (Vec<_>, Vec<_>) = wanting.into_iter().partition(|id| Some(*id) == in_hand);
             start(model, Task::Exact(now), first.into_iter().chain(rest).collect());
@@ -71,6 +73,7 @@ fn start(model: &mut Model, task: Task, patches: Vec<Id>) {
         (Task::Exact(_), [one]) => {
             format!("Measuring {}", model.sheet.patch(*one).map_or("", |p| p.name.as_str()))
         }
+        (Task::Exact(_), []) => "Comparing patches".to_owned(),
         (Task::Exact(_), many) => format!("Measuring {} patches", many.len()),
     };
     let round = Round {
@@ -107,7 +110,28 @@ impl Round {
         let (winds, wrong) = run_winds(&self.sheet, &sources, &self.kept.memo, work)?;
         failures.extend(wrong);
         post.answer(Answer::Winds(self.judged_winds(&winds, &failures)));
-        self.patches.iter().try_for_each(|id| self.patch(*id, &sources, &winds, Detail::Exact, work, post))
+        self.patches.iter().try_for_each(|id| self.patch(*id, &sources, &winds, Detail::Exact, work, post))?;
+        self.together(&sources, &winds, work, post)
+    }
+
+    /// What all patches say together; those measured before are remembered.
+    fn together(
+        &self,
+        sources: &Sources,
+        winds: &[Arc<WindStudy>],
+        work: &Work,
+        post: &Post<Answer>,
+    ) -> Result<(), Stopped> {
+        let mut found = Vec::new();
+        for patch in &self.sheet.patches {
+            let outcome =
+                run_patch(&self.sheet, sources, patch.id, winds, Detail::Exact, &self.kept.memo, work)?;
+            found.extend(outcome.ok());
+        }
+        let findings: Vec<&PatchFinding> = found.iter().map(Arc::as_ref).collect();
+        let together = together(&self.sheet, &findings, winds);
+        post.answer(Answer::Together(fingerprint::of_sheet(&self.sheet), Box::new(together)));
+        Ok(())
     }
 
     /// What came of each wind record, with the fingerprint of what was asked.

@@ -4,6 +4,7 @@
 use std::path::PathBuf;
 
 use crate::ground::Body;
+use crate::study::judges::{self, Judges};
 use crate::study::{Id, Patch, RasterEntry, Sheet, WindEntry};
 
 use super::{Opened, Session, View, Wake, engine, laying, measuring, plates};
@@ -42,9 +43,14 @@ impl Model {
 
     /// The wind record on the bench: the user's choice, the selected patch's own, or the first.
     pub fn shown_wind(&self) -> Option<&WindEntry> {
-        let own = self.selected_patch().and_then(|patch| patch.wind);
+        let own = self.selected_patch().and_then(|patch| self.judges(patch).records.first().copied());
         let chosen = self.view.wind.or(own).and_then(|id| self.sheet.wind(id));
         chosen.or(self.sheet.winds.first())
+    }
+
+    /// The records that judge `patch`, as far as its raster is open.
+    pub fn judges(&self, patch: &Patch) -> Judges {
+        judges::of_patch(&self.sheet, patch, self.session.sources.get(&patch.raster).map(|o| &o.place))
     }
 
     /// Whether the sheet differs from what is on disk.

@@ -3,13 +3,15 @@
 
 use std::collections::BTreeMap;
 
-use crate::study::{Failure, Id, PatchFinding, Sheet, WindEntry, WindFinding, fingerprint};
+use crate::study::{Failure, Id, PatchFinding, Sheet, TogetherFinding, WindEntry, WindFinding, fingerprint};
 
 /// All results of the session.
 #[derive(Debug, Default)]
 pub struct Results {
     patches: BTreeMap<Id, Measured>,
     winds: BTreeMap<Id, WindResult>,
+    /// What they say together, with the fingerprint of the sheet.
+    together: Option<(String, TogetherFinding)>,
     /// Fingerprints of the patches as the sheet stands now.
     now: BTreeMap<Id, String>,
 }
@@ -69,6 +71,15 @@ impl Results {
 
     pub fn measured(&self, id: Id) -> Option<&Measured> {
         self.patches.get(&id)
+    }
+
+    pub fn take_together(&mut self, sheet: String, together: TogetherFinding) {
+        self.together = Some((sheet, together));
+    }
+
+    /// What all patches say together, if that is as the sheet of this fingerprint stands.
+    pub fn together(&self, sheet: &str) -> Option<&TogetherFinding> {
+        self.together.as_ref().filter(|(of, _)| of == sheet).map(|(_, together)| together)
     }
 
     pub fn wind(&self, id: Id) -> Option<&WindResult> {

@@ -11,3 +11,13 @@ pub struct SandFlow {
     pub toward: Azimuth,
     pub weight: f64,
 }
+
+/// The sand flow of a whole record, and of the parts of it that some theories single out.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Regime {
+    pub all: Vec<SandFlow>,
+    /// Of the strongest sand-moving winds only.
+    pub storms: Vec<SandFlow>,
+    /// Of the season that moves most sand; empty for a record without a clock.
+    pub season: Vec<SandFlow>,
+}

@@ -21,7 +21,7 @@ pub use affine::Affine;
 pub use angle::{Axis, Azimuth};
 pub use body::{Air, Body, BodyShape};
 pub use caution::Caution;
-pub use flow::SandFlow;
+pub use flow::{Regime, SandFlow};
 pub use geodesic::Geodesic;
 pub use grid::Grid;
 pub use local_frame::LocalFrame;

@@ -5,12 +5,14 @@ use std::sync::Arc;
 
 use proj4rs::Proj;
 use proj4rs::transform::transform;
+use serde::{Deserialize, Serialize};
 
 use super::{BodyShape, Point};
 
 /// Planetographic (geodetic) position: degrees, longitude positive east in [−180, 180], latitude
 /// in [−90, 90].
-#[derive(Clone, Copy, Debug, PartialEq)]
+#[derive(Clone, Copy, Debug, PartialEq, Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
 pub struct LonLat {
     pub lon: f64,
     pub lat: f64,

@@ -48,7 +48,7 @@ pub fn measure(options: &Measure) -> Result<Outcome, Trouble> {
     });
     for (name, outline, tags) in patches(options, &open)? {
         let id = sheet.fresh_id();
-        sheet.patches.push(Patch { id, name, raster: Id(1), outline, tags, wind: None });
+        sheet.patches.push(Patch { tags, ..Patch::new(id, name, Id(1), outline) });
     }
     if let Some(file) = &options.winds {
         let entry = wind(file, sheet.fresh_id(), &open.place.body)?;
@@ -111,5 +111,6 @@ fn wind(file: &Path, id: Id, body: &Body) -> Result<WindEntry, Trouble> {
         height_m: 10.0,
         roughness_m: 1e-3,
         body: Some(body.clone()),
+        at: None,
     })
 }

@@ -285,6 +285,10 @@ pub(super) mod tests {
         TheoryFinding {
             name,
             method: "alignment.test",
+            extends: false,
+            toward: None,
+            strength: axis.map(|_| 0.5),
+            equivalence: None,
             axis: axis.map(Axis::from_deg),
             ties: Vec::new(),
             spread_deg: Some(4.0),
@@ -311,6 +315,12 @@ pub(super) mod tests {
                 theory("gross bedform-normal", Some(85.0), 0.8),
                 theory("random axis", None, 0.1),
             ],
+            elongation: None,
+            building: crate::study::BuildingFinding { crossed: 0.9, random: 0.1, ..Default::default() },
+            supply_ln: None,
+            growth_ratio: None,
+            migration: Vec::new(),
+            flips: Vec::new(),
             alignment_strength: Some(0.4),
             cautions: Vec::new(),
         }

@@ -2,7 +2,7 @@
 
 use std::collections::BTreeSet;
 
-use super::{Failure, Id, SETTINGS, Sheet, Sources};
+use super::{Failure, Id, SETTINGS, Sheet, Sources, WindChoice, judges};
 
 /// What would fail or mislead when the sheet is run: files that do not open, names that point nowhere,
 /// outlines without area or off their raster, settings out of range.
@@ -25,10 +25,8 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
             say("settings".into(), problem);
         }
     }
-    if !sheet.settings.verdict.priors.iter().all(|p| p.is_finite() && *p >= 0.0)
-        || sheet.settings.verdict.priors.iter().sum::<f64>() <= 0.0
-    {
-        say("settings".into(), "verdict.priors must be numbers ≥ 0, not all zero".into());
+    if sheet.settings.verdict.priors.weights().iter().sum::<f64>() <= 0.0 {
+        say("settings".into(), "verdict.priors are all zero; at least one theory needs a weight".into());
     }
     let bins = 180.0 / sheet.settings.statistics.rose_bin_deg;
     if (bins - bins.round()).abs() > 1e-9 {
@@ -39,8 +37,15 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
         if patch.outline.outer.len() < 3 || patch.outline.area() <= 0.0 {
             say(what.clone(), "its outline has no area; outline it again".into());
         }
-        if let Some(wind) = patch.wind.filter(|id| sheet.wind(*id).is_none()) {
+        for wind in patch.winds.named().iter().filter(|id| sheet.wind(**id).is_none()) {
             say(what.clone(), format!("it names wind record {}, which the sheet does not have", wind.0));
+        }
+        if matches!(&patch.winds, WindChoice::Chosen(ids) if ids.is_empty()) {
+            say(what.clone(), "it chooses its wind records, but names none".into());
+        }
+        if let (WindChoice::Nearest, Some(open)) = (&patch.winds, sources.rasters.get(&patch.raster)) {
+            let judges = judges::of_patch(sheet, patch, Some(&open.place));
+            judges.cautions.into_iter().for_each(|c| say(what.clone(), c.text));
         }
         match (sheet.raster(patch.raster), sources.rasters.get(&patch.raster), patch.outline.bounds()) {
             (None, ..) => {

@@ -11,7 +11,7 @@ use crate::ground::{Body, Seed, WindRecord};
 use crate::science::scene::reach;
 
 use super::sheet_file::SheetFile;
-use super::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindEntry};
+use super::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
 
 /// Everything of the demo grows from this seed.
 pub const SEED: Seed = Seed(1);
@@ -113,17 +113,14 @@ pub fn sheet(folder: &Path) -> Sheet {
             height_m: 10.0,
             roughness_m: 1e-3,
             body: Some(Body::halvane()),
+            at: None,
         });
     }
     for (i, truth) in reach::patches().into_iter().enumerate() {
         let wind = if truth.name.starts_with("Corridor") { CORRIDOR_MAST_ID } else { REACH_MAST_ID };
         sheet.patches.push(Patch {
-            id: Id(5 + i as u32),
-            name: truth.name.into(),
-            raster: MOSAIC_ID,
-            outline: truth.outline,
-            tags: Vec::new(),
-            wind: Some(wind),
+            winds: WindChoice::Chosen(vec![wind]),
+            ..Patch::new(Id(5 + i as u32), truth.name, MOSAIC_ID, truth.outline)
         });
     }
     sheet

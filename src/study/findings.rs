@@ -6,7 +6,10 @@
 
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
-use super::{DriftFinding, Id, SeasonFinding, SetAside};
+use super::{
+    BuildingFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id, MigrationFinding, SeasonFinding, SensitivityFinding,
+    SetAside,
+};
 
 /// All results of one run.
 #[derive(Clone, Debug, Default, PartialEq)]
@@ -16,6 +19,8 @@ pub struct Findings {
     pub rasters: Vec<RasterFinding>,
     pub winds: Vec<WindFinding>,
     pub patches: Vec<PatchFinding>,
+    /// What the patches say together.
+    pub together: TogetherFinding,
     /// What failed, by name; everything else is complete.
     pub failures: Vec<Failure>,
 }
@@ -184,6 +189,12 @@ pub struct WindFinding {
     /// Sand flow by 5° sectors of direction TOWARD, in the flux unit, for roses and theories.
     pub rose: Vec<SandFlow>,
     pub seasons: Vec<SeasonFinding>,
+    /// Winds at least as strong count as storms, m s⁻¹ at the anemometer.
+    pub storm_speed: Option<f64>,
+    /// The months that move most sand.
+    pub season: Option<&'static str>,
+    /// The drift under every law and threshold.
+    pub sensitivity: Vec<SensitivityFinding>,
     pub cautions: Vec<Caution>,
 }
 
@@ -202,9 +213,22 @@ pub struct VerdictFinding {
     pub probabilities: Option<[f64; 3]>,
     /// The same for a random axis, so that probability can be read as a ratio.
     pub class_priors: [f64; 3],
+    /// The trend against the way crests extend: the test of "longitudinal".
+    pub elongation: Option<ElongationFinding>,
     pub theories: Vec<TheoryFinding>,
+    /// Posterior by how crests are built.
+    pub building: BuildingFinding,
+    /// ln of the factor by which bed instability is better than fingering: above 0 speaks for full sand
+    /// cover, below for starved ground.
+    pub supply_ln: Option<f64>,
+    /// Growth of the fingering trend over that of the bed-instability trend, at the stated flux-up ratio.
+    pub growth_ratio: Option<f64>,
+    /// Which way crests built by bed instability move, at their trend and those that tie with it.
+    pub migration: Vec<MigrationFinding>,
     /// (T_max − T_min)/(T_max + T_min) of the regime.
     pub alignment_strength: Option<f64>,
+    /// What would change the verdict, the nearest change first.
+    pub flips: Vec<Flip>,
     pub cautions: Vec<Caution>,
 }
 
@@ -212,16 +236,87 @@ pub struct VerdictFinding {
 pub struct TheoryFinding {
     pub name: &'static str,
     pub method: &'static str,
-    /// Mean predicted axis; `None` for the random reference or when undefined.
+    /// Whether crests extend along themselves under it.
+    pub extends: bool,
+    /// Predicted by the whole record; `None` for the random reference or when undefined.
     pub axis: Option<Axis>,
-    /// Other axes that tie with it.
+    /// The end that grows, where the theory tells one.
+    pub toward: Option<Azimuth>,
+    /// Other axes that tie or compete with it.
     pub ties: Vec<Axis>,
+    /// How much better the axis is than others, 0 to 1, in the theory's own measure.
+    pub strength: Option<f64>,
     /// Axial standard deviation of the bootstrap cloud, degrees.
     pub spread_deg: Option<f64>,
+    /// Whether the trend agrees with the prediction within the margin.
+    pub equivalence: Option<EquivalenceFinding>,
     pub prior: f64,
     pub posterior: f64,
     /// ln of the Bayes factor against a random axis.
     pub ln_bayes_factor: f64,
     /// Predicted obliquities (degrees from the resultant) of the bootstrap draws, thinned for show.
     pub cloud_deg: Vec<f32>,
+}
+
+/// A parameter and the value at which the verdict turns.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Flip {
+    pub parameter: &'static str,
+    /// As it stands, with its unit.
+    pub now: String,
+    /// Where the verdict has turned, with its unit.
+    pub at: String,
+    /// What turns into what.
+    pub change: String,
+    /// How far that is in units of the parameter's own doubt; below 1 the change lies within it.
+    /// `None` for a choice, such as the law.
+    pub reach: Option<f64>,
+}
+
+/// What the patches say together.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct TogetherFinding {
+    /// One for each record that judges two trends or more.
+    pub joint: Vec<JointFinding>,
+    /// The tests for a preferred trend, with false discoveries controlled.
+    pub discoveries: Vec<Discovery>,
+}
+
+/// Several trends judged by one record under one theory.
+#[derive(Clone, Debug, PartialEq)]
+pub struct JointFinding {
+    pub winds: Id,
+    pub winds_name: String,
+    pub trends: Vec<JointTrend>,
+    pub theories: Vec<JointTheory>,
+    pub sentence: String,
+}
+
+#[derive(Clone, Debug, PartialEq)]
+pub struct JointTrend {
+    /// The patch, and which of its populations when it has several.
+    pub name: String,
+    pub axis: Axis,
+    /// ln of the factor by which bed instability is better than fingering here.
+    pub supply_ln: f64,
+}
+
+#[derive(Clone, Debug, PartialEq)]
+pub struct JointTheory {
+    pub name: &'static str,
+    pub posterior: f64,
+    pub ln_bayes_factor: f64,
+}
+
+/// A patch's test for a preferred trend among all of the sheet's.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Discovery {
+    pub patch: Id,
+    pub name: String,
+    pub p: f64,
+    /// Benjamini–Hochberg: claiming all with q at or below a level keeps the expected share of false
+    /// claims at that level.
+    pub q: f64,
+    /// Whether the patch claims a trend by its own p.
+    pub claimed: bool,
 }

@@ -4,26 +4,33 @@
 use serde_json::{Value, json};
 use sha2::{Digest as _, Sha256};
 
-use super::{Patch, RasterEntry, Sheet, WindEntry};
+use super::{Patch, RasterEntry, Sheet, WindChoice, WindEntry};
 
 /// SHA-256 of the sheet without what only changes how it looks (tone, notes) and without folders, so
 /// that a colleague's copy elsewhere has the same fingerprint.
 pub fn of_sheet(sheet: &Sheet) -> String {
     let rasters: Vec<_> = sheet.rasters.iter().map(raster).collect();
-    let winds: Vec<_> = sheet.winds.iter().map(wind).collect();
+    let winds: Vec<_> = sheet.winds.iter().map(placed_wind).collect();
     digest(&json!([sheet.seed, rasters, sheet.patches, winds, sheet.settings]))
 }
 
 /// SHA-256 of all that makes a patch's finding: its outline, its raster, the settings, the winds it
 /// is judged by, the seed.
 pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
-    let winds: Vec<_> =
-        sheet.winds.iter().filter(|w| patch.wind.is_none_or(|id| id == w.id)).map(wind).collect();
+    // Any record may become the nearest when it is moved, so all of them count there, with their places.
+    let winds: Vec<_> = match &patch.winds {
+        WindChoice::All | WindChoice::Nearest => sheet.winds.iter().map(placed_wind).collect(),
+        WindChoice::Chosen(ids) => {
+            sheet.winds.iter().filter(|w| ids.contains(&w.id)).map(placed_wind).collect()
+        }
+    };
     digest(&json!([
         sheet.seed,
         patch.id,
         patch.outline,
+        patch.stated_axis,
         sheet.raster(patch.raster).map(raster),
+        patch.winds == WindChoice::Nearest,
         winds,
         sheet.settings
     ]))
@@ -31,7 +38,8 @@ pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
 
 /// SHA-256 of all that makes a record's finding.
 pub fn of_wind(sheet: &Sheet, entry: &WindEntry) -> String {
-    digest(&json!([sheet.seed, wind(entry), sheet.settings.wind]))
+    let v = &sheet.settings.verdict;
+    digest(&json!([sheet.seed, wind(entry), sheet.settings.wind, v.flux_up, v.flux_up_doubt]))
 }
 
 fn raster(r: &RasterEntry) -> Value {
@@ -41,6 +49,11 @@ fn raster(r: &RasterEntry) -> Value {
 fn wind(w: &WindEntry) -> Value {
     let file = w.path.file_name().map(|n| n.to_string_lossy());
     json!([w.id, file, w.import, w.height_m, w.roughness_m, w.body])
+}
+
+/// With its place, which chooses among records and is no part of what one says.
+fn placed_wind(w: &WindEntry) -> Value {
+    json!([wind(w), w.at])
 }
 
 fn digest(value: &Value) -> String {
@@ -56,14 +69,7 @@ mod tests {
     #[test]
     fn renaming_keeps_a_patch_current_and_moving_a_vertex_does_not() {
         let mut sheet = Sheet::empty("t");
-        let patch = Patch {
-            id: Id(1),
-            name: "a".into(),
-            raster: Id(2),
-            outline: Polygon::rectangle(10.0, 10.0),
-            tags: vec![],
-            wind: None,
-        };
+        let patch = Patch::new(Id(1), "a", Id(2), Polygon::rectangle(10.0, 10.0));
         sheet.patches.push(patch.clone());
         let before = of_patch(&sheet, &patch);
         let renamed = Patch { name: "b".into(), ..patch.clone() };

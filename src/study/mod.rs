@@ -7,6 +7,8 @@ mod findings;
 pub mod fingerprint;
 pub mod glance;
 pub mod handover;
+pub mod judges;
+mod migrate;
 mod patch;
 mod records;
 pub mod run;
@@ -15,20 +17,27 @@ mod settings;
 mod sheet;
 pub mod sheet_file;
 pub mod sources;
+pub mod together;
 mod verdict;
+mod what_if;
 pub mod window;
 pub mod winds;
 
+pub use crate::science::alignment::equivalence::Equivalence as EquivalenceFinding;
+pub use crate::science::alignment::migration::Migration as MigrationFinding;
+pub use crate::science::alignment::{Building as BuildingFinding, Elongation as ElongationFinding};
+pub use crate::science::wind::Sensitivity as SensitivityFinding;
 pub use crate::science::wind::quality::SetAside;
 pub use crate::science::wind::regime::{Drift as DriftFinding, Season as SeasonFinding};
 pub use findings::{
-    Failure, Findings, ModeFinding, Node, PatchFinding, RasterFinding, SpectrumFinding, SpectrumPicture,
-    TheoryFinding, TrendFinding, VerdictFinding, WindFinding,
+    Discovery, Failure, Findings, Flip, JointFinding, JointTheory, JointTrend, ModeFinding, Node, PatchFinding,
+    RasterFinding, SpectrumFinding, SpectrumPicture, TheoryFinding, TogetherFinding, TrendFinding,
+    VerdictFinding, WindFinding,
 };
 pub use records::{SETTINGS, Setting, SettingKind, SettingValue};
 pub use settings::{
-    Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw, TrendSettings,
-    VerdictSettings, WindSettings,
+    LettauConstant, Priors, Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw,
+    TrendSettings, VerdictSettings, WindSettings,
 };
-pub use sheet::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindEntry};
+pub use sheet::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
 pub use sources::{OpenRaster, Sources};

@@ -46,7 +46,7 @@ pub fn patch_finding(
     let spectrum_finding = spectrum_finding(&spectrum, &pixels);
     let mut verdicts = Vec::new();
     for winds in judges {
-        let mut judged = verdict(sheet, &trend, winds, work)?;
+        let mut judged = verdict(sheet, patch, &trend, winds, work)?;
         judged
             .cautions
             .extend(sheet.wind(winds.finding.id).and_then(|w| winds::other_body(w, &open.place.body)));

@@ -1,7 +1,7 @@
 //! Each setting described once: key, label, unit, range, default, help. Forms, `check`, the
 //! documents and hover texts read these records.
 
-use super::{Settings, ThresholdLaw, TransportLaw};
+use super::{LettauConstant, Settings, ThresholdLaw, TransportLaw};
 
 /// One setting.
 pub struct Setting {
@@ -74,7 +74,7 @@ impl Setting {
 
 /// Numbers, automatic numbers and whole numbers are told apart by the field's type.
 macro_rules! number {
-    ($key:literal, $label:literal, $unit:literal, $least:expr, $greatest:expr, $($field:ident).+, $help:literal) => {
+    ($key:literal, $label:expr, $unit:literal, $least:expr, $greatest:expr, $($field:ident).+, $help:literal) => {
         Setting {
             key: $key,
             label: $label,
@@ -97,6 +97,20 @@ macro_rules! auto {
             get: |s| SettingValue::Auto(s.$($field).+),
             set: |s, v| if let SettingValue::Auto(v) = v { s.$($field).+ = v },
         }
+    };
+}
+/// A prior weight.
+macro_rules! prior {
+    ($key:literal, $theory:literal, $($field:ident).+) => {
+        number!(
+            $key,
+            concat!("Prior of ", $theory),
+            "1",
+            0.0,
+            1000.0,
+            $($field).+,
+            "Weight given to the theory before the ground is looked at; only ratios count, 0 leaves it out."
+        )
     };
 }
 macro_rules! whole {
@@ -127,6 +141,9 @@ const TRANSPORT_LAWS: [(TransportLaw, &str, &str); 6] = [
     (TransportLaw::Lettau, "lettau", "Lettau & Lettau 1978"),
     (TransportLaw::Kok, "kok", "Kok et al. 2012, linear in stress"),
 ];
+
+const LETTAU_CONSTANTS: [(LettauConstant, &str, &str); 2] =
+    [(LettauConstant::High, "6.7", "6.7"), (LettauConstant::Low, "4.2", "4.2")];
 
 /// Every setting, in the order of the reasoning.
 pub const SETTINGS: &[Setting] = &[
@@ -310,6 +327,69 @@ pub const SETTINGS: &[Setting] = &[
         "Draws of the record behind drift intervals and theory clouds."
     ),
     number!(
+        "wind.cohesion_kg_s2",
+        "Cohesion γ",
+        "kg/s²",
+        1e-5,
+        1e-2,
+        wind.cohesion_kg_s2,
+        "What holds grains together in Shao and Lu's threshold; 1.65e-4 to 5e-4 is published. Under low gravity it decides the threshold."
+    ),
+    number!(
+        "wind.grain_doubt",
+        "Doubt of the grain diameter",
+        "1",
+        1.0,
+        10.0,
+        wind.grain_doubt,
+        "The diameter is known to within this factor: it may be the value divided by it, or times it."
+    ),
+    number!(
+        "wind.grain_density_doubt",
+        "Doubt of the grain density",
+        "1",
+        1.0,
+        10.0,
+        wind.grain_density_doubt,
+        "The grain density is known to within this factor."
+    ),
+    number!(
+        "wind.cohesion_doubt",
+        "Doubt of the cohesion",
+        "1",
+        1.0,
+        10.0,
+        wind.cohesion_doubt,
+        "The cohesion is known to within this factor; 1.7 spans what is published."
+    ),
+    Setting {
+        key: "wind.lettau_constant",
+        label: "Lettau's constant",
+        unit: "1",
+        help: "Sources differ: 6.7 or 4.2. It scales the flux and leaves trends alone.",
+        kind: SettingKind::Choice(&[("6.7", "6.7"), ("4.2", "4.2")]),
+        get: |s| SettingValue::Choice(key_of(&LETTAU_CONSTANTS, s.wind.lettau_constant)),
+        set: |s, v| choose(&LETTAU_CONSTANTS, v, &mut s.wind.lettau_constant),
+    },
+    number!(
+        "wind.roughness_doubt",
+        "Roughness, factor of doubt",
+        "1",
+        1.0,
+        100.0,
+        wind.roughness_doubt,
+        "The roughness at the mast lies between value/factor and value × factor; the draws take it from there."
+    ),
+    number!(
+        "wind.storm_quantile",
+        "Storms begin at",
+        "1",
+        0.5,
+        0.999,
+        wind.storm_quantile,
+        "Share of the time with moving sand that is spent below storm speed; the storm theories see only the winds above."
+    ),
+    number!(
         "verdict.model_error_deg",
         "Model error",
         "°",
@@ -345,6 +425,34 @@ pub const SETTINGS: &[Setting] = &[
         verdict.least_strength,
         "Below this contrast of bedform-normal transport a predicted trend is not meaningful and no verdict is given."
     ),
+    number!(
+        "verdict.flux_up",
+        "Flux-up ratio Γ",
+        "1",
+        0.0,
+        10.0,
+        verdict.flux_up,
+        "How much faster sand moves over a crest than over flat ground: 0 not at all, 1.6 in numerical dunes."
+    ),
+    number!(
+        "verdict.flux_up_doubt",
+        "Flux-up ratio, factor of doubt",
+        "1",
+        1.0,
+        5.0,
+        verdict.flux_up_doubt,
+        "The flux-up ratio lies between value/factor and value × factor; sources print 1.5 to 2."
+    ),
+    prior!("verdict.priors.transverse", "transverse to the resultant", verdict.priors.transverse),
+    prior!("verdict.priors.along", "along the resultant", verdict.priors.along),
+    prior!("verdict.priors.gross_normal", "gross bedform-normal", verdict.priors.gross_normal),
+    prior!("verdict.priors.bed_instability", "bed instability", verdict.priors.bed_instability),
+    prior!("verdict.priors.fingering", "fingering", verdict.priors.fingering),
+    prior!("verdict.priors.storms_across", "bed instability, storms only", verdict.priors.storms_across),
+    prior!("verdict.priors.storms_along", "fingering, storms only", verdict.priors.storms_along),
+    prior!("verdict.priors.season", "bed instability, strongest season", verdict.priors.season),
+    prior!("verdict.priors.stated", "stated axis", verdict.priors.stated),
+    prior!("verdict.priors.random", "random axis", verdict.priors.random),
 ];
 
 fn key_of<T: Copy + PartialEq>(laws: &[(T, &'static str, &'static str)], law: T) -> &'static str {
@@ -396,8 +504,9 @@ mod tests {
         }
         let fields: usize =
             json.as_object().unwrap().values().map(|part| part.as_object().unwrap().len()).sum();
-        // The four priors are one field, edited on the verdict page.
-        assert_eq!(SETTINGS.len(), fields - 1);
+        // The priors are one field of the verdict's, with a record each.
+        let priors = json["verdict"]["priors"].as_object().unwrap().len();
+        assert_eq!(SETTINGS.len(), fields - 1 + priors);
     }
 
     #[test]

@@ -5,7 +5,9 @@ use std::sync::{Arc, Mutex, PoisonError};
 
 use crate::ground::{Stopped, Work};
 
+use super::judges::{self, Judges};
 use super::patch::patch_finding;
+use super::together::together;
 use super::window::Detail;
 use super::winds::{self, WindStudy};
 use super::{
@@ -39,6 +41,7 @@ pub fn run(sheet: &Sheet, sources: &Sources, memo: &Memo, work: &Work) -> Result
     Ok(Findings {
         sheet_fingerprint: fingerprint::of_sheet(sheet),
         rasters: rasters.collect(),
+        together: together(sheet, &patches.iter().collect::<Vec<_>>(), &winds),
         winds: winds.into_iter().map(|w| w.finding.clone()).collect(),
         patches,
         failures,
@@ -96,15 +99,18 @@ pub fn run_patch(
         return Ok(Err(format!("its raster “{}” is not open", entry.name)));
     };
     let exact = detail == Detail::Exact;
-    let judges: Vec<_> = winds.iter().filter(|w| patch.wind.is_none_or(|id| id == w.finding.id)).collect();
+    let Judges { records, cautions } = judges::of_patch(sheet, patch, Some(&open.place));
+    let judges: Vec<_> = winds.iter().filter(|w| records.contains(&w.finding.id)).collect();
     let names: Vec<_> = judges.iter().map(|w| w.finding.name.as_str()).collect();
     let key = format!("{} {} {}", fingerprint::of_patch(sheet, patch), patch.name, names.join(" "));
     if let Some(known) = recall(&memo.patches, &key).filter(|_| exact) {
         return Ok(Ok(known));
     }
     match patch_finding(sheet, patch, entry, open, &judges, detail, work)? {
-        Ok(finding) if exact => Ok(Ok(keep(&memo.patches, key, finding))),
-        Ok(finding) => Ok(Ok(Arc::new(finding))),
+        Ok(mut finding) => {
+            finding.cautions.extend(cautions);
+            Ok(Ok(if exact { keep(&memo.patches, key, finding) } else { Arc::new(finding) }))
+        }
         Err(why) => Ok(Err(why)),
     }
 }

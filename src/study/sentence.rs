@@ -58,25 +58,38 @@ fn judged(v: &VerdictFinding) -> String {
     if let Some(reason) = &v.refused {
         return format!("no verdict on {}: {reason}", v.winds_name);
     }
-    let (Some(obliquity), Some(classes)) = (v.obliquity_deg, v.probabilities) else {
-        return format!("no verdict on {}", v.winds_name);
-    };
-    let names = ["longitudinal", "oblique", "transverse"];
-    let best = (0..3).max_by(|a, b| classes[*a].total_cmp(&classes[*b])).unwrap_or(1);
-    let interval =
-        v.obliquity_ci95_deg.map_or(String::new(), |[low, high]| format!(" ({low:.0}° to {high:.0}°)"));
-    let theory = v
-        .theories
-        .iter()
-        .max_by(|a, b| a.posterior.total_cmp(&b.posterior))
-        .map_or(String::new(), |t| format!(", best told by “{}” ({:.0} %)", t.name, 100.0 * t.posterior));
-    format!(
-        "{obliquity:.0}°{interval} from the resultant drift of {}: {} with probability {:.0} % (random axis: {:.0} %){theory}",
-        v.winds_name,
-        names[best],
-        100.0 * classes[best],
-        100.0 * v.class_priors[best]
-    )
+    let mut parts: Vec<String> = Vec::new();
+    if let (Some(obliquity), Some(classes)) = (v.obliquity_deg, v.probabilities) {
+        let names = ["longitudinal", "oblique", "transverse"];
+        let best = (0..3).max_by(|a, b| classes[*a].total_cmp(&classes[*b])).unwrap_or(1);
+        let interval = v
+            .obliquity_ci95_deg
+            .map_or(String::new(), |[low, high]| format!(" ({low:.0}° to {high:.0}°)"));
+        parts.push(format!(
+            "{obliquity:.0}°{interval} from the resultant drift of {}: {} with probability {:.0} % (random axis: {:.0} %)",
+            v.winds_name,
+            names[best],
+            100.0 * classes[best],
+            100.0 * v.class_priors[best]
+        ));
+    } else {
+        parts.push(format!("under {} there is no resultant", v.winds_name));
+    }
+    if let Some(best) = v.theories.iter().max_by(|a, b| a.posterior.total_cmp(&b.posterior)) {
+        let toward = best.toward.map_or(String::new(), |t| format!(", growing toward {:.0}°", t.deg()));
+        parts.push(format!("best told by “{}” ({:.0} %{toward})", best.name, 100.0 * best.posterior));
+    }
+    parts.extend(v.elongation.filter(|_| v.building.extended > v.building.crossed).map(|e| {
+        format!(
+            "{:.0}° ({:.0}° to {:.0}°) from the direction in which these winds extend crests",
+            e.separation_deg, e.ci95_deg[0], e.ci95_deg[1]
+        )
+    }));
+    parts.extend(v.flips.first().map(|flip| {
+        let sure = if flip.reach.is_some_and(|r| r < 1.0) { "would change within doubt" } else { "would change" };
+        format!("it {sure} with {} at {} (now {}): {}", flip.parameter, flip.at, flip.now, flip.change)
+    }));
+    parts.join(", ")
 }
 
 /// A length with three significant figures, in kilometres from 10 km on.

@@ -2,6 +2,10 @@
 
 use serde::{Deserialize, Serialize};
 
+use crate::science::alignment::Theory;
+use crate::science::alignment::bed_instability::FLUX_UP;
+use crate::science::wind::threshold::COHESION;
+
 /// All settings of a sheet.
 #[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
 #[serde(default, deny_unknown_fields)]
@@ -58,6 +62,18 @@ pub struct WindSettings {
     /// Length of the blocks drawn together in the bootstrap, days.
     pub block_days: f64,
     pub resamples: u32,
+    /// Cohesion γ of Shao and Lu, kg s⁻².
+    pub cohesion_kg_s2: f64,
+    /// Grain diameter, grain density and cohesion are known to within these factors, each ≥ 1: the truth
+    /// is taken to lie between value/factor and value × factor.
+    pub grain_doubt: f64,
+    pub grain_density_doubt: f64,
+    pub cohesion_doubt: f64,
+    pub lettau_constant: LettauConstant,
+    /// The roughness at the mast is known to within this factor.
+    pub roughness_doubt: f64,
+    /// Share of the time with moving sand below which a wind is no storm.
+    pub storm_quantile: f64,
 }
 
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
@@ -80,6 +96,15 @@ pub enum TransportLaw {
     Kok,
 }
 
+/// Sources print two constants for Lettau's law.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
+pub enum LettauConstant {
+    #[serde(rename = "6.7")]
+    High,
+    #[serde(rename = "4.2")]
+    Low,
+}
+
 /// The weighing of theories.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
 #[serde(default, deny_unknown_fields)]
@@ -88,12 +113,68 @@ pub struct VerdictSettings {
     pub model_error_deg: f64,
     /// Share of each prediction spread over all axes.
     pub tail_share: f64,
-    /// Prior weights: transverse to resultant, along resultant, gross bedform-normal, random.
-    pub priors: [f64; 4],
+    pub priors: Priors,
     /// Margin within which two axes count as the same, degrees.
     pub margin_deg: f64,
     /// Alignment strength below which a predicted trend means nothing.
     pub least_strength: f64,
+    /// Flux-up ratio Γ: gain of the sand flux over a crest.
+    pub flux_up: f64,
+    /// Γ is known to within this factor.
+    pub flux_up_doubt: f64,
+}
+
+/// What is believed of each theory before the ground is looked at: weights, only their ratios count.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+#[serde(default, deny_unknown_fields)]
+pub struct Priors {
+    pub transverse: f64,
+    pub along: f64,
+    pub gross_normal: f64,
+    pub bed_instability: f64,
+    pub fingering: f64,
+    pub storms_across: f64,
+    pub storms_along: f64,
+    pub season: f64,
+    pub stated: f64,
+    pub random: f64,
+}
+
+impl Priors {
+    /// In the order of [`Theory::ALL`], then the random axis.
+    pub fn weights(&self) -> Vec<f64> {
+        let of = |theory: &Theory| match theory {
+            Theory::Transverse => self.transverse,
+            Theory::Along => self.along,
+            Theory::GrossNormal => self.gross_normal,
+            Theory::BedInstability => self.bed_instability,
+            Theory::Fingering => self.fingering,
+            Theory::StormsAcross => self.storms_across,
+            Theory::StormsAlong => self.storms_along,
+            Theory::Season => self.season,
+            Theory::Stated => self.stated,
+        };
+        Theory::ALL.iter().map(of).chain([self.random]).collect()
+    }
+}
+
+/// The rules for all winds count alike; those for part of the winds, which need a reason, half; chance
+/// as much as one rule.
+impl Default for Priors {
+    fn default() -> Self {
+        Self {
+            transverse: 1.0,
+            along: 1.0,
+            gross_normal: 1.0,
+            bed_instability: 1.0,
+            fingering: 1.0,
+            storms_across: 0.5,
+            storms_along: 0.5,
+            season: 0.5,
+            stated: 1.0,
+            random: 1.0,
+        }
+    }
 }
 
 impl Default for TrendSettings {
@@ -124,6 +205,13 @@ impl Default for WindSettings {
             greatest_speed: 75.0,
             block_days: 7.0,
             resamples: 1000,
+            cohesion_kg_s2: COHESION,
+            grain_doubt: 1.3,
+            grain_density_doubt: 1.05,
+            cohesion_doubt: 1.7,
+            lettau_constant: LettauConstant::High,
+            roughness_doubt: 3.0,
+            storm_quantile: 0.9,
         }
     }
 }
@@ -133,9 +221,11 @@ impl Default for VerdictSettings {
         Self {
             model_error_deg: 5.0,
             tail_share: 0.05,
-            priors: [1.0; 4],
+            priors: Priors::default(),
             margin_deg: 15.0,
             least_strength: 0.1,
+            flux_up: FLUX_UP,
+            flux_up_doubt: 1.25,
         }
     }
 }

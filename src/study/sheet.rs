@@ -6,7 +6,7 @@ use serde::{Deserialize, Serialize};
 
 use crate::files::raster::Bands;
 use crate::files::wind_table::WindImport;
-use crate::ground::{Azimuth, Body, Polygon, Seed};
+use crate::ground::{Axis, Azimuth, Body, LonLat, Polygon, Seed};
 
 use super::Settings;
 
@@ -111,9 +111,32 @@ pub struct Patch {
     pub outline: Polygon,
     #[serde(default, skip_serializing_if = "Vec::is_empty")]
     pub tags: Vec<String>,
-    /// The wind record to judge it by; all records of the sheet when absent.
+    /// The wind records it is judged by.
+    #[serde(default, skip_serializing_if = "WindChoice::is_all")]
+    pub winds: WindChoice,
+    /// An axis known from elsewhere, weighed like a theory.
     #[serde(default, skip_serializing_if = "Option::is_none")]
-    pub wind: Option<Id>,
+    pub stated_axis: Option<Axis>,
+}
+
+impl Patch {
+    /// A patch of which nothing but its outline is said.
+    pub fn new(id: Id, name: impl Into<String>, raster: Id, outline: Polygon) -> Self {
+        let (name, tags, winds) = (name.into(), Vec::new(), WindChoice::All);
+        Self { id, name, raster, outline, tags, winds, stated_axis: None }
+    }
+}
+
+/// Which wind records judge a patch.
+#[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
+#[serde(rename_all = "lowercase")]
+pub enum WindChoice {
+    /// Every record of the sheet, one verdict each.
+    #[default]
+    All,
+    /// The record that stands nearest to the middle of the patch, on the same body.
+    Nearest,
+    Chosen(Vec<Id>),
 }
 
 /// A wind record of the study and how to read it.
@@ -131,6 +154,31 @@ pub struct WindEntry {
     /// The body whose air and gravity apply; Earth when absent.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub body: Option<Body>,
+    /// Where the mast stands or the model's cell lies, when known.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub at: Option<LonLat>,
+}
+
+impl WindChoice {
+    pub fn is_all(&self) -> bool {
+        *self == Self::All
+    }
+
+    /// The records named; none for the other choices.
+    pub fn named(&self) -> &[Id] {
+        if let Self::Chosen(ids) = self { ids } else { &[] }
+    }
+
+    /// The choice once a record is gone; all records when it was the last one named.
+    pub fn without(self, gone: Id) -> Self {
+        match self {
+            Self::Chosen(mut ids) => {
+                ids.retain(|id| *id != gone);
+                if ids.is_empty() { Self::All } else { Self::Chosen(ids) }
+            }
+            other => other,
+        }
+    }
 }
 
 impl Sheet {

@@ -6,9 +6,10 @@ use std::path::{Component, Path, PathBuf};
 use serde::{Deserialize, Serialize};
 
 use super::Sheet;
+use super::migrate::migrate;
 
 /// The format this program writes.
-pub const FORMAT: u32 = 1;
+pub const FORMAT: u32 = 2;
 
 /// What a `NAME.sheet.json` holds.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
@@ -24,8 +25,13 @@ pub struct SheetFile {
 /// A sheet file that cannot be used.
 #[derive(Debug, thiserror::Error)]
 pub enum SheetFileError {
-    #[error("not a sheet: {reason} (at {path}, line {line})")]
-    Malformed { path: String, line: usize, reason: String },
+    #[error("not a sheet: {reason} (at {path}, {place})")]
+    Malformed {
+        path: String,
+        /// The line, or that an older sheet was brought up to this format before.
+        place: String,
+        reason: String,
+    },
     #[error(
         "the sheet has format {found}, this program reads up to {FORMAT}; open it with a newer version of the program"
     )]
@@ -40,7 +46,8 @@ impl SheetFile {
     /// Reads the text of a sheet that lies in `folder`; relative paths become paths from there.
     ///
     /// # Errors
-    /// [`SheetFileError`] naming the path of the field that is wrong, or the newer format.
+    /// [`SheetFileError`] naming the path of the field that is wrong, or the newer format. A sheet of an
+    /// earlier format is brought up to this one.
     pub fn parse(text: &str, folder: &Path) -> Result<Self, SheetFileError> {
         #[derive(Deserialize)]
         struct Stamp {
@@ -48,7 +55,7 @@ impl SheetFile {
         }
         let malformed = |path: String, error: &serde_json::Error| SheetFileError::Malformed {
             path,
-            line: error.line(),
+            place: format!("line {}", error.line()),
             reason: error.to_string(),
         };
         // The stamp is read first, so that a newer file is told apart from a broken one.
@@ -56,10 +63,21 @@ impl SheetFile {
         if stamp.format > u64::from(FORMAT) {
             return Err(SheetFileError::TooNew { found: stamp.format });
         }
-        let mut reader = serde_json::Deserializer::from_str(text);
-        let mut file: Self = serde_path_to_error::deserialize(&mut reader)
-            .map_err(|e| malformed(e.path().to_string(), e.inner()))?;
-        reader.end().map_err(|e| malformed("the end".into(), &e))?;
+        let mut file: Self = if stamp.format < u64::from(FORMAT) {
+            let mut old = serde_json::from_str(text).map_err(|e| malformed("the file".into(), &e))?;
+            migrate(&mut old, stamp.format);
+            serde_path_to_error::deserialize(old).map_err(|e| SheetFileError::Malformed {
+                path: e.path().to_string(),
+                place: format!("brought up from format {}", stamp.format),
+                reason: e.inner().to_string(),
+            })?
+        } else {
+            let mut reader = serde_json::Deserializer::from_str(text);
+            let file = serde_path_to_error::deserialize(&mut reader)
+                .map_err(|e| malformed(e.path().to_string(), e.inner()))?;
+            reader.end().map_err(|e| malformed("the end".into(), &e))?;
+            file
+        };
         each_path(
             &mut file.sheet,
             |path| if path.is_relative() { folder.join(path) } else { path.to_owned() },

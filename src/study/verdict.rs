@@ -2,10 +2,12 @@
 
 use crate::ground::{Stopped, Work};
 use crate::numeric::bessel;
-use crate::science::alignment::{self, Judgement, Refusal, TrendEvidence};
+use crate::science::alignment::{
+    self, Judgement, RANDOM_AXIS, Theory, TheoryJudgement, TrendEvidence, together,
+};
 
 use super::winds::WindStudy;
-use super::{Sheet, TheoryFinding, TrendFinding, VerdictFinding};
+use super::{ModeFinding, Patch, Sheet, TheoryFinding, TrendFinding, VerdictFinding, VerdictSettings, what_if};
 
 /// One verdict, or the words of its refusal.
 ///
@@ -13,42 +15,37 @@ use super::{Sheet, TheoryFinding, TrendFinding, VerdictFinding};
 /// [`Stopped`].
 pub fn verdict(
     sheet: &Sheet,
+    patch: &Patch,
     trend: &TrendFinding,
     winds: &WindStudy,
     work: &Work,
 ) -> Result<VerdictFinding, Stopped> {
-    let refused = |why: String| VerdictFinding {
-        winds: winds.finding.id,
-        winds_name: winds.finding.name.clone(),
-        refused: Some(why),
-        toward: winds.finding.flux.toward,
-        ratio: winds.finding.flux.ratio,
-        obliquity_deg: None,
-        obliquity_ci95_deg: None,
-        probabilities: None,
-        class_priors: alignment::obliquity::RANDOM,
-        theories: Vec::new(),
-        alignment_strength: None,
-        cautions: Vec::new(),
-    };
-    if winds.regime.iter().all(|flow| flow.weight == 0.0) {
-        return Ok(refused("no drift, no verdict: no wind of the record moves sand".into()));
+    if winds.foresight.strength.is_none() {
+        return Ok(refused(winds, "no drift, no verdict: no wind of the record moves sand".into()));
     }
     let Some(evidence) = evidence(trend) else {
-        return Ok(refused("the patch has no preferred trend to judge".into()));
+        return Ok(refused(winds, "the patch has no preferred trend to judge".into()));
     };
-    let s = &sheet.settings.verdict;
-    let settings = alignment::VerdictSettings {
+    let settings = settings(&sheet.settings.verdict);
+    match alignment::judge(&evidence, &winds.foresight, patch.stated_axis, &settings) {
+        Ok(judgement) => {
+            let mut found = finding(winds, judgement);
+            found.supply_ln = together(&[evidence], &winds.foresight, &settings).supply.first().copied();
+            found.flips = what_if::flips(&evidence, patch.stated_axis, winds, &settings, work)?;
+            Ok(found)
+        }
+        Err(refusal) => Ok(refused(winds, refusal.to_string())),
+    }
+}
+
+/// The settings as the family takes them.
+pub fn settings(s: &VerdictSettings) -> alignment::VerdictSettings {
+    alignment::VerdictSettings {
         model_error_deg: s.model_error_deg,
         tail_share: s.tail_share,
-        priors: s.priors.to_vec(),
+        priors: s.priors.weights(),
         margin_deg: s.margin_deg,
         least_strength: s.least_strength,
-    };
-    match alignment::judge(&evidence, &winds.regime, &winds.draws, &settings, work) {
-        Ok(judgement) => Ok(finding(winds, judgement)),
-        Err(Refusal::Stopped(stopped)) => Err(stopped),
-        Err(refusal) => Ok(refused(refusal.to_string())),
     }
 }
 
@@ -63,10 +60,47 @@ fn evidence(trend: &TrendFinding) -> Option<TrendEvidence> {
     })
 }
 
-fn finding(winds: &WindStudy, j: Judgement) -> VerdictFinding {
+/// Every trend of a patch, named: its populations where it has two or more that each hold a tenth, else
+/// its mean.
+pub fn evidences(name: &str, trend: &TrendFinding) -> Vec<(String, TrendEvidence)> {
+    let heavy: Vec<&ModeFinding> = trend.modes.iter().filter(|m| m.weight >= 0.1).collect();
+    if heavy.len() < 2 {
+        return evidence(trend).map(|e| (name.to_owned(), e)).into_iter().collect();
+    }
+    let of_mode = |mode: &&ModeFinding| {
+        let (kappa, n) = (mode.kappa_doubled, trend.n_eff * mode.weight);
+        let evidence =
+            TrendEvidence { axis: mode.axis, kappa_mean: n * kappa * bessel::ratio(kappa), half_ci: 0.0 };
+        (format!("{name}, trend at {:.0}°", mode.axis.deg()), evidence)
+    };
+    heavy.iter().map(of_mode).collect()
+}
+
+fn refused(winds: &WindStudy, why: String) -> VerdictFinding {
     VerdictFinding {
         winds: winds.finding.id,
         winds_name: winds.finding.name.clone(),
+        refused: Some(why),
+        toward: winds.finding.flux.toward,
+        ratio: winds.finding.flux.ratio,
+        obliquity_deg: None,
+        obliquity_ci95_deg: None,
+        probabilities: None,
+        class_priors: alignment::obliquity::RANDOM,
+        elongation: None,
+        theories: Vec::new(),
+        building: alignment::Building::default(),
+        supply_ln: None,
+        growth_ratio: winds.foresight.growth_ratio,
+        migration: winds.foresight.migration.clone(),
+        alignment_strength: None,
+        flips: Vec::new(),
+        cautions: Vec::new(),
+    }
+}
+
+fn finding(winds: &WindStudy, j: Judgement) -> VerdictFinding {
+    VerdictFinding {
         refused: None,
         toward: j.toward,
         ratio: j.ratio,
@@ -74,22 +108,29 @@ fn finding(winds: &WindStudy, j: Judgement) -> VerdictFinding {
         obliquity_ci95_deg: j.obliquity_ci95_deg,
         probabilities: j.probabilities,
         class_priors: j.class_priors,
-        theories: j
-            .theories
-            .into_iter()
-            .map(|t| TheoryFinding {
-                name: t.name,
-                method: t.method,
-                axis: t.axis,
-                ties: t.ties,
-                spread_deg: t.spread_deg,
-                prior: t.prior,
-                posterior: t.posterior,
-                ln_bayes_factor: t.ln_bayes_factor,
-                cloud_deg: t.cloud_deg,
-            })
-            .collect(),
+        elongation: j.elongation,
+        theories: j.theories.into_iter().map(theory).collect(),
+        building: j.building,
         alignment_strength: Some(j.alignment_strength),
         cautions: j.cautions,
+        ..refused(winds, String::new())
+    }
+}
+
+fn theory(t: TheoryJudgement) -> TheoryFinding {
+    TheoryFinding {
+        name: t.theory.map_or(RANDOM_AXIS, Theory::name),
+        method: t.theory.map_or("", Theory::method),
+        extends: t.theory.is_some_and(Theory::extends),
+        axis: t.axis(),
+        toward: t.ways.first().and_then(|way| way.toward),
+        ties: t.ways.iter().skip(1).map(|way| way.axis).collect(),
+        strength: t.strength,
+        spread_deg: t.spread_deg,
+        equivalence: t.equivalence,
+        prior: t.prior,
+        posterior: t.posterior,
+        ln_bayes_factor: t.ln_bayes_factor,
+        cloud_deg: t.cloud_deg,
     }
 }

@@ -1,20 +1,22 @@
 //! Wind records of the sheet turned into findings, with the regimes the verdicts draw on.
 
-use crate::ground::{Body, Caution, SandFlow, Stopped, WindRecord, Work};
+use crate::ground::{Body, Caution, Stopped, WindRecord, Work};
+use crate::science::alignment::{FluxUp, Foresight, foresee};
 use crate::science::wind::law::Law;
 use crate::science::wind::threshold::Threshold;
-use crate::science::wind::{self, Site, Transport, WindError};
+use crate::science::wind::{self, Doubt, Site, Transport, WindError};
 
-use super::{Sheet, ThresholdLaw, TransportLaw, WindEntry, WindFinding};
+use super::what_if::{self, WhatIf};
+use super::{LettauConstant, Sheet, ThresholdLaw, TransportLaw, WindEntry, WindFinding};
 
 /// A record's finding and what the theories need of it.
 #[derive(Clone, Debug, PartialEq)]
 pub struct WindStudy {
     pub finding: WindFinding,
-    /// Sand flow by exact direction.
-    pub regime: Vec<SandFlow>,
-    /// Bootstrap regimes.
-    pub draws: Vec<Vec<SandFlow>>,
+    /// What every theory predicts from the record and its draws.
+    pub foresight: Foresight,
+    /// The record under other assumptions.
+    pub what_if: Vec<WhatIf>,
 }
 
 /// Assesses one record of the sheet.
@@ -40,6 +42,7 @@ pub fn study(
     let settings = wind::WindSettings {
         grain_m: s.grain_m,
         grain_density: s.grain_density,
+        cohesion: s.cohesion_kg_s2,
         threshold: match s.threshold_law {
             ThresholdLaw::Bagnold => Threshold::Bagnold,
             ThresholdLaw::IversenWhite => Threshold::IversenWhite,
@@ -50,15 +53,29 @@ pub fn study(
             TransportLaw::Bagnold => Transport::Physical(Law::Bagnold),
             TransportLaw::Kawamura => Transport::Physical(Law::Kawamura),
             TransportLaw::White => Transport::Physical(Law::White),
-            TransportLaw::Lettau => Transport::Physical(Law::Lettau),
+            TransportLaw::Lettau => Transport::Physical(match s.lettau_constant {
+                LettauConstant::High => Law::Lettau,
+                LettauConstant::Low => Law::LettauLow,
+            }),
             TransportLaw::Kok => Transport::Physical(Law::Kok),
         },
         greatest_speed: s.greatest_speed,
         block_days: s.block_days,
         resamples: s.resamples,
+        doubt: Doubt {
+            grain: s.grain_doubt,
+            grain_density: s.grain_density_doubt,
+            cohesion: s.cohesion_doubt,
+            roughness: s.roughness_doubt,
+        },
+        storm_quantile: s.storm_quantile,
     };
     let seed = sheet.seed.child(&format!("wind {}", entry.id.0));
     let a = wind::assess(record, &site, &settings, seed, work)?;
+    let v = &sheet.settings.verdict;
+    let flux_up = FluxUp { ratio: v.flux_up, doubt: v.flux_up_doubt };
+    let foresight = foresee(&a.regime, &a.draws, flux_up, seed, work)?;
+    let what_if = what_if::cases(&a, flux_up, s.roughness_doubt, seed, work)?;
     let finding = WindFinding {
         id: entry.id,
         name: entry.name.clone(),
@@ -75,9 +92,12 @@ pub fn study(
         threshold_speed_at_height: a.threshold_speed_at_height,
         rose: a.rose,
         seasons: a.seasons,
+        storm_speed: a.storm_speed,
+        season: a.season,
+        sensitivity: a.sensitivity,
         cautions: a.cautions,
     };
-    Ok(WindStudy { finding, regime: a.regime, draws: a.draws })
+    Ok(WindStudy { finding, foresight, what_if })
 }
 
 /// Splits a failure into a stop, which ends the run, and words, which name the record.

@@ -8,6 +8,7 @@ use egui::{
 use super::theme;
 use crate::desk::facts::Fact;
 use crate::desk::{Command, Model};
+use crate::ground::LonLat;
 use crate::plate::Theme;
 
 /// What a panel answers with.
@@ -108,6 +109,14 @@ pub fn optional_number(ui: &mut Ui, label: &str, value: Option<f64>, width: f32)
 /// A decimal number with a point or a comma.
 fn parse(text: &str) -> Option<f64> {
     text.trim().replace(',', ".").replace('−', "-").parse().ok().filter(|v: &f64| v.is_finite())
+}
+
+/// Longitude and latitude in degrees, divided by blanks or a semicolon; `None` when they are no place.
+pub fn lonlat(text: &str) -> Option<LonLat> {
+    let parts: Vec<&str> = text.split([' ', ';']).filter(|part| !part.is_empty()).collect();
+    let [lon, lat] = parts[..] else { return None };
+    let (lon, lat) = (parse(lon.trim_end_matches(','))?, parse(lat)?);
+    (lon.abs() <= 360.0 && lat.abs() <= 90.0).then(|| LonLat { lon, lat }.folded())
 }
 
 /// Rows of label and value; the label explains itself on hover.
@@ -216,7 +225,8 @@ fn mark(ui: &mut Ui, ink: Color32) {
 
 #[cfg(test)]
 mod tests {
-    use super::parse;
+    use super::{lonlat, parse};
+    use crate::ground::LonLat;
 
     #[test]
     fn numbers_may_carry_a_comma_and_a_true_minus() {
@@ -224,5 +234,13 @@ mod tests {
         assert_eq!(parse("−3e-4"), Some(-3e-4));
         assert_eq!(parse("inf"), None);
         assert_eq!(parse("ten"), None);
+    }
+
+    #[test]
+    fn a_place_is_longitude_then_latitude() {
+        assert_eq!(lonlat("−103.2, 31.8"), Some(LonLat { lon: -103.2, lat: 31.8 }));
+        assert_eq!(lonlat("256.8 31,8"), Some(LonLat { lon: 256.8 - 360.0, lat: 31.8 }));
+        assert_eq!(lonlat("31.8"), None);
+        assert_eq!(lonlat("0 91"), None);
     }
 }

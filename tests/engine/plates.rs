@@ -103,6 +103,7 @@ fn overview(reach: &Reach, theme: &Theme) -> Figure {
         rasters: vec![raster_finding()],
         winds: vec![wind_finding()],
         patches: vec![patch_finding(reach), plain_finding(reach)],
+        together: Default::default(),
         failures: Vec::new(),
     };
     let view = MapView { picture: &reach.picture, covers, place: &reach.place };

@@ -9,7 +9,8 @@ use ventifact::ground::{Axis, Azimuth, Body, Grid, Point, Polygon, Work};
 use ventifact::science::axial::mean::{Resultant, doubled};
 use ventifact::study::run::{Memo, run};
 use ventifact::study::{
-    Findings, Id, ImageKind, Patch, PatchFinding, Placement, RasterEntry, Sheet, Sources, Tone, WindEntry,
+    Findings, Id, ImageKind, Patch, PatchFinding, Placement, RasterEntry, Sheet, Sources, Tone,
+    WindEntry,
 };
 
 use crate::field_data;
@@ -28,14 +29,7 @@ fn sheet(path: &Path, patches: &[(&str, Polygon)]) -> Sheet {
     });
     for (name, outline) in patches {
         let id = sheet.fresh_id();
-        sheet.patches.push(Patch {
-            id,
-            name: (*name).into(),
-            raster: Id(1),
-            outline: outline.clone(),
-            tags: Vec::new(),
-            wind: None,
-        });
+        sheet.patches.push(Patch::new(id, *name, Id(1), outline.clone()));
     }
     sheet
 }
@@ -109,6 +103,7 @@ fn coastal_dunes_trend_with_wide_intervals_and_the_sea_is_doubted() {
         height_m: 10.0,
         roughness_m: 1e-3,
         body: Some(Body::earth()),
+        at: None,
     });
     let findings = measured(&sheet);
     for name in ["middle", "south", "centre"] {

@@ -3,12 +3,14 @@
 use ventifact::assert_close;
 use ventifact::files::wind_table::{self, SpeedUnit, WindGuess, WindLayout, ZeroDirection};
 use ventifact::ground::{Axis, Body, Seed, WindRecord, Work};
-use ventifact::science::alignment::gross_normal::gross_normal;
-use ventifact::science::alignment::{Refusal, TrendEvidence, VerdictSettings, judge};
+use ventifact::science::alignment::{
+    FluxUp, Foresight, Refusal, Theory, TrendEvidence, VerdictSettings, foresee, judge,
+};
 use ventifact::science::wind::quality;
 use ventifact::science::wind::regime::{flows, gathered};
+use ventifact::science::wind::threshold::COHESION;
 use ventifact::science::wind::{
-    Drift, Law, Site, Threshold, Transport, WindAssessment, WindSettings, assess,
+    Doubt, Drift, Law, Site, Threshold, Transport, WindAssessment, WindSettings, assess,
 };
 
 use crate::field_data;
@@ -95,11 +97,14 @@ fn settings(transport: Transport) -> WindSettings {
     WindSettings {
         grain_m: 250e-6,
         grain_density: 2650.0,
+        cohesion: COHESION,
         threshold: Threshold::ShaoLu,
         transport,
         greatest_speed: 75.0,
         block_days: 30.0,
         resamples: 200,
+        doubt: Doubt { grain: 1.3, grain_density: 1.05, cohesion: 1.7, roughness: 3.0 },
+        storm_quantile: 0.9,
     }
 }
 
@@ -127,21 +132,15 @@ fn by_plain_law(record: &WindRecord) -> Drift {
 }
 
 fn print_table(found: &WindAssessment) {
-    println!(
-        "  {:<20} {:<22} {:>7} {:>8} {:>7} {:>8} {:>9}",
-        "law", "threshold", "u*t", "toward", "ratio", "trend", "strength"
-    );
+    println!("  {:<20} {:<22} {:>7} {:>8} {:>7}", "law", "threshold", "u*t", "toward", "ratio");
     for row in &found.sensitivity {
-        let trend = gross_normal(&row.regime);
         println!(
-            "  {:<20} {:<22} {:>7.3} {:>8.1} {:>7.3} {:>8.1} {:>9.3}",
+            "  {:<20} {:<22} {:>7.3} {:>8.1} {:>7.3}",
             row.law,
             row.threshold,
             row.threshold_ustar,
             row.drift.toward.map_or(f64::NAN, |a| a.deg()),
             row.drift.ratio.unwrap_or(f64::NAN),
-            trend.as_ref().map_or(f64::NAN, |t| t.axis.deg()),
-            trend.as_ref().map_or(f64::NAN, |t| t.strength()),
         );
     }
 }
@@ -150,10 +149,15 @@ fn verdict_settings() -> VerdictSettings {
     VerdictSettings {
         model_error_deg: 5.0,
         tail_share: 0.05,
-        priors: vec![1.0; 4],
+        priors: vec![1.0; Theory::ALL.len() + 1],
         margin_deg: 15.0,
         least_strength: 0.1,
     }
+}
+
+fn foreseen(found: &WindAssessment) -> Foresight {
+    let flux_up = FluxUp { ratio: 1.6, doubt: 1.25 };
+    foresee(&found.regime, &found.draws, flux_up, Seed(1), &Work::quiet()).expect("not stopped")
 }
 
 /// Expected figures: an independent sum in Python over the file.
@@ -176,13 +180,12 @@ fn typical_year_drifts_to_the_east_north_east_and_mostly_cancels() {
     let seasons: f64 = found.seasons.iter().map(|s| s.drift.total).sum();
     assert_close!(seasons, found.flux.total, 1e-9 * found.flux.total, "seasons add up");
     let evidence = TrendEvidence { axis: Axis::from_deg(150.0), kappa_mean: 200.0, half_ci: 4.0 };
-    let verdict = judge(&evidence, &found.regime, &found.draws, &verdict_settings(), &Work::quiet())
-        .expect("a verdict");
+    let verdict = judge(&evidence, &foreseen(&found), None, &verdict_settings()).expect("a verdict");
     for theory in &verdict.theories {
         println!(
             "  {:<28} axis {:?} spread {:?} ln BF {:.2} posterior {:.3}",
-            theory.name,
-            theory.axis.map(|a| a.deg()),
+            theory.name(),
+            theory.axis().map(|a| a.deg()),
             theory.spread_deg,
             theory.ln_bayes_factor,
             theory.posterior
@@ -232,7 +235,7 @@ fn the_calm_day_has_no_drift_and_no_verdict() {
         assert!(found.flux.toward.is_none() && found.flux.ratio.is_none() && found.draws.is_empty());
         assert!(found.cautions.iter().any(|c| c.code == "no-drift"));
         let evidence = TrendEvidence { axis: Axis::from_deg(15.0), kappa_mean: 200.0, half_ci: 4.0 };
-        let refused = judge(&evidence, &found.regime, &found.draws, &verdict_settings(), &Work::quiet());
+        let refused = judge(&evidence, &foreseen(&found), None, &verdict_settings());
         assert_eq!(refused, Err(Refusal::NoDrift));
     }
 }

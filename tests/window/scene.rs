@@ -6,7 +6,7 @@ use std::time::{Duration, Instant};
 use ventifact::desk::{Laid, Model, Opened, TILE, TileKey, TileReader, TileShelf};
 use ventifact::ground::{Affine, Body, BodyShape, Frame, Grid, Place, Projection, Seed, Work};
 use ventifact::science::scene::reach;
-use ventifact::study::{Id, ImageKind, Patch, RasterEntry};
+use ventifact::study::{Id, ImageKind, Patch, RasterEntry, WindChoice};
 
 /// Serves tiles of a grid, coarser ones by averaging the valid pixels.
 pub struct InMemory(pub Grid<f32>);
@@ -80,14 +80,7 @@ pub fn sorrel_reach(turn_deg: f64) -> Model {
     let patches = reach::patches()
         .into_iter()
         .zip(2..)
-        .map(|(truth, id)| Patch {
-            id: Id(id),
-            name: truth.name.into(),
-            raster: Id(1),
-            outline: truth.outline,
-            tags: Vec::new(),
-            wind: None,
-        })
+        .map(|(truth, id)| Patch::new(Id(id), truth.name, Id(1), truth.outline))
         .collect();
     desk(reach::mosaic(Seed(1)), place, patches)
 }

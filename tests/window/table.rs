@@ -8,7 +8,7 @@ use egui_kittest::Harness;
 use egui_kittest::kittest::Queryable as _;
 use ventifact::desk::{self, Command, DrawCommand, Model, PatchCommand, SheetCommand, Tool};
 use ventifact::ground::{Grid, Place, Point, Polygon};
-use ventifact::study::{Id, Patch};
+use ventifact::study::{Id, Patch, WindChoice};
 use ventifact::window::table::{self, TableState};
 
 use super::{harness, scene};
@@ -49,7 +49,7 @@ fn small() -> Harness<'static, Bench> {
         outer: [[50.0, 50.0], [150.0, 50.0], [150.0, 150.0], [50.0, 150.0]].map(Point::from).to_vec(),
         holes: vec![],
     };
-    let patch = Patch { id: Id(2), name: "Waves".into(), raster: Id(1), outline, tags: vec![], wind: None };
+    let patch = Patch::new(Id(2), "Waves", Id(1), outline);
     open(scene::desk(waves, Place::pixels(0.0), vec![patch]), [700.0, 560.0], Theme::Light)
 }
 

@@ -5,7 +5,7 @@ use std::path::{Path, PathBuf};
 use crate::desk::{Ask, MergeKey, Model, Purpose};
 use crate::files::layers::read_patches;
 use crate::ground::{Point, Polygon};
-use crate::study::{Id, Patch};
+use crate::study::{Id, Patch, WindChoice};
 
 use super::Record;
 
@@ -28,10 +28,10 @@ pub enum PatchCommand {
         id: Id,
         tags: Vec<String>,
     },
-    /// The wind record to judge by; `None` = all of the sheet.
+    /// The wind records to judge by.
     JudgeBy {
         id: Id,
-        wind: Option<Id>,
+        winds: WindChoice,
     },
     AskBring,
     /// Adds the outlines of a GeoPackage or GeoJSON file to the raster on the table.
@@ -59,7 +59,7 @@ impl PatchCommand {
             }
             Self::Tag { .. } => Record::new("patch.tag", "Tag patch", "Words to sort patches by.").editing(),
             Self::JudgeBy { .. } => {
-                Record::new("patch.judge-by", "Judge by wind", "Which wind record the verdict uses.")
+                Record::new("patch.judge-by", "Judge by wind", "Which wind records the verdicts use.")
                     .editing()
             }
             Self::AskBring => Record::new(
@@ -134,7 +134,7 @@ impl PatchCommand {
             Self::Reshape { id, outline } => change(model, id, |patch| patch.outline = outline),
             Self::Rename { id, name } => change(model, id, |patch| patch.name = name),
             Self::Tag { id, tags } => change(model, id, |patch| patch.tags = tags),
-            Self::JudgeBy { id, wind } => change(model, id, |patch| patch.wind = wind),
+            Self::JudgeBy { id, winds } => change(model, id, |patch| patch.winds = winds),
             Self::AskBring => model.session.ask = Some(Ask::new(Purpose::BringPatches, "")),
             Self::Bring(path) => bring(model, &path),
             Self::Select(id) => select(model, id),
@@ -164,14 +164,7 @@ fn bring(model: &mut Model, path: &Path) {
     let count = read.shapes.len();
     for shape in read.shapes {
         let (id, tags) = (model.sheet.fresh_id(), shape.tags);
-        model.sheet.patches.push(Patch {
-            id,
-            name: shape.name,
-            raster,
-            outline: shape.outline,
-            tags,
-            wind: None,
-        });
+        model.sheet.patches.push(Patch { tags, ..Patch::new(id, shape.name, raster, shape.outline) });
     }
     read.notes.iter().for_each(|note| model.session.notices.problem(note.as_str()));
     model.session.notices.done_with_undo(format!("Brought in {count} patches"));
@@ -186,7 +179,7 @@ fn change(model: &mut Model, id: Id, f: impl FnOnce(&mut Patch)) {
 fn add(model: &mut Model, raster: Id, outline: Polygon) {
     let id = model.sheet.fresh_id();
     let name = free_name(model, "Patch");
-    model.sheet.patches.push(Patch { id, name, raster, outline, tags: Vec::new(), wind: None });
+    model.sheet.patches.push(Patch::new(id, name, raster, outline));
     select(model, Some(id));
 }
 

@@ -12,8 +12,6 @@ pub enum SettingCommand {
         key: &'static str,
         value: SettingValue,
     },
-    /// Prior weights of the theories, in the order of the verdict page.
-    Priors([f64; 4]),
     Reset(&'static str),
     ResetAll,
 }
@@ -25,10 +23,6 @@ impl SettingCommand {
         match self {
             Self::Set { .. } => {
                 Record::new("setting.set", "Change setting", "Tells a method something.").editing()
-            }
-            Self::Priors(_) => {
-                Record::new("setting.priors", "Change priors", "What was believed of the theories before.")
-                    .editing()
             }
             Self::Reset(_) => Record::new("setting.reset", "Reset setting", "Back to the default.").editing(),
             Self::ResetAll => {
@@ -42,12 +36,6 @@ impl SettingCommand {
         match self {
             Self::Set { key, .. } | Self::Reset(key) if find(key).is_none() => {
                 Some("there is no such setting")
-            }
-            Self::Priors(weights)
-                if weights.iter().any(|w| !(w.is_finite() && *w >= 0.0))
-                    || weights.iter().sum::<f64>() <= 0.0 =>
-            {
-                Some("priors are weights of zero or more, not all zero")
             }
             _ => None,
         }
@@ -63,7 +51,6 @@ impl SettingCommand {
     pub(super) fn apply(self, model: &mut Model) {
         match self {
             Self::Set { key, value } => set(model, key, value),
-            Self::Priors(weights) => model.sheet.settings.verdict.priors = weights,
             Self::Reset(key) => {
                 if let Some(setting) = find(key) {
                     (setting.set)(&mut model.sheet.settings, (setting.get)(&Settings::default()));

@@ -4,7 +4,7 @@ use std::path::PathBuf;
 
 use crate::desk::{Answer, Ask, Import, MergeKey, Model, Page, Purpose, Reading, Slot};
 use crate::files::wind_table::WindImport;
-use crate::ground::Body;
+use crate::ground::{Body, LonLat};
 use crate::study::{Id, WindEntry};
 
 use super::Record;
@@ -40,6 +40,11 @@ pub enum WindCommand {
     Body {
         id: Id,
         body: Option<Body>,
+    },
+    /// Where the record stands.
+    Place {
+        id: Id,
+        at: Option<LonLat>,
     },
     Remove(Id),
 }
@@ -77,6 +82,10 @@ impl WindCommand {
             Self::Body { .. } => {
                 Record::new("wind.body", "Change body of the winds", "Whose air and gravity apply.").editing()
             }
+            Self::Place { .. } => {
+                Record::new("wind.place", "Place winds", "Longitude and latitude where the record stands.")
+                    .editing()
+            }
             Self::Remove(_) => {
                 Record::new("wind.remove", "Remove winds", "Takes the record off the sheet.").editing()
             }
@@ -95,6 +104,7 @@ impl WindCommand {
             | Self::Rename { id, .. }
             | Self::Mast { id, .. }
             | Self::Body { id, .. }
+            | Self::Place { id, .. }
             | Self::Remove(id)
                 if model.sheet.wind(*id).is_none() =>
             {
@@ -148,10 +158,13 @@ impl WindCommand {
                 wind.height_m = height_m;
                 wind.roughness_m = roughness_m;
             }),
+            Self::Place { id, at } => change(model, id, |wind| wind.at = at),
             Self::Body { id, body } => change(model, id, |wind| wind.body = body),
             Self::Remove(id) => {
                 model.sheet.winds.retain(|w| w.id != id);
-                model.sheet.patches.iter_mut().for_each(|p| p.wind = p.wind.filter(|w| *w != id));
+                for patch in &mut model.sheet.patches {
+                    patch.winds = std::mem::take(&mut patch.winds).without(id);
+                }
                 model.drop_lost_selection();
                 model.session.notices.done_with_undo("Removed the wind record");
             }

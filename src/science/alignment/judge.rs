@@ -1,13 +1,14 @@
-//! The one face of the family: a measured trend and a wind regime in, a verdict or a refusal out.
+//! The one face of the family: a measured trend and what the theories foresee in, a verdict or a refusal
+//! out.
 
-use crate::ground::{Axis, Azimuth, Caution, SandFlow, Stopped, Work};
+use crate::ground::{Axis, Azimuth, Caution};
 
+use super::cautions;
 use super::equivalence::{Equivalence, equivalence};
-use super::gross_normal::{GrossNormal, gross_normal};
-use super::likelihood::{Weighing, axial_sd_of_kappa, kappa_of_axial_sd, posteriors};
+use super::foresight::Foresight;
+use super::likelihood::{Weighing, axial_sd_of_kappa, kappa_of_axial_sd, ln_bayes_factor, posteriors};
 use super::obliquity::{Obliquity, RANDOM};
-use super::resultant::resultant;
-use super::theory::Theory;
+use super::theory::{Prediction, Theory, Way};
 
 /// A measured mean trend.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -17,6 +18,23 @@ pub struct TrendEvidence {
     pub kappa_mean: f64,
     /// Half width of its 95 % interval, degrees; where it is wider than `kappa_mean` says, it rules.
     pub half_ci: f64,
+}
+
+impl TrendEvidence {
+    /// Standard error of the mean axis, degrees.
+    pub fn blur(&self) -> f64 {
+        (self.half_ci / 1.96).max(axial_sd_of_kappa(self.kappa_mean))
+    }
+
+    /// What the weighing of a theory needs of the trend.
+    pub fn weighing(&self, settings: &VerdictSettings) -> Weighing {
+        Weighing {
+            trend: self.axis,
+            kappa_observed: self.kappa_mean.min(kappa_of_axial_sd(self.blur())),
+            kappa_model: kappa_of_axial_sd(settings.model_error_deg),
+            tail_share: settings.tail_share,
+        }
+    }
 }
 
 /// How theories are weighed.
@@ -34,7 +52,7 @@ pub struct VerdictSettings {
     pub least_strength: f64,
 }
 
-/// A trend judged by a wind regime.
+/// A trend judged by a regime.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Judgement {
     /// Where the sand goes on balance; `None` when the flows cancel.
@@ -44,27 +62,55 @@ pub struct Judgement {
     pub obliquity_deg: Option<f64>,
     /// Equal-tailed 95 % interval, from trend error and wind draws together.
     pub obliquity_ci95_deg: Option<[f64; 2]>,
-    /// Longitudinal, oblique, transverse.
+    /// Longitudinal, oblique, transverse to the resultant.
     pub probabilities: Option<[f64; 3]>,
     /// The same for an axis drawn at random.
     pub class_priors: [f64; 3],
+    /// The trend against the way crests extend, which is the test of "longitudinal".
+    pub elongation: Option<Elongation>,
     /// The theories in the order of [`Theory::ALL`], then the random axis.
     pub theories: Vec<TheoryJudgement>,
+    /// What the theories come to.
+    pub building: Building,
     pub alignment_strength: f64,
     pub cautions: Vec<Caution>,
+}
+
+/// The trend against the elongation direction.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Elongation {
+    /// The end that grows, by the whole record.
+    pub toward: Azimuth,
+    pub separation_deg: f64,
+    pub ci95_deg: [f64; 2],
+    /// Chance that the trend lies within the margin of it.
+    pub within_margin: f64,
+}
+
+/// Posterior of the ways crests are built, summed over theories.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub struct Building {
+    /// By sand that crosses them, as under full cover.
+    pub crossed: f64,
+    /// By extending along themselves, as on starved ground.
+    pub extended: f64,
+    pub stated: f64,
+    pub random: f64,
 }
 
 /// One theory weighed.
 #[derive(Clone, Debug, PartialEq)]
 pub struct TheoryJudgement {
-    pub name: &'static str,
-    /// Id of its method record; empty for the random axis.
-    pub method: &'static str,
-    /// Predicted by the whole record.
-    pub axis: Option<Axis>,
-    pub ties: Vec<Axis>,
+    /// `None` for the random axis.
+    pub theory: Option<Theory>,
+    /// Predicted by the whole record, the main way first; empty for the random axis, or when the
+    /// theory predicts nothing.
+    pub ways: Vec<Way>,
+    /// How much better that trend is than others, in the theory's own measure.
+    pub strength: Option<f64>,
     /// Axial standard deviation of the predictions of the draws, degrees.
     pub spread_deg: Option<f64>,
+    /// Prior share among the theories that predict something.
     pub prior: f64,
     pub posterior: f64,
     pub ln_bayes_factor: f64,
@@ -73,6 +119,19 @@ pub struct TheoryJudgement {
     /// Whether the trend agrees with the prediction within the margin.
     pub equivalence: Option<Equivalence>,
 }
+
+impl TheoryJudgement {
+    pub fn name(&self) -> &'static str {
+        self.theory.map_or(RANDOM_AXIS, Theory::name)
+    }
+
+    pub fn axis(&self) -> Option<Axis> {
+        self.ways.first().map(|way| way.axis)
+    }
+}
+
+/// The name of the reference every theory is weighed against.
+pub const RANDOM_AXIS: &str = "random axis";
 
 /// Why no verdict is given.
 #[derive(Clone, Debug, PartialEq, thiserror::Error)]
@@ -85,75 +144,99 @@ pub enum Refusal {
     Weak { strength: f64, least: f64 },
     #[error("the setting {setting} is {value}; it must lie {range}")]
     Setting { setting: &'static str, value: f64, range: &'static str },
-    #[error(transparent)]
-    Stopped(#[from] Stopped),
 }
 
 /// Predictions kept for show.
 const SHOWN: usize = 200;
 
-/// Judges a measured trend by a regime and its bootstrap draws.
+/// Judges a measured trend by what the theories foresee; `stated` is the user's own axis.
 ///
 /// Without draws the regime is taken as certain, and a caution says so.
 ///
 /// # Errors
-/// [`Refusal`] when there is no drift, the winds prefer no trend, a setting is out of range, or on
-/// stop.
+/// [`Refusal`] when there is no drift, the winds prefer no trend, or a setting is out of range.
 pub fn judge(
     evidence: &TrendEvidence,
-    regime: &[SandFlow],
-    draws: &[Vec<SandFlow>],
+    foresight: &Foresight,
+    stated: Option<Axis>,
     settings: &VerdictSettings,
-    work: &Work,
 ) -> Result<Judgement, Refusal> {
     check(settings)?;
-    let across = gross_normal(regime).ok_or(Refusal::NoDrift)?;
-    let strength = across.strength();
+    let strength = foresight.strength.ok_or(Refusal::NoDrift)?;
     if strength < settings.least_strength {
         return Err(Refusal::Weak { strength, least: settings.least_strength });
     }
-    let net = resultant(regime);
-    let mut cautions = regime_cautions(&across, net, settings);
+    let clouds = with_stated(foresight, stated);
+    let theories = weigh(evidence, foresight, &clouds, settings);
+    let blur = evidence.blur();
+    let obliquity = foresight.drift.filter(|_| !foresight.drifts.is_empty()).map(|(toward, _)| {
+        let uncertain = Obliquity::of(evidence.axis, blur, &foresight.drifts);
+        (evidence.axis.separation(toward.axis()), uncertain)
+    });
+    let mut cautions = cautions::of_regime(foresight, strength, settings);
+    cautions.extend(cautions::of_theories(&theories, &clouds, settings));
+    Ok(Judgement {
+        toward: foresight.drift.map(|d| d.0),
+        ratio: foresight.drift.map(|d| d.1),
+        obliquity_deg: obliquity.as_ref().map(|o| o.0),
+        obliquity_ci95_deg: obliquity.as_ref().map(|(_, o)| [o.quantile(0.025), o.quantile(0.975)]),
+        probabilities: obliquity.as_ref().map(|(_, o)| o.classes()),
+        class_priors: RANDOM,
+        elongation: elongation(evidence, foresight, settings.margin_deg),
+        building: building(&theories),
+        theories,
+        alignment_strength: strength,
+        cautions,
+    })
+}
 
-    work.phase("judging theories", draws.len() as u64);
-    let alone = [regime.to_vec()];
-    let draws = if draws.is_empty() {
-        cautions.push(Caution::new(
-            "winds-taken-as-certain",
-            "The record cannot be resampled: the prediction carries the model error only.",
-        ));
-        &alone[..]
-    } else {
-        draws
-    };
-    let mut drifts = Vec::with_capacity(draws.len());
-    let mut clouds = vec![Vec::with_capacity(draws.len()); Theory::ALL.len()];
-    for draw in draws {
-        work.advance(1)?;
-        drifts.extend(resultant(draw).map(|(toward, _)| toward.axis()));
-        for (theory, cloud) in Theory::ALL.iter().zip(&mut clouds) {
-            cloud.push(theory.predict(draw));
-        }
+/// The clouds of the foresight, the last one filled with the stated axis.
+fn with_stated(foresight: &Foresight, stated: Option<Axis>) -> Vec<Vec<Option<Prediction>>> {
+    let mut clouds = foresight.clouds.clone();
+    if let (Some(axis), Some(last)) = (stated, clouds.last_mut()) {
+        last.fill(Some(Prediction::of_axis(axis, 1.0)));
     }
+    clouds
+}
 
-    let blur = (evidence.half_ci / 1.96).max(axial_sd_of_kappa(evidence.kappa_mean));
-    let weighing = Weighing {
-        trend: evidence.axis,
-        kappa_observed: evidence.kappa_mean.min(kappa_of_axial_sd(blur)),
-        kappa_model: kappa_of_axial_sd(settings.model_error_deg),
-        tail_share: settings.tail_share,
-    };
+/// Theories that predict nothing in any draw are listed, but not weighed.
+fn weigh(
+    evidence: &TrendEvidence,
+    foresight: &Foresight,
+    clouds: &[Vec<Option<Prediction>>],
+    settings: &VerdictSettings,
+) -> Vec<TheoryJudgement> {
+    let weighing = evidence.weighing(settings);
     let mut theories: Vec<TheoryJudgement> = Theory::ALL
         .iter()
-        .zip(&clouds)
+        .zip(clouds)
+        .zip(&foresight.whole)
         .zip(&settings.priors)
-        .map(|((theory, cloud), prior)| weigh(*theory, cloud, *prior, regime, net, blur, &weighing, settings))
+        .map(|(((theory, cloud), whole), prior)| {
+            // The stated axis is in the cloud only.
+            let whole = whole.as_ref().or_else(|| cloud.first().and_then(Option::as_ref));
+            let whole = whole.filter(|_| cloud.iter().any(Option::is_some));
+            let spread_deg = spread(cloud);
+            let se = f64::hypot(evidence.blur(), spread_deg.unwrap_or(0.0)).max(1e-9);
+            TheoryJudgement {
+                theory: Some(*theory),
+                ways: whole.map_or_else(Vec::new, |p| p.ways.clone()),
+                strength: whole.map(|p| p.strength),
+                spread_deg,
+                prior: if whole.is_some() { *prior } else { 0.0 },
+                posterior: 0.0,
+                ln_bayes_factor: ln_bayes_factor(&[weighing], cloud),
+                cloud_deg: shown(cloud, foresight.drift.map(|d| d.0)),
+                equivalence: whole.map(|p| {
+                    equivalence(evidence.axis.turn_from(p.main().axis), se, settings.margin_deg)
+                }),
+            }
+        })
         .collect();
     theories.push(TheoryJudgement {
-        name: "random axis",
-        method: "",
-        axis: None,
-        ties: Vec::new(),
+        theory: None,
+        ways: Vec::new(),
+        strength: None,
         spread_deg: None,
         prior: settings.priors[Theory::ALL.len()],
         posterior: 0.0,
@@ -161,28 +244,63 @@ pub fn judge(
         cloud_deg: Vec::new(),
         equivalence: None,
     });
-    let sum: f64 = settings.priors.iter().sum();
+    let priors: Vec<f64> = theories.iter().map(|t| t.prior).collect();
     let factors: Vec<f64> = theories.iter().map(|t| t.ln_bayes_factor).collect();
-    for (theory, posterior) in theories.iter_mut().zip(posteriors(&settings.priors, &factors)) {
+    let sum: f64 = priors.iter().sum();
+    for (theory, posterior) in theories.iter_mut().zip(posteriors(&priors, &factors)) {
         theory.posterior = posterior;
-        theory.prior /= sum;
+        theory.prior = if sum > 0.0 { theory.prior / sum } else { 0.0 };
     }
-    cautions.extend(theory_cautions(&theories, &clouds, settings));
+    theories
+}
 
-    let obliquity = net.filter(|_| !drifts.is_empty()).map(|(toward, _)| {
-        (evidence.axis.separation(toward.axis()), Obliquity::of(evidence.axis, blur, &drifts))
-    });
-    Ok(Judgement {
-        toward: net.map(|n| n.0),
-        ratio: net.map(|n| n.1),
-        obliquity_deg: obliquity.as_ref().map(|o| o.0),
-        obliquity_ci95_deg: obliquity.as_ref().map(|(_, o)| [o.quantile(0.025), o.quantile(0.975)]),
-        probabilities: obliquity.as_ref().map(|(_, o)| o.classes()),
-        class_priors: RANDOM,
-        theories,
-        alignment_strength: strength,
-        cautions,
+/// Obliquities of the draws' main predictions, thinned.
+fn shown(cloud: &[Option<Prediction>], toward: Option<Azimuth>) -> Vec<f32> {
+    let Some(toward) = toward else { return Vec::new() };
+    let step = cloud.len().div_ceil(SHOWN).max(1);
+    let main = cloud.iter().step_by(step).flatten().map(Prediction::main);
+    main.map(|way| way.axis.separation(toward.axis()) as f32).collect()
+}
+
+/// Axial standard deviation of the main predictions of a cloud, degrees.
+fn spread(cloud: &[Option<Prediction>]) -> Option<f64> {
+    let (mut n, mut c, mut s) = (0usize, 0.0, 0.0);
+    for way in cloud.iter().flatten().map(Prediction::main) {
+        n += 1;
+        c += way.axis.doubled().cos();
+        s += way.axis.doubled().sin();
+    }
+    if n < 2 {
+        return None;
+    }
+    let length = f64::hypot(c, s) / n as f64;
+    Some((-0.5 * length.min(1.0).ln()).max(0.0).sqrt().to_degrees()).filter(|sd| sd.is_finite())
+}
+
+fn elongation(evidence: &TrendEvidence, foresight: &Foresight, margin: f64) -> Option<Elongation> {
+    let at = Theory::ALL.iter().position(|t| *t == Theory::Fingering)?;
+    let way = foresight.whole[at].as_ref()?.main();
+    let axes: Vec<Axis> = foresight.clouds[at].iter().flatten().map(|p| p.main().axis).collect();
+    let apart = Obliquity::of(evidence.axis, evidence.blur(), &axes);
+    Some(Elongation {
+        toward: way.toward?,
+        separation_deg: evidence.axis.separation(way.axis),
+        ci95_deg: [apart.quantile(0.025), apart.quantile(0.975)],
+        within_margin: apart.below(margin),
     })
+}
+
+fn building(theories: &[TheoryJudgement]) -> Building {
+    let mut sums = Building::default();
+    for t in theories {
+        *match t.theory {
+            None => &mut sums.random,
+            Some(Theory::Stated) => &mut sums.stated,
+            Some(theory) if theory.extends() => &mut sums.extended,
+            Some(_) => &mut sums.crossed,
+        } += t.posterior;
+    }
+    sums
 }
 
 fn check(settings: &VerdictSettings) -> Result<(), Refusal> {
@@ -212,236 +330,104 @@ fn check(settings: &VerdictSettings) -> Result<(), Refusal> {
     Ok(())
 }
 
-#[expect(clippy::too_many_arguments, reason = "one call, all of it the judge's own state")]
-fn weigh(
-    theory: Theory,
-    cloud: &[Vec<Axis>],
-    prior: f64,
-    regime: &[SandFlow],
-    net: Option<(Azimuth, f64)>,
-    blur: f64,
-    weighing: &Weighing,
-    settings: &VerdictSettings,
-) -> TheoryJudgement {
-    let mut predicted = theory.predict(regime);
-    let axis = (!predicted.is_empty()).then(|| predicted.remove(0));
-    let spread_deg = spread(cloud);
-    let step = cloud.len().div_ceil(SHOWN).max(1);
-    let cloud_deg = net.map_or_else(Vec::new, |(toward, _)| {
-        let shown = cloud.iter().step_by(step).flatten();
-        shown.map(|axis| axis.separation(toward.axis()) as f32).collect()
-    });
-    TheoryJudgement {
-        name: theory.name(),
-        method: theory.method(),
-        equivalence: axis.map(|axis| {
-            let se = f64::hypot(blur, spread_deg.unwrap_or(0.0)).max(1e-9);
-            equivalence(weighing.trend.turn_from(axis), se, settings.margin_deg)
-        }),
-        axis,
-        ties: predicted,
-        spread_deg,
-        prior,
-        posterior: 0.0,
-        ln_bayes_factor: weighing.ln_bayes_factor(cloud),
-        cloud_deg,
-    }
-}
-
-/// Axial standard deviation of the first predictions of a cloud, degrees.
-fn spread(cloud: &[Vec<Axis>]) -> Option<f64> {
-    let (mut n, mut c, mut s) = (0usize, 0.0, 0.0);
-    for axis in cloud.iter().filter_map(|axes| axes.first()) {
-        n += 1;
-        c += axis.doubled().cos();
-        s += axis.doubled().sin();
-    }
-    if n < 2 {
-        return None;
-    }
-    let length = f64::hypot(c, s) / n as f64;
-    Some((-0.5 * length.min(1.0).ln()).sqrt().to_degrees()).filter(|sd| sd.is_finite())
-}
-
-fn regime_cautions(
-    across: &GrossNormal,
-    net: Option<(Azimuth, f64)>,
-    settings: &VerdictSettings,
-) -> Vec<Caution> {
-    let mut cautions = Vec::new();
-    match net {
-        None => cautions.push(Caution::new(
-            "no-resultant",
-            "The flows cancel: there is no resultant, and no obliquity to it.",
-        )),
-        Some((_, ratio)) if ratio < 0.3 => cautions.push(Caution::new(
-            "low-ratio",
-            format!(
-                "Only {:.0} % of the sand motion is left after cancelling: the resultant stands for little.",
-                100.0 * ratio
-            ),
-        )),
-        Some(_) => {}
-    }
-    if !across.ties.is_empty() {
-        let listed: Vec<String> = across.ties.iter().map(|a| format!("{:.1}°", a.deg())).collect();
-        cautions.push(Caution::new(
-            "tied-trends",
-            format!(
-                "Gross transport is as great across {} as across {:.1}°.",
-                listed.join(", "),
-                across.axis.deg()
-            ),
-        ));
-    }
-    let strength = across.strength();
-    if strength < 2.0 * settings.least_strength {
-        cautions.push(Caution::new(
-            "low-strength",
-            format!("Alignment strength {strength:.2}: the winds hardly prefer a trend."),
-        ));
-    }
-    cautions
-}
-
-fn theory_cautions(
-    theories: &[TheoryJudgement],
-    clouds: &[Vec<Vec<Axis>>],
-    settings: &VerdictSettings,
-) -> Vec<Caution> {
-    let mut cautions = Vec::new();
-    for (theory, cloud) in theories.iter().zip(clouds) {
-        let Some(axis) = theory.axis else { continue };
-        let far = cloud.iter().filter(|axes| axes.first().is_none_or(|a| a.separation(axis) > 30.0)).count();
-        if far * 10 > cloud.len() {
-            cautions.push(Caution::new(
-                "unsteady-prediction",
-                format!(
-                    "In {:.0} % of the draws \"{}\" predicts a trend more than 30° from that of the record.",
-                    100.0 * far as f64 / cloud.len() as f64,
-                    theory.name
-                ),
-            ));
-        }
-    }
-    for (i, a) in theories.iter().enumerate() {
-        for b in &theories[i + 1..] {
-            if let (Some(p), Some(q)) = (a.axis, b.axis)
-                && p.separation(q) < settings.margin_deg
-            {
-                cautions.push(Caution::new(
-                    "same-prediction",
-                    format!(
-                        "\"{}\" and \"{}\" predict trends only {:.0}° apart: these winds cannot tell them apart.",
-                        a.name,
-                        b.name,
-                        p.separation(q)
-                    ),
-                ));
-            }
-        }
-    }
-    let mut ranked: Vec<&TheoryJudgement> = theories.iter().collect();
-    ranked.sort_by(|a, b| b.posterior.total_cmp(&a.posterior));
-    if let [first, second, ..] = ranked[..]
-        && first.posterior < 3.0 * second.posterior
-    {
-        cautions.push(Caution::new(
-            "undecided",
-            format!(
-                "\"{}\" ({:.0} %) and \"{}\" ({:.0} %) are both live.",
-                first.name,
-                100.0 * first.posterior,
-                second.name,
-                100.0 * second.posterior
-            ),
-        ));
-    }
-    cautions
-}
-
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::ground::{Regime, SandFlow, Seed, Work};
+    use crate::science::alignment::foresight::{FluxUp, foresee};
 
     fn settings() -> VerdictSettings {
         VerdictSettings {
             model_error_deg: 5.0,
             tail_share: 0.05,
-            priors: vec![1.0; 4],
+            priors: vec![1.0; Theory::ALL.len() + 1],
             margin_deg: 15.0,
             least_strength: 0.1,
         }
     }
 
-    fn flows(winds: &[(f64, f64)]) -> Vec<SandFlow> {
-        winds.iter().map(|&(deg, weight)| SandFlow { toward: Azimuth::from_deg(deg), weight }).collect()
+    fn regime(winds: &[(f64, f64)]) -> Regime {
+        let flow = |&(deg, weight): &(f64, f64)| SandFlow { toward: Azimuth::from_deg(deg), weight };
+        Regime { all: winds.iter().map(flow).collect(), ..Regime::default() }
+    }
+
+    fn foreseen(whole: &[(f64, f64)], draws: &[Regime]) -> Foresight {
+        let flux_up = FluxUp { ratio: 1.6, doubt: 1.25 };
+        foresee(&regime(whole), draws, flux_up, Seed(1), &Work::quiet()).expect("not stopped")
     }
 
     fn evidence(deg: f64) -> TrendEvidence {
         TrendEvidence { axis: Axis::from_deg(deg), kappa_mean: 400.0, half_ci: 3.0 }
     }
 
+    fn of(verdict: &Judgement, theory: Theory) -> &TheoryJudgement {
+        verdict.theories.iter().find(|t| t.theory == Some(theory)).expect("listed")
+    }
+
     #[test]
     fn nil_drift_and_even_winds_are_refused() {
-        let quiet = Work::quiet();
-        assert_eq!(judge(&evidence(0.0), &[], &[], &settings(), &quiet), Err(Refusal::NoDrift));
+        let nil = judge(&evidence(0.0), &foreseen(&[], &[]), None, &settings());
+        assert_eq!(nil, Err(Refusal::NoDrift));
         let even: Vec<(f64, f64)> = (0..72).map(|k| (5.0 * f64::from(k), 1.0)).collect();
-        let refused = judge(&evidence(0.0), &flows(&even), &[], &settings(), &quiet);
+        let refused = judge(&evidence(0.0), &foreseen(&even, &[]), None, &settings());
         assert!(matches!(refused, Err(Refusal::Weak { strength, .. }) if strength < 0.01), "{refused:?}");
     }
 
     #[test]
     fn a_trend_along_a_single_wind_is_longitudinal() {
-        let regime = flows(&[(30.0, 1.0)]);
-        let draws: Vec<Vec<SandFlow>> = (0..41).map(|k| flows(&[(20.0 + 0.5 * f64::from(k), 1.0)])).collect();
-        let verdict =
-            judge(&evidence(32.0), &regime, &draws, &settings(), &Work::quiet()).expect("a verdict");
+        let draws: Vec<Regime> =
+            (0..41).map(|k| regime(&[(20.0 + 0.5 * f64::from(k), 1.0)])).collect();
+        let verdict = judge(&evidence(32.0), &foreseen(&[(30.0, 1.0)], &draws), None, &settings())
+            .expect("a verdict");
         crate::assert_close!(verdict.obliquity_deg.expect("one"), 2.0, 1e-9, "obliquity");
         assert!(verdict.probabilities.expect("some")[0] > 0.95);
-        let along = &verdict.theories[1];
-        assert!(along.posterior > 0.8 && along.ln_bayes_factor > 1.0, "{along:?}");
-        assert!(verdict.theories[0].ln_bayes_factor < -2.9);
-        crate::assert_close!(
-            verdict.theories.iter().map(|t| t.posterior).sum::<f64>(),
-            1.0,
-            1e-12,
-            "posteriors"
-        );
+        assert!(verdict.building.extended > 0.85, "{:?}", verdict.building);
+        assert!(verdict.elongation.expect("one").within_margin > 0.95);
+        assert!(of(&verdict, Theory::Along).ln_bayes_factor > 1.0);
+        assert!(of(&verdict, Theory::Transverse).ln_bayes_factor < -2.9);
+        let sums = verdict.theories.iter().fold((0.0, 0.0), |(p, q), t| (p + t.prior, q + t.posterior));
+        crate::assert_close!(sums.0, 1.0, 1e-12, "priors");
+        crate::assert_close!(sums.1, 1.0, 1e-12, "posteriors");
     }
 
     #[test]
-    fn winds_that_cancel_have_a_trend_but_no_obliquity() {
-        let verdict =
-            judge(&evidence(90.0), &flows(&[(0.0, 1.0), (180.0, 1.0)]), &[], &settings(), &Work::quiet())
-                .expect("a verdict");
-        assert!(verdict.toward.is_none() && verdict.obliquity_deg.is_none());
-        assert!(verdict.theories[2].posterior > 0.5);
-        assert!(verdict.theories[0].axis.is_none() && verdict.theories[0].ln_bayes_factor == 0.0);
+    fn theories_that_predict_nothing_are_not_weighed() {
+        let verdict = judge(&evidence(90.0), &foreseen(&[(0.0, 1.0), (180.0, 1.0)], &[]), None, &settings())
+            .expect("a verdict");
+        assert!(verdict.toward.is_none() && verdict.obliquity_deg.is_none() && verdict.elongation.is_none());
+        assert!(of(&verdict, Theory::GrossNormal).posterior > 0.4);
+        for silent in [Theory::Transverse, Theory::Season, Theory::Stated] {
+            let t = of(&verdict, silent);
+            assert!(t.ways.is_empty() && t.prior == 0.0 && t.posterior == 0.0, "{t:?}");
+        }
+    }
+
+    #[test]
+    fn a_stated_axis_that_meets_the_trend_wins() {
+        let winds = [(0.0, 1.0), (40.0, 1.0)];
+        let stated = Some(Axis::from_deg(61.0));
+        let verdict = judge(&evidence(60.0), &foreseen(&winds, &[]), stated, &settings()).expect("a verdict");
+        assert!(verdict.building.stated > 0.6, "{:?}", verdict.building);
+        let equal = of(&verdict, Theory::Stated).equivalence.expect("tested");
+        assert!(equal.equivalent, "{equal:?}");
     }
 
     #[test]
     fn turning_trend_and_winds_together_changes_nothing() {
         let winds = [(10.0, 3.0), (140.0, 2.0), (250.0, 1.0)];
         let turned = winds.map(|(d, q)| (d + 77.0, q));
-        let a = judge(&evidence(60.0), &flows(&winds), &[], &settings(), &Work::quiet()).expect("a verdict");
-        let b =
-            judge(&evidence(137.0), &flows(&turned), &[], &settings(), &Work::quiet()).expect("a verdict");
+        let a = judge(&evidence(60.0), &foreseen(&winds, &[]), None, &settings()).expect("a verdict");
+        let b = judge(&evidence(137.0), &foreseen(&turned, &[]), None, &settings()).expect("a verdict");
         for (p, q) in a.theories.iter().zip(&b.theories) {
-            crate::assert_close!(p.ln_bayes_factor, q.ln_bayes_factor, 1e-9, "{}", p.name);
+            crate::assert_close!(p.ln_bayes_factor, q.ln_bayes_factor, 1e-6, "{}", p.name());
         }
         crate::assert_close!(a.obliquity_deg.expect("one"), b.obliquity_deg.expect("one"), 1e-9, "obliquity");
     }
 
     #[test]
-    fn a_bad_setting_is_named_and_stop_is_heard() {
-        let regime = flows(&[(30.0, 1.0)]);
+    fn a_bad_setting_is_named() {
         let bad = VerdictSettings { tail_share: 0.0, ..settings() };
-        let refused = judge(&evidence(0.0), &regime, &[], &bad, &Work::quiet()).expect_err("refused");
+        let refused = judge(&evidence(0.0), &foreseen(&[(30.0, 1.0)], &[]), None, &bad).expect_err("refused");
         assert!(refused.to_string().contains("tail share"), "{refused}");
-        let work = Work::quiet();
-        work.stop();
-        let stopped = judge(&evidence(0.0), &regime, &[], &settings(), &work);
-        assert_eq!(stopped, Err(Refusal::Stopped(Stopped)));
     }
 }

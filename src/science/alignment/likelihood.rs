@@ -5,6 +5,8 @@ use std::f64::consts::TAU;
 use crate::ground::{Axis, Method, Read, Source, Symbol};
 use crate::numeric::bessel::{inverse_ratio, ln_i0, ratio};
 
+use super::theory::Prediction;
+
 /// The weighing of theories.
 pub const METHOD: Method = Method {
     id: "alignment.bayes-factor",
@@ -104,28 +106,23 @@ pub struct Weighing {
 }
 
 impl Weighing {
-    /// ln of the Bayes factor against a random axis. Each draw predicts one axis or several that
-    /// tie; a draw that predicts none counts as random.
-    pub fn ln_bayes_factor(&self, draws: &[Vec<Axis>]) -> f64 {
-        let of_draw = |axes: &Vec<Axis>| {
-            if axes.is_empty() {
-                return 1.0 / TAU;
-            }
-            let sum: f64 = axes
-                .iter()
-                .map(|axis| density(axis.separation(self.trend), self.kappa_observed, self.kappa_model))
-                .sum();
-            sum / axes.len() as f64
-        };
-        let mean = draws.iter().map(of_draw).sum::<f64>() / draws.len().max(1) as f64;
-        (TAU * ((1.0 - self.tail_share) * mean + self.tail_share / TAU)).ln()
+    /// Bayes factor against a random axis of one draw's prediction, the tail included; a draw that
+    /// predicts nothing is as good as random.
+    pub fn factor(&self, prediction: Option<&Prediction>) -> f64 {
+        let Some(prediction) = prediction else { return 1.0 };
+        let near = |axis: Axis| density(axis.separation(self.trend), self.kappa_observed, self.kappa_model);
+        let mean: f64 = prediction.ways.iter().map(|way| way.share * near(way.axis)).sum();
+        (1.0 - self.tail_share) * TAU * mean + self.tail_share
     }
+}
 
-    /// The greatest ln Bayes factor this trend could give any theory: that of a prediction which
-    /// meets it exactly in every draw.
-    pub fn greatest(&self) -> f64 {
-        self.ln_bayes_factor(&[vec![self.trend]])
-    }
+/// ln of the Bayes factor of a cloud against random axes. Several trends are judged together by the
+/// mean over draws of the product of their factors: the winds of one draw made them all.
+pub fn ln_bayes_factor(weighings: &[Weighing], cloud: &[Option<Prediction>]) -> f64 {
+    let joint = |prediction: &Option<Prediction>| -> f64 {
+        weighings.iter().map(|w| w.factor(prediction.as_ref())).product()
+    };
+    (cloud.iter().map(joint).sum::<f64>() / cloud.len().max(1) as f64).ln()
 }
 
 /// Posterior weights from prior weights and ln Bayes factors; all zero when no prior is.
@@ -154,14 +151,13 @@ mod tests {
     fn a_far_prediction_costs_no_more_than_the_tail() {
         let weighing =
             Weighing { trend: Axis::from_deg(0.0), kappa_observed: 1e5, kappa_model: 33.0, tail_share: 0.05 };
-        crate::assert_close!(
-            weighing.ln_bayes_factor(&[vec![Axis::from_deg(90.0)]]),
-            0.05f64.ln(),
-            1e-9,
-            "floor"
-        );
-        assert!(weighing.greatest() < 3.0);
-        crate::assert_close!(weighing.ln_bayes_factor(&[Vec::new()]), 0.0, 1e-12, "no prediction is random");
+        let at = |deg: f64| Some(Prediction::of_axis(Axis::from_deg(deg), 1.0));
+        let ln = |cloud: &[Option<Prediction>]| ln_bayes_factor(&[weighing], cloud);
+        crate::assert_close!(ln(&[at(90.0)]), 0.05f64.ln(), 1e-9, "floor");
+        assert!(ln(&[at(0.0)]) < 3.0);
+        crate::assert_close!(ln(&[None]), 0.0, 1e-12, "no prediction is random");
+        let twice = ln_bayes_factor(&[weighing, weighing], &[at(3.0)]);
+        crate::assert_close!(twice, 2.0 * ln(&[at(3.0)]), 1e-9, "two trends by one sure prediction");
     }
 
     #[test]

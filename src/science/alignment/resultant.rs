@@ -1,6 +1,8 @@
 //! Trends told from the resultant drift alone: across it, along it, and the classes between.
 
-use crate::ground::{Axis, Azimuth, Method, Read, SandFlow, Source, Symbol};
+use crate::ground::{Azimuth, Method, Read, SandFlow, Source, Symbol};
+
+use super::theory::{Prediction, Way};
 
 /// Crests across the resultant.
 pub const TRANSVERSE: Method = Method {
@@ -62,12 +64,15 @@ pub fn resultant(flows: &[SandFlow]) -> Option<(Azimuth, f64)> {
     (total > 0.0 && ratio > 1e-9).then(|| (Azimuth::from_east_north(east, north), ratio))
 }
 
-/// The trend across the resultant.
-pub fn transverse(flows: &[SandFlow]) -> Option<Axis> {
-    resultant(flows).map(|(toward, _)| toward.axis().perpendicular())
+/// The trend across the resultant; its strength is the resultant over the total.
+pub fn transverse(flows: &[SandFlow]) -> Option<Prediction> {
+    resultant(flows).map(|(toward, ratio)| Prediction::of_axis(toward.axis().perpendicular(), ratio))
 }
 
-/// The trend along the resultant.
-pub fn along(flows: &[SandFlow]) -> Option<Axis> {
-    resultant(flows).map(|(toward, _)| toward.axis())
+/// The trend along the resultant, growing its way.
+pub fn along(flows: &[SandFlow]) -> Option<Prediction> {
+    resultant(flows).map(|(toward, ratio)| Prediction {
+        ways: vec![Way { axis: toward.axis(), toward: Some(toward), share: 1.0 }],
+        strength: ratio,
+    })
 }

@@ -1,13 +1,16 @@
 //! The one face of the family: a record in, checked winds and sand flow with intervals out.
 
-use crate::ground::{Caution, SandFlow, Seed, WindRecord, WindSample, Work};
+use rayon::prelude::*;
 
-use super::bootstrap::{CELLS_PER_BLOCK, Cells, FEWEST_BLOCKS, Plan, intervals};
+use crate::ground::{Caution, Regime, SandFlow, Seed, Stopped, WindRecord, WindSample, Work};
+
+use super::bootstrap::{CELLS_PER_BLOCK, FEWEST_BLOCKS, Plan, intervals};
 use super::drift_potential;
 use super::mill::{Mill, YEAR_S};
+use super::movers::Movers;
 use super::quality::{self, Checked, SetAside};
-use super::regime::{Drift, Season, flows, gathered, rose, seasons};
-use super::settings::{Site, Transport, WindError, WindSettings};
+use super::regime::{Drift, SEASONS, Season, flows, rose, seasons};
+use super::settings::{Assumption, Site, Transport, WindError, WindSettings};
 
 /// What a record says about sand.
 #[derive(Clone, Debug, PartialEq)]
@@ -29,13 +32,19 @@ pub struct WindAssessment {
     /// Flow by 5° sectors, for show.
     pub rose: Vec<SandFlow>,
     pub seasons: Vec<Season>,
-    /// Flow by exact direction, for the theories.
-    pub regime: Vec<SandFlow>,
-    /// Bootstrap regimes, each under one law and threshold of `sensitivity` in turn (White's law, which
-    /// has Kawamura's form, is not drawn twice); empty when the record cannot be resampled.
-    pub draws: Vec<Vec<SandFlow>>,
+    /// By the chosen law and threshold, for the theories.
+    pub regime: Regime,
+    /// Bootstrap regimes, each under a law, a threshold, grains and a roughness of its own; empty when the
+    /// record cannot be resampled.
+    pub draws: Vec<Regime>,
     /// The drift under every law and threshold.
     pub sensitivity: Vec<Sensitivity>,
+    /// Winds at least as strong are storms, m s⁻¹ at the anemometer.
+    pub storm_speed: Option<f64>,
+    /// The months that move most sand.
+    pub season: Option<&'static str>,
+    /// The record under any other assumption.
+    pub replay: Replay,
     pub cautions: Vec<Caution>,
 }
 
@@ -43,14 +52,39 @@ pub struct WindAssessment {
 #[derive(Clone, Debug, PartialEq)]
 pub struct Sensitivity {
     pub law: &'static str,
+    /// In words: whose, and fluid or impact.
     pub threshold: String,
+    /// m s⁻¹.
     pub threshold_ustar: f64,
     pub drift: Drift,
-    pub regime: Vec<SandFlow>,
+}
+
+/// A record that can be run again under another assumption.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Replay {
+    mill: Mill,
+    movers: Movers,
+}
+
+impl Replay {
+    /// The mill as stated.
+    pub fn mill(&self) -> &Mill {
+        &self.mill
+    }
+
+    /// The regime by sectors had the assumption been this. Thresholds below a third of the stated one
+    /// miss winds that were not kept.
+    pub fn regime(&self, assumption: Assumption) -> Regime {
+        let mill = self.mill.under(assumption);
+        let in_order: Vec<usize> = (0..self.movers.count()).step_by(CELLS_PER_BLOCK).collect();
+        self.movers.draw(&in_order, |speed| mill.flux(speed))
+    }
 }
 
 /// Resultants of the laws that lie farther apart than this, degrees, call for a caution.
 const WIDE_TURN_DEG: f64 = 20.0;
+/// Winds below this share of the lowest stated threshold move no sand under any assumption tried.
+const LEAST_SHARE: f64 = 0.3;
 
 /// Checks a record and finds the sand it moves.
 ///
@@ -74,54 +108,42 @@ pub fn assess(
     let Checked { kept, mut set_aside, mut cautions, interval_s, span } = checked;
     let (flows_of_rows, lost) = flows(&kept, |v| mill.flux(v));
     set_aside.extend(without_direction(&kept, &lost));
-    let regime = gathered(&flows_of_rows);
-    let mut flux = Drift::of(&regime, mill.unit());
 
     let per_cell = rows_per_cell(kept.len(), interval_s, settings.block_days);
-    let cells = Cells::cut(&flows_of_rows, per_cell);
-    let plan = Plan::new(cells.count(), seasons_of_cells(&kept, per_cell).as_deref());
-    let can_draw = !record.is_table && cells.count() >= FEWEST_BLOCKS * CELLS_PER_BLOCK && flux.total > 0.0;
-    let fryberger = site.is_earth.then(|| {
-        let (dp, _) = flows(&kept, |v| mill.drift_potential(v));
-        (Drift::of(&gathered(&dp), drift_potential::UNIT), Cells::cut(&dp, per_cell))
-    });
-    let fryberger = match fryberger {
-        Some((mut drift, dp_cells)) => {
-            if can_draw && drift.total > 0.0 {
-                intervals(&mut drift, &dp_cells, &plan, settings.resamples, seed, work)?;
-            }
-            Some(drift)
+    let least = LEAST_SHARE * mill.threshold_speed().min(mill.drift_potential_threshold());
+    let movers = Movers::new(&kept, per_cell, least, settings.storm_quantile, |v| mill.flux(v));
+    let regime = movers.regime(|v| mill.flux(v));
+    let mut flux = Drift::of(&regime.all, mill.unit());
+    let plan = Plan::new(movers.count(), seasons_of_cells(&kept, per_cell).as_deref());
+    let can_draw = !record.is_table && movers.count() >= FEWEST_BLOCKS * CELLS_PER_BLOCK && flux.total > 0.0;
+    let fryberger = if site.is_earth {
+        let by_practice = |v: f64| mill.drift_potential(v);
+        let mut drift = movers.drift(drift_potential::UNIT, by_practice);
+        if can_draw && drift.total > 0.0 {
+            intervals(&mut drift, &movers, by_practice, &plan, settings.resamples, seed, work)?;
         }
-        None => None,
+        Some(drift)
+    } else {
+        None
     };
     let variants = mill.variants();
-    let (mut sensitivity, mut cut) = (Vec::new(), Vec::new());
     work.phase("trying laws and thresholds", variants.len() as u64);
-    for variant in &variants {
+    let mut sensitivity = Vec::with_capacity(variants.len());
+    for (variant, threshold) in variants {
         work.advance(1)?;
-        let (moved, _) = flows(&kept, |v| variant.mill.flux(v));
-        let regime = gathered(&moved);
-        if can_draw && variant.mill.is_of_its_own_form() {
-            cut.push(Cells::cut(&moved, per_cell));
-        }
         sensitivity.push(Sensitivity {
-            law: variant.mill.law_label(),
-            threshold: variant.threshold.clone(),
-            threshold_ustar: variant.mill.threshold,
-            drift: Drift::of(&regime, variant.mill.unit()),
-            regime,
+            law: variant.law_label(),
+            threshold,
+            threshold_ustar: variant.threshold(),
+            drift: movers.drift(variant.unit(), |v| variant.flux(v)),
         });
     }
-    let mut draws = Vec::new();
-    if can_draw {
-        intervals(&mut flux, &cells, &plan, settings.resamples, seed, work)?;
-        work.phase("resampling winds under all laws", u64::from(settings.resamples));
-        for index in 0..settings.resamples {
-            work.advance(1)?;
-            let which = &cut[index as usize % cut.len()];
-            draws.push(which.draw(&plan.starts(seed, u64::from(index))));
-        }
-    }
+    let draws = if can_draw {
+        intervals(&mut flux, &movers, |v| mill.flux(v), &plan, settings.resamples, seed, work)?;
+        redraw(&movers, &mill, &plan, settings, seed, work)?
+    } else {
+        Vec::new()
+    };
     cautions.extend(law_caution(&flux, &sensitivity));
     if settings.transport == Transport::DriftPotential && !site.is_earth {
         cautions.push(Caution::new(
@@ -129,7 +151,7 @@ pub fn assess(
             "Drift potential with its 12-knot threshold is Earth practice; here its size means nothing.",
         ));
     }
-    cautions.extend(drift_cautions(record, &kept, &flux, &cells, can_draw, &mill, interval_s));
+    cautions.extend(drift_cautions(record, &kept, &flux, &movers, can_draw, &mill, interval_s));
 
     Ok(WindAssessment {
         rows: record.samples.len(),
@@ -140,16 +162,37 @@ pub fn assess(
         interval_s,
         fryberger,
         law: mill.label(),
-        threshold_ustar: mill.threshold,
-        threshold_speed_at_height: mill.threshold / mill.friction,
-        rose: rose(&regime),
+        threshold_ustar: mill.threshold(),
+        threshold_speed_at_height: mill.threshold_speed(),
+        rose: rose(&regime.all),
         seasons: seasons(&kept, &flows_of_rows, mill.unit()),
         regime,
         draws,
         sensitivity,
+        storm_speed: Some(movers.storm_speed()).filter(|v| v.is_finite()),
+        season: movers.season().map(|s| SEASONS[usize::from(s)]),
+        replay: Replay { mill, movers },
         flux,
         cautions,
     })
+}
+
+/// The record redrawn in blocks, each draw by a mill of its own.
+fn redraw(
+    movers: &Movers,
+    mill: &Mill,
+    plan: &Plan,
+    settings: &WindSettings,
+    seed: Seed,
+    work: &Work,
+) -> Result<Vec<Regime>, Stopped> {
+    work.phase("resampling winds under all laws", u64::from(settings.resamples));
+    let draw = |index: u64| {
+        work.advance(1)?;
+        let drawn = mill.drawn(&settings.doubt, seed, index);
+        Ok(movers.draw(&plan.starts(seed, index), |v| drawn.flux(v)))
+    };
+    (0..u64::from(settings.resamples)).into_par_iter().map(draw).collect()
 }
 
 /// Rows in a bootstrap cell; without a clock, a 360th of the record.
@@ -209,7 +252,7 @@ fn drift_cautions(
     record: &WindRecord,
     kept: &[WindSample],
     flux: &Drift,
-    cells: &Cells,
+    movers: &Movers,
     can_draw: bool,
     mill: &Mill,
     interval_s: Option<f64>,
@@ -221,7 +264,7 @@ fn drift_cautions(
             "no-drift",
             format!(
                 "No wind passes the threshold of {:.2} m/s at the anemometer (greatest {greatest:.2} m/s): no drift.",
-                mill.threshold / mill.friction
+                mill.threshold_speed()
             ),
         ));
         return cautions;
@@ -239,7 +282,7 @@ fn drift_cautions(
         ));
     }
     if !record.is_table && interval_s.is_some() {
-        let mut totals = cells.totals();
+        let mut totals = movers.totals(|v| mill.flux(v));
         totals.sort_by(|a, b| b.total_cmp(a));
         let half = 0.5 * totals.iter().sum::<f64>();
         let mut sum = 0.0;
@@ -256,7 +299,7 @@ fn drift_cautions(
                 "few-storms",
                 format!(
                     "Half of the sand moves in {days} of {} spells: the drift hangs on a few storms.",
-                    cells.count()
+                    movers.count()
                 ),
             ));
         }
@@ -267,9 +310,10 @@ fn drift_cautions(
 #[cfg(test)]
 mod tests {
     use super::super::law::Law;
-    use super::super::threshold::Threshold;
+    use super::super::settings::Doubt;
+    use super::super::threshold::{self, Threshold};
     use super::*;
-    use crate::ground::{Azimuth, Body, Stopped};
+    use crate::ground::{Azimuth, Body};
     use rand::Rng as _;
 
     fn site() -> Site {
@@ -281,11 +325,14 @@ mod tests {
         WindSettings {
             grain_m: 250e-6,
             grain_density: 2650.0,
+            cohesion: threshold::COHESION,
             threshold: Threshold::ShaoLu,
             transport: Transport::Physical(Law::Kok),
             greatest_speed: 75.0,
             block_days: 30.0,
             resamples: 60,
+            doubt: Doubt { grain: 1.3, grain_density: 1.05, cohesion: 1.7, roughness: 3.0 },
+            storm_quantile: 0.9,
         }
     }
 
@@ -321,7 +368,7 @@ mod tests {
         let half = |w: &WindAssessment| w.flux.toward_ci95_half_deg.unwrap_or(f64::NAN);
         crate::assert_close!(half(&a), half(&b), 1e-6, "interval");
         for (p, q) in a.draws.iter().zip(&b.draws) {
-            assert!(turned(Drift::of(p, "").toward, Drift::of(q, "").toward) < 1e-6);
+            assert!(turned(Drift::of(&p.all, "").toward, Drift::of(&q.all, "").toward) < 1e-6);
         }
         let summer = &a.seasons[2].drift;
         assert!(summer.toward.is_some_and(|t| t.turn_from(Azimuth::from_deg(0.0)).abs() < 5.0), "{summer:?}");

@@ -2,10 +2,13 @@
 
 use rand::Rng as _;
 
-use crate::ground::{Azimuth, Method, Read, SandFlow, Seed, Source, Stopped, Symbol, Work};
+use rayon::prelude::*;
+
+use crate::ground::{Method, Read, Seed, Source, Stopped, Symbol, Work};
 use crate::numeric::quantile::of_sorted;
 
-use super::regime::{Drift, SECTOR_DEG, SECTORS, sector_of};
+use super::movers::Movers;
+use super::regime::Drift;
 
 /// The block bootstrap of a record.
 pub const METHOD: Method = Method {
@@ -51,80 +54,6 @@ pub const CELLS_PER_BLOCK: usize = 30;
 /// Fewer blocks than this say nothing about scatter.
 pub const FEWEST_BLOCKS: usize = 4;
 
-/// Flow of one cell in one sector: scalar and vector sums.
-#[derive(Clone, Copy, Debug, Default, PartialEq)]
-struct Part {
-    weight: f64,
-    east: f64,
-    north: f64,
-}
-
-/// A record cut into cells for one transport law.
-#[derive(Clone, Debug)]
-pub struct Cells {
-    /// Per cell the sectors with flow.
-    cells: Vec<Vec<(usize, Part)>>,
-}
-
-impl Cells {
-    /// Cuts flows, in order of time, into cells of `per_cell` rows.
-    pub fn cut(flows: &[Option<SandFlow>], per_cell: usize) -> Self {
-        let cells = flows
-            .chunks(per_cell.max(1))
-            .map(|chunk| {
-                let mut sums = [Part::default(); SECTORS];
-                for flow in chunk.iter().flatten() {
-                    let (east, north) = flow.toward.east_north();
-                    let part = &mut sums[sector_of(flow.toward)];
-                    part.weight += flow.weight;
-                    part.east += flow.weight * east;
-                    part.north += flow.weight * north;
-                }
-                sums.into_iter().enumerate().filter(|(_, part)| part.weight > 0.0).collect()
-            })
-            .collect();
-        Self { cells }
-    }
-
-    pub fn count(&self) -> usize {
-        self.cells.len()
-    }
-
-    /// Flow of each cell over all directions.
-    pub fn totals(&self) -> Vec<f64> {
-        self.cells.iter().map(|cell| cell.iter().map(|(_, part)| part.weight).sum()).collect()
-    }
-
-    /// The regime made of blocks that begin at `starts`, as many cells as the record has.
-    pub fn draw(&self, starts: &[usize]) -> Vec<SandFlow> {
-        let mut sums = [Part::default(); SECTORS];
-        let count = self.cells.len();
-        let picked = starts.iter().flat_map(|start| (0..CELLS_PER_BLOCK).map(move |k| (start + k) % count));
-        for cell in picked.take(count) {
-            for (sector, part) in &self.cells[cell] {
-                let sum = &mut sums[*sector];
-                sum.weight += part.weight;
-                sum.east += part.east;
-                sum.north += part.north;
-            }
-        }
-        sums.iter()
-            .enumerate()
-            .filter(|(_, part)| part.weight > 0.0)
-            .map(|(sector, part)| SandFlow {
-                // The mean direction of the sector keeps the resultant true; only where its winds
-                // cancel exactly is there none, and then the centre serves.
-                toward: if part.east == 0.0 && part.north == 0.0 {
-                    Azimuth::from_deg(SECTOR_DEG * sector as f64)
-                } else {
-                    Azimuth::from_east_north(part.east, part.north)
-                },
-                weight: part.weight,
-            })
-            .collect()
-    }
-}
-
 /// Which blocks may stand at which place of a draw.
 ///
 /// The seasons come every year: drawn freely they would be treated as chance, and a record of two
@@ -162,27 +91,30 @@ impl Plan {
     }
 }
 
-/// Fills in the intervals of `drift` from `resamples` draws of `cells`.
+/// Fills in the intervals of `drift` from `resamples` draws of the record under one flux. The same bits
+/// for any number of threads.
 ///
 /// # Errors
 /// [`Stopped`] when asked to.
 pub fn intervals(
     drift: &mut Drift,
-    cells: &Cells,
+    movers: &Movers,
+    flux: impl Fn(f64) -> f64 + Sync,
     plan: &Plan,
     resamples: u32,
     seed: Seed,
     work: &Work,
 ) -> Result<(), Stopped> {
     work.phase("resampling winds", u64::from(resamples));
-    let mut turns = Vec::with_capacity(resamples as usize);
-    let mut ratios = Vec::with_capacity(resamples as usize);
-    for index in 0..u64::from(resamples) {
+    let draw = |index: u32| {
         work.advance(1)?;
-        let drawn = Drift::of(&cells.draw(&plan.starts(seed, index)), drift.unit);
-        ratios.extend(drawn.ratio);
-        turns.extend(drift.toward.zip(drawn.toward).map(|(a, b)| b.turn_from(a).abs()));
-    }
+        let drawn = movers.draw(&plan.starts(seed, u64::from(index)), &flux);
+        Ok(Drift::of(&drawn.all, drift.unit))
+    };
+    let draws: Vec<Drift> = (0..resamples).into_par_iter().map(draw).collect::<Result<_, Stopped>>()?;
+    let mut ratios: Vec<f64> = draws.iter().filter_map(|d| d.ratio).collect();
+    let turn = |drawn: &Drift| Some(drawn.toward?.turn_from(drift.toward?).abs());
+    let mut turns: Vec<f64> = draws.iter().filter_map(turn).collect();
     turns.sort_by(f64::total_cmp);
     ratios.sort_by(f64::total_cmp);
     if !turns.is_empty() {
@@ -196,22 +128,14 @@ pub fn intervals(
 
 #[cfg(test)]
 mod tests {
+    use super::super::movers::tests::sample;
     use super::*;
 
-    fn flow(toward: f64, weight: f64) -> Option<SandFlow> {
-        Some(SandFlow { toward: Azimuth::from_deg(toward), weight })
-    }
-
-    #[test]
-    fn every_draw_of_an_even_record_is_the_record() {
-        let flows = vec![flow(33.0, 2.0); 400];
-        let cells = Cells::cut(&flows, 2);
-        for index in 0..5 {
-            let drawn = cells.draw(&Plan::new(cells.count(), None).starts(Seed(1), index));
-            assert_eq!(drawn.len(), 1);
-            crate::assert_close!(drawn[0].weight, 800.0, 1e-9, "total");
-            crate::assert_close!(drawn[0].toward.deg(), 33.0, 1e-9, "mean direction inside the sector");
-        }
+    /// A record of winds of 10 m/s toward the given azimuths, each carrying one unit.
+    fn movers(towards: &[f64], per_cell: usize) -> Movers {
+        let kept: Vec<_> =
+            towards.iter().enumerate().map(|(at, toward)| sample(at as u32, *toward, 10.0)).collect();
+        Movers::new(&kept, per_cell, 1.0, 0.9, |_| 1.0)
     }
 
     #[test]
@@ -225,14 +149,14 @@ mod tests {
     #[test]
     fn opposite_seasons_stay_in_every_draw() {
         // Half a year toward 20°, half toward 140°: the resultant is 80° in every draw, near enough.
-        let flows: Vec<_> = (0..1500).map(|i| flow(if i < 750 { 20.0 } else { 140.0 }, 1.0)).collect();
-        let regime: Vec<SandFlow> = flows.iter().flatten().copied().collect();
-        let cells = Cells::cut(&flows, 1);
+        let towards: Vec<f64> = (0..1500).map(|i| if i < 750 { 20.0 } else { 140.0 }).collect();
+        let movers = movers(&towards, 1);
         let year: Vec<f64> = (0..1500).map(|i| f64::from(i) / 1500.0).collect();
         let half_with = |seasons: Option<&[f64]>| {
-            let mut drift = Drift::of(&regime, "u");
-            let plan = Plan::new(cells.count(), seasons);
-            intervals(&mut drift, &cells, &plan, 500, Seed(3), &Work::quiet()).expect("not stopped");
+            let mut drift = movers.drift("u", |_| 1.0);
+            let plan = Plan::new(movers.count(), seasons);
+            intervals(&mut drift, &movers, |_| 1.0, &plan, 500, Seed(3), &Work::quiet())
+                .expect("not stopped");
             drift.toward_ci95_half_deg.expect("an interval")
         };
         let (seasonal, free) = (half_with(Some(&year)), half_with(None));
@@ -244,17 +168,16 @@ mod tests {
     fn the_interval_has_the_width_of_independent_blocks() {
         let mut stream = Seed(9).stream("test", 0);
         let blocks = 200;
-        let flows: Vec<_> = (0..blocks)
+        let towards: Vec<f64> = (0..blocks)
             .flat_map(|_| {
                 let toward = if stream.random::<bool>() { 0.0 } else { 90.0 };
-                std::iter::repeat_n(flow(toward, 1.0), CELLS_PER_BLOCK)
+                std::iter::repeat_n(toward, CELLS_PER_BLOCK)
             })
             .collect();
-        let regime: Vec<SandFlow> = flows.iter().flatten().copied().collect();
-        let mut drift = Drift::of(&regime, "u");
-        let cells = Cells::cut(&flows, 1);
-        let plan = Plan::new(cells.count(), None);
-        intervals(&mut drift, &cells, &plan, 1000, Seed(2), &Work::quiet()).expect("not stopped");
+        let movers = movers(&towards, 1);
+        let mut drift = movers.drift("u", |_| 1.0);
+        let plan = Plan::new(movers.count(), None);
+        intervals(&mut drift, &movers, |_| 1.0, &plan, 1000, Seed(2), &Work::quiet()).expect("not stopped");
         // toward = atan(p/(1−p)) near 45°: sd = sd(p)·d/dp = √(¼/200)·2 rad = 4.05°. Starts inside
         // blocks mix neighbours, which lowers the variance by a third.
         let half = drift.toward_ci95_half_deg.expect("an interval");

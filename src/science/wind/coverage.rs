@@ -146,6 +146,11 @@ pub(super) fn year_and_month(time: i64) -> (i32, usize) {
     ((year + 400 * cycle + carry) as i32, month as usize)
 }
 
+/// December–February, March–May, June–August, September–November: 0 to 3.
+pub(super) fn season_of(time: i64) -> u8 {
+    ((year_and_month(time).1 + 1) % 12 / 3) as u8
+}
+
 /// Directions that all lie on a coarse compass.
 pub(super) fn rounding(kept: &[WindSample]) -> Option<Caution> {
     let directions: Vec<f64> =

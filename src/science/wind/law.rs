@@ -10,7 +10,7 @@ pub const METHOD: Method = Method {
     name: "Saltation flux",
     question: "How much sand does a wind of this strength move?",
     formula: "Bagnold q = C √(d/D) (ρ/g) u*³, C = 1.8, D = 250 µm;  Kawamura q = 2.78 (ρ/g)(u* − u*t)(u* + u*t)²;  \
-              White q = 2.61 (ρ/g) u*³ (1 − u*t/u*)(1 + u*t/u*)²;  Lettau q = C √(d/D) (ρ/g) u*² (u* − u*t), C = 6.7;  \
+              White q = 2.61 (ρ/g) u*³ (1 − u*t/u*)(1 + u*t/u*)²;  Lettau q = C √(d/D) (ρ/g) u*² (u* − u*t), C = 6.7 or 4.2;  \
               Kok q = 5 (ρ/g) u*t (u*² − u*t²)",
     symbols: &[
         Symbol { symbol: "q", meaning: "mass flux per width of ground", unit: "kg m⁻¹ s⁻¹" },
@@ -27,7 +27,7 @@ pub const METHOD: Method = Method {
     limits: &[
         "Field data support a flux linear in stress (Kok) and speak against the cubic laws",
         "White's law was printed with (1 + u*t²/u*²), which halves it; the corrected form is used",
-        "Lettau's constant is 4.2 or 6.7 by source; for trends only the relative flux counts",
+        "Lettau's constant is 4.2 or 6.7 by source and set; for trends only the relative flux counts",
     ],
     sources: &[
         Source {
@@ -91,8 +91,9 @@ pub const METHOD: Method = Method {
 const REFERENCE_GRAIN: f64 = 250e-6;
 /// Bagnold's constant for naturally graded dune sand.
 const BAGNOLD: f64 = 1.8;
-/// Lettau's constant; 4.2 is printed too.
+/// Lettau's constant: sources print one or the other.
 const LETTAU: f64 = 6.7;
+const LETTAU_LOW: f64 = 4.2;
 
 /// A physical transport law.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -100,11 +101,15 @@ pub enum Law {
     Bagnold,
     Kawamura,
     White,
+    /// With the constant 6.7.
     Lettau,
+    /// With the constant 4.2.
+    LettauLow,
     Kok,
 }
 
 impl Law {
+    /// Each law once; Lettau's with 6.7, since its constant does not change the shares of the sectors.
     pub const ALL: [Self; 5] = [Self::Bagnold, Self::Kawamura, Self::White, Self::Lettau, Self::Kok];
 
     /// Flux in kg m⁻¹ s⁻¹ for the friction velocity `u` over the threshold `t`, both m s⁻¹; 0 at
@@ -121,6 +126,7 @@ impl Law {
             // (1 + u*t/u*)², not the misprinted (1 + u*t²/u*²)
             Self::White => 2.61 * per_gravity * u.powi(3) * (1.0 - t / u) * (1.0 + t / u).powi(2),
             Self::Lettau => LETTAU * sorting * per_gravity * u * u * (u - t),
+            Self::LettauLow => LETTAU_LOW * sorting * per_gravity * u * u * (u - t),
             Self::Kok => 5.0 * per_gravity * t * (u * u - t * t),
         }
     }
@@ -131,6 +137,7 @@ impl Law {
             Self::Kawamura => "Kawamura (2.78)",
             Self::White => "White (2.61)",
             Self::Lettau => "Lettau (C = 6.7)",
+            Self::LettauLow => "Lettau (C = 4.2)",
             Self::Kok => "Kok (5)",
         }
     }

@@ -8,17 +8,19 @@ pub mod drift_potential;
 pub mod law;
 pub mod log_law;
 mod mill;
+mod movers;
 pub mod quality;
 pub mod regime;
 pub mod saturation;
 mod settings;
 pub mod threshold;
 
-pub use assess::{Sensitivity, WindAssessment, assess};
+pub use assess::{Replay, Sensitivity, WindAssessment, assess};
 pub use law::Law;
+pub use mill::Mill;
 pub use quality::SetAside;
 pub use regime::{Drift, Season};
-pub use settings::{Site, Transport, WindError, WindSettings};
+pub use settings::{Assumption, Doubt, Site, Transport, WindError, WindSettings};
 pub use threshold::{Bed, Threshold};
 
 use crate::ground::Method;

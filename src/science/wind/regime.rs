@@ -4,7 +4,7 @@ use std::collections::BTreeMap;
 
 use crate::ground::{Azimuth, Method, Read, SandFlow, Source, Symbol, WindSample};
 
-use super::coverage::year_and_month;
+use super::coverage::season_of;
 
 /// Resultant drift.
 pub const METHOD: Method = Method {
@@ -139,19 +139,21 @@ pub fn rose(regime: &[SandFlow]) -> Vec<SandFlow> {
     rose
 }
 
+/// The seasons by their months.
+pub const SEASONS: [&str; 4] = ["Dec–Feb", "Mar–May", "Jun–Aug", "Sep–Nov"];
+
 /// The four seasons of a record with a clock, by calendar months; empty without one.
 pub fn seasons(kept: &[WindSample], flows: &[Option<SandFlow>], unit: &'static str) -> Vec<Season> {
-    const NAMES: [&str; 4] = ["Dec–Feb", "Mar–May", "Jun–Aug", "Sep–Nov"];
     if kept.iter().any(|s| s.time.is_none()) {
         return Vec::new();
     }
     let mut parts: [Vec<Option<SandFlow>>; 4] = Default::default();
     for (sample, flow) in kept.iter().zip(flows) {
         if let Some(time) = sample.time {
-            parts[(year_and_month(time).1 + 1) % 12 / 3].push(*flow);
+            parts[usize::from(season_of(time))].push(*flow);
         }
     }
-    NAMES
+    SEASONS
         .into_iter()
         .zip(parts)
         .map(|(name, part)| Season { name, drift: Drift::of(&gathered(&part), unit) })

@@ -27,6 +27,8 @@ pub struct WindSettings {
     pub grain_m: f64,
     /// kg m⁻³.
     pub grain_density: f64,
+    /// Cohesion γ of the grains, kg s⁻².
+    pub cohesion: f64,
     pub threshold: Threshold,
     pub transport: Transport,
     /// Speeds above this are set aside as impossible, m s⁻¹.
@@ -34,6 +36,36 @@ pub struct WindSettings {
     /// Length of a bootstrap block, days.
     pub block_days: f64,
     pub resamples: u32,
+    pub doubt: Doubt,
+    /// Share of the time with moving sand below which a wind is no storm, in (0, 1).
+    pub storm_quantile: f64,
+}
+
+/// Factors, each ≥ 1, within which parts of the mill are known: the draws take each evenly in the
+/// logarithm between value/factor and value·factor.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Doubt {
+    pub grain: f64,
+    pub grain_density: f64,
+    pub cohesion: f64,
+    pub roughness: f64,
+}
+
+/// One way the uncertain parts of the mill may be.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Assumption {
+    pub transport: Transport,
+    pub threshold: Threshold,
+    /// On the threshold: 1 for the fluid threshold of the model, less for that of impact.
+    pub threshold_factor: f64,
+    /// m.
+    pub grain_m: f64,
+    /// kg m⁻³.
+    pub grain_density: f64,
+    /// kg s⁻².
+    pub cohesion: f64,
+    /// m.
+    pub roughness_m: f64,
 }
 
 /// Drift potential or a physical law.

@@ -50,7 +50,7 @@ pub const SHAO_LU: Method = Method {
     id: "wind.threshold-shao-lu",
     name: "Threshold after Shao and Lu",
     question: "How strong must the wind be to start sand held by cohesion?",
-    formula: "u*t = √(A_N (ρp g d/ρ + γ/(ρ d))),  A_N = 0.0123,  γ = 3·10⁻⁴ kg s⁻²",
+    formula: "u*t = √(A_N (ρp g d/ρ + γ/(ρ d))),  A_N = 0.0123,  γ = 3·10⁻⁴ kg s⁻² unless set",
     symbols: SYMBOLS,
     assumptions: &["Cohesion proportional to grain size"],
     limits: &["γ is known only to 1.65–5·10⁻⁴ kg s⁻²; under low gravity it decides the answer"],
@@ -75,7 +75,7 @@ const SYMBOLS: &[Symbol] = &[
     Symbol { symbol: "γ", meaning: "cohesion", unit: "kg s⁻²" },
 ];
 
-/// Cohesion of Shao and Lu, kg s⁻².
+/// Cohesion γ of Shao and Lu, kg s⁻².
 pub const COHESION: f64 = 3e-4;
 
 /// Which model.
@@ -96,6 +96,8 @@ pub struct Bed {
     pub air: Air,
     /// m s⁻².
     pub gravity: f64,
+    /// Cohesion γ between grains, kg s⁻²; only Shao and Lu's threshold asks for it.
+    pub cohesion: f64,
 }
 
 impl Threshold {
@@ -106,7 +108,7 @@ impl Threshold {
         match self {
             Self::Bagnold => bagnold(bed),
             Self::IversenWhite => iversen_white(bed),
-            Self::ShaoLu => shao_lu(bed, COHESION),
+            Self::ShaoLu => shao_lu(bed),
         }
     }
 
@@ -121,14 +123,14 @@ impl Threshold {
 
 // u*t = A √((ρp − ρ) g d / ρ)
 fn bagnold(bed: &Bed) -> f64 {
-    let Bed { grain: d, grain_density: rho_p, air, gravity: g } = *bed;
+    let Bed { grain: d, grain_density: rho_p, air, gravity: g, .. } = *bed;
     0.10 * ((rho_p - air.density).max(0.0) * g * d / air.density).sqrt()
 }
 
 // u*t = A(Re) √(ρp g d / ρ) with Re = u*t d / ν, as a damped fixed point: A changes slowly with Re, so the
 // average of old and new converges fast everywhere but within a seam, where it settles on the step.
 fn iversen_white(bed: &Bed) -> f64 {
-    let Bed { grain: d, grain_density: rho_p, air, gravity: g } = *bed;
+    let Bed { grain: d, grain_density: rho_p, air, gravity: g, .. } = *bed;
     let nu = kinematic_viscosity(air);
     let k = 6e-7 / (rho_p * g * d.powf(2.5));
     let scale = (rho_p * g * d / air.density).sqrt();
@@ -148,14 +150,13 @@ fn iversen_white(bed: &Bed) -> f64 {
     u
 }
 
-/// Shao and Lu's threshold for a cohesion of one's own.
-pub fn shao_lu(bed: &Bed, cohesion: f64) -> f64 {
-    let Bed { grain: d, grain_density: rho_p, air, gravity: g } = *bed;
-    // u*t = √(A_N (ρp g d/ρ + γ/(ρ d)))
-    (0.0123 * (rho_p * g * d / air.density + cohesion / (air.density * d))).sqrt()
+// u*t = √(A_N (ρp g d/ρ + γ/(ρ d)))
+fn shao_lu(bed: &Bed) -> f64 {
+    let Bed { grain: d, grain_density: rho_p, air, gravity: g, cohesion: gamma } = *bed;
+    (0.0123 * (rho_p * g * d / air.density + gamma / (air.density * d))).sqrt()
 }
 
 /// The grain that moves most easily by Shao and Lu, m: d = √(γ/(ρp g)).
-pub fn easiest_grain(grain_density: f64, gravity: f64) -> f64 {
-    (COHESION / (grain_density * gravity)).sqrt()
+pub fn easiest_grain(cohesion: f64, grain_density: f64, gravity: f64) -> f64 {
+    (cohesion / (grain_density * gravity)).sqrt()
 }

@@ -6,7 +6,7 @@ use serde_json::{Value, json};
 use crate::ground::{Axis, Caution, LengthUnit};
 use crate::study::{
     DriftFinding, Findings, PatchFinding, RasterFinding, Sheet, SpectrumFinding, TrendFinding,
-    VerdictFinding, WindFinding,
+    TogetherFinding, VerdictFinding, WindFinding,
 };
 
 /// The version of the layout.
@@ -22,6 +22,7 @@ pub fn findings_json(sheet: &Sheet, findings: &Findings) -> String {
         "rasters": findings.rasters.iter().map(raster).collect::<Vec<_>>(),
         "winds": findings.winds.iter().map(wind).collect::<Vec<_>>(),
         "patches": findings.patches.iter().map(patch).collect::<Vec<_>>(),
+        "together": together(&findings.together),
         "networks": [],
         "errors": findings.failures.iter().map(|f| json!({ "what": f.what, "why": f.why })).collect::<Vec<_>>(),
     });
@@ -99,9 +100,28 @@ fn verdict(v: &VerdictFinding) -> Value {
         "obliquity_deg": v.obliquity_deg, "ci95_deg": v.obliquity_ci95_deg,
         "probabilities": v.probabilities.map(classes), "priors": classes(v.class_priors),
         "alignment_strength": v.alignment_strength,
+        "elongation": v.elongation.map(|e| json!({
+            "toward_deg": e.toward.deg(), "separation_deg": e.separation_deg, "ci95_deg": e.ci95_deg,
+            "p_within_margin": e.within_margin,
+        })),
+        "building": {
+            "crossed": v.building.crossed, "extended": v.building.extended, "stated": v.building.stated,
+            "random": v.building.random,
+        },
+        "supply_ln": v.supply_ln, "growth_ratio": v.growth_ratio,
+        "migration": v.migration.iter().map(|m| json!({
+            "trend_deg": m.trend.deg(), "share": m.share, "toward_deg": m.toward.map(|a| a.deg()),
+        })).collect::<Vec<_>>(),
+        "flips": v.flips.iter().map(|f| json!({
+            "parameter": f.parameter, "now": f.now, "at": f.at, "change": f.change, "reach": f.reach,
+        })).collect::<Vec<_>>(),
         "theories": v.theories.iter().map(|t| json!({
             "name": t.name, "method": t.method, "axis_deg": degrees(t.axis),
+            "toward_deg": t.toward.map(|a| a.deg()), "extends": t.extends, "strength": t.strength,
             "ties_deg": t.ties.iter().map(|a| a.deg()).collect::<Vec<_>>(), "spread_deg": t.spread_deg,
+            "equivalence": t.equivalence.map(|e| json!({
+                "p": e.p, "ci90_deg": e.ci90, "equivalent": e.equivalent,
+            })),
             "prior": t.prior, "posterior": t.posterior, "ln_bayes_factor": t.ln_bayes_factor,
         })).collect::<Vec<_>>(),
         "cautions": cautions(&v.cautions),
@@ -116,7 +136,30 @@ fn wind(w: &WindFinding) -> Value {
         "drift_potential": w.fryberger.as_ref().map(drift), "flux": drift(&w.flux), "law": w.law,
         "threshold_ustar_m_per_s": w.threshold_ustar, "threshold_speed_m_per_s": w.threshold_speed_at_height,
         "seasons": w.seasons.iter().map(|s| json!({ "name": s.name, "flux": drift(&s.drift) })).collect::<Vec<_>>(),
+        "storm_speed_m_per_s": w.storm_speed, "strongest_season": w.season,
+        "sensitivity": w.sensitivity.iter().map(|s| json!({
+            "law": s.law, "threshold": s.threshold, "threshold_ustar_m_per_s": s.threshold_ustar,
+            "ratio": s.drift.ratio, "toward_deg": s.drift.toward.map(|a| a.deg()), "total": s.drift.total,
+            "unit": s.drift.unit,
+        })).collect::<Vec<_>>(),
         "cautions": cautions(&w.cautions),
+    })
+}
+
+fn together(t: &TogetherFinding) -> Value {
+    json!({
+        "joint": t.joint.iter().map(|j| json!({
+            "winds": j.winds, "winds_name": j.winds_name, "finding": j.sentence,
+            "trends": j.trends.iter().map(|t| json!({
+                "name": t.name, "axis_deg": t.axis.deg(), "supply_ln": t.supply_ln,
+            })).collect::<Vec<_>>(),
+            "theories": j.theories.iter().map(|t| json!({
+                "name": t.name, "posterior": t.posterior, "ln_bayes_factor": t.ln_bayes_factor,
+            })).collect::<Vec<_>>(),
+        })).collect::<Vec<_>>(),
+        "discoveries": t.discoveries.iter().map(|d| json!({
+            "patch": d.patch, "name": d.name, "p": d.p, "q": d.q, "claimed": d.claimed,
+        })).collect::<Vec<_>>(),
     })
 }
 

@@ -70,6 +70,7 @@ pub fn verdict_table(findings: &Findings) -> Table {
         Column::real("p_transverse"),
         Column::text("theory"),
         Column::real("theory_axis_deg"),
+        Column::real("theory_toward_deg"),
         Column::real("theory_spread_deg"),
         Column::real("prior"),
         Column::real("posterior"),
@@ -80,12 +81,13 @@ pub fn verdict_table(findings: &Findings) -> Table {
         for v in &patch.verdicts {
             let shared = verdict_values(patch, v);
             if v.theories.is_empty() {
-                rows.push(shared.iter().cloned().chain(vec![Value::Missing; 6]).collect());
+                rows.push(shared.iter().cloned().chain(vec![Value::Missing; 7]).collect());
             }
             for t in &v.theories {
                 let own = [
                     Value::from(t.name),
                     Value::from(t.axis.map(|a| a.deg())),
+                    Value::from(t.toward.map(|a| a.deg())),
                     Value::from(t.spread_deg),
                     Value::from(t.prior),
                     Value::from(t.posterior),

@@ -3,6 +3,7 @@
 mod json;
 mod layers;
 mod methods;
+mod weighing;
 mod write;
 
 pub use json::findings_json;

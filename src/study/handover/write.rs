@@ -7,6 +7,7 @@ use crate::files::save;
 use crate::study::{Findings, Sheet, Sources};
 
 use super::layers::{layers, lonlat_patches, node_table, patch_table, verdict_table, wind_table};
+use super::weighing::{flip_table, sensitivity_table, together_table};
 use super::{bibtex, findings_json};
 
 /// A file that could not be written.
@@ -42,8 +43,15 @@ pub fn write_all(
     for (name, content) in extra {
         bytes(name, content)?;
     }
-    let tables =
-        [patch_table(findings), node_table(findings, sources), verdict_table(findings), wind_table(findings)];
+    let tables = [
+        patch_table(findings),
+        node_table(findings, sources),
+        verdict_table(findings),
+        flip_table(findings),
+        together_table(findings),
+        wind_table(findings),
+        sensitivity_table(findings),
+    ];
     for table in tables.iter().filter(|t| !t.rows.is_empty()) {
         let name = format!("{}.csv", table.name);
         write_csv(&folder.join(&name), &table.columns, &table.rows)?;

@@ -2,8 +2,8 @@
 
 use egui::{Grid, RichText, Ui};
 
-use super::{figure_mm, say};
-use crate::desk::{Command, Model, PatchCommand, WindCommand, facts};
+use super::{figure_mm, judges, say};
+use crate::desk::{Command, Model, WindCommand, facts};
 use crate::plate::{numbers, sand_rose};
 use crate::study::{WindEntry, WindFinding};
 use crate::window::controls::{self, Commands, button, caution, heading, look, number, rule};
@@ -25,7 +25,7 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
         Some(Ok(finding)) => record(ui, model, finding),
     }
     mast(ui, wind, out);
-    judged(ui, model, wind, out);
+    judges::show(ui, model, out);
     rule(ui, &look(model));
     ui.horizontal_wrapped(|ui| {
         button(ui, model, out, Command::Wind(WindCommand::Review(wind.id)));
@@ -91,15 +91,23 @@ fn mast(ui: &mut Ui, wind: &WindEntry, out: &mut Commands) {
     if changed {
         out.push(Command::Wind(WindCommand::Mast { id: wind.id, height_m, roughness_m }));
     }
+    place(ui, wind, out);
 }
 
-/// Which record judges the selected patch.
-fn judged(ui: &mut Ui, model: &Model, wind: &WindEntry, out: &mut Commands) {
-    let Some(patch) = model.selected_patch() else { return };
-    let mut own = patch.wind == Some(wind.id);
-    let words = format!("Judge {} by this record alone", patch.name);
-    if ui.checkbox(&mut own, words).on_hover_text("Else every record of the sheet judges it.").changed() {
-        let wind = own.then_some(wind.id);
-        out.push(Command::Patch(PatchCommand::JudgeBy { id: patch.id, wind }));
-    }
+/// Longitude and latitude; an empty field takes the place away.
+fn place(ui: &mut Ui, wind: &WindEntry, out: &mut Commands) {
+    let hint =
+        "Where the mast stands or the model's cell lies: lets a patch be judged by the nearest record.";
+    let now = wind.at.map(|at| format!("{} {}", at.lon, at.lat)).unwrap_or_default();
+    ui.horizontal(|ui| {
+        ui.label("Longitude, latitude").on_hover_text(hint);
+        let Some(typed) = controls::line(ui, "Longitude and latitude of the record", &now, 150.0) else {
+            return;
+        };
+        if typed.trim().is_empty() {
+            out.push(Command::Wind(WindCommand::Place { id: wind.id, at: None }));
+        } else if let Some(at) = controls::lonlat(&typed) {
+            out.push(Command::Wind(WindCommand::Place { id: wind.id, at: Some(at) }));
+        }
+    });
 }

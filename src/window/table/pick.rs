@@ -135,6 +135,7 @@ fn ring_mut(polygon: &mut Polygon, ring: usize) -> Option<&mut Vec<Point>> {
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::study::WindChoice;
     use egui::{pos2, vec2};
 
     fn lens() -> Lens {
@@ -151,7 +152,7 @@ mod tests {
     }
 
     fn patch(id: u32, outline: Polygon) -> Patch {
-        Patch { id: Id(id), name: format!("Patch {id}"), raster: Id(1), outline, tags: vec![], wind: None }
+        Patch::new(Id(id), format!("Patch {id}"), Id(1), outline)
     }
 
     #[test]

@@ -7,7 +7,7 @@ use ventifact::ground::{Point, Polygon, Projection, SandFlow};
 use ventifact::plate::Recipe;
 use ventifact::plate::map::{Picture, toned};
 use ventifact::study::{DriftFinding, Id, ModeFinding, Node, PatchFinding, RasterFinding, SpectrumFinding};
-use ventifact::study::{SpectrumPicture, TheoryFinding, Tone, TrendFinding, VerdictFinding, WindFinding};
+use ventifact::study::{BuildingFinding, SpectrumPicture, TheoryFinding, Tone, TrendFinding, VerdictFinding, WindFinding};
 
 /// A trend about `axis` with the given spread of the rose.
 pub fn trend(axis: f64, spread: f64) -> TrendFinding {
@@ -96,6 +96,10 @@ pub fn verdict() -> VerdictFinding {
     let theory = |name, method, axis: Option<f64>, spread, prior, posterior, ln| TheoryFinding {
         name,
         method,
+        extends: method == "alignment.along",
+        toward: None,
+        strength: axis.map(|_| 0.5),
+        equivalence: None,
         axis: axis.map(Axis::from_deg),
         ties: Vec::new(),
         spread_deg: axis.map(|_| spread),
@@ -137,6 +141,12 @@ pub fn verdict() -> VerdictFinding {
             ),
             theory("random axis", "", None, 0.0, 0.25, 0.144, 0.0),
         ],
+        elongation: None,
+        building: BuildingFinding { extended: 0.82, crossed: 0.036, random: 0.144, stated: 0.0 },
+        supply_ln: None,
+        growth_ratio: None,
+        migration: Vec::new(),
+        flips: Vec::new(),
         alignment_strength: Some(0.29),
         cautions: Vec::new(),
     }
@@ -303,6 +313,9 @@ pub fn wind_finding() -> WindFinding {
         threshold_speed_at_height: 4.4,
         rose: flow(),
         seasons: Vec::new(),
+        storm_speed: Some(9.1),
+        season: None,
+        sensitivity: Vec::new(),
         cautions: vec![Caution::new(
             "short-record",
             "The wind record spans two years; the dunes may be older than its winds.",
