@@ -6,7 +6,7 @@
 
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
-use super::{
+use super::{BackwardsFinding, 
     BuildingFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id, MigrationFinding, SeasonFinding, SensitivityFinding,
     SetAside,
 };
@@ -68,6 +68,8 @@ pub struct PatchFinding {
     pub trend: TrendFinding,
     pub spectrum: SpectrumFinding,
     pub verdicts: Vec<VerdictFinding>,
+    /// The two-wind regimes that would make its trend; `None` without one.
+    pub backwards: Option<BackwardsFinding>,
     /// One plain sentence with uncertainty and caveat.
     pub sentence: String,
     pub cautions: Vec<Caution>,
@@ -280,6 +282,8 @@ pub struct TogetherFinding {
     pub joint: Vec<JointFinding>,
     /// The tests for a preferred trend, with false discoveries controlled.
     pub discoveries: Vec<Discovery>,
+    /// The two-wind regimes that would make the trends of several patches.
+    pub regimes: Vec<BackwardsFinding>,
 }
 
 /// Several trends judged by one record under one theory.

@@ -1,5 +1,6 @@
 //! The study: the sheet (document), its settings, the one executor, and the findings it returns.
 
+mod backwards;
 mod cautions;
 pub mod check;
 pub mod demo;
@@ -29,6 +30,7 @@ pub use crate::science::alignment::{Building as BuildingFinding, Elongation as E
 pub use crate::science::wind::Sensitivity as SensitivityFinding;
 pub use crate::science::wind::quality::SetAside;
 pub use crate::science::wind::regime::{Drift as DriftFinding, Season as SeasonFinding};
+pub use backwards::{BackwardsFinding, arc_words};
 pub use findings::{
     Discovery, Failure, Findings, Flip, JointFinding, JointTheory, JointTrend, ModeFinding, Node, PatchFinding,
     RasterFinding, SpectrumFinding, SpectrumPicture, TheoryFinding, TogetherFinding, TrendFinding,
@@ -36,7 +38,7 @@ pub use findings::{
 };
 pub use records::{SETTINGS, Setting, SettingKind, SettingValue};
 pub use settings::{
-    LettauConstant, Priors, Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw,
+    BackwardsSettings, LettauConstant, Priors, Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw,
     TrendSettings, VerdictSettings, WindSettings,
 };
 pub use sheet::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};

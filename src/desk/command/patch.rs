@@ -5,6 +5,7 @@ use std::path::{Path, PathBuf};
 use crate::desk::{Ask, MergeKey, Model, Purpose};
 use crate::files::layers::read_patches;
 use crate::ground::{Point, Polygon};
+use crate::science::alignment::backwards::{Cover, Sense};
 use crate::study::{Id, Patch, WindChoice};
 
 use super::Record;
@@ -33,6 +34,16 @@ pub enum PatchCommand {
         id: Id,
         winds: WindChoice,
     },
+    /// How much sand lies between the bedforms.
+    Cover {
+        id: Id,
+        cover: Cover,
+    },
+    /// Which way the sand goes, as read from the ground; `None` = nothing tells.
+    Sense {
+        id: Id,
+        sense: Option<Sense>,
+    },
     AskBring,
     /// Adds the outlines of a GeoPackage or GeoJSON file to the raster on the table.
     Bring(PathBuf),
@@ -60,6 +71,13 @@ impl PatchCommand {
             Self::Tag { .. } => Record::new("patch.tag", "Tag patch", "Words to sort patches by.").editing(),
             Self::JudgeBy { .. } => {
                 Record::new("patch.judge-by", "Judge by wind", "Which wind records the verdicts use.")
+                    .editing()
+            }
+            Self::Cover { .. } => {
+                Record::new("patch.cover", "Sand cover", "How much sand lies between the bedforms.").editing()
+            }
+            Self::Sense { .. } => {
+                Record::new("patch.sense", "Sense of the sand", "Which way forks, tapering or obstacles point.")
                     .editing()
             }
             Self::AskBring => Record::new(
@@ -113,6 +131,8 @@ impl PatchCommand {
             | Self::Rename { id, .. }
             | Self::Tag { id, .. }
             | Self::JudgeBy { id, .. }
+            | Self::Cover { id, .. }
+            | Self::Sense { id, .. }
                 if model.sheet.patch(*id).is_none() =>
             {
                 Some("the patch is gone")
@@ -135,6 +155,8 @@ impl PatchCommand {
             Self::Rename { id, name } => change(model, id, |patch| patch.name = name),
             Self::Tag { id, tags } => change(model, id, |patch| patch.tags = tags),
             Self::JudgeBy { id, winds } => change(model, id, |patch| patch.winds = winds),
+            Self::Cover { id, cover } => change(model, id, |patch| patch.cover = cover),
+            Self::Sense { id, sense } => change(model, id, |patch| patch.sense = sense),
             Self::AskBring => model.session.ask = Some(Ask::new(Purpose::BringPatches, "")),
             Self::Bring(path) => bring(model, &path),
             Self::Select(id) => select(model, id),

@@ -3,6 +3,7 @@
 mod json;
 mod layers;
 mod methods;
+mod regimes;
 mod weighing;
 mod write;
 

@@ -3,6 +3,7 @@
 mod ground;
 mod judges;
 mod plate;
+mod regimes;
 mod spacing;
 mod trend;
 mod verdict;
@@ -29,11 +30,12 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
             Page::Ground => ground::show(ui, model, out),
             Page::Winds => winds::show(ui, model, out),
             Page::Plate => plate::show(ui, model, out),
-            Page::Trend | Page::Spacing | Page::Verdict => {
+            Page::Trend | Page::Spacing | Page::Verdict | Page::Regimes => {
                 let Some(finding) = subject(ui, model, out) else { return };
                 match model.view.page {
                     Page::Trend => trend::show(ui, model, finding),
                     Page::Spacing => spacing::show(ui, model, finding),
+                    Page::Regimes => regimes::show(ui, model, finding, out),
                     _ => verdict::show(ui, model, finding, out),
                 }
             }

@@ -20,6 +20,11 @@ pub enum Cover {
 impl Cover {
     pub const ALL: [Self; 3] = [Self::Unknown, Self::Full, Self::Starved];
 
+    /// Nothing was said of it.
+    pub fn is_unknown(&self) -> bool {
+        *self == Self::Unknown
+    }
+
     pub fn label(self) -> &'static str {
         match self {
             Self::Unknown => "cover unknown",
