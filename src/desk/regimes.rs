@@ -50,7 +50,9 @@ pub fn facts(found: &BackwardsFinding) -> Vec<Fact> {
     let classes: Vec<String> = ["longitudinal", "oblique", "transverse"]
         .iter()
         .zip(r.classes.iter().zip(r.class_priors))
-        .map(|(name, (p, prior))| format!("{name} {} (map: {})", numbers::percent(*p), numbers::percent(prior)))
+        .map(|(name, (p, prior))| {
+            format!("{name} {} (map: {})", numbers::percent(*p), numbers::percent(prior))
+        })
         .collect();
     let mut facts = vec![
         Fact {

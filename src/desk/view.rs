@@ -95,10 +95,7 @@ impl Default for PickedRegime {
 impl PickedRegime {
     /// The nearest regime on the map.
     pub fn within_map(self) -> Self {
-        Self {
-            divergence_deg: self.divergence_deg.clamp(0.5, 179.5),
-            ratio: self.ratio.clamp(1.0, 10.0),
-        }
+        Self { divergence_deg: self.divergence_deg.clamp(0.5, 179.5), ratio: self.ratio.clamp(1.0, 10.0) }
     }
 
     pub fn from_map(point: MapPoint) -> Self {
@@ -120,15 +117,8 @@ impl Theme {
 }
 
 impl Page {
-    pub const ALL: [Self; 7] = [
-        Self::Ground,
-        Self::Trend,
-        Self::Spacing,
-        Self::Winds,
-        Self::Verdict,
-        Self::Regimes,
-        Self::Plate,
-    ];
+    pub const ALL: [Self; 7] =
+        [Self::Ground, Self::Trend, Self::Spacing, Self::Winds, Self::Verdict, Self::Regimes, Self::Plate];
 
     pub fn label(self) -> &'static str {
         match self {

@@ -67,15 +67,15 @@ pub fn regime_map(found: &BackwardsFinding, picked: Option<MapPoint>, size_mm: f
     curves(&mut sketch, &layout, theme);
     if !found.tells() {
         let centre = layout.at(45.0, 0.5);
-        let look = Type::new(theme.text.body, theme.predicted).anchored(TextAnchor::Middle).haloed(theme.paper);
+        let look =
+            Type::new(theme.text.body, theme.predicted).anchored(TextAnchor::Middle).haloed(theme.paper);
         sketch.text(Point::new(centre.x, centre.y - 1.2), "any regime", look);
         sketch.text(Point::new(centre.x, centre.y + 2.2), "can be turned to fit", look);
     }
     axes(&mut sketch, &layout, theme);
     if let Some(point) = picked {
         let p = layout.at(point.divergence_deg, point.ratio.max(1.0).log10());
-        for (radius, color, width) in
-            [(1.5, theme.paper, 3.2), (1.5, theme.ink, 1.6), (0.35, theme.ink, 1.0)]
+        for (radius, color, width) in [(1.5, theme.paper, 3.2), (1.5, theme.ink, 1.6), (0.35, theme.ink, 1.0)]
         {
             sketch.circle(p, radius, None, Some(theme.stroke(color, width * theme.widths.thin)));
         }

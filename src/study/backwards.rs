@@ -111,10 +111,9 @@ fn settings(sheet: &Sheet) -> BackwardsSettings {
         // Without any error of the model a map of finite cells would miss every regime.
         model_error_deg: v.model_error_deg.max(1.0),
         tail_share: v.tail_share,
-        wind: b.wind_from_deg.map(|from| WindPrior {
-            toward: Azimuth::from_deg(from).reversed(),
-            sd_deg: b.wind_sd_deg,
-        }),
+        wind: b
+            .wind_from_deg
+            .map(|from| WindPrior { toward: Azimuth::from_deg(from).reversed(), sd_deg: b.wind_sd_deg }),
     }
 }
 
@@ -211,8 +210,12 @@ mod tests {
         let mut sheet = sheet(&[Cover::Starved]);
         sheet.settings.backwards.wind_from_deg = Some(220.0);
         sheet.settings.backwards.wind_sd_deg = 15.0;
-        sheet.patches[0].sense =
-            Some(Sense { toward: finger, evidence: SenseKind::Forks, chance_right: 0.9, forks: Some([14, 3]) });
+        sheet.patches[0].sense = Some(Sense {
+            toward: finger,
+            evidence: SenseKind::Forks,
+            chance_right: 0.9,
+            forks: Some([14, 3]),
+        });
         let trend = trend(finger.axis().deg());
         let found =
             of_patch(&sheet, &sheet.patches[0], &trend, &Work::quiet()).expect("run").expect("a trend");

@@ -6,9 +6,9 @@
 
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
-use super::{BackwardsFinding, 
-    BuildingFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id, MigrationFinding, SeasonFinding, SensitivityFinding,
-    SetAside,
+use super::{
+    BackwardsFinding, BuildingFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id,
+    MigrationFinding, SeasonFinding, SensitivityFinding, SetAside,
 };
 
 /// All results of one run.

@@ -32,14 +32,14 @@ pub use crate::science::wind::quality::SetAside;
 pub use crate::science::wind::regime::{Drift as DriftFinding, Season as SeasonFinding};
 pub use backwards::{BackwardsFinding, arc_words};
 pub use findings::{
-    Discovery, Failure, Findings, Flip, JointFinding, JointTheory, JointTrend, ModeFinding, Node, PatchFinding,
-    RasterFinding, SpectrumFinding, SpectrumPicture, TheoryFinding, TogetherFinding, TrendFinding,
-    VerdictFinding, WindFinding,
+    Discovery, Failure, Findings, Flip, JointFinding, JointTheory, JointTrend, ModeFinding, Node,
+    PatchFinding, RasterFinding, SpectrumFinding, SpectrumPicture, TheoryFinding, TogetherFinding,
+    TrendFinding, VerdictFinding, WindFinding,
 };
 pub use records::{SETTINGS, Setting, SettingKind, SettingValue};
 pub use settings::{
-    BackwardsSettings, LettauConstant, Priors, Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw,
-    TrendSettings, VerdictSettings, WindSettings,
+    BackwardsSettings, LettauConstant, Priors, Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw,
+    TransportLaw, TrendSettings, VerdictSettings, WindSettings,
 };
 pub use sheet::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
 pub use sources::{OpenRaster, Sources};

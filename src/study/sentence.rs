@@ -67,9 +67,8 @@ fn judged(v: &VerdictFinding) -> String {
     if let (Some(obliquity), Some(classes)) = (v.obliquity_deg, v.probabilities) {
         let names = ["longitudinal", "oblique", "transverse"];
         let best = (0..3).max_by(|a, b| classes[*a].total_cmp(&classes[*b])).unwrap_or(1);
-        let interval = v
-            .obliquity_ci95_deg
-            .map_or(String::new(), |[low, high]| format!(" ({low:.0}° to {high:.0}°)"));
+        let interval =
+            v.obliquity_ci95_deg.map_or(String::new(), |[low, high]| format!(" ({low:.0}° to {high:.0}°)"));
         parts.push(format!(
             "{obliquity:.0}°{interval} from the resultant drift of {}: {} with probability {:.0} % (random axis: {:.0} %)",
             v.winds_name,
@@ -91,7 +90,8 @@ fn judged(v: &VerdictFinding) -> String {
         )
     }));
     parts.extend(v.flips.first().map(|flip| {
-        let sure = if flip.reach.is_some_and(|r| r < 1.0) { "would change within doubt" } else { "would change" };
+        let sure =
+            if flip.reach.is_some_and(|r| r < 1.0) { "would change within doubt" } else { "would change" };
         format!("it {sure} with {} at {} (now {}): {}", flip.parameter, flip.at, flip.now, flip.change)
     }));
     parts.join(", ")

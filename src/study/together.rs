@@ -21,9 +21,8 @@ pub fn together(sheet: &Sheet, patches: &[&PatchFinding], winds: &[Arc<WindStudy
 }
 
 fn joint(sheet: &Sheet, patches: &[&PatchFinding], winds: &WindStudy) -> Option<JointFinding> {
-    let judged = |p: &&&PatchFinding| {
-        p.verdicts.iter().any(|v| v.winds == winds.finding.id && v.refused.is_none())
-    };
+    let judged =
+        |p: &&&PatchFinding| p.verdicts.iter().any(|v| v.winds == winds.finding.id && v.refused.is_none());
     let trends: Vec<(String, TrendEvidence)> =
         patches.iter().filter(judged).flat_map(|p| evidences(&p.name, &p.trend)).collect();
     if trends.len() < 2 {

@@ -76,10 +76,12 @@ impl PatchCommand {
             Self::Cover { .. } => {
                 Record::new("patch.cover", "Sand cover", "How much sand lies between the bedforms.").editing()
             }
-            Self::Sense { .. } => {
-                Record::new("patch.sense", "Sense of the sand", "Which way forks, tapering or obstacles point.")
-                    .editing()
-            }
+            Self::Sense { .. } => Record::new(
+                "patch.sense",
+                "Sense of the sand",
+                "Which way forks, tapering or obstacles point.",
+            )
+            .editing(),
             Self::AskBring => Record::new(
                 "patch.bring",
                 "Bring in patches…",

@@ -5,8 +5,8 @@ use serde_json::{Value, json};
 
 use crate::ground::{Axis, Caution, LengthUnit};
 use crate::study::{
-    DriftFinding, Findings, PatchFinding, RasterFinding, Sheet, SpectrumFinding, TrendFinding,
-    TogetherFinding, VerdictFinding, WindFinding,
+    DriftFinding, Findings, PatchFinding, RasterFinding, Sheet, SpectrumFinding, TogetherFinding,
+    TrendFinding, VerdictFinding, WindFinding,
 };
 
 use super::regimes::backwards;

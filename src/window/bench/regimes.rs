@@ -164,7 +164,8 @@ fn forks(ui: &mut Ui, stated: &mut Sense) {
     field_row(ui, "Forks for it", LABEL, |ui| {
         let [mut with, mut against] = stated.forks.unwrap_or_default().map(f64::from);
         let mut changed = false;
-        for (label, count) in [("Forks for the sense", &mut with), ("Forks against the sense", &mut against)] {
+        for (label, count) in [("Forks for the sense", &mut with), ("Forks against the sense", &mut against)]
+        {
             if let Some(typed) = number(ui, label, *count, 44.0) {
                 (*count, changed) = (typed.clamp(0.0, 1000.0).round(), true);
             }

@@ -6,8 +6,10 @@ use ventifact::ground::{
 use ventifact::ground::{Point, Polygon, Projection, SandFlow};
 use ventifact::plate::Recipe;
 use ventifact::plate::map::{Picture, toned};
+use ventifact::study::{
+    BuildingFinding, SpectrumPicture, TheoryFinding, Tone, TrendFinding, VerdictFinding, WindFinding,
+};
 use ventifact::study::{DriftFinding, Id, ModeFinding, Node, PatchFinding, RasterFinding, SpectrumFinding};
-use ventifact::study::{BuildingFinding, SpectrumPicture, TheoryFinding, Tone, TrendFinding, VerdictFinding, WindFinding};
 
 /// A trend about `axis` with the given spread of the rose.
 pub fn trend(axis: f64, spread: f64) -> TrendFinding {
