@@ -281,6 +281,57 @@ pub fn verdict(verdict: &VerdictFinding) -> Vec<Fact> {
             .by("alignment.obliquity"),
         );
     }
+    if let Some(e) = &verdict.elongation {
+        let [low, high] = e.ci95_deg;
+        facts.push(
+            fact(
+                "From elongation",
+                format!(
+                    "{:.0}° ({low:.0}° to {high:.0}°) off {:.0}°; near with {}",
+                    e.separation_deg,
+                    e.toward.deg(),
+                    numbers::percent(e.within_margin)
+                ),
+                "Angle between the trend and the direction in which these winds extend crests.",
+            )
+            .by("alignment.fingering"),
+        );
+    }
+    let b = verdict.building;
+    facts.push(fact(
+        "Built",
+        format!("by crossing {}, by extending {}", numbers::percent(b.crossed), numbers::percent(b.extended)),
+        "Posterior summed over the theories in which sand crosses the crests (full cover) and those in which crests extend along themselves (starved ground).",
+    ));
+    if let Some(ln) = verdict.supply_ln {
+        facts.push(fact(
+            "Sand supply, ln",
+            numbers::fixed(ln, 1),
+            "ln of the factor by which bed instability is better than fingering: above 0 speaks for full cover, below for starved ground.",
+        ).by("alignment.together"));
+    }
+    for m in &verdict.migration {
+        let way = m.toward.map_or_else(|| "nowhere".to_owned(), |t| format!("toward {:.0}°", t.deg()));
+        let way = format!("{way} (net over gross {:.2})", m.share);
+        facts.push(
+            fact(
+                "Crests at bed instability move",
+                way,
+                "The side that the slip face of a transverse crest would look to.",
+            )
+            .by("alignment.migration"),
+        );
+    }
+    if let Some(ratio) = verdict.growth_ratio {
+        facts.push(
+            fact(
+                "Finger over bed growth",
+                numbers::fixed(ratio, 2),
+                "Growth of the fingering trend over that of bed instability; high values go with fingers on starved ground, low ones with barchans.",
+            )
+            .by("alignment.growth-discriminator"),
+        );
+    }
     if let Some(strength) = verdict.alignment_strength {
         facts.push(
             fact(
@@ -336,6 +387,7 @@ mod tests {
             backwards: None,
             sentence: String::new(),
             cautions: Vec::new(),
+            birth: Vec::new(),
         };
         let facts = trend(&finding).into_iter().chain(spacing(&finding));
         for fact in facts.filter(|fact| !fact.method.is_empty()) {

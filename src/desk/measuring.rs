@@ -7,9 +7,9 @@ use std::sync::{Arc, Mutex, PoisonError};
 use crate::ground::{Stopped, WindRecord, Work};
 use crate::study::run::{Memo, run_patch, run_winds};
 use crate::study::sources::read_wind;
+use crate::study::together::together;
 use crate::study::window::Detail;
 use crate::study::winds::WindStudy;
-use crate::study::together::together;
 use crate::study::{Failure, Id, OpenRaster, PatchFinding, Sheet, Sources, WindEntry, fingerprint};
 
 use super::{Answer, Measured, Model, Opened, Post, Slot, Standing, WindResult};
@@ -53,7 +53,7 @@ pub fn follow(model: &mut Model) {
     } else if !model.session.history.is_merging() {
         let wanting = model.session.results.wanting(&model.sheet);
         let winds_wanting = !model.session.results.has_winds(&model.sheet);
-        let together_wanting = model.session.results.together(&now).is_none();
+        let together_wanting = model.session.results.together().is_none();
         if !wanting.is_empty() || winds_wanting || together_wanting {
             // The patch in hand comes first.
             let (first, rest): (Vec<_>, Vec<_>) = wanting.into_iter().partition(|id| Some(*id) == in_hand);
@@ -110,7 +110,9 @@ impl Round {
         let (winds, wrong) = run_winds(&self.sheet, &sources, &self.kept.memo, work)?;
         failures.extend(wrong);
         post.answer(Answer::Winds(self.judged_winds(&winds, &failures)));
-        self.patches.iter().try_for_each(|id| self.patch(*id, &sources, &winds, Detail::Exact, work, post))?;
+        self.patches
+            .iter()
+            .try_for_each(|id| self.patch(*id, &sources, &winds, Detail::Exact, work, post))?;
         self.together(&sources, &winds, work, post)
     }
 

@@ -17,6 +17,7 @@ mod plates;
 pub mod readout;
 pub mod regimes;
 mod results;
+pub mod sand;
 mod session;
 mod tiles;
 mod view;
@@ -25,8 +26,8 @@ pub use crate::files::raster::Bands;
 pub use crate::files::wind_table::{DirectionSense, SpeedUnit, WindImport, WindLayout, ZeroDirection};
 pub use answer::{Answer, absorb};
 pub use command::{
-    AskCommand, Chord, Command, DrawCommand, JobCommand, PatchCommand, PlateCommand, RasterCommand, Record,
-    SettingCommand, SheetCommand, ViewCommand, WindCommand, apply, listed,
+    AskCommand, BodyCommand, Chord, Command, DrawCommand, JobCommand, PatchCommand, PlateCommand,
+    RasterCommand, Record, SettingCommand, SheetCommand, ViewCommand, WindCommand, apply, listed,
 };
 pub use engine::SheetError;
 pub use history::{History, MergeKey};

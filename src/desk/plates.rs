@@ -177,7 +177,7 @@ fn findings(model: &Model) -> Findings {
         rasters: rasters.collect(),
         winds: sheet.winds.iter().filter_map(|w| session.results.wind(w.id)?.outcome.clone().ok()).collect(),
         patches: ids().filter(current).filter_map(|id| session.results.patch(id).cloned()).collect(),
-        together: session.results.together(&fingerprint::of_sheet(sheet)).cloned().unwrap_or_default(),
+        together: session.results.together().cloned().unwrap_or_default(),
         failures: session.results.failures(sheet),
     }
 }

@@ -12,6 +12,8 @@ pub struct Results {
     winds: BTreeMap<Id, WindResult>,
     /// What they say together, with the fingerprint of the sheet.
     together: Option<(String, TogetherFinding)>,
+    /// Fingerprint of the sheet as it stands now.
+    sheet_now: String,
     /// Fingerprints of the patches as the sheet stands now.
     now: BTreeMap<Id, String>,
 }
@@ -53,6 +55,7 @@ impl Results {
     /// Takes note of how the sheet stands; call after each change of it.
     pub fn follow(&mut self, sheet: &Sheet) {
         self.now = sheet.patches.iter().map(|p| (p.id, fingerprint::of_patch(sheet, p))).collect();
+        self.sheet_now = fingerprint::of_sheet(sheet);
         self.winds.retain(|id, _| sheet.wind(*id).is_some());
     }
 
@@ -77,9 +80,9 @@ impl Results {
         self.together = Some((sheet, together));
     }
 
-    /// What all patches say together, if that is as the sheet of this fingerprint stands.
-    pub fn together(&self, sheet: &str) -> Option<&TogetherFinding> {
-        self.together.as_ref().filter(|(of, _)| of == sheet).map(|(_, together)| together)
+    /// What all patches say together, if that is as the sheet stands.
+    pub fn together(&self) -> Option<&TogetherFinding> {
+        self.together.as_ref().filter(|(of, _)| *of == self.sheet_now).map(|(_, together)| together)
     }
 
     pub fn wind(&self, id: Id) -> Option<&WindResult> {

@@ -115,6 +115,8 @@ pub enum Dialog {
     Finder,
     Keys,
     Settings,
+    /// The bodies of the sheet.
+    Bodies,
     /// The sheet has changes that would be lost by this command.
     Unsaved(Box<Command>),
 }

@@ -2,16 +2,23 @@
 
 use serde::{Deserialize, Serialize};
 
+use super::GasState;
+use super::gas::tidy;
+
 /// A planet or moon. Lengths in metres, gravity in m s⁻².
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
-#[serde(deny_unknown_fields)]
+#[serde(try_from = "Written", into = "Written")]
 pub struct Body {
     pub name: String,
     pub shape: BodyShape,
     /// Surface gravity, m s⁻²; `None` when unknown (then nothing that needs it is computed).
     pub gravity: Option<f64>,
-    /// Near-surface air; `None` on airless or unknown bodies.
+    /// Near-surface air; `None` on airless or unknown bodies. It follows from `gas` where that is stated.
     pub air: Option<Air>,
+    /// The gas of which the air is made; `None` when only density and viscosity are stated.
+    pub gas: Option<GasState>,
+    /// Where the user has the figures from; not read by any method.
+    pub note: String,
 }
 
 /// Semi-axes of the reference ellipsoid, metres; equal for a sphere.
@@ -39,6 +46,16 @@ impl BodyShape {
 
     pub fn is_sphere(self) -> bool {
         self.equatorial_m == self.polar_m
+    }
+
+    /// `"sphere of radius 1420 km"`.
+    pub fn in_words(self) -> String {
+        let km = |m: f64| m / 1e3;
+        if self.is_sphere() {
+            format!("sphere of radius {} km", km(self.equatorial_m))
+        } else {
+            format!("ellipsoid of {} × {:.3} km", km(self.equatorial_m), km(self.polar_m))
+        }
     }
 
     /// (a − b) / a.
@@ -80,85 +97,89 @@ impl BodyShape {
 }
 
 impl Body {
-    /// Earth: WGS 84 ellipsoid, standard gravity, air of the US Standard Atmosphere 1976 at sea
-    /// level (15 °C).
-    pub fn earth() -> Self {
-        Self {
-            name: "Earth".into(),
-            shape: BodyShape { equatorial_m: 6_378_137.0, polar_m: 6_356_752.314_245_179 },
-            gravity: Some(9.806_65),
-            air: Some(Air { density: 1.225, viscosity: 1.7894e-5 }),
-        }
-    }
-
-    /// Mars: IAU ellipsoid. Air: ρ = PM/RT at 610 Pa, 210 K, 43.3 g mol⁻¹, and Sutherland's law for
-    /// CO₂ (both vary by half with season and height: state your own when it matters).
-    pub fn mars() -> Self {
-        Self {
-            name: "Mars".into(),
-            shape: BodyShape { equatorial_m: 3_396_190.0, polar_m: 3_376_200.0 },
-            gravity: Some(3.71),
-            air: Some(Air { density: 0.0151, viscosity: 1.06e-5 }),
-        }
-    }
-
-    /// Venus: IAU sphere. Air: ρ = PM/RT at 9.2 MPa, 737 K, 43.45 g mol⁻¹, and Sutherland's law for
-    /// CO₂.
-    pub fn venus() -> Self {
-        Self {
-            name: "Venus".into(),
-            shape: BodyShape::sphere(6_051_800.0),
-            gravity: Some(8.87),
-            air: Some(Air { density: 65.2, viscosity: 3.1e-5 }),
-        }
-    }
-
-    /// The Moon: IAU sphere, no air.
-    pub fn moon() -> Self {
-        Self { name: "Moon".into(), shape: BodyShape::sphere(1_737_400.0), gravity: Some(1.62), air: None }
-    }
-
-    /// Mercury: IAU 2015 ellipsoid, no air.
-    pub fn mercury() -> Self {
-        Self {
-            name: "Mercury".into(),
-            shape: BodyShape { equatorial_m: 2_440_530.0, polar_m: 2_438_260.0 },
-            gravity: Some(3.70),
-            air: None,
-        }
-    }
-
-    /// Halvane, the invented small world of the demo: cold nitrogen–argon air near 1 bar and 130 K.
-    /// Every figure is made up; the viscosity is what such a mixture would have.
-    pub fn halvane() -> Self {
-        Self {
-            name: "Halvane".into(),
-            shape: BodyShape::sphere(1_420_000.0),
-            gravity: Some(1.1),
-            air: Some(Air { density: 2.8, viscosity: 9.0e-6 }),
-        }
-    }
-
     /// A body of which only the shape is known, as read from a raster's keys.
     pub fn unnamed(shape: BodyShape) -> Self {
-        Self { name: "unnamed body".into(), shape, gravity: None, air: None }
+        Self { name: "unnamed body".into(), shape, gravity: None, air: None, gas: None, note: String::new() }
     }
 
-    /// The bodies this program knows by name.
-    pub fn known() -> [Self; 6] {
-        [Self::earth(), Self::mars(), Self::venus(), Self::moon(), Self::mercury(), Self::halvane()]
+    /// The same body under this gas, with the air that follows from it.
+    pub fn with_gas(self, gas: GasState) -> Self {
+        Self { air: Some(gas.air()), gas: Some(gas), ..self }
     }
 
-    /// The body of this shape, named when the size is that of a known one: the mean radius within
-    /// 0.3 % (reference radii of one body differ by less, those of different bodies by more). The
-    /// shape stays as given.
-    pub fn of_shape(shape: BodyShape) -> Self {
-        let mean = |s: BodyShape| (2.0 * s.equatorial_m + s.polar_m) / 3.0;
-        let near = |body: &Self| (mean(shape) / mean(body.shape) - 1.0).abs() < 0.003;
-        Self::known()
-            .into_iter()
-            .find(near)
-            .map_or_else(|| Self::unnamed(shape), |body| Self { shape, ..body })
+    /// The same body under air of which density and viscosity are stated, or none.
+    pub fn with_air(self, air: Option<Air>) -> Self {
+        Self { air, gas: None, ..self }
+    }
+
+    /// The gas and the air it makes, in one line.
+    pub fn air_in_words(&self) -> String {
+        let Some(Air { density, viscosity }) = self.air else { return "none that is known".into() };
+        let air = format!("density {} kg/m³, viscosity {viscosity:.3e} Pa s", tidy(density));
+        self.gas.as_ref().map_or(air.clone(), |gas| format!("{}: {air}", gas.in_words()))
+    }
+
+    /// What makes the body impossible; `None` when nothing does.
+    pub fn problem(&self) -> Option<String> {
+        if self.name.trim().is_empty() {
+            return Some("the body has no name; give it one".into());
+        }
+        let BodyShape { equatorial_m: a, polar_m: b } = self.shape;
+        if !(b > 0.0 && a >= b && a.is_finite()) {
+            return Some(format!(
+                "its semi-axes are {a} m at the equator and {b} m at the poles; both must be above zero, the first \
+                 the greater"
+            ));
+        }
+        let air = self.air.filter(|_| self.gas.is_none());
+        let stated = [
+            ("gravity", self.gravity, "m/s²"),
+            ("air density", air.map(|a| a.density), "kg/m³"),
+            ("air viscosity", air.map(|a| a.viscosity), "Pa s"),
+        ];
+        for (what, value, unit) in stated {
+            if let Some(value) = value.filter(|v| !(*v > 0.0 && v.is_finite())) {
+                return Some(format!("its {what} is {value} {unit}; it must be above zero"));
+            }
+        }
+        self.gas.as_ref().and_then(GasState::problem)
+    }
+}
+
+/// A body in a sheet file: the gas, or the air where the gas is not stated.
+#[derive(Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Written {
+    name: String,
+    shape: BodyShape,
+    gravity: Option<f64>,
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    air: Option<Air>,
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    gas: Option<GasState>,
+    #[serde(default, skip_serializing_if = "String::is_empty")]
+    note: String,
+}
+
+impl From<Body> for Written {
+    fn from(body: Body) -> Self {
+        let Body { name, shape, gravity, air, gas, note } = body;
+        Self { name, shape, gravity, air: air.filter(|_| gas.is_none()), gas, note }
+    }
+}
+
+impl TryFrom<Written> for Body {
+    type Error = String;
+
+    fn try_from(written: Written) -> Result<Self, String> {
+        let Written { name, shape, gravity, air, gas, note } = written;
+        if air.is_some() && gas.is_some() {
+            return Err(format!(
+                "the body {name} has both gas and air; air follows from the gas, so leave one of them out"
+            ));
+        }
+        let air = gas.as_ref().map(GasState::air).or(air);
+        Ok(Self { name, shape, gravity, air, gas, note })
     }
 }
 
@@ -169,14 +190,35 @@ mod tests {
     use proptest::prelude::*;
 
     #[test]
-    fn a_shape_finds_its_body_and_keeps_its_axes() {
-        let clarke = BodyShape { equatorial_m: 6_378_206.4, polar_m: 6_356_583.8 };
-        assert_eq!(Body::of_shape(clarke).name, "Earth");
-        assert_eq!(Body::of_shape(clarke).shape, clarke);
-        assert_eq!(Body::of_shape(BodyShape::sphere(3_396_190.0)).name, "Mars");
-        assert_eq!(Body::of_shape(BodyShape::sphere(3_389_500.0)).name, "Mars");
-        assert_eq!(Body::of_shape(BodyShape::sphere(2_439_700.0)).name, "Mercury");
-        assert_eq!(Body::of_shape(BodyShape::sphere(2_575_000.0)).name, "unnamed body");
+    fn a_body_of_an_older_sheet_and_one_with_its_gas_come_back_the_same() {
+        let old = r#"{"name": "Sorrel", "shape": {"equatorial_m": 2e6, "polar_m": 2e6}, "gravity": 1.2,
+            "air": {"density": 5.0, "viscosity": 6e-6}}"#;
+        let stated: Body = serde_json::from_str(old).expect("a body");
+        assert_eq!(stated.air, Some(Air { density: 5.0, viscosity: 6e-6 }));
+        for body in Body::known().into_iter().chain([stated]) {
+            let text = serde_json::to_string(&body).expect("text");
+            assert_eq!(serde_json::from_str::<Body>(&text).expect("a body"), body, "{text}");
+        }
+    }
+
+    #[test]
+    fn gas_and_air_together_are_refused() {
+        let gas = serde_json::to_value(Body::earth()).expect("a value");
+        let both = gas.as_object().expect("an object").iter();
+        let mut both: serde_json::Map<_, _> = both.map(|(k, v)| (k.clone(), v.clone())).collect();
+        both.insert("air".into(), serde_json::json!({ "density": 1.0, "viscosity": 1e-5 }));
+        let error = serde_json::from_value::<Body>(both.into()).expect_err("refused").to_string();
+        assert!(error.contains("both gas and air"), "{error}");
+    }
+
+    #[test]
+    fn what_cannot_be_is_named() {
+        let flat = BodyShape { equatorial_m: 1e6, polar_m: 2e6 };
+        assert!(Body { shape: flat, ..Body::earth() }.problem().expect("a problem").contains("semi-axes"));
+        let weightless = Body { gravity: Some(0.0), ..Body::earth() };
+        assert!(weightless.problem().expect("a problem").contains("gravity is 0"));
+        let void = Body::earth().with_air(Some(Air { density: -1.0, viscosity: 1e-5 }));
+        assert!(void.problem().expect("a problem").contains("air density is -1"));
     }
 
     #[test]

@@ -3,9 +3,11 @@
 
 mod affine;
 mod angle;
+mod bodies;
 mod body;
 mod caution;
 mod flow;
+pub mod gas;
 mod geodesic;
 mod grid;
 mod local_frame;
@@ -19,9 +21,11 @@ mod work;
 
 pub use affine::Affine;
 pub use angle::{Axis, Azimuth};
+pub use bodies::BodyFigure;
 pub use body::{Air, Body, BodyShape};
 pub use caution::Caution;
 pub use flow::{Regime, SandFlow};
+pub use gas::{Gas, GasShare, GasState, Sutherland};
 pub use geodesic::Geodesic;
 pub use grid::Grid;
 pub use local_frame::LocalFrame;

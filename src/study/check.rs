@@ -2,7 +2,30 @@
 
 use std::collections::BTreeSet;
 
+use crate::ground::Body;
+
 use super::{Failure, Id, SETTINGS, Sheet, Sources, WindChoice, judges};
+
+/// Bodies that cannot be, and names that mean two of them.
+fn bodies(sheet: &Sheet, say: &mut impl FnMut(String, String)) {
+    let mut names: BTreeSet<String> = Body::known().into_iter().map(|body| body.name).collect();
+    for body in &sheet.bodies {
+        let what = format!("body {}", body.name);
+        if !names.insert(body.name.clone()) {
+            say(what.clone(), "its name is taken; give it one of its own".into());
+        }
+        if let Some(problem) = body.problem() {
+            say(what, problem);
+        }
+    }
+    let on_rasters = sheet.rasters.iter().map(|r| (format!("raster {}", r.name), &r.placement.body));
+    let of_winds = sheet.winds.iter().map(|w| (format!("wind record {}", w.name), &w.body));
+    for (what, body) in on_rasters.chain(of_winds) {
+        if let Some(problem) = body.as_ref().and_then(Body::problem) {
+            say(what, format!("its body: {problem}"));
+        }
+    }
+}
 
 /// What would fail or mislead when the sheet is run: files that do not open, names that point nowhere,
 /// outlines without area or off their raster, settings out of range.
@@ -28,6 +51,7 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
     if sheet.settings.verdict.priors.weights().iter().sum::<f64>() <= 0.0 {
         say("settings".into(), "verdict.priors are all zero; at least one theory needs a weight".into());
     }
+    bodies(sheet, &mut say);
     let bins = 180.0 / sheet.settings.statistics.rose_bin_deg;
     if (bins - bins.round()).abs() > 1e-9 {
         say("settings".into(), "statistics.rose_bin_deg must divide 180".into());
@@ -62,4 +86,24 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
         }
     }
     found
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn bodies_that_cannot_be_or_share_a_name_are_named() {
+        let mut sheet = Sheet::empty("t");
+        let own = |name: &str, gravity: f64| Body {
+            name: name.into(),
+            gravity: Some(gravity),
+            ..Body::cold_nitrogen_moon()
+        };
+        sheet.bodies = vec![own("Sorrel", 1.0), own("Sorrel", 1.0), own("Mars", 1.0), own("Heavy", f64::NAN)];
+        let said: Vec<_> = problems(&sheet, &Sources::default()).into_iter().map(|f| f.what).collect();
+        assert_eq!(said, ["body Sorrel", "body Mars", "body Heavy"]);
+        sheet.bodies.truncate(1);
+        assert!(problems(&sheet, &Sources::default()).is_empty());
+    }
 }

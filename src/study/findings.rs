@@ -7,8 +7,8 @@
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
 use super::{
-    BackwardsFinding, BuildingFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id,
-    MigrationFinding, SeasonFinding, SensitivityFinding, SetAside,
+    BackwardsFinding, BirthFinding, BuildingFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id,
+    MigrationFinding, SandFinding, SeasonFinding, SensitivityFinding, SetAside,
 };
 
 /// All results of one run.
@@ -73,6 +73,8 @@ pub struct PatchFinding {
     /// One plain sentence with uncertainty and caveat.
     pub sentence: String,
     pub cautions: Vec<Caution>,
+    /// The spacing against that of first dunes, by each wind record whose air is known.
+    pub birth: Vec<BirthFinding>,
 }
 
 /// The trend from the structure tensor.
@@ -198,6 +200,8 @@ pub struct WindFinding {
     /// The drift under every law and threshold.
     pub sensitivity: Vec<SensitivityFinding>,
     pub cautions: Vec<Caution>,
+    /// The sand under this air; `None` without air or gravity.
+    pub sand: Option<SandFinding>,
 }
 
 /// A patch judged by one wind record.

@@ -7,6 +7,7 @@ pub mod demo;
 mod findings;
 pub mod fingerprint;
 pub mod glance;
+mod grains;
 pub mod handover;
 pub mod judges;
 mod migrate;
@@ -36,6 +37,7 @@ pub use findings::{
     PatchFinding, RasterFinding, SpectrumFinding, SpectrumPicture, TheoryFinding, TogetherFinding,
     TrendFinding, VerdictFinding, WindFinding,
 };
+pub use grains::{Birth, BirthFinding, Doubtful, FirstWave, SandFinding, SandThreshold};
 pub use records::{SETTINGS, Setting, SettingKind, SettingValue};
 pub use settings::{
     BackwardsSettings, LettauConstant, Priors, Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw,

@@ -15,7 +15,7 @@ use super::window::{self, Detail, PatchPixels};
 use super::winds::{self, WindStudy};
 use super::{
     ImageKind, ModeFinding, Node, OpenRaster, Patch, PatchFinding, RasterEntry, Sheet, SpectrumFinding,
-    SpectrumPicture, TrendFinding, fingerprint, sentence,
+    SpectrumPicture, TrendFinding, fingerprint, grains, sentence,
 };
 
 /// Measures and judges a patch; in words what stood against it.
@@ -54,10 +54,20 @@ pub fn patch_finding(
         verdicts.push(judged);
     }
     let backwards = backwards::of_patch(sheet, patch, &trend, work)?;
+    let mut birth = Vec::new();
+    let mut birth_cautions = Vec::new();
+    for WindStudy { finding: record, .. } in judges.iter().map(|winds| &***winds) {
+        let Some(sand) = &record.sand else { continue };
+        let born =
+            grains::birth(&spectrum_finding, open.place.unit(), (record.id, record.name.as_str()), sand);
+        birth_cautions.extend(born.as_ref().and_then(|born| grains::caution(born, sand)));
+        birth.extend(born);
+    }
     let mut cautions = open.cautions.clone();
     cautions.extend(axial_cautions);
     cautions.extend(spectrum.cautions.iter().cloned());
     cautions.extend(cautions::of_patch(&trend, &spectrum_finding, &field, &pixels, entry));
+    cautions.extend(birth_cautions);
     cautions.dedup_by(|a, b| a.code == b.code && a.text == b.text);
     let mut finding = PatchFinding {
         id: patch.id,
@@ -74,6 +84,7 @@ pub fn patch_finding(
         backwards,
         sentence: String::new(),
         cautions,
+        birth,
     };
     finding.sentence = sentence::of_patch(&finding);
     Ok(Ok(finding))

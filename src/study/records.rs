@@ -371,6 +371,15 @@ pub const SETTINGS: &[Setting] = &[
         get: |s| SettingValue::Choice(key_of(&LETTAU_CONSTANTS, s.wind.lettau_constant)),
         set: |s, v| choose(&LETTAU_CONSTANTS, v, &mut s.wind.lettau_constant),
     },
+    auto!(
+        "wind.threshold_ustar",
+        "Threshold friction velocity",
+        "m/s",
+        0.001,
+        20.0,
+        wind.threshold_ustar,
+        "Friction velocity at which this sand starts to move, when known. Left open, the threshold law gives it."
+    ),
     number!(
         "wind.roughness_doubt",
         "Roughness, factor of doubt",

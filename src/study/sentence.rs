@@ -98,7 +98,7 @@ fn judged(v: &VerdictFinding) -> String {
 }
 
 /// A length with three significant figures, in kilometres from 10 km on.
-fn length(value: f64, unit: LengthUnit) -> String {
+pub(super) fn length(value: f64, unit: LengthUnit) -> String {
     match unit {
         LengthUnit::Pixel => format!("{} px", figures(value)),
         LengthUnit::Metre if value >= 10_000.0 => format!("{} km", figures(value / 1000.0)),

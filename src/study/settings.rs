@@ -75,6 +75,8 @@ pub struct WindSettings {
     pub roughness_doubt: f64,
     /// Share of the time with moving sand below which a wind is no storm.
     pub storm_quantile: f64,
+    /// Threshold friction velocity known by other means, m s⁻¹; replaces the law's.
+    pub threshold_ustar: Option<f64>,
 }
 
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
@@ -213,6 +215,7 @@ impl Default for WindSettings {
             lettau_constant: LettauConstant::High,
             roughness_doubt: 3.0,
             storm_quantile: 0.9,
+            threshold_ustar: None,
         }
     }
 }

@@ -27,6 +27,9 @@ pub struct Sheet {
     pub winds: Vec<WindEntry>,
     #[serde(default)]
     pub settings: Settings,
+    /// Bodies of the user's own, by name; rasters and records hold copies.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub bodies: Vec<Body>,
 }
 
 /// Names a raster, patch or wind record within one sheet; never reused.
@@ -198,6 +201,7 @@ impl Sheet {
             patches: Vec::new(),
             winds: Vec::new(),
             settings: Settings::default(),
+            bodies: Vec::new(),
         }
     }
 
@@ -210,6 +214,11 @@ impl Sheet {
             .chain(self.patches.iter().map(|p| p.id))
             .chain(self.winds.iter().map(|w| w.id));
         Id(used.max().map_or(1, |Id(n)| n + 1))
+    }
+
+    /// The bodies one may choose from: those known by name, then the sheet's own.
+    pub fn known_bodies(&self) -> Vec<Body> {
+        Body::known().into_iter().chain(self.bodies.iter().cloned()).collect()
     }
 
     pub fn raster(&self, id: Id) -> Option<&RasterEntry> {

@@ -7,7 +7,9 @@ use crate::science::alignment::{
 };
 
 use super::winds::WindStudy;
-use super::{ModeFinding, Patch, Sheet, TheoryFinding, TrendFinding, VerdictFinding, VerdictSettings, what_if};
+use super::{
+    ModeFinding, Patch, Sheet, TheoryFinding, TrendFinding, VerdictFinding, VerdictSettings, what_if,
+};
 
 /// One verdict, or the words of its refusal.
 ///

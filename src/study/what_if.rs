@@ -143,7 +143,9 @@ impl Standing {
     fn turned(&self, then: &Self, margin: f64) -> Option<String> {
         match (self, then) {
             (Self::Refused, Self::Refused) => None,
-            (_, Self::Refused) => Some("no verdict is left: the winds prefer no trend, or move no sand".into()),
+            (_, Self::Refused) => {
+                Some("no verdict is left: the winds prefer no trend, or move no sand".into())
+            }
             (Self::Refused, Self::Judged { leader, .. }) => Some(format!("“{leader}” would lead")),
             (
                 Self::Judged { class, leader, axis, extends },
@@ -178,9 +180,8 @@ pub fn flips(
     work: &Work,
 ) -> Result<Vec<Flip>, Stopped> {
     let point = winds.foresight.without_draws();
-    let standing = |evidence: &TrendEvidence, foresight: &Foresight| {
-        Standing::of(evidence, foresight, stated, settings)
-    };
+    let standing =
+        |evidence: &TrendEvidence, foresight: &Foresight| Standing::of(evidence, foresight, stated, settings);
     let now = standing(evidence, &point);
     let mut flips = Vec::new();
     for what in &winds.what_if {
@@ -204,7 +205,8 @@ pub fn flips(
         work.advance(0)?;
         let turned = (1..=45).map(|step| sense * f64::from(step)).find_map(|turn| {
             let moved = TrendEvidence { axis: evidence.axis.rotated(turn), ..*evidence };
-            now.turned(&standing(&moved, &point), settings.margin_deg).map(|change| (turn, moved.axis, change))
+            now.turned(&standing(&moved, &point), settings.margin_deg)
+                .map(|change| (turn, moved.axis, change))
         });
         flips.extend(turned.map(|(turn, axis, change)| Flip {
             parameter: "trend",

@@ -7,7 +7,7 @@ use crate::science::wind::threshold::Threshold;
 use crate::science::wind::{self, Doubt, Site, Transport, WindError};
 
 use super::what_if::{self, WhatIf};
-use super::{LettauConstant, Sheet, ThresholdLaw, TransportLaw, WindEntry, WindFinding};
+use super::{LettauConstant, Sheet, ThresholdLaw, TransportLaw, WindEntry, WindFinding, grains};
 
 /// A record's finding and what the theories need of it.
 #[derive(Clone, Debug, PartialEq)]
@@ -30,7 +30,7 @@ pub fn study(
     work: &Work,
 ) -> Result<WindStudy, WindError> {
     let body = entry.body.clone().unwrap_or_else(Body::earth);
-    let is_earth = body.name == Body::earth().name;
+    let is_earth = body.is_earth();
     let s = &sheet.settings.wind;
     let site = Site {
         height_m: entry.height_m,
@@ -48,6 +48,7 @@ pub fn study(
             ThresholdLaw::IversenWhite => Threshold::IversenWhite,
             ThresholdLaw::ShaoLu => Threshold::ShaoLu,
         },
+        threshold_ustar: s.threshold_ustar,
         transport: match s.transport_law {
             TransportLaw::DriftPotential => Transport::DriftPotential,
             TransportLaw::Bagnold => Transport::Physical(Law::Bagnold),
@@ -96,6 +97,7 @@ pub fn study(
         season: a.season,
         sensitivity: a.sensitivity,
         cautions: a.cautions,
+        sand: grains::sand(entry, s),
     };
     Ok(WindStudy { finding, foresight, what_if })
 }

@@ -9,7 +9,7 @@ use super::controls::{Commands, look};
 use super::finder::Finder;
 use super::software::Face;
 use super::table::{self, TableState};
-use super::{bench, dialogs, foot, head, keys, ledger, notices, start_page, theme, winds_import};
+use super::{bench, bodies, dialogs, foot, head, keys, ledger, notices, start_page, theme, winds_import};
 use crate::desk::{Command, Dialog, Model, SheetCommand, absorb, apply};
 
 /// The window: the model and the little that only drawing needs.
@@ -105,6 +105,7 @@ impl App {
             Some(Dialog::Finder) => self.finder.show(ctx, &self.model, out),
             Some(Dialog::Keys) => keys::show(ctx, &self.model, out),
             Some(Dialog::Settings) => dialogs::settings(ctx, &self.model, out),
+            Some(Dialog::Bodies) => bodies::show(ctx, &self.model, out),
             Some(Dialog::Unsaved(_)) => dialogs::unsaved(ctx, &self.model, out),
             None => {}
         }

@@ -3,6 +3,7 @@
 mod app;
 mod ask;
 mod bench;
+mod bodies;
 mod controls;
 mod dialogs;
 mod figure;

@@ -9,8 +9,7 @@ use ventifact::ground::{Axis, Azimuth, Body, Grid, Point, Polygon, Work};
 use ventifact::science::axial::mean::{Resultant, doubled};
 use ventifact::study::run::{Memo, run};
 use ventifact::study::{
-    Findings, Id, ImageKind, Patch, PatchFinding, Placement, RasterEntry, Sheet, Sources, Tone,
-    WindEntry,
+    Findings, Id, ImageKind, Patch, PatchFinding, Placement, RasterEntry, Sheet, Sources, Tone, WindEntry,
 };
 
 use crate::field_data;

@@ -99,6 +99,7 @@ fn settings(transport: Transport) -> WindSettings {
         grain_density: 2650.0,
         cohesion: COHESION,
         threshold: Threshold::ShaoLu,
+        threshold_ustar: None,
         transport,
         greatest_speed: 75.0,
         block_days: 30.0,

@@ -7,7 +7,9 @@ use egui::accesskit::Role;
 use egui::{Key, Modifiers, Pos2, vec2};
 use egui_kittest::Harness;
 use egui_kittest::kittest::{NodeT as _, Queryable as _};
-use ventifact::desk::{Command, Model, Page, PatchCommand, SheetCommand, Standing, ViewCommand, listed};
+use ventifact::desk::{
+    Command, Dialog, Model, Page, PatchCommand, SheetCommand, Standing, ViewCommand, WindCommand, listed,
+};
 use ventifact::ground::Work;
 use ventifact::study::run::{Memo, run};
 use ventifact::study::sheet_file::SheetFile;
@@ -246,4 +248,46 @@ fn a_click_on_the_regime_map_picks_a_regime_and_the_ground_can_be_described() {
     assert_eq!(harness.state().app().model().sheet.patches[0].cover, cover);
     key(&mut harness, Modifiers::COMMAND, Key::Z);
     assert_ne!(harness.state().app().model().sheet.patches[0].cover, cover, "undo takes it back");
+}
+
+/// Copies Halvane, puts the mast on the copy, and makes it heavier by typing: sand then starts later.
+#[test]
+fn an_own_body_changed_in_its_editor_moves_the_threshold_of_the_record_on_it() {
+    let (_folder, sheet) = demo_on_disk();
+    let mut harness = open(blank(), [1440.0, 900.0]);
+    give(&mut harness, Command::Sheet(SheetCommand::Open(sheet)));
+    let threshold = |model: &Model| {
+        let record = model.shown_wind()?.id;
+        let finding = model.session.results.wind(record)?.outcome.as_ref().ok()?;
+        Some((finding.threshold_ustar, finding.sand.as_ref()?.body.clone()))
+    };
+    wait(&mut harness, "the winds", |model| threshold(model).is_some());
+    let (before, _) = threshold(harness.state().app().model()).expect("a threshold");
+    give(&mut harness, Command::View(ViewCommand::Page(Page::Winds)));
+    assert!(
+        harness.query_by_label("Iversen–White").is_some(),
+        "the table of thresholds is on the winds page"
+    );
+
+    give(&mut harness, Command::View(ViewCommand::Open(Dialog::Bodies)));
+    click(&mut harness, Role::ComboBox, "Add a body like");
+    click(&mut harness, Role::Button, "Halvane");
+    let own = harness.state().app().model().sheet.bodies[0].clone();
+    assert_eq!(own.name, "Halvane, own");
+    let id = harness.state().app().model().shown_wind().expect("a record").id;
+    give(&mut harness, Command::Wind(WindCommand::Body { id, body: Some(own) }));
+    harness.get_by_role_and_label(Role::TextInput, "Gravity, metres per second squared").focus();
+    harness.run_steps(2);
+    key(&mut harness, Modifiers::COMMAND, Key::A);
+    harness.get_by_role_and_label(Role::TextInput, "Gravity, metres per second squared").type_text("4.4");
+    harness.run_steps(2);
+    key(&mut harness, Modifiers::NONE, Key::Enter);
+    let heavy = harness.state().app().model().sheet.winds[0].body.clone().expect("a body");
+    assert_eq!((heavy.name.as_str(), heavy.gravity), ("Halvane, own", Some(4.4)));
+    wait(&mut harness, "the later threshold", move |model| {
+        threshold(model).is_some_and(|(now, body)| body == "Halvane, own" && now > 1.2 * before)
+    });
+    give(&mut harness, Command::Sheet(SheetCommand::Undo));
+    let back = harness.state().app().model().sheet.winds[0].body.clone().expect("a body");
+    assert_eq!(back.gravity, Some(1.1), "undo reaches the copy of the record too");
 }

@@ -6,7 +6,7 @@ use std::time::{Duration, Instant};
 use ventifact::desk::{Laid, Model, Opened, TILE, TileKey, TileReader, TileShelf};
 use ventifact::ground::{Affine, Body, BodyShape, Frame, Grid, Place, Projection, Seed, Work};
 use ventifact::science::scene::reach;
-use ventifact::study::{Id, ImageKind, Patch, RasterEntry, WindChoice};
+use ventifact::study::{Id, ImageKind, Patch, RasterEntry};
 
 /// Serves tiles of a grid, coarser ones by averaging the valid pixels.
 pub struct InMemory(pub Grid<f32>);

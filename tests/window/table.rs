@@ -8,7 +8,7 @@ use egui_kittest::Harness;
 use egui_kittest::kittest::Queryable as _;
 use ventifact::desk::{self, Command, DrawCommand, Model, PatchCommand, SheetCommand, Tool};
 use ventifact::ground::{Grid, Place, Point, Polygon};
-use ventifact::study::{Id, Patch, WindChoice};
+use ventifact::study::{Id, Patch};
 use ventifact::window::table::{self, TableState};
 
 use super::{harness, scene};

@@ -1,6 +1,7 @@
 //! Commands: each described once, and `apply`, the only door to the model.
 
 mod ask;
+mod body;
 mod draw;
 mod job;
 mod patch;
@@ -12,6 +13,7 @@ mod view;
 mod wind;
 
 pub use ask::AskCommand;
+pub use body::BodyCommand;
 pub use draw::DrawCommand;
 pub use job::JobCommand;
 pub use patch::PatchCommand;
@@ -40,6 +42,7 @@ pub enum Command {
     Setting(SettingCommand),
     Job(JobCommand),
     View(ViewCommand),
+    Body(BodyCommand),
 }
 
 /// A command described once; buttons, keys, the finder, help and tests read this.
@@ -116,6 +119,7 @@ impl Command {
             Self::Setting(c) => c.record(),
             Self::Job(c) => c.record(),
             Self::View(c) => c.record(),
+            Self::Body(c) => c.record(),
         }
     }
 
@@ -143,6 +147,7 @@ impl Command {
             Self::Setting(c) => c.refusal(model),
             Self::Job(c) => c.refusal(model),
             Self::View(c) => c.refusal(model),
+            Self::Body(c) => c.refusal(model),
         }
     }
 
@@ -153,9 +158,13 @@ impl Command {
             Self::Patch(c) => c.merge_key(),
             Self::Wind(c) => c.merge_key(),
             Self::Setting(c) => c.merge_key(),
-            Self::Sheet(_) | Self::Ask(_) | Self::Draw(_) | Self::Job(_) | Self::Plate(_) | Self::View(_) => {
-                None
-            }
+            Self::Sheet(_)
+            | Self::Ask(_)
+            | Self::Draw(_)
+            | Self::Job(_)
+            | Self::Plate(_)
+            | Self::View(_)
+            | Self::Body(_) => None,
         }
     }
 
@@ -204,6 +213,7 @@ pub fn apply(model: &mut Model, command: Command) {
         Command::Setting(c) => c.apply(model),
         Command::Job(c) => c.apply(model),
         Command::View(c) => c.apply(model),
+        Command::Body(c) => c.apply(model),
     }
     if record.editing {
         model.session.history.forget_if_unchanged(&model.sheet);

@@ -4,7 +4,7 @@ use std::path::{Path, PathBuf};
 
 use crate::desk::{Ask, MergeKey, Model, Purpose};
 use crate::files::layers::read_patches;
-use crate::ground::{Point, Polygon};
+use crate::ground::{Axis, Point, Polygon};
 use crate::science::alignment::backwards::{Cover, Sense};
 use crate::study::{Id, Patch, WindChoice};
 
@@ -44,6 +44,11 @@ pub enum PatchCommand {
         id: Id,
         sense: Option<Sense>,
     },
+    /// An axis to weigh like a theory, or none.
+    StateAxis {
+        id: Id,
+        axis: Option<Axis>,
+    },
     AskBring,
     /// Adds the outlines of a GeoPackage or GeoJSON file to the raster on the table.
     Bring(PathBuf),
@@ -80,6 +85,12 @@ impl PatchCommand {
                 "patch.sense",
                 "Sense of the sand",
                 "Which way forks, tapering or obstacles point.",
+            )
+            .editing(),
+            Self::StateAxis { .. } => Record::new(
+                "patch.state-axis",
+                "State an axis",
+                "An axis known from elsewhere, weighed like a theory.",
             )
             .editing(),
             Self::AskBring => Record::new(
@@ -135,6 +146,7 @@ impl PatchCommand {
             | Self::JudgeBy { id, .. }
             | Self::Cover { id, .. }
             | Self::Sense { id, .. }
+            | Self::StateAxis { id, .. }
                 if model.sheet.patch(*id).is_none() =>
             {
                 Some("the patch is gone")
@@ -159,6 +171,7 @@ impl PatchCommand {
             Self::JudgeBy { id, winds } => change(model, id, |patch| patch.winds = winds),
             Self::Cover { id, cover } => change(model, id, |patch| patch.cover = cover),
             Self::Sense { id, sense } => change(model, id, |patch| patch.sense = sense),
+            Self::StateAxis { id, axis } => change(model, id, |patch| patch.stated_axis = axis),
             Self::AskBring => model.session.ask = Some(Ask::new(Purpose::BringPatches, "")),
             Self::Bring(path) => bring(model, &path),
             Self::Select(id) => select(model, id),

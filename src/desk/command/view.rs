@@ -48,6 +48,7 @@ impl ViewCommand {
         Self::Open(Dialog::Finder),
         Self::Open(Dialog::Keys),
         Self::Open(Dialog::Settings),
+        Self::Open(Dialog::Bodies),
         Self::Page(Page::Ground),
         Self::Page(Page::Trend),
         Self::Page(Page::Spacing),
@@ -202,6 +203,9 @@ fn dialog_record(dialog: &Dialog) -> Record {
         Dialog::Keys => Record::new("view.keys", "Keys", "Lists every key.").key("F1"),
         Dialog::Settings => {
             Record::new("view.settings", "Settings…", "What the methods may be told.").ctrl("Comma")
+        }
+        Dialog::Bodies => {
+            Record::new("view.bodies", "Own bodies…", "Gravity and air of worlds not known by name.")
         }
         Dialog::Unsaved(_) => Record::new("view.unsaved", "Unsaved changes", "Asks before changes are lost."),
     }

@@ -68,7 +68,8 @@ pub(super) fn of_theories(
     let mut cautions = Vec::new();
     for (theory, cloud) in theories.iter().zip(clouds).filter(|(t, _)| t.posterior >= 0.01) {
         let Some(axis) = theory.axis() else { continue };
-        let strays = |p: &Option<Prediction>| p.as_ref().is_none_or(|p| p.main().axis.separation(axis) > 30.0);
+        let strays =
+            |p: &Option<Prediction>| p.as_ref().is_none_or(|p| p.main().axis.separation(axis) > 30.0);
         let far = cloud.iter().filter(|p| strays(p)).count();
         if far * 10 > cloud.len() {
             cautions.push(Caution::new(

@@ -227,9 +227,8 @@ fn weigh(
                 posterior: 0.0,
                 ln_bayes_factor: ln_bayes_factor(&[weighing], cloud),
                 cloud_deg: shown(cloud, foresight.drift.map(|d| d.0)),
-                equivalence: whole.map(|p| {
-                    equivalence(evidence.axis.turn_from(p.main().axis), se, settings.margin_deg)
-                }),
+                equivalence: whole
+                    .map(|p| equivalence(evidence.axis.turn_from(p.main().axis), se, settings.margin_deg)),
             }
         })
         .collect();
@@ -375,10 +374,9 @@ mod tests {
 
     #[test]
     fn a_trend_along_a_single_wind_is_longitudinal() {
-        let draws: Vec<Regime> =
-            (0..41).map(|k| regime(&[(20.0 + 0.5 * f64::from(k), 1.0)])).collect();
-        let verdict = judge(&evidence(32.0), &foreseen(&[(30.0, 1.0)], &draws), None, &settings())
-            .expect("a verdict");
+        let draws: Vec<Regime> = (0..41).map(|k| regime(&[(20.0 + 0.5 * f64::from(k), 1.0)])).collect();
+        let verdict =
+            judge(&evidence(32.0), &foreseen(&[(30.0, 1.0)], &draws), None, &settings()).expect("a verdict");
         crate::assert_close!(verdict.obliquity_deg.expect("one"), 2.0, 1e-9, "obliquity");
         assert!(verdict.probabilities.expect("some")[0] > 0.95);
         assert!(verdict.building.extended > 0.85, "{:?}", verdict.building);

@@ -146,11 +146,8 @@ fn extending(flows: &[SandFlow], flux_up: f64) -> Option<Prediction> {
     let sum: f64 = fingers.iter().map(|f| f.along).sum();
     let total: f64 = flows.iter().map(|f| f.weight).sum();
     let strength = fingers.first()?.along / total;
-    let way = |f: &fingering::Finger| Way {
-        axis: f.toward.axis(),
-        toward: Some(f.toward),
-        share: f.along / sum,
-    };
+    let way =
+        |f: &fingering::Finger| Way { axis: f.toward.axis(), toward: Some(f.toward), share: f.along / sum };
     Some(Prediction { ways: fingers.iter().map(way).collect(), strength: strength.min(1.0) })
 }
 

@@ -80,7 +80,8 @@ mod tests {
     fn foreseen() -> Foresight {
         let flow = |deg, weight| SandFlow { toward: Azimuth::from_deg(deg), weight };
         let regime = Regime { all: vec![flow(0.0, 1.6), flow(110.0, 1.0)], ..Regime::default() };
-        foresee(&regime, &[], FluxUp { ratio: 1.6, doubt: 1.0 }, Seed(1), &Work::quiet()).expect("not stopped")
+        foresee(&regime, &[], FluxUp { ratio: 1.6, doubt: 1.0 }, Seed(1), &Work::quiet())
+            .expect("not stopped")
     }
 
     fn settings() -> VerdictSettings {

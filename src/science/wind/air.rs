@@ -1,16 +1,17 @@
-//! Gas density and viscosity from pressure, temperature and composition.
+//! Gas density and viscosity from pressure, temperature and composition: the record of what
+//! `ground::gas` computes, and what follows for an atmosphere.
 
+use crate::ground::gas::MOLAR_GAS_CONSTANT;
 use crate::ground::{Air, Method, Read, Source, Symbol};
-
-/// Molar gas constant, J mol⁻¹ K⁻¹ (exact since 2019).
-pub const MOLAR_GAS_CONSTANT: f64 = 8.314_462_618;
 
 /// Density and viscosity of a gas.
 pub const METHOD: Method = Method {
     id: "wind.air",
-    name: "Ideal-gas density and Sutherland viscosity",
+    name: "Gas density, Sutherland viscosity, Wilke's mixtures",
     question: "How dense and how viscous is the air that moves the sand?",
-    formula: "ρ = P M / (Z R T);  Z = 1 + B P / (R T);  μ = μ₀ (T₀ + S)/(T + S) (T/T₀)^{3/2}",
+    formula: "ρ = P M / (Z R T);  Z = 1 + B P / (R T);  μ = μ₀ (T₀ + S)/(T + S) (T/T₀)^{3/2};  air μ = 1.458·10⁻⁶ T^{3/2}/(T + 110.4);  \
+              mixtures M = Σ xᵢ Mᵢ,  μ = Σᵢ xᵢ μᵢ / Σⱼ xⱼ Φᵢⱼ,  Φᵢⱼ = [1 + (μᵢ/μⱼ)^{1/2} (Mⱼ/Mᵢ)^{1/4}]² / √(8 (1 + Mᵢ/Mⱼ));  \
+              λ = (μ/P) √(π R T/(2 M))",
     symbols: &[
         Symbol { symbol: "ρ", meaning: "gas density", unit: "kg m⁻³" },
         Symbol { symbol: "P", meaning: "pressure", unit: "Pa" },
@@ -21,11 +22,14 @@ pub const METHOD: Method = Method {
         Symbol { symbol: "B", meaning: "second virial coefficient", unit: "m³ mol⁻¹" },
         Symbol { symbol: "μ", meaning: "dynamic viscosity", unit: "Pa s" },
         Symbol { symbol: "μ₀, T₀, S", meaning: "Sutherland's constants of the gas", unit: "Pa s, K, K" },
+        Symbol { symbol: "xᵢ", meaning: "share of the molecules of gas i", unit: "1" },
+        Symbol { symbol: "λ", meaning: "mean free path", unit: "m" },
     ],
-    assumptions: &["A single gas, or a mixture with the constants of its main gas"],
+    assumptions: &["Viscosity does not depend on pressure"],
     limits: &[
         "Sutherland's law is extrapolated below about 100 K",
-        "The virial form holds while |Z − 1| is small",
+        "The virial form holds while |Z − 1| is small; B is stated, not computed",
+        "Wilke's rule is good to some per cent, worse with hydrogen",
     ],
     sources: &[
         Source {
@@ -38,6 +42,33 @@ pub const METHOD: Method = Method {
             read: Read::Memory,
         },
         Source {
+            key: "wilke1950",
+            authors: "Wilke, C. R.",
+            year: 1950,
+            title: "A viscosity equation for gas mixtures",
+            published: "Journal of Chemical Physics 18, 517–519",
+            locator: "",
+            read: Read::Memory,
+        },
+        Source {
+            key: "white2006",
+            authors: "White, F. M.",
+            year: 2006,
+            title: "Viscous Fluid Flow (Sutherland's constants of all gases but methane)",
+            published: "McGraw-Hill, 3rd edition",
+            locator: "table 1-2",
+            read: Read::Memory,
+        },
+        Source {
+            key: "huber2011",
+            authors: "Huber, M. L.; Harvey, A. H.",
+            year: 2011,
+            title: "Viscosity of gases (methane; its constants are fitted here to 200 and 400 K)",
+            published: "CRC Handbook of Chemistry and Physics, section 6",
+            locator: "",
+            read: Read::Abstract,
+        },
+        Source {
             key: "standardatmosphere1976",
             authors: "NOAA; NASA; USAF",
             year: 1976,
@@ -48,40 +79,6 @@ pub const METHOD: Method = Method {
         },
     ],
 };
-
-/// Sutherland's three constants of a gas.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct Sutherland {
-    /// Viscosity at the reference temperature, Pa s.
-    pub viscosity: f64,
-    /// Reference temperature, K.
-    pub temperature: f64,
-    /// Sutherland's constant, K.
-    pub constant: f64,
-}
-
-impl Sutherland {
-    pub const AIR: Self = Self { viscosity: 1.716e-5, temperature: 273.15, constant: 110.4 };
-    pub const NITROGEN: Self = Self { viscosity: 1.663e-5, temperature: 273.0, constant: 107.0 };
-    pub const CARBON_DIOXIDE: Self = Self { viscosity: 1.370e-5, temperature: 273.0, constant: 222.0 };
-
-    /// Dynamic viscosity at `temperature` K, Pa s.
-    pub fn viscosity_at(self, temperature: f64) -> f64 {
-        self.viscosity * (self.temperature + self.constant) / (temperature + self.constant)
-            * (temperature / self.temperature).powf(1.5)
-    }
-}
-
-/// Density of an ideal gas, kg m⁻³: `pressure` Pa, `molar_mass` kg mol⁻¹, `temperature` K.
-pub fn ideal_density(pressure: f64, molar_mass: f64, temperature: f64) -> f64 {
-    pressure * molar_mass / (MOLAR_GAS_CONSTANT * temperature)
-}
-
-/// Compressibility Z from the second virial coefficient `virial`, m³ mol⁻¹. Divide the ideal
-/// density by it.
-pub fn compressibility(virial: f64, pressure: f64, temperature: f64) -> f64 {
-    1.0 + virial * pressure / (MOLAR_GAS_CONSTANT * temperature)
-}
 
 /// Height over which the pressure of an isothermal atmosphere falls by e, m.
 pub fn scale_height(molar_mass: f64, temperature: f64, gravity: f64) -> f64 {

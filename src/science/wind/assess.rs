@@ -327,6 +327,7 @@ mod tests {
             grain_density: 2650.0,
             cohesion: threshold::COHESION,
             threshold: Threshold::ShaoLu,
+            threshold_ustar: None,
             transport: Transport::Physical(Law::Kok),
             greatest_speed: 75.0,
             block_days: 30.0,

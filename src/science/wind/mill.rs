@@ -47,6 +47,7 @@ impl Mill {
         let assumption = Assumption {
             transport: settings.transport,
             threshold: settings.threshold,
+            threshold_ustar: settings.threshold_ustar,
             threshold_factor: 1.0,
             grain_m: settings.grain_m,
             grain_density: settings.grain_density,
@@ -67,8 +68,9 @@ impl Mill {
         let friction = friction_ratio(height_m, assumption.roughness_m);
         let to_ten = speed_at(friction, drift_potential::HEIGHT, assumption.roughness_m);
         let knots = to_ten / drift_potential::KNOT;
-        let threshold = match (assumption.transport, &bed) {
-            (Transport::Physical(_), Some(bed)) => assumption.threshold.friction_velocity(bed),
+        let threshold = match (assumption.transport, &bed, assumption.threshold_ustar) {
+            (Transport::Physical(_), _, Some(stated)) => stated,
+            (Transport::Physical(_), Some(bed), None) => assumption.threshold.friction_velocity(bed),
             _ => drift_potential::THRESHOLD_KNOTS / knots * friction,
         };
         let threshold = threshold * assumption.threshold_factor;
@@ -132,23 +134,30 @@ impl Mill {
         match self.assumption.transport {
             Transport::DriftPotential => "drift potential over 12 knots".to_owned(),
             Transport::Physical(law) => {
-                format!("{} over the threshold of {}", law.label(), self.assumption.threshold.label())
+                let whose = match self.assumption.threshold_ustar {
+                    Some(stated) => format!("a stated threshold of {stated} m/s"),
+                    None => format!("the threshold of {}", self.assumption.threshold.label()),
+                };
+                format!("{} over {whose}", law.label())
             }
         }
     }
 
-    /// All laws × thresholds, each with the threshold in words; the stated law alone when nothing
-    /// physical is known.
+    /// All laws × thresholds, the user's own included, each with the threshold in words; the stated law
+    /// alone when nothing physical is known.
     pub fn variants(&self) -> Vec<(Self, String)> {
         if self.ground.is_none() {
             return vec![(*self, "12 knots".to_owned())];
         }
         let mut variants = Vec::new();
         for law in Law::ALL {
+            let own = Assumption { transport: Transport::Physical(law), ..self.assumption };
+            if own.threshold_ustar.is_some() {
+                variants.push((self.under(own), "stated".to_owned()));
+            }
             for threshold in Threshold::ALL {
                 for (threshold_factor, kind) in [(1.0, "fluid"), (IMPACT_SHARE, "impact")] {
-                    let transport = Transport::Physical(law);
-                    let changed = Assumption { transport, threshold, threshold_factor, ..self.assumption };
+                    let changed = Assumption { threshold, threshold_factor, threshold_ustar: None, ..own };
                     variants.push((self.under(changed), format!("{}, {kind}", threshold.label())));
                 }
             }
@@ -157,7 +166,7 @@ impl Mill {
     }
 
     /// The mill of a draw: laws and thresholds in turn, so that each counts the same (White's law, which has
-    /// Kawamura's form, is not drawn twice); grains, cohesion and roughness by chance within their doubt.
+    /// Kawamura's form, is not drawn twice; a stated threshold stands, fluid or impact); grains, cohesion and roughness by chance within their doubt.
     pub fn drawn(&self, doubt: &Doubt, seed: Seed, index: u64) -> Self {
         let mut stream = seed.stream("wind.mill", index);
         let mut within = |value: f64, factor: f64| value * factor.powf(2.0 * stream.random::<f64>() - 1.0);
@@ -210,6 +219,7 @@ fn check(site: &Site, settings: &WindSettings) -> Result<(), WindError> {
         positive.extend([("air density", air.density), ("air viscosity", air.viscosity)]);
     }
     positive.extend(site.gravity.map(|g| ("gravity", g)));
+    positive.extend(settings.threshold_ustar.map(|u| ("threshold friction velocity", u)));
     if let Some((what, value)) = positive.into_iter().find(|(_, v)| !(*v > 0.0 && v.is_finite())) {
         return Err(WindError::NotPositive { what, value });
     }

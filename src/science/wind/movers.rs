@@ -120,10 +120,11 @@ impl Movers {
     }
 
     fn flows(&self, which: impl Fn(&Row) -> bool, flux: impl Fn(f64) -> f64) -> Vec<SandFlow> {
-        let moved = self.rows.iter().filter(|row| which(row)).map(|row| SandFlow {
-            toward: row.toward,
-            weight: row.weight * flux(row.speed),
-        });
+        let moved = self
+            .rows
+            .iter()
+            .filter(|row| which(row))
+            .map(|row| SandFlow { toward: row.toward, weight: row.weight * flux(row.speed) });
         moved.filter(|flow| flow.weight > 0.0).collect()
     }
 
@@ -212,8 +213,8 @@ fn strongest_season(rows: &[Row], flux: impl Fn(f64) -> f64) -> Option<u8> {
 #[cfg(test)]
 pub(super) mod tests {
     use super::*;
-    use crate::science::wind::bootstrap::Plan;
     use crate::ground::Seed;
+    use crate::science::wind::bootstrap::Plan;
 
     pub fn sample(at: u32, toward: f64, speed: f64) -> WindSample {
         WindSample {
@@ -252,7 +253,9 @@ pub(super) mod tests {
         let movers = packed(&kept, 3);
         let starts: Vec<usize> = (0..movers.count()).step_by(CELLS_PER_BLOCK).collect();
         let (whole, drawn) = (movers.regime(cube), movers.draw(&starts, cube));
-        for (a, b) in [(&whole.all, &drawn.all), (&whole.storms, &drawn.storms), (&whole.season, &drawn.season)] {
+        for (a, b) in
+            [(&whole.all, &drawn.all), (&whole.storms, &drawn.storms), (&whole.season, &drawn.season)]
+        {
             let (a, b) = (Drift::of(a, ""), Drift::of(b, ""));
             crate::assert_close!(a.total, b.total, 1e-9 * a.total, "total");
             // Within a sector of 5° the scalar sum exceeds the vector sum by less than a thousandth.

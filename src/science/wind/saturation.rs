@@ -46,6 +46,7 @@ pub const WAVELENGTH: Method = Method {
     ],
     assumptions: &["Flow in one direction far above threshold"],
     limits: &[
+        "Published A and B differ: 3.6 and 1.9, 3.5 and 2.0, 4.7 and 4.0; waves shorter than 2π Ls A/B do not grow",
         "Spacing of grown dunes is much larger: the length is a lower bound, not a prediction for dune fields",
         "Whether Ls follows the drag length is disputed",
     ],
@@ -79,6 +80,9 @@ pub const WAVELENGTH: Method = Method {
         },
     ],
 };
+
+/// Published pairs of A and B: the part of the stress in phase with the height of a wave, and with its slope.
+pub const STRESS_COEFFICIENTS: [(f64, f64); 3] = [(3.6, 1.9), (3.5, 2.0), (4.7, 4.0)];
 
 /// Settling velocity of a natural grain, m s⁻¹. `relative_density` is (ρp − ρ)/ρ.
 pub fn settling_velocity(grain: f64, relative_density: f64, gravity: f64, kinematic_viscosity: f64) -> f64 {

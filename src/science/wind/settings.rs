@@ -30,6 +30,8 @@ pub struct WindSettings {
     /// Cohesion γ of the grains, kg s⁻².
     pub cohesion: f64,
     pub threshold: Threshold,
+    /// Threshold friction velocity known by other means, m s⁻¹; replaces the model's.
+    pub threshold_ustar: Option<f64>,
     pub transport: Transport,
     /// Speeds above this are set aside as impossible, m s⁻¹.
     pub greatest_speed: f64,
@@ -56,6 +58,8 @@ pub struct Doubt {
 pub struct Assumption {
     pub transport: Transport,
     pub threshold: Threshold,
+    /// Friction velocity that replaces the model's, m s⁻¹.
+    pub threshold_ustar: Option<f64>,
     /// On the threshold: 1 for the fluid threshold of the model, less for that of impact.
     pub threshold_factor: f64,
     /// m.

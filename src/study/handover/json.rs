@@ -3,6 +3,7 @@
 
 use serde_json::{Value, json};
 
+use super::sand;
 use crate::ground::{Axis, Caution, LengthUnit};
 use crate::study::{
     DriftFinding, Findings, PatchFinding, RasterFinding, Sheet, SpectrumFinding, TogetherFinding,
@@ -67,6 +68,7 @@ fn patch(p: &PatchFinding) -> Value {
         "trend": trend(&p.trend), "spectrum": spectrum(&p.spectrum, metres),
         "verdicts": p.verdicts.iter().map(verdict).collect::<Vec<_>>(),
         "backwards": p.backwards.as_ref().map(backwards),
+        "birth": p.birth.iter().map(sand::birth).collect::<Vec<_>>(),
         "finding": p.sentence, "cautions": cautions(&p.cautions),
     })
 }
@@ -146,6 +148,7 @@ fn wind(w: &WindFinding) -> Value {
             "ratio": s.drift.ratio, "toward_deg": s.drift.toward.map(|a| a.deg()), "total": s.drift.total,
             "unit": s.drift.unit,
         })).collect::<Vec<_>>(),
+        "sand": w.sand.as_ref().map(sand::sand),
         "cautions": cautions(&w.cautions),
     })
 }

@@ -15,6 +15,7 @@ pub fn methods_markdown() -> String {
     for method in science::methods() {
         page.push_str(&markdown(method));
     }
+    page.push_str(&super::bodies::bodies_markdown());
     page
 }
 

@@ -1,9 +1,11 @@
 //! What leaves the program: the findings as JSON, tables and layers, the methods as a page.
 
+mod bodies;
 mod json;
 mod layers;
 mod methods;
 mod regimes;
+mod sand;
 mod weighing;
 mod write;
 

@@ -3,14 +3,11 @@
 
 use egui::{ComboBox, RichText, Slider, Ui};
 
-use super::say;
+use super::{body, say};
 use crate::desk::{Bands, Command, DrawCommand, Model, Opened, RasterCommand, facts};
-use crate::ground::{Air, Azimuth, Body};
+use crate::ground::Azimuth;
 use crate::study::{ImageKind, Placement, RasterEntry, Tone};
 use crate::window::controls::{self, Commands, caution, heading, look, optional_number};
-
-/// Of nitrogen near 15 °C, Pa s: for air of which only the density is stated.
-const AIR_VISCOSITY: f64 = 1.75e-5;
 
 pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
     let Some(raster) = model.shown_raster() else {
@@ -33,7 +30,7 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
     kind(ui, raster, out);
     light(ui, raster, out);
     placement(ui, raster, out);
-    body(ui, raster, out);
+    body::show(ui, model, raster, out);
     tone(ui, raster, out);
 }
 
@@ -92,49 +89,6 @@ fn placement(ui: &mut Ui, raster: &RasterEntry, out: &mut Commands) {
     if changed {
         send(raster, stated, out);
     }
-}
-
-/// The body the raster lies on, where the file does not say or says too little.
-fn body(ui: &mut Ui, raster: &RasterEntry, out: &mut Commands) {
-    let stated = raster.placement.body.as_ref();
-    let shown = stated.map_or("as in the file", |body| body.name.as_str());
-    let mut chosen = stated.cloned();
-    ui.horizontal(|ui| {
-        ui.label("Body").on_hover_text("Its gravity and air decide which wind moves sand.");
-        let combo = ComboBox::from_id_salt("body").selected_text(shown).show_ui(ui, |ui| {
-            ui.selectable_value(&mut chosen, None, "as in the file");
-            for body in Body::known() {
-                let name = body.name.clone();
-                ui.selectable_value(&mut chosen, Some(body), name);
-            }
-        });
-        combo.response.widget_info(|| egui::WidgetInfo::labeled(egui::Role::ComboBox, true, "Body"));
-    });
-    if let Some(body) = &mut chosen {
-        own_numbers(ui, body);
-    }
-    if chosen.as_ref() != stated {
-        send(raster, Placement { body: chosen, ..raster.placement.clone() }, out);
-    }
-}
-
-/// Gravity and air of the stated body, each open to change.
-fn own_numbers(ui: &mut Ui, body: &mut Body) {
-    ui.horizontal(|ui| {
-        ui.label("Gravity");
-        if let Some(gravity) = optional_number(ui, "Gravity, metres per second squared", body.gravity, 60.0) {
-            body.gravity = gravity.filter(|g| *g > 0.0);
-        }
-        ui.label("m/s²   air");
-        let density = body.air.map(|air| air.density);
-        if let Some(typed) =
-            optional_number(ui, "Density of the air, kilograms per cubic metre", density, 60.0)
-        {
-            let viscosity = body.air.map_or(AIR_VISCOSITY, |air| air.viscosity);
-            body.air = typed.filter(|d| *d > 0.0).map(|density| Air { density, viscosity });
-        }
-        ui.label("kg/m³");
-    });
 }
 
 /// One band, or the mean of all.

@@ -1,9 +1,11 @@
 //! The bench: the evidence for the selected patch, page by page, in the order of the reasoning.
 
+mod body;
 mod ground;
 mod judges;
 mod plate;
 mod regimes;
+mod sand;
 mod spacing;
 mod trend;
 mod verdict;

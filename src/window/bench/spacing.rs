@@ -2,7 +2,7 @@
 
 use egui::Ui;
 
-use super::figure_mm;
+use super::{figure_mm, sand};
 use crate::desk::{Model, facts};
 use crate::plate;
 use crate::study::PatchFinding;
@@ -20,4 +20,5 @@ pub fn show(ui: &mut Ui, model: &Model, finding: &PatchFinding) {
     figure::show(ui, &across, theme::POINTS_PER_MM, "Power over background across the crests");
     rule(ui, &look);
     controls::facts(ui, &look, &facts::spacing(finding));
+    sand::birth(ui, model, finding);
 }

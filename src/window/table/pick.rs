@@ -135,7 +135,6 @@ fn ring_mut(polygon: &mut Polygon, ring: usize) -> Option<&mut Vec<Point>> {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::study::WindChoice;
     use egui::{pos2, vec2};
 
     fn lens() -> Lens {

@@ -1,8 +1,6 @@
 //! Invented findings from Sorrel Reach on Halvane, as a run would return them.
 
-use ventifact::ground::{
-    Affine, Air, Axis, Azimuth, Body, BodyShape, Caution, Frame, Grid, LengthUnit, Place,
-};
+use ventifact::ground::{Affine, Axis, Azimuth, Body, Caution, Frame, Grid, LengthUnit, Place};
 use ventifact::ground::{Point, Polygon, Projection, SandFlow};
 use ventifact::plate::Recipe;
 use ventifact::plate::map::{Picture, toned};
@@ -222,21 +220,12 @@ pub struct Reach {
     pub size: [f64; 2],
 }
 
-pub fn halvane() -> Body {
-    Body {
-        name: "Halvane".into(),
-        shape: BodyShape::sphere(1_420_000.0),
-        gravity: Some(1.1),
-        air: Some(Air { density: 2.8, viscosity: 1.7e-5 }),
-    }
-}
-
 pub fn points(list: &[(f64, f64)]) -> Vec<Point> {
     list.iter().map(|(x, y)| Point::new(*x, *y)).collect()
 }
 
 pub fn reach() -> Reach {
-    let body = halvane();
+    let body = Body::halvane();
     let projection =
         Projection::new("+proj=stere +lat_0=12 +lon_0=40 +R=1420000", body.shape).expect("stere");
     let (sin, cos) = 20f64.to_radians().sin_cos();
@@ -322,6 +311,7 @@ pub fn wind_finding() -> WindFinding {
             "short-record",
             "The wind record spans two years; the dunes may be older than its winds.",
         )],
+        sand: None,
     }
 }
 
@@ -348,6 +338,7 @@ pub fn patch_finding(reach: &Reach) -> PatchFinding {
             Caution::new("look-bias", "The trend lies within 12° of the direction that the radar look favours; part of the alignment may be the look’s."),
             Caution::new("tensor-spectrum", "Tensor and spectrum agree within their intervals, but the spectrum rests on 12 windows only."),
         ],
+        birth: Vec::new(),
     }
 }
 

@@ -17,11 +17,12 @@ pub struct Season {
     pub gusts: f64,
 }
 
-/// The open reach: two winds about 130° apart, of nearly equal strength, so that crests grow along
-/// their resultant.
+/// The open reach: two winds about 110° apart, a steady one and a weaker one with storms. Fingers grow
+/// near 76°, while a bed covered with sand would raise crests 25° away from that, so the trend tells the
+/// two apart; and were only the storms strong enough, the second wind would rule.
 pub const SEASONS: [Season; 2] = [
-    Season { toward_deg: 13.0, swing_deg: 16.0, speed: 2.5, gusts: 1.25 },
-    Season { toward_deg: 141.0, swing_deg: 16.0, speed: 2.4, gusts: 1.25 },
+    Season { toward_deg: 34.0, swing_deg: 16.0, speed: 4.3, gusts: 0.5 },
+    Season { toward_deg: 145.0, swing_deg: 16.0, speed: 3.1, gusts: 1.35 },
 ];
 
 /// The corridor: the walls leave one direction.
