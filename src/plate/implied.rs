@@ -38,7 +38,7 @@ pub fn implied_rose(implied: &Implied, observed: &[Observed], size_mm: f64, them
         let stroke = theme.stroke(theme.predicted, theme.widths.line);
         sketch.line(toward(centre, 0.55 * rim, finger), toward(centre, rim - 1.4, finger), stroke);
         sketch.polygon(arrow_head(tip, 2.2, finger), Some(theme.predicted), None);
-        letter(&mut sketch, "F", finger, centre, rim + 2.6, theme);
+        letter(&mut sketch, "F", finger, centre, 0.48 * rim, theme);
     }
     if let Some((azimuth, ratio)) = implied.resultant {
         let tip = toward(centre, ratio * rim, azimuth);
@@ -88,11 +88,19 @@ fn letter(sketch: &mut Sketch, name: &str, azimuth: Azimuth, centre: Point, radi
 
 fn words(sketch: &mut Sketch, implied: &Implied, observed: &[Observed], size_mm: f64, theme: &Theme) -> f64 {
     let axes = |list: &[Axis]| {
-        let each: Vec<String> = list.iter().map(|a| numbers::axis_with_interval(*a, None)).collect();
+        let each: Vec<String> = list.iter().map(|a| format!("{:03.0}°", a.deg().round() % 180.0)).collect();
         each.join(" or ")
     };
     let azimuth = |a: Azimuth| numbers::azimuth_with_interval(a, None);
+    let [first, second] = &implied.flows;
+    let winds = format!(
+        "two winds toward {} and {}, {} : 1",
+        azimuth(first.toward),
+        azimuth(second.toward),
+        numbers::plain(first.weight / second.weight, 2)
+    );
     let mut rows = vec![
+        ("", winds, theme.ink_soft),
         ("B", format!("bed instability {}", axes(&implied.bed)), theme.predicted),
         ("", format!("gross transport {} (thin)", axes(&implied.gross)), theme.predicted),
     ];

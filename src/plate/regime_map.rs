@@ -112,8 +112,10 @@ fn shade(sketch: &mut Sketch, regimes: &Regimes, layout: &Layout, theme: &Theme)
 
 fn outlines(sketch: &mut Sketch, regimes: &Regimes, layout: &Layout, theme: &Theme) {
     let mut inside = Sketch::default();
+    // Predictions are rounded to whole degrees, which roughens the flanks: smoothed for the eye only.
+    let even = Regimes { map: smoothed(&regimes.map, Regimes::COLUMNS), ..regimes.clone() };
     for (mass, width) in [(0.95, theme.widths.thin), (0.5, 1.1 * theme.widths.line)] {
-        for line in contour(&regimes.map, Regimes::COLUMNS, regimes.level(mass)) {
+        for line in contour(&even.map, Regimes::COLUMNS, even.level(mass)) {
             let on_map = |p: &[f64; 2]| {
                 let divergence = 180.0 * (p[0] + 0.5) / Regimes::COLUMNS as f64;
                 layout.at(divergence, (p[1] + 0.5) / Regimes::ROWS as f64)
@@ -122,6 +124,25 @@ fn outlines(sketch: &mut Sketch, regimes: &Regimes, layout: &Layout, theme: &The
         }
     }
     sketch.items.push(Item::Clip { min: layout.min, max: layout.max, items: inside.items });
+}
+
+/// Each cell averaged with its neighbours, weights ¼ ½ ¼ both ways, three times over; the border is
+/// repeated.
+fn smoothed(map: &[f64], columns: usize) -> Vec<f64> {
+    let rows = map.len() / columns;
+    let pass = |map: Vec<f64>| -> Vec<f64> {
+        let value = |i: isize, j: isize| {
+            let (i, j) = (i.clamp(0, columns as isize - 1), j.clamp(0, rows as isize - 1));
+            map[j as usize * columns + i as usize]
+        };
+        let at = |k: usize| {
+            let (i, j) = ((k % columns) as isize, (k / columns) as isize);
+            let row = |j| 0.25 * value(i - 1, j) + 0.5 * value(i, j) + 0.25 * value(i + 1, j);
+            0.25 * row(j - 1) + 0.5 * row(j) + 0.25 * row(j + 1)
+        };
+        (0..map.len()).map(at).collect()
+    };
+    (0..3).fold(map.to_vec(), |map, _| pass(map))
 }
 
 /// Curves of equal obliquity under gross transport; left of 90° it is 90° everywhere.
@@ -134,11 +155,11 @@ fn curves(sketch: &mut Sketch, layout: &Layout, theme: &Theme) {
         sketch.polyline(curve.iter().map(|p| layout.at(p[0], p[1])).collect(), hair);
     }
     for phi in CURVES {
-        // Where the curves lie farthest apart from the line at 90°.
+        // Beside the line at 90°, where the curves lie farthest apart.
         let curve = obliquity_curve(phi);
         let Some(p) = curve.iter().find(|p| p[0] >= 97.0) else { continue };
         let at = layout.at(p[0], p[1]);
-        sketch.text(Point::new(at.x, at.y + 0.35 * look.size_mm), format!("{phi:.0}°"), look);
+        sketch.text(Point::new(at.x, at.y - 0.5), format!("{phi:.0}°"), look);
     }
     let at = layout.at(86.0, 0.06);
     sketch.text(at, "90°", look.anchored(TextAnchor::End));
@@ -171,21 +192,24 @@ fn axes(sketch: &mut Sketch, layout: &Layout, theme: &Theme) {
 fn words(sketch: &mut Sketch, found: &BackwardsFinding, top: f64, size_mm: f64, theme: &Theme) -> f64 {
     let middle = |y: f64| Point::new(0.5 * size_mm, y);
     let r = &found.regimes;
-    let headline = if found.tells() {
+    let between = |low: f64| {
         format!(
             "RDP/DP {:.2} to {:.2}, divergence {:.0}° to {:.0}°",
-            r.ratio_quantile(0.025, false),
-            r.ratio_quantile(0.975, false),
-            r.divergence_quantile(0.025),
-            r.divergence_quantile(0.975)
+            r.ratio_quantile(low, false),
+            r.ratio_quantile(1.0 - low, false),
+            r.divergence_quantile(low),
+            r.divergence_quantile(1.0 - low)
         )
-    } else {
-        "divergence and ratio stay open".to_owned()
     };
+    let headline = if found.tells() { between(0.25) } else { "divergence and ratio stay open".to_owned() };
     let look = Type::new(theme.text.heading, theme.predicted).bold().anchored(TextAnchor::Middle);
     let mut y = top + sketch.paragraph(middle(top), &headline, look, size_mm);
     let arcs: Vec<String> = found.drift_arcs().iter().map(arc_words).collect();
-    let mut caption = format!("drift toward {} (95 %)\nshade: chance", arcs.join(" or "));
+    let mut caption = String::new();
+    if found.tells() {
+        caption += &format!("(even odds; 95 %: {})\n", between(0.025));
+    }
+    caption += &format!("drift toward {} (95 %)\nshade: chance", arcs.join(" or "));
     if found.tells() {
         caption += ", outlines: 50 and 95 %";
     }
@@ -193,4 +217,26 @@ fn words(sketch: &mut Sketch, found: &BackwardsFinding, top: f64, size_mm: f64, 
     let look = Type::new(theme.text.small, theme.ink_soft).anchored(TextAnchor::Middle);
     y += sketch.paragraph(middle(y), &caption, look, size_mm);
     y
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn the_map_and_the_pointer_agree() {
+        let layout = Layout::of(90.0);
+        let at = regime_at(90.0, layout.at(120.0, 0.5)).expect("on the map");
+        crate::assert_close!(at.divergence_deg, 120.0, 1e-9, "divergence");
+        crate::assert_close!(at.ratio, 10f64.sqrt(), 1e-9, "ratio");
+        assert_eq!(regime_at(90.0, Point::new(1.0, 1.0)), None);
+    }
+
+    #[test]
+    fn smoothing_keeps_an_even_map_and_the_sum_of_a_hill_inside() {
+        assert!(smoothed(&[0.25; 12], 4).iter().all(|v| (v - 0.25).abs() < 1e-15));
+        let mut map = vec![0.0; 121];
+        map[60] = 1.0;
+        crate::assert_close!(smoothed(&map, 11).iter().sum::<f64>(), 1.0, 1e-12, "sum");
+    }
 }
