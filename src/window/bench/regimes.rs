@@ -1,13 +1,15 @@
 //! The regimes page: with no wind record, which two winds would make this trend; the map to point at
 //! and click, and what the picked regime would make.
 
+use std::sync::Arc;
+
 use egui::{ComboBox, RichText, Sense as Reach, Ui, vec2};
 
 use super::figure_mm;
 use crate::desk::regimes::{facts, laid, readout};
 use crate::desk::{Command, Model, PatchCommand, PickedRegime, ViewCommand};
 use crate::ground::{Azimuth, Point};
-use crate::plate::{implied_rose, regime_at, regime_map};
+use crate::plate::{Figure, implied_rose, regime_at, regime_map};
 use crate::science::alignment::backwards::{Cover, Sense, SenseKind};
 use crate::study::{BackwardsFinding, Patch, PatchFinding};
 use crate::window::controls::{
@@ -35,13 +37,42 @@ pub fn show(ui: &mut Ui, model: &Model, finding: &PatchFinding, out: &mut Comman
     heading(ui, "Seen on the ground");
     cover(ui, patch, out);
     sense(ui, patch, finding, out);
+    with_others(ui, model, finding);
+}
+
+/// The regimes that would make the trends of several patches, this one among them.
+fn with_others(ui: &mut Ui, model: &Model, finding: &PatchFinding) {
+    let Some(together) = model.session.results.together() else { return };
+    let look = look(model);
+    for found in together.regimes.iter().filter(|r| r.patches.contains(&finding.id)) {
+        heading(ui, &format!("By the trends together: {}", found.name));
+        let mm = figure_mm(ui);
+        let picture = map_picture(ui, model, found, mm);
+        let spoken = format!("Map of two-wind regimes of {} patches together", found.patches.len());
+        figure::show(ui, &picture, theme::POINTS_PER_MM, &spoken);
+        controls::facts(ui, &look, &facts(found));
+        found.regimes.cautions.iter().for_each(|c| caution(ui, &look, &c.text));
+    }
+}
+
+/// The map's figure, kept while nothing it shows has changed, so that its shades are uploaded once.
+fn map_picture(ui: &mut Ui, model: &Model, found: &BackwardsFinding, mm: f64) -> Arc<Figure> {
+    let view = &model.view;
+    let key = format!("{:?} {:?} {mm} {:?} {:?}", view.regime, view.theme, found.trends, found.settings);
+    let id = ui.make_persistent_id(("regime map", found.name.as_str(), found.patches.len()));
+    let known = ui.data(|data| data.get_temp::<(String, Arc<Figure>)>(id));
+    if let Some((_, picture)) = known.filter(|(of, _)| *of == key) {
+        return picture;
+    }
+    let picture = Arc::new(regime_map(found, view.regime.map(PickedRegime::on_map), mm, &look(model)));
+    ui.data_mut(|data| data.insert_temp(id, (key, Arc::clone(&picture))));
+    picture
 }
 
 /// The map: pointing reads it out, a click picks a regime.
 fn map(ui: &mut Ui, model: &Model, found: &BackwardsFinding, out: &mut Commands) {
     let (look, mm) = (look(model), figure_mm(ui));
-    let mark = model.view.regime.map(PickedRegime::on_map);
-    let picture = regime_map(found, mark, mm, &look);
+    let picture = map_picture(ui, model, found, mm);
     let scale = theme::POINTS_PER_MM;
     let size = vec2(picture.width_mm as f32, picture.height_mm as f32) * scale;
     let (rect, response) = ui.allocate_exact_size(size, Reach::click());
