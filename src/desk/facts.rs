@@ -446,6 +446,7 @@ mod tests {
             trend: TrendFinding::default(),
             spectrum: SpectrumFinding::default(),
             verdicts: Vec::new(),
+            backwards: None,
             sentence: String::new(),
             cautions: Vec::new(),
             birth: Vec::new(),

@@ -5,6 +5,7 @@ use std::collections::BTreeMap;
 use serde::{Deserialize, Serialize};
 
 use crate::ground::{Bounds, Point};
+use crate::plate::MapPoint;
 use crate::study::Id;
 
 use super::PlateChoice;
@@ -27,6 +28,8 @@ pub struct View {
     pub plate: PlateChoice,
     /// The selected outcrop.
     pub obstacle: Option<Id>,
+    /// The regime picked on the map.
+    pub regime: Option<PickedRegime>,
 }
 
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
@@ -47,6 +50,7 @@ pub enum Page {
     Spacing,
     Winds,
     Verdict,
+    Regimes,
     Obstacles,
     Plate,
 }
@@ -76,6 +80,36 @@ impl Default for Layers {
     }
 }
 
+/// Two winds picked on the map of regimes.
+#[derive(Clone, Copy, Debug, PartialEq, Serialize, Deserialize)]
+pub struct PickedRegime {
+    /// Angle between them, degrees in (0, 180).
+    pub divergence_deg: f64,
+    /// Strength of the dominant over the other, 1 to 10.
+    pub ratio: f64,
+}
+
+impl Default for PickedRegime {
+    fn default() -> Self {
+        Self { divergence_deg: 120.0, ratio: 2.0 }
+    }
+}
+
+impl PickedRegime {
+    /// The nearest regime on the map.
+    pub fn within_map(self) -> Self {
+        Self { divergence_deg: self.divergence_deg.clamp(0.5, 179.5), ratio: self.ratio.clamp(1.0, 10.0) }
+    }
+
+    pub fn from_map(point: MapPoint) -> Self {
+        Self { divergence_deg: point.divergence_deg, ratio: point.ratio }
+    }
+
+    pub fn on_map(self) -> MapPoint {
+        MapPoint { divergence_deg: self.divergence_deg, ratio: self.ratio }
+    }
+}
+
 impl Theme {
     pub fn other(self) -> Self {
         match self {
@@ -86,8 +120,17 @@ impl Theme {
 }
 
 impl Page {
-    pub const ALL: [Self; 7] =
-        [Self::Ground, Self::Trend, Self::Spacing, Self::Winds, Self::Verdict, Self::Obstacles, Self::Plate];
+    pub const ALL: [Self; 8] =
+        [
+            Self::Ground,
+            Self::Trend,
+            Self::Spacing,
+            Self::Winds,
+            Self::Verdict,
+            Self::Regimes,
+            Self::Obstacles,
+            Self::Plate,
+        ];
 
     pub fn label(self) -> &'static str {
         match self {
@@ -97,6 +140,7 @@ impl Page {
             Self::Winds => "Winds",
             Self::Verdict => "Verdict",
             Self::Obstacles => "Obstacles",
+            Self::Regimes => "Regimes",
             Self::Plate => "Plate",
         }
     }

@@ -7,9 +7,9 @@
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
 use super::{
-    BirthFinding, BuildingFinding, CalendarFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id,
-    MigrationFinding, ObstaclesFinding, RoundingFinding, SandFinding, SeasonFinding, SensitivityFinding,
-    SetAside, ThinningFinding,
+    BackwardsFinding, BirthFinding, BuildingFinding, CalendarFinding, DriftFinding, ElongationFinding,
+    EquivalenceFinding, Id, MigrationFinding, ObstaclesFinding, RoundingFinding, SandFinding, SeasonFinding,
+    SensitivityFinding, SetAside, ThinningFinding,
 };
 
 /// All results of one run.
@@ -69,6 +69,8 @@ pub struct PatchFinding {
     pub trend: TrendFinding,
     pub spectrum: SpectrumFinding,
     pub verdicts: Vec<VerdictFinding>,
+    /// The two-wind regimes that would make its trend; `None` without one.
+    pub backwards: Option<BackwardsFinding>,
     /// One plain sentence with uncertainty and caveat.
     pub sentence: String,
     pub cautions: Vec<Caution>,
@@ -292,6 +294,8 @@ pub struct TogetherFinding {
     pub joint: Vec<JointFinding>,
     /// The tests for a preferred trend, with false discoveries controlled.
     pub discoveries: Vec<Discovery>,
+    /// The two-wind regimes that would make the trends of several patches.
+    pub regimes: Vec<BackwardsFinding>,
 }
 
 /// Several trends judged by one record under one theory.

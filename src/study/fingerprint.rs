@@ -32,6 +32,8 @@ pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
         patch.id,
         patch.outline,
         patch.stated_axis,
+        patch.cover,
+        patch.sense,
         sheet.raster(patch.raster).map(raster),
         patch.winds == WindChoice::Nearest,
         winds,

@@ -1,6 +1,7 @@
 //! The study: the sheet (document), its settings, the one executor, and the findings it returns.
 
 pub mod bulk;
+mod backwards;
 mod cautions;
 pub mod check;
 pub mod demo;
@@ -36,6 +37,7 @@ pub use crate::science::wind::quality::SetAside;
 pub use crate::science::wind::regime::{Drift as DriftFinding, Season as SeasonFinding};
 pub use crate::science::wind::rounding::Rounding as RoundingFinding;
 pub use crate::science::wind::thinning::{Changed as ChangedFinding, Thinning as ThinningFinding};
+pub use backwards::{BackwardsFinding, arc_words};
 pub use findings::{
     Discovery, Failure, Findings, Flip, JointFinding, JointTheory, JointTrend, ModeFinding, Node,
     PatchFinding, RasterFinding, SpectrumFinding, SpectrumPicture, TheoryFinding, TogetherFinding,
@@ -46,8 +48,8 @@ pub use obstacles::{NodeAround, ObstacleFinding, ObstaclesFinding};
 pub use records::{Setting, SettingKind, SettingValue};
 pub use setting_list::SETTINGS;
 pub use settings::{
-    LettauConstant, ObstacleGround, ObstacleSettings, Priors, Settings, SpectrumSettings, StatisticsSettings,
-    ThresholdLaw, TransportLaw, TrendSettings, VerdictSettings, WindSettings,
+    BackwardsSettings, LettauConstant, ObstacleGround, ObstacleSettings, Priors, Settings, SpectrumSettings,
+    StatisticsSettings, ThresholdLaw, TransportLaw, TrendSettings, VerdictSettings, WindSettings,
 };
 pub use sheet::{Id, ImageKind, Obstacle, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
 pub use sources::{OpenRaster, Sources};

@@ -8,6 +8,7 @@ use crate::science::axial::{self, AxialSample, Nodes, Summary, SummarySettings};
 use crate::science::orientation::scale::{INTEGRATION_RATIO, coherent_scale, scale_sweep};
 use crate::science::orientation::{self, NodeField, Peak, Spectrum, TensorSettings, TrendNode};
 
+use super::backwards;
 use super::cautions;
 use super::obstacles;
 use super::verdict::verdict;
@@ -53,6 +54,7 @@ pub fn patch_finding(
             .extend(sheet.wind(winds.finding.id).and_then(|w| winds::other_body(w, &open.place.body)));
         verdicts.push(judged);
     }
+    let backwards = backwards::of_patch(sheet, patch, &trend, work)?;
     let mut birth = Vec::new();
     let mut birth_cautions = Vec::new();
     for WindStudy { finding: record, .. } in judges.iter().map(|winds| &***winds) {
@@ -80,6 +82,7 @@ pub fn patch_finding(
         trend,
         spectrum: spectrum_finding,
         verdicts,
+        backwards,
         sentence: String::new(),
         cautions,
         birth,

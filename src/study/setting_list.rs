@@ -398,6 +398,51 @@ pub const SETTINGS: &[Setting] = &[
     prior!("verdict.priors.stated", "stated axis", verdict.priors.stated),
     prior!("verdict.priors.random", "random axis", verdict.priors.random),
     number!(
+        "backwards.least_flux_up",
+        "Least flux-up ratio",
+        "1",
+        0.0,
+        10.0,
+        backwards.least_flux_up,
+        "First of three gains of flux over a crest that are held equally likely when regimes are sought from trends alone; 0 is gross transport."
+    ),
+    number!(
+        "backwards.flux_up",
+        "Usual flux-up ratio",
+        "1",
+        0.0,
+        10.0,
+        backwards.flux_up,
+        "The second of the three; what a picked regime is drawn with."
+    ),
+    number!(
+        "backwards.greatest_flux_up",
+        "Greatest flux-up ratio",
+        "1",
+        0.0,
+        10.0,
+        backwards.greatest_flux_up,
+        "The third of the three."
+    ),
+    auto!(
+        "backwards.wind_from_deg",
+        "Dominant wind from",
+        "°",
+        0.0,
+        360.0,
+        backwards.wind_from_deg,
+        "Azimuth the dominant sand-moving wind blows from, when something is known of it without a record. Left open: any."
+    ),
+    number!(
+        "backwards.wind_sd_deg",
+        "Doubt of that wind",
+        "°",
+        1.0,
+        90.0,
+        backwards.wind_sd_deg,
+        "Standard deviation of the dominant wind's azimuth."
+    ),
+    number!(
         "obstacle.inner_radii",
         "Annulus from",
         "radii",

@@ -16,6 +16,7 @@ pub struct Settings {
     pub wind: WindSettings,
     pub verdict: VerdictSettings,
     pub obstacle: ObstacleSettings,
+    pub backwards: BackwardsSettings,
 }
 
 /// Structure-tensor trend. Scales in pixels of the finer ground direction; `None` = from the data.
@@ -269,6 +270,32 @@ impl Default for ObstacleSettings {
             virtual_count: 999,
             least_amplitude: 0.3,
             ground: ObstacleGround::Grained,
+        }
+    }
+}
+
+/// Two-wind regimes sought from trends alone.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+#[serde(default, deny_unknown_fields)]
+pub struct BackwardsSettings {
+    /// Flux-up ratios held equally likely.
+    pub least_flux_up: f64,
+    pub flux_up: f64,
+    pub greatest_flux_up: f64,
+    /// Where the dominant sand-moving wind blows FROM, when something is known of it; `None` = any.
+    pub wind_from_deg: Option<f64>,
+    /// Standard deviation of that azimuth, degrees.
+    pub wind_sd_deg: f64,
+}
+
+impl Default for BackwardsSettings {
+    fn default() -> Self {
+        Self {
+            least_flux_up: 0.0,
+            flux_up: FLUX_UP,
+            greatest_flux_up: 2.0,
+            wind_from_deg: None,
+            wind_sd_deg: 30.0,
         }
     }
 }

@@ -7,6 +7,7 @@ use serde::{Deserialize, Serialize};
 use crate::files::raster::Bands;
 use crate::files::wind_table::WindImport;
 use crate::ground::{Axis, Azimuth, Body, LonLat, Polygon, Seed};
+use crate::science::alignment::backwards::{Cover, Sense};
 
 use super::Settings;
 
@@ -123,13 +124,19 @@ pub struct Patch {
     /// An axis known from elsewhere, weighed like a theory.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub stated_axis: Option<Axis>,
+    /// How much sand lies between the bedforms.
+    #[serde(default, skip_serializing_if = "Cover::is_unknown")]
+    pub cover: Cover,
+    /// Which way the sand goes, as read from the ground.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub sense: Option<Sense>,
 }
 
 impl Patch {
     /// A patch of which nothing but its outline is said.
     pub fn new(id: Id, name: impl Into<String>, raster: Id, outline: Polygon) -> Self {
         let (name, tags, winds) = (name.into(), Vec::new(), WindChoice::All);
-        Self { id, name, raster, outline, tags, winds, stated_axis: None }
+        Self { id, name, raster, outline, tags, winds, stated_axis: None, cover: Cover::Unknown, sense: None }
     }
 }
 

@@ -6,6 +6,7 @@ use std::sync::Arc;
 use crate::science::alignment::equivalence::false_discovery;
 use crate::science::alignment::{RANDOM_AXIS, Theory, TrendEvidence, together as weigh};
 
+use super::backwards;
 use super::verdict::{evidences, settings};
 use super::winds::WindStudy;
 use super::{Discovery, JointFinding, JointTheory, JointTrend, PatchFinding, Sheet, TogetherFinding};
@@ -15,6 +16,7 @@ pub fn together(sheet: &Sheet, patches: &[&PatchFinding], winds: &[Arc<WindStudy
     TogetherFinding {
         joint: winds.iter().filter_map(|record| joint(sheet, patches, record)).collect(),
         discoveries: discoveries(patches),
+        regimes: backwards::joint(sheet, patches),
     }
 }
 

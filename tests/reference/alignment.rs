@@ -2,6 +2,7 @@
 
 use ventifact::assert_close;
 use ventifact::ground::{Azimuth, SandFlow};
+use ventifact::science::alignment::backwards::{class_areas, fork_p};
 use ventifact::science::alignment::bed_instability::bed_instability;
 use ventifact::science::alignment::discriminator::growth_discriminator;
 use ventifact::science::alignment::fingering::fingering;
@@ -237,4 +238,18 @@ fn growth_of_fingers_over_the_fastest() {
         let got = growth_discriminator(&two(n, divergence), 1.6).expect("a ratio");
         assert_close!(got, want, 6e-5, "N {n}, divergence {divergence}");
     }
+}
+
+/// The same shares as `shares_of_the_two_wind_map`, by integrating the closed curves.
+#[test]
+fn areas_under_the_closed_curves() {
+    for (got, want) in class_areas().into_iter().zip([0.03686, 0.28583, 0.67731]) {
+        assert_close!(got, want, 2e-4, "area");
+    }
+}
+
+/// 14 forks of 17 one way: scipy's two-sided binomial test gives p = 0.0127.
+#[test]
+fn forks_one_way_and_the_other() {
+    assert_close!(fork_p(14, 3), 0.0127, 5e-5, "p");
 }

@@ -8,7 +8,7 @@ use egui::{Key, Modifiers, Pos2, vec2};
 use egui_kittest::Harness;
 use egui_kittest::kittest::{NodeT as _, Queryable as _};
 use ventifact::desk::{
-    Command, Dialog, Model, Page, SheetCommand, Standing, ViewCommand, WindCommand, listed,
+    Command, Dialog, Model, Page, PatchCommand, SheetCommand, Standing, ViewCommand, WindCommand, listed,
 };
 use ventifact::ground::Work;
 use ventifact::study::run::{Memo, run};
@@ -206,6 +206,48 @@ fn the_window_finds_what_the_command_line_finds() {
         let got = results.wind(wind.id).and_then(|w| w.outcome.as_ref().ok()).expect("the window has it");
         assert_eq!(format!("{got:?}"), format!("{wind:?}"), "{}", wind.name);
     }
+}
+
+#[test]
+fn a_click_on_the_regime_map_picks_a_regime_and_the_ground_can_be_described() {
+    let (_folder, sheet) = demo_on_disk();
+    let mut harness = open(blank(), [1440.0, 900.0]);
+    give(&mut harness, Command::Sheet(SheetCommand::Open(sheet)));
+    wait(&mut harness, "the mosaic", |model| model.shown_size().is_some());
+    let id = harness.state().app().model().sheet.patches[0].id;
+    give(&mut harness, Command::Patch(PatchCommand::Select(Some(id))));
+    give(&mut harness, Command::View(ViewCommand::Page(Page::Regimes)));
+    wait(&mut harness, "the regimes", move |model| {
+        model.session.results.patch(id).is_some_and(|p| p.backwards.is_some())
+    });
+    let name = harness.state().app().model().sheet.patches[0].name.clone();
+    let map = format!("Map of two-wind regimes of {name}");
+    let rect = harness.get_by_role_and_label(Role::Image, &map).rect();
+    let rose = format!("What the picked regime would make of {name}");
+    assert!(harness.query_by_role_and_label(Role::Image, &rose).is_none(), "nothing is picked yet");
+    click_at(&mut harness, rect.min + vec2(0.7 * rect.width(), 0.35 * rect.height()));
+    let regime = harness.state().app().model().view.regime.expect("a click picks");
+    assert!((100.0..150.0).contains(&regime.divergence_deg) && regime.ratio > 1.0, "{regime:?}");
+    assert!(harness.query_by_role_and_label(Role::Image, &rose).is_some(), "what it would make is drawn");
+    if let Some(path) = std::env::var_os("REGIMES_PICTURE") {
+        harness.render().expect("a picture").save(path).expect("saved");
+    }
+
+    // The same by keys: a number typed into the field.
+    let field = harness.get_by_role_and_label(Role::TextInput, "Divergence, degrees");
+    field.focus();
+    harness.run_steps(2);
+    key(&mut harness, Modifiers::COMMAND, Key::A);
+    harness.get_by_role_and_label(Role::TextInput, "Divergence, degrees").type_text("60");
+    harness.run_steps(2);
+    key(&mut harness, Modifiers::NONE, Key::Enter);
+    assert_eq!(harness.state().app().model().view.regime.expect("picked").divergence_deg, 60.0);
+
+    let cover = ventifact::science::alignment::backwards::Cover::Starved;
+    give(&mut harness, Command::Patch(PatchCommand::Cover { id, cover }));
+    assert_eq!(harness.state().app().model().sheet.patches[0].cover, cover);
+    key(&mut harness, Modifiers::COMMAND, Key::Z);
+    assert_ne!(harness.state().app().model().sheet.patches[0].cover, cover, "undo takes it back");
 }
 
 /// Copies Halvane, puts the mast on the copy, and makes it heavier by typing: sand then starts later.

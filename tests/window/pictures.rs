@@ -79,6 +79,7 @@ fn finding(mosaic: &Grid<f32>, place: &Place, patch: &Patch, fingerprint: String
         },
         spectrum: SpectrumFinding::default(),
         verdicts: Vec::new(),
+        backwards: None,
         sentence: String::new(),
         cautions: Vec::<Caution>::new(),
         birth: Vec::new(),

@@ -5,6 +5,7 @@ use std::path::{Path, PathBuf};
 use crate::desk::{Ask, MergeKey, Model, Purpose};
 use crate::files::layers::read_patches;
 use crate::ground::{Axis, Point, Polygon};
+use crate::science::alignment::backwards::{Cover, Sense};
 use crate::study::{Id, Patch, WindChoice};
 
 use super::Record;
@@ -32,6 +33,16 @@ pub enum PatchCommand {
     JudgeBy {
         id: Id,
         winds: WindChoice,
+    },
+    /// How much sand lies between the bedforms.
+    Cover {
+        id: Id,
+        cover: Cover,
+    },
+    /// Which way the sand goes, as read from the ground; `None` = nothing tells.
+    Sense {
+        id: Id,
+        sense: Option<Sense>,
     },
     /// An axis to weigh like a theory, or none.
     StateAxis {
@@ -67,6 +78,15 @@ impl PatchCommand {
                 Record::new("patch.judge-by", "Judge by wind", "Which wind records the verdicts use.")
                     .editing()
             }
+            Self::Cover { .. } => {
+                Record::new("patch.cover", "Sand cover", "How much sand lies between the bedforms.").editing()
+            }
+            Self::Sense { .. } => Record::new(
+                "patch.sense",
+                "Sense of the sand",
+                "Which way forks, tapering or obstacles point.",
+            )
+            .editing(),
             Self::StateAxis { .. } => Record::new(
                 "patch.state-axis",
                 "State an axis",
@@ -124,6 +144,8 @@ impl PatchCommand {
             | Self::Rename { id, .. }
             | Self::Tag { id, .. }
             | Self::JudgeBy { id, .. }
+            | Self::Cover { id, .. }
+            | Self::Sense { id, .. }
             | Self::StateAxis { id, .. }
                 if model.sheet.patch(*id).is_none() =>
             {
@@ -147,6 +169,8 @@ impl PatchCommand {
             Self::Rename { id, name } => change(model, id, |patch| patch.name = name),
             Self::Tag { id, tags } => change(model, id, |patch| patch.tags = tags),
             Self::JudgeBy { id, winds } => change(model, id, |patch| patch.winds = winds),
+            Self::Cover { id, cover } => change(model, id, |patch| patch.cover = cover),
+            Self::Sense { id, sense } => change(model, id, |patch| patch.sense = sense),
             Self::StateAxis { id, axis } => change(model, id, |patch| patch.stated_axis = axis),
             Self::AskBring => model.session.ask = Some(Ask::new(Purpose::BringPatches, "")),
             Self::Bring(path) => bring(model, &path),

@@ -1,6 +1,6 @@
 //! Looking: cameras, bench pages, layers, theme, what lies over the window. Never undone.
 
-use crate::desk::{Camera, Cursor, Dialog, Model, Page};
+use crate::desk::{Camera, Cursor, Dialog, Model, Page, PickedRegime};
 use crate::ground::{Bounds, Point};
 use crate::study::Id;
 
@@ -22,6 +22,8 @@ pub enum ViewCommand {
     Graticule,
     ShowRaster(Id),
     ShowWind(Id),
+    /// Two winds picked on the map of regimes.
+    Regime(Option<PickedRegime>),
     /// Where the table looks, from the table's own pointer handling.
     Look {
         raster: Id,
@@ -53,6 +55,7 @@ impl ViewCommand {
         Self::Page(Page::Winds),
         Self::Page(Page::Verdict),
         Self::Page(Page::Obstacles),
+        Self::Page(Page::Regimes),
         Self::Page(Page::Plate),
         Self::NextPage,
         Self::PreviousPage,
@@ -98,6 +101,11 @@ impl ViewCommand {
                 Record::new("view.raster", "Show raster", "Lays this raster on the table.")
             }
             Self::ShowWind(_) => Record::new("view.wind", "Show winds", "Shows this record on the bench."),
+            Self::Regime(_) => Record::new(
+                "view.regime",
+                "Pick regime",
+                "Shows what two winds of this divergence and ratio would make.",
+            ),
             Self::Look { .. } => Record::new("view.look", "Look here", "Moves the table's view."),
             Self::WholeRaster => {
                 Record::new("view.whole-raster", "Whole raster", "Shows all of the raster.").key("0")
@@ -143,6 +151,7 @@ impl ViewCommand {
             Self::Graticule => layers.graticule = !layers.graticule,
             Self::ShowRaster(id) => model.view.raster = Some(id),
             Self::ShowWind(id) => model.view.wind = Some(id),
+            Self::Regime(regime) => model.view.regime = regime.map(PickedRegime::within_map),
             Self::Look { raster, camera } => {
                 model.view.cameras.insert(raster, camera);
             }
@@ -210,9 +219,12 @@ fn page_record(page: Page) -> Record {
         Page::Spacing => Record::new("view.spacing", "Bench: spacing", "Spectrum and wavelength.").alt("3"),
         Page::Winds => Record::new("view.winds", "Bench: winds", "Sand rose and drift.").alt("4"),
         Page::Verdict => Record::new("view.verdict", "Bench: verdict", "The dial and the theories.").alt("5"),
+        Page::Regimes => {
+            Record::new("view.regimes", "Bench: regimes", "Two winds that would make the trend.").alt("6")
+        }
         Page::Obstacles => {
             Record::new("view.obstacles", "Bench: obstacles", "Crests round outcrops as wind vanes.").alt("7")
         }
-        Page::Plate => Record::new("view.plate", "Bench: plate", "The figure for print.").alt("6"),
+        Page::Plate => Record::new("view.plate", "Bench: plate", "The figure for print.").alt("8"),
     }
 }

@@ -1,5 +1,6 @@
 //! Alignment theories, and the weighing of a measured trend against them.
 
+pub mod backwards;
 pub mod bed_instability;
 mod cautions;
 pub mod discriminator;
@@ -39,6 +40,8 @@ pub const METHODS: &[&Method] = &[
     &stated::METHOD,
     &discriminator::METHOD,
     &migration::METHOD,
+    &backwards::METHOD,
+    &backwards::FORKS,
     &obliquity::METHOD,
     &likelihood::METHOD,
     &together::METHOD,

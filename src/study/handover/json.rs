@@ -11,6 +11,7 @@ use crate::study::{
 };
 
 use super::records;
+use super::regimes::backwards;
 
 /// The version of the layout.
 pub const FORMAT: u32 = 1;
@@ -26,6 +27,7 @@ pub fn findings_json(sheet: &Sheet, findings: &Findings) -> String {
         "winds": findings.winds.iter().map(wind).collect::<Vec<_>>(),
         "patches": findings.patches.iter().map(patch).collect::<Vec<_>>(),
         "together": together(&findings.together),
+        "regimes": findings.together.regimes.iter().map(backwards).collect::<Vec<_>>(),
         "networks": [],
         "errors": findings.failures.iter().map(|f| json!({ "what": f.what, "why": f.why })).collect::<Vec<_>>(),
     });
@@ -66,6 +68,7 @@ fn patch(p: &PatchFinding) -> Value {
         "centre_lonlat_deg": p.centre.map(|c| [c.lon, c.lat]),
         "trend": trend(&p.trend), "spectrum": spectrum(&p.spectrum, metres),
         "verdicts": p.verdicts.iter().map(verdict).collect::<Vec<_>>(),
+        "backwards": p.backwards.as_ref().map(backwards),
         "birth": p.birth.iter().map(sand::birth).collect::<Vec<_>>(),
         "finding": p.sentence, "cautions": cautions(&p.cautions),
         "obstacles": p.obstacles.as_ref().map(|o| super::obstacles::json(o, metres)),

@@ -6,6 +6,7 @@ mod layers;
 mod methods;
 mod obstacles;
 mod records;
+mod regimes;
 mod sand;
 mod weighing;
 mod write;

@@ -6,6 +6,7 @@ mod ground;
 mod judges;
 mod obstacles;
 mod plate;
+mod regimes;
 mod sand;
 mod spacing;
 mod trend;
@@ -37,11 +38,12 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
                 let finding = subject(ui, model, out);
                 obstacles::show(ui, model, finding, out);
             }
-            Page::Trend | Page::Spacing | Page::Verdict => {
+            Page::Trend | Page::Spacing | Page::Verdict | Page::Regimes => {
                 let Some(finding) = subject(ui, model, out) else { return };
                 match model.view.page {
                     Page::Trend => trend::show(ui, model, finding),
                     Page::Spacing => spacing::show(ui, model, finding),
+                    Page::Regimes => regimes::show(ui, model, finding, out),
                     _ => verdict::show(ui, model, finding, out),
                 }
             }

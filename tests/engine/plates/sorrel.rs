@@ -333,6 +333,7 @@ pub fn patch_finding(reach: &Reach) -> PatchFinding {
         trend,
         spectrum: peak(650.0),
         verdicts: vec![verdict()],
+        backwards: None,
         sentence: "Long dunes trend 84.2° ± 3.4° with crests 650 m apart (618–689 m). They lie along the resultant \
                    sand flow of Sorrel mast (79°): longitudinal with 96 % probability against 17 % before the data."
             .into(),
@@ -354,6 +355,7 @@ pub fn plain_finding(reach: &Reach) -> PatchFinding {
         trend: no_trend(),
         spectrum: SpectrumFinding { defined: false, spacing: None, axis: None, p: Some(0.41), ..peak(650.0) },
         verdicts: vec![refused()],
+        backwards: None,
         sentence: "Bare plain shows no preferred trend (p = 0.61, effective n 29).".into(),
         cautions: Vec::new(),
         ..patch_finding(reach)
