@@ -10,7 +10,7 @@ use super::dial::{class_bars, dial_face};
 use super::map::{MapPatch, MapView, map};
 use super::page::{Block, GAP_MM, Page};
 use super::sketch::Type;
-use super::{Figure, Theme, bars, modes, numbers, profile, rose, sand_rose, spectrum};
+use super::{Figure, Theme, bars, drift_calendar, modes, numbers, profile, rose, sand_rose, spectrum};
 
 /// All that a patch plate shows.
 #[derive(Clone, Debug)]
@@ -97,6 +97,10 @@ fn evidence(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
         if let Some(winds) = winds {
             let figure = sand_rose(&winds.rose, &winds.flux, width_mm, theme);
             blocks.push(block(format!("Winds: {}", winds.name), figure));
+            if let Some(calendar) = &winds.calendar {
+                let figure = drift_calendar(calendar, width_mm, theme);
+                blocks.push(block(format!("By the calendar: {}", winds.name), figure));
+            }
         }
         let of = if patch.verdicts.len() > 1 || winds.is_none() {
             format!(": {}", verdict.winds_name)

@@ -136,6 +136,7 @@ fn import() -> WindImport {
         missing: Vec::new(),
         zero_direction: ZeroDirection::North,
         day_first: false,
+        only: None,
     }
 }
 

@@ -7,10 +7,9 @@
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
 use super::{
-    BuildingFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id, MigrationFinding,
-    SeasonFinding, SensitivityFinding, SetAside,
-    BirthFinding, BuildingFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id, MigrationFinding,
-    SandFinding, SeasonFinding, SensitivityFinding, SetAside,
+    BirthFinding, BuildingFinding, CalendarFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id,
+    MigrationFinding, RoundingFinding, SandFinding, SeasonFinding, SensitivityFinding, SetAside,
+    ThinningFinding,
 };
 
 /// All results of one run.
@@ -202,6 +201,11 @@ pub struct WindFinding {
     pub cautions: Vec<Caution>,
     /// The sand under this air; `None` without air or gravity.
     pub sand: Option<SandFinding>,
+    /// By years, months and seasons; `None` without a clock or without sand.
+    pub calendar: Option<CalendarFinding>,
+    /// What longer intervals and coarser classes would have hidden.
+    pub thinning: Option<ThinningFinding>,
+    pub rounding: RoundingFinding,
 }
 
 /// A patch judged by one wind record.

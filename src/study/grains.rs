@@ -269,6 +269,7 @@ mod tests {
             speed_unit: SpeedUnit::MetrePerSecond,
             direction: DirectionSense::From,
             missing: Vec::new(),
+            only: None,
             zero_direction: ZeroDirection::North,
             day_first: false,
         };

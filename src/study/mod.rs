@@ -1,5 +1,6 @@
 //! The study: the sheet (document), its settings, the one executor, and the findings it returns.
 
+pub mod bulk;
 mod cautions;
 pub mod check;
 pub mod demo;
@@ -28,8 +29,11 @@ pub use crate::science::alignment::equivalence::Equivalence as EquivalenceFindin
 pub use crate::science::alignment::migration::Migration as MigrationFinding;
 pub use crate::science::alignment::{Building as BuildingFinding, Elongation as ElongationFinding};
 pub use crate::science::wind::Sensitivity as SensitivityFinding;
+pub use crate::science::wind::calendar::{Calendar as CalendarFinding, Period as PeriodFinding};
 pub use crate::science::wind::quality::SetAside;
 pub use crate::science::wind::regime::{Drift as DriftFinding, Season as SeasonFinding};
+pub use crate::science::wind::rounding::Rounding as RoundingFinding;
+pub use crate::science::wind::thinning::{Changed as ChangedFinding, Thinning as ThinningFinding};
 pub use findings::{
     Discovery, Failure, Findings, Flip, JointFinding, JointTheory, JointTrend, ModeFinding, Node,
     PatchFinding, RasterFinding, SpectrumFinding, SpectrumPicture, TheoryFinding, TogetherFinding,

@@ -98,6 +98,9 @@ pub fn study(
         sensitivity: a.sensitivity,
         cautions: a.cautions,
         sand: grains::sand(entry, s),
+        calendar: a.calendar,
+        thinning: a.thinning,
+        rounding: a.rounding,
     };
     Ok(WindStudy { finding, foresight, what_if })
 }

@@ -5,12 +5,16 @@ use rayon::prelude::*;
 use crate::ground::{Caution, Regime, SandFlow, Seed, Stopped, WindRecord, WindSample, Work};
 
 use super::bootstrap::{CELLS_PER_BLOCK, FEWEST_BLOCKS, Plan, intervals};
+use super::calendar::{Calendar, CalendarSettings, calendar};
 use super::drift_potential;
 use super::mill::{Mill, YEAR_S};
 use super::movers::Movers;
 use super::quality::{self, Checked, SetAside};
 use super::regime::{Drift, SEASONS, Season, flows, rose, seasons};
+use super::rounding::{Rounding, rounding};
 use super::settings::{Assumption, Site, Transport, WindError, WindSettings};
+use super::site_cautions;
+use super::thinning::{Thinning, thinning};
 
 /// What a record says about sand.
 #[derive(Clone, Debug, PartialEq)]
@@ -46,6 +50,11 @@ pub struct WindAssessment {
     /// The record under any other assumption.
     pub replay: Replay,
     pub cautions: Vec<Caution>,
+    /// By years, months and seasons; `None` without a clock or without sand.
+    pub calendar: Option<Calendar>,
+    /// What a longer interval or coarser classes would have hidden.
+    pub thinning: Option<Thinning>,
+    pub rounding: Rounding,
 }
 
 /// The drift had another law or threshold been chosen.
@@ -152,6 +161,11 @@ pub fn assess(
         ));
     }
     cautions.extend(drift_cautions(record, &kept, &flux, &movers, can_draw, &mill, interval_s));
+    cautions.extend(site_cautions::of(site, interval_s));
+    let by_calendar = CalendarSettings::of(&mill, interval_s.filter(|_| !record.is_table), settings);
+    let calendar = calendar(&kept, |v| mill.flux(v), &by_calendar, seed, work)?;
+    let thinning = thinning(&kept, interval_s.filter(|_| !record.is_table), |v| mill.flux(v), work)?;
+    let rounding = rounding(&kept, |v| mill.flux(v));
 
     Ok(WindAssessment {
         rows: record.samples.len(),
@@ -174,6 +188,9 @@ pub fn assess(
         replay: Replay { mill, movers },
         flux,
         cautions,
+        calendar,
+        thinning,
+        rounding,
     })
 }
 

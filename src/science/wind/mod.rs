@@ -3,6 +3,7 @@
 pub mod air;
 mod assess;
 mod bootstrap;
+pub mod calendar;
 mod coverage;
 pub mod drift_potential;
 pub mod law;
@@ -11,8 +12,11 @@ mod mill;
 mod movers;
 pub mod quality;
 pub mod regime;
+pub mod rounding;
 pub mod saturation;
 mod settings;
+mod site_cautions;
+pub mod thinning;
 pub mod threshold;
 
 pub use assess::{Replay, Sensitivity, WindAssessment, assess};
@@ -37,6 +41,9 @@ pub const METHODS: &[&Method] = &[
     &drift_potential::METHOD,
     &regime::METHOD,
     &bootstrap::METHOD,
+    &calendar::METHOD,
+    &rounding::METHOD,
+    &thinning::METHOD,
     &saturation::SETTLING,
     &saturation::WAVELENGTH,
 ];

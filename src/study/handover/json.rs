@@ -10,6 +10,8 @@ use crate::study::{
     TrendFinding, VerdictFinding, WindFinding,
 };
 
+use super::records;
+
 /// The version of the layout.
 pub const FORMAT: u32 = 1;
 
@@ -145,6 +147,9 @@ fn wind(w: &WindFinding) -> Value {
             "unit": s.drift.unit,
         })).collect::<Vec<_>>(),
         "sand": w.sand.as_ref().map(sand::sand),
+        "calendar": w.calendar.as_ref().map(records::calendar),
+        "thinning": w.thinning.as_ref().map(records::thinning),
+        "rounding": records::rounding(&w.rounding),
         "cautions": cautions(&w.cautions),
     })
 }
@@ -166,7 +171,7 @@ fn together(t: &TogetherFinding) -> Value {
     })
 }
 
-fn drift(d: &DriftFinding) -> Value {
+pub(super) fn drift(d: &DriftFinding) -> Value {
     json!({
         "unit": d.unit, "total": d.total, "resultant": d.resultant, "ratio": d.ratio, "ratio_ci95": d.ratio_ci95,
         "toward_deg": d.toward.map(|a| a.deg()), "toward_ci95_half_deg": d.toward_ci95_half_deg,

@@ -6,6 +6,7 @@ mod layers;
 mod methods;
 mod sand;
 mod weighing;
+mod records;
 mod write;
 
 pub use json::findings_json;

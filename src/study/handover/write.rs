@@ -8,6 +8,7 @@ use crate::study::{Findings, Sheet, Sources};
 
 use super::layers::{layers, lonlat_patches, node_table, patch_table, verdict_table, wind_table};
 use super::weighing::{flip_table, sensitivity_table, together_table};
+use super::records::calendar_table;
 use super::{bibtex, findings_json};
 
 /// A file that could not be written.
@@ -51,6 +52,7 @@ pub fn write_all(
         together_table(findings),
         wind_table(findings),
         sensitivity_table(findings),
+        calendar_table(findings),
     ];
     for table in tables.iter().filter(|t| !t.rows.is_empty()) {
         let name = format!("{}.csv", table.name);

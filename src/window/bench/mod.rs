@@ -1,6 +1,7 @@
 //! The bench: the evidence for the selected patch, page by page, in the order of the reasoning.
 
 mod body;
+mod calendar;
 mod ground;
 mod judges;
 mod plate;

@@ -312,6 +312,9 @@ pub fn wind_finding() -> WindFinding {
             "The wind record spans two years; the dunes may be older than its winds.",
         )],
         sand: None,
+        calendar: None,
+        thinning: None,
+        rounding: Default::default(),
     }
 }
 
