@@ -15,7 +15,6 @@ mod patch;
 mod records;
 pub mod run;
 mod sentence;
-mod setting;
 mod settings;
 mod sheet;
 pub mod sheet_file;
@@ -41,8 +40,7 @@ pub use findings::{
     TrendFinding, VerdictFinding, WindFinding,
 };
 pub use grains::{Birth, BirthFinding, Doubtful, FirstWave, SandFinding, SandThreshold};
-pub use records::SETTINGS;
-pub use setting::{Setting, SettingKind, SettingValue};
+pub use records::{SETTINGS, Setting, SettingKind, SettingValue};
 pub use settings::{
     LettauConstant, Priors, Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw,
     TrendSettings, VerdictSettings, WindSettings,
