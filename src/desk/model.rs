@@ -5,7 +5,7 @@ use std::path::PathBuf;
 
 use crate::ground::{Body, LonLat, Point};
 use crate::study::judges::{self, Judges};
-use crate::study::{Id, Patch, RasterEntry, Sheet, WindEntry};
+use crate::study::{Id, Obstacle, Patch, RasterEntry, Sheet, WindEntry};
 
 use super::{Opened, Session, View, Wake, engine, laying, measuring, plates};
 
@@ -39,6 +39,10 @@ impl Model {
 
     pub fn selected_patch(&self) -> Option<&Patch> {
         self.view.patch.and_then(|id| self.sheet.patch(id))
+    }
+
+    pub fn selected_obstacle(&self) -> Option<&Obstacle> {
+        self.view.obstacle.and_then(|id| self.sheet.obstacle(id))
     }
 
     /// The wind record on the bench: the user's choice, the selected patch's own, or the first.
@@ -125,6 +129,7 @@ impl Model {
         view.patch = view.patch.filter(|id| sheet.patch(*id).is_some());
         view.raster = view.raster.filter(|id| sheet.raster(*id).is_some());
         view.wind = view.wind.filter(|id| sheet.wind(*id).is_some());
+        view.obstacle = view.obstacle.filter(|id| sheet.obstacle(*id).is_some());
     }
 
     /// The sheet's file name, or its title while it has none.

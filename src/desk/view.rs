@@ -25,6 +25,8 @@ pub struct View {
     pub cameras: BTreeMap<Id, Camera>,
     pub layers: Layers,
     pub plate: PlateChoice,
+    /// The selected outcrop.
+    pub obstacle: Option<Id>,
 }
 
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
@@ -45,6 +47,7 @@ pub enum Page {
     Spacing,
     Winds,
     Verdict,
+    Obstacles,
     Plate,
 }
 
@@ -83,8 +86,8 @@ impl Theme {
 }
 
 impl Page {
-    pub const ALL: [Self; 6] =
-        [Self::Ground, Self::Trend, Self::Spacing, Self::Winds, Self::Verdict, Self::Plate];
+    pub const ALL: [Self; 7] =
+        [Self::Ground, Self::Trend, Self::Spacing, Self::Winds, Self::Verdict, Self::Obstacles, Self::Plate];
 
     pub fn label(self) -> &'static str {
         match self {
@@ -93,6 +96,7 @@ impl Page {
             Self::Spacing => "Spacing",
             Self::Winds => "Winds",
             Self::Verdict => "Verdict",
+            Self::Obstacles => "Obstacles",
             Self::Plate => "Plate",
         }
     }

@@ -8,8 +8,8 @@ use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, San
 
 use super::{
     BirthFinding, BuildingFinding, CalendarFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id,
-    MigrationFinding, RoundingFinding, SandFinding, SeasonFinding, SensitivityFinding, SetAside,
-    ThinningFinding,
+    MigrationFinding, ObstaclesFinding, RoundingFinding, SandFinding, SeasonFinding, SensitivityFinding,
+    SetAside, ThinningFinding,
 };
 
 /// All results of one run.
@@ -74,6 +74,8 @@ pub struct PatchFinding {
     pub cautions: Vec<Caution>,
     /// The spacing against that of first dunes, by each wind record whose air is known.
     pub birth: Vec<BirthFinding>,
+    /// What the outcrops in it say; `None` where the sheet has none there, or at a first look.
+    pub obstacles: Option<ObstaclesFinding>,
 }
 
 /// The trend from the structure tensor.

@@ -11,10 +11,12 @@ mod grains;
 pub mod handover;
 pub mod judges;
 mod migrate;
+mod obstacles;
 mod patch;
 mod records;
 pub mod run;
 mod sentence;
+mod setting_list;
 mod settings;
 mod sheet;
 pub mod sheet_file;
@@ -40,10 +42,14 @@ pub use findings::{
     TrendFinding, VerdictFinding, WindFinding,
 };
 pub use grains::{Birth, BirthFinding, Doubtful, FirstWave, SandFinding, SandThreshold};
-pub use records::{SETTINGS, Setting, SettingKind, SettingValue};
+pub use obstacles::{NodeAround, ObstacleFinding, ObstaclesFinding};
+pub use records::{Setting, SettingKind, SettingValue};
+pub use setting_list::SETTINGS;
 pub use settings::{
-    LettauConstant, Priors, Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw, TransportLaw,
-    TrendSettings, VerdictSettings, WindSettings,
+    LettauConstant, ObstacleGround, ObstacleSettings, Priors, Settings, SpectrumSettings, StatisticsSettings,
+    ThresholdLaw, TransportLaw, TrendSettings, VerdictSettings, WindSettings,
 };
-pub use sheet::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
+pub use sheet::{
+    Id, ImageKind, Obstacle, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry,
+};
 pub use sources::{OpenRaster, Sources};

@@ -3,6 +3,7 @@
 use crate::ground::LengthUnit;
 
 use super::cautions::WEAK_ALIGNMENT;
+use super::obstacles;
 use super::{PatchFinding, SpectrumFinding, TrendFinding, VerdictFinding};
 
 /// The sentence of a patch.
@@ -13,6 +14,10 @@ pub fn of_patch(finding: &PatchFinding) -> String {
     for verdict in &finding.verdicts {
         sentence.push_str("; ");
         sentence.push_str(&judged(verdict));
+    }
+    for clause in finding.obstacles.iter().flat_map(obstacles::clauses) {
+        sentence.push_str("; ");
+        sentence.push_str(&clause);
     }
     sentence.push('.');
     sentence

@@ -95,6 +95,38 @@ fn the_classes_are_the_ones_the_winds_were_made_for() {
     }
 }
 
+/// The long dunes were made to follow the flow round both outcrops: 0° to the wind.
+#[test]
+fn the_outcrops_tell_the_obliquity_they_were_made_with() {
+    let (finding, _) = patch("Long dunes");
+    let found = finding.obstacles.as_ref().expect("the patch has outcrops");
+    let truths = reach::outcrops();
+    assert_eq!(found.outcrops.len(), truths.len());
+    for (outcrop, truth) in found.outcrops.iter().zip(&truths) {
+        let test = outcrop.outcome.as_ref().unwrap_or_else(|why| panic!("{}: {why}", truth.name));
+        let o = &test.obliquity;
+        println!(
+            "{}: {o:?}, {:?}, pattern p {}, null {:?}, dipole {:?}",
+            truth.name, test.estimate, test.pattern_p, test.null, test.dipole
+        );
+        assert_eq!(test.undecided, None, "{}", truth.name);
+        let half = o.half_deg.unwrap();
+        let off = Axis::from_deg(o.signed_deg).separation(Axis::from_deg(truth.obliquity_deg));
+        assert!(off <= half, "{}: {off:.1}° off, half width {half:.1}°", truth.name);
+        assert!(half < 20.0, "{}: ± {half}° says too little", truth.name);
+    }
+    let combined = found.combined.unwrap();
+    println!("together: {combined:?}");
+    assert!(combined.obliquity.folded_deg() <= combined.obliquity.half_deg.unwrap());
+    assert!(finding.sentence.contains("between crests and wind"), "{}", finding.sentence);
+    let (_, findings, _) = reach_findings();
+    let others = findings.patches.iter().filter(|p| p.name != "Long dunes");
+    assert!(
+        others.into_iter().all(|p| p.obstacles.is_none()),
+        "outcrops belong to the patch round them only"
+    );
+}
+
 #[test]
 fn one_thread_and_two_give_the_same_bits_and_so_does_the_memo() {
     let (sheet, findings, _) = reach_findings();

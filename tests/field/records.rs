@@ -14,15 +14,7 @@ fn assessed(test: &str, file: &str, height_m: f64) -> Option<WindAssessment> {
     let record = wind_table::read(&path, &guess.import).unwrap_or_else(|error| panic!("{file}: {error}"));
     let earth = Body::earth();
     let site = Site { height_m, roughness_m: 1e-3, air: earth.air, gravity: earth.gravity, is_earth: true };
-    let settings = WindSettings {
-        grain_m: 250e-6,
-        grain_density: 2650.0,
-        threshold: Threshold::ShaoLu,
-        transport: Transport::Physical(Law::Kok),
-        greatest_speed: 75.0,
-        block_days: 7.0,
-        resamples: 400,
-    };
+    let settings = WindSettings { resamples: 400, ..WindSettings::default() };
     let found = assess(&record, &site, &settings, Seed(1), &Work::quiet()).expect("an assessment");
     println!("{file}");
     print_thinning(&found);

@@ -52,6 +52,7 @@ impl ViewCommand {
         Self::Page(Page::Spacing),
         Self::Page(Page::Winds),
         Self::Page(Page::Verdict),
+        Self::Page(Page::Obstacles),
         Self::Page(Page::Plate),
         Self::NextPage,
         Self::PreviousPage,
@@ -209,6 +210,9 @@ fn page_record(page: Page) -> Record {
         Page::Spacing => Record::new("view.spacing", "Bench: spacing", "Spectrum and wavelength.").alt("3"),
         Page::Winds => Record::new("view.winds", "Bench: winds", "Sand rose and drift.").alt("4"),
         Page::Verdict => Record::new("view.verdict", "Bench: verdict", "The dial and the theories.").alt("5"),
+        Page::Obstacles => {
+            Record::new("view.obstacles", "Bench: obstacles", "Crests round outcrops as wind vanes.").alt("7")
+        }
         Page::Plate => Record::new("view.plate", "Bench: plate", "The figure for print.").alt("6"),
     }
 }

@@ -326,9 +326,6 @@ fn drift_cautions(
 
 #[cfg(test)]
 mod tests {
-    use super::super::law::Law;
-    use super::super::settings::Doubt;
-    use super::super::threshold::{self, Threshold};
     use super::*;
     use crate::ground::{Azimuth, Body};
     use rand::Rng as _;
@@ -339,19 +336,7 @@ mod tests {
     }
 
     fn settings() -> WindSettings {
-        WindSettings {
-            grain_m: 250e-6,
-            grain_density: 2650.0,
-            cohesion: threshold::COHESION,
-            threshold: Threshold::ShaoLu,
-            threshold_ustar: None,
-            transport: Transport::Physical(Law::Kok),
-            greatest_speed: 75.0,
-            block_days: 30.0,
-            resamples: 60,
-            doubt: Doubt { grain: 1.3, grain_density: 1.05, cohesion: 1.7, roughness: 3.0 },
-            storm_quantile: 0.9,
-        }
+        WindSettings { block_days: 30.0, resamples: 60, ..WindSettings::default() }
     }
 
     /// Three-hourly winds of a year: westerly in winter, southerly in summer, turned by `turn`.

@@ -68,6 +68,7 @@ fn patch(p: &PatchFinding) -> Value {
         "verdicts": p.verdicts.iter().map(verdict).collect::<Vec<_>>(),
         "birth": p.birth.iter().map(sand::birth).collect::<Vec<_>>(),
         "finding": p.sentence, "cautions": cautions(&p.cautions),
+        "obstacles": p.obstacles.as_ref().map(|o| super::obstacles::json(o, metres)),
     })
 }
 

@@ -7,6 +7,7 @@ mod methods;
 mod sand;
 mod weighing;
 mod records;
+mod obstacles;
 mod write;
 
 pub use json::findings_json;

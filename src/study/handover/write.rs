@@ -9,6 +9,7 @@ use crate::study::{Findings, Sheet, Sources};
 use super::layers::{layers, lonlat_patches, node_table, patch_table, verdict_table, wind_table};
 use super::weighing::{flip_table, sensitivity_table, together_table};
 use super::records::calendar_table;
+use super::obstacles::{lonlat_outcrops, obstacle_table};
 use super::{bibtex, findings_json};
 
 /// A file that could not be written.
@@ -53,6 +54,7 @@ pub fn write_all(
         wind_table(findings),
         sensitivity_table(findings),
         calendar_table(findings),
+        obstacle_table(findings),
     ];
     for table in tables.iter().filter(|t| !t.rows.is_empty()) {
         let name = format!("{}.csv", table.name);
@@ -67,6 +69,10 @@ pub fn write_all(
     if let Some(layer) = lonlat_patches(sheet, findings, sources) {
         write_geojson(&folder.join("patches.geojson"), &layer)?;
         written.push("patches.geojson".into());
+    }
+    if let Some(layer) = lonlat_outcrops(sheet, findings, sources) {
+        write_geojson(&folder.join("outcrops.geojson"), &layer)?;
+        written.push("outcrops.geojson".into());
     }
     Ok(written)
 }

@@ -4,6 +4,7 @@ mod body;
 mod calendar;
 mod ground;
 mod judges;
+mod obstacles;
 mod plate;
 mod sand;
 mod spacing;
@@ -32,6 +33,10 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
             Page::Ground => ground::show(ui, model, out),
             Page::Winds => winds::show(ui, model, out),
             Page::Plate => plate::show(ui, model, out),
+            Page::Obstacles => {
+                let finding = subject(ui, model, out);
+                obstacles::show(ui, model, finding, out);
+            }
             Page::Trend | Page::Spacing | Page::Verdict => {
                 let Some(finding) = subject(ui, model, out) else { return };
                 match model.view.page {
