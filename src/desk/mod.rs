@@ -26,8 +26,9 @@ pub use crate::files::wind_table::{DirectionSense, SpeedUnit, Stand, WindImport,
 pub use crate::study::bulk::LonLatBox;
 pub use answer::{Answer, absorb};
 pub use command::{
-    AskCommand, BodyCommand, Chord, Command, DrawCommand, JobCommand, ObstacleCommand, PatchCommand, PlateCommand,
-    RasterCommand, Record, SettingCommand, SheetCommand, ViewCommand, WindCommand, apply, listed,
+    AskCommand, BodyCommand, Chord, Command, DrawCommand, JobCommand, ObstacleCommand, PatchCommand,
+    PlateCommand, RasterCommand, Record, SettingCommand, SheetCommand, ViewCommand, WindCommand, apply,
+    listed,
 };
 pub use engine::SheetError;
 pub use history::{History, MergeKey};

@@ -49,7 +49,5 @@ pub use settings::{
     LettauConstant, ObstacleGround, ObstacleSettings, Priors, Settings, SpectrumSettings, StatisticsSettings,
     ThresholdLaw, TransportLaw, TrendSettings, VerdictSettings, WindSettings,
 };
-pub use sheet::{
-    Id, ImageKind, Obstacle, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry,
-};
+pub use sheet::{Id, ImageKind, Obstacle, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
 pub use sources::{OpenRaster, Sources};

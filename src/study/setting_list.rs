@@ -1,7 +1,7 @@
 //! Every setting of the sheet, each with its record.
 
-use super::{LettauConstant, ObstacleGround, ThresholdLaw, TransportLaw};
 use super::records::{Setting, SettingKind, SettingValue};
+use super::{LettauConstant, ObstacleGround, ThresholdLaw, TransportLaw};
 
 /// Numbers, automatic numbers and whole numbers are told apart by the field's type.
 macro_rules! number {

@@ -3,7 +3,7 @@
 use ventifact::assert_close;
 use ventifact::files::wind_table;
 use ventifact::ground::{Body, Seed, Work};
-use ventifact::science::wind::{Law, Site, Threshold, Transport, WindAssessment, WindSettings, assess};
+use ventifact::science::wind::{Site, WindAssessment, WindSettings, assess};
 
 use crate::field_data;
 

@@ -8,10 +8,7 @@ use ventifact::science::alignment::{
 };
 use ventifact::science::wind::quality;
 use ventifact::science::wind::regime::{flows, gathered};
-use ventifact::science::wind::threshold::COHESION;
-use ventifact::science::wind::{
-    Doubt, Drift, Law, Site, Threshold, Transport, WindAssessment, WindSettings, assess,
-};
+use ventifact::science::wind::{Drift, Law, Site, Transport, WindAssessment, WindSettings, assess};
 
 use crate::field_data;
 

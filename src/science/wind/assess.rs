@@ -129,7 +129,7 @@ pub fn assess(
         let by_practice = |v: f64| mill.drift_potential(v);
         let mut drift = movers.drift(drift_potential::UNIT, by_practice);
         if can_draw && drift.total > 0.0 {
-            intervals(&mut drift, &movers, by_practice, &plan, settings.resamples, seed, work)?;
+            intervals(&mut drift, &movers.cumulated(by_practice), &plan, settings.resamples, seed, work)?;
         }
         Some(drift)
     } else {
@@ -148,7 +148,7 @@ pub fn assess(
         });
     }
     let draws = if can_draw {
-        intervals(&mut flux, &movers, |v| mill.flux(v), &plan, settings.resamples, seed, work)?;
+        intervals(&mut flux, &movers.cumulated(|v| mill.flux(v)), &plan, settings.resamples, seed, work)?;
         redraw(&movers, &mill, &plan, settings, seed, work)?
     } else {
         Vec::new()

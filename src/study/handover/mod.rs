@@ -4,10 +4,10 @@ mod bodies;
 mod json;
 mod layers;
 mod methods;
+mod obstacles;
+mod records;
 mod sand;
 mod weighing;
-mod records;
-mod obstacles;
 mod write;
 
 pub use json::findings_json;

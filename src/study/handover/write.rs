@@ -7,9 +7,9 @@ use crate::files::save;
 use crate::study::{Findings, Sheet, Sources};
 
 use super::layers::{layers, lonlat_patches, node_table, patch_table, verdict_table, wind_table};
-use super::weighing::{flip_table, sensitivity_table, together_table};
-use super::records::calendar_table;
 use super::obstacles::{lonlat_outcrops, obstacle_table};
+use super::records::calendar_table;
+use super::weighing::{flip_table, sensitivity_table, together_table};
 use super::{bibtex, findings_json};
 
 /// A file that could not be written.
