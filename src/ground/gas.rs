@@ -199,7 +199,8 @@ impl GasState {
     /// `"N2 98.5 %, CH4 1.5 %; 1.467 bar, 94 K"`.
     pub fn in_words(&self) -> String {
         let sum: f64 = self.mix.iter().map(|part| part.share).sum();
-        let percent = |part: &GasShare| format!("{} {} %", part.gas.label(), tidy(100.0 * part.share / sum, 4));
+        let percent =
+            |part: &GasShare| format!("{} {} %", part.gas.label(), tidy(100.0 * part.share / sum, 4));
         let mix: Vec<_> = self.mix.iter().map(percent).collect();
         let pressure = match self.pressure_pa {
             p if p >= 1e4 => format!("{} bar", tidy(p / 1e5, 6)),
