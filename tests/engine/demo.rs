@@ -4,9 +4,10 @@ use std::sync::OnceLock;
 
 use ventifact::ground::{Axis, Point, Work};
 use ventifact::science::scene::reach::{self, PatchTruth};
+use ventifact::study::handover::findings_json;
 use ventifact::study::run::{Memo, run};
 use ventifact::study::sheet_file::SheetFile;
-use ventifact::study::{Findings, PatchFinding, Sheet, Sources, demo};
+use ventifact::study::{Birth, Findings, PatchFinding, Sheet, Sources, demo};
 
 /// The demo's sheet and findings, made once for all tests of this file.
 fn reach_findings() -> &'static (Sheet, Findings, tempfile::TempDir) {
@@ -161,4 +162,25 @@ fn nodes_lie_inside_their_patch() {
             finding.name
         );
     }
+}
+
+/// Kilometre dunes are no first dunes; what starts the sand is handed over with its range.
+#[test]
+fn the_long_dunes_are_grown_and_the_thresholds_go_out_with_their_ranges() {
+    let (sheet, findings, _) = reach_findings();
+    let (long, _) = patch("Long dunes");
+    let birth = long.birth.first().expect("the mast's air is known");
+    assert_eq!(birth.standing, Birth::Grown, "{}", birth.sentence);
+    let spacing = long.spectrum.spacing.expect("a spacing");
+    assert!(birth.ratio[0] < spacing / 9.0 && spacing / 9.0 < birth.ratio[1], "{:?}", birth.ratio);
+
+    let text = findings_json(sheet, findings);
+    let json: serde_json::Value = serde_json::from_str(&text).expect("a document");
+    let sand = &json["winds"][0]["sand"];
+    let laws: Vec<_> = sand["thresholds"].as_array().expect("a list").iter().map(|t| &t["law"]).collect();
+    assert_eq!(laws, ["Bagnold", "Iversen–White", "Shao–Lu"]);
+    let chosen = sand["thresholds"][2]["ustar_m_per_s"]["value"].as_f64();
+    assert_eq!(chosen, json["winds"][0]["threshold_ustar_m_per_s"].as_f64(), "the threshold used");
+    assert_eq!(json["patches"][0]["birth"][0]["standing"], "grown");
+    assert!(json["patches"][2]["birth"].as_array().expect("a list").is_empty(), "no spacing, no birth");
 }

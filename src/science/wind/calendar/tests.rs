@@ -1,3 +1,5 @@
+//! Yearly, monthly and seasonal drift of records made by hand.
+
 use super::*;
 use crate::ground::Stopped;
 
