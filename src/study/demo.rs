@@ -141,6 +141,7 @@ fn import() -> WindImport {
         zero_direction: ZeroDirection::North,
         day_first: false,
         only: None,
+        gust: None,
     }
 }
 

@@ -6,7 +6,9 @@
 
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
-use super::{CalendarFinding, DriftFinding, Id, RoundingFinding, SeasonFinding, SetAside, ThinningFinding};
+use super::{
+    CalendarFinding, DriftFinding, GustFinding, Id, RoundingFinding, SeasonFinding, SetAside, ThinningFinding,
+};
 
 /// All results of one run.
 #[derive(Clone, Debug, Default, PartialEq)]
@@ -190,6 +192,8 @@ pub struct WindFinding {
     /// What longer intervals and coarser classes would have hidden.
     pub thinning: Option<ThinningFinding>,
     pub rounding: RoundingFinding,
+    /// An upper bound by the gusts of the record; `None` when it has none.
+    pub gusts: Option<GustFinding>,
 }
 
 /// A patch judged by one wind record.

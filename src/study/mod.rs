@@ -23,6 +23,7 @@ pub mod window;
 pub mod winds;
 
 pub use crate::science::wind::calendar::{Calendar as CalendarFinding, Period as PeriodFinding};
+pub use crate::science::wind::gusts::Gusts as GustFinding;
 pub use crate::science::wind::quality::SetAside;
 pub use crate::science::wind::regime::{Drift as DriftFinding, Season as SeasonFinding};
 pub use crate::science::wind::rounding::Rounding as RoundingFinding;

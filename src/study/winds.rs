@@ -79,6 +79,7 @@ pub fn study(
         calendar: a.calendar,
         thinning: a.thinning,
         rounding: a.rounding,
+        gusts: a.gusts,
     };
     Ok(WindStudy { finding, regime: a.regime, draws: a.draws })
 }
