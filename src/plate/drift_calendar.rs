@@ -28,10 +28,11 @@ pub fn drift_calendar(calendar: &CalendarFinding, width_mm: f64, theme: &Theme) 
         y += strip(&mut sketch, &years, y, width_mm, theme);
     }
     let unit = calendar.months.first().map_or("", |m| m.drift.unit);
+    let each = if calendar.years.len() > 1 { " or of the year" } else { "" };
+    let periods = || calendar.months.iter().chain(&calendar.years);
+    let pale = if periods().all(PeriodFinding::is_complete) { "" } else { "; pale: rows missing" };
     let caption = format!(
-        "bars: what a month gives to the year, {unit}{}; line: 95 %\narrow: where it goes, ring = resultant/total 1; \
-         wedge: 95 %\npale: rows for less than nine tenths of the time",
-        if calendar.years.len() > 1 { ", and each year" } else { "" }
+        "bar: sand of the month{each}, {unit}\nline: its 95 % interval{pale}\narrow: where it goes; ring: resultant/total 1"
     );
     let look = Type::new(theme.text.small, theme.ink_soft).anchored(TextAnchor::Middle);
     y += sketch.paragraph(Point::new(0.5 * width_mm, y), &caption, look, width_mm);
@@ -94,7 +95,7 @@ fn compass(sketch: &mut Sketch, period: &PeriodFinding, centre: Point, ring: f64
     let (Some(azimuth), Some(ratio)) = (period.drift.toward, period.drift.ratio) else { return };
     if let Some(half) = period.drift.toward_ci95_half_deg.filter(|h| *h < 180.0) {
         let wedge = sector(centre, 0.0, ring, azimuth.deg() - half, azimuth.deg() + half);
-        sketch.polygon(wedge, Some(theme.tint(theme.predicted, 0.22)), None);
+        sketch.polygon(wedge, Some(theme.tint(theme.predicted, 0.3)), None);
     }
     let length = ratio * ring;
     let head = 1.3f64.min(0.7 * length);

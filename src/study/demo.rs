@@ -142,6 +142,7 @@ fn import() -> WindImport {
         zero_direction: ZeroDirection::North,
         day_first: false,
         only: None,
+        gust: None,
     }
 }
 

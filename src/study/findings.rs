@@ -8,8 +8,8 @@ use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, San
 
 use super::{
     BackwardsFinding, BirthFinding, BuildingFinding, CalendarFinding, DriftFinding, ElongationFinding,
-    EquivalenceFinding, Id, MigrationFinding, ObstaclesFinding, RoundingFinding, SandFinding, SeasonFinding,
-    SensitivityFinding, SetAside, ThinningFinding,
+    EquivalenceFinding, GustFinding, Id, MigrationFinding, ObstaclesFinding, RoundingFinding, SandFinding,
+    SeasonFinding, SensitivityFinding, SetAside, ThinningFinding,
 };
 
 /// All results of one run.
@@ -210,6 +210,8 @@ pub struct WindFinding {
     /// What longer intervals and coarser classes would have hidden.
     pub thinning: Option<ThinningFinding>,
     pub rounding: RoundingFinding,
+    /// An upper bound by the gusts of the record; `None` when it has none.
+    pub gusts: Option<GustFinding>,
 }
 
 /// A patch judged by one wind record.

@@ -270,6 +270,7 @@ mod tests {
             direction: DirectionSense::From,
             missing: Vec::new(),
             only: None,
+            gust: None,
             zero_direction: ZeroDirection::North,
             day_first: false,
         };

@@ -33,6 +33,7 @@ pub use crate::science::alignment::migration::Migration as MigrationFinding;
 pub use crate::science::alignment::{Building as BuildingFinding, Elongation as ElongationFinding};
 pub use crate::science::wind::Sensitivity as SensitivityFinding;
 pub use crate::science::wind::calendar::{Calendar as CalendarFinding, Period as PeriodFinding};
+pub use crate::science::wind::gusts::Gusts as GustFinding;
 pub use crate::science::wind::quality::SetAside;
 pub use crate::science::wind::regime::{Drift as DriftFinding, Season as SeasonFinding};
 pub use crate::science::wind::rounding::Rounding as RoundingFinding;

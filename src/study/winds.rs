@@ -101,6 +101,7 @@ pub fn study(
         calendar: a.calendar,
         thinning: a.thinning,
         rounding: a.rounding,
+        gusts: a.gusts,
     };
     Ok(WindStudy { finding, foresight, what_if })
 }

@@ -97,6 +97,9 @@ fn layout(ui: &mut Ui, import: &Import, how: &mut WindImport) {
             let columns = || (0..count).map(|column| (column, name(column)));
             choice(ui, "Speed is in", speed, columns());
             choice(ui, "Direction is in", direction, columns());
+            let none = std::iter::once((None, "none".to_owned()));
+            let gusts = none.chain(columns().map(|(column, name)| (Some(column), name)));
+            choice(ui, "Gusts are in", &mut how.gust, gusts);
             time_columns(ui, time);
         }
         WindLayout::Components { time, east, north } => {

@@ -19,7 +19,7 @@ fn assessed(test: &str, file: &str, height_m: f64) -> Option<WindAssessment> {
     println!("{file}");
     print_thinning(&found);
     print_calendar(&found);
-    println!("  {:?}", found.rounding);
+    println!("  {:?}, gusts {:?}", found.rounding, found.gusts);
     Some(found)
 }
 
@@ -124,5 +124,10 @@ fn the_airport_reports_tens_of_degrees_and_whole_knots() {
     assert_eq!((found.rounding.direction_deg, found.rounding.speed_unit), (Some(10.0), "knots"));
     // sin(5°)/(5° in radians) = 0.998731.
     assert_close!(found.rounding.grouping_factor(), 1.0 / 0.998_731, 1e-6, "grouping factor");
+    let gusts = found.gusts.as_ref().expect("the airport reports gusts");
+    assert!(
+        gusts.drift.total > found.flux.total && gusts.factor.is_some_and(|f| (1.0..2.5).contains(&f)),
+        "{gusts:?}"
+    );
     assert!(found.rounding.speed_gain.is_some_and(|gain| gain > 0.0 && gain < 0.2));
 }

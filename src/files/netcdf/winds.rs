@@ -144,7 +144,7 @@ impl Netcdf {
             let time = stamp.and_then(|t| clock.seconds(t));
             WindSample { line: row as u32 + 1, time, speed, from, weight: 1.0 }
         });
-        Ok(WindRecord { samples: samples.collect(), is_table: false })
+        Ok(WindRecord { samples: samples.collect(), is_table: false, gusts: Vec::new() })
     }
 
     fn unsupported(&self, feature: impl Into<String>) -> FileError {

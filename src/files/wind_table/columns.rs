@@ -92,6 +92,16 @@ pub(super) fn components(columns: &[Column], taken: &[usize]) -> Option<(usize, 
     Some((east, north))
 }
 
+/// A column named for gusts, with numbers in it.
+pub(super) fn gust(columns: &[Column]) -> Option<usize> {
+    columns.iter().position(|column| {
+        let words = words(&column.name);
+        let has = |list: &[&str]| words.iter().any(|w| list.contains(&w.as_str()));
+        let beside = has(&["dir", "direction", "source", "src", "uncert", "flag", "qc", "code", "time"]);
+        has(&["gust", "gusts", "windgust", "wgust"]) && !beside && column.values().next().is_some()
+    })
+}
+
 /// Columns that say where a row belongs: longitude and latitude, or a station.
 pub(super) struct Places {
     pub lonlat: Option<[usize; 2]>,

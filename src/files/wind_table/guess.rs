@@ -153,6 +153,7 @@ fn frequency_import(text: &str, shape: &Shape, notes: &mut Notes) -> Option<Wind
         zero_direction: ZeroDirection::North,
         day_first: false,
         only: None,
+        gust: None,
     })
 }
 
@@ -186,6 +187,10 @@ fn series_import(text: &str, shape: &Shape, notes: &mut Notes) -> Result<WindImp
     }
     let speed_unit = speed_unit(&columns[speed], &missing, shape, notes);
     let day_first = day_order(text, shape, &time, notes);
+    let gust = columns::gust(&columns);
+    if let Some(at) = gust {
+        notes.reasons.push(format!("gusts in column {} ({:?}): by its name", at + 1, columns[at].name));
+    }
     Ok(WindImport {
         delimiter: shape.delimiter,
         header_lines: shape.header_lines,
@@ -196,6 +201,7 @@ fn series_import(text: &str, shape: &Shape, notes: &mut Notes) -> Result<WindImp
         missing,
         day_first,
         only: None,
+        gust,
     })
 }
 
@@ -238,6 +244,7 @@ fn components_import(
         layout: WindLayout::Components { time, east, north },
         missing,
         only: None,
+        gust: columns::gust(columns),
     }
 }
 

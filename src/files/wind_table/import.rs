@@ -26,6 +26,9 @@ pub struct WindImport {
     /// The rows that belong to the record, in a table of several stations or cells; all rows when absent.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub only: Option<OnlyRows>,
+    /// The column of gusts, in the speed unit, where there is one.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub gust: Option<usize>,
 }
 
 /// The rows of one station or cell: those whose cells in `columns` read `values`.

@@ -112,6 +112,7 @@ impl WindImport {
             zero_direction: ZeroDirection::North,
             day_first: false,
             only: None,
+            gust: None,
         }
     }
 }

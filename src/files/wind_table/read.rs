@@ -106,6 +106,7 @@ fn series(text: &str, import: &WindImport, time: &[usize], pair: Pair) -> Result
         |value: f64| import.missing.iter().any(|code| (code - value).abs() < 1e-6 * code.abs().max(1.0));
 
     let mut samples = Vec::new();
+    let mut gusts = Vec::new();
     let mut short = None;
     let (mut no_first, mut no_second, mut no_time) =
         (Misfits::default(), Misfits::default(), Misfits::default());
@@ -148,6 +149,11 @@ fn series(text: &str, import: &WindImport, time: &[usize], pair: Pair) -> Result
             }
             at
         };
+        // A gust is only reported where there was one, so whatever is no number is none.
+        gusts.extend(import.gust.map(|column| match cells.get(column).map(|c| cell(c, decimal_comma)) {
+            Some(Cell::Number(value)) if !missing(value) && value >= 0.0 => Some(value * unit),
+            _ => None,
+        }));
         samples.push(WindSample { line, time: at, speed: value, from, weight: 1.0 });
         true
     });
@@ -167,7 +173,7 @@ fn series(text: &str, import: &WindImport, time: &[usize], pair: Pair) -> Result
     if let Some((line, cell, count)) = no_time.verdict(rows) {
         return Err(WindFileError::NotTimes { line, cell, count, rows });
     }
-    Ok(WindRecord { samples, is_table: false })
+    Ok(WindRecord { samples, is_table: false, gusts })
 }
 
 /// The azimuth the wind blows from.

@@ -7,6 +7,7 @@ use crate::ground::{Caution, Regime, SandFlow, Seed, Stopped, WindRecord, WindSa
 use super::bootstrap::{CELLS_PER_BLOCK, FEWEST_BLOCKS, Plan, intervals};
 use super::calendar::{Calendar, CalendarSettings, calendar};
 use super::drift_potential;
+use super::gusts::{Gusts, gusts};
 use super::mill::{Mill, YEAR_S};
 use super::movers::Movers;
 use super::quality::{self, Checked, SetAside};
@@ -55,6 +56,8 @@ pub struct WindAssessment {
     /// What a longer interval or coarser classes would have hidden.
     pub thinning: Option<Thinning>,
     pub rounding: Rounding,
+    /// An upper bound by the gusts of the record.
+    pub gusts: Option<Gusts>,
 }
 
 /// The drift had another law or threshold been chosen.
@@ -166,6 +169,7 @@ pub fn assess(
     let calendar = calendar(&kept, |v| mill.flux(v), &by_calendar, seed, work)?;
     let thinning = thinning(&kept, interval_s.filter(|_| !record.is_table), |v| mill.flux(v), work)?;
     let rounding = rounding(&kept, |v| mill.flux(v));
+    let gusts = gusts(record, &kept, |v| mill.flux(v), mill.unit());
 
     Ok(WindAssessment {
         rows: record.samples.len(),
@@ -191,6 +195,7 @@ pub fn assess(
         calendar,
         thinning,
         rounding,
+        gusts,
     })
 }
 
@@ -355,7 +360,7 @@ mod tests {
                 }
             })
             .collect();
-        WindRecord { samples, is_table: false }
+        WindRecord { samples, is_table: false, gusts: Vec::new() }
     }
 
     #[test]

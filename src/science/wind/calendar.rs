@@ -117,6 +117,8 @@ const COMPLETE: f64 = 0.9;
 const ENOUGH_YEARS: usize = 5;
 /// Blocks a period must hold for an interval.
 const FEWEST_BLOCKS: usize = 3;
+/// Share of draws that must move sand for an interval of the ratio.
+const SAID: f64 = 0.95;
 /// How far from its place in the year a block may come, days.
 const SEASON_REACH: usize = 30;
 
@@ -185,34 +187,43 @@ pub fn calendar(
     }
     work.phase("drift by the calendar", 0);
     let spliced = is_spliced(kept);
-    let part = |name: &str, year_of: fn(i64) -> i32, holds: &dyn Fn(usize) -> bool| {
-        let days = days.iter().filter(|(day, _)| holds(year_and_month(day * DAY).1));
-        (name.to_owned(), stretches(days, year_of))
-    };
     let own_year = |day: i64| year_and_month(day * DAY).0;
+    // December opens the winter of the year that follows.
+    let winter_year = |day: i64| {
+        let (year, month) = year_and_month(day * DAY);
+        year + i32::from(month == 11)
+    };
+    // The months of a year put together from several are one year.
+    let part = |year_of: fn(i64) -> i32, holds: &dyn Fn(usize) -> bool| {
+        let days = days.iter().filter(|(day, _)| holds(year_and_month(day * DAY).1));
+        let mut parts = stretches(days, if spliced { |_| 0 } else { year_of });
+        // A lone row, as midnight written 24:00, is no month of its own.
+        if parts.iter().any(|p| p.days.len() > 1) {
+            parts.retain(|p| p.days.len() > 1);
+        }
+        parts
+    };
     let mut found = Calendar::default();
     for (month, name) in MONTHS.into_iter().enumerate() {
-        let (name, parts) = part(name, own_year, &|m| m == month);
+        let parts = part(own_year, &|m| m == month);
         let expected = MONTH_DAYS[month] * parts.len() as f64;
-        found.months.extend(period(name, &parts, [MONTH_DAYS[month], expected], settings, seed, work)?);
+        found.months.extend(period(
+            name.into(),
+            &parts,
+            [MONTH_DAYS[month], expected],
+            settings,
+            seed,
+            work,
+        )?);
     }
     for (season, name) in SEASONS.into_iter().enumerate() {
-        // December opens the winter of the year that follows.
-        let winter_year = |day: i64| {
-            let (year, month) = year_and_month(day * DAY);
-            year + i32::from(month == 11)
-        };
         let in_season = |m: usize| (m + 1) % 12 / 3 == season;
-        let (name, mut parts) = part(name, winter_year, &in_season);
-        if spliced {
-            let days = parts.drain(..).flat_map(|p| p.days).collect();
-            parts = vec![Stretch { year: 0, days }];
-        }
+        let parts = part(winter_year, &in_season);
         let length: f64 = (0..12).filter(|m| in_season(*m)).map(|m| MONTH_DAYS[m]).sum();
         // A record from January to December has two halves of a winter, which make one.
         let most = found.months.iter().filter(|m| in_season(month_named(&m.name))).map(|m| m.years).max();
         let expected = length * most.unwrap_or(1) as f64;
-        found.seasons.extend(period(name, &parts, [length, expected], settings, seed, work)?);
+        found.seasons.extend(period(name.into(), &parts, [length, expected], settings, seed, work)?);
     }
     if !spliced {
         for stretch in stretches(days.iter(), own_year) {
@@ -366,14 +377,16 @@ fn intervals(
         let drawn = draw(&mut stream).drift(settings.unit, share);
         totals.push(drawn.total);
         ratios.extend(drawn.ratio);
-        turns.extend(found.drift.toward.zip(drawn.toward).map(|(a, b)| b.turn_from(a).abs()));
+        // A draw without sand leaves the direction open.
+        turns.extend(found.drift.toward.map(|a| drawn.toward.map_or(180.0, |b| b.turn_from(a).abs())));
     }
     let range = |values: &mut Vec<f64>| {
         values.sort_by(f64::total_cmp);
         (!values.is_empty()).then(|| [of_sorted(values, 0.025), of_sorted(values, 0.975)])
     };
     found.total_ci95 = range(&mut totals);
-    found.drift.ratio_ci95 = range(&mut ratios);
+    let said = ratios.len() as f64 >= SAID * f64::from(settings.resamples);
+    found.drift.ratio_ci95 = range(&mut ratios).filter(|_| said);
     turns.sort_by(f64::total_cmp);
     found.drift.toward_ci95_half_deg = (!turns.is_empty()).then(|| of_sorted(&turns, 0.95));
     Ok(())

@@ -6,6 +6,7 @@ mod bootstrap;
 pub mod calendar;
 mod coverage;
 pub mod drift_potential;
+pub mod gusts;
 pub mod law;
 pub mod log_law;
 mod mill;
@@ -42,6 +43,7 @@ pub const METHODS: &[&Method] = &[
     &regime::METHOD,
     &bootstrap::METHOD,
     &calendar::METHOD,
+    &gusts::METHOD,
     &rounding::METHOD,
     &thinning::METHOD,
     &saturation::SETTLING,

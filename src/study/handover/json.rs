@@ -154,6 +154,7 @@ fn wind(w: &WindFinding) -> Value {
         "calendar": w.calendar.as_ref().map(records::calendar),
         "thinning": w.thinning.as_ref().map(records::thinning),
         "rounding": records::rounding(&w.rounding),
+        "gusts": w.gusts.as_ref().map(|g| json!({ "rows": g.rows, "factor": g.factor, "flux_at_most": drift(&g.drift) })),
         "cautions": cautions(&w.cautions),
     })
 }

@@ -38,6 +38,15 @@ pub fn show(ui: &mut Ui, model: &Model, finding: &WindFinding) {
         thinned(ui, model, thinning);
     }
     rounded(ui, finding);
+    if let Some(gusts) = &finding.gusts {
+        ui.label(format!(
+            "Gusts in {} rows{}: had each blown for its whole interval, the total would be {} {}, a bound and no law.",
+            gusts.rows,
+            gusts.factor.map(|f| format!(", {f:.2} times the mean")).unwrap_or_default(),
+            numbers::significant(gusts.drift.total, 3),
+            gusts.drift.unit
+        ));
+    }
 }
 
 fn thinned(ui: &mut Ui, model: &Model, thinning: &ThinningFinding) {

@@ -315,6 +315,7 @@ pub fn wind_finding() -> WindFinding {
         calendar: None,
         thinning: None,
         rounding: Default::default(),
+        gusts: None,
     }
 }
 

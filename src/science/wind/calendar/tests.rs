@@ -141,3 +141,27 @@ fn a_typical_year_has_months_but_no_years_and_without_a_clock_there_is_no_calend
     let kept = record(365 * 24, |_, _| (1.0, 10.0));
     assert_eq!(calendar(&kept, |v| v, &settings(), Seed(1), &work), Err(Stopped));
 }
+
+#[test]
+fn a_month_moved_by_one_storm_does_not_know_its_direction() {
+    // One windy day in August, the rest still: most draws without it say nothing.
+    let kept = record(365 * 24, |hour, _| {
+        let day = hour / 24;
+        (if (31..60).contains(&day) || day == 220 { 5.0 } else { 0.0 }, 40.0)
+    });
+    let found = of(&kept);
+    let half = |month: usize| found.months[month].drift.toward_ci95_half_deg;
+    crate::assert_close!(half(1).unwrap_or(f64::NAN), 0.0, 1e-6, "February blows all the time");
+    assert_eq!((found.months[7].name.as_str(), half(7)), ("August", Some(180.0)));
+    assert_eq!(found.months[7].drift.ratio_ci95, None);
+}
+
+#[test]
+fn the_last_midnight_is_no_year_of_its_own() {
+    // Rows at the end of their hour: the last one is midnight of the new year.
+    let mut kept = record(365 * 24, |_, _| (1.0, 10.0));
+    kept.iter_mut().for_each(|s| s.time = s.time.map(|t| t + HOUR));
+    let found = of(&kept);
+    assert_eq!((found.years.len(), found.months[0].years), (1, 1));
+    assert!(found.months.iter().all(Period::is_complete) && found.seasons.iter().all(Period::is_complete));
+}
