@@ -270,6 +270,7 @@ fn turns(
     let (right, foot) = (at.x + width - 0.6, top + height);
     let crest_turn = std::f64::consts::FRAC_PI_2 - finding.crest.rad();
     let flow = Flow::round(finding.shape);
+    let annulus = seen(finding, &flow, annulus);
     let predicted = |phi_deg: f64| -> Vec<f64> {
         (0..=72).map(|k| mean_turn(&flow, crest_turn, phi_deg, f64::from(k) * 5.0, annulus)).collect()
     };
@@ -314,7 +315,11 @@ fn turns(
         let text = format!("{deg:.0}°");
         sketch.text(Point::new(x(deg), foot + 0.9 + theme.text.small), text, small.anchored(anchor));
     }
-    sketch.text(Point::new(at.x, at.y + theme.text.small), "turn of the crests, counter-clockwise", small);
+    sketch.text(
+        Point::new(at.x, at.y + theme.text.small),
+        "turn of the crests by bearing from their axis (counter-clockwise)",
+        small,
+    );
     let curve = |values: &[f64]| -> Vec<Point> {
         values.iter().enumerate().map(|(k, v)| Point::new(x(5.0 * k as f64), y(*v))).collect()
     };
@@ -346,6 +351,13 @@ fn turns(
     }
     used += 1.9 * theme.text.small;
     used
+}
+
+/// The part of the annulus that nodes were measured in: those at its inner edge would read the outcrop itself.
+fn seen(finding: &ObstacleFinding, flow: &Flow, [inner, outer]: [f64; 2]) -> [f64; 2] {
+    let used = finding.around.iter().filter(|n| n.used).map(|n| flow.radii(n.at));
+    let nearest = used.fold(f64::INFINITY, f64::min);
+    [if nearest < outer { inner.max(nearest) } else { inner }, outer]
 }
 
 /// Lower quartile, median and upper quartile of the turns in each sector, at its middle bearing (degrees

@@ -17,7 +17,7 @@ pub fn show(ui: &mut Ui, model: &Model, finding: Option<&PatchFinding>, out: &mu
     });
     list(ui, model, out);
     let Some(found) = finding.and_then(|f| f.obstacles.as_ref()) else {
-        if finding.is_some() {
+        if finding.is_some_and(|f| model.session.results.standing(f.id).is_current()) {
             say(ui, model, "No outcrop stands in this patch: it must hold half of the ground round one.");
         }
         return;
