@@ -120,17 +120,16 @@ impl Theme {
 }
 
 impl Page {
-    pub const ALL: [Self; 8] =
-        [
-            Self::Ground,
-            Self::Trend,
-            Self::Spacing,
-            Self::Winds,
-            Self::Verdict,
-            Self::Regimes,
-            Self::Obstacles,
-            Self::Plate,
-        ];
+    pub const ALL: [Self; 8] = [
+        Self::Ground,
+        Self::Trend,
+        Self::Spacing,
+        Self::Winds,
+        Self::Verdict,
+        Self::Regimes,
+        Self::Obstacles,
+        Self::Plate,
+    ];
 
     pub fn label(self) -> &'static str {
         match self {

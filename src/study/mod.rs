@@ -1,7 +1,7 @@
 //! The study: the sheet (document), its settings, the one executor, and the findings it returns.
 
-pub mod bulk;
 mod backwards;
+pub mod bulk;
 mod cautions;
 pub mod check;
 pub mod demo;

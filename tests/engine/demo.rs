@@ -127,6 +127,26 @@ fn the_outcrops_tell_the_obliquity_they_were_made_with() {
     );
 }
 
+/// The long dunes were laid along the direction in which their winds extend crests; a bed covered with sand
+/// would have raised them more than 20° away.
+#[test]
+fn the_long_dunes_are_told_to_be_fingers_and_the_threshold_could_change_that() {
+    let (finding, _) = patch("Long dunes");
+    let verdict = &finding.verdicts[0];
+    for theory in &verdict.theories {
+        println!("{:<34} {:?} {:.2} {:.3}", theory.name, theory.axis, theory.ln_bayes_factor, theory.posterior);
+    }
+    let best = verdict.theories.iter().max_by(|a, b| a.posterior.total_cmp(&b.posterior)).unwrap();
+    assert_eq!(best.name, "fingering", "{}", finding.sentence);
+    assert!(verdict.building.extended > 0.8, "{:?}", verdict.building);
+    assert!(verdict.supply_ln.unwrap() < -2.0, "starved ground: {:?}", verdict.supply_ln);
+    for flip in &verdict.flips {
+        println!("{} now {} at {}: {} ({:?})", flip.parameter, flip.now, flip.at, flip.change, flip.reach);
+    }
+    assert!(verdict.flips.iter().any(|f| f.parameter == "threshold"), "{:?}", verdict.flips);
+    assert!(finding.sentence.contains("fingering"), "{}", finding.sentence);
+}
+
 #[test]
 fn one_thread_and_two_give_the_same_bits_and_so_does_the_memo() {
     let (sheet, findings, _) = reach_findings();

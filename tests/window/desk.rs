@@ -13,7 +13,7 @@ use ventifact::desk::{
 use ventifact::ground::Work;
 use ventifact::study::run::{Memo, run};
 use ventifact::study::sheet_file::SheetFile;
-use ventifact::study::{Patch, Sources, demo};
+use ventifact::study::{Patch, Sources, WindChoice, demo};
 use ventifact::window::App;
 
 use crate::harness::window;
@@ -221,13 +221,16 @@ fn the_window_finds_what_the_command_line_finds() {
     give(&mut harness, Command::Sheet(SheetCommand::Open(path)));
     wait(&mut harness, "all findings", |model| {
         let current = |p: &Patch| model.session.results.standing(p.id) == Standing::Current;
-        !model.sheet.patches.is_empty() && model.sheet.patches.iter().all(current)
+        !model.sheet.patches.is_empty()
+            && model.sheet.patches.iter().all(current)
+            && model.session.results.together().is_some()
     });
     let results = &harness.state().app().model().session.results;
     for patch in &want.patches {
         let got = results.patch(patch.id).expect("the window has measured it");
         assert_eq!(format!("{got:?}"), format!("{patch:?}"), "{}", patch.name);
     }
+    assert_eq!(results.together(), Some(&want.together));
     for wind in &want.winds {
         let got = results.wind(wind.id).and_then(|w| w.outcome.as_ref().ok()).expect("the window has it");
         assert_eq!(format!("{got:?}"), format!("{wind:?}"), "{}", wind.name);
@@ -274,6 +277,60 @@ fn a_click_on_the_regime_map_picks_a_regime_and_the_ground_can_be_described() {
     assert_eq!(harness.state().app().model().sheet.patches[0].cover, cover);
     key(&mut harness, Modifiers::COMMAND, Key::Z);
     assert_ne!(harness.state().app().model().sheet.patches[0].cover, cover, "undo takes it back");
+}
+
+/// A record is imported, then the threshold raised by typing: the dial and the sentence of the patch follow.
+#[test]
+fn an_imported_record_and_a_raised_threshold_move_the_verdict() {
+    let (folder, sheet) = demo_on_disk();
+    let mut harness = open(blank(), [1440.0, 900.0]);
+    give(&mut harness, Command::Sheet(SheetCommand::Open(sheet)));
+    wait(&mut harness, "the mosaic", |model| model.shown_size().is_some());
+    let patch = harness.state().app().model().sheet.patches[0].id;
+    give(&mut harness, Command::Patch(PatchCommand::Select(Some(patch))));
+
+    give(&mut harness, Command::Wind(WindCommand::Preview(folder.path().join(demo::REACH_MAST))));
+    wait(&mut harness, "the preview", |model| {
+        model.session.import.as_ref().is_some_and(|import| import.outcome.is_some())
+    });
+    click(&mut harness, Role::Button, "Use this record");
+    let model = harness.state().app().model();
+    let third = model.sheet.winds.last().expect("three records").id;
+    assert_eq!(model.sheet.winds.len(), 3);
+    give(
+        &mut harness,
+        Command::Patch(PatchCommand::JudgeBy { id: patch, winds: WindChoice::Chosen(vec![third]) }),
+    );
+    let verdict = move |model: &Model| {
+        let current = model.session.results.standing(patch) == Standing::Current;
+        let finding = model.session.results.patch(patch).filter(|_| current)?;
+        let verdict = finding.verdicts.first().filter(|v| v.winds == third)?;
+        Some((verdict.obliquity_deg?, finding.sentence.clone()))
+    };
+    wait(&mut harness, "the verdict by the new record", move |model| verdict(model).is_some());
+    let (before, sentence) = verdict(harness.state().app().model()).expect("a verdict");
+    assert!(before < 15.0 && sentence.contains("longitudinal"), "{sentence}");
+
+    give(&mut harness, Command::View(ViewCommand::Page(Page::Winds)));
+    let label = "Threshold friction velocity, metres per second";
+    harness.get_by_role_and_label(Role::TextInput, label).focus();
+    harness.run_steps(2);
+    harness.get_by_role_and_label(Role::TextInput, label).type_text("0.24");
+    harness.run_steps(2);
+    key(&mut harness, Modifiers::NONE, Key::Enter);
+    assert_eq!(harness.state().app().model().sheet.settings.wind.threshold_ustar, Some(0.24));
+    wait(&mut harness, "the verdict by storms alone", move |model| {
+        verdict(model).is_some_and(|(now, text)| now > 40.0 && text != sentence)
+    });
+    give(&mut harness, Command::View(ViewCommand::Page(Page::Verdict)));
+    let name = harness.state().app().model().sheet.winds[2].name.clone();
+    let dial = format!("Dial of obliquity by {name}");
+    assert!(harness.query_by_role_and_label(Role::Image, &dial).is_some(), "the dial is drawn");
+    if let Some(path) = std::env::var_os("VERDICT_PICTURE") {
+        harness.render().expect("a picture").save(path).expect("saved");
+    }
+    key(&mut harness, Modifiers::COMMAND, Key::Z);
+    assert_eq!(harness.state().app().model().sheet.settings.wind.threshold_ustar, None, "undo");
 }
 
 /// Copies Halvane, puts the mast on the copy, and makes it heavier by typing: sand then starts later.

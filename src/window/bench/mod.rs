@@ -4,6 +4,7 @@ mod body;
 mod calendar;
 mod ground;
 mod judges;
+mod laws;
 mod obstacles;
 mod plate;
 mod regimes;

@@ -2,7 +2,7 @@
 
 use egui::{Grid, RichText, Ui};
 
-use super::{calendar, figure_mm, judges, sand, say};
+use super::{calendar, figure_mm, judges, laws, sand, say};
 use crate::desk::{Command, Model, WindCommand, facts};
 use crate::plate::{numbers, sand_rose};
 use crate::study::{WindEntry, WindFinding};
@@ -25,6 +25,7 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
         Some(Ok(finding)) => record(ui, model, finding),
     }
     mast(ui, wind, out);
+    laws::threshold(ui, model, out);
     sand::of_record(ui, model, wind, out);
     judges::show(ui, model, out);
     rule(ui, &look(model));
@@ -42,6 +43,7 @@ fn record(ui: &mut Ui, model: &Model, finding: &WindFinding) {
     ui.vertical_centered(|ui| figure::show(ui, &picture, theme::POINTS_PER_MM, &spoken));
     rule(ui, &look);
     controls::facts(ui, &look, &facts::winds(finding));
+    laws::show(ui, model, finding);
     sand::show(ui, model, finding);
     finding.cautions.iter().for_each(|c| caution(ui, &look, &c.text));
     if !finding.set_aside.is_empty() {
