@@ -227,15 +227,16 @@ impl Thinning {
         let (ratio, at) = (self.ratio?, thinned.ratio?);
         let averaged =
             thinned.averaged.ratio.map(|r| format!(", and {r:.3} of six-hour means")).unwrap_or_default();
+        let percent = |share: f64| format!("{:+.0}", 100.0 * (share - 1.0)).replace('-', "−");
         Some(format!(
             "Read every six hours, resultant over total would be {:.3} to {:.3} by the hour it starts instead of \
-             {ratio:.3} (at most {:.3} off){averaged}; total drift {:+.0} to {:+.0} %, with six-hour means {:+.0} %.",
+             {ratio:.3} (at most {:.3} off){averaged}; total drift {} to {} %, with six-hour means {} %.",
             at.low,
             at.high,
             (at.low - ratio).abs().max((at.high - ratio).abs()),
-            100.0 * (thinned.total.low - 1.0),
-            100.0 * (thinned.total.high - 1.0),
-            100.0 * (thinned.averaged.total - 1.0),
+            percent(thinned.total.low),
+            percent(thinned.total.high),
+            percent(thinned.averaged.total),
         ))
     }
 }

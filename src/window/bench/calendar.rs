@@ -83,7 +83,8 @@ fn thinned(ui: &mut Ui, model: &Model, thinning: &ThinningFinding) {
 
 fn rounded(ui: &mut Ui, finding: &WindFinding) {
     let r = &finding.rounding;
-    if let Some(step) = r.direction_deg {
+    // Steps of a degree or two shorten nothing that could be seen.
+    if let Some(step) = r.direction_deg.filter(|step| *step >= 5.0) {
         let gain = 100.0 * (r.grouping_factor() - 1.0);
         ui.label(format!(
             "Directions in steps of {}°: resultant and ratio are {:.2} % too short on that account.",
