@@ -27,7 +27,7 @@ pub fn laid(found: &BackwardsFinding, settings: &Settings, picked: PickedRegime)
 pub fn readout(found: &BackwardsFinding, settings: &Settings, at: PickedRegime) -> String {
     let Laid { implied, .. } = laid(found, settings, at);
     let trend =
-        implied.bed.first().map_or_else(|| "–".into(), |a| format!("{:03.0}°", a.deg().round() % 180.0));
+        implied.bed.first().map_or_else(|| "–".into(), |a| format!("{:.0}°", a.deg().round() % 180.0));
     format!(
         "divergence {:.0}°, N {:.2}: RDP/DP {:.2}, trend {trend}, obliquity {:.0}°",
         at.divergence_deg,

@@ -88,7 +88,7 @@ fn letter(sketch: &mut Sketch, name: &str, azimuth: Azimuth, centre: Point, radi
 
 fn words(sketch: &mut Sketch, implied: &Implied, observed: &[Observed], size_mm: f64, theme: &Theme) -> f64 {
     let axes = |list: &[Axis]| {
-        let each: Vec<String> = list.iter().map(|a| format!("{:03.0}°", a.deg().round() % 180.0)).collect();
+        let each: Vec<String> = list.iter().map(|a| format!("{:.0}°", a.deg().round() % 180.0)).collect();
         each.join(" or ")
     };
     let azimuth = |a: Azimuth| numbers::azimuth_with_interval(a, None);

@@ -8,7 +8,8 @@ use egui::{Key, Modifiers, Pos2, vec2};
 use egui_kittest::Harness;
 use egui_kittest::kittest::{NodeT as _, Queryable as _};
 use ventifact::desk::{
-    Command, Dialog, Model, Page, PatchCommand, SheetCommand, Standing, ViewCommand, WindCommand, listed,
+    Command, Dialog, Model, Page, PatchCommand, PickedRegime, SheetCommand, Standing, ViewCommand, WindCommand,
+    listed,
 };
 use ventifact::ground::Work;
 use ventifact::study::run::{Memo, run};
@@ -262,15 +263,11 @@ fn a_click_on_the_regime_map_picks_a_regime_and_the_ground_can_be_described() {
         harness.render().expect("a picture").save(path).expect("saved");
     }
 
-    // The same by keys: a number typed into the field.
-    let field = harness.get_by_role_and_label(Role::TextInput, "Divergence, degrees");
-    field.focus();
-    harness.run_steps(2);
-    key(&mut harness, Modifiers::COMMAND, Key::A);
-    harness.get_by_role_and_label(Role::TextInput, "Divergence, degrees").type_text("60");
-    harness.run_steps(2);
-    key(&mut harness, Modifiers::NONE, Key::Enter);
-    assert_eq!(harness.state().app().model().view.regime.expect("picked").divergence_deg, 60.0);
+    // A regime off the map is brought to its edge.
+    let off = PickedRegime { divergence_deg: 200.0, ratio: 0.5 };
+    give(&mut harness, Command::View(ViewCommand::Regime(Some(off))));
+    let regime = harness.state().app().model().view.regime.expect("picked");
+    assert_eq!((regime.divergence_deg, regime.ratio), (179.5, 1.0));
 
     let cover = ventifact::science::alignment::backwards::Cover::Starved;
     give(&mut harness, Command::Patch(PatchCommand::Cover { id, cover }));

@@ -124,7 +124,7 @@ fn picked(ui: &mut Ui, model: &Model, found: &BackwardsFinding, out: &mut Comman
     let spoken = format!("What the picked regime would make of {}", found.name);
     ui.vertical_centered(|ui| figure::show(ui, &picture, theme::POINTS_PER_MM, &spoken));
     let words = format!(
-        "Laid as fits best: dominant wind toward {:03.0}°, the other {} of it; chance of this lie {:.0} %.",
+        "Laid as fits best: dominant wind toward {:.0}°, the other {} of it; chance of this lie {:.0} %.",
         laid.lie.dominant.deg(),
         if laid.lie.clockwise { "clockwise" } else { "anticlockwise" },
         100.0 * laid.lie.chance
