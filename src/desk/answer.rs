@@ -21,6 +21,8 @@ pub enum Answer {
     Together(String, Box<TogetherFinding>),
     /// A wind file with what it is taken for.
     Preview(Box<Result<Import, String>>),
+    /// The first rows of the file in the preview, as they are cut now.
+    Cells(Vec<Vec<String>>),
     /// What the file in the preview gives.
     Reading(Result<Reading, String>),
     Plate(Result<Arc<Figure>, String>),
@@ -69,6 +71,11 @@ fn take(model: &mut Model, answer: Answer) {
             Ok(import) => session.import = Some(import),
             Err(why) => session.notices.problem(format!("No winds could be read: {why}")),
         },
+        Answer::Cells(cells) => {
+            if let Some(import) = &mut session.import {
+                import.cells = cells;
+            }
+        }
         Answer::Reading(outcome) => {
             if let Some(import) = &mut session.import {
                 import.outcome = Some(outcome);

@@ -3,7 +3,9 @@
 use crate::ground::{LengthUnit, Method};
 use crate::plate::numbers;
 use crate::science;
-use crate::study::{DriftFinding, OpenRaster, PatchFinding, RasterEntry, VerdictFinding, WindFinding, run};
+use crate::study::{
+    DriftFinding, ObstacleFinding, OpenRaster, PatchFinding, RasterEntry, VerdictFinding, WindFinding, run,
+};
 
 /// One row of a bench page.
 #[derive(Clone, Debug, PartialEq)]
@@ -364,6 +366,66 @@ fn degrees(value: f64) -> String {
     format!("{}°", numbers::fixed(value, 1))
 }
 
+/// One outcrop on the obstacles page; empty where it could not be tested.
+pub fn obstacle(finding: &ObstacleFinding) -> Vec<Fact> {
+    let Ok(test) = &finding.outcome else { return Vec::new() };
+    let (e, b) = (&test.estimate, |r: &crate::science::obstacle::AtRadius| r.b_s.hypot(r.b_c));
+    let mut facts = vec![
+        fact(
+            "Turn left over",
+            format!("{} beside {} of the trend as a whole", degrees(e.residual_deg), degrees(e.offset_deg)),
+            "Scatter that the flow does not explain, and the local lean from the regional trend, counter-clockwise.",
+        )
+        .by("obstacle.obliquity"),
+        fact(
+            "Far-field check",
+            format!(
+                "b sin {}, b cos {}",
+                numbers::fixed(e.quadrupole.b_s, 2),
+                numbers::fixed(e.quadrupole.b_c, 2)
+            ),
+            "The published regression on the two far-field harmonics; near the outcrop the exact flow turns more.",
+        )
+        .by("obstacle.obliquity"),
+        fact(
+            "Independent samples",
+            format!("{} of {} nodes", numbers::significant(e.n_eff, 2), e.n),
+            "What the nodes round it are worth, since neighbours say the same thing.",
+        )
+        .by("obstacle.residual-correlation"),
+    ];
+    if let (Some(first), Some(last)) = (test.over_radius.first(), test.over_radius.last()) {
+        let best = test.best_radius.map_or("the data do not tell which".to_owned(), |factor| {
+            format!("fits best at {}", numbers::fixed(factor, 2))
+        });
+        facts.push(
+            fact(
+                "If the radius errs",
+                format!(
+                    "amplitude {} at {}, {} at {}; {best}",
+                    numbers::fixed(b(first), 2),
+                    numbers::fixed(first.factor, 2),
+                    numbers::fixed(b(last), 2),
+                    numbers::fixed(last.factor, 2)
+                ),
+                "Amplitude with the outlined radius taken smaller and larger, on nodes beyond the largest.",
+            )
+            .by("obstacle.obliquity"),
+        );
+    }
+    if let Some(null) = &test.null {
+        facts.push(
+            fact(
+                "Virtual outcrops",
+                format!("{}, worth {} independent ones", null.count, numbers::fixed(null.independent, 0)),
+                "The same outline set down where none stands.",
+            )
+            .by("obstacle.virtual"),
+        );
+    }
+    facts
+}
+
 #[cfg(test)]
 mod tests {
     use super::{spacing, trend};
@@ -388,6 +450,7 @@ mod tests {
             sentence: String::new(),
             cautions: Vec::new(),
             birth: Vec::new(),
+            obstacles: None,
         };
         let facts = trend(&finding).into_iter().chain(spacing(&finding));
         for fact in facts.filter(|fact| !fact.method.is_empty()) {

@@ -23,15 +23,17 @@ mod tiles;
 mod view;
 
 pub use crate::files::raster::Bands;
-pub use crate::files::wind_table::{DirectionSense, SpeedUnit, WindImport, WindLayout, ZeroDirection};
+pub use crate::files::wind_table::{DirectionSense, SpeedUnit, Stand, WindImport, WindLayout, ZeroDirection};
+pub use crate::study::bulk::LonLatBox;
 pub use answer::{Answer, absorb};
 pub use command::{
-    AskCommand, BodyCommand, Chord, Command, DrawCommand, JobCommand, PatchCommand, PlateCommand,
-    RasterCommand, Record, SettingCommand, SheetCommand, ViewCommand, WindCommand, apply, listed,
+    AskCommand, BodyCommand, Chord, Command, DrawCommand, JobCommand, ObstacleCommand, PatchCommand,
+    PlateCommand, RasterCommand, Record, SettingCommand, SheetCommand, ViewCommand, WindCommand, apply,
+    listed,
 };
 pub use engine::SheetError;
 pub use history::{History, MergeKey};
-pub use import::{Import, ReadRow, Reading};
+pub use import::{Import, Pick, ReadRow, Reading};
 pub use jobs::{Delivery, Jobs, Post, Running, Slot, Wake};
 pub use model::Model;
 pub use notices::{Notice, NoticeKind, Notices};

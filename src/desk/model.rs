@@ -3,9 +3,9 @@
 
 use std::path::PathBuf;
 
-use crate::ground::Body;
+use crate::ground::{Body, LonLat, Point};
 use crate::study::judges::{self, Judges};
-use crate::study::{Id, Patch, RasterEntry, Sheet, WindEntry};
+use crate::study::{Id, Obstacle, Patch, RasterEntry, Sheet, WindEntry};
 
 use super::{Opened, Session, View, Wake, engine, laying, measuring, plates};
 
@@ -41,6 +41,10 @@ impl Model {
         self.view.patch.and_then(|id| self.sheet.patch(id))
     }
 
+    pub fn selected_obstacle(&self) -> Option<&Obstacle> {
+        self.view.obstacle.and_then(|id| self.sheet.obstacle(id))
+    }
+
     /// The wind record on the bench: the user's choice, the selected patch's own, or the first.
     pub fn shown_wind(&self) -> Option<&WindEntry> {
         let own = self.selected_patch().and_then(|patch| self.judges(patch).records.first().copied());
@@ -51,6 +55,23 @@ impl Model {
     /// The records that judge `patch`, as far as its raster is open.
     pub fn judges(&self, patch: &Patch) -> Judges {
         judges::of_patch(&self.sheet, patch, self.session.sources.get(&patch.raster).map(|o| &o.place))
+    }
+
+    /// The middle of each patch whose raster is open and lies on the body of the raster on the table; the
+    /// raster's own without patches.
+    pub(super) fn patch_centres(&self) -> Vec<LonLat> {
+        let place = |raster: &Id| self.session.sources.get(raster).map(|open| &open.place);
+        let body = self.shown_raster().and_then(|r| place(&r.id)).map(|p| p.body.name.clone());
+        let here = |raster: &Id| place(raster).filter(|p| Some(&p.body.name) == body.as_ref());
+        let of_patches = self.sheet.patches.iter().filter_map(|p| judges::centre(p, here(&p.raster)));
+        let centres: Vec<LonLat> = of_patches.collect();
+        if !centres.is_empty() {
+            return centres;
+        }
+        let middle = |(raster, [width, height]): (Id, [usize; 2])| {
+            place(&raster)?.lonlat_of(Point::new(0.5 * width as f64, 0.5 * height as f64))
+        };
+        self.shown_size().and_then(middle).into_iter().collect()
     }
 
     /// Whether the sheet differs from what is on disk.
@@ -108,6 +129,7 @@ impl Model {
         view.patch = view.patch.filter(|id| sheet.patch(*id).is_some());
         view.raster = view.raster.filter(|id| sheet.raster(*id).is_some());
         view.wind = view.wind.filter(|id| sheet.wind(*id).is_some());
+        view.obstacle = view.obstacle.filter(|id| sheet.obstacle(*id).is_some());
     }
 
     /// The sheet's file name, or its title while it has none.

@@ -91,6 +91,8 @@ pub enum Tool {
     Hole,
     /// Moves, adds and removes the corners of the selected patch.
     Corners,
+    /// Corners of an outcrop.
+    Outcrop,
 }
 
 /// An outline under way.
@@ -293,8 +295,8 @@ impl Opened {
 }
 
 impl Tool {
-    pub const ALL: [Self; 6] =
-        [Self::Hand, Self::Polygon, Self::Rectangle, Self::Ellipse, Self::Hole, Self::Corners];
+    pub const ALL: [Self; 7] =
+        [Self::Hand, Self::Polygon, Self::Rectangle, Self::Ellipse, Self::Hole, Self::Corners, Self::Outcrop];
 
     /// Whether the tool lays down points that become an outline.
     pub fn draws(self) -> bool {

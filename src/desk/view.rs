@@ -26,6 +26,8 @@ pub struct View {
     pub cameras: BTreeMap<Id, Camera>,
     pub layers: Layers,
     pub plate: PlateChoice,
+    /// The selected outcrop.
+    pub obstacle: Option<Id>,
     /// The regime picked on the map.
     pub regime: Option<PickedRegime>,
 }
@@ -49,6 +51,7 @@ pub enum Page {
     Winds,
     Verdict,
     Regimes,
+    Obstacles,
     Plate,
 }
 
@@ -117,8 +120,17 @@ impl Theme {
 }
 
 impl Page {
-    pub const ALL: [Self; 7] =
-        [Self::Ground, Self::Trend, Self::Spacing, Self::Winds, Self::Verdict, Self::Regimes, Self::Plate];
+    pub const ALL: [Self; 8] =
+        [
+            Self::Ground,
+            Self::Trend,
+            Self::Spacing,
+            Self::Winds,
+            Self::Verdict,
+            Self::Regimes,
+            Self::Obstacles,
+            Self::Plate,
+        ];
 
     pub fn label(self) -> &'static str {
         match self {
@@ -127,6 +139,7 @@ impl Page {
             Self::Spacing => "Spacing",
             Self::Winds => "Winds",
             Self::Verdict => "Verdict",
+            Self::Obstacles => "Obstacles",
             Self::Regimes => "Regimes",
             Self::Plate => "Plate",
         }

@@ -3,6 +3,7 @@
 pub mod error;
 pub mod georef;
 pub mod layers;
+pub mod netcdf;
 pub mod places;
 pub mod raster;
 pub mod save;

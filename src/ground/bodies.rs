@@ -56,7 +56,7 @@ const KNOWN: [Known; 7] = [
         name: "generic cold nitrogen moon",
         sources: [
             PRACTICE,
-            "0.14 of the Earth's: common practice, no source",
+            "About 0.14 of the Earth's: common practice, no source",
             "Nitrogen with 1.5 % methane at 1.467 bar and 94 K: common practice, no source (near the ground methane \
              is often put at 5 %, pressure at 1.45–1.5 bar); B cited from memory, −1.85·10⁻⁴ gives 0.5 % more density",
         ],

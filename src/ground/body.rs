@@ -115,7 +115,7 @@ impl Body {
     /// The gas and the air it makes, in one line.
     pub fn air_in_words(&self) -> String {
         let Some(Air { density, viscosity }) = self.air else { return "none that is known".into() };
-        let air = format!("density {} kg/m³, viscosity {viscosity:.3e} Pa s", tidy(density));
+        let air = format!("density {} kg/m³, viscosity {viscosity:.3e} Pa s", tidy(density, 4));
         self.gas.as_ref().map_or(air.clone(), |gas| format!("{}: {air}", gas.in_words()))
     }
 

@@ -199,19 +199,20 @@ impl GasState {
     /// `"N2 98.5 %, CH4 1.5 %; 1.467 bar, 94 K"`.
     pub fn in_words(&self) -> String {
         let sum: f64 = self.mix.iter().map(|part| part.share).sum();
-        let percent = |part: &GasShare| format!("{} {} %", part.gas.label(), tidy(100.0 * part.share / sum));
+        let percent =
+            |part: &GasShare| format!("{} {} %", part.gas.label(), tidy(100.0 * part.share / sum, 4));
         let mix: Vec<_> = self.mix.iter().map(percent).collect();
         let pressure = match self.pressure_pa {
-            p if p >= 1e4 => format!("{} bar", tidy(p / 1e5)),
-            p => format!("{} Pa", tidy(p)),
+            p if p >= 1e4 => format!("{} bar", tidy(p / 1e5, 6)),
+            p => format!("{} Pa", tidy(p, 6)),
         };
-        format!("{}; {pressure}, {} K", mix.join(", "), tidy(self.temperature_k))
+        format!("{}; {pressure}, {} K", mix.join(", "), tidy(self.temperature_k, 6))
     }
 }
 
-/// Four significant digits, so that 100 × 0.985 reads 98.5.
-pub(super) fn tidy(value: f64) -> f64 {
-    format!("{value:.3e}").parse().unwrap_or(value)
+/// To so many significant digits, so that 100 × 0.985 reads 98.5.
+pub(super) fn tidy(value: f64, digits: usize) -> f64 {
+    format!("{value:.*e}", digits - 1).parse().unwrap_or(value)
 }
 
 /// Density of an ideal gas, kg m⁻³: `pressure` Pa, `molar_mass` kg mol⁻¹, `temperature` K.
@@ -276,6 +277,8 @@ mod tests {
         let good = GasState::ideal(&[(Gas::Nitrogen, 0.985), (Gas::Methane, 0.015)], 1.467e5, 94.0);
         assert_eq!(good.problem(), None);
         assert_eq!(good.in_words(), "N2 98.5 %, CH4 1.5 %; 1.467 bar, 94 K");
+        let sea_level = GasState::ideal(&[(Gas::Air, 1.0)], 101_325.0, 288.15);
+        assert_eq!(sea_level.in_words(), "air 100 %; 1.01325 bar, 288.15 K");
         let percent = GasState::ideal(&[(Gas::Nitrogen, 98.5)], 1e5, 94.0);
         assert!(percent.problem().expect("a problem").contains("share of N2 is 98.5"));
         let empty = GasState { mix: Vec::new(), ..good.clone() };

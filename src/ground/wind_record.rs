@@ -23,4 +23,6 @@ pub struct WindRecord {
     pub samples: Vec<WindSample>,
     /// Whether it came from a frequency table, so that speeds are class midpoints and time is gone.
     pub is_table: bool,
+    /// The gust of each sample, m s⁻¹, in the order of the samples; empty where the file has none.
+    pub gusts: Vec<Option<f64>>,
 }

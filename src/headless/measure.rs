@@ -5,11 +5,12 @@ use std::path::{Path, PathBuf};
 use crate::files::layers::read_patches;
 use crate::files::raster::{Bands, Limits, Raster};
 use crate::files::text;
-use crate::files::wind_table;
-use crate::ground::{Azimuth, Body, Polygon};
+use crate::files::wind_table::{self, WindImport};
+use crate::ground::{Azimuth, Body, LonLat, Polygon};
 use crate::study::sheet_file::SheetFile;
 use crate::study::sources::{OpenRaster, place_raster};
-use crate::study::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindEntry};
+use crate::study::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
+use crate::study::{bulk, judges};
 
 use super::args::Measure;
 use super::run::study;
@@ -51,8 +52,12 @@ pub fn measure(options: &Measure) -> Result<Outcome, Trouble> {
         sheet.patches.push(Patch { tags, ..Patch::new(id, name, Id(1), outline) });
     }
     if let Some(file) = &options.winds {
-        let entry = wind(file, sheet.fresh_id(), &open.place.body)?;
-        sheet.winds.push(entry);
+        let centres: Vec<LonLat> =
+            sheet.patches.iter().filter_map(|p| judges::centre(p, Some(&open.place))).collect();
+        sheet.winds = winds(file, sheet.fresh_id(), &open.place.body, &centres)?;
+        if sheet.winds.len() > 1 {
+            sheet.patches.iter_mut().for_each(|p| p.winds = WindChoice::Nearest);
+        }
     }
     let out = absolute(&options.out)?;
     let sheet_path = out.join(format!("{name}.sheet.json"));
@@ -87,8 +92,9 @@ fn patches(options: &Measure, open: &OpenRaster) -> Result<Vec<(String, Polygon,
     Ok(read.shapes.into_iter().map(|s| (s.name, s.outline, s.tags)).collect())
 }
 
-/// A wind record read as guessed; the guess is told, so that a wrong one is seen.
-fn wind(file: &Path, id: Id, body: &Body) -> Result<WindEntry, Trouble> {
+/// Wind records read as guessed, of many stations or cells the nearest to each patch; the guess is told, so
+/// that a wrong one is seen.
+fn winds(file: &Path, id: Id, body: &Body, centres: &[LonLat]) -> Result<Vec<WindEntry>, Trouble> {
     let guess = wind_table::guess(file).map_err(|e| {
         Trouble::new(
             format!("{} is not a wind table that can be guessed", file.display()),
@@ -103,14 +109,26 @@ fn wind(file: &Path, id: Id, body: &Body) -> Result<WindEntry, Trouble> {
         eprintln!("winds: caution: {} [{}]", caution.text, caution.code);
     }
     let name = file.file_stem().map_or("winds".into(), |n| n.to_string_lossy().into_owned());
-    Ok(WindEntry {
+    let path = absolute(file)?;
+    let entry = |id: Id, name: String, at: Option<LonLat>, import: WindImport| WindEntry {
         id,
         name,
-        path: absolute(file)?,
-        import: guess.import,
+        path: path.clone(),
+        import,
         height_m: 10.0,
         roughness_m: 1e-3,
         body: Some(body.clone()),
-        at: None,
-    })
+        at,
+    };
+    if guess.stands.is_empty() {
+        return Ok(vec![entry(id, name, None, guess.import)]);
+    }
+    let taken = bulk::nearest(&guess.stands, centres, body.shape, 1);
+    let stands = taken.into_iter().map(|at| &guess.stands[at]).enumerate();
+    let entries: Vec<WindEntry> =
+        stands.map(|(k, s)| entry(Id(id.0 + k as u32), s.name.clone(), s.at, s.import.clone())).collect();
+    for entry in &entries {
+        eprintln!("winds: took {}", entry.name);
+    }
+    Ok(entries)
 }

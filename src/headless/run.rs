@@ -57,6 +57,9 @@ fn print(findings: &Findings) {
         if let Some(dp) = &wind.fryberger {
             println!("  drift potential {:.1} {}", dp.total, dp.unit);
         }
+        if let Some(sentence) = wind.thinning.as_ref().and_then(|t| t.six_hourly()) {
+            println!("  {sentence}");
+        }
         for aside in &wind.set_aside {
             println!("  set aside: {} [{}]", aside.text, aside.code);
         }

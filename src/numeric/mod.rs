@@ -7,6 +7,7 @@ pub mod fft;
 pub mod gamma;
 pub mod gauss;
 pub mod harmonics;
+pub mod huber;
 pub mod lattice;
 pub mod maximum;
 pub mod quantile;

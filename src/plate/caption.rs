@@ -22,6 +22,8 @@ const BOOTSTRAP: &str = "axial.block-bootstrap";
 const MIXTURE: &str = "axial.mixture";
 const SPECTRUM: &[&str] = &["orientation.spectrum"];
 const WINDS: &[&str] = &["wind.log-law", "wind.transport-law", "wind.resultant-drift"];
+const OBSTACLES: &[&str] = &["obstacle.potential-flow", "obstacle.obliquity", "obstacle.virtual"];
+const SEVERAL_OBSTACLES: &str = "obstacle.combined";
 const VERDICT: &[&str] = &["alignment.obliquity", "alignment.bayes-factor"];
 
 /// Where sand moves, people may be in its way.
@@ -49,6 +51,10 @@ pub(super) fn methods_of(patch: &PatchFinding) -> Vec<&'static str> {
                 keys.push(theory.method);
             }
         }
+    }
+    if let Some(found) = &patch.obstacles {
+        keys.extend(OBSTACLES);
+        keys.extend(found.combined.is_some().then_some(SEVERAL_OBSTACLES));
     }
     keys
 }
@@ -115,7 +121,8 @@ pub(super) fn cautions(patch: &PatchFinding, winds: &[WindFinding]) -> Vec<Cauti
     let of_winds =
         winds.iter().filter(|w| patch.verdicts.iter().any(|v| v.winds == w.id)).flat_map(|w| &w.cautions);
     let mut all: Vec<Caution> = Vec::new();
-    for caution in patch.cautions.iter().chain(of_verdicts).chain(of_winds) {
+    let of_outcrops = patch.obstacles.iter().flat_map(|o| &o.cautions);
+    for caution in patch.cautions.iter().chain(of_verdicts).chain(of_winds).chain(of_outcrops) {
         if !all.iter().any(|c| c.text == caution.text) {
             all.push(caution.clone());
         }
@@ -185,7 +192,9 @@ mod tests {
     #[test]
     fn every_method_a_caption_may_cite_is_known() {
         let known = crate::science::methods();
-        let keys = [TREND, INTERVAL, &[BOOTSTRAP, MIXTURE], SPECTRUM, WINDS, VERDICT].concat();
+        let keys =
+            [TREND, INTERVAL, &[BOOTSTRAP, MIXTURE, SEVERAL_OBSTACLES], SPECTRUM, WINDS, VERDICT, OBSTACLES]
+                .concat();
         for key in keys {
             assert!(known.iter().any(|m| m.id == key), "{key}");
         }

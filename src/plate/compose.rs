@@ -56,6 +56,7 @@ pub fn of_patch(
         view: MapView { picture: &picture, covers, place: &open.place },
         winds,
         recipe: &recipe(sheet),
+        annulus: [sheet.settings.obstacle.inner_radii, sheet.settings.obstacle.outer_radii],
     };
     Ok(patch_plate(&plate, width_mm, theme))
 }

@@ -3,14 +3,16 @@
 
 use crate::ground::{LengthUnit, Polygon};
 use crate::science;
-use crate::study::{PatchFinding, RasterFinding, WindFinding};
+use crate::study::{ObstacleFinding, PatchFinding, RasterFinding, WindFinding};
 
 use super::caption::{self, Recipe};
 use super::dial::{class_bars, dial_face};
 use super::map::{MapPatch, MapView, map};
 use super::page::{Block, GAP_MM, Page};
 use super::sketch::Type;
-use super::{Figure, Theme, bars, modes, numbers, profile, rose, sand_rose, spectrum};
+use super::{
+    Figure, Theme, bars, drift_calendar, modes, numbers, obstacle, profile, rose, sand_rose, spectrum,
+};
 
 /// All that a patch plate shows.
 #[derive(Clone, Debug)]
@@ -25,6 +27,8 @@ pub struct PatchPlate<'a> {
     /// The records its verdicts name; others are left out.
     pub winds: &'a [WindFinding],
     pub recipe: &'a Recipe,
+    /// Inner and outer radii of the ground looked at round outcrops.
+    pub annulus: [f64; 2],
 }
 
 /// Columns are about this wide, millimetres.
@@ -97,6 +101,10 @@ fn evidence(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
         if let Some(winds) = winds {
             let figure = sand_rose(&winds.rose, &winds.flux, width_mm, theme);
             blocks.push(block(format!("Winds: {}", winds.name), figure));
+            if let Some(calendar) = &winds.calendar {
+                let figure = drift_calendar(calendar, width_mm, theme);
+                blocks.push(block(format!("By the calendar: {}", winds.name), figure));
+            }
         }
         let of = if patch.verdicts.len() > 1 || winds.is_none() {
             format!(": {}", verdict.winds_name)
@@ -110,6 +118,20 @@ fn evidence(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
             blocks.push(block(format!("Theories weighed{of}"), figure));
         }
     }
+    blocks.extend(outcrops(plate, width_mm, theme));
+    blocks
+}
+
+/// Each outcrop, and all together when there are several.
+fn outcrops(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
+    let Some(found) = &plate.patch.obstacles else { return Vec::new() };
+    let one = |o: &ObstacleFinding| Block {
+        heading: format!("Outcrop: {}", o.name),
+        figure: obstacle::obstacle(o, plate.annulus, width_mm, theme),
+    };
+    let mut blocks: Vec<Block> = found.outcrops.iter().map(one).collect();
+    let together = obstacle::obstacles_together(found, width_mm, theme);
+    blocks.push(Block { heading: "Outcrops together".into(), figure: together });
     blocks
 }
 

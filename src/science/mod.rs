@@ -2,13 +2,15 @@
 
 pub mod alignment;
 pub mod axial;
+pub mod obstacle;
 pub mod orientation;
 pub mod scene;
 pub mod wind;
 
 use crate::ground::Method;
 
-/// Every method of the program, in the order of the reasoning: trend, spacing, statistics, wind, verdict.
+/// Every method of the program, in the order of the reasoning: trend, spacing, statistics, wind, verdict,
+/// outcrops.
 pub fn methods() -> Vec<&'static Method> {
-    [orientation::METHODS, axial::METHODS, wind::METHODS, alignment::METHODS].concat()
+    [orientation::METHODS, axial::METHODS, wind::METHODS, alignment::METHODS, obstacle::METHODS].concat()
 }

@@ -35,11 +35,12 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
     let mut ids = BTreeSet::new();
     let all =
         sheet.rasters.iter().map(|r| (r.id, &r.name)).chain(sheet.patches.iter().map(|p| (p.id, &p.name)));
-    for (Id(id), name) in all.chain(sheet.winds.iter().map(|w| (w.id, &w.name))) {
+    let all = all.chain(sheet.winds.iter().map(|w| (w.id, &w.name)));
+    for (Id(id), name) in all.chain(sheet.obstacles.iter().map(|o| (o.id, &o.name))) {
         if !ids.insert(id) {
             say(
                 name.clone(),
-                format!("its id {id} is used twice; every raster, patch and record needs its own"),
+                format!("its id {id} is used twice; every raster, patch, record and outcrop needs its own"),
             );
         }
     }
@@ -85,7 +86,39 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
             _ => {}
         }
     }
+    obstacles(sheet, sources, &mut say);
     found
+}
+
+/// Outcrops without area, off their raster, or in no patch.
+fn obstacles(sheet: &Sheet, sources: &Sources, say: &mut impl FnMut(String, String)) {
+    let s = &sheet.settings.obstacle;
+    if s.inner_radii >= s.outer_radii {
+        say("settings".into(), "obstacle.inner_radii must be below obstacle.outer_radii".into());
+    }
+    for obstacle in &sheet.obstacles {
+        let what = format!("outcrop {}", obstacle.name);
+        if obstacle.outline.outer.len() < 3 || obstacle.outline.area() <= 0.0 {
+            say(what, "its outline has no area; outline it again".into());
+            continue;
+        }
+        let Some(open) = sources.rasters.get(&obstacle.raster) else {
+            if sheet.raster(obstacle.raster).is_none() {
+                say(what, format!("it lies on raster {}, which the sheet does not have", obstacle.raster.0));
+            }
+            continue;
+        };
+        let patches = sheet.patches.iter().filter(|p| p.raster == obstacle.raster);
+        if !patches.into_iter().any(|p| super::obstacles::belongs(obstacle, p, &open.place, s)) {
+            say(
+                what,
+                format!(
+                    "no patch holds half of the ground round it ({} to {} radii), so it is not tested; outline a patch about it",
+                    s.inner_radii, s.outer_radii
+                ),
+            );
+        }
+    }
 }
 
 #[cfg(test)]

@@ -11,7 +11,7 @@ use crate::ground::{Body, Seed, WindRecord};
 use crate::science::scene::reach;
 
 use super::sheet_file::SheetFile;
-use super::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
+use super::{Id, ImageKind, Obstacle, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
 
 /// Everything of the demo grows from this seed.
 pub const SEED: Seed = Seed(1);
@@ -123,6 +123,11 @@ pub fn sheet(folder: &Path) -> Sheet {
             ..Patch::new(Id(5 + i as u32), truth.name, MOSAIC_ID, truth.outline)
         });
     }
+    for truth in reach::outcrops() {
+        let id = sheet.fresh_id();
+        let (name, outline) = (truth.name.into(), truth.outline);
+        sheet.obstacles.push(Obstacle { id, name, raster: MOSAIC_ID, outline });
+    }
     sheet
 }
 
@@ -136,6 +141,8 @@ fn import() -> WindImport {
         missing: Vec::new(),
         zero_direction: ZeroDirection::North,
         day_first: false,
+        only: None,
+        gust: None,
     }
 }
 

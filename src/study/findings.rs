@@ -7,8 +7,9 @@
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
 use super::{
-    BackwardsFinding, BirthFinding, BuildingFinding, DriftFinding, ElongationFinding, EquivalenceFinding, Id,
-    MigrationFinding, SandFinding, SeasonFinding, SensitivityFinding, SetAside,
+    BackwardsFinding, BirthFinding, BuildingFinding, CalendarFinding, DriftFinding, ElongationFinding,
+    EquivalenceFinding, GustFinding, Id, MigrationFinding, ObstaclesFinding, RoundingFinding, SandFinding,
+    SeasonFinding, SensitivityFinding, SetAside, ThinningFinding,
 };
 
 /// All results of one run.
@@ -75,6 +76,8 @@ pub struct PatchFinding {
     pub cautions: Vec<Caution>,
     /// The spacing against that of first dunes, by each wind record whose air is known.
     pub birth: Vec<BirthFinding>,
+    /// What the outcrops in it say; `None` where the sheet has none there, or at a first look.
+    pub obstacles: Option<ObstaclesFinding>,
 }
 
 /// The trend from the structure tensor.
@@ -202,6 +205,13 @@ pub struct WindFinding {
     pub cautions: Vec<Caution>,
     /// The sand under this air; `None` without air or gravity.
     pub sand: Option<SandFinding>,
+    /// By years, months and seasons; `None` without a clock or without sand.
+    pub calendar: Option<CalendarFinding>,
+    /// What longer intervals and coarser classes would have hidden.
+    pub thinning: Option<ThinningFinding>,
+    pub rounding: RoundingFinding,
+    /// An upper bound by the gusts of the record; `None` when it has none.
+    pub gusts: Option<GustFinding>,
 }
 
 /// A patch judged by one wind record.

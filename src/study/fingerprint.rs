@@ -11,11 +11,11 @@ use super::{Patch, RasterEntry, Sheet, WindChoice, WindEntry};
 pub fn of_sheet(sheet: &Sheet) -> String {
     let rasters: Vec<_> = sheet.rasters.iter().map(raster).collect();
     let winds: Vec<_> = sheet.winds.iter().map(placed_wind).collect();
-    digest(&json!([sheet.seed, rasters, sheet.patches, winds, sheet.settings]))
+    digest(&json!([sheet.seed, rasters, sheet.patches, winds, sheet.settings, sheet.obstacles]))
 }
 
-/// SHA-256 of all that makes a patch's finding: its outline, its raster, the settings, the winds it
-/// is judged by, the seed.
+/// SHA-256 of all that makes a patch's finding: its outline, its raster, the outcrops on it, the settings,
+/// the winds it is judged by, the seed.
 pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
     // Any record may become the nearest when it is moved, so all of them count there, with their places.
     let winds: Vec<_> = match &patch.winds {
@@ -24,7 +24,10 @@ pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
             sheet.winds.iter().filter(|w| ids.contains(&w.id)).map(placed_wind).collect()
         }
     };
+    // Their names too: findings print them.
+    let obstacles: Vec<_> = sheet.obstacles.iter().filter(|o| o.raster == patch.raster).collect();
     digest(&json!([
+        obstacles,
         sheet.seed,
         patch.id,
         patch.outline,

@@ -269,6 +269,8 @@ mod tests {
             speed_unit: SpeedUnit::MetrePerSecond,
             direction: DirectionSense::From,
             missing: Vec::new(),
+            only: None,
+            gust: None,
             zero_direction: ZeroDirection::North,
             day_first: false,
         };

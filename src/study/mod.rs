@@ -1,5 +1,6 @@
 //! The study: the sheet (document), its settings, the one executor, and the findings it returns.
 
+pub mod bulk;
 mod backwards;
 mod cautions;
 pub mod check;
@@ -11,10 +12,12 @@ mod grains;
 pub mod handover;
 pub mod judges;
 mod migrate;
+mod obstacles;
 mod patch;
 mod records;
 pub mod run;
 mod sentence;
+mod setting_list;
 mod settings;
 mod sheet;
 pub mod sheet_file;
@@ -29,8 +32,12 @@ pub use crate::science::alignment::equivalence::Equivalence as EquivalenceFindin
 pub use crate::science::alignment::migration::Migration as MigrationFinding;
 pub use crate::science::alignment::{Building as BuildingFinding, Elongation as ElongationFinding};
 pub use crate::science::wind::Sensitivity as SensitivityFinding;
+pub use crate::science::wind::calendar::{Calendar as CalendarFinding, Period as PeriodFinding};
+pub use crate::science::wind::gusts::Gusts as GustFinding;
 pub use crate::science::wind::quality::SetAside;
 pub use crate::science::wind::regime::{Drift as DriftFinding, Season as SeasonFinding};
+pub use crate::science::wind::rounding::Rounding as RoundingFinding;
+pub use crate::science::wind::thinning::{Changed as ChangedFinding, Thinning as ThinningFinding};
 pub use backwards::{BackwardsFinding, arc_words};
 pub use findings::{
     Discovery, Failure, Findings, Flip, JointFinding, JointTheory, JointTrend, ModeFinding, Node,
@@ -38,10 +45,12 @@ pub use findings::{
     TrendFinding, VerdictFinding, WindFinding,
 };
 pub use grains::{Birth, BirthFinding, Doubtful, FirstWave, SandFinding, SandThreshold};
-pub use records::{SETTINGS, Setting, SettingKind, SettingValue};
+pub use obstacles::{NodeAround, ObstacleFinding, ObstaclesFinding};
+pub use records::{Setting, SettingKind, SettingValue};
+pub use setting_list::SETTINGS;
 pub use settings::{
-    BackwardsSettings, LettauConstant, Priors, Settings, SpectrumSettings, StatisticsSettings, ThresholdLaw,
-    TransportLaw, TrendSettings, VerdictSettings, WindSettings,
+    BackwardsSettings, LettauConstant, ObstacleGround, ObstacleSettings, Priors, Settings, SpectrumSettings,
+    StatisticsSettings, ThresholdLaw, TransportLaw, TrendSettings, VerdictSettings, WindSettings,
 };
-pub use sheet::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
+pub use sheet::{Id, ImageKind, Obstacle, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
 pub use sources::{OpenRaster, Sources};

@@ -10,6 +10,7 @@ use crate::science::orientation::{self, NodeField, Peak, Spectrum, TensorSetting
 
 use super::backwards;
 use super::cautions;
+use super::obstacles;
 use super::verdict::verdict;
 use super::window::{self, Detail, PatchPixels};
 use super::winds::{self, WindStudy};
@@ -85,7 +86,11 @@ pub fn patch_finding(
         sentence: String::new(),
         cautions,
         birth,
+        obstacles: None,
     };
+    if detail == Detail::Exact {
+        finding.obstacles = obstacles::study(sheet, patch, &open.place, &finding.trend, seed, work)?;
+    }
     finding.sentence = sentence::of_patch(&finding);
     Ok(Ok(finding))
 }

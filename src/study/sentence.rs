@@ -4,6 +4,7 @@ use crate::ground::LengthUnit;
 
 use super::backwards;
 use super::cautions::WEAK_ALIGNMENT;
+use super::obstacles;
 use super::{PatchFinding, SpectrumFinding, TrendFinding, VerdictFinding};
 
 /// The sentence of a patch.
@@ -18,6 +19,10 @@ pub fn of_patch(finding: &PatchFinding) -> String {
     if let Some(found) = finding.backwards.as_ref().filter(|_| finding.verdicts.is_empty()) {
         sentence.push_str("; ");
         sentence.push_str(&backwards::clause(found));
+    }
+    for clause in finding.obstacles.iter().flat_map(obstacles::clauses) {
+        sentence.push_str("; ");
+        sentence.push_str(&clause);
     }
     sentence.push('.');
     sentence

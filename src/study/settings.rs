@@ -15,6 +15,7 @@ pub struct Settings {
     pub statistics: StatisticsSettings,
     pub wind: WindSettings,
     pub verdict: VerdictSettings,
+    pub obstacle: ObstacleSettings,
     pub backwards: BackwardsSettings,
 }
 
@@ -180,6 +181,32 @@ impl Default for Priors {
     }
 }
 
+/// The obstacle test.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+#[serde(default, deny_unknown_fields)]
+pub struct ObstacleSettings {
+    /// Inner and outer edge of the annulus looked at, in radii of the outcrop.
+    pub inner_radii: f64,
+    pub outer_radii: f64,
+    /// Share by which an outcrop's radius may be wrong.
+    pub radius_doubt: f64,
+    /// Virtual outcrops behind a p; 0 for none.
+    pub virtual_count: u32,
+    /// Amplitude of the turn below which nothing is decided.
+    pub least_amplitude: f64,
+    pub ground: ObstacleGround,
+}
+
+/// Whether virtual outcrops may be turned.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
+#[serde(rename_all = "kebab-case")]
+pub enum ObstacleGround {
+    /// The texture has a grain: outlines are only moved.
+    Grained,
+    /// The user holds the field to be alike all over and in all directions.
+    Homogeneous,
+}
+
 impl Default for TrendSettings {
     fn default() -> Self {
         Self { gradient_scale_px: None, integration_scale_px: None, node_step_px: None, significance: 0.01 }
@@ -230,6 +257,19 @@ impl Default for VerdictSettings {
             least_strength: 0.1,
             flux_up: FLUX_UP,
             flux_up_doubt: 1.25,
+        }
+    }
+}
+
+impl Default for ObstacleSettings {
+    fn default() -> Self {
+        Self {
+            inner_radii: 1.0,
+            outer_radii: 3.0,
+            radius_doubt: 0.3,
+            virtual_count: 999,
+            least_amplitude: 0.3,
+            ground: ObstacleGround::Grained,
         }
     }
 }

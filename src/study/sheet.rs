@@ -30,9 +30,12 @@ pub struct Sheet {
     /// Bodies of the user's own, by name; rasters and records hold copies.
     #[serde(default, skip_serializing_if = "Vec::is_empty")]
     pub bodies: Vec<Body>,
+    /// Outcrops round which the wind parted.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub obstacles: Vec<Obstacle>,
 }
 
-/// Names a raster, patch or wind record within one sheet; never reused.
+/// Names a raster, patch, wind record or outcrop within one sheet; never reused.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize, Deserialize)]
 #[serde(transparent)]
 pub struct Id(pub u32);
@@ -149,6 +152,17 @@ pub enum WindChoice {
     Chosen(Vec<Id>),
 }
 
+/// An outcrop that stands in the way of the wind, in pixel coordinates of its raster. It belongs to every patch
+/// that holds half or more of the ground round it.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct Obstacle {
+    pub id: Id,
+    pub name: String,
+    pub raster: Id,
+    pub outline: Polygon,
+}
+
 /// A wind record of the study and how to read it.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
 #[serde(deny_unknown_fields)]
@@ -202,6 +216,7 @@ impl Sheet {
             winds: Vec::new(),
             settings: Settings::default(),
             bodies: Vec::new(),
+            obstacles: Vec::new(),
         }
     }
 
@@ -212,7 +227,8 @@ impl Sheet {
             .iter()
             .map(|r| r.id)
             .chain(self.patches.iter().map(|p| p.id))
-            .chain(self.winds.iter().map(|w| w.id));
+            .chain(self.winds.iter().map(|w| w.id))
+            .chain(self.obstacles.iter().map(|o| o.id));
         Id(used.max().map_or(1, |Id(n)| n + 1))
     }
 
@@ -227,6 +243,10 @@ impl Sheet {
 
     pub fn patch(&self, id: Id) -> Option<&Patch> {
         self.patches.iter().find(|p| p.id == id)
+    }
+
+    pub fn obstacle(&self, id: Id) -> Option<&Obstacle> {
+        self.obstacles.iter().find(|o| o.id == id)
     }
 
     pub fn wind(&self, id: Id) -> Option<&WindEntry> {

@@ -98,6 +98,10 @@ pub fn study(
         sensitivity: a.sensitivity,
         cautions: a.cautions,
         sand: grains::sand(entry, s),
+        calendar: a.calendar,
+        thinning: a.thinning,
+        rounding: a.rounding,
+        gusts: a.gusts,
     };
     Ok(WindStudy { finding, foresight, what_if })
 }

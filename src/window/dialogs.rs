@@ -50,6 +50,7 @@ fn title_of(area: &str) -> &str {
         "statistics" => "Statistics of axes",
         "wind" => "Winds and sand",
         "verdict" => "Verdict",
+        "obstacle" => "Obstacles",
         other => other,
     }
 }

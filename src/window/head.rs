@@ -37,6 +37,7 @@ fn tools(ui: &mut Ui, model: &Model, out: &mut Commands) {
             Tool::Ellipse => "Ellipse",
             Tool::Hole => "Hole",
             Tool::Corners => "Corners",
+            Tool::Outcrop => "Outcrop",
         };
         let command = Command::Draw(DrawCommand::Take(tool));
         toggle(ui, model, out, command, word, model.session.tool == tool);

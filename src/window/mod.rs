@@ -19,6 +19,7 @@ mod software;
 mod start_page;
 pub mod table;
 mod theme;
+mod winds_cells;
 mod winds_import;
 
 pub use app::App;

@@ -6,7 +6,7 @@ use egui::{ComboBox, Context, Grid, RichText, ScrollArea, Ui};
 use super::controls::{
     Commands, caution, field_row, heading, line, look, main_button, number, overlay, rule,
 };
-use super::theme;
+use super::{theme, winds_cells};
 use crate::desk::{
     Command, DirectionSense, Import, Model, ReadRow, Reading, SpeedUnit, WindCommand, WindImport, WindLayout,
     ZeroDirection, facts,
@@ -29,11 +29,14 @@ pub fn show(ctx: &Context, model: &Model, import: &Import, out: &mut Commands) {
             ui.columns(2, |columns| {
                 let [left, right] = columns else { return };
                 way(left, import, out);
+                winds_cells::show(left, model, import, out);
                 mast(left, import, out);
                 given(right, model, import);
                 why(right, model, import);
             });
-            file(ui, model, import);
+            if !import.cells.is_empty() {
+                file(ui, model, import);
+            }
         });
         rule(ui, &look(model));
         ui.horizontal(|ui| {
@@ -55,6 +58,10 @@ pub fn show(ctx: &Context, model: &Model, import: &Import, out: &mut Commands) {
 fn way(ui: &mut Ui, import: &Import, out: &mut Commands) {
     heading(ui, "Taken for");
     let mut how = import.import.clone();
+    if matches!(how.layout, WindLayout::Grid { .. }) {
+        layout(ui, import, &mut how);
+        return;
+    }
     choice(ui, "Columns divided by", &mut how.delimiter, DELIMITERS.into_iter());
     row(ui, "Header lines", |ui| {
         if let Some(lines) = number(ui, "Header lines", how.header_lines as f64, 60.0) {
@@ -90,13 +97,19 @@ fn layout(ui: &mut Ui, import: &Import, how: &mut WindImport) {
             let columns = || (0..count).map(|column| (column, name(column)));
             choice(ui, "Speed is in", speed, columns());
             choice(ui, "Direction is in", direction, columns());
-            row(ui, "Time is in columns", |ui| {
-                let now = time.iter().map(|c| (c + 1).to_string()).collect::<Vec<_>>().join(" ");
-                if let Some(typed) = line(ui, "Time is in columns", &now, 130.0) {
-                    let columns = typed.split_whitespace().filter_map(|c| c.parse::<usize>().ok());
-                    *time = columns.filter_map(|c| c.checked_sub(1)).collect();
-                }
-            });
+            let none = std::iter::once((None, "none".to_owned()));
+            let gusts = none.chain(columns().map(|(column, name)| (Some(column), name)));
+            choice(ui, "Gusts are in", &mut how.gust, gusts);
+            time_columns(ui, time);
+        }
+        WindLayout::Components { time, east, north } => {
+            let columns = || (0..count).map(|column| (column, name(column)));
+            choice(ui, "Toward east is in", east, columns());
+            choice(ui, "Toward north is in", north, columns());
+            time_columns(ui, time);
+        }
+        WindLayout::Grid { .. } => {
+            ui.label("A grid: its variables and units say how it is read.");
         }
         WindLayout::Frequencies { sector, classes } => {
             choice(ui, "Sector is in", sector, (0..count).map(|column| (column, name(column))));
@@ -119,15 +132,27 @@ fn layout(ui: &mut Ui, import: &Import, how: &mut WindImport) {
     }
 }
 
+fn time_columns(ui: &mut Ui, time: &mut Vec<usize>) {
+    row(ui, "Time is in columns", |ui| {
+        let now = time.iter().map(|c| (c + 1).to_string()).collect::<Vec<_>>().join(" ");
+        if let Some(typed) = line(ui, "Time is in columns", &now, 130.0) {
+            let columns = typed.split_whitespace().filter_map(|c| c.parse::<usize>().ok());
+            *time = columns.filter_map(|c| c.checked_sub(1)).collect();
+        }
+    });
+}
+
 fn mast(ui: &mut Ui, import: &Import, out: &mut Commands) {
     heading(ui, "Mast");
     let (mut name, mut height_m, mut roughness_m) =
         (import.name.clone(), import.height_m, import.roughness_m);
-    row(ui, "Name", |ui| {
-        if let Some(typed) = line(ui, "Name of the record", &name, 160.0) {
-            name = typed;
-        }
-    });
+    if import.stands.is_empty() {
+        row(ui, "Name", |ui| {
+            if let Some(typed) = line(ui, "Name of the record", &name, 160.0) {
+                name = typed;
+            }
+        });
+    }
     row(ui, "Height, m", |ui| {
         if let Some(typed) = number(ui, "Height of the mast, m", height_m, 60.0) {
             height_m = typed;

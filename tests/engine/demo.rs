@@ -4,9 +4,10 @@ use std::sync::OnceLock;
 
 use ventifact::ground::{Axis, Point, Work};
 use ventifact::science::scene::reach::{self, PatchTruth};
+use ventifact::study::handover::findings_json;
 use ventifact::study::run::{Memo, run};
 use ventifact::study::sheet_file::SheetFile;
-use ventifact::study::{Findings, PatchFinding, Sheet, Sources, demo};
+use ventifact::study::{Birth, Findings, PatchFinding, Sheet, Sources, demo};
 
 /// The demo's sheet and findings, made once for all tests of this file.
 fn reach_findings() -> &'static (Sheet, Findings, tempfile::TempDir) {
@@ -94,6 +95,38 @@ fn the_classes_are_the_ones_the_winds_were_made_for() {
     }
 }
 
+/// The long dunes were made to follow the flow round both outcrops: 0° to the wind.
+#[test]
+fn the_outcrops_tell_the_obliquity_they_were_made_with() {
+    let (finding, _) = patch("Long dunes");
+    let found = finding.obstacles.as_ref().expect("the patch has outcrops");
+    let truths = reach::outcrops();
+    assert_eq!(found.outcrops.len(), truths.len());
+    for (outcrop, truth) in found.outcrops.iter().zip(&truths) {
+        let test = outcrop.outcome.as_ref().unwrap_or_else(|why| panic!("{}: {why}", truth.name));
+        let o = &test.obliquity;
+        println!(
+            "{}: {o:?}, {:?}, pattern p {}, null {:?}, dipole {:?}",
+            truth.name, test.estimate, test.pattern_p, test.null, test.dipole
+        );
+        assert_eq!(test.undecided, None, "{}", truth.name);
+        let half = o.half_deg.unwrap();
+        let off = Axis::from_deg(o.signed_deg).separation(Axis::from_deg(truth.obliquity_deg));
+        assert!(off <= half, "{}: {off:.1}° off, half width {half:.1}°", truth.name);
+        assert!(half < 20.0, "{}: ± {half}° says too little", truth.name);
+    }
+    let combined = found.combined.unwrap();
+    println!("together: {combined:?}");
+    assert!(combined.obliquity.folded_deg() <= combined.obliquity.half_deg.unwrap());
+    assert!(finding.sentence.contains("between crests and wind"), "{}", finding.sentence);
+    let (_, findings, _) = reach_findings();
+    let others = findings.patches.iter().filter(|p| p.name != "Long dunes");
+    assert!(
+        others.into_iter().all(|p| p.obstacles.is_none()),
+        "outcrops belong to the patch round them only"
+    );
+}
+
 #[test]
 fn one_thread_and_two_give_the_same_bits_and_so_does_the_memo() {
     let (sheet, findings, _) = reach_findings();
@@ -129,4 +162,25 @@ fn nodes_lie_inside_their_patch() {
             finding.name
         );
     }
+}
+
+/// Kilometre dunes are no first dunes; what starts the sand is handed over with its range.
+#[test]
+fn the_long_dunes_are_grown_and_the_thresholds_go_out_with_their_ranges() {
+    let (sheet, findings, _) = reach_findings();
+    let (long, _) = patch("Long dunes");
+    let birth = long.birth.first().expect("the mast's air is known");
+    assert_eq!(birth.standing, Birth::Grown, "{}", birth.sentence);
+    let spacing = long.spectrum.spacing.expect("a spacing");
+    assert!(birth.ratio[0] < spacing / 9.0 && spacing / 9.0 < birth.ratio[1], "{:?}", birth.ratio);
+
+    let text = findings_json(sheet, findings);
+    let json: serde_json::Value = serde_json::from_str(&text).expect("a document");
+    let sand = &json["winds"][0]["sand"];
+    let laws: Vec<_> = sand["thresholds"].as_array().expect("a list").iter().map(|t| &t["law"]).collect();
+    assert_eq!(laws, ["Bagnold", "Iversen–White", "Shao–Lu"]);
+    let chosen = sand["thresholds"][2]["ustar_m_per_s"]["value"].as_f64();
+    assert_eq!(chosen, json["winds"][0]["threshold_ustar_m_per_s"].as_f64(), "the threshold used");
+    assert_eq!(json["patches"][0]["birth"][0]["standing"], "grown");
+    assert!(json["patches"][2]["birth"].as_array().expect("a list").is_empty(), "no spacing, no birth");
 }

@@ -80,8 +80,16 @@ fn plate_of(patch: &PatchFinding, outline: &Polygon, reach: &Reach, theme: &Them
     let view = MapView { picture: &picture, covers, place: &reach.place };
     let (raster, winds, recipe) = (raster_finding(), [wind_finding()], recipe());
     let neighbours = vec![("Bare plain", &reach.plain)];
-    let plate =
-        PatchPlate { patch, outline, neighbours, raster: &raster, view, winds: &winds, recipe: &recipe };
+    let plate = PatchPlate {
+        patch,
+        outline,
+        neighbours,
+        raster: &raster,
+        view,
+        winds: &winds,
+        recipe: &recipe,
+        annulus: [1.0, 3.0],
+    };
     patch_plate(&plate, 180.0, theme)
 }
 
@@ -177,6 +185,7 @@ fn a_raster_without_ground_size_has_its_plate_in_pixels_and_landscape() {
         view,
         winds: &[],
         recipe: &recipe,
+        annulus: [1.0, 3.0],
     };
     let figure = patch_plate(&plate, 277.0, &Theme::print());
     keep("pixels", &figure, 2400);

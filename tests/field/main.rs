@@ -3,6 +3,7 @@
 
 mod look;
 mod measure;
+mod records;
 mod winds;
 
 use std::path::PathBuf;

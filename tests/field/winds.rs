@@ -8,10 +8,7 @@ use ventifact::science::alignment::{
 };
 use ventifact::science::wind::quality;
 use ventifact::science::wind::regime::{flows, gathered};
-use ventifact::science::wind::threshold::COHESION;
-use ventifact::science::wind::{
-    Doubt, Drift, Law, Site, Threshold, Transport, WindAssessment, WindSettings, assess,
-};
+use ventifact::science::wind::{Drift, Law, Site, Transport, WindAssessment, WindSettings, assess};
 
 use crate::field_data;
 
@@ -94,19 +91,7 @@ fn site(height_m: f64) -> Site {
 }
 
 fn settings(transport: Transport) -> WindSettings {
-    WindSettings {
-        grain_m: 250e-6,
-        grain_density: 2650.0,
-        cohesion: COHESION,
-        threshold: Threshold::ShaoLu,
-        threshold_ustar: None,
-        transport,
-        greatest_speed: 75.0,
-        block_days: 30.0,
-        resamples: 200,
-        doubt: Doubt { grain: 1.3, grain_density: 1.05, cohesion: 1.7, roughness: 3.0 },
-        storm_quantile: 0.9,
-    }
+    WindSettings { transport, block_days: 30.0, resamples: 200, ..WindSettings::default() }
 }
 
 fn assessed(record: &WindRecord, transport: Transport) -> WindAssessment {

@@ -183,6 +183,32 @@ fn the_keyboard_alone_outlines_renames_and_deletes() {
     assert_eq!(harness.state().app().model().sheet.patches.len(), 2);
 }
 
+#[test]
+fn an_outcrop_is_outlined_named_deleted_and_brought_back() {
+    let mut model = sorrel_reach(0.0);
+    model.session.measures = false;
+    model.session.saved = model.sheet.clone();
+    let patches = model.sheet.patches.len();
+    let mut harness = open(model, [1440.0, 900.0]);
+    key(&mut harness, Modifiers::NONE, Key::U);
+    let centre = harness.get_by_role(Role::Canvas).rect().center();
+    for by in [vec2(-60.0, -40.0), vec2(60.0, -40.0), vec2(0.0, 60.0)] {
+        click_at(&mut harness, centre + by);
+    }
+    key(&mut harness, Modifiers::NONE, Key::Enter);
+    let sheet = &harness.state().app().model().sheet;
+    assert_eq!((sheet.obstacles.len(), sheet.patches.len()), (1, patches), "an outcrop is no patch");
+    let name = format!("Name of outcrop {}", sheet.obstacles[0].id.0);
+    key(&mut harness, Modifiers::ALT, Key::Num7);
+    assert_eq!(harness.state().app().model().view.page, Page::Obstacles);
+    assert!(harness.query_by_role_and_label(Role::TextInput, &name).is_some(), "the page lists {name}");
+    assert!(harness.query_by_role_and_label(Role::ListItem, "Outcrop Outcrop 1 on the table").is_some());
+    key(&mut harness, Modifiers::COMMAND, Key::Delete);
+    assert!(harness.state().app().model().sheet.obstacles.is_empty());
+    key(&mut harness, Modifiers::COMMAND, Key::Z);
+    assert_eq!(harness.state().app().model().sheet.obstacles.len(), 1);
+}
+
 /// Window and command line go through one executor and must give the same bits; written out with
 /// every digit, since a missing cell of a picture is NaN and so equals nothing.
 #[test]

@@ -3,7 +3,7 @@
 use crate::desk::{Draft, Model, Tool};
 use crate::ground::{Point, Polygon};
 
-use super::{Command, PatchCommand, Record, apply};
+use super::{Command, ObstacleCommand, PatchCommand, Record, apply};
 
 #[derive(Clone, Debug, PartialEq)]
 pub enum DrawCommand {
@@ -26,6 +26,7 @@ impl DrawCommand {
         Self::Take(Tool::Ellipse),
         Self::Take(Tool::Hole),
         Self::Take(Tool::Corners),
+        Self::Take(Tool::Outcrop),
         Self::Finish,
         Self::Retract,
         Self::Cancel,
@@ -114,6 +115,12 @@ fn tool_record(tool: Tool) -> Record {
         Tool::Corners => {
             Record::new("draw.corners", "Edit corners", "Drag corners; click an edge to add one.").key("V")
         }
+        Tool::Outcrop => Record::new(
+            "draw.outcrop",
+            "Outline outcrop",
+            "Click round the foot of a rock in the way of the wind; close with Enter.",
+        )
+        .key("U"),
     }
 }
 
@@ -131,16 +138,23 @@ fn finish(model: &mut Model) {
     let Some(draft) = model.session.draft.take() else { return };
     let Some(ring) = draft.finished() else { return };
     let command = match (draft.tool, model.selected_patch()) {
+        (Tool::Outcrop, _) => {
+            let outline = Polygon { outer: ring, holes: Vec::new() };
+            Command::Obstacle(ObstacleCommand::Add { raster: draft.raster, outline })
+        }
         (Tool::Hole, Some(patch)) => {
             let mut outline = patch.outline.clone();
             outline.holes.push(ring);
-            PatchCommand::Reshape { id: patch.id, outline }
+            Command::Patch(PatchCommand::Reshape { id: patch.id, outline })
         }
-        _ => PatchCommand::Add { raster: draft.raster, outline: Polygon { outer: ring, holes: Vec::new() } },
+        _ => {
+            let outline = Polygon { outer: ring, holes: Vec::new() };
+            Command::Patch(PatchCommand::Add { raster: draft.raster, outline })
+        }
     };
     model.session.tool = Tool::Hand;
     model.session.history.settle();
-    apply(model, Command::Patch(command));
+    apply(model, command);
     model.session.history.settle();
 }
 
@@ -150,7 +164,8 @@ mod tests {
 
     use super::DrawCommand;
     use crate::desk::{
-        Command, Laid, Model, Opened, PatchCommand, SheetCommand, TileKey, TileReader, TileShelf, Tool, apply,
+        Command, Laid, Model, ObstacleCommand, Opened, PatchCommand, SheetCommand, TileKey, TileReader,
+        TileShelf, Tool, apply,
     };
     use crate::ground::{Grid, Place, Point, Work};
     use crate::study::{Id, ImageKind, RasterEntry};
@@ -213,6 +228,27 @@ mod tests {
         assert_eq!(model.selected_patch().unwrap().outline.area(), 2000.0 - 50.0);
         apply(&mut model, Command::Sheet(SheetCommand::Undo));
         assert_eq!(model.selected_patch().unwrap().outline.area(), 2000.0);
+    }
+
+    #[test]
+    fn an_outlined_outcrop_is_no_patch_and_can_be_renamed_deleted_and_brought_back() {
+        let mut model = desk();
+        draw(&mut model, Tool::Rectangle, &[[5.0, 5.0], [90.0, 70.0]]);
+        draw(&mut model, Tool::Outcrop, &[[40.0, 30.0], [60.0, 30.0], [50.0, 45.0]]);
+        apply(&mut model, Command::Draw(DrawCommand::Finish));
+        assert_eq!((model.sheet.patches.len(), model.sheet.obstacles.len()), (1, 1));
+        let id = model.sheet.obstacles[0].id;
+        assert_ne!(id, model.sheet.patches[0].id);
+        assert_eq!(model.selected_obstacle().map(|o| o.name.as_str()), Some("Outcrop 1"));
+        let name = "Grey stack".to_owned();
+        apply(&mut model, Command::Obstacle(ObstacleCommand::Rename { id, name }));
+        apply(&mut model, Command::Obstacle(ObstacleCommand::Delete));
+        assert!(model.sheet.obstacles.is_empty());
+        apply(&mut model, Command::Sheet(SheetCommand::Undo));
+        assert_eq!(model.sheet.obstacles[0].name, "Grey stack");
+        apply(&mut model, Command::Sheet(SheetCommand::Undo));
+        apply(&mut model, Command::Sheet(SheetCommand::Undo));
+        assert!(model.sheet.obstacles.is_empty() && model.sheet.patches.len() == 1);
     }
 
     #[test]

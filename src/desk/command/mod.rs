@@ -4,6 +4,7 @@ mod ask;
 mod body;
 mod draw;
 mod job;
+mod obstacle;
 mod patch;
 mod plate;
 mod raster;
@@ -16,6 +17,7 @@ pub use ask::AskCommand;
 pub use body::BodyCommand;
 pub use draw::DrawCommand;
 pub use job::JobCommand;
+pub use obstacle::ObstacleCommand;
 pub use patch::PatchCommand;
 pub use plate::PlateCommand;
 pub use raster::RasterCommand;
@@ -36,6 +38,7 @@ pub enum Command {
     Ask(AskCommand),
     Raster(RasterCommand),
     Patch(PatchCommand),
+    Obstacle(ObstacleCommand),
     Draw(DrawCommand),
     Wind(WindCommand),
     Plate(PlateCommand),
@@ -113,6 +116,7 @@ impl Command {
             Self::Ask(c) => c.record(),
             Self::Raster(c) => c.record(),
             Self::Patch(c) => c.record(),
+            Self::Obstacle(c) => c.record(),
             Self::Draw(c) => c.record(),
             Self::Wind(c) => c.record(),
             Self::Plate(c) => c.record(),
@@ -141,6 +145,7 @@ impl Command {
             Self::Ask(c) => c.refusal(model),
             Self::Raster(c) => c.refusal(model),
             Self::Patch(c) => c.refusal(model),
+            Self::Obstacle(c) => c.refusal(model),
             Self::Draw(c) => c.refusal(model),
             Self::Wind(c) => c.refusal(model),
             Self::Plate(c) => c.refusal(model),
@@ -160,6 +165,7 @@ impl Command {
             Self::Setting(c) => c.merge_key(),
             Self::Sheet(_)
             | Self::Ask(_)
+            | Self::Obstacle(_)
             | Self::Draw(_)
             | Self::Job(_)
             | Self::Plate(_)
@@ -185,7 +191,8 @@ pub fn listed() -> Vec<Command> {
     let draw = DrawCommand::LISTED.iter().cloned().map(Command::Draw);
     let patch = PatchCommand::LISTED.iter().cloned().map(Command::Patch);
     let view = ViewCommand::LISTED.iter().cloned().map(Command::View);
-    let making = sheet.chain(raster).chain(wind).chain(draw).chain(patch);
+    let obstacle = ObstacleCommand::LISTED.iter().cloned().map(Command::Obstacle);
+    let making = sheet.chain(raster).chain(wind).chain(draw).chain(patch).chain(obstacle);
     making.chain(plate).chain(setting).chain(job).chain(view).collect()
 }
 
@@ -207,6 +214,7 @@ pub fn apply(model: &mut Model, command: Command) {
         Command::Ask(c) => c.apply(model),
         Command::Raster(c) => c.apply(model),
         Command::Patch(c) => c.apply(model),
+        Command::Obstacle(c) => c.apply(model),
         Command::Draw(c) => c.apply(model),
         Command::Wind(c) => c.apply(model),
         Command::Plate(c) => c.apply(model),

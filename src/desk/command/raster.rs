@@ -164,6 +164,7 @@ fn remove(model: &mut Model, id: Id) {
     let name = model.sheet.raster(id).map(|r| r.name.clone()).unwrap_or_default();
     model.sheet.rasters.retain(|r| r.id != id);
     model.sheet.patches.retain(|p| p.raster != id);
+    model.sheet.obstacles.retain(|o| o.raster != id);
     model.drop_lost_selection();
     model.session.notices.done_with_undo(format!("Removed {name} and its patches"));
 }

@@ -54,6 +54,7 @@ impl ViewCommand {
         Self::Page(Page::Spacing),
         Self::Page(Page::Winds),
         Self::Page(Page::Verdict),
+        Self::Page(Page::Obstacles),
         Self::Page(Page::Regimes),
         Self::Page(Page::Plate),
         Self::NextPage,
@@ -219,8 +220,11 @@ fn page_record(page: Page) -> Record {
         Page::Winds => Record::new("view.winds", "Bench: winds", "Sand rose and drift.").alt("4"),
         Page::Verdict => Record::new("view.verdict", "Bench: verdict", "The dial and the theories.").alt("5"),
         Page::Regimes => {
-            Record::new("view.regimes", "Bench: regimes", "Two winds that would make the trend.").alt("7")
+            Record::new("view.regimes", "Bench: regimes", "Two winds that would make the trend.").alt("6")
         }
-        Page::Plate => Record::new("view.plate", "Bench: plate", "The figure for print.").alt("6"),
+        Page::Obstacles => {
+            Record::new("view.obstacles", "Bench: obstacles", "Crests round outcrops as wind vanes.").alt("7")
+        }
+        Page::Plate => Record::new("view.plate", "Bench: plate", "The figure for print.").alt("8"),
     }
 }

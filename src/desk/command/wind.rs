@@ -2,7 +2,7 @@
 
 use std::path::PathBuf;
 
-use crate::desk::{Answer, Ask, Import, MergeKey, Model, Page, Purpose, Reading, Slot};
+use crate::desk::{Answer, Ask, Import, MergeKey, Model, Page, Pick, Purpose, Reading, Slot};
 use crate::files::wind_table::WindImport;
 use crate::ground::{Body, LonLat};
 use crate::study::{Id, WindEntry};
@@ -18,6 +18,8 @@ pub enum WindCommand {
     Review(Id),
     /// Another reading of the file in the preview.
     Reread(WindImport),
+    /// Other stations or cells of the file in the preview.
+    Choose(Pick),
     /// Mast and name in the preview.
     Describe {
         name: String,
@@ -65,6 +67,9 @@ impl WindCommand {
             Self::Reread(_) => {
                 Record::new("wind.reread", "Read differently", "Changes how the file is read.")
             }
+            Self::Choose(_) => {
+                Record::new("wind.choose", "Choose cells", "Which stations or cells of the file to take.")
+            }
             Self::Describe { .. } => {
                 Record::new("wind.describe", "Describe the mast", "Height and roughness.")
             }
@@ -94,7 +99,7 @@ impl WindCommand {
 
     pub(super) fn refusal(&self, model: &Model) -> Option<&'static str> {
         match self {
-            Self::Reread(_) | Self::Describe { .. } | Self::Accept | Self::Forget
+            Self::Reread(_) | Self::Choose(_) | Self::Describe { .. } | Self::Accept | Self::Forget
                 if model.session.import.is_none() =>
             {
                 Some("no file is in the preview")
@@ -125,8 +130,8 @@ impl WindCommand {
         match self {
             Self::AskImport => model.session.ask = Some(Ask::new(Purpose::ImportWinds, "")),
             Self::Preview(path) => {
-                let body = model.wind_body();
-                preview(model, move || Import::of_file(&path, body));
+                let (body, centres) = (model.wind_body(), model.patch_centres());
+                preview(model, move || Import::of_file(&path, body, &centres));
             }
             Self::Review(id) => {
                 if let Some(entry) = model.sheet.wind(id).cloned() {
@@ -136,12 +141,15 @@ impl WindCommand {
             Self::Reread(how) => {
                 if let Some(import) = &mut model.session.import {
                     import.import = how;
-                    import.outcome = None;
-                    let (path, how) = (import.path.clone(), import.import.clone());
-                    model.session.jobs.start(Slot::ReadWinds, "Reading the winds", move |_, post| {
-                        post.answer(Answer::Reading(Reading::of(&path, &how)));
-                    });
                 }
+                reread(model);
+            }
+            Self::Choose(pick) => {
+                let centres = model.patch_centres();
+                if let Some(import) = &mut model.session.import {
+                    import.choose(&pick, &centres);
+                }
+                reread(model);
             }
             Self::Describe { name, height_m, roughness_m, body } => {
                 if let Some(import) = &mut model.session.import {
@@ -190,14 +198,33 @@ fn preview(model: &mut Model, guess: impl FnOnce() -> Result<Import, String> + S
     });
 }
 
+/// Reads the file in the preview as it is taken now.
+fn reread(model: &mut Model) {
+    let Some(import) = &mut model.session.import else { return };
+    import.outcome = None;
+    let (path, how) = (import.path.clone(), import.import.clone());
+    model.session.jobs.start(Slot::ReadWinds, "Reading the winds", move |_, post| {
+        post.answer(Answer::Cells(Import::cells_of(&path, &how)));
+        post.answer(Answer::Reading(Reading::of(&path, &how)));
+    });
+}
+
 fn accept(model: &mut Model) {
     let Some(import) = model.session.import.take() else { return };
-    let id = import.replaces.unwrap_or_else(|| model.sheet.fresh_id());
-    let entry = import.into_entry(id);
-    match model.sheet.winds.iter_mut().find(|w| w.id == id) {
-        Some(known) => *known = entry,
-        None => model.sheet.winds.push(entry),
+    let entries = import.into_entries(model.sheet.fresh_id());
+    model.view.wind = entries.first().map(|entry| entry.id);
+    if entries.len() > 1 {
+        let words = format!(
+            "Added {} wind records; the winds page says whether all of them or the nearest judge a patch",
+            entries.len()
+        );
+        model.session.notices.done_with_undo(words);
     }
-    model.view.wind = Some(id);
+    for entry in entries {
+        match model.sheet.winds.iter_mut().find(|w| w.id == entry.id) {
+            Some(known) => *known = entry,
+            None => model.sheet.winds.push(entry),
+        }
+    }
     model.view.page = Page::Winds;
 }

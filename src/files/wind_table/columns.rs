@@ -76,6 +76,50 @@ pub(super) fn wind(columns: &[Column], taken: &[usize]) -> Option<WindColumns> {
     }
 }
 
+/// Columns named as components toward east and north.
+pub(super) fn components(columns: &[Column], taken: &[usize]) -> Option<(usize, usize)> {
+    let find = |names: &[&str], word: &str| {
+        columns.iter().enumerate().position(|(at, column)| {
+            let words = words(&column.name);
+            let first = words.first().map(String::as_str).unwrap_or("");
+            !taken.contains(&at)
+                && !spoilt(&words)
+                && (names.contains(&first) || words.iter().any(|w| w == word))
+        })
+    };
+    let east = find(&["u", "u10", "u10m", "10u", "uas", "uwnd", "ugrd"], "eastward")?;
+    let north = find(&["v", "v10", "v10m", "10v", "vas", "vwnd", "vgrd"], "northward")?;
+    Some((east, north))
+}
+
+/// A column named for gusts, with numbers in it.
+pub(super) fn gust(columns: &[Column]) -> Option<usize> {
+    columns.iter().position(|column| {
+        let words = words(&column.name);
+        let has = |list: &[&str]| words.iter().any(|w| list.contains(&w.as_str()));
+        let beside = has(&["dir", "direction", "source", "src", "uncert", "flag", "qc", "code", "time"]);
+        has(&["gust", "gusts", "windgust", "wgust"]) && !beside && column.values().next().is_some()
+    })
+}
+
+/// Columns that say where a row belongs: longitude and latitude, or a station.
+pub(super) struct Places {
+    pub lonlat: Option<[usize; 2]>,
+    pub station: Option<usize>,
+}
+
+pub(super) fn places(columns: &[String]) -> Places {
+    let find = |names: &[&str]| {
+        columns
+            .iter()
+            .position(|name| words(name).first().is_some_and(|first| names.contains(&first.as_str())))
+    };
+    let lon = find(&["lon", "longitude", "long", "lng"]);
+    let lat = find(&["lat", "latitude"]);
+    let station = find(&["station", "site", "mast", "cell", "stn", "stationid", "point"]);
+    Places { lonlat: lon.zip(lat).map(|(lon, lat)| [lon, lat]), station }
+}
+
 /// The pair of columns that behaves like speed and direction: all speeds 0–60 with many values,
 /// all directions 0–360 reaching past 180, as near to each other as can be, and restless.
 fn by_values(

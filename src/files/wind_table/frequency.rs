@@ -67,7 +67,7 @@ pub(super) fn read(
         None if samples.is_empty() => Err(WindFileError::Empty { needed: 1 }),
         None => {
             samples.extend(unlisted_calm(&samples));
-            Ok(WindRecord { samples, is_table: true })
+            Ok(WindRecord { samples, is_table: true, gusts: Vec::new() })
         }
     }
 }

@@ -10,6 +10,7 @@ use super::columns::{self, Column, WindColumns, is_code};
 use super::frequency;
 use super::import::{DirectionSense, SpeedUnit, WindImport, WindLayout, ZeroDirection};
 use super::layout::{self, Shape};
+use super::many::{self, Stand};
 use super::number::{Cell, cell, sector};
 use super::text::{for_each_row, load};
 use super::units;
@@ -31,6 +32,8 @@ pub struct WindGuess {
     pub reasons: Vec<String>,
     /// What the user should look at before trusting the guess.
     pub cautions: Vec<Caution>,
+    /// The stations or cells, each with its own import; empty when the file holds one record.
+    pub stands: Vec<Stand>,
 }
 
 /// Guesses how the file at `path` is to be read.
@@ -38,7 +41,10 @@ pub struct WindGuess {
 /// # Errors
 /// [`WindFileError`] when it cannot be opened, or holds no table, or no columns like wind.
 pub fn guess(path: &Path) -> Result<WindGuess, WindFileError> {
-    guess_text(&load(path)?)
+    match many::grid(path)? {
+        Some(guess) => Ok(guess),
+        None => guess_text(&load(path)?),
+    }
 }
 
 /// The first rows of the file at `path`, header lines included, cut by another delimiter.
@@ -70,12 +76,21 @@ pub fn guess_text(text: &str) -> Result<WindGuess, WindFileError> {
         Some(import) => import,
         None => series_import(text, &shape, &mut notes)?,
     };
+    let stands = many::stands(text, &shape, &import);
+    if !stands.is_empty() {
+        let placed = stands.iter().filter(|s| s.at.is_some()).count();
+        notes.reasons.push(format!(
+            "{} stations or cells in one table, {placed} of them with longitude and latitude",
+            stands.len()
+        ));
+    }
     Ok(WindGuess {
-        import,
+        import: stands.first().map_or(import, |stand| stand.import.clone()),
         preview: first_rows(text, shape.delimiter),
         column_names: shape.names,
         reasons: notes.reasons,
         cautions: notes.cautions,
+        stands,
     })
 }
 
@@ -137,6 +152,8 @@ fn frequency_import(text: &str, shape: &Shape, notes: &mut Notes) -> Option<Wind
         missing: Vec::new(),
         zero_direction: ZeroDirection::North,
         day_first: false,
+        only: None,
+        gust: None,
     })
 }
 
@@ -150,6 +167,9 @@ fn series_import(text: &str, shape: &Shape, notes: &mut Notes) -> Result<WindImp
         ));
     }
     notes.reasons.push(reason);
+    if let Some((east, north)) = columns::components(&columns, &time) {
+        return Ok(components_import(text, shape, &columns, time, [east, north], notes));
+    }
     let WindColumns { speed, direction, named, reason } =
         columns::wind(&columns, &time).ok_or(WindFileError::NoWindColumns { columns: shape.columns })?;
     if !named {
@@ -167,6 +187,10 @@ fn series_import(text: &str, shape: &Shape, notes: &mut Notes) -> Result<WindImp
     }
     let speed_unit = speed_unit(&columns[speed], &missing, shape, notes);
     let day_first = day_order(text, shape, &time, notes);
+    let gust = columns::gust(&columns);
+    if let Some(at) = gust {
+        notes.reasons.push(format!("gusts in column {} ({:?}): by its name", at + 1, columns[at].name));
+    }
     Ok(WindImport {
         delimiter: shape.delimiter,
         header_lines: shape.header_lines,
@@ -176,7 +200,52 @@ fn series_import(text: &str, shape: &Shape, notes: &mut Notes) -> Result<WindImp
         layout: WindLayout::Series { time, speed, direction },
         missing,
         day_first,
+        only: None,
+        gust,
     })
+}
+
+/// Components toward east and north: no direction to guess, and the unit by name or in m/s.
+fn components_import(
+    text: &str,
+    shape: &Shape,
+    columns: &[Column],
+    time: Vec<usize>,
+    [east, north]: [usize; 2],
+    notes: &mut Notes,
+) -> WindImport {
+    notes.reasons.push(format!(
+        "wind toward east in column {} ({:?}), toward north in column {} ({:?}): by their names",
+        east + 1,
+        columns[east].name,
+        north + 1,
+        columns[north].name
+    ));
+    let named = units::named(&columns[east].name);
+    if named.is_none() {
+        notes.cautions.push(Caution::new(
+            "speed-unit-guessed",
+            "No name says the unit of the components: metres per second were taken, as models write them. Please check.",
+        ));
+    }
+    // Components are of either sign, so only codes beyond any wind are told from values.
+    let codes =
+        [&columns[east], &columns[north]].into_iter().flat_map(|c| c.numbers.iter().flatten().copied());
+    let mut missing: Vec<f64> = codes.filter(|v| is_code(*v) && v.abs() > 98.0).collect();
+    missing.sort_by(f64::total_cmp);
+    missing.dedup();
+    WindImport {
+        delimiter: shape.delimiter,
+        header_lines: shape.header_lines,
+        speed_unit: named.unwrap_or(SpeedUnit::MetrePerSecond),
+        direction: DirectionSense::Toward,
+        zero_direction: ZeroDirection::North,
+        day_first: day_order(text, shape, &time, notes),
+        layout: WindLayout::Components { time, east, north },
+        missing,
+        only: None,
+        gust: columns::gust(columns),
+    }
 }
 
 /// The body as number columns, and its first rows as they stand.

@@ -2,6 +2,8 @@
 
 use serde::{Deserialize, Serialize};
 
+use crate::files::netcdf::GridWinds;
+
 /// How to read a wind file. Columns are counted from 0.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
 #[serde(deny_unknown_fields)]
@@ -21,6 +23,20 @@ pub struct WindImport {
     /// Whether dates with slashes, dots or dashes and the year last put the day before the month.
     #[serde(default)]
     pub day_first: bool,
+    /// The rows that belong to the record, in a table of several stations or cells; all rows when absent.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub only: Option<OnlyRows>,
+    /// The column of gusts, in the speed unit, where there is one.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub gust: Option<usize>,
+}
+
+/// The rows of one station or cell: those whose cells in `columns` read `values`.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct OnlyRows {
+    pub columns: Vec<usize>,
+    pub values: Vec<String>,
 }
 
 /// What the columns hold.
@@ -31,6 +47,11 @@ pub enum WindLayout {
     /// year, month, day, hour, minute, or one column with a whole date or date and time, or two
     /// with date and time of day; empty when the record has no clock.
     Series { time: Vec<usize>, speed: usize, direction: usize },
+    /// As `Series`, with the wind as components toward east and north in the speed unit.
+    Components { time: Vec<usize>, east: usize, north: usize },
+    /// One cell of a classic NetCDF file: its index along every dimension but time. What is said of
+    /// columns and rows does not apply.
+    Grid { winds: GridWinds, cell: Vec<u64> },
     /// One row a sector: its azimuth (or compass point) in column `sector`, then one column of
     /// frequencies for each speed class [low, high), in the speed unit: shares, percents or counts.
     Frequencies { sector: usize, classes: Vec<SpeedClass> },

@@ -6,14 +6,18 @@ mod frequency;
 mod guess;
 mod import;
 mod layout;
+mod many;
 mod number;
 mod read;
 mod text;
 mod units;
 
 pub use guess::{WindGuess, guess, guess_text, preview};
-pub use import::{DirectionSense, SpeedClass, SpeedUnit, WindImport, WindLayout, ZeroDirection};
+pub use import::{DirectionSense, OnlyRows, SpeedClass, SpeedUnit, WindImport, WindLayout, ZeroDirection};
+pub use many::Stand;
 pub use read::{read, read_text};
+
+use crate::files::error::FileError;
 
 /// Why a wind table could not be read.
 #[derive(Debug, thiserror::Error)]
@@ -47,6 +51,8 @@ pub enum WindFileError {
     NotASector { line: u32, cell: String },
     #[error("the import lists {count} time columns; give none, one, two, or three to six")]
     TimeColumns { count: usize },
+    #[error(transparent)]
+    Netcdf(#[from] FileError),
     #[error("the speed class {low} to {high} is empty or negative")]
     SpeedClass { low: f64, high: f64 },
 }

@@ -2,12 +2,13 @@
 
 use std::path::Path;
 
+use crate::files::netcdf::{Netcdf, blowing};
 use crate::ground::{Azimuth, WindRecord, WindSample};
 
 use super::WindFileError;
 use super::clock::Clock;
 use super::frequency;
-use super::import::{DirectionSense, WindImport, WindLayout, ZeroDirection};
+use super::import::{DirectionSense, OnlyRows, WindImport, WindLayout, ZeroDirection};
 use super::number::{Cell, cell};
 use super::text::{for_each_row, load};
 
@@ -21,7 +22,10 @@ const MOST_BAD: f64 = 0.2;
 /// # Errors
 /// [`WindFileError`] when the file cannot be read or does not fit the import.
 pub fn read(path: &Path, import: &WindImport) -> Result<WindRecord, WindFileError> {
-    read_text(&load(path)?, import)
+    match &import.layout {
+        WindLayout::Grid { winds, cell } => Ok(Netcdf::open(path)?.record(winds, cell)?),
+        _ => read_text(&load(path)?, import),
+    }
 }
 
 /// [`read`] for text at hand.
@@ -30,7 +34,13 @@ pub fn read(path: &Path, import: &WindImport) -> Result<WindRecord, WindFileErro
 /// As [`read`].
 pub fn read_text(text: &str, import: &WindImport) -> Result<WindRecord, WindFileError> {
     match &import.layout {
-        WindLayout::Series { time, speed, direction } => series(text, import, time, *speed, *direction),
+        WindLayout::Series { time, speed, direction } => {
+            series(text, import, time, Pair::Polar { speed: *speed, direction: *direction })
+        }
+        WindLayout::Components { time, east, north } => {
+            series(text, import, time, Pair::Components { east: *east, north: *north })
+        }
+        WindLayout::Grid { .. } => Err(WindFileError::Empty { needed: 1 }),
         WindLayout::Frequencies { sector, classes } => frequency::read(text, import, *sector, classes),
     }
 }
@@ -55,17 +65,39 @@ impl Misfits {
     }
 }
 
-fn series(
-    text: &str,
-    import: &WindImport,
-    time: &[usize],
-    speed: usize,
-    direction: usize,
-) -> Result<WindRecord, WindFileError> {
+/// The two columns of a wind.
+#[derive(Clone, Copy)]
+enum Pair {
+    Polar { speed: usize, direction: usize },
+    Components { east: usize, north: usize },
+}
+
+impl Pair {
+    fn columns(self) -> [usize; 2] {
+        match self {
+            Self::Polar { speed, direction } => [speed, direction],
+            Self::Components { east, north } => [east, north],
+        }
+    }
+}
+
+impl OnlyRows {
+    /// Whether a row belongs to the station or cell.
+    pub(super) fn holds(&self, cells: &[&str]) -> bool {
+        self.columns
+            .iter()
+            .zip(&self.values)
+            .all(|(c, value)| cells.get(*c).is_some_and(|cell| cell == value))
+    }
+}
+
+fn series(text: &str, import: &WindImport, time: &[usize], pair: Pair) -> Result<WindRecord, WindFileError> {
     if time.len() > 6 {
         return Err(WindFileError::TimeColumns { count: time.len() });
     }
-    let wanted = time.iter().copied().chain([speed, direction]).max().unwrap_or(0);
+    let [first, second] = pair.columns();
+    let picked = import.only.iter().flat_map(|only| only.columns.iter().copied());
+    let wanted = time.iter().copied().chain([first, second]).chain(picked).max().unwrap_or(0);
     let decimal_comma = import.delimiter != ',';
     let clock =
         Clock { day_first: import.day_first, hours_with_minutes: hours_with_minutes(text, import, time) };
@@ -74,8 +106,9 @@ fn series(
         |value: f64| import.missing.iter().any(|code| (code - value).abs() < 1e-6 * code.abs().max(1.0));
 
     let mut samples = Vec::new();
+    let mut gusts = Vec::new();
     let mut short = None;
-    let (mut no_speed, mut no_direction, mut no_time) =
+    let (mut no_first, mut no_second, mut no_time) =
         (Misfits::default(), Misfits::default(), Misfits::default());
     let mut short_rows = 0;
     for_each_row(text, import.delimiter, import.header_lines, |line, cells| {
@@ -84,22 +117,26 @@ fn series(
             short_rows += 1;
             return true;
         }
-        let value = match cell(cells[speed], decimal_comma) {
-            Cell::Number(value) if !missing(value) => Some(value * unit),
+        if import.only.as_ref().is_some_and(|only| !only.holds(cells)) {
+            return true;
+        }
+        let number = |column: usize, misfits: &mut Misfits| match cell(cells[column], decimal_comma) {
+            Cell::Number(value) if !missing(value) => Some(value),
             Cell::Number(_) | Cell::Absent => None,
             Cell::Text => {
-                no_speed.add(line, cells[speed]);
+                misfits.add(line, cells[column]);
                 None
             }
         };
-        let from = match cell(cells[direction], decimal_comma) {
-            Cell::Number(deg) if missing(deg) || !(0.0..=360.0).contains(&deg) => None,
-            Cell::Number(0.0) if import.zero_direction == ZeroDirection::NoDirection => None,
-            Cell::Number(deg) => Some(oriented(deg, import.direction)),
-            Cell::Absent => None,
-            Cell::Text => {
-                no_direction.add(line, cells[direction]);
-                None
+        let (a, b) = (number(first, &mut no_first), number(second, &mut no_second));
+        let (value, from) = match pair {
+            Pair::Components { .. } => blowing(a.map(|a| a * unit).zip(b.map(|b| b * unit))),
+            Pair::Polar { .. } => {
+                let from = b.filter(|deg| {
+                    (0.0..=360.0).contains(deg)
+                        && (*deg != 0.0 || import.zero_direction == ZeroDirection::North)
+                });
+                (a.map(|a| a * unit), from.map(|deg| oriented(deg, import.direction)))
             }
         };
         let at = if time.is_empty() {
@@ -112,6 +149,11 @@ fn series(
             }
             at
         };
+        // A gust is only reported where there was one, so whatever is no number is none.
+        gusts.extend(import.gust.map(|column| match cells.get(column).map(|c| cell(c, decimal_comma)) {
+            Some(Cell::Number(value)) if !missing(value) && value >= 0.0 => Some(value * unit),
+            _ => None,
+        }));
         samples.push(WindSample { line, time: at, speed: value, from, weight: 1.0 });
         true
     });
@@ -123,7 +165,7 @@ fn series(
     if rows == 0 {
         return Err(WindFileError::Empty { needed: 1 });
     }
-    for (column, misfits) in [(speed, no_speed), (direction, no_direction)] {
+    for (column, misfits) in [(first, no_first), (second, no_second)] {
         if let Some((line, cell, count)) = misfits.verdict(rows) {
             return Err(WindFileError::NotNumbers { column: column + 1, line, cell, count, rows });
         }
@@ -131,7 +173,7 @@ fn series(
     if let Some((line, cell, count)) = no_time.verdict(rows) {
         return Err(WindFileError::NotTimes { line, cell, count, rows });
     }
-    Ok(WindRecord { samples, is_table: false })
+    Ok(WindRecord { samples, is_table: false, gusts })
 }
 
 /// The azimuth the wind blows from.

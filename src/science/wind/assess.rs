@@ -5,12 +5,17 @@ use rayon::prelude::*;
 use crate::ground::{Caution, Regime, SandFlow, Seed, Stopped, WindRecord, WindSample, Work};
 
 use super::bootstrap::{CELLS_PER_BLOCK, FEWEST_BLOCKS, Plan, intervals};
+use super::calendar::{Calendar, CalendarSettings, calendar};
 use super::drift_potential;
+use super::gusts::{Gusts, gusts};
 use super::mill::{Mill, YEAR_S};
 use super::movers::Movers;
 use super::quality::{self, Checked, SetAside};
 use super::regime::{Drift, SEASONS, Season, flows, rose, seasons};
+use super::rounding::{Rounding, rounding};
 use super::settings::{Assumption, Site, Transport, WindError, WindSettings};
+use super::site_cautions;
+use super::thinning::{Thinning, thinning};
 
 /// What a record says about sand.
 #[derive(Clone, Debug, PartialEq)]
@@ -46,6 +51,13 @@ pub struct WindAssessment {
     /// The record under any other assumption.
     pub replay: Replay,
     pub cautions: Vec<Caution>,
+    /// By years, months and seasons; `None` without a clock or without sand.
+    pub calendar: Option<Calendar>,
+    /// What a longer interval or coarser classes would have hidden.
+    pub thinning: Option<Thinning>,
+    pub rounding: Rounding,
+    /// An upper bound by the gusts of the record.
+    pub gusts: Option<Gusts>,
 }
 
 /// The drift had another law or threshold been chosen.
@@ -120,7 +132,7 @@ pub fn assess(
         let by_practice = |v: f64| mill.drift_potential(v);
         let mut drift = movers.drift(drift_potential::UNIT, by_practice);
         if can_draw && drift.total > 0.0 {
-            intervals(&mut drift, &movers, by_practice, &plan, settings.resamples, seed, work)?;
+            intervals(&mut drift, &movers.cumulated(by_practice), &plan, settings.resamples, seed, work)?;
         }
         Some(drift)
     } else {
@@ -139,7 +151,7 @@ pub fn assess(
         });
     }
     let draws = if can_draw {
-        intervals(&mut flux, &movers, |v| mill.flux(v), &plan, settings.resamples, seed, work)?;
+        intervals(&mut flux, &movers.cumulated(|v| mill.flux(v)), &plan, settings.resamples, seed, work)?;
         redraw(&movers, &mill, &plan, settings, seed, work)?
     } else {
         Vec::new()
@@ -152,6 +164,12 @@ pub fn assess(
         ));
     }
     cautions.extend(drift_cautions(record, &kept, &flux, &movers, can_draw, &mill, interval_s));
+    cautions.extend(site_cautions::of(site, interval_s));
+    let by_calendar = CalendarSettings::of(&mill, interval_s.filter(|_| !record.is_table), settings);
+    let calendar = calendar(&kept, |v| mill.flux(v), &by_calendar, seed, work)?;
+    let thinning = thinning(&kept, interval_s.filter(|_| !record.is_table), |v| mill.flux(v), work)?;
+    let rounding = rounding(&kept, |v| mill.flux(v));
+    let gusts = gusts(record, &kept, |v| mill.flux(v), mill.unit());
 
     Ok(WindAssessment {
         rows: record.samples.len(),
@@ -174,6 +192,10 @@ pub fn assess(
         replay: Replay { mill, movers },
         flux,
         cautions,
+        calendar,
+        thinning,
+        rounding,
+        gusts,
     })
 }
 
@@ -309,9 +331,6 @@ fn drift_cautions(
 
 #[cfg(test)]
 mod tests {
-    use super::super::law::Law;
-    use super::super::settings::Doubt;
-    use super::super::threshold::{self, Threshold};
     use super::*;
     use crate::ground::{Azimuth, Body};
     use rand::Rng as _;
@@ -322,19 +341,7 @@ mod tests {
     }
 
     fn settings() -> WindSettings {
-        WindSettings {
-            grain_m: 250e-6,
-            grain_density: 2650.0,
-            cohesion: threshold::COHESION,
-            threshold: Threshold::ShaoLu,
-            threshold_ustar: None,
-            transport: Transport::Physical(Law::Kok),
-            greatest_speed: 75.0,
-            block_days: 30.0,
-            resamples: 60,
-            doubt: Doubt { grain: 1.3, grain_density: 1.05, cohesion: 1.7, roughness: 3.0 },
-            storm_quantile: 0.9,
-        }
+        WindSettings { block_days: 30.0, resamples: 60, ..WindSettings::default() }
     }
 
     /// Three-hourly winds of a year: westerly in winter, southerly in summer, turned by `turn`.
@@ -353,7 +360,7 @@ mod tests {
                 }
             })
             .collect();
-        WindRecord { samples, is_table: false }
+        WindRecord { samples, is_table: false, gusts: Vec::new() }
     }
 
     #[test]

@@ -7,7 +7,7 @@ use rayon::prelude::*;
 use crate::ground::{Method, Read, Seed, Source, Stopped, Symbol, Work};
 use crate::numeric::quantile::of_sorted;
 
-use super::movers::Movers;
+use super::movers::Cumulated;
 use super::regime::Drift;
 
 /// The block bootstrap of a record.
@@ -98,8 +98,7 @@ impl Plan {
 /// [`Stopped`] when asked to.
 pub fn intervals(
     drift: &mut Drift,
-    movers: &Movers,
-    flux: impl Fn(f64) -> f64 + Sync,
+    cumulated: &Cumulated,
     plan: &Plan,
     resamples: u32,
     seed: Seed,
@@ -108,8 +107,7 @@ pub fn intervals(
     work.phase("resampling winds", u64::from(resamples));
     let draw = |index: u32| {
         work.advance(1)?;
-        let drawn = movers.draw(&plan.starts(seed, u64::from(index)), &flux);
-        Ok(Drift::of(&drawn.all, drift.unit))
+        Ok(Drift::of_sums(cumulated.draw(&plan.starts(seed, u64::from(index))), drift.unit))
     };
     let draws: Vec<Drift> = (0..resamples).into_par_iter().map(draw).collect::<Result<_, Stopped>>()?;
     let mut ratios: Vec<f64> = draws.iter().filter_map(|d| d.ratio).collect();
@@ -128,6 +126,7 @@ pub fn intervals(
 
 #[cfg(test)]
 mod tests {
+    use super::super::movers::Movers;
     use super::super::movers::tests::sample;
     use super::*;
 
@@ -155,7 +154,7 @@ mod tests {
         let half_with = |seasons: Option<&[f64]>| {
             let mut drift = movers.drift("u", |_| 1.0);
             let plan = Plan::new(movers.count(), seasons);
-            intervals(&mut drift, &movers, |_| 1.0, &plan, 500, Seed(3), &Work::quiet())
+            intervals(&mut drift, &movers.cumulated(|_| 1.0), &plan, 500, Seed(3), &Work::quiet())
                 .expect("not stopped");
             drift.toward_ci95_half_deg.expect("an interval")
         };
@@ -177,7 +176,8 @@ mod tests {
         let movers = movers(&towards, 1);
         let mut drift = movers.drift("u", |_| 1.0);
         let plan = Plan::new(movers.count(), None);
-        intervals(&mut drift, &movers, |_| 1.0, &plan, 1000, Seed(2), &Work::quiet()).expect("not stopped");
+        intervals(&mut drift, &movers.cumulated(|_| 1.0), &plan, 1000, Seed(2), &Work::quiet())
+            .expect("not stopped");
         // toward = atan(p/(1−p)) near 45°: sd = sd(p)·d/dp = √(¼/200)·2 rad = 4.05°. Starts inside
         // blocks mix neighbours, which lowers the variance by a third.
         let half = drift.toward_ci95_half_deg.expect("an interval");

@@ -2,7 +2,11 @@
 
 use crate::ground::{Caution, WindSample};
 
+use super::rounding::direction_step;
+
 const DAY: i64 = 86_400;
+/// Steps of direction from here on are named, degrees: as wide as a sector of the rose.
+const COARSE_DEG: f64 = 5.0;
 
 /// Cautions on length, season, gaps and sampling.
 pub(super) fn time_cautions(
@@ -86,7 +90,7 @@ pub(super) fn time_cautions(
     }
 }
 
-const MONTHS: [&str; 12] = [
+pub(super) const MONTHS: [&str; 12] = [
     "January",
     "February",
     "March",
@@ -153,16 +157,7 @@ pub(super) fn season_of(time: i64) -> u8 {
 
 /// Directions that all lie on a coarse compass.
 pub(super) fn rounding(kept: &[WindSample]) -> Option<Caution> {
-    let directions: Vec<f64> =
-        kept.iter().filter(|s| s.speed > Some(0.0)).filter_map(|s| s.from).map(|a| a.deg()).collect();
-    if directions.len() < 50 {
-        return None;
-    }
-    let on = |step: f64| {
-        let hits = directions.iter().filter(|d| (*d - step * (*d / step).round()).abs() < 0.01).count();
-        hits * 1000 >= directions.len() * 995
-    };
-    let step = [90.0, 45.0, 30.0, 22.5, 20.0, 10.0, 5.0].into_iter().find(|s| on(*s))?;
+    let step = direction_step(kept).filter(|step| *step >= COARSE_DEG)?;
     Some(Caution::new(
         "rounded-direction",
         format!(

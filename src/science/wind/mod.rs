@@ -3,16 +3,21 @@
 pub mod air;
 mod assess;
 mod bootstrap;
+pub mod calendar;
 mod coverage;
 pub mod drift_potential;
+pub mod gusts;
 pub mod law;
 pub mod log_law;
 mod mill;
 mod movers;
 pub mod quality;
 pub mod regime;
+pub mod rounding;
 pub mod saturation;
 mod settings;
+mod site_cautions;
+pub mod thinning;
 pub mod threshold;
 
 pub use assess::{Replay, Sensitivity, WindAssessment, assess};
@@ -37,6 +42,10 @@ pub const METHODS: &[&Method] = &[
     &drift_potential::METHOD,
     &regime::METHOD,
     &bootstrap::METHOD,
+    &calendar::METHOD,
+    &gusts::METHOD,
+    &rounding::METHOD,
+    &thinning::METHOD,
     &saturation::SETTLING,
     &saturation::WAVELENGTH,
 ];

@@ -101,6 +101,22 @@ impl Movers {
             .collect()
     }
 
+    /// Running sums over cells, for drawing drifts under one flux.
+    pub fn cumulated(&self, flux: impl Fn(f64) -> f64) -> Cumulated {
+        let mut sums = vec![[0.0; 3]];
+        let mut so_far = [0.0; 3];
+        for ends in self.firsts.windows(2) {
+            for row in &self.rows[ends[0]..ends[1]] {
+                let weight = row.weight * flux(row.speed);
+                for (sum, part) in so_far.iter_mut().zip([weight, weight * row.east, weight * row.north]) {
+                    *sum += part;
+                }
+            }
+            sums.push(so_far);
+        }
+        Cumulated { sums }
+    }
+
     /// The drift of the whole record.
     pub fn drift(&self, unit: &'static str, flux: impl Fn(f64) -> f64) -> Drift {
         Drift::of(&self.flows(|_| true, flux), unit)
@@ -162,6 +178,31 @@ impl Movers {
         }
         let season = if self.season.is_some() { by_sector(&season) } else { Vec::new() };
         Regime { all: by_sector(&all), storms: by_sector(&storms), season }
+    }
+}
+
+/// Total, east and north flow of all cells before each, so that a block costs two look-ups.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Cumulated {
+    sums: Vec<[f64; 3]>,
+}
+
+impl Cumulated {
+    /// Total, east and north flow of blocks that begin at the cells `starts`, as many cells as the record
+    /// has, closed to a ring.
+    pub fn draw(&self, starts: &[usize]) -> [f64; 3] {
+        let count = self.sums.len() - 1;
+        let mut drawn = [0.0; 3];
+        let mut left = count;
+        for &start in starts {
+            let end = start + CELLS_PER_BLOCK.min(left);
+            left -= end - start;
+            let (inside, over) = (end.min(count), end.saturating_sub(count));
+            for (k, sum) in drawn.iter_mut().enumerate() {
+                *sum += self.sums[inside][k] - self.sums[start][k] + self.sums[over][k];
+            }
+        }
+        drawn
     }
 }
 
@@ -263,6 +304,15 @@ pub(super) mod tests {
             let turn = a.toward.zip(b.toward).map_or(f64::NAN, |(p, q)| p.turn_from(q).abs());
             assert!(turn < 0.2, "direction off by {turn}°");
         }
+        let [total, east, north] = movers.cumulated(cube).draw(&starts);
+        let drift = Drift::of(&whole.all, "");
+        crate::assert_close!(total, drift.total, 1e-9 * total, "cumulated total");
+        crate::assert_close!(f64::hypot(east, north), drift.resultant, 1e-9 * total, "cumulated resultant");
+        // A block that runs over the end begins again at the start.
+        let last = movers.count() - 1;
+        let ring = movers.cumulated(cube).draw(&[last, 0])[0];
+        let expected = Drift::of(&movers.draw(&[last, 0], cube).all, "").total;
+        crate::assert_close!(ring, expected, 1e-9 * total, "ring");
         let sum: f64 = movers.totals(cube).iter().sum();
         crate::assert_close!(sum, Drift::of(&whole.all, "").total, 1e-9, "cells add up");
     }

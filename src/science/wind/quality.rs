@@ -288,7 +288,7 @@ mod tests {
                 weight: 1.0,
             })
             .collect();
-        WindRecord { samples, is_table: false }
+        WindRecord { samples, is_table: false, gusts: Vec::new() }
     }
 
     fn breeze(n: usize) -> Vec<f64> {

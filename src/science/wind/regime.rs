@@ -67,6 +67,11 @@ impl Drift {
             east += flow.weight * e;
             north += flow.weight * n;
         }
+        Self::of_sums([total, east, north], unit)
+    }
+
+    /// From the total and the vector sum, east and north.
+    pub fn of_sums([total, east, north]: [f64; 3], unit: &'static str) -> Self {
         let resultant = f64::hypot(east, north);
         let moves = total > 0.0;
         Self {

@@ -3,7 +3,7 @@
 use crate::ground::{Air, Stopped};
 
 use super::law::Law;
-use super::threshold::Threshold;
+use super::threshold::{COHESION, Threshold};
 
 /// Where the mast stands.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -41,6 +41,26 @@ pub struct WindSettings {
     pub doubt: Doubt,
     /// Share of the time with moving sand below which a wind is no storm, in (0, 1).
     pub storm_quantile: f64,
+}
+
+/// Quartz sand of 0.25 mm by Shao and Lu's threshold and Kok's law, drawn a thousand times in blocks of a
+/// week.
+impl Default for WindSettings {
+    fn default() -> Self {
+        Self {
+            grain_m: 250e-6,
+            grain_density: 2650.0,
+            cohesion: COHESION,
+            threshold: Threshold::ShaoLu,
+            threshold_ustar: None,
+            transport: Transport::Physical(Law::Kok),
+            greatest_speed: 75.0,
+            block_days: 7.0,
+            resamples: 1000,
+            doubt: Doubt { grain: 1.3, grain_density: 1.05, cohesion: 1.7, roughness: 3.0 },
+            storm_quantile: 0.9,
+        }
+    }
 }
 
 /// Factors, each ≥ 1, within which parts of the mill are known: the draws take each evenly in the

@@ -10,6 +10,7 @@ use crate::study::{
     TrendFinding, VerdictFinding, WindFinding,
 };
 
+use super::records;
 use super::regimes::backwards;
 
 /// The version of the layout.
@@ -70,6 +71,7 @@ fn patch(p: &PatchFinding) -> Value {
         "backwards": p.backwards.as_ref().map(backwards),
         "birth": p.birth.iter().map(sand::birth).collect::<Vec<_>>(),
         "finding": p.sentence, "cautions": cautions(&p.cautions),
+        "obstacles": p.obstacles.as_ref().map(|o| super::obstacles::json(o, metres)),
     })
 }
 
@@ -149,6 +151,10 @@ fn wind(w: &WindFinding) -> Value {
             "unit": s.drift.unit,
         })).collect::<Vec<_>>(),
         "sand": w.sand.as_ref().map(sand::sand),
+        "calendar": w.calendar.as_ref().map(records::calendar),
+        "thinning": w.thinning.as_ref().map(records::thinning),
+        "rounding": records::rounding(&w.rounding),
+        "gusts": w.gusts.as_ref().map(|g| json!({ "rows": g.rows, "factor": g.factor, "flux_at_most": drift(&g.drift) })),
         "cautions": cautions(&w.cautions),
     })
 }
@@ -170,7 +176,7 @@ fn together(t: &TogetherFinding) -> Value {
     })
 }
 
-fn drift(d: &DriftFinding) -> Value {
+pub(super) fn drift(d: &DriftFinding) -> Value {
     json!({
         "unit": d.unit, "total": d.total, "resultant": d.resultant, "ratio": d.ratio, "ratio_ci95": d.ratio_ci95,
         "toward_deg": d.toward.map(|a| a.deg()), "toward_ci95_half_deg": d.toward_ci95_half_deg,

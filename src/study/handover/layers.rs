@@ -2,6 +2,7 @@
 
 use std::collections::BTreeMap;
 
+use super::obstacles::outcrop_layer;
 use crate::files::layers::{Column, Geometry, GeometryKind, Layer, Row, Srs, Value};
 use crate::ground::{LengthUnit, Place, Point, Polyline};
 use crate::study::{Findings, Id, OpenRaster, PatchFinding, Sheet, Sources, VerdictFinding};
@@ -215,7 +216,12 @@ pub fn layers(sheet: &Sheet, findings: &Findings, sources: &Sources) -> Vec<Laye
         .flat_map(|(raster, open, patches)| {
             let suffix = if many { format!("_{}", raster.0) } else { String::new() };
             let srs = srs(open);
-            [patch_layer(sheet, open, &patches, &srs, &suffix), stroke_layer(open, &patches, &srs, &suffix)]
+            let outcrops = outcrop_layer(sheet, open, &patches, &srs, &suffix);
+            let own = [
+                patch_layer(sheet, open, &patches, &srs, &suffix),
+                stroke_layer(open, &patches, &srs, &suffix),
+            ];
+            own.into_iter().chain(outcrops)
         })
         .collect()
 }

@@ -4,6 +4,8 @@ mod bodies;
 mod json;
 mod layers;
 mod methods;
+mod obstacles;
+mod records;
 mod regimes;
 mod sand;
 mod weighing;

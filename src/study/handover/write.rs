@@ -7,6 +7,8 @@ use crate::files::save;
 use crate::study::{Findings, Sheet, Sources};
 
 use super::layers::{layers, lonlat_patches, node_table, patch_table, verdict_table, wind_table};
+use super::obstacles::{lonlat_outcrops, obstacle_table};
+use super::records::calendar_table;
 use super::weighing::{flip_table, sensitivity_table, together_table};
 use super::{bibtex, findings_json};
 
@@ -51,6 +53,8 @@ pub fn write_all(
         together_table(findings),
         wind_table(findings),
         sensitivity_table(findings),
+        calendar_table(findings),
+        obstacle_table(findings),
     ];
     for table in tables.iter().filter(|t| !t.rows.is_empty()) {
         let name = format!("{}.csv", table.name);
@@ -65,6 +69,10 @@ pub fn write_all(
     if let Some(layer) = lonlat_patches(sheet, findings, sources) {
         write_geojson(&folder.join("patches.geojson"), &layer)?;
         written.push("patches.geojson".into());
+    }
+    if let Some(layer) = lonlat_outcrops(sheet, findings, sources) {
+        write_geojson(&folder.join("outcrops.geojson"), &layer)?;
+        written.push("outcrops.geojson".into());
     }
     Ok(written)
 }

@@ -1,8 +1,10 @@
 //! The bench: the evidence for the selected patch, page by page, in the order of the reasoning.
 
 mod body;
+mod calendar;
 mod ground;
 mod judges;
+mod obstacles;
 mod plate;
 mod regimes;
 mod sand;
@@ -32,6 +34,10 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
             Page::Ground => ground::show(ui, model, out),
             Page::Winds => winds::show(ui, model, out),
             Page::Plate => plate::show(ui, model, out),
+            Page::Obstacles => {
+                let finding = subject(ui, model, out);
+                obstacles::show(ui, model, finding, out);
+            }
             Page::Trend | Page::Spacing | Page::Verdict | Page::Regimes => {
                 let Some(finding) = subject(ui, model, out) else { return };
                 match model.view.page {

@@ -2,7 +2,7 @@
 
 use egui::{Grid, RichText, Ui};
 
-use super::{figure_mm, judges, sand, say};
+use super::{calendar, figure_mm, judges, sand, say};
 use crate::desk::{Command, Model, WindCommand, facts};
 use crate::plate::{numbers, sand_rose};
 use crate::study::{WindEntry, WindFinding};
@@ -51,6 +51,7 @@ fn record(ui: &mut Ui, model: &Model, finding: &WindFinding) {
         }
     }
     seasons(ui, model, finding);
+    calendar::show(ui, model, finding);
 }
 
 fn seasons(ui: &mut Ui, model: &Model, finding: &WindFinding) {

@@ -80,7 +80,8 @@ pub fn name(painter: &Painter, patch: &Patch, standing: Standing, lens: &Lens, i
     Some(rect)
 }
 
-fn halo_text(
+/// Letters on a halo.
+pub fn halo_text(
     painter: &Painter,
     at: Pos2,
     galley: &std::sync::Arc<egui::Galley>,

@@ -12,6 +12,7 @@ use crate::study::{Id, Patch};
 
 use super::draw::{self, Standing};
 use super::lens::Lens;
+use super::outcrops;
 use super::pick::{self, Corner};
 use super::{Table, TableState};
 
@@ -57,6 +58,7 @@ impl Hand<'_> {
         let camera = self.looked(state);
         self.clicks(state, hovered);
         self.names(hovered);
+        outcrops::names(self.ui, self.response, self.table, &mut self.commands);
         self.corners(state);
         let camera = self.keys(state, camera);
         if camera != self.table.camera {

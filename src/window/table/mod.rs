@@ -7,6 +7,7 @@ mod hand;
 mod ink;
 mod lens;
 mod margin;
+mod outcrops;
 mod pick;
 mod strokes;
 mod tiles;
@@ -16,7 +17,7 @@ use egui::{Align2, FontId, Painter, Rect, Response, Role, Sense, Ui, WidgetInfo}
 
 use crate::desk::{self, Camera, Command, Laid, Model, Opened, ViewCommand};
 use crate::ground::{Bounds, Point};
-use crate::study::{Id, Patch, PatchFinding, RasterEntry};
+use crate::study::{Id, Obstacle, Patch, PatchFinding, RasterEntry};
 
 use super::theme;
 use draw::Standing;
@@ -55,6 +56,10 @@ struct Table<'a> {
 impl Table<'_> {
     fn patches(&self) -> impl Iterator<Item = &Patch> + Clone {
         self.model.sheet.patches.iter().filter(|patch| patch.raster == self.entry.id)
+    }
+
+    fn obstacles(&self) -> impl Iterator<Item = &Obstacle> {
+        self.model.sheet.obstacles.iter().filter(|o| o.raster == self.entry.id)
     }
 
     fn selected(&self) -> Option<&Patch> {
@@ -163,6 +168,9 @@ fn paint(painter: &Painter, response: &Response, table: &Table<'_>, state: &mut 
             table.patches().partition(|p| model.view.patch == Some(p.id));
         for patch in rest.into_iter().chain(top) {
             draw::outline(&inside, &patch.outline, table.standing(patch.id, hovered), lens, ink);
+        }
+        for obstacle in table.obstacles() {
+            outcrops::draw(&inside, obstacle, model.view.obstacle == Some(obstacle.id), lens, ink);
         }
     }
     if let Some(draft) = model.session.draft.as_ref().filter(|draft| draft.raster == table.entry.id) {

@@ -312,6 +312,10 @@ pub fn wind_finding() -> WindFinding {
             "The wind record spans two years; the dunes may be older than its winds.",
         )],
         sand: None,
+        calendar: None,
+        thinning: None,
+        rounding: Default::default(),
+        gusts: None,
     }
 }
 
@@ -339,6 +343,7 @@ pub fn patch_finding(reach: &Reach) -> PatchFinding {
             Caution::new("tensor-spectrum", "Tensor and spectrum agree within their intervals, but the spectrum rests on 12 windows only."),
         ],
         birth: Vec::new(),
+        obstacles: None,
     }
 }
 

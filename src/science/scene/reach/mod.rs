@@ -98,6 +98,28 @@ pub fn patches() -> Vec<PatchTruth> {
     ]
 }
 
+/// An outcrop round which the long dunes part: its ring, and the obliquity of the dunes to the wind that
+/// parted there. They follow the flow's lines, so it is 0.
+#[derive(Clone, Debug)]
+pub struct OutcropTruth {
+    pub name: &'static str,
+    pub outline: Polygon,
+    pub obliquity_deg: f64,
+}
+
+/// The outcrops of the demo with their truth.
+pub fn outcrops() -> Vec<OutcropTruth> {
+    ["Tall Stack", "Low Stack"]
+        .into_iter()
+        .zip(&dunes::OUTCROPS)
+        .map(|(name, o)| OutcropTruth {
+            name,
+            outline: Polygon { outer: o.ring(1.0), holes: Vec::new() },
+            obliquity_deg: 0.0,
+        })
+        .collect()
+}
+
 /// Pixel to map metres.
 pub fn affine(step: usize) -> Affine {
     let size = PIXEL_M * step as f64;

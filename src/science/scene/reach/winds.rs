@@ -71,5 +71,5 @@ fn record(seasons: &[Season; 2], seed: Seed) -> WindRecord {
             }
         })
         .collect();
-    WindRecord { samples, is_table: false }
+    WindRecord { samples, is_table: false, gusts: Vec::new() }
 }
