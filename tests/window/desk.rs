@@ -8,8 +8,8 @@ use egui::{Key, Modifiers, Pos2, vec2};
 use egui_kittest::Harness;
 use egui_kittest::kittest::{NodeT as _, Queryable as _};
 use ventifact::desk::{
-    Command, Dialog, Model, Page, PatchCommand, PickedRegime, SheetCommand, Standing, ViewCommand, WindCommand,
-    listed,
+    Command, Dialog, Model, Page, PatchCommand, PickedRegime, SheetCommand, Standing, ViewCommand,
+    WindCommand, listed,
 };
 use ventifact::ground::Work;
 use ventifact::study::run::{Memo, run};
