@@ -56,9 +56,9 @@ impl History {
         self.merging = None;
     }
 
-    /// Whether a drag is going on.
-    pub fn is_merging(&self) -> bool {
-        self.merging.is_some()
+    /// Whether an outline is being dragged. A number typed twice is one step too, but the hand is off it.
+    pub fn is_dragging(&self) -> bool {
+        matches!(self.merging, Some(MergeKey::Outline(_)))
     }
 
     /// Puts the previous sheet in place and says what was taken back.

@@ -50,7 +50,7 @@ pub fn follow(model: &mut Model) {
     let unseen = matches!(standing, Some(Standing::Unmeasured | Standing::OutOfDate));
     if let Some(id) = in_hand.filter(|_| unseen) {
         start(model, Task::Quick, vec![id]);
-    } else if !model.session.history.is_merging() {
+    } else if !model.session.history.is_dragging() {
         let wanting = model.session.results.wanting(&model.sheet);
         let winds_wanting = !model.session.results.has_winds(&model.sheet);
         let together_wanting = model.session.results.together().is_none();

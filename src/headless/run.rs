@@ -73,6 +73,18 @@ fn print(findings: &Findings) {
             println!("  caution: {} [{}]", caution.text, caution.code);
         }
     }
+    for joint in &findings.together.joint {
+        println!("{}", joint.sentence);
+        for trend in &joint.trends {
+            let cover = if trend.supply_ln > 0.0 { "sand-covered" } else { "starved" };
+            println!(
+                "  {}: {:.0}°, {:.1} times likelier on {cover} ground",
+                trend.name,
+                trend.axis.deg(),
+                trend.supply_ln.abs().exp()
+            );
+        }
+    }
     for failure in &findings.failures {
         eprintln!("failed: {}: {}", failure.what, failure.why);
     }

@@ -17,6 +17,8 @@ mod patch;
 mod records;
 pub mod run;
 mod sentence;
+#[macro_use]
+mod setting_macros;
 mod setting_list;
 mod settings;
 mod sheet;

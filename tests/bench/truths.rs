@@ -93,7 +93,7 @@ impl Climate {
                 }
             })
             .collect();
-        WindRecord { samples, is_table: false }
+        WindRecord { samples, is_table: false, gusts: Vec::new() }
     }
 }
 

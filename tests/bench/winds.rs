@@ -31,7 +31,7 @@ fn record() -> WindRecord {
             }
         })
         .collect();
-    WindRecord { samples, is_table: false }
+    WindRecord { samples, is_table: false, gusts: Vec::new() }
 }
 
 fn main() {

@@ -134,7 +134,10 @@ fn the_long_dunes_are_told_to_be_fingers_and_the_threshold_could_change_that() {
     let (finding, _) = patch("Long dunes");
     let verdict = &finding.verdicts[0];
     for theory in &verdict.theories {
-        println!("{:<34} {:?} {:.2} {:.3}", theory.name, theory.axis, theory.ln_bayes_factor, theory.posterior);
+        println!(
+            "{:<34} {:?} {:.2} {:.3}",
+            theory.name, theory.axis, theory.ln_bayes_factor, theory.posterior
+        );
     }
     let best = verdict.theories.iter().max_by(|a, b| a.posterior.total_cmp(&b.posterior)).unwrap();
     assert_eq!(best.name, "fingering", "{}", finding.sentence);

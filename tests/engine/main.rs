@@ -17,5 +17,5 @@ mod plates;
 mod records;
 mod samples;
 mod theories;
-mod verdicts;
 mod tiff_writer;
+mod verdicts;

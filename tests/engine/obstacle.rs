@@ -1,6 +1,7 @@
 //! The obstacle test on fields with known truth: symmetries, intervals, and the null.
 
 #[path = "../bench/outcrops.rs"]
+#[allow(dead_code, reason = "the bench takes all of it, the suite a part")]
 mod outcrops;
 
 use outcrops::{ANNULUS, Kind, Scene, score};

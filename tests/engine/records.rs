@@ -105,8 +105,8 @@ fn the_reach_mast_read_every_six_hours() {
     assert!(range.high - range.low < 0.1, "an autoregressive wind of 20 hours is well seen every six");
     let calendar = study.finding.calendar.as_ref().expect("a calendar");
     assert_eq!(calendar.months.len(), 12);
-    // The two seasons of the truth: toward 13° in winter, 141° in summer, swinging by 16°.
-    for (month, toward) in [(0, 13.0), (6, 141.0)] {
+    // The two seasons of the truth: toward 34° in winter, 145° in summer, swinging by 16°.
+    for (month, toward) in [(0, 34.0), (6, 145.0)] {
         let drift = &calendar.months[month].drift;
         let off = drift.toward.map_or(f64::NAN, |t| t.turn_from(Azimuth::from_deg(toward)).abs());
         let half = drift.toward_ci95_half_deg.expect("an interval");

@@ -17,6 +17,8 @@ pub const METHOD: Method = Method {
     limits: &[
         "Γ is 1.5 to 2 by source; with Γ = 0 the rule is that of gross bedform-normal transport",
         "Trends whose growth agrees to one part in 10⁹ tie, and all are given",
+        "Linear stability in all directions (Gadal et al. 2019), by which the spacing changes too, is left out: its \
+         coefficients could not be read",
     ],
     sources: &[
         COURRECH,

@@ -1,6 +1,6 @@
 //! The step directions and speeds were reported at, and what that does to the drift.
 
-use crate::ground::{Method, Read, SandFlow, Source, Symbol, WindSample};
+use crate::ground::{Method, Read, Source, Symbol, WindSample};
 
 /// The correction for grouped directions.
 pub const METHOD: Method = Method {
@@ -126,27 +126,11 @@ pub fn grouping_factor(step_deg: f64) -> f64 {
     half / half.sin()
 }
 
-/// Each flow spread evenly over the `step_deg` its direction stands for. The total stays. It takes the comb
-/// out of a regime, to see whether an answer hangs on it; it is no correction, see the limits above.
-pub fn spread(regime: &[SandFlow], step_deg: f64) -> Vec<SandFlow> {
-    // m = ⌈δ/1°⌉: finer flows would change the resultant by less than 2 in 100 000.
-    let m = step_deg.ceil().max(1.0) as usize;
-    let parts = |flow: &SandFlow| {
-        let (toward, weight) = (flow.toward, flow.weight / m as f64);
-        // θ − δ/2 + δ(k + ½)/m
-        (0..m).map(move |k| SandFlow {
-            toward: toward.rotated(step_deg * ((k as f64 + 0.5) / m as f64 - 0.5)),
-            weight,
-        })
-    };
-    regime.iter().flat_map(parts).collect()
-}
-
 #[cfg(test)]
 mod tests {
     use super::super::regime::Drift;
     use super::*;
-    use crate::ground::{Azimuth, Seed};
+    use crate::ground::{Azimuth, SandFlow, Seed};
     use rand::Rng as _;
 
     fn sample(line: u32, speed: f64, from: f64) -> WindSample {
@@ -176,6 +160,19 @@ mod tests {
         winds.iter().filter_map(flow).collect()
     }
 
+    /// The wrong way to mend it: each flow spread evenly over the step its direction stands for.
+    fn spread(regime: &[SandFlow], step_deg: f64) -> Vec<SandFlow> {
+        let m = step_deg.ceil().max(1.0) as usize;
+        let parts = |flow: &SandFlow| {
+            let (toward, weight) = (flow.toward, flow.weight / m as f64);
+            (0..m).map(move |k| SandFlow {
+                toward: toward.rotated(step_deg * ((k as f64 + 0.5) / m as f64 - 0.5)),
+                weight,
+            })
+        };
+        regime.iter().flat_map(parts).collect()
+    }
+
     #[test]
     fn the_step_is_the_coarsest_that_fits() {
         for step in STEPS_DEG {
@@ -183,20 +180,6 @@ mod tests {
         }
         assert_eq!(direction_step(&winds(10.0).0), None);
         assert_eq!(direction_step(&winds(10.0).1[..FEWEST - 1]), None, "too few to tell");
-    }
-
-    #[test]
-    fn spreading_keeps_the_total_and_shrinks_the_resultant_as_derived() {
-        for step in [1.0, 5.0, 10.0, 22.5, 45.0, 90.0] {
-            let one = [SandFlow { toward: Azimuth::from_deg(359.0), weight: 3.0 }];
-            let drift = Drift::of(&spread(&one, step), "u");
-            let half = (0.5f64 * step).to_radians();
-            crate::assert_close!(drift.total, 3.0, 1e-12, "total");
-            // The sum over m points against the integral: (δ/2m)²/6.
-            crate::assert_close!(drift.resultant / 3.0, half.sin() / half, 2e-5, "shrink at {step}°");
-            let off = drift.toward.map_or(f64::NAN, |t| t.turn_from(one[0].toward).abs());
-            crate::assert_close!(off, 0.0, 1e-9, "direction");
-        }
     }
 
     /// The correction gives back the ratio of the winds before they were rounded; spreading does not.
