@@ -14,7 +14,7 @@ use super::{
 #[derive(Debug)]
 pub enum Answer {
     /// A raster, open to be measured and laid to be seen, or why not.
-    Raster(Id, Option<OpenRaster>, Opened),
+    Raster(Id, Option<Box<OpenRaster>>, Opened),
     Patch(Id, Box<Measured>),
     Winds(Vec<WindResult>),
     /// What all patches say together, as the sheet of this fingerprint stood.
@@ -60,7 +60,7 @@ fn take(model: &mut Model, answer: Answer) {
     match answer {
         Answer::Raster(id, open, opened) => {
             if let Some(open) = open {
-                session.sources.insert(id, open);
+                session.sources.insert(id, *open);
             }
             session.rasters.insert(id, opened);
         }

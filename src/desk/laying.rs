@@ -70,7 +70,7 @@ fn open(entry: &RasterEntry, wake: &Wake, work: &Work) -> Answer {
     // What coarse levels cannot be made of cannot be shown either; the tiles will say why.
     let _ = open.raster.build_coarse(&entry.bands, work);
     let laid = lay(&open, &entry.bands, wake);
-    Answer::Raster(entry.id, Some(open), Opened::Open(Box::new(laid)))
+    Answer::Raster(entry.id, Some(Box::new(open)), Opened::Open(Box::new(laid)))
 }
 
 fn lay(open: &OpenRaster, bands: &Bands, wake: &Wake) -> Laid {

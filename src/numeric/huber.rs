@@ -78,7 +78,7 @@ pub fn inverse<const P: usize>(mut m: [[f64; P]; P]) -> Option<[[f64; P]; P]> {
     (0..P).for_each(|i| out[i][i] = 1.0);
     for col in 0..P {
         let pivot = (col..P).max_by(|a, b| m[*a][col].abs().total_cmp(&m[*b][col].abs()))?;
-        if !(m[pivot][col].abs() > 1e-12 * size) {
+        if m[pivot][col].is_nan() || m[pivot][col].abs() <= 1e-12 * size {
             return None;
         }
         m.swap(col, pivot);

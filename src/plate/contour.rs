@@ -40,10 +40,10 @@ pub(super) fn contour(values: &[f64], columns: usize, level: f64) -> Vec<Vec<[f6
     while let Some(start) = links.keys().next().copied() {
         let (mut line, mut at) = (vec![places[&start]], start);
         while let Some(next) = links.get_mut(&at).and_then(Vec::pop) {
-            if let Some(back) = links.get_mut(&next) {
-                if let Some(k) = back.iter().position(|e| *e == at) {
-                    back.remove(k);
-                }
+            if let Some(back) = links.get_mut(&next)
+                && let Some(k) = back.iter().position(|e| *e == at)
+            {
+                back.remove(k);
             }
             line.push(places[&next]);
             at = next;

@@ -62,10 +62,13 @@ pub fn of_patch(
     finding(sheet, patch.name.clone(), vec![patch.id], trends, work).map(Some)
 }
 
+/// A patch and its trends by name.
+type Judged<'a> = (&'a Patch, Vec<(String, Observed)>);
+
 /// The regimes of patches that share a tag, or of all when no tag joins two with a trend. Takes some
 /// ten milliseconds a group.
 pub fn joint(sheet: &Sheet, found: &[&PatchFinding]) -> Vec<BackwardsFinding> {
-    let judged: Vec<(&Patch, Vec<(String, Observed)>)> = found
+    let judged: Vec<Judged> = found
         .iter()
         .filter_map(|f| sheet.patch(f.id).map(|p| (p, trends(p, &f.trend))))
         .filter(|(_, trends)| !trends.is_empty())
@@ -81,7 +84,7 @@ pub fn joint(sheet: &Sheet, found: &[&PatchFinding]) -> Vec<BackwardsFinding> {
     if groups.is_empty() && judged.len() >= 2 {
         groups.push(("all patches".into(), judged.iter().collect()));
     }
-    let of_group = |(name, members): (String, Vec<&(&Patch, Vec<(String, Observed)>)>)| {
+    let of_group = |(name, members): (String, Vec<&Judged>)| {
         let ids = members.iter().map(|(p, _)| p.id).collect();
         let trends = members.iter().flat_map(|(_, t)| t.clone()).collect();
         finding(sheet, name, ids, trends, &Work::quiet()).ok()

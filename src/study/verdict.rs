@@ -33,7 +33,9 @@ pub fn verdict(
         Ok(judgement) => {
             let mut found = finding(winds, judgement);
             found.supply_ln = together(&[evidence], &winds.foresight, &settings).supply.first().copied();
-            found.flips = what_if::flips(&evidence, patch.stated_axis, winds, &settings, work)?;
+            let leader = found.theories.iter().max_by(|a, b| a.posterior.total_cmp(&b.posterior));
+            let leads = leader.map_or(RANDOM_AXIS, |t| t.name);
+            found.flips = what_if::flips(&evidence, patch.stated_axis, leads, winds, &settings, work)?;
             Ok(found)
         }
         Err(refusal) => Ok(refused(winds, refusal.to_string())),

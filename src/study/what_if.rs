@@ -139,8 +139,9 @@ impl Standing {
     }
 
     /// What turned between two standings, in words. Leaders that build crests in the same way and predict
-    /// the same trend within `margin` are one.
-    fn turned(&self, then: &Self, margin: f64) -> Option<String> {
+    /// the same trend within `margin` are one, and a change to the theory that leads anyway, with the
+    /// winds in doubt, is none.
+    fn turned(&self, then: &Self, leads: &str, margin: f64) -> Option<String> {
         match (self, then) {
             (Self::Refused, Self::Refused) => None,
             (_, Self::Refused) => {
@@ -152,7 +153,7 @@ impl Standing {
                 Self::Judged { class: class2, leader: leader2, axis: axis2, extends: extends2 },
             ) => {
                 let near = axis.zip(*axis2).is_none_or(|(a, b)| a.separation(b) <= margin);
-                let same_leader = leader == leader2 || (extends == extends2 && near);
+                let same_leader = leader == leader2 || *leader2 == leads || (extends == extends2 && near);
                 let mut parts = Vec::new();
                 if class != class2
                     && let (Some(from), Some(to)) = (class, class2)
@@ -160,7 +161,7 @@ impl Standing {
                     parts.push(format!("{from} becomes {to}"));
                 }
                 if !same_leader {
-                    parts.push(format!("“{leader2}” leads instead of “{leader}”"));
+                    parts.push(format!("“{leader2}” would lead"));
                 }
                 (!parts.is_empty()).then(|| parts.join(", "))
             }
@@ -168,13 +169,14 @@ impl Standing {
     }
 }
 
-/// The nearest changes of a verdict, those within the parameter's doubt first.
+/// The nearest changes of a verdict led by the theory `leads`, those within the parameter's doubt first.
 ///
 /// # Errors
 /// [`Stopped`].
 pub fn flips(
     evidence: &TrendEvidence,
     stated: Option<Axis>,
+    leads: &str,
     winds: &WindStudy,
     settings: &VerdictSettings,
     work: &Work,
@@ -188,7 +190,7 @@ pub fn flips(
         for row in &what.rows {
             work.advance(0)?;
             let turned = row.iter().find_map(|case| {
-                let change = now.turned(&standing(evidence, &case.foresight), settings.margin_deg)?;
+                let change = now.turned(&standing(evidence, &case.foresight), leads, settings.margin_deg)?;
                 Some((case, change))
             });
             flips.extend(turned.map(|(case, change)| Flip {
@@ -205,8 +207,8 @@ pub fn flips(
         work.advance(0)?;
         let turned = (1..=45).map(|step| sense * f64::from(step)).find_map(|turn| {
             let moved = TrendEvidence { axis: evidence.axis.rotated(turn), ..*evidence };
-            now.turned(&standing(&moved, &point), settings.margin_deg)
-                .map(|change| (turn, moved.axis, change))
+            let change = now.turned(&standing(&moved, &point), leads, settings.margin_deg)?;
+            Some((turn, moved.axis, change))
         });
         flips.extend(turned.map(|(turn, axis, change)| Flip {
             parameter: "trend",

@@ -33,7 +33,7 @@ fn regime(rng: &mut ChaCha8Rng, index: u64) -> (Vec<SandFlow>, f64) {
             SandFlow { toward: Azimuth::from_deg(deg), weight }
         })
         .collect();
-    (flows, if index % 5 == 0 { 0.0 } else { rng.random_range(0.1..3.0) })
+    (flows, if index.is_multiple_of(5) { 0.0 } else { rng.random_range(0.1..3.0) })
 }
 
 /// What is left of agreement: greatest separations of trends and fingers, in degrees, and how many

@@ -57,7 +57,7 @@ impl Correlation {
         let power = match self.shape {
             1.0 => x,
             2.0 => x * x,
-            shape if shape == 1.5 => x * x.sqrt(),
+            1.5 => x * x.sqrt(),
             shape => x.powf(shape),
         };
         (1.0 - self.noise_share) * (-power).exp()
@@ -70,7 +70,8 @@ impl Correlation {
         let picked: Vec<usize> = thinned(residuals.len(), MOST);
         let n = picked.len();
         let variance = picked.iter().map(|i| residuals[*i].powi(2)).sum::<f64>() / n.max(1) as f64;
-        if n < 3 || !(variance > 0.0) || !(reach > 0.0) {
+        let positive = |x: f64| x > 0.0;
+        if n < 3 || !positive(variance) || !positive(reach) {
             return (Self::NONE, 1.0 / n.max(1) as f64);
         }
         let extent = Bounds::of(places.iter().copied()).map_or(reach, |b| b.width().hypot(b.height()));

@@ -82,7 +82,7 @@ pub fn dipole(field: &Field, outcrop: &Ellipse, annulus: &Annulus) -> Option<Dip
     }
     let w = sums.map(|(sum, count)| sum / count as f64);
     let all: f64 = w.iter().sum();
-    if !(all > 0.0) {
+    if all.is_nan() || all <= 0.0 {
         return None;
     }
     let (along, left) = ((w[0] - w[2]) / all, (w[1] - w[3]) / all);

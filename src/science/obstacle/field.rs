@@ -56,7 +56,7 @@ impl Field {
         let doubled: Vec<f64> = regional.iter().map(|n| n.axis.doubled()).collect();
         let resultant = Resultant::of(&doubled, None);
         let strength = resultant.mean_length();
-        if regional.is_empty() || !(strength > 0.0) {
+        if regional.is_empty() || strength.is_nan() || strength <= 0.0 {
             return None;
         }
         let crest = Axis::from_doubled(resultant.direction());

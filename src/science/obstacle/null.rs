@@ -67,6 +67,9 @@ pub struct Placing {
 }
 
 /// Radii between a virtual outcrop's centre and a real one.
+/// Where a virtual outcrop stands, its coefficients, and the size of its dipole.
+type Virtual = (Point, [f64; 2], Option<f64>);
+
 const CLEARANCE: f64 = 4.0;
 /// Share of the real annulus' nodes a virtual one must hold.
 const LEAST_COVER: f64 = 0.75;
@@ -103,7 +106,7 @@ pub fn null(
     let wanted = LEAST_COVER * held(&own);
     let clear =
         |p: Point| outcrops.iter().all(|o| p.distance(o.centre) >= CLEARANCE * own.radius().max(o.radius()));
-    let drawn: Vec<Option<(Point, [f64; 2], Option<f64>)>> = (0..placing.count)
+    let drawn: Vec<Option<Virtual>> = (0..placing.count)
         .into_par_iter()
         .map(|k| {
             work.advance(1)?;

@@ -367,6 +367,9 @@ fn error_of(fit: &Exact, places: &[Point], field: &Field) -> Option<FitError> {
         }
     }
     let inner = inverse(gram)?;
+    let add = |sum: &mut [f64; 3], r: f64, row: &[f64; 3]| {
+        sum.iter_mut().zip(row).for_each(|(sum, x)| *sum += r * x);
+    };
     // R J, and Σ R²: the rows of R are made as they are needed.
     let mut related = vec![[0.0; 3]; n];
     let mut square_sum = 0.0;
@@ -374,15 +377,11 @@ fn error_of(fit: &Exact, places: &[Point], field: &Field) -> Option<FitError> {
         for j in 0..i {
             let r = field.correlation.at(places[i].distance(places[j]));
             square_sum += 2.0 * r * r;
-            for k in 0..3 {
-                related[i][k] += r * fit.rows[j][k];
-                related[j][k] += r * fit.rows[i][k];
-            }
+            add(&mut related[i], r, &fit.rows[j]);
+            add(&mut related[j], r, &fit.rows[i]);
         }
         square_sum += 1.0;
-        for k in 0..3 {
-            related[i][k] += fit.rows[i][k];
-        }
+        add(&mut related[i], 1.0, &fit.rows[i]);
     }
     let (mut middle, mut twice) = ([[0.0; 3]; 3], [[0.0; 3]; 3]);
     for (row, y) in fit.rows.iter().zip(&related) {

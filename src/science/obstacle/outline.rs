@@ -55,7 +55,7 @@ impl Ellipse {
             second[1] += cross * (x0 * (2.0 * y0 + y1) + x1 * (y0 + 2.0 * y1)) / 24.0;
             second[2] += cross * (y0 * y0 + y0 * y1 + y1 * y1) / 12.0;
         }
-        if !(area.abs() > 0.0) {
+        if area.is_nan() || area == 0.0 {
             return None;
         }
         let (mx, my) = (first[0] / area, first[1] / area);
@@ -66,7 +66,7 @@ impl Ellipse {
         let centre = Point::new(origin.x + mx, origin.y + my);
         let (mean, half) = (0.5 * (xx + yy), (0.5 * (xx - yy)).hypot(xy));
         let (long, short) = ((mean + half).max(0.0).sqrt(), (mean - half).max(0.0).sqrt());
-        if !(short > 0.0) {
+        if short.is_nan() || short <= 0.0 {
             return None;
         }
         if long < LEAST_RATIO * short {

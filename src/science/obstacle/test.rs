@@ -93,7 +93,7 @@ pub fn undecided(obliquity: &Obliquity, least_amplitude: f64) -> Option<String> 
 fn pattern_p(e: &Estimate) -> f64 {
     let (ss, cc, sc) = (e.se_s * e.se_s, e.se_c * e.se_c, e.covariance);
     let determinant = ss * cc - sc * sc;
-    if !(determinant > 0.0) {
+    if determinant.is_nan() || determinant <= 0.0 {
         return 1.0;
     }
     let square = (cc * e.b_s * e.b_s - 2.0 * sc * e.b_s * e.b_c + ss * e.b_c * e.b_c) / determinant;
