@@ -55,11 +55,12 @@ fn bar(sketch: &mut Sketch, row: &Row, [left, right]: [f64; 2], middle: f64, acc
     sketch.line(from, to, theme.stroke(theme.ink, theme.widths.thin));
 }
 
-/// Weights of the theories after the data, each with its prior; empty for a refused verdict.
+/// Weights of the theories that were weighed, each with its prior; empty for a refused verdict.
 pub fn posterior_bars(verdict: &VerdictFinding, width_mm: f64, theme: &Theme) -> Figure {
     let rows: Vec<Row> = verdict
         .theories
         .iter()
+        .filter(|t| t.prior > 0.0)
         .map(|t| Row { label: t.name.to_owned(), value: t.posterior, prior: t.prior })
         .collect();
     if rows.is_empty() {

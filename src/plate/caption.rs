@@ -46,11 +46,14 @@ pub(super) fn methods_of(patch: &PatchFinding) -> Vec<&'static str> {
     if !patch.verdicts.is_empty() {
         keys.extend(WINDS);
         keys.extend(VERDICT);
-        for theory in patch.verdicts.iter().flat_map(|v| &v.theories) {
+        for theory in patch.verdicts.iter().flat_map(|v| &v.theories).filter(|t| t.prior > 0.0) {
             if !keys.contains(&theory.method) {
                 keys.push(theory.method);
             }
         }
+    }
+    if patch.backwards.is_some() && patch.verdicts.is_empty() {
+        keys.push("alignment.backwards");
     }
     if let Some(found) = &patch.obstacles {
         keys.extend(OBSTACLES);

@@ -317,7 +317,7 @@ fn turns(
     }
     sketch.text(
         Point::new(at.x, at.y + theme.text.small),
-        "turn of the crests by bearing from their axis (counter-clockwise)",
+        "turn of the crests by bearing from their axis",
         small,
     );
     let curve = |values: &[f64]| -> Vec<Point> {

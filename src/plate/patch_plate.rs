@@ -11,7 +11,8 @@ use super::map::{MapPatch, MapView, map};
 use super::page::{Block, GAP_MM, Page};
 use super::sketch::Type;
 use super::{
-    Figure, Theme, bars, drift_calendar, modes, numbers, obstacle, profile, rose, sand_rose, spectrum,
+    Figure, Theme, bars, drift_calendar, flips, modes, numbers, obstacle, profile, regime_map, rose,
+    sand_rose, spectrum,
 };
 
 /// All that a patch plate shows.
@@ -116,7 +117,13 @@ fn evidence(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
             blocks.push(block(format!("Classes of obliquity{of}"), class_bars(verdict, width_mm, theme)));
             let figure = bars::posterior_bars(verdict, width_mm, theme);
             blocks.push(block(format!("Theories weighed{of}"), figure));
+            let figure = flips(&verdict.flips, width_mm, theme);
+            blocks.push(block(format!("What would change it{of}"), figure));
         }
+    }
+    if let Some(found) = patch.backwards.as_ref().filter(|_| patch.verdicts.is_empty()) {
+        let figure = regime_map(found, None, width_mm, theme);
+        blocks.push(block("Two winds that would make it".into(), figure));
     }
     blocks.extend(outcrops(plate, width_mm, theme));
     blocks

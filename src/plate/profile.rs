@@ -7,6 +7,9 @@ use crate::study::SpectrumFinding;
 use super::sketch::{Sketch, Type};
 use super::{Figure, Item, TextAnchor, Theme, font, numbers};
 
+/// Room for the ticks of power and their title, millimetres.
+const LEFT_MM: f64 = 10.4;
+
 /// A logarithmic axis from `min` to `max` laid between two places on the page.
 #[derive(Clone, Copy, Debug, PartialEq)]
 struct LogAxis {
@@ -49,7 +52,7 @@ pub fn profile(finding: &SpectrumFinding, unit: LengthUnit, width_mm: f64, theme
         return sketch.finish(width_mm, 0.0);
     }
     let height = 0.62 * width_mm;
-    let (left, right, top, bottom) = (8.6, width_mm - 1.5, 2.4, height - 8.2);
+    let (left, right, top, bottom) = (LEFT_MM, width_mm - 1.5, 2.4, height - 8.2);
     let highest = points.iter().map(|p| p[1]).fold(0.0, f64::max);
     let x = LogAxis { min: first[0], max: last[0], from_mm: left, to_mm: right };
     let y = LogAxis { min: 0.3, max: (1.4 * highest).max(3.0), from_mm: bottom, to_mm: top };
@@ -151,7 +154,7 @@ mod tests {
             _ => None,
         });
         let share = 4f64.ln() / 10f64.ln();
-        assert_close!(mark.expect("a line at the spacing"), 8.6 + share * (58.5 - 8.6), 1e-9);
+        assert_close!(mark.expect("a line at the spacing"), LEFT_MM + share * (58.5 - LEFT_MM), 1e-9);
     }
 
     #[test]
