@@ -288,16 +288,16 @@ pub fn verdict(verdict: &VerdictFinding) -> Vec<Fact> {
         facts.push(
             fact(
                 "From elongation",
-                format!(
-                    "{:.0}° ({low:.0}° to {high:.0}°) off {:.0}°; near with {}",
-                    e.separation_deg,
-                    e.toward.deg(),
-                    numbers::percent(e.within_margin)
-                ),
+                format!("{:.0}° ({low:.0}° to {high:.0}°), it is {:.0}°", e.separation_deg, e.toward.deg()),
                 "Angle between the trend and the direction in which these winds extend crests.",
             )
             .by("alignment.fingering"),
         );
+        facts.push(fact(
+            "Near elongation",
+            numbers::percent(e.within_margin),
+            "Chance that the trend lies within the margin of agreement of that direction.",
+        ));
     }
     let b = verdict.building;
     facts.push(fact(
