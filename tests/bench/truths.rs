@@ -140,10 +140,8 @@ pub fn field(index: u64) -> Option<Field> {
     let priors = Theory::ALL.iter().map(|t| if TRUTHS.contains(t) { 1.0 } else { 0.0 }).chain([0.05]);
     let verdict_settings = VerdictSettings {
         model_error_deg: MODEL_ERROR,
-        tail_share: 0.05,
         priors: priors.collect(),
-        margin_deg: 15.0,
-        least_strength: 0.1,
+        ..VerdictSettings::default()
     };
     let verdict = judge(&evidence, &foresight, None, &verdict_settings).ok()?;
     let true_class = class(trend.separation(drift));

@@ -4,7 +4,7 @@ use ventifact::assert_close;
 use ventifact::files::wind_table::{self, SpeedUnit, WindGuess, WindLayout, ZeroDirection};
 use ventifact::ground::{Axis, Body, Seed, WindRecord, Work};
 use ventifact::science::alignment::{
-    FluxUp, Foresight, Refusal, Theory, TrendEvidence, VerdictSettings, foresee, judge,
+    FluxUp, Foresight, Refusal, TrendEvidence, VerdictSettings, foresee, judge,
 };
 use ventifact::science::wind::quality;
 use ventifact::science::wind::regime::{flows, gathered};
@@ -131,16 +131,6 @@ fn print_table(found: &WindAssessment) {
     }
 }
 
-fn verdict_settings() -> VerdictSettings {
-    VerdictSettings {
-        model_error_deg: 5.0,
-        tail_share: 0.05,
-        priors: vec![1.0; Theory::ALL.len() + 1],
-        margin_deg: 15.0,
-        least_strength: 0.1,
-    }
-}
-
 fn foreseen(found: &WindAssessment) -> Foresight {
     let flux_up = FluxUp { ratio: 1.6, doubt: 1.25 };
     foresee(&found.regime, &found.draws, flux_up, Seed(1), &Work::quiet()).expect("not stopped")
@@ -166,7 +156,7 @@ fn typical_year_drifts_to_the_east_north_east_and_mostly_cancels() {
     let seasons: f64 = found.seasons.iter().map(|s| s.drift.total).sum();
     assert_close!(seasons, found.flux.total, 1e-9 * found.flux.total, "seasons add up");
     let evidence = TrendEvidence { axis: Axis::from_deg(150.0), kappa_mean: 200.0, half_ci: 4.0 };
-    let verdict = judge(&evidence, &foreseen(&found), None, &verdict_settings()).expect("a verdict");
+    let verdict = judge(&evidence, &foreseen(&found), None, &VerdictSettings::default()).expect("a verdict");
     for theory in &verdict.theories {
         println!(
             "  {:<28} axis {:?} spread {:?} ln BF {:.2} posterior {:.3}",
@@ -221,7 +211,7 @@ fn the_calm_day_has_no_drift_and_no_verdict() {
         assert!(found.flux.toward.is_none() && found.flux.ratio.is_none() && found.draws.is_empty());
         assert!(found.cautions.iter().any(|c| c.code == "no-drift"));
         let evidence = TrendEvidence { axis: Axis::from_deg(15.0), kappa_mean: 200.0, half_ci: 4.0 };
-        let refused = judge(&evidence, &foreseen(&found), None, &verdict_settings());
+        let refused = judge(&evidence, &foreseen(&found), None, &VerdictSettings::default());
         assert_eq!(refused, Err(Refusal::NoDrift));
     }
 }

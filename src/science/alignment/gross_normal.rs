@@ -21,15 +21,7 @@ pub const METHOD: Method = Method {
         "Flat maxima (low alignment strength) give a trend without meaning",
     ],
     sources: &[
-        Source {
-            key: "rubin1987",
-            authors: "Rubin, D. M.; Hunter, R. E.",
-            year: 1987,
-            title: "Bedform alignment in directionally varying flows",
-            published: "Science 237, 276–278",
-            locator: "",
-            read: Read::Memory,
-        },
+        RUBIN,
         Source {
             key: "ventifact-sectors",
             authors: "Ventifact",
@@ -40,6 +32,17 @@ pub const METHOD: Method = Method {
             read: Read::Derived,
         },
     ],
+};
+
+/// The source of the rule.
+pub(super) const RUBIN: Source = Source {
+    key: "rubin1987",
+    authors: "Rubin, D. M.; Hunter, R. E.",
+    year: 1987,
+    title: "Bedform alignment in directionally varying flows",
+    published: "Science 237, 276–278",
+    locator: "",
+    read: Read::Memory,
 };
 
 /// The maximum of gross transport.

@@ -52,6 +52,19 @@ pub struct VerdictSettings {
     pub least_strength: f64,
 }
 
+/// All theories and chance alike, 5° of model error, a tail of 5 %, a margin of 15°.
+impl Default for VerdictSettings {
+    fn default() -> Self {
+        Self {
+            model_error_deg: 5.0,
+            tail_share: 0.05,
+            priors: vec![1.0; Theory::ALL.len() + 1],
+            margin_deg: 15.0,
+            least_strength: 0.1,
+        }
+    }
+}
+
 /// A trend judged by a regime.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Judgement {
@@ -335,16 +348,6 @@ mod tests {
     use crate::ground::{Regime, SandFlow, Seed, Work};
     use crate::science::alignment::foresight::{FluxUp, foresee};
 
-    fn settings() -> VerdictSettings {
-        VerdictSettings {
-            model_error_deg: 5.0,
-            tail_share: 0.05,
-            priors: vec![1.0; Theory::ALL.len() + 1],
-            margin_deg: 15.0,
-            least_strength: 0.1,
-        }
-    }
-
     fn regime(winds: &[(f64, f64)]) -> Regime {
         let flow = |&(deg, weight): &(f64, f64)| SandFlow { toward: Azimuth::from_deg(deg), weight };
         Regime { all: winds.iter().map(flow).collect(), ..Regime::default() }
@@ -365,10 +368,10 @@ mod tests {
 
     #[test]
     fn nil_drift_and_even_winds_are_refused() {
-        let nil = judge(&evidence(0.0), &foreseen(&[], &[]), None, &settings());
+        let nil = judge(&evidence(0.0), &foreseen(&[], &[]), None, &VerdictSettings::default());
         assert_eq!(nil, Err(Refusal::NoDrift));
         let even: Vec<(f64, f64)> = (0..72).map(|k| (5.0 * f64::from(k), 1.0)).collect();
-        let refused = judge(&evidence(0.0), &foreseen(&even, &[]), None, &settings());
+        let refused = judge(&evidence(0.0), &foreseen(&even, &[]), None, &VerdictSettings::default());
         assert!(matches!(refused, Err(Refusal::Weak { strength, .. }) if strength < 0.01), "{refused:?}");
     }
 
@@ -376,7 +379,8 @@ mod tests {
     fn a_trend_along_a_single_wind_is_longitudinal() {
         let draws: Vec<Regime> = (0..41).map(|k| regime(&[(20.0 + 0.5 * f64::from(k), 1.0)])).collect();
         let verdict =
-            judge(&evidence(32.0), &foreseen(&[(30.0, 1.0)], &draws), None, &settings()).expect("a verdict");
+            judge(&evidence(32.0), &foreseen(&[(30.0, 1.0)], &draws), None, &VerdictSettings::default())
+                .expect("a verdict");
         crate::assert_close!(verdict.obliquity_deg.expect("one"), 2.0, 1e-9, "obliquity");
         assert!(verdict.probabilities.expect("some")[0] > 0.95);
         assert!(verdict.building.extended > 0.85, "{:?}", verdict.building);
@@ -390,8 +394,13 @@ mod tests {
 
     #[test]
     fn theories_that_predict_nothing_are_not_weighed() {
-        let verdict = judge(&evidence(90.0), &foreseen(&[(0.0, 1.0), (180.0, 1.0)], &[]), None, &settings())
-            .expect("a verdict");
+        let verdict = judge(
+            &evidence(90.0),
+            &foreseen(&[(0.0, 1.0), (180.0, 1.0)], &[]),
+            None,
+            &VerdictSettings::default(),
+        )
+        .expect("a verdict");
         assert!(verdict.toward.is_none() && verdict.obliquity_deg.is_none() && verdict.elongation.is_none());
         assert!(of(&verdict, Theory::GrossNormal).posterior > 0.4);
         for silent in [Theory::Transverse, Theory::Season, Theory::Stated] {
@@ -404,7 +413,8 @@ mod tests {
     fn a_stated_axis_that_meets_the_trend_wins() {
         let winds = [(0.0, 1.0), (40.0, 1.0)];
         let stated = Some(Axis::from_deg(61.0));
-        let verdict = judge(&evidence(60.0), &foreseen(&winds, &[]), stated, &settings()).expect("a verdict");
+        let verdict = judge(&evidence(60.0), &foreseen(&winds, &[]), stated, &VerdictSettings::default())
+            .expect("a verdict");
         assert!(verdict.building.stated > 0.6, "{:?}", verdict.building);
         let equal = of(&verdict, Theory::Stated).equivalence.expect("tested");
         assert!(equal.equivalent, "{equal:?}");
@@ -414,8 +424,10 @@ mod tests {
     fn turning_trend_and_winds_together_changes_nothing() {
         let winds = [(10.0, 3.0), (140.0, 2.0), (250.0, 1.0)];
         let turned = winds.map(|(d, q)| (d + 77.0, q));
-        let a = judge(&evidence(60.0), &foreseen(&winds, &[]), None, &settings()).expect("a verdict");
-        let b = judge(&evidence(137.0), &foreseen(&turned, &[]), None, &settings()).expect("a verdict");
+        let a = judge(&evidence(60.0), &foreseen(&winds, &[]), None, &VerdictSettings::default())
+            .expect("a verdict");
+        let b = judge(&evidence(137.0), &foreseen(&turned, &[]), None, &VerdictSettings::default())
+            .expect("a verdict");
         for (p, q) in a.theories.iter().zip(&b.theories) {
             crate::assert_close!(p.ln_bayes_factor, q.ln_bayes_factor, 1e-6, "{}", p.name());
         }
@@ -424,7 +436,7 @@ mod tests {
 
     #[test]
     fn a_bad_setting_is_named() {
-        let bad = VerdictSettings { tail_share: 0.0, ..settings() };
+        let bad = VerdictSettings { tail_share: 0.0, ..VerdictSettings::default() };
         let refused = judge(&evidence(0.0), &foreseen(&[(30.0, 1.0)], &[]), None, &bad).expect_err("refused");
         assert!(refused.to_string().contains("tail share"), "{refused}");
     }

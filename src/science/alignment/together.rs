@@ -84,16 +84,6 @@ mod tests {
             .expect("not stopped")
     }
 
-    fn settings() -> VerdictSettings {
-        VerdictSettings {
-            model_error_deg: 5.0,
-            tail_share: 0.05,
-            priors: vec![1.0; Theory::ALL.len() + 1],
-            margin_deg: 15.0,
-            least_strength: 0.1,
-        }
-    }
-
     fn trend(deg: f64) -> TrendEvidence {
         TrendEvidence { axis: Axis::from_deg(deg), kappa_mean: 400.0, half_ci: 3.0 }
     }
@@ -101,15 +91,15 @@ mod tests {
     #[test]
     fn two_trends_that_agree_say_it_louder_than_one() {
         let at = Theory::ALL.iter().position(|t| *t == Theory::Fingering).expect("listed");
-        let one = together(&[trend(43.0)], &foreseen(), &settings());
-        let two = together(&[trend(43.0), trend(41.0)], &foreseen(), &settings());
+        let one = together(&[trend(43.0)], &foreseen(), &VerdictSettings::default());
+        let two = together(&[trend(43.0), trend(41.0)], &foreseen(), &VerdictSettings::default());
         assert!(two.ln_bayes_factors[at] > one.ln_bayes_factors[at] + 1.0);
         assert!(two.posteriors[at] > one.posteriors[at]);
     }
 
     #[test]
     fn the_supply_tells_covered_from_starved_ground() {
-        let joint = together(&[trend(43.0), trend(66.0)], &foreseen(), &settings());
+        let joint = together(&[trend(43.0), trend(66.0)], &foreseen(), &VerdictSettings::default());
         assert!(joint.supply[0] < -1.5 && joint.supply[1] > 1.5, "{:?}", joint.supply);
         crate::assert_close!(joint.posteriors.iter().sum::<f64>(), 1.0, 1e-12, "posteriors");
     }

@@ -18,7 +18,7 @@ pub mod mixture;
 mod modes;
 pub mod rayleigh;
 pub mod rose;
-mod sources;
+pub(in crate::science) mod sources;
 pub mod spread;
 mod summary;
 pub mod v_test;

@@ -33,7 +33,7 @@ pub(super) const ZAR: Source = Source {
 };
 
 /// What was worked out for this program and checked by simulation.
-pub(super) const DERIVED: Source = Source {
+pub(in crate::science) const DERIVED: Source = Source {
     key: "ventifact",
     authors: "Ventifact",
     year: 2026,
@@ -44,6 +44,6 @@ pub(super) const DERIVED: Source = Source {
 };
 
 /// The same source at a page or equation.
-pub(super) const fn at(source: Source, locator: &'static str) -> Source {
+pub(in crate::science) const fn at(source: Source, locator: &'static str) -> Source {
     Source { locator, ..source }
 }

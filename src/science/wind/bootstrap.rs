@@ -28,15 +28,7 @@ pub const METHOD: Method = Method {
         "Without a clock, or in less than a year, the seasons are drawn as if they were chance",
     ],
     sources: &[
-        Source {
-            key: "kunsch1989",
-            authors: "Künsch, H. R.",
-            year: 1989,
-            title: "The jackknife and the bootstrap for general stationary observations",
-            published: "Annals of Statistics 17, 1217–1241",
-            locator: "",
-            read: Read::Memory,
-        },
+        KUNSCH,
         Source {
             key: "politis1992",
             authors: "Politis, D. N.; Romano, J. P.",
@@ -47,6 +39,17 @@ pub const METHOD: Method = Method {
             read: Read::Memory,
         },
     ],
+};
+
+/// The source of drawing in blocks.
+pub(super) const KUNSCH: Source = Source {
+    key: "kunsch1989",
+    authors: "Künsch, H. R.",
+    year: 1989,
+    title: "The jackknife and the bootstrap for general stationary observations",
+    published: "Annals of Statistics 17, 1217–1241",
+    locator: "",
+    read: Read::Memory,
 };
 
 /// Cells in a block.

@@ -2,7 +2,7 @@
 
 use rand::Rng as _;
 
-use crate::ground::{Azimuth, Method, Read, Seed, Source, Stopped, Symbol, WindSample, Work};
+use crate::ground::{Azimuth, Method, Seed, Stopped, Symbol, WindSample, Work};
 use crate::numeric::quantile::of_sorted;
 
 use super::coverage::{MONTHS, is_spliced, year_and_month};
@@ -30,15 +30,7 @@ pub const METHOD: Method = Method {
         "The interval of a month seen in fewer than five years is that of its own weather; other years may differ more",
         "A period with rows for fewer than nine tenths of its time is called incomplete and kept out of the spread between years",
     ],
-    sources: &[Source {
-        key: "kunsch1989",
-        authors: "Künsch, H. R.",
-        year: 1989,
-        title: "The jackknife and the bootstrap for general stationary observations",
-        published: "Annals of Statistics 17, 1217–1241",
-        locator: "",
-        read: Read::Memory,
-    }],
+    sources: &[super::bootstrap::KUNSCH],
 };
 
 /// The drift of one year, month or season.

@@ -30,15 +30,7 @@ pub const METHOD: Method = Method {
         "From classes it depends on their width; here each record counts by its own speed",
     ],
     sources: &[
-        Source {
-            key: "fryberger1979",
-            authors: "Fryberger, S. G.; Dean, G.",
-            year: 1979,
-            title: "Dune forms and wind regime",
-            published: "A Study of Global Sand Seas, U.S. Geological Survey Professional Paper 1052, 137–169",
-            locator: "",
-            read: Read::Memory,
-        },
+        super::regime::FRYBERGER,
         Source {
             key: "bullard1997",
             authors: "Bullard, J. E.",

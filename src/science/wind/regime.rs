@@ -19,15 +19,18 @@ pub const METHOD: Method = Method {
     ],
     assumptions: &["Each record stands for an equal share of time, calms included"],
     limits: &["Sand supply, moisture and plants are not considered: potential drift"],
-    sources: &[Source {
-        key: "fryberger1979",
-        authors: "Fryberger, S. G.; Dean, G.",
-        year: 1979,
-        title: "Dune forms and wind regime",
-        published: "A Study of Global Sand Seas, U.S. Geological Survey Professional Paper 1052, 137–169",
-        locator: "",
-        read: Read::Memory,
-    }],
+    sources: &[FRYBERGER],
+};
+
+/// The source of drift potentials and their resultant.
+pub(super) const FRYBERGER: Source = Source {
+    key: "fryberger1979",
+    authors: "Fryberger, S. G.; Dean, G.",
+    year: 1979,
+    title: "Dune forms and wind regime",
+    published: "A Study of Global Sand Seas, U.S. Geological Survey Professional Paper 1052, 137–169",
+    locator: "",
+    read: Read::Memory,
 };
 
 /// Totals of a list of flows. Without flow, `ratio` and `toward` are absent: no drift.

@@ -7,8 +7,7 @@ pub const METHOD: Method = Method {
     id: "wind.direction-rounding",
     name: "Correction for rounded directions",
     question: "What does a compass of 16 points, or of tens of degrees, do to the drift?",
-    formula: "R_c = R (δ/2)/sin(δ/2);  comb test: q(θ) → m flows q/m at θ − δ/2 + δ(k + ½)/m, k = 0 … m − 1, m = ⌈δ/1°⌉, \
-              which shrinks R once more by sin(δ/2)/(m sin(δ/2m))",
+    formula: "R_c = R (δ/2)/sin(δ/2)",
     symbols: &[
         Symbol { symbol: "δ", meaning: "step of the reported directions", unit: "deg" },
         Symbol {
@@ -16,8 +15,6 @@ pub const METHOD: Method = Method {
             meaning: "resultant drift as reported, and corrected",
             unit: "vector units or kg m⁻¹ yr⁻¹",
         },
-        Symbol { symbol: "q", meaning: "sand flow of one reported direction", unit: "as R" },
-        Symbol { symbol: "m", meaning: "flows it is spread over", unit: "1" },
     ],
     assumptions: &["The true directions vary smoothly over a step, as weather does"],
     limits: &[

@@ -3,7 +3,7 @@
 
 use std::collections::BTreeMap;
 
-use crate::ground::{Azimuth, Method, Read, Source, Stopped, Symbol, WindSample, Work};
+use crate::ground::{Azimuth, Method, Stopped, Symbol, WindSample, Work};
 
 use super::regime::{Drift, flows, gathered};
 
@@ -25,15 +25,7 @@ pub const METHOD: Method = Method {
         "Thinning leaves the mean over phases as it is and widens the range; averaging lowers the flux, which grows with a power of the speed",
         "Phases are kept apart by the clock, so a daily wind shows in the range at 12 and 24 hours",
     ],
-    sources: &[Source {
-        key: "fryberger1979",
-        authors: "Fryberger, S. G.; Dean, G.",
-        year: 1979,
-        title: "Dune forms and wind regime",
-        published: "A Study of Global Sand Seas, U.S. Geological Survey Professional Paper 1052, 137–169",
-        locator: "",
-        read: Read::Memory,
-    }],
+    sources: &[super::regime::FRYBERGER],
 };
 
 /// Mean and range over the phases.

@@ -53,15 +53,7 @@ pub const METHOD: Method = Method {
         "Predictions are rounded to whole degrees",
     ],
     sources: &[
-        Source {
-            key: "rubin1987",
-            authors: "Rubin, D. M.; Hunter, R. E.",
-            year: 1987,
-            title: "Bedform alignment in directionally varying flows",
-            published: "Science 237, 276–278",
-            locator: "",
-            read: Read::Memory,
-        },
+        super::gross_normal::RUBIN,
         super::bed_instability::COURRECH,
         Source {
             key: "ventifact-backwards",
