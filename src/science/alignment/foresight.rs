@@ -76,7 +76,12 @@ pub fn foresee(
     work: &Work,
 ) -> Result<Foresight, Stopped> {
     work.phase("predicting trends", draws.len() as u64);
-    let whole = predict(regime, flux_up.ratio);
+    // A regime by exact direction may hold a hundred thousand flows.
+    let mut whole = Vec::with_capacity(Theory::ALL.len());
+    for theory in Theory::ALL {
+        work.advance(0)?;
+        whole.push(theory.predict(regime, flux_up.ratio));
+    }
     let drawn = !draws.is_empty();
     let by_draw: Vec<(Vec<Option<Prediction>>, Option<Axis>)> = if drawn {
         let one = |(index, draw): (usize, &Regime)| {

@@ -120,13 +120,18 @@ pub fn assess(
     let Checked { kept, mut set_aside, mut cautions, interval_s, span } = checked;
     let (flows_of_rows, lost) = flows(&kept, |v| mill.flux(v));
     set_aside.extend(without_direction(&kept, &lost));
+    // Each of these steps takes some ten milliseconds on decades of hourly rows.
+    work.advance(0)?;
 
     let per_cell = rows_per_cell(kept.len(), interval_s, settings.block_days);
     let least = LEAST_SHARE * mill.threshold_speed().min(mill.drift_potential_threshold());
     let movers = Movers::new(&kept, per_cell, least, settings.storm_quantile, |v| mill.flux(v));
+    work.advance(0)?;
     let regime = movers.regime(|v| mill.flux(v));
+    work.advance(0)?;
     let mut flux = Drift::of(&regime.all, mill.unit());
     let plan = Plan::new(movers.count(), seasons_of_cells(&kept, per_cell).as_deref());
+    work.advance(0)?;
     let can_draw = !record.is_table && movers.count() >= FEWEST_BLOCKS * CELLS_PER_BLOCK && flux.total > 0.0;
     let fryberger = if site.is_earth {
         let by_practice = |v: f64| mill.drift_potential(v);
@@ -169,7 +174,10 @@ pub fn assess(
     let calendar = calendar(&kept, |v| mill.flux(v), &by_calendar, seed, work)?;
     let thinning = thinning(&kept, interval_s.filter(|_| !record.is_table), |v| mill.flux(v), work)?;
     let rounding = rounding(&kept, |v| mill.flux(v));
+    work.advance(0)?;
     let gusts = gusts(record, &kept, |v| mill.flux(v), mill.unit());
+    let seasons = seasons(&kept, &flows_of_rows, mill.unit());
+    work.advance(0)?;
 
     Ok(WindAssessment {
         rows: record.samples.len(),
@@ -183,7 +191,7 @@ pub fn assess(
         threshold_ustar: mill.threshold(),
         threshold_speed_at_height: mill.threshold_speed(),
         rose: rose(&regime.all),
-        seasons: seasons(&kept, &flows_of_rows, mill.unit()),
+        seasons,
         regime,
         draws,
         sensitivity,
