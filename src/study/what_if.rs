@@ -35,8 +35,8 @@ struct Case {
 const STEPS: i32 = 22;
 const STEP: f64 = 1.05;
 
-/// The parameters of a record, moved. Only thresholds that are looked at here leave the range of the
-/// bootstrap; that the rows reach a factor of three keeps them above the weakest winds kept.
+/// The parameters of a record, moved one at a time. A threshold goes down to a third of the stated one, which
+/// is as far as the record keeps its weak winds.
 ///
 /// # Errors
 /// [`Stopped`].

@@ -47,6 +47,5 @@ fn the_settings_page_is_fresh() {
         let unit = if s.unit == "1" { "" } else { s.unit };
         page.push_str(&format!("| `{}` | {default} | {range} | {unit} | {} |\n", s.key, s.help));
     }
-    page.push_str("\n`verdict.priors` holds the four prior weights: transverse to resultant, along resultant, gross bedform-normal, random axis.\n");
     fresh("settings.md", &page);
 }

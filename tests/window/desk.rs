@@ -259,9 +259,6 @@ fn a_click_on_the_regime_map_picks_a_regime_and_the_ground_can_be_described() {
     let regime = harness.state().app().model().view.regime.expect("a click picks");
     assert!((100.0..150.0).contains(&regime.divergence_deg) && regime.ratio > 1.0, "{regime:?}");
     assert!(harness.query_by_role_and_label(Role::Image, &rose).is_some(), "what it would make is drawn");
-    if let Some(path) = std::env::var_os("REGIMES_PICTURE") {
-        harness.render().expect("a picture").save(path).expect("saved");
-    }
 
     // A regime off the map is brought to its edge.
     let off = PickedRegime { divergence_deg: 200.0, ratio: 0.5 };
@@ -290,9 +287,6 @@ fn an_imported_record_and_a_raised_threshold_move_the_verdict() {
     wait(&mut harness, "the preview", |model| {
         model.session.import.as_ref().is_some_and(|import| import.outcome.is_some())
     });
-    if let Some(path) = std::env::var_os("PREVIEW_PICTURE") {
-        harness.render().expect("a picture").save(path).expect("saved");
-    }
     // The dialog grows to its size over some frames.
     harness.run_steps(10);
     click(&mut harness, Role::Button, "Use this record");
@@ -329,9 +323,6 @@ fn an_imported_record_and_a_raised_threshold_move_the_verdict() {
     let name = harness.state().app().model().sheet.winds[2].name.clone();
     let dial = format!("Dial of obliquity by {name}");
     assert!(harness.query_by_role_and_label(Role::Image, &dial).is_some(), "the dial is drawn");
-    if let Some(path) = std::env::var_os("VERDICT_PICTURE") {
-        harness.render().expect("a picture").save(path).expect("saved");
-    }
     key(&mut harness, Modifiers::COMMAND, Key::Z);
     assert_eq!(harness.state().app().model().sheet.settings.wind.threshold_ustar, None, "undo");
 }
