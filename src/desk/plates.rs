@@ -173,6 +173,7 @@ fn findings(model: &Model) -> Findings {
     let ids = || sheet.patches.iter().map(|p| p.id);
     let rasters = sheet.rasters.iter().filter_map(|r| Some(run::raster(r, session.sources.get(&r.id)?)));
     Findings {
+        networks: Vec::new(),
         sheet_fingerprint: fingerprint::of_sheet(sheet),
         rasters: rasters.collect(),
         winds: sheet.winds.iter().filter_map(|w| session.results.wind(w.id)?.outcome.clone().ok()).collect(),

@@ -12,6 +12,7 @@ mod geodesic;
 mod grid;
 mod local_frame;
 mod method;
+mod network;
 mod place;
 mod projection;
 mod seed;
@@ -30,6 +31,10 @@ pub use geodesic::Geodesic;
 pub use grid::Grid;
 pub use local_frame::LocalFrame;
 pub use method::{Method, Read, Source, Symbol};
+pub use network::{
+    FlowSense, Network, NetworkNode, Order, Reach, ReachOrigin, SenseEvidence, SenseKind, Station, Width,
+    orders,
+};
 pub use place::{Frame, LatitudeKind, LengthUnit, Place, PlaceError};
 pub use projection::{LonLat, Projection, ProjectionError};
 pub use seed::Seed;

@@ -2,6 +2,9 @@
 
 pub mod alignment;
 pub mod axial;
+pub mod channel;
+pub mod drainage;
+pub mod network;
 pub mod obstacle;
 pub mod orientation;
 pub mod scene;
@@ -10,7 +13,17 @@ pub mod wind;
 use crate::ground::Method;
 
 /// Every method of the program, in the order of the reasoning: trend, spacing, statistics, wind, verdict,
-/// outcrops.
+/// outcrops, channels.
 pub fn methods() -> Vec<&'static Method> {
-    [orientation::METHODS, axial::METHODS, wind::METHODS, alignment::METHODS, obstacle::METHODS].concat()
+    [
+        orientation::METHODS,
+        axial::METHODS,
+        wind::METHODS,
+        alignment::METHODS,
+        obstacle::METHODS,
+        drainage::METHODS,
+        channel::METHODS,
+        network::METHODS,
+    ]
+    .concat()
 }

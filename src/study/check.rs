@@ -4,7 +4,7 @@ use std::collections::BTreeSet;
 
 use crate::ground::Body;
 
-use super::{Failure, Id, SETTINGS, Sheet, Sources, WindChoice, judges};
+use super::{Failure, Id, Sheet, Sources, WindChoice, all_settings, judges};
 
 /// Bodies that cannot be, and names that mean two of them.
 fn bodies(sheet: &Sheet, say: &mut impl FnMut(String, String)) {
@@ -44,7 +44,7 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
             );
         }
     }
-    for setting in SETTINGS {
+    for setting in all_settings() {
         if let Some(problem) = setting.problem(&sheet.settings) {
             say("settings".into(), problem);
         }

@@ -8,8 +8,8 @@ use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, San
 
 use super::{
     BackwardsFinding, BirthFinding, BuildingFinding, CalendarFinding, DriftFinding, ElongationFinding,
-    EquivalenceFinding, GustFinding, Id, MigrationFinding, ObstaclesFinding, RoundingFinding, SandFinding,
-    SeasonFinding, SensitivityFinding, SetAside, ThinningFinding,
+    EquivalenceFinding, GustFinding, Id, MigrationFinding, NetworkFinding, ObstaclesFinding, RoundingFinding,
+    SandFinding, SeasonFinding, SensitivityFinding, SetAside, ThinningFinding,
 };
 
 /// All results of one run.
@@ -20,6 +20,7 @@ pub struct Findings {
     pub rasters: Vec<RasterFinding>,
     pub winds: Vec<WindFinding>,
     pub patches: Vec<PatchFinding>,
+    pub networks: Vec<NetworkFinding>,
     /// What the patches say together.
     pub together: TogetherFinding,
     /// What failed, by name; everything else is complete.

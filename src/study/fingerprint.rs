@@ -4,14 +4,22 @@
 use serde_json::{Value, json};
 use sha2::{Digest as _, Sha256};
 
-use super::{Patch, RasterEntry, Sheet, WindChoice, WindEntry};
+use super::{NetworkEntry, Patch, RasterEntry, Sheet, WindChoice, WindEntry};
 
 /// SHA-256 of the sheet without what only changes how it looks (tone, notes) and without folders, so
 /// that a colleague's copy elsewhere has the same fingerprint.
 pub fn of_sheet(sheet: &Sheet) -> String {
     let rasters: Vec<_> = sheet.rasters.iter().map(raster).collect();
     let winds: Vec<_> = sheet.winds.iter().map(placed_wind).collect();
-    digest(&json!([sheet.seed, rasters, sheet.patches, winds, sheet.settings, sheet.obstacles]))
+    digest(&json!([
+        sheet.seed,
+        rasters,
+        sheet.patches,
+        winds,
+        sheet.settings,
+        sheet.obstacles,
+        sheet.networks
+    ]))
 }
 
 /// SHA-256 of all that makes a patch's finding: its outline, its raster, the outcrops on it, the settings,
@@ -39,6 +47,14 @@ pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
         winds,
         sheet.settings
     ]))
+}
+
+/// SHA-256 of all that makes a network's finding: its ground, what was said and drawn, its rasters, the
+/// settings, the seed, and the other networks it is compared with.
+pub fn of_network(sheet: &Sheet, entry: &NetworkEntry) -> String {
+    let rasters: Vec<_> = sheet.rasters.iter().map(raster).collect();
+    let s = &sheet.settings;
+    digest(&json!([sheet.seed, entry.id, sheet.networks, rasters, s.drainage, s.channel, s.network, s.flow]))
 }
 
 /// SHA-256 of all that makes a record's finding.

@@ -3,6 +3,7 @@
 mod backwards;
 pub mod bulk;
 mod cautions;
+mod channel_settings;
 pub mod check;
 pub mod demo;
 mod findings;
@@ -12,6 +13,9 @@ mod grains;
 pub mod handover;
 pub mod judges;
 mod migrate;
+mod network;
+mod network_entry;
+mod network_findings;
 mod obstacles;
 mod patch;
 mod records;
@@ -19,6 +23,7 @@ pub mod run;
 mod sentence;
 #[macro_use]
 mod setting_macros;
+mod channel_list;
 mod setting_list;
 mod settings;
 mod sheet;
@@ -41,15 +46,18 @@ pub use crate::science::wind::regime::{Drift as DriftFinding, Season as SeasonFi
 pub use crate::science::wind::rounding::Rounding as RoundingFinding;
 pub use crate::science::wind::thinning::{Changed as ChangedFinding, Thinning as ThinningFinding};
 pub use backwards::{BackwardsFinding, arc_words};
+pub use channel_settings::{ChannelSettings, DrainageSettings, FlowSettings, NetworkSettings};
 pub use findings::{
     Discovery, Failure, Findings, Flip, JointFinding, JointTheory, JointTrend, ModeFinding, Node,
     PatchFinding, RasterFinding, SpectrumFinding, SpectrumPicture, TheoryFinding, TogetherFinding,
     TrendFinding, VerdictFinding, WindFinding,
 };
 pub use grains::{Birth, BirthFinding, Doubtful, FirstWave, SandFinding, SandThreshold};
+pub use network_entry::{FromElevation, FromImage, NetworkEntry, NetworkSource, TracedChannel};
+pub use network_findings::{DrainageFinding, NetworkFinding, TracingFinding};
 pub use obstacles::{NodeAround, ObstacleFinding, ObstaclesFinding};
 pub use records::{Setting, SettingKind, SettingValue};
-pub use setting_list::SETTINGS;
+pub use setting_list::all_settings;
 pub use settings::{
     BackwardsSettings, LettauConstant, ObstacleGround, ObstacleSettings, Priors, Settings, SpectrumSettings,
     StatisticsSettings, ThresholdLaw, TransportLaw, TrendSettings, VerdictSettings, WindSettings,

@@ -6,12 +6,14 @@ use std::sync::{Arc, Mutex, PoisonError};
 use crate::ground::{Stopped, Work};
 
 use super::judges::{self, Judges};
+use super::network::network_finding;
 use super::patch::patch_finding;
 use super::together::together;
 use super::window::Detail;
 use super::winds::{self, WindStudy};
 use super::{
-    Failure, Findings, Id, OpenRaster, PatchFinding, RasterEntry, RasterFinding, Sheet, Sources, fingerprint,
+    Failure, Findings, Id, NetworkFinding, OpenRaster, PatchFinding, RasterEntry, RasterFinding, Sheet,
+    Sources, fingerprint,
 };
 
 /// Results kept by fingerprint, so that an edit recomputes only what it touches. With or without
@@ -20,6 +22,7 @@ use super::{
 pub struct Memo {
     winds: Mutex<HashMap<String, Arc<WindStudy>>>,
     patches: Mutex<HashMap<String, Arc<PatchFinding>>>,
+    networks: Mutex<HashMap<String, Arc<NetworkFinding>>>,
 }
 
 /// Everything the sheet asks for. A part that fails is named in `failures`; the rest is complete.
@@ -36,6 +39,13 @@ pub fn run(sheet: &Sheet, sources: &Sources, memo: &Memo, work: &Work) -> Result
             Err(why) => failures.push(Failure { what: format!("patch {}", patch.name), why }),
         }
     }
+    let mut networks = Vec::new();
+    for entry in &sheet.networks {
+        match run_network(sheet, sources, entry.id, memo, work)? {
+            Ok(finding) => networks.push((*finding).clone()),
+            Err(why) => failures.push(Failure { what: format!("network {}", entry.name), why }),
+        }
+    }
     let rasters =
         sheet.rasters.iter().filter_map(|entry| Some(raster(entry, sources.rasters.get(&entry.id)?)));
     Ok(Findings {
@@ -44,6 +54,7 @@ pub fn run(sheet: &Sheet, sources: &Sources, memo: &Memo, work: &Work) -> Result
         together: together(sheet, &patches.iter().collect::<Vec<_>>(), &winds),
         winds: winds.into_iter().map(|w| w.finding.clone()).collect(),
         patches,
+        networks,
         failures,
     })
 }
@@ -113,6 +124,26 @@ pub fn run_patch(
         }
         Err(why) => Ok(Err(why)),
     }
+}
+
+/// One channel network, or in words why it cannot be measured.
+///
+/// # Errors
+/// [`Stopped`].
+pub fn run_network(
+    sheet: &Sheet,
+    sources: &Sources,
+    id: Id,
+    memo: &Memo,
+    work: &Work,
+) -> Result<Result<Arc<NetworkFinding>, String>, Stopped> {
+    let Some(entry) = sheet.network(id) else { return Ok(Err(format!("the sheet has no network {}", id.0))) };
+    let key = format!("{} {}", fingerprint::of_network(sheet, entry), entry.name);
+    if let Some(known) = recall(&memo.networks, &key) {
+        return Ok(Ok(known));
+    }
+    let finding = network_finding(sheet, entry, sources, work)?;
+    Ok(finding.map(|finding| keep(&memo.networks, key, finding)))
 }
 
 /// What a raster is, as used.

@@ -1,7 +1,7 @@
 //! Every setting of the sheet, each with its record.
 
 use super::records::{Setting, SettingKind, SettingValue};
-use super::{LettauConstant, ObstacleGround, ThresholdLaw, TransportLaw};
+use super::{LettauConstant, ObstacleGround, ThresholdLaw, TransportLaw, channel_list};
 
 const THRESHOLD_LAWS: [(ThresholdLaw, &str, &str); 3] = [
     (ThresholdLaw::Bagnold, "bagnold", "Bagnold 1941"),
@@ -26,7 +26,12 @@ const OBSTACLE_GROUNDS: [(ObstacleGround, &str, &str); 2] = [
 ];
 
 /// Every setting, in the order of the reasoning.
-pub const SETTINGS: &[Setting] = &[
+pub fn all_settings() -> impl Iterator<Item = &'static Setting> {
+    PATTERN.iter().chain(channel_list::CHANNELS)
+}
+
+/// Bedforms, winds and verdicts.
+const PATTERN: &[Setting] = &[
     auto!(
         "trend.gradient_scale_px",
         "Gradient scale",
@@ -442,11 +447,11 @@ pub const SETTINGS: &[Setting] = &[
     },
 ];
 
-fn key_of<T: Copy + PartialEq>(laws: &[(T, &'static str, &'static str)], law: T) -> &'static str {
+pub(super) fn key_of<T: Copy + PartialEq>(laws: &[(T, &'static str, &'static str)], law: T) -> &'static str {
     laws.iter().find(|(l, ..)| *l == law).map_or("", |(_, key, _)| key)
 }
 
-fn choose<T: Copy>(laws: &[(T, &'static str, &'static str)], value: SettingValue, field: &mut T) {
+pub(super) fn choose<T: Copy>(laws: &[(T, &'static str, &'static str)], value: SettingValue, field: &mut T) {
     if let SettingValue::Choice(key) = value
         && let Some((law, ..)) = laws.iter().find(|(_, k, _)| *k == key)
     {

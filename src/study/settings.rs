@@ -6,6 +6,8 @@ use crate::science::alignment::Theory;
 use crate::science::alignment::bed_instability::FLUX_UP;
 use crate::science::wind::threshold::COHESION;
 
+use super::channel_settings::{ChannelSettings, DrainageSettings, FlowSettings, NetworkSettings};
+
 /// All settings of a sheet.
 #[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
 #[serde(default, deny_unknown_fields)]
@@ -17,6 +19,10 @@ pub struct Settings {
     pub verdict: VerdictSettings,
     pub obstacle: ObstacleSettings,
     pub backwards: BackwardsSettings,
+    pub drainage: DrainageSettings,
+    pub channel: ChannelSettings,
+    pub network: NetworkSettings,
+    pub flow: FlowSettings,
 }
 
 /// Structure-tensor trend. Scales in pixels of the finer ground direction; `None` = from the data.

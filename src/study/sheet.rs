@@ -9,7 +9,7 @@ use crate::files::wind_table::WindImport;
 use crate::ground::{Axis, Azimuth, Body, LonLat, Polygon, Seed};
 use crate::science::alignment::backwards::{Cover, Sense};
 
-use super::Settings;
+use super::{NetworkEntry, Settings};
 
 /// The saved document.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
@@ -33,9 +33,12 @@ pub struct Sheet {
     /// Outcrops round which the wind parted.
     #[serde(default, skip_serializing_if = "Vec::is_empty")]
     pub obstacles: Vec<Obstacle>,
+    /// Channel networks.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub networks: Vec<NetworkEntry>,
 }
 
-/// Names a raster, patch, wind record or outcrop within one sheet; never reused.
+/// Names a raster, patch, wind record, outcrop or network within one sheet; never reused.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize, Deserialize)]
 #[serde(transparent)]
 pub struct Id(pub u32);
@@ -217,6 +220,7 @@ impl Sheet {
             settings: Settings::default(),
             bodies: Vec::new(),
             obstacles: Vec::new(),
+            networks: Vec::new(),
         }
     }
 
@@ -228,7 +232,8 @@ impl Sheet {
             .map(|r| r.id)
             .chain(self.patches.iter().map(|p| p.id))
             .chain(self.winds.iter().map(|w| w.id))
-            .chain(self.obstacles.iter().map(|o| o.id));
+            .chain(self.obstacles.iter().map(|o| o.id))
+            .chain(self.networks.iter().map(|n| n.id));
         Id(used.max().map_or(1, |Id(n)| n + 1))
     }
 
@@ -247,6 +252,10 @@ impl Sheet {
 
     pub fn obstacle(&self, id: Id) -> Option<&Obstacle> {
         self.obstacles.iter().find(|o| o.id == id)
+    }
+
+    pub fn network(&self, id: Id) -> Option<&NetworkEntry> {
+        self.networks.iter().find(|n| n.id == id)
     }
 
     pub fn wind(&self, id: Id) -> Option<&WindEntry> {

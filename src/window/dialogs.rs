@@ -7,7 +7,7 @@ use super::controls::{
 };
 use super::theme;
 use crate::desk::{Command, Model, SettingCommand, SheetCommand, ViewCommand};
-use crate::study::{SETTINGS, Setting, SettingKind, SettingValue, Settings};
+use crate::study::{Setting, SettingKind, SettingValue, Settings, all_settings};
 
 pub fn settings(ctx: &Context, model: &Model, out: &mut Commands) {
     let close = overlay(ctx, "settings", 640.0, |ui| {
@@ -20,7 +20,7 @@ pub fn settings(ctx: &Context, model: &Model, out: &mut Commands) {
         let height = (ctx.content_rect().height() - 260.0).max(200.0);
         ScrollArea::vertical().max_height(height).show(ui, |ui| {
             let mut area = "";
-            for setting in SETTINGS {
+            for setting in all_settings() {
                 let this = setting.key.split('.').next().unwrap_or_default();
                 if this != area {
                     area = this;

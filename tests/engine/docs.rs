@@ -5,7 +5,7 @@ use std::fs;
 use std::path::Path;
 
 use ventifact::study::handover::methods_markdown;
-use ventifact::study::{SETTINGS, SettingKind, SettingValue, Settings};
+use ventifact::study::{SettingKind, SettingValue, Settings, all_settings};
 
 fn fresh(name: &str, want: &str) {
     let path = Path::new(env!("CARGO_MANIFEST_DIR")).join("docs").join(name);
@@ -27,7 +27,7 @@ fn the_settings_page_is_fresh() {
         "# Settings\n\nMade from the records in `src/study/records.rs`. Every key stands under `settings` in a sheet \
          file; what is absent has its default.\n\n| key | default | range | unit | meaning |\n|---|---|---|---|---|\n",
     );
-    for s in SETTINGS {
+    for s in all_settings() {
         let default = match (s.get)(&Settings::default()) {
             SettingValue::Number(v) => v.to_string(),
             SettingValue::Auto(None) => "from the data".into(),

@@ -1,7 +1,7 @@
 //! Settings, by the records that describe them.
 
 use crate::desk::{MergeKey, Model};
-use crate::study::{SETTINGS, Setting, SettingValue, Settings};
+use crate::study::{Setting, SettingValue, Settings, all_settings};
 
 use super::Record;
 
@@ -73,5 +73,5 @@ fn set(model: &mut Model, key: &str, value: SettingValue) {
 }
 
 fn find(key: &str) -> Option<&'static Setting> {
-    SETTINGS.iter().find(|setting| setting.key == key)
+    all_settings().find(|setting| setting.key == key)
 }

@@ -7,7 +7,9 @@ use super::{figure_mm, say};
 use crate::desk::{Command, Model, PatchCommand, SettingCommand, facts};
 use crate::ground::Axis;
 use crate::plate::{dial, numbers, posterior_bars};
-use crate::study::{Flip, JointFinding, PatchFinding, SETTINGS, SettingValue, TheoryFinding, VerdictFinding};
+use crate::study::{
+    Flip, JointFinding, PatchFinding, SettingValue, TheoryFinding, VerdictFinding, all_settings,
+};
 use crate::window::controls::{
     self, Commands, caution, column, heading, look, number, optional_number, rule,
 };
@@ -168,7 +170,7 @@ fn stated(ui: &mut Ui, model: &Model, out: &mut Commands) {
 fn priors(ui: &mut Ui, model: &Model, out: &mut Commands) {
     egui::CollapsingHeader::new("Priors").show(ui, |ui| {
         Grid::new("priors").num_columns(2).spacing([12.0, 4.0]).show(ui, |ui| {
-            for setting in SETTINGS.iter().filter(|s| s.key.starts_with("verdict.priors.")) {
+            for setting in all_settings().filter(|s| s.key.starts_with("verdict.priors.")) {
                 let SettingValue::Number(weight) = (setting.get)(&model.sheet.settings) else { continue };
                 ui.label(setting.label.trim_start_matches("Prior of ")).on_hover_text(setting.help);
                 if let Some(typed) = number(ui, setting.label, weight, 60.0) {

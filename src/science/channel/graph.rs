@@ -1,0 +1,1 @@
+//! From a thinned channel mask to nodes and reaches.

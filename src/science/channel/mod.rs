@@ -1,0 +1,12 @@
+//! Channels on images: response, proposal, widths, sense, and the pen.
+
+pub mod detect;
+pub mod graph;
+pub mod pen;
+pub mod sense;
+pub mod width;
+
+use crate::ground::Method;
+
+/// The methods of this family.
+pub const METHODS: &[&Method] = &[];

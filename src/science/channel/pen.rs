@@ -1,0 +1,1 @@
+//! The pen: the cheapest way along a channel between two picks.

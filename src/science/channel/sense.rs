@@ -1,0 +1,1 @@
+//! Which way the water went, where no elevation tells.

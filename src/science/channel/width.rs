@@ -1,0 +1,1 @@
+//! Banks and width along a channel, to a fraction of a pixel.
