@@ -33,7 +33,7 @@ pub use local_frame::LocalFrame;
 pub use method::{Method, Read, Source, Symbol};
 pub use network::{
     FlowSense, Network, NetworkNode, Order, Reach, ReachOrigin, SenseEvidence, SenseKind, Station, Width,
-    orders,
+    ground_distance, orders,
 };
 pub use place::{Frame, LatitudeKind, LengthUnit, Place, PlaceError};
 pub use projection::{LonLat, Projection, ProjectionError};
