@@ -91,3 +91,10 @@ pub struct TracingFinding {
     /// Where the user's arrows found no reach.
     pub lost_arrows: Vec<Point>,
 }
+
+impl NetworkFinding {
+    /// `"elevation"` or `"image"`.
+    pub fn source_in_words(&self) -> &'static str {
+        if self.drainage.is_some() { "elevation" } else { "image" }
+    }
+}
