@@ -18,14 +18,23 @@ pub enum Slot {
     OpenRaster,
     Demo,
     Measure,
+    /// Channel networks.
+    Networks,
     ReadWinds,
     Plate,
     Export,
 }
 
 impl Slot {
-    pub const ALL: [Self; 6] =
-        [Self::OpenRaster, Self::Demo, Self::Measure, Self::ReadWinds, Self::Plate, Self::Export];
+    pub const ALL: [Self; 7] = [
+        Self::OpenRaster,
+        Self::Demo,
+        Self::Measure,
+        Self::Networks,
+        Self::ReadWinds,
+        Self::Plate,
+        Self::Export,
+    ];
 }
 
 /// The running jobs and the way their answers come back.

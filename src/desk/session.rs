@@ -30,8 +30,11 @@ pub struct Session {
     pub(super) kept: Arc<Kept>,
     /// What the measuring job is about.
     pub(super) measuring: Option<Task>,
-    /// Fingerprint of the sheet at which the user stopped measuring.
+    /// Fingerprint of the patches and winds at which the user stopped measuring.
     pub(super) stopped_at: Option<String>,
+    /// The fingerprints of the networks that the running job measures, and of those at which the user stopped it.
+    pub(super) charting: Vec<String>,
+    pub(super) charts_stopped_at: Option<Vec<String>>,
     /// Whether patches are measured as they change.
     pub measures: bool,
     /// The plate on the bench.
@@ -93,6 +96,16 @@ pub enum Tool {
     Corners,
     /// Corners of an outcrop.
     Outcrop,
+    /// One click: where the selected network ends.
+    Outlet,
+    /// Corners of a lake or basin that stays closed.
+    Lake,
+    /// Follows a channel from pick to pick.
+    Pen,
+    /// One click: a proposed reach that is none.
+    Strike,
+    /// Two clicks: the water went this way.
+    Arrow,
 }
 
 /// An outline under way.
@@ -216,11 +229,17 @@ impl Session {
         self.kept = Arc::default();
         self.measuring = None;
         self.stopped_at = None;
+        self.charts_stopped_at = None;
     }
 
     /// Measures nothing more until the sheet changes or the user asks.
     pub(super) fn pause_measuring(&mut self, sheet: &Sheet) {
-        self.stopped_at = Some(fingerprint::of_sheet(sheet));
+        self.stopped_at = Some(fingerprint::of_patches(sheet));
+    }
+
+    /// Measures no network until the sheet changes or the user asks.
+    pub(super) fn pause_charting(&mut self) {
+        self.charts_stopped_at = Some(std::mem::take(&mut self.charting));
     }
 
     /// Whether something lies over the window and has the keyboard.
@@ -262,6 +281,8 @@ impl Session {
             kept: Arc::default(),
             measuring: None,
             stopped_at: None,
+            charting: Vec::new(),
+            charts_stopped_at: None,
             measures: true,
             preview: Preview::default(),
             import: None,
@@ -295,17 +316,26 @@ impl Opened {
 }
 
 impl Tool {
-    pub const ALL: [Self; 7] =
+    /// For patches and outcrops.
+    pub const OUTLINING: [Self; 7] =
         [Self::Hand, Self::Polygon, Self::Rectangle, Self::Ellipse, Self::Hole, Self::Corners, Self::Outcrop];
+    /// For networks from elevation, and for those on images.
+    pub const DRAINAGE: [Self; 2] = [Self::Outlet, Self::Lake];
+    pub const CHANNELS: [Self; 3] = [Self::Pen, Self::Strike, Self::Arrow];
 
-    /// Whether the tool lays down points that become an outline.
+    /// Whether the tool lays down points.
     pub fn draws(self) -> bool {
         !matches!(self, Self::Hand | Self::Corners)
     }
 
-    /// Whether two points make the whole outline.
-    pub fn is_box(self) -> bool {
-        matches!(self, Self::Rectangle | Self::Ellipse)
+    /// Whether two points make the whole of it.
+    pub fn takes_two(self) -> bool {
+        matches!(self, Self::Rectangle | Self::Ellipse | Self::Arrow)
+    }
+
+    /// Whether each point does something by itself.
+    pub fn takes_one(self) -> bool {
+        matches!(self, Self::Outlet | Self::Strike)
     }
 }
 
@@ -323,10 +353,13 @@ impl Draft {
         }
     }
 
-    /// The finished ring, when it encloses any ground.
+    /// The finished ring, when it encloses any ground; an arrow's two ends.
     pub fn finished(&self) -> Option<Vec<Point>> {
         let mut ring = self.ring(None);
         ring.dedup();
+        if self.tool == Tool::Arrow {
+            return (ring.len() == 2).then_some(ring);
+        }
         let area = Polygon { outer: ring.clone(), holes: Vec::new() }.area();
         (ring.len() >= 3 && area >= 1.0).then_some(ring)
     }

@@ -2,7 +2,8 @@
 //! reproduces it.
 
 use crate::ground::{Caution, Method, Read, Source};
-use crate::study::{PatchFinding, WindFinding};
+use crate::science::{channel, drainage, network};
+use crate::study::{NetworkFinding, PatchFinding, WindFinding};
 
 /// What made a plate.
 #[derive(Clone, Debug, PartialEq)]
@@ -60,6 +61,16 @@ pub(super) fn methods_of(patch: &PatchFinding) -> Vec<&'static str> {
         keys.extend(found.combined.is_some().then_some(SEVERAL_OBSTACLES));
     }
     keys
+}
+
+/// The keys of the methods a network's results rest on: those of its source, then the measures.
+pub(super) fn methods_of_network(finding: &NetworkFinding) -> Vec<&'static str> {
+    let source = [
+        finding.drainage.as_ref().map(|_| drainage::METHODS),
+        finding.tracing.as_ref().map(|_| channel::METHODS),
+        Some(network::METHODS),
+    ];
+    source.into_iter().flatten().flatten().map(|m| m.id).collect()
 }
 
 /// `"Methods: structure tensor (Bigün & Granlund 1987*); … * cited from memory."` for the keys that

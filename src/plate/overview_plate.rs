@@ -7,7 +7,7 @@ use crate::study::{Findings, Id, PatchFinding, RasterFinding};
 
 use super::caption::{self, Recipe};
 use super::dial::CLASS_NAMES;
-use super::map::{MapPatch, MapView, map};
+use super::map::{MapNetwork, MapPatch, MapView, map, network_key};
 use super::page::Page;
 use super::rose::NO_TREND;
 use super::sketch::{Sketch, Type};
@@ -20,6 +20,8 @@ pub struct OverviewPlate<'a> {
     pub raster: &'a RasterFinding,
     /// Outlines by patch, full-resolution pixels.
     pub outlines: Vec<(Id, &'a Polygon)>,
+    /// In pixels of this raster.
+    pub networks: Vec<MapNetwork<'a>>,
     pub view: MapView<'a>,
     pub recipe: &'a Recipe,
 }
@@ -38,10 +40,15 @@ pub fn overview_plate(plate: &OverviewPlate, width_mm: f64, theme: &Theme) -> Fi
             Some(MapPatch { name, outline, nodes: &[], rose, is_subject: true })
         })
         .collect();
-    let picture = map(&plate.view, &marks, [page.room(), 0.85 * page.room()], theme);
+    let picture = map(&plate.view, &marks, &plate.networks, [page.room(), 0.85 * page.room()], theme);
     let inset = 0.5 * (page.room() - picture.width_mm);
     page.put(&picture, inset, page.y);
     page.space(picture.height_mm + 3.0);
+    if !plate.networks.is_empty() {
+        let key = network_key(&plate.networks, picture.width_mm, theme);
+        page.put(&key, inset, page.y - 1.0);
+        page.space(key.height_mm + 2.0);
+    }
 
     let table = table(&patches, page.room(), theme);
     page.put(&table, 0.0, page.y);

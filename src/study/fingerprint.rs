@@ -22,6 +22,13 @@ pub fn of_sheet(sheet: &Sheet) -> String {
     ]))
 }
 
+/// SHA-256 of all that makes what the patches and wind records say: the sheet without its networks.
+pub fn of_patches(sheet: &Sheet) -> String {
+    let rasters: Vec<_> = sheet.rasters.iter().map(raster).collect();
+    let winds: Vec<_> = sheet.winds.iter().map(placed_wind).collect();
+    digest(&json!([sheet.seed, rasters, sheet.patches, winds, sheet.settings, sheet.obstacles]))
+}
+
 /// SHA-256 of all that makes a patch's finding: its outline, its raster, the outcrops on it, the settings,
 /// the winds it is judged by, the seed.
 pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {

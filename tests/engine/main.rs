@@ -12,6 +12,7 @@ mod jpeg_writer;
 mod layouts;
 mod netcdf;
 mod netcdf_writer;
+mod network_commands;
 mod obstacle;
 mod orientation;
 mod plates;

@@ -131,7 +131,7 @@ impl Hand<'_> {
         {
             let from = lens.to_pixel(origin);
             state.drag = Some(match (self.tool(), self.table.selected()) {
-                (tool, _) if tool.is_box() => {
+                (tool, _) if tool.takes_two() => {
                     if self.table.model.session.draft.is_none() {
                         self.draw(DrawCommand::Lay(from));
                     }
@@ -197,7 +197,7 @@ impl Hand<'_> {
                 .points
                 .first()
                 .is_some_and(|p| pick::handle_rect(self.table.lens.to_screen(*p)).contains(at));
-            !draft.tool.is_box() && draft.points.len() >= 3 && (double || on_first)
+            !draft.tool.takes_two() && draft.points.len() >= 3 && (double || on_first)
         });
         if closes {
             self.draw(DrawCommand::Finish);

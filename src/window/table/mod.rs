@@ -6,7 +6,9 @@ mod fields;
 mod hand;
 mod ink;
 mod lens;
+mod lines;
 mod margin;
+mod networks;
 mod outcrops;
 mod pick;
 mod strokes;
@@ -17,7 +19,7 @@ use egui::{Align2, FontId, Painter, Rect, Response, Role, Sense, Ui, WidgetInfo}
 
 use crate::desk::{self, Camera, Command, Laid, Model, Opened, ViewCommand};
 use crate::ground::{Bounds, Point};
-use crate::study::{Id, Obstacle, Patch, PatchFinding, RasterEntry};
+use crate::study::{Id, NetworkEntry, Obstacle, Patch, PatchFinding, RasterEntry};
 
 use super::theme;
 use draw::Standing;
@@ -32,6 +34,7 @@ use pick::Corner;
 pub struct TableState {
     tiles: tiles::TileTextures,
     fields: fields::Fields,
+    charts: networks::Charts,
     drag: Option<Drag>,
     /// The corner in hand, for keys.
     corner: Option<Corner>,
@@ -60,6 +63,10 @@ impl Table<'_> {
 
     fn obstacles(&self) -> impl Iterator<Item = &Obstacle> {
         self.model.sheet.obstacles.iter().filter(|o| o.raster == self.entry.id)
+    }
+
+    fn networks(&self) -> impl Iterator<Item = &NetworkEntry> {
+        self.model.sheet.networks.iter().filter(|n| n.raster == self.entry.id)
     }
 
     fn selected(&self) -> Option<&Patch> {
@@ -157,6 +164,9 @@ fn paint(painter: &Painter, response: &Response, table: &Table<'_>, state: &mut 
     }
     if layers.strokes {
         draw::strokes(&inside, &state.fields.on_screen(table), ink);
+    }
+    if layers.networks {
+        state.charts.draw(&inside, table);
     }
     let pointer = hand::pointer(response, lens);
     let hovered = pointer
