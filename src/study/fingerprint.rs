@@ -26,7 +26,7 @@ pub fn of_sheet(sheet: &Sheet) -> String {
 pub fn of_patches(sheet: &Sheet) -> String {
     let rasters: Vec<_> = sheet.rasters.iter().map(raster).collect();
     let winds: Vec<_> = sheet.winds.iter().map(placed_wind).collect();
-    digest(&json!([sheet.seed, rasters, sheet.patches, winds, sheet.settings, sheet.obstacles]))
+    digest(&json!([sheet.seed, rasters, sheet.patches, winds, of_bedforms(sheet), sheet.obstacles]))
 }
 
 /// SHA-256 of all that makes a patch's finding: its outline, its raster, the outcrops on it, the settings,
@@ -52,7 +52,7 @@ pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
         sheet.raster(patch.raster).map(raster),
         patch.winds == WindChoice::Nearest,
         winds,
-        sheet.settings
+        of_bedforms(sheet)
     ]))
 }
 
@@ -84,6 +84,12 @@ pub fn of_terrain(sheet: &Sheet, entry: &NetworkEntry) -> String {
 pub fn of_wind(sheet: &Sheet, entry: &WindEntry) -> String {
     let v = &sheet.settings.verdict;
     digest(&json!([sheet.seed, wind(entry), sheet.settings.wind, v.flux_up, v.flux_up_doubt]))
+}
+
+/// The settings that bear on patches; those of channels do not.
+fn of_bedforms(sheet: &Sheet) -> Value {
+    let s = &sheet.settings;
+    json!([s.trend, s.spectrum, s.statistics, s.wind, s.verdict, s.obstacle, s.backwards])
 }
 
 fn raster(r: &RasterEntry) -> Value {

@@ -122,6 +122,7 @@ pub fn channels(
             changed: conditioned.changed,
             change_map,
             change_map_px,
+            change_map_at: ground.origin,
             router: s.router,
             channels: found,
             basins: all,
