@@ -13,6 +13,7 @@ mod netcdf;
 mod netcdf_writer;
 mod obstacle;
 mod orientation;
+mod pen;
 mod plates;
 mod records;
 mod samples;
