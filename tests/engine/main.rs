@@ -15,6 +15,7 @@ mod netcdf_writer;
 mod network_commands;
 mod obstacle;
 mod orientation;
+mod pen;
 mod plates;
 mod records;
 mod samples;
