@@ -10,7 +10,7 @@ use crate::science::drainage::condition::{BreachLimits, Conditioned, condition};
 use crate::science::drainage::extract::{ChannelAsk, Channels, channels as extract};
 use crate::science::drainage::routing::{Receivers, receivers};
 use crate::science::drainage::smoothness;
-use crate::science::network::density::INFLATION_MEAN;
+use crate::science::network::density::inflation_of;
 use crate::study::{DrainageFinding, FromElevation, NetworkEntry, Sheet, fingerprint};
 
 use super::{Found, Ground, masked};
@@ -115,6 +115,7 @@ pub fn channels(
     };
     let (change_map, change_map_px) = change_map(ground, conditioned);
     let cells_area_m2 = cells_area(surface, cells);
+    let inflation = inflation_of(&found.network, &ground.open.place);
     Ok(Ok(Found {
         network: found.network.clone(),
         drainage: Some(DrainageFinding {
@@ -129,7 +130,7 @@ pub fn channels(
             cells_area_m2,
         }),
         tracing: None,
-        inflation: INFLATION_MEAN,
+        inflation,
         summit,
         cautions,
     }))
