@@ -1,5 +1,6 @@
 //! The engine as a whole: guards, properties, hostile files, the command line.
 
+mod channels;
 mod coarse;
 mod command_line;
 mod demo;
