@@ -6,6 +6,7 @@ mod command_line;
 mod demo;
 mod docs;
 mod drainage;
+mod dry_channels;
 mod gratings;
 mod guards;
 mod hostile;
