@@ -3,6 +3,7 @@
 
 pub mod bessel;
 pub mod eigen;
+pub mod fast_march;
 pub mod fft;
 pub mod gamma;
 pub mod gauss;

@@ -18,6 +18,7 @@ mod network_entry;
 mod network_findings;
 mod obstacles;
 mod patch;
+pub mod pen;
 mod records;
 pub mod run;
 mod sentence;

@@ -14,6 +14,7 @@ mod netcdf_writer;
 mod network_commands;
 mod obstacle;
 mod orientation;
+mod pen;
 mod plates;
 mod records;
 mod samples;

@@ -1,5 +1,7 @@
 //! Channels on images: response, proposal, widths, sense, and the pen.
 
+pub mod chance;
+mod cost;
 pub mod detect;
 pub mod graph;
 pub mod pen;
@@ -9,4 +11,4 @@ pub mod width;
 use crate::ground::Method;
 
 /// The methods of this family.
-pub const METHODS: &[&Method] = &[];
+pub const METHODS: &[&Method] = &[&cost::METHOD, &pen::METHOD, &chance::METHOD];
