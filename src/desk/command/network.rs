@@ -1,7 +1,7 @@
 //! Channel networks: where they are sought, and what the user says and draws of them.
 
 use crate::desk::channels::{self, reach_near};
-use crate::desk::{MergeKey, Model, Page, Tool};
+use crate::desk::{MergeKey, Model, Motif, Page, Tool};
 use crate::ground::{Point, Polygon};
 use crate::study::{FromElevation, FromImage, Id, ImageKind, NetworkEntry, NetworkSource, TracedChannel};
 
@@ -398,7 +398,9 @@ fn select(model: &mut Model, id: Option<Id>) {
     model.view.network = network.map(|n| n.id);
     if let Some(raster) = network.map(|n| n.raster) {
         model.view.raster = Some(raster);
-        if model.view.page != Page::Plate {
+        if model.view.page == Page::Plate {
+            model.view.plate.motif = Motif::Network;
+        } else {
             model.view.page = Page::Channels;
         }
     }

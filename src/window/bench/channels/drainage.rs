@@ -1,11 +1,14 @@
 //! From elevation to channels: what conditioning changed, and the threshold with half, one and twice of it.
 
+use std::sync::Arc;
+
 use egui::{Grid, RichText, Slider, Ui};
 
+use super::figures;
 use crate::desk::{Command, DrawCommand, Model, NetworkCommand, channel_facts, channels};
 use crate::ground::Network;
-use crate::plate::numbers;
-use crate::study::{DrainageFinding, NetworkEntry};
+use crate::plate::{drop_test, numbers, threshold_maps};
+use crate::study::{DrainageFinding, NetworkEntry, NetworkFinding};
 use crate::window::controls::{self, Commands, heading, look, optional_number, quiet};
 use crate::window::theme;
 
@@ -55,13 +58,15 @@ fn span(model: &Model, network: &NetworkEntry, now: f64) -> [f64; 2] {
 }
 
 /// The report of conditioning and the three networks.
-pub fn show(ui: &mut Ui, model: &Model, drainage: &DrainageFinding, _out: &mut Commands) {
+pub fn show(ui: &mut Ui, model: &Model, finding: &Arc<NetworkFinding>, drainage: &DrainageFinding) {
     let look = look(model);
     heading(ui, "Made to drain");
     controls::facts(ui, &look, &channel_facts::conditioning(drainage));
     heading(ui, "Threshold");
     controls::facts(ui, &look, &channel_facts::heads(drainage));
-    ui.add_space(4.0);
+    figures::show(ui, &look, finding, "drops", "Constant-drop test by threshold", drop_test);
+    let spoken = "Channels at half, one and twice the threshold";
+    figures::show(ui, &look, finding, "thresholds", spoken, threshold_maps);
     let channels = &drainage.channels;
     let soft = theme::color(look.ink_soft);
     Grid::new("thresholds").num_columns(5).spacing([14.0, 4.0]).show(ui, |ui| {

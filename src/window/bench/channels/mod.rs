@@ -2,6 +2,7 @@
 //! where channels begin, then what is measured on them.
 
 mod drainage;
+mod figures;
 mod measures;
 mod picks;
 
@@ -51,7 +52,7 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
     controls::facts(ui, &look, &channel_facts::about(finding));
     finding.cautions.iter().for_each(|c| caution(ui, &look, &c.text));
     if let Some(drainage) = &finding.drainage {
-        drainage::show(ui, model, drainage, out);
+        drainage::show(ui, model, finding, drainage);
     }
     if let Some(tracing) = &finding.tracing {
         heading(ui, "From the image");
