@@ -5,6 +5,7 @@ mod coarse;
 mod command_line;
 mod demo;
 mod docs;
+mod drainage;
 mod gratings;
 mod guards;
 mod hostile;
