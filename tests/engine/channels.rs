@@ -166,9 +166,9 @@ fn a_drawn_network_has_its_nodes_lengths_and_orders() {
     let six = ground.channels(&ask(6.0)).unwrap();
     assert_eq!(
         told(&six.network),
-        [([2, 3, 3, 4], Some(1), 2), ([3, 4, 3, 8], Some(2), 5), ([4, 3, 3, 4], Some(1), 2)]
+        [([1, 2, 3, 4], Some(1), 3), ([3, 4, 3, 8], Some(2), 5), ([5, 2, 3, 4], Some(1), 3)]
     );
-    assert_eq!(told(&six.half).len(), 7, "at three cells the forks show");
+    assert_eq!(told(&six.half).len(), 6, "at three cells the sides show");
     assert_eq!(told(&six.twice), [([3, 4, 3, 8], Some(1), 5)]);
     assert!(ground.channels(&ask(30.0)).is_err_and(|why| why.contains("30")));
 }
