@@ -7,8 +7,8 @@ use crate::plate::Figure;
 use crate::study::{Id, OpenRaster, TogetherFinding};
 
 use super::{
-    Charted, Command, Delivery, Import, Measured, Model, Opened, Reading, SheetCommand, Slot, WindResult,
-    apply,
+    Charted, Command, Delivery, Import, Measured, Model, Opened, PenAnswer, Reading, SheetCommand, Slot,
+    WindResult, apply, pen,
 };
 
 /// An answer from a job.
@@ -18,6 +18,7 @@ pub enum Answer {
     Raster(Id, Option<Box<OpenRaster>>, Opened),
     Patch(Id, Box<Measured>),
     Network(Id, Box<Charted>),
+    Pen(PenAnswer),
     Winds(Vec<WindResult>),
     /// What all patches say together, as the sheet of this fingerprint stood.
     Together(String, Box<TogetherFinding>),
@@ -71,6 +72,7 @@ fn take(model: &mut Model, answer: Answer) {
         }
         Answer::Patch(id, measured) => session.results.take_patch(id, *measured),
         Answer::Network(id, charted) => session.results.take_network(id, *charted),
+        Answer::Pen(answer) => pen::take(model, answer),
         Answer::Winds(results) => results.into_iter().for_each(|r| session.results.take_wind(r)),
         Answer::Together(sheet, together) => session.results.take_together(sheet, *together),
         Answer::Preview(import) => match *import {

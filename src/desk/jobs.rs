@@ -20,17 +20,23 @@ pub enum Slot {
     Measure,
     /// Channel networks.
     Networks,
+    /// The pen: its ground and the way to the pointer.
+    Pen,
+    /// What ways between random places cost.
+    Chance,
     ReadWinds,
     Plate,
     Export,
 }
 
 impl Slot {
-    pub const ALL: [Self; 7] = [
+    pub const ALL: [Self; 9] = [
         Self::OpenRaster,
         Self::Demo,
         Self::Measure,
         Self::Networks,
+        Self::Pen,
+        Self::Chance,
         Self::ReadWinds,
         Self::Plate,
         Self::Export,

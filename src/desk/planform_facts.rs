@@ -9,6 +9,7 @@ use crate::science::network::pattern::PATTERN_NAMES;
 use crate::science::network::planform::{Meander, Planform};
 use crate::study::NetworkFinding;
 
+use super::Tracing;
 use super::channel_facts::{interval, square_metres};
 use super::facts::{Fact, fact};
 
@@ -228,6 +229,37 @@ pub fn agreement(finding: &NetworkFinding, with: &Agreement) -> Vec<Fact> {
         fact("Same order", share(with.same_order), "Share of the common length where Strahler orders agree."),
         fact("Junctions", format!("{found} of its {theirs} found, {ours} here"), "Within the tolerance."),
     ]
+}
+
+/// The channel under way with the pen.
+pub fn tracing(tracing: &Tracing) -> Vec<Fact> {
+    let mut facts = vec![fact(
+        "Picks",
+        format!("{}; Backspace takes one back, Enter ends", tracing.picks.len()),
+        "Of the channel under way.",
+    )];
+    let last = tracing.live.as_ref().or(tracing.legs.iter().flatten().last());
+    let Some(leg) = last else { return facts };
+    let Some(way) = &leg.way else {
+        facts.push(fact(
+            "Way",
+            "straight: there is no ground for the pen here",
+            "Off the raster, or no data.",
+        ));
+        return facts;
+    };
+    let cost = way.cost_ratio.map_or("not known yet".into(), |ratio| {
+        format!("{} of that of chance ways", numbers::fixed(ratio, 2))
+    });
+    facts.push(
+        fact("Cost", cost, "Per length, over the median of ways between random places as far apart; well below 1 on a channel.")
+            .by("channel.pen-chance"),
+    );
+    facts.extend(way.p.map(|p| {
+        fact("By chance", numbers::p_value(p), "Share of such ways that are as cheap.")
+            .by("channel.pen-chance")
+    }));
+    facts
 }
 
 /// The reach under the pointer.

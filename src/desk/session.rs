@@ -9,7 +9,10 @@ use crate::study::{Id, OpenRaster, Sheet, fingerprint};
 
 use super::laying::OpenedAs;
 use super::measuring::{Kept, Task};
-use super::{Answer, Command, History, Import, Jobs, Notices, Preview, Results, Slot, TileShelf, Wake};
+use super::{
+    Answer, Command, History, Import, Jobs, Notices, PenGround, Preview, Results, Slot, TileShelf, Tracing,
+    Wake,
+};
 
 /// Never saved.
 #[derive(Debug)]
@@ -45,6 +48,9 @@ pub struct Session {
     pub tool: Tool,
     /// The outline under way.
     pub draft: Option<Draft>,
+    /// The channel under way.
+    pub tracing: Option<Tracing>,
+    pub(super) pen_ground: Option<PenGround>,
     /// Where the pointer (or the keyboard cross) is on the raster.
     pub cursor: Option<Cursor>,
     /// Size of the table in screen points, as last drawn.
@@ -261,6 +267,8 @@ impl Session {
         self.preview = Preview::default();
         self.tool = Tool::default();
         self.draft = None;
+        self.tracing = None;
+        self.pen_ground = None;
         self.cursor = None;
         self.dialog = None;
         self.ask = None;
@@ -289,6 +297,8 @@ impl Session {
             notices: Notices::default(),
             tool: Tool::default(),
             draft: None,
+            tracing: None,
+            pen_ground: None,
             cursor: None,
             viewport: [0.0, 0.0],
             dialog: None,

@@ -4,14 +4,15 @@ use egui::{Align, Layout, ProgressBar, RichText, Ui};
 
 use super::controls::{Commands, caution, look};
 use super::theme;
-use crate::desk::{Command, JobCommand, Model, Page, Running, Standing, readout};
+use crate::desk::{Command, JobCommand, Model, Page, Running, Slot, Standing, readout};
 
 pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
     finding(ui, model);
     ui.add_space(2.0);
     ui.horizontal(|ui| {
-        for running in model.session.jobs.running() {
-            job(ui, model, out, &running);
+        // The pen's own steps are too short to be read.
+        for running in model.session.jobs.running().iter().filter(|running| running.slot != Slot::Pen) {
+            job(ui, model, out, running);
         }
         ui.with_layout(Layout::right_to_left(Align::Center), |ui| {
             let ink = theme::color(look(model).ink_soft);

@@ -1,6 +1,6 @@
 //! Outlining on the table, by pointer or by keyboard.
 
-use crate::desk::{Draft, Model, Tool};
+use crate::desk::{Draft, Model, Tool, Tracing, pen};
 use crate::ground::{Point, Polygon};
 
 use super::{Command, NetworkCommand, ObstacleCommand, PatchCommand, Record, apply};
@@ -42,11 +42,15 @@ impl DrawCommand {
             Self::Take(tool) => tool_record(*tool),
             Self::Lay(_) => Record::new("draw.lay", "Lay a corner", "Adds a corner to the outline."),
             Self::Retract => {
-                Record::new("draw.retract", "Take back a corner", "Removes the last corner.").key("Backspace")
+                Record::new("draw.retract", "Take back a corner", "Removes the last corner or pick.")
+                    .key("Backspace")
             }
-            Self::Finish => {
-                Record::new("draw.finish", "Close the outline", "Makes a patch of the outline.").key("Enter")
-            }
+            Self::Finish => Record::new(
+                "draw.finish",
+                "Close the outline",
+                "Makes a patch of the outline; ends a traced channel.",
+            )
+            .key("Enter"),
             Self::Cancel => {
                 Record::new("draw.cancel", "Stop outlining", "Drops the outline and takes up the hand.")
                     .key("Escape")
@@ -56,7 +60,7 @@ impl DrawCommand {
     }
 
     pub(super) fn refusal(&self, model: &Model) -> Option<&'static str> {
-        let draft = model.session.draft.as_ref();
+        let (draft, tracing) = (model.session.draft.as_ref(), model.session.tracing.as_ref());
         match self {
             Self::Take(Tool::Hole | Tool::Corners) if model.selected_patch().is_none() => {
                 Some("no patch is selected")
@@ -77,11 +81,16 @@ impl DrawCommand {
             Self::Lay(_) if !model.session.tool.draws() || model.shown_raster().is_none() => {
                 Some("no outlining tool is in hand")
             }
+            Self::Retract if tracing.is_some() => None,
+            Self::Finish if tracing.is_some() => {
+                let whole = tracing.is_some_and(Tracing::is_whole);
+                (!whole).then_some("a channel needs two picks")
+            }
             Self::Retract | Self::Finish if draft.is_none() => Some("no outline is under way"),
             Self::Finish if draft.and_then(Draft::finished).is_none() => {
                 Some("an outline needs three corners that enclose some ground")
             }
-            Self::Cancel if draft.is_none() && model.session.tool == Tool::Hand => {
+            Self::Cancel if draft.is_none() && tracing.is_none() && model.session.tool == Tool::Hand => {
                 Some("no outline is under way")
             }
             _ => None,
@@ -93,8 +102,11 @@ impl DrawCommand {
             Self::Take(tool) => {
                 model.session.tool = tool;
                 model.session.draft = None;
+                model.session.tracing = None;
             }
             Self::Lay(point) => lay(model, point),
+            Self::Retract if model.session.tracing.is_some() => pen::retract(model),
+            Self::Finish if model.session.tracing.is_some() => pen::finish(model),
             Self::Retract => {
                 if let Some(draft) = &mut model.session.draft {
                     draft.points.pop();
@@ -104,7 +116,9 @@ impl DrawCommand {
             Self::Finish => finish(model),
             Self::Cancel => {
                 // First the outline goes, then the tool.
-                if model.session.draft.take().is_none() {
+                let under_way =
+                    model.session.draft.take().is_some() || model.session.tracing.take().is_some();
+                if !under_way {
                     model.session.tool = Tool::Hand;
                 }
             }
@@ -177,6 +191,9 @@ fn tool_record(tool: Tool) -> Record {
 fn lay(model: &mut Model, point: Point) {
     let Some(raster) = model.shown_raster().map(|r| r.id) else { return };
     let tool = model.session.tool;
+    if tool == Tool::Pen {
+        return pen::pick(model, point);
+    }
     if tool.takes_one() {
         if let Some(command) = NetworkCommand::of_click(model, tool, point) {
             apply(model, Command::Network(command));

@@ -31,7 +31,7 @@ pub use wind::WindCommand;
 use std::fmt;
 use std::path::PathBuf;
 
-use super::{MergeKey, Model, plates};
+use super::{MergeKey, Model, pen, plates};
 
 /// Everything a user can ask for, by area.
 #[derive(Clone, Debug, PartialEq)]
@@ -236,6 +236,7 @@ pub fn apply(model: &mut Model, command: Command) {
     }
     if passive {
         plates::follow(model);
+        pen::follow(model);
     } else {
         model.keep_up();
     }

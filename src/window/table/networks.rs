@@ -5,13 +5,14 @@ use std::sync::Arc;
 
 use egui::{Color32, Painter, Pos2, Rect, Shape, Stroke, TextureHandle, TextureOptions, Vec2, pos2};
 
-use crate::desk::{self, channels};
+use crate::desk::{self, Leg, Tracing, channels};
 use crate::ground::{Bounds, Grid, Point, Polygon, ReachOrigin};
 use crate::study::{
     DrainageFinding, FromElevation, FromImage, Id, NetworkEntry, NetworkFinding, NetworkSource,
 };
 
 use super::Table;
+use super::draw::handle;
 use super::ink::Ink;
 use super::lens::Lens;
 use super::lines::{Chart, Line};
@@ -216,6 +217,24 @@ fn divide(painter: &Painter, ring: &[Point], lens: &Lens, ink: &Ink) {
     on.extend(on.first().copied());
     painter.add(Shape::line(on.clone(), Stroke::new(2.6, ink.halo.gamma_multiply(0.7))));
     painter.extend(Shape::dashed_line(&on, Stroke::new(1.2, ink.line), 7.0, 4.0));
+}
+
+/// The channel under way: the legs that stand, the way to the pointer dashed, and the picks.
+pub fn tracing(painter: &Painter, tracing: &Tracing, lens: &Lens, ink: &Ink) {
+    let screen = |leg: &Leg| leg.line().iter().map(|p| lens.to_screen(*p)).collect::<Vec<Pos2>>();
+    for leg in tracing.legs.iter().flatten() {
+        let on = screen(leg);
+        painter.add(Shape::line(on.clone(), Stroke::new(4.6, ink.halo.gamma_multiply(0.85))));
+        painter.add(Shape::line(on, Stroke::new(2.2, ink.over_image)));
+    }
+    if let Some(live) = &tracing.live {
+        let on = screen(live);
+        painter.add(Shape::line(on.clone(), Stroke::new(4.2, ink.halo.gamma_multiply(0.7))));
+        painter.extend(Shape::dashed_line(&on, Stroke::new(2.0, ink.over_image), 6.0, 4.0));
+    }
+    for (i, pick) in tracing.picks.iter().enumerate() {
+        handle(painter, lens.to_screen(*pick), i + 1 == tracing.picks.len(), ink);
+    }
 }
 
 /// What the user said and drew of a network.

@@ -111,6 +111,12 @@ fn tools(ui: &mut Ui, model: &Model, network: &NetworkEntry, out: &mut Commands)
 fn pointed(ui: &mut Ui, model: &Model) {
     heading(ui, "Under the pointer");
     let top = ui.cursor().top();
+    if let Some(tracing) = &model.session.tracing {
+        controls::facts(ui, &look(model), &planform_facts::tracing(tracing));
+        let used = ui.cursor().top() - top;
+        ui.add_space((POINTED_HEIGHT - used).max(0.0));
+        return;
+    }
     match channels::pointed_reach(model) {
         Some((finding, reach)) => controls::facts(ui, &look(model), &planform_facts::reach(finding, reach)),
         None => say(ui, model, "Point at a reach to see its order, width and which way the water went."),
