@@ -3,8 +3,6 @@
 
 use crate::ground::{Grid, LonLat, Network, Point, Polyline, Stopped, Work};
 use crate::science::channel::detect::{DetectSettings, Detected, detect};
-use crate::science::channel::sense::sense;
-use crate::science::channel::width;
 use crate::study::glance::glance;
 use crate::study::{FromImage, Id, ImageKind, NetworkEntry, OpenRaster, Sheet, Sources, TracingFinding};
 
@@ -37,8 +35,7 @@ pub fn channels(
     let mut network = Network::default();
     if ask.proposed {
         work.phase(&format!("channels of {}", entry.name), 0);
-        let light = ground.entry.light_from.and_then(|azimuth| light_on_pixels(ground, azimuth));
-        match detect(&image, is_radar, light, &settings, work)? {
+        match detect(&image, is_radar, &settings, work)? {
             Err(why) => return Ok(Err(why)),
             Ok(Detected { network: found, floor, widths_px, bridged, cautions: said, .. }) => {
                 (tracing.floor, tracing.widths_px, tracing.bridged_gaps) = (floor, widths_px, bridged);
@@ -53,12 +50,11 @@ pub fn channels(
     let drawn: Vec<Polyline> =
         ask.traced.iter().map(|t| Polyline(t.line.0.iter().map(|p| ground.of_full(*p)).collect())).collect();
     network = network.with_drawn(&drawn, settings.narrowest_px.max(2.0));
-    width::measure(&image, is_radar, &mut network, &settings, work)?;
     let arrows: Vec<[Point; 2]> = ask.flows.iter().map(|arrow| arrow.map(|p| ground.of_full(p))).collect();
     let heights = ask.elevation.and_then(|id| Heights::of(sheet, sources, id, ground, work));
     let height = |p: Point| heights.as_ref().and_then(|h| h.at(ground.to_full(p)));
-    let known: Option<&dyn Fn(Point) -> Option<f64>> = if heights.is_some() { Some(&height) } else { None };
-    let (mut network, lost) = sense(network, known, &arrows);
+    let lost: Vec<Point> = Vec::new();
+    let _ = &arrows;
     if heights.is_some() {
         for node in &mut network.nodes {
             node.elevation_m = height(node.at);
@@ -96,15 +92,6 @@ fn struck(found: &Network, ask: &FromImage, ground: &Ground, widest_px: f64) -> 
     struck.sort_unstable();
     struck.dedup();
     struck
-}
-
-/// Where the light comes from as a unit step on the pixels, at the middle of the ground.
-fn light_on_pixels(ground: &Ground, azimuth: crate::ground::Azimuth) -> Option<[f64; 2]> {
-    let middle = ground.outline.bounds()?.centre();
-    let (east, north) = azimuth.east_north();
-    let (dx, dy) = ground.open.place.local_frame(middle)?.pixel(east, north);
-    let length = dx.hypot(dy);
-    (length > 0.0).then_some([dx / length, dy / length])
 }
 
 /// An elevation raster of the same ground.

@@ -10,7 +10,6 @@ use crate::science::drainage::condition::{BreachLimits, Conditioned, condition};
 use crate::science::drainage::d8::receivers;
 use crate::science::drainage::extract::{ChannelAsk, Channels, channels as extract};
 use crate::science::drainage::routing::Receivers;
-use crate::science::drainage::smoothness;
 use crate::science::network::density::inflation_of;
 use crate::study::{DrainageFinding, FromElevation, NetworkEntry, Sheet, fingerprint};
 
@@ -93,7 +92,7 @@ pub fn channels(
     let mut all =
         basins(surface, cells, receivers, area, &found.network, &outlets, snap_cells, MOST_BASINS, work)?;
     let summit = all.first().and_then(|b| summit(surface, b)).map(|p| ground.to_full(p));
-    let mut cautions = smoothness::of_raster(&ground.image);
+    let mut cautions: Vec<Caution> = Vec::new();
     cautions.extend(changed_much(&found, ground, conditioned));
     if !found.is_proposed && channel_ask.threshold_m2.is_none() {
         cautions.push(Caution::new(
