@@ -2,6 +2,7 @@
 
 pub mod accumulate;
 pub mod basins;
+mod breach;
 pub mod cells;
 pub mod condition;
 pub mod d8;
@@ -16,4 +17,13 @@ pub mod routing;
 use crate::ground::Method;
 
 /// The methods of this family.
-pub const METHODS: &[&Method] = &[&fill::METHOD, &flats::METHOD, &d8::METHOD, &d_infinity::METHOD, &multiple::FREEMAN, &multiple::QUINN, &accumulate::METHOD];
+pub const METHODS: &[&Method] = &[
+    &fill::METHOD,
+    &breach::METHOD,
+    &flats::METHOD,
+    &d8::METHOD,
+    &d_infinity::METHOD,
+    &multiple::FREEMAN,
+    &multiple::QUINN,
+    &accumulate::METHOD,
+];
