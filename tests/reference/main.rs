@@ -5,6 +5,7 @@ mod axial;
 mod axial_field;
 mod axial_tests;
 mod georef;
+mod network;
 mod obstacle;
 mod orientation;
 mod place;
