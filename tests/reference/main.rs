@@ -6,6 +6,7 @@ mod axial_field;
 mod axial_tests;
 mod drainage;
 mod georef;
+mod network;
 mod obstacle;
 mod orientation;
 mod place;
