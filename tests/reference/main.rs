@@ -8,6 +8,7 @@ mod georef;
 mod obstacle;
 mod orientation;
 mod place;
+mod planform;
 mod spectrum;
 mod verdict;
 mod wind;

@@ -1,5 +1,6 @@
 //! Channels on images: response, proposal, widths, sense, and the pen.
 
+mod belief;
 pub mod chance;
 mod cost;
 pub mod detect;
@@ -11,4 +12,4 @@ pub mod width;
 use crate::ground::Method;
 
 /// The methods of this family.
-pub const METHODS: &[&Method] = &[&cost::METHOD, &pen::METHOD, &chance::METHOD];
+pub const METHODS: &[&Method] = &[&cost::METHOD, &pen::METHOD, &chance::METHOD, &sense::METHOD];
