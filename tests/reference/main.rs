@@ -10,6 +10,7 @@ mod network;
 mod obstacle;
 mod orientation;
 mod place;
+mod planform;
 mod spectrum;
 mod verdict;
 mod wind;
