@@ -318,7 +318,8 @@ pub fn network_key(view: &MapView, networks: &[MapNetwork], size_mm: [f64; 2], t
     when(any(&|r| r.origin == ReachOrigin::Traced), Sign::Picks, "drawn by hand");
     let sure = |r: &Reach| !(1.0 - SURE..=SURE).contains(&r.sense.probability());
     when(any(&sure), Sign::Arrow, "flow, p > 0.95");
-    when(networks.iter().any(|n| !n.network.heads().is_empty()), Sign::Ring, "head");
+    let headed = |n: &MapNetwork| shown(n.network, &sheet).least_order == 1 && !n.network.heads().is_empty();
+    when(networks.iter().any(headed), Sign::Ring, "head");
     when(networks.iter().any(|n| !n.network.outlets().is_empty()), Sign::Square, "outlet");
     when(networks.iter().any(|n| !n.divides.is_empty()), Sign::Divide, "divide");
     let changed = |sign: f32| {
