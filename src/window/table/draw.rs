@@ -100,7 +100,7 @@ pub fn halo_text(
 pub fn draft(painter: &Painter, draft: &Draft, next: Option<Point>, lens: &Lens, ink: &Ink) {
     let ring: Vec<Pos2> = draft.ring(next).into_iter().map(|p| lens.to_screen(p)).collect();
     let Some(first) = ring.first() else { return };
-    let open = if draft.tool.is_box() { ring.len() } else { draft.points.len() };
+    let open = if draft.tool.takes_two() { ring.len() } else { draft.points.len() };
     let color = ink.over_image;
     let halo = Stroke::new(4.2, ink.halo.gamma_multiply(0.8));
     let mut closed = ring.clone();
@@ -109,7 +109,7 @@ pub fn draft(painter: &Painter, draft: &Draft, next: Option<Point>, lens: &Lens,
     painter.add(Shape::line(ring[..open].to_vec(), Stroke::new(1.8, color)));
     let rest = &closed[open.saturating_sub(1)..];
     painter.extend(Shape::dashed_line(rest, Stroke::new(1.8, color), 6.0, 4.0));
-    if !draft.tool.is_box() {
+    if !draft.tool.takes_two() {
         for (index, p) in draft.points.iter().enumerate() {
             handle(painter, lens.to_screen(*p), index == 0, ink);
         }
