@@ -19,8 +19,9 @@ pub struct MapNetwork<'a> {
     pub name: &'a str,
     pub network: &'a Network,
     pub divides: Vec<&'a Polygon>,
-    /// Depth raised (positive) or cut (negative) in metres, and full-resolution pixels a cell.
-    pub change: Option<(&'a Grid<f32>, f64)>,
+    /// Depth raised (positive) or cut (negative) in metres, where its upper left corner lies, and full-resolution
+    /// pixels a cell.
+    pub change: Option<(&'a Grid<f32>, Point, f64)>,
 }
 
 /// Channel length on the map's area that print still holds apart, mm per mm².
@@ -78,8 +79,8 @@ fn ink(drawn: &Drawn, theme: &Theme) -> Stroke {
 
 /// What lies under everything else: changed ground and divides.
 pub(super) fn draw_ground(sketch: &mut Sketch, network: &MapNetwork, sheet: &Sheet, theme: &Theme) {
-    if let Some((map, px)) = network.change {
-        change(sketch, map, px, sheet, theme);
+    if let Some(changed) = network.change {
+        change(sketch, changed, sheet, theme);
     }
     for divide in &network.divides {
         for ring in divide.rings() {
@@ -180,7 +181,7 @@ fn ends(sketch: &mut Sketch, network: &Network, least: u32, sheet: &Sheet, theme
 }
 
 /// Raised ground in the colour of caution, cut ground in ink, both deeper where more was changed.
-fn change(sketch: &mut Sketch, map: &Grid<f32>, px: f64, sheet: &Sheet, theme: &Theme) {
+fn change(sketch: &mut Sketch, (map, at, px): (&Grid<f32>, Point, f64), sheet: &Sheet, theme: &Theme) {
     let most = map.valid_values().filter(|v| v.is_finite()).map(f32::abs).fold(0.0, f32::max);
     if most <= 0.0 || map.is_empty() {
         return;
@@ -196,9 +197,9 @@ fn change(sketch: &mut Sketch, map: &Grid<f32>, px: f64, sheet: &Sheet, theme: &
             rgba.extend(tone.with_alpha(alpha).0);
         }
     }
-    let max = Point::new(px * map.width() as f64, px * map.height() as f64);
+    let max = Point::new(at.x + px * map.width() as f64, at.y + px * map.height() as f64);
     let (width, height) = (map.width(), map.height());
-    let (min, max) = (sheet.at(Point::default()), sheet.at(max));
+    let (min, max) = (sheet.at(at), sheet.at(max));
     sketch.items.push(Item::Image { min, max, width, height, rgba: rgba.into() });
 }
 
@@ -323,7 +324,7 @@ pub fn network_key(view: &MapView, networks: &[MapNetwork], size_mm: [f64; 2], t
     when(networks.iter().any(|n| !n.network.outlets().is_empty()), Sign::Square, "outlet");
     when(networks.iter().any(|n| !n.divides.is_empty()), Sign::Divide, "divide");
     let changed = |sign: f32| {
-        let values = networks.iter().filter_map(|n| n.change).flat_map(|(map, _)| map.valid_values());
+        let values = networks.iter().filter_map(|n| n.change).flat_map(|(map, _, _)| map.valid_values());
         values.into_iter().any(|v| sign * v > 0.0)
     };
     when(changed(1.0), Sign::Raised, "raised");
