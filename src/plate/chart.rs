@@ -110,7 +110,8 @@ fn linear_ticks(min: f64, max: f64, most: f64) -> Vec<(f64, String)> {
         .collect()
 }
 
-/// 1, 2 and 5 of each decade, or 1 only, or every second, third … decade, so that `most` is not passed by much.
+/// 1, 2 and 5 of each decade, or 1 and 3, or 1 only, or every second, third … decade, so that `most` is not passed by
+/// much.
 fn log_ticks(min: f64, max: f64, most: f64) -> Vec<(f64, String)> {
     let (low, high) = (min.log10().floor() as i32, max.log10().ceil() as i32);
     let fits = |v: &f64| *v >= min * (1.0 - 1e-9) && *v <= max * (1.0 + 1e-9);
@@ -121,12 +122,10 @@ fn log_ticks(min: f64, max: f64, most: f64) -> Vec<(f64, String)> {
             .filter(|v| fits(v))
             .collect()
     };
-    let mut ticks = with(&[1.0, 2.0, 5.0], 1);
-    let mut every = 1;
-    while ticks.len() as f64 > most && every < 60 {
-        ticks = with(&[1.0], every);
-        every += 1;
-    }
+    let enough = |ticks: &Vec<f64>| ticks.len() as f64 <= most + 1.5;
+    let fine = [&[1.0, 2.0, 5.0][..], &[1.0, 3.0]].map(|steps| with(steps, 1));
+    let coarse = (1..60).map(|every| with(&[1.0], every));
+    let ticks = fine.into_iter().chain(coarse).find(enough).unwrap_or_default();
     // Powers of ten in figures while they are short.
     let short = ticks.iter().all(|v| (0.000_99..10_001.0).contains(v));
     ticks.into_iter().map(|v| (v, if short { numbers::plain(v, 4) } else { power_of_ten(v) })).collect()

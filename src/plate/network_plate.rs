@@ -62,10 +62,10 @@ pub fn network_plate(plate: &NetworkPlate, width_mm: f64, theme: &Theme) -> Figu
     let wide = 2.0 * column + GAP_MM;
     let top = page.y;
     let network = on_map(finding);
-    let picture =
-        map(&plate.view, &plate.patches, std::slice::from_ref(&network), [wide, 1.05 * wide], theme);
+    let (room, one) = ([wide, 1.05 * wide], [network]);
+    let picture = map(&plate.view, &plate.patches, &one, room, theme);
     page.put(&picture, 0.5 * (wide - picture.width_mm), top + 0.6);
-    let key = network_key(&[network], wide, theme);
+    let key = network_key(&plate.view, &one, room, theme);
     page.put(&key, 0.0, top + picture.height_mm + 2.0);
     let below = top + picture.height_mm + key.height_mm + 2.0 + 0.6 * GAP_MM;
     let mut tops = vec![top; columns];

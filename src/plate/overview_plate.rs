@@ -45,8 +45,8 @@ pub fn overview_plate(plate: &OverviewPlate, width_mm: f64, theme: &Theme) -> Fi
     page.put(&picture, inset, page.y);
     page.space(picture.height_mm + 3.0);
     if !plate.networks.is_empty() {
-        let key = network_key(&plate.networks, picture.width_mm, theme);
-        page.put(&key, inset, page.y - 1.0);
+        let key = network_key(&plate.view, &plate.networks, [page.room(), 0.85 * page.room()], theme);
+        page.put(&key, 0.0, page.y - 1.0);
         page.space(key.height_mm + 2.0);
     }
 

@@ -14,6 +14,7 @@ pub mod handover;
 pub mod judges;
 mod migrate;
 mod network;
+mod network_check;
 mod network_entry;
 mod network_findings;
 mod obstacles;

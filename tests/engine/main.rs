@@ -1,9 +1,12 @@
 //! The engine as a whole: guards, properties, hostile files, the command line.
 
+mod channels;
 mod coarse;
 mod command_line;
 mod demo;
 mod docs;
+mod drainage;
+mod dry_channels;
 mod gratings;
 mod guards;
 mod hostile;

@@ -4,6 +4,7 @@ mod alignment;
 mod axial;
 mod axial_field;
 mod axial_tests;
+mod drainage;
 mod georef;
 mod obstacle;
 mod orientation;

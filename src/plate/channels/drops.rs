@@ -149,8 +149,8 @@ pub fn threshold_maps(finding: &NetworkFinding, width_mm: f64, theme: &Theme) ->
         let text = format!("{word}: {}", area(times * channels.threshold_m2, LengthUnit::Metre));
         let mut end = y + sketch.paragraph(Point::new(x, y), &text, look, each);
         let look = Type::new(theme.text.small, theme.ink_soft);
-        let order = network.greatest_order().map_or(String::new(), |o| format!(", order {o}"));
-        let text = format!("{streams} head{}{order}", if streams == 1 { "" } else { "s" });
+        let order = network.greatest_order().map_or(String::new(), |o| format!(", order\u{a0}{o}"));
+        let text = format!("{streams}\u{a0}head{}{order}", if streams == 1 { "" } else { "s" });
         end += sketch.paragraph(Point::new(x, end), &text, look, each);
         foot = foot.max(end);
     }

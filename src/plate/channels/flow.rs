@@ -7,11 +7,11 @@ use crate::study::NetworkFinding;
 use super::super::chart::{Ruler, Span};
 use super::super::sketch::{Sketch, Type};
 use super::super::{Figure, TextAnchor, Theme, font, numbers};
-use super::{table, words_only};
+use super::{brief, table, words_only};
 
 /// What every use of these numbers must know.
 const CAUTION: &str = "Width is not depth, a valley is not its channel (a factor of 3 to 20 in discharge), no one saw \
-     it bankful, and a bed unknown leaves a factor of 2. These are ranges for comparison; floods and structures are \
+     it bankfull, and a bed unknown leaves a factor of 2. These are ranges for comparison; floods and structures are \
      judged by licensed practice with local data.";
 
 /// Rows that share a unit.
@@ -45,16 +45,16 @@ fn groups(flow: &PalaeoFlow) -> Vec<Group<'_>> {
         Group {
             title: "discharge, m³/s",
             rows: vec![
-                ("Darcy–Weisbach", &flow.discharge),
-                ("from width alone", &flow.discharge_by_width),
-                ("Manning, rescaled", &flow.discharge_by_manning),
+                ("by friction", &flow.discharge),
+                ("by width alone", &flow.discharge_by_width),
+                ("by Manning’s n", &flow.discharge_by_manning),
             ],
             per: 1.0,
         },
-        Group { title: "velocity, m/s", rows: vec![("Darcy–Weisbach", &flow.velocity)], per: 1.0 },
+        Group { title: "velocity, m/s", rows: vec![("", &flow.velocity)], per: 1.0 },
         Group { title: "Froude number", rows: vec![("", &flow.froude)], per: 1.0 },
-        Group { title: "depth, m", rows: vec![("from width", &flow.depth_m)], per: 1.0 },
-        Group { title: "grain moved, mm", rows: vec![("Shields", &flow.grain_m)], per: 1e-3 },
+        Group { title: "depth, m", rows: vec![("", &flow.depth_m)], per: 1.0 },
+        Group { title: "greatest grain, mm", rows: vec![("", &flow.grain_m)], per: 1e-3 },
     ]
 }
 
@@ -68,7 +68,7 @@ impl Group<'_> {
     fn draw(&self, sketch: &mut Sketch, decades: f64, top: f64, width_mm: f64, theme: &Theme) -> f64 {
         let Some(span) = self.span() else { return 0.0 };
         let size = theme.text.small;
-        let (left, right) = (0.33 * width_mm, width_mm - 1.5);
+        let (left, right) = (0.36 * width_mm, width_mm - 1.5);
         // The same length for a factor of ten in every group.
         let to = left + (right - left) * (span.max / span.min).log10() / decades;
         let ruler = Ruler { span, from_mm: left, to_mm: to };
@@ -88,7 +88,7 @@ impl Group<'_> {
         let rule = theme.stroke(theme.ink_soft, theme.widths.hair);
         sketch.line(Point::new(left, y), Point::new(to, y), rule);
         let mut free = f64::NEG_INFINITY;
-        for (value, label) in ruler.ticks(8.0) {
+        for (value, label) in ruler.ticks(6.0) {
             let x = ruler.at(value);
             sketch.line(Point::new(x, y), Point::new(x, y + 0.7), rule);
             let half = 0.5 * font::text_width(&label, 0.92 * size, false);
@@ -133,7 +133,7 @@ fn shares(sketch: &mut Sketch, flow: &PalaeoFlow, top: f64, width_mm: f64, theme
 
 fn asked(ask: &FlowAsk) -> Vec<(String, String)> {
     let range = |[low, high]: [f64; 2], unit: &str| {
-        let text = |v: f64| numbers::significant(v, 3);
+        let text = brief;
         if low == high {
             format!("{}{unit}", text(low))
         } else {
@@ -142,19 +142,12 @@ fn asked(ask: &FlowAsk) -> Vec<(String, String)> {
     };
     let row = |name: &str, value: String| (name.to_owned(), value);
     vec![
-        row("gravity", format!("{} m/s²", numbers::significant(ask.gravity, 3))),
+        row("gravity", format!("{} m/s²", brief(ask.gravity))),
         row("width", range(ask.width_m, " m")),
         row("width over depth", range(ask.width_to_depth, "")),
         row("slope", range(ask.slope, "")),
         row("friction factor", range(ask.friction, "")),
-        row(
-            "densities",
-            format!(
-                "{} and {} kg/m³",
-                numbers::significant(ask.liquid_density, 3),
-                numbers::significant(ask.grain_density, 3)
-            ),
-        ),
+        row("densities", format!("{} and {} kg/m³", brief(ask.liquid_density), brief(ask.grain_density))),
         row("critical Shields stress", range(ask.shields, "")),
         row("Manning’s n on Earth", range(ask.manning_earth, "")),
     ]

@@ -93,12 +93,21 @@ fn with_interval(value: f64, interval: Option<[f64; 2]>, decimals: usize) -> Str
     }
 }
 
+/// Three significant figures without zeros at the end.
+fn brief(value: f64) -> String {
+    let text = numbers::significant(value, 3);
+    if !text.contains('.') || text.contains('e') {
+        return text;
+    }
+    text.trim_end_matches('0').trim_end_matches('.').to_owned()
+}
+
 /// An area in m² from 10⁶ m² on in km²; pixels squared without ground size.
 fn area(value: f64, unit: LengthUnit) -> String {
     match unit {
-        LengthUnit::Metre if value >= 1e4 => format!("{} km²", numbers::significant(value / 1e6, 3)),
-        LengthUnit::Metre => format!("{} m²", numbers::significant(value, 3)),
-        LengthUnit::Pixel => format!("{} px²", numbers::significant(value, 3)),
+        LengthUnit::Metre if value >= 1e4 => format!("{} km²", brief(value / 1e6)),
+        LengthUnit::Metre => format!("{} m²", brief(value)),
+        LengthUnit::Pixel => format!("{} px²", brief(value)),
     }
 }
 

@@ -5,7 +5,7 @@ use crate::study::NetworkFinding;
 
 use super::super::sketch::Sketch;
 use super::super::{Figure, Theme, numbers};
-use super::{area, table, with_interval};
+use super::{area, brief, table, with_interval};
 
 /// Lengths, counts, density, ratios, and what conditioning or tracing did.
 pub fn network_numbers(finding: &NetworkFinding, width_mm: f64, theme: &Theme) -> Figure {
@@ -47,14 +47,14 @@ fn measures(finding: &NetworkFinding) -> Vec<Row> {
     let mut rows = Vec::new();
     if let Some(d) = &finding.density {
         let told = match finding.unit {
-            LengthUnit::Metre => format!("{} km/km²", numbers::significant(1000.0 * d.density, 3)),
-            LengthUnit::Pixel => format!("{} per px", numbers::significant(d.density, 3)),
+            LengthUnit::Metre => format!("{} km/km²", brief(1000.0 * d.density)),
+            LengthUnit::Pixel => format!("{} per px", brief(d.density)),
         };
         rows.push(row("drainage density", told));
         if let Some(f) = d.frequency {
             let told = match finding.unit {
-                LengthUnit::Metre => format!("{} per km²", numbers::significant(1e6 * f, 3)),
-                LengthUnit::Pixel => format!("{} per px²", numbers::significant(f, 3)),
+                LengthUnit::Metre => format!("{} per km²", brief(1e6 * f)),
+                LengthUnit::Pixel => format!("{} per px²", brief(f)),
             };
             rows.push(row("stream frequency", told));
         }
@@ -72,7 +72,7 @@ fn from_elevation(finding: &NetworkFinding) -> Vec<Row> {
     let Some(d) = &finding.drainage else { return Vec::new() };
     let c = &d.changed;
     let share = |cells: usize| numbers::percent(cells as f64 / c.valid_cells.max(1) as f64);
-    let metres = |v: f64| format!("{} m", numbers::significant(v, 3));
+    let metres = |v: f64| format!("{} m", brief(v));
     let raised = if c.raised_cells == 0 {
         "none".to_owned()
     } else {
@@ -110,12 +110,12 @@ fn from_image(finding: &NetworkFinding) -> Vec<Row> {
             "sense told (p > 0.95)",
             format!("{} of {} reaches", sure.count(), finding.network.reaches.len()),
         ),
-        row("noise floor", numbers::significant(t.floor, 3)),
+        row("noise floor", brief(t.floor)),
     ];
     if let (Some(least), Some(most)) =
         (t.widths_px.iter().copied().reduce(f64::min), t.widths_px.iter().copied().reduce(f64::max))
     {
-        let told = format!("{}–{} px", numbers::significant(least, 2), numbers::significant(most, 2));
+        let told = format!("{}–{} px", brief(least), brief(most));
         rows.push(row("widths looked for", told));
     }
     if !t.lost_arrows.is_empty() {

@@ -91,7 +91,7 @@ impl Turned {
 
 fn caption(p: &Planform, unit: LengthUnit) -> String {
     format!(
-        "{} of channel over {} of valley, smoothed over {}\nturned to run from left (ring: upper end) to right; pale: valley line",
+        "{} of channel over {} of valley line (pale), smoothed over {}\nturned to run from left (ring: upper end) to right",
         numbers::length(p.length, unit, 3),
         numbers::length(p.valley_length, unit, 3),
         numbers::length(p.valley_scale, unit, 2),

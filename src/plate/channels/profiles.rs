@@ -7,7 +7,7 @@ use crate::study::NetworkFinding;
 use super::super::chart::{Chart, Span};
 use super::super::sketch::{Sketch, Type};
 use super::super::{Figure, TextAnchor, Theme, font, numbers};
-use super::{SHAPE, area, length_ruler, table, verdict_words, words_only};
+use super::{SHAPE, area, brief, length_ruler, table, verdict_words, words_only};
 
 /// Breaks of steepness that are named at most.
 const MOST_NAMED: usize = 5;
@@ -32,7 +32,7 @@ pub fn long_profile(finding: &NetworkFinding, width_mm: f64, theme: &Theme) -> F
     }
     let trunk = finding.profiles.iter().find(|p| p.is_trunk);
     if let Some(profile) = trunk {
-        chart.curve(&mut inside, line(profile), theme.stroke(theme.water, theme.widths.bold));
+        chart.curve(&mut inside, line(profile), theme.stroke(theme.water, 1.6 * theme.widths.line));
     }
     knickpoints(&mut inside, &finding.profiles, &chart, theme);
     chart.clipped(&mut sketch, inside);
@@ -138,16 +138,16 @@ pub fn hypsometric_curve(finding: &NetworkFinding, width_mm: f64, theme: &Theme)
     });
     let headline = format!("hypsometric integral {}", numbers::fixed(found.integral, 3));
     let mut used = verdict_words(&mut sketch, &headline, &whose, y, width_mm, theme) + 0.8;
-    let metres = |v: f64| format!("{} m", numbers::significant(v, 4));
+    let metres = |v: f64| format!("{} m", numbers::fixed(v, 0));
     let mut rows = vec![
         (
             "lowest, mean, highest".into(),
             [found.lowest_m, found.mean_m, found.highest_m].map(metres).join(", "),
         ),
-        ("Melton ratio".into(), numbers::significant(found.melton, 3)),
+        ("Melton ratio".into(), brief(found.melton)),
     ];
     if let Some(ratio) = found.relief_ratio {
-        rows.push(("relief ratio".into(), numbers::significant(ratio, 3)));
+        rows.push(("relief ratio".into(), brief(ratio)));
     }
     used += table(&mut sketch, &rows, y + used, width_mm, theme);
     sketch.finish(width_mm, y + used)

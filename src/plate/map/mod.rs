@@ -49,9 +49,8 @@ pub fn map(
     size_mm: [f64; 2],
     theme: &Theme,
 ) -> Figure {
-    let [left, top, right, bottom] = margin::ROOM;
-    let room = [size_mm[0] - left - right, size_mm[1] - top - bottom - SCALE_BAR_MM];
-    let sheet = Sheet::fit(view, Point::new(left, top), room.map(|v| v.max(1.0)));
+    let [_, _, right, bottom] = margin::ROOM;
+    let sheet = laid(view, size_mm);
     let mut inside = Sketch::default();
     ground(&mut inside, view, &sheet, theme);
     for network in networks {
@@ -60,12 +59,12 @@ pub fn map(
     for patch in patches {
         outlines::draw(&mut inside, patch.outline, &sheet, patch.is_subject, theme);
     }
-    for network in networks {
-        networks::draw(&mut inside, network, &sheet, theme);
-    }
     for patch in patches {
         let drawn = strokes::strokes(patch.nodes, &sheet, view.place, STROKE_PITCH_MM);
         strokes::draw(&mut inside, &drawn, theme);
+    }
+    for network in networks {
+        networks::draw(&mut inside, network, &sheet, theme);
     }
     let disc = Point::new(sheet.max.x - NORTH_RADIUS_MM - 1.4, sheet.min.y + NORTH_RADIUS_MM + 1.4);
     let mut taken = vec![around(disc, NORTH_RADIUS_MM + 0.5, NORTH_RADIUS_MM + 0.5)];
@@ -89,6 +88,13 @@ pub fn map(
         furniture::draw_scale_bar(&mut sketch, &bar, at, theme);
     }
     sketch.finish(sheet.max.x + right, sheet.max.y + bottom + SCALE_BAR_MM)
+}
+
+/// Where the raster lies on a map of this size.
+fn laid(view: &MapView, size_mm: [f64; 2]) -> Sheet {
+    let [left, top, right, bottom] = margin::ROOM;
+    let room = [size_mm[0] - left - right, size_mm[1] - top - bottom - SCALE_BAR_MM];
+    Sheet::fit(view, Point::new(left, top), room.map(|v| v.max(1.0)))
 }
 
 /// The image over hatching where it has gaps.

@@ -6,7 +6,7 @@ use std::collections::BTreeSet;
 use crate::ground::{Azimuth, Bounds, Grid, Network, Point, Polygon, Reach, ReachOrigin};
 
 use super::view::Sheet;
-use super::{around, overlap};
+use super::{MapView, around, laid, overlap};
 use crate::plate::channels::order_width;
 use crate::plate::chart::{FINEST_MM, simplified};
 use crate::plate::sketch::{Sketch, Type, arrow_head};
@@ -24,7 +24,7 @@ pub struct MapNetwork<'a> {
 }
 
 /// Channel length on the map's area that print still holds apart, mm per mm².
-const MOST_DENSE: f64 = 0.42;
+const MOST_DENSE: f64 = 0.36;
 /// Distance between marks of one kind, millimetres.
 const MARK_PITCH_MM: f64 = 9.0;
 /// Probability above which a sense is drawn.
@@ -245,10 +245,40 @@ pub(super) fn draw_name(
         let (right, foot) = (sheet.max.x - half_width, sheet.max.y - half_height - 0.6);
         Point::new(x.clamp(left, right.max(left)), y.clamp(top, foot.max(top)))
     };
-    let offsets = [(0.0, -1.6), (0.0, 1.6), (-1.1, 0.0), (1.1, 0.0), (-1.1, -1.6), (1.1, 1.6)];
+    let offsets = [
+        (0.0, -1.6),
+        (0.0, 1.6),
+        (-1.2, 0.0),
+        (1.2, 0.0),
+        (-1.1, -1.6),
+        (1.1, 1.6),
+        (1.1, -1.6),
+        (-1.1, 1.6),
+        (-1.1, 3.2),
+        (1.1, -3.2),
+    ];
     let places = offsets.map(|(x, y)| inside(anchor.x + x * half_width, anchor.y + y * (half_height + 1.0)));
-    let free = |p: &&Point| taken.iter().all(|t| !overlap(*t, around(**p, half_width, half_height)));
-    let centre = *places.iter().find(free).unwrap_or(&places[0]);
+    // Where the fewest channels run beneath, away from other names.
+    let lines = drawn(network.network, sheet);
+    let covered = |p: Point| -> (usize, f64) {
+        let label = around(p, half_width, half_height);
+        let within = |q: &Point| {
+            (label.min.x..label.max.x).contains(&q.x) && (label.min.y..label.max.y).contains(&q.y)
+        };
+        let names = taken.iter().filter(|t| overlap(**t, label)).count();
+        let beneath = lines.iter().flat_map(|d| d.line.windows(2)).map(|w| {
+            let (dx, dy) = (w[1].x - w[0].x, w[1].y - w[0].y);
+            let steps = (dx.hypot(dy) / 0.5).ceil().clamp(1.0, 400.0);
+            let on = |k: usize| {
+                within(&Point::new(w[0].x + k as f64 / steps * dx, w[0].y + k as f64 / steps * dy))
+            };
+            (0..steps as usize).filter(|k| on(*k)).count() as f64 / steps * dx.hypot(dy)
+        });
+        (names, beneath.sum())
+    };
+    let rated = places.map(|p| (covered(p), p));
+    let best = rated.iter().min_by(|a, b| a.0.0.cmp(&b.0.0).then(a.0.1.total_cmp(&b.0.1)));
+    let centre = best.map_or(places[0], |(_, p)| *p);
     taken.push(around(centre, half_width, half_height));
     let look = Type::new(size, Theme::light().water).bold().anchored(TextAnchor::Middle).haloed(theme.halo);
     sketch.text(Point::new(centre.x, centre.y + 0.35 * size), text, look);
@@ -271,15 +301,27 @@ fn along(line: &[Point], mut distance: f64) -> Option<(Point, (f64, f64))> {
     None
 }
 
-/// What the lines and marks of the networks on a map mean, in one or two rows on paper.
-pub fn network_key(networks: &[MapNetwork], width_mm: f64, theme: &Theme) -> Figure {
+/// What the lines and marks of the networks on a map of `size_mm` mean, in rows on paper as wide as the map.
+pub fn network_key(view: &MapView, networks: &[MapNetwork], size_mm: [f64; 2], theme: &Theme) -> Figure {
+    let sheet = laid(view, size_mm);
+    let width_mm = size_mm[0];
     let mut entries: Vec<(Sign, String)> = Vec::new();
     let reaches = || networks.iter().flat_map(|n| &n.network.reaches);
     let greatest = networks.iter().filter_map(|n| n.network.greatest_order()).max();
     match greatest {
         Some(most) => {
-            let orders = (1..=most).filter(|o| most <= 4 || *o == 1 || *o == most || *o == most.div_ceil(2));
-            entries.extend(orders.map(|o| (Sign::Line(order_width(Some(o)), 1.0), format!("order {o}"))));
+            let least = networks.iter().map(|n| least_order(n.network, &sheet)).max().unwrap_or(1);
+            let few = most - least.min(most) < 4;
+            let orders =
+                (least..=most).filter(|o| few || [least, most, (least + most).div_ceil(2)].contains(o));
+            entries.extend(
+                orders.map(|o| (Sign::Line(order_width(Some(o + 1 - least)), 1.0), format!("order {o}"))),
+            );
+            if least > 1 {
+                let left_out =
+                    if least == 2 { "order 1".into() } else { format!("orders 1–{}", least - 1) };
+                entries.push((Sign::Nothing, format!("{left_out} too dense to draw")));
+            }
         }
         None => entries.push((Sign::Line(order_width(None), 1.0), "channel".into())),
     }
@@ -307,13 +349,14 @@ pub fn network_key(networks: &[MapNetwork], width_mm: f64, theme: &Theme) -> Fig
     let (sign_mm, row) = (5.0, 3.6);
     let (mut x, mut y) = (0.0, 0.5 * row);
     for (sign, text) in entries {
-        let width = sign_mm + 1.2 + font::text_width(&text, look.size_mm, false);
+        let lead = if sign == Sign::Nothing { 0.0 } else { sign_mm + 1.2 };
+        let width = lead + font::text_width(&text, look.size_mm, false);
         if x > 0.0 && x + width > width_mm {
             (x, y) = (0.0, y + row);
         }
         sign.draw(&mut sketch, Point::new(x, y), sign_mm, theme);
         let base = y + 0.5 * font::CAP_HEIGHT * look.size_mm;
-        sketch.text(Point::new(x + sign_mm + 1.2, base), text, look);
+        sketch.text(Point::new(x + lead, base), text, look);
         x += width + 3.4;
     }
     sketch.finish(width_mm, y + 0.5 * row)
@@ -322,6 +365,7 @@ pub fn network_key(networks: &[MapNetwork], width_mm: f64, theme: &Theme) -> Fig
 /// A sample in the key.
 #[derive(Clone, Copy, Debug, PartialEq)]
 enum Sign {
+    Nothing,
     /// Width and confidence.
     Line(f64, f64),
     Dashes,
@@ -341,6 +385,7 @@ impl Sign {
         let box_of =
             |half: f64| (Point::new(middle.x - half, at.y - half), Point::new(middle.x + half, at.y + half));
         match self {
+            Self::Nothing => {}
             Self::Line(width, confidence) => {
                 let share = if confidence >= 0.9 { 1.0 } else { 0.55 };
                 sketch.line(at, end, theme.stroke(theme.tint(water, share), width));

@@ -30,6 +30,9 @@ pub const CENTRE_LON: f64 = 64.0;
 pub const ORIGIN: (f64, f64) = (-31_000.0, 452_000.0);
 /// Where the radar looks from.
 pub const LOOK_FROM: f64 = 24.0;
+/// The liquid that once ran there, kg m⁻³, and the grains of its bed.
+pub const LIQUID_DENSITY: f64 = 680.0;
+pub const BED_GRAIN_DENSITY: f64 = 1_900.0;
 /// Looks of the speckle.
 pub const LOOKS: f64 = 4.0;
 /// Elevation cells per mosaic pixel side.
