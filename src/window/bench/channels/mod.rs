@@ -39,6 +39,7 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
     if let NetworkSource::Elevation(_) = &network.source {
         drainage::threshold(ui, model, network, out);
     }
+    pointed(ui, model);
     let finding = match results.charted(network.id).map(|charted| &charted.outcome) {
         None => return picks::show(ui, model, network, out),
         Some(Err(why)) => {
@@ -47,7 +48,6 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
         }
         Some(Ok(finding)) => finding,
     };
-    pointed(ui, model);
     heading(ui, "What it is");
     controls::facts(ui, &look, &channel_facts::about(finding));
     finding.cautions.iter().for_each(|c| caution(ui, &look, &c.text));
