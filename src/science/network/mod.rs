@@ -14,8 +14,8 @@ pub mod junctions;
 mod kinds;
 mod knickpoints;
 mod line;
-mod path;
 pub mod meanders;
+mod path;
 pub mod pattern;
 pub mod planform;
 pub mod profile;
@@ -38,5 +38,7 @@ pub const METHODS: &[&Method] = &[
     &junctions::METHOD,
     &pattern::METHOD,
     &compare::METHOD,
+    &planform::METHOD,
+    &meanders::METHOD,
+    &flow::METHOD,
 ];
-pub const METHODS: &[&Method] = &[&planform::METHOD, &meanders::METHOD, &flow::METHOD];
