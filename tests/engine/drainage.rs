@@ -1,6 +1,5 @@
 //! Properties of drainage: what filling and routing must keep on any raster.
 
-
 use rand::{Rng as _, SeedableRng as _};
 use rand_chacha::ChaCha8Rng;
 
