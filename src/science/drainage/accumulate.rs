@@ -42,6 +42,10 @@ pub const METHOD: Method = Method {
 const PAUSE: usize = 1 << 14;
 /// In place of the number of cells waited for, once a cell is done.
 const DONE: u8 = u8::MAX;
+/// One cell to wait for, above the four bits of a code.
+const WAITING: u8 = 16;
+/// Side of the tiles that are walked one after another.
+pub(super) const TILE: usize = 64;
 
 /// Contributing area of every cell, its own included, m². What leaves through the outlets adds up to the area of
 /// all valid cells.
@@ -85,44 +89,67 @@ fn along_one(receivers: &Receivers, cells: &Cells, work: &Work) -> Result<Vec<f6
     let mut area = vec![0.0; codes.len()];
     rows.iter_mut().for_each(|row| row.fill(VOID));
     load_springs(row_of(0), &waiting, &mut rows[2]);
+    let mut counts: [Vec<u8>; 3] = std::array::from_fn(|_| vec![0; width]);
     for (row, area) in area.chunks_mut(width.max(1)).enumerate() {
         rows.rotate_left(1);
         load_springs(row_of(row + 1), &waiting[((row + 1) * width).min(codes.len())..], &mut rows[2]);
         let own = cells.area[row];
-        let around = [cells.area[row.saturating_sub(1)], own, cells.area[(row + 1).min(height - 1)]];
-        let [above, own, below] = &rows;
-        from_springs([above, own, below], around, &mut waiting[row * width..][..width], area);
+        let areas = [cells.area[row.saturating_sub(1)], own, cells.area[(row + 1).min(height - 1)]];
+        let [above, springs, below] = &rows;
+        count_springs([above, springs, below], &mut counts);
+        add_springs(&counts, areas, area);
+        settle(&counts, &codes[row * width..][..width], &mut waiting[row * width..][..width]);
         work.advance(1)?;
     }
-    let mut done = 0;
-    for block in (0..codes.len()).step_by(16) {
-        let end = codes.len().min(block + 16);
-        if !waiting[block..end].contains(&0) {
-            continue;
-        }
-        for first in block..end {
-            if waiting[first] != 0 {
-                continue;
-            }
-            waiting[first] = DONE;
-            let (mut at, mut passed) = (first, area[first]);
-            while let Some(offset) = offsets.get(usize::from(codes[at])) {
-                at = at.wrapping_add_signed(*offset);
-                passed += area[at];
-                area[at] = passed;
-                waiting[at] = waiting[at].wrapping_sub(1);
-                if waiting[at] != 0 {
-                    break;
-                }
-                waiting[at] = DONE;
-                done += 1;
-                if done % PAUSE == 0 {
-                    work.advance(0)?;
-                }
-            }
-        }
-    }
+    walk_down(&offsets, width, &mut waiting, &mut area, work)?;
     Ok(area)
+}
+
+/// Follows the flow from every cell that waits for nothing to the first that still does. Tile by tile, so that what
+/// a walk touches is at hand. `states` hold the number of cells waited for and the code of the receiver.
+fn walk_down(
+    offsets: &[isize; 8],
+    width: usize,
+    states: &mut [u8],
+    area: &mut [f64],
+    work: &Work,
+) -> Result<(), Stopped> {
+    let height = states.len().checked_div(width).unwrap_or(0);
+    let mut done = 0;
+    for (top, left) in tiles(width, height) {
+        for row in top..height.min(top + TILE) {
+            let span = row * width + left..row * width + width.min(left + TILE);
+            for first in span {
+                if states[first] >= WAITING {
+                    continue;
+                }
+                let (mut at, mut passed, mut code) = (first, area[first], states[first]);
+                states[first] = DONE;
+                while let Some(offset) = offsets.get(usize::from(code)) {
+                    at = at.wrapping_add_signed(*offset);
+                    passed += area[at];
+                    area[at] = passed;
+                    code = states[at].wrapping_sub(WAITING);
+                    if code >= WAITING {
+                        states[at] = code;
+                        break;
+                    }
+                    states[at] = DONE;
+                    done += 1;
+                    if done % PAUSE == 0 {
+                        work.advance(0)?;
+                    }
+                }
+            }
+        }
+        work.advance(0)?;
+    }
+    Ok(())
+}
+
+/// Upper left corners of the tiles of a raster, (row, column).
+pub(super) fn tiles(width: usize, height: usize) -> impl Iterator<Item = (usize, usize)> {
+    (0..height).step_by(TILE).flat_map(move |top| (0..width).step_by(TILE).map(move |left| (top, left)))
 }
 
 /// Copies codes between the margins.
@@ -163,25 +190,72 @@ fn donors(above: &[u8], own: &[u8], below: &[u8], out: &mut [u8]) {
     }
 }
 
-/// Area of each cell of the middle row with what springs beside it pass on, and one less to wait for each.
-/// `areas` are those of a cell of the three rows.
+/// Number of springs above, beside and below that drain to each cell of the middle row.
 #[multiversion(targets("x86_64+avx2"))]
-fn from_springs(springs: [&[u8]; 3], areas: [f64; 3], waiting: &mut [u8], out: &mut [f64]) {
-    let n = out.len();
+fn count_springs(springs: [&[u8]; 3], counts: &mut [Vec<u8>; 3]) {
     let [above, own, below] = springs;
-    let (e, own, w) = (&own[2..n + 2], &own[1..=n], &own[..n]);
+    let [from_above, beside, from_below] = counts;
+    let n = beside.len();
+    let (e, w) = (&own[2..n + 2], &own[..n]);
     let (nw, nn, ne) = (&above[..n], &above[1..=n], &above[2..n + 2]);
     let (sw, ss, se) = (&below[..n], &below[1..=n], &below[2..n + 2]);
     for i in 0..n {
-        let from_above = u8::from(nw[i] == 1) + u8::from(nn[i] == 2) + u8::from(ne[i] == 3);
-        let beside = u8::from(w[i] == 0) + u8::from(e[i] == 4);
-        let from_below = u8::from(se[i] == 5) + u8::from(ss[i] == 6) + u8::from(sw[i] == 7);
-        let all = from_above + beside + from_below;
-        waiting[i] = if own[i] == VOID { waiting[i] - all } else { DONE };
-        out[i] = areas[1] * f64::from(1 + beside)
-            + areas[0] * f64::from(from_above)
-            + areas[2] * f64::from(from_below);
+        from_above[i] = u8::from(nw[i] == 1) + u8::from(nn[i] == 2) + u8::from(ne[i] == 3);
     }
+    for i in 0..n {
+        beside[i] = u8::from(w[i] == 0) + u8::from(e[i] == 4);
+    }
+    for i in 0..n {
+        from_below[i] = u8::from(se[i] == 5) + u8::from(ss[i] == 6) + u8::from(sw[i] == 7);
+    }
+}
+
+/// Area of each cell of a row with what the springs around it pass on; `areas` are those of a cell of the row
+/// above, the row itself and the row below.
+#[multiversion(targets("x86_64+avx2"))]
+fn add_springs(counts: &[Vec<u8>; 3], areas: [f64; 3], out: &mut [f64]) {
+    let n = out.len();
+    let [above, beside, below] = [&counts[0][..n], &counts[1][..n], &counts[2][..n]];
+    for i in 0..n {
+        out[i] = areas[1] * f64::from(1 + beside[i])
+            + areas[0] * f64::from(above[i])
+            + areas[2] * f64::from(below[i]);
+    }
+}
+
+/// Turns the numbers waited for into states: springs are done, the others wait for one less for each spring.
+#[multiversion(targets("x86_64+avx2"))]
+fn settle(counts: &[Vec<u8>; 3], codes: &[u8], waiting: &mut [u8]) {
+    let n = waiting.len();
+    let [above, beside, below] = [&counts[0][..n], &counts[1][..n], &counts[2][..n]];
+    let codes = &codes[..n];
+    for i in 0..n {
+        let left = waiting[i].wrapping_sub(above[i] + beside[i] + below[i]);
+        let state = left.wrapping_mul(WAITING) | codes[i];
+        waiting[i] = if waiting[i] == 0 { DONE } else { state };
+    }
+}
+
+/// Contributing area over the width of the cell across its flow, m. Across a step to a side that is cell area over
+/// step length, across one to a corner √2 times that, so that a square cell is one side wide in every direction;
+/// where water leaves the ground, the root of the cell's area. The direction is that of the steepest neighbour.
+pub fn specific_area(area: &Grid<f64>, cells: &Cells, receivers: &Receivers) -> Grid<f64> {
+    let mut specific = area.clone();
+    let width = area.width();
+    let codes = receivers.0.values().chunks(width.max(1));
+    for (row, (values, codes)) in specific.values_mut().chunks_mut(width.max(1)).zip(codes).enumerate() {
+        let own = cells.area[row];
+        let steps = cells.steps(row);
+        for (value, code) in values.iter_mut().zip(codes) {
+            let code = usize::from(*code);
+            *value /= match steps.get(code) {
+                Some(step) if code % 2 == 0 => own / step,
+                Some(step) => std::f64::consts::SQRT_2 * own / step,
+                None => own.sqrt(),
+            };
+        }
+    }
+    specific
 }
 
 /// How the cells of one row share their flow.

@@ -4,6 +4,7 @@ use rayon::prelude::*;
 
 use crate::ground::{Grid, Method, Read, Source, Stopped, Symbol, Work};
 
+use super::accumulate::{TILE, tiles};
 use super::d8::{LEVEL, Rows, steepest};
 use super::routing::{STEPS, VOID};
 
@@ -133,8 +134,16 @@ fn label(elevation: &Grid<f32>, work: &Work) -> Result<(Vec<u32>, Vec<usize>), S
     let mut labels = vec![OUTSIDE; codes.len()];
     let mut minima = vec![usize::MAX];
     let mut flat = Vec::new();
-    for first in 0..codes.len() {
-        if first % PAUSE == 0 {
+    // Tile by tile, so that what a walk touches is at hand.
+    let height = elevation.height();
+    let tiled = tiles(width, height).flat_map(|(top, left)| {
+        let rows = top..height.min(top + TILE);
+        rows.flat_map(move |row| row * width + left..row * width + width.min(left + TILE))
+    });
+    let mut done = 0;
+    for first in tiled {
+        done += 1;
+        if done % PAUSE == 0 {
             work.advance((PAUSE / width.max(1)) as u64)?;
         }
         if labels[first] != OUTSIDE || codes[first] == VOID {
@@ -160,7 +169,7 @@ fn label(elevation: &Grid<f32>, work: &Work) -> Result<(Vec<u32>, Vec<usize>), S
             let (col, row) = (at % width, at / width);
             for (k, (dx, dy)) in STEPS.iter().enumerate() {
                 let (col, row) = (col.wrapping_add_signed(*dx), row.wrapping_add_signed(*dy));
-                if col >= width || row >= elevation.height() {
+                if col >= width || row >= height {
                     continue;
                 }
                 let j = at.wrapping_add_signed(offsets[k]);

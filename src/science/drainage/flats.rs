@@ -123,6 +123,26 @@ fn sort_row(rows: &Rows, out: &mut [u8]) {
     }
 }
 
+/// The cells of flats with a neighbour that belongs to none, in the middle of three rows of codes.
+#[multiversion(targets("x86_64+avx2"))]
+fn find_borders(codes: &[u8], out: &mut [bool]) {
+    let width = out.len();
+    if width < 3 {
+        return;
+    }
+    let (above, own, below) = (&codes[..width], &codes[width..2 * width], &codes[2 * width..3 * width]);
+    let n = width - 2;
+    let out = &mut out[1..=n];
+    let (w, own, e) = (&own[..n], &own[1..=n], &own[2..n + 2]);
+    let (nw, nn, ne) = (&above[..n], &above[1..=n], &above[2..n + 2]);
+    let (sw, ss, se) = (&below[..n], &below[1..=n], &below[2..n + 2]);
+    for i in 0..n {
+        let sides = (w[i] == FLAT) & (e[i] == FLAT) & (nn[i] == FLAT) & (ss[i] == FLAT);
+        let corners = (nw[i] == FLAT) & (ne[i] == FLAT) & (sw[i] == FLAT) & (se[i] == FLAT);
+        out[i] = (own[i] == FLAT) & !(sides & corners);
+    }
+}
+
 /// Flats on their way to being drained. Cells that are [`FLAT`] lie neither on the raster's edge nor beside missing
 /// ground, so that all their neighbours exist; those that touch have one height.
 struct Flats<'a> {
@@ -155,8 +175,10 @@ impl<'a> Flats<'a> {
     /// cells beside higher ground are returned.
     fn find_ways_out(&mut self, rims: bool, work: &Work) -> Result<Vec<usize>, Stopped> {
         let (mut exits, mut beside_higher) = (Vec::new(), Vec::new());
-        for (row, codes) in self.codes.chunks(self.width.max(1)).enumerate() {
-            for (col, _) in codes.iter().enumerate().filter(|(_, code)| **code == FLAT) {
+        let mut borders = vec![false; self.width];
+        for row in 1..(self.z.len() / self.width.max(1)).saturating_sub(1) {
+            find_borders(&self.codes[(row - 1) * self.width..][..3 * self.width], &mut borders);
+            for (col, _) in borders.iter().enumerate().filter(|(_, border)| **border) {
                 let i = row * self.width + col;
                 let (mut exit, mut higher) = (OUT, false);
                 for (k, offset) in self.offsets.iter().enumerate() {
