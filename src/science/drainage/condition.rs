@@ -168,19 +168,22 @@ fn changed(elevation: &Grid<f32>, surface: &Grid<f32>, cells: &Cells, counts: Ch
         elevation.values().chunks(width).zip(surface.values().chunks(width)).enumerate()
     {
         let (mut raised, mut cut) = (0.0, 0.0);
-        for (col, (before, after)) in before.iter().zip(after).enumerate() {
-            let by = f64::from(*after) - f64::from(*before);
-            if by == 0.0 || !surface.is_valid(col, row) {
-                continue;
-            }
-            if by > 0.0 {
-                changed.raised_cells += 1;
-                changed.deepest_fill = changed.deepest_fill.max(by);
-                raised += by;
-            } else {
-                changed.cut_cells += 1;
-                changed.deepest_cut = changed.deepest_cut.max(-by);
-                cut -= by;
+        let same = |at: usize| before[at..].iter().zip(&after[at..]).take(16).all(|(a, b)| a == b);
+        for at in (0..before.len()).step_by(16).filter(|at| !same(*at)) {
+            for col in at..before.len().min(at + 16) {
+                let by = f64::from(after[col]) - f64::from(before[col]);
+                if by == 0.0 || !surface.is_valid(col, row) {
+                    continue;
+                }
+                if by > 0.0 {
+                    changed.raised_cells += 1;
+                    changed.deepest_fill = changed.deepest_fill.max(by);
+                    raised += by;
+                } else {
+                    changed.cut_cells += 1;
+                    changed.deepest_cut = changed.deepest_cut.max(-by);
+                    cut -= by;
+                }
             }
         }
         changed.raised_volume += raised * cells.area[row];

@@ -1,5 +1,6 @@
 //! All flow to the neighbour of steepest descent.
 
+use multiversion::multiversion;
 use rayon::prelude::*;
 
 use crate::ground::{Grid, Method, Read, Source, Stopped, Symbol, Work};
@@ -75,6 +76,7 @@ pub(super) fn weights(cells: &Cells, row: usize) -> [f32; 8] {
 }
 
 /// The code of the steepest descent of each cell of the middle row, or [`LEVEL`] or [`VOID`].
+#[multiversion(targets("x86_64+avx2"))]
 pub(super) fn steepest(rows: &Rows, weights: &[f32; 8], out: &mut [u8]) {
     let n = out.len();
     let [above, own, below] = rows.three();

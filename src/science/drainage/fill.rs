@@ -4,6 +4,7 @@ use rayon::prelude::*;
 
 use crate::ground::{Grid, Method, Read, Source, Stopped, Symbol, Work};
 
+use super::accumulate::{TILE, tiles};
 use super::d8::{LEVEL, Rows, steepest};
 use super::routing::{STEPS, VOID};
 
@@ -133,8 +134,16 @@ fn label(elevation: &Grid<f32>, work: &Work) -> Result<(Vec<u32>, Vec<usize>), S
     let mut labels = vec![OUTSIDE; codes.len()];
     let mut minima = vec![usize::MAX];
     let mut flat = Vec::new();
-    for first in 0..codes.len() {
-        if first % PAUSE == 0 {
+    // Tile by tile, so that what a walk touches is at hand.
+    let height = elevation.height();
+    let tiled = tiles(width, height).flat_map(|(top, left)| {
+        let rows = top..height.min(top + TILE);
+        rows.flat_map(move |row| row * width + left..row * width + width.min(left + TILE))
+    });
+    let mut done = 0;
+    for first in tiled {
+        done += 1;
+        if done % PAUSE == 0 {
             work.advance((PAUSE / width.max(1)) as u64)?;
         }
         if labels[first] != OUTSIDE || codes[first] == VOID {
@@ -160,7 +169,7 @@ fn label(elevation: &Grid<f32>, work: &Work) -> Result<(Vec<u32>, Vec<usize>), S
             let (col, row) = (at % width, at / width);
             for (k, (dx, dy)) in STEPS.iter().enumerate() {
                 let (col, row) = (col.wrapping_add_signed(*dx), row.wrapping_add_signed(*dy));
-                if col >= width || row >= elevation.height() {
+                if col >= width || row >= height {
                     continue;
                 }
                 let j = at.wrapping_add_signed(offsets[k]);
@@ -187,95 +196,97 @@ fn find_passes(
     passes: &mut Passes,
     work: &Work,
 ) -> Result<(), Stopped> {
-    let width = elevation.width();
-    let mut rows: [Vec<(u32, f32)>; 2] =
-        std::array::from_fn(|_| vec![(OUTSIDE, f32::NEG_INFINITY); width + 2]);
-    for row in 0..=elevation.height() {
-        let [above, own] = &mut rows;
-        for (col, cell) in own[1..=width].iter_mut().enumerate() {
-            let i = row * width + col;
-            *cell = match labels.get(i) {
-                Some(label) if *label != OUTSIDE => (*label, elevation.values()[i]),
-                _ => (OUTSIDE, f32::NEG_INFINITY),
-            };
+    let (width, height) = (elevation.width(), elevation.height());
+    // Two rows with a margin of the outside; cell i of the raster at i + 1.
+    let mut above = vec![OUTSIDE; width + 2];
+    let mut own = above.clone();
+    let mut differs = vec![false; width + 1];
+    for row in 0..=height {
+        match labels.get(row * width..(row + 1) * width) {
+            Some(labels) if row < height => own[1..=width].copy_from_slice(labels),
+            _ => own.fill(OUTSIDE),
         }
-        for col in 1..width + 2 {
-            let (label, z) = own[col];
-            // West, north-west and north; north-east is the north-west of the cell above's right neighbour.
-            let others = [own[col - 1], above[col - 1], above[col]];
-            for (other, height) in others {
-                if other != label {
-                    passes.lower(label, other, if height > z { height } else { z });
+        let corners = own.windows(2).zip(above.windows(2));
+        for (differs, (own, above)) in differs.iter_mut().zip(corners) {
+            *differs = (own[1] != own[0]) | (own[1] != above[0]) | (own[1] != above[1]);
+        }
+        let cell = |labels: &[u32], col: usize, row: usize| match labels[col] {
+            OUTSIDE => (OUTSIDE, f32::NEG_INFINITY),
+            label => (label, elevation.values()[row * width + col - 1]),
+        };
+        for (west, _) in differs.iter().enumerate().filter(|(_, differs)| **differs) {
+            // The four cells around a corner of cells, and their pairs; the upper two were a pair a row ago.
+            let (sw, se) = (cell(&own, west, row), cell(&own, west + 1, row));
+            let up = row.wrapping_sub(1);
+            let (nw, ne) = (cell(&above, west, up), cell(&above, west + 1, up));
+            for ((a, z), (b, height)) in [(se, sw), (se, nw), (se, ne), (sw, ne)] {
+                if a != b {
+                    passes.lower(a, b, if height > z { height } else { z });
                 }
             }
-            let ((a, z), (b, height)) = (own[col - 1], above[col]);
-            if a != b {
-                passes.lower(a, b, if height > z { height } else { z });
-            }
         }
-        rows.swap(0, 1);
+        std::mem::swap(&mut above, &mut own);
         work.advance(1)?;
     }
     Ok(())
 }
 
-/// Lowest passes by pair of basins: a hash table with open addresses.
+/// Lowest passes by pair of basins. Those of a basin to the first few that came before it stand beside it, close
+/// to those of the basins around; the others in a hash table with open addresses.
 struct Passes {
-    pairs: Vec<(u64, f32)>,
-    used: usize,
-    last: usize,
+    near: Vec<[(u32, f32); NEAR]>,
+    far: Vec<(u64, f32)>,
+    far_used: usize,
 }
 
-const FREE: u64 = u64::MAX;
+const NEAR: usize = 4;
+const FREE: u32 = u32::MAX;
+const FREE_PAIR: u64 = u64::MAX;
 
 impl Passes {
     fn new(basins: usize) -> Self {
-        let size = (8 * basins).next_power_of_two().max(64);
-        Self { pairs: vec![(FREE, 0.0); size], used: 0, last: 0 }
+        Self { near: vec![[(FREE, 0.0); NEAR]; basins], far: vec![(FREE_PAIR, 0.0); 64], far_used: 0 }
     }
 
     /// Lowers the pass between two basins to `z`.
     fn lower(&mut self, a: u32, b: u32, z: f32) {
-        let pair = u64::from(a.min(b)) << 32 | u64::from(a.max(b));
-        if self.pairs[self.last].0 != pair {
-            self.last = self.place(pair);
-        }
-        let slot = &mut self.pairs[self.last];
-        if slot.0 == FREE {
-            *slot = (pair, z);
-            self.used += 1;
-            if 2 * self.used > self.pairs.len() {
-                self.grow();
+        let (first, second) = (a.min(b), a.max(b));
+        for slot in &mut self.near[second as usize] {
+            if slot.0 == first {
+                slot.1 = if z < slot.1 { z } else { slot.1 };
+                return;
             }
-        } else if z < slot.1 {
-            slot.1 = z;
+            if slot.0 == FREE {
+                *slot = (first, z);
+                return;
+            }
         }
-    }
-
-    /// Where the pair stands, or would.
-    fn place(&self, pair: u64) -> usize {
-        let mask = self.pairs.len() - 1;
-        // Multiplication by 2⁶⁴ over the golden ratio spreads neighbouring pairs.
-        let mut at = (pair.wrapping_mul(0x9E37_79B9_7F4A_7C15) >> 32) as usize & mask;
-        while self.pairs[at].0 != FREE && self.pairs[at].0 != pair {
-            at = (at + 1) & mask;
+        let pair = u64::from(first) << 32 | u64::from(second);
+        let at = place(&self.far, pair);
+        let slot = &mut self.far[at];
+        if slot.0 == pair {
+            slot.1 = if z < slot.1 { z } else { slot.1 };
+            return;
         }
-        at
-    }
-
-    fn grow(&mut self) {
-        let old = std::mem::take(&mut self.pairs);
-        self.pairs = vec![(FREE, 0.0); 2 * old.len()];
-        for (pair, z) in old.into_iter().filter(|(pair, _)| *pair != FREE) {
-            let at = self.place(pair);
-            self.pairs[at] = (pair, z);
+        *slot = (pair, z);
+        self.far_used += 1;
+        if 2 * self.far_used > self.far.len() {
+            let mut grown = vec![(FREE_PAIR, 0.0); 2 * self.far.len()];
+            for (pair, z) in self.far.iter().filter(|(pair, _)| *pair != FREE_PAIR) {
+                let at = place(&grown, *pair);
+                grown[at] = (*pair, *z);
+            }
+            self.far = grown;
         }
-        self.last = 0;
     }
 
     fn iter(&self) -> impl Iterator<Item = (u32, u32, f32)> + '_ {
-        let used = self.pairs.iter().filter(|(pair, _)| *pair != FREE);
-        used.map(|(pair, z)| ((pair >> 32) as u32, *pair as u32, *z))
+        let near = self.near.iter().enumerate().flat_map(|(second, slots)| {
+            let used = slots.iter().take_while(|(first, _)| *first != FREE);
+            used.map(move |(first, z)| (*first, second as u32, *z))
+        });
+        let far = self.far.iter().filter(|(pair, _)| *pair != FREE_PAIR);
+        near.chain(far.map(|(pair, z)| ((pair >> 32) as u32, *pair as u32, *z)))
     }
 
     /// The level to which each basin fills: the highest pass on its best way outside. The best ways are those of
@@ -301,6 +312,17 @@ impl Passes {
         }
         Ok(walk(&passes, basins))
     }
+}
+
+/// Where a pair stands in the table, or would.
+fn place(table: &[(u64, f32)], pair: u64) -> usize {
+    let mask = table.len() - 1;
+    // Multiplication by 2⁶⁴ over the golden ratio spreads neighbouring pairs.
+    let mut at = (pair.wrapping_mul(0x9E37_79B9_7F4A_7C15) >> 32) as usize & mask;
+    while table[at].0 != FREE_PAIR && table[at].0 != pair {
+        at = (at + 1) & mask;
+    }
+    at
 }
 
 /// The basin that stands for all those joined with `a`.
