@@ -16,6 +16,7 @@ mod netcdf_writer;
 mod obstacle;
 mod orientation;
 mod plates;
+mod reach_channels;
 mod records;
 mod samples;
 mod theories;
