@@ -19,6 +19,7 @@ mod plates;
 mod reach_channels;
 mod records;
 mod samples;
+mod smoothness;
 mod theories;
 mod tiff_writer;
 mod verdicts;

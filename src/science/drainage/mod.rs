@@ -17,6 +17,7 @@ mod outlets;
 mod outline;
 mod paths;
 pub mod routing;
+pub mod smoothness;
 mod sources;
 mod tree;
 
@@ -35,4 +36,5 @@ pub const METHODS: &[&Method] = &[
     &curvature::METHOD,
     &drop::METHOD,
     &basins::METHOD,
+    &smoothness::METHOD,
 ];
