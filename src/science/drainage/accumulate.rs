@@ -1,5 +1,7 @@
 //! Contributing area: what every cell passes on, added up along the flow.
 
+use multiversion::multiversion;
+
 use crate::ground::{Grid, Method, Read, Source, Stopped, Symbol, Work};
 
 use super::cells::Cells;
@@ -7,7 +9,7 @@ use super::condition::Conditioned;
 use super::d_infinity::Facets;
 use super::d8::Rows;
 use super::multiple::Spread;
-use super::routing::{OUT, Receivers, Router, STEPS};
+use super::routing::{OUT, Receivers, Router, STEPS, VOID};
 
 /// The record of the sum.
 pub const METHOD: Method = Method {
@@ -38,6 +40,8 @@ pub const METHOD: Method = Method {
 
 /// Cells between two looks at Stop.
 const PAUSE: usize = 1 << 14;
+/// In place of the number of cells waited for, once a cell is done.
+const DONE: u8 = u8::MAX;
 
 /// Contributing area of every cell, its own included, m². What leaves through the outlets adds up to the area of
 /// all valid cells.
@@ -53,43 +57,131 @@ pub fn area(
 ) -> Result<Grid<f64>, Stopped> {
     let surface = &conditioned.surface;
     let width = surface.width();
-    let own = cells.area.iter().flat_map(|area| std::iter::repeat_n(*area, width));
-    let mut area: Vec<f64> = own.take(surface.len()).collect();
-    work.phase("contributing area", surface.len() as u64);
-    match router {
-        Router::D8 => along_one(receivers, &mut area, work)?,
-        _ => along_many(conditioned, cells, router, receivers, &mut area, work)?,
-    }
+    work.phase("contributing area", 2 * surface.height() as u64);
+    let area = match router {
+        Router::D8 => along_one(receivers, cells, work)?,
+        _ => along_many(conditioned, cells, router, receivers, work)?,
+    };
     Ok(Grid::from_parts(width, surface.height(), area, surface.mask().map(<[bool]>::to_vec)))
 }
 
 /// Adds up along single receivers: from every cell that nothing drains to, down to the first that still waits.
-fn along_one(receivers: &Receivers, area: &mut [f64], work: &Work) -> Result<(), Stopped> {
+/// Cells that nothing drains to are half of all; what they pass on is added row by row beforehand.
+fn along_one(receivers: &Receivers, cells: &Cells, work: &Work) -> Result<Vec<f64>, Stopped> {
+    let (width, height) = (receivers.0.width(), receivers.0.height());
     let codes = receivers.0.values();
-    let offsets = offsets(receivers.0.width());
+    let offsets = offsets(width);
     let mut waiting = vec![0u8; codes.len()];
-    for (i, code) in codes.iter().enumerate() {
-        if *code < OUT {
-            waiting[i.wrapping_add_signed(offsets[usize::from(*code)])] += 1;
-        }
+    let mut rows: [Vec<u8>; 3] = std::array::from_fn(|_| vec![VOID; width + 2]);
+    let row_of = |row: usize| codes.get(row * width..(row + 1) * width);
+    load(row_of(0), &mut rows[2]);
+    for (row, waiting) in waiting.chunks_mut(width.max(1)).enumerate() {
+        rows.rotate_left(1);
+        load(row_of(row + 1), &mut rows[2]);
+        let [above, own, below] = &rows;
+        donors(above, own, below, waiting);
+        work.advance(1)?;
+    }
+    let mut area = vec![0.0; codes.len()];
+    rows.iter_mut().for_each(|row| row.fill(VOID));
+    load_springs(row_of(0), &waiting, &mut rows[2]);
+    for (row, area) in area.chunks_mut(width.max(1)).enumerate() {
+        rows.rotate_left(1);
+        load_springs(row_of(row + 1), &waiting[((row + 1) * width).min(codes.len())..], &mut rows[2]);
+        let own = cells.area[row];
+        let around = [cells.area[row.saturating_sub(1)], own, cells.area[(row + 1).min(height - 1)]];
+        let [above, own, below] = &rows;
+        from_springs([above, own, below], around, &mut waiting[row * width..][..width], area);
+        work.advance(1)?;
     }
     let mut done = 0;
-    for first in 0..codes.len() {
-        let mut at = first;
-        while waiting[at] == 0 {
-            waiting[at] = u8::MAX;
-            done += 1;
-            if done % PAUSE == 0 {
-                work.advance(PAUSE as u64)?;
+    for block in (0..codes.len()).step_by(16) {
+        let end = codes.len().min(block + 16);
+        if !waiting[block..end].contains(&0) {
+            continue;
+        }
+        for first in block..end {
+            if waiting[first] != 0 {
+                continue;
             }
-            let Some(offset) = offsets.get(usize::from(codes[at])) else { break };
-            let next = at.wrapping_add_signed(*offset);
-            area[next] += area[at];
-            waiting[next] -= 1;
-            at = next;
+            waiting[first] = DONE;
+            let (mut at, mut passed) = (first, area[first]);
+            while let Some(offset) = offsets.get(usize::from(codes[at])) {
+                at = at.wrapping_add_signed(*offset);
+                passed += area[at];
+                area[at] = passed;
+                waiting[at] = waiting[at].wrapping_sub(1);
+                if waiting[at] != 0 {
+                    break;
+                }
+                waiting[at] = DONE;
+                done += 1;
+                if done % PAUSE == 0 {
+                    work.advance(0)?;
+                }
+            }
         }
     }
-    Ok(())
+    Ok(area)
+}
+
+/// Copies codes between the margins.
+fn load(codes: Option<&[u8]>, into: &mut [u8]) {
+    let inner = 1..into.len() - 1;
+    match codes {
+        Some(codes) => into[inner].copy_from_slice(codes),
+        None => into.fill(VOID),
+    }
+}
+
+/// Copies the codes of cells that wait for nothing.
+fn load_springs(codes: Option<&[u8]>, waiting: &[u8], into: &mut [u8]) {
+    load(codes, into);
+    let inner = 1..into.len() - 1;
+    for (code, waiting) in into[inner].iter_mut().zip(waiting) {
+        *code = if *waiting == 0 { *code } else { VOID };
+    }
+}
+
+/// Number of neighbours that drain to each cell of the middle row.
+#[multiversion(targets("x86_64+avx2"))]
+fn donors(above: &[u8], own: &[u8], below: &[u8], out: &mut [u8]) {
+    let n = out.len();
+    let (e, w) = (&own[2..n + 2], &own[..n]);
+    let (nw, nn, ne) = (&above[..n], &above[1..=n], &above[2..n + 2]);
+    let (sw, ss, se) = (&below[..n], &below[1..=n], &below[2..n + 2]);
+    for i in 0..n {
+        // A neighbour drains here when its code is the step opposite to where it lies.
+        out[i] = u8::from(w[i] == 0)
+            + u8::from(nw[i] == 1)
+            + u8::from(nn[i] == 2)
+            + u8::from(ne[i] == 3)
+            + u8::from(e[i] == 4)
+            + u8::from(se[i] == 5)
+            + u8::from(ss[i] == 6)
+            + u8::from(sw[i] == 7);
+    }
+}
+
+/// Area of each cell of the middle row with what springs beside it pass on, and one less to wait for each.
+/// `areas` are those of a cell of the three rows.
+#[multiversion(targets("x86_64+avx2"))]
+fn from_springs(springs: [&[u8]; 3], areas: [f64; 3], waiting: &mut [u8], out: &mut [f64]) {
+    let n = out.len();
+    let [above, own, below] = springs;
+    let (e, own, w) = (&own[2..n + 2], &own[1..=n], &own[..n]);
+    let (nw, nn, ne) = (&above[..n], &above[1..=n], &above[2..n + 2]);
+    let (sw, ss, se) = (&below[..n], &below[1..=n], &below[2..n + 2]);
+    for i in 0..n {
+        let from_above = u8::from(nw[i] == 1) + u8::from(nn[i] == 2) + u8::from(ne[i] == 3);
+        let beside = u8::from(w[i] == 0) + u8::from(e[i] == 4);
+        let from_below = u8::from(se[i] == 5) + u8::from(ss[i] == 6) + u8::from(sw[i] == 7);
+        let all = from_above + beside + from_below;
+        waiting[i] = if own[i] == VOID { waiting[i] - all } else { DONE };
+        out[i] = areas[1] * f64::from(1 + beside)
+            + areas[0] * f64::from(from_above)
+            + areas[2] * f64::from(from_below);
+    }
 }
 
 /// How the cells of one row share their flow.
@@ -121,9 +213,8 @@ fn along_many(
     cells: &Cells,
     router: Router,
     receivers: &Receivers,
-    area: &mut [f64],
     work: &Work,
-) -> Result<(), Stopped> {
+) -> Result<Vec<f64>, Stopped> {
     let surface = &conditioned.surface;
     let (width, height) = (surface.width(), surface.height());
     let offsets = offsets(width);
@@ -150,20 +241,22 @@ fn along_many(
             }
         }
         rows.advance(surface);
-        work.advance(0)?;
+        work.advance(1)?;
     }
+    let own = cells.area.iter().flat_map(|area| std::iter::repeat_n(*area, width));
+    let mut area: Vec<f64> = own.take(surface.len()).collect();
     let mut ready = Vec::new();
     let mut done = 0;
     for first in 0..surface.len() {
-        // Cells done already hold u8::MAX.
+        // Cells done already hold DONE.
         if waiting[first] == 0 {
             ready.push(first);
         }
         while let Some(i) = ready.pop() {
-            waiting[i] = u8::MAX;
+            waiting[i] = DONE;
             done += 1;
             if done % PAUSE == 0 {
-                work.advance(PAUSE as u64)?;
+                work.advance(0)?;
             }
             let bits = goes[i];
             if bits == 0 {
@@ -185,7 +278,7 @@ fn along_many(
             }
         }
     }
-    Ok(())
+    Ok(area)
 }
 
 /// A cell and its neighbours, missing ones at +∞.
