@@ -18,6 +18,7 @@ mod outlets;
 mod outline;
 mod paths;
 pub mod routing;
+pub mod smoothness;
 mod sources;
 mod tree;
 
@@ -37,4 +38,5 @@ pub const METHODS: &[&Method] = &[
     &curvature::METHOD,
     &drop::METHOD,
     &basins::METHOD,
+    &smoothness::METHOD,
 ];
