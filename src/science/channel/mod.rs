@@ -4,6 +4,7 @@ mod bridge;
 pub mod detect;
 pub mod graph;
 pub mod pen;
+mod profile;
 mod prune;
 mod refine;
 mod response;
@@ -13,4 +14,4 @@ pub mod width;
 use crate::ground::Method;
 
 /// The methods of this family.
-pub const METHODS: &[&Method] = &[&response::METHOD, &detect::METHOD];
+pub const METHODS: &[&Method] = &[&response::METHOD, &detect::METHOD, &width::METHOD];
