@@ -185,13 +185,12 @@ fn logarithm_of(image: &Grid<f32>) -> Grid<f32> {
 fn lines(response: &Response, work: &Work) -> Result<Sketch, Stopped> {
     work.phase("Following channels", 0);
     let columns = response.z.width();
-    let heights: Vec<f32> = (0..response.z.len()).map(|cell| response.excess(cell)).collect();
-    work.advance(0)?;
-    let (mut mask, crest) = bands(response, &heights, work)?;
+    let heights = &response.excess;
+    let (mut mask, crest) = bands(response, heights, work)?;
     close_small_holes(&mut mask, response, work)?;
     grow(&mut mask, response, work)?;
-    thin(&mut mask, columns, &heights, |cell| crest[cell], false, work)?;
-    thin(&mut mask, columns, &heights, |_| false, true, work)?;
+    thin(&mut mask, columns, heights, |cell| crest[cell], false, work)?;
+    thin(&mut mask, columns, heights, |_| false, true, work)?;
     let width = |cells: &[usize]| {
         let mut widths: Vec<f64> = cells.iter().map(|c| response.strip_at(*c).width).collect();
         quantile::median(&mut widths)

@@ -6,6 +6,8 @@ use super::graph::{Sketch, Stretch};
 
 /// ln of the greatest number of noise chains as good in the whole image, for a part or a branch to stay: 0.01.
 const GREATEST_CHANCE: f64 = -4.6;
+/// Arms nearer than this are not told apart, pixels.
+const LEAST_ISLAND: f64 = 6.0;
 
 impl Sketch {
     /// Drops free-ended stretches off a junction that are shorter than `half_widths` half-widths of the widest
@@ -50,7 +52,7 @@ impl Sketch {
             for (ends, same) in by_ends {
                 for (k, &i) in same.iter().enumerate() {
                     let one = &self.stretches[i];
-                    let near = widths * one.width;
+                    let near = (widths * one.width).max(LEAST_ISLAND);
                     if ends.0 == ends.1 {
                         gone[i] = one.line.iter().all(|p| p.distance(one.line[0]) < near);
                     }

@@ -101,7 +101,7 @@ fn linear(response: &Response, x: f64, y: f64) -> f64 {
         (v as usize, (v as usize + 1).min(n - 1), v.fract())
     };
     let ((c0, c1, u), (r0, r1, v)) = (split(x, width), split(y, height));
-    let at = |c: usize, r: usize| f64::from(response.excess(r * width + c));
+    let at = |c: usize, r: usize| f64::from(response.excess[r * width + c]);
     (at(c0, r0) * (1.0 - u) + at(c1, r0) * u) * (1.0 - v) + (at(c0, r1) * (1.0 - u) + at(c1, r1) * u) * v
 }
 

@@ -31,7 +31,7 @@ pub static METHOD: Method = Method {
         Symbol { symbol: "G", meaning: "Gaussian, σ across and s along the strip", unit: "px⁻²" },
         Symbol {
             symbol: "sd(E)",
-            meaning: "scale of E over the image, robust, per width",
+            meaning: "scale of E around the place (128 cells), robust, per width",
             unit: "unit of the image",
         },
         Symbol { symbol: "ρ", meaning: "mean correlation of the noise in the four samples", unit: "1" },
@@ -94,13 +94,14 @@ const LOW: f64 = 0.7;
 /// Least noise as a share of the range of the image: below it, the response would be to rounding.
 const LEAST_NOISE: f64 = 1e-3;
 
+/// Least noise of a tile as a share of that of the whole.
+const LEAST_SHARE: f64 = 0.5;
+
 /// One width looked for.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub(super) struct Strip {
     /// Full-resolution pixels.
     pub width: f64,
-    /// Scale of the noise of a bank's response, in the unit of the image.
-    pub noise: f64,
     /// Floor and low threshold of z.
     pub floor: f64,
     pub low: f64,
@@ -114,6 +115,8 @@ pub(super) struct Strip {
 pub(super) struct Response {
     /// Response over its noise; 0 where there is none.
     pub z: Grid<f32>,
+    /// Response beyond the low threshold, in the unit of the image: widths are chosen and crests followed by it.
+    pub excess: Vec<f32>,
     /// Index of the strip, and of its direction.
     pub strip: Vec<u8>,
     pub turn: Vec<u8>,
@@ -155,7 +158,7 @@ impl Strip {
         }
         let along = (ALONG * width).max(LEAST_ALONG);
         let cells = reduced as f64;
-        Self { width, noise: 0.0, floor: 0.0, low: 0.0, reduced, sigma: sigma / cells, along: along / cells }
+        Self { width, floor: 0.0, low: 0.0, reduced, sigma: sigma / cells, along: along / cells }
     }
 
     /// Half the width, cells.
@@ -211,6 +214,7 @@ pub(super) fn response(
     );
     let mut best = Response {
         z: Grid::filled(width, height, 0.0),
+        excess: vec![0.0; width * height],
         strip: vec![0; width * height],
         turn: vec![0; width * height],
         strips: Vec::new(),
@@ -220,21 +224,17 @@ pub(super) fn response(
         while grid.factor < strip.reduced {
             grid = grid.halved(work)?;
         }
-        let found = sought(
-            &grid.filled(2.0 * strip.width / grid.factor as f64, work)?,
-            &grid.valid,
-            &strip,
-            tone,
-            work,
-        )?;
-        strip.noise = found.noise.max(LEAST_NOISE * f64::from(high - low));
+        let filled = grid.filled(2.0 * strip.width / grid.factor as f64, work)?;
+        let least = LEAST_NOISE * f64::from(high - low);
+        let found = sought(&filled, &grid.valid, &strip, tone, least, work)?;
         strip.floor = floor_for(significance, strip.correlation());
         strip.low = LOW * strip.floor;
         best.strips.push(strip);
         best.take(&found, grid.factor, work)?;
     }
     if let Some(mask) = image.mask() {
-        best.z.values_mut().iter_mut().zip(mask).for_each(|(z, valid)| *z = if *valid { *z } else { 0.0 });
+        let values = best.z.values_mut().iter_mut().zip(&mut best.excess);
+        values.zip(mask).filter(|(_, valid)| !**valid).for_each(|((z, e), _)| (*z, *e) = (0.0, 0.0));
     }
     Ok(Some(best))
 }
@@ -244,34 +244,24 @@ impl Response {
         &self.strips[usize::from(self.strip[cell])]
     }
 
-    /// Contrast beyond the low threshold, in the unit of the image; what widths are chosen and crests are followed by.
-    pub fn excess(&self, cell: usize) -> f32 {
-        let strip = self.strip_at(cell);
-        ((f64::from(self.z.values()[cell]) - strip.low) * strip.noise).max(0.0) as f32
-    }
-
     /// Takes the last strip's response where it stands out more than what is held.
     fn take(&mut self, found: &Found, factor: usize, work: &Work) -> Result<(), Stopped> {
         let number = self.strips.len() - 1;
-        let strips = &self.strips;
         let width = self.z.width();
-        let (noise, low) = (strips[number].noise, strips[number].low);
-        let rows = self.z.values_mut().par_chunks_mut(width);
+        let low = self.strips[number].low as f32;
+        let rows = self.z.values_mut().par_chunks_mut(width).zip(self.excess.par_chunks_mut(width));
         let rows = rows.zip(self.strip.par_chunks_mut(width)).zip(self.turn.par_chunks_mut(width));
-        rows.enumerate().try_for_each(|(row, ((zs, numbers), turns))| {
+        rows.enumerate().try_for_each(|(row, (((zs, excesses), numbers), turns))| {
             for col in 0..width {
                 let (amplitude, turn) = found.at(col, row, factor);
-                let z = f64::from(amplitude) / noise;
-                let held = f64::from(zs[col]);
-                let other = &strips[usize::from(numbers[col])];
-                let better = match (z > low, held > other.low) {
-                    (true, true) => (z - low) * noise > (held - other.low) * other.noise,
-                    (true, false) => true,
-                    (false, true) => false,
-                    (false, false) => z > held,
-                };
-                if better {
-                    (zs[col], numbers[col], turns[col]) = (z as f32, number as u8, turn);
+                if amplitude <= 0.0 {
+                    continue;
+                }
+                let noise = found.noise_at(col / factor, row / factor);
+                let z = amplitude / noise;
+                let excess = ((z - low) * noise).max(0.0);
+                if excess > excesses[col] || (excesses[col] == 0.0 && z > zs[col]) {
+                    (zs[col], excesses[col], numbers[col], turns[col]) = (z, excess, number as u8, turn);
                 }
             }
             work.advance(0)
@@ -337,7 +327,9 @@ struct Found {
     height: usize,
     amplitude: Vec<f32>,
     turn: Vec<u8>,
-    noise: f64,
+    /// Scale of the noise of one sample, tile by tile, and tiles a row.
+    noise: Vec<f32>,
+    tiles: usize,
 }
 
 impl Found {
@@ -360,6 +352,40 @@ impl Found {
     }
 }
 
+impl Found {
+    /// Noise at a cell, linear between the middles of tiles.
+    fn noise_at(&self, col: usize, row: usize) -> f32 {
+        let split = |x: usize, n: usize| {
+            let x = ((x as f32 + 0.5) / TILE as f32 - 0.5).clamp(0.0, (n - 1) as f32);
+            (x as usize, (x as usize + 1).min(n - 1), x.fract())
+        };
+        let (cols, rows) = (self.tiles, self.noise.len() / self.tiles);
+        let ((c0, c1, u), (r0, r1, v)) = (split(col, cols), split(row, rows));
+        let at = |c: usize, r: usize| self.noise[r * cols + c];
+        (at(c0, r0) * (1.0 - u) + at(c1, r0) * u) * (1.0 - v) + (at(c0, r1) * (1.0 - u) + at(c1, r1) * u) * v
+    }
+}
+
+/// Noise of each tile from the samples in it; a share of that of the whole at least, and that of the whole where
+/// samples are few.
+fn noise_of_tiles(parts: &[Tile], least: f64) -> Vec<f32> {
+    const FEW: usize = 200;
+    let sizes = |tile: &Tile| tile.edges.iter().map(|e| f64::from(e.abs())).collect::<Vec<f64>>();
+    // Every so many samples are enough for the whole.
+    let all: usize = parts.iter().map(|t| t.edges.len()).sum();
+    let every = all.div_ceil(200_000).max(1);
+    let mut whole: Vec<f64> =
+        parts.iter().flat_map(|t| &t.edges).step_by(every).map(|e| f64::from(e.abs())).collect();
+    let whole = scale_without_strong(&mut whole).max(least);
+    let of = |tile: &Tile| {
+        if tile.edges.len() < FEW {
+            return whole as f32;
+        }
+        scale_without_strong(&mut sizes(tile)).max(LEAST_SHARE * whole) as f32
+    };
+    parts.par_iter().map(of).collect()
+}
+
 /// Upper left corners of the tiles of a reduced grid, cells.
 fn tiles(width: usize, height: usize, factor: usize) -> Vec<(usize, usize)> {
     let (width, height) = (width.div_ceil(factor), height.div_ceil(factor));
@@ -372,6 +398,7 @@ fn sought(
     valid: &Option<Vec<bool>>,
     strip: &Strip,
     tone: ChannelTone,
+    least_noise: f64,
     work: &Work,
 ) -> Result<Found, Stopped> {
     let (width, height) = (grid.width(), grid.height());
@@ -389,18 +416,16 @@ fn sought(
         height,
         amplitude: vec![0.0; width * height],
         turn: vec![0; width * height],
-        noise: 0.0,
+        noise: noise_of_tiles(&parts, least_noise),
+        tiles: width.div_ceil(TILE),
     };
-    let mut noise = Vec::new();
     for ((col, row), tile) in corners.iter().zip(&parts) {
         for r in 0..tile.height {
             let (from, at) = (r * tile.width, (row + r) * width + col);
             found.amplitude[at..at + tile.width].copy_from_slice(&tile.amplitude[from..from + tile.width]);
             found.turn[at..at + tile.width].copy_from_slice(&tile.turn[from..from + tile.width]);
         }
-        noise.extend(tile.edges.iter().map(|e| f64::from(e.abs())));
     }
-    found.noise = scale_without_strong(&mut noise);
     if let Some(valid) = valid {
         let seen = |x: f64, y: f64| {
             let (c, r) = (x.round(), y.round());
