@@ -7,6 +7,7 @@ mod cost;
 pub mod detect;
 pub mod graph;
 pub mod pen;
+mod profile;
 mod prune;
 mod refine;
 mod response;
@@ -18,3 +19,4 @@ use crate::ground::Method;
 /// The methods of this family.
 pub const METHODS: &[&Method] =
     &[&response::METHOD, &detect::METHOD, &cost::METHOD, &pen::METHOD, &chance::METHOD, &sense::METHOD];
+pub const METHODS: &[&Method] = &[&response::METHOD, &detect::METHOD, &width::METHOD];
