@@ -65,6 +65,8 @@ const FOOT: f64 = 0.3048;
 const LEAST_TURN: f64 = 15.0 * PI / 180.0;
 /// Wavelengths a course must hold.
 const LEAST_WAVES: f64 = 3.0;
+/// Directions of a spectrum; more are averaged to as many.
+const MOST_DIRECTIONS: usize = 4096;
 /// Share of the power within a factor 1.5 of the peak that makes it one.
 const LEAST_SHARE: f64 = 1.0 / 3.0;
 
@@ -90,10 +92,14 @@ pub(super) struct Bend {
 pub(super) fn by_spectrum(course: &Course, valley: &[Point], sinuosity: f64) -> Option<Meander> {
     let own = course.directions();
     let line = Course { step: 1.0, pixels: Vec::new(), ground: valley.to_vec() }.directions();
-    let n = own.len();
     // Both begin on their own turn of the circle.
-    let turns = ((own[n / 2] - line[n / 2]) / TAU).round() * TAU;
+    let turns = ((own[own.len() / 2] - line[own.len() / 2]) / TAU).round() * TAU;
     let away: Vec<f64> = own.iter().zip(&line).map(|(a, b)| a - b - turns).collect();
+    let away: Vec<f64> = away
+        .chunks(away.len().div_ceil(MOST_DIRECTIONS))
+        .map(|few| few.iter().sum::<f64>() / few.len() as f64)
+        .collect();
+    let n = away.len();
     let length = course.length();
     let mean = away.iter().sum::<f64>() / n as f64;
     let tapered: Vec<f64> =
@@ -115,7 +121,7 @@ pub(super) fn by_spectrum(course: &Course, valley: &[Point], sinuosity: f64) -> 
     if most <= LEAST_WAVES || count < 3 {
         return None;
     }
-    let waves: Vec<f64> = (0..count.min(6000)).map(|i| LEAST_WAVES + i as f64 / 3.0).collect();
+    let waves: Vec<f64> = (0..count).map(|i| LEAST_WAVES + i as f64 / 3.0).collect();
     let powers: Vec<f64> = waves.iter().map(|w| power(*w)).collect();
     let whole: f64 = powers.iter().sum();
     let top = (0..powers.len()).max_by(|a, b| powers[*a].total_cmp(&powers[*b]).then(b.cmp(a)))?;
