@@ -37,7 +37,7 @@ pub fn on_map(finding: &NetworkFinding) -> MapNetwork<'_> {
         name: &finding.name,
         network: &finding.network,
         divides,
-        change: drainage.map(|d| (&d.change_map, d.change_map_px)),
+        change: drainage.map(|d| (&d.change_map, d.change_map_at, d.change_map_px)),
     }
 }
 

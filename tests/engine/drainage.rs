@@ -1,12 +1,11 @@
 //! Properties of drainage: what filling and routing must keep on any raster.
 
-use std::time::{Duration, Instant};
 
 use rand::{Rng as _, SeedableRng as _};
 use rand_chacha::ChaCha8Rng;
 
 use ventifact::assert_close;
-use ventifact::ground::{Grid, Point, Polygon, Work};
+use ventifact::ground::{Grid, Work};
 use ventifact::science::drainage::accumulate::area;
 use ventifact::science::drainage::cells::Cells;
 use ventifact::science::drainage::condition::{BreachLimits, Conditioned, Conditioning, condition};

@@ -80,7 +80,7 @@ fn channels(sketch: &mut Sketch, profiles: &[Profile], fit: &ChiFit, chart: &Cha
     if n > 0.0 && fit.slope.is_finite() {
         let (chi, z) = points().fold((0.0, 0.0), |(c, z), s| (c + s.chi / n, z + s.elevation_m / n));
         let ends = [chart.x.span.min, chart.x.span.max].map(|c| [c, z + fit.slope * (c - chi)]);
-        chart.curve(&mut inside, ends, theme.dashed(theme.measured, theme.widths.line));
+        chart.curve(&mut inside, ends, theme.stroke(theme.measured, theme.widths.line));
     }
     chart.clipped(sketch, inside);
 }

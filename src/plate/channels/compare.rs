@@ -55,7 +55,7 @@ fn overlay(
     let mut inside = Sketch::default();
     let strokes = [band(theme), theme.stroke(theme.water, 1.2 * theme.widths.line)];
     for (network, stroke) in networks.into_iter().zip(strokes) {
-        for reach in &network.reaches {
+        for reach in panel.printable(network).reaches {
             let line: Vec<Point> = reach.line.0.iter().map(|p| panel.at(*p)).collect();
             inside.polyline(simplified(&line, FINEST_MM), stroke);
         }

@@ -6,7 +6,7 @@ use crate::study::NetworkFinding;
 
 use super::super::chart::{Chart, Span};
 use super::super::sketch::{Sketch, Type};
-use super::super::{Figure, TextAnchor, Theme};
+use super::super::{Figure, TextAnchor, Theme, numbers};
 use super::lines::{Panel, pixel_shape};
 use super::{SHAPE, area, verdict_words, words_only};
 
@@ -142,7 +142,7 @@ pub fn threshold_maps(finding: &NetworkFinding, width_mm: f64, theme: &Theme) ->
         let x = i as f64 * (each + gap);
         let panel = Panel::fit(covers, shape, Point::new(x, 0.0), [each, 1.25 * each]);
         panel.frame(&mut sketch, theme);
-        panel.network(&mut sketch, network, theme.water, 0.8, theme);
+        let least = panel.network(&mut sketch, network, theme.water, 0.6, theme);
         let streams = network.heads().len();
         let y = panel.max.y + 0.5;
         let look = Type::new(theme.text.small, theme.ink).bold();
@@ -150,8 +150,13 @@ pub fn threshold_maps(finding: &NetworkFinding, width_mm: f64, theme: &Theme) ->
         let mut end = y + sketch.paragraph(Point::new(x, y), &text, look, each);
         let look = Type::new(theme.text.small, theme.ink_soft);
         let order = network.greatest_order().map_or(String::new(), |o| format!(", order\u{a0}{o}"));
-        let text = format!("{streams}\u{a0}head{}{order}", if streams == 1 { "" } else { "s" });
+        let text =
+            format!("{}\u{a0}head{}{order}", numbers::count(streams), if streams == 1 { "" } else { "s" });
         end += sketch.paragraph(Point::new(x, end), &text, look, each);
+        if least > 1 {
+            let text = format!("drawn from order\u{a0}{least}");
+            end += sketch.paragraph(Point::new(x, end), &text, look, each);
+        }
         foot = foot.max(end);
     }
     sketch.finish(width_mm, foot)

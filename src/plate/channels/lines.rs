@@ -1,6 +1,6 @@
 //! Networks as bare lines in a small frame, without the raster beneath.
 
-use crate::ground::{Bounds, LengthUnit, Network, Point};
+use crate::ground::{Bounds, LengthUnit, Network, Point, Reach};
 
 use super::super::chart::{FINEST_MM, simplified};
 use super::super::sketch::{Sketch, Type};
@@ -12,6 +12,54 @@ pub(in super::super) fn order_width(order: Option<u32>) -> f64 {
         Some(order) => (0.12 + 0.17 * f64::from(order)).min(1.3),
         None => 0.42,
     }
+}
+
+/// The reaches that a page can hold apart.
+pub(in super::super) struct Printable<'a> {
+    /// Those of lower order are left out; 1 for none.
+    pub least_order: u32,
+    pub reaches: Vec<&'a Reach>,
+}
+
+/// Reaches from the least order on for which their length within the frame stays below `most` mm per mm². Reaches
+/// without order are kept longest first, to the same limit.
+pub(in super::super) fn printable<'a>(
+    network: &'a Network,
+    at: impl Fn(Point) -> Point,
+    frame: Bounds,
+    most: f64,
+) -> Printable<'a> {
+    let greatest = network.greatest_order().unwrap_or(1);
+    let mut by_order = vec![0.0; greatest as usize + 1];
+    let mut without: Vec<(f64, &Reach)> = Vec::new();
+    let mut ordered: Vec<(u32, &Reach)> = Vec::new();
+    let holds =
+        |p: Point| (frame.min.x..=frame.max.x).contains(&p.x) && (frame.min.y..=frame.max.y).contains(&p.y);
+    for reach in &network.reaches {
+        let line: Vec<Point> = reach.line.0.iter().map(|p| at(*p)).collect();
+        let length: f64 =
+            line.windows(2).filter(|w| holds(w[0]) || holds(w[1])).map(|w| w[0].distance(w[1])).sum();
+        match reach.order {
+            Some(order) => {
+                by_order[order.strahler as usize] += length;
+                ordered.push((order.strahler, reach));
+            }
+            None => without.push((length, reach)),
+        }
+    }
+    let room = most * frame.width() * frame.height();
+    let above = |from: u32| by_order[from as usize..].iter().sum::<f64>();
+    let least_order = (1..=greatest).find(|from| above(*from) <= room).unwrap_or(greatest);
+    if without.iter().map(|w| w.0).sum::<f64>() > room {
+        without.sort_by(|a, b| b.0.total_cmp(&a.0));
+        let mut left = room;
+        without.retain(|(length, _)| {
+            left -= length;
+            left > 0.0
+        });
+    }
+    let ordered = ordered.into_iter().filter(|(order, _)| *order >= least_order).map(|(_, reach)| reach);
+    Printable { least_order, reaches: ordered.chain(without.into_iter().map(|(_, reach)| reach)).collect() }
 }
 
 /// Ground length of one column and one row, in the unit of the network's lengths, as its own lines tell:
@@ -84,19 +132,35 @@ impl Panel {
         sketch.rectangle(self.min, self.max, Some(theme.panel), Some(edge));
     }
 
-    /// Every reach, heavier with its order; `share` of the usual widths.
-    pub fn network(&self, sketch: &mut Sketch, network: &Network, color: Rgba, share: f64, theme: &Theme) {
+    /// Reaches heavier with their order, `share` of the usual widths; returns the least order drawn.
+    pub fn network(
+        &self,
+        sketch: &mut Sketch,
+        network: &Network,
+        color: Rgba,
+        share: f64,
+        theme: &Theme,
+    ) -> u32 {
+        let mut shown = self.printable(network);
+        shown.reaches.sort_by_key(|r| r.order.map_or(0, |o| o.strahler));
         let mut inside = Sketch::default();
-        let mut reaches: Vec<_> = network.reaches.iter().collect();
-        reaches.sort_by_key(|r| r.order.map_or(0, |o| o.strahler));
-        for reach in reaches {
+        for reach in &shown.reaches {
             let line: Vec<Point> = reach.line.0.iter().map(|p| self.at(*p)).collect();
-            let width = share * order_width(reach.order.map(|o| o.strahler));
-            inside.polyline(simplified(&line, FINEST_MM), theme.stroke(color, width));
+            let order = reach.order.map(|o| o.strahler + 1 - shown.least_order);
+            inside.polyline(simplified(&line, FINEST_MM), theme.stroke(color, share * order_width(order)));
         }
         sketch.items.push(Item::Clip { min: self.min, max: self.max, items: inside.items });
+        shown.least_order
+    }
+
+    /// What the panel can hold.
+    pub fn printable<'a>(&self, network: &'a Network) -> Printable<'a> {
+        printable(network, |p| self.at(p), Bounds { min: self.min, max: self.max }, MOST_DENSE)
     }
 }
+
+/// Channel length in a small panel, mm per mm², that thin lines still hold apart.
+const MOST_DENSE: f64 = 0.9;
 
 /// A bar of round ground length with its name, from `at` to the right; at most `room_mm` long.
 pub(super) fn length_bar(

@@ -28,7 +28,7 @@ pub use scaling::{hack_plot, slope_area};
 
 use crate::ground::{LengthUnit, Point};
 
-pub(super) use lines::order_width;
+pub(super) use lines::{Printable, order_width, printable};
 
 use super::sketch::{Sketch, Type};
 use super::{Figure, TextAnchor, Theme, numbers};

@@ -3,8 +3,9 @@
 use crate::ground::{LengthUnit, ReachOrigin};
 use crate::study::NetworkFinding;
 
+use super::super::numbers::{self, count};
 use super::super::sketch::Sketch;
-use super::super::{Figure, Theme, numbers};
+use super::super::{Figure, Theme};
 use super::{area, brief, table, with_interval};
 
 /// Lengths, counts, density, ratios, and what conditioning or tracing did.
@@ -29,15 +30,21 @@ fn size(finding: &NetworkFinding) -> Vec<Row> {
     let mut rows = vec![
         row("channels", numbers::length(network.length(), finding.unit, 3)),
         row("ground", area(finding.area, finding.unit)),
-        row("reaches, junctions", format!("{}, {}", network.reaches.len(), network.junctions().len())),
-        row("heads, outlets", format!("{}, {}", network.heads().len(), network.outlets().len())),
+        row(
+            "reaches, junctions",
+            format!("{}, {}", count(network.reaches.len()), count(network.junctions().len())),
+        ),
+        row(
+            "heads, outlets",
+            format!("{}, {}", count(network.heads().len()), count(network.outlets().len())),
+        ),
     ];
     let order = network.greatest_order().map_or("undefined".to_owned(), |o| o.to_string());
     let without = network.reaches.iter().filter(|r| r.order.is_none()).count();
     let told = if without == 0 || network.greatest_order().is_none() {
         order
     } else {
-        format!("{order}; {without} reaches without, on or below loops")
+        format!("{order}; {} reaches without, on or below loops", count(without))
     };
     rows.push(row("highest order", told));
     rows
@@ -83,11 +90,16 @@ fn from_elevation(finding: &NetworkFinding) -> Vec<Row> {
     } else {
         format!("{} of cells, deepest {}", share(c.cut_cells), metres(c.deepest_cut))
     };
-    let sinks =
-        format!("{}: {} breached, {} filled, {} left closed", c.sinks, c.breached, c.filled, c.left_closed);
+    let sinks = format!(
+        "{}: {} breached, {} filled, {} left closed",
+        count(c.sinks),
+        count(c.breached),
+        count(c.filled),
+        count(c.left_closed)
+    );
     vec![
         row("threshold", area(d.channels.threshold_m2, LengthUnit::Metre)),
-        row("basins", d.basins.len().to_string()),
+        row("basins", count(d.basins.len())),
         row("raised", raised),
         row("cut", cut),
         row("sinks", sinks),
@@ -96,19 +108,19 @@ fn from_elevation(finding: &NetworkFinding) -> Vec<Row> {
 
 fn from_image(finding: &NetworkFinding) -> Vec<Row> {
     let Some(t) = &finding.tracing else { return Vec::new() };
-    let count = |origin| finding.network.reaches.iter().filter(|r| r.origin == origin).count();
+    let of_origin = |origin| finding.network.reaches.iter().filter(|r| r.origin == origin).count();
     let sure = finding.network.reaches.iter().filter(|r| {
         let p = r.sense.probability();
         !(0.05..=0.95).contains(&p)
     });
     let mut rows = vec![
         row("proposed, struck out", format!("{}, {}", t.proposed_reaches, t.struck_reaches)),
-        row("traced by hand", count(ReachOrigin::Traced).to_string()),
+        row("traced by hand", count(of_origin(ReachOrigin::Traced))),
         row("gaps bridged", t.bridged_gaps.to_string()),
         row("loops", t.loops.to_string()),
         row(
             "sense told (p > 0.95)",
-            format!("{} of {} reaches", sure.count(), finding.network.reaches.len()),
+            format!("{} of {} reaches", count(sure.count()), count(finding.network.reaches.len())),
         ),
         row("noise floor", brief(t.floor)),
     ];

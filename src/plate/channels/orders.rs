@@ -53,8 +53,8 @@ fn words(finding: &NetworkFinding) -> (String, String) {
         return ("too few orders for ratios".into(), "a regression needs two orders".into());
     };
     let told = |name: &str, ratio: &Ratio| format!("{name} {}", with_interval(ratio.value, ratio.ci95, 1));
-    let headline = format!("{}, {}", told("bifurcation", &h.bifurcation), told("length", &h.length));
-    let mut caption = vec![format!("regressions over {} orders", h.orders)];
+    let headline = format!("{}\n{}", told("bifurcation", &h.bifurcation), told("length", &h.length));
+    let mut caption = vec![format!("ratios by regression over {} orders", h.orders)];
     caption.extend(h.area.as_ref().map(|r| told("area", r)));
     caption.extend(h.slope.as_ref().map(|r| told("slope", r)));
     if let Some(t) = &finding.tokunaga {

@@ -123,8 +123,8 @@ pub fn hypsometric_curve(finding: &NetworkFinding, width_mm: f64, theme: &Theme)
     inside.polygon(ground, Some(theme.tint(theme.measured, 0.16)), None);
     let middle = chart.y.at(found.integral.clamp(0.0, 1.0));
     let (min, max) = chart.corners();
-    let dashed = theme.dashed(theme.measured, theme.widths.thin);
-    inside.line(Point::new(min.x, middle), Point::new(max.x, middle), dashed);
+    let mark = theme.stroke(theme.measured, theme.widths.thin);
+    inside.line(Point::new(min.x, middle), Point::new(max.x, middle), mark);
     let look = Type::new(theme.text.small, theme.measured).anchored(TextAnchor::End).haloed(theme.paper);
     inside.text(Point::new(max.x - 0.8, middle - 0.7), "mean elevation", look);
     chart.curve(&mut inside, found.curve.iter().copied(), theme.stroke(theme.ink, 1.4 * theme.widths.line));

@@ -7,7 +7,7 @@ use crate::study::NetworkFinding;
 use super::super::chart::{Chart, Span, power_of_ten};
 use super::super::sketch::Sketch;
 use super::super::{Figure, Theme, numbers};
-use super::{SHAPE, verdict_words, with_interval, words_only};
+use super::{SHAPE, brief, verdict_words, with_interval, words_only};
 
 /// How a law is told.
 struct Telling {
@@ -34,8 +34,8 @@ pub fn slope_area(finding: &NetworkFinding, width_mm: f64, theme: &Theme) -> Fig
 /// Length of the longest channel against area (Hack 1957).
 pub fn hack_plot(finding: &NetworkFinding, width_mm: f64, theme: &Theme) -> Figure {
     let telling = Telling {
-        x_title: "contributing area",
-        y_title: "length",
+        x_title: "contributing area, m²",
+        y_title: "length of the longest way up, m",
         letter: "L",
         remark: "exponents of 0.57 to 0.60 are common",
     };
@@ -64,11 +64,7 @@ fn power_plot(law: Option<&PowerLaw>, telling: &Telling, none: &str, width_mm: f
     chart.axes(&mut sketch, telling.x_title, telling.y_title, theme);
     let y = height + 0.6;
     let exponent = with_interval(law.exponent, law.exponent_ci95, 2);
-    let factor = if (1e-3..1e6).contains(&law.factor) {
-        numbers::significant(law.factor, 3)
-    } else {
-        power_of_ten(law.factor)
-    };
+    let factor = if (1e-3..1e6).contains(&law.factor) { brief(law.factor) } else { power_of_ten(law.factor) };
     let caption = format!(
         "{} = {factor} A^k · r² {} · {} places shown\n{}",
         telling.letter,

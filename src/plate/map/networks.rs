@@ -7,7 +7,7 @@ use crate::ground::{Azimuth, Bounds, Grid, Network, Point, Polygon, Reach, Reach
 
 use super::view::Sheet;
 use super::{MapView, around, laid, overlap};
-use crate::plate::channels::order_width;
+use crate::plate::channels::{Printable, order_width, printable};
 use crate::plate::chart::{FINEST_MM, simplified};
 use crate::plate::sketch::{Sketch, Type, arrow_head};
 use crate::plate::{Figure, Item, Rgba, Stroke, TextAnchor, Theme, font};
@@ -19,8 +19,9 @@ pub struct MapNetwork<'a> {
     pub name: &'a str,
     pub network: &'a Network,
     pub divides: Vec<&'a Polygon>,
-    /// Depth raised (positive) or cut (negative) in metres, and full-resolution pixels a cell.
-    pub change: Option<(&'a Grid<f32>, f64)>,
+    /// Depth raised (positive) or cut (negative) in metres, where its upper left corner lies, and full-resolution
+    /// pixels a cell.
+    pub change: Option<(&'a Grid<f32>, Point, f64)>,
 }
 
 /// Channel length on the map's area that print still holds apart, mm per mm².
@@ -37,42 +38,21 @@ struct Drawn<'a> {
     width: f64,
 }
 
-/// Orders from which on a map shows reaches, so that the lines stay apart; 1 for all.
-fn least_order(network: &Network, sheet: &Sheet) -> u32 {
-    let [sx, sy] = sheet.scale();
-    let greatest = network.greatest_order().unwrap_or(1);
-    let mut by_order = vec![0.0; greatest as usize + 1];
-    for reach in &network.reaches {
-        let within = reach.line.0.iter().any(|p| sheet.holds(sheet.at(*p)));
-        if let Some(order) = reach.order.filter(|_| within) {
-            let length: f64 =
-                reach.line.0.windows(2).map(|w| (sx * (w[1].x - w[0].x)).hypot(sy * (w[1].y - w[0].y))).sum();
-            by_order[order.strahler as usize] += length;
-        }
-    }
-    let area = sheet.width() * sheet.height();
-    let above = |from: u32| by_order[from as usize..].iter().sum::<f64>() / area;
-    (1..=greatest).find(|from| above(*from) <= MOST_DENSE).unwrap_or(greatest)
+/// What the map can hold of a network.
+fn shown<'a>(network: &'a Network, sheet: &Sheet) -> Printable<'a> {
+    printable(network, |p| sheet.at(p), Bounds { min: sheet.min, max: sheet.max }, MOST_DENSE)
 }
 
-fn drawn<'a>(network: &'a Network, sheet: &Sheet) -> Vec<Drawn<'a>> {
-    let least = least_order(network, sheet);
-    let mut all: Vec<Drawn> = network
-        .reaches
-        .iter()
-        .filter(|r| r.order.is_none_or(|o| o.strahler >= least))
-        .filter_map(|reach| {
-            let line: Vec<Point> = reach.line.0.iter().map(|p| sheet.at(*p)).collect();
-            let bounds = Bounds::of(line.iter().copied())?;
-            let frame = Bounds { min: sheet.min, max: sheet.max };
-            let touches = overlap(
-                Bounds { min: bounds.min, max: Point::new(bounds.max.x + 1e-9, bounds.max.y + 1e-9) },
-                frame,
-            );
-            let width = order_width(reach.order.map(|o| o.strahler + 1 - least.min(o.strahler)));
-            touches.then(|| Drawn { reach, line: simplified(&line, FINEST_MM), width })
-        })
-        .collect();
+fn drawn<'a>(shown: &Printable<'a>, sheet: &Sheet) -> Vec<Drawn<'a>> {
+    let frame = Bounds { min: sheet.min, max: sheet.max };
+    let one = |reach: &&'a Reach| {
+        let line: Vec<Point> = reach.line.0.iter().map(|p| sheet.at(*p)).collect();
+        let Bounds { min, max } = Bounds::of(line.iter().copied())?;
+        let touches = overlap(Bounds { min, max: Point::new(max.x + 1e-9, max.y + 1e-9) }, frame);
+        let width = order_width(reach.order.map(|o| o.strahler + 1 - shown.least_order));
+        touches.then(|| Drawn { reach, line: simplified(&line, FINEST_MM), width })
+    };
+    let mut all: Vec<Drawn> = shown.reaches.iter().filter_map(one).collect();
     // Trunks over tributaries.
     all.sort_by(|a, b| a.width.total_cmp(&b.width));
     all
@@ -99,8 +79,8 @@ fn ink(drawn: &Drawn, theme: &Theme) -> Stroke {
 
 /// What lies under everything else: changed ground and divides.
 pub(super) fn draw_ground(sketch: &mut Sketch, network: &MapNetwork, sheet: &Sheet, theme: &Theme) {
-    if let Some((map, px)) = network.change {
-        change(sketch, map, px, sheet, theme);
+    if let Some(changed) = network.change {
+        change(sketch, changed, sheet, theme);
     }
     for divide in &network.divides {
         for ring in divide.rings() {
@@ -120,7 +100,8 @@ pub(super) fn draw_ground(sketch: &mut Sketch, network: &MapNetwork, sheet: &She
 
 /// The network: all halos first, then the lines from the thinnest to the heaviest, then the marks.
 pub(super) fn draw(sketch: &mut Sketch, network: &MapNetwork, sheet: &Sheet, theme: &Theme) {
-    let lines = drawn(network.network, sheet);
+    let shown = shown(network.network, sheet);
+    let lines = drawn(&shown, sheet);
     for d in &lines {
         let halo = theme.stroke(theme.halo.with_alpha(215), d.width + 2.6 * theme.widths.thin);
         sketch.polyline(d.line.clone(), halo);
@@ -136,7 +117,7 @@ pub(super) fn draw(sketch: &mut Sketch, network: &MapNetwork, sheet: &Sheet, the
     }
     picks(sketch, &lines, theme);
     senses(sketch, &lines, theme);
-    ends(sketch, network.network, sheet, theme);
+    ends(sketch, network.network, shown.least_order, sheet, theme);
 }
 
 /// Small paper dots along what the user drew.
@@ -175,12 +156,11 @@ fn senses(sketch: &mut Sketch, lines: &[Drawn], theme: &Theme) {
 }
 
 /// Rings at heads, squares at outlets, no closer together than print wants.
-fn ends(sketch: &mut Sketch, network: &Network, sheet: &Sheet, theme: &Theme) {
+fn ends(sketch: &mut Sketch, network: &Network, least: u32, sheet: &Sheet, theme: &Theme) {
     let mut taken = BTreeSet::new();
     let mut free = |at: Point, pitch: f64| {
         sheet.holds(at) && taken.insert(((at.x / pitch).floor() as i64, (at.y / pitch).floor() as i64))
     };
-    let least = least_order(network, sheet);
     let water = Theme::light().water;
     for node in network.outlets() {
         let at = sheet.at(network.nodes[node].at);
@@ -201,7 +181,7 @@ fn ends(sketch: &mut Sketch, network: &Network, sheet: &Sheet, theme: &Theme) {
 }
 
 /// Raised ground in the colour of caution, cut ground in ink, both deeper where more was changed.
-fn change(sketch: &mut Sketch, map: &Grid<f32>, px: f64, sheet: &Sheet, theme: &Theme) {
+fn change(sketch: &mut Sketch, (map, at, px): (&Grid<f32>, Point, f64), sheet: &Sheet, theme: &Theme) {
     let most = map.valid_values().filter(|v| v.is_finite()).map(f32::abs).fold(0.0, f32::max);
     if most <= 0.0 || map.is_empty() {
         return;
@@ -217,9 +197,9 @@ fn change(sketch: &mut Sketch, map: &Grid<f32>, px: f64, sheet: &Sheet, theme: &
             rgba.extend(tone.with_alpha(alpha).0);
         }
     }
-    let max = Point::new(px * map.width() as f64, px * map.height() as f64);
+    let max = Point::new(at.x + px * map.width() as f64, at.y + px * map.height() as f64);
     let (width, height) = (map.width(), map.height());
-    let (min, max) = (sheet.at(Point::default()), sheet.at(max));
+    let (min, max) = (sheet.at(at), sheet.at(max));
     sketch.items.push(Item::Image { min, max, width, height, rgba: rgba.into() });
 }
 
@@ -259,7 +239,7 @@ pub(super) fn draw_name(
     ];
     let places = offsets.map(|(x, y)| inside(anchor.x + x * half_width, anchor.y + y * (half_height + 1.0)));
     // Where the fewest channels run beneath, away from other names.
-    let lines = drawn(network.network, sheet);
+    let lines = drawn(&shown(network.network, sheet), sheet);
     let covered = |p: Point| -> (usize, f64) {
         let label = around(p, half_width, half_height);
         let within = |q: &Point| {
@@ -310,7 +290,7 @@ pub fn network_key(view: &MapView, networks: &[MapNetwork], size_mm: [f64; 2], t
     let greatest = networks.iter().filter_map(|n| n.network.greatest_order()).max();
     match greatest {
         Some(most) => {
-            let least = networks.iter().map(|n| least_order(n.network, &sheet)).max().unwrap_or(1);
+            let least = networks.iter().map(|n| shown(n.network, &sheet).least_order).max().unwrap_or(1);
             let few = most - least.min(most) < 4;
             let orders =
                 (least..=most).filter(|o| few || [least, most, (least + most).div_ceil(2)].contains(o));
@@ -339,11 +319,16 @@ pub fn network_key(view: &MapView, networks: &[MapNetwork], size_mm: [f64; 2], t
     when(any(&|r| r.origin == ReachOrigin::Traced), Sign::Picks, "drawn by hand");
     let sure = |r: &Reach| !(1.0 - SURE..=SURE).contains(&r.sense.probability());
     when(any(&sure), Sign::Arrow, "flow, p > 0.95");
-    when(networks.iter().any(|n| !n.network.heads().is_empty()), Sign::Ring, "head");
+    let headed = |n: &MapNetwork| shown(n.network, &sheet).least_order == 1 && !n.network.heads().is_empty();
+    when(networks.iter().any(headed), Sign::Ring, "head");
     when(networks.iter().any(|n| !n.network.outlets().is_empty()), Sign::Square, "outlet");
     when(networks.iter().any(|n| !n.divides.is_empty()), Sign::Divide, "divide");
-    when(networks.iter().any(|n| n.change.is_some()), Sign::Raised, "raised");
-    when(networks.iter().any(|n| n.change.is_some()), Sign::Cut, "cut");
+    let changed = |sign: f32| {
+        let values = networks.iter().filter_map(|n| n.change).flat_map(|(map, _, _)| map.valid_values());
+        values.into_iter().any(|v| sign * v > 0.0)
+    };
+    when(changed(1.0), Sign::Raised, "raised");
+    when(changed(-1.0), Sign::Cut, "cut");
     let mut sketch = Sketch::default();
     let look = Type::new(theme.text.small, theme.ink);
     let (sign_mm, row) = (5.0, 3.6);

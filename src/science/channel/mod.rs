@@ -1,6 +1,7 @@
 //! Channels on images: response, proposal, widths, sense, and the pen.
 
 mod bridge;
+mod belief;
 pub mod chance;
 mod cost;
 pub mod detect;
@@ -17,3 +18,4 @@ use crate::ground::Method;
 /// The methods of this family.
 pub const METHODS: &[&Method] =
     &[&response::METHOD, &detect::METHOD, &cost::METHOD, &pen::METHOD, &chance::METHOD];
+pub const METHODS: &[&Method] = &[&cost::METHOD, &pen::METHOD, &chance::METHOD, &sense::METHOD];

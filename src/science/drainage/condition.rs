@@ -7,8 +7,9 @@ use serde::{Deserialize, Serialize};
 use crate::ground::{Grid, Polygon, Stopped, Work};
 
 use super::cells::Cells;
+use super::fill::Basins;
 use super::routing::STEPS;
-use super::{fill, flats};
+use super::{breach, flats};
 
 /// How sinks are dealt with.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
@@ -81,8 +82,27 @@ pub fn condition(
 ) -> Result<Conditioned, Stopped> {
     let elevation = &finite(elevation);
     let outlets = closed_sinks(elevation, closed);
-    let surface = fill::fill(elevation, &outlets, work)?;
-    let changed = changed(elevation, &surface, cells);
+    let mut basins = Basins::of(elevation, &outlets, work)?;
+    let sinks = basins.sinks(elevation);
+    let mut counts = Changed { left_closed: outlets.len(), filled: sinks.len(), ..Changed::default() };
+    counts.sinks = counts.left_closed + counts.filled;
+    let limits = match how {
+        Conditioning::Fill | Conditioning::FillSloped => None,
+        Conditioning::Breach => Some(None),
+        Conditioning::BreachThenFill => Some(Some(limits)),
+    };
+    let surface = match limits {
+        None => basins.fill(elevation, work)?,
+        Some(limits) => {
+            drop(basins);
+            let mut cut = Grid::clone(elevation);
+            counts.breached = breach::breach(&mut cut, cells, &sinks, &outlets, limits, work)?;
+            counts.filled -= counts.breached;
+            basins = Basins::of(&cut, &outlets, work)?;
+            basins.fill(&cut, work)?
+        }
+    };
+    let changed = changed(elevation, &surface, cells, counts);
     let flats = flats::drain(&surface, cells, &outlets, how != Conditioning::Fill, work)?;
     Ok(Conditioned { surface, changed, flats })
 }
@@ -141,8 +161,8 @@ fn lowest_sink(elevation: &Grid<f32>, polygon: &Polygon) -> Option<usize> {
 }
 
 /// What became of the elevation, with the ground areas of the cells.
-fn changed(elevation: &Grid<f32>, surface: &Grid<f32>, cells: &Cells) -> Changed {
-    let mut changed = Changed { valid_cells: surface.valid_count(), ..Changed::default() };
+fn changed(elevation: &Grid<f32>, surface: &Grid<f32>, cells: &Cells, counts: Changed) -> Changed {
+    let mut changed = Changed { valid_cells: surface.valid_count(), ..counts };
     let width = elevation.width().max(1);
     for (row, (before, after)) in
         elevation.values().chunks(width).zip(surface.values().chunks(width)).enumerate()

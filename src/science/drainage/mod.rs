@@ -2,6 +2,7 @@
 
 pub mod accumulate;
 pub mod basins;
+mod breach;
 pub mod cells;
 pub mod condition;
 mod curvature;
@@ -25,6 +26,7 @@ use crate::ground::Method;
 /// The methods of this family.
 pub const METHODS: &[&Method] = &[
     &fill::METHOD,
+    &breach::METHOD,
     &flats::METHOD,
     &d8::METHOD,
     &d_infinity::METHOD,

@@ -5,6 +5,7 @@ mod ascent;
 mod branch;
 mod chi;
 pub mod compare;
+mod course;
 pub mod density;
 pub mod flow;
 pub mod hierarchy;
@@ -14,6 +15,7 @@ mod kinds;
 mod knickpoints;
 mod line;
 mod path;
+pub mod meanders;
 pub mod pattern;
 pub mod planform;
 pub mod profile;
@@ -37,3 +39,4 @@ pub const METHODS: &[&Method] = &[
     &pattern::METHOD,
     &compare::METHOD,
 ];
+pub const METHODS: &[&Method] = &[&planform::METHOD, &meanders::METHOD, &flow::METHOD];

@@ -382,6 +382,7 @@ pub fn tree_finding(place: &Place) -> NetworkFinding {
                 left_closed: 1,
             },
             change_map: Grid::from_fn(150, 112, change),
+            change_map_at: Point::default(),
             change_map_px: 8.0,
             router: Router::DInfinity,
             channels,
