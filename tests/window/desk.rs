@@ -225,11 +225,16 @@ fn the_window_finds_what_the_command_line_finds() {
         !model.sheet.patches.is_empty()
             && model.sheet.patches.iter().all(current)
             && model.session.results.together().is_some()
+            && model.session.results.networks_wanting(&model.sheet).is_empty()
     });
     let results = &harness.state().app().model().session.results;
     for patch in &want.patches {
         let got = results.patch(patch.id).expect("the window has measured it");
         assert_eq!(format!("{got:?}"), format!("{patch:?}"), "{}", patch.name);
+    }
+    for network in &want.networks {
+        let got = results.network(network.id).expect("the window has measured it");
+        assert_eq!(format!("{got:?}"), format!("{network:?}"), "{}", network.name);
     }
     assert_eq!(results.together(), Some(&want.together));
     for wind in &want.winds {

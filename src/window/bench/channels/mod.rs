@@ -10,7 +10,7 @@ use egui::{RichText, Ui};
 
 use super::say;
 use crate::desk::{
-    Command, DrawCommand, Model, NetworkCommand, Tool, ViewCommand, channel_facts, channels, planform_facts,
+    Command, Dialog, DrawCommand, Model, NetworkCommand, Tool, ViewCommand, channel_facts, channels, planform_facts,
 };
 use crate::study::{NetworkEntry, NetworkSource};
 use crate::window::controls::{self, Commands, button, caution, heading, line, look, quiet, rule, toggle};
@@ -103,6 +103,7 @@ fn tools(ui: &mut Ui, model: &Model, network: &NetworkEntry, out: &mut Commands)
             toggle(ui, model, out, Command::View(ViewCommand::Divides), "Divides", layers.divides);
             toggle(ui, model, out, Command::View(ViewCommand::Changes), "Changed ground", layers.changes);
         }
+        quiet(ui, model, out, Command::View(ViewCommand::Open(Dialog::Settings)), "Settings…");
     });
     rule(ui, &look(model));
 }
