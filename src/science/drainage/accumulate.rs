@@ -44,8 +44,8 @@ const PAUSE: usize = 1 << 14;
 const DONE: u8 = u8::MAX;
 /// One cell to wait for, above the four bits of a code.
 const WAITING: u8 = 16;
-/// Side of the tiles that are walked one after another.
-pub(super) const TILE: usize = 64;
+/// Rows and columns of the tiles that are walked one after another: long rows keep the number of memory pages low.
+pub(super) const TILE: [usize; 2] = [32, 256];
 
 /// Contributing area of every cell, its own included, m². What leaves through the outlets adds up to the area of
 /// all valid cells.
@@ -117,8 +117,8 @@ fn walk_down(
     let height = states.len().checked_div(width).unwrap_or(0);
     let mut done = 0;
     for (top, left) in tiles(width, height) {
-        for row in top..height.min(top + TILE) {
-            let span = row * width + left..row * width + width.min(left + TILE);
+        for row in top..height.min(top + TILE[0]) {
+            let span = row * width + left..row * width + width.min(left + TILE[1]);
             for first in span {
                 if states[first] >= WAITING {
                     continue;
@@ -149,7 +149,7 @@ fn walk_down(
 
 /// Upper left corners of the tiles of a raster, (row, column).
 pub(super) fn tiles(width: usize, height: usize) -> impl Iterator<Item = (usize, usize)> {
-    (0..height).step_by(TILE).flat_map(move |top| (0..width).step_by(TILE).map(move |left| (top, left)))
+    (0..height).step_by(TILE[0]).flat_map(move |top| (0..width).step_by(TILE[1]).map(move |left| (top, left)))
 }
 
 /// Copies codes between the margins.
