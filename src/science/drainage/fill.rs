@@ -4,9 +4,9 @@ use rayon::prelude::*;
 
 use crate::ground::{Grid, Method, Read, Source, Stopped, Symbol, Work};
 
-use super::accumulate::{TILE, tiles};
 use super::d8::{LEVEL, Rows, steepest};
 use super::routing::{STEPS, VOID};
+use super::walk::{TILE, tiles};
 
 /// The record of filling.
 pub const METHOD: Method = Method {

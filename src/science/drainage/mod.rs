@@ -13,6 +13,7 @@ pub mod flats;
 pub mod heads;
 pub mod multiple;
 pub mod routing;
+mod walk;
 
 use crate::ground::Method;
 
