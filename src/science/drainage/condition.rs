@@ -7,7 +7,7 @@ use serde::{Deserialize, Serialize};
 use crate::ground::{Grid, Polygon, Stopped, Work};
 
 use super::cells::Cells;
-use super::fill::Basins;
+use super::fill::{Basins, Filled};
 use super::routing::STEPS;
 use super::{breach, flats};
 
@@ -91,7 +91,7 @@ pub fn condition(
         Conditioning::Breach => Some(None),
         Conditioning::BreachThenFill => Some(Some(limits)),
     };
-    let surface = match limits {
+    let Filled { surface, bytes, words } = match limits {
         None => basins.fill(elevation, work)?,
         Some(limits) => {
             drop(basins);
@@ -103,7 +103,7 @@ pub fn condition(
         }
     };
     let changed = changed(elevation, &surface, cells, counts);
-    let flats = flats::drain(&surface, cells, &outlets, how != Conditioning::Fill, work)?;
+    let flats = flats::drain(&surface, (bytes, words), cells, &outlets, how != Conditioning::Fill, work)?;
     Ok(Conditioned { surface, changed, flats })
 }
 
@@ -115,7 +115,7 @@ impl Conditioned {
     pub fn untouched(elevation: &Grid<f32>, cells: &Cells, work: &Work) -> Result<Self, Stopped> {
         let surface = finite(elevation).into_owned();
         let changed = Changed { valid_cells: surface.valid_count(), ..Changed::default() };
-        let flats = flats::drain(&surface, cells, &[], true, work)?;
+        let flats = flats::drain(&surface, (Vec::new(), Vec::new()), cells, &[], true, work)?;
         Ok(Self { surface, changed, flats })
     }
 }

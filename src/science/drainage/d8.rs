@@ -48,7 +48,7 @@ pub(super) const LEVEL: u8 = 10;
 pub fn receivers(conditioned: &Conditioned, cells: &Cells, work: &Work) -> Result<Receivers, Stopped> {
     let surface = &conditioned.surface;
     let (width, height) = (surface.width(), surface.height());
-    let mut codes = vec![VOID; surface.len()];
+    let mut codes = vec![0; surface.len()];
     work.phase("directions", height as u64);
     codes.par_chunks_mut((BLOCK * width).max(1)).enumerate().try_for_each(|(block, out)| {
         let first = block * BLOCK;

@@ -4,9 +4,9 @@ use rayon::prelude::*;
 
 use crate::ground::{Grid, Method, Read, Source, Stopped, Symbol, Work};
 
-use super::accumulate::{TILE, tiles};
 use super::d8::{LEVEL, Rows, steepest};
 use super::routing::{STEPS, VOID};
+use super::walk::{TILE, tiles};
 
 /// The record of filling.
 pub const METHOD: Method = Method {
@@ -62,6 +62,15 @@ pub(super) struct Basins {
     /// A cell of the minimum of each basin; the first stands for the outside.
     minima: Vec<usize>,
     passes: Passes,
+    /// Step to the steepest neighbour, as found on the way; room to be used again.
+    codes: Vec<u8>,
+}
+
+/// A filled surface and the room that filling took: a byte and a word a cell, of no meaning.
+pub(super) struct Filled {
+    pub(super) surface: Grid<f32>,
+    pub(super) bytes: Vec<u8>,
+    pub(super) words: Vec<u32>,
 }
 
 impl Basins {
@@ -71,13 +80,13 @@ impl Basins {
     /// [`Stopped`].
     pub(super) fn of(elevation: &Grid<f32>, outlets: &[usize], work: &Work) -> Result<Self, Stopped> {
         work.phase("basins", 3 * elevation.height() as u64);
-        let (labels, minima) = label(elevation, work)?;
+        let (codes, labels, minima) = label(elevation, work)?;
         let mut passes = Passes::new(minima.len());
         find_passes(elevation, &labels, &mut passes, work)?;
         for i in outlets {
             passes.lower(OUTSIDE, labels[*i], elevation.values()[*i]);
         }
-        Ok(Self { labels, minima, passes })
+        Ok(Self { labels, minima, passes, codes })
     }
 
     /// A cell of the floor of every sink: every minimum below its lowest pass.
@@ -97,8 +106,8 @@ impl Basins {
     ///
     /// # Errors
     /// [`Stopped`].
-    pub(super) fn fill(self, elevation: &Grid<f32>, work: &Work) -> Result<Grid<f32>, Stopped> {
-        let Self { labels, minima, passes } = self;
+    pub(super) fn fill(self, elevation: &Grid<f32>, work: &Work) -> Result<Filled, Stopped> {
+        let Self { labels, minima, passes, codes } = self;
         let levels = passes.levels(minima.len(), work)?;
         let width = elevation.width();
         work.phase("filling", elevation.height() as u64);
@@ -113,12 +122,14 @@ impl Basins {
             work.advance((out.len() / width) as u64)
         })?;
         let mask = elevation.mask().map(<[bool]>::to_vec);
-        Ok(Grid::from_parts(width, elevation.height(), filled, mask))
+        let surface = Grid::from_parts(width, elevation.height(), filled, mask);
+        Ok(Filled { surface, bytes: codes, words: labels })
     }
 }
 
-/// Follows every cell down to its minimum. Minima of one height that touch are one.
-fn label(elevation: &Grid<f32>, work: &Work) -> Result<(Vec<u32>, Vec<usize>), Stopped> {
+/// Follows every cell down to its minimum: steps, basins and a cell of each minimum. Minima of one height that touch
+/// are one.
+fn label(elevation: &Grid<f32>, work: &Work) -> Result<(Vec<u8>, Vec<u32>, Vec<usize>), Stopped> {
     let width = elevation.width();
     let mut codes = vec![VOID; elevation.len()];
     codes.par_chunks_mut((BLOCK * width).max(1)).enumerate().try_for_each(|(block, out)| {
@@ -137,8 +148,8 @@ fn label(elevation: &Grid<f32>, work: &Work) -> Result<(Vec<u32>, Vec<usize>), S
     // Tile by tile, so that what a walk touches is at hand.
     let height = elevation.height();
     let tiled = tiles(width, height).flat_map(|(top, left)| {
-        let rows = top..height.min(top + TILE);
-        rows.flat_map(move |row| row * width + left..row * width + width.min(left + TILE))
+        let rows = top..height.min(top + TILE[0]);
+        rows.flat_map(move |row| row * width + left..row * width + width.min(left + TILE[1]))
     });
     let mut done = 0;
     for first in tiled {
@@ -186,7 +197,7 @@ fn label(elevation: &Grid<f32>, work: &Work) -> Result<(Vec<u32>, Vec<usize>), S
             at = at.wrapping_add_signed(offsets[usize::from(codes[at])]);
         }
     }
-    Ok((labels, minima))
+    Ok((codes, labels, minima))
 }
 
 /// The lowest pass of each pair of basins that touch, and of each basin to the outside.
@@ -292,25 +303,36 @@ impl Passes {
     /// The level to which each basin fills: the highest pass on its best way outside. The best ways are those of
     /// the tree of lowest passes (Kruskal), walked from the outside in.
     fn levels(self, basins: usize, work: &Work) -> Result<Vec<f32>, Stopped> {
-        let mut passes: Vec<(u32, u32, f32)> = self.iter().collect();
+        // Whole numbers that sort by height, then by basins.
+        let packed = |(a, b, z): (u32, u32, f32)| {
+            let bits = z.to_bits();
+            let height = if bits >> 31 == 1 { !bits } else { bits | 1 << 31 };
+            u128::from(height) << 64 | u128::from(a) << 32 | u128::from(b)
+        };
+        let mut passes: Vec<u128> = self.iter().map(packed).collect();
         drop(self);
         work.advance(0)?;
-        passes.par_sort_unstable_by(|(a, b, z), (c, d, y)| z.total_cmp(y).then((a, b).cmp(&(c, d))));
+        passes.par_sort_unstable();
         work.advance(0)?;
         let mut parents: Vec<u32> = (0..basins as u32).collect();
         let mut done = 0;
         let mut stopped = false;
-        passes.retain(|(a, b, _)| {
+        passes.retain(|pass| {
             done += 1;
             stopped = stopped || (done % PAUSE == 0 && work.advance(0).is_err());
-            let (a, b) = (root(&mut parents, *a), root(&mut parents, *b));
+            let (a, b) = (root(&mut parents, (pass >> 32) as u32), root(&mut parents, *pass as u32));
             parents[a.max(b) as usize] = a.min(b);
             a != b
         });
         if stopped {
             return Err(Stopped);
         }
-        Ok(walk(&passes, basins))
+        let tree = passes.into_iter().map(|pass| {
+            let height = (pass >> 64) as u32;
+            let bits = if height >> 31 == 1 { height ^ 1 << 31 } else { !height };
+            ((pass >> 32) as u32, pass as u32, f32::from_bits(bits))
+        });
+        Ok(walk(&tree.collect::<Vec<_>>(), basins))
     }
 }
 

@@ -64,21 +64,27 @@ const FLAT: u8 = 11;
 const PAUSE: usize = 1 << 14;
 
 /// The receiver of every cell without a lower neighbour, row by row; other cells hold [`LOWER`] or [`VOID`].
-/// `outlets` drain out whatever lies beside them. With `sloped`, water gathers along the middle of a flat.
+/// `room` may hold anything. `outlets` drain out whatever lies beside them. With `sloped`, water gathers along the middle of a flat.
 ///
 /// # Errors
 /// [`Stopped`].
 pub(super) fn drain(
     surface: &Grid<f32>,
+    room: (Vec<u8>, Vec<u32>),
     cells: &Cells,
     outlets: &[usize],
     sloped: bool,
     work: &Work,
 ) -> Result<Vec<u8>, Stopped> {
     work.phase("flats", 3 * surface.height() as u64);
-    let mut codes = level(surface, work)?;
+    let (mut codes, mut steps) = room;
+    level(surface, &mut codes, work)?;
     outlets.iter().for_each(|i| codes[*i] = OUT);
-    let mut flats = Flats::new(surface, codes);
+    if sloped {
+        steps.clear();
+        steps.resize(surface.len(), 0);
+    }
+    let mut flats = Flats::new(surface, codes, sloped.then_some(steps));
     let rims = flats.find_ways_out(sloped, work)?;
     flats.close_the_rest(work)?;
     if sloped {
@@ -88,9 +94,9 @@ pub(super) fn drain(
 }
 
 /// Sorts cells into [`LOWER`], [`VOID`], [`OUT`] (level, beside missing ground or the edge) and [`FLAT`].
-fn level(surface: &Grid<f32>, work: &Work) -> Result<Vec<u8>, Stopped> {
+fn level(surface: &Grid<f32>, codes: &mut Vec<u8>, work: &Work) -> Result<(), Stopped> {
     let width = surface.width();
-    let mut codes = vec![VOID; surface.len()];
+    codes.resize(surface.len(), VOID);
     codes.par_chunks_mut((BLOCK * width).max(1)).enumerate().try_for_each(|(block, out)| {
         let mut rows = Rows::new(surface, block * BLOCK);
         for out in out.chunks_mut(width) {
@@ -99,8 +105,7 @@ fn level(surface: &Grid<f32>, work: &Work) -> Result<Vec<u8>, Stopped> {
             work.advance(1)?;
         }
         Ok(())
-    })?;
-    Ok(codes)
+    })
 }
 
 #[multiversion(targets("x86_64+avx2"))]
@@ -150,7 +155,7 @@ struct Flats<'a> {
     width: usize,
     offsets: [isize; 8],
     codes: Vec<u8>,
-    /// t of a cell of a flat, 0 before it is reached; later the gradient.
+    /// t of a cell of a flat, 0 before it is reached; later the gradient. Empty where no gradient is wanted.
     steps: Vec<u32>,
     done: usize,
 }
@@ -159,10 +164,10 @@ struct Flats<'a> {
 const COMPLETE: u32 = 1 << 31;
 
 impl<'a> Flats<'a> {
-    fn new(surface: &'a Grid<f32>, codes: Vec<u8>) -> Self {
+    fn new(surface: &'a Grid<f32>, codes: Vec<u8>, steps: Option<Vec<u32>>) -> Self {
         let width = surface.width();
         let offsets = STEPS.map(|(dx, dy)| dy * width as isize + dx);
-        Self { z: surface.values(), width, offsets, codes, steps: vec![0; surface.len()], done: 0 }
+        Self { z: surface.values(), width, offsets, codes, steps: steps.unwrap_or_default(), done: 0 }
     }
 
     /// Looks at Stop now and then.
@@ -203,7 +208,9 @@ impl<'a> Flats<'a> {
         let mut front = Vec::with_capacity(exits.len());
         for (i, exit) in exits {
             self.codes[i] = exit;
-            self.steps[i] = 1;
+            if let Some(t) = self.steps.get_mut(i) {
+                *t = 1;
+            }
             front.push(i);
         }
         self.spread(front, work)?;
@@ -212,7 +219,7 @@ impl<'a> Flats<'a> {
 
     /// Steps on from drained cells of flats, ring by ring.
     fn spread(&mut self, mut front: Vec<usize>, work: &Work) -> Result<(), Stopped> {
-        let mut next = Vec::new();
+        let (mut next, mut steps) = (Vec::new(), 2);
         while !front.is_empty() {
             for i in front.drain(..) {
                 self.pause(work)?;
@@ -220,11 +227,14 @@ impl<'a> Flats<'a> {
                     let j = i.wrapping_add_signed(*offset);
                     if self.codes[j] == FLAT {
                         self.codes[j] = (k as u8 + 4) % 8;
-                        self.steps[j] = self.steps[i] + 1;
+                        if let Some(t) = self.steps.get_mut(j) {
+                            *t = steps;
+                        }
                         next.push(j);
                     }
                 }
             }
+            steps += 1;
             std::mem::swap(&mut front, &mut next);
         }
         Ok(())
@@ -233,7 +243,11 @@ impl<'a> Flats<'a> {
     /// Flats without a way out drain to their first cell, which stays closed.
     fn close_the_rest(&mut self, work: &Work) -> Result<(), Stopped> {
         for row in 0..self.z.len() / self.width.max(1) {
-            for i in row * self.width..(row + 1) * self.width {
+            let span = row * self.width..(row + 1) * self.width;
+            if !self.codes[span.clone()].contains(&FLAT) {
+                continue;
+            }
+            for i in span {
                 if self.codes[i] == FLAT {
                     self.codes[i] = OUT;
                     // Its neighbours of the flat are exits; itself it is none and takes no part in the gradient.
@@ -242,7 +256,9 @@ impl<'a> Flats<'a> {
                         let j = i.wrapping_add_signed(*offset);
                         if self.codes[j] == FLAT {
                             self.codes[j] = (k as u8 + 4) % 8;
-                            self.steps[j] = 1;
+                            if let Some(t) = self.steps.get_mut(j) {
+                                *t = 1;
+                            }
                             front.push(j);
                         }
                     }

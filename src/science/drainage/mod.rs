@@ -21,6 +21,7 @@ pub mod routing;
 pub mod smoothness;
 mod sources;
 mod tree;
+mod walk;
 
 use crate::ground::Method;
 
