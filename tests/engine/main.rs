@@ -11,6 +11,7 @@ mod jpeg_writer;
 mod layouts;
 mod netcdf;
 mod netcdf_writer;
+mod network_measures;
 mod obstacle;
 mod orientation;
 mod plates;

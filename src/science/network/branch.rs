@@ -73,7 +73,8 @@ impl<'a> Graph<'a> {
                 let from = branch.line[branch.line.len() - 1];
                 way += (to.0 - from.0).hypot(to.1 - from.1);
                 branch.line.push(to);
-                if to.0.hypot(to.1) >= chord {
+                // A channel exactly one chord long is whole, whatever the last digit says.
+                if to.0.hypot(to.1) >= chord * (1.0 - 1e-9) {
                     branch.is_whole = true;
                     return branch;
                 }
