@@ -38,6 +38,6 @@ pub use network::{
 pub use place::{Frame, LatitudeKind, LengthUnit, Place, PlaceError};
 pub use projection::{LonLat, Projection, ProjectionError};
 pub use seed::Seed;
-pub use shape::{Bounds, Point, Polygon, Polyline};
+pub use shape::{Bounds, Nearest, Point, Polygon, Polyline};
 pub use wind_record::{WindRecord, WindSample};
 pub use work::{Progress, Stopped, Work};

@@ -79,10 +79,53 @@ impl Bounds {
     }
 }
 
+/// The place on a polyline that lies nearest to a point.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Nearest {
+    pub at: Point,
+    pub distance: f64,
+    /// Length of the line up to it.
+    pub along: f64,
+}
+
 impl Polyline {
     /// Length in the plane of the points.
     pub fn length(&self) -> f64 {
         self.0.windows(2).map(|w| w[0].distance(w[1])).sum()
+    }
+
+    /// Where the line passes nearest to `p`, the first such place; `None` for fewer than two points.
+    pub fn nearest(&self, p: Point) -> Option<Nearest> {
+        let mut best: Option<Nearest> = None;
+        let mut before = 0.0;
+        for w in self.0.windows(2) {
+            let at = foot(p, w[0], w[1]);
+            let distance = p.distance(at);
+            if best.is_none_or(|b| distance < b.distance) {
+                best = Some(Nearest { at, distance, along: before + w[0].distance(at) });
+            }
+            before += w[0].distance(w[1]);
+        }
+        best
+    }
+
+    /// The pieces between cuts at lengths `at` along the line, which must rise; pieces share their ends.
+    pub fn cut(&self, at: &[f64]) -> Vec<Self> {
+        let mut pieces = vec![Vec::from_iter(self.0.first().copied())];
+        let (mut before, mut next) = (0.0, 0);
+        for w in self.0.windows(2) {
+            let length = w[0].distance(w[1]);
+            while next < at.len() && at[next] < before + length {
+                let t = ((at[next] - before) / length).clamp(0.0, 1.0);
+                let p = Point::new(w[0].x + t * (w[1].x - w[0].x), w[0].y + t * (w[1].y - w[0].y));
+                pieces.last_mut().into_iter().for_each(|piece| piece.push(p));
+                pieces.push(vec![p]);
+                next += 1;
+            }
+            pieces.last_mut().into_iter().for_each(|piece| piece.push(w[1]));
+            before += length;
+        }
+        pieces.into_iter().filter(|piece| piece.len() >= 2).map(Self).collect()
     }
 }
 
@@ -173,11 +216,16 @@ fn ring_contains(ring: &[Point], p: Point) -> bool {
 }
 
 fn segment_distance(p: Point, a: Point, b: Point) -> f64 {
+    p.distance(foot(p, a, b))
+}
+
+/// The point of the segment from `a` to `b` that is nearest to `p`.
+fn foot(p: Point, a: Point, b: Point) -> Point {
     let (dx, dy) = (b.x - a.x, b.y - a.y);
     let squared = dx * dx + dy * dy;
     let t =
         if squared > 0.0 { (((p.x - a.x) * dx + (p.y - a.y) * dy) / squared).clamp(0.0, 1.0) } else { 0.0 };
-    p.distance(Point::new(a.x + t * dx, a.y + t * dy))
+    Point::new(a.x + t * dx, a.y + t * dy)
 }
 
 #[cfg(test)]

@@ -66,6 +66,8 @@ pub struct DrainageFinding {
     /// Depth raised (positive) or cut (negative) in metres, reduced for show, and full-resolution pixels a cell.
     pub change_map: Grid<f32>,
     pub change_map_px: f64,
+    /// Its upper left corner, full-resolution pixels.
+    pub change_map_at: Point,
     pub router: Router,
     pub channels: Channels,
     /// Greatest first.
@@ -88,4 +90,11 @@ pub struct TracingFinding {
     pub loops: usize,
     /// Where the user's arrows found no reach.
     pub lost_arrows: Vec<Point>,
+}
+
+impl NetworkFinding {
+    /// `"elevation"` or `"image"`.
+    pub fn source_in_words(&self) -> &'static str {
+        if self.drainage.is_some() { "elevation" } else { "image" }
+    }
 }

@@ -1,6 +1,8 @@
 //! A channel network: nodes and the reaches between them, from elevation or traced on an image.
 
+mod edit;
 mod graph;
+mod join;
 mod order;
 mod placed;
 

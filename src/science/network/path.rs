@@ -113,7 +113,7 @@ impl Paths {
 
 /// Stations of a reach without the one at its lower node, where the ground of the channel below is counted too;
 /// at an outlet all of them.
-pub(super) fn own_stations<'a>(network: &'a Network, reach: usize, is_outlet: bool) -> &'a [Station] {
+pub(super) fn own_stations(network: &Network, reach: usize, is_outlet: bool) -> &[Station] {
     let reach = &network.reaches[reach];
     match reach.stations.split_last() {
         Some((last, others))

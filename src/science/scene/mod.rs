@@ -5,6 +5,7 @@ mod grating;
 pub mod reach;
 pub mod smooth;
 mod speckle;
+pub mod waterways;
 
 pub use dunes::DuneTexture;
 pub use grating::{Grating, WavyGrating, picture};

@@ -10,6 +10,7 @@ use crate::study::{
     TrendFinding, VerdictFinding, WindFinding,
 };
 
+use super::networks::networks;
 use super::records;
 use super::regimes::backwards;
 
@@ -28,7 +29,7 @@ pub fn findings_json(sheet: &Sheet, findings: &Findings) -> String {
         "patches": findings.patches.iter().map(patch).collect::<Vec<_>>(),
         "together": together(&findings.together),
         "regimes": findings.together.regimes.iter().map(backwards).collect::<Vec<_>>(),
-        "networks": [],
+        "networks": networks(findings),
         "errors": findings.failures.iter().map(|f| json!({ "what": f.what, "why": f.why })).collect::<Vec<_>>(),
     });
     let mut text = serde_json::to_string_pretty(&document).unwrap_or_default();

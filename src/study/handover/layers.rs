@@ -2,10 +2,11 @@
 
 use std::collections::BTreeMap;
 
+use super::network_layers::network_layers;
 use super::obstacles::outcrop_layer;
 use crate::files::layers::{Column, Geometry, GeometryKind, Layer, Row, Srs, Value};
 use crate::ground::{LengthUnit, Place, Point, Polyline};
-use crate::study::{Findings, Id, OpenRaster, PatchFinding, Sheet, Sources, VerdictFinding};
+use crate::study::{Findings, Id, NetworkFinding, OpenRaster, PatchFinding, Sheet, Sources, VerdictFinding};
 
 /// The columns of a table and its rows, without geometry.
 pub struct Table {
@@ -203,17 +204,20 @@ fn patch_values(p: &PatchFinding) -> Vec<Value> {
     ]
 }
 
-/// Patches and trend strokes of every raster, in the raster's own reference system.
+/// Patches, trend strokes, outcrops and channels of every raster, in the raster's own reference system.
 pub fn layers(sheet: &Sheet, findings: &Findings, sources: &Sources) -> Vec<Layer> {
-    let mut by_raster: BTreeMap<Id, Vec<&PatchFinding>> = BTreeMap::new();
+    let mut by_raster: BTreeMap<Id, (Vec<&PatchFinding>, Vec<&NetworkFinding>)> = BTreeMap::new();
     for patch in &findings.patches {
-        by_raster.entry(patch.raster).or_default().push(patch);
+        by_raster.entry(patch.raster).or_default().0.push(patch);
+    }
+    for network in &findings.networks {
+        by_raster.entry(network.raster).or_default().1.push(network);
     }
     let many = by_raster.len() > 1;
     by_raster
         .into_iter()
-        .filter_map(|(raster, patches)| Some((raster, sources.rasters.get(&raster)?, patches)))
-        .flat_map(|(raster, open, patches)| {
+        .filter_map(|(raster, on_it)| Some((raster, sources.rasters.get(&raster)?, on_it)))
+        .flat_map(|(raster, open, (patches, networks))| {
             let suffix = if many { format!("_{}", raster.0) } else { String::new() };
             let srs = srs(open);
             let outcrops = outcrop_layer(sheet, open, &patches, &srs, &suffix);
@@ -221,7 +225,9 @@ pub fn layers(sheet: &Sheet, findings: &Findings, sources: &Sources) -> Vec<Laye
                 patch_layer(sheet, open, &patches, &srs, &suffix),
                 stroke_layer(open, &patches, &srs, &suffix),
             ];
-            own.into_iter().chain(outcrops)
+            // A raster with networks alone has no patch layers.
+            let own = own.into_iter().filter(|_| !patches.is_empty());
+            own.chain(outcrops).chain(network_layers(open, &networks, &srs, &suffix)).collect::<Vec<_>>()
         })
         .collect()
 }

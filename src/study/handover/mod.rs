@@ -4,6 +4,8 @@ mod bodies;
 mod json;
 mod layers;
 mod methods;
+mod network_layers;
+mod networks;
 mod obstacles;
 mod records;
 mod regimes;

@@ -7,6 +7,9 @@ use crate::files::save;
 use crate::study::{Findings, Sheet, Sources};
 
 use super::layers::{layers, lonlat_patches, node_table, patch_table, verdict_table, wind_table};
+use super::network_layers::{
+    drop_table, junction_table, lonlat_reaches, network_table, profile_table, reach_table, width_table,
+};
 use super::obstacles::{lonlat_outcrops, obstacle_table};
 use super::records::calendar_table;
 use super::weighing::{flip_table, sensitivity_table, together_table};
@@ -55,6 +58,12 @@ pub fn write_all(
         sensitivity_table(findings),
         calendar_table(findings),
         obstacle_table(findings),
+        network_table(findings),
+        reach_table(findings),
+        profile_table(findings),
+        width_table(findings),
+        junction_table(findings),
+        drop_table(findings),
     ];
     for table in tables.iter().filter(|t| !t.rows.is_empty()) {
         let name = format!("{}.csv", table.name);
@@ -73,6 +82,10 @@ pub fn write_all(
     if let Some(layer) = lonlat_outcrops(sheet, findings, sources) {
         write_geojson(&folder.join("outcrops.geojson"), &layer)?;
         written.push("outcrops.geojson".into());
+    }
+    if let Some(layer) = lonlat_reaches(findings, sources) {
+        write_geojson(&folder.join("channels.geojson"), &layer)?;
+        written.push("channels.geojson".into());
     }
     Ok(written)
 }
