@@ -40,6 +40,8 @@ struct Ground {
     /// Where ridges may be crossed, by valley.
     gaps: Vec<Vec<f64>>,
     noise: Vec<f64>,
+    /// Half the width of the side where water leaves, of the disc's radius; 0 for one place.
+    mouth: f64,
 }
 
 /// A network of one kind; `index` chooses the draw.
@@ -70,8 +72,9 @@ pub fn draw(kind: Kind, seed: Seed, index: u64) -> Network {
             (roughness * z).exp()
         })
         .collect();
-    let strength = random.random_range(0.5..2.0);
-    let ground = Ground { kind, size, turn, strength, centre, lines, gaps, noise };
+    let strength = 0.15 * 13f64.powf(random.random());
+    let mouth = if random.random::<bool>() { 0.0 } else { random.random_range(0.1..0.9) };
+    let ground = Ground { kind, size, turn, strength, centre, lines, gaps, noise, mouth };
     let threshold = random.random_range(12..40);
     ground.network(threshold)
 }
@@ -102,8 +105,10 @@ impl Ground {
         let place = self.turned(self.place(from));
         let near =
             |lines: &[f64], at: f64| lines.iter().map(|l| (l - at).abs()).fold(f64::INFINITY, f64::min);
-        let k = self.strength;
+        let k =
+            self.strength.max(if matches!(self.kind, Kind::Trellis | Kind::Rectangular) { 0.5 } else { 0.0 });
         let factor = match self.kind {
+            Kind::Dendritic if self.mouth > 0.0 => 1.0 + 0.5 * k * (1.0 - along),
             Kind::Dendritic => 1.0,
             Kind::Parallel => 1.0 + 12.0 * k * (1.0 - along),
             Kind::Radial => {
@@ -147,8 +152,8 @@ impl Ground {
         match self.kind {
             Kind::Radial => true,
             Kind::Parallel => along > 0.3 * r,
-            Kind::Dendritic | Kind::Rectangular => across.abs() < 1.0 && along > 0.0,
-            Kind::Trellis => along.abs() < 1.0 && across > 0.0,
+            Kind::Dendritic | Kind::Rectangular => across.abs() < (self.mouth * r).max(1.0) && along > 0.0,
+            Kind::Trellis => along.abs() < (self.mouth * r).max(1.0) && across > 0.0,
         }
     }
 

@@ -15,6 +15,8 @@ mod layouts;
 mod netcdf;
 mod netcdf_writer;
 mod network_commands;
+mod network_measures;
+mod network_profiles;
 mod obstacle;
 mod orientation;
 mod pen;

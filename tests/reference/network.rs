@@ -183,11 +183,12 @@ fn hack_in_kilometres() {
     assert_close!(law(100.0), 20.174_290_5, 1e-6, "100 km²");
     let mut n = Network::default();
     for i in 0..12usize {
+        // From the divide itself.
         let area = 1.5f64.powi(i as i32);
         let (a, b) = (Point::new(0.0, i as f64), Point::new(law(area), i as f64));
         let mut one = network(&[(a.x, a.y), (b.x, b.y)], &[(0, 1, Vec::new())]);
         one.reaches[0].stations = vec![
-            Station { at: a, area_m2: Some(0.5 * area), ..Station::default() },
+            Station { at: a, area_m2: Some(0.0), ..Station::default() },
             Station { at: b, along: law(area), area_m2: Some(area), ..Station::default() },
         ];
         (one.reaches[0].from, one.reaches[0].to) = (2 * i, 2 * i + 1);

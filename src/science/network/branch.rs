@@ -40,7 +40,8 @@ impl<'a> Graph<'a> {
         let key = |r: usize| {
             let reach = &self.network.reaches[r];
             let area = area_at_end(self.network, r, self.out[reach.to].is_empty()).unwrap_or(0.0);
-            (area, reach.order.map_or(0, |o| o.strahler), reach.length)
+            // Steps between cells often add up to the same length but for the last digit.
+            (area, reach.order.map_or(0, |o| o.strahler), reach.length as f32)
         };
         let (a_key, b_key) = (key(a), key(b));
         let by_area = b_key.0.total_cmp(&a_key.0);
@@ -73,7 +74,8 @@ impl<'a> Graph<'a> {
                 let from = branch.line[branch.line.len() - 1];
                 way += (to.0 - from.0).hypot(to.1 - from.1);
                 branch.line.push(to);
-                if to.0.hypot(to.1) >= chord {
+                // A channel exactly one chord long is whole, whatever the last digit says.
+                if to.0.hypot(to.1) >= chord * (1.0 - 1e-9) {
                     branch.is_whole = true;
                     return branch;
                 }

@@ -24,7 +24,7 @@ pub const METHOD: Method = Method {
     assumptions: &["One line for trunk and tributaries: uplift, rock and climate alike over the basin."],
     limits: &[
         "Where steepness changes along the channels one line is wrong, and θ takes up part of the change: look at the profiles.",
-        "Neighbouring stations err alike. They count as n(1 − ρ)/(1 + ρ) independent ones, ρ their correlation along the channels; the range of θ and the interval of the slope follow from that number.",
+        "Neighbouring stations err alike. They count as n/(1 + 2 Σ ρ_k) independent ones, ρ_k their correlation k stations apart along the channels, up to the first that is not positive; the range of θ and the interval of the slope follow from that number.",
         "Only the tree of the trunk is fitted, its longest channels first, up to 200 000 stations.",
     ],
     sources: &[
@@ -36,6 +36,8 @@ pub const METHOD: Method = Method {
 /// Concavities looked at.
 const THETAS: (f64, f64) = (0.05, 0.95);
 const STEP: f64 = 0.02;
+/// Stations the correlation is taken from, at most.
+const MOST_FOR_CORRELATION: usize = 4000;
 /// Stations in the search, at most.
 const MOST: usize = 200_000;
 
@@ -144,18 +146,32 @@ impl Ascent {
         Line::through(&rows)
     }
 
-    /// n(1 − ρ)/(1 + ρ) with ρ the correlation of a residual with the next one down.
+    /// n/(1 + 2 Σ ρ_k): ρ_k the correlation of residuals k stations apart along the channels, summed up to the first
+    /// that is not positive.
     fn effective_number(&self, theta: f64, line: &Line) -> f64 {
         let chi = self.chi(theta);
         let e: Vec<f64> = chi.iter().zip(&self.steps).map(|(chi, s)| s.z - line.at(*chi)).collect();
-        let (mut product, mut square) = (0.0, 0.0);
-        for (i, step) in self.steps.iter().enumerate() {
-            if let Some(below) = step.below {
-                product += e[i] * e[below];
-                square += 0.5 * (e[i] * e[i] + e[below] * e[below]);
+        let n = e.len();
+        // Of very many stations every so many tell the sum as well.
+        let every = n.div_ceil(MOST_FOR_CORRELATION);
+        let runs: Vec<Vec<f64>> =
+            self.runs.iter().map(|r| e[r.first..r.end].iter().copied().step_by(every).collect()).collect();
+        let longest = runs.iter().map(Vec::len).max().unwrap_or(0);
+        let mut sum = 0.0;
+        for lag in 1..longest {
+            // Σ e_i e_{i+k} over half the sum of the squares that enter.
+            let (mut product, mut square) = (0.0, 0.0);
+            for run in runs.iter().filter(|run| run.len() > lag) {
+                for (a, b) in run.iter().zip(&run[lag..]) {
+                    product += a * b;
+                    square += 0.5 * (a * a + b * b);
+                }
             }
+            if product <= 0.0 {
+                break;
+            }
+            sum += product / square;
         }
-        let rho = if square > 0.0 { (product / square).clamp(0.0, 1.0) } else { 0.0 };
-        e.len() as f64 * (1.0 - rho) / (1.0 + rho)
+        (n as f64 / every as f64 / (1.0 + 2.0 * sum)).min(n as f64)
     }
 }

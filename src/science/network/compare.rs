@@ -1,7 +1,5 @@
 //! Two networks of the same ground, reach by reach.
 
-use std::collections::HashMap;
-
 use crate::ground::{Method, Network, Point, Symbol};
 
 use super::sources::{DERIVED, at, memory};
@@ -91,25 +89,21 @@ pub fn compare(
         junctions: [of_other.len(), 0, of_this.len()],
         lengths,
     };
-    let pixel = finest_pixel(&[this, other], &distance);
-    let radius = tolerance / pixel;
+    let Some((finest, pixel)) = pixel_sizes(&[this, other], &distance) else { return agreement };
+    let radius = tolerance / finest;
     if !(tolerance > 0.0 && radius > 0.0 && radius.is_finite()) {
         return agreement;
     }
     let (on_this, on_other) = (Pieces::of(this, radius), Pieces::of(other, radius));
-    let found = on_this.matched(other, &on_other, tolerance, &distance);
-    let confirmed = on_other.matched(this, &on_this, tolerance, &distance);
+    let found = on_this.matched(other, &on_other, tolerance, pixel, &distance);
+    let confirmed = on_other.matched(this, &on_this, tolerance, pixel, &distance);
     agreement.found = share(found.near, found.length).unwrap_or(0.0);
     agreement.confirmed = share(confirmed.near, confirmed.length).unwrap_or(0.0);
     agreement.mean_distance = share(found.away + confirmed.away, found.near + confirmed.near).unwrap_or(0.0);
     agreement.same_sense = share(found.same_sense, found.both_sense);
     agreement.same_order = share(found.same_order, found.both_order);
-    let cells = cells_of_points(&of_this, radius);
-    let is_found = |at: &&Point| {
-        around(**at, radius).any(|cell| {
-            cells.get(&cell).is_some_and(|near| near.iter().any(|p| distance(**at, *p) <= tolerance))
-        })
-    };
+    let (places, reach) = (Buckets::of(of_this.iter().copied(), radius), radius);
+    let is_found = |at: &&Point| places.around(**at, reach).any(|i| distance(**at, of_this[i]) <= tolerance);
     agreement.junctions[1] = of_other.iter().filter(is_found).count();
     agreement
 }
@@ -118,34 +112,45 @@ fn share(part: f64, whole: f64) -> Option<f64> {
     (whole > 0.0).then(|| part / whole)
 }
 
-/// The least ground size of a pixel over the networks' bounds.
-fn finest_pixel(networks: &[&Network], distance: &impl Fn(Point, Point) -> f64) -> f64 {
+/// The least ground size of a pixel over the networks' bounds, and the size of one column and one row in their
+/// middle; `None` for no nodes or pixels without size.
+fn pixel_sizes(networks: &[&Network], distance: &impl Fn(Point, Point) -> f64) -> Option<(f64, [f64; 2])> {
     let nodes = networks.iter().flat_map(|n| n.nodes.iter().map(|node| node.at));
-    let Some(bounds) = crate::ground::Bounds::of(nodes) else { return f64::NAN };
+    let bounds = crate::ground::Bounds::of(nodes)?;
     let (low, high, middle) = (bounds.min, bounds.max, bounds.centre());
-    [low, high, middle, Point::new(low.x, high.y), Point::new(high.x, low.y)]
-        .into_iter()
-        .flat_map(|p| [distance(p, Point::new(p.x + 1.0, p.y)), distance(p, Point::new(p.x, p.y + 1.0))])
-        .filter(|d| *d > 0.0)
-        .fold(f64::INFINITY, f64::min)
+    let size = |p: Point| [Point::new(p.x + 1.0, p.y), Point::new(p.x, p.y + 1.0)].map(|q| distance(p, q));
+    let corners = [low, high, Point::new(low.x, high.y), Point::new(high.x, low.y)];
+    let sizes = corners.into_iter().chain([middle]).flat_map(size);
+    let finest = sizes.filter(|d| *d > 0.0).fold(f64::INFINITY, f64::min);
+    finest.is_finite().then(|| (finest, size(middle)))
 }
 
-type Cell = (i64, i64);
-
-fn cell(p: Point, radius: f64) -> Cell {
-    ((p.x / radius).floor() as i64, (p.y / radius).floor() as i64)
+/// Points by square cells, sorted by row and column.
+struct Buckets {
+    sorted: Vec<(i64, i64, usize)>,
 }
 
-/// The cell of a point and its eight neighbours.
-fn around(p: Point, radius: f64) -> impl Iterator<Item = Cell> {
-    let (x, y) = cell(p, radius);
-    (-1..=1).flat_map(move |dx| (-1..=1).map(move |dy| (x + dx, y + dy)))
+impl Buckets {
+    fn of(points: impl Iterator<Item = Point>, side: f64) -> Self {
+        let place = |(i, p): (usize, Point)| (cell(p.y, side), cell(p.x, side), i);
+        let mut sorted: Vec<_> = points.enumerate().map(place).collect();
+        sorted.sort_unstable();
+        Self { sorted }
+    }
+
+    /// Indices of the points in the cell of `p` and its eight neighbours.
+    fn around(&self, p: Point, side: f64) -> impl Iterator<Item = usize> {
+        let (row, col) = (cell(p.y, side), cell(p.x, side));
+        (row - 1..=row + 1).flat_map(move |row| {
+            let first = self.sorted.partition_point(|c| (c.0, c.1) < (row, col - 1));
+            let own = self.sorted[first..].iter().take_while(move |c| c.0 == row && c.1 <= col + 1);
+            own.map(|c| c.2)
+        })
+    }
 }
 
-fn cells_of_points(points: &[Point], radius: f64) -> HashMap<Cell, Vec<Point>> {
-    let mut cells: HashMap<Cell, Vec<Point>> = HashMap::new();
-    points.iter().for_each(|p| cells.entry(cell(*p, radius)).or_default().push(*p));
-    cells
+fn cell(x: f64, side: f64) -> i64 {
+    (x / side).floor() as i64
 }
 
 /// A straight piece of a reach, no longer than a part of the tolerance.
@@ -154,13 +159,15 @@ struct Piece {
     a: Point,
     b: Point,
     reach: usize,
+    /// Its share of the reach's length on the ground.
+    length: f64,
 }
 
 /// The pieces of a network, and by cell those whose middle lies there.
 struct Pieces<'a> {
     network: &'a Network,
     all: Vec<Piece>,
-    cells: HashMap<Cell, Vec<usize>>,
+    middles: Buckets,
     /// Side of a cell: the tolerance and half a piece, in pixels.
     side: f64,
 }
@@ -184,6 +191,7 @@ impl<'a> Pieces<'a> {
         let longest = (radius / SAMPLES).max(all / MOST);
         let mut pieces = Vec::new();
         for (index, reach) in network.reaches.iter().enumerate() {
+            let on_ground = reach.length / reach.line.length();
             for pair in reach.line.0.windows(2) {
                 let (a, b) = (pair[0], pair[1]);
                 let parts = (a.distance(b) / longest).ceil().max(1.0);
@@ -191,16 +199,18 @@ impl<'a> Pieces<'a> {
                     continue;
                 }
                 let along = |k: f64| Point::new(a.x + (b.x - a.x) * k / parts, a.y + (b.y - a.y) * k / parts);
-                let piece = |k: usize| Piece { a: along(k as f64), b: along(k as f64 + 1.0), reach: index };
+                let length = a.distance(b) / parts * on_ground;
+                if !length.is_finite() {
+                    continue;
+                }
+                let piece =
+                    |k: usize| Piece { a: along(k as f64), b: along(k as f64 + 1.0), reach: index, length };
                 pieces.extend((0..parts as usize).map(piece));
             }
         }
         let side = radius + 0.5 * longest;
-        let mut cells: HashMap<Cell, Vec<usize>> = HashMap::new();
-        for (i, piece) in pieces.iter().enumerate() {
-            cells.entry(cell(piece.middle(), side)).or_default().push(i);
-        }
-        Self { network, all: pieces, cells, side }
+        let middles = Buckets::of(pieces.iter().map(Piece::middle), side);
+        Self { network, all: pieces, middles, side }
     }
 
     /// How the length of `network`, cut into `samples`, is met by these pieces.
@@ -209,20 +219,25 @@ impl<'a> Pieces<'a> {
         network: &Network,
         samples: &Pieces,
         tolerance: f64,
+        pixel: [f64; 2],
         distance: &impl Fn(Point, Point) -> f64,
     ) -> Matched {
         let mut sums = Matched::default();
         for sample in &samples.all {
             let at = sample.middle();
-            let length = distance(sample.a, sample.b);
+            let length = sample.length;
             sums.length += length;
-            let near = around(at, self.side)
-                .filter_map(|cell| self.cells.get(&cell))
-                .flatten()
-                .map(|i| (distance(at, self.all[*i].nearest(at)), *i))
-                .filter(|(d, _)| *d <= tolerance)
+            let squared = |p: Point| ((p.x - at.x) * pixel[0]).powi(2) + ((p.y - at.y) * pixel[1]).powi(2);
+            let near = self
+                .middles
+                .around(at, self.side)
+                .map(|i| (squared(self.all[i].nearest(at)), i))
                 .min_by(|a, b| a.0.total_cmp(&b.0).then(a.1.cmp(&b.1)));
-            let Some((away, index)) = near else { continue };
+            let Some((_, index)) = near else { continue };
+            let away = distance(at, self.all[index].nearest(at));
+            if away.is_nan() || away > tolerance {
+                continue;
+            }
             sums.near += length;
             sums.away += length * away;
             let piece = &self.all[index];

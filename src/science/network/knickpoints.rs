@@ -26,7 +26,7 @@ pub const METHOD: Method = Method {
     ],
     assumptions: &["Means over blocks of stations err independently."],
     limits: &[
-        "Stations are gathered into blocks, doubled in size until the residuals of neighbouring blocks no longer correlate; with fewer than 12 blocks nothing is said.",
+        "Stations are gathered into blocks, doubled in size until the residuals of neighbouring blocks correlate by 0.3 at most, which then widens the errors; with fewer than 12 blocks nothing is said.",
         "A change of steepness by less than a tenth is not told.",
         "A bend is told only when a break fits better than a parabola: smooth change and a wrong concavity give bends too.",
         "A single step (a fall without change of steepness above) shows as two breaks when it is longer than a few blocks, else not at all.",
@@ -49,13 +49,16 @@ pub const METHOD: Method = Method {
 /// Chance at which a break is believed.
 pub const LEVEL: f64 = 0.01;
 /// Blocks a stretch is first cut into, and needs at least.
-const MOST_BLOCKS: usize = 48;
+const MOST_BLOCKS: usize = 96;
 const LEAST_BLOCKS: usize = 12;
 /// Blocks that must lie on each side of a break.
 const EDGE: usize = 3;
 
 /// ln of the least change of steepness that is called a knickpoint: a tenth.
 const LEAST_CHANGE: f64 = 0.095_31;
+
+/// Greatest correlation of neighbouring blocks' residuals; what is left widens the errors by √((1 + ρ)/(1 − ρ)).
+const MOST_CORRELATION: f64 = 0.3;
 
 /// A break of a profile.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -70,29 +73,31 @@ pub(super) struct Break {
 /// The breaks of a profile with χ rising from station to station, in order upward.
 pub(super) fn breaks(chi: &[f64], z: &[f64]) -> Vec<Break> {
     let mut found = Vec::new();
-    let mut waiting = vec![(0, chi.len())];
-    while let Some((from, to)) = waiting.pop() {
-        if let Some(it) = strongest(&chi[from..to], &z[from..to]) {
+    let mut waiting = vec![(0, chi.len(), 1)];
+    while let Some((from, to, least)) = waiting.pop() {
+        if let Some((it, size)) = strongest(&chi[from..to], &z[from..to], least) {
             let index = from + it.index;
             found.push(Break { index, ..it });
-            waiting.extend([(from, index), (index, to)]);
+            // The block of the break itself belongs to neither part. What errs alike in the whole does in its parts.
+            waiting.push((from, index.saturating_sub(size).max(from), size));
+            waiting.push(((index + size).min(to), to, size));
         }
     }
     found.sort_by_key(|b| b.index);
     found
 }
 
-/// The strongest break of a stretch, when it is believed.
-fn strongest(chi: &[f64], z: &[f64]) -> Option<Break> {
-    let mut size = chi.len().div_ceil(MOST_BLOCKS).max(1);
+/// The strongest break of a stretch, when it is believed, and the stations of a block, `least` or more.
+fn strongest(chi: &[f64], z: &[f64], least: usize) -> Option<(Break, usize)> {
+    let mut size = chi.len().div_ceil(MOST_BLOCKS).max(least);
     loop {
         let blocks = blocks(chi, z, size);
         if blocks.len() < LEAST_BLOCKS {
             return None;
         }
         let scan = Scan::of(&blocks)?;
-        if scan.correlation <= 2.0 / (blocks.len() as f64).sqrt() {
-            return scan.believed(chi, z);
+        if scan.correlation <= MOST_CORRELATION {
+            return scan.believed(chi, z).map(|it| (it, size));
         }
         size *= 2;
     }
@@ -155,11 +160,15 @@ impl Scan {
         let neighbours: f64 = e.windows(2).map(|w| w[0] * w[1]).sum();
         let bent: Vec<[f64; 3]> = x.iter().map(|x| [1.0, *x, x * x]).collect();
         let parabola = solve(&bent, &y, |_| 1.0).map_or(f64::INFINITY, |fit| squares(&bent, &y, &fit));
+        let correlation = if residual > 0.0 { neighbours / residual } else { 0.0 };
+        let left = correlation.clamp(0.0, MOST_CORRELATION);
+        let wider = ((1.0 - left) / (1.0 + left)).sqrt();
+        deviates.iter_mut().for_each(|d| *d *= wider);
         Some(Self {
             psi: low + psi * unit,
             slopes: [fit[1] / unit, (fit[1] + fit[2]) / unit],
             p: chance(&deviates),
-            correlation: if residual > 0.0 { neighbours / residual } else { 0.0 },
+            correlation,
             is_sharp: residual < parabola,
         })
     }

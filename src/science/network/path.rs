@@ -23,6 +23,8 @@ pub(super) struct Paths {
     pub list: Vec<Path>,
     /// Longest way up from each node to a head.
     pub up: Vec<f64>,
+    /// The head at its end; the node itself where nothing comes in.
+    pub head: Vec<usize>,
     /// Longest way down from each node to an outlet.
     pub down: Vec<f64>,
 }
@@ -74,8 +76,12 @@ impl Paths {
             let node = network.reaches[path.reaches[0]].to;
             path.joins = down[node].1.map(|below| of_reach[below]);
         }
+        let mut head: Vec<usize> = (0..network.nodes.len()).collect();
+        for &node in &sequence {
+            head[node] = up[node].1.map_or(node, |r| head[network.reaches[r].from]);
+        }
         let ways = |best: Vec<(f64, Option<usize>)>| best.into_iter().map(|b| b.0).collect();
-        Some(Self { list, up: ways(up), down: ways(down) })
+        Some(Self { list, up: ways(up), head, down: ways(down) })
     }
 
     /// For each path the first of its tree, the one that reaches the outlet.
@@ -107,7 +113,7 @@ impl Paths {
 
 /// Stations of a reach without the one at its lower node, where the ground of the channel below is counted too;
 /// at an outlet all of them.
-pub(super) fn own_stations<'a>(network: &'a Network, reach: usize, is_outlet: bool) -> &'a [Station] {
+pub(super) fn own_stations(network: &Network, reach: usize, is_outlet: bool) -> &[Station] {
     let reach = &network.reaches[reach];
     match reach.stations.split_last() {
         Some((last, others))

@@ -162,7 +162,7 @@ fn pieces(line: &[Point], chord: f64, place: &Place) -> Vec<Piece> {
     let mut from = first;
     for p in &line[1..] {
         let Some(next) = piece(from, p) else { continue };
-        if chord > 0.0 && next.length >= chord {
+        if chord > 0.0 && next.length >= chord * (1.0 - 1e-9) {
             found.push(next);
             from = p;
         }
