@@ -7,6 +7,7 @@ mod docs;
 mod gratings;
 mod guards;
 mod hostile;
+mod image_channels;
 mod jpeg_writer;
 mod layouts;
 mod netcdf;

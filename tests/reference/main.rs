@@ -5,6 +5,7 @@ mod axial;
 mod axial_field;
 mod axial_tests;
 mod georef;
+mod image_channels;
 mod obstacle;
 mod orientation;
 mod place;
