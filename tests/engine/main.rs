@@ -10,6 +10,7 @@ mod dry_channels;
 mod gratings;
 mod guards;
 mod hostile;
+mod image_channels;
 mod jpeg_writer;
 mod layouts;
 mod netcdf;

@@ -2,6 +2,7 @@
 //! when the data is absent and it is skipped.
 
 mod drainage;
+mod channels;
 mod look;
 mod measure;
 mod records;

@@ -7,6 +7,7 @@ mod axial_tests;
 mod drainage;
 mod georef;
 mod network;
+mod image_channels;
 mod obstacle;
 mod orientation;
 mod place;

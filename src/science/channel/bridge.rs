@@ -16,6 +16,8 @@ const AIM_WIDTHS: f64 = 2.5;
 const LEAST_AIM: f64 = 8.0;
 /// Least angle in the count of ends met by chance.
 const LEAST_TURN: f64 = 10.0 * PI / 180.0;
+/// Bridges less sure than this are not made.
+const LEAST_SURE: f64 = 0.6;
 /// Pixels on a side of the cells in which line points are looked up.
 const CELL: f64 = 16.0;
 
@@ -28,6 +30,8 @@ struct End {
     /// Unit vector outwards.
     aim: (f64, f64),
     width: f64,
+    /// Of its stretch.
+    length: f64,
 }
 
 /// A way to carry an end on: to point `vertex` of a stretch.
@@ -98,7 +102,7 @@ impl Sketch {
             let length = back.distance(first);
             if length > 0.0 {
                 let aim = ((first.x - back.x) / length, (first.y - back.y) / length);
-                ends.push(End { node, stretch, at: first, aim, width: it.width });
+                ends.push(End { node, stretch, at: first, aim, width: it.width, length: it.length() });
             }
         }
         ends
@@ -130,21 +134,23 @@ impl Sketch {
             let cost = 0.5 * gap / into + (turn / TURN_INTO).powi(2);
             return Some(Way { end: i, stretch, vertex, cost, bridge: None });
         }
-        let reach = gap_widths * end.width;
+        // No bridge is longer than the line it continues.
+        let reach = (gap_widths * end.width).min(end.length);
         if gap > reach || turn > TURN {
             return None;
         }
         let (mut cost, mut chance) = (gap / reach + (turn / TURN).powi(2), 2.0 * lines * gap / PI);
         if let Some(facing) = facing {
             let against = (-dx * facing.aim.0 - dy * facing.aim.1).clamp(-1.0, 1.0).acos();
-            if against > TURN {
+            if against > TURN || gap > facing.length {
                 return None;
             }
             cost = 0.5 * (cost + (against / TURN).powi(2));
             // Ends as near and as well in line, facing this one, that chance would put there.
             chance = open * gap * gap * turn.max(LEAST_TURN) * against.max(LEAST_TURN) / PI;
         }
-        Some(Way { end: i, stretch, vertex, cost, bridge: Some((-chance).exp()) })
+        let sure = (-chance).exp();
+        (sure >= LEAST_SURE).then_some(Way { end: i, stretch, vertex, cost, bridge: Some(sure) })
     }
 
     /// Adds the ways as stretches; those that lead to the middle of a line part it there.

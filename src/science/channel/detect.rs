@@ -4,7 +4,7 @@ use serde::{Deserialize, Serialize};
 
 use crate::ground::{
     Caution, FlowSense, Grid, Method, Network, NetworkNode, Point, Polyline, Reach, ReachOrigin, Read,
-    Source, Stopped, Symbol, Work,
+    Source, Stopped, Symbol, Width, Work,
 };
 use crate::numeric::quantile;
 use crate::numeric::thin::{around, thin};
@@ -97,7 +97,8 @@ pub struct DetectSettings {
 /// A proposed network and what it rests on.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Detected {
-    /// Pixel coordinates of the image; lengths in pixels, widths not measured.
+    /// Pixel coordinates of the image; lengths in pixels, widths those of the best strips (a
+    /// ladder of steps of 1.5) until they are measured.
     pub network: Network,
     /// z that a place had to pass, the greatest over the widths.
     pub floor: f64,
@@ -116,6 +117,8 @@ const BAND: f32 = 0.6;
 const LEAST_TONE: f64 = 1e-3;
 /// Arms nearer to each other than so many widths are one channel.
 const ISLAND: f64 = 1.6;
+/// Standard deviation of a width taken from the ladder of strips, over the width: ln 1.5/√12.
+const STRIP_SE: f64 = 0.12;
 /// Ways on from a place of noise.
 const WAYS: f64 = 3.0;
 
@@ -308,7 +311,7 @@ fn network(sketch: &Sketch, response: &Response, area: f64) -> Network {
             line: Polyline(stretch.line.clone()),
             sense: FlowSense::default(),
             order: None,
-            width: None,
+            width: stretch.bridge.is_none().then_some(Width { mean: stretch.width, se: STRIP_SE * stretch.width }),
             stations: Vec::new(),
             origin: if stretch.bridge.is_some() { ReachOrigin::Bridged } else { ReachOrigin::Detected },
             confidence,

@@ -185,7 +185,7 @@ fn narrow(values: &[f64], step: f64, width: f64, tone: ChannelTone) -> Option<Ba
     let n = values.len() as f64;
     let mean = values.iter().sum::<f64>() / n;
     let mut best: Option<(f64, f64, f64)> = None;
-    let widths = (4..).map(|k| k as f64 * STEP).take_while(|w| *w <= width + NARROW * 0.6);
+    let widths = (4..).map(|k| k as f64 * STEP).take_while(|w| *w <= 1.6 * width + 1.0);
     for wide in widths.filter(|w| *w >= 0.4 * width) {
         let most = (0.5 * width / STEP).ceil() as i32;
         for centre in (-most..=most).map(|k| f64::from(k) * STEP) {

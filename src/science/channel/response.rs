@@ -99,7 +99,7 @@ const LOW: f64 = 0.7;
 const LEAST_NOISE: f64 = 1e-3;
 
 /// Least noise of a tile as a share of that of the whole.
-const LEAST_SHARE: f64 = 0.5;
+const LEAST_SHARE: f64 = 1.0;
 
 /// One width looked for.
 #[derive(Clone, Copy, Debug, PartialEq)]

@@ -60,7 +60,7 @@ pub static METHOD: Method = Method {
 const STATIONS_A_WIDTH: f64 = 2.0;
 
 /// Gives each reach stations about every half width (at least a pixel apart) with banks and width, and the reach
-/// its mean width. Pixel coordinates of `image`; take the image itself, not its logarithm. Stations already there
+/// its mean width. It begins at the width the reach has, and where it has none at the most telling up to `widest_px`. Pixel coordinates of `image`; take the image itself, not its logarithm. Stations already there
 /// are replaced; elevations and areas on them are lost.
 ///
 /// # Errors
@@ -89,7 +89,12 @@ fn along(
     junctions: &[Point],
     work: &Work,
 ) -> Result<(), Stopped> {
-    let Some(about) = about(image, &reach.line.0, tone, widest, work)? else {
+    let known = reach.width.map(|w| w.mean).filter(|w| w.is_finite() && *w > 0.0);
+    let about = match known {
+        Some(width) => Some(width),
+        None => about(image, &reach.line.0, tone, widest, work)?,
+    };
+    let Some(about) = about else {
         (reach.stations, reach.width) = (Vec::new(), None);
         return Ok(());
     };
@@ -125,7 +130,7 @@ fn along(
 
 /// Half of the length over which profiles are averaged, for a channel about so wide.
 pub(super) fn averaged(width: f64) -> f64 {
-    (0.5 * width).max(4.0)
+    (0.5 * width).max(8.0)
 }
 
 /// The width, among those up to `widest`, whose inside differs most from both sides along the whole line; `None`
