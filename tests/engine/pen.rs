@@ -63,7 +63,7 @@ fn traced(picture: &Grid<f32>, tone: ChannelTone, curve: &[Point], apart: f64) -
 }
 
 fn farthest_from(curve: &[Point], way: &Way) -> f64 {
-    let near = |p: &Point| curve.iter().map(|q| p.distance(*q)).fold(f64::INFINITY, f64::min);
+    let near = |p: &Point| curve.iter().step_by(4).map(|q| p.distance(*q)).fold(f64::INFINITY, f64::min);
     way.line.0.iter().map(near).fold(0.0, f64::max)
 }
 

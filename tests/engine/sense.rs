@@ -114,21 +114,33 @@ fn report(what: &str, ((right, all), bins): &Score) -> f64 {
     share
 }
 
-/// A hillside that falls toward −y (the root) or +y, with bumps.
-fn relief(seed: u64, parting: bool, bumps: f64) -> impl Fn(Point) -> Option<f64> {
+/// Beds that fall by 2 cm a pixel along the channels toward the root, or away from it, with bumps of the
+/// ground on top; known at the points of the network's lines.
+fn relief(network: &Network, seed: u64, parting: bool, bumps: f64) -> impl Fn(Point) -> Option<f64> + use<> {
     let mut rng = Seed(seed).stream("relief", 0);
     let waves: Vec<[f64; 3]> = (0..12)
         .map(|_| [0.12 * normal(&mut rng), 0.12 * normal(&mut rng), 6.3 * rng.random::<f64>()])
         .collect();
-    let fall = if parting { -0.05 } else { 0.05 };
+    // Nodes and reaches were made from the root outward.
+    let mut far = vec![0.0; network.nodes.len()];
+    let mut beds: Vec<(Point, f64)> = Vec::new();
+    for reach in &network.reaches {
+        let (near, end) = (reach.from.min(reach.to), reach.from.max(reach.to));
+        far[end] = far[near] + reach.length;
+        let count = reach.line.0.len() - 1;
+        for (i, p) in reach.line.0.iter().enumerate() {
+            let share = i as f64 / count as f64;
+            let share = if reach.from == near { share } else { 1.0 - share };
+            beds.push((*p, 0.02 * (far[near] + share * reach.length) * if parting { -1.0 } else { 1.0 }));
+        }
+    }
     move |p| {
+        let bed = beds.iter().min_by(|a, b| a.0.distance(p).total_cmp(&b.0.distance(p)))?.1;
         let wave = |w: &[f64; 3]| (w[0] * p.x + w[1] * p.y + w[2]).sin();
-        Some(fall * p.y + bumps * waves.iter().map(wave).sum::<f64>())
+        Some(bed + bumps * waves.iter().map(wave).sum::<f64>())
     }
 }
 
-/// Along the path from a reach to the root elevation falls, so compare with that alone: reaches of the tree
-/// lead roughly along y, but side branches may not; those are left to the junctions.
 #[test]
 fn each_kind_of_evidence_is_right_as_often_as_it_says() {
     let of = |parting: bool, widths: bool| -> Vec<_> {
@@ -148,13 +160,24 @@ fn each_kind_of_evidence_is_right_as_often_as_it_says() {
     let line_delta = report("deltas, lines only, an arrow on the trunk", &score(&of(true, false), arrow));
     let falls = |parting: bool, bumps: f64| {
         move |network: &Network, _: &[bool], k: u64| {
-            let relief = relief(k, parting, bumps);
+            let relief = relief(network, k, parting, bumps);
             sense(network.clone(), Some(&relief), &[]).0
         }
     };
     let low = report("trees, elevation", &score(&of(false, false), falls(false, 0.1)));
     let rough = report("trees, rough elevation", &score(&of(false, false), falls(false, 1.0)));
     let low_delta = report("deltas, elevation, widths", &score(&of(true, true), falls(true, 0.1)));
+    let mut mixed = Vec::new();
+    for widths in [false, true] {
+        mixed.extend(of(false, widths).into_iter().take(48));
+        mixed.extend(of(true, widths).into_iter().take(6));
+    }
+    let mix = score(&mixed, plain);
+    report("eight trees to a delta, lines or widths", &mix);
+    for (p, good, n) in mix.1.iter().filter(|b| b.2 > 150) {
+        let (said, found) = (p / *n as f64, *good as f64 / *n as f64);
+        assert!((said - found).abs() < 0.13, "said {said}, found {found}");
+    }
     assert!(bare > 0.95 && wide > 0.95 && pointed > 0.97, "{bare} {wide} {pointed}");
     assert!(unpointed < 0.5, "nothing tells a delta from a tree: {unpointed}");
     assert!(delta > 0.9 && line_delta > 0.85, "{delta} {line_delta}");
@@ -184,7 +207,7 @@ fn nothing_only_comes_or_only_goes_and_arrows_rule() {
         assert_eq!(sensed.reaches[reach].from, network.reaches[reach].to, "the arrow points back");
         let kinds: Vec<SenseKind> = sensed.reaches[reach].sense.evidence.iter().map(|e| e.kind).collect();
         assert!(kinds.contains(&SenseKind::Stated));
-        assert!(sensed.reaches[reach].sense.probability() > 0.999);
+        assert!(sensed.reaches[reach].sense.probability() > 0.9);
         let (into, out) = (sensed.incoming(), sensed.outgoing());
         for node in sensed.junctions() {
             assert!(!into[node].is_empty() && !out[node].is_empty(), "seed {seed}, node {node}");

@@ -119,9 +119,9 @@ fn pixel_steps_and_scatter_hardly_matter() {
                     100.0 * spectrum,
                     100.0 * inflections
                 );
-                assert_close!(k, 0.0, 0.03, "sinuosity, {what}, ω = {omega}°, {turn}°");
-                assert_close!(spectrum, 0.0, 0.03, "spectrum, {what}, ω = {omega}°, {turn}°");
-                assert_close!(inflections, 0.0, 0.03, "inflections, {what}, ω = {omega}°, {turn}°");
+                assert_close!(k, 0.0, 0.01, "sinuosity, {what}, ω = {omega}°, {turn}°");
+                assert_close!(spectrum, 0.0, 0.01, "spectrum, {what}, ω = {omega}°, {turn}°");
+                assert_close!(inflections, 0.0, 0.01, "inflections, {what}, ω = {omega}°, {turn}°");
             }
         }
     }

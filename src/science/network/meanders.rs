@@ -31,6 +31,7 @@ pub static METHOD: Method = Method {
     ],
     assumptions: &["Bends of one kind: a reach of mixed bends has a wide spectrum and the interval says so."],
     limits: &[
+        "Inflections are looked for on the course cleaned over a sixteenth of the wavelength by spectrum, or over four cells where there is none.",
         "At least three wavelengths, and a peak with a third of the power about it; else no wavelength is given.",
         "Bends shorter than about six cells are smoothed away.",
     ],
@@ -102,6 +103,11 @@ pub(super) fn by_spectrum(course: &Course, valley: &[Point], sinuosity: f64) -> 
     let n = away.len();
     let length = course.length();
     let mean = away.iter().sum::<f64>() / n as f64;
+    let square = away.iter().map(|a| (a - mean).powi(2)).sum::<f64>() / n as f64;
+    // Swings of less than the least turn.
+    if square < 0.5 * (0.5 * LEAST_TURN).powi(2) {
+        return None;
+    }
     let tapered: Vec<f64> =
         (0..n).map(|i| (away[i] - mean) * 0.5 * (1.0 - (TAU * (i as f64 + 0.5) / n as f64).cos())).collect();
     let power = |waves: f64| {
