@@ -11,6 +11,41 @@ use crate::study::{DrainageFinding, NetworkFinding, TracingFinding};
 use super::channels::density_words;
 use super::facts::{Fact, fact};
 
+/// Which method makes which row.
+const METHODS: &[(&str, &str)] = &[
+    ("Sinks", "drainage.fill"),
+    ("Constant-drop test", "drainage.constant-drop"),
+    ("Mean drops", "drainage.constant-drop"),
+    ("A channel begins", "drainage.channel-heads"),
+    ("Bifurcation ratio", "network.horton"),
+    ("Length ratio", "network.horton"),
+    ("Area ratio", "network.horton"),
+    ("Slope ratio", "network.horton"),
+    ("Tokunaga", "network.tokunaga"),
+    ("Drainage density", "network.density"),
+    ("Stream frequency", "network.density"),
+    ("Knickpoint", "network.knickpoints"),
+    ("Concavity θ", "network.chi"),
+    ("Steepness", "network.chi"),
+    ("Hack’s exponent", "network.hack"),
+    ("Flint’s exponent", "network.flint"),
+    ("Hypsometric integral", "network.hypsometry"),
+    ("Melton ratio", "network.hypsometry"),
+    ("Relief ratio", "network.hypsometry"),
+    ("Noise floor", "channel.proposal"),
+    ("Proposed", "channel.proposal"),
+    ("Mean angle", "network.junctions"),
+    ("Links", "network.pattern"),
+    ("Found of it", "network.agreement"),
+    ("Confirmed by it", "network.agreement"),
+];
+
+/// The rows with the methods that made them.
+pub(super) fn sourced(facts: Vec<Fact>) -> Vec<Fact> {
+    let method = |fact: &Fact| METHODS.iter().find(|(label, _)| *label == fact.label).map(|(_, id)| *id);
+    facts.into_iter().map(|fact| Fact { method: method(&fact).unwrap_or(fact.method), ..fact }).collect()
+}
+
 /// What the network is and what it was sought on.
 pub fn about(finding: &NetworkFinding) -> Vec<Fact> {
     let network = &finding.network;
@@ -92,22 +127,23 @@ pub fn conditioning(drainage: &DrainageFinding) -> Vec<Fact> {
             format!("{}, {}, deepest {}", share(c.cut_cells), volume(c.cut_volume), metres(c.deepest_cut));
         facts.push(fact("Cut", value, "Cells, volume and the greatest depth of a trench."));
     }
-    facts.push(fact("Flow", router(drainage.router), "How contributing area is shared among neighbours."));
+    let (router, method) = router(drainage.router);
+    facts.push(fact("Flow", router, "How contributing area is shared among neighbours.").by(method));
     let basins = drainage.basins.len();
     if let Some(greatest) = drainage.basins.first() {
         let edge = if greatest.touches_edge { "; it may be larger, the edge cuts it" } else { "" };
         let value = format!("{basins}; the greatest {}{edge}", square_metres(greatest.area_m2));
         facts.push(fact("Basins", value, "Ground that drains through one outlet."));
     }
-    facts
+    sourced(facts)
 }
 
-fn router(router: Router) -> &'static str {
+fn router(router: Router) -> (&'static str, &'static str) {
     match router {
-        Router::D8 => "steepest of eight neighbours (D8)",
-        Router::DInfinity => "steepest facet (D∞)",
-        Router::Freeman => "several neighbours, by slope (Freeman)",
-        Router::Quinn => "several neighbours, by slope and contour (Quinn)",
+        Router::D8 => ("steepest of eight neighbours (D8)", "drainage.d8"),
+        Router::DInfinity => ("steepest facet (D∞)", "drainage.d-infinity"),
+        Router::Freeman => ("several neighbours, by slope (Freeman)", "drainage.freeman"),
+        Router::Quinn => ("several neighbours, by slope and contour (Quinn)", "drainage.quinn"),
     }
 }
 
@@ -152,7 +188,7 @@ pub fn heads(drainage: &DrainageFinding) -> Vec<Fact> {
         );
         facts.push(fact("Mean drops", value, "Near this threshold; |t| below 2 passes."));
     }
-    facts
+    sourced(facts)
 }
 
 /// How channels were found on the image.
@@ -163,7 +199,7 @@ pub fn tracing(tracing: &TracingFinding) -> Vec<Fact> {
         }
         _ => "none".into(),
     };
-    vec![
+    sourced(vec![
         fact("Widths sought", widths, "Of channels, on the image measured."),
         fact(
             "Noise floor",
@@ -181,7 +217,7 @@ pub fn tracing(tracing: &TracingFinding) -> Vec<Fact> {
             "Dashed on the table; each with its confidence.",
         ),
         fact("Loops kept", tracing.loops.to_string(), "Order is not defined on them and below."),
-    ]
+    ])
 }
 
 /// Streams by order and Horton's and Tokunaga's laws.
@@ -219,7 +255,7 @@ pub fn hierarchy(finding: &NetworkFinding) -> Vec<Fact> {
             d.frequency.map(|f| fact("Stream frequency", frequency(f, finding.unit), "Streams over area.")),
         );
     }
-    facts
+    sourced(facts)
 }
 
 fn frequency(frequency: f64, unit: LengthUnit) -> String {
@@ -289,7 +325,7 @@ pub fn profile(finding: &NetworkFinding) -> Vec<Fact> {
             fact("Relief ratio", numbers::significant(r, 3), "Relief over the length of the trunk.")
         }));
     }
-    facts
+    sourced(facts)
 }
 
 fn ratio(ratio: &Ratio) -> String {
@@ -319,5 +355,18 @@ pub fn square_metres(m2: f64) -> String {
         format!("{} km²", numbers::significant(1e-6 * m2, 3))
     } else {
         format!("{} m²", numbers::significant(m2, 3))
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::METHODS;
+
+    #[test]
+    fn every_method_named_has_a_record() {
+        let known = crate::science::methods();
+        for (label, id) in METHODS {
+            assert!(known.iter().any(|m| m.id == *id), "{label} names {id}, which has no record");
+        }
     }
 }

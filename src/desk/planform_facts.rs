@@ -10,7 +10,7 @@ use crate::science::network::planform::{Meander, Planform};
 use crate::study::NetworkFinding;
 
 use super::Tracing;
-use super::channel_facts::{interval, square_metres};
+use super::channel_facts::{interval, sourced, square_metres};
 use super::facts::{Fact, fact};
 
 /// Junction angles.
@@ -56,7 +56,7 @@ pub fn junctions(finding: &NetworkFinding) -> Vec<Fact> {
             "Junctions where a branch is shorter than the chord.",
         ));
     }
-    facts
+    sourced(facts)
 }
 
 /// The pattern as probabilities.
@@ -90,7 +90,7 @@ pub fn pattern(finding: &NetworkFinding) -> Vec<Fact> {
         let modes: Vec<String> = p.modes.iter().map(|m| format!("{}°", numbers::fixed(m.deg(), 0))).collect();
         facts.push(fact("Trends of links", modes.join(", "), "Modes of link azimuths."));
     }
-    facts
+    sourced(facts)
 }
 
 /// One channel path.
@@ -201,7 +201,7 @@ fn range(range: &Range, unit: &str) -> String {
 pub fn agreement(finding: &NetworkFinding, with: &Agreement) -> Vec<Fact> {
     let [theirs, found, ours] = with.junctions;
     let share = |share: Option<f64>| share.map_or("not told".into(), numbers::percent);
-    vec![
+    sourced(vec![
         fact(
             "Found of it",
             numbers::percent(with.found),
@@ -228,7 +228,7 @@ pub fn agreement(finding: &NetworkFinding, with: &Agreement) -> Vec<Fact> {
         ),
         fact("Same order", share(with.same_order), "Share of the common length where Strahler orders agree."),
         fact("Junctions", format!("{found} of its {theirs} found, {ours} here"), "Within the tolerance."),
-    ]
+    ])
 }
 
 /// The channel under way with the pen.

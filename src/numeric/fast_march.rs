@@ -280,3 +280,106 @@ impl Front {
             .then(|| Point::new(earliest.0 as f64 + 0.5, earliest.1 as f64 + 0.5))
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::numeric::maximum::golden;
+    use proptest::prelude::*;
+
+    fn marched(terrain: &Terrain, start: Point) -> Front {
+        terrain.march(start, &[], &Work::quiet()).unwrap().unwrap()
+    }
+
+    /// Every cell again and again from its neighbours until nothing changes.
+    fn swept(terrain: &Terrain, first: &Front) -> Vec<f32> {
+        let stride = terrain.width + 2;
+        let mut time = vec![f32::INFINITY; terrain.cost.len()];
+        let start = (first.start.x as usize, first.start.y as usize);
+        // The cells around the start keep what the march began with.
+        let kept: Vec<usize> = around(start.0, start.1)
+            .filter(|(c, r)| *c < terrain.width && *r < terrain.height)
+            .map(|(c, r)| (r + 1) * stride + c + 1)
+            .collect();
+        kept.iter().for_each(|i| time[*i] = first.time[*i]);
+        loop {
+            let mut changed = false;
+            for i in stride + 1..time.len() - stride - 1 {
+                if terrain.cost[i] < f32::INFINITY {
+                    let t = arrival(
+                        time[i - 1].min(time[i + 1]),
+                        time[i - stride].min(time[i + stride]),
+                        terrain.cost[i],
+                    );
+                    changed |= t < time[i];
+                    time[i] = time[i].min(t);
+                }
+            }
+            if !changed {
+                return time;
+            }
+        }
+    }
+
+    proptest! {
+        #[test]
+        fn buckets_agree_with_sweeping_to_rest(
+            costs in prop::collection::vec(0.5..20.0f32, 24 * 17),
+            holes in prop::collection::vec(0usize..24 * 17, 0..60),
+        ) {
+            let mut costs = costs;
+            holes.iter().filter(|i| **i != 5 * 24 + 7).for_each(|i| costs[*i] = f32::NAN);
+            let terrain = Terrain::new(24, 17, costs.iter().copied());
+            let front = marched(&terrain, Point::new(7.5, 5.5));
+            let truth = swept(&terrain, &front);
+            let width = 0.5 * terrain.least;
+            for (got, want) in front.time.iter().zip(&truth) {
+                prop_assert!(got == want || (got - want).abs() <= 2.0 * width, "{got} for {want}");
+            }
+        }
+    }
+
+    /// On even ground T is the distance, but for the scheme's first-order error.
+    #[test]
+    fn even_ground_is_crossed_at_even_speed() {
+        let terrain = Terrain::new(201, 201, vec![3.0f32; 201 * 201].into_iter());
+        let start = Point::new(100.5, 100.5);
+        let front = marched(&terrain, start);
+        for deg in (0..360).step_by(15) {
+            let (sin, cos) = f64::from(deg).to_radians().sin_cos();
+            let p = Point::new((100.0 + 90.0 * cos).round() + 0.5, (100.0 + 90.0 * sin).round() + 0.5);
+            let far = 3.0 * start.distance(p);
+            crate::assert_close!(front.time(p).unwrap() / far, 1.0, 0.02, "toward {deg}°");
+        }
+    }
+
+    /// Fermat: across the border of two costs the way bends as light does.
+    #[test]
+    fn ways_are_refracted() {
+        let (slow, quick) = (4.0, 1.0);
+        let cost = |i: usize| if i % 300 < 150 { slow } else { quick };
+        let terrain = Terrain::new(300, 300, (0..300 * 300).map(cost).collect::<Vec<f32>>().into_iter());
+        let (from, to) = (Point::new(70.5, 40.5), Point::new(260.5, 250.5));
+        let border = |y: f64| Point::new(150.0, y);
+        let price =
+            |y: f64| f64::from(slow) * from.distance(border(y)) + f64::from(quick) * border(y).distance(to);
+        let y = golden(|y| -price(y), 0.0, 300.0, 1e-9);
+        let front = marched(&terrain, from);
+        crate::assert_close!(front.time(to).unwrap() / price(y), 1.0, 0.02, "time");
+        let way = front.way_to(to, 0.5).unwrap();
+        let crossing = way.iter().find(|p| p.x >= 150.0).unwrap();
+        crate::assert_close!(crossing.y, y, 1.5, "where the border is crossed");
+    }
+
+    /// Stopping at a wanted point changes nothing of the way to it.
+    #[test]
+    fn an_early_end_keeps_the_way() {
+        let cost = |i: usize| 1.0 + ((i * 7919) % 101) as f32 / 10.0;
+        let terrain = Terrain::new(120, 90, (0..120 * 90).map(cost).collect::<Vec<f32>>().into_iter());
+        let (from, to) = (Point::new(11.2, 70.9), Point::new(93.4, 20.3));
+        let whole = marched(&terrain, from).way_to(to, 0.5);
+        let early = terrain.march(from, &[to], &Work::quiet()).unwrap().unwrap();
+        assert!(early.done.iter().filter(|d| **d).count() < 120 * 90);
+        assert_eq!(early.way_to(to, 0.5), whole);
+    }
+}

@@ -138,12 +138,7 @@ pub fn sheet(folder: &Path) -> Sheet {
 /// The dry channels twice: from elevation, and on the mosaic with the elevation to tell which way they fell.
 fn add_networks(sheet: &mut Sheet) {
     let step = reach::ELEVATION_STEP as f64;
-    let ground = crate::ground::Polygon {
-        outer: [(600.0, 500.0), (1200.0, 500.0), (1200.0, 900.0), (600.0, 900.0)]
-            .map(|(x, y)| Point::new(x, y))
-            .to_vec(),
-        holes: vec![],
-    };
+    let ground = reach::channel_ground();
     let cells = ground.map(|p| Point::new(p.x / step, p.y / step));
     let from_elevation =
         NetworkEntry::from_elevation(sheet.fresh_id(), "Dry channels, elevation", ELEVATION_ID);

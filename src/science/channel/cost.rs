@@ -12,28 +12,38 @@ pub static METHOD: Method = Method {
     id: "channel.pen-cost",
     name: "Cost of a step from the multi-scale ridge response",
     question: "How much does the picture look like the middle of a channel here?",
-    formula: "R = max over σ of σ^{2γ} max(0, ±λ); v = ln(1 + R/c) / ln(1 + R₁/c), at most 1; cost = 1/(ε + v)^p",
+    formula: "r_σ = max(0, σ²(±λ) − κσ|∂_n|); R = max over σ of r_σ²/(r_σ + t_σ); v = ln(1 + R/c) / ln(1 + R₁/c), at most 2; cost = 1/(ε + v)^p",
     symbols: &[
-        Symbol { symbol: "σ", meaning: "scale, from the narrowest to the widest channel", unit: "px" },
+        Symbol {
+            symbol: "σ",
+            meaning: "scale: half the width, from the narrowest to the widest channel",
+            unit: "px",
+        },
         Symbol {
             symbol: "λ",
-            meaning: "the outer eigenvalue of the Hessian of the picture smoothed by σ, + for dark, − for bright channels",
+            meaning: "the outer eigenvalue of the Hessian of the picture smoothed by σ; + for dark, − for bright channels",
             unit: "tone px⁻²",
         },
         Symbol {
-            symbol: "γ",
-            meaning: "¾, at which a Gaussian ridge answers most at its own width",
+            symbol: "∂_n",
+            meaning: "slope of the smoothed picture along that eigenvector, zero in the middle of a channel and steep at a lone bank",
+            unit: "tone px⁻¹",
+        },
+        Symbol {
+            symbol: "κ",
+            meaning: "1.5: a lone bank answers with a twentieth of a channel of its contrast",
             unit: "1",
         },
         Symbol {
-            symbol: "c",
-            meaning: "three times the median of the positive R, at least R₁/30",
+            symbol: "t_σ",
+            meaning: "three times the median of the positive r_σ: what the ground between channels gives",
             unit: "tone",
         },
         Symbol { symbol: "R₁", meaning: "99.5 % quantile of the positive R", unit: "tone" },
+        Symbol { symbol: "c", meaning: "R₁/10", unit: "tone" },
         Symbol {
             symbol: "ε, p",
-            meaning: "0.1 and 2: a step beside channels costs up to 121 times one along the best",
+            meaning: "0.15 and 3: a step beside channels costs 450 times one along a strong channel",
             unit: "1",
         },
     ],
@@ -59,15 +69,19 @@ pub static METHOD: Method = Method {
     ],
 };
 
-const EPSILON: f32 = 0.1;
-/// cost = 1/(ε + v)².
+const EPSILON: f32 = 0.15;
+/// cost = 1/(ε + v)³.
 fn cost_of(v: f32) -> f32 {
     let s = EPSILON + v;
-    1.0 / (s * s)
+    1.0 / (s * s * s)
 }
 
-/// Standard deviation of a bar of width w is w/√12; a Gaussian of that spread answers it best.
-const SCALE_OF_WIDTH: f64 = 0.288_675;
+/// Greatest v: twice what the 99.5 % quantile gives, so that thin channels in a wide picture keep a middle.
+const MOST_V: f32 = 2.0;
+/// κ.
+const BANK: f32 = 1.5;
+/// A bar of width w has its greatest σ²λ at σ = w/2.
+const SCALE_OF_WIDTH: f64 = 0.5;
 /// Neighbouring scales; a channel between two answers within 4 % of its best.
 const SCALE_STEP: f64 = 1.6;
 /// Smoothing that remains to be done on a picture reduced for a wide scale, reduced pixels.
@@ -99,18 +113,10 @@ pub(super) fn costs(
     let width = image.width();
     image.mask_where(|c, r| finite[r * width + c]);
     let response = response(&image, tone, widths_px, work)?;
-    let mut positive: Vec<f32> = (0..response.len())
-        .filter(|i| response[*i] > 0.0 && image.mask().is_none_or(|mask| mask[*i]))
-        .map(|i| response[i])
-        .collect();
-    let mut quantile = |p: f64| {
-        let k = (p * positive.len().saturating_sub(1) as f64) as usize;
-        if positive.is_empty() { 0.0 } else { *positive.select_nth_unstable_by(k, f32::total_cmp).1 }
-    };
-    let strongest = quantile(0.995);
-    let c = (3.0 * quantile(0.5)).max(strongest / 30.0);
-    let whole = if c > 0.0 { (strongest / c).ln_1p() } else { 1.0 };
-    let v = |r: f32| if c > 0.0 { ((r / c).ln_1p() / whole).min(1.0) } else { 0.0 };
+    let strongest = quantile(&response, 0.995);
+    let c = 0.1 * strongest;
+    let whole = 10f32.ln_1p();
+    let v = |r: f32| if c > 0.0 { ((r / c).ln_1p() / whole).min(MOST_V) } else { 0.0 };
     work.advance(0)?;
     let mask = image.mask();
     Ok(response
@@ -138,12 +144,23 @@ fn response(
         // Means over squares of `factor` pixels have smoothed by (factor² − 1)/12 already.
         let left = (sigma * sigma - (factor * factor - 1.0) / 12.0).max(0.25).sqrt() / factor;
         let smooth = smooth_valid(picture, [left, left], work)?;
-        let gain = (sigma.powf(1.5) / (factor * factor)) as f32;
-        let answer = answers(&smooth, tone, gain);
+        let mut answer = answers(&smooth, tone, (sigma / factor) as f32);
+        let floor = 3.0 * quantile(answer.values(), 0.5);
+        answer.values_mut().iter_mut().filter(|r| **r > 0.0).for_each(|r| *r *= *r / (*r + floor));
         raise(&mut best, width, &answer, reduced.0);
         work.advance(0)?;
     }
     Ok(best)
+}
+
+/// A quantile of the positive numbers, about: of every n-th where there are many; 0 for none.
+fn quantile(numbers: &[f32], p: f64) -> f32 {
+    const MOST: usize = 200_000;
+    // An odd stride does not fall in with the rows.
+    let stride = (numbers.len() / MOST) | 1;
+    let mut positive: Vec<f32> = numbers.iter().step_by(stride).copied().filter(|v| *v > 0.0).collect();
+    let k = (p * positive.len().saturating_sub(1) as f64) as usize;
+    if positive.is_empty() { 0.0 } else { *positive.select_nth_unstable_by(k, f32::total_cmp).1 }
 }
 
 /// Means of 2 × 2 cells over the valid ones.
@@ -167,8 +184,8 @@ fn halved(image: &Grid<f32>) -> Grid<f32> {
     Grid::from_parts(width, height, values, Some(valid))
 }
 
-/// gain · max(0, ±λ) of every cell; second differences, the border's taken from the cell inside.
-fn answers(smooth: &Grid<f32>, tone: ChannelTone, gain: f32) -> Grid<f32> {
+/// r_σ of every cell, σ in cells; central differences, the border's taken from the cell inside.
+fn answers(smooth: &Grid<f32>, tone: ChannelTone, sigma: f32) -> Grid<f32> {
     let (width, height) = (smooth.width(), smooth.height());
     let mut out = vec![0.0f32; width * height];
     if width < 3 || height < 3 {
@@ -188,16 +205,31 @@ fn answers(smooth: &Grid<f32>, tone: ChannelTone, gain: f32) -> Grid<f32> {
             let xx = v[1][0] + v[1][2] - 2.0 * v[1][1];
             let yy = v[0][1] + v[2][1] - 2.0 * v[1][1];
             let xy = 0.25 * (v[2][2] + v[0][0] - v[0][2] - v[2][0]);
-            let (mean, half) = (0.5 * (xx + yy), (0.25 * (xx - yy) * (xx - yy) + xy * xy).sqrt());
-            *out = gain
-                * match tone {
-                    ChannelTone::Dark => (mean + half).max(0.0),
-                    ChannelTone::Bright => (half - mean).max(0.0),
-                    ChannelTone::EdgePair => (mean + half).max(half - mean).max(0.0),
-                };
+            let slope = (0.5 * (v[1][2] - v[1][0]), 0.5 * (v[2][1] - v[0][1]));
+            let dark = || across(xx, xy, yy, slope, sigma);
+            let bright = || across(-xx, -xy, -yy, slope, sigma);
+            *out = match tone {
+                ChannelTone::Dark => dark(),
+                ChannelTone::Bright => bright(),
+                ChannelTone::EdgePair => dark().max(bright()),
+            };
         }
     });
     Grid::from_parts(width, height, out, None)
+}
+
+/// max(0, σ²λ − κσ|∂_n|) with λ the larger eigenvalue of the Hessian and n its vector, whose projector is
+/// (H − μ)/(λ − μ), μ the smaller one.
+#[inline]
+fn across(xx: f32, xy: f32, yy: f32, (gx, gy): (f32, f32), sigma: f32) -> f32 {
+    let (mean, half) = (0.5 * (xx + yy), (0.25 * (xx - yy) * (xx - yy) + xy * xy).sqrt());
+    if mean + half <= 0.0 {
+        return 0.0;
+    }
+    let square = gx * gx + gy * gy;
+    let along = xx * gx * gx + 2.0 * xy * gx * gy + yy * gy * gy;
+    let part = if half > 0.0 { (along - (mean - half) * square) / (2.0 * half) } else { square };
+    (sigma * sigma * (mean + half) - BANK * sigma * part.max(0.0).sqrt()).max(0.0)
 }
 
 /// Raises `best` to the answers of a reduced picture, taken between its cells.

@@ -10,14 +10,14 @@ use crate::numeric::quantile;
 use crate::numeric::thin::{around, thin};
 
 use super::graph::{Sketch, Stretch};
-use super::response::{DIRECTIONS, Response, both_above, direction, response};
+use super::response::{DIRECTIONS, Response, all_above, direction, response};
 
 /// The record of the proposal.
 pub static METHOD: Method = Method {
     id: "channel.proposal",
     name: "Proposal of a channel network",
     question: "Which places of the response belong to one channel network, and how sure is each reach?",
-    formula: "seeds z > t grow over z > 0.7 t;  simple cells go, lowest response first, crests stay;  F = N p (3p)^{n − 1}, p = M P(min > z̄), n = length/(2√π s);  confidence 1/(1 + F);  bridges: exp(−2τg/π) to a line, exp(−η g² ψ₁ψ₂/π) to an end",
+    formula: "seeds z > t grow over z > 0.7 t;  simple cells go, lowest response first, crests stay;  F = N p (3p)^{n − 1}, p = M P(all four > z̄), n = length/(4√π s);  confidence 1/(1 + F);  bridges: exp(−2τg/π) to a line, exp(−η g² ψ₁ψ₂/π) to an end",
     symbols: &[
         Symbol { symbol: "z̄", meaning: "mean response over noise along the reach", unit: "1" },
         Symbol { symbol: "N", meaning: "independent places of the image", unit: "1" },
@@ -114,6 +114,8 @@ pub struct Detected {
 const BAND: f32 = 0.6;
 /// Least tone of a radar image as a share of its mean, before the logarithm.
 const LEAST_TONE: f64 = 1e-3;
+/// Arms nearer to each other than so many widths are one channel.
+const ISLAND: f64 = 1.6;
 /// Ways on from a place of noise.
 const WAYS: f64 = 3.0;
 
@@ -148,6 +150,7 @@ pub fn detect(
     let area = image.valid_count() as f64;
     let mut sketch = lines(&response, work)?;
     sketch.prune_spurs(settings.spur_half_widths);
+    sketch.drop_doubles(ISLAND);
     sketch.drop_chance(|stretches| ln_chance(stretches, &response, area));
     sketch.prune_spurs(settings.spur_half_widths);
     sketch.bridge(settings.gap_widths, area, work)?;
@@ -155,6 +158,7 @@ pub fn detect(
     sketch.prune_spurs(settings.spur_half_widths);
     sketch.drop_lone(settings.least_length_widths);
     sketch.refine(&response);
+    sketch.centre(image, settings.tone, work)?;
     let network = network(&sketch, &response, area);
     let bridged = network.reaches.iter().filter(|r| r.origin == ReachOrigin::Bridged).count();
     let cautions = cautions(&sketch, &response, area);
@@ -181,13 +185,12 @@ fn logarithm_of(image: &Grid<f32>) -> Grid<f32> {
 fn lines(response: &Response, work: &Work) -> Result<Sketch, Stopped> {
     work.phase("Following channels", 0);
     let columns = response.z.width();
-    let heights: Vec<f32> = (0..response.z.len()).map(|cell| response.excess(cell)).collect();
-    work.advance(0)?;
-    let (mut mask, crest) = bands(response, &heights, work)?;
+    let heights = &response.excess;
+    let (mut mask, crest) = bands(response, heights, work)?;
     close_small_holes(&mut mask, response, work)?;
     grow(&mut mask, response, work)?;
-    thin(&mut mask, columns, &heights, |cell| crest[cell], false, work)?;
-    thin(&mut mask, columns, &heights, |_| false, true, work)?;
+    thin(&mut mask, columns, heights, |cell| crest[cell], false, work)?;
+    thin(&mut mask, columns, heights, |_| false, true, work)?;
     let width = |cells: &[usize]| {
         let mut widths: Vec<f64> = cells.iter().map(|c| response.strip_at(*c).width).collect();
         quantile::median(&mut widths)
@@ -338,7 +341,7 @@ fn ln_chance(stretches: &[&Stretch], response: &Response, area: f64) -> f64 {
         step += strip.independent_length() / count;
     }
     // F = N p (3p)^{n − 1}
-    let p = (DIRECTIONS as f64 * both_above(z, rho)).clamp(1e-300, 1.0);
+    let p = (DIRECTIONS as f64 * all_above(z, rho)).clamp(1e-300, 1.0);
     let places = (area / (step * step / 3.0)).max(1.0);
     places.ln() + p.ln() + ((length / step).max(1.0) - 1.0) * (WAYS * p).ln()
 }

@@ -1,9 +1,13 @@
 //! What does not belong: spurs of the thinning, and lone short pieces.
 
+use crate::ground::Point;
+
 use super::graph::{Sketch, Stretch};
 
 /// ln of the greatest number of noise chains as good in the whole image, for a part or a branch to stay: 0.01.
 const GREATEST_CHANCE: f64 = -4.6;
+/// Arms nearer than this are not told apart, pixels.
+const LEAST_ISLAND: f64 = 6.0;
 
 impl Sketch {
     /// Drops free-ended stretches off a junction that are shorter than `half_widths` half-widths of the widest
@@ -26,6 +30,44 @@ impl Sketch {
                     .min_by(|a, b| a.0.total_cmp(&b.0).then(a.1.cmp(&b.1)));
                 if let Some((_, spur)) = shortest.filter(|s| s.0 < half_widths * 0.5 * widest) {
                     gone[spur] = true;
+                }
+            }
+            if !gone.contains(&true) {
+                return;
+            }
+            self.drop_where(&gone);
+            self.join_through();
+        }
+    }
+
+    /// Of two stretches between the same nodes that stay within `widths` of their width of each other, the longer goes;
+    /// so does one that returns to its own node within that reach.
+    pub(super) fn drop_doubles(&mut self, widths: f64) {
+        loop {
+            let mut gone = vec![false; self.stretches.len()];
+            let mut by_ends = std::collections::BTreeMap::new();
+            for (i, s) in self.stretches.iter().enumerate() {
+                by_ends
+                    .entry((s.ends[0].min(s.ends[1]), s.ends[0].max(s.ends[1])))
+                    .or_insert_with(Vec::new)
+                    .push(i);
+            }
+            for (ends, same) in by_ends {
+                for (k, &i) in same.iter().enumerate() {
+                    let one = &self.stretches[i];
+                    let near = (widths * one.width).max(LEAST_ISLAND);
+                    if ends.0 == ends.1 {
+                        gone[i] = one.line.iter().all(|p| p.distance(one.line[0]) < near);
+                    }
+                    for &j in &same[k + 1..] {
+                        let two = &self.stretches[j];
+                        let near = near.max(widths * two.width);
+                        let close =
+                            |p: &Point, other: &Stretch| other.line.iter().any(|q| q.distance(*p) < near);
+                        if one.line.iter().all(|p| close(p, two)) && two.line.iter().all(|p| close(p, one)) {
+                            gone[if one.length() >= two.length() { i } else { j }] = true;
+                        }
+                    }
                 }
             }
             if !gone.contains(&true) {

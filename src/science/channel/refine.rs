@@ -1,14 +1,20 @@
 //! Lines to a fraction of a pixel: moved to the crest of the response, then smoothed along themselves.
 
-use crate::ground::Point;
+use crate::ground::{Grid, Point, Stopped, Work};
 
+use super::detect::ChannelTone;
 use super::graph::Sketch;
+use super::profile::{Banks, profiles};
 use super::response::Response;
 
 /// Least scale of the smoothing along a line, pixels: takes the steps of the cells out.
 const LEAST_SMOOTHING: f64 = 1.5;
 /// Scale of the smoothing over the width.
-const SMOOTHING: f64 = 0.5;
+const SMOOTHING: f64 = 0.25;
+/// Width from which the banks tell the middle better than the response does, pixels.
+const RESOLVED: f64 = 5.0;
+/// How often lines are moved to the middle.
+const ROUNDS: usize = 2;
 
 impl Sketch {
     /// Moves the inner points of every stretch to the crest across it, and smooths. Ends stay.
@@ -39,6 +45,48 @@ impl Sketch {
     }
 }
 
+impl Sketch {
+    /// Moves lines of channels at least [`RESOLVED`] wide to the middle of their banks in `image`.
+    pub(super) fn centre(
+        &mut self,
+        image: &Grid<f32>,
+        tone: ChannelTone,
+        work: &Work,
+    ) -> Result<(), Stopped> {
+        for stretch in self.stretches.iter_mut().filter(|s| s.bridge.is_none() && s.width >= RESOLVED) {
+            for _ in 0..ROUNDS {
+                let half = 0.5 * stretch.width;
+                let found = profiles(
+                    image,
+                    &stretch.line,
+                    (0.25 * stretch.width).max(1.0),
+                    stretch.width,
+                    half,
+                    work,
+                )?;
+                let last = found.len().saturating_sub(1);
+                let moved: Vec<Point> = found
+                    .iter()
+                    .enumerate()
+                    .map(|(i, p)| {
+                        let banks = Banks::of(&p.values, p.step, stretch.width, tone);
+                        let shift = banks.filter(|_| i > 0 && i < last).map_or(0.0, Banks::middle);
+                        Point::new(p.at.x + shift * p.normal.0, p.at.y + shift * p.normal.1)
+                    })
+                    .collect();
+                let ends = [stretch.line.first().copied(), stretch.line.last().copied()];
+                let mut line = smoothed(&moved, SMOOTHING * stretch.width);
+                if let ([Some(first), Some(last)], true) = (ends, line.len() >= 2) {
+                    let count = line.len();
+                    (line[0], line[count - 1]) = (first, last);
+                    stretch.line = spaced(&line, (0.125 * stretch.width).max(1.0));
+                }
+            }
+        }
+        Ok(())
+    }
+}
+
 /// How far along `normal` the response is highest within `reach`, to a fraction of a step by a parabola.
 fn crest(response: &Response, at: Point, normal: (f64, f64), reach: f64) -> f64 {
     const STEPS: isize = 3;
@@ -65,7 +113,7 @@ fn linear(response: &Response, x: f64, y: f64) -> f64 {
         (v as usize, (v as usize + 1).min(n - 1), v.fract())
     };
     let ((c0, c1, u), (r0, r1, v)) = (split(x, width), split(y, height));
-    let at = |c: usize, r: usize| f64::from(response.excess(r * width + c));
+    let at = |c: usize, r: usize| f64::from(response.excess[r * width + c]);
     (at(c0, r0) * (1.0 - u) + at(c1, r0) * u) * (1.0 - v) + (at(c0, r1) * (1.0 - u) + at(c1, r1) * u) * v
 }
 

@@ -19,10 +19,14 @@ pub static METHOD: Method = Method {
     id: "channel.strip-response",
     name: "Strip response in many widths",
     question: "Where does the image show a strip that is darker or brighter than both of its sides?",
-    formula: "R_w(x, θ) = min(E(x + ½w n), −E(x − ½w n)),  E = √(2π) σ ∂_n (G_{σ,s} ∗ I),  σ = w/3, s = 1.1 w;  z = R_w/sd(E);  M P(min(z₁, z₂) > t; ρ) = α",
+    formula: "R_w(x, θ) = min over ± of {E(x + ½w n ± ¾w e), −E(x − ½w n ± ¾w e)},  E = √(2π) σ ∂_n (G_{σ,s} ∗ I),  σ = w/3, s = 0.6 w;  z = R_w/sd(E);  M P(all four z > t; ρ) = α",
     symbols: &[
         Symbol { symbol: "w", meaning: "width of the strip", unit: "px" },
-        Symbol { symbol: "θ, n", meaning: "direction of the strip, and the normal on it", unit: "1" },
+        Symbol {
+            symbol: "θ, e, n",
+            meaning: "direction of the strip, unit vectors along and across",
+            unit: "1",
+        },
         Symbol {
             symbol: "E",
             meaning: "height of the edge at a bank: 1 for a step of 1",
@@ -31,10 +35,10 @@ pub static METHOD: Method = Method {
         Symbol { symbol: "G", meaning: "Gaussian, σ across and s along the strip", unit: "px⁻²" },
         Symbol {
             symbol: "sd(E)",
-            meaning: "scale of E over the image, robust, per width",
+            meaning: "scale of E around the place (128 cells), robust, per width",
             unit: "unit of the image",
         },
-        Symbol { symbol: "ρ", meaning: "correlation of the noise at the two banks", unit: "1" },
+        Symbol { symbol: "ρ", meaning: "mean correlation of the noise in the four samples", unit: "1" },
         Symbol { symbol: "M", meaning: "directions tried", unit: "1" },
         Symbol {
             symbol: "t, α",
@@ -58,7 +62,7 @@ pub static METHOD: Method = Method {
             year: 1995,
             title: "Multiscale detection of curvilinear structures in 2-D and 3-D image data",
             published: "Proc. IEEE International Conference on Computer Vision 1995, 864",
-            locator: "the lesser of two edge responses",
+            locator: "the lesser of two edge responses; taken before and behind as well here",
             read: Read::Memory,
         },
         Source {
@@ -75,10 +79,12 @@ pub static METHOD: Method = Method {
 
 /// σ over width, and scale along the strip over width.
 const ACROSS: f64 = 1.0 / 3.0;
-const ALONG: f64 = 1.1;
+const ALONG: f64 = 0.6;
 /// Least σ and least scale along, full-resolution pixels.
 const LEAST_SIGMA: f64 = 0.8;
-const LEAST_ALONG: f64 = 3.0;
+const LEAST_ALONG: f64 = 1.8;
+/// How far before and behind a place its banks are sampled, over the scale along.
+const APART: f64 = 1.25;
 /// Ratio of neighbouring widths.
 const RATIO: f64 = 1.5;
 /// Directions tried over half a circle; set so that a quarter turn of the image maps them onto each other.
@@ -92,13 +98,14 @@ const LOW: f64 = 0.7;
 /// Least noise as a share of the range of the image: below it, the response would be to rounding.
 const LEAST_NOISE: f64 = 1e-3;
 
+/// Least noise of a tile as a share of that of the whole.
+const LEAST_SHARE: f64 = 0.5;
+
 /// One width looked for.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub(super) struct Strip {
     /// Full-resolution pixels.
     pub width: f64,
-    /// Scale of the noise of a bank's response, in the unit of the image.
-    pub noise: f64,
     /// Floor and low threshold of z.
     pub floor: f64,
     pub low: f64,
@@ -112,6 +119,8 @@ pub(super) struct Strip {
 pub(super) struct Response {
     /// Response over its noise; 0 where there is none.
     pub z: Grid<f32>,
+    /// Response beyond the low threshold, in the unit of the image: widths are chosen and crests followed by it.
+    pub excess: Vec<f32>,
     /// Index of the strip, and of its direction.
     pub strip: Vec<u8>,
     pub turn: Vec<u8>,
@@ -124,20 +133,21 @@ pub(super) fn direction(turn: u8) -> (f64, f64) {
     (cos, sin)
 }
 
-/// z that pure noise passes with chance `significance` a place, when the noise of the banks has correlation `rho`.
+/// z that pure noise passes with chance `significance` a place, when the four samples of the banks have mean
+/// correlation `rho`.
 pub(super) fn floor_for(significance: f64, rho: f64) -> f64 {
-    let wanted = (significance / DIRECTIONS as f64).clamp(1e-12, 0.2);
-    brent(|t| both_above(t, rho).ln() - wanted.ln(), 0.0, 9.0, 1e-6).unwrap_or(0.0)
+    let wanted = (significance / DIRECTIONS as f64).clamp(1e-12, 0.05);
+    brent(|t| all_above(t, rho).ln() - wanted.ln(), -1.0, 9.0, 1e-6).unwrap_or(0.0)
 }
 
-/// P(z₁ > t and z₂ > t) for two normal numbers of correlation `rho` in [0, 1).
-pub(super) fn both_above(t: f64, rho: f64) -> f64 {
-    // ∫_t^∞ φ(x) Q((t − ρx)/√(1 − ρ²)) dx by Simpson's rule.
-    const STEPS: usize = 120;
-    let h = 8.0 / STEPS as f64;
+/// P(all four > t) for normal numbers of equal correlation `rho` in [0, 1): ∫ φ(u) Q((t − √ρ u)/√(1 − ρ))⁴ du.
+pub(super) fn all_above(t: f64, rho: f64) -> f64 {
+    // Simpson's rule over ±8.
+    const STEPS: usize = 160;
+    let h = 16.0 / STEPS as f64;
     let at = |i: usize| {
-        let x = t + h * i as f64;
-        (-0.5 * x * x).exp() / TAU.sqrt() * normal_above((t - rho * x) / (1.0 - rho * rho).sqrt())
+        let u = h * i as f64 - 8.0;
+        (-0.5 * u * u).exp() / TAU.sqrt() * normal_above((t - rho.sqrt() * u) / (1.0 - rho).sqrt()).powi(4)
     };
     let inner: f64 = (1..STEPS).map(|i| at(i) * if i % 2 == 1 { 4.0 } else { 2.0 }).sum();
     h / 3.0 * (at(0) + inner + at(STEPS))
@@ -152,7 +162,7 @@ impl Strip {
         }
         let along = (ALONG * width).max(LEAST_ALONG);
         let cells = reduced as f64;
-        Self { width, noise: 0.0, floor: 0.0, low: 0.0, reduced, sigma: sigma / cells, along: along / cells }
+        Self { width, floor: 0.0, low: 0.0, reduced, sigma: sigma / cells, along: along / cells }
     }
 
     /// Half the width, cells.
@@ -160,15 +170,18 @@ impl Strip {
         0.5 * self.width / self.reduced as f64
     }
 
-    /// Correlation of the noise at the two banks: −(1 − d²/2σ²) exp(−d²/4σ²) at their distance d, not below 0.
+    /// Mean correlation of the noise in the four samples: c = −(1 − d²/2σ²) exp(−d²/4σ²) for the banks at their
+    /// distance d, and a = exp(−(2·1.25 s)²/4s²) along.
     pub fn correlation(&self) -> f64 {
         let d2 = (2.0 * self.half() / self.sigma).powi(2);
-        ((0.5 * d2 - 1.0) * (-0.25 * d2).exp()).clamp(0.0, 0.9)
+        let across = (0.5 * d2 - 1.0) * (-0.25 * d2).exp();
+        let along = (-APART * APART).exp();
+        ((across + along + across * along) / 3.0).clamp(0.0, 0.9)
     }
 
-    /// Length along the strip over which the noise is one number, full-resolution pixels: 2√π s.
+    /// Length along the strip over which the noise is one number, full-resolution pixels: about twice 2√π s.
     pub fn independent_length(&self) -> f64 {
-        2.0 * PI.sqrt() * self.along * self.reduced as f64
+        4.0 * PI.sqrt() * self.along * self.reduced as f64
     }
 }
 
@@ -205,6 +218,7 @@ pub(super) fn response(
     );
     let mut best = Response {
         z: Grid::filled(width, height, 0.0),
+        excess: vec![0.0; width * height],
         strip: vec![0; width * height],
         turn: vec![0; width * height],
         strips: Vec::new(),
@@ -214,21 +228,17 @@ pub(super) fn response(
         while grid.factor < strip.reduced {
             grid = grid.halved(work)?;
         }
-        let found = sought(
-            &grid.filled(2.0 * strip.width / grid.factor as f64, work)?,
-            &grid.valid,
-            &strip,
-            tone,
-            work,
-        )?;
-        strip.noise = found.noise.max(LEAST_NOISE * f64::from(high - low));
+        let filled = grid.filled(2.0 * strip.width / grid.factor as f64, work)?;
+        let least = LEAST_NOISE * f64::from(high - low);
+        let found = sought(&filled, &grid.valid, &strip, tone, least, work)?;
         strip.floor = floor_for(significance, strip.correlation());
         strip.low = LOW * strip.floor;
         best.strips.push(strip);
         best.take(&found, grid.factor, work)?;
     }
     if let Some(mask) = image.mask() {
-        best.z.values_mut().iter_mut().zip(mask).for_each(|(z, valid)| *z = if *valid { *z } else { 0.0 });
+        let values = best.z.values_mut().iter_mut().zip(&mut best.excess);
+        values.zip(mask).filter(|(_, valid)| !**valid).for_each(|((z, e), _)| (*z, *e) = (0.0, 0.0));
     }
     Ok(Some(best))
 }
@@ -238,34 +248,24 @@ impl Response {
         &self.strips[usize::from(self.strip[cell])]
     }
 
-    /// Contrast beyond the low threshold, in the unit of the image; what widths are chosen and crests are followed by.
-    pub fn excess(&self, cell: usize) -> f32 {
-        let strip = self.strip_at(cell);
-        ((f64::from(self.z.values()[cell]) - strip.low) * strip.noise).max(0.0) as f32
-    }
-
     /// Takes the last strip's response where it stands out more than what is held.
     fn take(&mut self, found: &Found, factor: usize, work: &Work) -> Result<(), Stopped> {
         let number = self.strips.len() - 1;
-        let strips = &self.strips;
         let width = self.z.width();
-        let (noise, low) = (strips[number].noise, strips[number].low);
-        let rows = self.z.values_mut().par_chunks_mut(width);
+        let low = self.strips[number].low as f32;
+        let rows = self.z.values_mut().par_chunks_mut(width).zip(self.excess.par_chunks_mut(width));
         let rows = rows.zip(self.strip.par_chunks_mut(width)).zip(self.turn.par_chunks_mut(width));
-        rows.enumerate().try_for_each(|(row, ((zs, numbers), turns))| {
+        rows.enumerate().try_for_each(|(row, (((zs, excesses), numbers), turns))| {
             for col in 0..width {
                 let (amplitude, turn) = found.at(col, row, factor);
-                let z = f64::from(amplitude) / noise;
-                let held = f64::from(zs[col]);
-                let other = &strips[usize::from(numbers[col])];
-                let better = match (z > low, held > other.low) {
-                    (true, true) => (z - low) * noise > (held - other.low) * other.noise,
-                    (true, false) => true,
-                    (false, true) => false,
-                    (false, false) => z > held,
-                };
-                if better {
-                    (zs[col], numbers[col], turns[col]) = (z as f32, number as u8, turn);
+                if amplitude <= 0.0 {
+                    continue;
+                }
+                let noise = found.noise_at(col / factor, row / factor);
+                let z = amplitude / noise;
+                let excess = ((z - low) * noise).max(0.0);
+                if excess > excesses[col] || (excesses[col] == 0.0 && z > zs[col]) {
+                    (zs[col], excesses[col], numbers[col], turns[col]) = (z, excess, number as u8, turn);
                 }
             }
             work.advance(0)
@@ -331,7 +331,9 @@ struct Found {
     height: usize,
     amplitude: Vec<f32>,
     turn: Vec<u8>,
-    noise: f64,
+    /// Scale of the noise of one sample, tile by tile, and tiles a row.
+    noise: Vec<f32>,
+    tiles: usize,
 }
 
 impl Found {
@@ -354,6 +356,40 @@ impl Found {
     }
 }
 
+impl Found {
+    /// Noise at a cell, linear between the middles of tiles.
+    fn noise_at(&self, col: usize, row: usize) -> f32 {
+        let split = |x: usize, n: usize| {
+            let x = ((x as f32 + 0.5) / TILE as f32 - 0.5).clamp(0.0, (n - 1) as f32);
+            (x as usize, (x as usize + 1).min(n - 1), x.fract())
+        };
+        let (cols, rows) = (self.tiles, self.noise.len() / self.tiles);
+        let ((c0, c1, u), (r0, r1, v)) = (split(col, cols), split(row, rows));
+        let at = |c: usize, r: usize| self.noise[r * cols + c];
+        (at(c0, r0) * (1.0 - u) + at(c1, r0) * u) * (1.0 - v) + (at(c0, r1) * (1.0 - u) + at(c1, r1) * u) * v
+    }
+}
+
+/// Noise of each tile from the samples in it; a share of that of the whole at least, and that of the whole where
+/// samples are few.
+fn noise_of_tiles(parts: &[Tile], least: f64) -> Vec<f32> {
+    const FEW: usize = 200;
+    let sizes = |tile: &Tile| tile.edges.iter().map(|e| f64::from(e.abs())).collect::<Vec<f64>>();
+    // Every so many samples are enough for the whole.
+    let all: usize = parts.iter().map(|t| t.edges.len()).sum();
+    let every = all.div_ceil(200_000).max(1);
+    let mut whole: Vec<f64> =
+        parts.iter().flat_map(|t| &t.edges).step_by(every).map(|e| f64::from(e.abs())).collect();
+    let whole = scale_without_strong(&mut whole).max(least);
+    let of = |tile: &Tile| {
+        if tile.edges.len() < FEW {
+            return whole as f32;
+        }
+        scale_without_strong(&mut sizes(tile)).max(LEAST_SHARE * whole) as f32
+    };
+    parts.par_iter().map(of).collect()
+}
+
 /// Upper left corners of the tiles of a reduced grid, cells.
 fn tiles(width: usize, height: usize, factor: usize) -> Vec<(usize, usize)> {
     let (width, height) = (width.div_ceil(factor), height.div_ceil(factor));
@@ -366,6 +402,7 @@ fn sought(
     valid: &Option<Vec<bool>>,
     strip: &Strip,
     tone: ChannelTone,
+    least_noise: f64,
     work: &Work,
 ) -> Result<Found, Stopped> {
     let (width, height) = (grid.width(), grid.height());
@@ -383,18 +420,16 @@ fn sought(
         height,
         amplitude: vec![0.0; width * height],
         turn: vec![0; width * height],
-        noise: 0.0,
+        noise: noise_of_tiles(&parts, least_noise),
+        tiles: width.div_ceil(TILE),
     };
-    let mut noise = Vec::new();
     for ((col, row), tile) in corners.iter().zip(&parts) {
         for r in 0..tile.height {
             let (from, at) = (r * tile.width, (row + r) * width + col);
             found.amplitude[at..at + tile.width].copy_from_slice(&tile.amplitude[from..from + tile.width]);
             found.turn[at..at + tile.width].copy_from_slice(&tile.turn[from..from + tile.width]);
         }
-        noise.extend(tile.edges.iter().map(|e| f64::from(e.abs())));
     }
-    found.noise = scale_without_strong(&mut noise);
     if let Some(valid) = valid {
         let seen = |x: f64, y: f64| {
             let (c, r) = (x.round(), y.round());
@@ -443,6 +478,8 @@ struct Filter {
     step: usize,
     taps: Vec<f32>,
     half: f64,
+    /// How far ahead and behind the banks are sampled, cells.
+    ahead: f64,
     /// √(2π) σ: makes the response to a step of 1 be 1.
     gain: f32,
     /// Cells needed around a tile for the banks, and for the banks and the taps.
@@ -465,7 +502,8 @@ impl Filter {
         let reach = (TAPS_TO * strip.along / step as f64).round().max(1.0) as usize;
         let bell = |k: usize| (-0.5 * ((k * step) as f64 / strip.along).powi(2)).exp();
         let sum = bell(0) + 2.0 * (1..=reach).map(bell).sum::<f64>();
-        let bank_margin = strip.half().ceil() as usize + 1;
+        let ahead = APART * strip.along;
+        let bank_margin = strip.half().hypot(ahead).ceil() as usize + 1;
         Self {
             tone,
             smooth: Kernel::gaussian(strip.sigma),
@@ -473,6 +511,7 @@ impl Filter {
             step,
             taps: (0..=reach).map(|k| (bell(k) / sum) as f32).collect(),
             half: strip.half(),
+            ahead,
             gain: (TAU.sqrt() * strip.sigma) as f32,
             bank_margin,
             margin: bank_margin + reach * step + 1,
@@ -586,31 +625,33 @@ impl Filter {
         }
     }
 
-    /// The lesser of the two banks, where it beats what the tile holds.
+    /// The least of both banks before and behind each cell, where it beats what the tile holds.
     fn banks(&self, edge: &[f32], inner: usize, turn: u8, tile: &mut Tile) {
         let (cos, sin) = direction(turn);
-        let bank = |side: f64| {
-            let (dx, dy) = (-sin * self.half * side, cos * self.half * side);
+        let sample = |side: f64, ahead: f64| {
+            let (side, ahead) = (side * self.half, ahead * self.ahead);
+            let (dx, dy) = (ahead * cos - side * sin, ahead * sin + side * cos);
             let (c, r) = (dx.floor(), dy.floor());
             let (u, v) = ((dx - c) as f32, (dy - r) as f32);
-            let from = (self.bank_margin as isize + r as isize) * inner as isize
-                + self.bank_margin as isize
-                + c as isize;
+            let margin = self.bank_margin as isize;
+            let from = (margin + r as isize) * inner as isize + margin + c as isize;
             (from as usize, [(1.0 - u) * (1.0 - v), u * (1.0 - v), (1.0 - u) * v, u * v])
         };
-        let (right, left) = (bank(1.0), bank(-1.0));
-        let mut rising = vec![0.0f32; tile.width];
-        let mut falling = vec![0.0f32; tile.width];
+        let samples = [sample(1.0, 1.0), sample(1.0, -1.0), sample(-1.0, 1.0), sample(-1.0, -1.0)];
+        let mut lines = [const { Vec::new() }; 4];
+        lines.iter_mut().for_each(|line| *line = vec![0.0f32; tile.width]);
         for r in 0..tile.height {
-            for (out, (from, w)) in [(&mut rising, &right), (&mut falling, &left)] {
+            for (out, (from, w)) in lines.iter_mut().zip(&samples) {
                 let at = from + r * inner;
                 mix_two(out, &edge[at..], w[0], &edge[at + 1..], w[1]);
                 add_two(out, &edge[at + inner..], w[2], &edge[at + inner + 1..], w[3]);
             }
             let held = &mut tile.amplitude[r * tile.width..][..tile.width];
             let turns = &mut tile.turn[r * tile.width..][..tile.width];
+            let [a, b, c, d] = &lines;
             for i in 0..held.len() {
-                let (dark, bright) = (rising[i].min(-falling[i]), (-rising[i]).min(falling[i]));
+                let dark = a[i].min(b[i]).min((-c[i]).min(-d[i]));
+                let bright = (-a[i]).min(-b[i]).min(c[i].min(d[i]));
                 let amplitude = match self.tone {
                     ChannelTone::Dark => dark,
                     ChannelTone::Bright => bright,

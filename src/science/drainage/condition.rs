@@ -7,8 +7,9 @@ use serde::{Deserialize, Serialize};
 use crate::ground::{Grid, Polygon, Stopped, Work};
 
 use super::cells::Cells;
+use super::fill::Basins;
 use super::routing::STEPS;
-use super::{fill, flats};
+use super::{breach, flats};
 
 /// How sinks are dealt with.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
@@ -81,8 +82,27 @@ pub fn condition(
 ) -> Result<Conditioned, Stopped> {
     let elevation = &finite(elevation);
     let outlets = closed_sinks(elevation, closed);
-    let surface = fill::fill(elevation, &outlets, work)?;
-    let changed = changed(elevation, &surface, cells);
+    let mut basins = Basins::of(elevation, &outlets, work)?;
+    let sinks = basins.sinks(elevation);
+    let mut counts = Changed { left_closed: outlets.len(), filled: sinks.len(), ..Changed::default() };
+    counts.sinks = counts.left_closed + counts.filled;
+    let limits = match how {
+        Conditioning::Fill | Conditioning::FillSloped => None,
+        Conditioning::Breach => Some(None),
+        Conditioning::BreachThenFill => Some(Some(limits)),
+    };
+    let surface = match limits {
+        None => basins.fill(elevation, work)?,
+        Some(limits) => {
+            drop(basins);
+            let mut cut = Grid::clone(elevation);
+            counts.breached = breach::breach(&mut cut, cells, &sinks, &outlets, limits, work)?;
+            counts.filled -= counts.breached;
+            basins = Basins::of(&cut, &outlets, work)?;
+            basins.fill(&cut, work)?
+        }
+    };
+    let changed = changed(elevation, &surface, cells, counts);
     let flats = flats::drain(&surface, cells, &outlets, how != Conditioning::Fill, work)?;
     Ok(Conditioned { surface, changed, flats })
 }
@@ -141,26 +161,29 @@ fn lowest_sink(elevation: &Grid<f32>, polygon: &Polygon) -> Option<usize> {
 }
 
 /// What became of the elevation, with the ground areas of the cells.
-fn changed(elevation: &Grid<f32>, surface: &Grid<f32>, cells: &Cells) -> Changed {
-    let mut changed = Changed { valid_cells: surface.valid_count(), ..Changed::default() };
+fn changed(elevation: &Grid<f32>, surface: &Grid<f32>, cells: &Cells, counts: Changed) -> Changed {
+    let mut changed = Changed { valid_cells: surface.valid_count(), ..counts };
     let width = elevation.width().max(1);
     for (row, (before, after)) in
         elevation.values().chunks(width).zip(surface.values().chunks(width)).enumerate()
     {
         let (mut raised, mut cut) = (0.0, 0.0);
-        for (col, (before, after)) in before.iter().zip(after).enumerate() {
-            let by = f64::from(*after) - f64::from(*before);
-            if by == 0.0 || !surface.is_valid(col, row) {
-                continue;
-            }
-            if by > 0.0 {
-                changed.raised_cells += 1;
-                changed.deepest_fill = changed.deepest_fill.max(by);
-                raised += by;
-            } else {
-                changed.cut_cells += 1;
-                changed.deepest_cut = changed.deepest_cut.max(-by);
-                cut -= by;
+        let same = |at: usize| before[at..].iter().zip(&after[at..]).take(16).all(|(a, b)| a == b);
+        for at in (0..before.len()).step_by(16).filter(|at| !same(*at)) {
+            for col in at..before.len().min(at + 16) {
+                let by = f64::from(after[col]) - f64::from(before[col]);
+                if by == 0.0 || !surface.is_valid(col, row) {
+                    continue;
+                }
+                if by > 0.0 {
+                    changed.raised_cells += 1;
+                    changed.deepest_fill = changed.deepest_fill.max(by);
+                    raised += by;
+                } else {
+                    changed.cut_cells += 1;
+                    changed.deepest_cut = changed.deepest_cut.max(-by);
+                    cut -= by;
+                }
             }
         }
         changed.raised_volume += raised * cells.area[row];

@@ -1,5 +1,6 @@
 //! All flow to the neighbour of steepest descent.
 
+use multiversion::multiversion;
 use rayon::prelude::*;
 
 use crate::ground::{Grid, Method, Read, Source, Stopped, Symbol, Work};
@@ -38,7 +39,7 @@ pub const METHOD: Method = Method {
 /// Rows worked on at once.
 const BLOCK: usize = 64;
 /// No neighbour is lower.
-const LEVEL: u8 = 10;
+pub(super) const LEVEL: u8 = 10;
 
 /// The receiver of every cell.
 ///
@@ -74,8 +75,9 @@ pub(super) fn weights(cells: &Cells, row: usize) -> [f32; 8] {
     steps.map(|d| (longest / d) as f32)
 }
 
-/// The code of the steepest descent of each cell of the middle row, or [`LEVEL`]. Missing cells come out level.
-fn steepest(rows: &Rows, weights: &[f32; 8], out: &mut [u8]) {
+/// The code of the steepest descent of each cell of the middle row, or [`LEVEL`] or [`VOID`].
+#[multiversion(targets("x86_64+avx2"))]
+pub(super) fn steepest(rows: &Rows, weights: &[f32; 8], out: &mut [u8]) {
     let n = out.len();
     let [above, own, below] = rows.three();
     let (z, east, west) = (&own[1..=n], &own[2..n + 2], &own[..n]);
@@ -90,7 +92,7 @@ fn steepest(rows: &Rows, weights: &[f32; 8], out: &mut [u8]) {
             code = if slope > best { k as u32 } else { code };
             best = if slope > best { slope } else { best };
         }
-        out[i] = code as u8;
+        out[i] = if z[i] == f32::INFINITY { VOID } else { code as u8 };
     }
 }
 

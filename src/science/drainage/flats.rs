@@ -1,6 +1,7 @@
 //! Where water goes on ground without any slope: a gradient in whole numbers, so that no surface has to be
 //! raised by steps that single precision cannot hold.
 
+use multiversion::multiversion;
 use rayon::prelude::*;
 
 use crate::ground::{Grid, Method, Read, Source, Stopped, Symbol, Work};
@@ -14,7 +15,7 @@ pub const METHOD: Method = Method {
     id: "drainage.flats",
     name: "Drainage gradient on flats",
     question: "Which way does water go where the ground is level?",
-    formula: "g = 2 t + (max a − a);  a cell drains to the neighbour of its flat with the steepest fall of g",
+    formula: "g = 2 t − a;  a cell beside a draining one of its height drains there, any other to the neighbour of its flat with the steepest fall of g",
     symbols: &[
         Symbol {
             symbol: "t",
@@ -29,7 +30,7 @@ pub const METHOD: Method = Method {
     ],
     limits: &[
         "where the relief is lost, the way of the channel across the flat is a guess",
-        "when flats are to stay flat, g = t: the shortest way out",
+        "when flats are to stay flat, water takes the shortest way out, t falling by 1 a step",
     ],
     sources: &[
         Source {
@@ -74,20 +75,16 @@ pub(super) fn drain(
     sloped: bool,
     work: &Work,
 ) -> Result<Vec<u8>, Stopped> {
-    work.phase("flats", 2 * surface.height() as u64);
+    work.phase("flats", 3 * surface.height() as u64);
     let mut codes = level(surface, work)?;
     outlets.iter().for_each(|i| codes[*i] = OUT);
-    let width = surface.width();
-    let mut flat = Flat::new(surface, cells, sloped);
-    for row in 0..surface.height() {
-        for i in row * width..(row + 1) * width {
-            if codes[i] == FLAT {
-                flat.resolve(i, &mut codes, work)?;
-            }
-        }
-        work.advance(1)?;
+    let mut flats = Flats::new(surface, codes);
+    let rims = flats.find_ways_out(sloped, work)?;
+    flats.close_the_rest(work)?;
+    if sloped {
+        flats.lean(rims, cells, work)?;
     }
-    Ok(codes)
+    Ok(flats.codes)
 }
 
 /// Sorts cells into [`LOWER`], [`VOID`], [`OUT`] (level, beside missing ground or the edge) and [`FLAT`].
@@ -106,6 +103,7 @@ fn level(surface: &Grid<f32>, work: &Work) -> Result<Vec<u8>, Stopped> {
     Ok(codes)
 }
 
+#[multiversion(targets("x86_64+avx2"))]
 fn sort_row(rows: &Rows, out: &mut [u8]) {
     let n = out.len();
     let [above, own, below] = rows.three();
@@ -125,43 +123,46 @@ fn sort_row(rows: &Rows, out: &mut [u8]) {
     }
 }
 
-/// Room for one flat at a time. Its cells lie neither on the raster's edge nor beside missing ground, so that
-/// all their neighbours exist.
-struct Flat<'a> {
+/// The cells of flats with a neighbour that belongs to none, in the middle of three rows of codes.
+#[multiversion(targets("x86_64+avx2"))]
+fn find_borders(codes: &[u8], out: &mut [bool]) {
+    let width = out.len();
+    if width < 3 {
+        return;
+    }
+    let (above, own, below) = (&codes[..width], &codes[width..2 * width], &codes[2 * width..3 * width]);
+    let n = width - 2;
+    let out = &mut out[1..=n];
+    let (w, own, e) = (&own[..n], &own[1..=n], &own[2..n + 2]);
+    let (nw, nn, ne) = (&above[..n], &above[1..=n], &above[2..n + 2]);
+    let (sw, ss, se) = (&below[..n], &below[1..=n], &below[2..n + 2]);
+    for i in 0..n {
+        let sides = (w[i] == FLAT) & (e[i] == FLAT) & (nn[i] == FLAT) & (ss[i] == FLAT);
+        let corners = (nw[i] == FLAT) & (ne[i] == FLAT) & (sw[i] == FLAT) & (se[i] == FLAT);
+        out[i] = (own[i] == FLAT) & !(sides & corners);
+    }
+}
+
+/// Flats on their way to being drained. Cells that are [`FLAT`] lie neither on the raster's edge nor beside missing
+/// ground, so that all their neighbours exist; those that touch have one height.
+struct Flats<'a> {
     z: &'a [f32],
-    offsets: [isize; 8],
     width: usize,
-    weights: Vec<[f32; 8]>,
-    sloped: bool,
-    /// Place of a cell in `cells`, counted from 1.
-    place: Vec<u32>,
-    cells: Vec<usize>,
-    toward: Vec<u32>,
-    away: Vec<u32>,
-    queue: Vec<u32>,
+    offsets: [isize; 8],
+    codes: Vec<u8>,
+    /// t of a cell of a flat, 0 before it is reached; later the gradient.
+    steps: Vec<u32>,
     done: usize,
 }
 
-impl<'a> Flat<'a> {
-    fn new(surface: &'a Grid<f32>, cells: &Cells, sloped: bool) -> Self {
-        let width = surface.width();
-        Self {
-            z: surface.values(),
-            offsets: STEPS.map(|(dx, dy)| dy * width as isize + dx),
-            width,
-            weights: (0..surface.height()).map(|row| weights(cells, row)).collect(),
-            sloped,
-            place: vec![0; surface.len()],
-            cells: Vec::new(),
-            toward: Vec::new(),
-            away: Vec::new(),
-            queue: Vec::new(),
-            done: 0,
-        }
-    }
+/// Added to a gradient, which may be negative; marks that it is complete.
+const COMPLETE: u32 = 1 << 31;
 
-    fn neighbours(&self, i: usize) -> [usize; 8] {
-        self.offsets.map(|d| i.wrapping_add_signed(d))
+impl<'a> Flats<'a> {
+    fn new(surface: &'a Grid<f32>, codes: Vec<u8>) -> Self {
+        let width = surface.width();
+        let offsets = STEPS.map(|(dx, dy)| dy * width as isize + dx);
+        Self { z: surface.values(), width, offsets, codes, steps: vec![0; surface.len()], done: 0 }
     }
 
     /// Looks at Stop now and then.
@@ -170,106 +171,141 @@ impl<'a> Flat<'a> {
         if self.done % PAUSE == 0 { work.advance(0) } else { Ok(()) }
     }
 
-    /// Drains the flat that holds cell `start`.
-    fn resolve(&mut self, start: usize, codes: &mut [u8], work: &Work) -> Result<(), Stopped> {
-        self.gather(start, codes, work)?;
-        if self.toward.iter().all(|t| *t == 0) {
-            // No way out: the basin stays closed at its first cell, and what is left drains there.
-            codes[start] = OUT;
-            let cells = std::mem::take(&mut self.cells);
-            cells.iter().for_each(|i| self.place[*i] = 0);
-            for i in cells {
-                if codes[i] == FLAT {
-                    self.resolve(i, codes, work)?;
-                }
-            }
-            return Ok(());
-        }
-        let mut toward = std::mem::take(&mut self.toward);
-        self.spread(&mut toward, work)?;
-        if self.sloped {
-            let mut away = std::mem::take(&mut self.away);
-            self.spread(&mut away, work)?;
-            let most = away.iter().copied().max().unwrap_or(0);
-            toward.iter_mut().zip(&away).for_each(|(t, a)| *t = 2 * *t + (most - a));
-            self.away = away;
-        }
-        self.toward = toward;
-        for c in 0..self.cells.len() {
-            self.pause(work)?;
-            codes[self.cells[c]] = self.steepest(c);
-        }
-        Ok(())
-    }
-
-    /// Collects the flat, with 1 in `toward` beside cells that drain and 1 in `away` beside higher ground.
-    fn gather(&mut self, start: usize, codes: &[u8], work: &Work) -> Result<(), Stopped> {
-        self.cells.clear();
-        self.toward.clear();
-        self.away.clear();
-        self.cells.push(start);
-        self.place[start] = 1;
-        let mut next = 0;
-        while next < self.cells.len() {
-            self.pause(work)?;
-            let i = self.cells[next];
-            next += 1;
-            let (mut toward, mut away) = (0, 0);
-            for j in self.neighbours(i) {
-                if codes[j] == FLAT {
-                    if self.place[j] == 0 {
-                        self.cells.push(j);
-                        self.place[j] = self.cells.len() as u32;
+    /// Drains every flat that touches a cell of its height that drains, by the shortest way. With `rims`, the
+    /// cells beside higher ground are returned.
+    fn find_ways_out(&mut self, rims: bool, work: &Work) -> Result<Vec<usize>, Stopped> {
+        let (mut exits, mut beside_higher) = (Vec::new(), Vec::new());
+        let mut borders = vec![false; self.width];
+        for row in 1..(self.z.len() / self.width.max(1)).saturating_sub(1) {
+            find_borders(&self.codes[(row - 1) * self.width..][..3 * self.width], &mut borders);
+            for (col, _) in borders.iter().enumerate().filter(|(_, border)| **border) {
+                let i = row * self.width + col;
+                let (mut exit, mut higher) = (OUT, false);
+                for (k, offset) in self.offsets.iter().enumerate() {
+                    let j = i.wrapping_add_signed(*offset);
+                    if self.codes[j] != FLAT {
+                        if self.z[j] > self.z[i] {
+                            higher = true;
+                        } else if exit == OUT {
+                            exit = k as u8;
+                        }
                     }
-                } else if self.z[j] > self.z[i] {
-                    away = 1;
-                } else {
-                    toward = 1;
+                }
+                if exit != OUT {
+                    exits.push((i, exit));
+                }
+                if higher && rims {
+                    beside_higher.push(i);
                 }
             }
-            self.toward.push(toward);
-            self.away.push(away);
+            work.advance(1)?;
+        }
+        let mut front = Vec::with_capacity(exits.len());
+        for (i, exit) in exits {
+            self.codes[i] = exit;
+            self.steps[i] = 1;
+            front.push(i);
+        }
+        self.spread(front, work)?;
+        Ok(beside_higher)
+    }
+
+    /// Steps on from drained cells of flats, ring by ring.
+    fn spread(&mut self, mut front: Vec<usize>, work: &Work) -> Result<(), Stopped> {
+        let mut next = Vec::new();
+        while !front.is_empty() {
+            for i in front.drain(..) {
+                self.pause(work)?;
+                for (k, offset) in self.offsets.iter().enumerate() {
+                    let j = i.wrapping_add_signed(*offset);
+                    if self.codes[j] == FLAT {
+                        self.codes[j] = (k as u8 + 4) % 8;
+                        self.steps[j] = self.steps[i] + 1;
+                        next.push(j);
+                    }
+                }
+            }
+            std::mem::swap(&mut front, &mut next);
         }
         Ok(())
     }
 
-    /// Counts steps through the flat from the cells that hold 1; a flat without any stays 0.
-    fn spread(&mut self, steps: &mut [u32], work: &Work) -> Result<(), Stopped> {
-        self.queue.clear();
-        self.queue.extend((0..steps.len() as u32).filter(|c| steps[*c as usize] == 1));
-        let mut next = 0;
-        while next < self.queue.len() {
-            self.pause(work)?;
-            let c = self.queue[next] as usize;
-            next += 1;
-            for j in self.neighbours(self.cells[c]) {
-                let place = self.place[j];
-                if place > 0 && steps[place as usize - 1] == 0 {
-                    steps[place as usize - 1] = steps[c] + 1;
-                    self.queue.push(place - 1);
+    /// Flats without a way out drain to their first cell, which stays closed.
+    fn close_the_rest(&mut self, work: &Work) -> Result<(), Stopped> {
+        for row in 0..self.z.len() / self.width.max(1) {
+            for i in row * self.width..(row + 1) * self.width {
+                if self.codes[i] == FLAT {
+                    self.codes[i] = OUT;
+                    // Its neighbours of the flat are exits; itself it is none and takes no part in the gradient.
+                    let mut front = Vec::new();
+                    for (k, offset) in self.offsets.iter().enumerate() {
+                        let j = i.wrapping_add_signed(*offset);
+                        if self.codes[j] == FLAT {
+                            self.codes[j] = (k as u8 + 4) % 8;
+                            self.steps[j] = 1;
+                            front.push(j);
+                        }
+                    }
+                    self.spread(front, work)?;
                 }
             }
+            work.advance(1)?;
         }
         Ok(())
     }
 
-    /// The step of steepest fall of the gradient; cells that drain lie at 0, so that there always is one.
-    fn steepest(&self, c: usize) -> u8 {
-        let i = self.cells[c];
-        let own = self.toward[c];
-        let weights = &self.weights[i / self.width];
-        let mut best = (0.0, OUT);
-        for (k, j) in self.neighbours(i).into_iter().enumerate() {
-            let at = match self.place[j] {
-                0 if self.z[j] == self.z[i] => 0,
-                0 => continue,
-                place => self.toward[place as usize - 1],
-            };
-            let fall = (f64::from(own) - f64::from(at)) * f64::from(weights[k]);
-            if fall > best.0 {
-                best = (fall, k as u8);
+    /// Turns drained cells of flats along the gradient, but for those beside their exit.
+    fn lean(&mut self, rims: Vec<usize>, cells: &Cells, work: &Work) -> Result<(), Stopped> {
+        // g = 2t − a within each flat; max a is the same for all of its cells.
+        let gradient = |t: u32, a: u32| (COMPLETE + 2 * t).wrapping_sub(a);
+        let mut front: Vec<usize> = rims;
+        front.retain(|i| self.steps[*i] > 0);
+        front.iter().for_each(|i| self.steps[*i] = gradient(self.steps[*i], 1));
+        let (mut next, mut away) = (Vec::new(), 1);
+        while !front.is_empty() {
+            away += 1;
+            for i in front.drain(..) {
+                self.pause(work)?;
+                for offset in self.offsets {
+                    let j = i.wrapping_add_signed(offset);
+                    if (1..COMPLETE / 4).contains(&self.steps[j]) {
+                        self.steps[j] = gradient(self.steps[j], away);
+                        next.push(j);
+                    }
+                }
             }
+            std::mem::swap(&mut front, &mut next);
         }
-        best.1
+        let Self { steps, offsets, codes, width, .. } = self;
+        let block = (BLOCK * *width).max(1);
+        codes.par_chunks_mut(block).enumerate().try_for_each(|(number, codes)| {
+            for (row, codes) in codes.chunks_mut(*width).enumerate() {
+                let row = number * BLOCK + row;
+                let weights = weights(cells, row);
+                for (col, code) in codes.iter_mut().enumerate().filter(|(_, code)| **code < OUT) {
+                    let i = row * *width + col;
+                    let is_exit = steps[i.wrapping_add_signed(offsets[usize::from(*code)])] == 0;
+                    if !is_exit && steps[i] >= COMPLETE / 2 {
+                        *code = steepest(steps, i, offsets, &weights);
+                    }
+                }
+                work.advance(1)?;
+            }
+            Ok(())
+        })
     }
+}
+
+/// The step of steepest fall of the gradient within the flat. There is one: t falls by 1 toward the exit, and a
+/// changes by 1 at most.
+fn steepest(steps: &[u32], i: usize, offsets: &[isize; 8], weights: &[f32; 8]) -> u8 {
+    let mut best = (0.0, OUT);
+    for (k, offset) in offsets.iter().enumerate() {
+        let at = steps[i.wrapping_add_signed(*offset)];
+        let fall = (i64::from(steps[i]) - i64::from(at)) as f32 * weights[k];
+        if at > 0 && fall > best.0 {
+            best = (fall, k as u8);
+        }
+    }
+    best.1
 }

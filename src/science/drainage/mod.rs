@@ -2,6 +2,7 @@
 
 pub mod accumulate;
 pub mod basins;
+mod breach;
 pub mod cells;
 pub mod condition;
 mod curvature;
@@ -17,6 +18,7 @@ mod outlets;
 mod outline;
 mod paths;
 pub mod routing;
+pub mod smoothness;
 mod sources;
 mod tree;
 
@@ -25,6 +27,7 @@ use crate::ground::Method;
 /// The methods of this family.
 pub const METHODS: &[&Method] = &[
     &fill::METHOD,
+    &breach::METHOD,
     &flats::METHOD,
     &d8::METHOD,
     &d_infinity::METHOD,
@@ -35,4 +38,5 @@ pub const METHODS: &[&Method] = &[
     &curvature::METHOD,
     &drop::METHOD,
     &basins::METHOD,
+    &smoothness::METHOD,
 ];

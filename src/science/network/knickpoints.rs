@@ -5,7 +5,7 @@ use crate::numeric::huber::solve;
 use crate::numeric::tail::{f_above, normal_above, normal_quantile};
 
 use super::line::Line;
-use super::sources::{DERIVED, at, memory};
+use super::sources::{DERIVED, PERRON_ROYDEN, at, memory};
 
 pub const METHOD: Method = Method {
     id: "network.knickpoints",
@@ -27,13 +27,14 @@ pub const METHOD: Method = Method {
     assumptions: &["Means over blocks of stations err independently."],
     limits: &[
         "Stations are gathered into blocks, doubled in size until the residuals of neighbouring blocks no longer correlate; with fewer than 12 blocks nothing is said.",
+        "A change of steepness by less than a tenth is not told.",
         "A bend is told only when a break fits better than a parabola: smooth change and a wrong concavity give bends too.",
         "A single step (a fall without change of steepness above) shows as two breaks when it is longer than a few blocks, else not at all.",
         "Level 1 % for the first break of a channel; further breaks are sought within the parts at the same level.",
         "A dam, a lake, a filled pit or a breach in the raster looks like a knickpoint: see the overlay of changed cells.",
     ],
     sources: &[
-        PERRON_ROYDEN_HERE,
+        PERRON_ROYDEN,
         memory(
             "davies1987",
             "Davies, R. B.",
@@ -45,8 +46,6 @@ pub const METHOD: Method = Method {
     ],
 };
 
-const PERRON_ROYDEN_HERE: crate::ground::Source = super::sources::PERRON_ROYDEN;
-
 /// Chance at which a break is believed.
 pub const LEVEL: f64 = 0.01;
 /// Blocks a stretch is first cut into, and needs at least.
@@ -54,6 +53,9 @@ const MOST_BLOCKS: usize = 48;
 const LEAST_BLOCKS: usize = 12;
 /// Blocks that must lie on each side of a break.
 const EDGE: usize = 3;
+
+/// ln of the least change of steepness that is called a knickpoint: a tenth.
+const LEAST_CHANGE: f64 = 0.095_31;
 
 /// A break of a profile.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -164,12 +166,18 @@ impl Scan {
 
     fn believed(&self, chi: &[f64], z: &[f64]) -> Option<Break> {
         let [below, above] = self.slopes;
-        if self.p >= LEVEL || !self.is_sharp || below <= 0.0 || above <= 0.0 {
+        let ratio = above / below;
+        if self.p >= LEVEL
+            || !self.is_sharp
+            || below <= 0.0
+            || above <= 0.0
+            || ratio.ln().abs() < LEAST_CHANGE
+        {
             return None;
         }
         let psi = refined(chi, z, self.psi);
         let index = chi.partition_point(|c| *c < psi).clamp(1, chi.len() - 1);
-        Some(Break { index, ratio: above / below, p: self.p })
+        Some(Break { index, ratio, p: self.p })
     }
 }
 

@@ -5,6 +5,7 @@ mod ascent;
 mod branch;
 mod chi;
 pub mod compare;
+mod course;
 pub mod density;
 pub mod flow;
 pub mod hierarchy;
@@ -13,6 +14,7 @@ pub mod junctions;
 mod kinds;
 mod knickpoints;
 mod line;
+pub mod meanders;
 mod path;
 pub mod pattern;
 pub mod planform;
@@ -36,4 +38,7 @@ pub const METHODS: &[&Method] = &[
     &junctions::METHOD,
     &pattern::METHOD,
     &compare::METHOD,
+    &planform::METHOD,
+    &meanders::METHOD,
+    &flow::METHOD,
 ];

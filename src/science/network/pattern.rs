@@ -91,6 +91,19 @@ pub struct PatternFeatures {
     pub radial: Option<f64>,
 }
 
+/// The features as the coordinates in which kinds are told apart: R̄, R̄, mean angle over 90°, share, ln of the
+/// ratio, mean cos; `None` where one is not known.
+pub fn coordinates(features: &PatternFeatures) -> [Option<f64>; 6] {
+    [
+        Some(features.alignment),
+        Some(features.crossing),
+        features.mean_junction_deg.map(|a| a / 90.0),
+        features.right_angles,
+        features.short_across.filter(|r| *r > 0.0).map(f64::ln),
+        features.radial,
+    ]
+}
+
 /// A straight piece of a link on the ground.
 struct Piece {
     at: Point,
@@ -124,7 +137,7 @@ pub fn pattern(network: &Network, junctions: &Junctions, place: &Place, summit: 
     };
     let links = network.reaches.len();
     let too_few = links < LEAST_LINKS;
-    let probabilities = if too_few { None } else { kinds::probabilities(&features) };
+    let probabilities = if too_few { None } else { Some(kinds::probabilities(&coordinates(&features))) };
     Pattern {
         links,
         too_few,

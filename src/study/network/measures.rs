@@ -2,12 +2,12 @@
 
 use crate::ground::{Caution, LengthUnit, Stopped, Work};
 use crate::science::network::density::density;
-use crate::science::network::flow::{FlowAsk, PalaeoFlow};
+use crate::science::network::flow::{self, FlowAsk, PalaeoFlow};
 use crate::science::network::hierarchy::{horton, order_counts, tokunaga};
 use crate::science::network::hypsometry::hypsometry;
 use crate::science::network::junctions::junctions;
 use crate::science::network::pattern::pattern;
-use crate::science::network::planform::Planform;
+use crate::science::network::planform::{Planform, planforms};
 use crate::science::network::profile::{ProfileAsk, profiles};
 use crate::science::network::scaling::{flint, hack};
 use crate::study::{NetworkEntry, NetworkFinding, Sheet, fingerprint};
@@ -49,7 +49,7 @@ pub fn measure(
     };
     let (profiles, chi) = profiles(&network, &profile_ask);
     work.advance(1)?;
-    let planforms = Vec::<Planform>::new();
+    let planforms = planforms(&network, place, s.valley_widths, cell, MOST_PLANFORMS);
     let trunk = planforms.first().map(|p| p.length);
     let hypsometry = drainage
         .as_ref()
@@ -64,7 +64,7 @@ pub fn measure(
         width.map(|w| w / cell),
     ));
     if flow.is_ok() {
-        cautions.push(Caution::new("flow-ranges", ""));
+        cautions.push(Caution::new("flow-ranges", flow::CAUTION));
     }
     let middle = ground.outline.bounds().map(|b| b.centre());
     Ok(NetworkFinding {
@@ -139,8 +139,7 @@ fn palaeo_flow(
         shields: [s.least_shields, s.greatest_shields],
         manning_earth: [s.least_manning, s.greatest_manning],
     };
-    let _ = ask;
-    Err("interim".into())
+    flow::flow(&ask).map(|result| (ask, result))
 }
 
 /// Least and greatest slope of the reaches along a path, of those that fall; `None` without elevation.

@@ -3,6 +3,8 @@
 
 use crate::ground::{Grid, LonLat, Network, Point, Polyline, Stopped, Work};
 use crate::science::channel::detect::{DetectSettings, Detected, detect};
+use crate::science::channel::sense::sense;
+use crate::science::channel::width;
 use crate::study::glance::glance;
 use crate::study::{FromImage, Id, ImageKind, NetworkEntry, OpenRaster, Sheet, Sources, TracingFinding};
 
@@ -50,11 +52,12 @@ pub fn channels(
     let drawn: Vec<Polyline> =
         ask.traced.iter().map(|t| Polyline(t.line.0.iter().map(|p| ground.of_full(*p)).collect())).collect();
     network = network.with_drawn(&drawn, settings.narrowest_px.max(2.0));
+    width::measure(&image, &mut network, settings.tone, settings.widest_px, work)?;
     let arrows: Vec<[Point; 2]> = ask.flows.iter().map(|arrow| arrow.map(|p| ground.of_full(p))).collect();
     let heights = ask.elevation.and_then(|id| Heights::of(sheet, sources, id, ground, work));
     let height = |p: Point| heights.as_ref().and_then(|h| h.at(ground.to_full(p)));
-    let lost: Vec<Point> = Vec::new();
-    let _ = &arrows;
+    let known: Option<&dyn Fn(Point) -> Option<f64>> = if heights.is_some() { Some(&height) } else { None };
+    let (mut network, lost) = sense(network, known, &arrows);
     if heights.is_some() {
         for node in &mut network.nodes {
             node.elevation_m = height(node.at);

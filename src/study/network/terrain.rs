@@ -2,7 +2,7 @@
 
 use std::sync::{Arc, Mutex, PoisonError};
 
-use crate::ground::{Caution, Grid, LengthUnit, Point, Stopped, Work};
+use crate::ground::{Caution, Grid, Point, Stopped, Work};
 use crate::science::drainage::accumulate::area;
 use crate::science::drainage::basins::{Basin, basins};
 use crate::science::drainage::cells::Cells;
@@ -10,6 +10,7 @@ use crate::science::drainage::condition::{BreachLimits, Conditioned, condition};
 use crate::science::drainage::d8::receivers;
 use crate::science::drainage::extract::{ChannelAsk, Channels, channels as extract};
 use crate::science::drainage::routing::Receivers;
+use crate::science::drainage::smoothness::smoothness;
 use crate::science::network::density::inflation_of;
 use crate::study::{DrainageFinding, FromElevation, NetworkEntry, Sheet, fingerprint};
 
@@ -92,7 +93,7 @@ pub fn channels(
     let mut all =
         basins(surface, cells, receivers, area, &found.network, &outlets, snap_cells, MOST_BASINS, work)?;
     let summit = all.first().and_then(|b| summit(surface, b)).map(|p| ground.to_full(p));
-    let mut cautions: Vec<Caution> = Vec::new();
+    let (_, mut cautions) = smoothness(&ground.image, surface, &found.network, work)?;
     cautions.extend(changed_much(&found, ground, conditioned));
     if !found.is_proposed && channel_ask.threshold_m2.is_none() {
         cautions.push(Caution::new(
@@ -227,9 +228,4 @@ fn change_map(ground: &Ground, conditioned: &Conditioned) -> (Grid<f32>, f64) {
         greatest
     });
     (map, step as f64 * ground.factor)
-}
-
-/// Whether areas are in m² (else in square pixels).
-pub fn has_metres(ground: &Ground) -> bool {
-    ground.place.unit() == LengthUnit::Metre
 }

@@ -56,11 +56,12 @@ pub fn sentence(n: &NetworkFinding) -> String {
         ));
     }
     match (n.pattern.probabilities, n.pattern.too_few) {
+        (_, true) => parts.push(format!("too few links ({}) to name a pattern", n.pattern.links)),
+        (None, false) => parts.push("no pattern told".into()),
         (Some(p), false) => {
             let best = (0..p.len()).max_by(|a, b| p[*a].total_cmp(&p[*b])).unwrap_or(0);
             parts.push(format!("pattern {} with probability {:.0} %", PATTERN_NAMES[best], 100.0 * p[best]));
         }
-        _ => parts.push(format!("too few links ({}) to name a pattern", n.pattern.links)),
     }
     if let Some(p) = n.planforms.first() {
         parts.push(format!("trunk of sinuosity {:.2}", p.sinuosity));

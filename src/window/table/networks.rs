@@ -198,7 +198,7 @@ fn arrowhead(painter: &Painter, line: &Line, lens: &Lens, ink: &Ink) {
 }
 
 /// A filled head on a halo, its middle at `at`.
-fn head(painter: &Painter, at: Pos2, along: Vec2, line_width: f32, ink: &Ink) {
+pub fn head(painter: &Painter, at: Pos2, along: Vec2, line_width: f32, ink: &Ink) {
     if !painter.clip_rect().contains(at) {
         return;
     }

@@ -10,7 +10,8 @@ use egui::{RichText, Ui};
 
 use super::say;
 use crate::desk::{
-    Command, DrawCommand, Model, NetworkCommand, Tool, ViewCommand, channel_facts, channels, planform_facts,
+    Command, Dialog, DrawCommand, Model, NetworkCommand, Tool, ViewCommand, channel_facts, channels,
+    planform_facts,
 };
 use crate::study::{NetworkEntry, NetworkSource};
 use crate::window::controls::{self, Commands, button, caution, heading, line, look, quiet, rule, toggle};
@@ -39,6 +40,7 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
     if let NetworkSource::Elevation(_) = &network.source {
         drainage::threshold(ui, model, network, out);
     }
+    pointed(ui, model);
     let finding = match results.charted(network.id).map(|charted| &charted.outcome) {
         None => return picks::show(ui, model, network, out),
         Some(Err(why)) => {
@@ -47,7 +49,6 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
         }
         Some(Ok(finding)) => finding,
     };
-    pointed(ui, model);
     heading(ui, "What it is");
     controls::facts(ui, &look, &channel_facts::about(finding));
     finding.cautions.iter().for_each(|c| caution(ui, &look, &c.text));
@@ -103,6 +104,7 @@ fn tools(ui: &mut Ui, model: &Model, network: &NetworkEntry, out: &mut Commands)
             toggle(ui, model, out, Command::View(ViewCommand::Divides), "Divides", layers.divides);
             toggle(ui, model, out, Command::View(ViewCommand::Changes), "Changed ground", layers.changes);
         }
+        quiet(ui, model, out, Command::View(ViewCommand::Open(Dialog::Settings)), "Settings…");
     });
     rule(ui, &look(model));
 }
