@@ -96,6 +96,9 @@ fn serves(finding: &NetworkFinding, id: &str) -> bool {
         "channel.pen" | "channel.pen-cost" | "channel.pen-chance" => {
             finding.network.reaches.iter().any(|r| r.origin == ReachOrigin::Traced)
         }
+        "channel.width" => finding.network.reaches.iter().any(|r| r.width.is_some()),
+        "network.planform" | "network.meanders" => !finding.planforms.is_empty(),
+        "network.palaeo-flow" => finding.flow.is_ok(),
         "network.horton" => finding.horton.is_some(),
         "network.tokunaga" => finding.tokunaga.is_some(),
         "network.density" => finding.density.is_some(),

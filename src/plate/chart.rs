@@ -181,7 +181,7 @@ impl Chart {
 
     /// Rulers with round values and what they read.
     pub fn axes(&self, sketch: &mut Sketch, x_title: &str, y_title: &str, theme: &Theme) {
-        self.bare_axes(sketch, x_title, y_title, &self.x.ticks(11.0), &self.y.ticks(5.5), theme);
+        self.bare_axes(sketch, x_title, y_title, &self.x.ticks(9.0), &self.y.ticks(5.5), theme);
     }
 
     /// Rulers with given marks.

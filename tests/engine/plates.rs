@@ -2,6 +2,7 @@
 //! nothing off the page. Set `VENTIFACT_PICTURES` to a folder to look at them.
 
 mod networks;
+mod river_measures;
 mod rivers;
 mod sorrel;
 

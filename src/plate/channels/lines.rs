@@ -6,7 +6,7 @@ use super::super::chart::{FINEST_MM, simplified};
 use super::super::sketch::{Sketch, Type};
 use super::super::{Item, Rgba, Theme, font, numbers};
 
-/// Line width of a reach of this Strahler order, millimetres; `None` where the order is undefined.
+/// Line width of a reach of this Strahler order, millimetres; one width where the order is undefined (`None`).
 pub(in super::super) fn order_width(order: Option<u32>) -> f64 {
     match order {
         Some(order) => (0.12 + 0.17 * f64::from(order)).min(1.3),

@@ -97,13 +97,16 @@ fn from_elevation(finding: &NetworkFinding) -> Vec<Row> {
         count(c.filled),
         count(c.left_closed)
     );
-    vec![
+    let mut rows = vec![
         row("threshold", area(d.channels.threshold_m2, LengthUnit::Metre)),
         row("basins", count(d.basins.len())),
         row("raised", raised),
         row("cut", cut),
-        row("sinks", sinks),
-    ]
+    ];
+    if c.sinks > 0 {
+        rows.push(row("sinks", sinks));
+    }
+    rows
 }
 
 fn from_image(finding: &NetworkFinding) -> Vec<Row> {

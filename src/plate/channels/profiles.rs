@@ -1,7 +1,7 @@
 //! Elevation along the channels, and how much of a basin lies how high.
 
 use crate::ground::{LengthUnit, Point};
-use crate::science::network::profile::Profile;
+use crate::science::network::profile::{Knickpoint, Profile};
 use crate::study::NetworkFinding;
 
 use super::super::chart::{Chart, Span};
@@ -11,6 +11,8 @@ use super::{SHAPE, area, brief, length_ruler, table, verdict_words, words_only};
 
 /// Breaks of steepness that are named at most.
 const MOST_NAMED: usize = 5;
+/// Breaks marked at most on channels other than the trunk.
+const MOST_BESIDE: usize = 12;
 
 /// Elevation against distance from the outlet: the trunk heavy, other channels thin, breaks of steepness marked.
 pub fn long_profile(finding: &NetworkFinding, width_mm: f64, theme: &Theme) -> Figure {
@@ -18,7 +20,7 @@ pub fn long_profile(finding: &NetworkFinding, width_mm: f64, theme: &Theme) -> F
     let spans = Span::from_zero(stations().map(|s| s.from_outlet_m))
         .zip(Span::linear(stations().map(|s| s.elevation_m)));
     let Some((x, y)) = spans else {
-        return words_only("No long profile: no channel has elevations along it.", width_mm, theme);
+        return words_only("No long profile: no channel has a fall that is known along it.", width_mm, theme);
     };
     let (per, symbol) = length_ruler(x.max, LengthUnit::Metre);
     let height = SHAPE * width_mm;
@@ -55,52 +57,60 @@ fn headline(trunk: Option<&Profile>) -> String {
 
 fn caption(finding: &NetworkFinding) -> String {
     let others = finding.profiles.iter().filter(|p| !p.is_trunk).count();
-    let breaks: usize = finding.profiles.iter().map(|p| p.knickpoints.len()).sum();
+    let breaks = [true, false].map(|of_trunk| surest(&finding.profiles, of_trunk).len());
     let mut text = String::from("heavy: trunk");
     if others > 0 {
         text += &format!("; thin: {others} other channel{}", if others == 1 { "" } else { "s" });
     }
-    text += &match breaks {
-        0 => "\nno break of steepness found".to_owned(),
-        _ => "\ntriangle: break of steepness, with its chance on a uniform profile".to_owned(),
+    text += match breaks {
+        [0, 0] => "\nno break of steepness found",
+        _ => "\ntriangle: break of steepness, with its chance on a uniform profile",
     };
+    if breaks[1] > MOST_BESIDE {
+        text += &format!("; pale: the surest {MOST_BESIDE} of {} beside the trunk", breaks[1]);
+    }
     text
 }
 
-/// Triangles above the profile, the surest of the trunk named by their chance.
+/// Triangles above the profiles: all of the trunk, the surest of them named by their chance; the surest of other
+/// channels small and pale.
 fn knickpoints(sketch: &mut Sketch, profiles: &[Profile], chart: &Chart, theme: &Theme) {
-    let small = theme.text.small;
-    let mut named: Vec<(f64, Point)> = Vec::new();
-    for profile in profiles {
-        let accent = if profile.is_trunk { theme.measured } else { theme.tint(theme.measured, 0.6) };
-        let half = if profile.is_trunk { 0.85 } else { 0.6 };
-        for k in &profile.knickpoints {
-            let at = chart.at(k.from_outlet_m, k.elevation_m);
-            let corner = |dx: f64, dy: f64| Point::new(at.x + dx * half, at.y - 0.7 - dy * half);
-            let mark = vec![corner(0.0, 0.0), corner(1.0, 1.7), corner(-1.0, 1.7)];
-            sketch.polygon(mark, Some(accent), Some(theme.stroke(theme.paper, theme.widths.hair)));
-            if profile.is_trunk {
-                named.push((k.p, at));
-            }
-        }
+    let mark = |sketch: &mut Sketch, k: &Knickpoint, half: f64, fill| {
+        let at = chart.at(k.from_outlet_m, k.elevation_m);
+        let corner = |dx: f64, dy: f64| Point::new(at.x + dx * half, at.y - 0.7 - dy * half);
+        let corners = vec![corner(0.0, 0.0), corner(1.0, 1.7), corner(-1.0, 1.7)];
+        sketch.polygon(corners, Some(fill), Some(theme.stroke(theme.paper, theme.widths.hair)));
+    };
+    for k in surest(profiles, false).into_iter().take(MOST_BESIDE) {
+        mark(sketch, k, 0.6, theme.tint(theme.measured, 0.6));
     }
-    named.sort_by(|a, b| a.0.total_cmp(&b.0).then(a.1.x.total_cmp(&b.1.x)));
+    let small = theme.text.small;
     let (min, max) = chart.corners();
     let mut taken: Vec<(f64, f64, f64)> = Vec::new();
-    for (p, at) in named.into_iter().take(MOST_NAMED) {
-        let text = numbers::p_value(p);
+    for (i, k) in surest(profiles, true).into_iter().enumerate() {
+        mark(sketch, k, 0.85, theme.measured);
+        let text = numbers::p_value(k.p);
         let half = 0.5 * font::text_width(&text, small, false);
+        let at = chart.at(k.from_outlet_m, k.elevation_m);
         let x = at.x.clamp(min.x + half + 0.5, (max.x - half - 0.5).max(min.x + half + 0.5));
         let y = (at.y - 2.9).max(min.y + small);
         let clash =
             |(a, b, c): &(f64, f64, f64)| (x - a).abs() < half + b + 0.8 && (y - c).abs() < 1.2 * small;
-        if taken.iter().any(clash) {
+        if i >= MOST_NAMED || taken.iter().any(clash) {
             continue;
         }
         taken.push((x, half, y));
         let look = Type::new(small, theme.measured).anchored(TextAnchor::Middle).haloed(theme.paper);
         sketch.text(Point::new(x, y), text, look);
     }
+}
+
+/// Breaks of the trunk or of the other channels, the least probable by chance first.
+fn surest(profiles: &[Profile], of_trunk: bool) -> Vec<&Knickpoint> {
+    let mut all: Vec<&Knickpoint> =
+        profiles.iter().filter(|p| p.is_trunk == of_trunk).flat_map(|p| &p.knickpoints).collect();
+    all.sort_by(|a, b| a.p.total_cmp(&b.p).then(a.from_outlet_m.total_cmp(&b.from_outlet_m)));
+    all
 }
 
 /// Share of the basin above each share of its height, with the integral beneath the curve.

@@ -35,7 +35,7 @@ pub fn slope_area(finding: &NetworkFinding, width_mm: f64, theme: &Theme) -> Fig
 pub fn hack_plot(finding: &NetworkFinding, width_mm: f64, theme: &Theme) -> Figure {
     let telling = Telling {
         x_title: "contributing area, m²",
-        y_title: "length of the longest way up, m",
+        y_title: "longest way up, m",
         letter: "L",
         remark: "exponents of 0.57 to 0.60 are common",
     };
@@ -53,12 +53,13 @@ fn power_plot(law: Option<&PowerLaw>, telling: &Telling, none: &str, width_mm: f
     let chart = Chart::new(x, y, Point::default(), [width_mm, height]);
     let mut sketch = Sketch::default();
     let mut inside = Sketch::default();
-    chart.dots(&mut inside, law.points.iter().copied(), 0.38, theme.tint(theme.water, 0.75));
+    let radius = if law.points.len() > 60 { 0.38 } else { 0.6 };
+    chart.dots(&mut inside, law.points.iter().copied(), radius, theme.tint(theme.water, 0.75));
     if law.factor > 0.0 && law.exponent.is_finite() {
         let ends = [x.min, x.max].map(|v| [v, law.factor * v.powf(law.exponent)]);
         let [a, b] = ends.map(|[v, w]| chart.at(v, w));
-        inside.line(a, b, theme.stroke(theme.paper, 3.2 * theme.widths.line));
-        inside.line(a, b, theme.stroke(theme.measured, 1.3 * theme.widths.line));
+        inside.line(a, b, theme.stroke(theme.paper, 2.2 * theme.widths.line));
+        inside.line(a, b, theme.stroke(theme.measured, theme.widths.line));
     }
     chart.clipped(&mut sketch, inside);
     chart.axes(&mut sketch, telling.x_title, telling.y_title, theme);

@@ -26,6 +26,10 @@ pub struct MapNetwork<'a> {
 
 /// Channel length on the map's area that print still holds apart, mm per mm².
 const MOST_DENSE: f64 = 0.36;
+/// Divides follow cells; steps smaller than this are smoothed away, millimetres.
+const DIVIDE_MM: f64 = 0.25;
+/// Outlets up to this many are all marked; of more, those of the two highest orders.
+const MOST_OUTLETS: usize = 12;
 /// Distance between marks of one kind, millimetres.
 const MARK_PITCH_MM: f64 = 9.0;
 /// Probability above which a sense is drawn.
@@ -85,7 +89,7 @@ pub(super) fn draw_ground(sketch: &mut Sketch, network: &MapNetwork, sheet: &She
     for divide in &network.divides {
         for ring in divide.rings() {
             let line: Vec<Point> = ring.iter().map(|p| sheet.at(*p)).collect();
-            let line = simplified(&line, 2.0 * FINEST_MM);
+            let line = simplified(&line, DIVIDE_MM);
             sketch.polygon(
                 line.clone(),
                 None,
@@ -162,7 +166,13 @@ fn ends(sketch: &mut Sketch, network: &Network, least: u32, sheet: &Sheet, theme
         sheet.holds(at) && taken.insert(((at.x / pitch).floor() as i64, (at.y / pitch).floor() as i64))
     };
     let water = Theme::light().water;
-    for node in network.outlets() {
+    let outlets = network.outlets();
+    let (few, incoming) = (outlets.len() <= MOST_OUTLETS, network.incoming());
+    let high = network.greatest_order().unwrap_or(0).saturating_sub(1);
+    let stands_out = |node: usize| {
+        few || incoming[node].iter().any(|r| network.reaches[*r].order.is_none_or(|o| o.strahler >= high))
+    };
+    for node in outlets.into_iter().filter(|n| stands_out(*n)) {
         let at = sheet.at(network.nodes[node].at);
         if free(at, 0.4 * MARK_PITCH_MM) {
             let (min, max) = (Point::new(at.x - 0.75, at.y - 0.75), Point::new(at.x + 0.75, at.y + 0.75));

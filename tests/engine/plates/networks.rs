@@ -3,13 +3,15 @@
 
 use ventifact::ground::{Bounds, Network, Place, Point, ReachOrigin};
 use ventifact::plate::map::{MapNetwork, MapPatch, MapView, map, network_key};
-use ventifact::plate::{Figure, Item, NetworkPlate, Theme, font, network_plate, pdf, svg};
+use ventifact::plate::{
+    Figure, Item, NetworkPlate, OverviewPlate, Theme, font, network_plate, overview_plate, pdf, svg,
+};
 use ventifact::plate::{
     chi_plot, drop_test, flow_ranges, hack_plot, hypsometric_curve, junction_rose, link_rose, long_profile,
     network_compare, network_numbers, order_plot, pattern_bars, planform_sketch, slope_area, threshold_maps,
     width_plot,
 };
-use ventifact::study::{Id, NetworkFinding};
+use ventifact::study::{Findings, Id, NetworkFinding};
 
 use super::rivers::{traced_finding, tree, tree_finding};
 use super::sorrel::{Reach, nodes, raster_finding, reach, recipe};
@@ -162,8 +164,17 @@ fn network_plates_hold_together() {
         assert_inside(name, plate);
     }
     let whole = said(&plates[0].1);
-    for part in ["Sorrel branches", "order 4", "divide", "raised", "Traced channels", "seed 1", "73aa10e4c2"]
-    {
+    for part in [
+        "Sorrel branches",
+        "order 4",
+        "divide",
+        "raised",
+        "Traced channels",
+        "seed 1",
+        "73aa10e4c2",
+        "Horton",
+        "D8",
+    ] {
         assert!(whole.contains(part), "{part} in {whole}");
     }
     let traced = said(&plates[2].1);
@@ -173,6 +184,33 @@ fn network_plates_hold_together() {
     assert!(!traced.contains("Hypsometry"), "nothing is asked of an image that elevation only tells");
     let again = plate_of(&tree, &scene, &print);
     assert!(pdf(&again) == pdf(&plates[0].1), "PDF bytes differ");
+}
+
+#[test]
+fn the_overview_draws_its_networks_and_tells_them_in_a_table() {
+    let scene = reach();
+    let tree = tree_finding(&scene.place);
+    let covers = Bounds { min: Point::new(0.0, 0.0), max: Point::new(scene.size[0], scene.size[1]) };
+    let (raster, recipe) = (raster_finding(), recipe());
+    let bare = MapNetwork { name: &tree.name, network: &tree.network, divides: Vec::new(), change: None };
+    let findings = Findings { networks: vec![tree.clone()], ..Findings::default() };
+    let plate = OverviewPlate {
+        findings: &findings,
+        raster: &raster,
+        outlines: Vec::new(),
+        networks: vec![bare],
+        view: MapView { picture: &scene.picture, covers, place: &scene.place },
+        recipe: &recipe,
+    };
+    let figure = overview_plate(&plate, 180.0, &Theme::print());
+    keep("network-overview", &figure, 1500);
+    assert_inside("network-overview", &figure);
+    assert_eq!(channels(&figure).len(), tree.network.reaches.len());
+    let said = said(&figure);
+    for part in ["dendritic 71 %", "order 4", "channels-smooth", "Horton"] {
+        assert!(said.contains(part), "{part} in {said}");
+    }
+    assert!(!said.contains("Small roses"), "no patch, no roses: {said}");
 }
 
 /// Channel lines of a map in the colour of water, with their widths and dashes.
