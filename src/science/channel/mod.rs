@@ -17,6 +17,12 @@ pub mod width;
 use crate::ground::Method;
 
 /// The methods of this family.
-pub const METHODS: &[&Method] =
-    &[&response::METHOD, &detect::METHOD, &cost::METHOD, &pen::METHOD, &chance::METHOD, &sense::METHOD];
-pub const METHODS: &[&Method] = &[&response::METHOD, &detect::METHOD, &width::METHOD];
+pub const METHODS: &[&Method] = &[
+    &response::METHOD,
+    &detect::METHOD,
+    &width::METHOD,
+    &cost::METHOD,
+    &pen::METHOD,
+    &chance::METHOD,
+    &sense::METHOD,
+];

@@ -79,8 +79,11 @@ pub(super) fn profiles(
         work.advance(0)?;
         let rows = &rows[i.saturating_sub(over)..(i + over + 1).min(rows.len())];
         let mean = |k: usize| {
-            let (sum, n) =
-                rows.iter().map(|r| r[k]).filter(|v| v.is_finite()).fold((0.0, 0usize), |(s, n), v| (s + v, n + 1));
+            let (sum, n) = rows
+                .iter()
+                .map(|r| r[k])
+                .filter(|v| v.is_finite())
+                .fold((0.0, 0usize), |(s, n), v| (s + v, n + 1));
             if n > 0 { sum / n as f64 } else { f64::NAN }
         };
         let values = (0..2 * count + 1).map(mean).collect();

@@ -47,7 +47,10 @@ impl Sketch {
             let mut gone = vec![false; self.stretches.len()];
             let mut by_ends = std::collections::BTreeMap::new();
             for (i, s) in self.stretches.iter().enumerate() {
-                by_ends.entry((s.ends[0].min(s.ends[1]), s.ends[0].max(s.ends[1]))).or_insert_with(Vec::new).push(i);
+                by_ends
+                    .entry((s.ends[0].min(s.ends[1]), s.ends[0].max(s.ends[1])))
+                    .or_insert_with(Vec::new)
+                    .push(i);
             }
             for (ends, same) in by_ends {
                 for (k, &i) in same.iter().enumerate() {
@@ -59,7 +62,8 @@ impl Sketch {
                     for &j in &same[k + 1..] {
                         let two = &self.stretches[j];
                         let near = near.max(widths * two.width);
-                        let close = |p: &Point, other: &Stretch| other.line.iter().any(|q| q.distance(*p) < near);
+                        let close =
+                            |p: &Point, other: &Stretch| other.line.iter().any(|q| q.distance(*p) < near);
                         if one.line.iter().all(|p| close(p, two)) && two.line.iter().all(|p| close(p, one)) {
                             gone[if one.length() >= two.length() { i } else { j }] = true;
                         }

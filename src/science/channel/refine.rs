@@ -47,11 +47,23 @@ impl Sketch {
 
 impl Sketch {
     /// Moves lines of channels at least [`RESOLVED`] wide to the middle of their banks in `image`.
-    pub(super) fn centre(&mut self, image: &Grid<f32>, tone: ChannelTone, work: &Work) -> Result<(), Stopped> {
+    pub(super) fn centre(
+        &mut self,
+        image: &Grid<f32>,
+        tone: ChannelTone,
+        work: &Work,
+    ) -> Result<(), Stopped> {
         for stretch in self.stretches.iter_mut().filter(|s| s.bridge.is_none() && s.width >= RESOLVED) {
             for _ in 0..ROUNDS {
                 let half = 0.5 * stretch.width;
-                let found = profiles(image, &stretch.line, (0.25 * stretch.width).max(1.0), stretch.width, half, work)?;
+                let found = profiles(
+                    image,
+                    &stretch.line,
+                    (0.25 * stretch.width).max(1.0),
+                    stretch.width,
+                    half,
+                    work,
+                )?;
                 let last = found.len().saturating_sub(1);
                 let moved: Vec<Point> = found
                     .iter()

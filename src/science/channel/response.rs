@@ -22,7 +22,11 @@ pub static METHOD: Method = Method {
     formula: "R_w(x, θ) = min over ± of {E(x + ½w n ± ¾w e), −E(x − ½w n ± ¾w e)},  E = √(2π) σ ∂_n (G_{σ,s} ∗ I),  σ = w/3, s = 0.6 w;  z = R_w/sd(E);  M P(all four z > t; ρ) = α",
     symbols: &[
         Symbol { symbol: "w", meaning: "width of the strip", unit: "px" },
-        Symbol { symbol: "θ, e, n", meaning: "direction of the strip, unit vectors along and across", unit: "1" },
+        Symbol {
+            symbol: "θ, e, n",
+            meaning: "direction of the strip, unit vectors along and across",
+            unit: "1",
+        },
         Symbol {
             symbol: "E",
             meaning: "height of the edge at a bank: 1 for a step of 1",

@@ -1,6 +1,8 @@
 //! Banks and width along a channel, to a fraction of a pixel.
 
-use crate::ground::{Grid, Method, Network, Point, Polyline, Reach, Read, Source, Station, Stopped, Symbol, Width, Work};
+use crate::ground::{
+    Grid, Method, Network, Point, Polyline, Reach, Read, Source, Station, Stopped, Symbol, Width, Work,
+};
 use crate::numeric::distance;
 
 use super::detect::ChannelTone;
@@ -13,11 +15,19 @@ pub static METHOD: Method = Method {
     question: "How wide is the channel here, and how well is that known?",
     formula: "min over (l, r) of Σ (p − m)²,  m = b₁ | a | b₂ parted at l and r (or a, b ∗ box below 5 px);  x_bank = x₀ + ∫ (p − a)/(b − a) dx;  se = s √(2h/L)",
     symbols: &[
-        Symbol { symbol: "p", meaning: "tone across the channel, averaged over ±h along it", unit: "unit of the image" },
+        Symbol {
+            symbol: "p",
+            meaning: "tone across the channel, averaged over ±h along it",
+            unit: "unit of the image",
+        },
         Symbol { symbol: "l, r", meaning: "banks, left and right", unit: "px" },
         Symbol { symbol: "a, b", meaning: "tone of the channel and of its sides", unit: "unit of the image" },
         Symbol { symbol: "s", meaning: "standard deviation of the widths along the reach", unit: "px" },
-        Symbol { symbol: "h, L", meaning: "half of the averaged length, and length of the reach", unit: "px" },
+        Symbol {
+            symbol: "h, L",
+            meaning: "half of the averaged length, and length of the reach",
+            unit: "px",
+        },
     ],
     assumptions: &["one tone between the banks, one on either side", "pixels average the ground they cover"],
     limits: &[
@@ -153,7 +163,9 @@ fn about(
     let mut width = 1.5;
     while width <= widest * 1.001 {
         let (near, far) = (0.6 * width + 0.3, width + 0.8);
-        if let (Some(a), Some(l), Some(r)) = (level(-0.35 * width, 0.35 * width), level(-far, -near), level(near, far)) {
+        if let (Some(a), Some(l), Some(r)) =
+            (level(-0.35 * width, 0.35 * width), level(-far, -near), level(near, far))
+        {
             let contrast = match tone {
                 ChannelTone::Dark => (l - a).min(r - a),
                 ChannelTone::Bright => (a - l).min(a - r),

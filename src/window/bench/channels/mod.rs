@@ -10,7 +10,8 @@ use egui::{RichText, Ui};
 
 use super::say;
 use crate::desk::{
-    Command, Dialog, DrawCommand, Model, NetworkCommand, Tool, ViewCommand, channel_facts, channels, planform_facts,
+    Command, Dialog, DrawCommand, Model, NetworkCommand, Tool, ViewCommand, channel_facts, channels,
+    planform_facts,
 };
 use crate::study::{NetworkEntry, NetworkSource};
 use crate::window::controls::{self, Commands, button, caution, heading, line, look, quiet, rule, toggle};
