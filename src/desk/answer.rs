@@ -42,6 +42,7 @@ pub fn absorb(model: &mut Model) -> bool {
         any = true;
         match delivery {
             Delivery::Answer(_, answer) => take(model, answer),
+            Delivery::Ended(Slot::Chance) => pen::judge_again(model),
             Delivery::Ended(_) => {}
             Delivery::Broke(slot, text) => {
                 if slot == Slot::Measure {

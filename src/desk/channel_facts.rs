@@ -260,7 +260,7 @@ pub fn hierarchy(finding: &NetworkFinding) -> Vec<Fact> {
 
 fn frequency(frequency: f64, unit: LengthUnit) -> String {
     match unit {
-        LengthUnit::Metre => format!("{} km⁻²", numbers::significant(1e6 * frequency, 3)),
+        LengthUnit::Metre => format!("{} per km²", numbers::significant(1e6 * frequency, 3)),
         LengthUnit::Pixel => format!("{} a square pixel", numbers::significant(frequency, 3)),
     }
 }

@@ -73,7 +73,7 @@ fn character_words(finding: &NetworkFinding) -> String {
 /// Drainage density with its unit.
 pub fn density_words(finding: &NetworkFinding, density: f64) -> String {
     match finding.unit {
-        crate::ground::LengthUnit::Metre => format!("{} km⁻¹", numbers::significant(1e3 * density, 3)),
+        crate::ground::LengthUnit::Metre => format!("{} km/km²", numbers::significant(1e3 * density, 3)),
         crate::ground::LengthUnit::Pixel => format!("{} a pixel", numbers::significant(density, 3)),
     }
 }

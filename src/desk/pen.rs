@@ -165,6 +165,13 @@ pub(super) fn take(model: &mut Model, answer: PenAnswer) {
     }
 }
 
+/// What ways cost by chance has become known: the way to the pointer is asked for once more, with it.
+pub(super) fn judge_again(model: &mut Model) {
+    if let Some(tracing) = &mut model.session.tracing {
+        tracing.live = None;
+    }
+}
+
 /// Stopped: ways then tell no chance.
 fn learn(pen: &Pen, seed: Seed, work: &Work) {
     let _ = pen.learn_chance(seed, work);

@@ -164,21 +164,21 @@ pub fn flow((ask, flow): &(FlowAsk, PalaeoFlow)) -> Vec<Fact> {
         }
     };
     let mut facts = vec![
-        fact("Gravity", format!("{} m s⁻²", numbers::significant(ask.gravity, 4)), "Of the body."),
+        fact("Gravity", format!("{} m/s²", numbers::significant(ask.gravity, 4)), "Of the body."),
         fact("Width", format!("{} m", given(ask.width_m)), "Measured."),
         fact("Slope", given(ask.slope), "Of the bed; measured or from the settings."),
         fact("Depth", range(&flow.depth_m, "m"), "From width over depth: least, middle, greatest."),
-        fact("Velocity", range(&flow.velocity, "m s⁻¹"), "Darcy–Weisbach."),
+        fact("Velocity", range(&flow.velocity, "m/s"), "Darcy–Weisbach."),
         fact("Froude number", range(&flow.froude, ""), "Does not depend on gravity."),
-        fact("Discharge", range(&flow.discharge, "m³ s⁻¹"), "Darcy–Weisbach, under this gravity."),
+        fact("Discharge", range(&flow.discharge, "m³/s"), "Darcy–Weisbach, under this gravity."),
         fact(
             "Discharge, by width",
-            range(&flow.discharge_by_width, "m³ s⁻¹"),
+            range(&flow.discharge_by_width, "m³/s"),
             "Dimensionally consistent hydraulic geometry, from width alone.",
         ),
         fact(
             "Discharge, Manning",
-            range(&flow.discharge_by_manning, "m³ s⁻¹"),
+            range(&flow.discharge_by_manning, "m³/s"),
             "Manning’s n is Earth’s; rescaled to this gravity.",
         ),
         fact("Greatest grain", range(&flow.grain_m, "m"), "That such a flow moves (Shields)."),

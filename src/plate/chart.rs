@@ -142,7 +142,8 @@ pub(super) fn power_of_ten(value: f64) -> String {
 /// An exponent in raised figures.
 pub(super) fn raised(exponent: i32) -> String {
     const FIGURES: [char; 10] = ['⁰', '¹', '²', '³', '⁴', '⁵', '⁶', '⁷', '⁸', '⁹'];
-    let figure = |c: char| c.to_digit(10).map_or('⁻', |d| FIGURES[d as usize]);
+    // The typeface has no raised minus; its macron stands as high.
+    let figure = |c: char| c.to_digit(10).map_or('¯', |d| FIGURES[d as usize]);
     exponent.to_string().chars().map(figure).collect()
 }
 
@@ -317,7 +318,7 @@ mod tests {
         for text in [power_of_ten(5e-12), power_of_ten(2e34), power_of_ten(6.7e8)] {
             assert!(font::covers(&text), "{text}");
         }
-        assert_eq!(power_of_ten(1e-7), "10⁻⁷");
+        assert_eq!(power_of_ten(1e-7), "10¯⁷");
     }
 
     #[test]

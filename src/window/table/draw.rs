@@ -113,7 +113,7 @@ pub fn draft(painter: &Painter, draft: &Draft, next: Option<Point>, lens: &Lens,
     if let (Tool::Arrow, [from, to]) = (draft.tool, ring.as_slice())
         && from != to
     {
-        networks::head(painter, *to, (*to - *from).normalized(), 2.0, ink);
+        networks::head(painter, *to, (*to - *from).normalized(), 2.0, ink.over_image, ink);
     }
     if !draft.tool.takes_two() {
         for (index, p) in draft.points.iter().enumerate() {

@@ -17,12 +17,14 @@ pub struct Chart {
     /// Nodes.
     pub heads: Vec<usize>,
     pub outlets: Vec<usize>,
-    /// Ranks, and boxes of the reaches.
+    /// Ranks and boxes of the reaches.
     ranks: Vec<u32>,
     boxes: Vec<Bounds>,
     /// Power of two of the scale the lines are for.
-    level: Option<i32>,
-    lines: Vec<Line>,
+    level: i32,
+    /// A reach that was never in sight at this scale has none yet.
+    lines: Vec<Option<Line>>,
+    chosen: Vec<usize>,
     divides: Vec<(Bounds, Vec<Point>)>,
 }
 
@@ -36,52 +38,53 @@ pub struct Line {
     pub confidence: f64,
     /// Probability that the water went from the first to the last point.
     pub sense: f64,
-    bounds: Bounds,
 }
 
 impl Chart {
     pub fn new(finding: Arc<NetworkFinding>) -> Self {
         let network = &finding.network;
         let (heads, outlets) = (network.heads(), network.outlets());
-        let boxes = network.reaches.iter().map(|r| bounds(&r.line.0)).collect();
-        let ranks = ranks(network);
-        Self { heads, outlets, ranks, boxes, level: None, lines: Vec::new(), divides: Vec::new(), finding }
+        Self {
+            heads,
+            outlets,
+            ranks: ranks(network),
+            boxes: network.reaches.iter().map(|r| bounds(&r.line.0)).collect(),
+            level: i32::MIN,
+            lines: Vec::new(),
+            chosen: Vec::new(),
+            divides: Vec::new(),
+            finding,
+        }
     }
 
-    /// Makes the lines ready for `scale` screen points a pixel.
+    /// Makes it ready for `scale` screen points a pixel.
     pub fn fit(&mut self, scale: f64) {
         let level = scale.max(f64::MIN_POSITIVE).log2().ceil() as i32;
-        if self.level == Some(level) {
+        if self.level == level {
             return;
         }
-        self.level = Some(level);
-        let slack = SLACK / 2f64.powi(level);
-        let reaches = self.finding.network.reaches.iter();
-        let line = |((reach, rank), bounds): ((&Reach, &u32), &Bounds)| Line {
-            rank: *rank,
-            points: simplified(&reach.line.0, slack),
-            origin: reach.origin,
-            confidence: reach.confidence.clamp(0.0, 1.0),
-            sense: reach.sense.probability(),
-            bounds: *bounds,
-        };
-        self.lines = reaches.zip(&self.ranks).zip(&self.boxes).map(line).collect();
+        self.level = level;
+        self.lines = vec![None; self.boxes.len()];
         let least = LEAST_BASIN / 2f64.powi(level);
         let basins = self.finding.drainage.iter().flat_map(|d| &d.basins);
         self.divides = basins
             .flat_map(|basin| basin.outline.rings())
             .map(|ring| (bounds(ring), ring))
             .filter(|(b, _)| b.width().max(b.height()) >= least)
-            .map(|(b, ring)| (b, simplified(ring, slack)))
+            .map(|(b, ring)| (b, simplified(ring, self.slack())))
             .collect();
     }
 
-    /// The lines in sight; the lowest ranks are left out as long as the others alone have more than `most` points.
-    pub fn lines_in(&self, seen: Bounds, most: usize) -> Vec<&Line> {
-        let in_sight: Vec<&Line> = self.lines.iter().filter(|line| meet(&line.bounds, &seen)).collect();
-        let highest = in_sight.iter().map(|line| line.rank).max().unwrap_or(0) as usize;
+    fn slack(&self) -> f64 {
+        SLACK / 2f64.powi(self.level)
+    }
+
+    /// Chooses the lines in sight; the lowest ranks are left out as long as the others have about `most` points.
+    pub fn choose(&mut self, seen: Bounds, most: usize) {
+        let in_sight: Vec<usize> = (0..self.boxes.len()).filter(|i| meet(&self.boxes[*i], &seen)).collect();
+        let highest = in_sight.iter().map(|i| self.ranks[*i]).max().unwrap_or(0) as usize;
         let mut points = vec![0usize; highest + 1];
-        in_sight.iter().for_each(|line| points[line.rank as usize] += line.points.len());
+        in_sight.iter().for_each(|i| points[self.ranks[*i] as usize] += self.about(*i));
         let (mut least, mut sum) = (highest, 0);
         for rank in (0..=highest).rev() {
             sum += points[rank];
@@ -90,7 +93,35 @@ impl Chart {
             }
             least = rank;
         }
-        in_sight.into_iter().filter(|line| line.rank as usize >= least).collect()
+        self.chosen = in_sight.into_iter().filter(|i| self.ranks[*i] as usize >= least).collect();
+        for at in 0..self.chosen.len() {
+            let i = self.chosen[at];
+            if self.lines[i].is_none() {
+                self.lines[i] = Some(self.line(i));
+            }
+        }
+    }
+
+    /// About how many points a reach will have: one a few points of screen, and never more than it has.
+    fn about(&self, i: usize) -> usize {
+        let b = &self.boxes[i];
+        let on_screen = (b.width() + b.height()) * 2f64.powi(self.level);
+        (2 + (0.2 * on_screen) as usize).min(self.finding.network.reaches[i].line.0.len())
+    }
+
+    fn line(&self, i: usize) -> Line {
+        let reach = &self.finding.network.reaches[i];
+        Line {
+            rank: self.ranks[i],
+            points: simplified(&reach.line.0, self.slack()),
+            origin: reach.origin,
+            confidence: reach.confidence.clamp(0.0, 1.0),
+            sense: reach.sense.probability(),
+        }
+    }
+
+    pub fn chosen(&self) -> impl Iterator<Item = &Line> {
+        self.chosen.iter().filter_map(|i| self.lines[*i].as_ref())
     }
 
     pub fn divides_in(&self, seen: Bounds) -> impl Iterator<Item = &[Point]> {

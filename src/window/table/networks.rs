@@ -85,7 +85,8 @@ impl Charts {
                 divide(painter, ring, lens, ink);
             }
         }
-        let seen = kept.chart.lines_in(lens.visible(), MOST_POINTS);
+        kept.chart.choose(lens.visible(), MOST_POINTS);
+        let seen: Vec<&Line> = kept.chart.chosen().collect();
         lines(painter, &seen, look, lens, ink);
         if look.selected {
             seen.iter().for_each(|line| arrowhead(painter, line, lens, ink));
@@ -190,7 +191,7 @@ fn arrowhead(painter: &Painter, line: &Line, lens: &Lens, ink: &Ink) {
         let step = pair[0].distance(pair[1]);
         if step > 0.0 && left <= step {
             let at = pair[0] + (pair[1] - pair[0]) * (left / step);
-            head(painter, at, (pair[1] - pair[0]).normalized() * down, weight(line.rank), ink);
+            head(painter, at, (pair[1] - pair[0]).normalized() * down, weight(line.rank), ink.water, ink);
             return;
         }
         left -= step;
@@ -198,7 +199,7 @@ fn arrowhead(painter: &Painter, line: &Line, lens: &Lens, ink: &Ink) {
 }
 
 /// A filled head on a halo, its middle at `at`.
-pub fn head(painter: &Painter, at: Pos2, along: Vec2, line_width: f32, ink: &Ink) {
+pub fn head(painter: &Painter, at: Pos2, along: Vec2, line_width: f32, color: Color32, ink: &Ink) {
     if !painter.clip_rect().contains(at) {
         return;
     }
@@ -208,7 +209,7 @@ pub fn head(painter: &Painter, at: Pos2, along: Vec2, line_width: f32, ink: &Ink
         vec![at + along * size, at - along * (0.6 * size) + side, at - along * (0.6 * size) - side]
     };
     painter.add(Shape::convex_polygon(shape(size + 1.8), ink.halo, Stroke::NONE));
-    painter.add(Shape::convex_polygon(shape(size), ink.water, Stroke::NONE));
+    painter.add(Shape::convex_polygon(shape(size), color, Stroke::NONE));
 }
 
 /// The outline of a basin.
@@ -294,7 +295,7 @@ fn of_image(painter: &Painter, it: &FromImage, lens: &Lens, ink: &Ink) {
         painter.line_segment([a, b], Stroke::new(4.2, ink.halo));
         painter.line_segment([a, b], Stroke::new(1.8, ink.over_image));
         if a != b {
-            head(painter, b, (b - a).normalized(), 2.0, ink);
+            head(painter, b, (b - a).normalized(), 2.0, ink.over_image, ink);
         }
     }
 }

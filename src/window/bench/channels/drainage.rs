@@ -26,7 +26,7 @@ pub fn threshold(ui: &mut Ui, model: &Model, network: &NetworkEntry, out: &mut C
             ui.add(slider).on_hover_text("Area that must drain through a place for a channel to begin.");
         response.widget_info(|| egui::WidgetInfo::slider(true, m2, "Threshold of channels"));
         if m2 != now {
-            out.push(set(Some(m2)));
+            out.push(set(Some(three_figures(m2))));
         }
         if response.drag_stopped() || response.lost_focus() {
             out.push(Command::Draw(DrawCommand::Settle));
@@ -44,6 +44,12 @@ pub fn threshold(ui: &mut Ui, model: &Model, network: &NetworkEntry, out: &mut C
             quiet(ui, model, out, set(None), "As proposed");
         }
     });
+}
+
+/// Finer than that no hand can mean it.
+fn three_figures(m2: f64) -> f64 {
+    let step = 10f64.powf(m2.log10().floor() - 2.0);
+    (m2 / step).round() * step
 }
 
 /// What the slider spans: the thresholds of the test, and always the one in force.

@@ -19,6 +19,8 @@ use crate::window::theme;
 
 /// Room for the reach under the pointer, so that the page does not jump as the pointer moves.
 const POINTED_HEIGHT: f32 = 118.0;
+/// Room for the standing of the result.
+const STANDING_HEIGHT: f32 = 26.0;
 
 pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
     let look = look(model);
@@ -34,12 +36,16 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
     tools(ui, model, network, out);
     let results = &model.session.results;
     let standing = results.network_standing(network.id);
-    if !standing.remark().is_empty() {
-        caution(ui, &look, standing.remark());
-    }
     if let NetworkSource::Elevation(_) = &network.source {
         drainage::threshold(ui, model, network, out);
     }
+    // A line of its own height in any case: under a moving threshold it comes and goes.
+    let top = ui.cursor().top();
+    if !standing.remark().is_empty() {
+        caution(ui, &look, standing.remark());
+    }
+    let used = ui.cursor().top() - top;
+    ui.add_space((STANDING_HEIGHT - used).max(0.0));
     pointed(ui, model);
     let finding = match results.charted(network.id).map(|charted| &charted.outcome) {
         None => return picks::show(ui, model, network, out),
