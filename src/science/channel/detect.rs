@@ -311,7 +311,10 @@ fn network(sketch: &Sketch, response: &Response, area: f64) -> Network {
             line: Polyline(stretch.line.clone()),
             sense: FlowSense::default(),
             order: None,
-            width: stretch.bridge.is_none().then_some(Width { mean: stretch.width, se: STRIP_SE * stretch.width }),
+            width: stretch
+                .bridge
+                .is_none()
+                .then_some(Width { mean: stretch.width, se: STRIP_SE * stretch.width }),
             stations: Vec::new(),
             origin: if stretch.bridge.is_some() { ReachOrigin::Bridged } else { ReachOrigin::Detected },
             confidence,
