@@ -22,6 +22,7 @@ fn cells_of_an_elevation_raster_add_up_to_its_area_on_the_ellipsoid() {
         Raster::open(&root.join("elevation/fault_ridge_srtm3.tif"), &Limits::default()).expect("a raster");
     let info = raster.info();
     let place = &info.georeference.as_ref().expect("a georeference").place;
+    let place = &info.georeference.as_ref().expect("a place").place;
     let (width, height) = (info.width, info.height);
     let corner =
         |col: usize, row: usize| place.lonlat_of(Point::new(col as f64, row as f64)).expect("a position");

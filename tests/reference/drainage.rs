@@ -4,7 +4,7 @@
 //! cell and pass nothing on, so the rasters here are the 99 × 99 cells inside.
 
 use ventifact::assert_close;
-use ventifact::ground::{Grid, Work};
+use ventifact::ground::{Affine, Body, Frame, Grid, LatitudeKind, Place, Work};
 use ventifact::science::drainage::accumulate::{area, specific_area};
 use ventifact::science::drainage::cells::Cells;
 use ventifact::science::drainage::condition::{BreachLimits, Conditioned, Conditioning, condition};
@@ -212,4 +212,30 @@ fn a_small_raster_is_raised_as_by_hand() {
     // leaves over the ridge of 8: 1, 6, 6, 6 to 8 and 7, 7, 7 to 8.
     assert_close!(filled.changed.raised_volume, (2.0 + 1.0 + 1.0) + (7.0 + 3.0 * 2.0) + 3.0, 1e-9);
     assert_eq!((filled.changed.sinks, filled.changed.filled), (2, 2));
+}
+
+#[test]
+fn geographic_cells_add_up_to_the_area_of_their_zone() {
+    // On the ellipsoid the zone from the equator to φ has b²/2 (sin φ/(1 − e² sin² φ) + artanh(e sin φ)/e) a radian.
+    let body = Body::earth();
+    let shape = body.shape;
+    let e = (1.0 - (shape.polar_m / shape.equatorial_m).powi(2)).sqrt();
+    let zone = |lat: f64| {
+        let sin = lat.to_radians().sin();
+        0.5 * shape.polar_m.powi(2) * (sin / (1.0 - (e * sin).powi(2)) + (e * sin).atanh() / e)
+    };
+    let step = 1.0 / 120.0;
+    for top in [10.0, 36.7, 61.0] {
+        let affine = Affine { a: step, b: 0.0, c: 20.0, d: 0.0, e: -step, f: top };
+        let frame = Frame::Geographic { unit_deg: 1.0, latitude: LatitudeKind::Planetographic };
+        let place = Place::new(affine, frame, body.clone()).expect("a place");
+        let (width, height) = (240, 360);
+        let cells = Cells::of(&place, width, height).expect("ground sizes");
+        let got = cells.area.iter().sum::<f64>() * width as f64;
+        let want = (width as f64 * step).to_radians() * (zone(top) - zone(top - height as f64 * step));
+        assert_close!(got, want, 1e-6 * want, "from {top}°");
+        // A degree of longitude shrinks with the cosine of latitude.
+        let ratio = cells.across[0] / cells.down[0];
+        assert_close!(ratio, top.to_radians().cos(), 0.01, "across over down at {top}°");
+    }
 }

@@ -15,9 +15,11 @@ use super::{breach, flats};
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
 #[serde(rename_all = "kebab-case")]
 pub enum Conditioning {
-    /// Raised to their lowest rim; flats stay flat.
+    /// Raised to their lowest rim; flats stay flat and drain by the shortest way.
     Fill,
-    /// Raised, with the least slope a flat can hold toward its outlet.
+    /// Raised, with the least slope a flat can hold toward its outlet. Single precision cannot hold it on large
+    /// rasters, so the surface itself stays level there: the slope is kept in whole numbers, gathers water along the
+    /// middle of the flat, and only routing sees it (see [`super::flats`]).
     #[default]
     FillSloped,
     /// A trench cut from the sink to lower ground along the way of least cost.

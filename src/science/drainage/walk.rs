@@ -30,23 +30,23 @@ pub(super) fn along_one(receivers: &Receivers, cells: &Cells, work: &Work) -> Re
     let width = receivers.0.width();
     let mut states = first_states(receivers, work)?;
     let mut area = vec![0.0; states.len()];
-    let rows = area.chunks_mut(width.max(1));
+    let mut counts = Vec::new();
     if cells.area.windows(2).all(|pair| pair[0] == pair[1]) {
-        let mut counts = vec![1u8; states.len()];
+        counts = vec![1u8; states.len()];
         for _ in 0..ROUNDS {
             add_once(width, &mut states, &mut counts, work)?;
         }
-        for ((area, counts), own) in rows.zip(counts.chunks(width.max(1))).zip(&cells.area) {
-            area.iter_mut().zip(counts).for_each(|(area, count)| *area = f64::from(*count) * own);
-            work.advance(1)?;
-        }
-    } else {
-        for (area, own) in rows.zip(&cells.area) {
-            area.fill(*own);
-            work.advance(1)?;
-        }
     }
-    walk_down(&offsets(width), width, &mut states, &mut area, work)?;
+    let begin = |row: usize, area: &mut [f64]| {
+        let own = cells.area[row];
+        match counts.get(row * width..(row + 1) * width) {
+            Some(counts) => {
+                area.iter_mut().zip(counts).for_each(|(area, count)| *area = f64::from(*count) * own)
+            }
+            None => area.fill(own),
+        }
+    };
+    walk_down(width, &mut states, &mut area, begin, work)?;
     Ok(area)
 }
 
@@ -160,17 +160,23 @@ fn pass_on(codes: &[Vec<u8>; 3], held: &[Vec<u8>; 3], states: &mut [u8], counts:
 
 /// Follows the flow from every cell that waits for nothing to the first that still does. Tile by tile, so that what
 /// a walk touches is at hand. `states` hold the number of cells waited for and the code of the receiver.
+/// `begin` sets the first values of a row, shortly before it is needed.
 fn walk_down(
-    offsets: &[isize; 8],
     width: usize,
     states: &mut [u8],
     area: &mut [f64],
+    begin: impl Fn(usize, &mut [f64]),
     work: &Work,
 ) -> Result<(), Stopped> {
     let height = states.len().checked_div(width).unwrap_or(0);
-    let mut done = 0;
+    let offsets = offsets(width);
+    let (mut done, mut begun) = (0, 0);
     let mut starts = [0; TILE[1] + 1];
     for (top, left) in tiles(width, height) {
+        while begun < height.min(top + TILE[0] + 1) * width {
+            begin(begun / width, &mut area[begun..begun + width]);
+            begun += width;
+        }
         for row in top..height.min(top + TILE[0]) {
             // The cells of the row that can start, listed without a branch.
             let mut number = 0;
@@ -183,6 +189,10 @@ fn walk_down(
                 states[first] = DONE;
                 while let Some(offset) = offsets.get(usize::from(code)) {
                     at = at.wrapping_add_signed(*offset);
+                    while begun <= at {
+                        begin(begun / width, &mut area[begun..begun + width]);
+                        begun += width;
+                    }
                     passed += area[at];
                     area[at] = passed;
                     code = states[at].wrapping_sub(WAITING);
