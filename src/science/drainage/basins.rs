@@ -61,6 +61,7 @@ const MOST: usize = u16::MAX as usize - 1;
 ///
 /// # Errors
 /// [`Stopped`].
+#[allow(clippy::too_many_arguments)]
 pub fn basins(
     surface: &Grid<f32>,
     cells: &Cells,

@@ -75,7 +75,7 @@ pub(super) fn rows(
     for k in 0..MOST_ROWS {
         let threshold = least * std::f64::consts::SQRT_2.powi(k as i32);
         let tree = Tree::new(paths, Choice { threshold, ..choice }, work)?;
-        let row = row(surface, &tree, threshold, ground_m2);
+        let row = row(surface, &tree, threshold, ground_m2, work)?;
         let is_last = row.higher.0 < 2;
         rows.push(row);
         if is_last {
@@ -95,15 +95,21 @@ pub(super) fn proposed(rows: &[DropRow]) -> Option<f64> {
     (0..rows.len()).find(found).map(|i| rows[i].threshold_m2)
 }
 
-fn row(surface: &Grid<f32>, tree: &Tree, threshold_m2: f64, ground_m2: f64) -> DropRow {
+fn row(
+    surface: &Grid<f32>,
+    tree: &Tree,
+    threshold_m2: f64,
+    ground_m2: f64,
+    work: &Work,
+) -> Result<DropRow, Stopped> {
     let z = |cell: usize| f64::from(surface.values()[cell]);
     let (first, higher): (Vec<Stream>, Vec<Stream>) =
-        tree.streams().into_iter().filter(|s| s.joins).partition(|s| s.order == 1);
+        tree.streams(work)?.into_iter().filter(|s| s.joins).partition(|s| s.order == 1);
     let drops =
         |streams: &[Stream]| spread(&streams.iter().map(|s| z(s.top) - z(s.foot)).collect::<Vec<_>>());
     let (first, higher) = (drops(&first), drops(&higher));
     let density = if ground_m2 > 0.0 { tree.length() / INFLATION / ground_m2 } else { 0.0 };
-    DropRow { threshold_m2, first, higher, t: student(first, higher), density }
+    Ok(DropRow { threshold_m2, first, higher, t: student(first, higher), density })
 }
 
 /// Number, mean and standard deviation; 0 where there are too few.

@@ -5,7 +5,7 @@ use crate::ground::{
     Stopped, Work,
 };
 use crate::numeric::quantile;
-use crate::numeric::sum::total;
+use crate::numeric::sum::{Sum, total};
 
 use super::cells::Cells;
 use super::drop;
@@ -103,8 +103,12 @@ pub fn channels(
         HeadRule::Area => LEAST_CELLS * mean_cell,
         HeadRule::CurvedArea => LEAST_CURVED_CELLS * mean_cell,
         HeadRule::SlopeArea => {
-            let squares = (0..paths.len()).filter(is_kept).map(|c| heads::slope(surface, paths, c).powi(2));
-            LEAST_CELLS * mean_cell * total(squares) / count as f64
+            let mut squares = Sum::default();
+            for cell in (0..paths.len()).filter(is_kept) {
+                pause(&mut steps, work)?;
+                squares.add(heads::slope(surface, paths, cell).powi(2));
+            }
+            LEAST_CELLS * mean_cell * squares.value() / count as f64
         }
     };
     let drops = drop::rows(surface, paths, choice, least, ground_m2, work)?;

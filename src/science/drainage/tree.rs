@@ -97,15 +97,16 @@ impl Tree {
     }
 
     /// Its streams (Strahler 1957), in no particular order but always the same.
-    pub fn streams(&self) -> Vec<Stream> {
+    pub fn streams(&self, work: &Work) -> Result<Vec<Stream>, Stopped> {
         let mut waiting = vec![0u32; self.nodes.len()];
         self.down.iter().flatten().for_each(|(to, _)| waiting[*to] += 1);
         let mut sequence: Vec<usize> = (0..self.nodes.len()).filter(|n| waiting[*n] == 0).collect();
         // Of what has come down to each node: the greatest order, how often, and where that stream began.
         let mut above: Vec<(u32, u32, usize)> = self.nodes.iter().map(|cell| (0, 0, *cell)).collect();
         let mut leaving = vec![(0u32, 0usize); self.nodes.len()];
-        let mut at = 0;
+        let (mut at, mut steps) = (0, 0);
         while at < sequence.len() {
+            pause(&mut steps, work)?;
             let node = sequence[at];
             let (most, times, top) = above[node];
             leaving[node] = match times {
@@ -135,7 +136,7 @@ impl Tree {
             // It goes on below a node that it passes alone or as the strongest.
             (!joins || leaving[to].1 != top).then_some(Stream { order, top, foot: self.nodes[to], joins })
         };
-        sequence.iter().filter_map(stream).collect()
+        Ok(sequence.iter().filter_map(stream).collect())
     }
 }
 
