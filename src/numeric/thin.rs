@@ -80,7 +80,7 @@ pub fn thin(
     work: &Work,
 ) -> Result<(), Stopped> {
     let cells = mask.len();
-    let mut mask = Mask { cells: mask, width };
+    let mask = Mask { cells: mask, width };
     let mut waiting = BinaryHeap::new();
     let key = |cell: usize| Reverse((heights[cell].max(0.0).to_bits(), cell));
     for cell in 0..cells {

@@ -20,8 +20,6 @@ pub struct Score {
     /// True width, share of it found, and mean of measured less true width.
     pub by_width: Vec<(f64, f64, f64)>,
     pub loops: usize,
-    pub reaches: usize,
-    pub length: f64,
 }
 
 pub fn settings(tone: ChannelTone) -> DetectSettings {
@@ -100,8 +98,6 @@ fn score(scene: &Waterways, network: &Network) -> Score {
         precision: right / length.max(1e-9),
         by_width,
         loops: network.loops(),
-        reaches: network.reaches.len(),
-        length,
     }
 }
 
