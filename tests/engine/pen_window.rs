@@ -27,7 +27,8 @@ fn the_dry_channel_of_the_mosaic_is_traced() {
     let trunk: Vec<Point> = truth.iter().filter(|r| r.order == 2).flat_map(|r| r.line.0.clone()).collect();
     let (from, to) = (trunk[0], trunk[trunk.len() - 2]);
     let way = pen.way(from, to, &work).unwrap().expect("a way");
-    assert_eq!((way.line.0[0], *way.line.0.last().unwrap()), (from, to));
+    let near = |a: Point, b: Point| a.distance(b) < 1e-9;
+    assert!(near(way.line.0[0], from) && near(*way.line.0.last().unwrap(), to));
     assert_eq!((way.cost_ratio, way.p), (None, None), "chance is not known yet");
     let away = |p: &Point| trunk.iter().map(|q| p.distance(*q)).fold(f64::INFINITY, f64::min);
     let far = way.line.0.iter().filter(|p| away(p) > 12.0).count();
@@ -35,7 +36,7 @@ fn the_dry_channel_of_the_mosaic_is_traced() {
 
     pen.learn_chance(Seed(1), &work).unwrap();
     let ways = pen.ways_from(from, &work).unwrap().expect("passable");
-    assert_eq!(ways.from(), from);
+    assert!(near(ways.from(), from));
     let live = ways.to(to, &work).unwrap().expect("a way");
     assert_eq!(live.line, way.line);
     let (ratio, p) = (live.cost_ratio.unwrap(), live.p.unwrap());

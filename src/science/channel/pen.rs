@@ -255,7 +255,7 @@ struct Corridor {
 
 impl Corridor {
     fn around(course: &[Point], factor: usize, fine: &Terrain) -> Self {
-        let reach = 2 * factor + 4;
+        let reach = 4 * factor + 4;
         let pixels: Vec<(usize, usize)> =
             course.iter().map(|p| ((p.x * factor as f64) as usize, (p.y * factor as f64) as usize)).collect();
         let low = |pick: fn(&(usize, usize)) -> usize| {
