@@ -93,12 +93,7 @@ fn score(scene: &Waterways, network: &Network) -> Score {
         })
         .collect();
     let recall = share(&visible.iter().collect::<Vec<_>>());
-    Score {
-        recall,
-        precision: right / length.max(1e-9),
-        by_width,
-        loops: network.loops(),
-    }
+    Score { recall, precision: right / length.max(1e-9), by_width, loops: network.loops() }
 }
 
 /// Points looked up by place, each with a number.
