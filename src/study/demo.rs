@@ -12,8 +12,8 @@ use crate::science::scene::reach;
 
 use super::sheet_file::SheetFile;
 use super::{
-    FromImage, Id, ImageKind, NetworkEntry, NetworkSource, Obstacle, Patch, Placement, RasterEntry, Sheet,
-    Tone, WindChoice, WindEntry,
+    FromElevation, FromImage, Id, ImageKind, NetworkEntry, NetworkSource, Obstacle, Patch, Placement,
+    RasterEntry, Sheet, Tone, WindChoice, WindEntry,
 };
 
 /// Everything of the demo grows from this seed.
@@ -142,7 +142,14 @@ fn add_networks(sheet: &mut Sheet) {
     let cells = ground.map(|p| Point::new(p.x / step, p.y / step));
     let from_elevation =
         NetworkEntry::from_elevation(sheet.fresh_id(), "Dry channels, elevation", ELEVATION_ID);
-    sheet.networks.push(NetworkEntry { within: Some(cells), ..from_elevation });
+    // Valleys that were drawn and not carved have no constant drop: the threshold is stated.
+    let routed =
+        FromElevation { threshold_m2: Some(reach::CHANNEL_THRESHOLD_M2), ..FromElevation::default() };
+    sheet.networks.push(NetworkEntry {
+        within: Some(cells),
+        source: NetworkSource::Elevation(routed),
+        ..from_elevation
+    });
     let seen = FromImage { elevation: Some(ELEVATION_ID), ..FromImage::default() };
     let on_image = NetworkEntry::from_image(sheet.fresh_id(), "Dry channels, mosaic", MOSAIC_ID);
     sheet.networks.push(NetworkEntry {

@@ -111,8 +111,10 @@ fn channels_follow_the_valleys_and_leave_the_ridges_alone() {
     assert!((0.05e6..0.5e6).contains(&found.threshold_m2), "{}", found.threshold_m2);
 
     let (looks, cautions) = smoothness(&z, surface, &found.network, &work).unwrap();
-    println!("{looks:?} {:?}", cautions.iter().map(|c| c.code).collect::<Vec<_>>());
-    assert_eq!((looks.step_m, looks.resolved_cells, cautions.len()), (Some(1.0), Some(1), 0));
+    let codes: Vec<_> = cautions.iter().map(|c| c.code).collect();
+    println!("{looks:?} {codes:?}");
+    // 11 % of the network crosses basins in the valley floors that were filled by more than 5 m.
+    assert_eq!((looks.step_m, looks.resolved_cells, codes), (Some(1.0), Some(1), vec!["network-on-fill"]));
 
     let network = found.network.clone().on_ground(&place, 1.0, |p| p).ordered();
     assert_eq!(crossings(&network), 0, "a channel runs over a ridge");
