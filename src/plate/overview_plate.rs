@@ -52,7 +52,7 @@ pub fn overview_plate(plate: &OverviewPlate, width_mm: f64, theme: &Theme) -> Fi
     }
 
     let networks: Vec<&NetworkFinding> =
-        plate.findings.networks.iter().filter(|n| n.raster == plate.raster.id).collect();
+        plate.findings.networks.iter().filter(|n| plate.networks.iter().any(|m| m.name == n.name)).collect();
     let of_patches: Vec<Vec<Cell>> = patches.iter().map(|p| cells(p, theme)).collect();
     let of_networks: Vec<Vec<Cell>> = networks.iter().map(|n| network_cells(n, theme)).collect();
     for (columns, rows) in [(&COLUMNS, of_patches), (&NETWORK_COLUMNS, of_networks)] {

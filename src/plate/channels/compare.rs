@@ -54,15 +54,32 @@ fn overlay(
     panel.frame(sketch, theme);
     let mut inside = Sketch::default();
     let strokes = [band(theme), theme.stroke(theme.water, 1.2 * theme.widths.line)];
-    for (network, stroke) in networks.into_iter().zip(strokes) {
-        for reach in panel.printable(network).reaches {
+    let mut least = [1; 2];
+    for (i, (network, stroke)) in networks.into_iter().zip(strokes).enumerate() {
+        let shown = panel.printable(network, MOST_DENSE[i]);
+        least[i] = shown.least_order;
+        for reach in shown.reaches {
             let line: Vec<Point> = reach.line.0.iter().map(|p| panel.at(*p)).collect();
             inside.polyline(simplified(&line, FINEST_MM), stroke);
         }
     }
     sketch.items.push(Item::Clip { min: panel.min, max: panel.max, items: inside.items });
-    panel.max.y - top + 0.8
+    let mut y = panel.max.y + 0.8;
+    if least != [1, 1] {
+        let [other, this] = least.map(|order| format!("order\u{a0}{order}"));
+        let text = format!("drawn from {this} here, from {other} there");
+        y += sketch.paragraph(
+            Point::new(0.0, y),
+            &text,
+            Type::new(theme.text.small, theme.ink_soft),
+            width_mm,
+        );
+    }
+    y - top
 }
+
+/// Channel length that broad bands and thin lines still hold apart, mm per mm².
+const MOST_DENSE: [f64; 2] = [0.22, 0.5];
 
 fn band(theme: &Theme) -> Stroke {
     theme.stroke(theme.tint(theme.ink_soft, 0.45), 1.5)

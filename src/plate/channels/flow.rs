@@ -35,7 +35,7 @@ pub fn flow_ranges(finding: &NetworkFinding, width_mm: f64, theme: &Theme) -> Fi
         y += group.draw(&mut sketch, decades, y, width_mm, theme);
     }
     y += shares(&mut sketch, flow, y, width_mm, theme);
-    y += table(&mut sketch, &asked(ask), y + 0.8, width_mm, theme) + 1.6;
+    y += table(&mut sketch, &asked(ask, flow), y + 0.8, width_mm, theme) + 1.6;
     y += sketch.paragraph(Point::new(0.0, y), CAUTION, Type::new(theme.text.small, theme.ink), width_mm);
     sketch.finish(width_mm, y)
 }
@@ -131,7 +131,7 @@ fn shares(sketch: &mut Sketch, flow: &PalaeoFlow, top: f64, width_mm: f64, theme
         + 0.6
 }
 
-fn asked(ask: &FlowAsk) -> Vec<(String, String)> {
+fn asked(ask: &FlowAsk, flow: &PalaeoFlow) -> Vec<(String, String)> {
     let range = |[low, high]: [f64; 2], unit: &str| {
         let text = brief;
         if low == high {
@@ -150,5 +150,9 @@ fn asked(ask: &FlowAsk) -> Vec<(String, String)> {
         row("densities", format!("{} and {} kg/m³", brief(ask.liquid_density), brief(ask.grain_density))),
         row("critical Shields stress", range(ask.shields, "")),
         row("Manning’s n on Earth", range(ask.manning_earth, "")),
+        row(
+            "Manning’s n alike here",
+            range([flow.equivalent_manning.least, flow.equivalent_manning.greatest], ""),
+        ),
     ]
 }

@@ -17,9 +17,12 @@ const COMPARED: [f64; 2] = [72.0, 90.0];
 pub fn junction_rose(finding: &NetworkFinding, width_mm: f64, theme: &Theme) -> Figure {
     let found = &finding.junctions;
     if found.angles.is_empty() {
-        let short = match found.too_short {
-            0 => "No junction angle: no two channels join.".to_owned(),
-            n => format!("No junction angle: at all {n} junctions the chords found too little channel."),
+        let short = match (found.too_short, finding.network.junctions().len()) {
+            (0, 0) => "No junction angle: no two channels join.".to_owned(),
+            (0, n) => format!(
+                "No junction angle: at none of the {n} junctions is it known which two channels come in."
+            ),
+            (n, _) => format!("No junction angle: at all {n} junctions the chords found too little channel."),
         };
         return words_only(&short, width_mm, theme);
     }

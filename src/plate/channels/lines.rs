@@ -141,7 +141,7 @@ impl Panel {
         share: f64,
         theme: &Theme,
     ) -> u32 {
-        let mut shown = self.printable(network);
+        let mut shown = self.printable(network, MOST_DENSE);
         shown.reaches.sort_by_key(|r| r.order.map_or(0, |o| o.strahler));
         let mut inside = Sketch::default();
         for reach in &shown.reaches {
@@ -153,14 +153,14 @@ impl Panel {
         shown.least_order
     }
 
-    /// What the panel can hold.
-    pub fn printable<'a>(&self, network: &'a Network) -> Printable<'a> {
-        printable(network, |p| self.at(p), Bounds { min: self.min, max: self.max }, MOST_DENSE)
+    /// What the panel can hold, `most` mm per mm².
+    pub fn printable<'a>(&self, network: &'a Network, most: f64) -> Printable<'a> {
+        printable(network, |p| self.at(p), Bounds { min: self.min, max: self.max }, most)
     }
 }
 
 /// Channel length in a small panel, mm per mm², that thin lines still hold apart.
-const MOST_DENSE: f64 = 0.9;
+const MOST_DENSE: f64 = 0.7;
 
 /// A bar of round ground length with its name, from `at` to the right; at most `room_mm` long.
 pub(super) fn length_bar(

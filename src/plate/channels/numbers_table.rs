@@ -1,6 +1,6 @@
 //! The numbers of a network as a table.
 
-use crate::ground::{LengthUnit, ReachOrigin};
+use crate::ground::{LengthUnit, Reach, ReachOrigin};
 use crate::study::NetworkFinding;
 
 use super::super::numbers::{self, count};
@@ -34,11 +34,16 @@ fn size(finding: &NetworkFinding) -> Vec<Row> {
             "reaches, junctions",
             format!("{}, {}", count(network.reaches.len()), count(network.junctions().len())),
         ),
-        row(
-            "heads, outlets",
-            format!("{}, {}", count(network.heads().len()), count(network.outlets().len())),
-        ),
     ];
+    // Without a sense of flow an end is neither head nor outlet.
+    rows.push(if network.reaches.iter().any(told) {
+        let ends = [network.heads().len(), network.outlets().len()].map(count);
+        row("heads, outlets", ends.join(", "))
+    } else {
+        let (into, out) = (network.incoming(), network.outgoing());
+        let ends = (0..network.nodes.len()).filter(|n| into[*n].len() + out[*n].len() == 1);
+        row("loose ends", count(ends.count()))
+    });
     let order = network.greatest_order().map_or("undefined".to_owned(), |o| o.to_string());
     let without = network.reaches.iter().filter(|r| r.order.is_none()).count();
     let told = if without == 0 || network.greatest_order().is_none() {
@@ -48,6 +53,11 @@ fn size(finding: &NetworkFinding) -> Vec<Row> {
     };
     rows.push(row("highest order", told));
     rows
+}
+
+/// Whether the sense of flow is as good as known.
+fn told(reach: &Reach) -> bool {
+    !(0.05..=0.95).contains(&reach.sense.probability())
 }
 
 fn measures(finding: &NetworkFinding) -> Vec<Row> {
@@ -112,10 +122,7 @@ fn from_elevation(finding: &NetworkFinding) -> Vec<Row> {
 fn from_image(finding: &NetworkFinding) -> Vec<Row> {
     let Some(t) = &finding.tracing else { return Vec::new() };
     let of_origin = |origin| finding.network.reaches.iter().filter(|r| r.origin == origin).count();
-    let sure = finding.network.reaches.iter().filter(|r| {
-        let p = r.sense.probability();
-        !(0.05..=0.95).contains(&p)
-    });
+    let sure = finding.network.reaches.iter().filter(|r| told(r));
     let mut rows = vec![
         row("proposed, struck out", format!("{}, {}", t.proposed_reaches, t.struck_reaches)),
         row("traced by hand", count(of_origin(ReachOrigin::Traced))),

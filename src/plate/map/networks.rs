@@ -140,8 +140,7 @@ fn senses(sketch: &mut Sketch, lines: &[Drawn], theme: &Theme) {
     let mut candidates: Vec<(&Drawn, f64)> = lines.iter().map(|d| (d, length(&d.line))).collect();
     candidates.sort_by(|a, b| b.0.width.total_cmp(&a.0.width).then(b.1.total_cmp(&a.1)));
     for (d, length) in candidates {
-        let p = d.reach.sense.probability();
-        if (1.0 - SURE..=SURE).contains(&p) || length < 3.0 {
+        if !sure(d.reach) || length < 3.0 {
             continue;
         }
         let Some((at, (dx, dy))) = along(&d.line, 0.5 * length) else { continue };
@@ -149,7 +148,7 @@ fn senses(sketch: &mut Sketch, lines: &[Drawn], theme: &Theme) {
         if !taken.insert(cell) {
             continue;
         }
-        let sign = if p < 0.5 { -1.0 } else { 1.0 };
+        let sign = if d.reach.sense.probability() < 0.5 { -1.0 } else { 1.0 };
         let azimuth = Azimuth::from_east_north(sign * dx, -sign * dy);
         let (size, (east, north)) = (1.5 + d.width, azimuth.east_north());
         let tip = Point::new(at.x + 0.5 * size * east, at.y - 0.5 * size * north);
@@ -166,13 +165,16 @@ fn ends(sketch: &mut Sketch, network: &Network, least: u32, sheet: &Sheet, theme
         sheet.holds(at) && taken.insert(((at.x / pitch).floor() as i64, (at.y / pitch).floor() as i64))
     };
     let water = Theme::light().water;
+    // An end of a reach whose sense is not known is neither head nor outlet.
+    let out = network.outgoing();
+    let known = |reaches: &[usize]| reaches.iter().all(|r| sure(&network.reaches[*r]));
     let outlets = network.outlets();
     let (few, incoming) = (outlets.len() <= MOST_OUTLETS, network.incoming());
     let high = network.greatest_order().unwrap_or(0).saturating_sub(1);
     let stands_out = |node: usize| {
         few || incoming[node].iter().any(|r| network.reaches[*r].order.is_none_or(|o| o.strahler >= high))
     };
-    for node in outlets.into_iter().filter(|n| stands_out(*n)) {
+    for node in outlets.into_iter().filter(|n| stands_out(*n) && known(&incoming[*n])) {
         let at = sheet.at(network.nodes[node].at);
         if free(at, 0.4 * MARK_PITCH_MM) {
             let (min, max) = (Point::new(at.x - 0.75, at.y - 0.75), Point::new(at.x + 0.75, at.y + 0.75));
@@ -182,7 +184,7 @@ fn ends(sketch: &mut Sketch, network: &Network, least: u32, sheet: &Sheet, theme
     if least > 1 {
         return;
     }
-    for node in network.heads() {
+    for node in network.heads().into_iter().filter(|n| known(&out[*n])) {
         let at = sheet.at(network.nodes[node].at);
         if free(at, 0.25 * MARK_PITCH_MM) {
             sketch.circle(at, 0.45, Some(theme.halo), Some(theme.stroke(water, theme.widths.thin)));
@@ -274,6 +276,11 @@ pub(super) fn draw_name(
     sketch.text(Point::new(centre.x, centre.y + 0.35 * size), text, look);
 }
 
+/// Whether the sense of a reach is drawn.
+fn sure(reach: &Reach) -> bool {
+    !(1.0 - SURE..=SURE).contains(&reach.sense.probability())
+}
+
 fn length(line: &[Point]) -> f64 {
     line.windows(2).map(|w| w[0].distance(w[1])).sum()
 }
@@ -327,11 +334,15 @@ pub fn network_key(view: &MapView, networks: &[MapNetwork], size_mm: [f64; 2], t
     when(any(&|r| r.confidence < 0.9), Sign::Line(0.42, 0.6), "less sure");
     when(any(&|r| r.origin == ReachOrigin::Bridged), Sign::Dashes, "gap bridged");
     when(any(&|r| r.origin == ReachOrigin::Traced), Sign::Picks, "drawn by hand");
-    let sure = |r: &Reach| !(1.0 - SURE..=SURE).contains(&r.sense.probability());
     when(any(&sure), Sign::Arrow, "flow, p > 0.95");
-    let headed = |n: &MapNetwork| shown(n.network, &sheet).least_order == 1 && !n.network.heads().is_empty();
+    let ends = |n: &MapNetwork, heads: bool| {
+        let reaches = if heads { n.network.outgoing() } else { n.network.incoming() };
+        let nodes = if heads { n.network.heads() } else { n.network.outlets() };
+        nodes.into_iter().any(|k| reaches[k].iter().all(|r| sure(&n.network.reaches[*r])))
+    };
+    let headed = |n: &MapNetwork| shown(n.network, &sheet).least_order == 1 && ends(n, true);
     when(networks.iter().any(headed), Sign::Ring, "head");
-    when(networks.iter().any(|n| !n.network.outlets().is_empty()), Sign::Square, "outlet");
+    when(networks.iter().any(|n| ends(n, false)), Sign::Square, "outlet");
     when(networks.iter().any(|n| !n.divides.is_empty()), Sign::Divide, "divide");
     let changed = |sign: f32| {
         let values = networks.iter().filter_map(|n| n.change).flat_map(|(map, _, _)| map.valid_values());

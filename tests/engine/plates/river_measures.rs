@@ -167,6 +167,7 @@ pub fn flow() -> (FlowAsk, PalaeoFlow) {
         discharge: range(110.0, 640.0, 3900.0),
         discharge_by_width: range(210.0, 520.0, 1250.0),
         discharge_by_manning: range(60.0, 410.0, 2800.0),
+        equivalent_manning: range(0.043, 0.071, 0.118),
         grain_m: range(0.024, 0.105, 0.6),
         shares: vec![("width over depth", 0.62), ("friction", 0.19), ("width", 0.11), ("slope", 0.08)],
     };
