@@ -164,7 +164,11 @@ fn a_channel_is_traced_by_keys_alone() {
 /// The label of the fact called `name` on the page.
 fn fact(harness: &Harness<'_, Desk>, name: &str) -> String {
     let nodes = harness.query_all_by_role(Role::Label);
-    let mut labels = nodes.filter_map(|node| node.accesskit_node().label());
+    let spoken = |node: egui_kittest::Node<'_>| {
+        let node = node.accesskit_node();
+        node.label().or(node.value())
+    };
+    let mut labels = nodes.filter_map(spoken);
     labels.find(|label| label.starts_with(&format!("{name}: "))).unwrap_or_default()
 }
 
