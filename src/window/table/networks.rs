@@ -20,7 +20,7 @@ use super::lines::{Chart, Line};
 /// Points of all lines on the screen; when there are more, the lowest orders are left out.
 const MOST_POINTS: usize = 30_000;
 /// Most marks of heads and outlets.
-const MOST_MARKS: usize = 600;
+const MOST_MARKS: usize = 250;
 /// A reach this long on the screen has room for an arrowhead.
 const ARROW_ROOM: f32 = 54.0;
 /// A sense at least this sure is drawn.

@@ -26,14 +26,15 @@ pub fn threshold(ui: &mut Ui, model: &Model, network: &NetworkEntry, out: &mut C
             ui.add(slider).on_hover_text("Area that must drain through a place for a channel to begin.");
         response.widget_info(|| egui::WidgetInfo::slider(true, m2, "Threshold of channels"));
         if m2 != now {
-            out.push(set(Some(three_figures(m2))));
+            out.push(set(Some(rounded(m2, 3))));
         }
         if response.drag_stopped() || response.lost_focus() {
             out.push(Command::Draw(DrawCommand::Settle));
         }
     }
     ui.horizontal(|ui| {
-        if let Some(typed) = optional_number(ui, "Threshold, square metres", stated, 110.0) {
+        let shown = stated.map(|m2| rounded(m2, 6));
+        if let Some(typed) = optional_number(ui, "Threshold, square metres", shown, 110.0) {
             out.push(set(typed));
             out.push(Command::Draw(DrawCommand::Settle));
         }
@@ -46,10 +47,11 @@ pub fn threshold(ui: &mut Ui, model: &Model, network: &NetworkEntry, out: &mut C
     });
 }
 
-/// Finer than that no hand can mean it.
-fn three_figures(m2: f64) -> f64 {
-    let step = 10f64.powf(m2.log10().floor() - 2.0);
-    (m2 / step).round() * step
+/// Rounded to so many figures; finer than three no hand on a slider can mean it.
+fn rounded(m2: f64, count: i32) -> f64 {
+    let power = count - 1 - m2.log10().floor() as i32;
+    let scale = 10f64.powi(power.abs());
+    if power >= 0 { (m2 * scale).round() / scale } else { (m2 / scale).round() * scale }
 }
 
 /// What the slider spans: the thresholds of the test, and always the one in force.
