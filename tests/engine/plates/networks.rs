@@ -73,7 +73,7 @@ fn figures_of_a_tree_state_their_numbers() {
         (long_profile, &["trunk falls", "p = 0.031", "p = 0.004"]),
         (chi_plot, &["0.45 (0.36–0.53)", "0.984"]),
         (slope_area, &["−0.44 (−0.47 to −0.41)"]),
-        (drop_test, &["1.40 km²", "proposed"]),
+        (drop_test, &["1.4 km²", "proposed"]),
         (junction_rose, &["mean 63° (58°–68°)", "1 more left out", "125 m", "500 m"]),
         (order_plot, &["bifurcation 4.3 (3.1–6.0)", "does not tell"]),
         (pattern_bars, &["dendritic", "71 %"]),
