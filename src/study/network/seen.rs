@@ -8,7 +8,7 @@ use crate::science::channel::width;
 use crate::study::glance::glance;
 use crate::study::{FromImage, Id, ImageKind, NetworkEntry, OpenRaster, Sheet, Sources, TracingFinding};
 
-use super::{Found, Ground, masked};
+use super::{Found, Ground};
 
 /// Cells a side of the elevation read to tell which way channels fall.
 const ELEVATION_CELLS: usize = 4096;
@@ -23,7 +23,8 @@ pub fn channels(
 ) -> Result<Result<Found, String>, Stopped> {
     let settings = detect_settings(sheet);
     let is_radar = ground.entry.kind == ImageKind::Radar;
-    let image = masked(ground);
+    // The noise is told by all ground in view; the outline only says which channels are wanted.
+    let image = &ground.image;
     let mut cautions = Vec::new();
     let mut tracing = TracingFinding {
         floor: 0.0,
@@ -37,10 +38,12 @@ pub fn channels(
     let mut network = Network::default();
     if ask.proposed {
         work.phase(&format!("channels of {}", entry.name), 0);
-        match detect(&image, is_radar, &settings, work)? {
+        match detect(image, is_radar, &settings, work)? {
             Err(why) => return Ok(Err(why)),
             Ok(Detected { network: found, floor, widths_px, bridged, cautions: said, .. }) => {
                 (tracing.floor, tracing.widths_px, tracing.bridged_gaps) = (floor, widths_px, bridged);
+                let outline = ground.outline.map(|p| ground.of_full(p));
+                let found = if ground.is_outlined { found.clipped(|p| outline.contains(p)) } else { found };
                 tracing.proposed_reaches = found.reaches.len();
                 cautions.extend(said);
                 let struck = struck(&found, ask, ground, settings.widest_px);
@@ -52,7 +55,7 @@ pub fn channels(
     let drawn: Vec<Polyline> =
         ask.traced.iter().map(|t| Polyline(t.line.0.iter().map(|p| ground.of_full(*p)).collect())).collect();
     network = network.with_drawn(&drawn, settings.narrowest_px.max(2.0));
-    width::measure(&image, &mut network, settings.tone, settings.widest_px, work)?;
+    width::measure(image, &mut network, settings.tone, settings.widest_px, work)?;
     let arrows: Vec<[Point; 2]> = ask.flows.iter().map(|arrow| arrow.map(|p| ground.of_full(p))).collect();
     let heights = ask.elevation.and_then(|id| Heights::of(sheet, sources, id, ground, work));
     let height = |p: Point| heights.as_ref().and_then(|h| h.at(ground.to_full(p)));
