@@ -308,7 +308,7 @@ mod tests {
     #[test]
     fn ticks_are_round_and_lie_on_the_ruler() {
         let ruler = |span| Ruler { span, from_mm: 0.0, to_mm: 40.0 };
-        let labels = |span| -> Vec<String> { ruler(span).ticks(8.0).into_iter().map(|t| t.1).collect() };
+        let labels = |span| -> Vec<String> { ruler(span).ticks(9.0).into_iter().map(|t| t.1).collect() };
         assert_eq!(labels(Span::between(0.0, 41_000.0).per(1000.0)), ["0", "10", "20", "30", "40"]);
         assert_eq!(labels(Span::between(-0.3, 0.3)), ["−0.2", "0.0", "0.2"]);
         let decades = Span { scale: Scale::Logarithmic, min: 1e4, max: 1e9, per: 1.0 };

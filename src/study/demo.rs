@@ -157,6 +157,8 @@ fn add_networks(sheet: &mut Sheet) {
         source: NetworkSource::Image(seen),
         ..on_image
     });
+    // The channels in view are a few pixels wide; dune troughs are wider.
+    sheet.settings.channel.widest_px = 12.0;
     sheet.settings.flow.liquid_density = reach::LIQUID_DENSITY;
     sheet.settings.flow.grain_density = reach::BED_GRAIN_DENSITY;
 }
