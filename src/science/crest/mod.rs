@@ -1,18 +1,28 @@
 //! Crest lines of bedforms in one picture, and the numbers reviewers ask for: length, spacing, defects.
 
 mod candidates;
+mod defects;
 mod fields;
 mod floor;
+mod forks;
 mod join;
 mod lines;
 mod link;
 mod model;
+mod numbers;
 mod scale;
 mod simplify;
+mod spacing;
+mod survival;
 mod tone;
 
 pub use candidates::{Crossing, crossings};
+pub use defects::{Defects, defects};
+pub use forks::{Forks, binomial_p, forks};
 pub use model::{CrestModel, Fit};
+pub use numbers::{CrestNumbers, numbers};
+pub use spacing::{SpacingOnGround, SpacingSettings, spacing};
+pub use survival::{Survival, kaplan_meier};
 
 use crate::ground::{Grid, Method, Point, Polygon, Polyline, Stopped, Work};
 
@@ -22,6 +32,11 @@ pub const METHODS: &[&Method] = &[
     &model::METHOD,
     &floor::METHOD,
     &link::METHOD,
+    &numbers::METHOD,
+    &spacing::METHOD,
+    &survival::METHOD,
+    &defects::METHOD,
+    &forks::METHOD,
 ];
 
 /// How crests are looked for.
