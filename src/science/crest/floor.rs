@@ -11,7 +11,7 @@ pub static METHOD: Method = Method {
     id: "crest.thresholds",
     name: "Noise floor and hysteresis of crest lines",
     question: "Which responses are more than noise and texture?",
-    formula: "floor = s g √(2 ln(N/p)),  N = A/(2πσ²);  high = max(floor, min(q₉₅ of the wrong sense, 0.7 q₉₀ of the right sense));  low = max(0.6 floor, 0.4 high)",
+    formula: "floor = s g √(2 ln(N/p)),  N = A/(2πσ²);  high = max(floor, min(q₉₇ of the wrong sense, 0.85 q₉₀ of the right sense));  low = max(0.6 floor, 0.4 high)",
     symbols: &[
         Symbol { symbol: "s", meaning: "pixel noise, from second differences along the calmest direction", unit: "tone" },
         Symbol { symbol: "g", meaning: "response to unit noise, from the kernels", unit: "1/px or 1/px²" },
@@ -39,10 +39,10 @@ pub static METHOD: Method = Method {
 };
 
 /// Quantile of wrong-sense strengths that a line must start above.
-const WRONG: f64 = 0.95;
+const WRONG: f64 = 0.97;
 
 /// Share of the right sense's strong responses (their 90 % quantile) that always starts a line.
-const STRONG: f64 = 0.7;
+const STRONG: f64 = 0.85;
 
 /// Lines are followed down to this share of the starting threshold.
 const FOLLOW: f64 = 0.4;

@@ -10,7 +10,7 @@ pub static METHOD: Method = Method {
     id: "crest.model",
     name: "Which model of a crest fits",
     question: "Are crests here ridges of tone or steps of it?",
-    formula: "γ(slip face) = max over α of ⟨d_α³⟩/⟨d_α²⟩^{3/2},  d_α = r_x cos α + r_y sin α;  γ(bright ridge) = −γ(dark ridge) = −⟨λ³⟩/⟨λ²⟩^{3/2}",
+    formula: "γ(slip face) = ⟨d³⟩/⟨d²⟩^{3/2},  d = r_x cos α + r_y sin α,  α = direction of ⟨|∇r|² ∇r⟩;  γ(bright ridge) = −γ(dark ridge) = −⟨λ³⟩/⟨λ²⟩^{3/2}",
     symbols: &[
         Symbol { symbol: "γ", meaning: "skewness of the model's response over the patch", unit: "1" },
         Symbol { symbol: "r_x, r_y", meaning: "first derivatives of tone at the crest scale", unit: "tone/px" },
@@ -97,21 +97,15 @@ impl Moments {
         add(&mut self.curvature, &other.curvature);
     }
 
-    /// The direction from dark to bright across most slip faces, and the skewness of slopes along it.
+    /// The direction from dark to bright across most slip faces, that of ⟨|∇r|² ∇r⟩, and the skewness of
+    /// slopes along it.
     pub fn slip_sense(&self) -> (f64, f64) {
-        let degrees = (0..360).map(|deg| f64::from(deg).to_radians());
-        let skewness = |a: f64| {
-            let (s, c) = a.sin_cos();
-            let square = self.second[0] * c * c + 2.0 * self.second[1] * s * c + self.second[2] * s * s;
-            let cube = self.third[0] * c.powi(3)
-                + 3.0 * self.third[1] * c * c * s
-                + 3.0 * self.third[2] * c * s * s
-                + self.third[3] * s.powi(3);
-            ratio(cube, square, self.count)
-        };
-        degrees
-            .map(|a| (a, skewness(a)))
-            .fold((0.0, f64::NEG_INFINITY), |best, next| if next.1 > best.1 { next } else { best })
+        let [xxx, xxy, xyy, yyy] = self.third;
+        let direction = (xxy + yyy).atan2(xxx + xyy);
+        let (s, c) = direction.sin_cos();
+        let square = self.second[0] * c * c + 2.0 * self.second[1] * s * c + self.second[2] * s * s;
+        let cube = xxx * c.powi(3) + 3.0 * xxy * c * c * s + 3.0 * xyy * c * s * s + yyy * s.powi(3);
+        (direction, ratio(cube, square, self.count))
     }
 
     /// All models, best first; a bright ridge before others that fit alike.

@@ -8,8 +8,11 @@ use crate::numeric::separable::smooth_valid;
 
 use super::CrestSettings;
 
-/// Share of pixels cut at either end of the tone against its surroundings: markers, wires, dead pixels.
-const SPIKES: f64 = 0.0025;
+/// Share of pixels cut at either end of the tone against its surroundings: markers, wires, dead pixels. On
+/// slip faces, where the tone against its surroundings is nearly Gaussian, what lies beyond 3.5 robust
+/// standard deviations is cut, but never a greater share than the second figure.
+const SPIKES: [f64; 2] = [0.0025, 0.02];
+const OUTLYING: f64 = 3.5;
 
 /// The surroundings are the tone smoothed by so many scales.
 const SURROUNDINGS: f64 = 7.0;
@@ -97,7 +100,15 @@ impl<'a> Ground<'a> {
         if apart.is_empty() {
             return Ok(calm);
         }
-        let [low, high] = quantile::of(&mut apart, [SPIKES, 1.0 - SPIKES]).map(|v| v as f32);
+        let (low, high) = if smooth {
+            let [low, middle, high] = quantile::of(&mut apart, [SPIKES[1], 0.5, 1.0 - SPIKES[1]]);
+            let mut off: Vec<f64> = apart.iter().map(|v| (v - middle).abs()).collect();
+            let beyond = OUTLYING * quantile::median(&mut off) / 0.6745;
+            (low.min(middle - beyond) as f32, high.max(middle + beyond) as f32)
+        } else {
+            let [low, high] = quantile::of(&mut apart, [SPIKES[0], 1.0 - SPIKES[0]]);
+            (low as f32, high as f32)
+        };
         let cut = calm.values().iter().zip(around.values()).map(|(v, a)| a + (v - a).clamp(low, high));
         Ok(Grid::from_parts(width, height, cut.collect(), None))
     }

@@ -1,11 +1,13 @@
 //! Synthetic ground and wind with known truth: for the demo, for tests, and for injection and recovery.
 
+mod crests;
 mod dunes;
 mod grating;
 pub mod reach;
 pub mod smooth;
 mod speckle;
 
+pub use crests::{CrestScene, CrestShading, CrestTruth};
 pub use dunes::DuneTexture;
 pub use grating::{Grating, WavyGrating, picture};
 pub use speckle::{correlated_speckle, speckle, speckled};
