@@ -17,7 +17,7 @@ const SHORT: f64 = 2.0;
 const CORNER: f64 = -0.5;
 
 /// An end within so many scales of another crest, and pointing at it, runs onto it.
-const ONTO: f64 = 2.5;
+const ONTO: f64 = 4.0;
 
 /// Branches below so many scales are spurs.
 const SPUR: f64 = 4.0;
@@ -33,6 +33,7 @@ struct Tip {
     at: Point,
     /// Unit vector out of the chain.
     out: [f64; 2],
+    strong: bool,
 }
 
 /// How chains are joined.
@@ -53,6 +54,8 @@ impl Joining {
         work: &Work,
     ) -> Result<Vec<Chain>, Stopped> {
         let mut chains = self.bridge(&mut linked, work)?;
+        // Weak chains have had their chance to go on from a strong one; what they hit stays where it is.
+        keep_only(&mut chains, &mut linked.owner, |c| c.strong);
         self.run_onto(&mut chains, &linked.owner, points, index, work)?;
         Ok(self.prune(chains))
     }
@@ -61,7 +64,7 @@ impl Joining {
     fn tips(&self, chains: &[Chain]) -> Vec<Tip> {
         let mut tips = Vec::new();
         for (chain, c) in chains.iter().enumerate() {
-            if c.closed || c.points.len() < 3 {
+            if c.closed || c.points.len() < 3 || (!c.strong && c.length() < SPUR * self.sigma) {
                 continue;
             }
             for end in (0..2).filter(|end| c.hits[*end].is_none()) {
@@ -74,7 +77,7 @@ impl Joining {
                 let d = way[0].distance(inner);
                 if d > 0.0 {
                     let out = [(way[0].x - inner.x) / d, (way[0].y - inner.y) / d];
-                    tips.push(Tip { chain, end, at: way[0], out });
+                    tips.push(Tip { chain, end, at: way[0], out, strong: c.strong });
                 }
             }
         }
@@ -97,7 +100,7 @@ impl Joining {
         let way = [(b.at.x - a.at.x) / d, (b.at.y - a.at.y) / d];
         let first = a.out[0] * way[0] + a.out[1] * way[1];
         let second = -(b.out[0] * way[0] + b.out[1] * way[1]);
-        let straight = first > AIM && second > AIM;
+        let straight = a.strong && b.strong && first > AIM && second > AIM;
         let corner = d <= SHORT * self.sigma && turn > CORNER && first > CORNER && second > CORNER;
         (straight || corner).then_some(d * (3.0 - first - second))
     }
@@ -225,24 +228,32 @@ impl Joining {
                     c.length() >= least
                 })
                 .collect();
-            let mut place = vec![None; chains.len()];
-            let mut next = 0;
-            for (i, keep) in keep.iter().enumerate() {
-                if *keep {
-                    place[i] = Some(next);
-                    next += 1;
-                }
-            }
             let mut kept = keep.iter();
-            chains.retain(|_| *kept.next().unwrap_or(&false));
-            for chain in &mut chains {
-                chain.hits = chain.hits.map(|hit| {
-                    let hit = hit?;
-                    Some(Hit { chain: place[hit.chain]?, at: hit.at })
-                });
-            }
+            keep_only(&mut chains, &mut [], |_| *kept.next().unwrap_or(&false));
         }
         chains
+    }
+}
+
+/// Drops chains; owners and hits follow, those of dropped chains become none.
+fn keep_only(chains: &mut Vec<Chain>, owner: &mut [Option<usize>], mut keep: impl FnMut(&Chain) -> bool) {
+    let mut place = vec![None; chains.len()];
+    let (mut at, mut next) = (0, 0);
+    chains.retain(|chain| {
+        let kept = keep(chain);
+        if kept {
+            place[at] = Some(next);
+            next += 1;
+        }
+        at += 1;
+        kept
+    });
+    owner.iter_mut().for_each(|o| *o = o.and_then(|o| place[o]));
+    for chain in chains {
+        chain.hits = chain.hits.map(|hit| {
+            let hit = hit?;
+            Some(Hit { chain: place[hit.chain]?, at: hit.at })
+        });
     }
 }
 
@@ -268,6 +279,7 @@ fn joined(mut first: Chain, mut second: Chain, from: Point, to: Point) -> Chain 
         }
         first.points.append(&mut second.points);
         first.hits[1] = second.hits[1];
+        first.strong |= second.strong;
         first
     } else {
         if !ends_at(&second, to) {
@@ -278,6 +290,7 @@ fn joined(mut first: Chain, mut second: Chain, from: Point, to: Point) -> Chain 
         }
         second.points.append(&mut first.points);
         second.hits[1] = first.hits[1];
+        second.strong |= first.strong;
         second
     }
 }

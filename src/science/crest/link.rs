@@ -73,6 +73,9 @@ pub(super) struct Chain {
     /// At the first and the last point.
     pub hits: [Option<Hit>; 2],
     pub closed: bool,
+    /// Whether its strongest point passes the starting threshold. Others count only where they go on from one
+    /// that does.
+    pub strong: bool,
 }
 
 impl Chain {
@@ -127,8 +130,7 @@ pub(super) fn link(
     slip_face: bool,
     work: &Work,
 ) -> Result<Linked, Stopped> {
-    let mut seeds: Vec<usize> =
-        (0..points.len()).filter(|i| points[*i].strength >= thresholds.high).collect();
+    let mut seeds: Vec<usize> = (0..points.len()).collect();
     seeds.sort_by(|a, b| points[*b].strength.total_cmp(&points[*a].strength).then(a.cmp(b)));
     let mut walker = Walker { points, index, slip_face, owner: vec![None; points.len()], current: 0 };
     let mut chains: Vec<Chain> = Vec::new();
@@ -154,7 +156,8 @@ pub(super) fn link(
         if closed && let Some(first) = vertices.first().copied() {
             vertices.push(first);
         }
-        chains.push(Chain { points: vertices, hits: [back.hit, ahead.hit], closed });
+        let strong = points[seed].strength >= thresholds.high;
+        chains.push(Chain { points: vertices, hits: [back.hit, ahead.hit], closed, strong });
     }
     Ok(Linked { chains, owner: walker.owner })
 }

@@ -24,7 +24,7 @@ pub struct CrestScene {
     pub wavelength: f64,
     /// Every so many crests one ends inside; 0 for none.
     pub ending_every: usize,
-    /// Every so many crests one forks off a branch that runs to the border midway to the next; 0 for none.
+    /// Every so many crests one forks, and the branch takes the place of the next crest; 0 for none.
     pub forking_every: usize,
     pub shading: CrestShading,
     /// Tone of plain ground, and what crests add to it at most.
@@ -63,6 +63,10 @@ impl CrestScene {
             Polyline((0..=steps).map(|i| Point::new(x(i), y(x(i)))).collect())
         };
         for n in 0..count {
+            let forks = is(n, self.forking_every, 2) && n + 1 < count;
+            if n > 0 && is(n - 1, self.forking_every, 2) {
+                continue;
+            }
             if is(n, self.ending_every, 1) {
                 // Two crests that miss each other: a pair of ends two spacings apart.
                 let middle = width * (0.35 + 0.1 * (n % 4) as f64);
@@ -74,10 +78,10 @@ impl CrestScene {
             } else {
                 truth.lines.push(run(0.0, width, &|x| self.axis(n, x)));
             }
-            if is(n, self.forking_every, 2) {
+            if forks {
                 let from = width * (0.3 + 0.1 * (n % 3) as f64);
-                // Leaves its stem at 45° and bends to run beside it at half the spacing.
-                let apart = |x: f64| 0.5 * self.spacing * (1.0 - (-(x - from) / (0.5 * self.spacing)).exp());
+                // Leaves its stem at 45° and bends to run beside it.
+                let apart = |x: f64| self.spacing * (1.0 - (-(x - from) / self.spacing).exp());
                 truth.lines.push(run(from, width, &|x| self.axis(n, x) + apart(x)));
                 truth.forks.push(Point::new(from, self.axis(n, from)));
             }
