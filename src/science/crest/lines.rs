@@ -142,7 +142,8 @@ impl Trace {
                     End::Free
                 }
             });
-            let calm = simplify::calmed(&points);
+            // Points along a crest share their noise over about a scale; so much is evened out.
+            let calm = simplify::calmed(&points, self.sigma.round() as usize);
             let kept = simplify::keep(&calm, settings.tolerance_px.max(0.0));
             let (confidence, bridged_px) = self.evidence(chain);
             lines.push(CrestLine {

@@ -23,12 +23,15 @@ pub(super) fn keep(points: &[Point], tolerance: f64) -> Vec<usize> {
     (0..points.len()).filter(|i| keep[*i]).collect()
 }
 
-/// Points moved to the weighted mean ¼, ½, ¼ of themselves and their neighbours; the ends stay.
-pub(super) fn calmed(points: &[Point]) -> Vec<Point> {
+/// Points moved `rounds` times to the weighted mean ¼, ½, ¼ of themselves and their neighbours; the ends stay.
+pub(super) fn calmed(points: &[Point], rounds: usize) -> Vec<Point> {
     let mut out = points.to_vec();
-    for (i, w) in points.windows(3).enumerate() {
-        out[i + 1] =
-            Point::new(0.25 * (w[0].x + 2.0 * w[1].x + w[2].x), 0.25 * (w[0].y + 2.0 * w[1].y + w[2].y));
+    for _ in 0..rounds {
+        let before = out.clone();
+        for (i, w) in before.windows(3).enumerate() {
+            let mean = |a: f64, b: f64, c: f64| 0.25 * (a + 2.0 * b + c);
+            out[i + 1] = Point::new(mean(w[0].x, w[1].x, w[2].x), mean(w[0].y, w[1].y, w[2].y));
+        }
     }
     out
 }

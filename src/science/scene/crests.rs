@@ -100,13 +100,15 @@ impl CrestScene {
             for row in rows(w[0].y.min(w[1].y) - reach)..rows(w[0].y.max(w[1].y) + reach + 1.0) {
                 for col in cols(w[0].x.min(w[1].x) - reach)..cols(w[0].x.max(w[1].x) + reach + 1.0) {
                     let p = Point::new(col as f64 + 0.5, row as f64 + 0.5);
-                    let Some(foot) = Polyline(w.to_vec()).nearest(p) else { continue };
+                    let (dx, dy) = (w[1].x - w[0].x, w[1].y - w[0].y);
+                    let (x, y) = (p.x - w[0].x, p.y - w[0].y);
+                    let t = ((x * dx + y * dy) / (dx * dx + dy * dy)).clamp(0.0, 1.0);
+                    let distance = (x - t * dx).hypot(y - t * dy);
                     let i = row * self.width + col;
-                    if foot.distance < nearest[i] {
-                        nearest[i] = foot.distance;
-                        let (dx, dy) = (w[1].x - w[0].x, w[1].y - w[0].y);
-                        let side = dx * (p.y - w[0].y) - dy * (p.x - w[0].x);
-                        below[i] = side.signum();
+                    if distance < nearest[i] {
+                        nearest[i] = distance;
+                        // Sine of the angle past an end, so that no step goes on there; ±1 beside the line.
+                        below[i] = (dx * y - dy * x) / dx.hypot(dy) / distance.max(1e-9);
                     }
                 }
             }
