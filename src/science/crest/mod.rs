@@ -156,9 +156,9 @@ pub fn detect(
 ) -> Result<Crests, Stopped> {
     work.phase("crests", 0);
     let ground = tone::Ground::new(image, outline, settings, work)?;
-    let sigma = match (settings.scale_px, settings.spacing_px) {
-        (Some(sigma), _) if sigma.is_finite() => sigma.clamp(1.0, scale::MOST_PX),
-        _ => scale::choose(&ground, settings, work)?,
+    let trace = match settings.scale_px.filter(|sigma| sigma.is_finite()) {
+        Some(sigma) => lines::trace(&ground, settings, sigma.clamp(1.0, scale::MOST_PX), work)?,
+        None => scale::choose(&ground, settings, work)?,
     };
-    Ok(lines::trace(&ground, settings, sigma, work)?.finished(&ground, settings))
+    Ok(trace.finished(&ground, settings))
 }
