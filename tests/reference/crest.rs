@@ -55,8 +55,7 @@ fn a_bar_answers_as_the_closed_form_says() {
 #[test]
 fn a_step_answers_as_the_closed_form_says() {
     let (h, sigma, at) = (10.0, 3.0, 50.3);
-    let image =
-        Grid::from_fn(100, 40, |col, _| (h * (at - col as f64).clamp(0.0, 1.0)) as f32);
+    let image = Grid::from_fn(100, 40, |col, _| (h * (at - col as f64).clamp(0.0, 1.0)) as f32);
     let (points, moments) = crossings(&image, &[true; 4000], true, sigma, &Work::quiet()).unwrap();
     let crest: Vec<_> = points.iter().filter(|p| p.row == 20 && p.strength > 0.1).collect();
     assert_eq!(crest.len(), 1, "{crest:?}");
@@ -197,8 +196,11 @@ fn compare(truth: &CrestTruth, crests: &Crests) -> (f64, usize, usize) {
             for k in 0..steps as usize {
                 let t = (k as f64 + 0.5) / steps;
                 let p = Point::new(w[0].x + t * (w[1].x - w[0].x), w[0].y + t * (w[1].y - w[0].y));
-                let off =
-                    truth.lines.iter().filter_map(|l| l.nearest(p)).fold(f64::INFINITY, |m, n| m.min(n.distance));
+                let off = truth
+                    .lines
+                    .iter()
+                    .filter_map(|l| l.nearest(p))
+                    .fold(f64::INFINITY, |m, n| m.min(n.distance));
                 sum += off * d / steps;
                 length += d / steps;
             }
@@ -223,7 +225,8 @@ fn scene(shading: CrestShading) -> CrestScene {
     }
 }
 
-/// Position, ends and spacing under speckle of 16, 4 and 1 looks: at 16 the bounds hold.
+/// Under speckle: positions within 0.3 px at 16 looks; ends and forks within 10 % and spacing within 3 % down to
+/// 4. What remains at 1 is printed.
 #[test]
 fn known_crests_are_found_through_speckle() {
     for shading in [CrestShading::Ridge { width: 4.0 }, CrestShading::SlipFace { blur: 1.5 }] {
@@ -235,8 +238,11 @@ fn known_crests_are_found_through_speckle() {
             let noise = speckle(600, 640, looks, &mut Seed(5).stream("crest.speckle", looks as u64));
             let image = speckled(&scene.draw(&truth), &noise);
             let patch = Polygon::rectangle(600.0, 640.0);
-            let settings =
-                CrestSettings { logarithm: true, spacing_px: Some(scene.spacing), ..CrestSettings::default() };
+            let settings = CrestSettings {
+                logarithm: true,
+                spacing_px: Some(scene.spacing),
+                ..CrestSettings::default()
+            };
             let crests = detect(&image, &patch, &settings, &Work::quiet()).unwrap();
             let (off, ends, forks) = compare(&truth, &crests);
             let ground = SpacingSettings { step: 4.0, longest: 200.0, own_beyond: 16.0 };
@@ -260,13 +266,15 @@ fn known_crests_are_found_through_speckle() {
                 median(&got),
                 median(&want)
             );
-            if looks == 16.0 {
+            if looks >= 4.0 {
                 let model = match shading {
                     CrestShading::Ridge { .. } => CrestModel::BrightRidge,
                     CrestShading::SlipFace { .. } => CrestModel::SlipFace,
                 };
                 assert_eq!(crests.model, model);
-                assert!(off <= 0.3, "mean position error {off} px");
+                if looks == 16.0 {
+                    assert!(off <= 0.3, "mean position error {off} px");
+                }
                 let near = |got: usize, want: usize| got.abs_diff(want) as f64 <= 0.1 * want as f64;
                 assert!(near(ends, truth.ends.len()), "ends {ends} of {}", truth.ends.len());
                 assert!(near(forks, truth.forks.len()), "forks {forks} of {}", truth.forks.len());
@@ -300,7 +308,9 @@ fn turning_threads_and_degenerate_pictures() {
         .iter()
         .flat_map(|l| &l.line.0)
         .map(|p| Point::new(p.y, 200.0 - p.x))
-        .map(|p| one.lines.iter().filter_map(|l| l.line.nearest(p)).fold(f64::INFINITY, |m, n| m.min(n.distance)))
+        .map(|p| {
+            one.lines.iter().filter_map(|l| l.line.nearest(p)).fold(f64::INFINITY, |m, n| m.min(n.distance))
+        })
         .collect();
     let near = off.iter().filter(|d| **d < 1.0).count();
     assert!(near as f64 > 0.95 * off.len() as f64, "{near} of {}", off.len());

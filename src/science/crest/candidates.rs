@@ -143,8 +143,12 @@ fn ridge(fields: &Fields, i: usize) -> Option<(f64, [f64; 2], f64, bool)> {
     }
     let slope = f64::from(fields.x[i]) * n[0] + f64::from(fields.y[i]) * n[1];
     let offset = -slope / curvature;
-    (offset.abs() * n[0].abs().max(n[1].abs()) <= WITHIN)
-        .then_some((offset, n, curvature.abs(), curvature < 0.0))
+    (offset.abs() * n[0].abs().max(n[1].abs()) <= WITHIN).then_some((
+        offset,
+        n,
+        curvature.abs(),
+        curvature < 0.0,
+    ))
 }
 
 /// The same for a step: the largest slope along the gradient.

@@ -71,16 +71,14 @@ pub fn defects(
     total_length: f64,
     spacing: Option<f64>,
 ) -> Defects {
-    let count = |wanted: &dyn Fn(End) -> bool| {
-        lines.iter().flat_map(|l| l.ends).filter(|end| wanted(*end)).count()
-    };
+    let count =
+        |wanted: &dyn Fn(End) -> bool| lines.iter().flat_map(|l| l.ends).filter(|end| wanted(*end)).count();
     let ends = count(&|end| end == End::Free);
     let cut_ends = count(&|end| matches!(end, End::Border | End::Gap));
     let forks = junctions.iter().filter(|j| j.branches.len() == 1).count();
     let crossings = junctions.iter().filter(|j| j.branches.len() > 1).count();
-    let both = |n: usize| {
-        (total_length > 0.0).then(|| [n as f64 / total_length, n as f64 / (2.0 * total_length)])
-    };
+    let both =
+        |n: usize| (total_length > 0.0).then(|| [n as f64 / total_length, n as f64 / (2.0 * total_length)]);
     let bridged = lines.iter().filter(|l| l.bridged_px > 0.25 * l.line.length()).count();
     let mut cautions = Vec::new();
     if bridged > 0 {

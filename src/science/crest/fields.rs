@@ -63,7 +63,8 @@ impl Fields {
             padded[..radius].fill(source[0]);
             padded[radius..radius + width].copy_from_slice(source);
             padded[radius + width..].fill(source[width - 1]);
-            for (kernel, out) in [&kernels.smooth, &kernels.slope, &kernels.curve].into_iter().zip(&mut along) {
+            for (kernel, out) in [&kernels.smooth, &kernels.slope, &kernels.curve].into_iter().zip(&mut along)
+            {
                 along_row(kernel, &padded, &mut out[i * width..][..width]);
             }
             work.advance(0)?;

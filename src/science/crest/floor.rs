@@ -13,11 +13,19 @@ pub static METHOD: Method = Method {
     question: "Which responses are more than noise and texture?",
     formula: "floor = s g √(2 ln(N/p)),  N = A/(2πσ²);  high = max(floor, min(q₉₇ of the wrong sense, 0.85 q₉₀ of the right sense));  low = max(0.6 floor, 0.4 high)",
     symbols: &[
-        Symbol { symbol: "s", meaning: "pixel noise, from second differences along the calmest direction", unit: "tone" },
+        Symbol {
+            symbol: "s",
+            meaning: "pixel noise, from second differences along the calmest direction",
+            unit: "tone",
+        },
         Symbol { symbol: "g", meaning: "response to unit noise, from the kernels", unit: "1/px or 1/px²" },
         Symbol { symbol: "A", meaning: "area searched", unit: "px²" },
         Symbol { symbol: "p", meaning: "chance that noise starts one line", unit: "1" },
-        Symbol { symbol: "q", meaning: "quantile of the strengths of crest points", unit: "tone/px or tone/px²" },
+        Symbol {
+            symbol: "q",
+            meaning: "quantile of the strengths of crest points",
+            unit: "tone/px or tone/px²",
+        },
     ],
     assumptions: &[
         "pixel noise is nearly Gaussian after smoothing, so the size of a gradient is Rayleigh distributed",

@@ -104,9 +104,9 @@ fn opening(lines: &[CrestLine], junction: &Junction, frame: LocalFrame, reach: f
     arms.push(arm(at, through[..=near].iter().rev().copied(), reach)?);
     let dot = |a: [f64; 2], b: [f64; 2]| a[0] * b[0] + a[1] * b[1];
     let pairs = [(0, 1), (0, 2), (1, 2)];
-    let (i, j) = pairs
-        .into_iter()
-        .fold((0, 1), |best, next| if dot(arms[next.0], arms[next.1]) > dot(arms[best.0], arms[best.1]) { next } else { best });
+    let (i, j) = pairs.into_iter().fold((0, 1), |best, next| {
+        if dot(arms[next.0], arms[next.1]) > dot(arms[best.0], arms[best.1]) { next } else { best }
+    });
     if dot(arms[i], arms[j]) < OPEN {
         return None;
     }

@@ -194,8 +194,7 @@ impl Joining {
                 continue;
             }
             let chain = &mut chains[tip.chain];
-            let vertex =
-                super::link::Vertex { at: points[i].at, strength: 0.0, bridged: true };
+            let vertex = super::link::Vertex { at: points[i].at, strength: 0.0, bridged: true };
             match tip.end {
                 0 => {
                     chain.points[0].bridged = true;

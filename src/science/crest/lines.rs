@@ -59,9 +59,7 @@ pub(super) fn trace(
         false => crossings(&ground.prepared(sigma, false, work)?, &open, false, sigma, work)?.0,
     };
     let right = |p: &Crossing| match (model, sense) {
-        (CrestModel::SlipFace, Some(sense)) => {
-            p.normal[0] * sense.cos() + p.normal[1] * sense.sin() > FACING
-        }
+        (CrestModel::SlipFace, Some(sense)) => p.normal[0] * sense.cos() + p.normal[1] * sense.sin() > FACING,
         (CrestModel::SlipFace, None) | (CrestModel::BothRidges, _) => true,
         (CrestModel::BrightRidge, _) => p.bright,
         (CrestModel::DarkRidge, _) => !p.bright,
@@ -120,11 +118,9 @@ impl Trace {
                     .find(|j| j.through == hit.chain && j.at.distance(hit.at) <= 2.0 * self.sigma);
                 match near {
                     Some(junction) => junction.branches.push((n, end)),
-                    None => junctions.push(Junction {
-                        at: hit.at,
-                        through: hit.chain,
-                        branches: vec![(n, end)],
-                    }),
+                    None => {
+                        junctions.push(Junction { at: hit.at, through: hit.chain, branches: vec![(n, end)] })
+                    }
                 }
             }
             let points: Vec<Point> = chain.points.iter().map(|v| v.at).collect();

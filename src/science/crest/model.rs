@@ -13,7 +13,11 @@ pub static METHOD: Method = Method {
     formula: "γ(slip face) = ⟨d³⟩/⟨d²⟩^{3/2},  d = r_x cos α + r_y sin α,  α = direction of ⟨|∇r|² ∇r⟩;  γ(bright ridge) = −γ(dark ridge) = −⟨λ³⟩/⟨λ²⟩^{3/2}",
     symbols: &[
         Symbol { symbol: "γ", meaning: "skewness of the model's response over the patch", unit: "1" },
-        Symbol { symbol: "r_x, r_y", meaning: "first derivatives of tone at the crest scale", unit: "tone/px" },
+        Symbol {
+            symbol: "r_x, r_y",
+            meaning: "first derivatives of tone at the crest scale",
+            unit: "tone/px",
+        },
         Symbol { symbol: "λ", meaning: "Hessian eigenvalue of the largest size", unit: "tone/px²" },
         Symbol { symbol: "α", meaning: "direction from dark to bright across slip faces", unit: "rad" },
     ],

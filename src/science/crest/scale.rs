@@ -2,10 +2,10 @@
 
 use crate::ground::{Stopped, Work};
 
+use super::CrestSettings;
+use super::lines::{self, Trace};
 use super::model::CrestModel;
 use super::tone::Ground;
-use super::lines::{self, Trace};
-use super::CrestSettings;
 
 /// Widest scale, pixels: wider patches are read at a coarser resolution.
 pub(super) const MOST_PX: f64 = 64.0;
@@ -24,16 +24,12 @@ fn spacings(model: CrestModel) -> f64 {
 const RELIABLE: f64 = 2.0;
 
 /// Coarsest scale as a share of the spacing: neighbours run into each other beyond.
-const COARSEST: f64 = 1.0 / 5.0;
+const COARSEST: f64 = 1.0 / 4.5;
 
 /// The trace at the scale of the spacing or, without one, at the scale of a sweep in half octaves whose own
 /// crests stand at a spacing (area over length) nearest to what suits it; at the finest scale where nothing
 /// is traced. Under strong noise the next scales at which crests stand clear of it.
-pub(super) fn choose(
-    ground: &Ground<'_>,
-    settings: &CrestSettings,
-    work: &Work,
-) -> Result<Trace, Stopped> {
+pub(super) fn choose(ground: &Ground<'_>, settings: &CrestSettings, work: &Work) -> Result<Trace, Stopped> {
     let (mut trace, spacing) = match settings.spacing_px.filter(|s| s.is_finite() && *s > 0.0) {
         Some(spacing) => {
             let model = match settings.model {

@@ -85,10 +85,9 @@ impl<'a> Ground<'a> {
     /// wires and markers and leaves steps where they are.
     pub fn prepared(&self, sigma: f64, smooth: bool, work: &Work) -> Result<Grid<f32>, Stopped> {
         let (width, height) = (self.tone.width(), self.tone.height());
-        let around = smooth_valid(&self.tone, [SURROUNDINGS * sigma; 2], work)?;
-        let filled = Grid::from_fn(width, height, |c, r| {
-            self.tone.get(c, r).or(around.get(c, r)).unwrap_or_default()
-        });
+        let around = surroundings(&self.tone, SURROUNDINGS * sigma, work)?;
+        let filled =
+            Grid::from_fn(width, height, |c, r| self.tone.get(c, r).or(around.get(c, r)).unwrap_or_default());
         let radius = (sigma.round() as usize).min(WIDEST_MEDIAN);
         let calm = if smooth { median(&filled, radius, work)? } else { filled };
         let every = (calm.len() / SAMPLES).max(1);
@@ -191,6 +190,46 @@ fn noise(tone: &Grid<f32>, outline: &Polygon, work: &Work) -> Result<f64, Stoppe
         level = level.max(if calmest.is_finite() { calmest } else { 0.0 });
     }
     Ok(level)
+}
+
+/// The tone smoothed by a wide Gaussian: block means, smoothed, and linear between them. Blocks are a quarter of
+/// the Gaussian, so nothing is lost that it would keep.
+fn surroundings(tone: &Grid<f32>, sigma: f64, work: &Work) -> Result<Grid<f32>, Stopped> {
+    let side = (0.25 * sigma) as usize;
+    if side < 2 {
+        return smooth_valid(tone, [sigma; 2], work);
+    }
+    let (width, height) = (tone.width(), tone.height());
+    let (cols, rows) = (width.div_ceil(side), height.div_ceil(side));
+    let mut sums = vec![(0.0f64, 0u32); cols * rows];
+    for row in 0..height {
+        for col in 0..width {
+            if let Some(v) = tone.get(col, row) {
+                let sum = &mut sums[row / side * cols + col / side];
+                *sum = (sum.0 + f64::from(v), sum.1 + 1);
+            }
+        }
+        work.advance(0)?;
+    }
+    let means = sums.iter().map(|(sum, n)| (sum / f64::from((*n).max(1))) as f32).collect();
+    let blocks = Grid::from_parts(cols, rows, means, Some(sums.iter().map(|s| s.1 > 0).collect()));
+    let blocks = smooth_valid(&blocks, [sigma / side as f64; 2], work)?;
+    let split = |i: usize, n: usize| {
+        let at = ((i as f32 + 0.5) / side as f32 - 0.5).clamp(0.0, (n - 1) as f32);
+        let first = (at as usize).min(n.saturating_sub(2));
+        (first, (first + 1).min(n - 1), at - first as f32)
+    };
+    let mut out = vec![0.0f32; width * height];
+    out.par_chunks_mut(width.max(1)).enumerate().try_for_each(|(row, line)| {
+        let (above, below, v) = split(row, rows);
+        for (col, out) in line.iter_mut().enumerate() {
+            let (left, right, u) = split(col, cols);
+            let mix = |r: usize| blocks.at(left, r) * (1.0 - u) + blocks.at(right, r) * u;
+            *out = mix(above) * (1.0 - v) + mix(below) * v;
+        }
+        work.advance(0)
+    })?;
+    Ok(Grid::from_parts(width, height, out, None))
 }
 
 /// The median over (2·radius + 1)² pixels, cut at the raster's border.
