@@ -89,18 +89,20 @@ fn random_lines_are_met_at_half_pi_times_area_over_length() {
     use rand::Rng as _;
     let mut random = Seed(7).stream("crest.needles", 0);
     let (side, length) = (400.0, 60.0);
-    let mut total = 0.0;
-    let mut met = 0usize;
+    let (mut lines, mut met) = (Vec::new(), 0usize);
     for _ in 0..6000 {
-        let y = random.random_range(0.0..side);
-        let (s, _) = random.random_range(0.0..PI).sin_cos();
-        total += length;
-        // Rows are one apart, lines go round the edges.
-        let (from, to) = (y - 0.5 * length * s, y + 0.5 * length * s);
-        met += (to.ceil() - from.ceil()).abs() as usize;
+        let (x, y) = (random.random_range(0.0..side), random.random_range(0.0..side));
+        let (s, c) = random.random_range(0.0..PI).sin_cos();
+        let (dx, dy) = (0.5 * length * c, 0.5 * length * s);
+        lines.push(line(&[(x - dx, y - dy), (x + dx, y + dy)], [End::Free; 2]));
+        // Rows are one apart; what sticks out at one edge stands for what would stick in at the other.
+        met += ((y + dy).ceil() - (y - dy).ceil()).abs() as usize;
     }
-    let mean = side * side / met as f64;
-    assert_close!(mean / (side * side / total), FRAC_PI_2, 0.02, "mean distance over A/ΣL");
+    let settings = SpacingSettings { step: length, longest: 10.0, own_beyond: 1.0 };
+    let got = spacing(&lines, &Polygon::rectangle(side, side), PLAIN, settings, &Work::quiet()).unwrap();
+    let counted = side * side / met as f64;
+    assert_close!(counted / got.random_direction.unwrap(), 1.0, 0.02, "counted over (π/2) A/ΣL");
+    assert_close!(counted / got.stereology.unwrap(), FRAC_PI_2, 0.03, "counted over A/ΣL");
 }
 
 /// Spacings of exponential law seen through a patch only one and a half of them high: counting whole ones only
