@@ -7,7 +7,8 @@ use crate::plate::Figure;
 use crate::study::{Id, OpenRaster, TogetherFinding};
 
 use super::{
-    Command, Delivery, Import, Measured, Model, Opened, Reading, SheetCommand, Slot, WindResult, apply,
+    Charted, Command, Delivery, Import, Measured, Model, Opened, PenAnswer, Reading, SheetCommand, Slot,
+    WindResult, apply, pen,
 };
 
 /// An answer from a job.
@@ -16,6 +17,8 @@ pub enum Answer {
     /// A raster, open to be measured and laid to be seen, or why not.
     Raster(Id, Option<Box<OpenRaster>>, Opened),
     Patch(Id, Box<Measured>),
+    Network(Id, Box<Charted>),
+    Pen(PenAnswer),
     Winds(Vec<WindResult>),
     /// What all patches say together, as the sheet of this fingerprint stood.
     Together(String, Box<TogetherFinding>),
@@ -39,10 +42,14 @@ pub fn absorb(model: &mut Model) -> bool {
         any = true;
         match delivery {
             Delivery::Answer(_, answer) => take(model, answer),
+            Delivery::Ended(Slot::Chance) => pen::judge_again(model),
             Delivery::Ended(_) => {}
             Delivery::Broke(slot, text) => {
                 if slot == Slot::Measure {
                     model.session.pause_measuring(&model.sheet);
+                }
+                if slot == Slot::Networks {
+                    model.session.pause_charting();
                 }
                 let text = format!("A fault in the program ended the work “{slot:?}”: {text}");
                 model.session.notices.problem(text);
@@ -65,6 +72,8 @@ fn take(model: &mut Model, answer: Answer) {
             session.rasters.insert(id, opened);
         }
         Answer::Patch(id, measured) => session.results.take_patch(id, *measured),
+        Answer::Network(id, charted) => session.results.take_network(id, *charted),
+        Answer::Pen(answer) => pen::take(model, answer),
         Answer::Winds(results) => results.into_iter().for_each(|r| session.results.take_wind(r)),
         Answer::Together(sheet, together) => session.results.take_together(sheet, *together),
         Answer::Preview(import) => match *import {

@@ -19,7 +19,7 @@ pub struct Fact {
 }
 
 impl Fact {
-    fn by(self, method: &'static str) -> Self {
+    pub(super) fn by(self, method: &'static str) -> Self {
         Self { method, ..self }
     }
 
@@ -29,7 +29,7 @@ impl Fact {
     }
 }
 
-fn fact(label: &'static str, value: impl Into<String>, hint: &'static str) -> Fact {
+pub(super) fn fact(label: &'static str, value: impl Into<String>, hint: &'static str) -> Fact {
     Fact { label, value: value.into(), hint, method: "" }
 }
 

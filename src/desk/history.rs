@@ -9,6 +9,7 @@ pub enum MergeKey {
     Tone(Id),
     Setting(&'static str),
     Mast(Id),
+    Threshold(Id),
 }
 
 /// The sheets before and after now.
@@ -59,6 +60,11 @@ impl History {
     /// Whether an outline is being dragged. A number typed twice is one step too, but the hand is off it.
     pub fn is_dragging(&self) -> bool {
         matches!(self.merging, Some(MergeKey::Outline(_)))
+    }
+
+    /// Whether a threshold is being dragged.
+    pub fn is_sliding(&self) -> bool {
+        matches!(self.merging, Some(MergeKey::Threshold(_)))
     }
 
     /// Puts the previous sheet in place and says what was taken back.

@@ -18,14 +18,29 @@ pub enum Slot {
     OpenRaster,
     Demo,
     Measure,
+    /// Channel networks.
+    Networks,
+    /// The pen: its ground and the way to the pointer.
+    Pen,
+    /// What ways between random places cost.
+    Chance,
     ReadWinds,
     Plate,
     Export,
 }
 
 impl Slot {
-    pub const ALL: [Self; 6] =
-        [Self::OpenRaster, Self::Demo, Self::Measure, Self::ReadWinds, Self::Plate, Self::Export];
+    pub const ALL: [Self; 9] = [
+        Self::OpenRaster,
+        Self::Demo,
+        Self::Measure,
+        Self::Networks,
+        Self::Pen,
+        Self::Chance,
+        Self::ReadWinds,
+        Self::Plate,
+        Self::Export,
+    ];
 }
 
 /// The running jobs and the way their answers come back.

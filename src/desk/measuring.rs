@@ -17,7 +17,7 @@ use super::{Answer, Measured, Model, Opened, Post, Slot, Standing, WindResult};
 /// What is kept between jobs, so that an edit measures only what it touches.
 #[derive(Debug, Default)]
 pub struct Kept {
-    memo: Memo,
+    pub(super) memo: Memo,
     records: Mutex<HashMap<String, WindRecord>>,
 }
 
@@ -36,7 +36,7 @@ pub fn follow(model: &mut Model) {
         return;
     }
     let running = model.session.jobs.is_running(Slot::Measure);
-    let now = fingerprint::of_sheet(&model.sheet);
+    let now = fingerprint::of_patches(&model.sheet);
     match &model.session.measuring {
         Some(Task::Quick) if running => return,
         Some(Task::Exact(sheet)) if running && *sheet == now => return,
@@ -62,7 +62,7 @@ pub fn follow(model: &mut Model) {
     }
 }
 
-fn still_opening(model: &Model) -> bool {
+pub(super) fn still_opening(model: &Model) -> bool {
     model.session.rasters.values().any(|opened| matches!(opened, Opened::Opening))
 }
 
@@ -132,7 +132,7 @@ impl Round {
         }
         let findings: Vec<&PatchFinding> = found.iter().map(Arc::as_ref).collect();
         let together = together(&self.sheet, &findings, winds);
-        post.answer(Answer::Together(fingerprint::of_sheet(&self.sheet), Box::new(together)));
+        post.answer(Answer::Together(fingerprint::of_patches(&self.sheet), Box::new(together)));
         Ok(())
     }
 

@@ -2,6 +2,9 @@
 //! notices, and what the panels show. Knows no window toolkit.
 
 mod answer;
+pub mod channel_facts;
+pub mod channels;
+mod charting;
 mod command;
 mod engine;
 pub mod facts;
@@ -13,6 +16,8 @@ pub mod ledger;
 mod measuring;
 mod model;
 mod notices;
+mod pen;
+pub mod planform_facts;
 mod plates;
 pub mod readout;
 pub mod regimes;
@@ -27,9 +32,9 @@ pub use crate::files::wind_table::{DirectionSense, SpeedUnit, Stand, WindImport,
 pub use crate::study::bulk::LonLatBox;
 pub use answer::{Answer, absorb};
 pub use command::{
-    AskCommand, BodyCommand, Chord, Command, DrawCommand, JobCommand, ObstacleCommand, PatchCommand,
-    PlateCommand, RasterCommand, Record, SettingCommand, SheetCommand, ViewCommand, WindCommand, apply,
-    listed,
+    AskCommand, BodyCommand, Chord, Command, DrawCommand, JobCommand, NetworkCommand, ObstacleCommand,
+    PatchCommand, PlateCommand, RasterCommand, Record, SettingCommand, SheetCommand, ViewCommand,
+    WindCommand, apply, listed,
 };
 pub use engine::SheetError;
 pub use history::{History, MergeKey};
@@ -37,8 +42,9 @@ pub use import::{Import, Pick, ReadRow, Reading};
 pub use jobs::{Delivery, Jobs, Post, Running, Slot, Wake};
 pub use model::Model;
 pub use notices::{Notice, NoticeKind, Notices};
+pub use pen::{Leg, PenAnswer, PenGround, Tracing};
 pub use plates::{Format, Motif, PlateChoice, Preview};
-pub use results::{Measured, Results, Standing, WindResult};
+pub use results::{Charted, Measured, Results, Standing, Stick, WindResult};
 pub use session::{Ask, Cursor, Dialog, Draft, Laid, Opened, Purpose, Session, Tool};
 pub use tiles::{TILE, TileKey, TileReader, TileShelf};
 pub use view::{Camera, Layers, Page, PickedRegime, Theme, View};

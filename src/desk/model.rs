@@ -5,9 +5,9 @@ use std::path::PathBuf;
 
 use crate::ground::{Body, LonLat, Point};
 use crate::study::judges::{self, Judges};
-use crate::study::{Id, Obstacle, Patch, RasterEntry, Sheet, WindEntry};
+use crate::study::{Id, NetworkEntry, Obstacle, Patch, RasterEntry, Sheet, WindEntry};
 
-use super::{Opened, Session, View, Wake, engine, laying, measuring, plates};
+use super::{Opened, Session, Tool, View, Wake, charting, engine, laying, measuring, pen, plates};
 
 /// What panels draw from. It changes only in [`super::apply`] and [`super::absorb`].
 #[derive(Debug)]
@@ -43,6 +43,23 @@ impl Model {
 
     pub fn selected_obstacle(&self) -> Option<&Obstacle> {
         self.view.obstacle.and_then(|id| self.sheet.obstacle(id))
+    }
+
+    pub fn selected_network(&self) -> Option<&NetworkEntry> {
+        self.view.network.and_then(|id| self.sheet.network(id))
+    }
+
+    /// The network that `tool` works on: the selected one, when it lies on the raster on the table and has the
+    /// source the tool is for.
+    pub fn network_for(&self, tool: Tool) -> Option<&NetworkEntry> {
+        let shown = self.shown_raster()?.id;
+        let network = self.selected_network().filter(|n| n.raster == shown)?;
+        let fits = if Tool::DRAINAGE.contains(&tool) {
+            network.elevation().is_some()
+        } else {
+            network.image().is_some()
+        };
+        fits.then_some(network)
     }
 
     /// The wind record on the bench: the user's choice, the selected patch's own, or the first.
@@ -105,6 +122,8 @@ impl Model {
         self.session.results.follow(&self.sheet);
         laying::follow(self);
         measuring::follow(self);
+        charting::follow(self);
+        pen::follow(self);
         plates::follow(self);
     }
 
@@ -130,6 +149,7 @@ impl Model {
         view.raster = view.raster.filter(|id| sheet.raster(*id).is_some());
         view.wind = view.wind.filter(|id| sheet.wind(*id).is_some());
         view.obstacle = view.obstacle.filter(|id| sheet.obstacle(*id).is_some());
+        view.network = view.network.filter(|id| sheet.network(*id).is_some());
     }
 
     /// The sheet's file name, or its title while it has none.

@@ -29,7 +29,9 @@ pub enum Motif {
     /// The selected patch.
     #[default]
     Patch,
-    /// The raster on the table with all its patches.
+    /// The selected network.
+    Network,
+    /// The raster on the table with all its patches and networks.
     Overview,
 }
 
@@ -102,7 +104,13 @@ fn key(model: &Model) -> String {
     let results = &model.session.results;
     let subject: Vec<String> = match choice.motif {
         Motif::Patch => model.selected_patch().iter().map(|p| results.stamp(p.id)).collect(),
-        Motif::Overview => model.sheet.patches.iter().map(|p| results.stamp(p.id)).collect(),
+        // Its plate shows the patches of the raster and the networks it is compared with.
+        Motif::Network | Motif::Overview => {
+            let chosen = model.view.network.map(|id| format!("{id:?}"));
+            let patches = model.sheet.patches.iter().map(|p| results.stamp(p.id));
+            let networks = model.sheet.networks.iter().map(|n| results.network_stamp(n.id));
+            patches.chain(networks).chain(chosen).collect()
+        }
     };
     let raster = model.shown_raster().map(|r| (r.id, r.tone, model.session.sources.contains_key(&r.id)));
     format!("{:?} {} {subject:?} {raster:?} {}", choice.motif, choice.width_mm, model.sheet.title)
@@ -114,6 +122,7 @@ pub struct Subject {
     sources: Sources,
     findings: Findings,
     patch: Option<Id>,
+    network: Option<Id>,
     raster: Option<Id>,
 }
 
@@ -124,6 +133,7 @@ impl Subject {
             sources: Sources { rasters: model.session.sources.clone(), ..Sources::default() },
             findings: findings(model),
             patch: model.view.patch,
+            network: model.view.network,
             raster: model.shown_raster().map(|r| r.id),
         }
     }
@@ -139,6 +149,20 @@ impl Subject {
                 let finding = finding.ok_or("the patch is not measured yet")?;
                 let winds: Vec<WindFinding> = self.findings.winds.clone();
                 compose::of_patch(&self.sheet, &self.sources, finding, &winds, choice.width_mm, &theme, work)
+            }
+            Motif::Network => {
+                let id = self.network.ok_or("no network is selected")?;
+                let finding = self.findings.networks.iter().find(|n| n.id == id);
+                let finding = finding.ok_or("the network is not measured as the sheet stands")?;
+                compose::of_network(
+                    &self.sheet,
+                    &self.sources,
+                    finding,
+                    &self.findings,
+                    choice.width_mm,
+                    &theme,
+                    work,
+                )
             }
             Motif::Overview => {
                 let raster = self.raster.ok_or("no raster is on the table")?;
@@ -173,11 +197,16 @@ fn findings(model: &Model) -> Findings {
     let ids = || sheet.patches.iter().map(|p| p.id);
     let rasters = sheet.rasters.iter().filter_map(|r| Some(run::raster(r, session.sources.get(&r.id)?)));
     Findings {
-        networks: Vec::new(),
         sheet_fingerprint: fingerprint::of_sheet(sheet),
         rasters: rasters.collect(),
         winds: sheet.winds.iter().filter_map(|w| session.results.wind(w.id)?.outcome.clone().ok()).collect(),
         patches: ids().filter(current).filter_map(|id| session.results.patch(id).cloned()).collect(),
+        networks: sheet
+            .networks
+            .iter()
+            .filter(|n| session.results.network_standing(n.id).is_current())
+            .filter_map(|n| session.results.network(n.id).map(|finding| (**finding).clone()))
+            .collect(),
         together: session.results.together().cloned().unwrap_or_default(),
         failures: session.results.failures(sheet),
     }

@@ -2,19 +2,24 @@
 //! away from is shown as out of date, never hidden.
 
 use std::collections::BTreeMap;
+use std::sync::Arc;
 
-use crate::study::{Failure, Id, PatchFinding, Sheet, TogetherFinding, WindEntry, WindFinding, fingerprint};
+use crate::ground::Bounds;
+use crate::study::{
+    Failure, Id, NetworkFinding, PatchFinding, Sheet, TogetherFinding, WindEntry, WindFinding, fingerprint,
+};
 
 /// All results of the session.
 #[derive(Debug, Default)]
 pub struct Results {
     patches: BTreeMap<Id, Measured>,
     winds: BTreeMap<Id, WindResult>,
-    /// What they say together, with the fingerprint of the sheet.
+    networks: BTreeMap<Id, Charted>,
+    /// What they say together, with the fingerprint of patches and winds.
     together: Option<(String, TogetherFinding)>,
-    /// Fingerprint of the sheet as it stands now.
+    /// Fingerprint of patches and winds as the sheet stands now.
     sheet_now: String,
-    /// Fingerprints of the patches as the sheet stands now.
+    /// Fingerprints of the patches and networks as the sheet stands now.
     now: BTreeMap<Id, String>,
 }
 
@@ -29,6 +34,26 @@ pub struct Measured {
     pub exact: bool,
 }
 
+/// The latest measurement of a network.
+#[derive(Debug)]
+pub struct Charted {
+    /// The finding, or why there is none.
+    pub outcome: Result<Arc<NetworkFinding>, String>,
+    /// Of what was measured, even when it failed.
+    pub fingerprint: String,
+    /// The box of each reach, so that what is under the pointer is found at once.
+    pub boxes: Vec<Bounds>,
+    /// The network in small, for the ledger.
+    pub sketch: Vec<Stick>,
+}
+
+/// A reach in small: its order (1 where undefined) and its line in a unit square, upper left first.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Stick {
+    pub order: u32,
+    pub line: Vec<[f32; 2]>,
+}
+
 /// What came of a wind record.
 #[derive(Debug)]
 pub struct WindResult {
@@ -38,7 +63,7 @@ pub struct WindResult {
     pub outcome: Result<WindFinding, String>,
 }
 
-/// How far a patch's result may be relied on.
+/// How far a result of a patch or network may be relied on.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum Standing {
     Unmeasured,
@@ -54,13 +79,20 @@ pub enum Standing {
 impl Results {
     /// Takes note of how the sheet stands; call after each change of it.
     pub fn follow(&mut self, sheet: &Sheet) {
-        self.now = sheet.patches.iter().map(|p| (p.id, fingerprint::of_patch(sheet, p))).collect();
-        self.sheet_now = fingerprint::of_sheet(sheet);
+        let patches = sheet.patches.iter().map(|p| (p.id, fingerprint::of_patch(sheet, p)));
+        let networks = sheet.networks.iter().map(|n| (n.id, fingerprint::of_network(sheet, n)));
+        self.now = patches.chain(networks).collect();
+        self.sheet_now = fingerprint::of_patches(sheet);
         self.winds.retain(|id, _| sheet.wind(*id).is_some());
+        self.networks.retain(|id, _| sheet.network(*id).is_some());
     }
 
     pub fn take_patch(&mut self, id: Id, measured: Measured) {
         self.patches.insert(id, measured);
+    }
+
+    pub fn take_network(&mut self, id: Id, charted: Charted) {
+        self.networks.insert(id, charted);
     }
 
     pub fn take_wind(&mut self, result: WindResult) {
@@ -74,6 +106,32 @@ impl Results {
 
     pub fn measured(&self, id: Id) -> Option<&Measured> {
         self.patches.get(&id)
+    }
+
+    /// The finding of a network, current or not.
+    pub fn network(&self, id: Id) -> Option<&Arc<NetworkFinding>> {
+        self.networks.get(&id)?.outcome.as_ref().ok()
+    }
+
+    pub fn charted(&self, id: Id) -> Option<&Charted> {
+        self.networks.get(&id)
+    }
+
+    /// How far the result of a network may be relied on.
+    pub fn network_standing(&self, id: Id) -> Standing {
+        match self.networks.get(&id) {
+            None => Standing::Unmeasured,
+            Some(charted) if self.now.get(&id) != Some(&charted.fingerprint) => Standing::OutOfDate,
+            Some(charted) if charted.outcome.is_ok() => Standing::Current,
+            Some(_) => Standing::Failed,
+        }
+    }
+
+    /// Networks whose result is wanting, with the fingerprint it will have, in the order of the sheet.
+    pub fn networks_wanting(&self, sheet: &Sheet) -> Vec<(Id, String)> {
+        let done = |id| matches!(self.network_standing(id), Standing::Current | Standing::Failed);
+        let now = |id: Id| Some((id, self.now.get(&id)?.clone()));
+        sheet.networks.iter().map(|n| n.id).filter(|id| !done(*id)).filter_map(now).collect()
     }
 
     pub fn take_together(&mut self, sheet: String, together: TogetherFinding) {
@@ -109,6 +167,12 @@ impl Results {
         }
     }
 
+    /// A text that changes whenever the result of a network or its standing does.
+    pub fn network_stamp(&self, id: Id) -> String {
+        let of = self.networks.get(&id).map_or("", |charted| charted.fingerprint.as_str());
+        format!("{}{:?}{of}", id.0, self.network_standing(id))
+    }
+
     /// A text that changes whenever the result of a patch or its standing does.
     pub fn stamp(&self, id: Id) -> String {
         let of = self.patches.get(&id).map_or("", |measured| measured.fingerprint.as_str());
@@ -125,7 +189,11 @@ impl Results {
             let why = self.winds.get(&w.id)?.outcome.as_ref().err()?.clone();
             Some(Failure { what: format!("wind record {}", w.name), why })
         });
-        winds.chain(patches).collect()
+        let networks = sheet.networks.iter().filter_map(|n| {
+            let why = self.networks.get(&n.id)?.outcome.as_ref().err()?.clone();
+            Some(Failure { what: format!("network {}", n.name), why })
+        });
+        winds.chain(patches).chain(networks).collect()
     }
 
     /// Patches whose exact result is wanting, in the order of the sheet.

@@ -9,7 +9,10 @@ use crate::study::{Id, OpenRaster, Sheet, fingerprint};
 
 use super::laying::OpenedAs;
 use super::measuring::{Kept, Task};
-use super::{Answer, Command, History, Import, Jobs, Notices, Preview, Results, Slot, TileShelf, Wake};
+use super::{
+    Answer, Command, History, Import, Jobs, Notices, PenGround, Preview, Results, Slot, TileShelf, Tracing,
+    Wake,
+};
 
 /// Never saved.
 #[derive(Debug)]
@@ -30,8 +33,11 @@ pub struct Session {
     pub(super) kept: Arc<Kept>,
     /// What the measuring job is about.
     pub(super) measuring: Option<Task>,
-    /// Fingerprint of the sheet at which the user stopped measuring.
+    /// Fingerprint of the patches and winds at which the user stopped measuring.
     pub(super) stopped_at: Option<String>,
+    /// The fingerprints of the networks that the running job measures, and of those at which the user stopped it.
+    pub(super) charting: Vec<String>,
+    pub(super) charts_stopped_at: Option<Vec<String>>,
     /// Whether patches are measured as they change.
     pub measures: bool,
     /// The plate on the bench.
@@ -42,6 +48,9 @@ pub struct Session {
     pub tool: Tool,
     /// The outline under way.
     pub draft: Option<Draft>,
+    /// The channel under way.
+    pub tracing: Option<Tracing>,
+    pub(super) pen_ground: Option<PenGround>,
     /// Where the pointer (or the keyboard cross) is on the raster.
     pub cursor: Option<Cursor>,
     /// Size of the table in screen points, as last drawn.
@@ -93,6 +102,16 @@ pub enum Tool {
     Corners,
     /// Corners of an outcrop.
     Outcrop,
+    /// One click: where the selected network ends.
+    Outlet,
+    /// Corners of a lake or basin that stays closed.
+    Lake,
+    /// Follows a channel from pick to pick.
+    Pen,
+    /// One click: a proposed reach that is none.
+    Strike,
+    /// Two clicks: the water went this way.
+    Arrow,
 }
 
 /// An outline under way.
@@ -216,11 +235,17 @@ impl Session {
         self.kept = Arc::default();
         self.measuring = None;
         self.stopped_at = None;
+        self.charts_stopped_at = None;
     }
 
     /// Measures nothing more until the sheet changes or the user asks.
     pub(super) fn pause_measuring(&mut self, sheet: &Sheet) {
-        self.stopped_at = Some(fingerprint::of_sheet(sheet));
+        self.stopped_at = Some(fingerprint::of_patches(sheet));
+    }
+
+    /// Measures no network until the sheet changes or the user asks.
+    pub(super) fn pause_charting(&mut self) {
+        self.charts_stopped_at = Some(std::mem::take(&mut self.charting));
     }
 
     /// Whether something lies over the window and has the keyboard.
@@ -242,6 +267,8 @@ impl Session {
         self.preview = Preview::default();
         self.tool = Tool::default();
         self.draft = None;
+        self.tracing = None;
+        self.pen_ground = None;
         self.cursor = None;
         self.dialog = None;
         self.ask = None;
@@ -262,12 +289,16 @@ impl Session {
             kept: Arc::default(),
             measuring: None,
             stopped_at: None,
+            charting: Vec::new(),
+            charts_stopped_at: None,
             measures: true,
             preview: Preview::default(),
             import: None,
             notices: Notices::default(),
             tool: Tool::default(),
             draft: None,
+            tracing: None,
+            pen_ground: None,
             cursor: None,
             viewport: [0.0, 0.0],
             dialog: None,
@@ -295,17 +326,26 @@ impl Opened {
 }
 
 impl Tool {
-    pub const ALL: [Self; 7] =
+    /// For patches and outcrops.
+    pub const OUTLINING: [Self; 7] =
         [Self::Hand, Self::Polygon, Self::Rectangle, Self::Ellipse, Self::Hole, Self::Corners, Self::Outcrop];
+    /// For networks from elevation, and for those on images.
+    pub const DRAINAGE: [Self; 2] = [Self::Outlet, Self::Lake];
+    pub const CHANNELS: [Self; 3] = [Self::Pen, Self::Strike, Self::Arrow];
 
-    /// Whether the tool lays down points that become an outline.
+    /// Whether the tool lays down points.
     pub fn draws(self) -> bool {
         !matches!(self, Self::Hand | Self::Corners)
     }
 
-    /// Whether two points make the whole outline.
-    pub fn is_box(self) -> bool {
-        matches!(self, Self::Rectangle | Self::Ellipse)
+    /// Whether two points make the whole of it.
+    pub fn takes_two(self) -> bool {
+        matches!(self, Self::Rectangle | Self::Ellipse | Self::Arrow)
+    }
+
+    /// Whether each point does something by itself.
+    pub fn takes_one(self) -> bool {
+        matches!(self, Self::Outlet | Self::Strike)
     }
 }
 
@@ -323,10 +363,13 @@ impl Draft {
         }
     }
 
-    /// The finished ring, when it encloses any ground.
+    /// The finished ring, when it encloses any ground; an arrow's two ends.
     pub fn finished(&self) -> Option<Vec<Point>> {
         let mut ring = self.ring(None);
         ring.dedup();
+        if self.tool == Tool::Arrow {
+            return (ring.len() == 2).then_some(ring);
+        }
         let area = Polygon { outer: ring.clone(), holes: Vec::new() }.area();
         (ring.len() >= 3 && area >= 1.0).then_some(ring)
     }

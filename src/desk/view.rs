@@ -28,6 +28,8 @@ pub struct View {
     pub plate: PlateChoice,
     /// The selected outcrop.
     pub obstacle: Option<Id>,
+    /// The selected network.
+    pub network: Option<Id>,
     /// The regime picked on the map.
     pub regime: Option<PickedRegime>,
 }
@@ -52,6 +54,7 @@ pub enum Page {
     Verdict,
     Regimes,
     Obstacles,
+    Channels,
     Plate,
 }
 
@@ -72,11 +75,24 @@ pub struct Layers {
     pub outlines: bool,
     pub names: bool,
     pub graticule: bool,
+    pub networks: bool,
+    /// Outlines of drainage basins.
+    pub divides: bool,
+    /// What conditioning raised and cut.
+    pub changes: bool,
 }
 
 impl Default for Layers {
     fn default() -> Self {
-        Self { strokes: true, outlines: true, names: true, graticule: true }
+        Self {
+            strokes: true,
+            outlines: true,
+            names: true,
+            graticule: true,
+            networks: true,
+            divides: true,
+            changes: false,
+        }
     }
 }
 
@@ -120,7 +136,7 @@ impl Theme {
 }
 
 impl Page {
-    pub const ALL: [Self; 8] = [
+    pub const ALL: [Self; 9] = [
         Self::Ground,
         Self::Trend,
         Self::Spacing,
@@ -128,6 +144,7 @@ impl Page {
         Self::Verdict,
         Self::Regimes,
         Self::Obstacles,
+        Self::Channels,
         Self::Plate,
     ];
 
@@ -140,6 +157,7 @@ impl Page {
             Self::Verdict => "Verdict",
             Self::Obstacles => "Obstacles",
             Self::Regimes => "Regimes",
+            Self::Channels => "Channels",
             Self::Plate => "Plate",
         }
     }

@@ -73,6 +73,19 @@ fn print(findings: &Findings) {
             println!("  caution: {} [{}]", caution.text, caution.code);
         }
     }
+    for network in &findings.networks {
+        println!("{}", network.sentence);
+        for (_, name, a) in &network.agreements {
+            println!(
+                "  against {name}: {:.0} % of its length found, {:.0} % of this one confirmed",
+                100.0 * a.found,
+                100.0 * a.confirmed
+            );
+        }
+        for caution in &network.cautions {
+            println!("  caution: {} [{}]", caution.text, caution.code);
+        }
+    }
     for joint in &findings.together.joint {
         println!("{}", joint.sentence);
         for trend in &joint.trends {

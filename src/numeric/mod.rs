@@ -1,8 +1,10 @@
 //! Mathematics without meaning: special functions, tails of distributions, sums in a fixed order,
-//! quantiles, roots and maxima, kernels, transforms, small matrices.
+//! quantiles, roots and maxima, kernels, transforms, small matrices, distances and thinning of masks.
 
 pub mod bessel;
+pub mod distance;
 pub mod eigen;
+pub mod fast_march;
 pub mod fft;
 pub mod gamma;
 pub mod gauss;
@@ -14,6 +16,8 @@ pub mod quantile;
 pub mod resample;
 pub mod root;
 pub mod separable;
+pub mod shift;
 pub mod sum;
 pub mod tail;
 pub mod taper;
+pub mod thin;

@@ -1,8 +1,12 @@
 //! What is printed under a plate: methods with their sources, cautions, and the recipe that
 //! reproduces it.
 
-use crate::ground::{Caution, Method, Read, Source};
-use crate::study::{PatchFinding, WindFinding};
+use crate::ground::{Caution, Method, ReachOrigin, Read, Source};
+use crate::science::drainage::condition::Conditioning;
+use crate::science::drainage::heads::HeadRule;
+use crate::science::drainage::routing::Router;
+use crate::science::{channel, drainage, network};
+use crate::study::{NetworkFinding, PatchFinding, WindFinding};
 
 /// What made a plate.
 #[derive(Clone, Debug, PartialEq)]
@@ -60,6 +64,53 @@ pub(super) fn methods_of(patch: &PatchFinding) -> Vec<&'static str> {
         keys.extend(found.combined.is_some().then_some(SEVERAL_OBSTACLES));
     }
     keys
+}
+
+/// The keys of the methods a network's results rest on: those of its source, then the measures.
+pub(super) fn methods_of_network(finding: &NetworkFinding) -> Vec<&'static str> {
+    let source = [
+        finding.drainage.as_ref().map(|_| drainage::METHODS),
+        finding.tracing.as_ref().map(|_| channel::METHODS),
+        Some(network::METHODS),
+    ];
+    source.into_iter().flatten().flatten().map(|m| m.id).filter(|id| serves(finding, id)).collect()
+}
+
+/// Whether a method of the three families had a part in the finding; one that is not listed always has.
+fn serves(finding: &NetworkFinding, id: &str) -> bool {
+    let routed = finding.drainage.as_ref();
+    let sinks = |which: &[Conditioning]| routed.is_some_and(|d| which.contains(&d.conditioning));
+    let by = |router| routed.is_some_and(|d| d.router == router);
+    let seen = finding.tracing.as_ref();
+    match id {
+        "drainage.fill" => {
+            sinks(&[Conditioning::Fill, Conditioning::FillSloped, Conditioning::BreachThenFill])
+        }
+        "drainage.flats" => sinks(&[Conditioning::FillSloped, Conditioning::BreachThenFill]),
+        "drainage.breach" => sinks(&[Conditioning::Breach, Conditioning::BreachThenFill]),
+        "drainage.d-infinity" => by(Router::DInfinity),
+        "drainage.freeman" => by(Router::Freeman),
+        "drainage.quinn" => by(Router::Quinn),
+        "drainage.curved-area" => routed.is_some_and(|d| d.channels.rule == HeadRule::CurvedArea),
+        "channel.strip-response" | "channel.proposal" => seen.is_some_and(|t| t.proposed_reaches > 0),
+        "channel.pen" | "channel.pen-cost" | "channel.pen-chance" => {
+            finding.network.reaches.iter().any(|r| r.origin == ReachOrigin::Traced)
+        }
+        "channel.width" => finding.network.reaches.iter().any(|r| r.width.is_some()),
+        "network.planform" | "network.meanders" => !finding.planforms.is_empty(),
+        "network.palaeo-flow" => finding.flow.is_ok(),
+        "network.horton" => finding.horton.is_some(),
+        "network.tokunaga" => finding.tokunaga.is_some(),
+        "network.density" => finding.density.is_some(),
+        "network.hack" => finding.hack.is_some(),
+        "network.flint" => finding.flint.is_some(),
+        "network.steepness" | "network.knickpoints" => !finding.profiles.is_empty(),
+        "network.chi" => finding.chi.is_some(),
+        "network.hypsometry" => finding.hypsometry.is_some(),
+        "network.junctions" => !finding.junctions.angles.is_empty(),
+        "network.agreement" => !finding.agreements.is_empty(),
+        _ => true,
+    }
 }
 
 /// `"Methods: structure tensor (Bigün & Granlund 1987*); … * cited from memory."` for the keys that

@@ -1,14 +1,16 @@
 //! Plates straight from a study: the pixels read, toned and set among the findings.
 
-use crate::ground::{Bounds, Point, Polygon, Work};
+use crate::ground::{Bounds, Network, Point, Polygon, Work};
 use crate::study::glance::{Glance, glance};
 use crate::study::{
-    Findings, Id, OpenRaster, PatchFinding, RasterEntry, Sheet, Sources, WindFinding, fingerprint, run,
+    Findings, Id, NetworkFinding, OpenRaster, PatchFinding, RasterEntry, Sheet, Sources, WindFinding,
+    fingerprint, run,
 };
 
-use super::map::{MapView, surroundings, toned};
-use super::{Figure, OverviewPlate, PatchPlate, PngSize, Recipe, Theme};
-use super::{overview_plate, patch_plate, pdf, png, svg};
+use super::map::{MapNetwork, MapPatch, MapView, surroundings, toned};
+use super::network_plate::bare;
+use super::{Figure, NetworkPlate, OverviewPlate, PatchPlate, PngSize, Recipe, Theme};
+use super::{network_plate, overview_plate, patch_plate, pdf, png, svg};
 
 /// Cells a side of the picture on a plate: 300 dpi over half a page and some.
 const LONGEST: usize = 1400;
@@ -61,6 +63,86 @@ pub fn of_patch(
     Ok(patch_plate(&plate, width_mm, theme))
 }
 
+/// The plate of one channel network.
+///
+/// # Errors
+/// As [`of_patch`].
+pub fn of_network(
+    sheet: &Sheet,
+    sources: &Sources,
+    finding: &NetworkFinding,
+    findings: &Findings,
+    width_mm: f64,
+    theme: &Theme,
+    work: &Work,
+) -> Result<Figure, String> {
+    let (entry, open) = raster_of(sheet, sources, finding.raster)?;
+    let info = open.raster.info();
+    let points = finding.network.reaches.iter().flat_map(|r| r.line.0.iter().copied());
+    let ground = match Bounds::of(points) {
+        Some(Bounds { min, max }) => Polygon {
+            outer: vec![min, Point::new(max.x, min.y), max, Point::new(min.x, max.y)],
+            holes: Vec::new(),
+        },
+        None => sheet.network(finding.id).and_then(|n| n.within.clone()).unwrap_or_default(),
+    };
+    let bounds = surroundings(&ground, [info.width as f64, info.height as f64]);
+    let Glance { grid, covers } = glance(entry, open, bounds, LONGEST, work)?;
+    let picture = toned(&grid, &entry.tone);
+    let patches = findings.patches.iter().filter_map(|found| {
+        let patch = sheet.patch(found.id).filter(|p| p.raster == finding.raster)?;
+        let (name, outline, nodes) = (patch.name.as_str(), &patch.outline, found.trend.nodes.as_slice());
+        Some(MapPatch { name, outline, nodes, rose: None, is_subject: false })
+    });
+    let plate = NetworkPlate {
+        finding,
+        patches: patches.collect(),
+        raster: &run::raster(entry, open),
+        view: MapView { picture: &picture, covers, place: &open.place },
+        others: &beside(sheet, sources, findings, finding),
+        recipe: &recipe(sheet),
+    };
+    Ok(network_plate(&plate, width_mm, theme))
+}
+
+/// The networks that a finding was compared with, in pixels of its raster, by the id of their finding.
+pub fn beside(
+    sheet: &Sheet,
+    sources: &Sources,
+    findings: &Findings,
+    finding: &NetworkFinding,
+) -> Vec<(Id, Network)> {
+    let compared = |f: &&NetworkFinding| finding.agreements.iter().any(|(id, _, _)| *id == f.id);
+    let others = findings.networks.iter().filter(compared);
+    others.filter_map(|f| Some((f.id, seen_on(sheet, sources, f, finding.raster)?))).collect()
+}
+
+/// A network in pixels of another raster; `None` where no place joins the two or nothing of it lies there.
+fn seen_on(sheet: &Sheet, sources: &Sources, finding: &NetworkFinding, raster: Id) -> Option<Network> {
+    if finding.raster == raster {
+        return Some(finding.network.clone());
+    }
+    let (_, own) = raster_of(sheet, sources, finding.raster).ok()?;
+    let (_, there) = raster_of(sheet, sources, raster).ok()?;
+    if own.place.body != there.place.body {
+        return None;
+    }
+    let info = there.raster.info();
+    let middle = Point::new(0.5 * info.width as f64, 0.5 * info.height as f64);
+    let seen = |p: Point| there.place.pixel_of_lonlat(own.place.lonlat_of(p)?, middle);
+    let mut network = finding.network.clone();
+    for node in &mut network.nodes {
+        node.at = seen(node.at)?;
+    }
+    for reach in &mut network.reaches {
+        for point in &mut reach.line.0 {
+            *point = seen(*point)?;
+        }
+    }
+    let inside = |p: &Point| (0.0..=2.0 * middle.x).contains(&p.x) && (0.0..=2.0 * middle.y).contains(&p.y);
+    network.reaches.iter().any(|r| r.line.0.iter().any(inside)).then_some(network)
+}
+
 /// The overview plate of one raster.
 ///
 /// # Errors
@@ -80,18 +162,21 @@ pub fn overview(
     let Glance { grid, covers } = glance(entry, open, whole, LONGEST, work)?;
     let picture = toned(&grid, &entry.tone);
     let outlines: Vec<(Id, &Polygon)> = sheet.patches.iter().map(|p| (p.id, &p.outline)).collect();
+    let drawn: Vec<(&NetworkFinding, Network)> =
+        findings.networks.iter().filter_map(|f| Some((f, seen_on(sheet, sources, f, raster)?))).collect();
     let plate = OverviewPlate {
         findings,
         raster: &run::raster(entry, open),
         outlines,
+        networks: drawn.iter().map(|(f, n)| MapNetwork { network: n, ..bare(f) }).collect(),
         view: MapView { picture: &picture, covers, place: &open.place },
         recipe: &recipe(sheet),
     };
     Ok(overview_plate(&plate, width_mm, theme))
 }
 
-/// Every plate of a study as files: name and bytes. One a patch and one a raster that has patches,
-/// each as SVG and as PDF.
+/// Every plate of a study as files: name and bytes. One a patch, one a network and one a raster that has
+/// either, each as SVG and as PDF.
 ///
 /// # Errors
 /// As [`of_patch`], and when a figure cannot be written, naming the plate.
@@ -107,8 +192,13 @@ pub fn all(
         let figure = of_patch(sheet, sources, patch, &findings.winds, WIDTH_MM, &theme, work)?;
         figures.push((format!("patch-{}-{}", patch.id.0, file_stem(&patch.name)), figure));
     }
+    for network in &findings.networks {
+        let figure = of_network(sheet, sources, network, findings, WIDTH_MM, &theme, work)?;
+        figures.push((format!("network-{}-{}", network.id.0, file_stem(&network.name)), figure));
+    }
     for raster in &findings.rasters {
-        if findings.patches.iter().any(|p| p.raster == raster.id) {
+        let patches = findings.patches.iter().any(|p| p.raster == raster.id);
+        if patches || findings.networks.iter().any(|n| n.raster == raster.id) {
             let figure = overview(sheet, sources, findings, raster.id, WIDTH_MM, &theme, work)?;
             figures.push((format!("overview-{}-{}", raster.id.0, file_stem(&raster.name)), figure));
         }

@@ -3,6 +3,8 @@
 
 mod bars;
 mod caption;
+mod channels;
+mod chart;
 pub mod compose;
 mod contour;
 mod dial;
@@ -13,6 +15,7 @@ pub mod font;
 mod implied;
 pub mod map;
 mod modes;
+mod network_plate;
 pub mod numbers;
 mod obstacle;
 mod overview_plate;
@@ -29,12 +32,18 @@ mod write;
 
 pub use bars::{posterior_bars, verdict_bar};
 pub use caption::Recipe;
+pub use channels::{
+    chi_plot, drop_test, flow_ranges, hack_plot, hypsometric_curve, junction_rose, link_rose, long_profile,
+    network_compare, network_numbers, order_plot, pattern_bars, planform_sketch, slope_area, threshold_maps,
+    width_plot,
+};
 pub use dial::{CLASS_LIMITS_DEG, CLASS_NAMES, dial};
 pub use drift_calendar::drift_calendar;
 pub use figure::{Figure, Fill, HALO, Item, Rgba, Stroke, TextAnchor};
 pub use flips::flips;
 pub use implied::implied_rose;
 pub use modes::modes;
+pub use network_plate::{NetworkPlate, network_plate};
 pub use obstacle::{obstacle, obstacles_together};
 pub use overview_plate::{OverviewPlate, overview_plate};
 pub use patch_plate::{PatchPlate, patch_plate};

@@ -42,6 +42,11 @@ pub fn significant(value: f64, figures: usize) -> String {
     grouped(&fixed((value / step).round() * step, 0))
 }
 
+/// A count, thousands set apart.
+pub fn count(n: usize) -> String {
+    grouped(&n.to_string())
+}
+
 /// Digits before the point in groups of three, from five digits on.
 fn grouped(text: &str) -> String {
     let digits = text.trim_start_matches('−');

@@ -1,13 +1,14 @@
 //! The overview plate: a whole raster with every patch and its small rose, and a table of what was
 //! found in each.
 
-use crate::ground::{LengthUnit, Point, Polygon};
+use crate::ground::{Caution, LengthUnit, Point, Polygon};
 use crate::science;
-use crate::study::{Findings, Id, PatchFinding, RasterFinding};
+use crate::science::network::pattern::PATTERN_NAMES;
+use crate::study::{Findings, Id, NetworkFinding, PatchFinding, RasterFinding};
 
 use super::caption::{self, Recipe};
 use super::dial::CLASS_NAMES;
-use super::map::{MapPatch, MapView, map};
+use super::map::{MapNetwork, MapPatch, MapView, map, network_key};
 use super::page::Page;
 use super::rose::NO_TREND;
 use super::sketch::{Sketch, Type};
@@ -20,6 +21,8 @@ pub struct OverviewPlate<'a> {
     pub raster: &'a RasterFinding,
     /// Outlines by patch, full-resolution pixels.
     pub outlines: Vec<(Id, &'a Polygon)>,
+    /// In pixels of this raster.
+    pub networks: Vec<MapNetwork<'a>>,
     pub view: MapView<'a>,
     pub recipe: &'a Recipe,
 }
@@ -38,36 +41,52 @@ pub fn overview_plate(plate: &OverviewPlate, width_mm: f64, theme: &Theme) -> Fi
             Some(MapPatch { name, outline, nodes: &[], rose, is_subject: true })
         })
         .collect();
-    let picture = map(&plate.view, &marks, [page.room(), 0.85 * page.room()], theme);
+    let picture = map(&plate.view, &marks, &plate.networks, [page.room(), 0.85 * page.room()], theme);
     let inset = 0.5 * (page.room() - picture.width_mm);
     page.put(&picture, inset, page.y);
     page.space(picture.height_mm + 3.0);
+    if !plate.networks.is_empty() {
+        let key = network_key(&plate.view, &plate.networks, [page.room(), 0.85 * page.room()], theme);
+        page.put(&key, 0.0, page.y - 1.0);
+        page.space(key.height_mm + 2.0);
+    }
 
-    let table = table(&patches, page.room(), theme);
-    page.put(&table, 0.0, page.y);
-    page.space(table.height_mm + 2.0);
+    let networks: Vec<&NetworkFinding> =
+        plate.findings.networks.iter().filter(|n| plate.networks.iter().any(|m| m.name == n.name)).collect();
+    let of_patches: Vec<Vec<Cell>> = patches.iter().map(|p| cells(p, theme)).collect();
+    let of_networks: Vec<Vec<Cell>> = networks.iter().map(|n| network_cells(n, theme)).collect();
+    for (columns, rows) in [(&COLUMNS, of_patches), (&NETWORK_COLUMNS, of_networks)] {
+        if !rows.is_empty() {
+            let table = table(columns, &rows, page.room(), theme);
+            page.put(&table, 0.0, page.y);
+            page.space(table.height_mm + 3.0);
+        }
+    }
     for failure in &plate.findings.failures {
         let text = format!("Failed: {}: {}", failure.what, failure.why);
         page.paragraph(&text, Type::new(theme.text.body, theme.caution).bold());
     }
-    page.finish(&notes(&patches), plate.recipe, None)
+    page.finish(&notes(&patches, &networks), plate.recipe, None)
 }
 
-fn notes(patches: &[&PatchFinding]) -> Vec<String> {
+fn notes(patches: &[&PatchFinding], networks: &[&NetworkFinding]) -> Vec<String> {
     let mut keys: Vec<&str> = Vec::new();
-    for patch in patches {
-        for key in caption::methods_of(patch) {
-            if !keys.contains(&key) {
-                keys.push(key);
-            }
+    let of_patches = patches.iter().flat_map(|p| caption::methods_of(p));
+    for key in of_patches.chain(networks.iter().flat_map(|n| caption::methods_of_network(n))) {
+        if !keys.contains(&key) {
+            keys.push(key);
         }
     }
-    let mut notes = vec![
-        "Small roses: petal area = share of nodes, drawn both ways; the line is the mean axis, the arc its 95 % \
+    let mut notes = Vec::new();
+    if !patches.is_empty() {
+        notes.push(
+            "Small roses: petal area = share of nodes, drawn both ways; the line is the mean axis, the arc its 95 % \
          interval; no line where no trend is claimed. Angles from true north. Intervals are 95 %."
-            .to_owned(),
-        caption::cited(&keys, &science::methods()),
-    ];
+                .to_owned(),
+        );
+    }
+    let cited = caption::cited(&keys, &science::methods());
+    notes.extend((!cited.is_empty()).then_some(cited));
     if patches.iter().any(|p| !p.verdicts.is_empty()) {
         notes.push(caption::SAFETY.into());
     }
@@ -78,7 +97,9 @@ fn notes(patches: &[&PatchFinding]) -> Vec<String> {
 type Cell = Vec<(String, Type)>;
 
 /// Heading, share of the width, whether numbers stand at the right.
-const COLUMNS: [(&str, f64, bool); 6] = [
+type Column = (&'static str, f64, bool);
+
+const COLUMNS: [Column; 6] = [
     ("patch", 0.20, false),
     ("area", 0.10, true),
     ("trend", 0.15, true),
@@ -86,31 +107,39 @@ const COLUMNS: [(&str, f64, bool); 6] = [
     ("effective n", 0.09, true),
     ("verdict", 0.28, false),
 ];
+const NETWORK_COLUMNS: [Column; 6] = [
+    ("network", 0.20, false),
+    ("channels", 0.10, true),
+    ("order", 0.15, true),
+    ("density", 0.18, true),
+    ("junctions", 0.09, true),
+    ("pattern", 0.28, false),
+];
 const COLUMN_GAP: f64 = 3.0;
 
-fn table(patches: &[&PatchFinding], width_mm: f64, theme: &Theme) -> Figure {
+fn table(columns: &[Column; 6], rows: &[Vec<Cell>], width_mm: f64, theme: &Theme) -> Figure {
     let mut sketch = Sketch::default();
     let mut y = 0.0;
     let heads = Type::new(theme.text.small, theme.ink_soft);
-    let head: Vec<Cell> = COLUMNS.iter().map(|c| vec![(c.0.to_owned(), heads)]).collect();
-    y += row(&mut sketch, &head, y, width_mm);
-    for patch in patches {
+    let head: Vec<Cell> = columns.iter().map(|c| vec![(c.0.to_owned(), heads)]).collect();
+    y += row(&mut sketch, columns, &head, y, width_mm);
+    for cells in rows {
         let rule = theme.stroke(theme.rule, theme.widths.hair);
         sketch.line(Point::new(0.0, y), Point::new(width_mm, y), rule);
-        y += 0.9 + row(&mut sketch, &cells(patch, theme), y + 0.6, width_mm);
+        y += 0.9 + row(&mut sketch, columns, cells, y + 0.6, width_mm);
     }
     sketch.finish(width_mm, y)
 }
 
 /// Sets one row; returns its height.
-fn row(sketch: &mut Sketch, cells: &[Cell], y: f64, width_mm: f64) -> f64 {
+fn row(sketch: &mut Sketch, columns: &[Column; 6], cells: &[Cell], y: f64, width_mm: f64) -> f64 {
     let mut x = 0.0;
     let mut height: f64 = 0.0;
-    for ((_, share, at_right), lines) in COLUMNS.into_iter().zip(cells) {
+    for ((_, share, at_right), lines) in columns.iter().zip(cells) {
         let room = share * width_mm - COLUMN_GAP;
         let mut used = 0.0;
         for (text, look) in lines {
-            let (at, look) = if at_right { (x + room, look.anchored(TextAnchor::End)) } else { (x, *look) };
+            let (at, look) = if *at_right { (x + room, look.anchored(TextAnchor::End)) } else { (x, *look) };
             used += sketch.paragraph(Point::new(at, y + used), text, look, room);
         }
         height = height.max(used);
@@ -153,12 +182,47 @@ fn cells(patch: &PatchFinding, theme: &Theme) -> Vec<Cell> {
         })
         .collect();
     let verdicts = if verdicts.is_empty() { plain("–".into()) } else { verdicts };
-    let mut name = vec![(patch.name.clone(), look.bold())];
-    if !patch.cautions.is_empty() {
-        let codes: Vec<&str> = patch.cautions.iter().map(|c| c.code).collect();
-        let small = Type::new(theme.text.small, theme.caution);
-        name.push((format!("cautions: {}", codes.join(", ")), small));
-    }
     let n_eff = numbers::significant(patch.trend.n_eff, 2);
-    vec![name, plain(area), plain(trend), plain(spacing), plain(n_eff), verdicts]
+    vec![
+        name_cell(&patch.name, &patch.cautions, theme),
+        plain(area),
+        plain(trend),
+        plain(spacing),
+        plain(n_eff),
+        verdicts,
+    ]
+}
+
+/// The name with the codes of its cautions beneath.
+fn name_cell(name: &str, cautions: &[Caution], theme: &Theme) -> Cell {
+    let mut cell = vec![(name.to_owned(), Type::new(theme.text.body, theme.ink).bold())];
+    if !cautions.is_empty() {
+        let codes: Vec<&str> = cautions.iter().map(|c| c.code).collect();
+        let small = Type::new(theme.text.small, theme.caution);
+        cell.push((format!("cautions: {}", codes.join(", ")), small));
+    }
+    cell
+}
+
+fn network_cells(finding: &NetworkFinding, theme: &Theme) -> Vec<Cell> {
+    let look = Type::new(theme.text.body, theme.ink);
+    let plain = |text: String| vec![(text, look)];
+    let order = finding.network.greatest_order().map_or("undefined".to_owned(), |o| o.to_string());
+    let density = finding.density.as_ref().map_or("–".to_owned(), |d| match finding.unit {
+        LengthUnit::Metre => format!("{} km/km²", numbers::significant(1000.0 * d.density, 3)),
+        LengthUnit::Pixel => format!("{} per px", numbers::significant(d.density, 3)),
+    });
+    let pattern = &finding.pattern;
+    let likely = pattern.probabilities.filter(|_| !pattern.too_few).and_then(|p| {
+        let best = (0..p.len()).max_by(|a, b| p[*a].total_cmp(&p[*b]))?;
+        Some(format!("{} {}", PATTERN_NAMES[best], numbers::percent(p[best])))
+    });
+    vec![
+        name_cell(&finding.name, &finding.cautions, theme),
+        plain(numbers::length(finding.network.length(), finding.unit, 3)),
+        plain(order),
+        plain(density),
+        plain(numbers::count(finding.network.junctions().len())),
+        plain(likely.unwrap_or_else(|| "too few links".into())),
+    ]
 }

@@ -81,7 +81,7 @@ fn patch_map(plate: &PatchPlate, size_mm: [f64; 2], theme: &Theme) -> Figure {
         is_subject: true,
     };
     let patches: Vec<MapPatch> = neighbours.chain([subject]).collect();
-    map(&plate.view, &patches, size_mm, theme)
+    map(&plate.view, &patches, &[], size_mm, theme)
 }
 
 /// What follows the rose, in the order of the reasoning.

@@ -5,7 +5,7 @@ use crate::ground::{Axis, Point};
 use crate::study::TrendFinding;
 
 use super::sketch::{Sketch, Type, arc, sector, toward};
-use super::{Figure, Stroke, TextAnchor, Theme, numbers};
+use super::{Figure, Rgba, Stroke, TextAnchor, Theme, numbers};
 
 /// What a rose shows, free of any size.
 #[derive(Debug, PartialEq)]
@@ -44,7 +44,7 @@ pub fn rose(trend: &TrendFinding, size_mm: f64, theme: &Theme) -> Figure {
     let mut sketch = Sketch::default();
     frame(&mut sketch, &model, &layout, theme);
     let edge = theme.stroke(theme.paper, theme.widths.hair);
-    petals(&mut sketch, &model, &layout, Some(edge), theme);
+    petals(&mut sketch, &model, &layout, Some(edge), shade(&model, theme));
     labels(&mut sketch, &model, &layout, theme);
     mean(&mut sketch, &model, &layout, theme, theme.widths.bold);
 
@@ -76,9 +76,32 @@ pub fn small_rose(trend: &TrendFinding, size_mm: f64, theme: &Theme) -> Figure {
     };
     let mut sketch = Sketch::default();
     sketch.circle(layout.centre, rim, None, Some(theme.stroke(theme.rule, theme.widths.hair)));
-    petals(&mut sketch, &model, &layout, None, theme);
+    petals(&mut sketch, &model, &layout, None, shade(&model, theme));
     mean(&mut sketch, &model, &layout, theme, 0.5 * theme.widths.bold);
     sketch.finish(size_mm, size_mm)
+}
+
+/// Petals in a tint of `accent` with ticks at the modes, without words; `size_mm` square. `shares` are by bins of
+/// `bin_deg` from axis 0°.
+pub(super) fn bare_rose(
+    shares: &[f64],
+    bin_deg: f64,
+    modes: &[Axis],
+    accent: Rgba,
+    size_mm: f64,
+    theme: &Theme,
+) -> Sketch {
+    let model = Model { modes: modes.to_vec(), ..of_shares(shares, bin_deg) };
+    let rim = 0.5 * size_mm - 5.0;
+    let centre = Point::new(0.5 * size_mm, 0.5 * size_mm);
+    let layout = Layout { centre, rim, interval: rim + 1.5, letters: rim + 3.5 };
+    let mut sketch = Sketch::default();
+    frame(&mut sketch, &model, &layout, theme);
+    let edge = theme.stroke(theme.paper, theme.widths.hair);
+    petals(&mut sketch, &model, &layout, Some(edge), theme.tint(accent, 0.45));
+    labels(&mut sketch, &model, &layout, theme);
+    mean(&mut sketch, &model, &layout, theme, theme.widths.bold);
+    sketch
 }
 
 /// n, effective n, R̄, which interval (or the test that found no trend), bin width, and how to read the petals.
@@ -98,22 +121,26 @@ fn caption(trend: &TrendFinding) -> String {
 }
 
 fn model(trend: &TrendFinding) -> Model {
-    let most = trend.rose.iter().copied().filter(|s| s.is_finite()).fold(0.0, f64::max);
+    let mean = trend.axis.filter(|_| trend.defined).map(|axis| (axis, trend.ci95_half_deg));
+    let modes = if trend.modes.len() > 1 { trend.modes.iter().map(|m| m.axis).collect() } else { Vec::new() };
+    Model { mean, modes, ..of_shares(&trend.rose, trend.rose_bin_deg) }
+}
+
+/// Petals alone.
+fn of_shares(shares: &[f64], bin_deg: f64) -> Model {
+    let most = shares.iter().copied().filter(|s| s.is_finite()).fold(0.0, f64::max);
     let rim_share = numbers::round_up(most);
-    let petals = trend
-        .rose
+    let petals = shares
         .iter()
         .enumerate()
         .filter(|(_, share)| share.is_finite() && **share > 0.0)
         .map(|(i, share)| {
-            let from = i as f64 * trend.rose_bin_deg;
+            let from = i as f64 * bin_deg;
             // The last bin is narrower where the width does not divide 180°.
-            (from, (from + trend.rose_bin_deg).min(180.0), (share / rim_share).sqrt())
+            (from, (from + bin_deg).min(180.0), (share / rim_share).sqrt())
         })
         .collect();
-    let mean = trend.axis.filter(|_| trend.defined).map(|axis| (axis, trend.ci95_half_deg));
-    let modes = if trend.modes.len() > 1 { trend.modes.iter().map(|m| m.axis).collect() } else { Vec::new() };
-    Model { petals, rim_share, mean, modes }
+    Model { petals, rim_share, mean: None, modes: Vec::new() }
 }
 
 /// Rim, the ring at half the radius (a quarter of the share), ticks every 10°.
@@ -132,11 +159,15 @@ fn frame(sketch: &mut Sketch, model: &Model, at: &Layout, theme: &Theme) {
     }
 }
 
-fn petals(sketch: &mut Sketch, model: &Model, at: &Layout, edge: Option<Stroke>, theme: &Theme) {
-    let fill = match model.mean {
+/// Coloured where a trend is claimed, grey where none is.
+fn shade(model: &Model, theme: &Theme) -> Rgba {
+    match model.mean {
         Some(_) => theme.tint(theme.measured, 0.38),
         None => theme.tint(theme.ink_soft, 0.35),
-    };
+    }
+}
+
+fn petals(sketch: &mut Sketch, model: &Model, at: &Layout, edge: Option<Stroke>, fill: Rgba) {
     for (from, to, radius) in &model.petals {
         for turn in [0.0, 180.0] {
             let outline = sector(at.centre, 0.0, radius * at.rim, from + turn, to + turn);

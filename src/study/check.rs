@@ -4,6 +4,7 @@ use std::collections::BTreeSet;
 
 use crate::ground::Body;
 
+use super::network_check;
 use super::{Failure, Id, Sheet, Sources, WindChoice, all_settings, judges};
 
 /// Bodies that cannot be, and names that mean two of them.
@@ -36,11 +37,14 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
     let all =
         sheet.rasters.iter().map(|r| (r.id, &r.name)).chain(sheet.patches.iter().map(|p| (p.id, &p.name)));
     let all = all.chain(sheet.winds.iter().map(|w| (w.id, &w.name)));
-    for (Id(id), name) in all.chain(sheet.obstacles.iter().map(|o| (o.id, &o.name))) {
+    let all = all.chain(sheet.obstacles.iter().map(|o| (o.id, &o.name)));
+    for (Id(id), name) in all.chain(sheet.networks.iter().map(|n| (n.id, &n.name))) {
         if !ids.insert(id) {
             say(
                 name.clone(),
-                format!("its id {id} is used twice; every raster, patch, record and outcrop needs its own"),
+                format!(
+                    "its id {id} is used twice; every raster, patch, record, outcrop and network needs its own"
+                ),
             );
         }
     }
@@ -87,6 +91,7 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
         }
     }
     obstacles(sheet, sources, &mut say);
+    network_check::networks(sheet, sources, &mut say);
     found
 }
 

@@ -7,11 +7,14 @@ use crate::files::georef::GeoTags;
 use crate::files::raster::{Bands, write_tiff};
 use crate::files::text;
 use crate::files::wind_table::{DirectionSense, SpeedUnit, WindImport, WindLayout, ZeroDirection};
-use crate::ground::{Body, Seed, WindRecord};
+use crate::ground::{Body, Point, Seed, WindRecord};
 use crate::science::scene::reach;
 
 use super::sheet_file::SheetFile;
-use super::{Id, ImageKind, Obstacle, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
+use super::{
+    FromElevation, FromImage, Id, ImageKind, NetworkEntry, NetworkSource, Obstacle, Patch, Placement,
+    RasterEntry, Sheet, Tone, WindChoice, WindEntry,
+};
 
 /// Everything of the demo grows from this seed.
 pub const SEED: Seed = Seed(1);
@@ -128,7 +131,34 @@ pub fn sheet(folder: &Path) -> Sheet {
         let (name, outline) = (truth.name.into(), truth.outline);
         sheet.obstacles.push(Obstacle { id, name, raster: MOSAIC_ID, outline });
     }
+    add_networks(&mut sheet);
     sheet
+}
+
+/// The dry channels twice: from elevation, and on the mosaic with the elevation to tell which way they fell.
+fn add_networks(sheet: &mut Sheet) {
+    let step = reach::ELEVATION_STEP as f64;
+    let ground = reach::channel_ground();
+    let cells = ground.map(|p| Point::new(p.x / step, p.y / step));
+    let from_elevation =
+        NetworkEntry::from_elevation(sheet.fresh_id(), "Dry channels, elevation", ELEVATION_ID);
+    // Valleys that were drawn and not carved have no constant drop: the threshold is stated.
+    let routed =
+        FromElevation { threshold_m2: Some(reach::CHANNEL_THRESHOLD_M2), ..FromElevation::default() };
+    sheet.networks.push(NetworkEntry {
+        within: Some(cells),
+        source: NetworkSource::Elevation(routed),
+        ..from_elevation
+    });
+    let seen = FromImage { elevation: Some(ELEVATION_ID), ..FromImage::default() };
+    let on_image = NetworkEntry::from_image(sheet.fresh_id(), "Dry channels, mosaic", MOSAIC_ID);
+    sheet.networks.push(NetworkEntry {
+        within: Some(ground),
+        source: NetworkSource::Image(seen),
+        ..on_image
+    });
+    sheet.settings.flow.liquid_density = reach::LIQUID_DENSITY;
+    sheet.settings.flow.grain_density = reach::BED_GRAIN_DENSITY;
 }
 
 fn import() -> WindImport {

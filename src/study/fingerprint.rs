@@ -22,6 +22,13 @@ pub fn of_sheet(sheet: &Sheet) -> String {
     ]))
 }
 
+/// SHA-256 of all that makes what the patches and wind records say: the sheet without its networks.
+pub fn of_patches(sheet: &Sheet) -> String {
+    let rasters: Vec<_> = sheet.rasters.iter().map(raster).collect();
+    let winds: Vec<_> = sheet.winds.iter().map(placed_wind).collect();
+    digest(&json!([sheet.seed, rasters, sheet.patches, winds, of_bedforms(sheet), sheet.obstacles]))
+}
+
 /// SHA-256 of all that makes a patch's finding: its outline, its raster, the outcrops on it, the settings,
 /// the winds it is judged by, the seed.
 pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
@@ -45,22 +52,44 @@ pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
         sheet.raster(patch.raster).map(raster),
         patch.winds == WindChoice::Nearest,
         winds,
-        sheet.settings
+        of_bedforms(sheet)
     ]))
 }
 
-/// SHA-256 of all that makes a network's finding: its ground, what was said and drawn, its rasters, the
-/// settings, the seed, and the other networks it is compared with.
+/// SHA-256 of all that makes a network's finding: its own making, and the other networks it is compared with.
 pub fn of_network(sheet: &Sheet, entry: &NetworkEntry) -> String {
-    let rasters: Vec<_> = sheet.rasters.iter().map(raster).collect();
+    let all: Vec<_> = sheet.networks.iter().map(|n| (&n.name, of_lone_network(sheet, n))).collect();
+    digest(&json!([of_lone_network(sheet, entry), all]))
+}
+
+/// SHA-256 of all that makes a network by itself: its ground, what was said and drawn, its rasters, the settings,
+/// the seed.
+pub fn of_lone_network(sheet: &Sheet, entry: &NetworkEntry) -> String {
+    let heights = entry.image().and_then(|image| image.elevation);
+    let rasters = [Some(entry.raster), heights].map(|id| id.and_then(|id| sheet.raster(id)).map(raster));
     let s = &sheet.settings;
-    digest(&json!([sheet.seed, entry.id, sheet.networks, rasters, s.drainage, s.channel, s.network, s.flow]))
+    let settings = json!([s.drainage, s.channel, s.network, s.flow]);
+    digest(&json!([sheet.seed, entry.id, entry.within, entry.source, rasters, settings]))
+}
+
+/// SHA-256 of all that makes the routed ground of a network, whatever its threshold and outlets.
+pub fn of_terrain(sheet: &Sheet, entry: &NetworkEntry) -> String {
+    let s = &sheet.settings.drainage;
+    let closed = entry.elevation().map(|e| &e.closed);
+    let how = json!([s.conditioning, s.breach_depth_m, s.breach_cells, s.router]);
+    digest(&json!([sheet.raster(entry.raster).map(raster), entry.within, closed, how]))
 }
 
 /// SHA-256 of all that makes a record's finding.
 pub fn of_wind(sheet: &Sheet, entry: &WindEntry) -> String {
     let v = &sheet.settings.verdict;
     digest(&json!([sheet.seed, wind(entry), sheet.settings.wind, v.flux_up, v.flux_up_doubt]))
+}
+
+/// The settings that bear on patches; those of channels do not.
+fn of_bedforms(sheet: &Sheet) -> Value {
+    let s = &sheet.settings;
+    json!([s.trend, s.spectrum, s.statistics, s.wind, s.verdict, s.obstacle, s.backwards])
 }
 
 fn raster(r: &RasterEntry) -> Value {

@@ -66,6 +66,8 @@ pub struct DrainageFinding {
     /// Depth raised (positive) or cut (negative) in metres, reduced for show, and full-resolution pixels a cell.
     pub change_map: Grid<f32>,
     pub change_map_px: f64,
+    /// Its upper left corner, full-resolution pixels.
+    pub change_map_at: Point,
     pub router: Router,
     pub channels: Channels,
     /// Greatest first.

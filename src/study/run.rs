@@ -6,14 +6,14 @@ use std::sync::{Arc, Mutex, PoisonError};
 use crate::ground::{Stopped, Work};
 
 use super::judges::{self, Judges};
-use super::network::network_finding;
+use super::network::{Terrains, agreements, network_finding};
 use super::patch::patch_finding;
 use super::together::together;
 use super::window::Detail;
 use super::winds::{self, WindStudy};
 use super::{
-    Failure, Findings, Id, NetworkFinding, OpenRaster, PatchFinding, RasterEntry, RasterFinding, Sheet,
-    Sources, fingerprint,
+    Failure, Findings, Id, NetworkEntry, NetworkFinding, OpenRaster, PatchFinding, RasterEntry,
+    RasterFinding, Sheet, Sources, fingerprint,
 };
 
 /// Results kept by fingerprint, so that an edit recomputes only what it touches. With or without
@@ -23,6 +23,7 @@ pub struct Memo {
     winds: Mutex<HashMap<String, Arc<WindStudy>>>,
     patches: Mutex<HashMap<String, Arc<PatchFinding>>>,
     networks: Mutex<HashMap<String, Arc<NetworkFinding>>>,
+    terrains: Terrains,
 }
 
 /// Everything the sheet asks for. A part that fails is named in `failures`; the rest is complete.
@@ -138,11 +139,33 @@ pub fn run_network(
     work: &Work,
 ) -> Result<Result<Arc<NetworkFinding>, String>, Stopped> {
     let Some(entry) = sheet.network(id) else { return Ok(Err(format!("the sheet has no network {}", id.0))) };
-    let key = format!("{} {}", fingerprint::of_network(sheet, entry), entry.name);
+    let this = match lone_network(sheet, sources, entry, memo, work)? {
+        Ok(this) => this,
+        Err(why) => return Ok(Err(why)),
+    };
+    let mut others = Vec::new();
+    for other in sheet.networks.iter().filter(|other| other.id != id) {
+        others.extend(lone_network(sheet, sources, other, memo, work)?.ok());
+    }
+    let others: Vec<&NetworkFinding> = others.iter().map(Arc::as_ref).collect();
+    let mut finding = (*this).clone();
+    finding.agreements = agreements(sheet, sources, &finding, &others);
+    Ok(Ok(Arc::new(finding)))
+}
+
+/// A network by itself.
+fn lone_network(
+    sheet: &Sheet,
+    sources: &Sources,
+    entry: &NetworkEntry,
+    memo: &Memo,
+    work: &Work,
+) -> Result<Result<Arc<NetworkFinding>, String>, Stopped> {
+    let key = format!("{} {}", fingerprint::of_lone_network(sheet, entry), entry.name);
     if let Some(known) = recall(&memo.networks, &key) {
         return Ok(Ok(known));
     }
-    let finding = network_finding(sheet, entry, sources, work)?;
+    let finding = network_finding(sheet, entry, sources, &memo.terrains, work)?;
     Ok(finding.map(|finding| keep(&memo.networks, key, finding)))
 }
 

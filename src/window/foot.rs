@@ -4,14 +4,15 @@ use egui::{Align, Layout, ProgressBar, RichText, Ui};
 
 use super::controls::{Commands, caution, look};
 use super::theme;
-use crate::desk::{Command, JobCommand, Model, Running, Standing, readout};
+use crate::desk::{Command, JobCommand, Model, Page, Running, Slot, Standing, readout};
 
 pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
     finding(ui, model);
     ui.add_space(2.0);
     ui.horizontal(|ui| {
-        for running in model.session.jobs.running() {
-            job(ui, model, out, &running);
+        // The pen's own steps are too short to be read.
+        for running in model.session.jobs.running().iter().filter(|running| running.slot != Slot::Pen) {
+            job(ui, model, out, running);
         }
         ui.with_layout(Layout::right_to_left(Align::Center), |ui| {
             let ink = theme::color(look(model).ink_soft);
@@ -23,6 +24,12 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
 fn finding(ui: &mut Ui, model: &Model) {
     let look = look(model);
     let soft = theme::color(look.ink_soft);
+    let channels = model.view.page == Page::Channels || model.selected_patch().is_none();
+    if let Some(network) = model.selected_network().filter(|_| channels) {
+        let results = &model.session.results;
+        let found = results.network(network.id).map(|finding| finding.sentence.as_str());
+        return said(ui, model, &network.name, results.network_standing(network.id), found);
+    }
     let Some(patch) = model.selected_patch() else {
         let text = if model.sheet.patches.is_empty() { "No patch yet." } else { "No patch is selected." };
         ui.label(RichText::new(text).size(15.0).color(soft));
@@ -30,13 +37,21 @@ fn finding(ui: &mut Ui, model: &Model) {
     };
     let results = &model.session.results;
     let standing = results.standing(patch.id);
-    let Some(finding) = results.patch(patch.id) else {
-        let text = format!("{}: {}.", patch.name, standing.remark());
+    let sentence = results.patch(patch.id).map(|finding| finding.sentence.as_str());
+    said(ui, model, &patch.name, standing, sentence);
+}
+
+/// A finding in words, or how far it is.
+fn said(ui: &mut Ui, model: &Model, name: &str, standing: Standing, sentence: Option<&str>) {
+    let look = look(model);
+    let soft = theme::color(look.ink_soft);
+    let Some(sentence) = sentence else {
+        let text = format!("{name}: {}.", standing.remark());
         ui.label(RichText::new(text).size(15.0).color(soft));
         return;
     };
     let current = standing == Standing::Current;
-    let sentence = RichText::new(&finding.sentence).size(15.0);
+    let sentence = RichText::new(sentence).size(15.0);
     ui.label(if current { sentence } else { sentence.color(soft) });
     if !current {
         caution(ui, &look, &format!("This finding is {}.", standing.remark()));

@@ -29,7 +29,9 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
 }
 
 fn tools(ui: &mut Ui, model: &Model, out: &mut Commands) {
-    for tool in Tool::ALL {
+    let drainage = Tool::DRAINAGE.into_iter().filter(|tool| model.network_for(*tool).is_some());
+    let channels = Tool::CHANNELS.into_iter().filter(|tool| model.network_for(*tool).is_some());
+    for tool in Tool::OUTLINING.into_iter().chain(drainage).chain(channels) {
         let word = match tool {
             Tool::Hand => "Move",
             Tool::Polygon => "Polygon",
@@ -38,6 +40,11 @@ fn tools(ui: &mut Ui, model: &Model, out: &mut Commands) {
             Tool::Hole => "Hole",
             Tool::Corners => "Corners",
             Tool::Outcrop => "Outcrop",
+            Tool::Outlet => "Outlet",
+            Tool::Lake => "Closed basin",
+            Tool::Pen => "Trace",
+            Tool::Strike => "Strike",
+            Tool::Arrow => "Flow",
         };
         let command = Command::Draw(DrawCommand::Take(tool));
         toggle(ui, model, out, command, word, model.session.tool == tool);

@@ -2,11 +2,12 @@
 //! patch; below them the rasters and the wind records of the sheet.
 
 use egui::{
-    Align, Label, Layout, Rect, RichText, ScrollArea, Sense, Stroke, Ui, UiBuilder, WidgetInfo, vec2,
+    Align, Label, Layout, Rect, Response, RichText, ScrollArea, Sense, Stroke, Ui, UiBuilder, WidgetInfo,
+    vec2,
 };
 
 use super::controls::{Commands, button, look, rule};
-use super::{figure, theme};
+use super::{figure, ledger_networks, theme};
 use crate::desk::ledger::{Entry, entries};
 use crate::desk::{Command, Model, PatchCommand, RasterCommand, Standing, ViewCommand, WindCommand};
 use crate::plate::{Theme, small_rose, verdict_bar};
@@ -40,6 +41,7 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
                 out.push(Command::Patch(PatchCommand::Select(Some(entry.id))));
             }
         }
+        ledger_networks::show(ui, model, out, &look);
         rasters(ui, model, out, &look);
         winds(ui, model, out, &look);
     });
@@ -47,12 +49,22 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
 
 /// One patch; says whether it was chosen.
 fn entry_row(ui: &mut Ui, look: &Theme, entry: &Entry<'_>) -> bool {
-    let (rect, response) = ui.allocate_exact_size(vec2(ui.available_width(), ENTRY_HEIGHT), Sense::click());
-    response.widget_info(|| WidgetInfo::selected(egui::Role::ListItem, true, entry.selected, entry.spoken()));
-    if entry.selected || response.hovered() {
+    let (rect, response) = row(ui, look, entry.selected, &entry.spoken(), ENTRY_HEIGHT);
+    if ui.is_rect_visible(rect) {
+        picture(ui, look, entry, rect);
+        words(ui, look, entry, rect);
+    }
+    response.clicked()
+}
+
+/// The ground of an entry: a bar when it is selected, a rule below it.
+pub(super) fn row(ui: &mut Ui, look: &Theme, selected: bool, spoken: &str, height: f32) -> (Rect, Response) {
+    let (rect, response) = ui.allocate_exact_size(vec2(ui.available_width(), height), Sense::click());
+    response.widget_info(|| WidgetInfo::selected(egui::Role::ListItem, true, selected, spoken));
+    if selected || response.hovered() {
         ui.painter().rect_filled(rect, 2.0, theme::color(look.panel));
     }
-    if entry.selected {
+    if selected {
         let bar = Rect::from_min_size(rect.min, vec2(3.0, rect.height()));
         ui.painter().rect_filled(bar, 0.0, theme::color(look.measured));
     }
@@ -64,13 +76,9 @@ fn entry_row(ui: &mut Ui, look: &Theme, entry: &Entry<'_>) -> bool {
             egui::StrokeKind::Inside,
         );
     }
-    if ui.is_rect_visible(rect) {
-        picture(ui, look, entry, rect);
-        words(ui, look, entry, rect);
-    }
     let line = rect.left_bottom() + vec2(8.0, 0.0);
     ui.painter().hline(line.x..=rect.right(), line.y, Stroke::new(1.0, theme::color(look.rule)));
-    response.clicked()
+    (rect, response)
 }
 
 fn picture(ui: &Ui, look: &Theme, entry: &Entry<'_>, rect: Rect) {
@@ -128,7 +136,7 @@ fn winds(ui: &mut Ui, model: &Model, out: &mut Commands, look: &Theme) {
     button(ui, model, out, Command::Wind(WindCommand::AskImport));
 }
 
-fn section(ui: &mut Ui, look: &Theme, title: &str) {
+pub(super) fn section(ui: &mut Ui, look: &Theme, title: &str) {
     ui.add_space(14.0);
     ui.label(RichText::new(title).family(theme::bold()).size(13.0).color(theme::color(look.ink_soft)));
 }

@@ -12,6 +12,7 @@ mod foot;
 mod head;
 mod keys;
 mod ledger;
+mod ledger_networks;
 mod notices;
 mod open;
 pub mod painter;

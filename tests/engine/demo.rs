@@ -10,7 +10,7 @@ use ventifact::study::sheet_file::SheetFile;
 use ventifact::study::{Birth, Findings, PatchFinding, Sheet, Sources, demo};
 
 /// The demo's sheet and findings, made once for all tests of this file.
-fn reach_findings() -> &'static (Sheet, Findings, tempfile::TempDir) {
+pub fn reach_findings() -> &'static (Sheet, Findings, tempfile::TempDir) {
     static MADE: OnceLock<(Sheet, Findings, tempfile::TempDir)> = OnceLock::new();
     MADE.get_or_init(|| {
         let folder = tempfile::tempdir().unwrap();

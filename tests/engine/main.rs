@@ -1,21 +1,33 @@
 //! The engine as a whole: guards, properties, hostile files, the command line.
 
+mod channels;
 mod coarse;
 mod command_line;
 mod demo;
 mod docs;
+mod drainage;
+mod dry_channels;
 mod gratings;
 mod guards;
 mod hostile;
+mod image_channels;
 mod jpeg_writer;
 mod layouts;
 mod netcdf;
 mod netcdf_writer;
+mod network_commands;
+mod network_measures;
+mod network_profiles;
 mod obstacle;
 mod orientation;
+mod pen;
+mod pen_window;
 mod plates;
+mod reach_channels;
 mod records;
 mod samples;
+mod sense;
+mod smoothness;
 mod theories;
 mod tiff_writer;
 mod verdicts;

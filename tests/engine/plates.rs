@@ -1,6 +1,9 @@
 //! Plates of invented findings from Sorrel Reach: exact bytes twice, real text, no missing glyph,
 //! nothing off the page. Set `VENTIFACT_PICTURES` to a folder to look at them.
 
+mod networks;
+mod river_measures;
+mod rivers;
 mod sorrel;
 
 use ventifact::ground::{Bounds, LengthUnit, Place, Point, Polygon};
@@ -119,7 +122,14 @@ fn overview(reach: &Reach, theme: &Theme) -> Figure {
     let (raster, recipe) = (raster_finding(), recipe());
     let outlines = vec![(Id(2), &reach.outline), (Id(3), &reach.plain)];
     overview_plate(
-        &OverviewPlate { findings: &findings, raster: &raster, outlines, view, recipe: &recipe },
+        &OverviewPlate {
+            findings: &findings,
+            raster: &raster,
+            outlines,
+            networks: Vec::new(),
+            view,
+            recipe: &recipe,
+        },
         180.0,
         theme,
     )

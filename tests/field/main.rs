@@ -1,6 +1,9 @@
 //! Real rasters and records from `../shared/data` (or the folder in `FIELD_DATA`); each test says so
 //! when the data is absent and it is skipped.
 
+mod cells;
+mod channels;
+mod drainage;
 mod look;
 mod measure;
 mod records;

@@ -21,19 +21,19 @@ use crate::harness::window;
 use crate::scene::sorrel_reach;
 
 /// The window and the model it starts with.
-struct Desk {
+pub struct Desk {
     model: Option<Model>,
     app: Option<App>,
 }
 
 impl Desk {
-    fn app(&self) -> &App {
+    pub fn app(&self) -> &App {
         self.app.as_ref().expect("the first frame makes the application")
     }
 }
 
 /// A window of `size` points on `model`, with no system dialogs.
-fn open(model: Model, size: [f32; 2]) -> Harness<'static, Desk> {
+pub fn open(model: Model, size: [f32; 2]) -> Harness<'static, Desk> {
     let mut harness = window(size, egui::Theme::Light).build_ui_state(
         |ui, desk: &mut Desk| match &mut desk.app {
             Some(app) => {
@@ -49,7 +49,7 @@ fn open(model: Model, size: [f32; 2]) -> Harness<'static, Desk> {
     harness
 }
 
-fn give(harness: &mut Harness<'_, Desk>, command: Command) {
+pub fn give(harness: &mut Harness<'_, Desk>, command: Command) {
     if let Some(app) = &mut harness.state_mut().app {
         app.give(command);
     }
@@ -57,7 +57,7 @@ fn give(harness: &mut Harness<'_, Desk>, command: Command) {
 }
 
 /// Draws frames until `done`.
-fn wait(harness: &mut Harness<'_, Desk>, what: &str, done: impl Fn(&Model) -> bool) {
+pub fn wait(harness: &mut Harness<'_, Desk>, what: &str, done: impl Fn(&Model) -> bool) {
     let end = Instant::now() + Duration::from_secs(120);
     while !done(harness.state().app().model()) {
         assert!(Instant::now() < end, "waited in vain for {what}");
@@ -67,29 +67,29 @@ fn wait(harness: &mut Harness<'_, Desk>, what: &str, done: impl Fn(&Model) -> bo
     harness.run_steps(2);
 }
 
-fn key(harness: &mut Harness<'_, Desk>, modifiers: Modifiers, key: Key) {
+pub fn key(harness: &mut Harness<'_, Desk>, modifiers: Modifiers, key: Key) {
     harness.key_press_modifiers(modifiers, key);
     harness.run_steps(3);
 }
 
-fn blank() -> Model {
+pub fn blank() -> Model {
     Model::new(std::sync::Arc::new(|| ()))
 }
 
 /// The demo laid out in a folder of its own, which goes when the guard is dropped.
-fn demo_on_disk() -> (tempfile::TempDir, PathBuf) {
+pub fn demo_on_disk() -> (tempfile::TempDir, PathBuf) {
     let folder = tempfile::tempdir().expect("a temporary folder");
     let sheet = demo::lay_out(folder.path()).expect("the demo is laid out");
     (folder, sheet)
 }
 
-fn click(harness: &mut Harness<'_, Desk>, role: Role, label: &str) {
+pub fn click(harness: &mut Harness<'_, Desk>, role: Role, label: &str) {
     harness.get_by_role_and_label(role, label).click();
     harness.run_steps(3);
 }
 
 /// Presses and releases the pointer.
-fn click_at(harness: &mut Harness<'_, Desk>, at: Pos2) {
+pub fn click_at(harness: &mut Harness<'_, Desk>, at: Pos2) {
     harness.drag_at(at);
     harness.run_steps(1);
     harness.drop_at(at);
@@ -173,7 +173,7 @@ fn the_keyboard_alone_outlines_renames_and_deletes() {
     assert_eq!(harness.state().app().model().sheet.patches.len(), 1);
     key(&mut harness, Modifiers::COMMAND, Key::Z);
     assert_eq!(harness.state().app().model().sheet.patches.len(), 2, "the notice's promise: undo");
-    for page in [Key::Num1, Key::Num4, Key::Num8] {
+    for page in [Key::Num1, Key::Num4, Key::Num8, Key::Num9] {
         key(&mut harness, Modifiers::ALT, page);
     }
     assert_eq!(harness.state().app().model().view.page, Page::Plate);
@@ -225,11 +225,16 @@ fn the_window_finds_what_the_command_line_finds() {
         !model.sheet.patches.is_empty()
             && model.sheet.patches.iter().all(current)
             && model.session.results.together().is_some()
+            && model.session.results.networks_wanting(&model.sheet).is_empty()
     });
     let results = &harness.state().app().model().session.results;
     for patch in &want.patches {
         let got = results.patch(patch.id).expect("the window has measured it");
         assert_eq!(format!("{got:?}"), format!("{patch:?}"), "{}", patch.name);
+    }
+    for network in &want.networks {
+        let got = results.network(network.id).expect("the window has measured it");
+        assert_eq!(format!("{got:?}"), format!("{network:?}"), "{}", network.name);
     }
     assert_eq!(results.together(), Some(&want.together));
     for wind in &want.winds {

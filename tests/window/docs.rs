@@ -38,6 +38,7 @@ fn picture(size: [f32; 2], theme: Theme, page: Page, patch: usize, path: &str) {
         let laid = || model.session.rasters.values().filter_map(Opened::laid);
         model.session.jobs.is_idle()
             && model.session.results.wanting(&model.sheet).is_empty()
+            && model.session.results.networks_wanting(&model.sheet).is_empty()
             && model.session.results.has_winds(&model.sheet)
             && laid().count() == model.sheet.rasters.len()
             && laid().all(|laid| laid.tiles.is_idle())

@@ -1,8 +1,10 @@
 //! The window, driven by role and label, and pictured by the CPU painter.
 
+mod channels;
 mod desk;
 mod docs;
 mod harness;
+mod networks;
 mod pictures;
 mod scene;
 mod table;

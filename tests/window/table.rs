@@ -83,7 +83,7 @@ fn button(pos: Pos2, button: PointerButton, pressed: bool) -> Event {
     Event::PointerButton { pos, button, pressed, modifiers: Modifiers::NONE }
 }
 
-fn click(harness: &mut Harness<'_, Bench>, pos: Pos2) {
+pub fn click(harness: &mut Harness<'_, Bench>, pos: Pos2) {
     harness.hover_at(pos);
     harness.event(button(pos, PointerButton::Primary, true));
     harness.event(button(pos, PointerButton::Primary, false));

@@ -1,9 +1,9 @@
 //! Outlining on the table, by pointer or by keyboard.
 
-use crate::desk::{Draft, Model, Tool};
+use crate::desk::{Draft, Model, Tool, Tracing, pen};
 use crate::ground::{Point, Polygon};
 
-use super::{Command, ObstacleCommand, PatchCommand, Record, apply};
+use super::{Command, NetworkCommand, ObstacleCommand, PatchCommand, Record, apply};
 
 #[derive(Clone, Debug, PartialEq)]
 pub enum DrawCommand {
@@ -27,6 +27,11 @@ impl DrawCommand {
         Self::Take(Tool::Hole),
         Self::Take(Tool::Corners),
         Self::Take(Tool::Outcrop),
+        Self::Take(Tool::Outlet),
+        Self::Take(Tool::Lake),
+        Self::Take(Tool::Pen),
+        Self::Take(Tool::Strike),
+        Self::Take(Tool::Arrow),
         Self::Finish,
         Self::Retract,
         Self::Cancel,
@@ -37,11 +42,15 @@ impl DrawCommand {
             Self::Take(tool) => tool_record(*tool),
             Self::Lay(_) => Record::new("draw.lay", "Lay a corner", "Adds a corner to the outline."),
             Self::Retract => {
-                Record::new("draw.retract", "Take back a corner", "Removes the last corner.").key("Backspace")
+                Record::new("draw.retract", "Take back a corner", "Removes the last corner or pick.")
+                    .key("Backspace")
             }
-            Self::Finish => {
-                Record::new("draw.finish", "Close the outline", "Makes a patch of the outline.").key("Enter")
-            }
+            Self::Finish => Record::new(
+                "draw.finish",
+                "Close the outline",
+                "Makes a patch of the outline; ends a traced channel.",
+            )
+            .key("Enter"),
             Self::Cancel => {
                 Record::new("draw.cancel", "Stop outlining", "Drops the outline and takes up the hand.")
                     .key("Escape")
@@ -51,20 +60,37 @@ impl DrawCommand {
     }
 
     pub(super) fn refusal(&self, model: &Model) -> Option<&'static str> {
-        let draft = model.session.draft.as_ref();
+        let (draft, tracing) = (model.session.draft.as_ref(), model.session.tracing.as_ref());
         match self {
             Self::Take(Tool::Hole | Tool::Corners) if model.selected_patch().is_none() => {
                 Some("no patch is selected")
             }
             Self::Take(tool) if tool.draws() && model.shown_raster().is_none() => Some("no raster is open"),
+            Self::Take(tool) if needs_network(*tool) && model.network_for(*tool).is_none() => {
+                Some(if Tool::DRAINAGE.contains(tool) {
+                    "no network from the elevation on the table is selected"
+                } else {
+                    "no network on the image on the table is selected"
+                })
+            }
+            Self::Lay(_)
+                if needs_network(model.session.tool) && model.network_for(model.session.tool).is_none() =>
+            {
+                Some("the network of this tool is not on the table")
+            }
             Self::Lay(_) if !model.session.tool.draws() || model.shown_raster().is_none() => {
                 Some("no outlining tool is in hand")
+            }
+            Self::Retract if tracing.is_some() => None,
+            Self::Finish if tracing.is_some() => {
+                let whole = tracing.is_some_and(Tracing::is_whole);
+                (!whole).then_some("a channel needs two picks")
             }
             Self::Retract | Self::Finish if draft.is_none() => Some("no outline is under way"),
             Self::Finish if draft.and_then(Draft::finished).is_none() => {
                 Some("an outline needs three corners that enclose some ground")
             }
-            Self::Cancel if draft.is_none() && model.session.tool == Tool::Hand => {
+            Self::Cancel if draft.is_none() && tracing.is_none() && model.session.tool == Tool::Hand => {
                 Some("no outline is under way")
             }
             _ => None,
@@ -76,8 +102,11 @@ impl DrawCommand {
             Self::Take(tool) => {
                 model.session.tool = tool;
                 model.session.draft = None;
+                model.session.tracing = None;
             }
             Self::Lay(point) => lay(model, point),
+            Self::Retract if model.session.tracing.is_some() => pen::retract(model),
+            Self::Finish if model.session.tracing.is_some() => pen::finish(model),
             Self::Retract => {
                 if let Some(draft) = &mut model.session.draft {
                     draft.points.pop();
@@ -87,13 +116,20 @@ impl DrawCommand {
             Self::Finish => finish(model),
             Self::Cancel => {
                 // First the outline goes, then the tool.
-                if model.session.draft.take().is_none() {
+                let under_way =
+                    model.session.draft.take().is_some() || model.session.tracing.take().is_some();
+                if !under_way {
                     model.session.tool = Tool::Hand;
                 }
             }
             Self::Settle => {}
         }
     }
+}
+
+/// Whether the tool works on the selected network.
+fn needs_network(tool: Tool) -> bool {
+    Tool::DRAINAGE.contains(&tool) || Tool::CHANNELS.contains(&tool)
 }
 
 fn tool_record(tool: Tool) -> Record {
@@ -121,15 +157,52 @@ fn tool_record(tool: Tool) -> Record {
             "Click round the foot of a rock in the way of the wind; close with Enter.",
         )
         .key("U"),
+        Tool::Outlet => Record::new(
+            "draw.outlet",
+            "Pick outlet",
+            "Click where the network ends; click an outlet to take it away.",
+        )
+        .key("T"),
+        Tool::Lake => Record::new(
+            "draw.lake",
+            "Mark closed basin",
+            "Outline a lake or basin that keeps its water; close with Enter.",
+        )
+        .key("L"),
+        Tool::Pen => Record::new(
+            "draw.pen",
+            "Trace channel",
+            "Click along a channel; Backspace takes a pick back, Enter ends the channel.",
+        )
+        .key("C"),
+        Tool::Strike => Record::new(
+            "draw.strike",
+            "Strike reach",
+            "Click a proposed reach that is no channel; click its cross to bring it back.",
+        )
+        .key("X"),
+        Tool::Arrow => {
+            Record::new("draw.arrow", "State the flow", "Two clicks beside a reach: the water went this way.")
+                .key("A")
+        }
     }
 }
 
 fn lay(model: &mut Model, point: Point) {
     let Some(raster) = model.shown_raster().map(|r| r.id) else { return };
     let tool = model.session.tool;
+    if tool == Tool::Pen {
+        return pen::pick(model, point);
+    }
+    if tool.takes_one() {
+        if let Some(command) = NetworkCommand::of_click(model, tool, point) {
+            apply(model, Command::Network(command));
+        }
+        return;
+    }
     let draft = model.session.draft.get_or_insert_with(|| Draft { tool, raster, points: Vec::new() });
     draft.points.push(point);
-    if tool.is_box() && draft.points.len() == 2 {
+    if tool.takes_two() && draft.points.len() == 2 {
         apply(model, Command::Draw(DrawCommand::Finish));
     }
 }
@@ -147,12 +220,24 @@ fn finish(model: &mut Model) {
             outline.holes.push(ring);
             Command::Patch(PatchCommand::Reshape { id: patch.id, outline })
         }
+        (Tool::Lake, _) => {
+            let Some(id) = model.network_for(Tool::Lake).map(|n| n.id) else { return };
+            let outline = Polygon { outer: ring, holes: Vec::new() };
+            Command::Network(NetworkCommand::MarkClosed { id, outline })
+        }
+        (Tool::Arrow, _) => {
+            let Some(id) = model.network_for(Tool::Arrow).map(|n| n.id) else { return };
+            let (Some(from), Some(to)) = (ring.first(), ring.last()) else { return };
+            Command::Network(NetworkCommand::SetFlow { id, arrow: [*from, *to] })
+        }
         _ => {
             let outline = Polygon { outer: ring, holes: Vec::new() };
             Command::Patch(PatchCommand::Add { raster: draft.raster, outline })
         }
     };
-    model.session.tool = Tool::Hand;
+    if draft.tool != Tool::Arrow {
+        model.session.tool = Tool::Hand;
+    }
     model.session.history.settle();
     apply(model, command);
     model.session.history.settle();

@@ -19,7 +19,8 @@ impl JobCommand {
         match self {
             Self::Stop(_) => Record::new("job.stop", "Stop", "Ends this work; what is done stays."),
             Self::MeasureAgain => {
-                Record::new("job.measure", "Measure again", "Measures every patch anew.").key("F5")
+                Record::new("job.measure", "Measure again", "Measures every patch and network anew.")
+                    .key("F5")
             }
             Self::StopAll => {
                 Record::new("job.stop-all", "Stop all work", "Ends everything that runs.").ctrl("Period")
@@ -31,7 +32,9 @@ impl JobCommand {
         match self {
             Self::Stop(slot) if !model.session.jobs.is_running(*slot) => Some("it is over"),
             Self::StopAll if model.session.jobs.is_idle() => Some("nothing is running"),
-            Self::MeasureAgain if model.sheet.patches.is_empty() => Some("the sheet has no patch"),
+            Self::MeasureAgain if model.sheet.patches.is_empty() && model.sheet.networks.is_empty() => {
+                Some("the sheet has neither patch nor network")
+            }
             _ => None,
         }
     }
@@ -42,6 +45,7 @@ impl JobCommand {
             Self::StopAll => stop(model, &Slot::ALL),
             Self::MeasureAgain => {
                 model.session.jobs.abandon(Slot::Measure);
+                model.session.jobs.abandon(Slot::Networks);
                 model.session.forget_measured();
             }
         }
@@ -55,5 +59,8 @@ fn stop(model: &mut Model, slots: &[Slot]) {
     // What was stopped stays stopped until the sheet changes.
     if slots.contains(&Slot::Measure) {
         model.session.pause_measuring(&model.sheet);
+    }
+    if slots.contains(&Slot::Networks) {
+        model.session.pause_charting();
     }
 }

@@ -4,6 +4,7 @@ mod ask;
 mod body;
 mod draw;
 mod job;
+mod network;
 mod obstacle;
 mod patch;
 mod plate;
@@ -17,6 +18,7 @@ pub use ask::AskCommand;
 pub use body::BodyCommand;
 pub use draw::DrawCommand;
 pub use job::JobCommand;
+pub use network::NetworkCommand;
 pub use obstacle::ObstacleCommand;
 pub use patch::PatchCommand;
 pub use plate::PlateCommand;
@@ -29,7 +31,7 @@ pub use wind::WindCommand;
 use std::fmt;
 use std::path::PathBuf;
 
-use super::{MergeKey, Model, plates};
+use super::{MergeKey, Model, pen, plates};
 
 /// Everything a user can ask for, by area.
 #[derive(Clone, Debug, PartialEq)]
@@ -39,6 +41,7 @@ pub enum Command {
     Raster(RasterCommand),
     Patch(PatchCommand),
     Obstacle(ObstacleCommand),
+    Network(NetworkCommand),
     Draw(DrawCommand),
     Wind(WindCommand),
     Plate(PlateCommand),
@@ -117,6 +120,7 @@ impl Command {
             Self::Raster(c) => c.record(),
             Self::Patch(c) => c.record(),
             Self::Obstacle(c) => c.record(),
+            Self::Network(c) => c.record(),
             Self::Draw(c) => c.record(),
             Self::Wind(c) => c.record(),
             Self::Plate(c) => c.record(),
@@ -146,6 +150,7 @@ impl Command {
             Self::Raster(c) => c.refusal(model),
             Self::Patch(c) => c.refusal(model),
             Self::Obstacle(c) => c.refusal(model),
+            Self::Network(c) => c.refusal(model),
             Self::Draw(c) => c.refusal(model),
             Self::Wind(c) => c.refusal(model),
             Self::Plate(c) => c.refusal(model),
@@ -161,6 +166,7 @@ impl Command {
         match self {
             Self::Raster(c) => c.merge_key(),
             Self::Patch(c) => c.merge_key(),
+            Self::Network(c) => c.merge_key(),
             Self::Wind(c) => c.merge_key(),
             Self::Setting(c) => c.merge_key(),
             Self::Sheet(_)
@@ -192,7 +198,8 @@ pub fn listed() -> Vec<Command> {
     let patch = PatchCommand::LISTED.iter().cloned().map(Command::Patch);
     let view = ViewCommand::LISTED.iter().cloned().map(Command::View);
     let obstacle = ObstacleCommand::LISTED.iter().cloned().map(Command::Obstacle);
-    let making = sheet.chain(raster).chain(wind).chain(draw).chain(patch).chain(obstacle);
+    let network = NetworkCommand::LISTED.iter().cloned().map(Command::Network);
+    let making = sheet.chain(raster).chain(wind).chain(draw).chain(patch).chain(obstacle).chain(network);
     making.chain(plate).chain(setting).chain(job).chain(view).collect()
 }
 
@@ -215,6 +222,7 @@ pub fn apply(model: &mut Model, command: Command) {
         Command::Raster(c) => c.apply(model),
         Command::Patch(c) => c.apply(model),
         Command::Obstacle(c) => c.apply(model),
+        Command::Network(c) => c.apply(model),
         Command::Draw(c) => c.apply(model),
         Command::Wind(c) => c.apply(model),
         Command::Plate(c) => c.apply(model),
@@ -228,6 +236,7 @@ pub fn apply(model: &mut Model, command: Command) {
     }
     if passive {
         plates::follow(model);
+        pen::follow(model);
     } else {
         model.keep_up();
     }

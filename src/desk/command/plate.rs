@@ -44,7 +44,9 @@ impl PlateCommand {
     pub(super) fn refusal(&self, model: &Model) -> Option<&'static str> {
         let nothing = || {
             let results = &model.session.results;
-            let measured = model.sheet.patches.iter().any(|p| results.standing(p.id).is_current());
+            let patches = model.sheet.patches.iter().any(|p| results.standing(p.id).is_current());
+            let networks = model.sheet.networks.iter().any(|n| results.network_standing(n.id).is_current());
+            let measured = patches || networks;
             (!measured).then_some("nothing is measured as the sheet stands")
         };
         match self {
@@ -53,6 +55,11 @@ impl PlateCommand {
                 let id = model.view.patch;
                 let current = id.is_some_and(|id| model.session.results.standing(id).is_current());
                 (!current).then_some("no selected patch is measured as the sheet stands")
+            }
+            Self::AskExport | Self::Export(_) if model.view.plate.motif == Motif::Network => {
+                let id = model.view.network;
+                let current = id.is_some_and(|id| model.session.results.network_standing(id).is_current());
+                (!current).then_some("no selected network is measured as the sheet stands")
             }
             Self::AskExport | Self::Export(_) => model.shown_size().is_none().then_some("no raster is open"),
             Self::AskHandOver | Self::HandOver(_) => nothing(),
@@ -72,6 +79,7 @@ impl PlateCommand {
             Self::AskExport => {
                 let name = match model.view.plate.motif {
                     Motif::Patch => model.selected_patch().map_or("plate", |p| p.name.as_str()),
+                    Motif::Network => model.selected_network().map_or("plate", |n| n.name.as_str()),
                     Motif::Overview => model.shown_raster().map_or("plate", |r| r.name.as_str()),
                 };
                 let suggested = format!("{}.{}", file_stem(name), model.view.plate.format.ending());

@@ -5,7 +5,7 @@ use std::path::PathBuf;
 use crate::desk::{Ask, MergeKey, Model, Purpose};
 use crate::files::raster::Bands;
 use crate::ground::Azimuth;
-use crate::study::{Id, ImageKind, Placement, RasterEntry, Tone};
+use crate::study::{Id, ImageKind, NetworkSource, Placement, RasterEntry, Tone};
 
 use super::Record;
 
@@ -83,10 +83,12 @@ impl RasterCommand {
             Self::Light { .. } => {
                 Record::new("raster.light", "State the light", "Where sun or radar looks from.").editing()
             }
-            Self::Remove(_) => {
-                Record::new("raster.remove", "Remove raster", "Takes it and its patches off the sheet.")
-                    .editing()
-            }
+            Self::Remove(_) => Record::new(
+                "raster.remove",
+                "Remove raster",
+                "Takes it, its patches and networks off the sheet.",
+            )
+            .editing(),
         }
     }
 
@@ -165,6 +167,12 @@ fn remove(model: &mut Model, id: Id) {
     model.sheet.rasters.retain(|r| r.id != id);
     model.sheet.patches.retain(|p| p.raster != id);
     model.sheet.obstacles.retain(|o| o.raster != id);
+    model.sheet.networks.retain(|n| n.raster != id);
+    for network in &mut model.sheet.networks {
+        if let NetworkSource::Image(image) = &mut network.source {
+            image.elevation.take_if(|elevation| *elevation == id);
+        }
+    }
     model.drop_lost_selection();
-    model.session.notices.done_with_undo(format!("Removed {name} and its patches"));
+    model.session.notices.done_with_undo(format!("Removed {name}, its patches and networks"));
 }

@@ -20,6 +20,9 @@ pub enum ViewCommand {
     Outlines,
     Names,
     Graticule,
+    Networks,
+    Divides,
+    Changes,
     ShowRaster(Id),
     ShowWind(Id),
     /// Two winds picked on the map of regimes.
@@ -56,6 +59,7 @@ impl ViewCommand {
         Self::Page(Page::Verdict),
         Self::Page(Page::Obstacles),
         Self::Page(Page::Regimes),
+        Self::Page(Page::Channels),
         Self::Page(Page::Plate),
         Self::NextPage,
         Self::PreviousPage,
@@ -68,6 +72,9 @@ impl ViewCommand {
         Self::Outlines,
         Self::Names,
         Self::Graticule,
+        Self::Networks,
+        Self::Divides,
+        Self::Changes,
         Self::Theme,
     ];
 
@@ -97,6 +104,18 @@ impl ViewCommand {
             Self::Graticule => {
                 Record::new("view.graticule", "Graticule", "Shows or hides longitude and latitude.").key("G")
             }
+            Self::Networks => {
+                Record::new("view.networks", "Networks", "Shows or hides the channels.").key("W")
+            }
+            Self::Divides => {
+                Record::new("view.divides", "Divides", "Shows or hides the outlines of basins.").key("Y")
+            }
+            Self::Changes => Record::new(
+                "view.changes",
+                "Changed ground",
+                "Tints what was raised or cut to make the elevation drain.",
+            )
+            .key("Q"),
             Self::ShowRaster(_) => {
                 Record::new("view.raster", "Show raster", "Lays this raster on the table.")
             }
@@ -149,6 +168,9 @@ impl ViewCommand {
             Self::Outlines => layers.outlines = !layers.outlines,
             Self::Names => layers.names = !layers.names,
             Self::Graticule => layers.graticule = !layers.graticule,
+            Self::Networks => layers.networks = !layers.networks,
+            Self::Divides => layers.divides = !layers.divides,
+            Self::Changes => layers.changes = !layers.changes,
             Self::ShowRaster(id) => model.view.raster = Some(id),
             Self::ShowWind(id) => model.view.wind = Some(id),
             Self::Regime(regime) => model.view.regime = regime.map(PickedRegime::within_map),
@@ -225,6 +247,10 @@ fn page_record(page: Page) -> Record {
         Page::Obstacles => {
             Record::new("view.obstacles", "Bench: obstacles", "Crests round outcrops as wind vanes.").alt("7")
         }
-        Page::Plate => Record::new("view.plate", "Bench: plate", "The figure for print.").alt("8"),
+        Page::Channels => {
+            Record::new("view.channels", "Bench: channels", "Networks, their measures and palaeo-flow.")
+                .alt("8")
+        }
+        Page::Plate => Record::new("view.plate", "Bench: plate", "The figure for print.").alt("9"),
     }
 }

@@ -64,6 +64,30 @@ impl Network {
         self
     }
 
+    /// The parts of its reaches that lie inside; cut reaches keep their properties, and end where they are cut.
+    pub fn clipped(&self, inside: impl Fn(Point) -> bool) -> Self {
+        let mut clipped = Self { nodes: self.nodes.clone(), reaches: Vec::new() };
+        for reach in &self.reaches {
+            let points = &reach.line.0;
+            if points.iter().all(|p| inside(*p)) {
+                clipped.reaches.push(reach.clone());
+                continue;
+            }
+            for run in points.split(|p| !inside(*p)).filter(|run| run.len() >= 2) {
+                let ends = [run[0], run[run.len() - 1]];
+                let [from, to] = ends.map(|at| {
+                    clipped.nodes.push(NetworkNode { at, elevation_m: None });
+                    clipped.nodes.len() - 1
+                });
+                let line = Polyline(run.to_vec());
+                let length = reach.length * line.length() / reach.line.length();
+                let stations = reach.stations.iter().filter(|s| inside(s.at)).copied().collect();
+                clipped.reaches.push(Reach { from, to, line, length, stations, ..reach.clone() });
+            }
+        }
+        clipped.compacted()
+    }
+
     /// The reach whose line passes nearest to a point, and how near; `None` without reaches.
     pub fn nearest_reach(&self, p: Point) -> Option<(usize, f64)> {
         let distances = self.reaches.iter().map(|r| r.line.nearest(p).map_or(f64::INFINITY, |n| n.distance));

@@ -3,11 +3,13 @@
 
 mod furniture;
 mod margin;
+mod networks;
 mod outlines;
 mod strokes;
 mod tone;
 mod view;
 
+pub use networks::{MapNetwork, network_key};
 pub use tone::{Picture, toned};
 pub use view::MapView;
 
@@ -40,18 +42,29 @@ const SCALE_BAR_MM: f64 = 3.6;
 
 /// The map, at most `size_mm` wide and high; the figure is as large as the map turns out. North is
 /// that of the subject patch's centre, or of the map's centre.
-pub fn map(view: &MapView, patches: &[MapPatch], size_mm: [f64; 2], theme: &Theme) -> Figure {
-    let [left, top, right, bottom] = margin::ROOM;
-    let room = [size_mm[0] - left - right, size_mm[1] - top - bottom - SCALE_BAR_MM];
-    let sheet = Sheet::fit(view, Point::new(left, top), room.map(|v| v.max(1.0)));
+pub fn map(
+    view: &MapView,
+    patches: &[MapPatch],
+    networks: &[MapNetwork],
+    size_mm: [f64; 2],
+    theme: &Theme,
+) -> Figure {
+    let [_, _, right, bottom] = margin::ROOM;
+    let sheet = laid(view, size_mm);
     let mut inside = Sketch::default();
     ground(&mut inside, view, &sheet, theme);
+    for network in networks {
+        networks::draw_ground(&mut inside, network, &sheet, theme);
+    }
     for patch in patches {
         outlines::draw(&mut inside, patch.outline, &sheet, patch.is_subject, theme);
     }
     for patch in patches {
         let drawn = strokes::strokes(patch.nodes, &sheet, view.place, STROKE_PITCH_MM);
         strokes::draw(&mut inside, &drawn, theme);
+    }
+    for network in networks {
+        networks::draw(&mut inside, network, &sheet, theme);
     }
     let disc = Point::new(sheet.max.x - NORTH_RADIUS_MM - 1.4, sheet.min.y + NORTH_RADIUS_MM + 1.4);
     let mut taken = vec![around(disc, NORTH_RADIUS_MM + 0.5, NORTH_RADIUS_MM + 0.5)];
@@ -60,6 +73,9 @@ pub fn map(view: &MapView, patches: &[MapPatch], size_mm: [f64; 2], theme: &Them
             Some(trend) => rose_label(&mut inside, patch, trend, &sheet, &mut taken, theme),
             None => outlines::name(&mut inside, patch.name, patch.outline, &sheet, theme.text.body, theme),
         }
+    }
+    for network in networks {
+        networks::draw_name(&mut inside, network, &sheet, &mut taken, theme);
     }
     if let Some(north) = furniture::north(&sheet, view.place, subject_centre(patches, view)) {
         furniture::draw_north(&mut inside, north, disc, NORTH_RADIUS_MM, theme);
@@ -72,6 +88,13 @@ pub fn map(view: &MapView, patches: &[MapPatch], size_mm: [f64; 2], theme: &Them
         furniture::draw_scale_bar(&mut sketch, &bar, at, theme);
     }
     sketch.finish(sheet.max.x + right, sheet.max.y + bottom + SCALE_BAR_MM)
+}
+
+/// Where the raster lies on a map of this size.
+fn laid(view: &MapView, size_mm: [f64; 2]) -> Sheet {
+    let [left, top, right, bottom] = margin::ROOM;
+    let room = [size_mm[0] - left - right, size_mm[1] - top - bottom - SCALE_BAR_MM];
+    Sheet::fit(view, Point::new(left, top), room.map(|v| v.max(1.0)))
 }
 
 /// The image over hatching where it has gaps.
@@ -182,7 +205,7 @@ mod tests {
         let outline = Polygon::rectangle(300.0, 200.0);
         let patch =
             MapPatch { name: "Long dunes", outline: &outline, nodes: &[], rose: None, is_subject: true };
-        let figure = map(&view, &[patch], [100.0, 90.0], &Theme::print());
+        let figure = map(&view, &[patch], &[], [100.0, 90.0], &Theme::print());
         assert!(figure.width_mm <= 100.0 + 1e-9 && figure.height_mm <= 90.0 + 1e-9);
         let mut texts = Vec::new();
         collect(&figure.items, &mut texts);

@@ -6,6 +6,7 @@ mod grating;
 pub mod reach;
 pub mod smooth;
 mod speckle;
+pub mod waterways;
 
 pub use crests::{CrestScene, CrestShading, CrestTruth};
 pub use dunes::DuneTexture;

@@ -2,6 +2,7 @@
 
 mod body;
 mod calendar;
+mod channels;
 mod ground;
 mod judges;
 mod laws;
@@ -35,6 +36,7 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
             Page::Ground => ground::show(ui, model, out),
             Page::Winds => winds::show(ui, model, out),
             Page::Plate => plate::show(ui, model, out),
+            Page::Channels => channels::show(ui, model, out),
             Page::Obstacles => {
                 let finding = subject(ui, model, out);
                 obstacles::show(ui, model, finding, out);

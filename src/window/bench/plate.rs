@@ -31,6 +31,7 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
 fn options(ui: &mut Ui, model: &Model, choice: &mut PlateChoice) {
     ui.horizontal(|ui| {
         ui.radio_value(&mut choice.motif, Motif::Patch, "Selected patch");
+        ui.radio_value(&mut choice.motif, Motif::Network, "Selected network");
         ui.radio_value(&mut choice.motif, Motif::Overview, "Whole raster");
     });
     ui.horizontal(|ui| {

@@ -4,13 +4,14 @@
 use egui::epaint::{PathShape, PathStroke, TextShape};
 use egui::{Align2, Color32, FontId, Painter, Pos2, Rect, Shape, Stroke, StrokeKind, Vec2, vec2};
 
-use crate::desk::Draft;
+use crate::desk::{Draft, Tool};
 use crate::ground::{Place, Point, Polygon};
 use crate::study::Patch;
 
 use super::ink::Ink;
 use super::lens::Lens;
 use super::margin::{self, Cross, Tick};
+use super::networks;
 use super::pick;
 
 /// Width of the margin, points.
@@ -100,7 +101,7 @@ pub fn halo_text(
 pub fn draft(painter: &Painter, draft: &Draft, next: Option<Point>, lens: &Lens, ink: &Ink) {
     let ring: Vec<Pos2> = draft.ring(next).into_iter().map(|p| lens.to_screen(p)).collect();
     let Some(first) = ring.first() else { return };
-    let open = if draft.tool.is_box() { ring.len() } else { draft.points.len() };
+    let open = if draft.tool.takes_two() { ring.len() } else { draft.points.len() };
     let color = ink.over_image;
     let halo = Stroke::new(4.2, ink.halo.gamma_multiply(0.8));
     let mut closed = ring.clone();
@@ -109,7 +110,12 @@ pub fn draft(painter: &Painter, draft: &Draft, next: Option<Point>, lens: &Lens,
     painter.add(Shape::line(ring[..open].to_vec(), Stroke::new(1.8, color)));
     let rest = &closed[open.saturating_sub(1)..];
     painter.extend(Shape::dashed_line(rest, Stroke::new(1.8, color), 6.0, 4.0));
-    if !draft.tool.is_box() {
+    if let (Tool::Arrow, [from, to]) = (draft.tool, ring.as_slice())
+        && from != to
+    {
+        networks::head(painter, *to, (*to - *from).normalized(), 2.0, ink.over_image, ink);
+    }
+    if !draft.tool.takes_two() {
         for (index, p) in draft.points.iter().enumerate() {
             handle(painter, lens.to_screen(*p), index == 0, ink);
         }

@@ -6,7 +6,9 @@ use egui::{
     Event, EventFilter, Key, Modifiers, MouseWheelSource, MouseWheelUnit, PointerButton, Pos2, Response, Role,
 };
 
-use crate::desk::{Camera, Command, Cursor, Draft, DrawCommand, PatchCommand, Tool, ViewCommand};
+use crate::desk::{
+    Camera, Command, Cursor, Draft, DrawCommand, NetworkCommand, PatchCommand, Tool, Tracing, ViewCommand,
+};
 use crate::ground::{Point, Polygon};
 use crate::study::{Id, Patch};
 
@@ -131,7 +133,7 @@ impl Hand<'_> {
         {
             let from = lens.to_pixel(origin);
             state.drag = Some(match (self.tool(), self.table.selected()) {
-                (tool, _) if tool.is_box() => {
+                (tool, _) if tool.takes_two() => {
                     if self.table.model.session.draft.is_none() {
                         self.draw(DrawCommand::Lay(from));
                     }
@@ -182,7 +184,10 @@ impl Hand<'_> {
             }
             _ => {
                 state.corner = None;
-                if self.table.model.view.patch != hovered {
+                let network = self.table.network_at(lens.to_pixel(at));
+                if let Some(id) = network.filter(|_| self.tool() == Tool::Hand) {
+                    self.commands.push(Command::Network(NetworkCommand::Select(Some(id))));
+                } else if self.table.model.view.patch != hovered {
                     self.commands.push(Command::Patch(PatchCommand::Select(hovered)));
                 }
             }
@@ -191,15 +196,16 @@ impl Hand<'_> {
 
     /// A click of an outlining tool: another corner, or the end of the outline.
     fn lay(&mut self, at: Pos2, double: bool) {
+        let tracing = self.table.model.session.tracing.as_ref();
         let draft = self.table.model.session.draft.as_ref();
         let closes = draft.is_some_and(|draft| {
             let on_first = draft
                 .points
                 .first()
                 .is_some_and(|p| pick::handle_rect(self.table.lens.to_screen(*p)).contains(at));
-            !draft.tool.is_box() && draft.points.len() >= 3 && (double || on_first)
+            !draft.tool.takes_two() && draft.points.len() >= 3 && (double || on_first)
         });
-        if closes {
+        if closes || (double && tracing.is_some_and(Tracing::is_whole)) {
             self.draw(DrawCommand::Finish);
         } else if !double {
             self.draw(DrawCommand::Lay(self.table.lens.to_pixel(at)));
@@ -348,7 +354,9 @@ impl Hand<'_> {
         if let Some(cross) = state.cross {
             draw::cross(&self.ui.painter_at(lens.frame), lens.to_screen(cross), &self.table.ink);
             let draft = self.table.model.session.draft.as_ref();
-            let is_whole = draft.and_then(Draft::finished).is_some();
+            let tracing = self.table.model.session.tracing.as_ref();
+            let is_whole =
+                draft.and_then(Draft::finished).is_some() || tracing.is_some_and(Tracing::is_whole);
             // Enter closes an outline that can be closed; until then it lays corners too.
             if self.pressed(Key::Space) || (!is_whole && self.pressed(Key::Enter)) {
                 let at = lens.to_screen(cross);

@@ -24,6 +24,11 @@ pub struct Ink {
     /// Lines over the raster and the halo round them, in either look.
     pub line: Color32,
     pub halo: Color32,
+    /// Channels over the raster, in either look.
+    pub water: Color32,
+    /// Ground raised and cut by conditioning.
+    pub raised: Color32,
+    pub cut: Color32,
 }
 
 impl Ink {
@@ -39,6 +44,9 @@ impl Ink {
             over_image: color(Theme::light().measured),
             line: color(theme.over_image),
             halo: color(theme.halo),
+            water: color(Theme::light().water),
+            raised: color(Theme::light().predicted),
+            cut: color(Theme::light().measured),
         }
     }
 }

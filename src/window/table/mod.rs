@@ -6,7 +6,9 @@ mod fields;
 mod hand;
 mod ink;
 mod lens;
+mod lines;
 mod margin;
+mod networks;
 mod outcrops;
 mod pick;
 mod strokes;
@@ -15,9 +17,9 @@ mod tone;
 
 use egui::{Align2, FontId, Painter, Rect, Response, Role, Sense, Ui, WidgetInfo};
 
-use crate::desk::{self, Camera, Command, Laid, Model, Opened, ViewCommand};
+use crate::desk::{self, Camera, Command, Laid, Model, Opened, ViewCommand, channels};
 use crate::ground::{Bounds, Point};
-use crate::study::{Id, Obstacle, Patch, PatchFinding, RasterEntry};
+use crate::study::{Id, NetworkEntry, Obstacle, Patch, PatchFinding, RasterEntry};
 
 use super::theme;
 use draw::Standing;
@@ -32,6 +34,7 @@ use pick::Corner;
 pub struct TableState {
     tiles: tiles::TileTextures,
     fields: fields::Fields,
+    charts: networks::Charts,
     drag: Option<Drag>,
     /// The corner in hand, for keys.
     corner: Option<Corner>,
@@ -60,6 +63,23 @@ impl Table<'_> {
 
     fn obstacles(&self) -> impl Iterator<Item = &Obstacle> {
         self.model.sheet.obstacles.iter().filter(|o| o.raster == self.entry.id)
+    }
+
+    fn networks(&self) -> impl Iterator<Item = &NetworkEntry> {
+        self.model.sheet.networks.iter().filter(|n| n.raster == self.entry.id)
+    }
+
+    /// The network with a reach at this place; the selected one before others.
+    fn network_at(&self, at: Point) -> Option<Id> {
+        let model = self.model;
+        let reach = channels::pointer_reach(model);
+        let near = |n: &&NetworkEntry| {
+            let charted = model.session.results.charted(n.id);
+            charted.is_some_and(|charted| channels::reach_near(charted, at, reach).is_some())
+        };
+        let here: Vec<Id> =
+            self.networks().filter(|_| model.view.layers.networks).filter(near).map(|n| n.id).collect();
+        model.view.network.filter(|id| here.contains(id)).or(here.first().copied())
     }
 
     fn selected(&self) -> Option<&Patch> {
@@ -158,6 +178,9 @@ fn paint(painter: &Painter, response: &Response, table: &Table<'_>, state: &mut 
     if layers.strokes {
         draw::strokes(&inside, &state.fields.on_screen(table), ink);
     }
+    if layers.networks {
+        state.charts.draw(&inside, table);
+    }
     let pointer = hand::pointer(response, lens);
     let hovered = pointer
         .filter(|_| !model.session.tool.draws())
@@ -176,6 +199,9 @@ fn paint(painter: &Painter, response: &Response, table: &Table<'_>, state: &mut 
     if let Some(draft) = model.session.draft.as_ref().filter(|draft| draft.raster == table.entry.id) {
         let next = pointer.map(|at| lens.to_pixel(at)).or(state.cross);
         draw::draft(&inside, draft, next, lens, ink);
+    }
+    if let Some(tracing) = model.session.tracing.as_ref().filter(|t| t.raster == table.entry.id) {
+        networks::tracing(&inside, tracing, lens, ink);
     }
     draw::furniture(&inside, &laid.place, lens, ink);
     draw::margin(painter, response.rect, frame, &graticule.ticks, ink);

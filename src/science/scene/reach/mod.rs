@@ -9,12 +9,12 @@ mod channels;
 mod dunes;
 mod winds;
 
-use rand_distr::{Distribution as _, Gamma};
+use rand_distr::{Distribution as _, Gamma, Normal};
 use rayon::prelude::{IndexedParallelIterator as _, ParallelIterator as _, ParallelSliceMut as _};
 
 use crate::ground::{Affine, Axis, Azimuth, Grid, Point, Polygon, Seed};
 
-pub use channels::{Reach as ChannelReach, channels};
+pub use channels::{Reach as ChannelReach, channel_ground, channels, network_truth};
 pub use winds::{Season, corridor_record, reach_record};
 
 use super::smooth::{SampledField, SmoothField};
@@ -30,10 +30,23 @@ pub const CENTRE_LON: f64 = 64.0;
 pub const ORIGIN: (f64, f64) = (-31_000.0, 452_000.0);
 /// Where the radar looks from.
 pub const LOOK_FROM: f64 = 24.0;
+/// The liquid that once ran there, kg m⁻³, and the grains of its bed.
+pub const LIQUID_DENSITY: f64 = 680.0;
+pub const BED_GRAIN_DENSITY: f64 = 1_900.0;
 /// Looks of the speckle.
 pub const LOOKS: f64 = 4.0;
 /// Elevation cells per mosaic pixel side.
 pub const ELEVATION_STEP: usize = 2;
+
+/// Standard deviation of the roughness of the ground, m.
+const ROUGHNESS_M: f64 = 0.4;
+/// Distance from the middle of a bed at which the ground is as rough as elsewhere, mosaic pixels.
+const BED_FREE_PX: f64 = 12.0;
+
+/// Contributing area that makes a channel of the demo, m². At the heads the half cones above them have gathered it,
+/// hillslopes stay below half of it, and up to twice of it the network is the same. The constant-drop test cannot
+/// find it: these valleys were drawn, not carved.
+pub const CHANNEL_THRESHOLD_M2: f64 = 25e6;
 
 /// What is true of a demo patch.
 #[derive(Clone, Debug)]
@@ -195,20 +208,29 @@ impl Ground {
 }
 
 /// The elevation raster in metres, at [`ELEVATION_STEP`] mosaic pixels a cell: a plane that falls to
-/// the south-east, dunes left out, with the channel valleys cut into it.
+/// the south-east, dunes left out, with the channel valleys cut into it and the roughness of real ground, which
+/// the beds have not.
 pub fn elevation(seed: Seed) -> Grid<f32> {
     let (width, height) = (SIZE.0 / ELEVATION_STEP, SIZE.1 / ELEVATION_STEP);
     let swell = sampled(300.0, seed.child("swell"));
     let reaches = channels();
-    Grid::from_fn(width, height, |col, row| {
-        let p = Point::new(
-            (col as f64 + 0.5) * ELEVATION_STEP as f64,
-            (row as f64 + 0.5) * ELEVATION_STEP as f64,
-        );
-        let plane = 900.0 - 0.16 * p.x - 0.20 * p.y + 6.0 * swell.at(p);
-        let height = channels::valley(&reaches, p).map_or(plane, |valley| valley.min(plane));
-        (height * 10.0).round() as f32 / 10.0
-    })
+    let normal = Normal::new(0.0, ROUGHNESS_M).ok();
+    let mut values = vec![0.0f32; width * height];
+    values.par_chunks_mut(width).enumerate().for_each(|(row, line)| {
+        let mut random = seed.stream("scene.reach.roughness", row as u64);
+        for (col, value) in line.iter_mut().enumerate() {
+            let p = Point::new(
+                (col as f64 + 0.5) * ELEVATION_STEP as f64,
+                (row as f64 + 0.5) * ELEVATION_STEP as f64,
+            );
+            let rough = normal.map_or(0.0, |n| n.sample(&mut random));
+            let plane = 960.0 - 0.16 * p.x - 0.20 * p.y + 6.0 * swell.at(p);
+            let (valley, distance) = channels::valley(&reaches, p).unwrap_or((plane, f64::INFINITY));
+            let height = valley.min(plane) + rough * (distance / BED_FREE_PX).min(1.0);
+            *value = (height * 10.0).round() as f32 / 10.0;
+        }
+    });
+    Grid::from_parts(width, height, values, None)
 }
 
 #[cfg(test)]
@@ -225,12 +247,51 @@ mod tests {
     }
 
     #[test]
-    fn channel_beds_fall_downstream() {
+    fn beds_fall_downstream_and_valley_sides_slope_to_them() {
         let dem = elevation(Seed(1));
+        let cell = |p: Point| f64::from(dem.at((p.x / 2.0) as usize, (p.y / 2.0) as usize));
         for reach in channels() {
-            let cell = |p: Point| dem.at((p.x / 2.0) as usize, (p.y / 2.0) as usize);
-            let (head, mouth) = (reach.line.0[0], reach.line.0[reach.line.0.len() - 1]);
-            assert!(cell(head) > cell(mouth), "{:?}", reach);
+            let line = &reach.line.0;
+            // Beds fall from point to point by more than the steps of 0.1 m hide.
+            for pair in line.windows(2).filter(|w| w[0].distance(w[1]) > 4.0) {
+                assert!(cell(pair[0]) > cell(pair[1]), "{reach:?} at {pair:?}");
+            }
+            let middle = line[line.len() / 2];
+            let ahead = line[line.len() / 2 + 1];
+            let (dx, dy) = (ahead.x - middle.x, ahead.y - middle.y);
+            let side = |n: f64| {
+                let step = n / dx.hypot(dy);
+                cell(Point::new(middle.x - dy * step, middle.y + dx * step))
+            };
+            for n in [1.0, -1.0] {
+                let heights = [4.0, 9.0, 14.0].map(|d| side(n * d));
+                assert!(heights.is_sorted() && heights[0] > cell(middle), "{reach:?}: {heights:?}");
+            }
+        }
+    }
+
+    #[test]
+    fn the_true_network_has_the_orders_said() {
+        let truth = network_truth();
+        let orders: Vec<_> = truth.reaches.iter().map(|r| r.order.map_or(0, |o| o.strahler)).collect();
+        assert_eq!(orders, channels().iter().map(|r| r.order).collect::<Vec<_>>());
+        assert_eq!((truth.heads().len(), truth.junctions().len(), truth.outlets().len()), (5, 4, 1));
+        assert_eq!((truth.nodes.len(), truth.loops()), (10, 0));
+        for reach in &truth.reaches {
+            assert!(truth.nodes[reach.from].elevation_m > truth.nodes[reach.to].elevation_m);
+            assert!(reach.stations.is_sorted_by(|a, b| a.elevation_m > b.elevation_m && a.along < b.along));
+        }
+    }
+
+    #[test]
+    fn the_ground_of_the_channels_holds_them_and_their_valleys() {
+        let ground = channel_ground();
+        let reaches = channels();
+        for reach in &reaches {
+            assert!(reach.line.0.iter().all(|p| ground.contains(*p)), "{reach:?}");
+        }
+        for p in &ground.outer {
+            assert!(channels::valley(&reaches, *p).is_some_and(|(_, d)| d > 30.0 || p.x > 1190.0), "{p:?}");
         }
     }
 }

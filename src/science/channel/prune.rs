@@ -1,0 +1,126 @@
+//! What does not belong: spurs of the thinning, and lone short pieces.
+
+use crate::ground::Point;
+
+use super::graph::{Sketch, Stretch};
+
+/// ln of the greatest number of noise chains as good in the whole image, for a part or a branch to stay: 0.01.
+const GREATEST_CHANCE: f64 = -4.6;
+/// Arms nearer than this are not told apart, pixels.
+const LEAST_ISLAND: f64 = 6.0;
+
+impl Sketch {
+    /// Drops free-ended stretches off a junction that are shorter than `half_widths` half-widths of the widest
+    /// stretch there, the shortest of a junction first, until none is left; joins what then meets alone.
+    pub(super) fn prune_spurs(&mut self, half_widths: f64) {
+        loop {
+            let at = self.at_nodes();
+            let mut gone = vec![false; self.stretches.len()];
+            for meeting in at.iter().filter(|meeting| meeting.len() >= 3) {
+                if meeting.iter().any(|s| gone[*s]) {
+                    continue;
+                }
+                let widest = meeting.iter().map(|s| self.stretches[*s].width).fold(0.0, f64::max);
+                let is_free = |s: &usize| self.stretches[*s].ends.iter().any(|n| at[*n].len() == 1);
+                let shortest = meeting
+                    .iter()
+                    .copied()
+                    .filter(is_free)
+                    .map(|s| (self.stretches[s].length(), s))
+                    .min_by(|a, b| a.0.total_cmp(&b.0).then(a.1.cmp(&b.1)));
+                if let Some((_, spur)) = shortest.filter(|s| s.0 < half_widths * 0.5 * widest) {
+                    gone[spur] = true;
+                }
+            }
+            if !gone.contains(&true) {
+                return;
+            }
+            self.drop_where(&gone);
+            self.join_through();
+        }
+    }
+
+    /// Of two stretches between the same nodes that stay within `widths` of their width of each other, the longer goes;
+    /// so does one that returns to its own node within that reach.
+    pub(super) fn drop_doubles(&mut self, widths: f64) {
+        loop {
+            let mut gone = vec![false; self.stretches.len()];
+            let mut by_ends = std::collections::BTreeMap::new();
+            for (i, s) in self.stretches.iter().enumerate() {
+                by_ends
+                    .entry((s.ends[0].min(s.ends[1]), s.ends[0].max(s.ends[1])))
+                    .or_insert_with(Vec::new)
+                    .push(i);
+            }
+            for (ends, same) in by_ends {
+                for (k, &i) in same.iter().enumerate() {
+                    let one = &self.stretches[i];
+                    let near = (widths * one.width).max(LEAST_ISLAND);
+                    if ends.0 == ends.1 {
+                        gone[i] = one.line.iter().all(|p| p.distance(one.line[0]) < near);
+                    }
+                    for &j in &same[k + 1..] {
+                        let two = &self.stretches[j];
+                        let near = near.max(widths * two.width);
+                        let close =
+                            |p: &Point, other: &Stretch| other.line.iter().any(|q| q.distance(*p) < near);
+                        if one.line.iter().all(|p| close(p, two)) && two.line.iter().all(|p| close(p, one)) {
+                            gone[if one.length() >= two.length() { i } else { j }] = true;
+                        }
+                    }
+                }
+            }
+            if !gone.contains(&true) {
+                return;
+            }
+            self.drop_where(&gone);
+            self.join_through();
+        }
+    }
+
+    /// Drops parts, and then free-ended branches, that noise would give too. `ln_chance` tells of how many chains of
+    /// noise as good the image holds.
+    pub(super) fn drop_chance(&mut self, ln_chance: impl Fn(&[&Stretch]) -> f64) {
+        let part = self.parts();
+        let mut members: Vec<Vec<&Stretch>> = vec![Vec::new(); self.nodes.len()];
+        for stretch in &self.stretches {
+            members[part[stretch.ends[0]]].push(stretch);
+        }
+        let by_chance: Vec<bool> =
+            members.iter().map(|m| !m.is_empty() && ln_chance(m) > GREATEST_CHANCE).collect();
+        let gone: Vec<bool> = self.stretches.iter().map(|s| by_chance[part[s.ends[0]]]).collect();
+        self.drop_where(&gone);
+        loop {
+            let at = self.at_nodes();
+            let is_branch = |s: &Stretch| {
+                let [a, b] = s.ends.map(|n| at[n].len());
+                (a == 1) != (b == 1) && a.max(b) >= 3
+            };
+            let gone: Vec<bool> =
+                self.stretches.iter().map(|s| is_branch(s) && ln_chance(&[s]) > GREATEST_CHANCE).collect();
+            if !gone.contains(&true) {
+                return;
+            }
+            self.drop_where(&gone);
+            self.join_through();
+        }
+    }
+
+    /// Drops each part whose found length is below `widths` of its mean width, and parts without any found line.
+    pub(super) fn drop_lone(&mut self, widths: f64) {
+        let part = self.parts();
+        let mut length = vec![0.0; self.nodes.len()];
+        let mut area = vec![0.0; self.nodes.len()];
+        for stretch in self.stretches.iter().filter(|s| s.bridge.is_none()) {
+            let root = part[stretch.ends[0]];
+            length[root] += stretch.length();
+            area[root] += stretch.length() * stretch.width;
+        }
+        let lone = |node: usize| {
+            let (length, area) = (length[part[node]], area[part[node]]);
+            length <= 0.0 || length * length < widths * area
+        };
+        let gone: Vec<bool> = self.stretches.iter().map(|s| lone(s.ends[0])).collect();
+        self.drop_where(&gone);
+    }
+}
