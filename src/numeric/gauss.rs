@@ -37,7 +37,8 @@ impl Kernel {
     pub fn second_derivative(sigma: f64) -> Self {
         let bell = bell(sigma);
         let sum = |f: &dyn Fn(f64) -> f64| {
-            bell[0] * f(0.0) + 2.0 * bell.iter().enumerate().skip(1).map(|(k, t)| f(k as f64) * t).sum::<f64>()
+            bell[0] * f(0.0)
+                + 2.0 * bell.iter().enumerate().skip(1).map(|(k, t)| f(k as f64) * t).sum::<f64>()
         };
         let mean = sum(&|k| k * k) / sum(&|_| 1.0);
         let unit = 0.5 * sum(&|k| k * k * (k * k - mean));
