@@ -450,6 +450,7 @@ mod tests {
             sentence: String::new(),
             cautions: Vec::new(),
             birth: Vec::new(),
+            crests: Err("not traced".into()),
             obstacles: None,
         };
         let facts = trend(&finding).into_iter().chain(spacing(&finding));

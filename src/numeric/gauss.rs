@@ -33,6 +33,19 @@ impl Kernel {
         Self { parity: Parity::Odd, half: half.iter().map(|t| (t / slope) as f32).collect() }
     }
 
+    /// Its second derivative: exactly 0 for a ramp and 1 for x²/2.
+    pub fn second_derivative(sigma: f64) -> Self {
+        let bell = bell(sigma);
+        let sum = |f: &dyn Fn(f64) -> f64| {
+            bell[0] * f(0.0)
+                + 2.0 * bell.iter().enumerate().skip(1).map(|(k, t)| f(k as f64) * t).sum::<f64>()
+        };
+        let mean = sum(&|k| k * k) / sum(&|_| 1.0);
+        let unit = 0.5 * sum(&|k| k * k * (k * k - mean));
+        let half = bell.iter().enumerate().map(|(k, t)| (((k * k) as f64 - mean) * t / unit) as f32);
+        Self { parity: Parity::Even, half: half.collect() }
+    }
+
     /// Samples on either side of the centre.
     pub fn radius(&self) -> usize {
         self.half.len() - 1
@@ -72,6 +85,11 @@ mod tests {
             let ramp = Kernel::derivative(sigma);
             let slope: f64 = ramp.half.iter().enumerate().map(|(k, t)| 2.0 * k as f64 * f64::from(*t)).sum();
             crate::assert_close!(slope, 1.0, 1e-6, "ramp through sigma {sigma}");
+            let curve = Kernel::second_derivative(sigma);
+            crate::assert_close!(curve.response(0.0), 0.0, 1e-6, "constant through the second derivative");
+            let parabola: f64 =
+                curve.half.iter().enumerate().map(|(k, t)| (k * k) as f64 * f64::from(*t)).sum();
+            crate::assert_close!(parabola, 1.0, 1e-5, "x²/2 through sigma {sigma}");
         }
     }
 

@@ -3,6 +3,7 @@
 pub mod alignment;
 pub mod axial;
 pub mod channel;
+pub mod crest;
 pub mod drainage;
 pub mod network;
 pub mod obstacle;
@@ -12,12 +13,13 @@ pub mod wind;
 
 use crate::ground::Method;
 
-/// Every method of the program, in the order of the reasoning: trend, spacing, statistics, wind, verdict,
-/// outcrops, channels.
+/// Every method of the program, in the order of the reasoning: trend, spacing, statistics, crests, wind,
+/// verdict, outcrops, channels.
 pub fn methods() -> Vec<&'static Method> {
     [
         orientation::METHODS,
         axial::METHODS,
+        crest::METHODS,
         wind::METHODS,
         alignment::METHODS,
         obstacle::METHODS,

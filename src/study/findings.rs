@@ -7,9 +7,10 @@
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
 use super::{
-    BackwardsFinding, BirthFinding, BuildingFinding, CalendarFinding, DriftFinding, ElongationFinding,
-    EquivalenceFinding, GustFinding, Id, MigrationFinding, NetworkFinding, ObstaclesFinding, RoundingFinding,
-    SandFinding, SeasonFinding, SensitivityFinding, SetAside, ThinningFinding,
+    BackwardsFinding, BirthFinding, BuildingFinding, CalendarFinding, CrestsFinding, DriftFinding,
+    ElongationFinding, EquivalenceFinding, GustFinding, Id, MigrationFinding, NetworkFinding,
+    ObstaclesFinding, RoundingFinding, SandFinding, SeasonFinding, SensitivityFinding, SetAside,
+    ThinningFinding,
 };
 
 /// All results of one run.
@@ -77,6 +78,8 @@ pub struct PatchFinding {
     pub cautions: Vec<Caution>,
     /// The spacing against that of first dunes, by each wind record whose air is known.
     pub birth: Vec<BirthFinding>,
+    /// The crests traced in it; in words why there are none.
+    pub crests: Result<CrestsFinding, String>,
     /// What the outcrops in it say; `None` where the sheet has none there, or at a first look.
     pub obstacles: Option<ObstaclesFinding>,
 }

@@ -5,6 +5,7 @@ pub mod bulk;
 mod cautions;
 mod channel_settings;
 pub mod check;
+mod crests;
 pub mod demo;
 mod findings;
 pub mod fingerprint;
@@ -49,6 +50,7 @@ pub use crate::science::wind::rounding::Rounding as RoundingFinding;
 pub use crate::science::wind::thinning::{Changed as ChangedFinding, Thinning as ThinningFinding};
 pub use backwards::{BackwardsFinding, arc_words};
 pub use channel_settings::{ChannelSettings, DrainageSettings, FlowSettings, NetworkSettings};
+pub use crests::CrestsFinding;
 pub use findings::{
     Discovery, Failure, Findings, Flip, JointFinding, JointTheory, JointTrend, ModeFinding, Node,
     PatchFinding, RasterFinding, SpectrumFinding, SpectrumPicture, TheoryFinding, TogetherFinding,

@@ -10,6 +10,7 @@ use crate::science::orientation::{self, NodeField, Peak, Spectrum, TensorSetting
 
 use super::backwards;
 use super::cautions;
+use super::crests;
 use super::obstacles;
 use super::verdict::verdict;
 use super::window::{self, Detail, PatchPixels};
@@ -86,9 +87,12 @@ pub fn patch_finding(
         sentence: String::new(),
         cautions,
         birth,
+        crests: Err("not traced at a first look".into()),
         obstacles: None,
     };
     if detail == Detail::Exact {
+        let (trend, spectrum) = (&finding.trend, &finding.spectrum);
+        finding.crests = crests::study(&pixels, entry, trend, spectrum, finding.unit, work)?;
         finding.obstacles = obstacles::study(sheet, patch, &open.place, &finding.trend, seed, work)?;
     }
     finding.sentence = sentence::of_patch(&finding);

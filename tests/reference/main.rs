@@ -4,6 +4,7 @@ mod alignment;
 mod axial;
 mod axial_field;
 mod axial_tests;
+mod crest;
 mod drainage;
 mod georef;
 mod image_channels;

@@ -83,6 +83,7 @@ fn finding(mosaic: &Grid<f32>, place: &Place, patch: &Patch, fingerprint: String
         sentence: String::new(),
         cautions: Vec::<Caution>::new(),
         birth: Vec::new(),
+        crests: Err("not traced".into()),
         obstacles: None,
     }
 }

@@ -1,5 +1,6 @@
 //! Synthetic ground and wind with known truth: for the demo, for tests, and for injection and recovery.
 
+mod crests;
 mod dunes;
 mod grating;
 pub mod reach;
@@ -7,6 +8,7 @@ pub mod smooth;
 mod speckle;
 pub mod waterways;
 
+pub use crests::{CrestScene, CrestShading, CrestTruth};
 pub use dunes::DuneTexture;
 pub use grating::{Grating, WavyGrating, picture};
 pub use speckle::{correlated_speckle, speckle, speckled};

@@ -72,6 +72,7 @@ fn patch(p: &PatchFinding) -> Value {
         "backwards": p.backwards.as_ref().map(backwards),
         "birth": p.birth.iter().map(sand::birth).collect::<Vec<_>>(),
         "finding": p.sentence, "cautions": cautions(&p.cautions),
+        "crests": super::crests::json(&p.crests),
         "obstacles": p.obstacles.as_ref().map(|o| super::obstacles::json(o, metres)),
     })
 }

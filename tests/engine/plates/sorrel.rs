@@ -343,7 +343,8 @@ pub fn patch_finding(reach: &Reach) -> PatchFinding {
             Caution::new("tensor-spectrum", "Tensor and spectrum agree within their intervals, but the spectrum rests on 12 windows only."),
         ],
         birth: Vec::new(),
-        obstacles: None,
+            crests: Err("not traced".into()),
+            obstacles: None,
     }
 }
 
