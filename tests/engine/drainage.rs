@@ -373,3 +373,27 @@ fn assert_soon(name: &str, late: &dyn Fn() -> Option<Duration>) {
     let least = tries.iter().min().copied().unwrap_or_default();
     assert!(least < Duration::from_millis(100), "{name}: {tries:?}");
 }
+
+#[test]
+fn equal_cells_are_counted_as_unequal_ones_are_summed() {
+    // Wider and higher than what is worked on at once, and of no round size.
+    let mut random = ChaCha8Rng::seed_from_u64(12);
+    let mut z = Grid::from_fn(333, 150, |col, _| random.random_range(0.0f32..9.0) + 0.1 * col as f32);
+    z.mask_where(|col, row| col * row % 1997 != 1996);
+    let filled = conditioned(&z, Conditioning::FillSloped);
+    let equal = Cells::square(2.0, z.height());
+    let mut unequal = equal.clone();
+    // One row apart by the least a number can be.
+    unequal.area[149] = 4.0f64.next_up();
+    let receivers = receivers(&filled, &equal, &Work::quiet()).expect("not stopped");
+    let run =
+        |cells: &Cells| area(&filled, cells, Router::D8, &receivers, &Work::quiet()).expect("not stopped");
+    let (counted, summed) = (run(&equal), run(&unequal));
+    let mut most = 0.0f64;
+    for (cell, code) in receivers.0.values().iter().enumerate().filter(|(_, code)| **code != VOID) {
+        assert_close!(counted.of(cell), summed.of(cell), 1e-9, "cell {cell}, code {code}");
+        most = most.max(counted.of(cell));
+    }
+    // More than the rounds of adding can hold.
+    assert!(most > 4.0 * 255.0, "{most}");
+}

@@ -135,6 +135,16 @@ pub(super) fn tiles(width: usize, height: usize) -> impl Iterator<Item = (usize,
     (0..height).step_by(TILE[0]).flat_map(move |top| (0..width).step_by(TILE[1]).map(move |left| (top, left)))
 }
 
+/// Where `flags` are set, listed without a branch in `room`, which is longer by one at least.
+pub(super) fn listed<'a>(flags: &[bool], room: &'a mut [usize]) -> &'a [usize] {
+    let mut number = 0;
+    for (i, flag) in flags.iter().enumerate() {
+        room[number] = i;
+        number += usize::from(*flag);
+    }
+    &room[..number]
+}
+
 /// Steps to the eight neighbours in a row-major list.
 pub(super) fn offsets(width: usize) -> [isize; 8] {
     STEPS.map(|(dx, dy)| dy * width as isize + dx)
