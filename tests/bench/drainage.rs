@@ -135,7 +135,7 @@ fn round(elevation: &Grid<f32>, cells: &Cells, how: Conditioning) {
 fn drain(surface: &Conditioned, cells: &Cells) -> f64 {
     let receivers = receivers(surface, cells, &Work::quiet()).expect("not stopped");
     let area = area(surface, cells, Router::D8, &receivers, &Work::quiet()).expect("not stopped");
-    area.at(SIDE.min(area.width()) / 2, 0)
+    area.at(SIDE.min(surface.surface.width()) / 2, 0)
 }
 
 /// CPU seconds and the peak of memory above what was there before, MiB.

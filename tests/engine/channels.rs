@@ -3,6 +3,7 @@
 use proptest::prelude::*;
 use rand::Rng as _;
 use ventifact::ground::{Grid, Network, Place, Point, Seed, Work};
+use ventifact::science::drainage::accumulate::Areas;
 use ventifact::science::drainage::basins::{Basin, basins};
 use ventifact::science::drainage::cells::Cells;
 use ventifact::science::drainage::extract::{ChannelAsk, Channels, channels};
@@ -24,6 +25,10 @@ fn square_cells(rows: usize, size: f64) -> Cells {
         diagonal: vec![[size * std::f64::consts::SQRT_2; 2]; rows.saturating_sub(1)],
         area: vec![size * size; rows],
     }
+}
+
+fn areas(grid: &Grid<f64>) -> Areas {
+    Areas::from_parts(grid.width(), grid.height(), grid.values().to_vec())
 }
 
 impl Routed {
@@ -106,13 +111,13 @@ impl Routed {
 
     fn channels(&self, ask: &ChannelAsk) -> Result<Channels, String> {
         let place = Place::plane([1.0, 1.0], 0.0, ventifact::ground::Body::earth()).unwrap();
-        channels(&self.surface, &self.cells, &self.receivers, &self.area, &place, ask, &Work::quiet())
-            .unwrap()
+        let area = areas(&self.area);
+        channels(&self.surface, &self.cells, &self.receivers, &area, &place, ask, &Work::quiet()).unwrap()
     }
 
     fn basins(&self, network: &Network, outlets: &[Point], most: usize) -> Vec<Basin> {
         let Self { surface, receivers, area, cells } = self;
-        basins(surface, cells, receivers, area, network, outlets, 0, most, &Work::quiet()).unwrap()
+        basins(surface, cells, receivers, &areas(area), network, outlets, 0, most, &Work::quiet()).unwrap()
     }
 }
 

@@ -5,7 +5,7 @@
 
 use ventifact::assert_close;
 use ventifact::ground::{Affine, Body, Frame, Grid, LatitudeKind, Place, Work};
-use ventifact::science::drainage::accumulate::{area, specific_area};
+use ventifact::science::drainage::accumulate::{Areas, area, specific_area};
 use ventifact::science::drainage::cells::Cells;
 use ventifact::science::drainage::condition::{BreachLimits, Conditioned, Conditioning, condition};
 use ventifact::science::drainage::d_infinity::{Descent, Facets};
@@ -19,7 +19,7 @@ const SIDE: usize = 99;
 const MIDDLE: isize = 49;
 
 /// Contributing area on a surface given by (x east, y north) from the middle, in cells.
-fn areas(router: Router, z: impl Fn(f64, f64) -> f64) -> Grid<f64> {
+fn areas(router: Router, z: impl Fn(f64, f64) -> f64) -> Areas {
     both_areas(router, z).0
 }
 
@@ -28,7 +28,7 @@ fn specific_areas(router: Router, z: impl Fn(f64, f64) -> f64) -> Grid<f64> {
     both_areas(router, z).1
 }
 
-fn both_areas(router: Router, z: impl Fn(f64, f64) -> f64) -> (Grid<f64>, Grid<f64>) {
+fn both_areas(router: Router, z: impl Fn(f64, f64) -> f64) -> (Areas, Grid<f64>) {
     let surface = Grid::from_fn(SIDE, SIDE, |col, row| {
         z((col as isize - MIDDLE) as f64, (MIDDLE - row as isize) as f64) as f32
     });

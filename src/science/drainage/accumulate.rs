@@ -1,9 +1,12 @@
 //! Contributing area: what every cell passes on, added up along the flow.
 
+use std::borrow::Cow;
+
 use crate::ground::{Grid, Method, Read, Source, Stopped, Symbol, Work};
 
 use super::cells::Cells;
 use super::condition::Conditioned;
+use super::count;
 use super::d_infinity::Facets;
 use super::d8::Rows;
 use super::multiple::Spread;
@@ -42,6 +45,64 @@ const PAUSE: usize = 1 << 14;
 /// In place of the number of cells waited for, once a cell is done.
 const DONE: u8 = u8::MAX;
 
+/// Contributing areas, cell by cell, held exactly in as little memory as will do. Those of missing cells mean
+/// nothing.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Areas {
+    width: usize,
+    height: usize,
+    held: Held,
+}
+
+#[derive(Clone, Debug, PartialEq)]
+enum Held {
+    /// Numbers of cells of one size each.
+    Cells { counts: Vec<u32>, own_m2: f64 },
+    /// m².
+    Metres(Vec<f64>),
+}
+
+impl Areas {
+    /// Takes rows of areas, m².
+    ///
+    /// # Panics
+    /// When the length is not `width * height`: a bug in the caller.
+    pub fn from_parts(width: usize, height: usize, areas: Vec<f64>) -> Self {
+        assert_eq!(areas.len(), width * height, "areas");
+        Self { width, height, held: Held::Metres(areas) }
+    }
+
+    /// Number of cells, missing ones included.
+    pub fn len(&self) -> usize {
+        self.width * self.height
+    }
+
+    pub fn is_empty(&self) -> bool {
+        self.len() == 0
+    }
+
+    /// Area that drains through a cell, its own included, m². Cells are numbered row by row.
+    pub fn of(&self, cell: usize) -> f64 {
+        match &self.held {
+            Held::Cells { counts, own_m2 } => f64::from(counts[cell]) * own_m2,
+            Held::Metres(areas) => areas[cell],
+        }
+    }
+
+    /// The same by column and row.
+    pub fn at(&self, col: usize, row: usize) -> f64 {
+        self.of(row * self.width + col)
+    }
+
+    /// All of them, row by row, m².
+    pub fn values(&self) -> Cow<'_, [f64]> {
+        match &self.held {
+            Held::Cells { .. } => Cow::Owned((0..self.len()).map(|cell| self.of(cell)).collect()),
+            Held::Metres(areas) => Cow::Borrowed(areas),
+        }
+    }
+}
+
 /// Contributing area of every cell, its own included, m². What leaves through the outlets adds up to the area of
 /// all valid cells.
 ///
@@ -53,23 +114,27 @@ pub fn area(
     router: Router,
     receivers: &Receivers,
     work: &Work,
-) -> Result<Grid<f64>, Stopped> {
+) -> Result<Areas, Stopped> {
     let surface = &conditioned.surface;
-    let width = surface.width();
     work.phase("contributing area", 2 * surface.height() as u64);
-    let area = match router {
-        Router::D8 => walk::along_one(receivers, cells, work)?,
-        _ => along_many(conditioned, cells, router, receivers, work)?,
-    };
-    Ok(Grid::from_parts(width, surface.height(), area, surface.mask().map(<[bool]>::to_vec)))
+    let alike = surface.len() <= count::MOST_CELLS && cells.area.windows(2).all(|pair| pair[0] == pair[1]);
+    let (width, height) = (surface.width(), surface.height());
+    Ok(match router {
+        Router::D8 if alike => {
+            let own_m2 = cells.area.first().copied().unwrap_or_default();
+            Areas { width, height, held: Held::Cells { counts: count::counts(receivers, work)?, own_m2 } }
+        }
+        Router::D8 => Areas::from_parts(width, height, walk::along_one(receivers, cells, work)?),
+        _ => Areas::from_parts(width, height, along_many(conditioned, cells, router, receivers, work)?),
+    })
 }
 
 /// Contributing area over the width of the cell across its flow, m. Across a step to a side that is cell area over
 /// step length, across one to a corner √2 times that, so that a square cell is one side wide in every direction;
 /// where water leaves the ground, the root of the cell's area. The direction is that of the steepest neighbour.
-pub fn specific_area(area: &Grid<f64>, cells: &Cells, receivers: &Receivers) -> Grid<f64> {
-    let mut specific = area.clone();
-    let width = area.width();
+pub fn specific_area(area: &Areas, cells: &Cells, receivers: &Receivers) -> Grid<f64> {
+    let width = area.width;
+    let mut specific = Grid::from_fn(width, area.height, |col, row| area.at(col, row));
     let codes = receivers.0.values().chunks(width.max(1));
     for (row, (values, codes)) in specific.values_mut().chunks_mut(width.max(1)).zip(codes).enumerate() {
         let own = cells.area[row];

@@ -5,6 +5,7 @@ use std::collections::BTreeMap;
 use crate::ground::{Grid, Method, Network, Point, Polygon, Stopped, Symbol, Work};
 use crate::numeric::sum::total;
 
+use super::accumulate::Areas;
 use super::cells::Cells;
 use super::outlets::{all_snapped, climb};
 use super::outline::outline;
@@ -66,7 +67,7 @@ pub fn basins(
     surface: &Grid<f32>,
     cells: &Cells,
     receivers: &Receivers,
-    area: &Grid<f64>,
+    area: &Areas,
     network: &Network,
     outlets: &[Point],
     snap_cells: usize,
@@ -82,7 +83,7 @@ pub fn basins(
     } else {
         all_snapped(outlets, area, paths, snap_cells)
     };
-    ends.sort_by(|a, b| area.values()[*b].total_cmp(&area.values()[*a]).then(a.cmp(b)));
+    ends.sort_by(|a, b| area.of(*b).total_cmp(&area.of(*a)).then(a.cmp(b)));
     ends.truncate(most.min(MOST));
     let labels = labels(&ends, paths, work)?;
 
@@ -119,10 +120,10 @@ pub fn basins(
 }
 
 /// Cells whose water leaves the ground, those with the greatest areas.
-fn greatest_ends(area: &Grid<f64>, paths: Paths, most: usize, work: &Work) -> Result<Vec<usize>, Stopped> {
+fn greatest_ends(area: &Areas, paths: Paths, most: usize, work: &Work) -> Result<Vec<usize>, Stopped> {
     let mut ends: Vec<usize> = Vec::new();
     let mut steps = 0;
-    let order = |a: &usize, b: &usize| area.values()[*b].total_cmp(&area.values()[*a]).then(a.cmp(b));
+    let order = |a: &usize, b: &usize| area.of(*b).total_cmp(&area.of(*a)).then(a.cmp(b));
     for cell in 0..paths.len() {
         pause(&mut steps, work)?;
         if paths.is_ground(cell) && paths.next(cell).is_none() {

@@ -66,6 +66,9 @@ pub struct BreachLimits {
     pub cells: u32,
 }
 
+/// Cells compared at once.
+const CHUNK: usize = 16;
+
 /// Makes a surface that drains everywhere.
 ///
 /// Water leaves over the raster's edge and into missing ground: a cell there that has no lower neighbour drains
@@ -170,22 +173,20 @@ fn changed(elevation: &Grid<f32>, surface: &Grid<f32>, cells: &Cells, counts: Ch
         elevation.values().chunks(width).zip(surface.values().chunks(width)).enumerate()
     {
         let (mut raised, mut cut) = (0.0, 0.0);
-        let same = |at: usize| before[at..].iter().zip(&after[at..]).take(16).all(|(a, b)| a == b);
-        for at in (0..before.len()).step_by(16).filter(|at| !same(*at)) {
-            for col in at..before.len().min(at + 16) {
-                let by = f64::from(after[col]) - f64::from(before[col]);
-                if by == 0.0 || !surface.is_valid(col, row) {
-                    continue;
-                }
-                if by > 0.0 {
-                    changed.raised_cells += 1;
-                    changed.deepest_fill = changed.deepest_fill.max(by);
-                    raised += by;
-                } else {
-                    changed.cut_cells += 1;
-                    changed.deepest_cut = changed.deepest_cut.max(-by);
-                    cut -= by;
-                }
+        for (number, (before, after)) in before.chunks(CHUNK).zip(after.chunks(CHUNK)).enumerate() {
+            if before.iter().zip(after).fold(true, |same, (a, b)| same & (a == b)) {
+                continue;
+            }
+            for (i, (before, after)) in before.iter().zip(after).enumerate() {
+                let by = f64::from(*after) - f64::from(*before);
+                let by = if surface.is_valid(number * CHUNK + i, row) { by } else { 0.0 };
+                let (up, down) = (if by > 0.0 { by } else { 0.0 }, if by < 0.0 { -by } else { 0.0 });
+                changed.raised_cells += usize::from(up > 0.0);
+                changed.cut_cells += usize::from(down > 0.0);
+                changed.deepest_fill = changed.deepest_fill.max(up);
+                changed.deepest_cut = changed.deepest_cut.max(down);
+                raised += up;
+                cut += down;
             }
         }
         changed.raised_volume += raised * cells.area[row];

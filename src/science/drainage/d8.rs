@@ -56,10 +56,7 @@ pub fn receivers(conditioned: &Conditioned, cells: &Cells, work: &Work) -> Resul
         for (i, out) in out.chunks_mut(width).enumerate() {
             let row = first + i;
             steepest(&rows, &weights(cells, row), out);
-            let flats = &conditioned.flats[row * width..][..width];
-            for (code, flat) in out.iter_mut().zip(flats) {
-                *code = if *code == LEVEL { *flat } else { *code };
-            }
+            take_flats(&conditioned.flats[row * width..][..width], out);
             rows.advance(surface);
             work.advance(1)?;
         }
@@ -75,8 +72,16 @@ pub(super) fn weights(cells: &Cells, row: usize) -> [f32; 8] {
     steps.map(|d| (longest / d) as f32)
 }
 
-/// The code of the steepest descent of each cell of the middle row, or [`LEVEL`] or [`VOID`].
+/// Puts the receivers on flats where no neighbour is lower.
 #[multiversion(targets("x86_64+avx2"))]
+fn take_flats(flats: &[u8], codes: &mut [u8]) {
+    for (code, flat) in codes.iter_mut().zip(flats) {
+        *code = if *code == LEVEL { *flat } else { *code };
+    }
+}
+
+/// The code of the steepest descent of each cell of the middle row, or [`LEVEL`] or [`VOID`].
+#[multiversion(targets("x86_64+avx512f+avx512bw+avx512vl+avx512dq", "x86_64+avx2"))]
 pub(super) fn steepest(rows: &Rows, weights: &[f32; 8], out: &mut [u8]) {
     let n = out.len();
     let [above, own, below] = rows.three();

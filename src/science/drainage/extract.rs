@@ -7,6 +7,7 @@ use crate::ground::{
 use crate::numeric::quantile;
 use crate::numeric::sum::{Sum, total};
 
+use super::accumulate::Areas;
 use super::cells::Cells;
 use super::drop;
 use super::heads::{self, DropRow, HeadRule};
@@ -65,7 +66,7 @@ pub fn channels(
     surface: &Grid<f32>,
     cells: &Cells,
     receivers: &Receivers,
-    area: &Grid<f64>,
+    area: &Areas,
     place: &Place,
     ask: &ChannelAsk,
     work: &Work,
@@ -91,7 +92,7 @@ pub fn channels(
         count += 1;
         by_row[cell / paths.width] += 1;
         greatest = greatest.max(support[cell]);
-        most_area = most_area.max(area.values()[cell]);
+        most_area = most_area.max(area.of(cell));
     }
     if count == 0 {
         return Ok(Err("There is no ground with an elevation.".into()));
@@ -116,7 +117,7 @@ pub fn channels(
     let stated = ask.threshold_m2.filter(|t| *t > 0.0 && t.is_finite());
     let threshold_m2 = stated.or(proposed_m2).unwrap_or_else(|| {
         let share = FALLBACK_SHARE * most_area;
-        let near = |c: &usize| (0.5 * share..=2.0 * share).contains(&area.values()[*c]);
+        let near = |c: &usize| (0.5 * share..=2.0 * share).contains(&area.of(*c));
         let mut values: Vec<f64> =
             (0..paths.len()).filter(is_kept).filter(near).map(|c| support[c]).collect();
         match ask.rule {
@@ -157,7 +158,7 @@ pub fn channels(
 /// The tree as a network: a node for each, a reach for each way down.
 fn network(
     surface: &Grid<f32>,
-    area: &Grid<f64>,
+    area: &Areas,
     paths: Paths,
     choice: Choice,
     tree: &Tree,
@@ -185,7 +186,7 @@ fn network(
             let at = paths.centre(*cell);
             along += before.distance(at);
             before = at;
-            let area_m2 = Some(area.values()[*cell]);
+            let area_m2 = Some(area.of(*cell));
             Station { at, along, elevation_m: z(*cell), area_m2, ..Station::default() }
         };
         let stations = if with_stations { way.iter().map(station).collect() } else { Vec::new() };

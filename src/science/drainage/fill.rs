@@ -1,12 +1,13 @@
 //! Sinks raised to their lowest rim.
 
+use multiversion::multiversion;
 use rayon::prelude::*;
 
 use crate::ground::{Grid, Method, Read, Source, Stopped, Symbol, Work};
 
 use super::d8::{LEVEL, Rows, steepest};
 use super::routing::{STEPS, VOID};
-use super::walk::{TILE, tiles};
+use super::walk::{TILE, listed, tiles};
 
 /// The record of filling.
 pub const METHOD: Method = Method {
@@ -212,20 +213,18 @@ fn find_passes(
     let mut above = vec![OUTSIDE; width + 2];
     let mut own = above.clone();
     let mut differs = vec![false; width + 1];
+    let mut room = vec![0; width + 2];
     for row in 0..=height {
         match labels.get(row * width..(row + 1) * width) {
             Some(labels) if row < height => own[1..=width].copy_from_slice(labels),
             _ => own.fill(OUTSIDE),
         }
-        let corners = own.windows(2).zip(above.windows(2));
-        for (differs, (own, above)) in differs.iter_mut().zip(corners) {
-            *differs = (own[1] != own[0]) | (own[1] != above[0]) | (own[1] != above[1]);
-        }
+        find_corners(&above, &own, &mut differs);
         let cell = |labels: &[u32], col: usize, row: usize| match labels[col] {
             OUTSIDE => (OUTSIDE, f32::NEG_INFINITY),
             label => (label, elevation.values()[row * width + col - 1]),
         };
-        for (west, _) in differs.iter().enumerate().filter(|(_, differs)| **differs) {
+        for west in listed(&differs, &mut room).iter().copied() {
             // The four cells around a corner of cells, and their pairs; the upper two were a pair a row ago.
             let (sw, se) = (cell(&own, west, row), cell(&own, west + 1, row));
             let up = row.wrapping_sub(1);
@@ -240,6 +239,16 @@ fn find_passes(
         work.advance(1)?;
     }
     Ok(())
+}
+
+/// The corners of cells where basins meet, between two rows of labels.
+#[multiversion(targets("x86_64+avx512f+avx512bw+avx512vl+avx512dq", "x86_64+avx2"))]
+fn find_corners(above: &[u32], own: &[u32], out: &mut [bool]) {
+    let n = out.len();
+    let (nw, ne, sw, se) = (&above[..n], &above[1..=n], &own[..n], &own[1..=n]);
+    for i in 0..n {
+        out[i] = (se[i] != sw[i]) | (se[i] != nw[i]) | (se[i] != ne[i]);
+    }
 }
 
 /// Lowest passes by pair of basins. Those of a basin to the first few that came before it stand beside it, close

@@ -9,6 +9,7 @@ use crate::ground::{Grid, Method, Read, Source, Stopped, Symbol, Work};
 use super::cells::Cells;
 use super::d8::{Rows, weights};
 use super::routing::{OUT, STEPS, VOID};
+use super::walk::listed;
 
 /// The record of the gradient on flats.
 pub const METHOD: Method = Method {
@@ -108,7 +109,7 @@ fn level(surface: &Grid<f32>, codes: &mut Vec<u8>, work: &Work) -> Result<(), St
     })
 }
 
-#[multiversion(targets("x86_64+avx2"))]
+#[multiversion(targets("x86_64+avx512f+avx512bw+avx512vl+avx512dq", "x86_64+avx2"))]
 fn sort_row(rows: &Rows, out: &mut [u8]) {
     let n = out.len();
     let [above, own, below] = rows.three();
@@ -129,7 +130,7 @@ fn sort_row(rows: &Rows, out: &mut [u8]) {
 }
 
 /// The cells of flats with a neighbour that belongs to none, in the middle of three rows of codes.
-#[multiversion(targets("x86_64+avx2"))]
+#[multiversion(targets("x86_64+avx512f+avx512bw+avx512vl+avx512dq", "x86_64+avx2"))]
 fn find_borders(codes: &[u8], out: &mut [bool]) {
     let width = out.len();
     if width < 3 {
@@ -181,9 +182,10 @@ impl<'a> Flats<'a> {
     fn find_ways_out(&mut self, rims: bool, work: &Work) -> Result<Vec<usize>, Stopped> {
         let (mut exits, mut beside_higher) = (Vec::new(), Vec::new());
         let mut borders = vec![false; self.width];
+        let mut room = vec![0; self.width + 1];
         for row in 1..(self.z.len() / self.width.max(1)).saturating_sub(1) {
             find_borders(&self.codes[(row - 1) * self.width..][..3 * self.width], &mut borders);
-            for (col, _) in borders.iter().enumerate().filter(|(_, border)| **border) {
+            for col in listed(&borders, &mut room).iter().copied() {
                 let i = row * self.width + col;
                 let (mut exit, mut higher) = (OUT, false);
                 for (k, offset) in self.offsets.iter().enumerate() {

@@ -6,6 +6,7 @@ use serde::{Deserialize, Serialize};
 
 use crate::ground::{Grid, Method, Read, Source, Stopped, Symbol, Work};
 
+use super::accumulate::Areas;
 use super::curvature;
 use super::paths::{Paths, pause};
 use super::sources::OCALLAGHAN;
@@ -77,20 +78,20 @@ pub struct DropRow {
 pub(super) fn support<'a>(
     rule: HeadRule,
     surface: &Grid<f32>,
-    area: &'a Grid<f64>,
+    area: &'a Areas,
     paths: Paths,
     scale_cells: f64,
     work: &Work,
 ) -> Result<Cow<'a, [f64]>, Stopped> {
     match rule {
-        HeadRule::Area => greatest_above(Cow::Borrowed(area.values()), paths, work),
+        HeadRule::Area => greatest_above(area.values(), paths, work),
         HeadRule::SlopeArea => {
             let mut own = vec![0.0; paths.len()];
             let mut steps = 0;
             for (cell, own) in own.iter_mut().enumerate() {
                 let slope = slope(surface, paths, cell);
                 // A·S²
-                *own = area.values()[cell] * slope * slope;
+                *own = area.of(cell) * slope * slope;
                 pause(&mut steps, work)?;
             }
             greatest_above(Cow::Owned(own), paths, work)

@@ -5,6 +5,7 @@ pub mod basins;
 mod breach;
 pub mod cells;
 pub mod condition;
+mod count;
 mod curvature;
 pub mod d8;
 pub mod d_infinity;

@@ -1,12 +1,13 @@
 //! Outlets the user picked, and the ground above them.
 
-use crate::ground::{Grid, Point, Stopped, Work};
+use crate::ground::{Point, Stopped, Work};
 
+use super::accumulate::Areas;
 use super::paths::{Paths, pause};
 
 /// The cell of greatest area within `reach` cells of a picked point; the nearest of equals, then the first.
 /// `None` where there is no ground.
-pub(super) fn snapped(pick: Point, area: &Grid<f64>, paths: Paths, reach: usize) -> Option<usize> {
+pub(super) fn snapped(pick: Point, area: &Areas, paths: Paths, reach: usize) -> Option<usize> {
     if !(pick.x.is_finite() && pick.y.is_finite()) {
         return None;
     }
@@ -21,7 +22,7 @@ pub(super) fn snapped(pick: Point, area: &Grid<f64>, paths: Paths, reach: usize)
         for col in span(pick.x, paths.width) {
             let cell = row * paths.width + col;
             let distance = paths.centre(cell).distance(own);
-            let a = area.values()[cell];
+            let a = area.of(cell);
             if !paths.is_ground(cell) || distance > radius || !a.is_finite() {
                 continue;
             }
@@ -34,7 +35,7 @@ pub(super) fn snapped(pick: Point, area: &Grid<f64>, paths: Paths, reach: usize)
 }
 
 /// The snapped cells of all picks, ascending, each once.
-pub(super) fn all_snapped(picks: &[Point], area: &Grid<f64>, paths: Paths, reach: usize) -> Vec<usize> {
+pub(super) fn all_snapped(picks: &[Point], area: &Areas, paths: Paths, reach: usize) -> Vec<usize> {
     let mut cells: Vec<usize> = picks.iter().filter_map(|p| snapped(*p, area, paths, reach)).collect();
     cells.sort_unstable();
     cells.dedup();

@@ -3,7 +3,7 @@
 use std::sync::{Arc, Mutex, PoisonError};
 
 use crate::ground::{Caution, Grid, Point, Stopped, Work};
-use crate::science::drainage::accumulate::area;
+use crate::science::drainage::accumulate::{Areas, area};
 use crate::science::drainage::basins::{Basin, basins};
 use crate::science::drainage::cells::Cells;
 use crate::science::drainage::condition::{BreachLimits, Conditioned, condition};
@@ -29,7 +29,7 @@ struct Terrain {
     cells: Cells,
     conditioned: Conditioned,
     receivers: Receivers,
-    area: Grid<f64>,
+    area: Areas,
 }
 
 /// The routed grounds of the last networks, by what made them.
@@ -37,7 +37,7 @@ struct Terrain {
 pub struct Terrains(Mutex<Vec<(String, Arc<Terrain>)>>);
 
 impl Terrains {
-    /// Each holds about twenty bytes a cell.
+    /// Each holds about ten bytes a cell, or fourteen where cells differ in size.
     const MOST: usize = 2;
 
     fn recall(&self, key: &str) -> Option<Arc<Terrain>> {
