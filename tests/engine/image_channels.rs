@@ -63,9 +63,10 @@ fn a_turned_image_gives_the_turned_network() {
 
 #[test]
 fn a_gap_is_bridged_and_says_so() {
-    let image = Grid::from_fn(300, 120, |c, r| {
-        let channel = (57..63).contains(&r) && !(140..160).contains(&c);
-        if channel { 40.0 } else { 100.0 + ((c * 7 + r * 13) % 5) as f32 }
+    let noise = speckle(400, 120, 16.0, &mut Seed(7).stream("engine.gap", 0));
+    let image = Grid::from_fn(400, 120, |c, r| {
+        let channel = (57..63).contains(&r) && !(185..215).contains(&c);
+        noise.at(c, r) * if channel { 40.0 } else { 100.0 }
     });
     let found = dark(&image).unwrap();
     let bridges: Vec<_> = found.network.reaches.iter().filter(|r| r.origin == ReachOrigin::Bridged).collect();
@@ -75,10 +76,9 @@ fn a_gap_is_bridged_and_says_so() {
 
 #[test]
 fn missing_cells_are_no_channels_and_hide_none() {
-    let mut image = Grid::from_fn(260, 260, |c, r| {
-        let noise = ((c * 31 + r * 17 + c * r) % 23) as f32;
-        if (100..108).contains(&c) { 40.0 + noise } else { 100.0 + noise }
-    });
+    let noise = speckle(260, 260, 16.0, &mut Seed(6).stream("engine.missing", 0));
+    let mut image =
+        Grid::from_fn(260, 260, |c, r| noise.at(c, r) * if (100..108).contains(&c) { 40.0 } else { 100.0 });
     image.mask_where(|c, r| !((180..200).contains(&c) || ((100..108).contains(&r) && c > 120)));
     let network = dark(&image).unwrap().network;
     let off = network.reaches.iter().flat_map(|r| &r.line.0).filter(|p| (p.x - 104.0).abs() > 3.0).count();

@@ -89,6 +89,10 @@ const APART: f64 = 1.25;
 const RATIO: f64 = 1.5;
 /// Directions tried over half a circle; set so that a quarter turn of the image maps them onto each other.
 pub(super) const DIRECTIONS: usize = 12;
+/// Where the tone beside the strip is taken, over half the width, and how far the middle must stand out from it at
+/// least, over the response (0.56 for an ideal strip).
+const BESIDE: f64 = 4.0 / 3.0;
+const LEAST_LIFT: f32 = 0.25;
 /// Half the taps along the strip reach so many scales out.
 const TAPS_TO: f64 = 2.0;
 /// Cells on a side of a tile.
@@ -521,7 +525,7 @@ impl Filter {
     fn tile(&self, grid: &Grid<f32>, corner: (usize, usize)) -> Tile {
         let width = TILE.min(grid.width() - corner.0);
         let height = TILE.min(grid.height() - corner.1);
-        let (gx, gy) = self.gradient(grid, corner, width, height);
+        let [gx, gy, level] = self.gradient(grid, corner, width, height);
         let mut tile = Tile {
             width,
             height,
@@ -542,19 +546,20 @@ impl Filter {
                 let rows = edge.chunks_exact(inner).skip(self.bank_margin).take(height).step_by(5);
                 tile.edges.extend(rows.flat_map(|r| r[self.bank_margin..][..width].iter().step_by(5)));
             }
-            self.banks(&edge, inner, turn, &mut tile);
+            self.banks(&edge, inner, &level, turn, &mut tile);
         }
         tile
     }
 
-    /// Derivatives along rows and down columns over the tile and its margin; cells outside mirror those inside.
+    /// Derivatives along rows and down columns, and the smoothed tone, over the tile and its margin; cells outside
+    /// mirror those inside.
     fn gradient(
         &self,
         grid: &Grid<f32>,
         corner: (usize, usize),
         width: usize,
         height: usize,
-    ) -> (Vec<f32>, Vec<f32>) {
+    ) -> [Vec<f32>; 3] {
         let radius = self.smooth.radius();
         let (cols, rows) = (width + 2 * self.margin, height + 2 * self.margin);
         let before = (self.margin + radius) as isize;
@@ -581,7 +586,7 @@ impl Filter {
             }
             out
         };
-        (down(&self.smooth, &slope), down(&self.slope, &smooth))
+        [down(&self.smooth, &slope), down(&self.slope, &smooth), down(&self.smooth, &smooth)]
     }
 
     /// Averages along the strip: the taps lie on columns (or rows, for steep strips), linear between cells.
@@ -626,19 +631,23 @@ impl Filter {
     }
 
     /// The least of both banks before and behind each cell, where it beats what the tile holds.
-    fn banks(&self, edge: &[f32], inner: usize, turn: u8, tile: &mut Tile) {
+    fn banks(&self, edge: &[f32], inner: usize, level: &[f32], turn: u8, tile: &mut Tile) {
         let (cos, sin) = direction(turn);
-        let sample = |side: f64, ahead: f64| {
+        let sample = |side: f64, ahead: f64, columns: usize, margin: usize| {
             let (side, ahead) = (side * self.half, ahead * self.ahead);
             let (dx, dy) = (ahead * cos - side * sin, ahead * sin + side * cos);
             let (c, r) = (dx.floor(), dy.floor());
             let (u, v) = ((dx - c) as f32, (dy - r) as f32);
-            let margin = self.bank_margin as isize;
-            let from = (margin + r as isize) * inner as isize + margin + c as isize;
+            let margin = margin as isize;
+            let from = (margin + r as isize) * columns as isize + margin + c as isize;
             (from as usize, [(1.0 - u) * (1.0 - v), u * (1.0 - v), (1.0 - u) * v, u * v])
         };
-        let samples = [sample(1.0, 1.0), sample(1.0, -1.0), sample(-1.0, 1.0), sample(-1.0, -1.0)];
+        let samples = [(1.0, 1.0), (1.0, -1.0), (-1.0, 1.0), (-1.0, -1.0)]
+            .map(|(side, ahead)| sample(side, ahead, inner, self.bank_margin));
+        let outer = tile.width + 2 * self.margin;
+        let beside = [-BESIDE, BESIDE].map(|side| sample(side, 0.0, outer, self.margin));
         let mut lines = [const { Vec::new() }; 4];
+        let mut sides = [vec![0.0f32; tile.width], vec![0.0f32; tile.width]];
         lines.iter_mut().for_each(|line| *line = vec![0.0f32; tile.width]);
         for r in 0..tile.height {
             for (out, (from, w)) in lines.iter_mut().zip(&samples) {
@@ -646,12 +655,22 @@ impl Filter {
                 mix_two(out, &edge[at..], w[0], &edge[at + 1..], w[1]);
                 add_two(out, &edge[at + inner..], w[2], &edge[at + inner + 1..], w[3]);
             }
+            for (out, (from, w)) in sides.iter_mut().zip(&beside) {
+                let at = from + r * outer;
+                mix_two(out, &level[at..], w[0], &level[at + 1..], w[1]);
+                add_two(out, &level[at + outer..], w[2], &level[at + outer + 1..], w[3]);
+            }
+            let here = &level[(self.margin + r) * outer + self.margin..][..tile.width];
             let held = &mut tile.amplitude[r * tile.width..][..tile.width];
             let turns = &mut tile.turn[r * tile.width..][..tile.width];
             let [a, b, c, d] = &lines;
             for i in 0..held.len() {
+                let lift = (here[i] - 0.5 * (sides[0][i] + sides[1][i])) / LEAST_LIFT;
                 let dark = a[i].min(b[i]).min((-c[i]).min(-d[i]));
                 let bright = (-a[i]).min(-b[i]).min(c[i].min(d[i]));
+                // Between two bends the outer banks make a strip as well, but the ground in its middle is that outside.
+                let dark = if -lift >= dark { dark } else { 0.0 };
+                let bright = if lift >= bright { bright } else { 0.0 };
                 let amplitude = match self.tone {
                     ChannelTone::Dark => dark,
                     ChannelTone::Bright => bright,
