@@ -24,10 +24,10 @@ pub fn follow(model: &mut Model) {
     if wanting.is_empty() || model.session.charts_stopped_at.as_deref().is_some_and(all_in) {
         return;
     }
-    if model.session.jobs.is_running(Slot::Networks) {
-        if all_in(&model.session.charting) || model.session.history.is_sliding() {
-            return;
-        }
+    if model.session.jobs.is_running(Slot::Networks)
+        && (all_in(&model.session.charting) || model.session.history.is_sliding())
+    {
+        return;
     }
     let selected = model.view.network;
     let (first, rest): (Vec<_>, Vec<_>) = wanting.into_iter().partition(|(id, _)| Some(*id) == selected);

@@ -94,7 +94,7 @@ pub fn thin(
     let mut seen = 0u32;
     while let Some(Reverse((_, cell))) = waiting.pop() {
         seen += 1;
-        if seen % BREATH == 0 {
+        if seen.is_multiple_of(BREATH) {
             work.advance(0)?;
         }
         let pattern = mask.pattern(cell);

@@ -155,8 +155,8 @@ mod tests {
                 (0..5).for_each(|r| sums[r][usize::from(!as_written(r))] += weight);
             }
             let belief = weigh(&meetings, &own, joining);
-            for r in 0..5 {
-                let want = (sums[r][0] / sums[r][1]).ln();
+            for (r, sum) in sums.iter().enumerate() {
+                let want = (sum[0] / sum[1]).ln();
                 crate::assert_close!(belief.ln_odds[r], want, 1e-9, "reach {r}, joining {joining}");
             }
             crate::assert_close!(belief.ln_evidence, whole.ln(), 1e-9, "evidence for joining {joining}");

@@ -56,8 +56,8 @@ impl Sketch {
                 let mut at = 0;
                 while at < cluster.len() {
                     for n in near(cluster[at]).filter(|n| near(*n).count() > 2) {
-                        if !node_of.contains_key(&n) {
-                            node_of.insert(n, sketch.nodes.len());
+                        if let std::collections::hash_map::Entry::Vacant(e) = node_of.entry(n) {
+                            e.insert(sketch.nodes.len());
                             cluster.push(n);
                         }
                     }

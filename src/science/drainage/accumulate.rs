@@ -153,14 +153,14 @@ pub fn specific_area(area: &Areas, cells: &Cells, receivers: &Receivers) -> Grid
 
 /// How the cells of one row share their flow.
 enum Shares {
-    Facets(Facets),
+    Facets(Box<Facets>),
     Spread(Spread),
 }
 
 impl Shares {
     fn of(router: Router, cells: &Cells, row: usize) -> Self {
         match router {
-            Router::DInfinity => Self::Facets(Facets::of(cells, row)),
+            Router::DInfinity => Self::Facets(Box::new(Facets::of(cells, row))),
             Router::Quinn => Self::Spread(Spread::quinn(cells, row)),
             _ => Self::Spread(Spread::freeman(cells, row)),
         }
@@ -190,14 +190,14 @@ fn along_many(
     let mut waiting = vec![0u8; surface.len()];
     let mut rows = Rows::new(surface, 0);
     let rules: Vec<Shares> = (0..height).map(|row| Shares::of(router, cells, row)).collect();
-    for row in 0..height {
+    for (row, rule) in rules.iter().enumerate() {
         for col in 0..width {
             let i = row * width + col;
             let code = receivers.0.values()[i];
             if code >= OUT {
                 continue;
             }
-            let shares = rules[row].at(rows.z(col), &rows.around(col));
+            let shares = rule.at(rows.z(col), &rows.around(col));
             let mut bits = (0..8).filter(|k| shares[*k] > 0.0).fold(0u8, |bits, k| bits | 1 << k);
             if bits == 0 {
                 bits = 1 << code;

@@ -133,7 +133,7 @@ impl Search {
                 continue;
             }
             self.done += 1;
-            if self.done % PAUSE == 0 {
+            if self.done.is_multiple_of(PAUSE) {
                 work.advance(0)?;
             }
             let z = f64::from(surface.values()[i]);

@@ -122,7 +122,7 @@ fn pass_on(states: &[Vec<u8>; 3], held: &[Vec<u8>; 3], out: &mut [u8], sums: &mu
 fn settle(states: &[u8], held: &[u8], out: &mut [u32]) {
     for ((out, state), held) in out.iter_mut().zip(states).zip(held) {
         let waits = if *state == DONE { 0 } else { state / WAITING };
-        *out = u32::from(*held) | u32::from(waits) * WAITING_CELL;
+        *out = u32::from(*held) | (u32::from(waits) * WAITING_CELL);
     }
 }
 

@@ -128,9 +128,12 @@ impl Basins {
     }
 }
 
+/// Steps, basins, and a cell of each minimum.
+type Labels = (Vec<u8>, Vec<u32>, Vec<usize>);
+
 /// Follows every cell down to its minimum: steps, basins and a cell of each minimum. Minima of one height that touch
 /// are one.
-fn label(elevation: &Grid<f32>, work: &Work) -> Result<(Vec<u8>, Vec<u32>, Vec<usize>), Stopped> {
+fn label(elevation: &Grid<f32>, work: &Work) -> Result<Labels, Stopped> {
     let width = elevation.width();
     let mut codes = vec![VOID; elevation.len()];
     codes.par_chunks_mut((BLOCK * width).max(1)).enumerate().try_for_each(|(block, out)| {

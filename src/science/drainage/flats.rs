@@ -174,7 +174,7 @@ impl<'a> Flats<'a> {
     /// Looks at Stop now and then.
     fn pause(&mut self, work: &Work) -> Result<(), Stopped> {
         self.done += 1;
-        if self.done % PAUSE == 0 { work.advance(0) } else { Ok(()) }
+        if self.done.is_multiple_of(PAUSE) { work.advance(0) } else { Ok(()) }
     }
 
     /// Drains every flat that touches a cell of its height that drains, by the shortest way. With `rims`, the

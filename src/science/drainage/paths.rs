@@ -140,5 +140,5 @@ impl<'a> Paths<'a> {
 /// Counts a step; every so many the user's Stop is heard.
 pub(super) fn pause(steps: &mut usize, work: &Work) -> Result<(), Stopped> {
     *steps += 1;
-    if *steps % STRIDE == 0 { work.advance(0) } else { Ok(()) }
+    if (*steps).is_multiple_of(STRIDE) { work.advance(0) } else { Ok(()) }
 }

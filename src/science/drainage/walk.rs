@@ -71,7 +71,7 @@ pub(super) fn donors(above: &[u8], own: &[u8], below: &[u8], out: &mut [u8]) {
             + u8::from(se[i] == 5)
             + u8::from(ss[i] == 6)
             + u8::from(sw[i] == 7);
-        out[i] = waits * WAITING | z[i];
+        out[i] = (waits * WAITING) | z[i];
     }
 }
 
@@ -97,9 +97,11 @@ fn walk_down(
         for row in top..height.min(top + TILE[0]) {
             // The cells of the row that can start, listed without a branch.
             let mut number = 0;
-            for first in row * width + left..row * width + width.min(left + TILE[1]) {
-                starts[number] = first;
-                number += usize::from(states[first] < WAITING);
+            let begin_at = row * width + left;
+            let here = &states[begin_at..row * width + width.min(left + TILE[1])];
+            for (i, state) in here.iter().enumerate() {
+                starts[number] = begin_at + i;
+                number += usize::from(*state < WAITING);
             }
             for first in starts[..number].iter().copied() {
                 let (mut at, mut passed, mut code) = (first, area[first], states[first]);

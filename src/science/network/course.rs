@@ -41,7 +41,7 @@ impl Course {
         }
         let length = *along.last()?;
         let count = (length / step).min(MOST_POINTS).floor();
-        if !(count >= 4.0) {
+        if count.is_nan() || count < 4.0 {
             return None;
         }
         let at: Vec<f64> = (0..=count as usize).map(|i| length * i as f64 / count).collect();

@@ -40,8 +40,11 @@ pub struct Waterways {
     gapped_width: f64,
 }
 
+/// From, to, and which of the widths.
+type Straight = ((f64, f64), (f64, f64), usize);
+
 /// Straight axes of the channels in shares of the scene's side: from, to, and which of the widths.
-const AXES: [((f64, f64), (f64, f64), usize); 8] = [
+const AXES: [Straight; 8] = [
     ((0.50, 0.00), (0.50, 1.00), 0),
     ((0.02, 0.10), (0.50, 0.62), 1),
     ((0.98, 0.30), (0.50, 0.85), 1),

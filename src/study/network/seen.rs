@@ -157,11 +157,13 @@ impl<'a> Heights<'a> {
             (1.0, 1.0, tx * ty),
         ] {
             let (c, r) = (col + dx, row + dy);
-            if w > 0.0 && c >= 0.0 && r >= 0.0 {
-                if let Some(z) = self.grid.get(c as usize, r as usize) {
-                    sum += w * f64::from(z);
-                    weight += w;
-                }
+            if w > 0.0
+                && c >= 0.0
+                && r >= 0.0
+                && let Some(z) = self.grid.get(c as usize, r as usize)
+            {
+                sum += w * f64::from(z);
+                weight += w;
             }
         }
         (weight > 0.0).then(|| sum / weight)
