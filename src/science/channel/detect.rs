@@ -153,6 +153,9 @@ pub fn detect(
     let area = image.valid_count() as f64;
     let mut sketch = lines(&response, work)?;
     sketch.prune_spurs(settings.spur_half_widths);
+    sketch.cut_unseen(image, settings.tone, &response, work)?;
+    sketch = sketch.fill_false_islands(image, &response, |cells| width_along(&response, cells), work)?;
+    sketch.prune_spurs(settings.spur_half_widths);
     sketch.drop_doubles(ISLAND);
     sketch.drop_chance(|stretches| ln_chance(stretches, &response, area));
     sketch.prune_spurs(settings.spur_half_widths);
@@ -194,11 +197,13 @@ fn lines(response: &Response, work: &Work) -> Result<Sketch, Stopped> {
     grow(&mut mask, response, work)?;
     thin(&mut mask, columns, heights, |cell| crest[cell], false, work)?;
     thin(&mut mask, columns, heights, |_| false, true, work)?;
-    let width = |cells: &[usize]| {
-        let mut widths: Vec<f64> = cells.iter().map(|c| response.strip_at(*c).width).collect();
-        quantile::median(&mut widths)
-    };
-    Sketch::of_lines(&mask, columns, width, work)
+    Sketch::of_lines(&mask, columns, |cells| width_along(response, cells), work)
+}
+
+/// Typical width of a line of cells.
+fn width_along(response: &Response, cells: &[usize]) -> f64 {
+    let mut widths: Vec<f64> = cells.iter().map(|c| response.strip_at(*c).width).collect();
+    quantile::median(&mut widths)
 }
 
 /// Cells beyond the low threshold that are near the best across their strip, and those that are the best.
@@ -324,7 +329,7 @@ fn network(sketch: &Sketch, response: &Response, area: f64) -> Network {
 }
 
 /// The cell under a point.
-fn cell_under(response: &Response, p: Point) -> usize {
+pub(super) fn cell_under(response: &Response, p: Point) -> usize {
     let at = |v: f64, n: usize| (v.max(0.0) as usize).min(n - 1);
     at(p.y, response.z.height()) * response.z.width() + at(p.x, response.z.width())
 }
