@@ -151,19 +151,24 @@ pub fn detect(
         return Ok(Err("the image is smaller than two widths of the narrowest channel looked for".into()));
     }
     let area = image.valid_count() as f64;
+    let strength = |s: &Stretch| {
+        let sum: f64 = s.line.iter().map(|p| f64::from(response.excess[cell_under(&response, *p)])).sum();
+        sum / s.line.len().max(1) as f64
+    };
     let mut sketch = lines(&response, work)?;
     sketch.prune_spurs(settings.spur_half_widths);
     sketch.cut_unseen(image, settings.tone, &response, work)?;
     sketch = sketch.fill_false_islands(image, &response, |cells| width_along(&response, cells), work)?;
     sketch.prune_spurs(settings.spur_half_widths);
-    sketch.drop_doubles(ISLAND);
-    sketch.drop_chance(|stretches| ln_chance(stretches, &response, area));
+    sketch.drop_doubles(ISLAND, strength, work)?;
+    sketch.drop_chance(|stretches| ln_chance(stretches, &response, area), work)?;
     sketch.prune_spurs(settings.spur_half_widths);
     sketch.bridge(settings.gap_widths, area, work)?;
     sketch.join_through();
+    sketch.drop_doubles(ISLAND, strength, work)?;
     sketch.prune_spurs(settings.spur_half_widths);
     sketch.drop_lone(settings.least_length_widths);
-    sketch.refine(&response);
+    sketch.refine(&response, work)?;
     sketch.centre(image, settings.tone, work)?;
     let network = network(&sketch, &response, area);
     let bridged = network.reaches.iter().filter(|r| r.origin == ReachOrigin::Bridged).count();

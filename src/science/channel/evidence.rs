@@ -1,6 +1,7 @@
 //! Lines held against the image: a channel has its tone along its whole line, and ground between its arms.
 
 use crate::ground::{Grid, Stopped, Work};
+use crate::numeric::quantile;
 use crate::numeric::thin::{around, thin};
 
 use super::detect::ChannelTone;
@@ -8,7 +9,9 @@ use super::graph::{Sketch, Stretch};
 use super::profile::{Profile, profiles};
 use super::response::Response;
 
-/// A place of a line stands out from its sides by this share of the response there at least.
+/// Half of the width over which the tone of the middle is taken, over the width.
+const CORE: f64 = 0.15;
+/// A place of a line stands out from its sides by this share of the typical response of its stretch at least.
 const LEAST_SHARE: f64 = 0.4;
 /// Half of the length over which a place is averaged: widths, and pixels at least.
 const AVERAGED: f64 = 0.75;
@@ -120,7 +123,10 @@ fn seen_along(
     let total = stretch.length();
     let mut seen = vec![true; stretch.line.len()];
     let (Some(last), true) = (found.last(), total > 0.0) else { return Ok(seen) };
-    let marks: Vec<bool> = found.iter().map(|p| stands_out(p, tone, response, stretch.width)).collect();
+    let mut steps: Vec<f64> =
+        stretch.line.iter().map(|p| response.step_at(super::detect::cell_under(response, *p))).collect();
+    let typical = quantile::median(&mut steps);
+    let marks: Vec<bool> = found.iter().map(|p| stands_out(p, tone, stretch.width, typical)).collect();
     // Points of the stretch lie nearly evenly on the smoothed line.
     let scale = last.along.max(1e-9) / total;
     let mut along = 0.0;
@@ -144,7 +150,7 @@ fn seen_along(
     Ok(seen)
 }
 
-fn stands_out(profile: &Profile, tone: ChannelTone, response: &Response, width: f64) -> bool {
+fn stands_out(profile: &Profile, tone: ChannelTone, width: f64, typical: f64) -> bool {
     let middle = profile.values.len() as f64 / 2.0 - 0.5;
     let mean = |from: f64, to: f64| {
         let inside = profile.values.iter().enumerate().filter(|(i, v)| {
@@ -154,7 +160,7 @@ fn stands_out(profile: &Profile, tone: ChannelTone, response: &Response, width: 
         let (sum, n) = inside.fold((0.0, 0usize), |(s, n), (_, v)| (s + v, n + 1));
         (n > 0).then(|| sum / n as f64)
     };
-    let reach = (0.3 * width).max(0.5);
+    let reach = (CORE * width).max(0.5);
     let (near, far) = (0.6 * width + 0.5, width + 2.0);
     let (Some(inside), Some(left), Some(right)) = (mean(-reach, reach), mean(-far, -near), mean(near, far))
     else {
@@ -166,7 +172,7 @@ fn stands_out(profile: &Profile, tone: ChannelTone, response: &Response, width: 
         ChannelTone::Bright => lift,
         ChannelTone::EdgePair => lift.abs(),
     };
-    lift >= LEAST_SHARE * response.step_at(super::detect::cell_under(response, profile.at))
+    lift >= LEAST_SHARE * typical
 }
 
 /// Patches of empty cells that lines enclose; the one around everything, and those at the rim, are left out.
