@@ -151,16 +151,24 @@ pub fn detect(
         return Ok(Err("the image is smaller than two widths of the narrowest channel looked for".into()));
     }
     let area = image.valid_count() as f64;
+    let strength = |s: &Stretch| {
+        let sum: f64 = s.line.iter().map(|p| f64::from(response.excess[cell_under(&response, *p)])).sum();
+        sum / s.line.len().max(1) as f64
+    };
     let mut sketch = lines(&response, work)?;
     sketch.prune_spurs(settings.spur_half_widths);
-    sketch.drop_doubles(ISLAND);
-    sketch.drop_chance(|stretches| ln_chance(stretches, &response, area));
+    sketch.cut_unseen(image, settings.tone, &response, work)?;
+    sketch = sketch.fill_false_islands(image, &response, |cells| width_along(&response, cells), work)?;
+    sketch.prune_spurs(settings.spur_half_widths);
+    sketch.drop_doubles(ISLAND, strength, work)?;
+    sketch.drop_chance(|stretches| ln_chance(stretches, &response, area), work)?;
     sketch.prune_spurs(settings.spur_half_widths);
     sketch.bridge(settings.gap_widths, area, work)?;
     sketch.join_through();
+    sketch.drop_doubles(ISLAND, strength, work)?;
     sketch.prune_spurs(settings.spur_half_widths);
     sketch.drop_lone(settings.least_length_widths);
-    sketch.refine(&response);
+    sketch.refine(&response, work)?;
     sketch.centre(image, settings.tone, work)?;
     let network = network(&sketch, &response, area);
     let bridged = network.reaches.iter().filter(|r| r.origin == ReachOrigin::Bridged).count();
@@ -194,11 +202,13 @@ fn lines(response: &Response, work: &Work) -> Result<Sketch, Stopped> {
     grow(&mut mask, response, work)?;
     thin(&mut mask, columns, heights, |cell| crest[cell], false, work)?;
     thin(&mut mask, columns, heights, |_| false, true, work)?;
-    let width = |cells: &[usize]| {
-        let mut widths: Vec<f64> = cells.iter().map(|c| response.strip_at(*c).width).collect();
-        quantile::median(&mut widths)
-    };
-    Sketch::of_lines(&mask, columns, width, work)
+    Sketch::of_lines(&mask, columns, |cells| width_along(response, cells), work)
+}
+
+/// Typical width of a line of cells.
+fn width_along(response: &Response, cells: &[usize]) -> f64 {
+    let mut widths: Vec<f64> = cells.iter().map(|c| response.strip_at(*c).width).collect();
+    quantile::median(&mut widths)
 }
 
 /// Cells beyond the low threshold that are near the best across their strip, and those that are the best.
@@ -324,7 +334,7 @@ fn network(sketch: &Sketch, response: &Response, area: f64) -> Network {
 }
 
 /// The cell under a point.
-fn cell_under(response: &Response, p: Point) -> usize {
+pub(super) fn cell_under(response: &Response, p: Point) -> usize {
     let at = |v: f64, n: usize| (v.max(0.0) as usize).min(n - 1);
     at(p.y, response.z.height()) * response.z.width() + at(p.x, response.z.width())
 }

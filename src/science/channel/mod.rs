@@ -5,6 +5,7 @@ mod bridge;
 pub mod chance;
 mod cost;
 pub mod detect;
+mod evidence;
 pub mod graph;
 pub mod pen;
 mod profile;

@@ -1,6 +1,6 @@
 //! What does not belong: spurs of the thinning, and lone short pieces.
 
-use crate::ground::Point;
+use crate::ground::{Point, Stopped, Work};
 
 use super::graph::{Sketch, Stretch};
 
@@ -40,9 +40,17 @@ impl Sketch {
         }
     }
 
-    /// Of two stretches between the same nodes that stay within `widths` of their width of each other, the longer goes;
+    /// Of two stretches between the same nodes that stay within `widths` of their width of each other, the weaker goes;
     /// so does one that returns to its own node within that reach.
-    pub(super) fn drop_doubles(&mut self, widths: f64) {
+    ///
+    /// # Errors
+    /// [`Stopped`].
+    pub(super) fn drop_doubles(
+        &mut self,
+        widths: f64,
+        strength: impl Fn(&Stretch) -> f64,
+        work: &Work,
+    ) -> Result<(), Stopped> {
         loop {
             let mut gone = vec![false; self.stretches.len()];
             let mut by_ends = std::collections::BTreeMap::new();
@@ -53,6 +61,7 @@ impl Sketch {
                     .push(i);
             }
             for (ends, same) in by_ends {
+                work.advance(0)?;
                 for (k, &i) in same.iter().enumerate() {
                     let one = &self.stretches[i];
                     let near = (widths * one.width).max(LEAST_ISLAND);
@@ -65,13 +74,13 @@ impl Sketch {
                         let close =
                             |p: &Point, other: &Stretch| other.line.iter().any(|q| q.distance(*p) < near);
                         if one.line.iter().all(|p| close(p, two)) && two.line.iter().all(|p| close(p, one)) {
-                            gone[if one.length() >= two.length() { i } else { j }] = true;
+                            gone[if strength(one) < strength(two) { i } else { j }] = true;
                         }
                     }
                 }
             }
             if !gone.contains(&true) {
-                return;
+                return Ok(());
             }
             self.drop_where(&gone);
             self.join_through();
@@ -80,17 +89,23 @@ impl Sketch {
 
     /// Drops parts, and then free-ended branches, that noise would give too. `ln_chance` tells of how many chains of
     /// noise as good the image holds.
-    pub(super) fn drop_chance(&mut self, ln_chance: impl Fn(&[&Stretch]) -> f64) {
+    pub(super) fn drop_chance(
+        &mut self,
+        ln_chance: impl Fn(&[&Stretch]) -> f64,
+        work: &Work,
+    ) -> Result<(), Stopped> {
         let part = self.parts();
         let mut members: Vec<Vec<&Stretch>> = vec![Vec::new(); self.nodes.len()];
         for stretch in &self.stretches {
             members[part[stretch.ends[0]]].push(stretch);
         }
+        work.advance(0)?;
         let by_chance: Vec<bool> =
             members.iter().map(|m| !m.is_empty() && ln_chance(m) > GREATEST_CHANCE).collect();
         let gone: Vec<bool> = self.stretches.iter().map(|s| by_chance[part[s.ends[0]]]).collect();
         self.drop_where(&gone);
         loop {
+            work.advance(0)?;
             let at = self.at_nodes();
             let is_branch = |s: &Stretch| {
                 let [a, b] = s.ends.map(|n| at[n].len());
@@ -99,7 +114,7 @@ impl Sketch {
             let gone: Vec<bool> =
                 self.stretches.iter().map(|s| is_branch(s) && ln_chance(&[s]) > GREATEST_CHANCE).collect();
             if !gone.contains(&true) {
-                return;
+                return Ok(());
             }
             self.drop_where(&gone);
             self.join_through();

@@ -18,8 +18,12 @@ const ROUNDS: usize = 2;
 
 impl Sketch {
     /// Moves the inner points of every stretch to the crest across it, and smooths. Ends stay.
-    pub(super) fn refine(&mut self, response: &Response) {
+    ///
+    /// # Errors
+    /// [`Stopped`].
+    pub(super) fn refine(&mut self, response: &Response, work: &Work) -> Result<(), Stopped> {
         for stretch in &mut self.stretches {
+            work.advance(0)?;
             let scale = (SMOOTHING * stretch.width).max(LEAST_SMOOTHING);
             let first = smoothed(&stretch.line, scale);
             let reach = (0.25 * stretch.width).max(1.0);
@@ -42,6 +46,7 @@ impl Sketch {
                 .collect();
             stretch.line = spaced(&smoothed(&moved, scale), (0.125 * stretch.width).max(1.0));
         }
+        Ok(())
     }
 }
 

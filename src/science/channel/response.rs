@@ -252,6 +252,12 @@ impl Response {
         &self.strips[usize::from(self.strip[cell])]
     }
 
+    /// Height of the step at the banks of the best strip, in the unit of the image; 0 where nothing stands out.
+    pub fn step_at(&self, cell: usize) -> f64 {
+        let (z, low) = (f64::from(self.z.values()[cell]), self.strip_at(cell).low);
+        if z > low { f64::from(self.excess[cell]) * z / (z - low) } else { 0.0 }
+    }
+
     /// Takes the last strip's response where it stands out more than what is held.
     fn take(&mut self, found: &Found, factor: usize, work: &Work) -> Result<(), Stopped> {
         let number = self.strips.len() - 1;
