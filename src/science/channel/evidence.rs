@@ -130,12 +130,12 @@ fn seen_along(
     // Points of the stretch lie nearly evenly on the smoothed line.
     let scale = last.along.max(1e-9) / total;
     let mut along = 0.0;
-    for i in 0..seen.len() {
+    for (i, seen) in seen.iter_mut().enumerate() {
         if i > 0 {
             along += stretch.line[i].distance(stretch.line[i - 1]);
         }
         let k = found.partition_point(|p| p.along < along * scale - 0.5 * spacing).min(marks.len() - 1);
-        seen[i] = marks[k];
+        *seen = marks[k];
     }
     let least = (MISSING * stretch.width).max(LEAST_MISSING);
     let mut from = 0;
@@ -180,7 +180,9 @@ fn holes(mask: &[bool], columns: usize, work: &Work) -> Result<Vec<Vec<usize>>, 
     let rows = mask.len() / columns.max(1);
     let mut seen = mask.to_vec();
     let mut found = Vec::new();
-    let rim = |c: usize| c % columns == 0 || c % columns + 1 == columns || c < columns || c / columns + 1 == rows;
+    let rim = |c: usize| {
+        c.is_multiple_of(columns) || c % columns + 1 == columns || c < columns || c / columns + 1 == rows
+    };
     let starts = (0..mask.len()).filter(|c| rim(*c)).chain(0..mask.len());
     for (i, start) in starts.enumerate() {
         if i % 65_536 == 0 {
