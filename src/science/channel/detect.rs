@@ -152,7 +152,7 @@ pub fn detect(
     }
     let area = image.valid_count() as f64;
     let strength = |s: &Stretch| {
-        let sum: f64 = s.line.iter().map(|p| f64::from(response.excess[cell_under(&response, *p)])).sum();
+        let sum: f64 = s.line.iter().map(|p| response.step_at(cell_under(&response, *p))).sum();
         sum / s.line.len().max(1) as f64
     };
     let mut sketch = lines(&response, work)?;
@@ -162,12 +162,14 @@ pub fn detect(
     sketch.prune_spurs(settings.spur_half_widths);
     sketch.drop_doubles(ISLAND, strength, work)?;
     sketch.drop_chance(|stretches| ln_chance(stretches, &response, area), work)?;
+    sketch.drop_weak(strength);
     sketch.prune_spurs(settings.spur_half_widths);
     sketch.bridge(settings.gap_widths, area, work)?;
     sketch.join_through();
     sketch.drop_doubles(ISLAND, strength, work)?;
     sketch.prune_spurs(settings.spur_half_widths);
     sketch.drop_lone(settings.least_length_widths);
+    sketch.straighten_ends([image.width(), image.height()]);
     sketch.refine(&response, work)?;
     sketch.centre(image, settings.tone, work)?;
     let network = network(&sketch, &response, area);

@@ -17,7 +17,7 @@ const LEAST_SHARE: f64 = 0.4;
 const AVERAGED: f64 = 0.75;
 const LEAST_AVERAGED: f64 = 4.0;
 /// Stretches are cut where the tone is missing over so many widths, and pixels at least.
-const MISSING: f64 = 1.0;
+const MISSING: f64 = 0.5;
 const LEAST_MISSING: f64 = 4.0;
 /// Ground between two arms differs from them by this share of their response at least.
 const ISLAND_SHARE: f64 = 0.5;

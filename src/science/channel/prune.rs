@@ -6,6 +6,10 @@ use super::graph::{Sketch, Stretch};
 
 /// ln of the greatest number of noise chains as good in the whole image, for a part or a branch to stay: 0.01.
 const GREATEST_CHANCE: f64 = -4.6;
+/// Links between junctions are judged when longer than so many widths.
+const LINK_WIDTHS: f64 = 4.0;
+/// Stretches weaker than this share of the strength that half of the length reaches are texture.
+const WEAKEST: f64 = 0.25;
 /// Arms nearer than this are not told apart, pixels.
 const LEAST_ISLAND: f64 = 6.0;
 
@@ -87,7 +91,7 @@ impl Sketch {
         }
     }
 
-    /// Drops parts, and then free-ended branches, that noise would give too. `ln_chance` tells of how many chains of
+    /// Drops parts, and then free-ended branches and long links, that noise would give too. `ln_chance` tells of how many chains of
     /// noise as good the image holds.
     pub(super) fn drop_chance(
         &mut self,
@@ -109,7 +113,8 @@ impl Sketch {
             let at = self.at_nodes();
             let is_branch = |s: &Stretch| {
                 let [a, b] = s.ends.map(|n| at[n].len());
-                (a == 1) != (b == 1) && a.max(b) >= 3
+                let is_free = (a == 1) != (b == 1) && a.max(b) >= 3;
+                is_free || (a.min(b) >= 3 && s.length() > LINK_WIDTHS * s.width)
             };
             let gone: Vec<bool> =
                 self.stretches.iter().map(|s| is_branch(s) && ln_chance(&[s]) > GREATEST_CHANCE).collect();
@@ -119,6 +124,24 @@ impl Sketch {
             self.drop_where(&gone);
             self.join_through();
         }
+    }
+
+    /// Drops stretches whose `strength` is below a share of what half of the length found reaches: a network is of one
+    /// kind, the texture of the ground is weaker.
+    pub(super) fn drop_weak(&mut self, strength: impl Fn(&Stretch) -> f64) {
+        let mut by: Vec<(f64, f64)> = self.stretches.iter().map(|s| (strength(s), s.length())).collect();
+        let strengths: Vec<f64> = by.iter().map(|s| s.0).collect();
+        by.sort_by(|a, b| b.0.total_cmp(&a.0));
+        let half = 0.5 * by.iter().map(|s| s.1).sum::<f64>();
+        let mut sum = 0.0;
+        let typical = by.iter().find(|s| {
+            sum += s.1;
+            sum >= half
+        });
+        let Some(&(typical, _)) = typical else { return };
+        let gone: Vec<bool> = strengths.iter().map(|s| *s < WEAKEST * typical).collect();
+        self.drop_where(&gone);
+        self.join_through();
     }
 
     /// Drops each part whose found length is below `widths` of its mean width, and parts without any found line.

@@ -13,6 +13,8 @@ const LEAST_SMOOTHING: f64 = 1.5;
 const SMOOTHING: f64 = 0.25;
 /// Width from which the banks tell the middle better than the response does, pixels.
 const RESOLVED: f64 = 5.0;
+/// Free ends hook over so many widths.
+const HOOK: f64 = 0.6;
 /// How often lines are moved to the middle.
 const ROUNDS: usize = 2;
 
@@ -48,6 +50,71 @@ impl Sketch {
         }
         Ok(())
     }
+}
+
+impl Sketch {
+    /// Free ends of thinned lines hook into a corner of the band: their last bit is laid in the direction before it.
+    pub(super) fn straighten_ends(&mut self, size: [usize; 2]) {
+        let at = self.at_nodes();
+        for s in 0..self.stretches.len() {
+            for end in 0..2 {
+                let node = self.stretches[s].ends[end];
+                if at[node].len() != 1 {
+                    continue;
+                }
+                let stretch = &mut self.stretches[s];
+                if end == 0 {
+                    stretch.line.reverse();
+                }
+                if let Some(to) = straightened(&mut stretch.line, stretch.width, size) {
+                    self.nodes[node] = to;
+                }
+                if end == 0 {
+                    stretch.line.reverse();
+                }
+            }
+        }
+    }
+}
+
+/// Lays the last bit of a line straight and tells where it ends; leaves short lines alone.
+fn straightened(line: &mut Vec<Point>, width: f64, size: [usize; 2]) -> Option<Point> {
+    let last = *line.last()?;
+    let (trim, aim) = (HOOK * width + 1.0, (1.5 * width).max(6.0));
+    let mut run = 0.0;
+    let mut keep = None;
+    let mut from = None;
+    for i in (0..line.len() - 1).rev() {
+        run += line[i].distance(line[i + 1]);
+        if keep.is_none() && run >= trim {
+            keep = Some(i);
+        }
+        if run >= trim + aim {
+            from = Some(i);
+            break;
+        }
+    }
+    let (keep, from) = (keep?, from?);
+    let (a, b) = (line[from], line[keep]);
+    let length = a.distance(b);
+    if length <= 0.0 {
+        return None;
+    }
+    let (ux, uy) = ((b.x - a.x) / length, (b.y - a.y) / length);
+    let ahead = ((last.x - b.x) * ux + (last.y - b.y) * uy).max(0.0);
+    let to = Point::new(
+        (b.x + ahead * ux).clamp(0.0, size[0] as f64),
+        (b.y + ahead * uy).clamp(0.0, size[1] as f64),
+    );
+    line.truncate(keep + 1);
+    if to.distance(b) > 0.0 {
+        let count = to.distance(b).ceil() as usize;
+        for i in 1..=count {
+            let t = i as f64 / count as f64;
+            line.push(Point::new(b.x + t * (to.x - b.x), b.y + t * (to.y - b.y)));
+        }
+    }
+    line.last().copied()
 }
 
 impl Sketch {

@@ -3,7 +3,7 @@
 use crate::ground::{
     Grid, Method, Network, Point, Polyline, Reach, Read, Source, Station, Stopped, Symbol, Width, Work,
 };
-use crate::numeric::distance;
+use crate::numeric::{distance, quantile};
 
 use super::detect::ChannelTone;
 use super::profile::{Banks, Profile, profiles};
@@ -58,6 +58,8 @@ pub static METHOD: Method = Method {
 
 /// Stations in a length of one width.
 const STATIONS_A_WIDTH: f64 = 2.0;
+/// How often a reach is measured again about the width found.
+const TRIES: usize = 4;
 
 /// Gives each reach stations about every half width (at least a pixel apart) with banks and width, and the reach
 /// its mean width. It begins at the width the reach has, and where it has none at the most telling up to `widest_px`. Pixel coordinates of `image`; take the image itself, not its logarithm. Stations already there
@@ -98,24 +100,36 @@ fn along(
         (reach.stations, reach.width) = (Vec::new(), None);
         return Ok(());
     };
+    let mut about = about;
+    let mut tries = 0;
+    let (found, widths, stations) = loop {
+        let half = averaged(about);
+        let found = profiles(image, &reach.line.0, (about / STATIONS_A_WIDTH).max(1.0), about, half, work)?;
+        let mut widths = Vec::new();
+        let mut stations = Vec::new();
+        for Profile { at, along, normal, values, step } in &found {
+            let open = junctions.iter().any(|j| j.distance(*at) < 0.75 * about);
+            let banks = if open { None } else { Banks::of(values, *step, about, tone) };
+            let place = |d: f64| Point::new(at.x + d * normal.0, at.y + d * normal.1);
+            widths.extend(banks.map(|b| b.width()));
+            stations.push(Station {
+                at: *at,
+                along: *along,
+                width: banks.map(|b| b.width()),
+                // The normal points to the right of the way down.
+                banks: banks.map(|b| [place(b.left), place(b.right)]),
+                ..Station::default()
+            });
+        }
+        // The search lies about the width given: where that was off, it is done again about what was found.
+        let middle = if widths.is_empty() { about } else { quantile::median(&mut widths.clone()) };
+        tries += 1;
+        if tries > TRIES || (middle - about).abs() <= 0.1 * about {
+            break (found, widths, stations);
+        }
+        about = middle;
+    };
     let half = averaged(about);
-    let found = profiles(image, &reach.line.0, (about / STATIONS_A_WIDTH).max(1.0), about, half, work)?;
-    let mut widths = Vec::new();
-    let mut stations = Vec::new();
-    for Profile { at, along, normal, values, step } in &found {
-        let open = junctions.iter().any(|j| j.distance(*at) < 0.75 * about);
-        let banks = if open { None } else { Banks::of(values, *step, about, tone) };
-        let place = |d: f64| Point::new(at.x + d * normal.0, at.y + d * normal.1);
-        widths.extend(banks.map(|b| b.width()));
-        stations.push(Station {
-            at: *at,
-            along: *along,
-            width: banks.map(|b| b.width()),
-            // The normal points to the right of the way down.
-            banks: banks.map(|b| [place(b.left), place(b.right)]),
-            ..Station::default()
-        });
-    }
     let count = widths.len() as f64;
     reach.width = (widths.len() > 1).then(|| {
         let mean = widths.iter().sum::<f64>() / count;
