@@ -77,7 +77,12 @@ fn spacing_of_parallel_crests() {
     let got = spacing(&lines, &patch, PLAIN, settings, &Work::quiet()).unwrap();
     assert_close!(got.quartiles[1].unwrap(), 20.0, 1e-9, "median");
     assert_close!(got.stereology.unwrap(), 20.0, 1e-9, "area over length");
-    assert_close!(got.random_direction.unwrap() / got.stereology.unwrap(), std::f64::consts::FRAC_PI_2, 1e-9, "π/2");
+    assert_close!(
+        got.random_direction.unwrap() / got.stereology.unwrap(),
+        std::f64::consts::FRAC_PI_2,
+        1e-9,
+        "π/2"
+    );
     assert_eq!(got.transects.whole, 2 * 9 * 60);
     assert_eq!(got.transects.cut, 2 * 60);
 }
