@@ -25,6 +25,10 @@ pub const ELEVATION: &str = "sorrel-reach-elevation.tif";
 pub const REACH_MAST: &str = "reach-mast.csv";
 pub const CORRIDOR_MAST: &str = "corridor-mast.csv";
 
+/// A pixel of the mosaic on each dune trough that is proposed as a channel.
+const DUNE_TROUGHS: [[f64; 2]; 5] =
+    [[641.6, 504.2], [653.8, 524.0], [683.0, 541.0], [630.0, 554.5], [644.8, 571.4]];
+
 const MOSAIC_ID: Id = Id(1);
 const ELEVATION_ID: Id = Id(2);
 const REACH_MAST_ID: Id = Id(3);
@@ -150,7 +154,9 @@ fn add_networks(sheet: &mut Sheet) {
         source: NetworkSource::Elevation(routed),
         ..from_elevation
     });
-    let seen = FromImage { elevation: Some(ELEVATION_ID), ..FromImage::default() };
+    // Troughs of the long dunes are dark strips too: struck out by eye, as a user would.
+    let struck = DUNE_TROUGHS.map(Point::from).to_vec();
+    let seen = FromImage { elevation: Some(ELEVATION_ID), struck, ..FromImage::default() };
     let on_image = NetworkEntry::from_image(sheet.fresh_id(), "Dry channels, mosaic", MOSAIC_ID);
     sheet.networks.push(NetworkEntry {
         within: Some(ground),
