@@ -164,7 +164,8 @@ pub fn detect(
     sketch.drop_chance(|stretches| ln_chance(stretches, &response, area), work)?;
     sketch.drop_weak(strength);
     sketch.prune_spurs(settings.spur_half_widths);
-    sketch.bridge(settings.gap_widths, area, work)?;
+    let width_at = |p: Point| response.strip_at(cell_under(&response, p)).width;
+    sketch.bridge(settings.gap_widths, area, width_at, work)?;
     sketch.join_through();
     sketch.drop_doubles(ISLAND, strength, work)?;
     sketch.prune_spurs(settings.spur_half_widths);
