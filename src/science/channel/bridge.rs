@@ -80,7 +80,8 @@ impl Sketch {
                 if stretch == end.stretch {
                     continue;
                 }
-                let way = self.way(&ends, i, (stretch, vertex), &by_node, &width_at, gap_widths, (lines, open));
+                let way =
+                    self.way(&ends, i, (stretch, vertex), &by_node, &width_at, gap_widths, (lines, open));
                 if let Some(way) = way.filter(|w| best.as_ref().is_none_or(|b| w.cost < b.cost)) {
                     best = Some(way);
                 }

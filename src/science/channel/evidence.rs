@@ -180,7 +180,8 @@ fn holes(mask: &[bool], columns: usize, work: &Work) -> Result<Vec<Vec<usize>>, 
     let rows = mask.len() / columns.max(1);
     let mut seen = mask.to_vec();
     let mut found = Vec::new();
-    let rim = |c: usize| c % columns == 0 || c % columns + 1 == columns || c < columns || c / columns + 1 == rows;
+    let rim =
+        |c: usize| c % columns == 0 || c % columns + 1 == columns || c < columns || c / columns + 1 == rows;
     let starts = (0..mask.len()).filter(|c| rim(*c)).chain(0..mask.len());
     for (i, start) in starts.enumerate() {
         if i % 65_536 == 0 {

@@ -6,6 +6,7 @@ pub mod chance;
 mod cost;
 pub mod detect;
 mod evidence;
+mod filter;
 pub mod graph;
 pub mod pen;
 mod profile;
