@@ -46,11 +46,17 @@ struct Way {
 
 impl Sketch {
     /// Carries open ends on, each at most once, the cheapest ways first. `area` is that of the image, square
-    /// pixels: it tells how often an end would be met by chance.
+    /// pixels: it tells how often an end would be met by chance; `width_at` tells the width at a place of a line.
     ///
     /// # Errors
     /// [`Stopped`].
-    pub(super) fn bridge(&mut self, gap_widths: f64, area: f64, work: &Work) -> Result<(), Stopped> {
+    pub(super) fn bridge(
+        &mut self,
+        gap_widths: f64,
+        area: f64,
+        width_at: impl Fn(Point) -> f64,
+        work: &Work,
+    ) -> Result<(), Stopped> {
         let ends = self.open_ends();
         let mut points: HashMap<(i64, i64), Vec<(usize, usize)>> = HashMap::new();
         for (s, stretch) in self.stretches.iter().enumerate() {
@@ -74,7 +80,8 @@ impl Sketch {
                 if stretch == end.stretch {
                     continue;
                 }
-                let way = self.way(&ends, i, (stretch, vertex), &by_node, gap_widths, (lines, open));
+                let way =
+                    self.way(&ends, i, (stretch, vertex), &by_node, &width_at, gap_widths, (lines, open));
                 if let Some(way) = way.filter(|w| best.as_ref().is_none_or(|b| w.cost < b.cost)) {
                     best = Some(way);
                 }
@@ -115,6 +122,7 @@ impl Sketch {
         i: usize,
         (stretch, vertex): (usize, usize),
         by_node: &HashMap<usize, usize>,
+        width_at: &impl Fn(Point) -> f64,
         gap_widths: f64,
         (lines, open): (f64, f64),
     ) -> Option<Way> {
@@ -129,7 +137,8 @@ impl Sketch {
             _ => None,
         };
         let facing = node.and_then(|n| by_node.get(&n)).map(|e| &ends[*e]);
-        let into = 0.5 * other.width + 1.5 * end.width + 1.0;
+        let into = 0.5 * other.width.min(width_at(to)) + 1.5 * end.width + 1.0;
+        let into = into.min(0.5 * end.length + LEAST_AIM);
         if facing.is_none() && gap <= into && turn <= TURN_INTO {
             let cost = 0.5 * gap / into + (turn / TURN_INTO).powi(2);
             return Some(Way { end: i, stretch, vertex, cost, bridge: None });
@@ -247,7 +256,7 @@ mod tests {
                 line((0.0, 50.0), (100.0, 50.0), 4.0, [0, 1]),
                 line((118.0, 50.0 + shift), (220.0, 50.0 + shift), 4.0, [2, 3]),
             ]);
-            sketch.bridge(6.0, 1e5, &Work::quiet()).unwrap();
+            sketch.bridge(6.0, 1e5, |_| f64::INFINITY, &Work::quiet()).unwrap();
             sketch.stretches.iter().filter_map(|s| s.bridge).collect::<Vec<_>>()
         };
         assert!(pair(2.0).len() == 1 && pair(2.0)[0] > 0.9, "{:?}", pair(2.0));
@@ -260,7 +269,7 @@ mod tests {
             line((0.0, 50.0), (200.0, 50.0), 20.0, [0, 1]),
             line((80.0, 150.0), (100.0, 62.0), 4.0, [2, 3]),
         ]);
-        sketch.bridge(6.0, 1e5, &Work::quiet()).unwrap();
+        sketch.bridge(6.0, 1e5, |_| f64::INFINITY, &Work::quiet()).unwrap();
         sketch.join_through();
         assert_eq!(
             (sketch.stretches.len(), sketch.stretches.iter().filter(|s| s.bridge.is_some()).count()),

@@ -17,7 +17,7 @@ pub static METHOD: Method = Method {
     id: "channel.proposal",
     name: "Proposal of a channel network",
     question: "Which places of the response belong to one channel network, and how sure is each reach?",
-    formula: "seeds z > t grow over z > 0.7 t;  simple cells go, lowest response first, crests stay;  F = N p (3p)^{n − 1}, p = M P(all four > z̄), n = length/(4√π s);  confidence 1/(1 + F);  bridges: exp(−2τg/π) to a line, exp(−η g² ψ₁ψ₂/π) to an end",
+    formula: "seeds z > t grow over z > 0.7 t;  simple cells go, lowest response first, crests stay;  lines stay where the tone differs from both sides by 0.4 of the step, islands where by 0.5;  F = N p (3p)^{n − 1}, p = M P(all four > z̄), n = length/(4√π s);  confidence 1/(1 + F);  bridges: exp(−2τg/π) to a line, exp(−η g² ψ₁ψ₂/π) to an end",
     symbols: &[
         Symbol { symbol: "z̄", meaning: "mean response over noise along the reach", unit: "1" },
         Symbol { symbol: "N", meaning: "independent places of the image", unit: "1" },
@@ -40,7 +40,9 @@ pub static METHOD: Method = Method {
         "lines and ends that have nothing to do with each other lie at random",
     ],
     limits: &[
-        "the confidence tells a strip from noise, not a channel from another strip (a dune trough, a road, a fault)",
+        "the confidence is a score: it tells a strip from noise, not a channel from another strip (a dune trough, a road, a fault, a row of clouds)",
+        "stretches below a quarter of the contrast that half of the length reaches are left out as texture: faint channels beside strong ones are missed",
+        "under radar, channels along the look direction show no lit and shaded bank: what is missing there may still exist",
         "channels nearer to each other than about their width become one",
     ],
     sources: &[
@@ -164,7 +166,8 @@ pub fn detect(
     sketch.drop_chance(|stretches| ln_chance(stretches, &response, area), work)?;
     sketch.drop_weak(strength);
     sketch.prune_spurs(settings.spur_half_widths);
-    sketch.bridge(settings.gap_widths, area, work)?;
+    let width_at = |p: Point| response.strip_at(cell_under(&response, p)).width;
+    sketch.bridge(settings.gap_widths, area, width_at, work)?;
     sketch.join_through();
     sketch.drop_doubles(ISLAND, strength, work)?;
     sketch.prune_spurs(settings.spur_half_widths);

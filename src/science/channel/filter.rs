@@ -1,5 +1,4 @@
-//! The response of one width on a tile of the image: edges steered to every direction, banks held against each
-//! other.
+//! The kernels of one width, and what they give over a tile.
 
 use std::f64::consts::TAU;
 
@@ -9,10 +8,8 @@ use crate::numeric::separable::{across_rows, along_row};
 use crate::numeric::shift::{add_two, mix_two};
 
 use super::detect::ChannelTone;
-use super::response::{DIRECTIONS, Strip, TILE, direction};
+use super::response::{APART, DIRECTIONS, Strip, TILE, direction};
 
-/// How far before and behind a place its banks are sampled, over the scale along.
-pub(super) const APART: f64 = 1.25;
 /// Where the tone beside the strip is taken, over half the width, and how far the middle must stand out from it at
 /// least, over the response (0.56 for an ideal strip).
 const BESIDE: f64 = 4.0 / 3.0;
@@ -48,7 +45,7 @@ pub(super) struct Tile {
 }
 
 impl Filter {
-    pub fn new(strip: &Strip, tone: ChannelTone) -> Self {
+    pub(super) fn new(strip: &Strip, tone: ChannelTone) -> Self {
         let step = if strip.sigma >= 1.4 { 2 } else { 1 };
         let reach = (TAPS_TO * strip.along / step as f64).round().max(1.0) as usize;
         let bell = |k: usize| (-0.5 * ((k * step) as f64 / strip.along).powi(2)).exp();
@@ -69,7 +66,7 @@ impl Filter {
         }
     }
 
-    pub fn tile(&self, grid: &Grid<f32>, corner: (usize, usize)) -> Tile {
+    pub(super) fn tile(&self, grid: &Grid<f32>, corner: (usize, usize)) -> Tile {
         let width = TILE.min(grid.width() - corner.0);
         let height = TILE.min(grid.height() - corner.1);
         let [gx, gy, level] = self.gradient(grid, corner, width, height);

@@ -24,7 +24,6 @@ impl Sketch {
                 if meeting.iter().any(|s| gone[*s]) {
                     continue;
                 }
-                let widest = meeting.iter().map(|s| self.stretches[*s].width).fold(0.0, f64::max);
                 let is_free = |s: &usize| self.stretches[*s].ends.iter().any(|n| at[*n].len() == 1);
                 let shortest = meeting
                     .iter()
@@ -32,7 +31,9 @@ impl Sketch {
                     .filter(is_free)
                     .map(|s| (self.stretches[s].length(), s))
                     .min_by(|a, b| a.0.total_cmp(&b.0).then(a.1.cmp(&b.1)));
-                if let Some((_, spur)) = shortest.filter(|s| s.0 < half_widths * 0.5 * widest) {
+                let Some((length, spur)) = shortest else { continue };
+                let widest = meeting.iter().map(|s| self.stretches[*s].width).fold(0.0, f64::max);
+                if length < half_widths * 0.5 * widest && !self.goes_on(spur, meeting) {
                     gone[spur] = true;
                 }
             }
@@ -42,6 +43,16 @@ impl Sketch {
             self.drop_where(&gone);
             self.join_through();
         }
+    }
+
+    /// Whether a stretch is as wide as the widest other of a meeting and twice as wide as the next: it is the trunk.
+    fn goes_on(&self, stretch: usize, meeting: &[usize]) -> bool {
+        let mut others: Vec<f64> =
+            meeting.iter().filter(|s| **s != stretch).map(|s| self.stretches[*s].width).collect();
+        others.sort_by(|a, b| b.total_cmp(a));
+        let width = self.stretches[stretch].width;
+        let is_long = self.stretches[stretch].length() >= width;
+        is_long && matches!(others[..], [first, second, ..] if width >= 0.7 * first && width >= 2.0 * second)
     }
 
     /// Of two stretches between the same nodes that stay within `widths` of their width of each other, the weaker goes;

@@ -11,14 +11,14 @@ use crate::numeric::separable::smooth_valid;
 use crate::numeric::tail::normal_above;
 
 use super::detect::ChannelTone;
-use super::filter::{APART, Filter, Tile};
+use super::filter::{Filter, Tile};
 
 /// The record of the strip response.
 pub static METHOD: Method = Method {
     id: "channel.strip-response",
     name: "Strip response in many widths",
     question: "Where does the image show a strip that is darker or brighter than both of its sides?",
-    formula: "R_w(x, θ) = min over ± of {E(x + ½w n ± ¾w e), −E(x − ½w n ± ¾w e)},  E = √(2π) σ ∂_n (G_{σ,s} ∗ I),  σ = w/3, s = 0.6 w;  z = R_w/sd(E);  M P(all four z > t; ρ) = α",
+    formula: "R_w(x, θ) = min over ± of {E(x + ½w n ± ¾w e), −E(x − ½w n ± ¾w e)},  E = √(2π) σ ∂_n (G_{σ,s} ∗ I),  σ = w/3, s = 0.6 w;  R_w = 0 where |I − mean beside| < R_w/4;  z = R_w/sd(E);  M P(all four z > t; ρ) = α",
     symbols: &[
         Symbol { symbol: "w", meaning: "width of the strip", unit: "px" },
         Symbol {
@@ -82,6 +82,8 @@ const ALONG: f64 = 0.6;
 /// Least σ and least scale along, full-resolution pixels.
 const LEAST_SIGMA: f64 = 0.8;
 const LEAST_ALONG: f64 = 1.8;
+/// How far before and behind a place its banks are sampled, over the scale along.
+pub(super) const APART: f64 = 1.25;
 /// Ratio of neighbouring widths.
 const RATIO: f64 = 1.5;
 /// Directions tried over half a circle; set so that a quarter turn of the image maps them onto each other.
@@ -161,7 +163,7 @@ impl Strip {
     }
 
     /// Half the width, cells.
-    pub fn half(&self) -> f64 {
+    pub(super) fn half(&self) -> f64 {
         0.5 * self.width / self.reduced as f64
     }
 
