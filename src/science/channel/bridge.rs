@@ -81,7 +81,7 @@ impl Sketch {
                     continue;
                 }
                 let way =
-                    self.way(&ends, i, (stretch, vertex), &by_node, &width_at, gap_widths, (lines, open));
+                    self.way((&ends, &by_node), i, (stretch, vertex), &width_at, gap_widths, (lines, open));
                 if let Some(way) = way.filter(|w| best.as_ref().is_none_or(|b| w.cost < b.cost)) {
                     best = Some(way);
                 }
@@ -118,10 +118,9 @@ impl Sketch {
     /// The way from end `i` to a line point; `None` when it is too far or too crooked.
     fn way(
         &self,
-        ends: &[End],
+        (ends, by_node): (&[End], &HashMap<usize, usize>),
         i: usize,
         (stretch, vertex): (usize, usize),
-        by_node: &HashMap<usize, usize>,
         width_at: &impl Fn(Point) -> f64,
         gap_widths: f64,
         (lines, open): (f64, f64),
