@@ -191,16 +191,9 @@ fn network(
         };
         let stations = if with_stations { way.iter().map(station).collect() } else { Vec::new() };
         reaches.push(Reach {
-            from,
-            to,
-            length: line.length(),
-            line,
             sense: FlowSense::of_elevation(),
-            order: None,
-            width: None,
             stations,
-            origin: ReachOrigin::Elevation,
-            confidence: 1.0,
+            ..Reach::drawn(from, to, line, ReachOrigin::Elevation)
         });
     }
     Ok(Network { nodes: tree.nodes.iter().map(node).collect(), reaches }.ordered())
