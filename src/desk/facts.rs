@@ -430,7 +430,7 @@ pub fn obstacle(finding: &ObstacleFinding) -> Vec<Fact> {
 mod tests {
     use super::{spacing, trend};
     use crate::ground::LengthUnit;
-    use crate::study::{Id, PatchFinding, SpectrumFinding, TrendFinding};
+    use crate::study::{Id, PatchFinding, PatternFinding, SpectrumFinding, TrendFinding};
 
     #[test]
     fn every_method_that_a_fact_names_has_a_record() {
@@ -451,6 +451,7 @@ mod tests {
             cautions: Vec::new(),
             birth: Vec::new(),
             crests: Err("not traced".into()),
+            pattern: PatternFinding::default(),
             obstacles: None,
         };
         let facts = trend(&finding).into_iter().chain(spacing(&finding));

@@ -208,6 +208,8 @@ fn findings(model: &Model) -> Findings {
             .filter_map(|n| session.results.network(n.id).map(|finding| (**finding).clone()))
             .collect(),
         together: session.results.together().cloned().unwrap_or_default(),
+        recoveries: Vec::new(),
+        comparisons: Vec::new(),
         failures: session.results.failures(sheet),
     }
 }

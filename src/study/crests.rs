@@ -1,13 +1,13 @@
 //! The crest lines of a patch, and what they say: length, density, spacing, defects.
 
-use crate::ground::{Caution, LengthUnit, Polyline, Stopped, Work};
+use crate::ground::{Azimuth, Caution, LengthUnit, Point, Polyline, Stopped, Work};
 use crate::science::crest::{
-    CrestLine, CrestModel, CrestNumbers, CrestSettings, Defects, SpacingOnGround, SpacingSettings, defects,
-    detect, numbers, spacing,
+    self, CrestLine, CrestModel, CrestNumbers, Defects, Fit, Forks, Junction, SpacingOnGround,
+    SpacingSettings, defects, detect, forks, numbers, spacing,
 };
 
 use super::window::PatchPixels;
-use super::{ImageKind, RasterEntry, SpectrumFinding, TrendFinding};
+use super::{ImageKind, Patch, RasterEntry, Sheet, SpectrumFinding, TrendFinding};
 
 /// Cells traced at the most: tracing holds several grids of that size.
 const MOST_CELLS: usize = 1 << 24;
@@ -21,14 +21,28 @@ const DISAGREE: f64 = 1.5;
 pub struct CrestsFinding {
     /// In full-resolution pixels.
     pub lines: Vec<CrestLine>,
+    /// Where they meet; places in full-resolution pixels.
+    pub junctions: Vec<Junction>,
     /// What a crest looks like here.
     pub model: CrestModel,
+    /// How well each model fits, best first.
+    pub fits: Vec<Fit>,
     /// Scale of the derivatives, pixels of the measured image.
     pub scale_px: f64,
     /// Lengths in the unit of the patch, as in all that follows.
     pub numbers: CrestNumbers,
     pub spacing: SpacingOnGround,
     pub defects: Defects,
+    /// Length of crest by direction, in bins of `rose_bin_deg` from 0°; sums to 1.
+    pub rose: Vec<f64>,
+    pub rose_bin_deg: f64,
+    /// Which way forks open: counted toward `forks_toward`; `None` without forks or trend.
+    pub forks: Option<Forks>,
+    pub forks_toward: Option<Azimuth>,
+    /// The spacing by the spectrum, by transects and by area over length, as far as known.
+    pub spacings: [Option<f64>; 3],
+    /// Edits of the user that found no line, in full-resolution pixels.
+    pub lost_edits: Vec<Point>,
     pub cautions: Vec<Caution>,
 }
 
@@ -37,6 +51,8 @@ pub struct CrestsFinding {
 /// # Errors
 /// [`Stopped`].
 pub fn study(
+    sheet: &Sheet,
+    patch: &Patch,
     pixels: &PatchPixels,
     entry: &RasterEntry,
     trend: &TrendFinding,
@@ -54,10 +70,20 @@ pub fn study(
         return Ok(Err("the patch has no place on the ground".into()));
     };
     let fine = frame.pixel_size().into_iter().fold(f64::INFINITY, f64::min);
-    let settings = CrestSettings {
+    let (said, wanted) = (&patch.crests, &sheet.settings.crest);
+    let factor = pixels.factor as f64;
+    let reduced = |p: Point| Point::new((p.x - pixels.origin.x) / factor, (p.y - pixels.origin.y) / factor);
+    let settings = crest::CrestSettings {
+        model: said.model.or(wanted.model),
+        scale_px: wanted.scale_px,
         spacing_px: spectrum.spacing.filter(|_| spectrum.defined).map(|s| s / fine),
         logarithm: entry.kind == ImageKind::Radar,
-        ..CrestSettings::default()
+        excluded: said.masks.iter().map(|mask| mask.map(reduced)).collect(),
+        tone_limits: said.tone_limits,
+        significance: wanted.significance,
+        bridge_scales: wanted.bridge_scales,
+        least_length_scales: wanted.least_length_scales,
+        tolerance_px: wanted.tolerance_px,
     };
     let found = detect(&pixels.image, &pixels.outline, &settings, work)?;
     let scale_px = found.scales_px.first().copied().unwrap_or(0.0);
@@ -85,20 +111,33 @@ pub fn study(
             ),
         ));
     }
-    let factor = pixels.factor as f64;
-    let full = |line: CrestLine| CrestLine {
-        line: Polyline(
-            line.line
-                .0
-                .iter()
-                .map(|p| {
-                    crate::ground::Point::new(pixels.origin.x + p.x * factor, pixels.origin.y + p.y * factor)
-                })
-                .collect(),
-        ),
+    let rose_bin_deg = sheet.settings.statistics.rose_bin_deg;
+    let rose = crest::length_rose(&found.lines, frame, rose_bin_deg);
+    let forks_toward = trend.axis.map(|axis| axis.azimuth()).filter(|_| !found.junctions.is_empty());
+    let reach = 8.0 * scale_px * fine;
+    let polarity = forks_toward.map(|toward| forks(&found.lines, &found.junctions, frame, toward, reach));
+    let full = |p: &Point| Point::new(pixels.origin.x + p.x * factor, pixels.origin.y + p.y * factor);
+    let full_line = |line: CrestLine| CrestLine {
+        line: Polyline(line.line.0.iter().map(full).collect()),
         bridged_px: line.bridged_px * factor,
         ..line
     };
-    let lines = found.lines.into_iter().map(full).collect();
-    Ok(Ok(CrestsFinding { lines, model: found.model, scale_px, numbers, spacing, defects, cautions }))
+    let junctions = found.junctions.iter().map(|j| Junction { at: full(&j.at), ..j.clone() }).collect();
+    Ok(Ok(CrestsFinding {
+        lines: found.lines.into_iter().map(full_line).collect(),
+        junctions,
+        model: found.model,
+        fits: found.fits,
+        scale_px,
+        spacings: [by_spectrum, spacing.quartiles[1], spacing.stereology],
+        numbers,
+        spacing,
+        defects,
+        rose,
+        rose_bin_deg,
+        forks: polarity,
+        forks_toward,
+        lost_edits: Vec::new(),
+        cautions,
+    }))
 }

@@ -4,7 +4,7 @@
 use serde_json::{Value, json};
 use sha2::{Digest as _, Sha256};
 
-use super::{NetworkEntry, Patch, RasterEntry, Sheet, WindChoice, WindEntry};
+use super::{Comparison, NetworkEntry, Patch, RasterEntry, Sheet, WindChoice, WindEntry};
 
 /// SHA-256 of the sheet without what only changes how it looks (tone, notes) and without folders, so
 /// that a colleague's copy elsewhere has the same fingerprint.
@@ -18,7 +18,8 @@ pub fn of_sheet(sheet: &Sheet) -> String {
         winds,
         sheet.settings,
         sheet.obstacles,
-        sheet.networks
+        sheet.networks,
+        sheet.comparisons
     ]))
 }
 
@@ -49,6 +50,8 @@ pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
         patch.stated_axis,
         patch.cover,
         patch.sense,
+        patch.crests,
+        patch.populations,
         sheet.raster(patch.raster).map(raster),
         patch.winds == WindChoice::Nearest,
         winds,
@@ -80,6 +83,17 @@ pub fn of_terrain(sheet: &Sheet, entry: &NetworkEntry) -> String {
     digest(&json!([sheet.raster(entry.raster).map(raster), entry.within, closed, how]))
 }
 
+/// SHA-256 of all that makes what synthetic bedforms in a patch say.
+pub fn of_recovery(sheet: &Sheet, patch: &Patch) -> String {
+    digest(&json!([of_patch(sheet, patch), sheet.settings.recovery]))
+}
+
+/// SHA-256 of all that makes a comparison: its patch, the second raster, the settings.
+pub fn of_comparison(sheet: &Sheet, entry: &Comparison) -> String {
+    let patch = sheet.patch(entry.patch).map(|patch| of_patch(sheet, patch));
+    digest(&json!([patch, entry, sheet.raster(entry.raster).map(raster), sheet.settings.compare]))
+}
+
 /// SHA-256 of all that makes a record's finding.
 pub fn of_wind(sheet: &Sheet, entry: &WindEntry) -> String {
     let v = &sheet.settings.verdict;
@@ -89,7 +103,7 @@ pub fn of_wind(sheet: &Sheet, entry: &WindEntry) -> String {
 /// The settings that bear on patches; those of channels do not.
 fn of_bedforms(sheet: &Sheet) -> Value {
     let s = &sheet.settings;
-    json!([s.trend, s.spectrum, s.statistics, s.wind, s.verdict, s.obstacle, s.backwards])
+    json!([s.trend, s.spectrum, s.statistics, s.wind, s.verdict, s.obstacle, s.backwards, s.crest])
 }
 
 fn raster(r: &RasterEntry) -> Value {

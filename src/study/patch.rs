@@ -16,8 +16,8 @@ use super::verdict::verdict;
 use super::window::{self, Detail, PatchPixels};
 use super::winds::{self, WindStudy};
 use super::{
-    ImageKind, ModeFinding, Node, OpenRaster, Patch, PatchFinding, RasterEntry, Sheet, SpectrumFinding,
-    SpectrumPicture, TrendFinding, fingerprint, grains, sentence,
+    ImageKind, ModeFinding, Node, OpenRaster, Patch, PatchFinding, PatternFinding, RasterEntry, Sheet,
+    SpectrumFinding, SpectrumPicture, TrendFinding, fingerprint, grains, sentence,
 };
 
 /// Measures and judges a patch; in words what stood against it.
@@ -88,11 +88,12 @@ pub fn patch_finding(
         cautions,
         birth,
         crests: Err("not traced at a first look".into()),
+        pattern: PatternFinding::default(),
         obstacles: None,
     };
     if detail == Detail::Exact {
         let (trend, spectrum) = (&finding.trend, &finding.spectrum);
-        finding.crests = crests::study(&pixels, entry, trend, spectrum, finding.unit, work)?;
+        finding.crests = crests::study(sheet, patch, &pixels, entry, trend, spectrum, finding.unit, work)?;
         finding.obstacles = obstacles::study(sheet, patch, &open.place, &finding.trend, seed, work)?;
     }
     finding.sentence = sentence::of_patch(&finding);

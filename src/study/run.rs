@@ -56,6 +56,8 @@ pub fn run(sheet: &Sheet, sources: &Sources, memo: &Memo, work: &Work) -> Result
         winds: winds.into_iter().map(|w| w.finding.clone()).collect(),
         patches,
         networks,
+        recoveries: Vec::new(),
+        comparisons: Vec::new(),
         failures,
     })
 }

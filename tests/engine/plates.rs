@@ -111,6 +111,8 @@ fn overview(reach: &Reach, theme: &Theme) -> Figure {
     let covers = Bounds { min: Point::new(0.0, 0.0), max: Point::new(reach.size[0], reach.size[1]) };
     let findings = Findings {
         networks: Vec::new(),
+        recoveries: Vec::new(),
+        comparisons: Vec::new(),
         sheet_fingerprint: recipe().sheet_fingerprint,
         rasters: vec![raster_finding()],
         winds: vec![wind_finding()],

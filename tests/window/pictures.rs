@@ -6,7 +6,9 @@ use ventifact::desk::{Command, DrawCommand, Measured, Model, Opened, PatchComman
 use ventifact::ground::{Caution, Grid, LengthUnit, Place, Seed, Work};
 use ventifact::science::orientation::{TensorSettings, trend_nodes};
 use ventifact::science::scene::reach;
-use ventifact::study::{Id, Node, Patch, PatchFinding, SpectrumFinding, TrendFinding, fingerprint};
+use ventifact::study::{
+    Id, Node, Patch, PatchFinding, PatternFinding, SpectrumFinding, TrendFinding, fingerprint,
+};
 
 use super::harness::{self, compare};
 use super::{scene, table};
@@ -84,6 +86,7 @@ fn finding(mosaic: &Grid<f32>, place: &Place, patch: &Patch, fingerprint: String
         cautions: Vec::<Caution>::new(),
         birth: Vec::new(),
         crests: Err("not traced".into()),
+        pattern: PatternFinding::default(),
         obstacles: None,
     }
 }

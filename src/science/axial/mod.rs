@@ -21,6 +21,7 @@ pub mod rose;
 pub(in crate::science) mod sources;
 pub mod spread;
 mod summary;
+pub mod two_samples;
 pub mod v_test;
 pub mod von_mises;
 pub mod wallraff;

@@ -8,7 +8,7 @@ use super::join::Joining;
 use super::link::{Chain, Index, link};
 use super::model::{CLEAR, CrestModel, Fit};
 use super::tone::Ground;
-use super::{CrestLine, CrestSettings, Crests, End, Junction, simplify};
+use super::{CrestLine, CrestOrigin, CrestSettings, Crests, End, Junction, simplify};
 
 /// No crest is sought within so many scales of missing ground.
 const MARGIN: f64 = 2.0;
@@ -148,6 +148,9 @@ impl Trace {
                 ends,
                 bridged_px,
                 model: *model,
+                origin: CrestOrigin::Traced,
+                accepted: false,
+                by_hand_px: 0.0,
             });
         }
         let Thresholds { floor, high, low, .. } = self.thresholds;

@@ -11,6 +11,7 @@ mod link;
 mod model;
 mod numbers;
 mod scale;
+mod shift;
 mod simplify;
 mod spacing;
 mod survival;
@@ -20,9 +21,12 @@ pub use candidates::{Crossing, crossings};
 pub use defects::{Defects, defects};
 pub use forks::{Forks, binomial_p, forks};
 pub use model::{CrestModel, Fit};
-pub use numbers::{CrestNumbers, numbers};
+pub use numbers::{CrestNumbers, length_rose, numbers};
+pub use shift::Shift;
 pub use spacing::{SpacingOnGround, SpacingSettings, spacing};
 pub use survival::{Survival, kaplan_meier};
+
+use serde::{Deserialize, Serialize};
 
 use crate::ground::{Grid, Method, Point, Polygon, Polyline, Stopped, Work};
 
@@ -111,6 +115,39 @@ pub struct CrestLine {
     pub bridged_px: f64,
     /// Whether this is a bright ridge, a dark one or a slip face.
     pub model: CrestModel,
+    /// Where it comes from.
+    pub origin: CrestOrigin,
+    /// Whether the user looked at it and let it stand.
+    pub accepted: bool,
+    /// Length laid by hand, pixels.
+    pub by_hand_px: f64,
+}
+
+/// Where a crest line comes from.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
+#[serde(rename_all = "lowercase")]
+pub enum CrestOrigin {
+    /// By the detector alone.
+    #[default]
+    Traced,
+    /// By the detector, then cut, joined or extended by hand.
+    Edited,
+    /// By hand.
+    Drawn,
+    /// Out of a file.
+    Imported,
+}
+
+impl CrestOrigin {
+    /// One word for tables and layers.
+    pub fn name(self) -> &'static str {
+        match self {
+            Self::Traced => "traced",
+            Self::Edited => "edited",
+            Self::Drawn => "drawn",
+            Self::Imported => "imported",
+        }
+    }
 }
 
 /// A place where lines meet.

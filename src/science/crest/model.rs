@@ -1,5 +1,7 @@
 //! What a crest looks like in this picture: a bright ridge, a dark one, or the step at a slip face.
 
+use serde::{Deserialize, Serialize};
+
 use crate::ground::{Method, Read, Source, Symbol};
 
 use super::candidates::{hessian, main_curvature};
@@ -44,7 +46,8 @@ pub static METHOD: Method = Method {
 pub const CLEAR: f64 = 0.25;
 
 /// What a crest looks like.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
+#[serde(rename_all = "kebab-case")]
 pub enum CrestModel {
     /// A ridge brighter than both its sides.
     BrightRidge,

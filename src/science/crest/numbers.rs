@@ -2,6 +2,7 @@
 
 use crate::ground::{Axis, LocalFrame, Method, Point, Polygon, Read, Source, Symbol};
 use crate::science::axial::mean::Resultant;
+use crate::science::axial::rose::rose;
 
 use super::survival::{Survival, kaplan_meier};
 use super::{CrestLine, End};
@@ -62,6 +63,18 @@ pub(super) fn on_ground(points: &[Point], frame: LocalFrame) -> Vec<Point> {
 /// Whether neither border nor gap cuts a line.
 pub(super) fn is_whole(line: &CrestLine) -> bool {
     !line.ends.iter().any(|end| matches!(end, End::Border | End::Gap))
+}
+
+/// Share of the length of crest by direction, in bins of `bin_deg` from 0°; empty sums for no lines.
+pub fn length_rose(lines: &[CrestLine], frame: LocalFrame, bin_deg: f64) -> Vec<f64> {
+    let (mut axes, mut lengths) = (Vec::new(), Vec::new());
+    for line in lines {
+        for w in on_ground(&line.line.0, frame).windows(2).filter(|w| w[0] != w[1]) {
+            axes.push(Axis::from_east_north(w[1].x - w[0].x, w[1].y - w[0].y));
+            lengths.push(w[0].distance(w[1]));
+        }
+    }
+    rose(&axes, Some(&lengths), bin_deg)
 }
 
 /// Numbers of lines traced in `outline` (both in pixels), on the ground of `frame`.
