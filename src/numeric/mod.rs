@@ -21,3 +21,4 @@ pub mod sum;
 pub mod tail;
 pub mod taper;
 pub mod thin;
+pub mod transform;
