@@ -8,6 +8,7 @@ mod forks;
 mod join;
 mod lines;
 mod link;
+mod meet;
 mod model;
 mod numbers;
 mod scale;
@@ -22,7 +23,7 @@ pub use defects::{Defects, defects};
 pub use forks::{Forks, binomial_p, forks};
 pub use model::{CrestModel, Fit};
 pub use numbers::{CrestNumbers, length_rose, numbers};
-pub use shift::Shift;
+pub use shift::{Shift, ShiftChance, ShiftSettings, ShiftVector, shift};
 pub use spacing::{SpacingOnGround, SpacingSettings, spacing};
 pub use survival::{Survival, kaplan_meier};
 
@@ -41,6 +42,7 @@ pub const METHODS: &[&Method] = &[
     &survival::METHOD,
     &defects::METHOD,
     &forks::METHOD,
+    &shift::METHOD,
 ];
 
 /// How crests are looked for.
