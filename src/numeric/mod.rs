@@ -11,6 +11,7 @@ pub mod gauss;
 pub mod harmonics;
 pub mod huber;
 pub mod lattice;
+pub mod least_path;
 pub mod maximum;
 pub mod quantile;
 pub mod resample;

@@ -11,6 +11,7 @@ mod link;
 mod meet;
 mod model;
 mod numbers;
+mod pen;
 mod scale;
 mod shift;
 mod simplify;
@@ -24,6 +25,8 @@ pub use forks::{Forks, binomial_p, forks};
 pub use model::{CrestModel, Fit};
 pub use numbers::{CrestNumbers, length_rose, numbers};
 pub use shift::{Shift, ShiftChance, ShiftSettings, ShiftVector, shift};
+pub use pen::Pen;
+pub use shift::Shift;
 pub use spacing::{SpacingOnGround, SpacingSettings, spacing};
 pub use survival::{Survival, kaplan_meier};
 
@@ -43,6 +46,7 @@ pub const METHODS: &[&Method] = &[
     &defects::METHOD,
     &forks::METHOD,
     &shift::METHOD,
+    &pen::METHOD,
 ];
 
 /// How crests are looked for.

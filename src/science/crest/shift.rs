@@ -10,7 +10,7 @@ use crate::ground::{
 };
 use crate::numeric::huber;
 use crate::numeric::quantile::{median, of_sorted};
-use crate::numeric::tail::student_two_sided;
+use crate::numeric::tail::{normal_quantile, student_two_sided};
 
 use super::CrestLine;
 use super::meet::{Curve, Segments, Start, starts};
@@ -161,13 +161,13 @@ pub fn shift(
     distances.sort_unstable_by(f64::total_cmp);
     let [low, middle, high] = [0.25, 0.5, 0.75].map(|p| of_sorted(&distances, p));
     let clusters = clusters(&found.moves);
-    let redrawn = redraw(&clusters, settings.resamples, seed, work)?;
-    let wider = widening(&clusters);
+    let Some(wider) = widening(&clusters) else {
+        return Ok(Err("one crest alone does not say how sure its movement is".into()));
+    };
+    // A median of fewer draws has no tails.
+    let redrawn = redraw(&clusters, settings.resamples.max(40), seed, work)?;
     let interval = |value: f64, mut draws: Vec<f64>| {
         draws.sort_unstable_by(f64::total_cmp);
-        if draws.is_empty() {
-            return [f64::NEG_INFINITY, f64::INFINITY];
-        }
         [0.025, 0.975].map(|p| value + wider * (of_sorted(&draws, p) - value))
     };
     let vector = vector(&found.moves).map(|v| {
@@ -359,16 +359,14 @@ fn redraw(
 
 /// By how much few crests make the interval of redrawings too narrow: t/z · √(k/(k − 1)) for k crests of equal
 /// length that would scatter alike.
-fn widening(clusters: &[Vec<Move>]) -> f64 {
+fn widening(clusters: &[Vec<Move>]) -> Option<f64> {
     let (sum, square) = clusters.iter().fold((0.0, 0.0), |(s, q), c| {
         let n = c.len() as f64;
         (s + n, q + n * n)
     });
     let k = sum * sum / square;
-    if k < 1.5 {
-        return f64::INFINITY;
-    }
-    student_two_sided(0.95, k - 1.0) / student_two_sided(0.95, f64::MAX) * (k / (k - 1.0)).sqrt()
+    (k >= 1.5)
+        .then(|| student_two_sided(0.95, k - 1.0) / normal_quantile(0.975) * (k / (k - 1.0)).sqrt())
 }
 
 /// The one vector that moves every point along its normal as found; `None` where normals are too much alike.
