@@ -30,7 +30,11 @@ pub static METHOD: Method = Method {
             unit: "1",
         },
         Symbol { symbol: "νᵢ", meaning: "degrees of freedom with which Nᵢ is known", unit: "1" },
-        Symbol { symbol: "d, hᵢ", meaning: "second mean less the first; half the interval of each", unit: "deg" },
+        Symbol {
+            symbol: "d, hᵢ",
+            meaning: "second mean less the first; half the interval of each",
+            unit: "deg",
+        },
     ],
     assumptions: &[
         "Each field is statistically the same all over its ground.",
@@ -144,8 +148,12 @@ pub fn compare(
         let agree = by_pair.resultant_length >= LEAST_AGREEMENT;
         let advised = share >= MOSTLY_PAIRED && agree;
         let remark = match (share >= MOSTLY_PAIRED, agree) {
-            (true, true) => "advised: the same ground place by place, so that its own variety drops out".into(),
-            (true, false) => "not advised: from place to place the differences agree too little to have a mean".into(),
+            (true, true) => {
+                "advised: the same ground place by place, so that its own variety drops out".into()
+            }
+            (true, false) => {
+                "not advised: from place to place the differences agree too little to have a mean".into()
+            }
             (false, _) => format!("only {:.0} % of the places are shown by both", 100.0 * share),
         };
         let test = AxesTest {
@@ -210,14 +218,18 @@ fn tests(
     // Their tables are those of squares of normal numbers; N known from few discs widens these.
     let df_ranks = of_ranks[0].df + of_ranks[1].df - 2.0;
     let df_distances = of_distances[0].df + of_distances[1].df - 2.0;
-    let widened = |x: f64, df1: f64, df2: f64| f_above(x / df1, df1, if df2.is_nan() { f64::INFINITY } else { df2.max(1.0) });
+    let widened = |x: f64, df1: f64, df2: f64| {
+        f_above(x / df1, df1, if df2.is_nan() { f64::INFINITY } else { df2.max(1.0) })
+    };
     let p_u2 = tail(u2).max(0.0);
     let p_w = widened(w, 2.0, df_ranks);
     let p_h = widened(h, 1.0, df_distances);
 
     let [k1, k2] = kappa;
     let conditions = if holds {
-        format!("both concentrated (κ {k1:.1} and {k2:.1}, at least {LEAST_KAPPA:.0}) and alike in that (p = {equal:.2})")
+        format!(
+            "both concentrated (κ {k1:.1} and {k2:.1}, at least {LEAST_KAPPA:.0}) and alike in that (p = {equal:.2})"
+        )
     } else if equal < UNEQUAL {
         format!("it wants equal concentration, but κ is {k1:.1} and {k2:.1} (p = {equal:.3})")
     } else {

@@ -123,7 +123,8 @@ impl Segments {
         let mut keys = Vec::new();
         for k in 0..steps {
             let (p, q) = (k as f64, k as f64 + 1.0);
-            let (p, q) = (point(-far + 2.0 * far * p / steps as f64), point(-far + 2.0 * far * q / steps as f64));
+            let (p, q) =
+                (point(-far + 2.0 * far * p / steps as f64), point(-far + 2.0 * far * q / steps as f64));
             let range = |a: f64, b: f64| {
                 (a.min(b) / self.side).floor() as i64..=(a.max(b) / self.side).floor() as i64
             };

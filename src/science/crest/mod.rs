@@ -24,9 +24,8 @@ pub use defects::{Defects, defects};
 pub use forks::{Forks, binomial_p, forks};
 pub use model::{CrestModel, Fit};
 pub use numbers::{CrestNumbers, length_rose, numbers};
-pub use shift::{Shift, ShiftChance, ShiftSettings, ShiftVector, shift};
 pub use pen::Pen;
-pub use shift::Shift;
+pub use shift::{Shift, ShiftChance, ShiftSettings, ShiftVector, shift};
 pub use spacing::{SpacingOnGround, SpacingSettings, spacing};
 pub use survival::{Survival, kaplan_meier};
 

@@ -21,7 +21,11 @@ pub static METHOD: Method = Method {
     question: "How far, and which way, did crests move from one picture to the next?",
     formula: "from points evenly spaced along the first crests, along the normal n, to the crest of the second picture nearest to m₀ that runs within 30° of the first: dᵢ;  m = median d;  interval: whole crests redrawn, widened by Student's t for their number;  v: Σ ψ(nᵢ·v − dᵢ) nᵢ = 0",
     symbols: &[
-        Symbol { symbol: "dᵢ", meaning: "movement of a point along its own normal, positive forward", unit: "m" },
+        Symbol {
+            symbol: "dᵢ",
+            meaning: "movement of a point along its own normal, positive forward",
+            unit: "m",
+        },
         Symbol {
             symbol: "m₀",
             meaning: "the movement at which most crests meet, within half a spacing of none",
@@ -296,7 +300,11 @@ impl Matching<'_> {
         let (width, step) = (0.12 * self.spacing, 0.02 * self.spacing);
         let height = |lag: f64| -> f64 {
             let begin = lags.partition_point(|d| *d < lag - width);
-            lags[begin..].iter().take_while(|d| **d <= lag + width).map(|d| 1.0 - (d - lag).abs() / width).sum()
+            lags[begin..]
+                .iter()
+                .take_while(|d| **d <= lag + width)
+                .map(|d| 1.0 - (d - lag).abs() / width)
+                .sum()
         };
         let last = ((self.reach + self.spacing) / step).floor() as i64;
         let heights: Vec<(f64, f64)> =
@@ -335,12 +343,7 @@ struct Redrawn {
     vector: Option<[f64; 2]>,
 }
 
-fn redraw(
-    clusters: &[Vec<Move>],
-    resamples: u32,
-    seed: Seed,
-    work: &Work,
-) -> Result<Vec<Redrawn>, Stopped> {
+fn redraw(clusters: &[Vec<Move>], resamples: u32, seed: Seed, work: &Work) -> Result<Vec<Redrawn>, Stopped> {
     let draws: Vec<Option<Redrawn>> = (0..resamples)
         .into_par_iter()
         .map(|draw| {
@@ -365,8 +368,7 @@ fn widening(clusters: &[Vec<Move>]) -> Option<f64> {
         (s + n, q + n * n)
     });
     let k = sum * sum / square;
-    (k >= 1.5)
-        .then(|| student_two_sided(0.95, k - 1.0) / normal_quantile(0.975) * (k / (k - 1.0)).sqrt())
+    (k >= 1.5).then(|| student_two_sided(0.95, k - 1.0) / normal_quantile(0.975) * (k / (k - 1.0)).sqrt())
 }
 
 /// The one vector that moves every point along its normal as found; `None` where normals are too much alike.
