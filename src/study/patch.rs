@@ -105,7 +105,7 @@ pub fn patch_finding(
 /// Spectrum and tensor looked at together: the spectrum's spacing sets the scale unless the texture is
 /// clearly more coherent at another, as with broad dunes under fine grain; then the spacing is
 /// looked for anew around that scale.
-fn choose_scale(
+pub(super) fn choose_scale(
     sheet: &Sheet,
     entry: &RasterEntry,
     pixels: &PatchPixels,
@@ -166,7 +166,7 @@ fn fine_pixel(pixels: &PatchPixels) -> f64 {
     frame.map_or(1.0, |f| f.pixel_size().into_iter().fold(f64::INFINITY, f64::min))
 }
 
-fn measure_trend(
+pub(super) fn measure_trend(
     sheet: &Sheet,
     entry: &RasterEntry,
     pixels: &PatchPixels,
@@ -186,7 +186,7 @@ fn measure_trend(
 }
 
 /// The scales a patch is measured at when the user leaves them open, image pixels.
-struct Scales {
+pub(super) struct Scales {
     gradient: f64,
     integration: f64,
     step: f64,
@@ -250,7 +250,7 @@ pub(super) fn claim(
 }
 
 /// Statistics of the trend field.
-fn summarise(
+pub(super) fn summarise(
     sheet: &Sheet,
     pixels: &PatchPixels,
     field: &NodeField,
@@ -324,7 +324,7 @@ fn density_bandwidth(summary: &Summary) -> f64 {
     axial::density::plug_in(summary.n_eff_mean.max(2.0), summary.kappa.max(0.05))
 }
 
-fn spectrum_finding(s: &Spectrum, pixels: &PatchPixels) -> SpectrumFinding {
+pub(super) fn spectrum_finding(s: &Spectrum, pixels: &PatchPixels) -> SpectrumFinding {
     let peak = regular_peak(s);
     SpectrumFinding {
         defined: peak.is_some(),

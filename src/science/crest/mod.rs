@@ -9,6 +9,7 @@ mod forks;
 mod join;
 mod lines;
 mod link;
+mod meet;
 mod model;
 mod numbers;
 mod pen;
@@ -26,7 +27,7 @@ pub use forks::{Forks, binomial_p, forks};
 pub use model::{CrestModel, Fit};
 pub use numbers::{CrestNumbers, length_rose, numbers};
 pub use pen::Pen;
-pub use shift::Shift;
+pub use shift::{Shift, ShiftChance, ShiftSettings, ShiftVector, shift};
 pub use spacing::{SpacingOnGround, SpacingSettings, spacing};
 pub use survival::{Survival, kaplan_meier};
 
@@ -45,6 +46,7 @@ pub const METHODS: &[&Method] = &[
     &survival::METHOD,
     &defects::METHOD,
     &forks::METHOD,
+    &shift::METHOD,
     &pen::METHOD,
     &edit::METHOD,
 ];
