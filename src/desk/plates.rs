@@ -21,6 +21,8 @@ pub struct PlateChoice {
     pub format: Format,
     /// Of a PNG.
     pub dpi: f64,
+    /// The trend on a patch's map as a flow texture, in place of strokes.
+    pub flow: bool,
 }
 
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
@@ -55,7 +57,13 @@ pub struct Preview {
 
 impl Default for PlateChoice {
     fn default() -> Self {
-        Self { motif: Motif::default(), width_mm: compose::WIDTH_MM, format: Format::default(), dpi: 300.0 }
+        Self {
+            motif: Motif::default(),
+            width_mm: compose::WIDTH_MM,
+            format: Format::default(),
+            dpi: 300.0,
+            flow: false,
+        }
     }
 }
 
@@ -113,7 +121,8 @@ fn key(model: &Model) -> String {
         }
     };
     let raster = model.shown_raster().map(|r| (r.id, r.tone, model.session.sources.contains_key(&r.id)));
-    format!("{:?} {} {subject:?} {raster:?} {}", choice.motif, choice.width_mm, model.sheet.title)
+    let form = (choice.motif, choice.width_mm, choice.flow);
+    format!("{form:?} {subject:?} {raster:?} {}", model.sheet.title)
 }
 
 /// Everything a plate is composed of, apart from the model.
@@ -148,7 +157,8 @@ impl Subject {
                 let finding = self.findings.patches.iter().find(|p| p.id == id);
                 let finding = finding.ok_or("the patch is not measured yet")?;
                 let winds: Vec<WindFinding> = self.findings.winds.clone();
-                compose::of_patch(&self.sheet, &self.sources, finding, &winds, choice.width_mm, &theme, work)
+                let print = compose::Print { width_mm: choice.width_mm, theme: &theme, flow: choice.flow };
+                compose::of_patch(&self.sheet, &self.sources, finding, &winds, &print, work)
             }
             Motif::Network => {
                 let id = self.network.ok_or("no network is selected")?;

@@ -92,6 +92,7 @@ fn plate_of(patch: &PatchFinding, outline: &Polygon, reach: &Reach, theme: &Them
         winds: &winds,
         recipe: &recipe,
         annulus: [1.0, 3.0],
+        flow: false,
     };
     patch_plate(&plate, 180.0, theme)
 }
@@ -199,6 +200,7 @@ fn a_raster_without_ground_size_has_its_plate_in_pixels_and_landscape() {
         winds: &[],
         recipe: &recipe,
         annulus: [1.0, 3.0],
+        flow: false,
     };
     let figure = patch_plate(&plate, 277.0, &Theme::print());
     keep("pixels", &figure, 2400);

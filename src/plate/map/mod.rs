@@ -1,6 +1,7 @@
 //! The map: a raster inside a printed-map margin, with patches, trend strokes, small roses, a
 //! true-north arrow and a scale bar.
 
+mod flow;
 mod furniture;
 mod margin;
 mod networks;
@@ -9,6 +10,7 @@ mod strokes;
 mod tone;
 mod view;
 
+pub use flow::{FlowField, flow, overlaid};
 pub use networks::{MapNetwork, network_key};
 pub use tone::{Picture, toned};
 pub use view::MapView;
