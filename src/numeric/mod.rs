@@ -24,3 +24,4 @@ pub mod sum;
 pub mod tail;
 pub mod taper;
 pub mod thin;
+pub mod transform;

@@ -2,17 +2,23 @@
 //! populations, what would have been seen, and two pictures of one ground. A part that a finding lacks is said in
 //! words in its place.
 
+mod comparison;
 mod crest_rose;
 mod defects;
 mod lengths;
+mod populations;
 mod recovery;
+mod scales;
 mod spacing;
 mod survival;
 
+pub use comparison::comparison_figure;
 pub use crest_rose::crest_rose;
 pub use defects::defect_diagram;
 pub use lengths::crest_lengths;
+pub use populations::populations_figure;
 pub use recovery::recovery_curve;
+pub use scales::scale_sweep;
 pub use spacing::spacing_survival;
 
 use crate::ground::LengthUnit;

@@ -1,10 +1,13 @@
 //! The table: the raster inside a printed-map margin, with everything that lies on it. It draws from
 //! the model and answers with commands.
 
+mod crest_lines;
+mod crests;
 mod draw;
 mod fields;
 mod flow;
 mod hand;
+mod hatch;
 mod ink;
 mod lens;
 mod lines;
@@ -37,6 +40,7 @@ pub struct TableState {
     fields: fields::Fields,
     flow: flow::FlowTextures,
     charts: networks::Charts,
+    crests: crests::Charts,
     drag: Option<Drag>,
     /// The corner in hand, for keys.
     corner: Option<Corner>,
@@ -181,6 +185,9 @@ fn paint(painter: &Painter, response: &Response, table: &Table<'_>, state: &mut 
         state.flow.draw(&inside, table);
     } else if layers.strokes {
         draw::strokes(&inside, &state.fields.on_screen(table), ink);
+    }
+    if layers.crests {
+        state.crests.draw(&inside, table);
     }
     if layers.networks {
         state.charts.draw(&inside, table);
