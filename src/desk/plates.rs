@@ -10,7 +10,7 @@ use crate::plate::{Figure, PngSize, Theme, compose, pdf, png, svg};
 use crate::study::handover::write_all;
 use crate::study::{Findings, Id, Sheet, Sources, WindFinding, fingerprint, run};
 
-use super::{Answer, Model, Page, Slot};
+use super::{Answer, Model, Page, Slot, recovering};
 
 /// What the plate is to be; saved with the view.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
@@ -218,7 +218,7 @@ fn findings(model: &Model) -> Findings {
             .filter_map(|n| session.results.network(n.id).map(|finding| (**finding).clone()))
             .collect(),
         together: session.results.together().cloned().unwrap_or_default(),
-        recoveries: Vec::new(),
+        recoveries: recovering::current(sheet, &session.results),
         comparisons: Vec::new(),
         failures: session.results.failures(sheet),
     }
