@@ -79,10 +79,8 @@ pub(super) fn ask(model: &mut Model) {
 }
 
 fn start(model: &mut Model, id: Id, print: String) {
-    let label = format!(
-        "Laying bedforms into {}",
-        model.sheet.patch(id).map_or("", |patch| patch.name.as_str())
-    );
+    let label =
+        format!("Laying bedforms into {}", model.sheet.patch(id).map_or("", |patch| patch.name.as_str()));
     let round = measuring::round(model, vec![id]);
     model.session.recovering.running.clone_from(&print);
     model.session.jobs.start(Slot::Recovery, label, move |work, post| {

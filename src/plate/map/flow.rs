@@ -70,8 +70,7 @@ pub fn flow(
     let view = View::new(covers, size);
     let step = (0.5 * field.node_step_px * view.scale()).max(FINEST_CELL);
     let cells = cells(field, &view, step, work)?;
-    let settings =
-        StreakSettings { size, step, half_length: HALF_LENGTH, origin: view.origin(), seed: SEED };
+    let settings = StreakSettings { size, step, half_length: HALF_LENGTH, origin: view.origin(), seed: SEED };
     let drawn = streaks(&cells, &settings, work)?;
     let outline = field.outline.map(|p| view.texel(p));
     Ok(inked(&drawn, &outline, [theme.over_image, theme.halo]))
@@ -169,7 +168,8 @@ fn heaped(
         let at = view.texel(node.at);
         let range = |at: f64, count: usize| {
             let cell = |v: f64| (v / step - 0.5).clamp(-1.0, count as f64);
-            (cell(at - reach).ceil() as usize)..((cell(at + reach).floor() + 1.0).max(0.0) as usize).min(count)
+            (cell(at - reach).ceil() as usize)
+                ..((cell(at + reach).floor() + 1.0).max(0.0) as usize).min(count)
         };
         for row in range(at.y, rows) {
             for col in range(at.x, cols) {
@@ -349,14 +349,9 @@ mod tests {
         let place = Place::pixels(0.0);
         let outline = Polygon::rectangle(400.0, 200.0);
         let nodes = nodes(75.0, |x| x < 200.0);
-        let picture = flow(
-            &field(&nodes, &outline, &place),
-            whole(),
-            [400, 320],
-            &Theme::print(),
-            &Work::quiet(),
-        )
-        .expect("not stopped");
+        let picture =
+            flow(&field(&nodes, &outline, &place), whole(), [400, 320], &Theme::print(), &Work::quiet())
+                .expect("not stopped");
         let alphas = |cols: std::ops::Range<usize>, rows: std::ops::Range<usize>| {
             let of = |row: usize| cols.clone().map(move |col| (row, col));
             rows.flat_map(of).map(|(row, col)| picture.rgba[4 * (400 * row + col) + 3]).max()
