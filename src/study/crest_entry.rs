@@ -4,6 +4,7 @@ use serde::{Deserialize, Serialize};
 
 use crate::ground::{Axis, Point, Polygon, Polyline};
 use crate::science::crest::CrestModel;
+pub use crate::science::crest::StrokeKind;
 
 /// Crests of a patch as far as they are the user's; all points are full-resolution pixels of its raster.
 #[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
@@ -45,20 +46,6 @@ pub struct CrestStroke {
     pub picks: Vec<Point>,
     /// The way along the ridge between them.
     pub line: Polyline,
-}
-
-/// What a stroke does.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
-#[serde(rename_all = "lowercase")]
-pub enum StrokeKind {
-    /// A crest of its own.
-    Crest,
-    /// From the end of one line to the end of another: the three become one.
-    Join,
-    /// From the end of a line outward: the two become one.
-    Extend,
-    /// A crest out of a file.
-    Import,
 }
 
 /// A population of a patch with a name of its own: the one whose trend lies nearest, within 20°.

@@ -2,6 +2,7 @@
 
 mod candidates;
 mod defects;
+mod edit;
 mod fields;
 mod floor;
 mod forks;
@@ -20,6 +21,7 @@ mod tone;
 
 pub use candidates::{Crossing, crossings};
 pub use defects::{Defects, defects};
+pub use edit::{CrestEdits, EditGround, Edited, Stroke, StrokeKind, clip, edit};
 pub use forks::{Forks, binomial_p, forks};
 pub use model::{CrestModel, Fit};
 pub use numbers::{CrestNumbers, length_rose, numbers};
@@ -44,6 +46,7 @@ pub const METHODS: &[&Method] = &[
     &defects::METHOD,
     &forks::METHOD,
     &pen::METHOD,
+    &edit::METHOD,
 ];
 
 /// How crests are looked for.
