@@ -42,6 +42,8 @@ pub struct PatchPlate<'a> {
     pub comparisons: &'a [ComparisonFinding],
     /// Inner and outer radii of the ground looked at round outcrops.
     pub annulus: [f64; 2],
+    /// The trend is in the picture already, as a flow texture: no strokes.
+    pub flow: bool,
 }
 
 /// Columns are about this wide, millimetres.
@@ -97,7 +99,8 @@ fn patch_map(plate: &PatchPlate, size_mm: [f64; 2], theme: &Theme) -> Figure {
         rose: None,
         is_subject: false,
     });
-    let subject = MapPatch { nodes: &plate.patch.trend.nodes, ..subject(plate) };
+    let nodes: &[_] = if plate.flow { &[] } else { &plate.patch.trend.nodes };
+    let subject = MapPatch { nodes, ..subject(plate) };
     let patches: Vec<MapPatch> = neighbours.chain([subject]).collect();
     map(&plate.view, &patches, &[], size_mm, theme)
 }
@@ -249,15 +252,29 @@ fn map_note(plate: &PatchPlate) -> String {
     };
     format!(
         "Map: {} ({} × {} pixels {pixel}; {}). Margin: {margin}; intervals are 95 %. Patch of {area}, \
-         {} valid. Strokes: trend where the coherence passes {}, longer where it is higher, thinned for print; \
-         scales {} and {}\u{a0}px.",
+         {} valid. {} scales {} and {}\u{a0}px.",
         raster.name,
         raster.width,
         raster.height,
         raster.projection,
         numbers::percent(patch.valid_fraction),
-        numbers::significant(patch.trend.coherence_floor, 2),
+        trace_note(plate),
         numbers::plain(patch.trend.gradient_scale_px, 2),
         numbers::plain(patch.trend.integration_scale_px, 2),
     )
+}
+
+/// How the trend is drawn on the map.
+fn trace_note(plate: &PatchPlate) -> String {
+    let floor = numbers::significant(plate.patch.trend.coherence_floor, 2);
+    if plate.flow {
+        format!(
+            "Streaks: noise drawn out along the trend (line integral convolution), fading out where the coherence \
+             does not pass {floor};"
+        )
+    } else {
+        format!(
+            "Strokes: trend where the coherence passes {floor}, longer where it is higher, thinned for print;"
+        )
+    }
 }

@@ -96,6 +96,7 @@ fn plate_of(patch: &PatchFinding, outline: &Polygon, reach: &Reach, theme: &Them
         crests: &CrestSettings::default(),
         recovery: None,
         comparisons: &[],
+        flow: false,
     };
     patch_plate(&plate, 180.0, theme)
 }
@@ -207,6 +208,7 @@ fn a_raster_without_ground_size_has_its_plate_in_pixels_and_landscape() {
         crests: &CrestSettings::default(),
         recovery: None,
         comparisons: &[],
+        flow: false,
     };
     let figure = patch_plate(&plate, 277.0, &Theme::print());
     keep("pixels", &figure, 2400);
