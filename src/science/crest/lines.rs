@@ -2,7 +2,7 @@
 
 use crate::ground::{Point, Polyline, Stopped, Work};
 
-use super::candidates::{Crossing, crossings};
+use super::candidates::{Crossing, confirm, crossings};
 use super::floor::{Thresholds, floor, thresholds};
 use super::join::Joining;
 use super::link::{Chain, Index, link};
@@ -12,6 +12,9 @@ use super::{CrestLine, CrestOrigin, CrestSettings, Crests, End, Junction, simpli
 
 /// No crest is sought within so many scales of missing ground.
 const MARGIN: f64 = 2.0;
+
+/// The next coarser scale that must show a crest too.
+const NEIGHBOUR: f64 = 1.5;
 
 /// Cosine to the sense of slip faces from which on a step counts as one.
 const FACING: f64 = 0.0;
@@ -48,16 +51,21 @@ pub(super) fn trace(
 ) -> Result<Trace, Stopped> {
     let open = ground.open(margin(sigma));
     let cells = open.iter().filter(|o| **o).count();
-    let (steps, moments) = crossings(&ground.prepared(sigma, true, work)?, &open, true, sigma, work)?;
+    let calm = ground.prepared(sigma, true, work)?;
+    let (steps, moments) = crossings(&calm, &open, true, sigma, work)?;
     let fits = moments.fits();
     let model = settings.model.unwrap_or(fits[0].model);
     let slip_face = model == CrestModel::SlipFace;
     let (sense, skewness) = moments.slip_sense();
     let sense = (slip_face && skewness >= CLEAR).then_some(sense);
-    let found = match slip_face {
-        true => steps,
-        false => crossings(&ground.prepared(sigma, false, work)?, &open, false, sigma, work)?.0,
+    let (mut found, tone) = match slip_face {
+        true => (steps, calm),
+        false => {
+            let tone = ground.prepared(sigma, false, work)?;
+            (crossings(&tone, &open, false, sigma, work)?.0, tone)
+        }
     };
+    confirm(&mut found, &tone, slip_face, [sigma, NEIGHBOUR * sigma], work)?;
     let right = |p: &Crossing| match (model, sense) {
         (CrestModel::SlipFace, Some(sense)) => p.normal[0] * sense.cos() + p.normal[1] * sense.sin() > FACING,
         (CrestModel::SlipFace, None) | (CrestModel::BothRidges, _) => true,
@@ -162,7 +170,7 @@ impl Trace {
             sense: self.sense,
             floor,
             thresholds: [high, low],
-            scales_px: vec![self.sigma],
+            scales_px: vec![self.sigma, NEIGHBOUR * self.sigma],
         }
     }
 
