@@ -48,7 +48,9 @@ pub fn follow(model: &mut Model) {
     let in_hand = model.selected_patch().map(|p| p.id);
     let standing = in_hand.map(|id| model.session.results.standing(id));
     let unseen = matches!(standing, Some(Standing::Unmeasured | Standing::OutOfDate));
-    if let Some(id) = in_hand.filter(|_| unseen) {
+    // After an edit of crests a quick look would show what is known already, and no crests.
+    let known = in_hand.is_some_and(|id| model.session.results.knows_texture(&model.sheet, id));
+    if let Some(id) = in_hand.filter(|_| unseen && !known) {
         start(model, Task::Quick, vec![id]);
     } else if !model.session.history.is_dragging() {
         let wanting = model.session.results.wanting(&model.sheet);
@@ -168,6 +170,7 @@ impl Round {
             outcome: outcome.map(|finding| (*finding).clone()),
             fingerprint: fingerprint::of_patch(&self.sheet, patch),
             exact: detail == Detail::Exact,
+            texture: fingerprint::of_texture(&self.sheet, patch),
         };
         post.answer(Answer::Patch(id, Box::new(measured)));
         Ok(())

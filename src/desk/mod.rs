@@ -6,6 +6,8 @@ pub mod channel_facts;
 pub mod channels;
 mod charting;
 mod command;
+pub mod crest_facts;
+pub mod crests;
 mod engine;
 pub mod facts;
 mod history;
@@ -32,17 +34,18 @@ pub use crate::files::wind_table::{DirectionSense, SpeedUnit, Stand, WindImport,
 pub use crate::study::bulk::LonLatBox;
 pub use answer::{Answer, absorb};
 pub use command::{
-    AskCommand, BodyCommand, Chord, Command, DrawCommand, JobCommand, NetworkCommand, ObstacleCommand,
-    PatchCommand, PlateCommand, RasterCommand, Record, SettingCommand, SheetCommand, ViewCommand,
-    WindCommand, apply, listed,
+    AskCommand, BodyCommand, Chord, Command, CrestCommand, DrawCommand, JobCommand, NetworkCommand,
+    ObstacleCommand, PatchCommand, PlateCommand, RasterCommand, Record, SettingCommand, SheetCommand,
+    ViewCommand, WindCommand, apply, listed,
 };
+pub use crests::Crested;
 pub use engine::SheetError;
 pub use history::{History, MergeKey};
 pub use import::{Import, Pick, ReadRow, Reading};
 pub use jobs::{Delivery, Jobs, Post, Running, Slot, Wake};
 pub use model::Model;
 pub use notices::{Notice, NoticeKind, Notices};
-pub use pen::{Leg, PenAnswer, PenGround, Tracing};
+pub use pen::{Leg, PenAnswer, PenGround, Subject, Tracing};
 pub use plates::{Format, Motif, PlateChoice, Preview};
 pub use results::{Charted, Measured, Results, Standing, Stick, WindResult};
 pub use session::{Ask, Cursor, Dialog, Draft, Laid, Opened, Purpose, Session, Tool};

@@ -62,6 +62,12 @@ impl Model {
         fits.then_some(network)
     }
 
+    /// The patch whose crests the tools work on: the selected one, when it lies on the raster on the table.
+    pub fn crest_patch(&self) -> Option<&Patch> {
+        let shown = self.shown_raster()?.id;
+        self.selected_patch().filter(|patch| patch.raster == shown)
+    }
+
     /// The wind record on the bench: the user's choice, the selected patch's own, or the first.
     pub fn shown_wind(&self) -> Option<&WindEntry> {
         let own = self.selected_patch().and_then(|patch| self.judges(patch).records.first().copied());

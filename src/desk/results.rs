@@ -4,6 +4,7 @@
 use std::collections::BTreeMap;
 use std::sync::Arc;
 
+use super::Crested;
 use crate::ground::Bounds;
 use crate::study::{
     Failure, Id, NetworkFinding, PatchFinding, Sheet, TogetherFinding, WindEntry, WindFinding, fingerprint,
@@ -13,6 +14,7 @@ use crate::study::{
 #[derive(Debug, Default)]
 pub struct Results {
     patches: BTreeMap<Id, Measured>,
+    crests: BTreeMap<Id, Crested>,
     winds: BTreeMap<Id, WindResult>,
     networks: BTreeMap<Id, Charted>,
     /// What they say together, with the fingerprint of patches and winds.
@@ -32,6 +34,8 @@ pub struct Measured {
     pub fingerprint: String,
     /// Measured on the full raster, not on the quick reduced one.
     pub exact: bool,
+    /// Of what makes the trend: an edit of crests alone leaves it as it is.
+    pub texture: String,
 }
 
 /// The latest measurement of a network.
@@ -85,9 +89,20 @@ impl Results {
         self.sheet_now = fingerprint::of_patches(sheet);
         self.winds.retain(|id, _| sheet.wind(*id).is_some());
         self.networks.retain(|id, _| sheet.network(*id).is_some());
+        self.crests.retain(|id, _| sheet.patch(*id).is_some());
     }
 
     pub fn take_patch(&mut self, id: Id, measured: Measured) {
+        match &measured.outcome {
+            // A quick look traces nothing: the lines of before stay.
+            Ok(_) if !measured.exact => {}
+            Ok(finding) => {
+                self.crests.insert(id, Crested::new(finding));
+            }
+            Err(_) => {
+                self.crests.remove(&id);
+            }
+        }
         self.patches.insert(id, measured);
     }
 
@@ -102,6 +117,25 @@ impl Results {
     /// The finding of a patch, current or not.
     pub fn patch(&self, id: Id) -> Option<&PatchFinding> {
         self.patches.get(&id)?.outcome.as_ref().ok()
+    }
+
+    /// Whether the exact trend of a patch is known: since it was measured nothing but its crests was edited.
+    pub fn knows_texture(&self, sheet: &Sheet, id: Id) -> bool {
+        let measured = self.patches.get(&id).filter(|measured| measured.exact);
+        let patch = sheet.patch(id);
+        measured
+            .zip(patch)
+            .is_some_and(|(measured, patch)| measured.texture == fingerprint::of_texture(sheet, patch))
+    }
+
+    /// The crests of a patch as last traced, current or not.
+    pub fn crests(&self, id: Id) -> Option<&Crested> {
+        self.crests.get(&id)
+    }
+
+    /// Whether those crests are as the sheet stands.
+    pub fn crests_are_current(&self, id: Id) -> bool {
+        self.crests.get(&id).is_some_and(|crested| self.now.get(&id) == Some(&crested.fingerprint))
     }
 
     pub fn measured(&self, id: Id) -> Option<&Measured> {

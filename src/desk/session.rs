@@ -48,7 +48,7 @@ pub struct Session {
     pub tool: Tool,
     /// The outline under way.
     pub draft: Option<Draft>,
-    /// The channel under way.
+    /// The channel or crest under way.
     pub tracing: Option<Tracing>,
     pub(super) pen_ground: Option<PenGround>,
     /// Where the pointer (or the keyboard cross) is on the raster.
@@ -112,6 +112,18 @@ pub enum Tool {
     Strike,
     /// Two clicks: the water went this way.
     Arrow,
+    /// Draws a crest from pick to pick, or lengthens one from its end.
+    Ridge,
+    /// Two clicks: from the end of one crest to the end of another.
+    Join,
+    /// One click: where a crest is cut in two.
+    Cut,
+    /// One click: a traced line that is no crest.
+    Reject,
+    /// One click: a traced line that was looked at and stands.
+    Accept,
+    /// Corners of ground that is no bedform.
+    Mask,
 }
 
 /// An outline under way.
@@ -160,6 +172,7 @@ pub enum Purpose {
     OpenRaster,
     ImportWinds,
     BringPatches,
+    ImportCrests,
     ExportPlate,
     /// A folder for everything.
     HandOver,
@@ -179,6 +192,7 @@ impl Purpose {
             Self::OpenRaster => "Open raster",
             Self::ImportWinds => "Import winds",
             Self::BringPatches => "Bring in patches",
+            Self::ImportCrests => "Import crests",
             Self::ExportPlate => "Export plate",
             Self::HandOver => "Hand everything over",
         }
@@ -190,6 +204,9 @@ impl Purpose {
             Self::SaveSheet => "The sheet is written as NAME.sheet.json; rasters stay where they are.",
             Self::ImportWinds => "A time series (CSV or blanks) or a table of sectors and speed classes.",
             Self::BringPatches => "GeoPackage, or GeoJSON whose \"frame\" says what its numbers are.",
+            Self::ImportCrests => {
+                "Lines of a GeoPackage, or of GeoJSON whose \"frame\" says what its numbers are."
+            }
             Self::ExportPlate => "The ending is that of the chosen format when left out.",
             Self::HandOver => "A folder; files of the same names in it are replaced.",
             Self::OpenRaster => "GeoTIFF, TIFF, PNG or JPEG; a world file beside it is read too.",
@@ -200,7 +217,7 @@ impl Purpose {
     pub fn verb(self) -> &'static str {
         match self {
             Self::OpenSheet | Self::OpenRaster | Self::BringPatches => "Open",
-            Self::ImportWinds => "Read",
+            Self::ImportWinds | Self::ImportCrests => "Read",
             Self::SaveSheet => "Save",
             Self::ExportPlate | Self::HandOver => "Write",
         }
@@ -220,6 +237,7 @@ impl Purpose {
         match self {
             Self::OpenSheet | Self::SaveSheet => &[("Sheets", &["json"])],
             Self::BringPatches => &[("Outlines", &["gpkg", "geojson", "json"])],
+            Self::ImportCrests => &[("Lines", &["gpkg", "geojson", "json"])],
             Self::ExportPlate => &[("Figures", &["svg", "png", "pdf"])],
             Self::HandOver => &[],
             Self::ImportWinds => &[("Tables", &["csv", "txt", "dat", "tsv"]), ("All files", &["*"])],
@@ -332,6 +350,9 @@ impl Tool {
     /// For networks from elevation, and for those on images.
     pub const DRAINAGE: [Self; 2] = [Self::Outlet, Self::Lake];
     pub const CHANNELS: [Self; 3] = [Self::Pen, Self::Strike, Self::Arrow];
+    /// For the crests of the selected patch.
+    pub const CRESTS: [Self; 6] =
+        [Self::Ridge, Self::Join, Self::Cut, Self::Reject, Self::Accept, Self::Mask];
 
     /// Whether the tool lays down points.
     pub fn draws(self) -> bool {
@@ -345,7 +366,12 @@ impl Tool {
 
     /// Whether each point does something by itself.
     pub fn takes_one(self) -> bool {
-        matches!(self, Self::Outlet | Self::Strike)
+        matches!(self, Self::Outlet | Self::Strike | Self::Cut | Self::Reject | Self::Accept)
+    }
+
+    /// Whether the pen finds the way between its points.
+    pub fn traces(self) -> bool {
+        matches!(self, Self::Pen | Self::Ridge | Self::Join)
     }
 }
 

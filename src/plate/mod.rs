@@ -21,6 +21,7 @@ mod obstacle;
 mod overview_plate;
 mod page;
 mod patch_plate;
+mod pattern;
 mod profile;
 mod regime_map;
 mod rose;
@@ -28,6 +29,7 @@ mod sand_rose;
 mod sketch;
 mod spectrum;
 mod theme;
+mod words;
 mod write;
 
 pub use bars::{posterior_bars, verdict_bar};
@@ -47,6 +49,10 @@ pub use network_plate::{NetworkPlate, network_plate};
 pub use obstacle::{obstacle, obstacles_together};
 pub use overview_plate::{OverviewPlate, overview_plate};
 pub use patch_plate::{PatchPlate, patch_plate};
+pub use pattern::{
+    comparison_figure, crest_lengths, crest_rose, defect_diagram, populations_figure, recovery_curve,
+    scale_sweep, spacing_survival,
+};
 pub use profile::profile;
 pub use regime_map::{MapPoint, regime_at, regime_map};
 pub use rose::{rose, small_rose};

@@ -29,6 +29,8 @@ pub struct CrestsFinding {
     pub fits: Vec<Fit>,
     /// Scale of the derivatives, pixels of the measured image.
     pub scale_px: f64,
+    /// Full-resolution pixels per pixel of the measured image.
+    pub factor: f64,
     /// Lengths in the unit of the patch, as in all that follows.
     pub numbers: CrestNumbers,
     pub spacing: SpacingOnGround,
@@ -44,6 +46,13 @@ pub struct CrestsFinding {
     /// Edits of the user that found no line, in full-resolution pixels.
     pub lost_edits: Vec<Point>,
     pub cautions: Vec<Caution>,
+}
+
+impl CrestsFinding {
+    /// Scale of the derivatives, full-resolution pixels.
+    pub fn full_scale_px(&self) -> f64 {
+        self.scale_px * self.factor
+    }
 }
 
 /// Traces crests; in words why not, where no bedforms are claimed or the patch is too large.
@@ -129,6 +138,7 @@ pub fn study(
         model: found.model,
         fits: found.fits,
         scale_px,
+        factor,
         spacings: [by_spectrum, spacing.quartiles[1], spacing.stereology],
         numbers,
         spacing,

@@ -33,6 +33,16 @@ pub fn of_patches(sheet: &Sheet) -> String {
 /// SHA-256 of all that makes a patch's finding: its outline, its raster, the outcrops on it, the settings,
 /// the winds it is judged by, the seed.
 pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
+    digest(&json!([texture(sheet, patch), patch.crests, patch.populations]))
+}
+
+/// SHA-256 of all of that but what the user said of crests and populations, which leave trend, spacing and
+/// verdicts of the whole patch as they are.
+pub fn of_texture(sheet: &Sheet, patch: &Patch) -> String {
+    digest(&texture(sheet, patch))
+}
+
+fn texture(sheet: &Sheet, patch: &Patch) -> Value {
     // Any record may become the nearest when it is moved, so all of them count there, with their places.
     let winds: Vec<_> = match &patch.winds {
         WindChoice::All | WindChoice::Nearest => sheet.winds.iter().map(placed_wind).collect(),
@@ -42,7 +52,7 @@ pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
     };
     // Their names too: findings print them.
     let obstacles: Vec<_> = sheet.obstacles.iter().filter(|o| o.raster == patch.raster).collect();
-    digest(&json!([
+    json!([
         obstacles,
         sheet.seed,
         patch.id,
@@ -50,13 +60,11 @@ pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
         patch.stated_axis,
         patch.cover,
         patch.sense,
-        patch.crests,
-        patch.populations,
         sheet.raster(patch.raster).map(raster),
         patch.winds == WindChoice::Nearest,
         winds,
         of_bedforms(sheet)
-    ]))
+    ])
 }
 
 /// SHA-256 of all that makes a network's finding: its own making, and the other networks it is compared with.

@@ -14,6 +14,7 @@ pub mod glance;
 mod grains;
 pub mod handover;
 pub mod judges;
+mod light;
 mod migrate;
 mod network;
 mod network_check;
@@ -25,6 +26,7 @@ mod pattern_findings;
 mod pattern_settings;
 pub mod pen;
 mod records;
+mod recovery;
 pub mod run;
 mod sentence;
 #[macro_use]

@@ -11,6 +11,7 @@ use crate::science::orientation::{self, NodeField, Peak, Spectrum, TensorSetting
 use super::backwards;
 use super::cautions;
 use super::crests;
+use super::light;
 use super::obstacles;
 use super::verdict::verdict;
 use super::window::{self, Detail, PatchPixels};
@@ -93,6 +94,7 @@ pub fn patch_finding(
     };
     if detail == Detail::Exact {
         let (trend, spectrum) = (&finding.trend, &finding.spectrum);
+        finding.pattern.light = light::of_trend(trend, entry);
         finding.crests = crests::study(sheet, patch, &pixels, entry, trend, spectrum, finding.unit, work)?;
         finding.obstacles = obstacles::study(sheet, patch, &open.place, &finding.trend, seed, work)?;
     }

@@ -8,12 +8,13 @@ use crate::ground::{Stopped, Work};
 use super::judges::{self, Judges};
 use super::network::{Terrains, agreements, network_finding};
 use super::patch::patch_finding;
+use super::recovery::recovery;
 use super::together::together;
 use super::window::Detail;
 use super::winds::{self, WindStudy};
 use super::{
     Failure, Findings, Id, NetworkEntry, NetworkFinding, OpenRaster, PatchFinding, RasterEntry,
-    RasterFinding, Sheet, Sources, fingerprint,
+    RasterFinding, RecoveryFinding, Sheet, Sources, fingerprint,
 };
 
 /// Results kept by fingerprint, so that an edit recomputes only what it touches. With or without
@@ -23,6 +24,7 @@ pub struct Memo {
     winds: Mutex<HashMap<String, Arc<WindStudy>>>,
     patches: Mutex<HashMap<String, Arc<PatchFinding>>>,
     networks: Mutex<HashMap<String, Arc<NetworkFinding>>>,
+    recoveries: Mutex<HashMap<String, Arc<RecoveryFinding>>>,
     terrains: Terrains,
 }
 
@@ -127,6 +129,37 @@ pub fn run_patch(
         }
         Err(why) => Ok(Err(why)),
     }
+}
+
+/// Synthetic bedforms laid into one patch and sought again, whether or not its light is known; in words why that
+/// cannot be done. The patch itself is measured first where the memo does not hold it.
+///
+/// # Errors
+/// [`Stopped`].
+pub fn run_recovery(
+    sheet: &Sheet,
+    sources: &Sources,
+    id: Id,
+    winds: &[Arc<WindStudy>],
+    memo: &Memo,
+    work: &Work,
+) -> Result<Result<Arc<RecoveryFinding>, String>, Stopped> {
+    let found = match run_patch(sheet, sources, id, winds, Detail::Exact, memo, work)? {
+        Ok(found) => found,
+        Err(why) => return Ok(Err(why)),
+    };
+    let patch = sheet.patch(id);
+    let entry = patch.and_then(|patch| sheet.raster(patch.raster));
+    let open = patch.and_then(|patch| sources.rasters.get(&patch.raster));
+    let (Some(patch), Some(entry), Some(open)) = (patch, entry, open) else {
+        return Ok(Err("its raster is not open".into()));
+    };
+    let key = format!("{} {}", fingerprint::of_recovery(sheet, patch), patch.name);
+    if let Some(known) = recall(&memo.recoveries, &key) {
+        return Ok(Ok(known));
+    }
+    let finding = recovery(sheet, patch, entry, open, &found, work)?;
+    Ok(finding.map(|finding| keep(&memo.recoveries, key, finding)))
 }
 
 /// One channel network, or in words why it cannot be measured.

@@ -14,8 +14,9 @@ use std::time::Instant;
 use rand::Rng as _;
 
 use ventifact::ground::{Grid, Point, Seed, Work};
+use ventifact::numeric::least_path::CostField;
 use ventifact::science::channel::detect::ChannelTone;
-use ventifact::science::channel::pen::Ground;
+use ventifact::science::channel::pen::ground;
 
 const PICKS: usize = 60;
 
@@ -61,7 +62,7 @@ fn response() {
         for (what, depth) in [("channels", 40.0), ("noise", 0.0)] {
             let picture = screen(width, height, depth);
             let (ground, laid) =
-                timed(|| Ground::of(&picture, ChannelTone::Dark, [2.0, 40.0], &work).expect("not stopped"));
+                timed(|| ground(&picture, ChannelTone::Dark, [2.0, 40.0], &work).expect("not stopped"));
             let ground = Arc::new(ground);
             let mut rng = Seed(5).stream("picks", 0);
             let (mut ways, mut fronts, mut live) = (Vec::new(), Vec::new(), Vec::new());
@@ -114,7 +115,7 @@ fn peers() {
     let mut ratios = Vec::new();
     for _ in 0..5 {
         let (way, own) = pool.install(|| {
-            timed(|| Ground::of_costs(side, side, &costs).way(corner(0.1), corner(0.9), &Work::quiet()))
+            timed(|| CostField::new(side, side, &costs).way(corner(0.1), corner(0.9), &Work::quiet()))
         });
         let way = way.expect("not stopped").expect("a way");
         let output = Command::new(&python)

@@ -17,7 +17,7 @@ const MARGIN: f64 = 2.0;
 const NEIGHBOUR: f64 = 1.5;
 
 /// Cosine to the sense of slip faces from which on a step counts as one.
-const FACING: f64 = 0.0;
+pub(super) const FACING: f64 = 0.0;
 
 /// Chains at one scale.
 pub(super) struct Trace {
@@ -31,8 +31,18 @@ pub(super) struct Trace {
     chains: Vec<(Chain, CrestModel)>,
 }
 
-fn margin(sigma: f64) -> usize {
+pub(super) fn margin(sigma: f64) -> usize {
     (MARGIN * sigma).ceil() as usize + 1
+}
+
+/// Whether a crest point has the sign or the sense of a model.
+pub(super) fn is_right(p: &Crossing, model: CrestModel, sense: Option<f64>) -> bool {
+    match (model, sense) {
+        (CrestModel::SlipFace, Some(sense)) => p.normal[0] * sense.cos() + p.normal[1] * sense.sin() > FACING,
+        (CrestModel::SlipFace, None) | (CrestModel::BothRidges, _) => true,
+        (CrestModel::BrightRidge, _) => p.bright,
+        (CrestModel::DarkRidge, _) => !p.bright,
+    }
 }
 
 /// The model that fits best at a scale.
@@ -66,12 +76,7 @@ pub(super) fn trace(
         }
     };
     confirm(&mut found, &tone, slip_face, [sigma, NEIGHBOUR * sigma], work)?;
-    let right = |p: &Crossing| match (model, sense) {
-        (CrestModel::SlipFace, Some(sense)) => p.normal[0] * sense.cos() + p.normal[1] * sense.sin() > FACING,
-        (CrestModel::SlipFace, None) | (CrestModel::BothRidges, _) => true,
-        (CrestModel::BrightRidge, _) => p.bright,
-        (CrestModel::DarkRidge, _) => !p.bright,
-    };
+    let right = |p: &Crossing| is_right(p, model, sense);
     let strengths = |wanted: bool| -> Vec<f64> {
         found.iter().filter(|p| right(p) == wanted).map(|p| p.strength).collect()
     };

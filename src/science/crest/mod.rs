@@ -10,6 +10,7 @@ mod lines;
 mod link;
 mod model;
 mod numbers;
+mod pen;
 mod scale;
 mod shift;
 mod simplify;
@@ -22,6 +23,7 @@ pub use defects::{Defects, defects};
 pub use forks::{Forks, binomial_p, forks};
 pub use model::{CrestModel, Fit};
 pub use numbers::{CrestNumbers, length_rose, numbers};
+pub use pen::Pen;
 pub use shift::Shift;
 pub use spacing::{SpacingOnGround, SpacingSettings, spacing};
 pub use survival::{Survival, kaplan_meier};
@@ -41,6 +43,7 @@ pub const METHODS: &[&Method] = &[
     &survival::METHOD,
     &defects::METHOD,
     &forks::METHOD,
+    &pen::METHOD,
 ];
 
 /// How crests are looked for.

@@ -1,11 +1,15 @@
 //! Trend and spacing of a texture: the structure tensor, windowed spectra, and what speckle and
 //! illumination do to both.
 
+pub mod band;
 mod contrast;
 pub mod crossing;
 mod gradient;
+mod ground_shares;
 pub mod look;
 pub mod noise;
+pub mod plateau;
+pub mod populations;
 pub mod scale;
 pub mod speckle;
 pub mod spectrum;
@@ -19,4 +23,4 @@ use crate::ground::Method;
 
 /// The methods of this family.
 pub const METHODS: &[&Method] =
-    &[&tensor::METHOD, &noise::METHOD, &spectrum::METHOD, &scale::METHOD, &speckle::METHOD, &look::METHOD];
+    &[&tensor::METHOD, &noise::METHOD, &spectrum::METHOD, &scale::METHOD, &band::METHOD, &plateau::METHOD, &populations::METHOD, &speckle::METHOD, &look::METHOD];

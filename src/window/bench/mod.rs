@@ -4,6 +4,7 @@ mod body;
 mod calendar;
 mod channels;
 mod crests;
+mod figures;
 mod ground;
 mod judges;
 mod laws;
@@ -49,7 +50,7 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
                     Page::Trend => trend::show(ui, model, finding),
                     Page::Light => light::show(ui, model, finding),
                     Page::Spacing => spacing::show(ui, model, finding),
-                    Page::Crests => crests::show(ui, model, finding),
+                    Page::Crests => crests::show(ui, model, finding, out),
                     Page::Regimes => regimes::show(ui, model, finding, out),
                     _ => verdict::show(ui, model, finding, out),
                 }

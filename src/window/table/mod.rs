@@ -1,9 +1,12 @@
 //! The table: the raster inside a printed-map margin, with everything that lies on it. It draws from
 //! the model and answers with commands.
 
+mod crest_lines;
+mod crests;
 mod draw;
 mod fields;
 mod hand;
+mod hatch;
 mod ink;
 mod lens;
 mod lines;
@@ -35,6 +38,7 @@ pub struct TableState {
     tiles: tiles::TileTextures,
     fields: fields::Fields,
     charts: networks::Charts,
+    crests: crests::Charts,
     drag: Option<Drag>,
     /// The corner in hand, for keys.
     corner: Option<Corner>,
@@ -177,6 +181,9 @@ fn paint(painter: &Painter, response: &Response, table: &Table<'_>, state: &mut 
     }
     if layers.strokes {
         draw::strokes(&inside, &state.fields.on_screen(table), ink);
+    }
+    if layers.crests {
+        state.crests.draw(&inside, table);
     }
     if layers.networks {
         state.charts.draw(&inside, table);

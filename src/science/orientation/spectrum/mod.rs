@@ -6,6 +6,7 @@ mod detect;
 mod locate;
 mod measure;
 mod picture;
+pub mod shares;
 mod windows;
 
 pub use detect::{ln_global_p, ratio_floor};
