@@ -3,6 +3,7 @@
 mod candidates;
 mod decoy;
 mod defects;
+mod edit;
 mod fields;
 mod floor;
 mod forks;
@@ -10,6 +11,7 @@ mod frames;
 mod join;
 mod lines;
 mod link;
+mod meet;
 mod model;
 mod numbers;
 mod pen;
@@ -23,12 +25,14 @@ mod tone;
 
 pub use candidates::{Crossing, crossings};
 pub use defects::{Defects, defects};
+pub use edit::{CrestEdits, EditGround, Edited, Stroke, StrokeKind, clip, edit};
 pub use forks::{Forks, binomial_p, forks};
 pub use frames::{Frames, OnGround};
 pub use model::{CrestModel, Fit};
 pub use numbers::{CrestNumbers, length_rose, numbers};
 pub use pen::Pen;
-pub use shift::Shift;
+pub use scale::suited_scale;
+pub use shift::{Shift, ShiftChance, ShiftSettings, ShiftVector, shift};
 pub use spacing::{SpacingOnGround, SpacingSettings, spacing};
 pub use square::detect_on_ground;
 pub use survival::{Survival, kaplan_meier};
@@ -49,7 +53,9 @@ pub const METHODS: &[&Method] = &[
     &survival::METHOD,
     &defects::METHOD,
     &forks::METHOD,
+    &shift::METHOD,
     &pen::METHOD,
+    &edit::METHOD,
 ];
 
 /// How crests are looked for.
