@@ -2,7 +2,6 @@
 
 use std::f64::consts::TAU;
 use std::path::Path;
-use std::process::Command;
 
 use ventifact::assert_close;
 use ventifact::files::raster::{Bands, write_tiff};
@@ -161,35 +160,4 @@ fn crests_handed_over_are_read_again() {
         assert_close!(shape.line.length(), line.line.length(), 1e-6, "{}", shape.label);
     }
     assert_eq!(strokes_in(&read, &sheet.patches[0]).1, 0);
-}
-
-#[test]
-fn measure_takes_crests_of_ones_own() {
-    let folder = tempfile::tempdir().unwrap();
-    write_tiff(&folder.path().join("dunes.tif"), &dunes(), None).unwrap();
-    let lines = r#"{"type":"FeatureCollection","frame":"pixel","features":[{"type":"Feature","properties":{},
-        "geometry":{"type":"MultiLineString","coordinates":[[[20,40],[300,40]],[[-50,90],[500,90]]]}}]}"#;
-    std::fs::write(folder.path().join("own.geojson"), lines).unwrap();
-    let measure = |file: &str| {
-        Command::new(env!("CARGO_BIN_EXE_ventifact"))
-            .args(["measure", "dunes.tif", "--crests", file, "--crests-only", "--out", "out"])
-            .current_dir(folder.path())
-            .output()
-            .unwrap()
-    };
-    let output = measure("own.geojson");
-    let said = String::from_utf8_lossy(&output.stderr).into_owned();
-    assert_eq!(output.status.code(), Some(0), "{said}");
-    assert!(said.contains("2 laid into Whole raster"), "{said}");
-    let text = std::fs::read_to_string(folder.path().join("out/findings.json")).unwrap();
-    let json: serde_json::Value = serde_json::from_str(&text).unwrap();
-    let crests = &json["patches"][0]["crests"];
-    assert_eq!((&crests["count"], &crests["origins"]["imported"]), (&2.into(), &2.into()));
-    // The second is cut at the raster's sides.
-    assert_close!(crests["length"].as_f64().unwrap(), 280.0 + 320.0, 1e-6, "length");
-    std::fs::write(folder.path().join("bad.geojson"), lines.replace("[20,40]", "[20,null]")).unwrap();
-    let output = measure("bad.geojson");
-    let said = String::from_utf8_lossy(&output.stderr).into_owned();
-    assert_eq!(output.status.code(), Some(2), "{said}");
-    assert!(said.contains("bad.geojson") && said.contains("feature 1: the position [20,null]"), "{said}");
 }
