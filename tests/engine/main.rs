@@ -4,6 +4,8 @@ mod channels;
 mod coarse;
 mod command_line;
 mod crest_edit;
+mod crest_pen;
+mod crest_study;
 mod demo;
 mod docs;
 mod drainage;
