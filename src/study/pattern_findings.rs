@@ -116,12 +116,16 @@ pub struct RecoveryFinding {
     pub height: f64,
     pub tone_per_slope: f64,
     pub defects: f64,
+    /// Standard deviation of their crests' trends, degrees.
+    pub spread_deg: f64,
     /// Side of the ground they were laid in, full-resolution pixels.
     pub window_px: usize,
     /// By the trend laid in, from north.
     pub trends: Vec<RecoveredTrend>,
     /// Doubled resultant length a field of all trends alike would show here, and the axis it would point along.
     pub uniform_resultant: f64,
+    /// The same with nodes weighted by contrast and by gradient energy: ⅓ and ½ on clean ground under one light.
+    pub uniform_weighted: [f64; 2],
     pub uniform_axis: Option<Axis>,
     /// Trends that would have been missed (found less than half the time): from, to in degrees, clockwise;
     /// `to` may pass 180.

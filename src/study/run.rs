@@ -49,6 +49,8 @@ pub fn run(sheet: &Sheet, sources: &Sources, memo: &Memo, work: &Work) -> Result
             Err(why) => failures.push(Failure { what: format!("network {}", entry.name), why }),
         }
     }
+    let (recoveries, refused) = run_recoveries(sheet, sources, &winds, memo, work)?;
+    failures.extend(refused);
     let rasters =
         sheet.rasters.iter().filter_map(|entry| Some(raster(entry, sources.rasters.get(&entry.id)?)));
     Ok(Findings {
@@ -58,7 +60,7 @@ pub fn run(sheet: &Sheet, sources: &Sources, memo: &Memo, work: &Work) -> Result
         winds: winds.into_iter().map(|w| w.finding.clone()).collect(),
         patches,
         networks,
-        recoveries: Vec::new(),
+        recoveries,
         comparisons: Vec::new(),
         failures,
     })
@@ -160,6 +162,31 @@ pub fn run_recovery(
     }
     let finding = recovery(sheet, patch, entry, open, &found, work)?;
     Ok(finding.map(|finding| keep(&memo.recoveries, key, finding)))
+}
+
+/// Bedforms laid into every patch that was measured and whose light is known, unless the settings leave that out.
+fn run_recoveries(
+    sheet: &Sheet,
+    sources: &Sources,
+    winds: &[Arc<WindStudy>],
+    memo: &Memo,
+    work: &Work,
+) -> Result<(Vec<RecoveryFinding>, Vec<Failure>), Stopped> {
+    let (mut found, mut failures) = (Vec::new(), Vec::new());
+    if sheet.settings.recovery.trends == 0 {
+        return Ok((found, failures));
+    }
+    let lit = |id| sheet.raster(id).is_some_and(|raster: &RasterEntry| raster.light_from.is_some());
+    for patch in sheet.patches.iter().filter(|patch| lit(patch.raster)) {
+        if run_patch(sheet, sources, patch.id, winds, Detail::Exact, memo, work)?.is_err() {
+            continue;
+        }
+        match run_recovery(sheet, sources, patch.id, winds, memo, work)? {
+            Ok(finding) => found.push((*finding).clone()),
+            Err(why) => failures.push(Failure { what: format!("bedforms laid into {}", patch.name), why }),
+        }
+    }
+    Ok((found, failures))
 }
 
 /// One channel network, or in words why it cannot be measured.

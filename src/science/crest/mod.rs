@@ -26,6 +26,7 @@ pub use forks::{Forks, binomial_p, forks};
 pub use model::{CrestModel, Fit};
 pub use numbers::{CrestNumbers, length_rose, numbers};
 pub use pen::Pen;
+pub use scale::suited_scale;
 pub use shift::Shift;
 pub use spacing::{SpacingOnGround, SpacingSettings, spacing};
 pub use survival::{Survival, kaplan_meier};
