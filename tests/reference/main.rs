@@ -8,6 +8,7 @@ mod crest;
 mod drainage;
 mod georef;
 mod image_channels;
+mod light;
 mod network;
 mod obstacle;
 mod orientation;
