@@ -16,6 +16,7 @@ mod hostile;
 mod image_channels;
 mod jpeg_writer;
 mod layouts;
+mod light;
 mod netcdf;
 mod netcdf_writer;
 mod network_commands;
