@@ -107,7 +107,9 @@ fn weights(half_length: usize) -> Vec<f32> {
     let reach = half_length as isize;
     let pairs = |lag: isize| (-reach..=reach).map(|k| signed(k) * signed(k + lag)).sum::<f64>();
     let variance = VARIANCE
-        * (0..3).map(|lag| BLURRED[lag] * pairs(lag as isize) * if lag == 0 { 1.0 } else { 2.0 }).sum::<f64>();
+        * (0..3)
+            .map(|lag| BLURRED[lag] * pairs(lag as isize) * if lag == 0 { 1.0 } else { 2.0 })
+            .sum::<f64>();
     (0..=half_length).map(|k| (bell(k) / variance.sqrt()) as f32).collect()
 }
 
@@ -128,10 +130,7 @@ fn ground(
         for (col, texel) in texels.iter_mut().enumerate() {
             let down = |at: usize| (0..3).map(|k| BLUR[k] * above[k][at]).sum::<f32>();
             let cell = line.at(col as f64 + 0.5 - rim as f64);
-            *texel = Texel {
-                along: cell.along(),
-                noise: (0..3).map(|k| BLUR[k] * down(col + k)).sum(),
-            };
+            *texel = Texel { along: cell.along(), noise: (0..3).map(|k| BLUR[k] * down(col + k)).sum() };
         }
         Ok(())
     })?;
@@ -332,7 +331,9 @@ mod tests {
         assert!(drawn(&empty, &settings([0, 12])).texture.is_empty());
         assert!(drawn(&empty, &settings([12, 0])).fade.is_empty());
         let got = drawn(&empty, &settings([9, 7]));
-        assert!(got.texture.values().iter().all(|v| *v == 0.5) && got.fade.values().iter().all(|v| *v == 0.0));
+        assert!(
+            got.texture.values().iter().all(|v| *v == 0.5) && got.fade.values().iter().all(|v| *v == 0.0)
+        );
         let broken = Grid::filled(1, 1, AxisCell { cos2: f32::NAN, sin2: 1.0, fade: 1.0 });
         assert!(drawn(&broken, &settings([9, 7])).texture.values().iter().all(|v| (0.0..=1.0).contains(v)));
         let dot = drawn(&field(1, 1, 12.0), &StreakSettings { half_length: 0, ..settings([1, 1]) });

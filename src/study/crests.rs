@@ -6,6 +6,7 @@ use crate::science::crest::{
     SpacingSettings, defects, detect, forks, numbers, spacing,
 };
 
+use super::populations::Only;
 use super::window::PatchPixels;
 use super::{ImageKind, Patch, RasterEntry, Sheet, SpectrumFinding, TrendFinding};
 
@@ -55,7 +56,7 @@ impl CrestsFinding {
     }
 }
 
-/// Traces crests; in words why not, where no bedforms are claimed or the patch is too large.
+/// Traces crests, of the whole patch or of one population at its own scale; in words why not, where no bedforms are claimed or the patch is too large.
 ///
 /// # Errors
 /// [`Stopped`].
@@ -67,6 +68,7 @@ pub fn study(
     trend: &TrendFinding,
     spectrum: &SpectrumFinding,
     unit: LengthUnit,
+    only: Option<Only>,
     work: &Work,
 ) -> Result<Result<CrestsFinding, String>, Stopped> {
     if !trend.defined {
@@ -84,8 +86,12 @@ pub fn study(
     let reduced = |p: Point| Point::new((p.x - pixels.origin.x) / factor, (p.y - pixels.origin.y) / factor);
     let settings = crest::CrestSettings {
         model: said.model.or(wanted.model),
-        scale_px: wanted.scale_px,
-        spacing_px: spectrum.spacing.filter(|_| spectrum.defined).map(|s| s / fine),
+        scale_px: wanted.scale_px.filter(|_| only.is_none()),
+        spacing_px: spectrum
+            .spacing
+            .filter(|_| spectrum.defined)
+            .or(only.and_then(|only| only.spacing))
+            .map(|s| s / fine),
         logarithm: entry.kind == ImageKind::Radar,
         excluded: said.masks.iter().map(|mask| mask.map(reduced)).collect(),
         tone_limits: said.tone_limits,
@@ -95,6 +101,10 @@ pub fn study(
         tolerance_px: wanted.tolerance_px,
     };
     let found = detect(&pixels.image, &pixels.outline, &settings, work)?;
+    let found = match only {
+        Some(only) => only.of(found, frame),
+        None => found,
+    };
     let scale_px = found.scales_px.first().copied().unwrap_or(0.0);
     let numbers = numbers(&found.lines, &pixels.outline, frame);
     let longest = pixels.outline.bounds().map_or(0.0, |b| b.width().hypot(b.height())) * fine;

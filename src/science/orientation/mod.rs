@@ -16,11 +16,20 @@ pub mod spectrum;
 mod tensor;
 
 pub use gradient::Tone;
-pub use spectrum::{Peak, Spectrum, SpectrumSettings, spectrum};
+pub use spectrum::{Peak, Spectrum, SpectrumSettings, spectrum, spectrum_along};
 pub use tensor::{NodeField, TensorSettings, TrendNode, trend_nodes};
 
 use crate::ground::Method;
 
 /// The methods of this family.
-pub const METHODS: &[&Method] =
-    &[&tensor::METHOD, &noise::METHOD, &spectrum::METHOD, &scale::METHOD, &band::METHOD, &plateau::METHOD, &populations::METHOD, &speckle::METHOD, &look::METHOD];
+pub const METHODS: &[&Method] = &[
+    &tensor::METHOD,
+    &noise::METHOD,
+    &spectrum::METHOD,
+    &scale::METHOD,
+    &band::METHOD,
+    &plateau::METHOD,
+    &populations::METHOD,
+    &speckle::METHOD,
+    &look::METHOD,
+];

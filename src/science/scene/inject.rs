@@ -119,7 +119,13 @@ impl Bedforms {
         self.spreads().0.to_degrees()
     }
 
-    fn waves(&self, size: [usize; 2], frame: LocalFrame, light: Option<Azimuth>, rng: &mut impl Rng) -> Vec<Wave> {
+    fn waves(
+        &self,
+        size: [usize; 2],
+        frame: LocalFrame,
+        light: Option<Azimuth>,
+        rng: &mut impl Rng,
+    ) -> Vec<Wave> {
         let (spread, bandwidth) = self.spreads();
         let sense = if self.lee_clockwise { 1.0 } else { -1.0 };
         let from = light.map(Azimuth::east_north);
@@ -163,7 +169,8 @@ impl Bedforms {
         let [width, height] = size;
         let waves = self.waves(size, frame, light, rng);
         let profile = self.profile(frame);
-        let (mut relief, mut slope) = (Vec::with_capacity(width * height), Vec::with_capacity(width * height));
+        let (mut relief, mut slope) =
+            (Vec::with_capacity(width * height), Vec::with_capacity(width * height));
         let mut line = vec![[0.0f64; 4]; width];
         for row in 0..height {
             line.fill([0.0; 4]);
@@ -250,7 +257,8 @@ mod tests {
 
     #[test]
     fn straight_bedforms_have_their_height_and_their_steep_side_where_stated() {
-        let straight = Bedforms { spread_deg: 0.1, defects: 0.0, trend: Axis::from_deg(0.0), ..bedforms(0.0) };
+        let straight =
+            Bedforms { spread_deg: 0.1, defects: 0.0, trend: Axis::from_deg(0.0), ..bedforms(0.0) };
         let laid = lay(Bedforms { spacing: 60.0, ..straight }, Some(90.0));
         let (low, high) = laid
             .relief
