@@ -11,6 +11,7 @@ use crate::study::{
 };
 
 use super::networks::networks;
+use super::populations;
 use super::records;
 use super::regimes::backwards;
 
@@ -73,11 +74,13 @@ fn patch(p: &PatchFinding) -> Value {
         "birth": p.birth.iter().map(sand::birth).collect::<Vec<_>>(),
         "finding": p.sentence, "cautions": cautions(&p.cautions),
         "crests": super::crests::json(&p.crests),
+        "scales": populations::scales(p), "plateaus": populations::plateaus(p),
+        "populations": populations::populations(p),
         "obstacles": p.obstacles.as_ref().map(|o| super::obstacles::json(o, metres)),
     })
 }
 
-fn trend(t: &TrendFinding) -> Value {
+pub(super) fn trend(t: &TrendFinding) -> Value {
     json!({
         "defined": t.defined, "axis_deg": degrees(t.axis), "ci95_half_deg": t.ci95_half_deg,
         "ci95_source": t.ci95_source,
@@ -102,7 +105,7 @@ fn spectrum(s: &SpectrumFinding, metres: bool) -> Value {
     })
 }
 
-fn verdict(v: &VerdictFinding) -> Value {
+pub(super) fn verdict(v: &VerdictFinding) -> Value {
     let classes = |p: [f64; 3]| json!({ "longitudinal": p[0], "oblique": p[1], "transverse": p[2] });
     json!({
         "winds": v.winds, "winds_name": v.winds_name, "refused": v.refused,

@@ -9,6 +9,7 @@ mod methods;
 mod network_layers;
 mod networks;
 mod obstacles;
+mod populations;
 mod records;
 mod regimes;
 mod sand;
