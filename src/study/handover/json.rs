@@ -12,6 +12,7 @@ use crate::study::{
 
 use super::networks::networks;
 use super::pattern_light;
+use super::populations;
 use super::records;
 use super::regimes::backwards;
 
@@ -77,11 +78,13 @@ fn patch(p: &PatchFinding, findings: &Findings) -> Value {
         "finding": p.sentence, "cautions": caveats,
         "light": pattern_light::light(p.pattern.light.as_ref()),
         "crests": super::crests::json(&p.crests),
+        "scales": populations::scales(p), "plateaus": populations::plateaus(p),
+        "populations": populations::populations(p),
         "obstacles": p.obstacles.as_ref().map(|o| super::obstacles::json(o, metres)),
     })
 }
 
-fn trend(t: &TrendFinding) -> Value {
+pub(super) fn trend(t: &TrendFinding) -> Value {
     json!({
         "defined": t.defined, "axis_deg": degrees(t.axis), "ci95_half_deg": t.ci95_half_deg,
         "ci95_source": t.ci95_source,
@@ -106,7 +109,7 @@ fn spectrum(s: &SpectrumFinding, metres: bool) -> Value {
     })
 }
 
-fn verdict(v: &VerdictFinding) -> Value {
+pub(super) fn verdict(v: &VerdictFinding) -> Value {
     let classes = |p: [f64; 3]| json!({ "longitudinal": p[0], "oblique": p[1], "transverse": p[2] });
     json!({
         "winds": v.winds, "winds_name": v.winds_name, "refused": v.refused,

@@ -13,6 +13,7 @@ use super::network_layers::{
 };
 use super::obstacles::{lonlat_outcrops, obstacle_table};
 use super::pattern_light::recovery_table;
+use super::populations::{population_table, scale_table};
 use super::records::calendar_table;
 use super::weighing::{flip_table, sensitivity_table, together_table};
 use super::{bibtex, findings_json};
@@ -60,6 +61,8 @@ pub fn write_all(
         sensitivity_table(findings),
         calendar_table(findings),
         obstacle_table(findings),
+        scale_table(findings),
+        population_table(findings),
         crest_table(findings, sources),
         recovery_table(findings),
         network_table(findings),
