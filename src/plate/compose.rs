@@ -6,7 +6,7 @@ use crate::study::{
     Findings, Id, NetworkFinding, OpenRaster, PatchFinding, RasterEntry, Sheet, Sources, fingerprint, run,
 };
 
-use super::map::{MapNetwork, MapPatch, MapView, surroundings, toned};
+use super::map::{MapNetwork, MapPatch, MapView, close_up, surroundings, toned};
 use super::network_plate::bare;
 use super::{CrestPlate, Figure, NetworkPlate, OverviewPlate, PatchPlate, PngSize, Recipe, Theme};
 use super::{crest_plate, network_plate, overview_plate, patch_plate, pdf, png, svg};
@@ -81,7 +81,7 @@ pub fn of_crests(
     let (entry, open) = raster_of(sheet, sources, finding.raster)?;
     let patch = sheet.patch(finding.id).ok_or("the sheet no longer has this patch")?;
     let info = open.raster.info();
-    let bounds = surroundings(&patch.outline, [info.width as f64, info.height as f64]);
+    let bounds = close_up(&patch.outline, [info.width as f64, info.height as f64]);
     let Glance { grid, covers } = glance(entry, open, bounds, LONGEST, work)?;
     let picture = toned(&grid, &entry.tone);
     let plate = CrestPlate {

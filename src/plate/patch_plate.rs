@@ -154,8 +154,10 @@ fn evidence(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
     }
     blocks.extend(outcrops(plate, width_mm, theme));
     for comparison in plate.comparisons.iter().filter(|c| c.patch == patch.id) {
-        let figure = pattern::comparison_figure(comparison, width_mm, theme);
-        blocks.push(block(comparison.name.clone(), figure));
+        let trends = pattern::trends_compared(comparison, width_mm, theme);
+        blocks.push(block(comparison.name.clone(), trends));
+        let moved = pattern::crests_moved(comparison, width_mm, theme);
+        blocks.push(block(format!("Movement: {}", comparison.name), moved));
     }
     blocks
 }
@@ -163,13 +165,13 @@ fn evidence(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
 /// What the light does to the trend, and which trends would have been seen.
 fn seen(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
     let (patch, mut blocks) = (plate.patch, Vec::new());
-    if let Some(light) = &patch.pattern.light {
-        let figure = pattern::light_numbers(light, &patch.trend, width_mm, theme);
-        blocks.push(Block { heading: "Light".into(), figure });
-    }
     if let Some(recovery) = plate.recovery {
         let figure = pattern::recovery_curve(recovery, &patch.trend, width_mm, theme);
         blocks.push(Block { heading: "What would have been seen".into(), figure });
+    }
+    if let Some(light) = &patch.pattern.light {
+        let figure = pattern::light_numbers(light, &patch.trend, width_mm, theme);
+        blocks.push(Block { heading: "Light".into(), figure });
     }
     blocks
 }
@@ -181,7 +183,7 @@ fn crests(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
     let block = |heading: &str, figure: Figure| Block { heading: heading.into(), figure };
     let on_map = [crests_on_map(patch, plate.masks)];
     vec![
-        block("Crests", crest_map(&plate.view, subject(plate), &on_map, [width_mm, width_mm], theme)),
+        block("Crests", crest_map(&plate.view, subject(plate), &on_map, [width_mm, 1.4 * width_mm], theme)),
         block("Direction of crests", pattern::crest_rose(found, &patch.trend, unit, width_mm, theme)),
         block(
             "Spacing from crest to crest",

@@ -1,7 +1,9 @@
 //! Plates of invented findings from Sorrel Reach: exact bytes twice, real text, no missing glyph,
 //! nothing off the page. Set `VENTIFACT_PICTURES` to a folder to look at them.
 
+mod bedforms;
 mod networks;
+mod patterns;
 mod river_measures;
 mod rivers;
 mod sorrel;

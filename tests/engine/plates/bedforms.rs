@@ -13,7 +13,8 @@ use super::sorrel::{Reach, peak, trend, verdict};
 
 /// A number in [0, 1) that looks random and is the same each time.
 fn chance(a: usize, b: usize) -> f64 {
-    let mut h = (a as u64).wrapping_mul(0x9E37_79B9_7F4A_7C15) ^ (b as u64).wrapping_mul(0xD1B5_4A32_D192_ED03);
+    let mut h =
+        (a as u64).wrapping_mul(0x9E37_79B9_7F4A_7C15) ^ (b as u64).wrapping_mul(0xD1B5_4A32_D192_ED03);
     h ^= h >> 29;
     h = h.wrapping_mul(0xBF58_476D_1CE4_E5B9);
     h ^= h >> 32;
@@ -133,8 +134,13 @@ pub fn pattern(reach: &Reach) -> PatternFinding {
     let scales: Vec<ScaleFinding> = (0..16)
         .map(|i| {
             let scale_px = 1.0 * 1.3f64.powi(i);
-            let [fine, coarse] = [1.6, 18.0].map(|at: f64| (-0.5 * ((scale_px / at).ln() / 0.5).powi(2)).exp());
-            let axis = if fine > coarse { 172.0 + 14.0 * chance(i as usize, 2) } else { 83.0 + 4.0 * chance(i as usize, 4) };
+            let [fine, coarse] =
+                [1.6, 18.0].map(|at: f64| (-0.5 * ((scale_px / at).ln() / 0.5).powi(2)).exp());
+            let axis = if fine > coarse {
+                172.0 + 14.0 * chance(i as usize, 2)
+            } else {
+                83.0 + 4.0 * chance(i as usize, 4)
+            };
             ScaleFinding {
                 scale_px,
                 spacing: 6.0 * 25.0 * scale_px,
