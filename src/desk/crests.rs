@@ -47,7 +47,8 @@ pub struct EndNear {
 impl Crested {
     pub fn new(finding: &PatchFinding) -> Self {
         let outcome = finding.crests.clone().map(Arc::new);
-        let boxes = outcome.iter().flat_map(|crests| &crests.lines).map(|line| bounds(&line.line)).collect();
+        let lines = outcome.as_ref().map_or(&[][..], |crests| &crests.lines);
+        let boxes = lines.iter().map(|line| bounds(&line.line)).collect();
         Self { outcome, fingerprint: finding.fingerprint.clone(), unit: finding.unit, boxes }
     }
 

@@ -20,6 +20,8 @@ pub enum Slot {
     Measure,
     /// Channel networks.
     Networks,
+    /// Bedforms laid into a patch and sought again.
+    Recovery,
     /// The pen: its ground and the way to the pointer.
     Pen,
     /// What ways between random places cost.
@@ -30,11 +32,12 @@ pub enum Slot {
 }
 
 impl Slot {
-    pub const ALL: [Self; 9] = [
+    pub const ALL: [Self; 10] = [
         Self::OpenRaster,
         Self::Demo,
         Self::Measure,
         Self::Networks,
+        Self::Recovery,
         Self::Pen,
         Self::Chance,
         Self::ReadWinds,

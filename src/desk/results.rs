@@ -4,10 +4,11 @@
 use std::collections::BTreeMap;
 use std::sync::Arc;
 
-use super::Crested;
+use super::{Crested, Recovered};
 use crate::ground::Bounds;
 use crate::study::{
-    Failure, Id, NetworkFinding, PatchFinding, Sheet, TogetherFinding, WindEntry, WindFinding, fingerprint,
+    Failure, Id, NetworkFinding, PatchFinding, RecoveryFinding, Sheet, TogetherFinding, WindEntry,
+    WindFinding, fingerprint,
 };
 
 /// All results of the session.
@@ -17,12 +18,16 @@ pub struct Results {
     crests: BTreeMap<Id, Crested>,
     winds: BTreeMap<Id, WindResult>,
     networks: BTreeMap<Id, Charted>,
+    /// By patch.
+    recoveries: BTreeMap<Id, Recovered>,
     /// What they say together, with the fingerprint of patches and winds.
     together: Option<(String, TogetherFinding)>,
     /// Fingerprint of patches and winds as the sheet stands now.
     sheet_now: String,
     /// Fingerprints of the patches and networks as the sheet stands now.
     now: BTreeMap<Id, String>,
+    /// Fingerprints of the recoveries as the sheet stands now, by patch.
+    recoveries_now: BTreeMap<Id, String>,
 }
 
 /// The latest measurement of a patch.
@@ -86,6 +91,9 @@ impl Results {
         let patches = sheet.patches.iter().map(|p| (p.id, fingerprint::of_patch(sheet, p)));
         let networks = sheet.networks.iter().map(|n| (n.id, fingerprint::of_network(sheet, n)));
         self.now = patches.chain(networks).collect();
+        self.recoveries_now =
+            sheet.patches.iter().map(|p| (p.id, fingerprint::of_recovery(sheet, p))).collect();
+        self.recoveries.retain(|id, _| sheet.patch(*id).is_some());
         self.sheet_now = fingerprint::of_patches(sheet);
         self.winds.retain(|id, _| sheet.wind(*id).is_some());
         self.networks.retain(|id, _| sheet.network(*id).is_some());
@@ -108,6 +116,36 @@ impl Results {
 
     pub fn take_network(&mut self, id: Id, charted: Charted) {
         self.networks.insert(id, charted);
+    }
+
+    pub fn take_recovery(&mut self, id: Id, recovered: Recovered) {
+        self.recoveries.insert(id, recovered);
+    }
+
+    /// Forgets what synthetic bedforms in a patch said.
+    pub fn drop_recovery(&mut self, id: Id) {
+        self.recoveries.remove(&id);
+    }
+
+    /// What synthetic bedforms in a patch say, current or not.
+    pub fn recovery(&self, id: Id) -> Option<&Arc<RecoveryFinding>> {
+        self.recoveries.get(&id)?.outcome.as_ref().ok()
+    }
+
+    pub fn recovered(&self, id: Id) -> Option<&Recovered> {
+        self.recoveries.get(&id)
+    }
+
+    /// How far what synthetic bedforms in a patch say may be relied on.
+    pub fn recovery_standing(&self, id: Id) -> Standing {
+        match self.recoveries.get(&id) {
+            None => Standing::Unmeasured,
+            Some(recovered) if self.recoveries_now.get(&id) != Some(&recovered.fingerprint) => {
+                Standing::OutOfDate
+            }
+            Some(recovered) if recovered.outcome.is_ok() => Standing::Current,
+            Some(_) => Standing::Failed,
+        }
     }
 
     pub fn take_wind(&mut self, result: WindResult) {
@@ -210,7 +248,7 @@ impl Results {
     /// A text that changes whenever the result of a patch or its standing does.
     pub fn stamp(&self, id: Id) -> String {
         let of = self.patches.get(&id).map_or("", |measured| measured.fingerprint.as_str());
-        format!("{}{:?}{of}", id.0, self.standing(id))
+        format!("{}{:?}{of}{:?}", id.0, self.standing(id), self.recovery_standing(id))
     }
 
     /// What failed, as the sheet stands.

@@ -9,6 +9,7 @@ use crate::study::{Id, OpenRaster, Sheet, fingerprint};
 
 use super::laying::OpenedAs;
 use super::measuring::{Kept, Task};
+use super::recovering::Recovering;
 use super::{
     Answer, Command, History, Import, Jobs, Notices, PenGround, Preview, Results, Slot, TileShelf, Tracing,
     Wake,
@@ -38,6 +39,8 @@ pub struct Session {
     /// The fingerprints of the networks that the running job measures, and of those at which the user stopped it.
     pub(super) charting: Vec<String>,
     pub(super) charts_stopped_at: Option<Vec<String>>,
+    /// What the recovery job is about.
+    pub(super) recovering: Recovering,
     /// Whether patches are measured as they change.
     pub measures: bool,
     /// The plate on the bench.
@@ -254,6 +257,7 @@ impl Session {
         self.measuring = None;
         self.stopped_at = None;
         self.charts_stopped_at = None;
+        self.recovering = Recovering::default();
     }
 
     /// Measures nothing more until the sheet changes or the user asks.
@@ -309,6 +313,7 @@ impl Session {
             stopped_at: None,
             charting: Vec::new(),
             charts_stopped_at: None,
+            recovering: Recovering::default(),
             measures: true,
             preview: Preview::default(),
             import: None,

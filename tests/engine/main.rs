@@ -3,6 +3,7 @@
 mod channels;
 mod coarse;
 mod command_line;
+mod crest_edit;
 mod demo;
 mod docs;
 mod drainage;

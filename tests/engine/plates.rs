@@ -94,10 +94,12 @@ fn plate_of(patch: &PatchFinding, outline: &Polygon, reach: &Reach, theme: &Them
         winds: &winds,
         recipe: &recipe,
         annulus: [1.0, 3.0],
+        bare: &picture,
         masks: &[],
         crests: &CrestSettings::default(),
         recovery: None,
         comparisons: &[],
+        flow: false,
     };
     patch_plate(&plate, 180.0, theme)
 }
@@ -205,10 +207,12 @@ fn a_raster_without_ground_size_has_its_plate_in_pixels_and_landscape() {
         winds: &[],
         recipe: &recipe,
         annulus: [1.0, 3.0],
+        bare: &picture,
         masks: &[],
         crests: &CrestSettings::default(),
         recovery: None,
         comparisons: &[],
+        flow: false,
     };
     let figure = patch_plate(&plate, 277.0, &Theme::print());
     keep("pixels", &figure, 2400);

@@ -42,7 +42,8 @@ fn measured(mut model: Model) -> Model {
     for patch in model.sheet.patches.clone() {
         let fingerprint = fingerprint::of_patch(&model.sheet, &patch);
         let outcome = Ok(finding(&mosaic, &place, &patch, fingerprint.clone()));
-        model.session.results.take_patch(patch.id, Measured { outcome, fingerprint, exact: true });
+        let texture = fingerprint::of_texture(&model.sheet, &patch);
+        model.session.results.take_patch(patch.id, Measured { outcome, fingerprint, exact: true, texture });
     }
     model.session.results.follow(&model.sheet);
     model

@@ -3,6 +3,7 @@
 
 mod crest_key;
 mod crests;
+mod flow;
 mod furniture;
 mod margin;
 mod networks;
@@ -13,6 +14,7 @@ mod view;
 
 pub use crest_key::crest_key;
 pub use crests::MapCrests;
+pub use flow::{FlowField, flow, overlaid};
 pub use networks::{MapNetwork, network_key};
 pub use tone::{Picture, toned};
 pub use view::MapView;

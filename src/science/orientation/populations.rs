@@ -70,6 +70,8 @@ const LEAST_KAPPA: f64 = 1.0;
 const TEXTURE: f64 = 5.0;
 /// Scales closer than this factor are one band.
 const ONE_SCALE: f64 = 1.5;
+/// Share of a population's greatest texture that makes a finer band as good.
+const NEARLY: f64 = 0.6;
 /// Share of common ground from which two populations lie over each other.
 const OVERLAP: f64 = 0.5;
 
@@ -180,10 +182,17 @@ fn candidates(
     // The strongest first: the others join it where they run alike.
     seen.sort_by(|a, b| b.texture.total_cmp(&a.texture));
     let mut kept: Vec<Candidate> = Vec::new();
-    for candidate in seen {
+    for candidate in &seen {
         if kept.iter().all(|k| k.axis.separation(candidate.axis) >= LEAST_APART_DEG) {
-            kept.push(candidate);
+            kept.push(*candidate);
         }
+    }
+    // Under broader bedforms the finest band that is nearly as strong holds least of their slopes.
+    let broadest = kept.iter().map(|k| k.scale_px).fold(0.0, f64::max);
+    for k in kept.iter_mut().filter(|k| k.scale_px * ONE_SCALE <= broadest) {
+        let alike = seen.iter().filter(|c| c.axis.separation(k.axis) < LEAST_APART_DEG);
+        let strong = alike.filter(|c| c.texture >= NEARLY * k.texture);
+        k.scale_px = strong.map(|c| c.scale_px).fold(k.scale_px, f64::min);
     }
     let sum: f64 = kept.iter().map(|k| k.texture).sum();
     kept.retain(|k| k.texture >= LEAST_SHARE * sum);

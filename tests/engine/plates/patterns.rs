@@ -282,6 +282,8 @@ fn patch_plate_of(patch: &PatchFinding, reach: &Reach, theme: &Theme) -> Figure 
         winds: &[wind_finding()],
         recipe: &recipe(),
         annulus: [1.0, 3.0],
+        bare: &picture,
+        flow: false,
         masks: &masks(),
         crests: &CrestSettings::default(),
         recovery: Some(&recovery()),
