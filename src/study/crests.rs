@@ -170,9 +170,12 @@ fn untraced_crests(settings: &crest::CrestSettings) -> Crests {
         junctions: Vec::new(),
         model,
         fits: Vec::new(),
+        clear: false,
         sense: None,
         floor: 0.0,
+        strong: 0.0,
         thresholds: [0.0; 2],
         scales_px: vec![scale],
+        side_px: 1.0,
     }
 }
