@@ -249,8 +249,21 @@ fn moved(
             numbers::plain(years, 1)
         )
     });
+    let chance = shift.chance.map_or(String::new(), |c| {
+        format!("; by chance {}, as close {}", numbers::percent(c.share), numbers::p_value(c.p))
+    });
+    let vector = shift.vector.as_ref().map_or(String::new(), |v| {
+        let [east, north] = v.east_north.map(|d| numbers::significant(d / per, 3));
+        format!(" · as one vector {east} {symbol} east, {north} {symbol} north")
+    });
+    let others: Vec<String> =
+        shift.alternatives.iter().map(|d| format!("{} {symbol}", numbers::significant(d / per, 3))).collect();
+    let others = match others.as_slice() {
+        [] => String::new(),
+        some => format!(" · nearly as well explained, were the next crest the same: {}", some.join(", ")),
+    };
     let caption = format!(
-        "{rate}{} crests matched, {} of their points ({}) · thick: 95 % interval of the median by crests redrawn; small marks: quarters",
+        "{rate}{} crests matched, {} of their points ({}{chance}){vector}{others} · thick: 95 % interval of the median by crests redrawn; small marks: quarters",
         numbers::count(shift.crests),
         numbers::count(shift.matched),
         numbers::percent(shift.share),
