@@ -4,9 +4,8 @@ use std::collections::BTreeSet;
 
 use crate::ground::Body;
 
-use super::comparison_check;
-use super::network_check;
 use super::{Failure, Id, Sheet, Sources, WindChoice, all_settings, judges};
+use super::{comparison_check, crest_check, network_check};
 
 /// Bodies that cannot be, and names that mean two of them.
 fn bodies(sheet: &Sheet, say: &mut impl FnMut(String, String)) {
@@ -93,6 +92,7 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
         }
     }
     obstacles(sheet, sources, &mut say);
+    crest_check::crests(sheet, sources, &mut say);
     network_check::networks(sheet, sources, &mut say);
     comparison_check::comparisons(sheet, sources, &mut say);
     found

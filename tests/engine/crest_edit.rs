@@ -38,10 +38,13 @@ fn crests(lines: Vec<CrestLine>, junctions: Vec<Junction>) -> Crests {
         junctions,
         model: CrestModel::BrightRidge,
         fits: Vec::new(),
+        clear: true,
         sense: None,
         floor: 1.0,
+        strong: 4.0,
         thresholds: [2.0, 1.0],
         scales_px: vec![2.0],
+        side_px: 1.0,
     }
 }
 
@@ -298,7 +301,7 @@ fn points(n: std::ops::Range<usize>) -> impl Strategy<Value = Vec<Point>> {
 
 /// Smooth lines over the field, the second of each pair running onto the first.
 fn fields() -> impl Strategy<Value = Crests> {
-    prop::collection::vec((20.0..180.0f64, 0.0..30.0f64, any::<bool>()), 0..8).prop_map(|rows| {
+    prop::collection::vec((40.0..160.0f64, 0.0..30.0f64, any::<bool>()), 0..8).prop_map(|rows| {
         let (mut lines, mut junctions) = (Vec::new(), Vec::new());
         for (n, (y, bend, forked)) in rows.iter().enumerate() {
             let at = |x: f64| [x, y + bend * (x / 40.0 + n as f64).sin()];
@@ -307,7 +310,10 @@ fn fields() -> impl Strategy<Value = Crests> {
             lines.push(traced(&course, [End::Border, End::Free]));
             if *forked {
                 let place = at(100.0);
-                lines.push(traced(&[[place[0] - 30.0, place[1] + 25.0], place], [End::Free, End::Junction]));
+                lines.push(traced(
+                    &[[place[0] - 30.0, (place[1] + 25.0).min(199.0)], place],
+                    [End::Free, End::Junction],
+                ));
                 let at = Point::from(place);
                 junctions.push(Junction { at, through, branches: vec![(through + 1, 1)] });
             }
@@ -388,9 +394,8 @@ proptest! {
     fn rejecting_all_leaves_only_strokes(of in fields(), strokes in strokes()) {
         let rejected = of.lines.iter().flat_map(|l| l.line.0.iter().copied()).collect();
         let got = edited(&of, &CrestEdits { rejected, strokes: strokes.clone(), ..CrestEdits::default() });
-        prop_assert!(got.crests.lines.iter().all(|l| {
-            matches!(l.origin, CrestOrigin::Drawn | CrestOrigin::Imported)
-        }));
+        let by_hand = |origin| [CrestOrigin::Drawn, CrestOrigin::Imported].contains(&origin);
+        prop_assert!(got.crests.lines.iter().all(|l| by_hand(l.origin)));
         let alone = edited(&crests(Vec::new(), Vec::new()), &with_strokes(strokes));
         prop_assert_eq!(bare(&got.crests), bare(&alone.crests));
     }

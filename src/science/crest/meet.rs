@@ -31,7 +31,7 @@ pub(super) struct Start {
 
 impl Curve {
     pub fn new(line: &CrestLine, frame: LocalFrame) -> Self {
-        Self { points: on_ground(&line.line.0, frame), model: line.model }
+        Self { points: on_ground(&line.line.0, &frame), model: line.model }
     }
 
     pub fn moved(&self, to: impl Fn(Point) -> Point) -> Self {

@@ -31,6 +31,7 @@ pub use frames::{Frames, OnGround};
 pub use model::{CrestModel, Fit};
 pub use numbers::{CrestNumbers, length_rose, numbers};
 pub use pen::Pen;
+pub use scale::suited_scale;
 pub use shift::{Shift, ShiftChance, ShiftSettings, ShiftVector, shift};
 pub use spacing::{SpacingOnGround, SpacingSettings, spacing};
 pub use square::detect_on_ground;
