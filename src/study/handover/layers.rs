@@ -2,12 +2,8 @@
 
 use std::collections::BTreeMap;
 
-<<<<<<< HEAD
 use super::comparisons::comparison_layers;
-use super::crests::crest_layer;
-=======
 use super::crest_layers::crest_layers;
->>>>>>> pattern
 use super::network_layers::network_layers;
 use super::obstacles::outcrop_layer;
 use crate::files::layers::{Column, Geometry, GeometryKind, Layer, Row, Srs, Value};
@@ -236,12 +232,8 @@ pub fn layers(sheet: &Sheet, findings: &Findings, sources: &Sources) -> Vec<Laye
             // A raster with networks alone has no patch layers.
             let own = own.into_iter().filter(|_| !patches.is_empty());
             own.chain(outcrops)
-<<<<<<< HEAD
-                .chain(crest_layer(open, &patches, &srs, &suffix))
                 .chain(comparison_layers(open, &of_raster(findings, raster), &srs, &suffix))
-=======
                 .chain(crest_layers(open, &patches, &srs, &suffix))
->>>>>>> pattern
                 .chain(network_layers(open, &networks, &srs, &suffix))
                 .collect::<Vec<_>>()
         })

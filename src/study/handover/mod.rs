@@ -1,11 +1,8 @@
 //! What leaves the program: the findings as JSON, tables and layers, the methods as a page.
 
 mod bodies;
-<<<<<<< HEAD
 mod comparisons;
-=======
 mod crest_layers;
->>>>>>> pattern
 mod crests;
 mod json;
 mod layers;
