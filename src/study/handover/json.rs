@@ -10,6 +10,7 @@ use crate::study::{
     TrendFinding, VerdictFinding, WindFinding,
 };
 
+use super::comparisons::comparisons;
 use super::networks::networks;
 use super::pattern_light;
 use super::populations;
@@ -33,6 +34,7 @@ pub fn findings_json(sheet: &Sheet, findings: &Findings) -> String {
         "regimes": findings.together.regimes.iter().map(backwards).collect::<Vec<_>>(),
         "networks": networks(findings),
         "recoveries": pattern_light::recoveries(findings),
+        "comparisons": comparisons(findings),
         "errors": findings.failures.iter().map(|f| json!({ "what": f.what, "why": f.why })).collect::<Vec<_>>(),
     });
     let mut text = serde_json::to_string_pretty(&document).unwrap_or_default();

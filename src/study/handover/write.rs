@@ -6,6 +6,7 @@ use crate::files::layers::{LayerError, write_csv, write_geojson, write_geopackag
 use crate::files::save;
 use crate::study::{Findings, Sheet, Sources};
 
+use super::comparisons::comparison_table;
 use super::crest_layers::{crest_table, lonlat_crests};
 use super::layers::{layers, lonlat_patches, node_table, patch_table, verdict_table, wind_table};
 use super::network_layers::{
@@ -71,6 +72,7 @@ pub fn write_all(
         width_table(findings),
         junction_table(findings),
         drop_table(findings),
+        comparison_table(findings),
     ];
     for table in tables.iter().filter(|t| !t.rows.is_empty()) {
         let name = format!("{}.csv", table.name);
