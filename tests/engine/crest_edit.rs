@@ -83,10 +83,9 @@ fn assert_sound(crests: &Crests) {
         named.extend(&junction.branches);
     }
     named.sort_unstable();
-    let all =
-        crests.lines.iter().enumerate().flat_map(|(n, line)| {
-            (0..2).filter(|end| line.ends[*end] == End::Junction).map(move |end| (n, end))
-        });
+    let all = crests.lines.iter().enumerate().flat_map(|(n, line)| {
+        (0..2).filter(|end| line.ends[*end] == End::Junction).map(move |end| (n, end))
+    });
     assert_eq!(named, all.collect::<Vec<_>>());
     for line in &crests.lines {
         assert!(line.line.0.len() >= 2 && line.line.length() > 0.0);
@@ -177,8 +176,7 @@ fn lengthening_takes_the_near_end_and_a_side_makes_a_fork() {
 
 #[test]
 fn a_drawn_crest_across_a_traced_one_is_a_crossing() {
-    let got =
-        edited(&two_and_one(), &with_strokes(vec![stroke(StrokeKind::Crest, &[[40.0, 20.0], [40.0, 80.0]])]));
+    let got = edited(&two_and_one(), &with_strokes(vec![stroke(StrokeKind::Crest, &[[40.0, 20.0], [40.0, 80.0]])]));
     assert_sound(&got.crests);
     assert_eq!(got.crests.lines.len(), 5);
     let [crossing] = &got.crests.junctions[..] else { panic!("one crossing") };
@@ -186,8 +184,7 @@ fn a_drawn_crest_across_a_traced_one_is_a_crossing() {
     assert_eq!(got.crests.lines[crossing.through].origin, CrestOrigin::Drawn);
     assert_close!(got.crests.lines[crossing.through].line.length(), 60.0, 1e-9, "goes on");
     // A little too far is no crossing, and the tail is cut off.
-    let over =
-        edited(&two_and_one(), &with_strokes(vec![stroke(StrokeKind::Crest, &[[40.0, 20.0], [40.0, 52.0]])]));
+    let over = edited(&two_and_one(), &with_strokes(vec![stroke(StrokeKind::Crest, &[[40.0, 20.0], [40.0, 52.0]])]));
     assert_eq!(over.crests.junctions[0].branches, [(3, 1)]);
     assert_close!(over.crests.lines[3].line.length(), 30.0, 1e-9, "tail");
 }
@@ -214,8 +211,7 @@ fn junctions_follow_their_lines() {
 
 #[test]
 fn rings_open_where_they_are_cut_and_close_where_they_are_joined() {
-    let round =
-        traced(&[[50.0, 50.0], [90.0, 50.0], [90.0, 90.0], [50.0, 90.0], [50.0, 50.0]], [End::Closed; 2]);
+    let round = traced(&[[50.0, 50.0], [90.0, 50.0], [90.0, 90.0], [50.0, 90.0], [50.0, 50.0]], [End::Closed; 2]);
     let of = crests(vec![round], Vec::new());
     for cut in [p(70.0, 50.0), p(50.0, 50.0)] {
         let got = edited(&of, &CrestEdits { cuts: vec![cut], ..CrestEdits::default() });
@@ -224,8 +220,7 @@ fn rings_open_where_they_are_cut_and_close_where_they_are_joined() {
         assert_close!(got.crests.lines[0].line.length(), 160.0, 1e-9, "round");
         assert_eq!((got.crests.lines[0].line.0[0], got.crests.lines[0].line.0.last()), (cut, Some(&cut)));
     }
-    let twice =
-        edited(&of, &CrestEdits { cuts: vec![p(70.0, 50.0), p(70.0, 90.0)], ..CrestEdits::default() });
+    let twice = edited(&of, &CrestEdits { cuts: vec![p(70.0, 50.0), p(70.0, 90.0)], ..CrestEdits::default() });
     assert_eq!(twice.crests.lines.len(), 2);
     let open = traced(&[[50.0, 50.0], [90.0, 50.0], [90.0, 90.0], [50.0, 90.0]], FREE);
     let close = stroke(StrokeKind::Join, &[[50.0, 90.0], [50.0, 50.0]]);
@@ -262,10 +257,7 @@ fn edits_that_find_nothing_come_back() {
 fn strokes_end_at_the_outline_and_at_gaps() {
     let outline = Polygon::rectangle(100.0, SIDE);
     let image = Grid::from_fn(SIDE as usize, SIDE as usize, |_, r| if r > 120 { f32::NAN } else { 1.0 });
-    let pond = [Polygon {
-        outer: line(&[[20.0, 20.0], [40.0, 20.0], [40.0, 40.0], [20.0, 40.0]]).0,
-        holes: Vec::new(),
-    }];
+    let pond = [Polygon { outer: line(&[[20.0, 20.0], [40.0, 20.0], [40.0, 40.0], [20.0, 40.0]]).0, holes: Vec::new() }];
     let ground = EditGround { image: &image, outline: &outline, excluded: &pond };
     let edits = with_strokes(vec![
         stroke(StrokeKind::Crest, &[[41.0, 30.0], [150.0, 30.0]]),
@@ -341,7 +333,8 @@ fn bare(crests: &Crests) -> Vec<(String, CrestOrigin)> {
             let text = |points: Vec<Point>| {
                 points.iter().map(|p| format!("{:.6} {:.6}", p.x, p.y)).collect::<Vec<_>>().join(", ")
             };
-            let (there, back) = (text(l.line.0.clone()), text(l.line.0.iter().rev().copied().collect()));
+            let (there, back) =
+                (text(l.line.0.clone()), text(l.line.0.iter().rev().copied().collect()));
             (there.min(back), l.origin)
         })
         .collect();
