@@ -57,6 +57,8 @@ struct Texel {
 
 /// Noise is made by squares of so many pixels a side, each with a stream of its own.
 const SQUARE: usize = 64;
+/// Noise farther out than this is that of the edge.
+const FARTHEST: i64 = 1 << 40;
 /// Below this a pixel shows nothing and is not worked out.
 const FAINTEST: f32 = 1.0 / 512.0;
 /// Weights of the little blur.
@@ -160,7 +162,7 @@ fn ground(
 /// Even noise in [−1, 1) over the picture and its rim.
 fn noise(s: &StreakSettings, rim: usize, work: &Work) -> Result<Vec<f32>, Stopped> {
     let [wide, high] = s.size.map(|side| side + 2 * rim);
-    let [left, top] = s.origin.map(|at| at.wrapping_sub(rim as i64));
+    let [left, top] = s.origin.map(|at| at.clamp(-FARTHEST, FARTHEST) - rim as i64);
     let square = SQUARE as i64;
     let mut noise = vec![0.0f32; wide * high];
     // A band of squares is a task; the first one may be cut.
