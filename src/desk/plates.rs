@@ -8,7 +8,7 @@ use serde::{Deserialize, Serialize};
 use crate::files::save;
 use crate::plate::{Figure, PngSize, Theme, compose, pdf, png, svg};
 use crate::study::handover::write_all;
-use crate::study::{Findings, Id, Sheet, Sources, WindFinding, fingerprint, run};
+use crate::study::{Findings, Id, Sheet, Sources, fingerprint, run};
 
 use super::{Answer, Model, Page, Slot, recovering};
 
@@ -31,6 +31,8 @@ pub enum Motif {
     /// The selected patch.
     #[default]
     Patch,
+    /// The crests of the selected patch.
+    Crests,
     /// The selected network.
     Network,
     /// The raster on the table with all its patches and networks.
@@ -111,7 +113,7 @@ fn key(model: &Model) -> String {
     let choice = &model.view.plate;
     let results = &model.session.results;
     let subject: Vec<String> = match choice.motif {
-        Motif::Patch => model.selected_patch().iter().map(|p| results.stamp(p.id)).collect(),
+        Motif::Patch | Motif::Crests => model.selected_patch().iter().map(|p| results.stamp(p.id)).collect(),
         // Its plate shows the patches of the raster and the networks it is compared with.
         Motif::Network | Motif::Overview => {
             let chosen = model.view.network.map(|id| format!("{id:?}"));
@@ -156,9 +158,14 @@ impl Subject {
                 let id = self.patch.ok_or("no patch is selected")?;
                 let finding = self.findings.patches.iter().find(|p| p.id == id);
                 let finding = finding.ok_or("the patch is not measured yet")?;
-                let winds: Vec<WindFinding> = self.findings.winds.clone();
                 let print = compose::Print { width_mm: choice.width_mm, theme: &theme, flow: choice.flow };
-                compose::of_patch(&self.sheet, &self.sources, finding, &winds, &print, work)
+                compose::of_patch(&self.sheet, &self.sources, finding, &self.findings, &print, work)
+            }
+            Motif::Crests => {
+                let id = self.patch.ok_or("no patch is selected")?;
+                let finding = self.findings.patches.iter().find(|p| p.id == id);
+                let finding = finding.ok_or("the patch is not measured yet")?;
+                compose::of_crests(&self.sheet, &self.sources, finding, choice.width_mm, &theme, work)
             }
             Motif::Network => {
                 let id = self.network.ok_or("no network is selected")?;

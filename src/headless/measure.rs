@@ -7,6 +7,7 @@ use crate::files::raster::{Bands, Limits, Raster};
 use crate::files::text;
 use crate::files::wind_table::{self, WindImport};
 use crate::ground::{Azimuth, Body, LonLat, Polygon};
+use crate::study::crest_edits::{crest_lines, strokes_in};
 use crate::study::sheet_file::SheetFile;
 use crate::study::sources::{OpenRaster, place_raster};
 use crate::study::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
@@ -51,6 +52,9 @@ pub fn measure(options: &Measure) -> Result<Outcome, Trouble> {
         let id = sheet.fresh_id();
         sheet.patches.push(Patch { tags, ..Patch::new(id, name, Id(1), outline) });
     }
+    if let Some(file) = &options.crests {
+        crests(file, options.crests_only, &open, &mut sheet.patches)?;
+    }
     if let Some(file) = &options.winds {
         let centres: Vec<LonLat> =
             sheet.patches.iter().filter_map(|p| judges::centre(p, Some(&open.place))).collect();
@@ -90,6 +94,27 @@ fn patches(options: &Measure, open: &OpenRaster) -> Result<Vec<(String, Polygon,
         eprintln!("patches: {note}");
     }
     Ok(read.shapes.into_iter().map(|s| (s.name, s.outline, s.tags)).collect())
+}
+
+/// Lines of a file laid into every patch they touch; what they gave is told.
+fn crests(file: &Path, only: bool, open: &OpenRaster, patches: &mut [Patch]) -> Result<(), Trouble> {
+    let read = crest_lines(file, open).map_err(|e| {
+        Trouble::new(
+            format!("{} gives no crests", file.display()),
+            e,
+            "Crests are GeoPackage or GeoJSON line strings; \"frame\" says whether numbers are lonlat, map or pixel.",
+        )
+    })?;
+    for note in &read.notes {
+        eprintln!("crests: {note}");
+    }
+    for patch in patches {
+        let (strokes, _) = strokes_in(&read, patch);
+        eprintln!("crests: {} laid into {}", strokes.len(), patch.name);
+        patch.crests.strokes = strokes;
+        patch.crests.drawn_only = only;
+    }
+    Ok(())
 }
 
 /// Wind records read as guessed, of many stations or cells the nearest to each patch; the guess is told, so

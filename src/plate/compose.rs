@@ -3,14 +3,13 @@
 use crate::ground::{Bounds, Network, Point, Polygon, Work};
 use crate::study::glance::{Glance, glance};
 use crate::study::{
-    Findings, Id, NetworkFinding, OpenRaster, PatchFinding, RasterEntry, Sheet, Sources, WindFinding,
-    fingerprint, run,
+    Findings, Id, NetworkFinding, OpenRaster, PatchFinding, RasterEntry, Sheet, Sources, fingerprint, run,
 };
 
 use super::map::{FlowField, MapNetwork, MapPatch, MapView, Picture, flow, overlaid, surroundings, toned};
 use super::network_plate::bare;
-use super::{Figure, NetworkPlate, OverviewPlate, PatchPlate, PngSize, Recipe, Theme};
-use super::{network_plate, overview_plate, patch_plate, pdf, png, svg};
+use super::{CrestPlate, Figure, NetworkPlate, OverviewPlate, PatchPlate, PngSize, Recipe, Theme};
+use super::{crest_plate, network_plate, overview_plate, patch_plate, pdf, png, svg};
 
 /// Cells a side of the picture on a plate: 300 dpi over half a page and some.
 const LONGEST: usize = 1400;
@@ -50,7 +49,7 @@ pub fn of_patch(
     sheet: &Sheet,
     sources: &Sources,
     finding: &PatchFinding,
-    winds: &[WindFinding],
+    findings: &Findings,
     print: &Print,
     work: &Work,
 ) -> Result<Figure, String> {
@@ -71,8 +70,12 @@ pub fn of_patch(
         neighbours: others.map(|p| (p.name.as_str(), &p.outline)).collect(),
         raster: &run::raster(entry, open),
         view: MapView { picture: &picture, covers, place: &open.place },
-        winds,
+        winds: &findings.winds,
         recipe: &recipe(sheet),
+        masks: &patch.crests.masks,
+        crests: &sheet.settings.crest,
+        recovery: findings.recoveries.iter().find(|r| r.patch == finding.id),
+        comparisons: &findings.comparisons,
         annulus: [sheet.settings.obstacle.inner_radii, sheet.settings.obstacle.outer_radii],
         flow: print.flow,
     };
@@ -92,6 +95,36 @@ fn with_flow(
     let size = [texels(covers.width()), texels(covers.height())];
     let texture = flow(field, covers, size, theme, work).map_err(|stopped| stopped.to_string())?;
     Ok(overlaid(picture, &texture))
+}
+
+/// The plate of the crests of one patch.
+///
+/// # Errors
+/// As [`of_patch`].
+pub fn of_crests(
+    sheet: &Sheet,
+    sources: &Sources,
+    finding: &PatchFinding,
+    width_mm: f64,
+    theme: &Theme,
+    work: &Work,
+) -> Result<Figure, String> {
+    let (entry, open) = raster_of(sheet, sources, finding.raster)?;
+    let patch = sheet.patch(finding.id).ok_or("the sheet no longer has this patch")?;
+    let info = open.raster.info();
+    let bounds = surroundings(&patch.outline, [info.width as f64, info.height as f64]);
+    let Glance { grid, covers } = glance(entry, open, bounds, LONGEST, work)?;
+    let picture = toned(&grid, &entry.tone);
+    let plate = CrestPlate {
+        patch: finding,
+        outline: &patch.outline,
+        masks: &patch.crests.masks,
+        settings: &sheet.settings.crest,
+        raster: &run::raster(entry, open),
+        view: MapView { picture: &picture, covers, place: &open.place },
+        recipe: &recipe(sheet),
+    };
+    Ok(crest_plate(&plate, width_mm, theme))
 }
 
 /// The plate of one channel network.
@@ -206,8 +239,8 @@ pub fn overview(
     Ok(overview_plate(&plate, width_mm, theme))
 }
 
-/// Every plate of a study as files: name and bytes. One a patch, one a network and one a raster that has
-/// either, each as SVG and as PDF.
+/// Every plate of a study as files: name and bytes. One a patch and one of its crests, one a network and one a
+/// raster that has either, each as SVG and as PDF.
 ///
 /// # Errors
 /// As [`of_patch`], and when a figure cannot be written, naming the plate.
@@ -221,8 +254,12 @@ pub fn all(
     let print = Print { width_mm: WIDTH_MM, theme: &theme, flow: false };
     let mut figures = Vec::new();
     for patch in &findings.patches {
-        let figure = of_patch(sheet, sources, patch, &findings.winds, &print, work)?;
+        let figure = of_patch(sheet, sources, patch, findings, &print, work)?;
         figures.push((format!("patch-{}-{}", patch.id.0, file_stem(&patch.name)), figure));
+        if patch.crests.as_ref().is_ok_and(|c| !c.lines.is_empty()) {
+            let figure = of_crests(sheet, sources, patch, WIDTH_MM, &theme, work)?;
+            figures.push((format!("crests-{}-{}", patch.id.0, file_stem(&patch.name)), figure));
+        }
     }
     for network in &findings.networks {
         let figure = of_network(sheet, sources, network, findings, WIDTH_MM, &theme, work)?;

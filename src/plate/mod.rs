@@ -7,6 +7,7 @@ mod channels;
 mod chart;
 pub mod compose;
 mod contour;
+mod crest_plate;
 mod dial;
 mod drift_calendar;
 mod figure;
@@ -39,6 +40,7 @@ pub use channels::{
     network_compare, network_numbers, order_plot, pattern_bars, planform_sketch, slope_area, threshold_maps,
     width_plot,
 };
+pub use crest_plate::{CrestPlate, crest_plate, crests_on_map};
 pub use dial::{CLASS_LIMITS_DEG, CLASS_NAMES, dial};
 pub use drift_calendar::drift_calendar;
 pub use figure::{Figure, Fill, HALO, Item, Rgba, Stroke, TextAnchor};
@@ -50,8 +52,8 @@ pub use obstacle::{obstacle, obstacles_together};
 pub use overview_plate::{OverviewPlate, overview_plate};
 pub use patch_plate::{PatchPlate, patch_plate};
 pub use pattern::{
-    comparison_figure, crest_lengths, crest_rose, defect_diagram, populations_figure, recovery_curve,
-    scale_sweep, spacing_survival,
+    comparison_figure, crest_lengths, crest_numbers, crest_rose, defect_diagram, light_numbers,
+    populations_figure, recovery_curve, scale_sweep, spacing_survival,
 };
 pub use profile::profile;
 pub use regime_map::{MapPoint, regime_at, regime_map};

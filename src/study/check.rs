@@ -4,8 +4,8 @@ use std::collections::BTreeSet;
 
 use crate::ground::Body;
 
-use super::network_check;
 use super::{Failure, Id, Sheet, Sources, WindChoice, all_settings, judges};
+use super::{comparison_check, crest_check, network_check};
 
 /// Bodies that cannot be, and names that mean two of them.
 fn bodies(sheet: &Sheet, say: &mut impl FnMut(String, String)) {
@@ -38,12 +38,13 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
         sheet.rasters.iter().map(|r| (r.id, &r.name)).chain(sheet.patches.iter().map(|p| (p.id, &p.name)));
     let all = all.chain(sheet.winds.iter().map(|w| (w.id, &w.name)));
     let all = all.chain(sheet.obstacles.iter().map(|o| (o.id, &o.name)));
+    let all = all.chain(sheet.comparisons.iter().map(|c| (c.id, &c.name)));
     for (Id(id), name) in all.chain(sheet.networks.iter().map(|n| (n.id, &n.name))) {
         if !ids.insert(id) {
             say(
                 name.clone(),
                 format!(
-                    "its id {id} is used twice; every raster, patch, record, outcrop and network needs its own"
+                    "its id {id} is used twice; every raster, patch, record, outcrop, network and comparison needs its own"
                 ),
             );
         }
@@ -91,7 +92,9 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
         }
     }
     obstacles(sheet, sources, &mut say);
+    crest_check::crests(sheet, sources, &mut say);
     network_check::networks(sheet, sources, &mut say);
+    comparison_check::comparisons(sheet, sources, &mut say);
     found
 }
 

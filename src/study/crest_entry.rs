@@ -61,3 +61,48 @@ impl CrestEntry {
         *self == Self::default()
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn an_entry_comes_back_as_it_was_and_says_nothing_it_need_not() {
+        assert_eq!(serde_json::to_string(&CrestEntry::default()).unwrap(), "{}");
+        let line = Polyline(vec![Point::new(0.1, 1.0 / 3.0), Point::new(1e5 + 0.7, 2.0)]);
+        let kinds = [StrokeKind::Crest, StrokeKind::Join, StrokeKind::Extend, StrokeKind::Import];
+        let entry = CrestEntry {
+            model: Some(CrestModel::SlipFace),
+            drawn_only: true,
+            masks: vec![Polygon { outer: line.0.clone(), holes: vec![line.0.clone()] }],
+            tone_limits: Some([-1.5, 0.1]),
+            rejected: vec![Point::new(0.3, 0.4)],
+            accepted: vec![Point::new(7.0, 0.1)],
+            cuts: vec![Point::new(1.1, 2.2)],
+            strokes: kinds
+                .map(|kind| CrestStroke { kind, picks: line.0.clone(), line: line.clone() })
+                .to_vec(),
+        };
+        let text = serde_json::to_string(&entry).unwrap();
+        assert_eq!(serde_json::from_str::<CrestEntry>(&text).unwrap(), entry);
+        assert!(text.contains(r#""model":"slip-face""#) && text.contains(r#""kind":"join""#), "{text}");
+        assert!(serde_json::from_str::<CrestEntry>(r#"{"cutts":[]}"#).is_err());
+    }
+
+    #[test]
+    fn edits_stand_in_the_sheet_and_change_its_patch_alone() {
+        use crate::study::sheet_file::SheetFile;
+        use crate::study::{Id, Patch, Sheet, fingerprint};
+        let mut sheet = Sheet::empty("t");
+        for id in [1, 2] {
+            sheet.patches.push(Patch::new(Id(id), format!("p{id}"), Id(9), Polygon::rectangle(9.0, 9.0)));
+        }
+        let made = |sheet: &Sheet| [0, 1].map(|n| fingerprint::of_patch(sheet, &sheet.patches[n]));
+        let before = made(&sheet);
+        sheet.patches[0].crests.cuts.push(Point::new(3.0, 4.0));
+        assert_eq!([made(&sheet)[0] == before[0], made(&sheet)[1] == before[1]], [false, true]);
+        let folder = std::path::Path::new("/nowhere");
+        let text = SheetFile::new(sheet.clone(), serde_json::Value::Null).render(folder);
+        assert_eq!(SheetFile::parse(&text, folder).unwrap().sheet.patches, sheet.patches);
+    }
+}

@@ -1,22 +1,22 @@
-//! The crest lines of a patch, and what they say: length, density, spacing, defects.
+//! The crest lines of a patch, traced and edited, and what they say: length, density, spacing, defects.
 
 use crate::ground::{Azimuth, Caution, LengthUnit, Point, Polyline, Stopped, Work};
 use crate::science::crest::{
-    self, CrestLine, CrestModel, CrestNumbers, Defects, Fit, Forks, Junction, SpacingOnGround,
-    SpacingSettings, defects, detect, forks, numbers, spacing,
+    self, CrestLine, CrestModel, CrestNumbers, Crests, Defects, EditGround, Edited, Fit, Forks, Junction,
+    SpacingOnGround, SpacingSettings, defects, detect, edit, forks, numbers, spacing,
 };
 
+use super::crest_edits::{self, Pixels};
 use super::window::PatchPixels;
-use super::{ImageKind, Patch, RasterEntry, Sheet, SpectrumFinding, TrendFinding};
+use super::{ImageKind, Patch, RasterEntry, Sheet, SpectrumFinding, TrendFinding, crest_words};
 
 /// Cells traced at the most: tracing holds several grids of that size.
 const MOST_CELLS: usize = 1 << 24;
-/// Skewness of the response from which a model of crests stands out.
-const CLEAR_MODEL: f64 = 0.25;
-/// Spacings further apart than this factor disagree.
-const DISAGREE: f64 = 1.5;
+/// Scale of what a patch without traced crests says, pixels, where nothing else sets it.
+const PLAIN_SCALE: f64 = 2.0;
 
-/// Crests traced in a patch where bedforms are claimed.
+/// Crests of a patch: traced where bedforms are claimed, edited by the user, or drawn by hand alone. All numbers are
+/// those of the edited lines.
 #[derive(Clone, Debug, PartialEq)]
 pub struct CrestsFinding {
     /// In full-resolution pixels.
@@ -55,7 +55,8 @@ impl CrestsFinding {
     }
 }
 
-/// Traces crests; in words why not, where no bedforms are claimed or the patch is too large.
+/// Traces crests and applies the user's edits; in words why there are none: no bedforms are claimed, the patch is
+/// too large or only what is drawn counts, and nothing is drawn.
 ///
 /// # Errors
 /// [`Stopped`].
@@ -69,32 +70,47 @@ pub fn study(
     unit: LengthUnit,
     work: &Work,
 ) -> Result<Result<CrestsFinding, String>, Stopped> {
-    if !trend.defined {
-        return Ok(Err("no bedforms are claimed here".into()));
-    }
-    if pixels.image.len() > MOST_CELLS {
-        return Ok(Err(format!("crests are traced in up to {MOST_CELLS} pixels; outline a smaller patch")));
+    let untraced = if patch.crests.drawn_only {
+        Some("only what is drawn counts".to_owned())
+    } else if !trend.defined {
+        Some("no bedforms are claimed here".to_owned())
+    } else if pixels.image.len() > MOST_CELLS {
+        Some(format!("crests are traced in up to {MOST_CELLS} pixels; outline a smaller patch"))
+    } else {
+        None
+    };
+    if let Some(why) = untraced.as_ref().filter(|_| patch.crests.strokes.is_empty()) {
+        let nothing = if patch.crests.drawn_only { ", and nothing is drawn" } else { "" };
+        return Ok(Err(format!("{why}{nothing}")));
     }
     let Some(frame) = pixels.outline.bounds().and_then(|b| pixels.place.local_frame(b.centre())) else {
         return Ok(Err("the patch has no place on the ground".into()));
     };
     let fine = frame.pixel_size().into_iter().fold(f64::INFINITY, f64::min);
     let (said, wanted) = (&patch.crests, &sheet.settings.crest);
-    let factor = pixels.factor as f64;
-    let reduced = |p: Point| Point::new((p.x - pixels.origin.x) / factor, (p.y - pixels.origin.y) / factor);
+    let at = Pixels { origin: pixels.origin, factor: pixels.factor as f64 };
+    let by_spectrum = spectrum.spacing.filter(|_| spectrum.defined);
     let settings = crest::CrestSettings {
         model: said.model.or(wanted.model),
         scale_px: wanted.scale_px,
-        spacing_px: spectrum.spacing.filter(|_| spectrum.defined).map(|s| s / fine),
+        spacing_px: by_spectrum.map(|s| s / fine),
         logarithm: entry.kind == ImageKind::Radar,
-        excluded: said.masks.iter().map(|mask| mask.map(reduced)).collect(),
+        excluded: said.masks.iter().map(|mask| mask.map(|p| at.reduced(p))).collect(),
         tone_limits: said.tone_limits,
         significance: wanted.significance,
         bridge_scales: wanted.bridge_scales,
         least_length_scales: wanted.least_length_scales,
         tolerance_px: wanted.tolerance_px,
     };
-    let found = detect(&pixels.image, &pixels.outline, &settings, work)?;
+    let traced = match &untraced {
+        None => detect(&pixels.image, &pixels.outline, &settings, work)?,
+        Some(_) => untraced_crests(&settings),
+    };
+    let ground = EditGround { image: &pixels.image, outline: &pixels.outline, excluded: &settings.excluded };
+    let Edited { crests: found, lost } = edit(traced, &crest_edits::reduced(said, at), ground, work)?;
+    if let Some(why) = untraced.as_ref().filter(|_| found.lines.is_empty()) {
+        return Ok(Err(format!("{why}, and nothing drawn lies in the patch")));
+    }
     let scale_px = found.scales_px.first().copied().unwrap_or(0.0);
     let numbers = numbers(&found.lines, &pixels.outline, frame);
     let longest = pixels.outline.bounds().map_or(0.0, |b| b.width().hypot(b.height())) * fine;
@@ -102,44 +118,35 @@ pub fn study(
         SpacingSettings { step: 4.0 * scale_px * fine, longest, own_beyond: 8.0 * scale_px * fine };
     let spacing = spacing(&found.lines, &pixels.outline, frame, transects, work)?;
     let defects = defects(&found.lines, &found.junctions, numbers.total_length, spacing.quartiles[1]);
+    let spacings = [by_spectrum, spacing.quartiles[1], spacing.stereology];
     let mut cautions = defects.cautions.clone();
-    if found.fits.first().is_none_or(|fit| fit.skewness < CLEAR_MODEL) {
-        let text =
-            "Neither ridges nor slip faces stand out: crest lines are drawn on a wave of no clear side.";
-        cautions.push(Caution::new("crest-model", text));
-    }
-    let by_spectrum = spectrum.spacing.filter(|_| spectrum.defined);
-    if let (Some(transects), Some(spectrum)) = (spacing.quartiles[1], by_spectrum)
-        && (transects / spectrum).ln().abs() > DISAGREE.ln()
-    {
-        cautions.push(Caution::new(
-            "spacings-disagree",
-            format!(
-                "Transects from crest to crest give a median spacing of {transects:.0} {0}, the spectrum {spectrum:.0} {0}: crests are missed or doubled, or there are two scales.",
-                unit.symbol()
-            ),
-        ));
-    }
+    cautions.extend(match &untraced {
+        None => crest_words::unclear_model(&found.fits),
+        Some(why) => Some(crest_words::only_drawn(why)),
+    });
+    cautions.extend(crest_words::spacings(spacings, unit));
+    cautions.extend(crest_words::lines(&found.lines));
+    cautions.extend(crest_words::lost(lost.len()));
     let rose_bin_deg = sheet.settings.statistics.rose_bin_deg;
     let rose = crest::length_rose(&found.lines, frame, rose_bin_deg);
     let forks_toward = trend.axis.map(|axis| axis.azimuth()).filter(|_| !found.junctions.is_empty());
     let reach = 8.0 * scale_px * fine;
     let polarity = forks_toward.map(|toward| forks(&found.lines, &found.junctions, frame, toward, reach));
-    let full = |p: &Point| Point::new(pixels.origin.x + p.x * factor, pixels.origin.y + p.y * factor);
     let full_line = |line: CrestLine| CrestLine {
-        line: Polyline(line.line.0.iter().map(full).collect()),
-        bridged_px: line.bridged_px * factor,
+        line: Polyline(line.line.0.iter().map(|p| at.full(*p)).collect()),
+        bridged_px: line.bridged_px * at.factor,
+        by_hand_px: line.by_hand_px * at.factor,
         ..line
     };
-    let junctions = found.junctions.iter().map(|j| Junction { at: full(&j.at), ..j.clone() }).collect();
+    let junctions = found.junctions.iter().map(|j| Junction { at: at.full(j.at), ..j.clone() }).collect();
     Ok(Ok(CrestsFinding {
         lines: found.lines.into_iter().map(full_line).collect(),
         junctions,
         model: found.model,
         fits: found.fits,
         scale_px,
-        factor,
-        spacings: [by_spectrum, spacing.quartiles[1], spacing.stereology],
+        factor: at.factor,
+        spacings,
         numbers,
         spacing,
         defects,
@@ -147,7 +154,28 @@ pub fn study(
         rose_bin_deg,
         forks: polarity,
         forks_toward,
-        lost_edits: Vec::new(),
+        lost_edits: lost.into_iter().map(|p| at.full(p)).collect(),
         cautions,
     }))
+}
+
+/// No traced line at the scale the settings or the spacing ask for; its model is the stated one, bright ridges
+/// where none is stated.
+fn untraced_crests(settings: &crest::CrestSettings) -> Crests {
+    let model = settings.model.unwrap_or(CrestModel::BrightRidge);
+    let scale = settings.scale_px.or(settings.spacing_px.map(|s| crest::suited_scale(model, s)));
+    let scale = scale.filter(|s| s.is_finite()).unwrap_or(PLAIN_SCALE).max(1.0);
+    Crests {
+        lines: Vec::new(),
+        junctions: Vec::new(),
+        model,
+        fits: Vec::new(),
+        clear: false,
+        sense: None,
+        floor: 0.0,
+        strong: 0.0,
+        thresholds: [0.0; 2],
+        scales_px: vec![scale],
+        side_px: 1.0,
+    }
 }

@@ -5,7 +5,12 @@ pub mod bulk;
 mod cautions;
 mod channel_settings;
 pub mod check;
+mod comparison;
+mod comparison_check;
+mod crest_check;
+pub mod crest_edits;
 mod crest_entry;
+mod crest_words;
 mod crests;
 pub mod demo;
 mod findings;
@@ -68,8 +73,8 @@ pub use network_entry::{FromElevation, FromImage, NetworkEntry, NetworkSource, T
 pub use network_findings::{DrainageFinding, NetworkFinding, TracingFinding};
 pub use obstacles::{NodeAround, ObstacleFinding, ObstaclesFinding};
 pub use pattern_findings::{
-    ComparisonFinding, LightFinding, PatternFinding, PlateauFinding, PopulationFinding, PopulationSource,
-    RecoveredTrend, RecoveryFinding, RefitFinding, ScaleFinding,
+    ComparisonFinding, LightFinding, LooksFinding, PatternFinding, PlateauFinding, PopulationFinding,
+    PopulationSource, RecoveredTrend, RecoveryFinding, RefitFinding, ScaleFinding,
 };
 pub use pattern_settings::{CompareSettings, CrestSettings, RecoverySettings};
 pub use records::{Setting, SettingKind, SettingValue};

@@ -105,7 +105,7 @@ pub fn patch_finding(
 /// Spectrum and tensor looked at together: the spectrum's spacing sets the scale unless the texture is
 /// clearly more coherent at another, as with broad dunes under fine grain; then the spacing is
 /// looked for anew around that scale.
-fn choose_scale(
+pub(super) fn choose_scale(
     sheet: &Sheet,
     entry: &RasterEntry,
     pixels: &PatchPixels,
@@ -166,7 +166,7 @@ fn fine_pixel(pixels: &PatchPixels) -> f64 {
     frame.map_or(1.0, |f| f.pixel_size().into_iter().fold(f64::INFINITY, f64::min))
 }
 
-fn measure_trend(
+pub(super) fn measure_trend(
     sheet: &Sheet,
     entry: &RasterEntry,
     pixels: &PatchPixels,
@@ -186,7 +186,7 @@ fn measure_trend(
 }
 
 /// The scales a patch is measured at when the user leaves them open, image pixels.
-struct Scales {
+pub(super) struct Scales {
     gradient: f64,
     integration: f64,
     step: f64,
@@ -205,20 +205,29 @@ impl Scales {
     }
 }
 
-/// Statistics of the trend field.
-///
+/// Whether a field of nodes claims a trend, and the numbers behind it.
+pub(super) struct Claim {
+    pub defined: bool,
+    /// Several times as many nodes pass the noise floor as chance lets pass.
+    pub has_texture: bool,
+    /// Of all nodes, and of those that passed.
+    pub test: Summary,
+    pub shown: Summary,
+    pub axes: Vec<Axis>,
+}
+
 /// Whether a trend is preferred is asked of ALL nodes: noise has no say in which are counted, so
 /// the test keeps its level on ground without texture. The trend itself is that of the nodes that
 /// passed the noise floor, since the others only blur it.
-fn summarise(
+pub(super) fn claim(
     sheet: &Sheet,
     pixels: &PatchPixels,
     field: &NodeField,
+    resamples: u32,
     seed: Seed,
     work: &Work,
-) -> Result<(TrendFinding, Vec<Caution>), Stopped> {
-    let s = &sheet.settings.statistics;
-    let settings = SummarySettings { significance: s.significance, resamples: s.resamples };
+) -> Result<Claim, Stopped> {
+    let settings = SummarySettings { significance: sheet.settings.statistics.significance, resamples };
     let positions = ground_positions(pixels, &field.nodes);
     let passed: Vec<usize> = (0..field.nodes.len()).filter(|i| field.nodes[*i].significant).collect();
     let every: Vec<usize> = (0..field.nodes.len()).collect();
@@ -228,12 +237,8 @@ fn summarise(
         let at: Vec<Point> = picked.iter().map(|i| positions[*i]).collect();
         let nodes = Nodes { at: &at, spacing, kernel_sigma: field.integration_scale_ground };
         let axes = axes_of(picked);
-        axial::summarise(
-            &AxialSample { axes: &axes, weights: None, nodes: Some(nodes) },
-            settings,
-            seed,
-            work,
-        )
+        let sample = AxialSample { axes: &axes, weights: None, nodes: Some(nodes) };
+        axial::summarise(&sample, settings, seed, work)
     };
     let test = summary_of(&every)?;
     let shown = summary_of(&passed)?;
@@ -241,7 +246,20 @@ fn summarise(
     let has_texture = passed.len() as f64 > 5.0 * sheet.settings.trend.significance * every.len() as f64;
     // An interval of all axes leaves no line to draw.
     let defined = test.preferred && has_texture && shown.interval.half_deg.is_some();
-    let axes = axes_of(&passed);
+    Ok(Claim { defined, has_texture, test, shown, axes: axes_of(&passed) })
+}
+
+/// Statistics of the trend field.
+pub(super) fn summarise(
+    sheet: &Sheet,
+    pixels: &PatchPixels,
+    field: &NodeField,
+    seed: Seed,
+    work: &Work,
+) -> Result<(TrendFinding, Vec<Caution>), Stopped> {
+    let s = &sheet.settings.statistics;
+    let Claim { defined, has_texture, test, shown, axes } =
+        claim(sheet, pixels, field, s.resamples, seed, work)?;
     let modes = if has_texture {
         let sample = AxialSample { axes: &axes, weights: None, nodes: None };
         axial::modes(&sample, shown.n_eff_test, s.most_modes, seed, work)?
@@ -306,7 +324,7 @@ fn density_bandwidth(summary: &Summary) -> f64 {
     axial::density::plug_in(summary.n_eff_mean.max(2.0), summary.kappa.max(0.05))
 }
 
-fn spectrum_finding(s: &Spectrum, pixels: &PatchPixels) -> SpectrumFinding {
+pub(super) fn spectrum_finding(s: &Spectrum, pixels: &PatchPixels) -> SpectrumFinding {
     let peak = regular_peak(s);
     SpectrumFinding {
         defined: peak.is_some(),

@@ -14,7 +14,7 @@ use ventifact::plate::{
     dial, modes, pdf, png, posterior_bars, profile, rose, sand_rose, small_rose, spectrum,
 };
 use ventifact::plate::{svg, verdict_bar};
-use ventifact::study::{Findings, Id, PatchFinding, RasterFinding};
+use ventifact::study::{CrestSettings, Findings, Id, PatchFinding, RasterFinding};
 
 use sorrel::{
     Reach, drift, flow, no_trend, patch_finding, peak, plain_finding, raster_finding, reach, recipe,
@@ -92,6 +92,10 @@ fn plate_of(patch: &PatchFinding, outline: &Polygon, reach: &Reach, theme: &Them
         winds: &winds,
         recipe: &recipe,
         annulus: [1.0, 3.0],
+        masks: &[],
+        crests: &CrestSettings::default(),
+        recovery: None,
+        comparisons: &[],
         flow: false,
     };
     patch_plate(&plate, 180.0, theme)
@@ -200,6 +204,10 @@ fn a_raster_without_ground_size_has_its_plate_in_pixels_and_landscape() {
         winds: &[],
         recipe: &recipe,
         annulus: [1.0, 3.0],
+        masks: &[],
+        crests: &CrestSettings::default(),
+        recovery: None,
+        comparisons: &[],
         flow: false,
     };
     let figure = patch_plate(&plate, 277.0, &Theme::print());

@@ -5,6 +5,8 @@ mod axial;
 mod axial_field;
 mod axial_tests;
 mod crest;
+mod crest_ground;
+mod crest_trust;
 mod drainage;
 mod georef;
 mod image_channels;

@@ -1,6 +1,8 @@
 //! The map: a raster inside a printed-map margin, with patches, trend strokes, small roses, a
 //! true-north arrow and a scale bar.
 
+mod crest_key;
+mod crests;
 mod flow;
 mod furniture;
 mod margin;
@@ -10,6 +12,8 @@ mod strokes;
 mod tone;
 mod view;
 
+pub use crest_key::crest_key;
+pub use crests::MapCrests;
 pub use flow::{FlowField, flow, overlaid};
 pub use networks::{MapNetwork, network_key};
 pub use tone::{Picture, toned};
@@ -36,6 +40,14 @@ pub struct MapPatch<'a> {
     pub is_subject: bool,
 }
 
+/// What lies over the raster.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub struct MapLayers<'a> {
+    pub patches: &'a [MapPatch<'a>],
+    pub networks: &'a [MapNetwork<'a>],
+    pub crests: &'a [MapCrests<'a>],
+}
+
 /// Distance between strokes, millimetres.
 const STROKE_PITCH_MM: f64 = 3.4;
 const ROSE_MM: f64 = 13.0;
@@ -51,6 +63,12 @@ pub fn map(
     size_mm: [f64; 2],
     theme: &Theme,
 ) -> Figure {
+    map_of(view, &MapLayers { patches, networks, crests: &[] }, size_mm, theme)
+}
+
+/// The map with crests as well.
+pub fn map_of(view: &MapView, layers: &MapLayers, size_mm: [f64; 2], theme: &Theme) -> Figure {
+    let MapLayers { patches, networks, crests } = *layers;
     let [_, _, right, bottom] = margin::ROOM;
     let sheet = laid(view, size_mm);
     let mut inside = Sketch::default();
@@ -65,6 +83,7 @@ pub fn map(
         let drawn = strokes::strokes(patch.nodes, &sheet, view.place, STROKE_PITCH_MM);
         strokes::draw(&mut inside, &drawn, theme);
     }
+    crests::draw(&mut inside, crests, &sheet, theme);
     for network in networks {
         networks::draw(&mut inside, network, &sheet, theme);
     }

@@ -7,8 +7,8 @@ use crate::study::ComparisonFinding;
 use super::super::chart::{Chart, Ruler, Span};
 use super::super::rose::{FACE_PAD_MM, Face, NO_TREND, faces};
 use super::super::sketch::{Sketch, Type};
-use super::super::words::{length_ruler, table, verdict_words};
-use super::super::{Figure, TextAnchor, Theme, numbers};
+use super::super::words::{length_ruler, verdict_words};
+use super::super::{Figure, TextAnchor, Theme, font, numbers};
 
 const GAP_MM: f64 = 2.4;
 /// Height of the histogram over its width.
@@ -20,17 +20,7 @@ pub fn comparison_figure(comparison: &ComparisonFinding, width_mm: f64, theme: &
     let mut sketch = Sketch::default();
     let mut y = roses(&mut sketch, comparison, width_mm, theme) + 0.8;
     y += difference(&mut sketch, comparison, y, width_mm, theme) + 0.8;
-    let tests: Vec<(String, String)> = comparison
-        .axes
-        .tests
-        .iter()
-        .map(|t| {
-            let remark = if t.remark.is_empty() { String::new() } else { format!("; {}", t.remark) };
-            let statistic = numbers::significant(t.statistic, 3);
-            (t.name.to_owned(), format!("{statistic}, {}{remark}", numbers::p_value(t.p)))
-        })
-        .collect();
-    y += table(&mut sketch, &tests, y, width_mm, theme) + 1.2;
+    y += tests(&mut sketch, comparison, y, width_mm, theme) + 1.2;
     y += match &comparison.shift {
         Ok(shift) => moved(&mut sketch, comparison, shift, y, width_mm, theme),
         Err(why) => {
@@ -79,7 +69,7 @@ fn roses(sketch: &mut Sketch, comparison: &ComparisonFinding, width_mm: f64, the
         let light = comparison.light_from[i]
             .map_or(String::new(), |from| format!("\nlight from {}°", numbers::angle(from.deg(), 0, 360.0)));
         let under = format!(
-            "{} nodes, effective n {}\nR\u{304} {:.2}{light}",
+            "{} nodes\neffective n {}\nR\u{304} {:.2}{light}",
             numbers::count(trend.n),
             numbers::significant(trend.n_eff, 3),
             trend.resultant_length
@@ -147,6 +137,28 @@ fn difference(
     });
     let y = foot + 1.8 + 1.5 * size;
     y - top + verdict_words(sketch, &told, &advised, y, width_mm, theme)
+}
+
+/// Each test with its statistic and p at the right, what is to be said of it beneath.
+fn tests(sketch: &mut Sketch, comparison: &ComparisonFinding, top: f64, width_mm: f64, theme: &Theme) -> f64 {
+    let size = theme.text.small;
+    let rule = theme.stroke(theme.rule, theme.widths.hair);
+    let mut y = top;
+    for test in &comparison.axes.tests {
+        sketch.line(Point::new(0.0, y), Point::new(width_mm, y), rule);
+        y += 0.5;
+        let told = format!("{} · {}", numbers::significant(test.statistic, 3), numbers::p_value(test.p));
+        let right = Type::new(size, theme.ink).anchored(TextAnchor::End);
+        sketch.text(Point::new(width_mm, y + size), told.as_str(), right);
+        let room = width_mm - font::text_width(&told, size, false) - 2.0;
+        y += sketch.paragraph(Point::new(0.0, y), test.name, Type::new(size, theme.ink), room);
+        if !test.remark.is_empty() {
+            let look = Type::new(size, theme.ink_soft);
+            y += sketch.paragraph(Point::new(0.0, y), &test.remark, look, width_mm);
+        }
+        y += 0.4;
+    }
+    y - top
 }
 
 /// Movements square to the crests as a histogram with the median, its interval and the quarters.

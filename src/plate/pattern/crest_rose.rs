@@ -51,7 +51,7 @@ pub fn crest_rose(
         Some((axis, resultant)) => [
             format!("{}°", numbers::angle(axis.deg(), 1, 180.0)),
             format!(
-                "{} crests, {}\nR\u{304} {:.2}",
+                "{} crests\n{} long in all\nR\u{304} {:.2}",
                 numbers::count(crests.numbers.count),
                 numbers::length(crests.numbers.total_length, unit, 3),
                 resultant
@@ -62,7 +62,7 @@ pub fn crest_rose(
     let node_words = [
         by_node.map_or(NO_TREND.to_owned(), |axis| numbers::axis_with_interval(axis, trend.ci95_half_deg)),
         format!(
-            "{} nodes, effective n {}\nR\u{304} {:.2}",
+            "{} nodes\neffective n {}\nR\u{304} {:.2}",
             numbers::count(trend.n),
             numbers::significant(trend.n_eff, 3),
             trend.resultant_length

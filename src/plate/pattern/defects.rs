@@ -59,8 +59,8 @@ fn rows(crests: &CrestsFinding, unit: LengthUnit) -> Vec<(String, String)> {
     let d = &crests.defects;
     let each = |pair: Option<[f64; 2]>| {
         pair.map_or("–".to_owned(), |[ends, pairs]| {
-            let (ends, pairs) = (per_length(ends, unit), per_length(pairs, unit));
-            format!("{ends}; as pairs {pairs}")
+            let (ends, pairs) = (per_length(ends, unit), brief(1000.0 * pairs));
+            format!("{ends}, pairs {pairs}")
         })
     };
     vec![
@@ -136,14 +136,14 @@ fn polarity(
     let most = forks.toward.max(forks.away).max(1) as f64;
     let middle = 0.5 * width_mm;
     let row = top + 1.5 * size + 2.6;
-    let room = middle - font::text_width("360° 9999", size, true) - 2.4;
+    let room = middle - font::text_width("360°: 9999", size, true) - 2.4;
     for (sign, (count, way)) in [-1.0, 1.0].into_iter().zip(ways) {
         let end = middle + sign * (0.6 + room * count as f64 / most);
         let (low, high) = (end.min(middle + sign * 0.6), end.max(middle + sign * 0.6));
         let more = count * 2 > forks.toward + forks.away;
         let fill = if more { theme.tint(theme.measured, 0.55) } else { theme.tint(theme.ink_soft, 0.35) };
         sketch.rectangle(Point::new(low, row - 1.3), Point::new(high, row + 1.3), Some(fill), None);
-        let text = format!("{}° {}", numbers::angle(way.deg(), 0, 360.0), numbers::count(count));
+        let text = format!("{}°: {}", numbers::angle(way.deg(), 0, 360.0), numbers::count(count));
         let anchor = if sign > 0.0 { TextAnchor::Start } else { TextAnchor::End };
         let look = Type::new(size, theme.ink).bold().anchored(anchor);
         let base = row + 0.5 * font::CAP_HEIGHT * size;
@@ -154,6 +154,7 @@ fn polarity(
     let clear = forks.toward + forks.away;
     let unclear = match forks.unclear {
         0 => String::new(),
+        1 => "; 1 more has no clear stem".to_owned(),
         n => format!("; {} more have no clear stem", numbers::count(n)),
     };
     let (many, way) =

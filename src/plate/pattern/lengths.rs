@@ -4,7 +4,7 @@ use crate::ground::LengthUnit;
 use crate::study::CrestsFinding;
 
 use super::super::sketch::Sketch;
-use super::super::words::{verdict_words, words_only};
+use super::super::words::{length_ruler, verdict_words, words_only};
 use super::super::{Figure, Theme, numbers};
 use super::survival::{self, Reading, Sign};
 
@@ -32,11 +32,13 @@ pub fn crest_lengths(crests: &CrestsFinding, unit: LengthUnit, width_mm: f64, th
     let quarters = [0.25, 0.5, 0.75].map(|p| lengths.quantile(p));
     let titles = ["crest length", "longer, %"];
     let mut y = survival::draw(&mut sketch, lengths, quarters, &readings, titles, unit, width_mm, theme);
-    let headline = match seen {
-        Some(mean) => format!("mean {}", numbers::length(mean, unit, 3)),
-        None => "no mean".to_owned(),
+    // All in one unit.
+    let most = [seen, exponential].into_iter().flatten().fold(0.0, f64::max);
+    let (per, symbol) = length_ruler(most, unit);
+    let told = |v: Option<f64>| {
+        v.map_or("–".to_owned(), |v| format!("{} {symbol}", numbers::significant(v / per, 3)))
     };
-    let told = |v: Option<f64>| v.map_or("–".to_owned(), |v| numbers::length(v, unit, 3));
+    let headline = seen.map_or("no mean".to_owned(), |_| format!("mean {}", told(seen)));
     let caption = format!(
         "{} crests seen whole, {} cut by border or gap (ticks) · median {} · if exponential {} · plain mean of what lies inside {}",
         numbers::count(lengths.whole),

@@ -6,7 +6,7 @@ use crate::study::{PatternFinding, PopulationFinding, PopulationSource};
 use super::super::bars::verdict_bar;
 use super::super::dial::CLASS_NAMES;
 use super::super::rose::NO_TREND;
-use super::super::sketch::{Sketch, Type, sector, toward};
+use super::super::sketch::{Sketch, Type, arc, toward};
 use super::super::words::words_only;
 use super::super::{Figure, Theme, font, numbers};
 
@@ -119,17 +119,17 @@ fn row(
     (y - top).max(GLYPH_MM + 0.8)
 }
 
-/// The axis in a ring, its interval as sectors either way.
+/// The axis in a ring, its interval as arcs outside it.
 fn glyph(sketch: &mut Sketch, population: &PopulationFinding, centre: Point, theme: &Theme) {
-    let rim = 0.5 * GLYPH_MM - 0.4;
+    let rim = 0.5 * GLYPH_MM - 1.2;
     sketch.circle(centre, rim, None, Some(theme.stroke(theme.rule, theme.widths.thin)));
     let trend = &population.trend;
     let Some(axis) = trend.axis.filter(|_| trend.defined) else { return };
     for way in [axis.azimuth(), axis.azimuth().reversed()] {
         if let Some(half) = trend.ci95_half_deg {
-            let wedge = sector(centre, 0.0, rim, way.deg() - half, way.deg() + half);
-            sketch.polygon(wedge, Some(theme.tint(theme.measured, 0.3)), None);
+            let outside = arc(centre, rim + 0.8, way.deg() - half, way.deg() + half);
+            sketch.polyline(outside, theme.stroke(theme.measured, theme.widths.bold));
         }
-        sketch.line(centre, toward(centre, rim, way), theme.stroke(theme.measured, 0.7 * theme.widths.bold));
+        sketch.line(centre, toward(centre, rim, way), theme.stroke(theme.measured, theme.widths.line));
     }
 }

@@ -31,7 +31,7 @@ pub fn recovery_curve(
     // Two rows of names above the chart.
     let top = 2.9 * size;
     let bottom = top + SHAPE * (right - left);
-    let (upper, lower) = (bottom + 2.2, bottom + 2.2 + BIAS_SHAPE * (right - left));
+    let (upper, lower) = (bottom + 3.0, bottom + 3.0 + BIAS_SHAPE * (right - left));
     let x = Ruler { span: Span::between(0.0, 180.0), from_mm: left, to_mm: right };
     let chance = Chart { x, y: Ruler { span: Span::between(0.0, 1.0), from_mm: bottom, to_mm: top } };
     let bias = Chart { x, y: Ruler { span: bias_span(&recovery.trends), from_mm: lower, to_mm: upper } };
@@ -117,14 +117,14 @@ fn names(
         sketch.text(Point::new(place, base), text, look);
     };
     if let Some(light) = recovery.light_from.map(|from| from.axis()) {
-        let look = Type::new(size, theme.caution).anchored(TextAnchor::Middle);
+        let look = Type::new(size, theme.caution).anchored(TextAnchor::Middle).haloed(theme.paper);
         let thin = theme.stroke(theme.caution, theme.widths.thin);
         mark(light, "light", 1.0, look, thin);
         let dashed = theme.dashed(theme.caution, theme.widths.thin);
         mark(light.perpendicular(), "light + 90°", 1.0, look, dashed);
     }
     if let Some(axis) = trend.axis.filter(|_| trend.defined) {
-        let look = Type::new(size, theme.measured).bold().anchored(TextAnchor::Middle);
+        let look = Type::new(size, theme.measured).bold().anchored(TextAnchor::Middle).haloed(theme.paper);
         let text = format!("trend {}°", numbers::angle(axis.deg(), 0, 180.0));
         mark(axis, &text, 0.0, look, theme.stroke(theme.measured, theme.widths.line));
     }

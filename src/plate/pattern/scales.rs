@@ -31,7 +31,7 @@ pub fn scale_sweep(pattern: &PatternFinding, unit: LengthUnit, width_mm: f64, th
     // The ruler of scales stands above.
     let top = 2.9 * size + 0.9;
     let bottom = top + SHAPE * (right - left);
-    let (upper, lower) = (bottom + 1.6, bottom + 1.6 + TREND_SHAPE * (right - left));
+    let (upper, lower) = (bottom + 3.2, bottom + 3.2 + TREND_SHAPE * (right - left));
     let x = Ruler { span: span.per(per), from_mm: left, to_mm: right };
     let most = scales.iter().map(|s| s.coherence).filter(|c| c.is_finite()).fold(0.1, f64::max);
     let coherence = Chart {

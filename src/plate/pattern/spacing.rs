@@ -53,10 +53,10 @@ pub fn spacing_survival(
 fn caption(crests: &CrestsFinding) -> String {
     let (spacing, transects) = (&crests.spacing, &crests.spacing.transects);
     let bias = match (spacing.quartiles[1], spacing.uncensored_median) {
-        (Some(median), Some(plain)) if median > 0.0 && plain > 0.0 => {
-            let share = 100.0 * (plain / median - 1.0);
-            format!("; whole ones alone would say {} %", signed(share))
-        }
+        (Some(median), Some(plain)) if median > 0.0 => match signed(100.0 * (plain / median - 1.0)) {
+            same if same == "0" => "; those seen whole have the same median".to_owned(),
+            more => format!("; those seen whole have a median {more} % off"),
+        },
         _ => String::new(),
     };
     format!(

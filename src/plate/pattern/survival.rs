@@ -58,14 +58,15 @@ pub(super) fn draw(
     let x = Ruler { span: Span::between(0.0, greatest).per(per), from_mm: left, to_mm: right };
     let y = Ruler { span: Span::between(0.0, 1.0), from_mm: bottom, to_mm: TOP_MM };
     let chart = Chart { x, y };
-    for reading in readings {
+    let middle = |lane: usize| bottom + 0.8 + LANE_MM * (lane as f64 + 0.5);
+    for (i, reading) in readings.iter().enumerate() {
         let at = x.at(reading.value);
         let thin = theme.widths.thin;
         let line = match reading.sign {
             Sign::Faint => theme.dashed(theme.rule, thin),
             sign => theme.stroke(color(sign, theme), thin),
         };
-        sketch.line(Point::new(at, TOP_MM), Point::new(at, foot), line);
+        sketch.line(Point::new(at, TOP_MM), Point::new(at, middle(i)), line);
     }
     curve(sketch, &chart, survival, theme);
     for (share, quantile) in [0.75, 0.5, 0.25].into_iter().zip(quantiles) {
@@ -77,8 +78,8 @@ pub(super) fn draw(
     let shares = [0.0, 0.25, 0.5, 0.75, 1.0].map(|s| (s, format!("{:.0}", 100.0 * s)));
     chart.bare_axes(sketch, "", titles[1], &[], &shares, theme);
     for (i, reading) in readings.iter().enumerate() {
-        let middle = bottom + 0.8 + LANE_MM * (i as f64 + 0.5);
-        lane(sketch, reading, &x, middle, theme);
+        let crossed: Vec<f64> = readings[i + 1..].iter().map(|r| x.at(r.value)).collect();
+        lane(sketch, reading, &x, middle(i), &crossed, theme);
     }
     // The foot of the lanes carries the ruler.
     let lanes = Chart { x, y: Ruler { span: Span::between(0.0, 1.0), from_mm: foot, to_mm: bottom } };
@@ -132,8 +133,8 @@ fn color(sign: Sign, theme: &Theme) -> Rgba {
     }
 }
 
-/// The mark with its interval, and its name on the side where there is room.
-fn lane(sketch: &mut Sketch, reading: &Reading, x: &Ruler, middle: f64, theme: &Theme) {
+/// The mark with its interval, and its name on the side where there is room and fewer lines run to lanes below.
+fn lane(sketch: &mut Sketch, reading: &Reading, x: &Ruler, middle: f64, crossed: &[f64], theme: &Theme) {
     let at = Point::new(x.at(reading.value), middle);
     let ink = color(reading.sign, theme);
     let (mut low, mut high) = (at.x, at.x);
@@ -168,7 +169,14 @@ fn lane(sketch: &mut Sketch, reading: &Reading, x: &Ruler, middle: f64, theme: &
     let text_color = if reading.sign == Sign::Faint { theme.ink_soft } else { theme.ink };
     let look = Type::new(size, text_color).haloed(theme.paper);
     let (to_right, to_left) = (x.to_mm - high - 1.8, low - 1.8 - x.from_mm);
-    if to_right >= width || to_right >= to_left {
+    let lines = |from: f64| crossed.iter().filter(|at| (from..from + width).contains(*at)).count();
+    let on_right = match (to_right >= width, to_left >= width) {
+        (true, true) => lines(high + 1.8) <= lines(low - 1.8 - width),
+        (true, false) => true,
+        (false, true) => false,
+        (false, false) => to_right >= to_left,
+    };
+    if on_right {
         let name = font::shortened(reading.name, size, false, to_right.max(4.0));
         sketch.text(Point::new(high + 1.8, base), name, look);
     } else {

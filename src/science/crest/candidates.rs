@@ -119,6 +119,52 @@ pub fn crossings(
     Ok((all, moments))
 }
 
+/// Strengths lowered to the geometric mean of themselves and of what a coarser scale shows across the same crest,
+/// both normalised so that an ideal step (or bar) answers alike at every scale: √(s · (σ₂/σ)^γ s₂), γ = 1 for a step
+/// and 2 for a ridge, 0 where the coarser scale shows the other sense.
+///
+/// # Errors
+/// [`Stopped`].
+pub(super) fn confirm(
+    points: &mut [Crossing],
+    image: &Grid<f32>,
+    slip_face: bool,
+    scales: [f64; 2],
+    work: &Work,
+) -> Result<(), Stopped> {
+    let (width, height) = (image.width(), image.height());
+    let kernels = Kernels::new(scales[1]);
+    let gain = (scales[1] / scales[0]).powi(if slip_face { 1 } else { 2 });
+    let mut strips: Vec<&mut [Crossing]> = Vec::new();
+    let mut left = points;
+    for strip in 0..height.div_ceil(STRIP) {
+        let count = left.partition_point(|p| (p.row as usize) < (strip + 1) * STRIP);
+        let (part, more) = left.split_at_mut(count);
+        strips.push(part);
+        left = more;
+    }
+    strips.into_par_iter().enumerate().try_for_each(|(strip, part)| {
+        if part.is_empty() {
+            return Ok(());
+        }
+        let first = strip * STRIP;
+        let fields = Fields::of(image, &kernels, first, STRIP.min(height - first), work)?;
+        for p in part {
+            let i = (p.row as usize - first + HALO) * width + p.col as usize;
+            let [nx, ny] = p.normal;
+            let seen = if slip_face {
+                f64::from(fields.x[i]) * nx + f64::from(fields.y[i]) * ny
+            } else {
+                let h = hessian(&fields, i);
+                let curve = h.xx * nx * nx + 2.0 * h.xy * nx * ny + h.yy * ny * ny;
+                if p.bright { -curve } else { curve }
+            };
+            p.strength = (p.strength * (gain * seen).max(0.0)).sqrt();
+        }
+        Ok(())
+    })
+}
+
 /// The Hessian at an index of the fields.
 pub(super) fn hessian(fields: &Fields, i: usize) -> Symmetric2 {
     Symmetric2 { xx: f64::from(fields.xx[i]), xy: f64::from(fields.xy[i]), yy: f64::from(fields.yy[i]) }

@@ -148,7 +148,7 @@ pub fn edit(
 }
 
 /// Pieces of joining and lengthening strokes that met no end and run along a line that is there already: the same
-/// thing done twice.
+/// thing done twice. The shortest are looked at first, so that of two alike the longer stays.
 fn repeated(
     pieces: &[Piece],
     lines: &[Line],
@@ -159,13 +159,25 @@ fn repeated(
     let near = Near::new(lines.iter().map(|line| line.points.as_slice()), touch);
     let alone = |piece: &usize| unmet(*piece, 0) && unmet(*piece, 1);
     let strokes = laid.iter().filter(|stroke| matches!(stroke.kind, StrokeKind::Join | StrokeKind::Extend));
-    let all = strokes.flat_map(|stroke| stroke.pieces.iter().copied()).filter(alone);
-    all.filter(|piece| {
-        // Of two strokes alike that met nothing the first stays.
-        let others = |line: usize, _| lines[line].parts.iter().any(|part| part < piece);
-        pieces[*piece].points.iter().all(|p| near.nearest(*p, touch, others).is_some())
-    })
-    .collect()
+    let mut alone: Vec<usize> =
+        strokes.flat_map(|stroke| stroke.pieces.iter().copied()).filter(alone).collect();
+    let key = |piece: &usize| {
+        let p = pieces[*piece].points[0];
+        [pieces[*piece].length(), p.x, p.y]
+    };
+    alone.sort_by(|a, b| {
+        let (a, b) = (key(a), key(b));
+        a[0].total_cmp(&b[0]).then(a[1].total_cmp(&b[1])).then(a[2].total_cmp(&b[2]))
+    });
+    let mut gone: Vec<usize> = Vec::new();
+    for piece in alone {
+        let others =
+            |line: usize, _| !lines[line].parts.iter().all(|part| *part == piece || gone.contains(part));
+        if pieces[piece].points.iter().all(|p| near.nearest(*p, touch, others).is_some()) {
+            gone.push(piece);
+        }
+    }
+    gone
 }
 
 /// Ends of a stroke that should have met another and did not: neither an end nor the side of a line.

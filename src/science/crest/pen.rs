@@ -13,7 +13,6 @@ use super::fields::{Fields, HALO, Kernels};
 use super::floor::{floor, thresholds};
 use super::lines::{FACING, margin};
 use super::link::Index;
-use super::model::CLEAR;
 use super::scale::MOST_PX;
 use super::tone::Ground;
 use super::{CrestModel, CrestSettings, lines, scale, simplify};
@@ -108,10 +107,10 @@ impl Pen {
         let open = ground.open(margin(sigma));
         let tone = ground.prepared(sigma, true, work)?;
         let (steps, moments) = crossings(&tone, &open, true, sigma, work)?;
-        let model = model.unwrap_or(moments.fits()[0].model);
+        let model = model.unwrap_or(moments.fits(sigma)[0].model);
         let slip_face = model == CrestModel::SlipFace;
         let (sense, skewness) = moments.slip_sense();
-        let sense = (slip_face && skewness >= CLEAR).then_some(sense);
+        let sense = (slip_face && skewness >= moments.clear(sigma)).then_some(sense);
         let (tone, found) = match slip_face {
             true => (tone, steps),
             false => {

@@ -19,6 +19,11 @@ fn spacings(model: CrestModel) -> f64 {
     if model == CrestModel::SlipFace { 20.0 } else { 4.0 * 3f64.sqrt() }
 }
 
+/// Scale of the derivatives that suits a spacing, both in pixels, from 1 px to the widest.
+pub fn suited_scale(model: CrestModel, spacing_px: f64) -> f64 {
+    (spacing_px / spacings(model)).clamp(1.0, MOST_PX)
+}
+
 /// Strong responses stand so many noise floors high at a scale that can be relied on: lines are then followed
 /// well above the noise.
 const RELIABLE: f64 = 2.0;
@@ -37,7 +42,7 @@ pub(super) fn choose(ground: &Ground<'_>, settings: &CrestSettings, work: &Work)
                 None => lines::best_model(ground, (spacing / 12.0).clamp(1.0, MOST_PX), work)?,
             };
             let settings = CrestSettings { model: Some(model), ..settings.clone() };
-            let sigma = (spacing / spacings(model)).clamp(1.0, MOST_PX);
+            let sigma = suited_scale(model, spacing);
             (lines::trace(ground, &settings, sigma, work)?, spacing)
         }
         None => {

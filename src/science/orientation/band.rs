@@ -19,8 +19,16 @@ pub static METHOD: Method = Method {
         Symbol { symbol: "I, I₊", meaning: "tone, and tone without what is broader", unit: "tone" },
         Symbol { symbol: "G_b", meaning: "smoothing by a Gaussian of scale b", unit: "1" },
         Symbol { symbol: "σ", meaning: "gradient scale; a wave of 6σ answers most", unit: "px" },
-        Symbol { symbol: "H", meaning: "response of the gradient to a wave of k radians a pixel", unit: "1/px" },
-        Symbol { symbol: "E", meaning: "texture of the band, with γ = 1 so that scales compare", unit: "tone²" },
+        Symbol {
+            symbol: "H",
+            meaning: "response of the gradient to a wave of k radians a pixel",
+            unit: "1/px",
+        },
+        Symbol {
+            symbol: "E",
+            meaning: "texture of the band, with γ = 1 so that scales compare",
+            unit: "tone²",
+        },
     ],
     assumptions: &["bedforms of another scale are at least about twice as far apart, or twice as close"],
     limits: &[
@@ -150,10 +158,8 @@ pub fn band_sweep(
 /// Column and row step on the ground in units of the finer one.
 fn pixel_ratios(image: &Grid<f32>, patch: &Polygon, place: &Place) -> [f64; 2] {
     let raster = Point::new(0.5 * image.width() as f64, 0.5 * image.height() as f64);
-    let frame = patch
-        .bounds()
-        .and_then(|b| place.local_frame(b.centre()))
-        .or_else(|| place.local_frame(raster));
+    let frame =
+        patch.bounds().and_then(|b| place.local_frame(b.centre())).or_else(|| place.local_frame(raster));
     frame.map_or([1.0; 2], |f| {
         let size = f.pixel_size();
         let fine = size[0].min(size[1]);

@@ -22,5 +22,14 @@ pub use tensor::{NodeField, TensorSettings, TrendNode, trend_nodes};
 use crate::ground::Method;
 
 /// The methods of this family.
-pub const METHODS: &[&Method] =
-    &[&tensor::METHOD, &noise::METHOD, &spectrum::METHOD, &scale::METHOD, &band::METHOD, &plateau::METHOD, &populations::METHOD, &speckle::METHOD, &look::METHOD];
+pub const METHODS: &[&Method] = &[
+    &tensor::METHOD,
+    &noise::METHOD,
+    &spectrum::METHOD,
+    &scale::METHOD,
+    &band::METHOD,
+    &plateau::METHOD,
+    &populations::METHOD,
+    &speckle::METHOD,
+    &look::METHOD,
+];

@@ -11,7 +11,11 @@ pub static METHOD: Method = Method {
     question: "Over which scales does the trend stand still, and is there more than one such stretch?",
     formula: "scales i … j with share ≥ ⅓, E > 0 and |Tₖ − T| ≤ 10° for each k, T = ½ arg Σ Eₖ R̄ₖ e^{2iTₖ}, j − i ≥ 1;  scale of the plateau = that of max E R̄",
     symbols: &[
-        Symbol { symbol: "Tₖ, R̄ₖ", meaning: "mean trend at scale k and its doubled resultant length", unit: "deg, 1" },
+        Symbol {
+            symbol: "Tₖ, R̄ₖ",
+            meaning: "mean trend at scale k and its doubled resultant length",
+            unit: "deg, 1",
+        },
         Symbol { symbol: "E", meaning: "coherence beyond noise", unit: "1" },
         Symbol { symbol: "T", meaning: "trend of the plateau", unit: "deg" },
     ],
@@ -19,17 +23,15 @@ pub static METHOD: Method = Method {
     limits: &[
         "one population of widely spread trends may drift by more than 10° over its scales and fall into two plateaus: populations are judged by themselves",
     ],
-    sources: &[
-        Source {
-            key: "lindeberg1998",
-            authors: "Lindeberg, T.",
-            year: 1998,
-            title: "Feature detection with automatic scale selection",
-            published: "International Journal of Computer Vision 30, 79",
-            locator: "sweep over scales; the rule of the plateau is ours",
-            read: Read::Memory,
-        },
-    ],
+    sources: &[Source {
+        key: "lindeberg1998",
+        authors: "Lindeberg, T.",
+        year: 1998,
+        title: "Feature detection with automatic scale selection",
+        published: "International Journal of Computer Vision 30, 79",
+        locator: "sweep over scales; the rule of the plateau is ours",
+        read: Read::Memory,
+    }],
 };
 
 /// Share of nodes above the noise that a scale of a plateau needs.
@@ -106,7 +108,8 @@ mod tests {
 
     #[test]
     fn two_trends_at_two_scales_are_two_plateaus() {
-        let found = plateaus(&steps(&[None, Some(178.0), Some(2.0), Some(20.0), Some(41.0), Some(39.0), None]));
+        let found =
+            plateaus(&steps(&[None, Some(178.0), Some(2.0), Some(20.0), Some(41.0), Some(39.0), None]));
         assert_eq!(found.iter().map(|p| p.scales).collect::<Vec<_>>(), [[1, 2], [4, 5]]);
         assert!(found[0].axis.separation(Axis::from_deg(0.0)) < 1e-6, "{found:?}");
         assert!(plateaus(&[]).is_empty());

@@ -1,6 +1,8 @@
 //! Several populations of bedforms in one patch: side by side, or one laid over the other.
 
-use crate::ground::{Axis, Grid, LocalFrame, Method, Place, Point, Polygon, Read, Seed, Source, Stopped, Symbol, Work};
+use crate::ground::{
+    Axis, Grid, LocalFrame, Method, Place, Point, Polygon, Read, Seed, Source, Stopped, Symbol, Work,
+};
 use crate::science::axial::effective::effective_number;
 use crate::science::axial::interval::{dispersion, half_width};
 use crate::science::axial::mixture::{Component, Mixture, MixtureSettings, mixtures};
@@ -21,7 +23,11 @@ pub static METHOD: Method = Method {
         Symbol { symbol: "b", meaning: "band of scales, half an octave apart", unit: "1" },
         Symbol { symbol: "r_m", meaning: "probability that a node belongs to mode m", unit: "1" },
         Symbol { symbol: "E_bm", meaning: "texture of mode m in band b", unit: "tone²" },
-        Symbol { symbol: "T, h", meaning: "trend of a population and half its 95 % interval by effective n", unit: "deg" },
+        Symbol {
+            symbol: "T, h",
+            meaning: "trend of a population and half its 95 % interval by effective n",
+            unit: "deg",
+        },
         Symbol {
             symbol: "weight",
             meaning: "side by side: share of places where the population's texture, held against its own typical strength, is the stronger; superposed: share of the variance of tone above the background of the spectrum, each bin given to the population nearest in spacing and trend",
@@ -38,17 +44,15 @@ pub static METHOD: Method = Method {
         "the overtones of strongly uneven coarse bedforms fall into the band of fine ones and turn their trend toward the coarse one's",
         "trends closer than 20° are not split",
     ],
-    sources: &[
-        Source {
-            key: "ventifact-populations",
-            authors: "this program",
-            year: 2026,
-            title: "Populations by modes of bands; the mixture itself is Fisher's (axial.mixture), the scales Lindeberg's (orientation.band)",
-            published: "rules and thresholds ours, held to synthetic fields",
-            locator: "",
-            read: Read::Derived,
-        },
-    ],
+    sources: &[Source {
+        key: "ventifact-populations",
+        authors: "this program",
+        year: 2026,
+        title: "Populations by modes of bands; the mixture itself is Fisher's (axial.mixture), the scales Lindeberg's (orientation.band)",
+        published: "rules and thresholds ours, held to synthetic fields",
+        locator: "",
+        read: Read::Derived,
+    }],
 };
 
 /// Least angle between two populations, degrees.
@@ -66,6 +70,8 @@ const LEAST_KAPPA: f64 = 1.0;
 const TEXTURE: f64 = 5.0;
 /// Scales closer than this factor are one band.
 const ONE_SCALE: f64 = 1.5;
+/// Share of a population's greatest texture that makes a finer band as good.
+const NEARLY: f64 = 0.6;
 /// Share of common ground from which two populations lie over each other.
 const OVERLAP: f64 = 0.5;
 
@@ -176,10 +182,17 @@ fn candidates(
     // The strongest first: the others join it where they run alike.
     seen.sort_by(|a, b| b.texture.total_cmp(&a.texture));
     let mut kept: Vec<Candidate> = Vec::new();
-    for candidate in seen {
+    for candidate in &seen {
         if kept.iter().all(|k| k.axis.separation(candidate.axis) >= LEAST_APART_DEG) {
-            kept.push(candidate);
+            kept.push(*candidate);
         }
+    }
+    // Under broader bedforms the finest band that is nearly as strong holds least of their slopes.
+    let broadest = kept.iter().map(|k| k.scale_px).fold(0.0, f64::max);
+    for k in kept.iter_mut().filter(|k| k.scale_px * ONE_SCALE <= broadest) {
+        let alike = seen.iter().filter(|c| c.axis.separation(k.axis) < LEAST_APART_DEG);
+        let strong = alike.filter(|c| c.texture >= NEARLY * k.texture);
+        k.scale_px = strong.map(|c| c.scale_px).fold(k.scale_px, f64::min);
     }
     let sum: f64 = kept.iter().map(|k| k.texture).sum();
     kept.retain(|k| k.texture >= LEAST_SHARE * sum);
@@ -217,11 +230,8 @@ fn groups(
     let at: Vec<Point> = picked.iter().map(|i| ground.of(field.nodes[*i].at)).collect();
     let number =
         effective_number(&phi, None, &at, node_spacing(field), field.integration_scale_ground, work)?;
-    let fit = MixtureSettings {
-        most_modes: settings.most_modes,
-        background: true,
-        n_eff: number.test.value(),
-    };
+    let fit =
+        MixtureSettings { most_modes: settings.most_modes, background: true, n_eff: number.test.value() };
     let Some(best) = mixtures(&phi, None, fit, seed, work)?.into_iter().next() else {
         return Ok(Vec::new());
     };
@@ -268,18 +278,21 @@ fn share(m: &Mixture, component: usize, phi: f64) -> f64 {
 /// Modes that stand apart: those joined by a density above half of the lesser top are one, as the two slopes of wavy
 /// crests are; so are those closer than 20°. Modes so wide that they are background are left out.
 fn distinct(m: &Mixture) -> Vec<Vec<usize>> {
-    let narrow: Vec<usize> = (0..m.components.len()).filter(|c| m.components[*c].kappa >= LEAST_KAPPA).collect();
+    let narrow: Vec<usize> =
+        (0..m.components.len()).filter(|c| m.components[*c].kappa >= LEAST_KAPPA).collect();
     let mut parts: Vec<Vec<usize>> = narrow.into_iter().map(|c| vec![c]).collect();
     let one = |a: usize, b: usize| {
         let (from, to) = (m.components[a].mean, m.components[b].mean);
         let way = (to - from).sin().atan2((to - from).cos());
         let lesser = whole_density(m, from).min(whole_density(m, to));
-        let least = (1..64).map(|i| whole_density(m, from + way * f64::from(i) / 64.0)).fold(lesser, f64::min);
+        let least =
+            (1..64).map(|i| whole_density(m, from + way * f64::from(i) / 64.0)).fold(lesser, f64::min);
         0.5 * way.abs().to_degrees() < LEAST_APART_DEG || least > DIP * lesser
     };
     let mut i = 0;
     while i < parts.len() {
-        let near = (i + 1..parts.len()).find(|j| parts[i].iter().any(|a| parts[*j].iter().any(|b| one(*a, *b))));
+        let near =
+            (i + 1..parts.len()).find(|j| parts[i].iter().any(|a| parts[*j].iter().any(|b| one(*a, *b))));
         match near {
             Some(j) => {
                 let other = parts.swap_remove(j);

@@ -13,10 +13,10 @@ pub static METHOD: Method = Method {
     id: "scene.bedforms",
     name: "Bedforms laid in",
     question: "What would bedforms of a known trend look like here?",
-    formula: "Z = Σ e^{i(k·x + phase)},  k = 2π(1 + b X)/λ at trend + 90° + s Y;  u = Z/√(|Z|² + q²);  h = H Re Σ 2cₙuⁿ;  d = 2π b s;  tone = t (−∇h · toward light)",
+    formula: "Z = Σ e^{i(k·x + phase)},  k = 2π/λ ((1 + b X) across + s Y along the trend);  u = Z/√(|Z|² + q²);  h = H Re Σ 2cₙuⁿ;  d = 2π b s;  tone = t (−∇h · toward light)",
     symbols: &[
         Symbol { symbol: "λ, H", meaning: "crest to crest, and height", unit: "m" },
-        Symbol { symbol: "s", meaning: "spread of the crests' trends", unit: "rad" },
+        Symbol { symbol: "s", meaning: "spread of the crests' trends, as a slope", unit: "1" },
         Symbol { symbol: "b", meaning: "relative spread of their wave numbers", unit: "1" },
         Symbol { symbol: "X, Y", meaning: "even shares of a normal distribution", unit: "1" },
         Symbol { symbol: "d", meaning: "free ends times spacing over crest length", unit: "1" },
@@ -25,7 +25,7 @@ pub static METHOD: Method = Method {
             meaning: "Fourier series of a profile that rises over seven tenths and falls over three, first four terms",
             unit: "1",
         },
-        Symbol { symbol: "q", meaning: "0.3: height fades where a crest ends", unit: "1" },
+        Symbol { symbol: "q", meaning: "0.15: height fades where a crest ends", unit: "1" },
         Symbol { symbol: "t", meaning: "tone, or ln of intensity, that a slope of one adds", unit: "1" },
     ],
     assumptions: &[
@@ -69,7 +69,7 @@ const STOSS: f64 = 0.7;
 const TERMS: usize = 4;
 const HIGHEST: f64 = 0.45;
 /// |Z| at which height has begun to fade.
-const FADE: f64 = 0.3;
+const FADE: f64 = 0.15;
 /// Greatest relative spread of wave numbers.
 const WIDEST: f64 = 0.3;
 
@@ -107,33 +107,41 @@ struct Wave {
 }
 
 impl Bedforms {
-    /// (s, b): spread of trends in radians, and of relative wave numbers, that give the stated defects: d = 2π b s.
+    /// (s, b): spread of wave numbers along the trend and across it, over 2π/λ, that gives the stated defects:
+    /// d = 2π b s.
     fn spreads(&self) -> (f64, f64) {
-        let s = self.spread_deg.max(0.1).to_radians();
+        let s = self.spread_deg.clamp(0.1, 60.0).to_radians().tan();
         let b = self.defects.max(0.0) / (TAU * s);
         if b <= WIDEST { (s, b) } else { (self.defects / (TAU * WIDEST), WIDEST) }
     }
 
     /// Standard deviation of the crests' trends as laid in, degrees.
     pub fn spread_laid_deg(&self) -> f64 {
-        self.spreads().0.to_degrees()
+        self.spreads().0.atan().to_degrees()
     }
 
-    fn waves(&self, size: [usize; 2], frame: LocalFrame, light: Option<Azimuth>, rng: &mut impl Rng) -> Vec<Wave> {
+    fn waves(
+        &self,
+        size: [usize; 2],
+        frame: LocalFrame,
+        light: Option<Azimuth>,
+        rng: &mut impl Rng,
+    ) -> Vec<Wave> {
         let (spread, bandwidth) = self.spreads();
-        let sense = if self.lee_clockwise { 1.0 } else { -1.0 };
+        let sense = if self.lee_clockwise { 90.0 } else { -90.0 };
+        let along = self.trend.azimuth().east_north();
+        let across = self.trend.azimuth().rotated(sense).east_north();
         let from = light.map(Azimuth::east_north);
         (0..WAVES)
             .map(|i| {
                 let share = (i as f64 + 0.5) / WAVES as f64;
                 let other = (share * WAVES as f64 * GOLDEN).fract().clamp(1e-4, 1.0 - 1e-4);
-                let turn = spread.to_degrees() * normal_quantile(share);
-                let normal = self.trend.azimuth().rotated(90.0 * sense + turn);
-                let k = TAU / self.spacing * (1.0 + bandwidth * normal_quantile(other)).max(0.2);
-                let (east, north) = normal.east_north();
+                let [x, y] = [1.0 + bandwidth * normal_quantile(other), spread * normal_quantile(share)];
+                let k = TAU / self.spacing;
+                let (east, north) = (k * (x * across.0 + y * along.0), k * (x * across.1 + y * along.1));
                 let step = |dcol: f64, drow: f64| {
                     let (e, n) = frame.ground(dcol, drow);
-                    k * (e * east + n * north)
+                    e * east + n * north
                 };
                 let (per_col, per_row) = (step(1.0, 0.0), step(0.0, 1.0));
                 // Phases belong to the middle, so that a turned grid shows the turned field.
@@ -142,7 +150,7 @@ impl Bedforms {
                     start: rng.random_range(0.0..TAU) - per_col * middle[0] - per_row * middle[1],
                     per_col,
                     per_row,
-                    toward_light: from.map_or(0.0, |(e, n)| k * (e * east + n * north)),
+                    toward_light: from.map_or(0.0, |(e, n)| e * east + n * north),
                 }
             })
             .collect()
@@ -163,7 +171,8 @@ impl Bedforms {
         let [width, height] = size;
         let waves = self.waves(size, frame, light, rng);
         let profile = self.profile(frame);
-        let (mut relief, mut slope) = (Vec::with_capacity(width * height), Vec::with_capacity(width * height));
+        let (mut relief, mut slope) =
+            (Vec::with_capacity(width * height), Vec::with_capacity(width * height));
         let mut line = vec![[0.0f64; 4]; width];
         for row in 0..height {
             line.fill([0.0; 4]);
@@ -212,14 +221,22 @@ impl Bedforms {
     fn profile(&self, frame: LocalFrame) -> Vec<Complex64> {
         let coarse = frame.pixel_size().into_iter().fold(0.0, f64::max);
         let terms = ((HIGHEST * self.spacing / coarse).floor() as usize).clamp(1, TERMS);
-        (1..=terms)
+        let series: Vec<Complex64> = (1..=terms)
             .map(|n| {
                 let n = n as f64;
                 let turn = Complex64::new(0.0, TAU * n);
                 let x = PI * n / (TERMS + 1) as f64;
                 (1.0 - (-turn * STOSS).exp()) / (turn * turn * STOSS * (1.0 - STOSS)) * (x.sin() / x)
             })
-            .collect()
+            .collect();
+        // What smoothing took from the height is given back.
+        let at = |share: f64| -> f64 {
+            let terms = (1..).zip(&series);
+            terms.map(|(n, c)| 2.0 * (c * Complex64::from_polar(1.0, TAU * f64::from(n) * share)).re).sum()
+        };
+        let heights = || (0..64).map(|i| at(f64::from(i) / 64.0));
+        let range = heights().fold(f64::MIN, f64::max) - heights().fold(f64::MAX, f64::min);
+        series.into_iter().map(|c| c / range).collect()
     }
 }
 
@@ -250,7 +267,8 @@ mod tests {
 
     #[test]
     fn straight_bedforms_have_their_height_and_their_steep_side_where_stated() {
-        let straight = Bedforms { spread_deg: 0.1, defects: 0.0, trend: Axis::from_deg(0.0), ..bedforms(0.0) };
+        let straight =
+            Bedforms { spread_deg: 0.1, defects: 0.0, trend: Axis::from_deg(0.0), ..bedforms(0.0) };
         let laid = lay(Bedforms { spacing: 60.0, ..straight }, Some(90.0));
         let (low, high) = laid
             .relief

@@ -5,6 +5,7 @@ mod dunes;
 mod grating;
 pub mod inject;
 pub mod reach;
+pub mod recover;
 pub mod smooth;
 mod speckle;
 pub mod texture;
@@ -18,4 +19,4 @@ pub use speckle::{correlated_speckle, speckle, speckled};
 use crate::ground::Method;
 
 /// The methods of this family.
-pub const METHODS: &[&Method] = &[&inject::METHOD, &texture::METHOD];
+pub const METHODS: &[&Method] = &[&inject::METHOD, &texture::METHOD, &recover::METHOD];

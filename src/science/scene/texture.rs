@@ -14,9 +14,17 @@ pub static METHOD: Method = Method {
     question: "What would this ground look like without its own bedforms?",
     formula: "F ↦ F √min(1, B/P̄) for 1/2λ ≤ |f| ≤ 2.5/λ;  P̄ = mean of |F|² in a cell of a ring and 15° of direction;  B = lower quartile of P̄ over the ring's cells, over 1 − 0.67/√n;  before that |F|² > 8 median/ln 2 of its ring is put back to median/ln 2",
     symbols: &[
-        Symbol { symbol: "F", meaning: "Fourier amplitude of the tone less its large-scale part", unit: "tone" },
+        Symbol {
+            symbol: "F",
+            meaning: "Fourier amplitude of the tone less its large-scale part",
+            unit: "tone",
+        },
         Symbol { symbol: "λ", meaning: "spacing of the pattern", unit: "m" },
-        Symbol { symbol: "P̄, B", meaning: "power of a cell, and the background it is put back to", unit: "tone²" },
+        Symbol {
+            symbol: "P̄, B",
+            meaning: "power of a cell, and the background it is put back to",
+            unit: "tone²",
+        },
         Symbol { symbol: "n", meaning: "independent amplitudes of a cell", unit: "1" },
     ],
     assumptions: &[

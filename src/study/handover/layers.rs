@@ -2,7 +2,7 @@
 
 use std::collections::BTreeMap;
 
-use super::crests::crest_layer;
+use super::crest_layers::crest_layers;
 use super::network_layers::network_layers;
 use super::obstacles::outcrop_layer;
 use crate::files::layers::{Column, Geometry, GeometryKind, Layer, Row, Srs, Value};
@@ -229,7 +229,7 @@ pub fn layers(sheet: &Sheet, findings: &Findings, sources: &Sources) -> Vec<Laye
             // A raster with networks alone has no patch layers.
             let own = own.into_iter().filter(|_| !patches.is_empty());
             own.chain(outcrops)
-                .chain(crest_layer(open, &patches, &srs, &suffix))
+                .chain(crest_layers(open, &patches, &srs, &suffix))
                 .chain(network_layers(open, &networks, &srs, &suffix))
                 .collect::<Vec<_>>()
         })

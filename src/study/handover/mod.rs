@@ -1,6 +1,7 @@
 //! What leaves the program: the findings as JSON, tables and layers, the methods as a page.
 
 mod bodies;
+mod crest_layers;
 mod crests;
 mod json;
 mod layers;

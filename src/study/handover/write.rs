@@ -6,6 +6,7 @@ use crate::files::layers::{LayerError, write_csv, write_geojson, write_geopackag
 use crate::files::save;
 use crate::study::{Findings, Sheet, Sources};
 
+use super::crest_layers::{crest_table, lonlat_crests};
 use super::layers::{layers, lonlat_patches, node_table, patch_table, verdict_table, wind_table};
 use super::network_layers::{
     drop_table, junction_table, lonlat_reaches, network_table, profile_table, reach_table, width_table,
@@ -58,6 +59,7 @@ pub fn write_all(
         sensitivity_table(findings),
         calendar_table(findings),
         obstacle_table(findings),
+        crest_table(findings, sources),
         network_table(findings),
         reach_table(findings),
         profile_table(findings),
@@ -82,6 +84,10 @@ pub fn write_all(
     if let Some(layer) = lonlat_outcrops(sheet, findings, sources) {
         write_geojson(&folder.join("outcrops.geojson"), &layer)?;
         written.push("outcrops.geojson".into());
+    }
+    if let Some(layer) = lonlat_crests(findings, sources) {
+        write_geojson(&folder.join("crests.geojson"), &layer)?;
+        written.push("crests.geojson".into());
     }
     if let Some(layer) = lonlat_reaches(findings, sources) {
         write_geojson(&folder.join("channels.geojson"), &layer)?;

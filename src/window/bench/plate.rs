@@ -29,8 +29,9 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
 }
 
 fn options(ui: &mut Ui, model: &Model, choice: &mut PlateChoice) {
-    ui.horizontal(|ui| {
+    ui.horizontal_wrapped(|ui| {
         ui.radio_value(&mut choice.motif, Motif::Patch, "Selected patch");
+        ui.radio_value(&mut choice.motif, Motif::Crests, "Its crests");
         ui.radio_value(&mut choice.motif, Motif::Network, "Selected network");
         ui.radio_value(&mut choice.motif, Motif::Overview, "Whole raster");
     });

@@ -82,9 +82,16 @@ fn outward(pieces: &[Piece], tip: End, back: f64) -> Option<[f64; 2]> {
     (d > 0.0).then(|| [(at.x - inner.x) / d, (at.y - inner.y) / d])
 }
 
-/// Finds which tips meet: those of joining and lengthening strokes with the nearest end within `reach`, each end
-/// once, the closest pair first, so that the order in which strokes were laid does not matter; then ends of
-/// drawn and imported lines that touch (within `touch`) and go on smoothly.
+/// A way a stroke may be joined on: which of its ends meet which others, and how far off these are together.
+struct Offer {
+    apart: f64,
+    pairs: Vec<(End, End)>,
+}
+
+/// Finds which tips meet: those of joining and lengthening strokes with ends within `reach`, each end once. Strokes that
+/// find both their ends come first, then those that find one; among these the closest, so that the order in which
+/// strokes were laid does not matter. Then ends of drawn and imported lines that touch (within `touch`) and go on
+/// smoothly.
 pub(super) fn meet(
     pieces: &mut [Piece],
     laid: &[Laid],
@@ -94,37 +101,47 @@ pub(super) fn meet(
 ) -> Result<Matched, Stopped> {
     let mut matched = Matched(vec![[None; 2]; pieces.len()]);
     let tips = Tips::of(pieces, reach);
-    let mut pairs: Vec<(f64, End, End)> = Vec::new();
-    for piece in laid.iter().flat_map(|stroke| stroke.pieces.iter().copied()) {
+    let (mut whole, mut half): (Vec<Offer>, Vec<Offer>) = (Vec::new(), Vec::new());
+    for stroke in laid {
         work.advance(0)?;
-        for end in (0..2).filter(|end| pieces[piece].seeks[*end]) {
-            let at = place(pieces, (piece, end));
-            let others = tips.near(at).filter(|tip| tip.0 != piece);
-            let others = others.map(|tip| (place(pieces, tip).distance(at), (piece, end), tip));
-            pairs.extend(others.filter(|(d, ..)| *d <= reach));
+        for piece in stroke.pieces.iter().copied() {
+            let of_end = |end: usize| -> Vec<(f64, End)> {
+                let at = place(pieces, (piece, end));
+                let others = tips.near(at).filter(|tip| tip.0 != piece && pieces[piece].seeks[end]);
+                let others = others.map(|tip| (place(pieces, tip).distance(at), tip));
+                others.filter(|(d, _)| *d <= reach).collect()
+            };
+            let [first, last] = [of_end(0), of_end(1)];
+            for (d, tip) in &first {
+                half.push(Offer { apart: *d, pairs: vec![((piece, 0), *tip)] });
+                // A stroke goes on from both ends of one line only where that makes a ring worth the name.
+                let ends = last.iter().filter(|(_, other)| {
+                    other != tip && (other.0 != tip.0 || pieces[tip.0].length() >= 4.0 * reach)
+                });
+                whole.extend(ends.filter(|_| stroke.kind == StrokeKind::Join).map(|(e, other)| Offer {
+                    apart: d + e,
+                    pairs: vec![((piece, 0), *tip), ((piece, 1), *other)],
+                }));
+            }
+            half.extend(last.iter().map(|(d, tip)| Offer { apart: *d, pairs: vec![((piece, 1), *tip)] }));
         }
     }
-    let key = |tip: End| {
-        let p = place(pieces, tip);
-        [p.x, p.y]
-    };
-    let order = |a: [f64; 2], b: [f64; 2]| a[0].total_cmp(&b[0]).then(a[1].total_cmp(&b[1]));
-    pairs.sort_by(|a, b| {
-        let by_place = order(key(a.1), key(b.1)).then(order(key(a.2), key(b.2)));
-        a.0.total_cmp(&b.0).then(by_place).then((a.1, a.2).cmp(&(b.1, b.2)))
-    });
     let mut married: Vec<(End, End)> = Vec::new();
-    for (_, seeker, other) in pairs {
-        let extends = pieces[seeker.0].stroke == Some(StrokeKind::Extend);
-        let content = extends && married.iter().any(|(s, _)| s.0 == seeker.0);
-        // A stroke goes on from both ends of one line only where that makes a ring worth the name.
-        let ring = matched.of(seeker.0).iter().flatten().any(|met| met.0 == other.0)
-            && pieces[other.0].length() < 4.0 * reach;
-        if content || ring || matched.is_taken(seeker) || matched.is_taken(other) {
-            continue;
+    for mut offers in [whole, half] {
+        sort(pieces, &mut offers);
+        for offer in offers {
+            let taken = |(own, other): &(End, End)| matched.is_taken(*own) || matched.is_taken(*other);
+            // A joining stroke that did not find both its ends may find them singly, a lengthening one but once.
+            let content = offer.pairs.iter().any(|(own, other)| {
+                let met = matched.of(own.0);
+                let extends = pieces[own.0].stroke == Some(StrokeKind::Extend);
+                met.iter().flatten().any(|met| extends || met.0 == other.0)
+            });
+            if !content && !offer.pairs.iter().any(taken) {
+                offer.pairs.iter().for_each(|(own, other)| matched.marry(*own, *other));
+                married.extend(offer.pairs);
+            }
         }
-        matched.marry(seeker, other);
-        married.push((seeker, other));
     }
     for ((piece, end), other) in married {
         let target = place(pieces, other);
@@ -139,6 +156,19 @@ pub(super) fn meet(
     }
     touching(pieces, &mut matched, touch, work)?;
     Ok(matched)
+}
+
+/// The closest first; equally close ones by their places.
+fn sort(pieces: &[Piece], offers: &mut [Offer]) {
+    let key = |offer: &Offer| -> Vec<f64> {
+        let ends = offer.pairs.iter().flat_map(|(own, other)| [*own, *other]);
+        let places = ends.map(|tip| place(pieces, tip)).flat_map(|p| [p.x, p.y]);
+        std::iter::once(offer.apart).chain(places).collect()
+    };
+    offers.sort_by(|a, b| {
+        let by_place = key(a).iter().zip(&key(b)).map(|(a, b)| a.total_cmp(b)).find(|order| order.is_ne());
+        by_place.unwrap_or_else(|| a.pairs.cmp(&b.pairs))
+    });
 }
 
 /// Ends of drawn and imported lines that touch another end and go on smoothly are one line with it.

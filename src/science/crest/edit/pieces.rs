@@ -96,7 +96,7 @@ pub(super) fn cut(
         for at in &edits.cuts {
             let on_stroke = strokes.nearest(*at, reach, |_, _| true);
             match (near.nearest(*at, reach, |line, _| pieces[line].kept), on_stroke) {
-                (Some(line), stroke) if stroke.is_none_or(|s| line.distance <= s.distance) => {
+                (Some(line), stroke) if stroke.is_none_or(|s| line.distance <= s.distance + SAME_CUT) => {
                     places[line.line].push(near.along(line.line, line.segment, line.at));
                 }
                 (_, Some(_)) => later.push(*at),

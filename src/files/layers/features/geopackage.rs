@@ -1,4 +1,4 @@
-//! Polygons from the feature tables of a GeoPackage.
+//! Polygons and lines from the feature tables of a GeoPackage.
 
 use std::path::Path;
 
@@ -7,8 +7,8 @@ use rusqlite::{Connection, OpenFlags, Row};
 
 use crate::ground::Place;
 
-use super::super::{Geometry, LayerError, wkb, wkt};
-use super::{Found, Meaning};
+use super::super::{LayerError, wkb, wkt};
+use super::{Feature, Meaning, Wanted};
 
 /// One feature table.
 struct Table {
@@ -26,8 +26,9 @@ pub(super) fn features(
     path: &Path,
     place: &Place,
     epsg: Option<u32>,
+    wanted: Wanted,
     notes: &mut Vec<String>,
-) -> Result<Vec<Found>, LayerError> {
+) -> Result<Vec<Feature>, LayerError> {
     let fail =
         |source| LayerError::Database { path: path.to_owned(), doing: "reading the GeoPackage", source };
     let flags = OpenFlags::SQLITE_OPEN_READ_ONLY | OpenFlags::SQLITE_OPEN_NO_MUTEX;
@@ -39,7 +40,7 @@ pub(super) fn features(
             feature: format!("layer “{}”", table.name),
             problem,
         })?;
-        read_table(path, &database, &table, meaning, notes, &mut found)?;
+        read_table(path, &database, &table, meaning, wanted, notes, &mut found)?;
     }
     Ok(found)
 }
@@ -113,8 +114,9 @@ fn read_table(
     database: &Connection,
     table: &Table,
     meaning: Meaning,
+    wanted: Wanted,
     notes: &mut Vec<String>,
-    found: &mut Vec<Found>,
+    found: &mut Vec<Feature>,
 ) -> Result<(), LayerError> {
     let fail =
         |source| LayerError::Database { path: path.to_owned(), doing: "reading the GeoPackage", source };
@@ -144,11 +146,11 @@ fn read_table(
             })?,
             _ => None,
         };
-        let parts = match geometry {
-            Some(Geometry::Polygon(polygon)) => vec![polygon],
-            Some(Geometry::MultiPolygon(parts)) => parts,
+        let geometry = match geometry {
+            Some(geometry) if wanted.takes(geometry.kind()) => geometry,
             Some(other) => {
-                notes.push(format!("{label}: a {:?} is no patch and was left out", other.kind()));
+                let (one, ..) = wanted.words();
+                notes.push(format!("{label}: a {:?} is no {one} and was left out", other.kind()));
                 continue;
             }
             None => {
@@ -157,7 +159,7 @@ fn read_table(
             }
         };
         let tags = tags_column.and_then(|column| words(row, column)).map(|text| super::split_tags(&text));
-        found.push(Found { label, name, tags: tags.unwrap_or_default(), parts, meaning });
+        found.push(Feature { label, name, tags: tags.unwrap_or_default(), geometry, meaning });
     }
     Ok(())
 }

@@ -1,0 +1,180 @@
+//! What recovered bedforms say: how sure a share of tries is, and how nodes answer to a field without preference.
+
+use crate::ground::{Axis, Method, Read, Source, Symbol};
+use crate::numeric::tail::normal_quantile;
+
+/// The record of injection and recovery.
+pub static METHOD: Method = Method {
+    id: "scene.injection-recovery",
+    name: "Injection and recovery",
+    question: "Which trends would have been missed here, and how far would others have been bent?",
+    formula: "p(t) = found/tries of fields at trend t in the patch's own texture;  Wilson: (p + z²/2n ± z √(p(1 − p)/n + z²/4n²))/(1 + z²/n);  bias = mean of (found − laid in);  corrected: nodes weighted by 1/max(q, 0.1 max q), q = rose of the nodes pooled over all trends alike",
+    symbols: &[
+        Symbol { symbol: "t", meaning: "trend laid in", unit: "deg" },
+        Symbol {
+            symbol: "p",
+            meaning: "share of fields whose trend is claimed within the tolerance",
+            unit: "1",
+        },
+        Symbol { symbol: "z", meaning: "1.96", unit: "1" },
+        Symbol { symbol: "n", meaning: "fields at one trend", unit: "1" },
+        Symbol { symbol: "q", meaning: "what the nodes show of a field without preference", unit: "1" },
+    ],
+    assumptions: &[
+        "the patch's bedforms are like those laid in, in spacing, height and how crests wander",
+        "nodes count alike once they pass the noise: R̄ of ⅓ and ½ hold for nodes weighted by contrast and by energy",
+    ],
+    limits: &[
+        "a window of the patch is used: in the whole patch more nodes would show fainter patterns",
+        "the correction brings back what was seen too seldom, not what was never seen",
+        "strength taken from the patch's own pattern makes the test circular where that pattern is the light's work",
+    ],
+    sources: &[
+        Source {
+            key: "wilson1927",
+            authors: "Wilson, E. B.",
+            year: 1927,
+            title: "Probable inference, the law of succession, and statistical inference",
+            published: "Journal of the American Statistical Association 22, 209",
+            locator: "",
+            read: Read::Memory,
+        },
+        Source {
+            key: "ventifact-recovery",
+            authors: "this program",
+            year: 2026,
+            title: "Trends recovered from bedforms laid into a patch's own texture",
+            published: "derived here, checked on fields of known trend",
+            locator: "",
+            read: Read::Derived,
+        },
+    ],
+};
+
+/// Standard deviation of the smoothing of the pooled axes, degrees.
+const SMOOTHING_DEG: f64 = 5.0;
+/// Least answer divided by, over the greatest.
+const LEAST: f64 = 0.1;
+
+/// Axes of nodes above the noise, pooled.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Response {
+    /// Nodes by whole degrees.
+    counts: Vec<f64>,
+    /// Σ cos φ, Σ sin φ and Σ weight: each node alike, by contrast √energy, by energy.
+    sums: [[f64; 3]; 3],
+}
+
+impl Response {
+    /// Of nodes above the noise, each with its axis and gradient energy.
+    pub fn of(nodes: impl Iterator<Item = (Axis, f64)>) -> Self {
+        let mut response = Self { counts: vec![0.0; 180], sums: [[0.0; 3]; 3] };
+        for (axis, energy) in nodes {
+            response.counts[(axis.deg() as usize).min(179)] += 1.0;
+            let (sin, cos) = axis.doubled().sin_cos();
+            for (sum, weight) in response.sums.iter_mut().zip([1.0, energy.sqrt(), energy]) {
+                sum.iter_mut().zip([cos, sin, 1.0]).for_each(|(s, v)| *s += weight * v);
+            }
+        }
+        response
+    }
+
+    /// Of all fields, each added as it is.
+    pub fn pooled<'a>(all: impl Iterator<Item = &'a Self>) -> Self {
+        let mut pooled = Self::of(std::iter::empty());
+        for one in all {
+            pooled.counts.iter_mut().zip(&one.counts).for_each(|(sum, n)| *sum += n);
+            pooled.sums.iter_mut().flatten().zip(one.sums.iter().flatten()).for_each(|(sum, v)| *sum += v);
+        }
+        pooled
+    }
+
+    /// Doubled resultant lengths and mean axes: nodes alike, by contrast, by energy.
+    pub fn resultants(&self) -> [(f64, Axis); 3] {
+        self.sums.map(|[cos, sin, weight]| {
+            let length = if weight > 0.0 { (cos.hypot(sin) / weight).min(1.0) } else { 0.0 };
+            (length, Axis::from_doubled(sin.atan2(cos)))
+        })
+    }
+
+    /// What a node of each axis counts so that a field without preference would show none: the inverse of the
+    /// smoothed counts, held at ten times the least; `None` without nodes.
+    pub fn undoing(&self) -> Option<impl Fn(Axis) -> f64 + Sync + use<>> {
+        let reach = (4.0 * SMOOTHING_DEG) as isize;
+        let smooth: Vec<f64> = (0..180isize)
+            .map(|at| {
+                (-reach..=reach)
+                    .map(|d| {
+                        let weight = (-0.5 * (d as f64 / SMOOTHING_DEG).powi(2)).exp();
+                        weight * self.counts[(at + d).rem_euclid(180) as usize]
+                    })
+                    .sum()
+            })
+            .collect();
+        let most = smooth.iter().copied().fold(0.0, f64::max);
+        let weights: Vec<f64> = smooth.iter().map(|n| most / n.max(LEAST * most)).collect();
+        (most > 0.0).then(|| move |axis: Axis| weights[(axis.deg() as usize).min(179)])
+    }
+}
+
+/// Wilson's 95 % interval of a probability seen `found` times in `tries`.
+pub fn wilson(found: usize, tries: usize) -> [f64; 2] {
+    if tries == 0 {
+        return [0.0, 1.0];
+    }
+    let (z, n) = (normal_quantile(0.975), tries as f64);
+    let p = found as f64 / n;
+    let middle = p + z * z / (2.0 * n);
+    let half = z * (p * (1.0 - p) / n + z * z / (4.0 * n * n)).sqrt();
+    [-half, half].map(|half| ((middle + half) / (1.0 + z * z / n)).clamp(0.0, 1.0))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn nodes(weight: impl Fn(f64) -> f64) -> Vec<(Axis, f64)> {
+        let node = |deg: f64| (Axis::from_deg(deg), deg.to_radians().sin().powi(2));
+        (0..1800)
+            .map(|i| 0.1 * f64::from(i) + 0.05)
+            .flat_map(|deg| vec![node(deg); weight(deg).round() as usize])
+            .collect()
+    }
+
+    #[test]
+    fn contrast_and_energy_have_their_analytic_lengths() {
+        let [(alike, _), (contrast, axis), (energy, _)] =
+            Response::of(nodes(|_| 1.0).into_iter()).resultants();
+        crate::assert_close!(alike, 0.0, 1e-9, "alike");
+        crate::assert_close!(contrast, 1.0 / 3.0, 1e-4, "by contrast");
+        crate::assert_close!(energy, 0.5, 1e-6, "by energy");
+        assert!(axis.separation(Axis::from_deg(90.0)) < 1e-6);
+    }
+
+    #[test]
+    fn the_answer_is_undone() {
+        let seen = nodes(|deg| 20.0 * deg.to_radians().sin());
+        let weight = Response::of(seen.iter().copied()).undoing().expect("nodes");
+        let left = Response::of(seen.iter().copied()).resultants()[0].0;
+        let [mut cos, mut sin, mut total] = [0.0; 3];
+        for (axis, _) in &seen {
+            let w = weight(*axis);
+            cos += w * axis.doubled().cos();
+            sin += w * axis.doubled().sin();
+            total += w;
+        }
+        assert!(left > 0.3 && f64::hypot(cos, sin) / total < 0.03, "{left} {}", f64::hypot(cos, sin) / total);
+        assert!(Response::of(std::iter::empty()).undoing().is_none());
+    }
+
+    #[test]
+    fn wilson_has_its_known_values() {
+        // Hand-computed from the formula: 8 of 8 and 4 of 8.
+        let [low, high] = wilson(8, 8);
+        crate::assert_close!(low, 8.0 / (8.0 + 1.959_963_985f64.powi(2)), 1e-9, "lower end of 8 of 8");
+        crate::assert_close!(high, 1.0, 1e-12, "upper end");
+        let [low, high] = wilson(4, 8);
+        crate::assert_close!(low + high, 1.0, 1e-12, "symmetry");
+        assert_eq!(wilson(0, 0), [0.0, 1.0]);
+    }
+}
