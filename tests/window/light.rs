@@ -339,6 +339,8 @@ fn recovery(patch: Id) -> RecoveryFinding {
         trends: (0..18).map(trend).collect(),
         uniform_resultant: 0.41,
         uniform_axis: Some(Axis::from_deg(6.0)),
+        uniform_weighted: [0.33, 0.5],
+        spread_deg: 9.0,
         missed: vec![[84.0, 108.0]],
         corrected: Some(RefitFinding { axis: Axis::from_deg(75.4), resultant_length: 0.31, turn_deg: 3.4 }),
         sentence: "Trends between 84° and 108° would have been missed here.".into(),
