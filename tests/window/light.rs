@@ -1,6 +1,7 @@
 //! Light and trend in the window: the flow texture, the light stated, bedforms laid in and stopped, two populations
 //! named.
 
+use std::path::{Path, PathBuf};
 use std::sync::Arc;
 use std::time::{Duration, Instant};
 
@@ -8,14 +9,18 @@ use egui::accesskit::Role;
 use egui::{Key, Modifiers, Theme};
 use egui_kittest::Harness;
 use egui_kittest::kittest::{NodeT as _, Queryable as _};
+use rand::SeedableRng as _;
 use ventifact::desk::{
     Command, Measured, Model, Page, PatchCommand, RasterCommand, Recovered, SettingCommand, SheetCommand,
     Slot, Standing, ViewCommand, apply,
 };
-use ventifact::ground::{Axis, Azimuth, LengthUnit};
+use ventifact::files::raster::write_tiff;
+use ventifact::ground::{Axis, Azimuth, Grid, LengthUnit};
+use ventifact::science::scene::{speckle, speckled};
 use ventifact::study::{
-    Id, LightFinding, PatchFinding, PatternFinding, PlateauFinding, PopulationFinding, PopulationSource,
-    RecoveredTrend, RecoveryFinding, RefitFinding, ScaleFinding, SettingValue, TrendFinding, fingerprint,
+    Id, ImageKind, LightFinding, PatchFinding, PatternFinding, PlateauFinding, PopulationFinding,
+    PopulationSource, RecoveredTrend, RecoveryFinding, RefitFinding, ScaleFinding, SettingValue,
+    TrendFinding, fingerprint,
 };
 
 use super::desk::{Desk, blank, click, demo_on_disk, give, key, open, wait};
@@ -371,6 +376,96 @@ fn each_population_is_told_and_may_be_named() {
     key(&mut harness, Modifiers::ALT, Key::Num3);
     assert!(shows(&harness, "Bedforms found again") && tells(&harness, "Trend less its bias"));
     keep(&mut harness, "light");
+}
+
+/// Draws frames until all work is done and all of it is on the screen.
+fn at_rest(harness: &mut Harness<'_, Desk>) {
+    let end = Instant::now() + Duration::from_secs(400);
+    let mut quiet = 0;
+    while quiet < 8 {
+        assert!(Instant::now() < end, "the window never came to rest");
+        harness.step();
+        let app = harness.state().app();
+        let (model, results) = (app.model(), &app.model().session.results);
+        let done = model.session.jobs.is_idle()
+            && results.wanting(&model.sheet).is_empty()
+            && results.networks_wanting(&model.sheet).is_empty()
+            && app.is_settled();
+        scene::settle(model);
+        quiet = if done { quiet + 1 } else { 0 };
+        std::thread::sleep(Duration::from_millis(5));
+    }
+}
+
+/// The window on the demo with this patch, page and more, for the documents.
+fn pictured(patch: usize, page: Page, more: &[ViewCommand], path: &str) {
+    let (_folder, sheet) = demo_on_disk();
+    let mut harness = open(blank(), [1280.0, 800.0]);
+    give(&mut harness, Command::Sheet(SheetCommand::Open(sheet)));
+    let id = harness.state().app().model().sheet.patches[patch].id;
+    give(&mut harness, Command::Patch(PatchCommand::Select(Some(id))));
+    give(&mut harness, Command::View(ViewCommand::Page(page)));
+    more.iter().for_each(|command| give(&mut harness, Command::View(command.clone())));
+    at_rest(&mut harness);
+    compare(&harness.render().expect("a picture"), path);
+}
+
+#[test]
+fn the_light_page_on_the_demo() {
+    pictured(0, Page::Light, &[], "docs/pictures/light-light-1280x800.png");
+}
+
+#[test]
+fn the_flow_texture_on_the_demo() {
+    let night = [ViewCommand::Flow, ViewCommand::Theme];
+    pictured(1, Page::Trend, &night, "docs/pictures/flow-dark-1280x800.png");
+}
+
+/// Broad dunes with finer ones across them, 16 looks of speckle.
+fn crossed_dunes(folder: &Path) -> PathBuf {
+    let (width, height) = (520, 420);
+    let mut rng = rand_chacha::ChaCha8Rng::seed_from_u64(11);
+    let looks = speckle(width, height, 16.0, &mut rng);
+    let wave = |col: usize, row: usize, normal: f64, spacing: f64, swing: f64| {
+        let (sin, cos) = normal.to_radians().sin_cos();
+        let (x, y) = (col as f64, -(row as f64));
+        let (across, along) = (x * sin + y * cos, x * cos - y * sin);
+        (std::f64::consts::TAU * (across + swing * (along / 70.0).sin()) / spacing).sin()
+    };
+    let tone = Grid::from_fn(width, height, |col, row| {
+        let ln = 0.5 * wave(col, row, 160.0, 36.0, 3.0) + 0.4 * wave(col, row, 100.0, 12.0, 1.0);
+        ln.exp() as f32
+    });
+    let path = folder.join("crossed-dunes.tif");
+    write_tiff(&path, &speckled(&tone, &looks), None).expect("the raster is written");
+    path
+}
+
+/// Whatever populations are told apart, the page says so, and names those it tells.
+#[test]
+fn superposed_dunes_are_told_on_the_trend_page() {
+    let folder = tempfile::tempdir().expect("a temporary folder");
+    let path = crossed_dunes(folder.path());
+    let mut harness = open(blank(), [1440.0, 900.0]);
+    give(&mut harness, Command::Raster(RasterCommand::Open(path)));
+    wait(&mut harness, "the raster", |model| model.shown_size().is_some());
+    let raster = harness.state().app().model().sheet.rasters[0].id;
+    give(&mut harness, Command::Raster(RasterCommand::Kind { id: raster, kind: ImageKind::Radar }));
+    key(&mut harness, Modifiers::COMMAND, Key::A);
+    key(&mut harness, Modifiers::ALT, Key::Num2);
+    at_rest(&mut harness);
+    let model = harness.state().app().model();
+    let id = model.view.patch.expect("a patch is selected");
+    let found = model.session.results.patch(id).expect("measured");
+    let axes: Vec<f64> = found.pattern.populations.iter().filter_map(|p| Some(p.trend.axis?.deg())).collect();
+    println!("populations at {axes:?}");
+    let near = |want: f64| axes.iter().any(|deg| Axis::from_deg(*deg).separation(Axis::from_deg(want)) < 5.0);
+    assert!(axes.len() == 2 && near(70.0) && near(10.0), "populations at {axes:?}");
+    for number in [1, 2] {
+        let field = format!("Name of population {number}");
+        assert!(harness.query_by_role_and_label(Role::TextInput, &field).is_some(), "{field}");
+    }
+    keep(&mut harness, "superposed");
 }
 
 /// Lays a picture aside to be looked at, when a folder for such is named.
