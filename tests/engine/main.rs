@@ -32,6 +32,7 @@ mod records;
 mod samples;
 mod sense;
 mod smoothness;
+mod streaks;
 mod theories;
 mod tiff_writer;
 mod verdicts;
