@@ -10,6 +10,7 @@ use crate::science::orientation::{self, NodeField, Peak, Spectrum, TensorSetting
 
 use super::backwards;
 use super::cautions;
+use super::claim;
 use super::crests;
 use super::light;
 use super::obstacles;
@@ -97,6 +98,10 @@ pub fn patch_finding(
         finding.pattern.light = light::of_trend(trend, entry);
         finding.crests = crests::study(sheet, patch, &pixels, entry, trend, spectrum, finding.unit, work)?;
         finding.obstacles = obstacles::study(sheet, patch, &open.place, &finding.trend, seed, work)?;
+    }
+    if detail == Detail::Exact {
+        let trend_only = claim::caution(&finding);
+        finding.cautions.extend(trend_only);
     }
     finding.sentence = sentence::of_patch(&finding);
     Ok(Ok(finding))
