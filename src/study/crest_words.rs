@@ -5,7 +5,7 @@ use crate::science::crest::{CrestLine, CrestOrigin, Crests};
 
 /// Strong crests stand so many noise floors high where speckle hardly breaks them: on synthetic crests ends and
 /// forks are then counted within a tenth.
-const CLEAR_OF_NOISE: f64 = 2.0;
+const CLEAR_OF_NOISE: f64 = 2.4;
 /// Averaging from which on it is worth a word.
 const AVERAGED: f64 = 1.05;
 /// A scale of so many averaged pixels loses nothing.
