@@ -48,13 +48,13 @@ fn a_thousand_pixels_along_one_crest() {
     for (spacing, slip, noise) in
         [(12.0, false, 4.0), (30.0, false, 0.0), (30.0, false, 12.0), (40.0, true, 4.0), (40.0, true, 0.0)]
     {
-        let picture = dunes([1200, 800], spacing, slip, noise);
+        let picture = dunes([1200, 300], spacing, slip, noise);
         let (model, scale, beyond) = match slip {
             true => (CrestModel::SlipFace, spacing / 20.0, 1.0),
             false => (CrestModel::BrightRidge, spacing / 7.0, 0.0),
         };
         let pen = Pen::of(&picture, Some(model), Some(scale), false, &work).unwrap();
-        let k = (400.0 / spacing).floor();
+        let k = (150.0 / spacing).floor();
         let pick = |x: f64| Point::new(x, course(k, spacing, x) + 2.0);
         let [from, to] = [pick(80.0), pick(1080.0)].map(|p| pen.snapped(p));
         let way = pen.field().way(from, to, &work).unwrap().expect("a way");
