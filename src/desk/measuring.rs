@@ -69,7 +69,6 @@ pub(super) fn still_opening(model: &Model) -> bool {
 }
 
 fn start(model: &mut Model, task: Task, patches: Vec<Id>) {
-    let session = &mut model.session;
     let label = match (&task, patches.as_slice()) {
         (Task::Quick, _) => "A first look".to_owned(),
         (Task::Exact(_), [one]) => {
@@ -78,12 +77,8 @@ fn start(model: &mut Model, task: Task, patches: Vec<Id>) {
         (Task::Exact(_), []) => "Comparing patches".to_owned(),
         (Task::Exact(_), many) => format!("Measuring {} patches", many.len()),
     };
-    let round = Round {
-        sheet: model.sheet.clone(),
-        rasters: session.sources.clone(),
-        kept: Arc::clone(&session.kept),
-        patches,
-    };
+    let round = round(model, patches);
+    let session = &mut model.session;
     let quick = task == Task::Quick;
     session.measuring = Some(task);
     session.jobs.start(Slot::Measure, label, move |work, post| {
@@ -92,11 +87,21 @@ fn start(model: &mut Model, task: Task, patches: Vec<Id>) {
     });
 }
 
+/// What a job takes along.
+pub(super) fn round(model: &Model, patches: Vec<Id>) -> Round {
+    Round {
+        sheet: model.sheet.clone(),
+        rasters: model.session.sources.clone(),
+        kept: Arc::clone(&model.session.kept),
+        patches,
+    }
+}
+
 /// One job's view of the study.
-struct Round {
-    sheet: Sheet,
+pub(super) struct Round {
+    pub(super) sheet: Sheet,
     rasters: std::collections::BTreeMap<Id, OpenRaster>,
-    kept: Arc<Kept>,
+    pub(super) kept: Arc<Kept>,
     patches: Vec<Id>,
 }
 
@@ -177,7 +182,7 @@ impl Round {
     }
 
     /// The open rasters and the wind records, read once for each way of reading them.
-    fn sources(&self) -> (Sources, Vec<Failure>) {
+    pub(super) fn sources(&self) -> (Sources, Vec<Failure>) {
         let mut sources = Sources { rasters: self.rasters.clone(), ..Sources::default() };
         let mut failures = Vec::new();
         for entry in &self.sheet.winds {

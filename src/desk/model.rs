@@ -7,7 +7,10 @@ use crate::ground::{Body, LonLat, Point};
 use crate::study::judges::{self, Judges};
 use crate::study::{Id, NetworkEntry, Obstacle, Patch, RasterEntry, Sheet, WindEntry};
 
-use super::{Opened, Session, Tool, View, Wake, charting, engine, laying, measuring, pen, plates};
+use super::{
+    Opened, Session, Tool, View, Wake, charting, comparing, engine, laying, measuring, pen, plates,
+    recovering,
+};
 
 /// What panels draw from. It changes only in [`super::apply`] and [`super::absorb`].
 #[derive(Debug)]
@@ -129,6 +132,8 @@ impl Model {
         laying::follow(self);
         measuring::follow(self);
         charting::follow(self);
+        comparing::follow(self);
+        recovering::follow(self);
         pen::follow(self);
         plates::follow(self);
     }

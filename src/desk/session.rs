@@ -7,8 +7,10 @@ use std::sync::Arc;
 use crate::ground::{Place, Point, Polygon};
 use crate::study::{Id, OpenRaster, Sheet, fingerprint};
 
+use super::comparing::Comparing;
 use super::laying::OpenedAs;
 use super::measuring::{Kept, Task};
+use super::recovering::Recovering;
 use super::{
     Answer, Command, History, Import, Jobs, Notices, PenGround, Preview, Results, Slot, TileShelf, Tracing,
     Wake,
@@ -38,6 +40,10 @@ pub struct Session {
     /// The fingerprints of the networks that the running job measures, and of those at which the user stopped it.
     pub(super) charting: Vec<String>,
     pub(super) charts_stopped_at: Option<Vec<String>>,
+    /// What the recovery job is about.
+    pub(super) recovering: Recovering,
+    /// What the comparing job is about.
+    pub(super) comparing: Comparing,
     /// Whether patches are measured as they change.
     pub measures: bool,
     /// The plate on the bench.
@@ -254,6 +260,8 @@ impl Session {
         self.measuring = None;
         self.stopped_at = None;
         self.charts_stopped_at = None;
+        self.recovering = Recovering::default();
+        self.comparing = Comparing::default();
     }
 
     /// Measures nothing more until the sheet changes or the user asks.
@@ -309,6 +317,8 @@ impl Session {
             stopped_at: None,
             charting: Vec::new(),
             charts_stopped_at: None,
+            recovering: Recovering::default(),
+            comparing: Comparing::default(),
             measures: true,
             preview: Preview::default(),
             import: None,

@@ -57,7 +57,7 @@ pub use pattern::{
 };
 pub use profile::profile;
 pub use regime_map::{MapPoint, regime_at, regime_map};
-pub use rose::{rose, small_rose};
+pub use rose::{rose, small_rose, small_rose_of_populations};
 pub use sand_rose::sand_rose;
 pub use spectrum::spectrum;
 pub use theme::{TextSizes, Theme, Widths};

@@ -63,7 +63,27 @@ pub fn rose(trend: &TrendFinding, size_mm: f64, theme: &Theme) -> Figure {
 
 /// The rose without words, `size_mm` square, for rows of the ledger and for maps.
 pub fn small_rose(trend: &TrendFinding, size_mm: f64, theme: &Theme) -> Figure {
-    let mut model = model(trend);
+    let model = model(trend);
+    let fill = shade(&model, theme);
+    small(model, fill, size_mm, theme)
+}
+
+/// The same with the axis of each population, the heaviest first, in place of a mean that none of them has.
+pub fn small_rose_of_populations(trend: &TrendFinding, axes: &[Axis], size_mm: f64, theme: &Theme) -> Figure {
+    let shown = Model { mean: None, modes: Vec::new(), ..model(trend) };
+    let mut figure = small(shown, theme.tint(theme.measured, 0.38), size_mm, theme);
+    let (centre, reach) = (Point::new(0.5 * size_mm, 0.5 * size_mm), 0.46 * size_mm);
+    let mut sketch = Sketch::default();
+    for (index, axis) in axes.iter().enumerate() {
+        let ends = [axis.azimuth(), axis.azimuth().reversed()].map(|a| toward(centre, reach, a));
+        let width = if index == 0 { 0.5 * theme.widths.bold } else { 0.3 * theme.widths.bold };
+        sketch.line(ends[0], ends[1], theme.stroke(theme.measured, width));
+    }
+    figure.items.extend(sketch.items);
+    figure
+}
+
+fn small(mut model: Model, fill: Rgba, size_mm: f64, theme: &Theme) -> Figure {
     // No scale is printed, so the longest petal may reach the rim.
     let longest = model.petals.iter().map(|p| p.2).fold(0.0, f64::max);
     model.petals.iter_mut().for_each(|p| p.2 /= longest);
@@ -76,7 +96,7 @@ pub fn small_rose(trend: &TrendFinding, size_mm: f64, theme: &Theme) -> Figure {
     };
     let mut sketch = Sketch::default();
     sketch.circle(layout.centre, rim, None, Some(theme.stroke(theme.rule, theme.widths.hair)));
-    petals(&mut sketch, &model, &layout, None, shade(&model, theme));
+    petals(&mut sketch, &model, &layout, None, fill);
     mean(&mut sketch, &model, &layout, theme, 0.5 * theme.widths.bold);
     sketch.finish(size_mm, size_mm)
 }

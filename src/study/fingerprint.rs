@@ -91,9 +91,9 @@ pub fn of_terrain(sheet: &Sheet, entry: &NetworkEntry) -> String {
     digest(&json!([sheet.raster(entry.raster).map(raster), entry.within, closed, how]))
 }
 
-/// SHA-256 of all that makes what synthetic bedforms in a patch say.
+/// SHA-256 of all that makes what synthetic bedforms in a patch say; its crests have no part in it.
 pub fn of_recovery(sheet: &Sheet, patch: &Patch) -> String {
-    digest(&json!([of_patch(sheet, patch), sheet.settings.recovery]))
+    digest(&json!([of_texture(sheet, patch), sheet.settings.recovery]))
 }
 
 /// SHA-256 of all that makes a comparison: its patch, the second raster, the settings.

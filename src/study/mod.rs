@@ -5,6 +5,9 @@ pub mod bulk;
 mod cautions;
 mod channel_settings;
 pub mod check;
+pub mod claim;
+mod comparison;
+mod comparison_check;
 mod crest_check;
 pub mod crest_edits;
 mod crest_entry;
@@ -28,6 +31,7 @@ mod patch;
 mod pattern_findings;
 mod pattern_settings;
 pub mod pen;
+mod populations;
 mod records;
 mod recovery;
 pub mod run;
@@ -71,8 +75,8 @@ pub use network_entry::{FromElevation, FromImage, NetworkEntry, NetworkSource, T
 pub use network_findings::{DrainageFinding, NetworkFinding, TracingFinding};
 pub use obstacles::{NodeAround, ObstacleFinding, ObstaclesFinding};
 pub use pattern_findings::{
-    ComparisonFinding, LightFinding, PatternFinding, PlateauFinding, PopulationFinding, PopulationSource,
-    RecoveredTrend, RecoveryFinding, RefitFinding, ScaleFinding,
+    ComparisonFinding, LightFinding, LooksFinding, PatternFinding, PlateauFinding, PopulationFinding,
+    PopulationSource, RecoveredTrend, RecoveryFinding, RefitFinding, ScaleFinding,
 };
 pub use pattern_settings::{CompareSettings, CrestSettings, RecoverySettings};
 pub use records::{Setting, SettingKind, SettingValue};

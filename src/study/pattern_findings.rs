@@ -155,6 +155,18 @@ pub struct RecoveredTrend {
     pub resultant_length: f64,
 }
 
+/// Two looks, and a difference of trends between them.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct LooksFinding {
+    /// Angle between the axes of the two looks, degrees.
+    pub apart_deg: f64,
+    /// Second trend less the first with the weight of each look taken out of its nodes, degrees.
+    pub refit_deg: Option<f64>,
+    /// Whether the looks alone can make such a difference: more than 30° apart, and the trends turned the same way
+    /// and no farther.
+    pub may_explain: bool,
+}
+
 /// One ground on two pictures.
 #[derive(Clone, Debug, PartialEq)]
 pub struct ComparisonFinding {
@@ -174,6 +186,8 @@ pub struct ComparisonFinding {
     pub trends: [TrendFinding; 2],
     /// The second trend against the first.
     pub axes: AxesCompared,
+    /// What the two looks may have to do with a difference; `None` while one is not known.
+    pub looks: Option<LooksFinding>,
     /// Crests of each, in full-resolution pixels of the first raster.
     pub crests: [Vec<CrestLine>; 2],
     /// How far crests moved; in words why that is not known.

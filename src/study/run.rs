@@ -5,6 +5,7 @@ use std::sync::{Arc, Mutex, PoisonError};
 
 use crate::ground::{Stopped, Work};
 
+use super::comparison::comparison;
 use super::judges::{self, Judges};
 use super::network::{Terrains, agreements, network_finding};
 use super::patch::patch_finding;
@@ -13,8 +14,8 @@ use super::together::together;
 use super::window::Detail;
 use super::winds::{self, WindStudy};
 use super::{
-    Failure, Findings, Id, NetworkEntry, NetworkFinding, OpenRaster, PatchFinding, RasterEntry,
-    RasterFinding, RecoveryFinding, Sheet, Sources, fingerprint,
+    ComparisonFinding, Failure, Findings, Id, NetworkEntry, NetworkFinding, OpenRaster, PatchFinding,
+    RasterEntry, RasterFinding, RecoveryFinding, Sheet, Sources, fingerprint,
 };
 
 /// Results kept by fingerprint, so that an edit recomputes only what it touches. With or without
@@ -25,6 +26,7 @@ pub struct Memo {
     patches: Mutex<HashMap<String, Arc<PatchFinding>>>,
     networks: Mutex<HashMap<String, Arc<NetworkFinding>>>,
     recoveries: Mutex<HashMap<String, Arc<RecoveryFinding>>>,
+    comparisons: Mutex<HashMap<String, Arc<ComparisonFinding>>>,
     terrains: Terrains,
 }
 
@@ -51,6 +53,13 @@ pub fn run(sheet: &Sheet, sources: &Sources, memo: &Memo, work: &Work) -> Result
     }
     let (recoveries, refused) = run_recoveries(sheet, sources, &winds, memo, work)?;
     failures.extend(refused);
+    let mut comparisons = Vec::new();
+    for entry in &sheet.comparisons {
+        match run_comparison(sheet, sources, entry.id, memo, work)? {
+            Ok(finding) => comparisons.push((*finding).clone()),
+            Err(why) => failures.push(Failure { what: format!("comparison {}", entry.name), why }),
+        }
+    }
     let rasters =
         sheet.rasters.iter().filter_map(|entry| Some(raster(entry, sources.rasters.get(&entry.id)?)));
     Ok(Findings {
@@ -61,7 +70,7 @@ pub fn run(sheet: &Sheet, sources: &Sources, memo: &Memo, work: &Work) -> Result
         patches,
         networks,
         recoveries,
-        comparisons: Vec::new(),
+        comparisons,
         failures,
     })
 }
@@ -229,6 +238,33 @@ fn lone_network(
     }
     let finding = network_finding(sheet, entry, sources, &memo.terrains, work)?;
     Ok(finding.map(|finding| keep(&memo.networks, key, finding)))
+}
+
+/// A patch held against the same ground on another raster, or in words why it cannot be.
+///
+/// # Errors
+/// [`Stopped`].
+pub fn run_comparison(
+    sheet: &Sheet,
+    sources: &Sources,
+    id: Id,
+    memo: &Memo,
+    work: &Work,
+) -> Result<Result<Arc<ComparisonFinding>, String>, Stopped> {
+    let Some(entry) = sheet.comparison(id) else {
+        return Ok(Err(format!("the sheet has no comparison {}", id.0)));
+    };
+    // Names stand in findings, so what is renamed is computed anew.
+    let names = [
+        sheet.patch(entry.patch).map(|p| (p.name.as_str(), sheet.raster(p.raster).map(|r| r.name.as_str()))),
+        Some(("", sheet.raster(entry.raster).map(|r| r.name.as_str()))),
+    ];
+    let key = format!("{} {names:?}", fingerprint::of_comparison(sheet, entry));
+    if let Some(known) = recall(&memo.comparisons, &key) {
+        return Ok(Ok(known));
+    }
+    let finding = comparison(sheet, entry, sources, work)?;
+    Ok(finding.map(|finding| keep(&memo.comparisons, key, finding)))
 }
 
 /// What a raster is, as used.

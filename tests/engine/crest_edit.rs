@@ -38,10 +38,13 @@ fn crests(lines: Vec<CrestLine>, junctions: Vec<Junction>) -> Crests {
         junctions,
         model: CrestModel::BrightRidge,
         fits: Vec::new(),
+        clear: true,
         sense: None,
         floor: 1.0,
+        strong: 4.0,
         thresholds: [2.0, 1.0],
         scales_px: vec![2.0],
+        side_px: 1.0,
     }
 }
 

@@ -6,6 +6,7 @@ mod crests;
 mod desk;
 mod docs;
 mod harness;
+mod light;
 mod networks;
 mod pictures;
 mod scene;

@@ -16,6 +16,8 @@ pub mod mardia_watson_wheeler;
 pub mod mean;
 pub mod mixture;
 mod modes;
+mod paired;
+mod rank;
 pub mod rayleigh;
 pub mod rose;
 pub(in crate::science) mod sources;
@@ -55,4 +57,6 @@ pub const METHODS: &[&Method] = &[
     &mardia_watson_wheeler::METHOD,
     &wallraff::METHOD,
     &equal_kappa::METHOD,
+    &two_samples::METHOD,
+    &paired::METHOD,
 ];

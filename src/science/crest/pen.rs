@@ -13,7 +13,6 @@ use super::fields::{Fields, HALO, Kernels};
 use super::floor::{floor, thresholds};
 use super::lines::{FACING, margin};
 use super::link::Index;
-use super::model::CLEAR;
 use super::scale::MOST_PX;
 use super::tone::Ground;
 use super::{CrestModel, CrestSettings, lines, scale, simplify};
@@ -66,6 +65,9 @@ pub static METHOD: Method = Method {
 const LEAST: f64 = 0.03;
 /// Picks are moved onto a crest point within so many scales, but at least so many pixels.
 const SNAP: [f64; 2] = [2.0, 3.0];
+/// Largest square on which a course is chosen, in scales, for ridges and for slip faces: a seventh of the spacing
+/// these scales suit.
+const SQUARE: [f64; 2] = [1.0, 3.0];
 /// Greatest distance between a way and its simplified form, pixels.
 const TOLERANCE: f64 = 0.2;
 /// Side of the middle of a picture that tells its own scale, pixels.
@@ -108,10 +110,10 @@ impl Pen {
         let open = ground.open(margin(sigma));
         let tone = ground.prepared(sigma, true, work)?;
         let (steps, moments) = crossings(&tone, &open, true, sigma, work)?;
-        let model = model.unwrap_or(moments.fits()[0].model);
+        let model = model.unwrap_or(moments.fits(sigma)[0].model);
         let slip_face = model == CrestModel::SlipFace;
         let (sense, skewness) = moments.slip_sense();
-        let sense = (slip_face && skewness >= CLEAR).then_some(sense);
+        let sense = (slip_face && skewness >= moments.clear(sigma)).then_some(sense);
         let (tone, found) = match slip_face {
             true => (tone, steps),
             false => {
@@ -134,7 +136,8 @@ impl Pen {
         for p in &right {
             costs[p.row as usize * width + p.col as usize] *= 0.5;
         }
-        let field = Arc::new(CostField::new(width, height, &costs));
+        let side = sigma * if slip_face { SQUARE[1] } else { SQUARE[0] };
+        let field = Arc::new(CostField::finer(width, height, &costs, side as usize));
         Ok(Self { field, points: right, model, scale_px: sigma })
     }
 

@@ -47,8 +47,8 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
             Page::Trend | Page::Light | Page::Spacing | Page::Crests | Page::Verdict | Page::Regimes => {
                 let Some(finding) = subject(ui, model, out) else { return };
                 match model.view.page {
-                    Page::Trend => trend::show(ui, model, finding),
-                    Page::Light => light::show(ui, model, finding),
+                    Page::Trend => trend::show(ui, model, finding, out),
+                    Page::Light => light::show(ui, model, finding, out),
                     Page::Spacing => spacing::show(ui, model, finding),
                     Page::Crests => crests::show(ui, model, finding, out),
                     Page::Regimes => regimes::show(ui, model, finding, out),
