@@ -8,15 +8,10 @@ use crate::science::crest::{CrestLine, CrestOrigin, End};
 use crate::study::{CrestStroke, CrestsFinding, Id, Patch, PatchFinding};
 
 use super::Model;
+use super::channels::pointer_reach;
 
-/// How near the pointer must be to a crest, screen points.
-const REACH: f64 = 9.0;
 /// A mark so near to a line is on it, pixels: the line may have moved a little since it was laid.
 const ON: f64 = 1.0;
-/// A line traced anew lies within so many pixels of where it was.
-const STRAYED: f64 = 3.0;
-/// Lines remembered that are traced no more.
-const MOST_GONE: usize = 2000;
 
 /// The crests of a patch as last traced. They outlive the quick looks of an edit, which trace nothing.
 #[derive(Debug)]
@@ -28,9 +23,12 @@ pub struct Crested {
     pub unit: LengthUnit,
     /// The box of each line, so that what is under the pointer is found at once.
     boxes: Vec<Bounds>,
-    /// Lines that were traced before and are no more, so that a rejected one can still be seen.
-    gone: Vec<Polyline>,
 }
+
+/// The lines that were rejected since the sheet was opened, so that they can still be seen: by mark, as they
+/// were when it was laid.
+#[derive(Debug, Default)]
+pub(super) struct Struck(Vec<(Point, Option<Polyline>)>);
 
 /// The place on a crest nearest to the pointer.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -55,22 +53,7 @@ impl Crested {
         let outcome = finding.crests.clone().map(Arc::new);
         let lines = outcome.as_ref().map_or(&[][..], |crests| &crests.lines);
         let boxes = lines.iter().map(|line| bounds(&line.line)).collect();
-        let (fingerprint, unit) = (finding.fingerprint.clone(), finding.unit);
-        Self { outcome, fingerprint, unit, boxes, gone: Vec::new() }
-    }
-
-    /// The same, with the lines of `before` that are traced no more.
-    pub fn after(self, before: Option<Self>) -> Self {
-        let Some(before) = before else { return self };
-        let traced = before.lines().iter().filter(|line| is_traced(line)).map(|line| &line.line);
-        let is_gone = |line: &&Polyline| middle(line).is_some_and(|at| self.near(at, STRAYED).is_none());
-        let gone = before.gone.iter().chain(traced).filter(is_gone).take(MOST_GONE).cloned().collect();
-        Self { gone, ..self }
-    }
-
-    /// The line that was rejected at a mark, if it was seen since the sheet was opened.
-    pub fn rejected(&self, mark: Point) -> Option<&Polyline> {
-        self.gone.iter().find(|line| lies_on(mark, line))
+        Self { outcome, fingerprint: finding.fingerprint.clone(), unit: finding.unit, boxes }
     }
 
     pub fn finding(&self) -> Option<&Arc<CrestsFinding>> {
@@ -131,6 +114,22 @@ impl Crested {
     }
 }
 
+impl Struck {
+    /// Looks up the lines of new marks and drops those of marks taken back.
+    pub(super) fn follow(&mut self, marks: &[Point], crested: &Crested) {
+        self.0.retain(|(mark, _)| marks.contains(mark));
+        for mark in marks {
+            if !self.0.iter().any(|(known, _)| known == mark) {
+                self.0.push((*mark, crested.line_at(*mark).cloned()));
+            }
+        }
+    }
+
+    pub(super) fn line(&self, mark: Point) -> Option<&Polyline> {
+        self.0.iter().find(|(known, _)| *known == mark).and_then(|(_, line)| line.as_ref())
+    }
+}
+
 /// Whether the detector has a part in the line.
 pub fn is_traced(line: &CrestLine) -> bool {
     matches!(line.origin, CrestOrigin::Traced | CrestOrigin::Edited)
@@ -151,11 +150,6 @@ pub fn middle(line: &Polyline) -> Option<Point> {
 pub fn stroke_near(strokes: &[CrestStroke], at: Point, reach: f64) -> Option<(usize, f64)> {
     let near = strokes.iter().enumerate().filter_map(|(i, s)| Some((i, s.line.nearest(at)?.distance)));
     near.filter(|(_, d)| *d <= reach).min_by(|a, b| a.1.total_cmp(&b.1))
-}
-
-/// How far the pointer reaches, pixels of the raster on the table.
-pub fn pointer_reach(model: &Model) -> f64 {
-    model.camera().map_or(REACH, |(_, camera)| REACH / camera.scale)
 }
 
 /// The open end of a crest of the patch beside a place, within the pointer's reach.

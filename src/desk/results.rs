@@ -4,8 +4,9 @@
 use std::collections::BTreeMap;
 use std::sync::Arc;
 
+use super::crests::Struck;
 use super::{Compared, Crested, Recovered};
-use crate::ground::Bounds;
+use crate::ground::{Bounds, Point, Polyline};
 use crate::study::{
     ComparisonFinding, Failure, Id, NetworkFinding, PatchFinding, RecoveryFinding, Sheet, TogetherFinding,
     WindEntry, WindFinding, fingerprint,
@@ -16,6 +17,7 @@ use crate::study::{
 pub struct Results {
     patches: BTreeMap<Id, Measured>,
     crests: BTreeMap<Id, Crested>,
+    struck: BTreeMap<Id, Struck>,
     winds: BTreeMap<Id, WindResult>,
     networks: BTreeMap<Id, Charted>,
     comparisons: BTreeMap<Id, Compared>,
@@ -101,6 +103,11 @@ impl Results {
         self.winds.retain(|id, _| sheet.wind(*id).is_some());
         self.networks.retain(|id, _| sheet.network(*id).is_some());
         self.crests.retain(|id, _| sheet.patch(*id).is_some());
+        for patch in &sheet.patches {
+            if let Some(crested) = self.crests.get(&patch.id) {
+                self.struck.entry(patch.id).or_default().follow(&patch.crests.rejected, crested);
+            }
+        }
     }
 
     pub fn take_patch(&mut self, id: Id, measured: Measured) {
@@ -108,8 +115,7 @@ impl Results {
             // A quick look traces nothing: the lines of before stay.
             Ok(_) if !measured.exact => {}
             Ok(finding) => {
-                let before = self.crests.remove(&id);
-                self.crests.insert(id, Crested::new(finding).after(before));
+                self.crests.insert(id, Crested::new(finding));
             }
             Err(_) => {
                 self.crests.remove(&id);
@@ -210,6 +216,11 @@ impl Results {
     /// The crests of a patch as last traced, current or not.
     pub fn crests(&self, id: Id) -> Option<&Crested> {
         self.crests.get(&id)
+    }
+
+    /// The line rejected at a mark, if it was seen since the sheet was opened.
+    pub fn rejected(&self, id: Id, mark: Point) -> Option<&Polyline> {
+        self.struck.get(&id)?.line(mark)
     }
 
     /// Whether those crests are as the sheet stands.

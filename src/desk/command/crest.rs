@@ -2,6 +2,7 @@
 
 use std::path::{Path, PathBuf};
 
+use crate::desk::channels::pointer_reach;
 use crate::desk::crests::{self, Crested};
 use crate::desk::{Ask, Model, Purpose, Tool};
 use crate::ground::{Point, Polygon};
@@ -259,7 +260,7 @@ impl CrestCommand {
     /// lies there taken away. `None`, and a word to the user, when there is no line.
     pub(super) fn of_click(model: &mut Model, tool: Tool, at: Point) -> Option<Self> {
         let patch = model.crest_patch()?;
-        let (id, it, reach) = (patch.id, &patch.crests, crests::pointer_reach(model));
+        let (id, it, reach) = (patch.id, &patch.crests, pointer_reach(model));
         let crested = model.session.results.crests(id);
         let found = match tool {
             Tool::Reject => of_reject(id, it, crested, at, reach),

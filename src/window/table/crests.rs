@@ -7,7 +7,7 @@ use std::sync::Arc;
 use egui::{Color32, Painter, Pos2, Shape, Stroke, Vec2};
 
 use crate::desk::{Crested, Tool, crests};
-use crate::ground::{Point, Polygon, Polyline};
+use crate::ground::{Bounds, Point, Polygon, Polyline};
 use crate::science::crest::{CrestLine, CrestOrigin, End, Junction};
 use crate::study::{CrestEntry, Id, Patch, StrokeKind};
 
@@ -90,7 +90,7 @@ impl Charts {
         let lines: Vec<(Style, Vec<Pos2>)> = chart
             .chosen()
             .filter_map(|(i, points)| {
-                let style = style(&finding.lines[i], &patch.crests, look)?;
+                let style = style(&finding.lines[i], &crested.boxes()[i], &patch.crests, look)?;
                 Some((style, on_screen(points)))
             })
             .collect();
@@ -104,10 +104,13 @@ impl Charts {
 }
 
 /// How a line is drawn; `None` when the user's own stroke is drawn in its place.
-fn style(line: &CrestLine, said: &CrestEntry, look: Look) -> Option<Style> {
+fn style(line: &CrestLine, within: &Bounds, said: &CrestEntry, look: Look) -> Option<Style> {
     let of_patch = if look.selected { 1.0 } else { 0.8 };
     let sure = line.confidence.clamp(0.0, 1.0) as f32;
-    let marked = |marks: &[Point]| !look.current && marks.iter().any(|m| crests::lies_on(*m, &line.line));
+    let Bounds { min, max } = within;
+    let in_box = |m: &Point| m.x > min.x - 1.0 && m.x < max.x + 1.0 && m.y > min.y - 1.0 && m.y < max.y + 1.0;
+    let on_it = |m: &Point| in_box(m) && crests::lies_on(*m, &line.line);
+    let marked = |marks: &[Point]| !look.current && marks.iter().any(on_it);
     let by_hand = matches!(line.origin, CrestOrigin::Drawn | CrestOrigin::Imported);
     let style = match line.origin {
         _ if !look.current && by_hand => return None,
@@ -196,7 +199,7 @@ fn said(painter: &Painter, table: &Table<'_>, patch: &Patch, look: Look) {
     }
     let crested = table.model.session.results.crests(patch.id);
     for at in &said.rejected {
-        let gone = crested.and_then(|crested| crested.rejected(*at));
+        let gone = table.model.session.results.rejected(patch.id, *at);
         if let Some(points) = gone.and_then(|line| seen(line, visible, scale)) {
             let on: Vec<Pos2> = points.iter().map(|p| lens.to_screen(*p)).collect();
             painter.add(halo(REJECTED, &on, ink));
