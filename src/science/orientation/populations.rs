@@ -3,6 +3,7 @@
 use crate::ground::{
     Axis, Grid, LocalFrame, Method, Place, Point, Polygon, Read, Seed, Source, Stopped, Symbol, Work,
 };
+use crate::numeric::bessel::ln_i0;
 use crate::science::axial::effective::effective_number;
 use crate::science::axial::interval::{dispersion, half_width};
 use crate::science::axial::mixture::{Component, Mixture, MixtureSettings, mixtures};
@@ -262,7 +263,6 @@ fn node_spacing(field: &NodeField) -> f64 {
 
 /// ω f(φ) of one mode.
 fn density(c: &Component, phi: f64) -> f64 {
-    use crate::numeric::bessel::ln_i0;
     c.weight * (c.kappa * (phi - c.mean).cos() - ln_i0(c.kappa)).exp() / std::f64::consts::TAU
 }
 
@@ -308,7 +308,7 @@ fn distinct(m: &Mixture) -> Vec<Vec<usize>> {
 }
 
 /// A candidate in its own band: broader bedforms are taken out where another candidate is broader.
-#[expect(clippy::too_many_arguments, reason = "one caller, right above")]
+#[allow(clippy::too_many_arguments)]
 fn measure(
     image: &Grid<f32>,
     patch: &Polygon,
