@@ -61,6 +61,7 @@ impl CrestsFinding {
 ///
 /// # Errors
 /// [`Stopped`].
+#[allow(clippy::too_many_arguments)]
 pub fn study(
     sheet: &Sheet,
     patch: &Patch,

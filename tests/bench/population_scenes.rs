@@ -159,15 +159,11 @@ impl Single {
 
 /// The populations found in a whole picture.
 pub fn found(image: &Grid<f32>, logarithm: bool) -> Vec<Population> {
-    found_at(image, &Place::pixels(0.0), logarithm)
-}
-
-pub fn found_at(image: &Grid<f32>, place: &Place, logarithm: bool) -> Vec<Population> {
     let patch = Polygon::rectangle(image.width() as f64, image.height() as f64);
-    let work = Work::quiet();
-    let sweep = band_sweep(image, &patch, place, 0.01, logarithm, &work).expect("not stopped");
+    let (place, work) = (Place::pixels(0.0), Work::quiet());
+    let sweep = band_sweep(image, &patch, &place, 0.01, logarithm, &work).expect("not stopped");
     let settings = PopulationSettings { significance: 0.01, logarithm, most_modes: 4 };
-    populations(image, &patch, place, &sweep, &settings, Seed(7), &work).expect("not stopped")
+    populations(image, &patch, &place, &sweep, &settings, Seed(7), &work).expect("not stopped")
 }
 
 /// Greatest error of axis (degrees) and weight of two found populations; `None` unless there are two.

@@ -27,6 +27,7 @@ mod orientation;
 mod pen;
 mod pen_window;
 mod plates;
+mod populations;
 mod reach_channels;
 mod records;
 mod samples;

@@ -16,6 +16,7 @@ mod obstacle;
 mod orientation;
 mod place;
 mod planform;
+mod populations;
 mod spectrum;
 mod verdict;
 mod wind;

@@ -3,6 +3,7 @@
 use crate::ground::{
     Axis, Grid, LocalFrame, Method, Place, Point, Polygon, Read, Seed, Source, Stopped, Symbol, Work,
 };
+use crate::numeric::bessel::ln_i0;
 use crate::science::axial::effective::effective_number;
 use crate::science::axial::interval::{dispersion, half_width};
 use crate::science::axial::mixture::{Component, Mixture, MixtureSettings, mixtures};
@@ -10,8 +11,8 @@ use crate::science::axial::mixture::{Component, Mixture, MixtureSettings, mixtur
 use super::band::{Band, band_nodes};
 use super::ground_shares::{Layer, Layers};
 use super::scale::ScaleStep;
-use super::spectrum::shares::variance_shares;
-use super::tensor::NodeField;
+use super::spectrum::shares::{Wave, variance_shares};
+use super::tensor::{NodeField, TrendNode};
 
 /// The record of populations.
 pub static METHOD: Method = Method {
@@ -72,6 +73,8 @@ const TEXTURE: f64 = 5.0;
 const ONE_SCALE: f64 = 1.5;
 /// Share of a population's greatest texture that makes a finer band as good.
 const NEARLY: f64 = 0.6;
+/// Wavelength to which a gradient scale answers most.
+const WAVE: f64 = 6.0;
 /// Share of common ground from which two populations lie over each other.
 const OVERLAP: f64 = 0.5;
 
@@ -260,7 +263,6 @@ fn node_spacing(field: &NodeField) -> f64 {
 
 /// ω f(φ) of one mode.
 fn density(c: &Component, phi: f64) -> f64 {
-    use crate::numeric::bessel::ln_i0;
     c.weight * (c.kappa * (phi - c.mean).cos() - ln_i0(c.kappa)).exp() / std::f64::consts::TAU
 }
 
@@ -306,7 +308,7 @@ fn distinct(m: &Mixture) -> Vec<Vec<usize>> {
 }
 
 /// A candidate in its own band: broader bedforms are taken out where another candidate is broader.
-#[expect(clippy::too_many_arguments, reason = "one caller, right above")]
+#[allow(clippy::too_many_arguments)]
 fn measure(
     image: &Grid<f32>,
     patch: &Polygon,
@@ -386,7 +388,12 @@ fn weigh(
         found[i].superposed = (0..count).any(|j| j != i && layers.overlap(i, j) > OVERLAP);
     }
     let weights = if found.iter().any(|p| p.superposed) {
-        let waves: Vec<(Axis, f64)> = found.iter().map(|p| (p.axis, 6.0 * p.band.scale_px)).collect();
+        let wave = |p: &Population| {
+            let texture = |(n, m): (&TrendNode, &f64)| (n.at, m * n.coherence * n.energy);
+            let texture = p.field.nodes.iter().zip(&p.membership).map(texture).collect();
+            Wave { axis: p.axis, spacing_px: WAVE * p.band.scale_px, texture }
+        };
+        let waves: Vec<Wave> = found.iter().map(wave).collect();
         variance_shares(image, patch, place, settings.logarithm, &waves, work)?
     } else {
         None

@@ -2,7 +2,7 @@
 
 use std::f64::consts::LN_2;
 
-use crate::ground::{Axis, Grid, LocalFrame, Place, Polygon, Stopped, Work};
+use crate::ground::{Axis, Grid, LocalFrame, Place, Point, Polygon, Stopped, Work};
 use crate::numeric::fft::PowerPlan;
 
 use super::super::gradient::Tone;
@@ -22,12 +22,22 @@ const RING_LN: f64 = 0.25;
 const RING_BINS: usize = 12;
 /// Wavelengths of the longest wave a window holds, at least and if possible; windows looked at.
 const FEWEST_CYCLES: f64 = 4.0;
-const CYCLES: f64 = 10.0;
+const CYCLES: f64 = 6.0;
 const MOST_WINDOWS: usize = 256;
 const LARGEST: f64 = 1024.0;
 
-/// Share of each wave (trend, spacing in pixels of the finer ground direction) in the variance of tone that stands
-/// above the background; `None` where the patch holds fewer than four of the longest spacing, or nothing stands out.
+/// A population as the spectrum sees it.
+pub struct Wave {
+    pub axis: Axis,
+    /// Pixels of the finer ground direction.
+    pub spacing_px: f64,
+    /// Its texture at nodes all over the patch, 0 where it is not; pixel coordinates of the image, any unit.
+    pub texture: Vec<(Point, f64)>,
+}
+
+/// Share of each wave in the variance of tone that stands above the background; `None` where the patch holds fewer than
+/// four of the longest spacing, or nothing stands out. Tapered windows weigh the middle of the patch most: the ratio of
+/// variance to texture is taken from them and the texture from all nodes.
 ///
 /// # Errors
 /// [`Stopped`].
@@ -36,15 +46,15 @@ pub fn variance_shares(
     patch: &Polygon,
     place: &Place,
     logarithm: bool,
-    waves: &[(Axis, f64)],
+    waves: &[Wave],
     work: &Work,
 ) -> Result<Option<Vec<f64>>, Stopped> {
     let tone = if logarithm { Tone::logarithm(image) } else { Tone::Linear };
     let Some(scene) = Scene::new(image, patch, tone, place) else { return Ok(None) };
     let Some(frame) = place.local_frame(scene.centre()) else { return Ok(None) };
     let scale = Scale::new(frame);
-    let longest = waves.iter().map(|w| w.1).fold(0.0, f64::max);
-    let shortest = waves.iter().map(|w| w.1).fold(f64::INFINITY, f64::min);
+    let longest = waves.iter().map(|w| w.spacing_px).fold(0.0, f64::max);
+    let shortest = waves.iter().map(|w| w.spacing_px).fold(f64::INFINITY, f64::min);
     let extent = scene.extent();
     let room = (extent[0] as f64 * scale.pixel[0]).min(extent[1] as f64 * scale.pixel[1]).min(LARGEST);
     let mut side = (CYCLES * longest).min(room);
@@ -63,15 +73,23 @@ pub fn variance_shares(
     let owners: Vec<Option<usize>> = bins.all.iter().map(|b| owner(b, frame, waves, scale.fine)).collect();
     let plan = PowerPlan::new(windows.size[0], windows.size[1]);
     let mut power = vec![0.0f64; bins.all.len()];
+    let mut within = vec![0.0f64; waves.len()];
     work.phase("spectrum: shares", windows.origins.len() as u64);
     scene.powers(
         &windows,
         &plan,
         work,
-        |_, tapered, power| {
-            bins.all.iter().map(|b| f64::from(power[b.index]) / tapered.square).collect::<Vec<f64>>()
+        |number, tapered, power| {
+            let power: Vec<f64> =
+                bins.all.iter().map(|b| f64::from(power[b.index]) / tapered.square).collect();
+            let (corner, size) = (scene.corner(windows.origins[number]), windows.size);
+            let texture: Vec<f64> = waves.iter().map(|w| tapered_mean(&w.texture, corner, size)).collect();
+            (power, texture)
         },
-        |one| power.iter_mut().zip(&one).for_each(|(p, o)| *p += o),
+        |(one, texture)| {
+            power.iter_mut().zip(&one).for_each(|(p, o)| *p += o);
+            within.iter_mut().zip(&texture).for_each(|(s, t)| *s += t);
+        },
     )?;
     let background = background(&bins, &power, frame, waves);
     let mut sums = vec![0.0f64; waves.len()];
@@ -80,9 +98,27 @@ pub fn variance_shares(
             sums[*owner] += power - background;
         }
     }
-    sums.iter_mut().for_each(|s| *s = s.max(0.0));
+    for ((sum, wave), within) in sums.iter_mut().zip(waves).zip(&within) {
+        let all = wave.texture.iter().map(|t| t.1).sum::<f64>() / wave.texture.len().max(1) as f64;
+        *sum = if *within > 0.0 { (*sum * all / within).max(0.0) } else { sum.max(0.0) };
+    }
     let all: f64 = sums.iter().sum();
     Ok((all > 0.0).then(|| sums.iter().map(|s| s / all).collect()))
+}
+
+/// Mean texture of the nodes in a window under the square of its taper.
+fn tapered_mean(texture: &[(Point, f64)], corner: Point, size: [usize; 2]) -> f64 {
+    let taper = |x: f64, n: usize| {
+        let share = x / n as f64;
+        if (0.0..1.0).contains(&share) { (std::f64::consts::PI * share).sin().powi(2) } else { 0.0 }
+    };
+    let (mut sum, mut weight) = (0.0, 0.0);
+    for (at, value) in texture {
+        let w = (taper(at.x - corner.x, size[0]) * taper(at.y - corner.y, size[1])).powi(2);
+        sum += w * value;
+        weight += w;
+    }
+    if weight > 0.0 { sum / weight } else { 0.0 }
 }
 
 /// The trend and ln of the ground frequency of a bin.
@@ -91,10 +127,10 @@ fn trend_of(bin: &Bin, frame: LocalFrame) -> Axis {
     Axis::from_east_north(east, north).perpendicular()
 }
 
-fn owner(bin: &Bin, frame: LocalFrame, waves: &[(Axis, f64)], fine: f64) -> Option<usize> {
+fn owner(bin: &Bin, frame: LocalFrame, waves: &[Wave], fine: f64) -> Option<usize> {
     let trend = trend_of(bin, frame);
-    let distance = |(axis, spacing): &(Axis, f64)| {
-        let (ln, deg) = (bin.ln_f + (spacing * fine).ln(), trend.separation(*axis));
+    let distance = |wave: &Wave| {
+        let (ln, deg) = (bin.ln_f + (wave.spacing_px * fine).ln(), trend.separation(wave.axis));
         (ln.abs() <= FAR_LN && deg <= FAR_DEG).then(|| (ln / NEAR_LN).powi(2) + (deg / NEAR_DEG).powi(2))
     };
     let near = waves.iter().enumerate().filter_map(|(i, w)| Some((i, distance(w)?)));
@@ -102,10 +138,10 @@ fn owner(bin: &Bin, frame: LocalFrame, waves: &[(Axis, f64)], fine: f64) -> Opti
 }
 
 /// Mean power of bins away from all waves, in rings of frequency.
-fn background(bins: &Bins, power: &[f64], frame: LocalFrame, waves: &[(Axis, f64)]) -> Vec<f64> {
+fn background(bins: &Bins, power: &[f64], frame: LocalFrame, waves: &[Wave]) -> Vec<f64> {
     let away = |b: &Bin| {
         let trend = trend_of(b, frame);
-        b.line.is_none() && waves.iter().all(|(axis, _)| trend.separation(*axis) > AWAY_DEG)
+        b.line.is_none() && waves.iter().all(|w| trend.separation(w.axis) > AWAY_DEG)
     };
     let mut level = vec![0.0; bins.all.len()];
     let mut from = 0;

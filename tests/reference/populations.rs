@@ -1,0 +1,42 @@
+//! Fields of two populations with known trends and shares, and fields of one that must not be split. The truth is
+//! that of the scene; bars are those of the work order: axes within 3°, weights within 0.07.
+
+#[path = "../bench/population_scenes.rs"]
+mod population_scenes;
+
+use population_scenes::{Lie, Single, Two, errors, found};
+
+const SIZE: usize = 384;
+
+fn told_apart(lie: Lie) {
+    for (seed, trend, apart, coarse, looks) in
+        [(1, 10.0, 40.0, 1.0, None), (2, 75.0, 70.0, 2.0, Some(4.0)), (3, 150.0, 40.0, 1.0, Some(4.0))]
+    {
+        let two = Two { lie, trend, apart, coarse, looks, seed };
+        let truth = two.draw(SIZE);
+        let got = found(&truth.image, truth.logarithm);
+        let Some([axis, weight]) = errors(&got, &truth) else {
+            panic!("{two:?}: {} populations", got.len());
+        };
+        assert!(axis <= 3.0 && weight <= 0.07, "{two:?}: axes {axis:.1}°, weights {weight:.3}");
+        assert!(got.iter().all(|p| p.superposed == (lie == Lie::Superposed)), "{two:?}");
+    }
+}
+
+#[test]
+fn superposed_populations_are_told_apart() {
+    told_apart(Lie::Superposed);
+}
+
+#[test]
+fn populations_side_by_side_are_told_apart() {
+    told_apart(Lie::Beside);
+}
+
+#[test]
+fn one_population_is_one_whatever_its_crests() {
+    for (single, looks) in Single::ALL.into_iter().zip([None, Some(4.0)].into_iter().cycle()) {
+        let got = found(&single.draw(SIZE, looks, 5), looks.is_some());
+        assert!(got.is_empty(), "{single:?}: {:?}", got.iter().map(|p| p.axis.deg()).collect::<Vec<_>>());
+    }
+}
