@@ -81,7 +81,13 @@ fn pixels_that_are_not_square() {
         let crests = detect_on_ground(&squeezed, &patch, pixel, &settings, 1 << 24, &Work::quiet()).unwrap();
         let there = |p: Point| Point::new(p.x * cols as f64, p.y * rows as f64);
         let (off, d) = (off(&truth, &crests, there), defects(&crests.lines, &crests.junctions, 1.0, None));
-        println!("{cols}×{rows}: off {off:.3}, ends {} of {}, forks {} of {}", d.ends, truth.ends.len(), d.forks, truth.forks.len());
+        println!(
+            "{cols}×{rows}: off {off:.3}, ends {} of {}, forks {} of {}",
+            d.ends,
+            truth.ends.len(),
+            d.forks,
+            truth.forks.len()
+        );
         assert!(off <= 0.3, "{cols} × {rows}: {off} px off");
         let near = |got: usize, want: usize| got.abs_diff(want) as f64 <= 0.1 * want as f64;
         assert!(near(d.ends, truth.ends.len()) && near(d.forks, truth.forks.len()), "{d:?}");
@@ -143,8 +149,14 @@ fn a_map_in_degrees_is_no_plane() {
     // The middle's own frame says so too, but errs in length by the cosine of the latitude.
     let flat: LocalFrame = frames.middle();
     let one = [along(0.0)];
-    let (round, plane) = (numbers(&one, &patch, &frames).total_length, numbers(&one, &patch, flat).total_length);
-    assert_close!(plane / round, 60f64.to_radians().cos() / 62f64.to_radians().cos(), 1e-6, "the frame's error");
+    let (round, plane) =
+        (numbers(&one, &patch, &frames).total_length, numbers(&one, &patch, flat).total_length);
+    assert_close!(
+        plane / round,
+        60f64.to_radians().cos() / 62f64.to_radians().cos(),
+        1e-6,
+        "the frame's error"
+    );
     // Half a degree apart: the middle quantile is that of latitude 60°, the others those of 61° and 59°.
     let settings = SpacingSettings { step: 0.01 * degree, longest: 3.0 * degree, own_beyond: degree };
     let got = spacing(&meridians, &patch, &frames, settings, &Work::quiet()).unwrap();

@@ -3,7 +3,9 @@
 
 use ventifact::ground::{Axis, Azimuth, Caution, LengthUnit, LocalFrame, Point, Polyline, Work};
 use ventifact::science::axial::two_samples::{AxesCompared, AxesTest};
-use ventifact::science::crest::{self, CrestLine, CrestModel, CrestOrigin, End, Fit, Junction, Shift, ShiftChance};
+use ventifact::science::crest::{
+    self, CrestLine, CrestModel, CrestOrigin, End, Fit, Junction, Shift, ShiftChance,
+};
 use ventifact::study::{
     ComparisonFinding, CrestsFinding, Id, LightFinding, PatternFinding, PlateauFinding, PopulationFinding,
     PopulationSource, RecoveredTrend, RecoveryFinding, RefitFinding, ScaleFinding, SpectrumFinding,
