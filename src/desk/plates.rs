@@ -10,7 +10,7 @@ use crate::plate::{Figure, PngSize, Theme, compose, pdf, png, svg};
 use crate::study::handover::write_all;
 use crate::study::{Findings, Id, Patch, Sheet, Sources, fingerprint, run};
 
-use super::{Answer, Model, Page, Slot, recovering};
+use super::{Answer, Model, Page, Slot, comparing, recovering};
 
 /// What the plate is to be; saved with the view.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
@@ -230,7 +230,7 @@ fn findings(model: &Model) -> Findings {
             .collect(),
         together: session.results.together().cloned().unwrap_or_default(),
         recoveries: recovering::current(sheet, &session.results),
-        comparisons: Vec::new(),
+        comparisons: comparing::current(sheet, &session.results),
         failures: session.results.failures(sheet),
     }
 }

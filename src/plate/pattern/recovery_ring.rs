@@ -3,7 +3,7 @@
 use crate::ground::{Azimuth, Point};
 use crate::study::{RecoveryFinding, TrendFinding};
 
-use super::super::rose::{Face, NO_TREND, faces};
+use super::super::rose::{self, Face, NO_TREND, faces};
 use super::super::sketch::{Sketch, Type, arc, arrow_head, sector, toward};
 use super::super::{Figure, TextAnchor, Theme, numbers};
 
@@ -56,12 +56,13 @@ pub fn recovery_ring(
         let tip = toward(centre, outer + 0.4, from);
         sketch.polygon(arrow_head(tip, 2.4, from.reversed()), Some(theme.ink), None);
     }
+    let modes: Vec<_> = trend.modes.iter().map(|m| m.axis).filter(|_| trend.modes.len() > 1).collect();
     let face = Face {
         shares: &trend.rose,
         bin_deg: trend.rose_bin_deg,
         mean: trend.axis.filter(|_| trend.defined).map(|axis| (axis, trend.ci95_half_deg)),
         other: recovery.corrected.map(|c| c.axis),
-        modes: &[],
+        modes: &modes,
     };
     faces(&mut sketch, &[(face, centre)], rim, theme);
     let told = face.mean.map_or(NO_TREND.to_owned(), |(axis, half)| numbers::axis_with_interval(axis, half));
@@ -70,7 +71,7 @@ pub fn recovery_ring(
     let mut y = size_mm;
     y += sketch.paragraph(middle(y), &told, look.bold().anchored(TextAnchor::Middle), size_mm);
     let look = Type::new(theme.text.small, theme.ink_soft).anchored(TextAnchor::Middle);
-    y += sketch.paragraph(middle(y), &caption(recovery), look, size_mm);
+    y += sketch.paragraph(middle(y), &format!("{}\n{}", rose::caption(trend), caption(recovery)), look, size_mm);
     sketch.finish(size_mm, y)
 }
 
