@@ -114,9 +114,17 @@ fn key(model: &Model) -> String {
     let results = &model.session.results;
     let subject: Vec<String> = match choice.motif {
         Motif::Patch | Motif::Crests => {
-            let recovered = |id| results.recovered(id).map(|r| r.fingerprint.clone());
-            let stamp = |p: &&Patch| format!("{} {:?}", results.stamp(p.id), recovered(p.id));
-            model.selected_patch().iter().map(stamp).collect()
+            let stamps = |p: &&Patch| {
+                let recovery = results.recovered(p.id).map(|r| r.fingerprint.as_str());
+                let recovered = format!("{recovery:?} {:?}", results.recovery_standing(p.id));
+                let of_patch = model.sheet.comparisons.iter().filter(|c| c.patch == p.id);
+                let compared = of_patch.map(|c| {
+                    let made = results.compared(c.id).map(|made| made.fingerprint.as_str());
+                    format!("{made:?} {:?}", results.comparison_standing(c.id))
+                });
+                [results.stamp(p.id), recovered].into_iter().chain(compared).collect::<Vec<_>>()
+            };
+            model.selected_patch().iter().flat_map(stamps).collect()
         }
         // Its plate shows the patches of the raster and the networks it is compared with.
         Motif::Network | Motif::Overview => {

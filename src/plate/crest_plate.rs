@@ -199,9 +199,9 @@ pub(super) fn tracing_note(crests: &Result<CrestsFinding, String>, settings: &Cr
     let Ok(found) = crests else { return String::new() };
     format!(
         "Crests: {} at a scale of {} px; lines start where noise alone would start one in {} of such patches, gaps up \
-         to {} scales are bridged, lines below {} scales are left out, simplified within {} px. Width: share of a \
-         line’s evidence (1 where its response reaches the starting threshold, 0 at the lower one and on bridges), \
-         not a probability. Ends at border, gap or mask are not defects.",
+         to {} scales are bridged, lines below {} scales are left out, simplified within {} px. Width: the \
+         chance that a line is a crest and no texture, by lines of the wrong sense traced alike. Ends at border, gap \
+         or mask are not defects.",
         found.model.name(),
         numbers::plain(found.full_scale_px(), 1),
         numbers::percent(settings.significance),

@@ -63,7 +63,11 @@ pub fn patch_plate(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Figure {
     let column = (page.room() - (columns - 1) as f64 * GAP_MM) / columns as f64;
     let wide = 2.0 * column + GAP_MM;
     let top = page.y;
-    let trend = Block { heading: "Trend".into(), figure: rose(&patch.trend, column, theme) };
+    let figure = match plate.recovery {
+        Some(recovery) => pattern::recovery_ring(recovery, &patch.trend, column, theme),
+        None => rose(&patch.trend, column, theme),
+    };
+    let trend = Block { heading: "Trend".into(), figure };
     let picture = patch_map(plate, [wide, 1.05 * wide], theme);
     page.put(&picture, 0.5 * (wide - picture.width_mm), top + 0.6);
     let below = top + picture.height_mm + 0.7 * GAP_MM;

@@ -157,7 +157,7 @@ fn difference(
     };
     let advised = axes.tests.first().map_or(String::new(), |t| {
         let says = if axes.differ { "the trends differ" } else { "no difference is shown" };
-        format!("{says}: {}, {}", t.name, numbers::p_value(t.p))
+        format!("{says}: {}, {}", t.name, numbers::p_value(t.p).replace(' ', "\u{a0}"))
     });
     let y = foot + 1.8 + 1.5 * size;
     y - top + verdict_words(sketch, &told, &advised, y, width_mm, theme)

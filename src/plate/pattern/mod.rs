@@ -10,6 +10,7 @@ mod light;
 mod numbers_table;
 mod populations;
 mod recovery;
+mod recovery_ring;
 mod scales;
 mod spacing;
 mod survival;
@@ -23,6 +24,7 @@ pub use light::light_numbers;
 pub use numbers_table::crest_numbers;
 pub use populations::populations_figure;
 pub use recovery::recovery_curve;
+pub use recovery_ring::recovery_ring;
 pub use scales::scale_sweep;
 pub use spacing::spacing_survival;
 

@@ -6,7 +6,8 @@ use ventifact::plate::map::{MapCrests, MapLayers, MapPatch, MapView, crest_key, 
 use ventifact::plate::{
     CrestPlate, Figure, Item, OverviewPlate, PatchPlate, TextAnchor, Theme, comparison_figure, crest_lengths,
     crest_numbers, crest_plate, crest_rose, crests_on_map, defect_diagram, font, light_numbers,
-    overview_plate, patch_plate, pdf, populations_figure, recovery_curve, scale_sweep, spacing_survival, svg,
+    overview_plate, patch_plate, pdf, populations_figure, recovery_curve, recovery_ring, scale_sweep,
+    spacing_survival, svg,
 };
 use ventifact::science::crest::{self, CrestLine};
 use ventifact::study::{
@@ -89,6 +90,7 @@ fn figures(t: &Told, width: f64, theme: &Theme) -> Vec<(&'static str, Figure)> {
         ("defects", defect_diagram(c, u, width, theme)),
         ("numbers", crest_numbers(c, u, width, theme)),
         ("recovery", recovery_curve(&t.recovery, &t.trend, width, theme)),
+        ("ring", recovery_ring(&t.recovery, &t.trend, width, theme)),
         ("scales", scale_sweep(&t.pattern, u, width, theme)),
         ("populations", populations_figure(&t.pattern, u, width, theme)),
         ("comparison", comparison_figure(&t.comparison, width, theme)),
@@ -176,7 +178,8 @@ fn figures_of_the_pattern_state_their_numbers() {
     let count = told.crests.numbers.count.to_string();
     let median = told.crests.spacing.quartiles[1].expect("a median");
     let median = format!("median {median:.0} m");
-    let wanted: [(&str, &[&str]); 10] = [
+    let wanted: [(&str, &[&str]); 11] = [
+        ("ring", &["84.2° ± 3.4°", "light from 352°", "less its bias"]),
         ("rose", &["length of crest", "84.2° ± 3.4°", &count, "effective n 38.2", "drawn both ways"]),
         ("spacing", &[&median, "spectrum", "650 m (618–689)", "area over length", "cut by border or gap"]),
         ("lengths", &["mean", "seen whole", "if exponential"]),
@@ -318,7 +321,7 @@ fn the_plates_of_a_pattern_say_what_they_must_and_are_the_same_twice() {
         "drawn by hand",
         "imported",
         "no bedforms, by hand",
-        "not a probability",
+        "the chance that a line is a crest",
         "noise alone would start one in 5 %",
         "Kaplan & Meier 1958",
         "Steger 1998",
