@@ -31,4 +31,5 @@ mod sense;
 mod smoothness;
 mod theories;
 mod tiff_writer;
+mod two_pictures;
 mod verdicts;
