@@ -108,7 +108,8 @@ impl Results {
             // A quick look traces nothing: the lines of before stay.
             Ok(_) if !measured.exact => {}
             Ok(finding) => {
-                self.crests.insert(id, Crested::new(finding));
+                let before = self.crests.remove(&id);
+                self.crests.insert(id, Crested::new(finding).after(before));
             }
             Err(_) => {
                 self.crests.remove(&id);

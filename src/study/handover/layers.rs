@@ -6,6 +6,7 @@ use super::comparisons::comparison_layers;
 use super::crest_layers::crest_layers;
 use super::network_layers::network_layers;
 use super::obstacles::outcrop_layer;
+use super::populations::population_layer;
 use crate::files::layers::{Column, Geometry, GeometryKind, Layer, Row, Srs, Value};
 use crate::ground::{LengthUnit, Place, Point, Polyline};
 use crate::study::{
@@ -232,6 +233,7 @@ pub fn layers(sheet: &Sheet, findings: &Findings, sources: &Sources) -> Vec<Laye
             // A raster with networks alone has no patch layers.
             let own = own.into_iter().filter(|_| !patches.is_empty());
             own.chain(outcrops)
+                .chain(population_layer(sheet, open, &patches, &srs, &suffix))
                 .chain(comparison_layers(open, &of_raster(findings, raster), &srs, &suffix))
                 .chain(crest_layers(open, &patches, &srs, &suffix))
                 .chain(network_layers(open, &networks, &srs, &suffix))

@@ -10,6 +10,8 @@ mod methods;
 mod network_layers;
 mod networks;
 mod obstacles;
+mod pattern_light;
+mod populations;
 mod records;
 mod regimes;
 mod sand;

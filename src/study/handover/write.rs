@@ -13,6 +13,8 @@ use super::network_layers::{
     drop_table, junction_table, lonlat_reaches, network_table, profile_table, reach_table, width_table,
 };
 use super::obstacles::{lonlat_outcrops, obstacle_table};
+use super::pattern_light::recovery_table;
+use super::populations::{population_table, scale_table};
 use super::records::calendar_table;
 use super::weighing::{flip_table, sensitivity_table, together_table};
 use super::{bibtex, findings_json};
@@ -60,7 +62,10 @@ pub fn write_all(
         sensitivity_table(findings),
         calendar_table(findings),
         obstacle_table(findings),
+        scale_table(findings),
+        population_table(findings),
         crest_table(findings, sources),
+        recovery_table(findings),
         network_table(findings),
         reach_table(findings),
         profile_table(findings),
