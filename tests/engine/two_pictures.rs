@@ -3,10 +3,12 @@
 
 use std::f64::consts::TAU;
 use std::path::Path;
+use std::sync::Arc;
 
 use rand::Rng as _;
 
 use ventifact::assert_close;
+use ventifact::desk::{Command, ComparisonCommand, Model, PatchCommand, SheetCommand, apply};
 use ventifact::files::raster::write_tiff;
 use ventifact::ground::{
     Affine, Axis, Azimuth, Body, Frame, Grid, LocalFrame, Place, Point, Polygon, Projection, Seed, Work,
@@ -236,4 +238,39 @@ fn plain_ground_gives_a_result_in_words_and_is_handed_over() {
     assert!(member["movement"]["refused"].is_string(), "{member}");
     let written = handover::write_all(folder.path(), &sheet, &sources, &findings, &[]).expect("written");
     assert!(written.contains(&"comparisons.csv".to_owned()), "{written:?}");
+}
+
+#[test]
+fn comparisons_are_added_named_dated_and_deleted_and_undo_brings_them_back() {
+    let folder = tempfile::tempdir().expect("a folder");
+    let plain = Grid::filled(40, 40, 1.0f32);
+    let mut model = Model::new(Arc::new(|| ()));
+    model.session.measures = false;
+    model.sheet = sheet(folder.path(), [&plain, &plain], [None, None]);
+    model.sheet.comparisons.clear();
+    let give = |model: &mut Model, command: ComparisonCommand| apply(model, Command::Comparison(command));
+    give(&mut model, ComparisonCommand::Add { raster: None });
+    assert!(model.sheet.comparisons.is_empty(), "no patch is selected");
+    apply(&mut model, Command::Patch(PatchCommand::Select(Some(Id(3)))));
+    give(&mut model, ComparisonCommand::Add { raster: None });
+    let id = model.sheet.comparisons[0].id;
+    assert_eq!((model.sheet.comparisons[0].patch, model.sheet.comparisons[0].raster), (Id(3), Id(2)));
+    assert_eq!(model.sheet.comparisons[0].name, "Long dunes on now");
+    give(&mut model, ComparisonCommand::Add { raster: None });
+    give(&mut model, ComparisonCommand::Add { raster: Some(Id(1)) });
+    assert_eq!(model.sheet.comparisons.len(), 1, "no other raster is left, and its own is none");
+    give(&mut model, ComparisonCommand::SetYears { id, years: Some(0.0) });
+    assert_eq!(model.sheet.comparisons[0].years, None);
+    give(&mut model, ComparisonCommand::SetYears { id, years: Some(-3.5) });
+    assert_eq!(model.sheet.comparisons[0].years, Some(-3.5));
+    give(&mut model, ComparisonCommand::Rename { id, name: "back in time".into() });
+    assert_eq!(model.sheet.comparisons[0].name, "back in time");
+    apply(&mut model, Command::Patch(PatchCommand::Delete));
+    assert!(model.sheet.comparisons.is_empty(), "its patch is gone");
+    apply(&mut model, Command::Sheet(SheetCommand::Undo));
+    assert_eq!(model.sheet.comparisons.len(), 1);
+    give(&mut model, ComparisonCommand::Delete(id));
+    assert!(model.sheet.comparisons.is_empty());
+    apply(&mut model, Command::Sheet(SheetCommand::Undo));
+    assert_eq!(model.sheet.comparisons[0].name, "back in time");
 }
