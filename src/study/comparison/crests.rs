@@ -120,14 +120,11 @@ fn traced(
         least_length_scales: wanted.least_length_scales,
         tolerance_px: wanted.tolerance_px,
     };
-    let found = match said.drawn_only && which == 0 {
-        false => detect(&pixels.image, &pixels.outline, &settings, work)?,
-        true => Crests {
-            lines: Vec::new(),
-            junctions: Vec::new(),
-            ..detect(&pixels.image, &pixels.outline, &settings, work)?
-        },
-    };
+    let mut found = detect(&pixels.image, &pixels.outline, &settings, work)?;
+    if said.drawn_only && which == 0 {
+        found.lines.clear();
+        found.junctions.clear();
+    }
     if which == 1 {
         return Ok(found);
     }
