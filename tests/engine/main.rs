@@ -36,4 +36,5 @@ mod smoothness;
 mod streaks;
 mod theories;
 mod tiff_writer;
+mod two_pictures;
 mod verdicts;
