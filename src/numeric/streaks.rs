@@ -267,12 +267,15 @@ impl Walk<'_> {
 
     /// What one walker meets.
     fn arm(&self, col: usize, row: usize, mut last: [f32; 2]) -> f32 {
-        let (mut x, mut y) = (col as f32 + 0.5, row as f32 + 0.5);
+        // Counted from the start, so that the walk does not depend on where in the picture it begins.
+        let back = self.weights.len();
+        let (mut x, mut y) = (back as f32 + 0.5, back as f32 + 0.5);
+        let start = row * self.wide + col - back * (self.wide + 1);
         let mut sum = 0.0;
         for weight in &self.weights[1..] {
             x += last[0];
             y += last[1];
-            let texel = self.texels[y as usize * self.wide + x as usize];
+            let texel = self.texels[start + y as usize * self.wide + x as usize];
             sum += weight * texel.noise;
             let [dx, dy] = texel.along;
             if dx == 0.0 && dy == 0.0 {

@@ -92,8 +92,9 @@ impl View {
         Self { covers, size, per_pixel }
     }
 
+    /// Texels a pixel, the same area.
     fn scale(&self) -> f64 {
-        self.per_pixel[0].min(self.per_pixel[1])
+        (self.per_pixel[0] * self.per_pixel[1]).sqrt()
     }
 
     fn texel(&self, pixel: Point) -> Point {
