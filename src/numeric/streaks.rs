@@ -47,14 +47,6 @@ pub struct Streaks {
     pub fade: Grid<f32>,
 }
 
-/// A pixel of the picture and of a rim round it as wide as a streak is half long.
-#[derive(Clone, Copy, Default)]
-struct Texel {
-    /// A step along the axis; (0, 0) where there is none.
-    along: [f32; 2],
-    noise: f32,
-}
-
 /// Noise is made by squares of so many pixels a side, each with a stream of its own.
 const SQUARE: usize = 64;
 /// Noise farther out than this is that of the edge.
@@ -63,11 +55,12 @@ const FARTHEST: i64 = 1 << 40;
 const FAINTEST: f32 = 1.0 / 512.0;
 /// Weights of the little blur.
 const BLUR: [f32; 3] = [0.25, 0.5, 0.25];
-/// Correlation of blurred noise by distance in pixels: of [1 2 1]/4 with itself. Drawing out blurred noise and
-/// blurring drawn-out noise is the same where the axis is.
-const BLURRED: [f64; 3] = [1.0, 2.0 / 3.0, 1.0 / 6.0];
-/// Its variance: that of an even spread over [−1, 1), times (Σ w²)² of the blur.
-const VARIANCE: f64 = (1.0 / 3.0) * (6.0 / 16.0) * (6.0 / 16.0);
+/// Correlation by distance in pixels of noise read between pixels and blurred: [1 2 1]/4 with itself, and with the
+/// cubic B-spline that linear reading at any phase amounts to. Blurring drawn-out noise and drawing out blurred
+/// noise is the same where the axis is.
+const BLURRED: [f64; 4] = [1.0, 23.0 / 32.0, 1.0 / 4.0, 1.0 / 32.0];
+/// Its variance: that of an even spread over [−1, 1), times that of the two together in either direction.
+const VARIANCE: f64 = (1.0 / 3.0) * (1.0 / 3.0) * (1.0 / 3.0);
 
 /// Draws the noise out along the field.
 ///
@@ -82,7 +75,8 @@ pub fn streaks(field: &Grid<AxisCell>, s: &StreakSettings, work: &Work) -> Resul
     // The blur wants a pixel more on each side, and rounding may take a walker one further.
     let rim = s.half_length + 3;
     let walk = Walk {
-        texels: &ground(field, s, rim, work)?,
+        steps: &steps(field, s, rim, work)?,
+        noise: &noise(s, rim, work)?,
         wide: width + 2 * rim,
         weights: weights(s.half_length),
     };
@@ -130,33 +124,30 @@ fn weights(half_length: usize) -> Vec<f32> {
     let reach = half_length as isize;
     let pairs = |lag: isize| (-reach..=reach).map(|k| signed(k) * signed(k + lag)).sum::<f64>();
     let variance = VARIANCE
-        * (0..3)
+        * (0..4)
             .map(|lag| BLURRED[lag] * pairs(lag as isize) * if lag == 0 { 1.0 } else { 2.0 })
             .sum::<f64>();
     (0..=half_length).map(|k| (bell(k) / variance.sqrt()) as f32).collect()
 }
 
-/// Steps and noise of every pixel, the rim included.
-fn ground(
+/// A step along the axis at every pixel, the rim included; (0, 0) where there is none.
+fn steps(
     field: &Grid<AxisCell>,
     s: &StreakSettings,
     rim: usize,
     work: &Work,
-) -> Result<Vec<Texel>, Stopped> {
+) -> Result<Vec<[f32; 2]>, Stopped> {
     let [wide, high] = s.size.map(|side| side + 2 * rim);
-    let noise = noise(s, rim, work)?;
-    let mut texels = vec![Texel::default(); wide * high];
-    texels.par_chunks_mut(wide).enumerate().try_for_each(|(row, texels)| {
+    let mut steps = vec![[0.0; 2]; wide * high];
+    steps.par_chunks_mut(wide).enumerate().try_for_each(|(row, steps)| {
         work.advance(1)?;
         let line = Line::of(field, s.step, row as f64 + 0.5 - rim as f64);
-        let noise = &noise[row * wide..][..wide];
-        for (col, (texel, noise)) in texels.iter_mut().zip(noise).enumerate() {
-            let cell = line.at(col as f64 + 0.5 - rim as f64);
-            *texel = Texel { along: cell.along(), noise: *noise };
+        for (col, step) in steps.iter_mut().enumerate() {
+            *step = line.at(col as f64 + 0.5 - rim as f64).along();
         }
         Ok(())
     })?;
-    Ok(texels)
+    Ok(steps)
 }
 
 /// Even noise in [−1, 1) over the picture and its rim.
@@ -252,7 +243,8 @@ impl AxisCell {
 
 /// Walkers over the ground.
 struct Walk<'a> {
-    texels: &'a [Texel],
+    steps: &'a [[f32; 2]],
+    noise: &'a [f32],
     wide: usize,
     weights: Vec<f32>,
 }
@@ -260,24 +252,31 @@ struct Walk<'a> {
 impl Walk<'_> {
     /// The noise along the axis at this column and row, the rim counted.
     fn along(&self, col: usize, row: usize) -> f32 {
-        let here = self.texels[row * self.wide + col];
-        let [x, y] = here.along;
-        self.weights[0] * here.noise + self.arm(col, row, [x, y]) + self.arm(col, row, [-x, -y])
+        let here = row * self.wide + col;
+        let [x, y] = self.steps[here];
+        self.weights[0] * self.noise[here] + self.arm(here, [x, y]) + self.arm(here, [-x, -y])
     }
 
     /// What one walker meets.
-    fn arm(&self, col: usize, row: usize, mut last: [f32; 2]) -> f32 {
+    fn arm(&self, here: usize, mut last: [f32; 2]) -> f32 {
         // Counted from the start, so that the walk does not depend on where in the picture it begins.
         let back = self.weights.len();
-        let (mut x, mut y) = (back as f32 + 0.5, back as f32 + 0.5);
-        let start = row * self.wide + col - back * (self.wide + 1);
+        let (mut x, mut y) = (back as f32, back as f32);
+        let start = here - back * (self.wide + 1);
         let mut sum = 0.0;
         for weight in &self.weights[1..] {
             x += last[0];
             y += last[1];
-            let texel = self.texels[start + y as usize * self.wide + x as usize];
-            sum += weight * texel.noise;
-            let [dx, dy] = texel.along;
+            // Between four middles of pixels, else an axis near the rows' would be taken for theirs.
+            let (left, top) = (x as usize, y as usize);
+            let (across, down) = (x - left as f32, y - top as f32);
+            let at = start + top * self.wide + left;
+            let (upper, lower) = (&self.noise[at..at + 2], &self.noise[at + self.wide..at + self.wide + 2]);
+            let mix = |pair: &[f32]| pair[0] + across * (pair[1] - pair[0]);
+            let (upper, lower) = (mix(upper), mix(lower));
+            sum += weight * (upper + down * (lower - upper));
+            let near = at + usize::from(across >= 0.5) + if down >= 0.5 { self.wide } else { 0 };
+            let [dx, dy] = self.steps[near];
             if dx == 0.0 && dy == 0.0 {
                 break;
             }
