@@ -15,7 +15,11 @@ fn judged(truth: &CrestTruth, crests: &Crests) -> Vec<(f64, f64, f64)> {
             for k in 0..count {
                 let t = (k as f64 + 0.5) / count as f64;
                 let p = Point::new(w[0].x + t * (w[1].x - w[0].x), w[0].y + t * (w[1].y - w[0].y));
-                let off = truth.lines.iter().filter_map(|l| l.nearest(p)).fold(f64::INFINITY, |m, n| m.min(n.distance));
+                let off = truth
+                    .lines
+                    .iter()
+                    .filter_map(|l| l.nearest(p))
+                    .fold(f64::INFINITY, |m, n| m.min(n.distance));
                 all += d / count as f64;
                 near += if off <= within { d / count as f64 } else { 0.0 };
             }
@@ -88,7 +92,10 @@ fn lines_said_sure_are_true() {
     assert!(right as f64 >= 0.85 * sure as f64, "{right} of {sure} are true");
     // It tells lines apart: the least sure are true less often.
     let [doubted, right] = table[0];
-    assert!(doubted == 0 || (right as f64) < 0.95 * doubted as f64, "{right} of {doubted} doubted ones are true");
+    assert!(
+        doubted == 0 || (right as f64) < 0.95 * doubted as f64,
+        "{right} of {doubted} doubted ones are true"
+    );
 }
 
 /// A wave of no clear side is traced as bright ridges whatever its trend, phase and noise, and nothing is said to
@@ -106,7 +113,8 @@ fn a_wave_of_no_clear_side_is_always_bright_ridges() {
         });
         for spacing_px in [Some(20.0), None] {
             let settings = CrestSettings { spacing_px, ..CrestSettings::default() };
-            let crests = detect(&image, &Polygon::rectangle(160.0, 160.0), &settings, &Work::quiet()).unwrap();
+            let crests =
+                detect(&image, &Polygon::rectangle(160.0, 160.0), &settings, &Work::quiet()).unwrap();
             assert_eq!(crests.model, CrestModel::BrightRidge, "case {case}: {:?}", crests.fits);
             assert!(!crests.clear, "case {case}: {:?}", crests.fits);
             assert!(!crests.lines.is_empty());

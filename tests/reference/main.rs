@@ -10,6 +10,7 @@ mod crest_trust;
 mod drainage;
 mod georef;
 mod image_channels;
+mod light;
 mod network;
 mod obstacle;
 mod orientation;

@@ -1,6 +1,7 @@
 //! The window, driven by role and label, and pictured by the CPU painter.
 
 mod channels;
+mod crest_table;
 mod crests;
 mod desk;
 mod docs;

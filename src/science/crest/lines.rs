@@ -2,8 +2,8 @@
 
 use crate::ground::{Point, Polyline, Stopped, Work};
 
-use super::candidates::{Crossing, confirm, crossings};
-use super::decoy::Chance;
+use super::candidates::{Crossing, confirm, confirming_gain, crossings};
+use super::decoy::{Chance, Shoulders};
 use super::floor::{Thresholds, floor, thresholds};
 use super::join::Joining;
 use super::link::{Chain, Index, link};
@@ -84,7 +84,12 @@ pub(super) fn trace(
     let strengths = |wanted: bool| -> Vec<f64> {
         found.iter().filter(|p| right(p) == wanted).map(|p| p.strength).collect()
     };
-    let least = floor(ground.noise, cells, slip_face, sigma, settings.significance);
+    // Both scales must show a crest: noise reaches the geometric mean of what it reaches at each, at most.
+    let least = [sigma, NEIGHBOUR * sigma]
+        .map(|scale| floor(ground.noise, cells, slip_face, scale, settings.significance))
+        .into_iter()
+        .product::<f64>();
+    let least = (least * confirming_gain(slip_face, NEIGHBOUR)).sqrt();
     let thresholds = thresholds(least, &mut strengths(true), &mut strengths(false));
     let linking = Linking { ground, settings, sigma, thresholds, slip_face };
     let mut chains = Vec::new();
@@ -103,13 +108,20 @@ pub(super) fn trace(
         }
     }
     // Lines of the wrong sense tell what texture makes of nothing, where the sense itself is told.
-    let one_sided = fits.iter().any(|fit| fit.model == model && fit.skewness >= moments.clear(sigma));
-    let decoys = if one_sided { linking.chains(&found, |p| !right(p), work)? } else { Vec::new() };
+    let clear = moments.clear(sigma);
+    let one_sided = fits.iter().any(|fit| fit.model == model && fit.skewness >= clear);
+    let points = chains.iter().flat_map(|(chain, _)| chain.points.iter().map(|v| v.at));
+    let length = chains.iter().map(|(chain, _)| chain.length()).sum();
+    let shoulders = Shoulders::of(points, length, sigma, cells);
+    let decoys = match one_sided {
+        true => linking.chains(&found, |p| !right(p) && !shoulders.hold(p.at), work)?,
+        false => Vec::new(),
+    };
     let evidence = |chain: &Chain| evidence(chain, &thresholds, sigma);
-    let right: Vec<f64> = chains.iter().map(|(chain, _)| evidence(chain)).collect();
+    let real: Vec<f64> = chains.iter().map(|(chain, _)| evidence(chain)).collect();
     let wrong: Vec<f64> = decoys.iter().map(evidence).collect();
-    let clear = fits[0].skewness >= moments.clear(sigma);
-    let chance = Chance::of(&right, &wrong);
+    let chance = Chance::of(&real, &wrong, shoulders.weight);
+    let clear = fits[0].skewness >= clear;
     Ok(Trace { model, fits, clear, sense, thresholds, sigma, cells, chance, chains })
 }
 

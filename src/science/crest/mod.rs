@@ -193,7 +193,7 @@ pub struct Crests {
     pub sense: Option<f64>,
     /// The greatest response noise alone reaches in the patch, in tone per pixel (slip face) or per px².
     pub floor: f64,
-    /// The response that a tenth of the crest points exceed, in the same unit: where it is below twice the floor,
+    /// The response that a tenth of the crest points exceed, in the same unit: where it is below 2.4 floors,
     /// speckle breaks and forks lines.
     pub strong: f64,
     /// Responses at which lines start and to which they are followed, in the same unit.

@@ -26,7 +26,7 @@ pub fn suited_scale(model: CrestModel, spacing_px: f64) -> f64 {
 
 /// Strong responses stand so many noise floors high at a scale that can be relied on: lines are then followed
 /// well above the noise.
-const RELIABLE: f64 = 2.0;
+const RELIABLE: f64 = 2.4;
 
 /// Coarsest scale as a share of the spacing: neighbours run into each other beyond.
 const COARSEST: f64 = 1.0 / 4.5;
