@@ -6,7 +6,7 @@ use ventifact::ground::{Axis, Grid, Place, Polygon, Seed, Work};
 use ventifact::numeric::streaks::{AxisCell, StreakSettings, Streaks, streaks};
 use ventifact::science::orientation::{TensorSettings, trend_nodes};
 
-const SIDE: usize = 256;
+const SIDE: usize = 400;
 
 fn cell(deg: f64) -> AxisCell {
     let (sin2, cos2) = (2.0 * deg.to_radians()).sin_cos();
@@ -56,10 +56,10 @@ proptest! {
 
     #[test]
     fn streaks_run_along_their_axis_and_turn_with_it(deg in 0.0..180.0f64, seed in any::<u64>()) {
-        let (along, resultant) = read(&drawn(&Grid::filled(32, 32, cell(deg)), seed));
+        let (along, resultant) = read(&drawn(&Grid::filled(50, 50, cell(deg)), seed));
         assert_close!(apart(along, deg), 0.0, 1.0, "axis {deg}");
         prop_assert!(resultant > 0.95, "{} streaks of one axis", resultant);
-        let (across, _) = read(&drawn(&Grid::filled(32, 32, cell(deg + 90.0)), seed));
+        let (across, _) = read(&drawn(&Grid::filled(50, 50, cell(deg + 90.0)), seed));
         assert_close!(apart(across, along), 90.0, 2.0, "a quarter turn of {deg}");
     }
 
@@ -85,7 +85,7 @@ proptest! {
 /// A field that turns through all axes and back: the walkers never lose their way at the seam of 180° and 0°.
 #[test]
 fn there_is_no_seam_where_axes_pass_half_a_turn() {
-    let turning = Grid::from_fn(32, 32, |col, _| cell(170.0 + 20.0 * (col as f64 / 31.0)));
+    let turning = Grid::from_fn(50, 50, |col, _| cell(170.0 + 20.0 * (col as f64 / 49.0)));
     let (axis, resultant) = read(&drawn(&turning, 3));
     assert_close!(apart(axis, 0.0), 0.0, 1.5, "170° to 190°");
     assert!(resultant > 0.9, "{resultant}");
@@ -93,7 +93,7 @@ fn there_is_no_seam_where_axes_pass_half_a_turn() {
 
 #[test]
 fn the_same_bits_on_one_thread_and_on_many() {
-    let field = Grid::from_fn(32, 32, |col, row| cell(5.0 * col as f64 + 3.0 * row as f64));
+    let field = Grid::from_fn(50, 50, |col, row| cell(5.0 * col as f64 + 3.0 * row as f64));
     let on = |threads| {
         let pool = rayon::ThreadPoolBuilder::new().num_threads(threads).build().expect("a pool");
         pool.install(|| drawn(&field, 9))

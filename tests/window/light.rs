@@ -139,7 +139,7 @@ fn the_light_is_stated_bedforms_are_laid_in_and_the_work_is_stopped() {
     let (_folder, sheet) = demo_on_disk();
     let mut harness = open(blank(), [1440.0, 900.0]);
     give(&mut harness, Command::Sheet(SheetCommand::Open(sheet)));
-    for (key, value) in [("recovery.trends", 12), ("recovery.repeats", 1), ("recovery.window_px", 96)] {
+    for (key, value) in [("recovery.trends", 12), ("recovery.repeats", 1), ("recovery.window_px", 128)] {
         set(&mut harness, key, value);
     }
     let patch = harness.state().app().model().sheet.patches[0].clone();
