@@ -75,6 +75,7 @@ pub(super) fn trace(
     let (mut found, tone) = match slip_face {
         true => (steps, calm),
         false => {
+            drop((steps, calm));
             let tone = ground.prepared(sigma, false, work)?;
             (crossings(&tone, &open, false, sigma, work)?.0, tone)
         }
@@ -143,7 +144,7 @@ impl Linking<'_> {
         work: &Work,
     ) -> Result<Vec<Chain>, Stopped> {
         let points: Vec<Crossing> =
-            found.iter().filter(|p| counts(p) && p.strength >= self.thresholds.low).copied().collect();
+            found.iter().filter(|p| p.strength >= self.thresholds.low && counts(p)).copied().collect();
         let index = Index::new(&points, self.ground.tone.height());
         let linked = link(&points, &index, &self.thresholds, self.slip_face, work)?;
         let joining = Joining {
