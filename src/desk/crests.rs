@@ -13,6 +13,10 @@ use super::Model;
 const REACH: f64 = 9.0;
 /// A mark so near to a line is on it, pixels: the line may have moved a little since it was laid.
 const ON: f64 = 1.0;
+/// A line traced anew lies within so many pixels of where it was.
+const STRAYED: f64 = 3.0;
+/// Lines remembered that are traced no more.
+const MOST_GONE: usize = 2000;
 
 /// The crests of a patch as last traced. They outlive the quick looks of an edit, which trace nothing.
 #[derive(Debug)]
@@ -24,6 +28,8 @@ pub struct Crested {
     pub unit: LengthUnit,
     /// The box of each line, so that what is under the pointer is found at once.
     boxes: Vec<Bounds>,
+    /// Lines that were traced before and are no more, so that a rejected one can still be seen.
+    gone: Vec<Polyline>,
 }
 
 /// The place on a crest nearest to the pointer.
@@ -49,7 +55,22 @@ impl Crested {
         let outcome = finding.crests.clone().map(Arc::new);
         let lines = outcome.as_ref().map_or(&[][..], |crests| &crests.lines);
         let boxes = lines.iter().map(|line| bounds(&line.line)).collect();
-        Self { outcome, fingerprint: finding.fingerprint.clone(), unit: finding.unit, boxes }
+        let (fingerprint, unit) = (finding.fingerprint.clone(), finding.unit);
+        Self { outcome, fingerprint, unit, boxes, gone: Vec::new() }
+    }
+
+    /// The same, with the lines of `before` that are traced no more.
+    pub fn after(self, before: Option<Self>) -> Self {
+        let Some(before) = before else { return self };
+        let traced = before.lines().iter().filter(|line| is_traced(line)).map(|line| &line.line);
+        let is_gone = |line: &&Polyline| middle(line).is_some_and(|at| self.near(at, STRAYED).is_none());
+        let gone = before.gone.iter().chain(traced).filter(is_gone).take(MOST_GONE).cloned().collect();
+        Self { gone, ..self }
+    }
+
+    /// The line that was rejected at a mark, if it was seen since the sheet was opened.
+    pub fn rejected(&self, mark: Point) -> Option<&Polyline> {
+        self.gone.iter().find(|line| lies_on(mark, line))
     }
 
     pub fn finding(&self) -> Option<&Arc<CrestsFinding>> {
@@ -105,10 +126,14 @@ impl Crested {
 
     /// Traced lines nobody has accepted yet, at least so sure.
     pub fn unaccepted_from(&self, confidence: f64) -> impl Iterator<Item = &CrestLine> {
-        let of_detector = |line: &CrestLine| matches!(line.origin, CrestOrigin::Traced | CrestOrigin::Edited);
         let lines = self.lines().iter();
-        lines.filter(move |line| !line.accepted && of_detector(line) && line.confidence >= confidence)
+        lines.filter(move |line| !line.accepted && is_traced(line) && line.confidence >= confidence)
     }
+}
+
+/// Whether the detector has a part in the line.
+pub fn is_traced(line: &CrestLine) -> bool {
+    matches!(line.origin, CrestOrigin::Traced | CrestOrigin::Edited)
 }
 
 /// Whether a mark lies on a line.
@@ -117,9 +142,9 @@ pub fn lies_on(mark: Point, line: &Polyline) -> bool {
 }
 
 /// The place half way along a line.
-pub fn middle(line: &CrestLine) -> Option<Point> {
-    let half = 0.5 * line.line.length();
-    line.line.cut(&[half]).first().and_then(|piece| piece.0.last().copied())
+pub fn middle(line: &Polyline) -> Option<Point> {
+    let half = 0.5 * line.length();
+    line.cut(&[half]).first().and_then(|piece| piece.0.last().copied())
 }
 
 /// The nearest line laid by hand within `reach` pixels, and how far it is.

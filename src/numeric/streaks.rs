@@ -2,7 +2,8 @@
 //!
 //! Line integral convolution (Cabral and Leedom 1993, Computer Graphics Proceedings 263; cited from memory) of a
 //! field without sense: from each pixel a walker goes both ways along the axes, a pixel a step, and of the two
-//! senses of an axis takes the one it was going. What it meets of the noise is averaged under a bell.
+//! senses of an axis takes the one it was going. What it meets of the noise is averaged under a bell, and a little
+//! blur afterwards makes streaks a pixel or two wide and takes out what whole pixels do to slanted walks.
 //!
 //! F(x) = Σ_k h_k n(σ(k)), σ(0) = x, σ(k ± 1) = σ(k) ± a(σ(k)), h_k = ½(1 + cos(πk/(L + 1))), |k| ≤ L
 
@@ -56,11 +57,14 @@ struct Texel {
 
 /// Noise is made by squares of so many pixels a side, each with a stream of its own.
 const SQUARE: usize = 64;
+/// Noise farther out than this is that of the edge.
+const FARTHEST: i64 = 1 << 40;
 /// Below this a pixel shows nothing and is not worked out.
 const FAINTEST: f32 = 1.0 / 512.0;
-/// Weights of the little blur that makes streaks a pixel or two wide.
+/// Weights of the little blur.
 const BLUR: [f32; 3] = [0.25, 0.5, 0.25];
-/// Correlation of blurred noise by distance in pixels: of [1 2 1]/4 with itself.
+/// Correlation of blurred noise by distance in pixels: of [1 2 1]/4 with itself. Drawing out blurred noise and
+/// blurring drawn-out noise is the same where the axis is.
 const BLURRED: [f64; 3] = [1.0, 2.0 / 3.0, 1.0 / 6.0];
 /// Its variance: that of an even spread over [−1, 1), times (Σ w²)² of the blur.
 const VARIANCE: f64 = (1.0 / 3.0) * (6.0 / 16.0) * (6.0 / 16.0);
@@ -71,24 +75,43 @@ const VARIANCE: f64 = (1.0 / 3.0) * (6.0 / 16.0) * (6.0 / 16.0);
 /// [`Stopped`].
 pub fn streaks(field: &Grid<AxisCell>, s: &StreakSettings, work: &Work) -> Result<Streaks, Stopped> {
     let [width, height] = s.size;
-    let rim = s.half_length + 2;
-    let wide = width + 2 * rim;
     if width == 0 || height == 0 {
         let nothing = || Grid::from_parts(width, height, Vec::new(), None);
         return Ok(Streaks { texture: nothing(), fade: nothing() });
     }
-    let texels = ground(field, s, rim, work)?;
-    let walk = Walk { texels: &texels, wide, weights: weights(s.half_length) };
+    // The blur wants a pixel more on each side, and rounding may take a walker one further.
+    let rim = s.half_length + 3;
+    let walk = Walk {
+        texels: &ground(field, s, rim, work)?,
+        wide: width + 2 * rim,
+        weights: weights(s.half_length),
+    };
+    let broad = width + 2;
+    let mut drawn = vec![0.0f32; broad * (height + 2)];
+    drawn.par_chunks_mut(broad).enumerate().try_for_each(|(row, drawn)| {
+        work.advance(1)?;
+        let line = Line::of(field, s.step, row as f64 - 0.5);
+        for (col, drawn) in drawn.iter_mut().enumerate() {
+            if line.at(col as f64 - 0.5).fade >= FAINTEST {
+                *drawn = walk.along(col + rim - 1, row + rim - 1);
+            }
+        }
+        Ok(())
+    })?;
     let mut texture = vec![0.5f32; width * height];
     let mut fade = vec![0.0f32; width * height];
     let rows = texture.par_chunks_mut(width).zip(fade.par_chunks_mut(width)).enumerate();
     rows.try_for_each(|(row, (texture, fade))| {
         work.advance(1)?;
         let line = Line::of(field, s.step, row as f64 + 0.5);
+        let near: [&[f32]; 3] = std::array::from_fn(|k| &drawn[(row + k) * broad..][..broad]);
         for (col, (texture, fade)) in texture.iter_mut().zip(fade).enumerate() {
             let shows = line.at(col as f64 + 0.5).fade;
             if shows >= FAINTEST {
-                *texture = walk.shade(col + rim, row + rim);
+                let across = |row: &[f32]| (0..3).map(|k| BLUR[k] * row[col + k]).sum::<f32>();
+                let z = (0..3).map(|k| BLUR[k] * across(near[k])).sum::<f32>();
+                // Softly bounded: z = ±1 gives 0.85 and 0.15.
+                *texture = 0.5 + 0.5 * z / (1.0 + z * z).sqrt();
                 *fade = shows.min(1.0);
             }
         }
@@ -126,21 +149,20 @@ fn ground(
     texels.par_chunks_mut(wide).enumerate().try_for_each(|(row, texels)| {
         work.advance(1)?;
         let line = Line::of(field, s.step, row as f64 + 0.5 - rim as f64);
-        let above: [&[f32]; 3] = std::array::from_fn(|k| &noise[(row + k) * (wide + 2)..][..wide + 2]);
-        for (col, texel) in texels.iter_mut().enumerate() {
-            let down = |at: usize| (0..3).map(|k| BLUR[k] * above[k][at]).sum::<f32>();
+        let noise = &noise[row * wide..][..wide];
+        for (col, (texel, noise)) in texels.iter_mut().zip(noise).enumerate() {
             let cell = line.at(col as f64 + 0.5 - rim as f64);
-            *texel = Texel { along: cell.along(), noise: (0..3).map(|k| BLUR[k] * down(col + k)).sum() };
+            *texel = Texel { along: cell.along(), noise: *noise };
         }
         Ok(())
     })?;
     Ok(texels)
 }
 
-/// Even noise in [−1, 1) over the picture, its rim and one pixel more on each side.
+/// Even noise in [−1, 1) over the picture and its rim.
 fn noise(s: &StreakSettings, rim: usize, work: &Work) -> Result<Vec<f32>, Stopped> {
-    let [wide, high] = s.size.map(|side| side + 2 * rim + 2);
-    let [left, top] = s.origin.map(|at| at.wrapping_sub(rim as i64 + 1));
+    let [wide, high] = s.size.map(|side| side + 2 * rim);
+    let [left, top] = s.origin.map(|at| at.clamp(-FARTHEST, FARTHEST) - rim as i64);
     let square = SQUARE as i64;
     let mut noise = vec![0.0f32; wide * high];
     // A band of squares is a task; the first one may be cut.
@@ -236,13 +258,11 @@ struct Walk<'a> {
 }
 
 impl Walk<'_> {
-    /// The shade of the pixel at this column and row, the rim counted.
-    fn shade(&self, col: usize, row: usize) -> f32 {
+    /// The noise along the axis at this column and row, the rim counted.
+    fn along(&self, col: usize, row: usize) -> f32 {
         let here = self.texels[row * self.wide + col];
         let [x, y] = here.along;
-        let z = self.weights[0] * here.noise + self.arm(col, row, [x, y]) + self.arm(col, row, [-x, -y]);
-        // Softly bounded: z = ±1 gives 0.85 and 0.15.
-        0.5 + 0.5 * z / (1.0 + z * z).sqrt()
+        self.weights[0] * here.noise + self.arm(col, row, [x, y]) + self.arm(col, row, [-x, -y])
     }
 
     /// What one walker meets.

@@ -7,6 +7,7 @@ use crate::science::crest::{
 };
 
 use super::crest_edits::{self, Pixels};
+use super::populations::Only;
 use super::window::PatchPixels;
 use super::{ImageKind, Patch, RasterEntry, Sheet, SpectrumFinding, TrendFinding, crest_words};
 
@@ -55,8 +56,8 @@ impl CrestsFinding {
     }
 }
 
-/// Traces crests and applies the user's edits; in words why there are none: no trend is claimed or only what is
-/// drawn counts, and nothing is drawn.
+/// Traces crests and applies the user's edits, of the whole patch or of one population at its own scale; in words why
+/// there are none: no trend is claimed or only what is drawn counts, and nothing is drawn.
 ///
 /// # Errors
 /// [`Stopped`].
@@ -68,6 +69,7 @@ pub fn study(
     trend: &TrendFinding,
     spectrum: &SpectrumFinding,
     unit: LengthUnit,
+    only: Option<Only>,
     work: &Work,
 ) -> Result<Result<CrestsFinding, String>, Stopped> {
     let untraced = if patch.crests.drawn_only {
@@ -91,8 +93,8 @@ pub fn study(
     let by_spectrum = spectrum.spacing.filter(|_| spectrum.defined);
     let settings = crest::CrestSettings {
         model: said.model.or(wanted.model),
-        scale_px: wanted.scale_px,
-        spacing_px: by_spectrum.map(|s| s / fine),
+        scale_px: wanted.scale_px.filter(|_| only.is_none()),
+        spacing_px: by_spectrum.or(only.and_then(|only| only.spacing)).map(|s| s / fine),
         logarithm: entry.kind == ImageKind::Radar,
         excluded: said.masks.iter().map(|mask| mask.map(|p| at.reduced(p))).collect(),
         tone_limits: said.tone_limits,
@@ -107,6 +109,11 @@ pub fn study(
     };
     let ground = EditGround { image: &pixels.image, outline: &pixels.outline, excluded: &settings.excluded };
     let Edited { crests: found, lost } = edit(traced, &crest_edits::reduced(said, at), ground, work)?;
+    let (found, lost) = match only {
+        // An edit may well belong to another population: none is lost here.
+        Some(only) => (only.of(found, frame), Vec::new()),
+        None => (found, lost),
+    };
     if let Some(why) = untraced.as_ref().filter(|_| found.lines.is_empty()) {
         return Ok(Err(format!("{why}, and nothing drawn lies in the patch")));
     }

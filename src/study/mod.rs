@@ -31,6 +31,7 @@ mod patch;
 mod pattern_findings;
 mod pattern_settings;
 pub mod pen;
+mod populations;
 mod records;
 mod recovery;
 pub mod run;

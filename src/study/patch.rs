@@ -14,6 +14,7 @@ use super::claim;
 use super::crests;
 use super::light;
 use super::obstacles;
+use super::populations;
 use super::verdict::verdict;
 use super::window::{self, Detail, PatchPixels};
 use super::winds::{self, WindStudy};
@@ -57,7 +58,7 @@ pub fn patch_finding(
             .extend(sheet.wind(winds.finding.id).and_then(|w| winds::other_body(w, &open.place.body)));
         verdicts.push(judged);
     }
-    let backwards = backwards::of_patch(sheet, patch, &trend, work)?;
+    let backwards = backwards::of_patch(sheet, patch, &trend, &[], work)?;
     let mut birth = Vec::new();
     let mut birth_cautions = Vec::new();
     for WindStudy { finding: record, .. } in judges.iter().map(|winds| &***winds) {
@@ -96,8 +97,11 @@ pub fn patch_finding(
     if detail == Detail::Exact {
         let (trend, spectrum) = (&finding.trend, &finding.spectrum);
         finding.pattern.light = light::of_trend(trend, entry);
-        finding.crests = crests::study(sheet, patch, &pixels, entry, trend, spectrum, finding.unit, work)?;
+        finding.crests =
+            crests::study(sheet, patch, &pixels, entry, trend, spectrum, finding.unit, None, work)?;
         finding.obstacles = obstacles::study(sheet, patch, &open.place, &finding.trend, seed, work)?;
+        let ground = populations::Ground { sheet, patch, entry, open, pixels: &pixels, judges, seed };
+        populations::study(&ground, &mut finding, work)?;
     }
     if detail == Detail::Exact {
         let trend_only = claim::caution(&finding);
@@ -158,7 +162,7 @@ pub(super) fn choose_scale(
 
 /// A peak that passed its test and is a texture too: with power around it, one axis and one spacing. A
 /// camera's grain or a resampling can raise a single bin without either.
-fn regular_peak(s: &Spectrum) -> Option<Peak> {
+pub(super) fn regular_peak(s: &Spectrum) -> Option<Peak> {
     s.peak.filter(|p| {
         let [low, high] = p.spacing_ci95;
         s.defined && p.contrast > 0.0 && p.axis_ci95_half_deg < 45.0 && high < 3.0 * low
@@ -166,7 +170,7 @@ fn regular_peak(s: &Spectrum) -> Option<Peak> {
 }
 
 /// Ground size of the finer pixel direction at the middle of the patch.
-fn fine_pixel(pixels: &PatchPixels) -> f64 {
+pub(super) fn fine_pixel(pixels: &PatchPixels) -> f64 {
     let frame = pixels.outline.bounds().and_then(|b| pixels.place.local_frame(b.centre()));
     frame.map_or(1.0, |f| f.pixel_size().into_iter().fold(f64::INFINITY, f64::min))
 }
@@ -312,7 +316,7 @@ pub(super) fn summarise(
 }
 
 /// Nodes on a plane that touches the ground at the middle of the patch, ground units.
-fn ground_positions(pixels: &PatchPixels, nodes: &[TrendNode]) -> Vec<Point> {
+pub(super) fn ground_positions(pixels: &PatchPixels, nodes: &[TrendNode]) -> Vec<Point> {
     let centre = pixels.outline.bounds().map_or(Point::default(), |b| b.centre());
     let frame = pixels.place.local_frame(centre);
     let on_ground = |p: Point| {
@@ -325,7 +329,7 @@ fn ground_positions(pixels: &PatchPixels, nodes: &[TrendNode]) -> Vec<Point> {
 }
 
 /// The plug-in bandwidth with the effective number, since nodes repeat one another.
-fn density_bandwidth(summary: &Summary) -> f64 {
+pub(super) fn density_bandwidth(summary: &Summary) -> f64 {
     axial::density::plug_in(summary.n_eff_mean.max(2.0), summary.kappa.max(0.05))
 }
 

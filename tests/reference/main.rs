@@ -11,6 +11,7 @@ mod crest_trust;
 mod drainage;
 mod georef;
 mod image_channels;
+mod light;
 mod network;
 mod obstacle;
 mod orientation;

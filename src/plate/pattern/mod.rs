@@ -15,6 +15,7 @@ mod spacing;
 mod survival;
 
 pub use comparison::comparison_figure;
+pub(super) use comparison::{crests_moved, trends_compared};
 pub use crest_rose::crest_rose;
 pub use defects::defect_diagram;
 pub use lengths::crest_lengths;

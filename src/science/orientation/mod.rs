@@ -16,7 +16,7 @@ pub mod spectrum;
 mod tensor;
 
 pub use gradient::Tone;
-pub use spectrum::{Peak, Spectrum, SpectrumSettings, spectrum};
+pub use spectrum::{Peak, Spectrum, SpectrumSettings, spectrum, spectrum_along};
 pub use tensor::{NodeField, TensorSettings, TrendNode, trend_nodes};
 
 use crate::ground::Method;

@@ -28,6 +28,9 @@ pub struct Charts {
     kept: BTreeMap<Id, CrestChart>,
 }
 
+/// A line the user rejected.
+const REJECTED: Style = Style { width: 1.1, strength: 0.55, kind: Kind::Dotted };
+
 /// How the crests of a patch are drawn.
 #[derive(Clone, Copy)]
 struct Look {
@@ -110,7 +113,7 @@ fn style(line: &CrestLine, said: &CrestEntry, look: Look) -> Option<Style> {
         _ if !look.current && by_hand => return None,
         CrestOrigin::Drawn => Style { width: 3.4, strength: 1.0, kind: Kind::Rail },
         CrestOrigin::Imported => Style { width: 1.7, strength: 1.0, kind: Kind::Dashed },
-        _ if marked(&said.rejected) => Style { width: 1.0, strength: 0.35, kind: Kind::Dotted },
+        _ if marked(&said.rejected) => REJECTED,
         _ if line.accepted || marked(&said.accepted) => {
             Style { width: 2.1, strength: 1.0, kind: Kind::Plain }
         }
@@ -191,10 +194,16 @@ fn said(painter: &Painter, table: &Table<'_>, patch: &Patch, look: Look) {
     if !look.selected {
         return;
     }
+    let crested = table.model.session.results.crests(patch.id);
     for at in &said.rejected {
+        let gone = crested.and_then(|crested| crested.rejected(*at));
+        if let Some(points) = gone.and_then(|line| seen(line, visible, scale)) {
+            let on: Vec<Pos2> = points.iter().map(|p| lens.to_screen(*p)).collect();
+            painter.add(halo(REJECTED, &on, ink));
+            inked(painter, REJECTED, &on, ink.line, ink);
+        }
         crossed(painter, lens.to_screen(*at), ink);
     }
-    let crested = table.model.session.results.crests(patch.id);
     for at in &said.cuts {
         let way = crested.and_then(|crested| nearest_way(crested, *at)).unwrap_or(Vec2::RIGHT);
         let along = lens.step(f64::from(way.x), f64::from(way.y));
