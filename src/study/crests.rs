@@ -111,7 +111,7 @@ pub fn study(
     let Edited { crests: found, lost } = edit(traced, &crest_edits::reduced(said, at), ground, work)?;
     let (found, lost) = match only {
         // An edit may well belong to another population: none is lost here.
-        Some(only) => (only.of(found, frame), Vec::new()),
+        Some(only) => (only.of(found, frame.middle()), Vec::new()),
         None => (found, lost),
     };
     if let Some(why) = untraced.as_ref().filter(|_| found.lines.is_empty()) {
