@@ -4,6 +4,7 @@ mod alignment;
 mod axial;
 mod axial_field;
 mod axial_tests;
+mod checks_abc;
 mod crest;
 mod crest_ground;
 mod crest_trust;

@@ -27,7 +27,7 @@ pub static METHOD: Method = Method {
         "where no model stands out, both senses belong to the pattern: then only pixel noise counts as the alternative, and texture may be taken for crests",
         "streaks, roads and shores of the right sense count as crests",
         "a line part crest and part texture counts as what most of it is",
-        "wrong lines within 4σ of right ones are their shoulders and troughs, and do not count; the others count more by the ground so left out",
+        "wrong lines within 4σ (slip faces 6σ) of right ones are their shoulders and troughs, and do not count; the others count more by the ground so left out",
         "one line of the wrong sense is always added at the weakest line, so that few lines are never certain",
     ],
     sources: &[Source {
@@ -41,8 +41,9 @@ pub static METHOD: Method = Method {
     }],
 };
 
-/// Wrong lines within so many scales of right ones are their shoulders.
-const SHOULDER: f64 = 4.0;
+/// Wrong lines within so many scales of right ones are their shoulders: of ridges the troughs beside them, of slip
+/// faces the slopes that rise to them.
+const SHOULDER: [f64; 2] = [4.0, 6.0];
 
 /// Most times a wrong line counts for ground where none was sought.
 const MOST_WEIGHT: f64 = 10.0;
@@ -63,8 +64,14 @@ pub(super) struct Shoulders {
 
 impl Shoulders {
     /// Around the points of right lines of a total length, traced at a scale in so many cells.
-    pub fn of(points: impl Iterator<Item = Point>, length: f64, sigma: f64, searched: usize) -> Self {
-        let reach = SHOULDER * sigma;
+    pub fn of(
+        points: impl Iterator<Item = Point>,
+        length: f64,
+        sigma: f64,
+        slip_face: bool,
+        searched: usize,
+    ) -> Self {
+        let reach = SHOULDER[usize::from(slip_face)] * sigma;
         let mut cells: HashMap<(i64, i64), Vec<Point>> = HashMap::new();
         for p in points {
             cells.entry(Self::cell(p, reach)).or_default().push(p);

@@ -218,7 +218,7 @@ pub fn detect(
     work.phase("crests", 0);
     let ground = tone::Ground::new(image, outline, settings, work)?;
     let trace = match settings.scale_px.filter(|sigma| sigma.is_finite()) {
-        Some(sigma) => lines::trace(&ground, settings, sigma.clamp(1.0, scale::MOST_PX), work)?,
+        Some(sigma) => lines::trace(&ground, settings, sigma.clamp(1.0, scale::MOST_PX), None, work)?,
         None => scale::choose(&ground, settings, work)?,
     };
     Ok(trace.finished(&ground, settings))
