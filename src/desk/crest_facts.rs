@@ -6,6 +6,7 @@ use crate::science::crest::{CrestLine, CrestModel, CrestOrigin, End, Fit};
 use crate::study::{CrestsFinding, TrendFinding};
 
 use super::facts::{Fact, fact};
+use super::{Subject, Tracing};
 
 /// Which method makes which row.
 const METHODS: &[(&str, &str)] = &[
@@ -277,6 +278,31 @@ pub fn line(line: &CrestLine, frame: Option<LocalFrame>, unit: LengthUnit) -> Ve
     let [a, b] = line.ends.map(end_words);
     let value = if line.ends[0] == End::Closed { "none: it closes".to_owned() } else { format!("{a}; {b}") };
     facts.push(fact("Ends", value, "Why the line stops. Only free ends are defects."));
+    facts
+}
+
+/// The line under way.
+pub fn tracing(tracing: &Tracing) -> Vec<Fact> {
+    let Subject::Crest { ends, joins, .. } = tracing.subject else { return Vec::new() };
+    let becomes = match (joins, ends.map(|end| end.is_some())) {
+        (true, _) | (_, [true, true]) => "a join: the lines at its ends become one",
+        (_, [false, false]) => "a crest of its own",
+        _ => "the line at its end goes on",
+    };
+    let next = if joins {
+        "Backspace takes it back, then the other end"
+    } else {
+        "Backspace takes one back, Enter ends"
+    };
+    let mut facts = vec![
+        fact("Picks", format!("{}; {next}", tracing.picks.len()), "Of the crest under way."),
+        fact("It will be", becomes, "By the ends of other lines at its own."),
+    ];
+    let last = tracing.live.as_ref().or(tracing.legs.iter().flatten().last());
+    if last.is_some_and(|leg| leg.way.is_none()) {
+        let straight = "straight: there is no ground for the pen here";
+        facts.push(fact("Way", straight, "Off the raster, or no data.").by("crest.pen"));
+    }
     facts
 }
 

@@ -8,9 +8,8 @@ use crate::science::crest::{CrestLine, CrestOrigin, End};
 use crate::study::{CrestStroke, CrestsFinding, Id, Patch, PatchFinding};
 
 use super::Model;
+use super::channels::pointer_reach;
 
-/// How near the pointer must be to a crest, screen points.
-const REACH: f64 = 9.0;
 /// A mark so near to a line is on it, pixels: the line may have moved a little since it was laid.
 const ON: f64 = 1.0;
 
@@ -25,6 +24,11 @@ pub struct Crested {
     /// The box of each line, so that what is under the pointer is found at once.
     boxes: Vec<Bounds>,
 }
+
+/// The lines that were rejected since the sheet was opened, so that they can still be seen: by mark, as they
+/// were when it was laid.
+#[derive(Debug, Default)]
+pub(super) struct Struck(Vec<(Point, Option<Polyline>)>);
 
 /// The place on a crest nearest to the pointer.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -105,10 +109,30 @@ impl Crested {
 
     /// Traced lines nobody has accepted yet, at least so sure.
     pub fn unaccepted_from(&self, confidence: f64) -> impl Iterator<Item = &CrestLine> {
-        let of_detector = |line: &CrestLine| matches!(line.origin, CrestOrigin::Traced | CrestOrigin::Edited);
         let lines = self.lines().iter();
-        lines.filter(move |line| !line.accepted && of_detector(line) && line.confidence >= confidence)
+        lines.filter(move |line| !line.accepted && is_traced(line) && line.confidence >= confidence)
     }
+}
+
+impl Struck {
+    /// Looks up the lines of new marks and drops those of marks taken back.
+    pub(super) fn follow(&mut self, marks: &[Point], crested: &Crested) {
+        self.0.retain(|(mark, _)| marks.contains(mark));
+        for mark in marks {
+            if !self.0.iter().any(|(known, _)| known == mark) {
+                self.0.push((*mark, crested.line_at(*mark).cloned()));
+            }
+        }
+    }
+
+    pub(super) fn line(&self, mark: Point) -> Option<&Polyline> {
+        self.0.iter().find(|(known, _)| *known == mark).and_then(|(_, line)| line.as_ref())
+    }
+}
+
+/// Whether the detector has a part in the line.
+pub fn is_traced(line: &CrestLine) -> bool {
+    matches!(line.origin, CrestOrigin::Traced | CrestOrigin::Edited)
 }
 
 /// Whether a mark lies on a line.
@@ -117,20 +141,15 @@ pub fn lies_on(mark: Point, line: &Polyline) -> bool {
 }
 
 /// The place half way along a line.
-pub fn middle(line: &CrestLine) -> Option<Point> {
-    let half = 0.5 * line.line.length();
-    line.line.cut(&[half]).first().and_then(|piece| piece.0.last().copied())
+pub fn middle(line: &Polyline) -> Option<Point> {
+    let half = 0.5 * line.length();
+    line.cut(&[half]).first().and_then(|piece| piece.0.last().copied())
 }
 
 /// The nearest line laid by hand within `reach` pixels, and how far it is.
 pub fn stroke_near(strokes: &[CrestStroke], at: Point, reach: f64) -> Option<(usize, f64)> {
     let near = strokes.iter().enumerate().filter_map(|(i, s)| Some((i, s.line.nearest(at)?.distance)));
     near.filter(|(_, d)| *d <= reach).min_by(|a, b| a.1.total_cmp(&b.1))
-}
-
-/// How far the pointer reaches, pixels of the raster on the table.
-pub fn pointer_reach(model: &Model) -> f64 {
-    model.camera().map_or(REACH, |(_, camera)| REACH / camera.scale)
 }
 
 /// The open end of a crest of the patch beside a place, within the pointer's reach.

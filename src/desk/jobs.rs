@@ -20,6 +20,8 @@ pub enum Slot {
     Measure,
     /// Channel networks.
     Networks,
+    /// Two pictures of one ground.
+    Comparisons,
     /// Bedforms laid into a patch and sought again.
     Recovery,
     /// The pen: its ground and the way to the pointer.
@@ -32,7 +34,8 @@ pub enum Slot {
 }
 
 impl Slot {
-    pub const ALL: [Self; 10] = [
+    pub const ALL: [Self; 11] = [
+        Self::Comparisons,
         Self::OpenRaster,
         Self::Demo,
         Self::Measure,

@@ -6,6 +6,8 @@ pub mod channel_facts;
 pub mod channels;
 mod charting;
 mod command;
+mod comparing;
+pub mod comparison_facts;
 pub mod crest_facts;
 pub mod crests;
 mod engine;
@@ -37,10 +39,11 @@ pub use crate::files::wind_table::{DirectionSense, SpeedUnit, Stand, WindImport,
 pub use crate::study::bulk::LonLatBox;
 pub use answer::{Answer, absorb};
 pub use command::{
-    AskCommand, BodyCommand, Chord, Command, CrestCommand, DrawCommand, JobCommand, NetworkCommand,
-    ObstacleCommand, PatchCommand, PlateCommand, RasterCommand, Record, SettingCommand, SheetCommand,
-    ViewCommand, WindCommand, apply, listed,
+    AskCommand, BodyCommand, Chord, Command, ComparisonCommand, CrestCommand, DrawCommand, JobCommand,
+    NetworkCommand, ObstacleCommand, PatchCommand, PlateCommand, RasterCommand, Record, SettingCommand,
+    SheetCommand, ViewCommand, WindCommand, apply, listed,
 };
+pub use comparing::Compared;
 pub use crests::Crested;
 pub use engine::SheetError;
 pub use history::{History, MergeKey};

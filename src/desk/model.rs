@@ -8,7 +8,8 @@ use crate::study::judges::{self, Judges};
 use crate::study::{Id, NetworkEntry, Obstacle, Patch, RasterEntry, Sheet, WindEntry};
 
 use super::{
-    Opened, Session, Tool, View, Wake, charting, engine, laying, measuring, pen, plates, recovering,
+    Opened, Session, Tool, View, Wake, charting, comparing, engine, laying, measuring, pen, plates,
+    recovering,
 };
 
 /// What panels draw from. It changes only in [`super::apply`] and [`super::absorb`].
@@ -131,6 +132,7 @@ impl Model {
         laying::follow(self);
         measuring::follow(self);
         charting::follow(self);
+        comparing::follow(self);
         recovering::follow(self);
         pen::follow(self);
         plates::follow(self);

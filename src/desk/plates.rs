@@ -8,9 +8,9 @@ use serde::{Deserialize, Serialize};
 use crate::files::save;
 use crate::plate::{Figure, PngSize, Theme, compose, pdf, png, svg};
 use crate::study::handover::write_all;
-use crate::study::{Findings, Id, Sheet, Sources, fingerprint, run};
+use crate::study::{Findings, Id, Patch, Sheet, Sources, fingerprint, run};
 
-use super::{Answer, Model, Page, Slot, recovering};
+use super::{Answer, Model, Page, Slot, comparing, recovering};
 
 /// What the plate is to be; saved with the view.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
@@ -113,7 +113,19 @@ fn key(model: &Model) -> String {
     let choice = &model.view.plate;
     let results = &model.session.results;
     let subject: Vec<String> = match choice.motif {
-        Motif::Patch | Motif::Crests => model.selected_patch().iter().map(|p| results.stamp(p.id)).collect(),
+        Motif::Patch | Motif::Crests => {
+            let stamps = |p: &&Patch| {
+                let recovery = results.recovered(p.id).map(|r| r.fingerprint.as_str());
+                let recovered = format!("{recovery:?} {:?}", results.recovery_standing(p.id));
+                let of_patch = model.sheet.comparisons.iter().filter(|c| c.patch == p.id);
+                let compared = of_patch.map(|c| {
+                    let made = results.compared(c.id).map(|made| made.fingerprint.as_str());
+                    format!("{made:?} {:?}", results.comparison_standing(c.id))
+                });
+                [results.stamp(p.id), recovered].into_iter().chain(compared).collect::<Vec<_>>()
+            };
+            model.selected_patch().iter().flat_map(stamps).collect()
+        }
         // Its plate shows the patches of the raster and the networks it is compared with.
         Motif::Network | Motif::Overview => {
             let chosen = model.view.network.map(|id| format!("{id:?}"));
@@ -226,7 +238,7 @@ fn findings(model: &Model) -> Findings {
             .collect(),
         together: session.results.together().cloned().unwrap_or_default(),
         recoveries: recovering::current(sheet, &session.results),
-        comparisons: Vec::new(),
+        comparisons: comparing::current(sheet, &session.results),
         failures: session.results.failures(sheet),
     }
 }

@@ -7,6 +7,7 @@ use std::sync::Arc;
 use crate::ground::{Place, Point, Polygon};
 use crate::study::{Id, OpenRaster, Sheet, fingerprint};
 
+use super::comparing::Comparing;
 use super::laying::OpenedAs;
 use super::measuring::{Kept, Task};
 use super::recovering::Recovering;
@@ -41,6 +42,8 @@ pub struct Session {
     pub(super) charts_stopped_at: Option<Vec<String>>,
     /// What the recovery job is about.
     pub(super) recovering: Recovering,
+    /// What the comparing job is about.
+    pub(super) comparing: Comparing,
     /// Whether patches are measured as they change.
     pub measures: bool,
     /// The plate on the bench.
@@ -258,6 +261,7 @@ impl Session {
         self.stopped_at = None;
         self.charts_stopped_at = None;
         self.recovering = Recovering::default();
+        self.comparing = Comparing::default();
     }
 
     /// Measures nothing more until the sheet changes or the user asks.
@@ -314,6 +318,7 @@ impl Session {
             charting: Vec::new(),
             charts_stopped_at: None,
             recovering: Recovering::default(),
+            comparing: Comparing::default(),
             measures: true,
             preview: Preview::default(),
             import: None,

@@ -3,7 +3,7 @@
 use std::path::{Path, PathBuf};
 
 use crate::files::layers::read_patches;
-use crate::files::raster::{Bands, Limits, Raster};
+use crate::files::raster::{Bands, Light, Limits, Raster};
 use crate::files::text;
 use crate::files::wind_table::{self, WindImport};
 use crate::ground::{Azimuth, Body, LonLat, Polygon};
@@ -36,6 +36,7 @@ pub fn measure(options: &Measure) -> Result<Outcome, Trouble> {
     if band == 0 || band > bands {
         return Err(wrong(format!("--band {band}: the file has bands 1 to {bands}")));
     }
+    let by_tag = open.raster.info().light.and_then(Light::from);
     let name = path.file_stem().map_or("raster".into(), |n| n.to_string_lossy().into_owned());
     let mut sheet = Sheet::empty(name.clone());
     sheet.rasters.push(RasterEntry {
@@ -46,7 +47,7 @@ pub fn measure(options: &Measure) -> Result<Outcome, Trouble> {
         kind: if options.radar { ImageKind::Radar } else { ImageKind::Optical },
         placement,
         tone: Tone::default(),
-        light_from: options.light_from.map(Azimuth::from_deg),
+        light_from: options.light_from.map(Azimuth::from_deg).or(by_tag),
     });
     for (name, outline, tags) in patches(options, &open)? {
         let id = sheet.fresh_id();

@@ -86,6 +86,12 @@ fn print(findings: &Findings) {
             println!("  caution: {} [{}]", caution.text, caution.code);
         }
     }
+    for comparison in &findings.comparisons {
+        println!("{}", comparison.sentence);
+        for caution in &comparison.cautions {
+            println!("  caution: {} [{}]", caution.text, caution.code);
+        }
+    }
     for joint in &findings.together.joint {
         println!("{}", joint.sentence);
         for trend in &joint.trends {

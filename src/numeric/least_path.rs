@@ -51,8 +51,18 @@ impl CostField {
     /// # Panics
     /// When the number of costs is not `width * height`: a bug in the caller.
     pub fn new(width: usize, height: usize, costs: &[f32]) -> Self {
+        Self::finer(width, height, costs, usize::MAX)
+    }
+
+    /// The same with squares of at most `side` pixels, where cheap lines lie so close together that larger squares
+    /// would hold two of them; slower on large ground.
+    ///
+    /// # Panics
+    /// As [`CostField::new`].
+    pub fn finer(width: usize, height: usize, costs: &[f32], side: usize) -> Self {
         let fine = Terrain::new(width, height, costs.iter().copied());
         let factor = (1..).find(|k| width.div_ceil(*k) * height.div_ceil(*k) <= MOST_SQUARES).unwrap_or(1);
+        let factor = factor.min(side.max(1));
         let coarse = if factor > 1 { squares(&fine, factor) } else { fine.clone() };
         Self { fine, coarse, factor }
     }

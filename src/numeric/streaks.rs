@@ -1,10 +1,10 @@
 //! Streaks along a field of axes: noise drawn out along the field, so that the eye sees it whole.
 //!
 //! Line integral convolution (Cabral and Leedom 1993, Computer Graphics Proceedings 263; cited from memory) of a
-//! field without sense: from each pixel a walker goes both ways along the axes, a pixel a step, and of the two
-//! senses of an axis takes the one it was going. What it meets of the noise is averaged under a bell.
+//! field without sense: from each pixel a walker goes both ways along the axes and of the two senses of an axis
+//! takes the one it was going. What it meets of the noise, read between pixels, is averaged under a bell.
 //!
-//! F(x) = Σ_k h_k n(σ(k)), σ(0) = x, σ(k ± 1) = σ(k) ± a(σ(k)), h_k = ½(1 + cos(πk/(L + 1))), |k| ≤ L
+//! F(x) = Σ_k h(2k) n(σ(k)), σ(0) = x, σ(k ± 1) = σ(k) ± 2a(σ(k)), h(d) = ½(1 + cos(πd/(L + 1))), d ≤ L
 
 use rand::Rng as _;
 use rayon::prelude::*;
@@ -46,24 +46,21 @@ pub struct Streaks {
     pub fade: Grid<f32>,
 }
 
-/// A pixel of the picture and of a rim round it as wide as a streak is half long.
-#[derive(Clone, Copy, Default)]
-struct Texel {
-    /// A step along the axis; (0, 0) where there is none.
-    along: [f32; 2],
-    noise: f32,
-}
-
 /// Noise is made by squares of so many pixels a side, each with a stream of its own.
 const SQUARE: usize = 64;
+/// Noise farther out than this is that of the edge.
+const FARTHEST: i64 = 1 << 40;
 /// Below this a pixel shows nothing and is not worked out.
 const FAINTEST: f32 = 1.0 / 512.0;
-/// Weights of the little blur that makes streaks a pixel or two wide.
+/// Pixels a step: the noise is blurred so far that none of it is stepped over.
+const STRIDE: usize = 2;
+/// Weights of that blur, in either direction.
 const BLUR: [f32; 3] = [0.25, 0.5, 0.25];
-/// Correlation of blurred noise by distance in pixels: of [1 2 1]/4 with itself.
-const BLURRED: [f64; 3] = [1.0, 2.0 / 3.0, 1.0 / 6.0];
-/// Its variance: that of an even spread over [−1, 1), times (Σ w²)² of the blur.
-const VARIANCE: f64 = (1.0 / 3.0) * (6.0 / 16.0) * (6.0 / 16.0);
+/// Correlation of noise so blurred and read between pixels over one step: the blur with itself, and with the cubic
+/// B-spline that linear reading at any phase amounts to. Two steps apart there is none left.
+const STRIDE_CORRELATION: f64 = 1.0 / 4.0;
+/// Its variance: that of an even spread over [−1, 1), times that of the two together in either direction.
+const VARIANCE: f64 = (1.0 / 3.0) * (1.0 / 3.0) * (1.0 / 3.0);
 
 /// Draws the noise out along the field.
 ///
@@ -71,14 +68,19 @@ const VARIANCE: f64 = (1.0 / 3.0) * (6.0 / 16.0) * (6.0 / 16.0);
 /// [`Stopped`].
 pub fn streaks(field: &Grid<AxisCell>, s: &StreakSettings, work: &Work) -> Result<Streaks, Stopped> {
     let [width, height] = s.size;
-    let rim = s.half_length + 2;
-    let wide = width + 2 * rim;
     if width == 0 || height == 0 {
         let nothing = || Grid::from_parts(width, height, Vec::new(), None);
         return Ok(Streaks { texture: nothing(), fade: nothing() });
     }
-    let texels = ground(field, s, rim, work)?;
-    let walk = Walk { texels: &texels, wide, weights: weights(s.half_length) };
+    // Reading between pixels and rounding may take a walker a little further.
+    let rim = s.half_length + 3;
+    let walk = Walk {
+        steps: &steps(field, s, rim, work)?,
+        noise: &blurred(s, rim, work)?,
+        wide: width + 2 * rim,
+        weights: weights(s.half_length),
+        back: rim - 1,
+    };
     let mut texture = vec![0.5f32; width * height];
     let mut fade = vec![0.0f32; width * height];
     let rows = texture.par_chunks_mut(width).zip(fade.par_chunks_mut(width)).enumerate();
@@ -88,7 +90,9 @@ pub fn streaks(field: &Grid<AxisCell>, s: &StreakSettings, work: &Work) -> Resul
         for (col, (texture, fade)) in texture.iter_mut().zip(fade).enumerate() {
             let shows = line.at(col as f64 + 0.5).fade;
             if shows >= FAINTEST {
-                *texture = walk.shade(col + rim, row + rim);
+                let z = walk.along(col + rim, row + rim);
+                // Softly bounded: z = ±1 gives 0.85 and 0.15.
+                *texture = 0.5 + 0.5 * z / (1.0 + z * z).sqrt();
                 *fade = shows.min(1.0);
             }
         }
@@ -100,47 +104,61 @@ pub fn streaks(field: &Grid<AxisCell>, s: &StreakSettings, work: &Work) -> Resul
     })
 }
 
-/// The bell h_0 … h_L, scaled so that a streak has unit variance.
+/// The bell at every step, scaled so that a streak has unit variance.
 fn weights(half_length: usize) -> Vec<f32> {
-    let bell = |k: usize| 0.5 * (1.0 + (std::f64::consts::PI * k as f64 / (half_length + 1) as f64).cos());
-    let signed = |k: isize| if k.unsigned_abs() > half_length { 0.0 } else { bell(k.unsigned_abs()) };
-    let reach = half_length as isize;
-    let pairs = |lag: isize| (-reach..=reach).map(|k| signed(k) * signed(k + lag)).sum::<f64>();
-    let variance = VARIANCE
-        * (0..3)
-            .map(|lag| BLURRED[lag] * pairs(lag as isize) * if lag == 0 { 1.0 } else { 2.0 })
-            .sum::<f64>();
-    (0..=half_length).map(|k| (bell(k) / variance.sqrt()) as f32).collect()
+    let last = half_length / STRIDE;
+    let bell = |k: usize| {
+        0.5 * (1.0 + (std::f64::consts::PI * (STRIDE * k) as f64 / (half_length + 1) as f64).cos())
+    };
+    let both = |k: isize| if k.unsigned_abs() > last { 0.0 } else { bell(k.unsigned_abs()) };
+    let reach = last as isize;
+    let pairs = |lag: isize| (-reach..=reach).map(|k| both(k) * both(k + lag)).sum::<f64>();
+    let variance = VARIANCE * (pairs(0) + 2.0 * STRIDE_CORRELATION * pairs(1));
+    (0..=last).map(|k| (bell(k) / variance.sqrt()) as f32).collect()
 }
 
-/// Steps and noise of every pixel, the rim included.
-fn ground(
+/// A step along the axis at every pixel, the rim included; (0, 0) where there is none.
+fn steps(
     field: &Grid<AxisCell>,
     s: &StreakSettings,
     rim: usize,
     work: &Work,
-) -> Result<Vec<Texel>, Stopped> {
+) -> Result<Vec<[f32; 2]>, Stopped> {
     let [wide, high] = s.size.map(|side| side + 2 * rim);
-    let noise = noise(s, rim, work)?;
-    let mut texels = vec![Texel::default(); wide * high];
-    texels.par_chunks_mut(wide).enumerate().try_for_each(|(row, texels)| {
+    let mut steps = vec![[0.0; 2]; wide * high];
+    steps.par_chunks_mut(wide).enumerate().try_for_each(|(row, steps)| {
         work.advance(1)?;
         let line = Line::of(field, s.step, row as f64 + 0.5 - rim as f64);
-        let above: [&[f32]; 3] = std::array::from_fn(|k| &noise[(row + k) * (wide + 2)..][..wide + 2]);
-        for (col, texel) in texels.iter_mut().enumerate() {
-            let down = |at: usize| (0..3).map(|k| BLUR[k] * above[k][at]).sum::<f32>();
-            let cell = line.at(col as f64 + 0.5 - rim as f64);
-            *texel = Texel { along: cell.along(), noise: (0..3).map(|k| BLUR[k] * down(col + k)).sum() };
+        for (col, step) in steps.iter_mut().enumerate() {
+            *step = line.at(col as f64 + 0.5 - rim as f64).along();
         }
         Ok(())
     })?;
-    Ok(texels)
+    Ok(steps)
 }
 
-/// Even noise in [−1, 1) over the picture, its rim and one pixel more on each side.
+/// The noise of the picture and its rim, blurred.
+fn blurred(s: &StreakSettings, rim: usize, work: &Work) -> Result<Vec<f32>, Stopped> {
+    let [wide, high] = s.size.map(|side| side + 2 * rim);
+    let raw = noise(s, rim + 1, work)?;
+    let broad = wide + 2;
+    let mut blurred = vec![0.0f32; wide * high];
+    blurred.par_chunks_mut(wide).enumerate().try_for_each(|(row, out)| {
+        work.advance(1)?;
+        let near: [&[f32]; 3] = std::array::from_fn(|k| &raw[(row + k) * broad..][..broad]);
+        let down: Vec<f32> = (0..broad).map(|col| (0..3).map(|k| BLUR[k] * near[k][col]).sum()).collect();
+        for (out, three) in out.iter_mut().zip(down.windows(3)) {
+            *out = (0..3).map(|k| BLUR[k] * three[k]).sum();
+        }
+        Ok(())
+    })?;
+    Ok(blurred)
+}
+
+/// Even noise in [−1, 1) over the picture and its rim.
 fn noise(s: &StreakSettings, rim: usize, work: &Work) -> Result<Vec<f32>, Stopped> {
-    let [wide, high] = s.size.map(|side| side + 2 * rim + 2);
-    let [left, top] = s.origin.map(|at| at.wrapping_sub(rim as i64 + 1));
+    let [wide, high] = s.size.map(|side| side + 2 * rim);
+    let [left, top] = s.origin.map(|at| at.clamp(-FARTHEST, FARTHEST) - rim as i64);
     let square = SQUARE as i64;
     let mut noise = vec![0.0f32; wide * high];
     // A band of squares is a task; the first one may be cut.
@@ -230,31 +248,41 @@ impl AxisCell {
 
 /// Walkers over the ground.
 struct Walk<'a> {
-    texels: &'a [Texel],
+    steps: &'a [[f32; 2]],
+    noise: &'a [f32],
     wide: usize,
     weights: Vec<f32>,
+    /// Pixels to the corner that walks are counted from: farther than any walk goes.
+    back: usize,
 }
 
 impl Walk<'_> {
-    /// The shade of the pixel at this column and row, the rim counted.
-    fn shade(&self, col: usize, row: usize) -> f32 {
-        let here = self.texels[row * self.wide + col];
-        let [x, y] = here.along;
-        let z = self.weights[0] * here.noise + self.arm(col, row, [x, y]) + self.arm(col, row, [-x, -y]);
-        // Softly bounded: z = ±1 gives 0.85 and 0.15.
-        0.5 + 0.5 * z / (1.0 + z * z).sqrt()
+    /// The noise along the axis at this column and row, the rim counted.
+    fn along(&self, col: usize, row: usize) -> f32 {
+        let here = row * self.wide + col;
+        let [x, y] = self.steps[here];
+        self.weights[0] * self.noise[here] + self.arm(here, [x, y]) + self.arm(here, [-x, -y])
     }
 
     /// What one walker meets.
-    fn arm(&self, col: usize, row: usize, mut last: [f32; 2]) -> f32 {
-        let (mut x, mut y) = (col as f32 + 0.5, row as f32 + 0.5);
+    fn arm(&self, here: usize, mut last: [f32; 2]) -> f32 {
+        // Counted from the start, so that the walk does not depend on where in the picture it begins.
+        let (mut x, mut y) = (self.back as f32, self.back as f32);
+        let start = here - self.back * (self.wide + 1);
         let mut sum = 0.0;
         for weight in &self.weights[1..] {
-            x += last[0];
-            y += last[1];
-            let texel = self.texels[y as usize * self.wide + x as usize];
-            sum += weight * texel.noise;
-            let [dx, dy] = texel.along;
+            x += STRIDE as f32 * last[0];
+            y += STRIDE as f32 * last[1];
+            // Between four middles of pixels, else an axis near the rows' would be taken for theirs.
+            let (left, top) = (x as usize, y as usize);
+            let (across, down) = (x - left as f32, y - top as f32);
+            let at = start + top * self.wide + left;
+            let (upper, lower) = (&self.noise[at..at + 2], &self.noise[at + self.wide..at + self.wide + 2]);
+            let mix = |pair: &[f32]| pair[0] + across * (pair[1] - pair[0]);
+            let (upper, lower) = (mix(upper), mix(lower));
+            sum += weight * (upper + down * (lower - upper));
+            let near = at + usize::from(across >= 0.5) + if down >= 0.5 { self.wide } else { 0 };
+            let [dx, dy] = self.steps[near];
             if dx == 0.0 && dy == 0.0 {
                 break;
             }

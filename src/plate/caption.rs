@@ -92,7 +92,7 @@ pub(super) fn methods_of_crests(patch: &PatchFinding) -> Vec<&'static str> {
 fn serves_crests(found: &CrestsFinding, id: &str) -> bool {
     let by_hand = |l: &crest::CrestLine| matches!(l.origin, CrestOrigin::Edited | CrestOrigin::Drawn);
     match id {
-        "crest.pen" => found.lines.iter().any(by_hand),
+        "crest.pen" | "crest.editing" => found.lines.iter().any(by_hand),
         "crest.fork-polarity" => found.forks.is_some(),
         "crest.shift" => false,
         _ => true,

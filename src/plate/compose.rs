@@ -6,7 +6,8 @@ use crate::study::{
     Findings, Id, NetworkFinding, OpenRaster, PatchFinding, RasterEntry, Sheet, Sources, fingerprint, run,
 };
 
-use super::map::{FlowField, MapNetwork, MapPatch, MapView, Picture, flow, overlaid, surroundings, toned};
+use super::map::{FlowField, MapNetwork, MapPatch, MapView, Picture};
+use super::map::{close_up, flow, overlaid, surroundings, toned};
 use super::network_plate::bare;
 use super::{CrestPlate, Figure, NetworkPlate, OverviewPlate, PatchPlate, PngSize, Recipe, Theme};
 use super::{crest_plate, network_plate, overview_plate, patch_plate, pdf, png, svg};
@@ -58,18 +59,21 @@ pub fn of_patch(
     let info = open.raster.info();
     let bounds = surroundings(&patch.outline, [info.width as f64, info.height as f64]);
     let Glance { grid, covers } = glance(entry, open, bounds, LONGEST, work)?;
-    let mut picture = toned(&grid, &entry.tone);
-    if print.flow {
+    let bare = toned(&grid, &entry.tone);
+    let picture = if print.flow {
         let field = FlowField::of(&finding.trend, &patch.outline, &open.place);
-        picture = with_flow(&picture, &field, covers, print.theme, work)?;
-    }
+        &with_flow(&bare, &field, covers, print.theme, work)?
+    } else {
+        &bare
+    };
     let others = sheet.patches.iter().filter(|p| p.raster == finding.raster && p.id != finding.id);
     let plate = PatchPlate {
         patch: finding,
         outline: &patch.outline,
         neighbours: others.map(|p| (p.name.as_str(), &p.outline)).collect(),
         raster: &run::raster(entry, open),
-        view: MapView { picture: &picture, covers, place: &open.place },
+        view: MapView { picture, covers, place: &open.place },
+        bare: &bare,
         winds: &findings.winds,
         recipe: &recipe(sheet),
         masks: &patch.crests.masks,
@@ -112,7 +116,7 @@ pub fn of_crests(
     let (entry, open) = raster_of(sheet, sources, finding.raster)?;
     let patch = sheet.patch(finding.id).ok_or("the sheet no longer has this patch")?;
     let info = open.raster.info();
-    let bounds = surroundings(&patch.outline, [info.width as f64, info.height as f64]);
+    let bounds = close_up(&patch.outline, [info.width as f64, info.height as f64]);
     let Glance { grid, covers } = glance(entry, open, bounds, LONGEST, work)?;
     let picture = toned(&grid, &entry.tone);
     let plate = CrestPlate {

@@ -6,7 +6,7 @@ use crate::science;
 use crate::study::{CrestSettings, CrestsFinding, PatchFinding, PopulationFinding, RasterFinding};
 
 use super::caption::{self, Recipe};
-use super::map::{MapCrests, MapLayers, MapPatch, MapView, crest_key, map_of};
+use super::map::{MapCrests, MapLayers, MapPatch, MapView, close_up, crest_key, map_of};
 use super::page::{Block, GAP_MM, Page};
 use super::sketch::Type;
 use super::{Figure, Theme, numbers, pattern};
@@ -51,7 +51,7 @@ pub(super) fn of_populations(populations: &[PopulationFinding]) -> Vec<MapCrests
         .collect()
 }
 
-/// A map of crests inside their patch with its key beneath, as wide as `size_mm` says.
+/// A map of crests close about their patch with its key beneath, as wide as `size_mm` says.
 pub(super) fn crest_map(
     view: &MapView,
     patch: MapPatch,
@@ -60,6 +60,12 @@ pub(super) fn crest_map(
     theme: &Theme,
 ) -> Figure {
     let layers = MapLayers { patches: &[patch], crests, ..MapLayers::default() };
+    let whole = view.covers;
+    let near = view.cropped(close_up(patch.outline, [whole.max.x, whole.max.y]));
+    let view = match &near {
+        Some((picture, covers)) => &MapView { picture, covers: *covers, place: view.place },
+        None => view,
+    };
     let picture = map_of(view, &layers, size_mm, theme);
     let key = crest_key(view, crests, size_mm, theme);
     let mut figure = Figure {
@@ -82,7 +88,7 @@ pub fn crest_plate(plate: &CrestPlate, width_mm: f64, theme: &Theme) -> Figure {
     let subject =
         MapPatch { name: &patch.name, outline: plate.outline, nodes: &[], rose: None, is_subject: true };
     let crests = [crests_on_map(patch, plate.masks)];
-    let picture = crest_map(&plate.view, subject, &crests, [page.room(), 0.8 * page.room()], theme);
+    let picture = crest_map(&plate.view, subject, &crests, [page.room(), 0.92 * page.room()], theme);
     page.put(&picture, 0.0, page.y);
     page.space(picture.height_mm + 0.7 * GAP_MM);
 
@@ -151,7 +157,7 @@ fn evidence(
     ];
     let populations = of_populations(&patch.pattern.populations);
     if !populations.is_empty() {
-        let figure = crest_map(&plate.view, subject, &populations, [width, width], theme);
+        let figure = crest_map(&plate.view, subject, &populations, [width, 1.4 * width], theme);
         blocks.push(block("Crests by population", figure));
     }
     blocks
@@ -193,9 +199,9 @@ pub(super) fn tracing_note(crests: &Result<CrestsFinding, String>, settings: &Cr
     let Ok(found) = crests else { return String::new() };
     format!(
         "Crests: {} at a scale of {} px; lines start where noise alone would start one in {} of such patches, gaps up \
-         to {} scales are bridged, lines below {} scales are left out, simplified within {} px. Width: share of a \
-         line’s evidence (1 where its response reaches the starting threshold, 0 at the lower one and on bridges), \
-         not a probability. Ends at border, gap or mask are not defects.",
+         to {} scales are bridged, lines below {} scales are left out, simplified within {} px. Width: the \
+         chance that a line is a crest and no texture, by lines of the wrong sense traced alike. Ends at border, gap \
+         or mask are not defects.",
         found.model.name(),
         numbers::plain(found.full_scale_px(), 1),
         numbers::percent(settings.significance),

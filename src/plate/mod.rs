@@ -53,7 +53,7 @@ pub use overview_plate::{OverviewPlate, overview_plate};
 pub use patch_plate::{PatchPlate, patch_plate};
 pub use pattern::{
     comparison_figure, crest_lengths, crest_numbers, crest_rose, defect_diagram, light_numbers,
-    populations_figure, recovery_curve, scale_sweep, spacing_survival,
+    populations_figure, recovery_curve, recovery_ring, scale_sweep, spacing_survival,
 };
 pub use profile::profile;
 pub use regime_map::{MapPoint, regime_at, regime_map};

@@ -11,7 +11,7 @@ use crate::study::{
 use super::caption::{self, Recipe};
 use super::crest_plate::{crest_map, crests_on_map, tracing_note};
 use super::dial::{class_bars, dial_face};
-use super::map::{MapPatch, MapView, map};
+use super::map::{MapPatch, MapView, Picture, map};
 use super::page::{Block, GAP_MM, Page};
 use super::sketch::Type;
 use super::{
@@ -29,6 +29,8 @@ pub struct PatchPlate<'a> {
     pub neighbours: Vec<(&'a str, &'a Polygon)>,
     pub raster: &'a RasterFinding,
     pub view: MapView<'a>,
+    /// The raster alone where the view's picture carries a flow texture: what lies under the map of crests.
+    pub bare: &'a Picture,
     /// The records its verdicts name; others are left out.
     pub winds: &'a [WindFinding],
     pub recipe: &'a Recipe,
@@ -61,7 +63,11 @@ pub fn patch_plate(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Figure {
     let column = (page.room() - (columns - 1) as f64 * GAP_MM) / columns as f64;
     let wide = 2.0 * column + GAP_MM;
     let top = page.y;
-    let trend = Block { heading: "Trend".into(), figure: rose(&patch.trend, column, theme) };
+    let figure = match plate.recovery {
+        Some(recovery) => pattern::recovery_ring(recovery, &patch.trend, column, theme),
+        None => rose(&patch.trend, column, theme),
+    };
+    let trend = Block { heading: "Trend".into(), figure };
     let picture = patch_map(plate, [wide, 1.05 * wide], theme);
     page.put(&picture, 0.5 * (wide - picture.width_mm), top + 0.6);
     let below = top + picture.height_mm + 0.7 * GAP_MM;
@@ -157,8 +163,10 @@ fn evidence(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
     }
     blocks.extend(outcrops(plate, width_mm, theme));
     for comparison in plate.comparisons.iter().filter(|c| c.patch == patch.id) {
-        let figure = pattern::comparison_figure(comparison, width_mm, theme);
-        blocks.push(block(comparison.name.clone(), figure));
+        let trends = pattern::trends_compared(comparison, width_mm, theme);
+        blocks.push(block(comparison.name.clone(), trends));
+        let moved = pattern::crests_moved(comparison, width_mm, theme);
+        blocks.push(block(format!("Movement: {}", comparison.name), moved));
     }
     blocks
 }
@@ -166,13 +174,13 @@ fn evidence(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
 /// What the light does to the trend, and which trends would have been seen.
 fn seen(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
     let (patch, mut blocks) = (plate.patch, Vec::new());
-    if let Some(light) = &patch.pattern.light {
-        let figure = pattern::light_numbers(light, &patch.trend, width_mm, theme);
-        blocks.push(Block { heading: "Light".into(), figure });
-    }
     if let Some(recovery) = plate.recovery {
         let figure = pattern::recovery_curve(recovery, &patch.trend, width_mm, theme);
         blocks.push(Block { heading: "What would have been seen".into(), figure });
+    }
+    if let Some(light) = &patch.pattern.light {
+        let figure = pattern::light_numbers(light, &patch.trend, width_mm, theme);
+        blocks.push(Block { heading: "Light".into(), figure });
     }
     blocks
 }
@@ -183,8 +191,9 @@ fn crests(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
     let Some(found) = patch.crests.as_ref().ok().filter(|c| !c.lines.is_empty()) else { return Vec::new() };
     let block = |heading: &str, figure: Figure| Block { heading: heading.into(), figure };
     let on_map = [crests_on_map(patch, plate.masks)];
+    let view = MapView { picture: plate.bare, ..plate.view };
     vec![
-        block("Crests", crest_map(&plate.view, subject(plate), &on_map, [width_mm, width_mm], theme)),
+        block("Crests", crest_map(&view, subject(plate), &on_map, [width_mm, 1.4 * width_mm], theme)),
         block("Direction of crests", pattern::crest_rose(found, &patch.trend, unit, width_mm, theme)),
         block(
             "Spacing from crest to crest",

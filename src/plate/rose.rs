@@ -160,7 +160,7 @@ pub(super) fn faces(sketch: &mut Sketch, faces: &[(Face, Point)], rim: f64, them
 }
 
 /// n, effective n, R̄, which interval (or the test that found no trend), bin width, and how to read the petals.
-fn caption(trend: &TrendFinding) -> String {
+pub(super) fn caption(trend: &TrendFinding) -> String {
     let interval = match trend.ci95_half_deg {
         Some(_) if trend.defined => format!("95 % interval by {} · ", trend.ci95_source),
         _ => trend.rayleigh_p.map(|p| format!("Rayleigh {} · ", numbers::p_value(p))).unwrap_or_default(),

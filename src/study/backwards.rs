@@ -201,9 +201,10 @@ mod tests {
     fn one_trend_says_so_and_none_has_no_finding() {
         let sheet = sheet(&[Cover::Unknown]);
         let quiet = Work::quiet();
-        let found = of_patch(&sheet, &sheet.patches[0], &trend(40.0), &quiet).expect("run").expect("a trend");
+        let found =
+            of_patch(&sheet, &sheet.patches[0], &trend(40.0), &[], &quiet).expect("run").expect("a trend");
         assert!(!found.tells() && clause(&found).contains("leaves divergence"), "{}", clause(&found));
-        let none = of_patch(&sheet, &sheet.patches[0], &TrendFinding::default(), &quiet).expect("run");
+        let none = of_patch(&sheet, &sheet.patches[0], &TrendFinding::default(), &[], &quiet).expect("run");
         assert_eq!(none, None);
     }
 
@@ -222,7 +223,7 @@ mod tests {
         });
         let trend = trend(finger.axis().deg());
         let found =
-            of_patch(&sheet, &sheet.patches[0], &trend, &Work::quiet()).expect("run").expect("a trend");
+            of_patch(&sheet, &sheet.patches[0], &trend, &[], &Work::quiet()).expect("run").expect("a trend");
         assert!(found.tells(), "{:?}", found.regimes.map_bits);
         let text = clause(&found);
         assert!(text.contains("drift toward"), "{text}");

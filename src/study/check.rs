@@ -57,6 +57,9 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
     if sheet.settings.verdict.priors.weights().iter().sum::<f64>() <= 0.0 {
         say("settings".into(), "verdict.priors are all zero; at least one theory needs a weight".into());
     }
+    if (1..12).contains(&sheet.settings.recovery.trends) {
+        say("settings".into(), "recovery.trends must be 12 or more, or 0 to leave the test out".into());
+    }
     bodies(sheet, &mut say);
     let bins = 180.0 / sheet.settings.statistics.rose_bin_deg;
     if (bins - bins.round()).abs() > 1e-9 {
@@ -132,6 +135,16 @@ fn obstacles(sheet: &Sheet, sources: &Sources, say: &mut impl FnMut(String, Stri
 #[cfg(test)]
 mod tests {
     use super::*;
+
+    #[test]
+    fn too_few_trends_laid_in_are_refused_and_none_is_not() {
+        let mut sheet = Sheet::empty("t");
+        let said = |sheet: &Sheet| problems(sheet, &Sources::default()).len();
+        for (trends, problems) in [(0, 0), (1, 1), (11, 1), (12, 0), (90, 0)] {
+            sheet.settings.recovery.trends = trends;
+            assert_eq!(said(&sheet), problems, "{trends} trends");
+        }
+    }
 
     #[test]
     fn bodies_that_cannot_be_or_share_a_name_are_named() {

@@ -1,10 +1,15 @@
 //! Cautions about the crests of a patch.
 
 use crate::ground::{Caution, LengthUnit};
-use crate::science::crest::{CrestLine, CrestOrigin, Fit};
+use crate::science::crest::{CrestLine, CrestOrigin, Crests};
 
-/// Skewness of the response from which a model of crests stands out.
-const CLEAR_MODEL: f64 = 0.25;
+/// Strong crests stand so many noise floors high where speckle hardly breaks them: on synthetic crests ends and
+/// forks are then counted within a tenth.
+const CLEAR_OF_NOISE: f64 = 2.4;
+/// Averaging from which on it is worth a word.
+const AVERAGED: f64 = 1.05;
+/// A scale of so many averaged pixels loses nothing.
+const FINE_ENOUGH: f64 = 1.5;
 /// Spacings further apart than this factor disagree.
 const DISAGREE: f64 = 1.5;
 /// Traced lines of less confidence are doubtful until the user lets them stand.
@@ -12,11 +17,31 @@ const DOUBTFUL: f64 = 0.25;
 /// Share of the length that may be doubtful.
 const MOST_DOUBTFUL: f64 = 0.25;
 
-/// Neither model of a crest stands out.
-pub fn unclear_model(fits: &[Fit]) -> Option<Caution> {
-    let text = "Neither ridges nor slip faces stand out: crest lines are drawn on a wave of no clear side.";
-    let clear = fits.first().is_some_and(|fit| fit.skewness >= CLEAR_MODEL);
-    (!clear).then(|| Caution::new("crest-model", text))
+/// What weakens a tracing: no model stands out, crests hardly stand above speckle, or the picture was averaged
+/// more than its scale allows.
+pub fn of_tracing(crests: &Crests, spacing_known: bool) -> Vec<Caution> {
+    let mut cautions = Vec::new();
+    if !crests.clear {
+        let text = "Neither ridges nor slip faces stand out: crest lines are drawn on a wave of no clear side, along its bright ridges where nobody chose.";
+        cautions.push(Caution::new("crest-model", text));
+    }
+    if !crests.lines.is_empty() && crests.floor > 0.0 && crests.strong < CLEAR_OF_NOISE * crests.floor {
+        let text = format!(
+            "Even strong crests stand only {:.1} times above what noise alone reaches: some ends and forks are made by noise, so their numbers are an upper bound.",
+            crests.strong / crests.floor
+        );
+        cautions.push(Caution::new("crests-in-noise", text));
+    }
+    let scale = crests.scales_px.first().copied().unwrap_or(0.0);
+    if crests.side_px > AVERAGED && !(spacing_known && scale >= FINE_ENOUGH * crests.side_px) {
+        let text = format!(
+            "Crests are traced on pixels averaged {0:.1} × {0:.1}, because the patch is large: those closer than {1:.0} pixels are lost.",
+            crests.side_px,
+            4.0 * crests.side_px
+        );
+        cautions.push(Caution::new("crests-averaged", text));
+    }
+    cautions
 }
 
 /// Nothing was traced.

@@ -2,8 +2,8 @@
 
 use crate::ground::{Azimuth, Caution, LengthUnit, Point, Polyline, Stopped, Work};
 use crate::science::crest::{
-    self, CrestLine, CrestModel, CrestNumbers, Crests, Defects, EditGround, Edited, Fit, Forks, Junction,
-    SpacingOnGround, SpacingSettings, defects, detect, edit, forks, numbers, spacing,
+    self, CrestLine, CrestModel, CrestNumbers, Crests, Defects, EditGround, Edited, Fit, Forks, Frames,
+    Junction, SpacingOnGround, SpacingSettings, defects, detect_on_ground, edit, forks, numbers, spacing,
 };
 
 use super::crest_edits::{self, Pixels};
@@ -11,7 +11,7 @@ use super::populations::Only;
 use super::window::PatchPixels;
 use super::{ImageKind, Patch, RasterEntry, Sheet, SpectrumFinding, TrendFinding, crest_words};
 
-/// Cells traced at the most: tracing holds several grids of that size.
+/// Cells traced at the most, as tracing holds several grids of that size; larger pictures are averaged.
 const MOST_CELLS: usize = 1 << 24;
 /// Scale of what a patch without traced crests says, pixels, where nothing else sets it.
 const PLAIN_SCALE: f64 = 2.0;
@@ -57,7 +57,7 @@ impl CrestsFinding {
 }
 
 /// Traces crests and applies the user's edits, of the whole patch or of one population at its own scale; in words why
-/// there are none: no bedforms are claimed, the patch is too large or only what is drawn counts, and nothing is drawn.
+/// there are none: no trend is claimed or only what is drawn counts, and nothing is drawn.
 ///
 /// # Errors
 /// [`Stopped`].
@@ -77,8 +77,6 @@ pub fn study(
         Some("only what is drawn counts".to_owned())
     } else if !trend.defined {
         Some("no bedforms are claimed here".to_owned())
-    } else if pixels.image.len() > MOST_CELLS {
-        Some(format!("crests are traced in up to {MOST_CELLS} pixels; outline a smaller patch"))
     } else {
         None
     };
@@ -86,10 +84,11 @@ pub fn study(
         let nothing = if patch.crests.drawn_only { ", and nothing is drawn" } else { "" };
         return Ok(Err(format!("{why}{nothing}")));
     }
-    let Some(frame) = pixels.outline.bounds().and_then(|b| pixels.place.local_frame(b.centre())) else {
+    let Some(frame) = pixels.outline.bounds().and_then(|b| Frames::new(&pixels.place, b.centre())) else {
         return Ok(Err("the patch has no place on the ground".into()));
     };
-    let fine = frame.pixel_size().into_iter().fold(f64::INFINITY, f64::min);
+    let pixel = frame.middle().pixel_size();
+    let fine = pixel.into_iter().fold(f64::INFINITY, f64::min);
     let (said, wanted) = (&patch.crests, &sheet.settings.crest);
     let at = Pixels { origin: pixels.origin, factor: pixels.factor as f64 };
     let by_spectrum = spectrum.spacing.filter(|_| spectrum.defined);
@@ -106,40 +105,40 @@ pub fn study(
         tolerance_px: wanted.tolerance_px,
     };
     let traced = match &untraced {
-        None => detect(&pixels.image, &pixels.outline, &settings, work)?,
+        None => detect_on_ground(&pixels.image, &pixels.outline, pixel, &settings, MOST_CELLS, work)?,
         Some(_) => untraced_crests(&settings),
     };
     let ground = EditGround { image: &pixels.image, outline: &pixels.outline, excluded: &settings.excluded };
     let Edited { crests: found, lost } = edit(traced, &crest_edits::reduced(said, at), ground, work)?;
     let (found, lost) = match only {
         // An edit may well belong to another population: none is lost here.
-        Some(only) => (only.of(found, frame), Vec::new()),
+        Some(only) => (only.of(found, frame.middle()), Vec::new()),
         None => (found, lost),
     };
     if let Some(why) = untraced.as_ref().filter(|_| found.lines.is_empty()) {
         return Ok(Err(format!("{why}, and nothing drawn lies in the patch")));
     }
     let scale_px = found.scales_px.first().copied().unwrap_or(0.0);
-    let numbers = numbers(&found.lines, &pixels.outline, frame);
+    let numbers = numbers(&found.lines, &pixels.outline, &frame);
     let longest = pixels.outline.bounds().map_or(0.0, |b| b.width().hypot(b.height())) * fine;
     let transects =
         SpacingSettings { step: 4.0 * scale_px * fine, longest, own_beyond: 8.0 * scale_px * fine };
-    let spacing = spacing(&found.lines, &pixels.outline, frame, transects, work)?;
+    let spacing = spacing(&found.lines, &pixels.outline, &frame, transects, work)?;
     let defects = defects(&found.lines, &found.junctions, numbers.total_length, spacing.quartiles[1]);
     let spacings = [by_spectrum, spacing.quartiles[1], spacing.stereology];
     let mut cautions = defects.cautions.clone();
     cautions.extend(match &untraced {
-        None => crest_words::unclear_model(&found.fits),
-        Some(why) => Some(crest_words::only_drawn(why)),
+        None => crest_words::of_tracing(&found, by_spectrum.is_some()),
+        Some(why) => vec![crest_words::only_drawn(why)],
     });
     cautions.extend(crest_words::spacings(spacings, unit));
     cautions.extend(crest_words::lines(&found.lines));
     cautions.extend(crest_words::lost(lost.len()));
     let rose_bin_deg = sheet.settings.statistics.rose_bin_deg;
-    let rose = crest::length_rose(&found.lines, frame, rose_bin_deg);
+    let rose = crest::length_rose(&found.lines, &frame, rose_bin_deg);
     let forks_toward = trend.axis.map(|axis| axis.azimuth()).filter(|_| !found.junctions.is_empty());
     let reach = 8.0 * scale_px * fine;
-    let polarity = forks_toward.map(|toward| forks(&found.lines, &found.junctions, frame, toward, reach));
+    let polarity = forks_toward.map(|toward| forks(&found.lines, &found.junctions, &frame, toward, reach));
     let full_line = |line: CrestLine| CrestLine {
         line: Polyline(line.line.0.iter().map(|p| at.full(*p)).collect()),
         bridged_px: line.bridged_px * at.factor,
@@ -178,9 +177,12 @@ fn untraced_crests(settings: &crest::CrestSettings) -> Crests {
         junctions: Vec::new(),
         model,
         fits: Vec::new(),
+        clear: false,
         sense: None,
         floor: 0.0,
+        strong: 0.0,
         thresholds: [0.0; 2],
         scales_px: vec![scale],
+        side_px: 1.0,
     }
 }

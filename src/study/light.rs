@@ -23,7 +23,7 @@ pub fn of_trend(trend: &TrendFinding, entry: &RasterEntry) -> Option<LightFindin
 }
 
 /// A refitted mean against the trend as measured; `None` where no axis is left to prefer.
-pub(super) fn refitted(measured: Axis, (axis, resultant_length): (Axis, f64)) -> Option<RefitFinding> {
+fn refitted(measured: Axis, (axis, resultant_length): (Axis, f64)) -> Option<RefitFinding> {
     (resultant_length > 0.0).then(|| RefitFinding {
         axis,
         resultant_length,

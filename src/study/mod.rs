@@ -5,6 +5,7 @@ pub mod bulk;
 mod cautions;
 mod channel_settings;
 pub mod check;
+pub mod claim;
 mod comparison;
 mod comparison_check;
 mod crest_check;

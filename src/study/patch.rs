@@ -10,6 +10,7 @@ use crate::science::orientation::{self, NodeField, Peak, Spectrum, TensorSetting
 
 use super::backwards;
 use super::cautions;
+use super::claim;
 use super::crests;
 use super::light;
 use super::obstacles;
@@ -101,6 +102,10 @@ pub fn patch_finding(
         finding.obstacles = obstacles::study(sheet, patch, &open.place, &finding.trend, seed, work)?;
         let ground = populations::Ground { sheet, patch, entry, open, pixels: &pixels, judges, seed };
         populations::study(&ground, &mut finding, work)?;
+    }
+    if detail == Detail::Exact {
+        let trend_only = claim::caution(&finding);
+        finding.cautions.extend(trend_only);
     }
     finding.sentence = sentence::of_patch(&finding);
     Ok(Ok(finding))

@@ -1,7 +1,9 @@
 //! Plates of invented findings from Sorrel Reach: exact bytes twice, real text, no missing glyph,
 //! nothing off the page. Set `VENTIFACT_PICTURES` to a folder to look at them.
 
+mod bedforms;
 mod networks;
+mod patterns;
 mod river_measures;
 mod rivers;
 mod sorrel;
@@ -92,6 +94,7 @@ fn plate_of(patch: &PatchFinding, outline: &Polygon, reach: &Reach, theme: &Them
         winds: &winds,
         recipe: &recipe,
         annulus: [1.0, 3.0],
+        bare: &picture,
         masks: &[],
         crests: &CrestSettings::default(),
         recovery: None,
@@ -204,6 +207,7 @@ fn a_raster_without_ground_size_has_its_plate_in_pixels_and_landscape() {
         winds: &[],
         recipe: &recipe,
         annulus: [1.0, 3.0],
+        bare: &picture,
         masks: &[],
         crests: &CrestSettings::default(),
         recovery: None,

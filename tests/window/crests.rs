@@ -275,7 +275,7 @@ fn crests_are_edited_by_keys_alone() {
     let folder = tempfile::tempdir().expect("a temporary folder");
     let (mut harness, truth) = traced(folder.path());
     let raster = model(&harness).shown_raster().expect("a raster").id;
-    let mut look = |harness: &mut Harness<'_, Desk>, centre: Point| {
+    let look = |harness: &mut Harness<'_, Desk>, centre: Point| {
         give(harness, Command::View(ViewCommand::Look { raster, camera: Camera { centre, scale: 2.0 } }));
         // The cross begins in the middle of the table once the tool is taken up anew.
         key(harness, Modifiers::NONE, Key::M);

@@ -36,7 +36,7 @@ fn the_same_view_gives_the_same_bytes() {
 }
 
 /// Takes the trend of every patch, so that there are strokes to draw.
-fn measured(mut model: Model) -> Model {
+pub fn measured(mut model: Model) -> Model {
     let mosaic = reach::mosaic(Seed(1));
     let place = model.session.rasters.get(&Id(1)).and_then(Opened::laid).expect("laid").place.clone();
     for patch in model.sheet.patches.clone() {

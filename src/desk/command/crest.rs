@@ -2,10 +2,12 @@
 
 use std::path::{Path, PathBuf};
 
+use crate::desk::channels::pointer_reach;
 use crate::desk::crests::{self, Crested};
 use crate::desk::{Ask, Model, Purpose, Tool};
 use crate::ground::{Point, Polygon};
 use crate::science::crest::{CrestModel, CrestOrigin};
+use crate::study::crest_edits::import_crests;
 use crate::study::{CrestEntry, CrestStroke, Id, StrokeKind};
 
 use super::Record;
@@ -258,7 +260,7 @@ impl CrestCommand {
     /// lies there taken away. `None`, and a word to the user, when there is no line.
     pub(super) fn of_click(model: &mut Model, tool: Tool, at: Point) -> Option<Self> {
         let patch = model.crest_patch()?;
-        let (id, it, reach) = (patch.id, &patch.crests, crests::pointer_reach(model));
+        let (id, it, reach) = (patch.id, &patch.crests, pointer_reach(model));
         let crested = model.session.results.crests(id);
         let found = match tool {
             Tool::Reject => of_reject(id, it, crested, at, reach),
@@ -347,7 +349,8 @@ fn change(model: &mut Model, id: Id, f: impl FnOnce(&mut CrestEntry)) {
 
 fn accept_above(model: &mut Model, id: Id, confidence: f64) {
     let Some(crested) = model.session.results.crests(id) else { return };
-    let marks: Vec<Point> = crested.unaccepted_from(confidence).filter_map(crests::middle).collect();
+    let marks: Vec<Point> =
+        crested.unaccepted_from(confidence).filter_map(|line| crests::middle(&line.line)).collect();
     let count = marks.len();
     change(model, id, |it| it.accepted.extend(marks));
     model.session.notices.done_with_undo(match count {
@@ -357,5 +360,24 @@ fn accept_above(model: &mut Model, id: Id, confidence: f64) {
 }
 
 fn import(model: &mut Model, path: &Path) {
-    let _ = (model, path);
+    let Some(patch) = model.crest_patch() else { return };
+    let Some(open) = model.session.sources.get(&patch.raster) else {
+        return model.session.notices.problem("The raster of the patch is not open yet.");
+    };
+    let (id, name) = (patch.id, patch.name.clone());
+    let read = match import_crests(path, open, patch) {
+        Ok(read) => read,
+        Err(why) => return model.session.notices.problem(format!("No crests were imported: {why}")),
+    };
+    let count = read.strokes.len();
+    change(model, id, |it| it.strokes.extend(read.strokes));
+    read.notes.iter().for_each(|note| model.session.notices.problem(note.as_str()));
+    if count == 0 {
+        return model.session.notices.problem(format!("No line of {} lies in {name}", path.display()));
+    }
+    let outside = match read.outside {
+        0 => String::new(),
+        outside => format!("; {outside} lie outside the patch"),
+    };
+    model.session.notices.done_with_undo(format!("Imported {count} lines into {name}{outside}"));
 }

@@ -57,6 +57,7 @@ impl JobCommand {
             Self::MeasureAgain => {
                 model.session.jobs.abandon(Slot::Measure);
                 model.session.jobs.abandon(Slot::Networks);
+                model.session.jobs.abandon(Slot::Comparisons);
                 model.session.jobs.abandon(Slot::Recovery);
                 model.session.forget_measured();
             }
@@ -78,5 +79,8 @@ fn stop(model: &mut Model, slots: &[Slot]) {
     }
     if slots.contains(&Slot::Recovery) {
         model.session.recovering.pause();
+    }
+    if slots.contains(&Slot::Comparisons) {
+        model.session.comparing.pause();
     }
 }

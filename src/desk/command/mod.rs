@@ -2,6 +2,7 @@
 
 mod ask;
 mod body;
+mod compare;
 mod crest;
 mod draw;
 mod job;
@@ -17,6 +18,7 @@ mod wind;
 
 pub use ask::AskCommand;
 pub use body::BodyCommand;
+pub use compare::ComparisonCommand;
 pub use crest::CrestCommand;
 pub use draw::DrawCommand;
 pub use job::JobCommand;
@@ -45,6 +47,7 @@ pub enum Command {
     Obstacle(ObstacleCommand),
     Network(NetworkCommand),
     Crest(CrestCommand),
+    Comparison(ComparisonCommand),
     Draw(DrawCommand),
     Wind(WindCommand),
     Plate(PlateCommand),
@@ -129,6 +132,7 @@ impl Command {
             Self::Obstacle(c) => c.record(),
             Self::Network(c) => c.record(),
             Self::Crest(c) => c.record(),
+            Self::Comparison(c) => c.record(),
             Self::Draw(c) => c.record(),
             Self::Wind(c) => c.record(),
             Self::Plate(c) => c.record(),
@@ -160,6 +164,7 @@ impl Command {
             Self::Obstacle(c) => c.refusal(model),
             Self::Network(c) => c.refusal(model),
             Self::Crest(c) => c.refusal(model),
+            Self::Comparison(c) => c.refusal(model),
             Self::Draw(c) => c.refusal(model),
             Self::Wind(c) => c.refusal(model),
             Self::Plate(c) => c.refusal(model),
@@ -182,6 +187,7 @@ impl Command {
             | Self::Ask(_)
             | Self::Obstacle(_)
             | Self::Crest(_)
+            | Self::Comparison(_)
             | Self::Draw(_)
             | Self::Job(_)
             | Self::Plate(_)
@@ -210,8 +216,9 @@ pub fn listed() -> Vec<Command> {
     let obstacle = ObstacleCommand::LISTED.iter().cloned().map(Command::Obstacle);
     let network = NetworkCommand::LISTED.iter().cloned().map(Command::Network);
     let crest = CrestCommand::LISTED.iter().cloned().map(Command::Crest);
+    let compare = ComparisonCommand::LISTED.iter().cloned().map(Command::Comparison);
     let making = sheet.chain(raster).chain(wind).chain(draw).chain(patch).chain(obstacle).chain(network);
-    making.chain(crest).chain(plate).chain(setting).chain(job).chain(view).collect()
+    making.chain(crest).chain(compare).chain(plate).chain(setting).chain(job).chain(view).collect()
 }
 
 /// Does what `command` asks. The only way the sheet and the view change.
@@ -235,6 +242,7 @@ pub fn apply(model: &mut Model, command: Command) {
         Command::Obstacle(c) => c.apply(model),
         Command::Network(c) => c.apply(model),
         Command::Crest(c) => c.apply(model),
+        Command::Comparison(c) => c.apply(model),
         Command::Draw(c) => c.apply(model),
         Command::Wind(c) => c.apply(model),
         Command::Plate(c) => c.apply(model),

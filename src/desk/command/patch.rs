@@ -281,6 +281,7 @@ fn duplicate(model: &mut Model) {
 fn delete(model: &mut Model) {
     let Some(at) = model.sheet.patches.iter().position(|p| Some(p.id) == model.view.patch) else { return };
     let gone = model.sheet.patches.remove(at);
+    model.sheet.comparisons.retain(|c| c.patch != gone.id);
     let next = model.sheet.patches.get(at).or(model.sheet.patches.last()).map(|p| p.id);
     select(model, next);
     model.session.notices.done_with_undo(format!("Deleted {}", gone.name));

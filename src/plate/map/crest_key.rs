@@ -67,7 +67,7 @@ fn entries(view: &MapView, crests: &[MapCrests], size_mm: [f64; 2]) -> Vec<(Sign
     }
     let unsure = |l: &CrestLine| l.confidence < 0.5;
     if lines().any(unsure) && lines().any(|l| !unsure(l)) {
-        entries.push((Sign::Line(CrestOrigin::Traced, None, 0.15), "thin: little evidence".into()));
+        entries.push((Sign::Line(CrestOrigin::Traced, None, 0.15), "thin: less sure".into()));
     }
     if lines().any(|l| l.ends.contains(&End::Free)) {
         entries.push((Sign::FreeEnd, "free end".into()));

@@ -24,7 +24,7 @@ pub struct MapCrests<'a> {
     pub name: &'a str,
 }
 
-/// Crest length on the map's area from which lines become thinner, and the most that is drawn, mm per mm².
+/// Crest length on the ground they take from which lines become thinner, and the most that is drawn, mm per mm².
 const DENSE: f64 = 0.3;
 const MOST_DENSE: f64 = 1.1;
 /// Distance between dots along a line, millimetres.
@@ -54,7 +54,10 @@ pub(super) fn shown<'a>(crests: &[MapCrests<'a>], sheet: &Sheet) -> Vec<Shown<'a
     let mut sets: Vec<Vec<(&CrestLine, Vec<Point>)>> =
         crests.iter().map(|c| c.lines.iter().filter_map(on_page).collect()).collect();
     let mut lengths: Vec<f64> = sets.iter().flatten().map(|(_, points)| length(points)).collect();
-    let area = (sheet.width() * sheet.height()).max(1e-9);
+    let taken =
+        Bounds::of(sets.iter().flatten().flat_map(|(_, points)| points).copied().filter(|p| sheet.holds(*p)));
+    let area =
+        taken.map_or(0.0, |b| b.width() * b.height()).max(0.02 * sheet.width() * sheet.height()).max(1e-9);
     let density = lengths.iter().sum::<f64>() / area;
     lengths.sort_by(|a, b| b.total_cmp(a));
     let mut room = MOST_DENSE * area;
@@ -201,8 +204,13 @@ pub(super) fn joint(sketch: &mut Sketch, at: Point, is_crossing: bool, size: f64
 /// Paler ground with slanted lines inside a dashed edge.
 fn hatch(sketch: &mut Sketch, mask: &Polygon, sheet: &Sheet, theme: &Theme) {
     let page = mask.map(|p| sheet.at(p));
+    if page.holes.is_empty() {
+        sketch.polygon(page.outer.clone(), Some(theme.halo.with_alpha(110)), None);
+    }
     for ring in page.rings() {
-        sketch.polygon(ring.to_vec(), None, Some(theme.dashed(theme.over_image, theme.widths.thin)));
+        let halo = theme.stroke(theme.halo.with_alpha(200), 4.0 * theme.widths.thin);
+        sketch.polygon(ring.to_vec(), None, Some(halo));
+        sketch.polygon(ring.to_vec(), None, Some(theme.dashed(theme.over_image, 1.4 * theme.widths.thin)));
     }
     let thin = theme.stroke(theme.over_image, theme.widths.hair);
     let halo = theme.stroke(theme.halo.with_alpha(120), 3.0 * theme.widths.hair);

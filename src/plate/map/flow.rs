@@ -1,4 +1,4 @@
-//! The trend as a flow texture: noise drawn out along it, in ink and paper over the raster, plain where the trend
+//! The trend as a flow texture: noise drawn out along it, in ink on a veil of paper over the raster, plain where it
 //! stands clear of the noise and fading to nothing where it does not. Tone alone tells the way; no colour does.
 
 use rayon::prelude::*;
@@ -21,9 +21,10 @@ const REACH: f64 = 2.2;
 const COVERED: f64 = 0.5;
 /// Texels between places where the ground's own directions are worked out.
 const FRAME_STEP: usize = 32;
-/// Ink and paper at their plainest.
-const INK: f32 = 225.0;
-const PAPER: f32 = 185.0;
+/// A veil of paper that calms the raster under the streaks; ink of the darkest and further paper of the lightest.
+const VEIL: f32 = 0.45;
+const INK: f32 = 0.85;
+const PAPER: f32 = 0.3;
 /// The noise of every flow texture: it means nothing.
 const SEED: Seed = Seed(0x5eed_f10e);
 
@@ -91,8 +92,9 @@ impl View {
         Self { covers, size, per_pixel }
     }
 
+    /// Texels a pixel, the same area.
     fn scale(&self) -> f64 {
-        self.per_pixel[0].min(self.per_pixel[1])
+        (self.per_pixel[0] * self.per_pixel[1]).sqrt()
     }
 
     fn texel(&self, pixel: Point) -> Point {
@@ -247,24 +249,34 @@ fn mixed(a: LocalFrame, b: LocalFrame, share: f64) -> LocalFrame {
     }
 }
 
-/// Dark streaks in ink and light ones in paper, the middle tones clear, nothing outside the outline.
-fn inked(drawn: &Streaks, outline: &Polygon, [ink, paper]: [Rgba; 2]) -> Picture {
+/// Dark streaks in ink on a veil of paper, nothing outside the outline.
+fn inked(drawn: &Streaks, outline: &Polygon, colors: [Rgba; 2]) -> Picture {
     let (width, height) = (drawn.texture.width(), drawn.texture.height());
     let mut rgba = vec![0u8; 4 * width * height];
     if width > 0 {
         rgba.par_chunks_mut(4 * width).enumerate().for_each(|(row, texels)| {
             for (from, to) in outline.row_spans(row, width) {
                 for col in from..to {
-                    let tone = 2.0 * drawn.texture.at(col, row) - 1.0;
-                    let (color, most) = if tone < 0.0 { (ink, INK) } else { (paper, PAPER) };
-                    let alpha = (drawn.fade.at(col, row) * tone.abs() * most) as u8;
-                    let Rgba([r, g, b, _]) = color;
-                    texels[4 * col..4 * col + 4].copy_from_slice(&[r, g, b, alpha]);
+                    let texel = texel(drawn.texture.at(col, row), drawn.fade.at(col, row), colors);
+                    texels[4 * col..4 * col + 4].copy_from_slice(&texel);
                 }
             }
         });
     }
     Picture { width, height, rgba: rgba.into() }
+}
+
+/// Ink over the veil as one colour, not multiplied by its alpha.
+fn texel(texture: f32, fade: f32, [ink, paper]: [Rgba; 2]) -> [u8; 4] {
+    let tone = 2.0 * texture - 1.0;
+    let veil = fade * (VEIL + PAPER * tone.max(0.0));
+    let dark = fade * INK * (-tone).max(0.0);
+    let alpha = 1.0 - (1.0 - veil) * (1.0 - dark);
+    if alpha < 0.5 / 255.0 {
+        return [0; 4];
+    }
+    let mix = |k: usize| (f32::from(ink.0[k]) * dark + f32::from(paper.0[k]) * veil * (1.0 - dark)) / alpha;
+    [mix(0) as u8, mix(1) as u8, mix(2) as u8, (255.0 * alpha) as u8]
 }
 
 /// A raster's picture with the texture laid over it, as fine as the texture.

@@ -106,7 +106,7 @@ pub fn map_of(view: &MapView, layers: &MapLayers, size_mm: [f64; 2], theme: &The
     margin::draw(&mut sketch, &sheet, view.place, theme);
     if let Some(bar) = furniture::scale_bar(&sheet, view.place) {
         let at = Point::new(sheet.min.x, sheet.max.y + bottom + 1.0);
-        furniture::draw_scale_bar(&mut sketch, &bar, at, theme);
+        furniture::draw_scale_bar(&mut sketch, &bar, at, sheet.width() + right, theme);
     }
     sketch.finish(sheet.max.x + right, sheet.max.y + bottom + SCALE_BAR_MM)
 }
@@ -193,6 +193,19 @@ fn around(centre: Point, half_width: f64, half_height: f64) -> Bounds {
 
 fn overlap(a: Bounds, b: Bounds) -> bool {
     a.min.x < b.max.x && b.min.x < a.max.x && a.min.y < b.max.y && b.min.y < a.max.y
+}
+
+/// The pixels of a patch and a twelfth more on every side, on the raster; the whole raster for an empty outline.
+pub fn close_up(outline: &Polygon, raster_px: [f64; 2]) -> Bounds {
+    let whole = Bounds { min: Point::default(), max: Point::new(raster_px[0], raster_px[1]) };
+    let Some(bounds) = outline.bounds() else { return whole };
+    let pad = bounds.width().max(bounds.height()) / 12.0;
+    let min = Point::new((bounds.min.x - pad).max(0.0).floor(), (bounds.min.y - pad).max(0.0).floor());
+    let max = Point::new(
+        (bounds.max.x + pad).min(raster_px[0]).ceil(),
+        (bounds.max.y + pad).min(raster_px[1]).ceil(),
+    );
+    if max.x > min.x && max.y > min.y { Bounds { min, max } } else { whole }
 }
 
 /// The pixels around a patch that its map shows: its bounds and a third more on every side, widened

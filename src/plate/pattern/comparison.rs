@@ -17,18 +17,42 @@ const BINS: usize = 24;
 
 /// The roses on one scale, each with the other's mean dashed; the difference on a ruler; the tests; the movements.
 pub fn comparison_figure(comparison: &ComparisonFinding, width_mm: f64, theme: &Theme) -> Figure {
+    let trends = trends_compared(comparison, width_mm, theme);
+    let moved = crests_moved(comparison, width_mm, theme);
+    let mut sketch = Sketch::default();
+    sketch.place(&trends, Point::default());
+    let size = theme.text.small;
+    let top = trends.height_mm + 1.6;
+    let heading = Type::new(size, theme.ink).bold();
+    sketch.text(Point::new(0.0, top + size), "Movement square to the crests", heading);
+    sketch.place(&moved, Point::new(0.0, top + 1.3 * size));
+    sketch.finish(width_mm, top + 1.3 * size + moved.height_mm)
+}
+
+/// The roses, the difference and the tests.
+pub(in super::super) fn trends_compared(
+    comparison: &ComparisonFinding,
+    width_mm: f64,
+    theme: &Theme,
+) -> Figure {
     let mut sketch = Sketch::default();
     let mut y = roses(&mut sketch, comparison, width_mm, theme) + 0.8;
     y += difference(&mut sketch, comparison, y, width_mm, theme) + 0.8;
-    y += tests(&mut sketch, comparison, y, width_mm, theme) + 1.2;
-    y += match &comparison.shift {
-        Ok(shift) => moved(&mut sketch, comparison, shift, y, width_mm, theme),
+    y += tests(&mut sketch, comparison, y, width_mm, theme);
+    sketch.finish(width_mm, y)
+}
+
+/// How far crests moved square to themselves, or why that is not known.
+pub(in super::super) fn crests_moved(comparison: &ComparisonFinding, width_mm: f64, theme: &Theme) -> Figure {
+    let mut sketch = Sketch::default();
+    let height = match &comparison.shift {
+        Ok(shift) => moved(&mut sketch, comparison, shift, width_mm, theme),
         Err(why) => {
             let look = Type::new(theme.text.small, theme.ink_soft);
-            sketch.paragraph(Point::new(0.0, y), &format!("No movement of crests: {why}."), look, width_mm)
+            sketch.paragraph(Point::default(), &format!("No movement of crests: {why}."), look, width_mm)
         }
     };
-    sketch.finish(width_mm, y)
+    sketch.finish(width_mm, height)
 }
 
 fn roses(sketch: &mut Sketch, comparison: &ComparisonFinding, width_mm: f64, theme: &Theme) -> f64 {
@@ -133,7 +157,7 @@ fn difference(
     };
     let advised = axes.tests.first().map_or(String::new(), |t| {
         let says = if axes.differ { "the trends differ" } else { "no difference is shown" };
-        format!("{says}: {}, {}", t.name, numbers::p_value(t.p))
+        format!("{says}: {}, {}", t.name, numbers::p_value(t.p).replace(' ', "\u{a0}"))
     });
     let y = foot + 1.8 + 1.5 * size;
     y - top + verdict_words(sketch, &told, &advised, y, width_mm, theme)
@@ -166,17 +190,16 @@ fn moved(
     sketch: &mut Sketch,
     comparison: &ComparisonFinding,
     shift: &Shift,
-    top: f64,
     width_mm: f64,
     theme: &Theme,
 ) -> f64 {
-    let size = theme.text.small;
     let unit = comparison.unit;
-    let heading = Type::new(size, theme.ink).bold();
-    sketch.text(Point::new(0.0, top + size), "Movement square to the crests", heading);
     let values: Vec<f64> = shift.moves.iter().map(|m| f64::from(*m)).filter(|m| m.is_finite()).collect();
     let told = values.iter().copied().chain(shift.ci95).chain([0.0]);
-    let Some(span) = Span::linear(told) else { return 1.4 * size };
+    let Some(span) = Span::linear(told) else {
+        let look = Type::new(theme.text.small, theme.ink_soft);
+        return sketch.paragraph(Point::default(), "Crests did not move at all.", look, width_mm);
+    };
     let (low, width) = (span.min, (span.max - span.min) / BINS as f64);
     let mut bins = [0usize; BINS];
     for value in &values {
@@ -185,8 +208,8 @@ fn moved(
     let most = bins.iter().copied().max().unwrap_or(0).max(1) as f64 / values.len().max(1) as f64;
     let (per, symbol) = length_ruler(span.max.abs().max(span.min.abs()), unit);
     let height = SHAPE * width_mm;
-    let at = Point::new(0.0, top + 1.3 * size);
-    let chart = Chart::new(span.per(per), Span::between(0.0, 1.25 * most), at, [width_mm, height]);
+    let y = Span::between(0.0, 1.25 * most.max(1e-3));
+    let chart = Chart::new(span.per(per), y, Point::default(), [width_mm, height]);
     let edge = theme.stroke(theme.paper, theme.widths.hair);
     let fill = theme.tint(theme.measured, 0.35);
     for (i, count) in bins.iter().enumerate().filter(|(_, n)| **n > 0) {
@@ -213,7 +236,7 @@ fn moved(
         chart.y.ticks(6.0).into_iter().map(|(v, _)| (v, numbers::plain(100.0 * v, 1))).collect();
     let title = format!("toward {toward}°, {symbol}");
     chart.bare_axes(sketch, &title, "of points, %", &chart.x.ticks(9.0), &percent, theme);
-    let mut y = at.y + height;
+    let mut y = height;
     let headline = length_between(shift.median, shift.ci95, per, symbol);
     let rate = comparison.years.filter(|years| *years > 0.0).map_or(String::new(), |years| {
         let a_year = |v: f64| numbers::significant(v / years, 2);
@@ -226,14 +249,27 @@ fn moved(
             numbers::plain(years, 1)
         )
     });
+    let chance = shift.chance.map_or(String::new(), |c| {
+        format!("; by chance {}, as close {}", numbers::percent(c.share), numbers::p_value(c.p))
+    });
+    let vector = shift.vector.as_ref().map_or(String::new(), |v| {
+        let [east, north] = v.east_north.map(|d| numbers::significant(d / per, 3));
+        format!(" · as one vector {east} {symbol} east, {north} {symbol} north")
+    });
+    let others: Vec<String> =
+        shift.alternatives.iter().map(|d| format!("{} {symbol}", numbers::significant(d / per, 3))).collect();
+    let others = match others.as_slice() {
+        [] => String::new(),
+        some => format!(" · nearly as well explained, were the next crest the same: {}", some.join(", ")),
+    };
     let caption = format!(
-        "{rate}{} crests matched, {} of their points ({}) · thick: 95 % interval of the median by crests redrawn; small marks: quarters",
+        "{rate}{} crests matched, {} of their points ({}{chance}){vector}{others} · thick: 95 % interval of the median by crests redrawn; small marks: quarters",
         numbers::count(shift.crests),
         numbers::count(shift.matched),
         numbers::percent(shift.share),
     );
     y += verdict_words(sketch, &headline, &caption, y, width_mm, theme);
-    y - top
+    y
 }
 
 /// `"14.0 m (9.10 to 18.7)"`; intervals may pass 0.

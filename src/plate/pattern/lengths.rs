@@ -21,7 +21,7 @@ pub fn crest_lengths(crests: &CrestsFinding, unit: LengthUnit, width_mm: f64, th
         Some(Reading { name, value, interval: None, sign })
     };
     let readings: Vec<Reading> = [
-        reading("mean as far as seen", seen, Sign::Own),
+        reading("restricted mean", seen, Sign::Own),
         reading("if exponential", exponential, Sign::Diamond),
         reading("mean inside", crests.numbers.plain_mean_length, Sign::Faint),
     ]

@@ -47,7 +47,7 @@ pub fn light_numbers(light: &LightFinding, trend: &TrendFinding, width_mm: f64, 
     let [near, expected] = light.near_light;
     rows.push((
         "nodes within 20° of the light",
-        format!("{}; without preference {}", numbers::percent(near), numbers::percent(expected)),
+        format!("{}, {} expected", numbers::percent(near), numbers::percent(expected)),
     ));
     let rows: Vec<(String, String)> = rows.into_iter().map(|(name, text)| (name.to_owned(), text)).collect();
     y += table(&mut sketch, &rows, y, width_mm, theme);

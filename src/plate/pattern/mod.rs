@@ -10,11 +10,13 @@ mod light;
 mod numbers_table;
 mod populations;
 mod recovery;
+mod recovery_ring;
 mod scales;
 mod spacing;
 mod survival;
 
 pub use comparison::comparison_figure;
+pub(super) use comparison::{crests_moved, trends_compared};
 pub use crest_rose::crest_rose;
 pub use defects::defect_diagram;
 pub use lengths::crest_lengths;
@@ -22,6 +24,7 @@ pub use light::light_numbers;
 pub use numbers_table::crest_numbers;
 pub use populations::populations_figure;
 pub use recovery::recovery_curve;
+pub use recovery_ring::recovery_ring;
 pub use scales::scale_sweep;
 pub use spacing::spacing_survival;
 

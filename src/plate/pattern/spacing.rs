@@ -86,7 +86,7 @@ fn rows(crests: &CrestsFinding, spectrum: &SpectrumFinding, unit: LengthUnit) ->
         "transects, quarters",
         first.or(median).or(third).map(|_| format!("{} · {} · {}", told(first), told(median), told(third))),
     );
-    row("their mean, as far as seen", spacing.restricted_mean.map(length));
+    row("restricted mean", spacing.restricted_mean.map(length));
     row("whole ones only", spacing.uncensored_median.map(length));
     row("area over length", spacing.stereology.map(length));
     rows

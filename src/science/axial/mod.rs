@@ -8,6 +8,7 @@ pub mod bootstrap;
 pub mod density;
 pub mod effective;
 pub mod equal_kappa;
+mod exchanged;
 pub mod interval;
 pub mod kappa;
 pub mod known_correlation;

@@ -13,7 +13,7 @@ pub static METHOD: Method = Method {
     id: "crest.curvilinear",
     name: "Sub-pixel crest points",
     question: "Where exactly does a crest run?",
-    formula: "ridge: n = eigenvector of the largest |λ| of the Hessian r_ij = (G_σ ∗ tone)_ij;  t = −(r_x n_x + r_y n_y)/(r_xx n_x² + 2 r_xy n_x n_y + r_yy n_y²);  |t n_x|, |t n_y| ≤ ½.  Bar of half-width w: σ ≥ w/√3, at σ = w/√3 |r″| = (6√3/√(2π)) e^(−3/2) h/w².  Slip face: n = ∇r/|∇r|, the maximum of |∇r| along n by a parabola through three values",
+    formula: "ridge: n = eigenvector of the largest |λ| of the Hessian r_ij = (G_σ ∗ tone)_ij;  t = −(r_x n_x + r_y n_y)/(r_xx n_x² + 2 r_xy n_x n_y + r_yy n_y²);  |t n_x|, |t n_y| ≤ ½.  Bar of half-width w: σ ≥ w/√3, at σ = w/√3 |r″| = (6√3/√(2π)) e^(−3/2) h/w².  Slip face: n = ∇r/|∇r|, the maximum of |∇r| along n by a parabola through three values.  Strength s = √(s_σ (σ₂/σ)^γ s_{σ₂}), σ₂ = 1.5σ, γ = 2 for a ridge and 1 for a step, so that a crest shows at both scales",
     symbols: &[
         Symbol { symbol: "r", meaning: "tone smoothed by a Gaussian of scale σ", unit: "tone" },
         Symbol { symbol: "n", meaning: "unit vector across the crest", unit: "1" },
@@ -119,6 +119,11 @@ pub fn crossings(
     Ok((all, moments))
 }
 
+/// (σ₂/σ)^γ: what normalises the response of a scale `ratio` times coarser.
+pub(super) fn confirming_gain(slip_face: bool, ratio: f64) -> f64 {
+    ratio.powi(if slip_face { 1 } else { 2 })
+}
+
 /// Strengths lowered to the geometric mean of themselves and of what a coarser scale shows across the same crest,
 /// both normalised so that an ideal step (or bar) answers alike at every scale: √(s · (σ₂/σ)^γ s₂), γ = 1 for a step
 /// and 2 for a ridge, 0 where the coarser scale shows the other sense.
@@ -134,7 +139,7 @@ pub(super) fn confirm(
 ) -> Result<(), Stopped> {
     let (width, height) = (image.width(), image.height());
     let kernels = Kernels::new(scales[1]);
-    let gain = (scales[1] / scales[0]).powi(if slip_face { 1 } else { 2 });
+    let gain = confirming_gain(slip_face, scales[1] / scales[0]);
     let mut strips: Vec<&mut [Crossing]> = Vec::new();
     let mut left = points;
     for strip in 0..height.div_ceil(STRIP) {

@@ -2,8 +2,8 @@
 
 use crate::ground::{Point, Polyline, Stopped, Work};
 
-use super::candidates::{Crossing, confirm, crossings};
-use super::decoy::Chance;
+use super::candidates::{Crossing, confirm, confirming_gain, crossings};
+use super::decoy::{Chance, Shoulders};
 use super::floor::{Thresholds, floor, thresholds};
 use super::join::Joining;
 use super::link::{Chain, Index, link};
@@ -49,18 +49,24 @@ pub(super) fn is_right(p: &Crossing, model: CrestModel, sense: Option<f64>) -> b
     }
 }
 
-/// The model that fits best at a scale.
-pub(super) fn best_model(ground: &Ground<'_>, sigma: f64, work: &Work) -> Result<CrestModel, Stopped> {
+/// The model that fits best at a scale, and the sense of slip faces there, where it is clear.
+pub(super) fn best_model(
+    ground: &Ground<'_>,
+    sigma: f64,
+    work: &Work,
+) -> Result<(CrestModel, Option<f64>), Stopped> {
     let tone = ground.prepared(sigma, true, work)?;
     let (_, moments) = crossings(&tone, &ground.open(margin(sigma)), true, sigma, work)?;
-    Ok(moments.fits(sigma)[0].model)
+    let (sense, skewness) = moments.slip_sense();
+    Ok((moments.fits(sigma)[0].model, (skewness >= moments.clear(sigma)).then_some(sense)))
 }
 
-/// Traces all crests at a scale.
+/// Traces all crests at a scale. The sense of slip faces may be known from another scale, where it is clearer.
 pub(super) fn trace(
     ground: &Ground<'_>,
     settings: &CrestSettings,
     sigma: f64,
+    known_sense: Option<f64>,
     work: &Work,
 ) -> Result<Trace, Stopped> {
     let open = ground.open(margin(sigma));
@@ -71,10 +77,12 @@ pub(super) fn trace(
     let model = settings.model.unwrap_or(fits[0].model);
     let slip_face = model == CrestModel::SlipFace;
     let (sense, skewness) = moments.slip_sense();
-    let sense = (slip_face && skewness >= moments.clear(sigma)).then_some(sense);
+    let own = (skewness >= moments.clear(sigma)).then_some(sense);
+    let sense = own.or(known_sense).filter(|_| slip_face);
     let (mut found, tone) = match slip_face {
         true => (steps, calm),
         false => {
+            drop((steps, calm));
             let tone = ground.prepared(sigma, false, work)?;
             (crossings(&tone, &open, false, sigma, work)?.0, tone)
         }
@@ -84,7 +92,12 @@ pub(super) fn trace(
     let strengths = |wanted: bool| -> Vec<f64> {
         found.iter().filter(|p| right(p) == wanted).map(|p| p.strength).collect()
     };
-    let least = floor(ground.noise, cells, slip_face, sigma, settings.significance);
+    // Both scales must show a crest: noise reaches the geometric mean of what it reaches at each, at most.
+    let least = [sigma, NEIGHBOUR * sigma]
+        .map(|scale| floor(ground.noise, cells, slip_face, scale, settings.significance))
+        .into_iter()
+        .product::<f64>();
+    let least = (least * confirming_gain(slip_face, NEIGHBOUR)).sqrt();
     let thresholds = thresholds(least, &mut strengths(true), &mut strengths(false));
     let linking = Linking { ground, settings, sigma, thresholds, slip_face };
     let mut chains = Vec::new();
@@ -103,13 +116,23 @@ pub(super) fn trace(
         }
     }
     // Lines of the wrong sense tell what texture makes of nothing, where the sense itself is told.
-    let one_sided = fits.iter().any(|fit| fit.model == model && fit.skewness >= moments.clear(sigma));
-    let decoys = if one_sided { linking.chains(&found, |p| !right(p), work)? } else { Vec::new() };
+    let clear = moments.clear(sigma);
+    let one_sided = match slip_face {
+        true => sense.is_some(),
+        false => fits.iter().any(|fit| fit.model == model && fit.skewness >= clear),
+    };
+    let points = chains.iter().flat_map(|(chain, _)| chain.points.iter().map(|v| v.at));
+    let length = chains.iter().map(|(chain, _)| chain.length()).sum();
+    let shoulders = Shoulders::of(points, length, sigma, slip_face, cells);
+    let decoys = match one_sided {
+        true => linking.chains(&found, |p| !right(p) && !shoulders.hold(p.at), work)?,
+        false => Vec::new(),
+    };
     let evidence = |chain: &Chain| evidence(chain, &thresholds, sigma);
-    let right: Vec<f64> = chains.iter().map(|(chain, _)| evidence(chain)).collect();
+    let real: Vec<f64> = chains.iter().map(|(chain, _)| evidence(chain)).collect();
     let wrong: Vec<f64> = decoys.iter().map(evidence).collect();
-    let clear = fits[0].skewness >= moments.clear(sigma);
-    let chance = Chance::of(&right, &wrong);
+    let chance = Chance::of(&real, &wrong, shoulders.weight);
+    let clear = fits[0].skewness >= clear || sense.is_some();
     Ok(Trace { model, fits, clear, sense, thresholds, sigma, cells, chance, chains })
 }
 
@@ -131,7 +154,7 @@ impl Linking<'_> {
         work: &Work,
     ) -> Result<Vec<Chain>, Stopped> {
         let points: Vec<Crossing> =
-            found.iter().filter(|p| counts(p) && p.strength >= self.thresholds.low).copied().collect();
+            found.iter().filter(|p| p.strength >= self.thresholds.low && counts(p)).copied().collect();
         let index = Index::new(&points, self.ground.tone.height());
         let linked = link(&points, &index, &self.thresholds, self.slip_face, work)?;
         let joining = Joining {

@@ -193,7 +193,7 @@ pub struct Crests {
     pub sense: Option<f64>,
     /// The greatest response noise alone reaches in the patch, in tone per pixel (slip face) or per px².
     pub floor: f64,
-    /// The response that a tenth of the crest points exceed, in the same unit: where it is below twice the floor,
+    /// The response that a tenth of the crest points exceed, in the same unit: where it is below 2.4 floors,
     /// speckle breaks and forks lines.
     pub strong: f64,
     /// Responses at which lines start and to which they are followed, in the same unit.
@@ -218,7 +218,7 @@ pub fn detect(
     work.phase("crests", 0);
     let ground = tone::Ground::new(image, outline, settings, work)?;
     let trace = match settings.scale_px.filter(|sigma| sigma.is_finite()) {
-        Some(sigma) => lines::trace(&ground, settings, sigma.clamp(1.0, scale::MOST_PX), work)?,
+        Some(sigma) => lines::trace(&ground, settings, sigma.clamp(1.0, scale::MOST_PX), None, work)?,
         None => scale::choose(&ground, settings, work)?,
     };
     Ok(trace.finished(&ground, settings))

@@ -65,6 +65,9 @@ pub static METHOD: Method = Method {
 const LEAST: f64 = 0.03;
 /// Picks are moved onto a crest point within so many scales, but at least so many pixels.
 const SNAP: [f64; 2] = [2.0, 3.0];
+/// Largest square on which a course is chosen, in scales, for ridges and for slip faces: a seventh of the spacing
+/// these scales suit.
+const SQUARE: [f64; 2] = [1.0, 3.0];
 /// Greatest distance between a way and its simplified form, pixels.
 const TOLERANCE: f64 = 0.2;
 /// Side of the middle of a picture that tells its own scale, pixels.
@@ -133,7 +136,8 @@ impl Pen {
         for p in &right {
             costs[p.row as usize * width + p.col as usize] *= 0.5;
         }
-        let field = Arc::new(CostField::new(width, height, &costs));
+        let side = sigma * if slip_face { SQUARE[1] } else { SQUARE[0] };
+        let field = Arc::new(CostField::finer(width, height, &costs, side as usize));
         Ok(Self { field, points: right, model, scale_px: sigma })
     }
 

@@ -380,7 +380,7 @@ fn vector(moves: &[Move]) -> Option<[f64; 2]> {
     });
     // Smaller eigenvalue of ⟨n nᵀ⟩, whose trace is 1.
     let least = 0.5 * (ee + nn) - (0.25 * (ee - nn).powi(2) + en * en).sqrt();
-    if !(least >= LEAST_SPREAD) {
+    if least.is_nan() || least < LEAST_SPREAD {
         return None;
     }
     let rows: Vec<[f64; 2]> = moves.iter().map(|m| m.normal).collect();

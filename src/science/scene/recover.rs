@@ -8,7 +8,7 @@ pub static METHOD: Method = Method {
     id: "scene.injection-recovery",
     name: "Injection and recovery",
     question: "Which trends would have been missed here, and how far would others have been bent?",
-    formula: "p(t) = found/tries of fields at trend t in the patch's own texture;  Wilson: (p + z²/2n ± z √(p(1 − p)/n + z²/4n²))/(1 + z²/n);  bias = mean of (found − laid in);  corrected: nodes weighted by 1/max(q, 0.1 max q), q = rose of the nodes pooled over all trends alike",
+    formula: "p(t) = found/tries of fields at trend t in the patch's own texture;  Wilson: (p + z²/2n ± z √(p(1 − p)/n + z²/4n²))/(1 + z²/n);  bias = mean of (found − laid in);  corrected: the t at which fields with crests of spread s show the patch's own mean axis and R̄,  t ← θ̄ − bias(t, s),  s ← s s_patch/s_seen",
     symbols: &[
         Symbol { symbol: "t", meaning: "trend laid in", unit: "deg" },
         Symbol {
@@ -18,7 +18,11 @@ pub static METHOD: Method = Method {
         },
         Symbol { symbol: "z", meaning: "1.96", unit: "1" },
         Symbol { symbol: "n", meaning: "fields at one trend", unit: "1" },
-        Symbol { symbol: "q", meaning: "what the nodes show of a field without preference", unit: "1" },
+        Symbol {
+            symbol: "θ̄, s_patch",
+            meaning: "the patch's mean axis, and the spread of its nodes",
+            unit: "deg",
+        },
     ],
     assumptions: &[
         "the patch's bedforms are like those laid in, in spacing, height and how crests wander",
@@ -26,7 +30,8 @@ pub static METHOD: Method = Method {
     ],
     limits: &[
         "a window of the patch is used: in the whole patch more nodes would show fainter patterns",
-        "the correction brings back what was seen too seldom, not what was never seen",
+        "the correction takes a trend that bends across the patch for a wider spread of crests",
+        "where nearly all crests lie within 20° of the light, the match rests on what little shows",
         "strength taken from the patch's own pattern makes the test circular where that pattern is the light's work",
     ],
     sources: &[
@@ -51,16 +56,9 @@ pub static METHOD: Method = Method {
     ],
 };
 
-/// Standard deviation of the smoothing of the pooled axes, degrees.
-const SMOOTHING_DEG: f64 = 5.0;
-/// Least answer divided by, over the greatest.
-const LEAST: f64 = 0.1;
-
 /// Axes of nodes above the noise, pooled.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Response {
-    /// Nodes by whole degrees.
-    counts: Vec<f64>,
     /// Σ cos φ, Σ sin φ and Σ weight: each node alike, by contrast √energy, by energy.
     sums: [[f64; 3]; 3],
 }
@@ -68,9 +66,8 @@ pub struct Response {
 impl Response {
     /// Of nodes above the noise, each with its axis and gradient energy.
     pub fn of(nodes: impl Iterator<Item = (Axis, f64)>) -> Self {
-        let mut response = Self { counts: vec![0.0; 180], sums: [[0.0; 3]; 3] };
+        let mut response = Self { sums: [[0.0; 3]; 3] };
         for (axis, energy) in nodes {
-            response.counts[(axis.deg() as usize).min(179)] += 1.0;
             let (sin, cos) = axis.doubled().sin_cos();
             for (sum, weight) in response.sums.iter_mut().zip([1.0, energy.sqrt(), energy]) {
                 sum.iter_mut().zip([cos, sin, 1.0]).for_each(|(s, v)| *s += weight * v);
@@ -83,7 +80,6 @@ impl Response {
     pub fn pooled<'a>(all: impl Iterator<Item = &'a Self>) -> Self {
         let mut pooled = Self::of(std::iter::empty());
         for one in all {
-            pooled.counts.iter_mut().zip(&one.counts).for_each(|(sum, n)| *sum += n);
             pooled.sums.iter_mut().flatten().zip(one.sums.iter().flatten()).for_each(|(sum, v)| *sum += v);
         }
         pooled
@@ -95,25 +91,6 @@ impl Response {
             let length = if weight > 0.0 { (cos.hypot(sin) / weight).min(1.0) } else { 0.0 };
             (length, Axis::from_doubled(sin.atan2(cos)))
         })
-    }
-
-    /// What a node of each axis counts so that a field without preference would show none: the inverse of the
-    /// smoothed counts, held at ten times the least; `None` without nodes.
-    pub fn undoing(&self) -> Option<impl Fn(Axis) -> f64 + Sync + use<>> {
-        let reach = (4.0 * SMOOTHING_DEG) as isize;
-        let smooth: Vec<f64> = (0..180isize)
-            .map(|at| {
-                (-reach..=reach)
-                    .map(|d| {
-                        let weight = (-0.5 * (d as f64 / SMOOTHING_DEG).powi(2)).exp();
-                        weight * self.counts[(at + d).rem_euclid(180) as usize]
-                    })
-                    .sum()
-            })
-            .collect();
-        let most = smooth.iter().copied().fold(0.0, f64::max);
-        let weights: Vec<f64> = smooth.iter().map(|n| most / n.max(LEAST * most)).collect();
-        (most > 0.0).then(|| move |axis: Axis| weights[(axis.deg() as usize).min(179)])
     }
 }
 
@@ -149,22 +126,6 @@ mod tests {
         crate::assert_close!(contrast, 1.0 / 3.0, 1e-4, "by contrast");
         crate::assert_close!(energy, 0.5, 1e-6, "by energy");
         assert!(axis.separation(Axis::from_deg(90.0)) < 1e-6);
-    }
-
-    #[test]
-    fn the_answer_is_undone() {
-        let seen = nodes(|deg| 20.0 * deg.to_radians().sin());
-        let weight = Response::of(seen.iter().copied()).undoing().expect("nodes");
-        let left = Response::of(seen.iter().copied()).resultants()[0].0;
-        let [mut cos, mut sin, mut total] = [0.0; 3];
-        for (axis, _) in &seen {
-            let w = weight(*axis);
-            cos += w * axis.doubled().cos();
-            sin += w * axis.doubled().sin();
-            total += w;
-        }
-        assert!(left > 0.3 && f64::hypot(cos, sin) / total < 0.03, "{left} {}", f64::hypot(cos, sin) / total);
-        assert!(Response::of(std::iter::empty()).undoing().is_none());
     }
 
     #[test]

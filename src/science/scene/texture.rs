@@ -92,18 +92,15 @@ pub fn without_pattern(
         .collect();
     let margin = spacing_px.map(|s| s.ceil() as usize);
     let size = [quick_size_above(width + margin[0]), quick_size_above(height + margin[1])];
-    let mut transform = Transform::forward(&fine, width, size[0], size[1]);
-    work.advance(0)?;
+    let mut transform = Transform::forward(&fine, width, size[0], size[1], work)?;
     let before = transform.powers();
     let padding = (size[0] * size[1]) as f64 / (width * height) as f64;
-    let gains = gains(&transform, &before, frame, spacing, padding);
-    work.advance(0)?;
+    let gains = gains(&transform, &before, frame, spacing, padding, work)?;
     // Parseval: Σ x² = Σ|F|²/N.
     let lost: f64 = before.iter().zip(&gains).map(|(p, gain)| p * (1.0 - gain * gain)).sum();
     let removed = lost / (size[0] * size[1]) as f64 / valid as f64;
     transform.scale(&gains);
-    let left = transform.back();
-    work.advance(0)?;
+    let left = transform.back(work)?;
     let values = (0..tone.len())
         .map(|i| {
             let (col, row) = (i % width, i / width);
@@ -114,10 +111,20 @@ pub fn without_pattern(
 }
 
 /// What every amplitude is multiplied by.
-fn gains(transform: &Transform, power: &[f64], frame: LocalFrame, spacing: f64, padding: f64) -> Vec<f64> {
+fn gains(
+    transform: &Transform,
+    power: &[f64],
+    frame: LocalFrame,
+    spacing: f64,
+    padding: f64,
+    work: &Work,
+) -> Result<Vec<f64>, Stopped> {
     let rings = ((BAND[1] / BAND[0]).ln() / RING.ln()).ceil() as usize;
     let mut cells: Vec<Vec<usize>> = vec![Vec::new(); rings * SECTORS];
     for index in 0..power.len() {
+        if index.is_multiple_of(1 << 16) {
+            work.advance(0)?;
+        }
         let pixel = transform.frequency(index);
         let (east, north) = frame.gradient(pixel[0], pixel[1]);
         let cycles = east.hypot(north) * spacing;
@@ -131,9 +138,13 @@ fn gains(transform: &Transform, power: &[f64], frame: LocalFrame, spacing: f64, 
     }
     let mut gains = vec![1.0; power.len()];
     for ring in cells.chunks_exact(SECTORS) {
+        work.advance(0)?;
         let mut all: Vec<f64> = ring.iter().flatten().map(|i| power[*i]).collect();
-        all.sort_unstable_by(f64::total_cmp);
-        let background = of_sorted(&all, 0.5) / LN_2;
+        if all.is_empty() {
+            continue;
+        }
+        let middle = all.len() / 2;
+        let background = *all.select_nth_unstable_by(middle, f64::total_cmp).1 / LN_2;
         for i in ring.iter().flatten().filter(|i| power[**i] > SINGLE * background) {
             gains[*i] = (background / power[*i]).sqrt();
         }
@@ -144,9 +155,6 @@ fn gains(transform: &Transform, power: &[f64], frame: LocalFrame, spacing: f64, 
         let mut filled: Vec<f64> =
             ring.iter().zip(&means).filter(|(cell, _)| !cell.is_empty()).map(|(_, m)| *m).collect();
         filled.sort_unstable_by(f64::total_cmp);
-        if filled.is_empty() {
-            continue;
-        }
         // k and −k are one amplitude.
         let independent = all.len() as f64 / (2.0 * padding * filled.len() as f64);
         let level = of_sorted(&filled, 0.25) / (1.0 - 0.67 / independent.max(4.0).sqrt());
@@ -154,7 +162,7 @@ fn gains(transform: &Transform, power: &[f64], frame: LocalFrame, spacing: f64, 
             cell.iter().for_each(|i| gains[*i] *= (level / mean).sqrt());
         }
     }
-    gains
+    Ok(gains)
 }
 
 #[cfg(test)]

@@ -2,9 +2,11 @@
 
 use crate::ground::{Caution, Point, Polyline, Seed, Stopped, Work};
 use crate::science::crest::{
-    self, CrestLine, CrestModel, Crests, Shift, ShiftSettings, SpacingSettings, detect, shift, spacing,
+    self, CrestLine, CrestModel, Crests, EditGround, Shift, ShiftSettings, SpacingSettings, detect, edit,
+    shift, spacing,
 };
 use crate::study::ImageKind;
+use crate::study::crest_edits::{self, Pixels};
 
 use super::trends::Compared;
 use super::{OTHER_LOOK_DEG, Picture, Scene};
@@ -118,7 +120,18 @@ fn traced(
         least_length_scales: wanted.least_length_scales,
         tolerance_px: wanted.tolerance_px,
     };
-    detect(&pixels.image, &pixels.outline, &settings, work)
+    let mut found = detect(&pixels.image, &pixels.outline, &settings, work)?;
+    if said.drawn_only && which == 0 {
+        found.lines.clear();
+        found.junctions.clear();
+    }
+    if which == 1 {
+        return Ok(found);
+    }
+    // What the user said and drew of crests is said of the first picture.
+    let ground = EditGround { image: &pixels.image, outline: &pixels.outline, excluded: &settings.excluded };
+    let edits = crest_edits::reduced(said, Pixels { origin: pixels.origin, factor: by });
+    Ok(edit(found, &edits, ground, work)?.crests)
 }
 
 fn scale(crests: &Crests) -> f64 {

@@ -94,7 +94,7 @@ fn lines(open: &OpenRaster, patches: &[&PatchFinding], srs: &Srs, suffix: &str) 
     });
     Layer {
         name: format!("crests{suffix}"),
-        description: "Crest lines by origin; confidence is a share of evidence, no probability".into(),
+        description: "Crest lines by origin; confidence is the chance that a traced line is no texture, by lines of the wrong sense".into(),
         kind: GeometryKind::LineString,
         srs: srs.clone(),
         columns: columns(),

@@ -1,6 +1,7 @@
 //! What leaves the program: the findings as JSON, tables and layers, the methods as a page.
 
 mod bodies;
+mod comparisons;
 mod crest_layers;
 mod crests;
 mod json;
@@ -9,6 +10,7 @@ mod methods;
 mod network_layers;
 mod networks;
 mod obstacles;
+mod pattern_light;
 mod populations;
 mod records;
 mod regimes;

@@ -6,12 +6,14 @@ use crate::files::layers::{LayerError, write_csv, write_geojson, write_geopackag
 use crate::files::save;
 use crate::study::{Findings, Sheet, Sources};
 
+use super::comparisons::comparison_table;
 use super::crest_layers::{crest_table, lonlat_crests};
 use super::layers::{layers, lonlat_patches, node_table, patch_table, verdict_table, wind_table};
 use super::network_layers::{
     drop_table, junction_table, lonlat_reaches, network_table, profile_table, reach_table, width_table,
 };
 use super::obstacles::{lonlat_outcrops, obstacle_table};
+use super::pattern_light::recovery_table;
 use super::populations::{population_table, scale_table};
 use super::records::calendar_table;
 use super::weighing::{flip_table, sensitivity_table, together_table};
@@ -63,12 +65,14 @@ pub fn write_all(
         scale_table(findings),
         population_table(findings),
         crest_table(findings, sources),
+        recovery_table(findings),
         network_table(findings),
         reach_table(findings),
         profile_table(findings),
         width_table(findings),
         junction_table(findings),
         drop_table(findings),
+        comparison_table(findings),
     ];
     for table in tables.iter().filter(|t| !t.rows.is_empty()) {
         let name = format!("{}.csv", table.name);

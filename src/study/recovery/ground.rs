@@ -38,11 +38,19 @@ pub(super) struct Ground {
 }
 
 /// Cuts the best covered window out of a patch; `None` where nothing of it is valid or has a place.
-pub(super) fn cut(pixels: &PatchPixels, kind: ImageKind, wanted: &Wanted) -> Option<Ground> {
+///
+/// # Errors
+/// [`Stopped`].
+pub(super) fn cut(
+    pixels: &PatchPixels,
+    kind: ImageKind,
+    wanted: &Wanted,
+    work: &Work,
+) -> Result<Option<Ground>, Stopped> {
     let image = &pixels.image;
     let side = wanted.window.max(SPACINGS * wanted.spacing).ceil().max(1.0) as usize;
     let size = [side.min(image.width()), side.min(image.height())];
-    let at = best_covered(pixels, size)?;
+    let Some(at) = best_covered(pixels, size, work)? else { return Ok(None) };
     let tone = if kind == ImageKind::Radar { Tone::logarithm(image) } else { Tone::Linear };
     // Wide windows are averaged, as the gradient scale would do anyway: the time stays that of the one asked for.
     let averaged =
@@ -55,9 +63,10 @@ pub(super) fn cut(pixels: &PatchPixels, kind: ImageKind, wanted: &Wanted) -> Opt
     let (left, upper) = (at[0] as f64, at[1] as f64);
     let place = pixels.place.window(left, upper, [scale, scale]);
     let outline = pixels.outline.map(|p| Point::new((p.x - left) / scale, (p.y - upper) / scale));
-    let frame = place.local_frame(Point::new(0.5 * image.width() as f64, 0.5 * image.height() as f64))?;
+    let middle = Point::new(0.5 * image.width() as f64, 0.5 * image.height() as f64);
+    let Some(frame) = place.local_frame(middle) else { return Ok(None) };
     let factor = pixels.factor as f64;
-    Some(Ground {
+    Ok(Some(Ground {
         frame,
         side: size[0].max(size[1]) * pixels.factor,
         part,
@@ -72,7 +81,7 @@ pub(super) fn cut(pixels: &PatchPixels, kind: ImageKind, wanted: &Wanted) -> Opt
             factor: pixels.factor * averaged,
             origin: Point::new(pixels.origin.x + factor * left, pixels.origin.y + factor * upper),
         },
-    })
+    }))
 }
 
 impl Ground {
@@ -87,7 +96,7 @@ impl Ground {
 
 /// Upper left corner of the window of `size` that holds most valid pixels of the patch; the one nearest the
 /// middle among equals.
-fn best_covered(pixels: &PatchPixels, size: [usize; 2]) -> Option<[usize; 2]> {
+fn best_covered(pixels: &PatchPixels, size: [usize; 2], work: &Work) -> Result<Option<[usize; 2]>, Stopped> {
     let image = &pixels.image;
     let cell = size.map(|n| (n / CELLS).max(1));
     let cells = [image.width() / cell[0], image.height() / cell[1]];
@@ -98,6 +107,7 @@ fn best_covered(pixels: &PatchPixels, size: [usize; 2]) -> Option<[usize; 2]> {
                 counts[(row / cell[1] + 1) * (cells[0] + 1) + col / cell[0] + 1] += 1;
             }
         }
+        work.advance(0)?;
     }
     // Sums over all cells above and to the left.
     for row in 1..=cells[1] {
@@ -121,9 +131,9 @@ fn best_covered(pixels: &PatchPixels, size: [usize; 2]) -> Option<[usize; 2]> {
             }
         }
     }
-    best.map(|(.., [col, row])| {
+    Ok(best.map(|(.., [col, row])| {
         [(col * cell[0]).min(image.width() - size[0]), (row * cell[1]).min(image.height() - size[1])]
-    })
+    }))
 }
 
 /// Tone of a part of the image, averaged over squares of `by` pixels of which half at least are valid.
@@ -169,20 +179,24 @@ mod tests {
         let mut pixels = patch(200, 120, Polygon::rectangle(200.0, 120.0));
         pixels.image.mask_where(|c, _| c >= 110);
         let wanted = Wanted { window: 64.0, spacing: 5.0, scale: 1.0 };
-        let ground = cut(&pixels, ImageKind::Optical, &wanted).expect("ground");
+        let ground = cut(&pixels, ImageKind::Optical, &wanted, &Work::quiet()).unwrap().expect("ground");
         assert_eq!((ground.side, ground.pixels.image.valid_count()), (64, 64 * 64));
         assert!(ground.pixels.origin.x <= 46.0, "{:?}", ground.pixels.origin);
         let mut none = patch(20, 20, Polygon::rectangle(20.0, 20.0));
         none.image.mask_where(|_, _| false);
-        assert!(cut(&none, ImageKind::Optical, &wanted).is_none());
-        assert!(cut(&patch(1, 1, Polygon::rectangle(1.0, 1.0)), ImageKind::Radar, &wanted).is_some());
+        assert!(cut(&none, ImageKind::Optical, &wanted, &Work::quiet()).unwrap().is_none());
+        assert!(
+            cut(&patch(1, 1, Polygon::rectangle(1.0, 1.0)), ImageKind::Radar, &wanted, &Work::quiet())
+                .unwrap()
+                .is_some()
+        );
     }
 
     #[test]
     fn a_wide_window_is_averaged() {
         let pixels = patch(1000, 1000, Polygon::rectangle(1000.0, 1000.0));
         let wanted = Wanted { window: 256.0, spacing: 60.0, scale: 10.0 };
-        let ground = cut(&pixels, ImageKind::Optical, &wanted).expect("ground");
+        let ground = cut(&pixels, ImageKind::Optical, &wanted, &Work::quiet()).unwrap().expect("ground");
         assert_eq!((ground.side, ground.averaged, ground.pixels.image.width()), (720, 3, 240));
         let (left, upper) = (ground.pixels.origin.x as f32, ground.pixels.origin.y as f32);
         assert_eq!(ground.pixels.image.at(0, 0), left + upper + 2.0);

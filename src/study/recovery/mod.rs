@@ -2,6 +2,7 @@
 //! and sought again, so that one knows what would have been seen there and what would not.
 
 mod ground;
+mod matched;
 mod tries;
 mod words;
 
@@ -9,26 +10,25 @@ use crate::files::raster::RasterError;
 use crate::ground::{Axis, Caution, Stopped, Work};
 use crate::numeric::separable::smooth_valid;
 use crate::science::orientation::TensorSettings;
-use crate::science::orientation::look::{refit, shown};
 use crate::science::orientation::scale::INTEGRATION_RATIO;
 use crate::science::scene::inject::Bedforms;
 use crate::science::scene::recover::Response;
 
-use super::light::refitted;
 use super::window::{self, Detail, PatchPixels};
-use super::{OpenRaster, Patch, PatchFinding, RasterEntry, RecoveryFinding, Sheet, fingerprint};
+use super::{
+    OpenRaster, Patch, PatchFinding, RasterEntry, RecoveredTrend, RecoveryFinding, RefitFinding, Sheet,
+    fingerprint,
+};
 use ground::Wanted;
+use matched::{Own, bounded, matched};
 use tries::{Trial, recovered};
 
-/// Spread of the crests laid in where the patch shows none, and the bounds it is held in, degrees.
+/// Spread of the crests laid in where the patch shows no trend, degrees.
 const SPREAD_DEG: f64 = 10.0;
-const SPREADS_DEG: [f64; 2] = [5.0, 20.0];
 /// Spacing where the patch shows none, full-resolution pixels.
 const SPACING_PX: f64 = 8.0;
 /// Tone of the bedforms over the scatter of the texture where the patch shows no pattern.
 const FAINT: f64 = 0.25;
-/// Least |sin(trend − light)| through which the strength of the patch's own pattern is read.
-const LEAST_SHOWN: f64 = 0.3;
 /// Fewest pixels of the measured image from crest to crest.
 const LEAST_SPACING: f64 = 3.0;
 /// R̄ below which the axis of a field without preference says nothing.
@@ -70,7 +70,7 @@ pub fn recovery(
     let tensor = scales(sheet, finding, spacing_px, pixels.factor);
     let window = f64::from(s.window_px) / pixels.factor as f64;
     let wanted = Wanted { window, spacing: spacing_px, scale: tensor.gradient_scale_px };
-    let Some(mut ground) = ground::cut(&pixels, entry.kind, &wanted) else {
+    let Some(mut ground) = ground::cut(&pixels, entry.kind, &wanted, work)? else {
         return Ok(Err("no valid pixel lies inside its outline".into()));
     };
     drop(pixels);
@@ -80,7 +80,6 @@ pub fn recovery(
     }
     let by = ground.averaged as f64;
     let light = entry.light_from;
-    let spread = finding.trend.spread_deg.filter(|_| finding.trend.defined).unwrap_or(SPREAD_DEG);
     let mut trial = Trial {
         sheet,
         light,
@@ -88,7 +87,7 @@ pub fn recovery(
             trend: light.map_or(Axis::from_deg(0.0), |from| from.axis().perpendicular()),
             spacing,
             height: s.steepness * spacing,
-            spread_deg: spread.clamp(SPREADS_DEG[0], SPREADS_DEG[1]),
+            spread_deg: SPREAD_DEG,
             defects: s.defects,
             lee_clockwise: true,
         },
@@ -102,8 +101,21 @@ pub fn recovery(
         seed: sheet.seed.child(&format!("patch {}", patch.id.0)).child("recovery"),
         ground: &ground,
     };
-    let strength = strength(&trial, finding, work)?;
-    trial.tone_per_slope = s.tone_per_slope.unwrap_or(strength);
+    let pattern = (trial.ground.removed > 0.0).then(|| trial.ground.removed.sqrt());
+    let behind = match (finding.trend.axis, finding.trend.spread_deg, pattern.or(s.tone_per_slope)) {
+        (Some(axis), Some(spread_deg), Some(_)) => {
+            let tone = pattern.filter(|_| s.tone_per_slope.is_none());
+            trial.tone_per_slope = s.tone_per_slope.unwrap_or(1.0);
+            matched(&mut trial, &Own { axis, spread_deg, tone }, work)?
+        }
+        _ => None,
+    };
+    if behind.is_none() {
+        trial.tone_per_slope = match s.tone_per_slope {
+            Some(stated) => stated,
+            None => faint(&trial, pattern, work)?,
+        };
+    }
     let seen = trial.run(work)?;
     let response = Response::pooled(seen.iter().flatten().map(|seen| &seen.response));
     let mut trends: Vec<_> = trial
@@ -131,12 +143,17 @@ pub fn recovery(
         uniform_resultant,
         uniform_weighted: [by_contrast, by_energy],
         uniform_axis: (uniform_resultant > LEAST_LENGTH).then_some(axis),
-        corrected: corrected(finding, &response),
+        corrected: None,
         sentence: String::new(),
         cautions: Vec::new(),
     };
+    found.corrected = behind.zip(finding.trend.axis).map(|(axis, measured)| RefitFinding {
+        axis,
+        resultant_length: across_light(&found),
+        turn_deg: axis.turn_from(measured),
+    });
     found.sentence = words::sentence(&found);
-    found.cautions = cautions(&trial, work)?;
+    found.cautions = cautions(&trial, behind, work)?;
     Ok(Ok(found))
 }
 
@@ -175,45 +192,40 @@ fn scales(sheet: &Sheet, finding: &PatchFinding, spacing_px: f64, factor: usize)
     }
 }
 
-/// The tone a slope of one adds, so that bedforms show as strongly as the patch's own pattern, or as faintly as a
-/// quarter of the texture's scatter.
-fn strength(trial: &Trial, finding: &PatchFinding, work: &Work) -> Result<f64, Stopped> {
+/// The tone a slope of one adds where no trend of the patch is matched: as the pattern taken out shows right across
+/// the light, or a quarter of the texture's scatter.
+fn faint(trial: &Trial, pattern: Option<f64>, work: &Work) -> Result<f64, Stopped> {
     let image = &trial.ground.pixels.image;
-    let size = [image.width(), image.height()];
-    let mut rng = trial.seed.stream("recovery.strength", 0);
-    let laid = trial.bedforms.lay(size, trial.ground.frame, trial.light, &mut rng, work)?;
-    let square = |values: &mut dyn Iterator<Item = f64>| {
-        let (sum, n) = values.fold((0.0, 0.0f64), |(sum, n), v| (sum + v * v, n + 1.0));
-        sum / n.max(1.0)
+    let tone = match pattern {
+        Some(tone) => tone,
+        None => {
+            let sigma = trial.ground.frame.pixel_size().map(|size| trial.bedforms.spacing / size);
+            let large = smooth_valid(image, sigma, work)?;
+            let (mut square, mut n) = (0.0, 0.0f64);
+            for i in 0..image.len() {
+                let (col, row) = (i % image.width(), i / image.width());
+                if let Some(v) = image.get(col, row) {
+                    square += (f64::from(v) - f64::from(large.at(col, row))).powi(2);
+                    n += 1.0;
+                }
+            }
+            FAINT * (square / n.max(1.0)).sqrt()
+        }
     };
-    let slope = square(&mut laid.slope.values().iter().map(|v| f64::from(*v))).sqrt();
-    let seen_through = match (trial.light, finding.trend.axis) {
-        (Some(light), Some(axis)) => shown(axis, light).max(LEAST_SHOWN),
-        _ => 1.0,
-    };
-    let tone = if trial.ground.removed > 0.0 {
-        trial.ground.removed.sqrt() / seen_through
-    } else {
-        let sigma = trial.ground.frame.pixel_size().map(|size| trial.bedforms.spacing / size);
-        let large = smooth_valid(image, sigma, work)?;
-        let scatter = (0..image.len()).filter_map(|i| {
-            let (col, row) = (i % size[0], i / size[0]);
-            Some(f64::from(image.get(col, row)?) - f64::from(large.at(col, row)))
-        });
-        FAINT * square(&mut { scatter }).sqrt()
-    };
+    let slope = trial.slope_at(trial.bedforms.trend, work)?;
     // Ground without any texture at all still gets bedforms of some tone.
     Ok(if slope > 0.0 && tone > 0.0 { tone / slope } else { 1.0 })
 }
 
-/// The patch's trend with its nodes weighted by the inverse of what a field without preference shows here.
-fn corrected(finding: &PatchFinding, response: &Response) -> Option<super::RefitFinding> {
-    let measured = finding.trend.axis?;
-    let axes: Vec<Axis> = finding.trend.nodes.iter().filter(|n| n.significant).map(|n| n.axis).collect();
-    refitted(measured, refit(&axes, response.undoing()?)?)
+/// R̄ of bedforms like the patch's where the light shows them best.
+fn across_light(found: &RecoveryFinding) -> f64 {
+    let across = found.light_from.map(|from| from.axis().perpendicular());
+    let off = |t: &RecoveredTrend| across.map_or(0.0, |across| t.trend.separation(across));
+    let best = found.trends.iter().min_by(|a, b| off(a).total_cmp(&off(b)));
+    best.map_or(0.0, |t| t.resultant_length)
 }
 
-fn cautions(trial: &Trial, work: &Work) -> Result<Vec<Caution>, Stopped> {
+fn cautions(trial: &Trial, behind: Option<Axis>, work: &Work) -> Result<Vec<Caution>, Stopped> {
     let mut found = Vec::new();
     let mut say = |code, text: String| found.push(Caution::new(code, text));
     if trial.light.is_none() {
@@ -222,6 +234,9 @@ fn cautions(trial: &Trial, work: &Work) -> Result<Vec<Caution>, Stopped> {
             "Nobody said where the light comes from: bedforms were laid in as if it showed all trends alike."
                 .into(),
         );
+    }
+    if behind.is_some_and(|axis| bounded(axis, trial.light)) {
+        say("recovery-strength", "The patch's trend lies so near the light that its bedforms may be far stronger than they show: those laid in are as strong as 0.3 of the light would allow.".into());
     }
     if trial.ground.part {
         say(

@@ -26,7 +26,8 @@ pub(super) struct Trial<'a> {
 
 /// What one try showed.
 pub(super) struct Seen {
-    /// The trend claimed.
+    /// Mean axis of the nodes above the noise, and the trend claimed.
+    pub mean: Option<Axis>,
     pub claimed: Option<Axis>,
     /// Share of nodes above the noise, and their doubled resultant length.
     pub share: f64,
@@ -50,13 +51,26 @@ impl Trial<'_> {
         let seen: Vec<Seen> = (0..trends.len() * repeats)
             .into_par_iter()
             .map(|i| {
-                let seen = self.lay_in(trends[i / repeats], [i / repeats, i % repeats], &work.part())?;
+                let [index, repeat] = [i / repeats, i % repeats].map(|i| i as u64);
+                let seen =
+                    self.lay_in(trends[i / repeats], "recovery.bedforms", [index, repeat], &work.part())?;
                 work.advance(1)?;
                 Ok(seen)
             })
             .collect::<Result<_, Stopped>>()?;
         let mut seen = seen.into_iter();
         Ok(trends.iter().map(|_| seen.by_ref().take(repeats).collect()).collect())
+    }
+
+    /// RMS slope toward the light of bedforms at `trend`.
+    pub fn slope_at(&self, trend: Axis, work: &Work) -> Result<f64, Stopped> {
+        let image = &self.ground.pixels.image;
+        let mut rng = self.seed.stream("recovery.slope", 0);
+        let size = [image.width(), image.height()];
+        let bedforms = Bedforms { trend, ..self.bedforms };
+        let slope = bedforms.lay(size, self.ground.frame, self.light, &mut rng, work)?.slope;
+        let square = slope.values().iter().map(|v| f64::from(*v).powi(2)).sum::<f64>();
+        Ok((square / slope.len().max(1) as f64).sqrt())
     }
 
     /// The trend the texture claims by itself, where it claims one.
@@ -67,10 +81,17 @@ impl Trial<'_> {
         Ok(found.shown.mean.filter(|_| found.defined))
     }
 
-    fn lay_in(&self, trend: Axis, [index, repeat]: [usize; 2], work: &Work) -> Result<Seen, Stopped> {
-        let mut rng = self.seed.child(&format!("trend {index}")).stream("recovery.bedforms", repeat as u64);
+    /// One field at `trend`, its chance from `purpose` and the numbers of trend and field.
+    pub fn lay_in(
+        &self,
+        trend: Axis,
+        purpose: &str,
+        [index, field]: [u64; 2],
+        work: &Work,
+    ) -> Result<Seen, Stopped> {
+        let mut rng = self.seed.child(&format!("trend {index}")).stream(purpose, field);
         let texture = &self.ground.pixels.image;
-        let bedforms = Bedforms { trend, lee_clockwise: repeat % 2 == 0, ..self.bedforms };
+        let bedforms = Bedforms { trend, lee_clockwise: field.is_multiple_of(2), ..self.bedforms };
         let size = [texture.width(), texture.height()];
         let laid = bedforms.lay(size, self.ground.frame, self.light, &mut rng, work)?;
         let tone = self.tone_per_slope as f32;
@@ -80,6 +101,7 @@ impl Trial<'_> {
         let field = trend_nodes(&image, outline, place, &self.tensor, work)?;
         let found = claim(self.sheet, &self.ground.pixels, &field, 0, self.seed, work)?;
         Ok(Seen {
+            mean: found.shown.mean,
             claimed: found.shown.mean.filter(|_| found.defined),
             share: found.axes.len() as f64 / field.nodes.len().max(1) as f64,
             resultant_length: found.shown.resultant_length,

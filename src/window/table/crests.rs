@@ -7,7 +7,7 @@ use std::sync::Arc;
 use egui::{Color32, Painter, Pos2, Shape, Stroke, Vec2};
 
 use crate::desk::{Crested, Tool, crests};
-use crate::ground::{Point, Polygon, Polyline};
+use crate::ground::{Bounds, Point, Polygon, Polyline};
 use crate::science::crest::{CrestLine, CrestOrigin, End, Junction};
 use crate::study::{CrestEntry, Id, Patch, StrokeKind};
 
@@ -27,6 +27,9 @@ const MOST_MARKS: usize = 400;
 pub struct Charts {
     kept: BTreeMap<Id, CrestChart>,
 }
+
+/// A line the user rejected.
+const REJECTED: Style = Style { width: 1.1, strength: 0.55, kind: Kind::Dotted };
 
 /// How the crests of a patch are drawn.
 #[derive(Clone, Copy)]
@@ -87,7 +90,7 @@ impl Charts {
         let lines: Vec<(Style, Vec<Pos2>)> = chart
             .chosen()
             .filter_map(|(i, points)| {
-                let style = style(&finding.lines[i], &patch.crests, look)?;
+                let style = style(&finding.lines[i], &crested.boxes()[i], &patch.crests, look)?;
                 Some((style, on_screen(points)))
             })
             .collect();
@@ -101,16 +104,19 @@ impl Charts {
 }
 
 /// How a line is drawn; `None` when the user's own stroke is drawn in its place.
-fn style(line: &CrestLine, said: &CrestEntry, look: Look) -> Option<Style> {
+fn style(line: &CrestLine, within: &Bounds, said: &CrestEntry, look: Look) -> Option<Style> {
     let of_patch = if look.selected { 1.0 } else { 0.8 };
     let sure = line.confidence.clamp(0.0, 1.0) as f32;
-    let marked = |marks: &[Point]| !look.current && marks.iter().any(|m| crests::lies_on(*m, &line.line));
+    let Bounds { min, max } = within;
+    let in_box = |m: &Point| m.x > min.x - 1.0 && m.x < max.x + 1.0 && m.y > min.y - 1.0 && m.y < max.y + 1.0;
+    let on_it = |m: &Point| in_box(m) && crests::lies_on(*m, &line.line);
+    let marked = |marks: &[Point]| !look.current && marks.iter().any(on_it);
     let by_hand = matches!(line.origin, CrestOrigin::Drawn | CrestOrigin::Imported);
     let style = match line.origin {
         _ if !look.current && by_hand => return None,
         CrestOrigin::Drawn => Style { width: 3.4, strength: 1.0, kind: Kind::Rail },
         CrestOrigin::Imported => Style { width: 1.7, strength: 1.0, kind: Kind::Dashed },
-        _ if marked(&said.rejected) => Style { width: 1.0, strength: 0.35, kind: Kind::Dotted },
+        _ if marked(&said.rejected) => REJECTED,
         _ if line.accepted || marked(&said.accepted) => {
             Style { width: 2.1, strength: 1.0, kind: Kind::Plain }
         }
@@ -191,10 +197,16 @@ fn said(painter: &Painter, table: &Table<'_>, patch: &Patch, look: Look) {
     if !look.selected {
         return;
     }
+    let crested = table.model.session.results.crests(patch.id);
     for at in &said.rejected {
+        let gone = table.model.session.results.rejected(patch.id, *at);
+        if let Some(points) = gone.and_then(|line| seen(line, visible, scale)) {
+            let on: Vec<Pos2> = points.iter().map(|p| lens.to_screen(*p)).collect();
+            painter.add(halo(REJECTED, &on, ink));
+            inked(painter, REJECTED, &on, ink.line, ink);
+        }
         crossed(painter, lens.to_screen(*at), ink);
     }
-    let crested = table.model.session.results.crests(patch.id);
     for at in &said.cuts {
         let way = crested.and_then(|crested| nearest_way(crested, *at)).unwrap_or(Vec2::RIGHT);
         let along = lens.step(f64::from(way.x), f64::from(way.y));

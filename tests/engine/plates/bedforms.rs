@@ -3,7 +3,9 @@
 
 use ventifact::ground::{Axis, Azimuth, Caution, LengthUnit, LocalFrame, Point, Polyline, Work};
 use ventifact::science::axial::two_samples::{AxesCompared, AxesTest};
-use ventifact::science::crest::{self, CrestLine, CrestModel, CrestOrigin, End, Fit, Junction, Shift};
+use ventifact::science::crest::{
+    self, CrestLine, CrestModel, CrestOrigin, End, Fit, Junction, Shift, ShiftChance,
+};
 use ventifact::study::{
     ComparisonFinding, CrestsFinding, Id, LightFinding, PatternFinding, PlateauFinding, PopulationFinding,
     PopulationSource, RecoveredTrend, RecoveryFinding, RefitFinding, ScaleFinding, SpectrumFinding,
@@ -13,7 +15,8 @@ use super::sorrel::{Reach, peak, trend, verdict};
 
 /// A number in [0, 1) that looks random and is the same each time.
 fn chance(a: usize, b: usize) -> f64 {
-    let mut h = (a as u64).wrapping_mul(0x9E37_79B9_7F4A_7C15) ^ (b as u64).wrapping_mul(0xD1B5_4A32_D192_ED03);
+    let mut h =
+        (a as u64).wrapping_mul(0x9E37_79B9_7F4A_7C15) ^ (b as u64).wrapping_mul(0xD1B5_4A32_D192_ED03);
     h ^= h >> 29;
     h = h.wrapping_mul(0xBF58_476D_1CE4_E5B9);
     h ^= h >> 32;
@@ -133,8 +136,13 @@ pub fn pattern(reach: &Reach) -> PatternFinding {
     let scales: Vec<ScaleFinding> = (0..16)
         .map(|i| {
             let scale_px = 1.0 * 1.3f64.powi(i);
-            let [fine, coarse] = [1.6, 18.0].map(|at: f64| (-0.5 * ((scale_px / at).ln() / 0.5).powi(2)).exp());
-            let axis = if fine > coarse { 172.0 + 14.0 * chance(i as usize, 2) } else { 83.0 + 4.0 * chance(i as usize, 4) };
+            let [fine, coarse] =
+                [1.6, 18.0].map(|at: f64| (-0.5 * ((scale_px / at).ln() / 0.5).powi(2)).exp());
+            let axis = if fine > coarse {
+                172.0 + 14.0 * chance(i as usize, 2)
+            } else {
+                83.0 + 4.0 * chance(i as usize, 4)
+            };
             ScaleFinding {
                 scale_px,
                 spacing: 6.0 * 25.0 * scale_px,
@@ -216,9 +224,11 @@ pub fn recovery() -> RecoveryFinding {
         height: 32.0,
         tone_per_slope: 1.4,
         defects: 0.1,
+        spread_deg: 7.0,
         window_px: 256,
         trends,
         uniform_resultant: 0.38,
+        uniform_weighted: [0.33, 0.49],
         uniform_axis: Some(Axis::from_deg(82.0)),
         missed: vec![[146.0, 201.0]],
         corrected: Some(RefitFinding { axis: Axis::from_deg(85.1), resultant_length: 0.74, turn_deg: 0.9 }),
@@ -263,7 +273,9 @@ pub fn comparison(reach: &Reach) -> ComparisonFinding {
         light_from: [Some(Azimuth::from_deg(352.0)), Some(Azimuth::from_deg(48.0))],
         years: Some(11.3),
         trends: [trend(84.2, 14.0), trend(79.6, 16.0)],
+        looks: None,
         axes: AxesCompared {
+            pairs: Some((351, 33.4)),
             n: [412, 388],
             n_eff: [38.2, 35.7],
             means: [Some(Axis::from_deg(84.2)), Some(Axis::from_deg(79.6))],
@@ -285,6 +297,10 @@ pub fn comparison(reach: &Reach) -> ComparisonFinding {
             ci95: [9.1, 18.7],
             quartiles: [4.0, 24.0],
             crests: 61,
+            arrows: Vec::new(),
+            vector: None,
+            alternatives: vec![-631.0],
+            chance: Some(ShiftChance { share: 0.34, p: 0.002 }),
             moves,
         }),
         sentence: "The trends do not differ (Watson’s U², p = 0.19); crests moved 14 m (9–19) toward 174° in 11.3 years."

@@ -10,6 +10,9 @@ use crate::ground::Place;
 use super::super::{LayerError, wkb, wkt};
 use super::{Feature, Meaning, Wanted};
 
+/// How layers of crest lines are named; where there are such, other lines are not looked at.
+const CRESTS: &str = "crests";
+
 /// One feature table.
 struct Table {
     name: String,
@@ -34,7 +37,13 @@ pub(super) fn features(
     let flags = OpenFlags::SQLITE_OPEN_READ_ONLY | OpenFlags::SQLITE_OPEN_NO_MUTEX;
     let database = Connection::open_with_flags(path, flags).map_err(fail)?;
     let mut found = Vec::new();
-    for table in tables(&database).map_err(fail)? {
+    let mut all = tables(&database).map_err(fail)?;
+    // A package handed over by this program holds trend strokes and channels too.
+    if wanted == Wanted::Lines && all.iter().any(|table| table.name.starts_with(CRESTS)) {
+        all.retain(|table| table.name.starts_with(CRESTS));
+        notes.push("only its layers of crests were read".to_owned());
+    }
+    for table in all {
         let meaning = meaning(&table, place, epsg).map_err(|problem| LayerError::Feature {
             path: path.to_owned(),
             feature: format!("layer “{}”", table.name),

@@ -8,7 +8,7 @@ use egui::Ui;
 
 use super::say;
 use crate::desk::{
-    Command, CrestCommand, DrawCommand, Model, Opened, Tool, ViewCommand, crest_facts, crests, planform_facts,
+    Command, CrestCommand, DrawCommand, Model, Opened, Tool, ViewCommand, crest_facts, crests,
 };
 use crate::study::{Patch, PatchFinding};
 use crate::window::controls::{self, Commands, button, caution, heading, look, rule, toggle};
@@ -56,7 +56,7 @@ fn pointed(ui: &mut Ui, model: &Model, patch: &Patch) {
     heading(ui, "Under the pointer");
     let top = ui.cursor().top();
     if let Some(tracing) = &model.session.tracing {
-        controls::facts(ui, &look(model), &planform_facts::tracing(tracing));
+        controls::facts(ui, &look(model), &crest_facts::tracing(tracing));
     } else if let Some((_, crested, near)) = crests::pointed(model) {
         let place = model.session.rasters.get(&patch.raster).and_then(Opened::laid).map(|laid| &laid.place);
         let frame = place.and_then(|place| place.local_frame(near.at));
