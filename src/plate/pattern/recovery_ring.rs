@@ -71,7 +71,12 @@ pub fn recovery_ring(
     let mut y = size_mm;
     y += sketch.paragraph(middle(y), &told, look.bold().anchored(TextAnchor::Middle), size_mm);
     let look = Type::new(theme.text.small, theme.ink_soft).anchored(TextAnchor::Middle);
-    y += sketch.paragraph(middle(y), &format!("{}\n{}", rose::caption(trend), caption(recovery)), look, size_mm);
+    y += sketch.paragraph(
+        middle(y),
+        &format!("{}\n{}", rose::caption(trend), caption(recovery)),
+        look,
+        size_mm,
+    );
     sketch.finish(size_mm, y)
 }
 
