@@ -42,7 +42,12 @@ impl Layers {
             .zip(layers)
             .map(|(sum, layer)| if layer.step < 0.75 * cell { smooth(sum, cols, rows) } else { plain(sum) })
             .collect();
+        // The coarsest loses most at the edge: what it is there is taken from its nearest places, lest ground at the
+        // edge count for the fine ones alone or for none.
+        let held: Vec<bool> = (0..cols * rows).map(|i| means.iter().any(|m| m[i].is_some())).collect();
+        let means: Vec<Vec<Option<f64>>> = means.into_iter().map(|m| extended(m, cols, rows)).collect();
         let mut cells: Vec<Vec<f64>> = (0..cols * rows)
+            .filter(|i| held[*i])
             .filter_map(|i| means.iter().map(|m| m[i]).collect::<Option<Vec<f64>>>())
             .collect();
         for layer in 0..count {
@@ -71,6 +76,30 @@ impl Layers {
         let all: f64 = counts.iter().sum();
         counts.iter().map(|c| if all > 0.0 { c / all } else { 1.0 / self.count.max(1) as f64 }).collect()
     }
+}
+
+/// Cells filled from the edge of what was measured outward.
+const FILLED: usize = 8;
+
+/// Missing cells take the mean of their neighbours, ring by ring.
+fn extended(mut cells: Vec<Option<f64>>, cols: usize, rows: usize) -> Vec<Option<f64>> {
+    for _ in 0..FILLED {
+        let before = cells.clone();
+        for (i, cell) in cells.iter_mut().enumerate().filter(|(_, cell)| cell.is_none()) {
+            let (col, row) = (i % cols, i / cols);
+            let (mut sum, mut count) = (0.0, 0.0);
+            for r in row.saturating_sub(1)..(row + 2).min(rows) {
+                for value in before[r * cols..][col.saturating_sub(1)..(col + 2).min(cols)].iter().flatten() {
+                    sum += value;
+                    count += 1.0;
+                }
+            }
+            if count > 0.0 {
+                *cell = Some(sum / count);
+            }
+        }
+    }
+    cells
 }
 
 fn plain(sums: &[[f64; 2]]) -> Vec<Option<f64>> {

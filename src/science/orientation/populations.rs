@@ -19,7 +19,7 @@ pub static METHOD: Method = Method {
     id: "orientation.populations",
     name: "Populations",
     question: "Do several kinds of bedforms share the patch, which, and how much of it has each?",
-    formula: "per band: modes of the node axes by least BIC, joined where the fitted density between two stays above ½ of the lesser top;  E_bm = σ_b² ⟨r_m C (g_E² + g_N²)⟩;  population = modes of one trend over all bands, at its band of greatest E;  two are kept if |ΔT| ≥ max(20°, 1.5 √(h₁² + h₂²)) and each has E ≥ 0.05 ΣE",
+    formula: "per band: modes of the node axes by least BIC, joined where the fitted density between two stays above ¼ of the lesser top;  E_bm = σ_b² ⟨r_m C (g_E² + g_N²)⟩;  population = modes of one trend over all bands, at its band of greatest E;  two are kept if |ΔT| ≥ max(30°, 1.5 √(h₁² + h₂²)) and each has E ≥ 0.05 ΣE",
     symbols: &[
         Symbol { symbol: "b", meaning: "band of scales, half an octave apart", unit: "1" },
         Symbol { symbol: "r_m", meaning: "probability that a node belongs to mode m", unit: "1" },
@@ -43,7 +43,7 @@ pub static METHOD: Method = Method {
         "two populations of one trend and two spacings are one here: the sweep and the spectrum tell them",
         "populations that cross everywhere at one spacing are seen as one trend between them",
         "the overtones of strongly uneven coarse bedforms fall into the band of fine ones and turn their trend toward the coarse one's",
-        "trends closer than 20° are not split",
+        "trends closer than 30° are not split: crests that swing by as much fall into two slopes, and may be taken for two populations",
     ],
     sources: &[Source {
         key: "ventifact-populations",
@@ -57,14 +57,14 @@ pub static METHOD: Method = Method {
 };
 
 /// Least angle between two populations, degrees.
-const LEAST_APART_DEG: f64 = 20.0;
+const LEAST_APART_DEG: f64 = 30.0;
 /// Intervals' quadratic sums two trends must be apart.
 const LEAST_REACHES: f64 = 1.5;
 /// Least share of the texture of a population, and of the nodes of a band for one of its modes.
 const LEAST_SHARE: f64 = 0.05;
 const LEAST_MODE: f64 = 0.1;
 /// Density between two modes over the lesser of their tops above which they are one.
-const DIP: f64 = 0.5;
+const DIP: f64 = 0.25;
 /// Concentration of the doubled angle below which a mode is background.
 const LEAST_KAPPA: f64 = 1.0;
 /// Shares of nodes above the noise, in multiples of those noise lets pass, for a band to count.
@@ -277,8 +277,8 @@ fn share(m: &Mixture, component: usize, phi: f64) -> f64 {
     if all > 0.0 { density(&m.components[component], phi) / all } else { 0.0 }
 }
 
-/// Modes that stand apart: those joined by a density above half of the lesser top are one, as the two slopes of wavy
-/// crests are; so are those closer than 20°. Modes so wide that they are background are left out.
+/// Modes that stand apart: those joined by a density above a quarter of the lesser top are one, as the two slopes of wavy
+/// crests are; so are those closer than 30°. Modes so wide that they are background are left out.
 fn distinct(m: &Mixture) -> Vec<Vec<usize>> {
     let narrow: Vec<usize> =
         (0..m.components.len()).filter(|c| m.components[*c].kappa >= LEAST_KAPPA).collect();
