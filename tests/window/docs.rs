@@ -38,6 +38,8 @@ fn picture(size: [f32; 2], theme: Theme, page: Page, patch: usize, path: &str) {
     if page == Page::Crests {
         let app = harness.state_mut().as_mut().expect("the application");
         app.give(Command::View(ViewCommand::WholePatch));
+        // Strokes would lie along the lines that are to be seen.
+        app.give(Command::View(ViewCommand::Strokes));
         rest(&mut harness);
     }
     compare(&harness.render().expect("a picture"), path);
