@@ -38,7 +38,10 @@ fn a_quarter_turn_of_ground_and_light_turns_everything() {
     let height = picture.height();
     // Clockwise, so that azimuths grow by 90°.
     let turned = Grid::from_fn(height, picture.width(), |col, row| picture.at(row, height - 1 - col));
-    let (a, b) = (lit(&picture, 20.0).recover(), lit(&turned, 110.0).recover());
+    let refit = |lit: &Lit| lit.measure().pattern.light.and_then(|light| light.refit).expect("a trend").axis;
+    let (before, after) = (lit(&picture, 20.0), lit(&turned, 110.0));
+    assert!(refit(&after).separation(refit(&before).rotated(90.0)) < 0.5, "refit against the light");
+    let (a, b) = (before.recover(), after.recover());
     assert_close!(b.tone_per_slope / a.tone_per_slope, 1.0, 1e-3, "strength");
     assert_close!(b.uniform_resultant, a.uniform_resultant, 0.01, "resultant");
     for trend in &a.trends {

@@ -56,7 +56,7 @@ pub static METHOD: Method = Method {
     ],
 };
 
-/// Axes of nodes above the noise, pooled.
+/// Axes of nodes, pooled: those above the noise alike, and all of them by what they show.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Response {
     /// Σ cos φ, Σ sin φ and Σ weight: each node alike, by contrast √energy, by energy.
@@ -64,12 +64,12 @@ pub struct Response {
 }
 
 impl Response {
-    /// Of nodes above the noise, each with its axis and gradient energy.
-    pub fn of(nodes: impl Iterator<Item = (Axis, f64)>) -> Self {
+    /// Of nodes, each with its axis, gradient energy, and whether it passed the noise.
+    pub fn of(nodes: impl Iterator<Item = (Axis, f64, bool)>) -> Self {
         let mut response = Self { sums: [[0.0; 3]; 3] };
-        for (axis, energy) in nodes {
+        for (axis, energy, passed) in nodes {
             let (sin, cos) = axis.doubled().sin_cos();
-            for (sum, weight) in response.sums.iter_mut().zip([1.0, energy.sqrt(), energy]) {
+            for (sum, weight) in response.sums.iter_mut().zip([f64::from(passed), energy.sqrt(), energy]) {
                 sum.iter_mut().zip([cos, sin, 1.0]).for_each(|(s, v)| *s += weight * v);
             }
         }
@@ -110,8 +110,8 @@ pub fn wilson(found: usize, tries: usize) -> [f64; 2] {
 mod tests {
     use super::*;
 
-    fn nodes(weight: impl Fn(f64) -> f64) -> Vec<(Axis, f64)> {
-        let node = |deg: f64| (Axis::from_deg(deg), deg.to_radians().sin().powi(2));
+    fn nodes(weight: impl Fn(f64) -> f64) -> Vec<(Axis, f64, bool)> {
+        let node = |deg: f64| (Axis::from_deg(deg), deg.to_radians().sin().powi(2), true);
         (0..1800)
             .map(|i| 0.1 * f64::from(i) + 0.05)
             .flat_map(|deg| vec![node(deg); weight(deg).round() as usize])

@@ -105,7 +105,7 @@ impl Trial<'_> {
             claimed: found.shown.mean.filter(|_| found.defined),
             share: found.axes.len() as f64 / field.nodes.len().max(1) as f64,
             resultant_length: found.shown.resultant_length,
-            response: Response::of(field.nodes.iter().filter(|n| n.significant).map(|n| (n.axis, n.energy))),
+            response: Response::of(field.nodes.iter().map(|n| (n.axis, n.energy, n.significant))),
         })
     }
 }
