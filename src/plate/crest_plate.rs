@@ -83,7 +83,7 @@ pub fn crest_plate(plate: &CrestPlate, width_mm: f64, theme: &Theme) -> Figure {
     let patch = plate.patch;
     let mut page = Page::new(width_mm, theme);
     page.title(&format!("{}: crests", patch.name), &format!("{} · {}", plate.raster.name, plate.raster.body));
-    page.paragraph(&sentence(patch), Type::new(theme.text.heading, theme.ink));
+    page.paragraph(&crest_sentence(patch), Type::new(theme.text.heading, theme.ink));
     page.space(2.0);
     let subject =
         MapPatch { name: &patch.name, outline: plate.outline, nodes: &[], rose: None, is_subject: true };
@@ -108,7 +108,7 @@ pub fn crest_plate(plate: &CrestPlate, width_mm: f64, theme: &Theme) -> Figure {
 }
 
 /// What was found, in one or two sentences.
-fn sentence(patch: &PatchFinding) -> String {
+pub fn crest_sentence(patch: &PatchFinding) -> String {
     let found = match &patch.crests {
         Ok(found) if !found.lines.is_empty() => found,
         Ok(_) => return format!("No crest of {} passes the noise floor.", patch.name),

@@ -40,7 +40,7 @@ pub use channels::{
     network_compare, network_numbers, order_plot, pattern_bars, planform_sketch, slope_area, threshold_maps,
     width_plot,
 };
-pub use crest_plate::{CrestPlate, crest_plate, crests_on_map};
+pub use crest_plate::{CrestPlate, crest_plate, crest_sentence, crests_on_map};
 pub use dial::{CLASS_LIMITS_DEG, CLASS_NAMES, dial};
 pub use drift_calendar::drift_calendar;
 pub use figure::{Figure, Fill, HALO, Item, Rgba, Stroke, TextAnchor};

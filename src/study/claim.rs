@@ -6,8 +6,9 @@ use super::PatchFinding;
 
 /// Spectrum and tensor may differ by so many degrees where one of them follows the crests' skew.
 const SAME_TREND_DEG: f64 = 15.0;
-/// Transects and spectrum may differ by this factor.
-const SAME_SPACING: f64 = 1.5;
+/// Transects and spectrum may differ by this factor: that of a pattern of which every second crest is missed, as happens
+/// at four to six pixels from crest to crest.
+const SAME_SPACING: f64 = 2.0;
 
 /// Bedforms repeat: the spectrum has a peak that passes its test, its trend is that of the texture, and the
 /// crests, traced without regard to it, stand at its spacing. In words what speaks against, where the patch has a

@@ -135,6 +135,15 @@ pub const BEDFORM_PATTERN: &[Setting] = &[
         recovery.defects,
         "Free ends times spacing over crest length."
     ),
+    auto!(
+        "recovery.spread_deg",
+        "Spread of crests laid in",
+        "deg",
+        0.0,
+        40.0,
+        recovery.spread_deg,
+        "Standard deviation of their trends; automatic makes them stray as the patch's own do. Defects need some."
+    ),
     number!(
         "recovery.tolerance_deg",
         "Counts as found within",

@@ -8,7 +8,8 @@ use crate::science::crest::CrestModel;
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
 #[serde(default, deny_unknown_fields)]
 pub struct CrestSettings {
-    /// `None` = what fits each patch best.
+    /// `None` = what fits each patch best, "fitting" in files.
+    #[serde(with = "fitting")]
     pub model: Option<CrestModel>,
     /// Scale of the derivatives, pixels of the measured image; `None` = from the spacing, else a sweep.
     pub scale_px: Option<f64>,
@@ -41,6 +42,9 @@ pub struct RecoverySettings {
     pub tone_per_slope: Option<f64>,
     /// Defects: free ends times spacing over crest length.
     pub defects: f64,
+    /// Standard deviation of the crests' trends, degrees; `None` = as wide as makes them look like the patch's
+    /// own, else ten.
+    pub spread_deg: Option<f64>,
     /// A trend found within so many degrees of the one laid in is found.
     pub tolerance_deg: f64,
 }
@@ -80,6 +84,7 @@ impl Default for RecoverySettings {
             steepness: 0.05,
             tone_per_slope: None,
             defects: 0.1,
+            spread_deg: None,
             tolerance_deg: 15.0,
         }
     }
@@ -88,5 +93,31 @@ impl Default for RecoverySettings {
 impl Default for CompareSettings {
     fn default() -> Self {
         Self { significance: 0.05, reach_spacings: 0.5, permutations: 999 }
+    }
+}
+
+/// A model by its key; "fitting" where none is asked for.
+mod fitting {
+    use serde::{Deserialize, Deserializer, Serialize, Serializer};
+
+    use crate::science::crest::CrestModel;
+
+    #[derive(Serialize, Deserialize)]
+    #[serde(rename_all = "kebab-case")]
+    enum Word {
+        Fitting,
+        #[serde(untagged)]
+        Model(CrestModel),
+    }
+
+    pub fn serialize<S: Serializer>(model: &Option<CrestModel>, to: S) -> Result<S::Ok, S::Error> {
+        model.map_or(Word::Fitting, Word::Model).serialize(to)
+    }
+
+    pub fn deserialize<'de, D: Deserializer<'de>>(from: D) -> Result<Option<CrestModel>, D::Error> {
+        Ok(match Word::deserialize(from)? {
+            Word::Fitting => None,
+            Word::Model(model) => Some(model),
+        })
     }
 }

@@ -42,7 +42,7 @@ fn a_quarter_turn_of_ground_and_light_turns_everything() {
     let (before, after) = (lit(&picture, 20.0), lit(&turned, 110.0));
     assert!(refit(&after).separation(refit(&before).rotated(90.0)) < 0.5, "refit against the light");
     let (a, b) = (before.recover(), after.recover());
-    assert_close!(b.tone_per_slope / a.tone_per_slope, 1.0, 1e-3, "strength");
+    assert_close!(b.tone_per_slope / a.tone_per_slope, 1.0, 5e-3, "strength");
     assert_close!(b.uniform_resultant, a.uniform_resultant, 0.01, "resultant");
     for trend in &a.trends {
         let other = b

@@ -57,7 +57,7 @@ pub(super) fn shown<'a>(crests: &[MapCrests<'a>], sheet: &Sheet) -> Vec<Shown<'a
     let taken =
         Bounds::of(sets.iter().flatten().flat_map(|(_, points)| points).copied().filter(|p| sheet.holds(*p)));
     let area =
-        taken.map_or(0.0, |b| b.width() * b.height()).max(0.02 * sheet.width() * sheet.height()).max(1e-9);
+        taken.map_or(0.0, |b| b.width() * b.height()).max(0.05 * sheet.width() * sheet.height()).max(1e-9);
     let density = lengths.iter().sum::<f64>() / area;
     lengths.sort_by(|a, b| b.total_cmp(a));
     let mut room = MOST_DENSE * area;
@@ -66,7 +66,7 @@ pub(super) fn shown<'a>(crests: &[MapCrests<'a>], sheet: &Sheet) -> Vec<Shown<'a
         room < 0.0
     });
     let least = least.copied().unwrap_or(0.0);
-    let finer = (DENSE / density.min(MOST_DENSE).max(1e-9)).clamp(0.35, 1.0);
+    let finer = (DENSE / density.clamp(1e-9, MOST_DENSE)).clamp(0.35, 1.0);
     sets.iter_mut()
         .map(|set| {
             let all = set.len();

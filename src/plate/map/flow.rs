@@ -191,7 +191,7 @@ fn heaped(
 impl Heap {
     /// The cell it makes, its axis turned from the ground into the picture; `None` without any.
     fn cell(self, full: f64, frame: Option<LocalFrame>, per_pixel: [f64; 2]) -> Option<AxisCell> {
-        if !(self.strength > 0.0) {
+        if self.strength.is_nan() || self.strength <= 0.0 {
             return None;
         }
         // Axes that contradict each other show less.

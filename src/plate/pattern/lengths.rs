@@ -15,7 +15,9 @@ pub fn crest_lengths(crests: &CrestsFinding, unit: LengthUnit, width_mm: f64, th
     if lengths.whole + lengths.cut == 0 {
         return words_only("No crest lengths: there is no crest.", width_mm, theme);
     }
-    let (seen, exponential) = (lengths.restricted_mean(), lengths.exponential_mean());
+    // Where every crest is cut the curve tells no mean.
+    let seen = lengths.restricted_mean().filter(|_| lengths.whole > 0);
+    let exponential = lengths.exponential_mean();
     let reading = |name, value: Option<f64>, sign| {
         let value = value.filter(|v| v.is_finite())?;
         Some(Reading { name, value, interval: None, sign })
@@ -33,12 +35,12 @@ pub fn crest_lengths(crests: &CrestsFinding, unit: LengthUnit, width_mm: f64, th
     let titles = ["crest length", "longer, %"];
     let mut y = survival::draw(&mut sketch, lengths, quarters, &readings, titles, unit, width_mm, theme);
     // All in one unit.
-    let most = [seen, exponential].into_iter().flatten().fold(0.0, f64::max);
+    let most = [seen, exponential, Some(lengths.longest)].into_iter().flatten().fold(0.0, f64::max);
     let (per, symbol) = length_ruler(most, unit);
     let told = |v: Option<f64>| {
         v.map_or("–".to_owned(), |v| format!("{} {symbol}", numbers::significant(v / per, 3)))
     };
-    let headline = seen.map_or("no mean".to_owned(), |_| format!("mean {}", told(seen)));
+    let headline = seen.map_or("every crest is cut: no mean".to_owned(), |_| format!("mean {}", told(seen)));
     let caption = format!(
         "{} crests seen whole, {} cut by border or gap (ticks) · median {} · if exponential {} · plain mean of what lies inside {}",
         numbers::count(lengths.whole),

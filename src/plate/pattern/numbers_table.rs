@@ -23,8 +23,10 @@ pub fn crest_numbers(crests: &CrestsFinding, unit: LengthUnit, width_mm: f64, th
         ("ground", area(n.area, unit)),
         ("density", density),
     ];
-    if let Some(mean) = n.lengths.restricted_mean() {
-        rows.push(("mean length", length(mean)));
+    match n.lengths.restricted_mean() {
+        Some(mean) if n.lengths.whole > 0 => rows.push(("mean length", length(mean))),
+        Some(longest) => rows.push(("mean length", format!("open: all cut, up to {}", length(longest)))),
+        None => {}
     }
     if let Some((axis, resultant)) = n.azimuth {
         let text = format!("{}°, R\u{304} {:.2}", numbers::angle(axis.deg(), 1, 180.0), resultant);

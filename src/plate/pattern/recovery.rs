@@ -67,7 +67,7 @@ fn bias_span(trends: &[RecoveredTrend]) -> Span {
 
 /// The places of a stretch of axes between 0° and 180°, in one part or in two.
 pub(super) fn unwrapped([from, to]: [f64; 2]) -> Vec<[f64; 2]> {
-    if !(to > from) {
+    if to.is_nan() || from.is_nan() || to <= from {
         return Vec::new();
     }
     [-180.0, 0.0, 180.0]

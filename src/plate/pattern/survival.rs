@@ -40,6 +40,7 @@ const TAIL: f64 = 0.03;
 const CUT_PITCH_MM: f64 = 0.5;
 
 /// The curve with its quarters and cuts, the readings in lanes beneath; returns the height used.
+#[allow(clippy::too_many_arguments)]
 pub(super) fn draw(
     sketch: &mut Sketch,
     survival: &Survival,

@@ -226,7 +226,7 @@ impl Bedforms {
             }
             let scale = 1.0 / (WAVES as f64).sqrt();
             for col in 0..width {
-                let [re, im, k_re, k_im] = [0, 1, 2, 3].map(|i: usize| scale * f64::from(sums[i][col]));
+                let [re, im, k_re, k_im] = sums.each_ref().map(|sum| scale * f64::from(sum[col]));
                 // dZ = i Σ (k · toward light) e^{i…}.
                 let (h, rise) = self.height_at(Complex64::new(re, im), Complex64::new(-k_im, k_re), &profile);
                 relief.push(h as f32);
@@ -319,7 +319,8 @@ mod tests {
 
     #[test]
     fn the_slope_is_that_of_the_relief() {
-        let laid = lay(bedforms(0.3), Some(200.0));
+        // So wide that differences follow every term of the profile.
+        let laid = lay(Bedforms { spacing: 36.0, ..bedforms(0.3) }, Some(200.0));
         let (e, n) = Azimuth::from_deg(200.0).east_north();
         let at = |c: usize, r: usize| f64::from(laid.relief.at(c, r));
         let (mut error, mut size) = (0.0, 0.0);

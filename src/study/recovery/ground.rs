@@ -177,7 +177,7 @@ mod tests {
     #[test]
     fn the_window_lies_where_the_patch_has_most_valid_ground() {
         let mut pixels = patch(200, 120, Polygon::rectangle(200.0, 120.0));
-        pixels.image.mask_where(|c, _| c >= 110);
+        pixels.image.mask_where(|c, _| c < 110);
         let wanted = Wanted { window: 64.0, spacing: 5.0, scale: 1.0 };
         let ground = cut(&pixels, ImageKind::Optical, &wanted, &Work::quiet()).unwrap().expect("ground");
         assert_eq!((ground.side, ground.pixels.image.valid_count()), (64, 64 * 64));

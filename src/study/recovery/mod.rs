@@ -62,7 +62,7 @@ pub fn recovery(
     let spacing = s.spacing.or_else(|| own_spacing(finding, fine)).unwrap_or(SPACING_PX * fine);
     // Lengths in pixels of the image as measured.
     let spacing_px = spacing / (fine * pixels.factor as f64);
-    if !(spacing_px >= LEAST_SPACING) {
+    if spacing_px.is_nan() || spacing_px < LEAST_SPACING {
         return Ok(Err(format!(
             "bedforms {spacing_px:.1} pixels apart are finer than the patch can show; lay in wider ones"
         )));
@@ -115,6 +115,9 @@ pub fn recovery(
             Some(stated) => stated,
             None => faint(&trial, pattern, work)?,
         };
+    }
+    if let Some(stated) = s.spread_deg {
+        trial.bedforms.spread_deg = stated;
     }
     let seen = trial.run(work)?;
     let response = Response::pooled(seen.iter().flatten().map(|seen| &seen.response));

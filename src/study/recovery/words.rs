@@ -54,12 +54,19 @@ pub(super) fn sentence(r: &RecoveryFinding) -> String {
             "Bedforms {bedforms} would have been found here whatever their trend ({percent:.0} % of the fields laid in)."
         );
     }
-    let arcs: Vec<String> =
-        r.missed.iter().map(|[from, to]| format!("{:.0}° and {:.0}°", from, to.rem_euclid(180.0))).collect();
+    let arcs: Vec<String> = r.missed.iter().map(arc).collect();
     format!(
-        "Trends between {} would have been missed here; of bedforms {bedforms} with other trends {percent:.0} % were found.",
-        arcs.join(" and between ")
+        "Trends {} would have been missed here; of bedforms {bedforms} with other trends {percent:.0} % were found.",
+        arcs.join(" and ")
     )
+}
+
+/// An arc in words; one that passes north says so.
+fn arc([from, to]: &[f64; 2]) -> String {
+    match *to > 180.5 {
+        true => format!("from {from:.0}° through north to {:.0}°", to - 180.0),
+        false => format!("between {from:.0}° and {to:.0}°"),
+    }
 }
 
 /// Fields found and laid in, at trends that were not missed.

@@ -39,7 +39,8 @@ pub(super) fn features(
     let mut found = Vec::new();
     let mut all = tables(&database).map_err(fail)?;
     // A package handed over by this program holds trend strokes and channels too.
-    if wanted == Wanted::Lines && all.iter().any(|table| table.name.starts_with(CRESTS)) {
+    let of_crests = all.iter().filter(|table| table.name.starts_with(CRESTS)).count();
+    if wanted == Wanted::Lines && (1..all.len()).contains(&of_crests) {
         all.retain(|table| table.name.starts_with(CRESTS));
         notes.push("only its layers of crests were read".to_owned());
     }
