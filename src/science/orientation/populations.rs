@@ -42,6 +42,7 @@ pub static METHOD: Method = Method {
     ],
     limits: &[
         "two populations of one trend and two spacings are one here: the sweep and the spectrum tell them",
+        "side by side, shares of ground were off by up to 0.13 in synthetic fields nine coarse wavelengths wide, and a coarse population of half the amplitude was missed in half of them",
         "populations that cross everywhere at one spacing are seen as one trend between them",
         "the overtones of strongly uneven coarse bedforms fall into the band of fine ones and turn their trend toward the coarse one's",
         "trends closer than 25° are not split; two seen in one band need areas several wavelengths wide, else they are taken for limbs of winding crests, and crests that wind more slowly may be taken for two",
