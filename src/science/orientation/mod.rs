@@ -11,6 +11,7 @@ pub mod noise;
 pub mod plateau;
 pub mod populations;
 pub mod scale;
+mod separate;
 pub mod speckle;
 pub mod spectrum;
 mod tensor;

@@ -11,6 +11,7 @@ use crate::science::axial::mixture::{Component, Mixture, MixtureSettings, mixtur
 use super::band::{Band, band_nodes};
 use super::ground_shares::{Layer, Layers};
 use super::scale::ScaleStep;
+use super::separate::held_apart;
 use super::spectrum::shares::{Wave, variance_shares};
 use super::tensor::{NodeField, TrendNode};
 
@@ -19,7 +20,7 @@ pub static METHOD: Method = Method {
     id: "orientation.populations",
     name: "Populations",
     question: "Do several kinds of bedforms share the patch, which, and how much of it has each?",
-    formula: "per band: modes of the node axes by least BIC, joined where the fitted density between two stays above ¼ of the lesser top;  E_bm = σ_b² ⟨r_m C (g_E² + g_N²)⟩;  population = modes of one trend over all bands, at its band of greatest E;  two are kept if |ΔT| ≥ max(30°, 1.5 √(h₁² + h₂²)) and each has E ≥ 0.05 ΣE",
+    formula: "per band: modes of the node axes by least BIC, joined where the fitted density between two stays above ½ of the lesser top;  E_bm = σ_b² ⟨r_m C (g_E² + g_N²)⟩;  population = modes of one trend over all bands, at its band of greatest E;  two seen in one band must hold ground of their own: V = var⟨d⟩/var d ≥ 0.3, d = (r₁ − r₂)/(r₁ + r₂), ⟨⟩ over three wavelengths;  two are kept if |ΔT| ≥ max(25°, 1.5 √(h₁² + h₂²)) and each has E ≥ 0.05 ΣE",
     symbols: &[
         Symbol { symbol: "b", meaning: "band of scales, half an octave apart", unit: "1" },
         Symbol { symbol: "r_m", meaning: "probability that a node belongs to mode m", unit: "1" },
@@ -41,9 +42,10 @@ pub static METHOD: Method = Method {
     ],
     limits: &[
         "two populations of one trend and two spacings are one here: the sweep and the spectrum tell them",
+        "side by side, shares of ground were off by up to 0.13 in synthetic fields nine coarse wavelengths wide, and a coarse population of half the amplitude was missed in half of them",
         "populations that cross everywhere at one spacing are seen as one trend between them",
         "the overtones of strongly uneven coarse bedforms fall into the band of fine ones and turn their trend toward the coarse one's",
-        "trends closer than 30° are not split: crests that swing by as much fall into two slopes, and may be taken for two populations",
+        "trends closer than 25° are not split; two seen in one band need areas several wavelengths wide, else they are taken for limbs of winding crests, and crests that wind more slowly may be taken for two",
     ],
     sources: &[Source {
         key: "ventifact-populations",
@@ -57,14 +59,18 @@ pub static METHOD: Method = Method {
 };
 
 /// Least angle between two populations, degrees.
-const LEAST_APART_DEG: f64 = 30.0;
+const LEAST_APART_DEG: f64 = 25.0;
 /// Intervals' quadratic sums two trends must be apart.
 const LEAST_REACHES: f64 = 1.5;
 /// Least share of the texture of a population, and of the nodes of a band for one of its modes.
 const LEAST_SHARE: f64 = 0.05;
 const LEAST_MODE: f64 = 0.1;
 /// Density between two modes over the lesser of their tops above which they are one.
-const DIP: f64 = 0.25;
+const DIP: f64 = 0.5;
+/// Least V of two trends seen in one band.
+const LEAST_HELD: f64 = 0.3;
+/// Texture of a trend, over that of another at its greatest band, from which both are seen in that band.
+const SEEN: f64 = 0.2;
 /// Concentration of the doubled angle below which a mode is background.
 const LEAST_KAPPA: f64 = 1.0;
 /// Shares of nodes above the noise, in multiples of those noise lets pass, for a band to count.
@@ -154,12 +160,24 @@ impl Ground {
 }
 
 /// A trend at a scale that may be a population.
-#[derive(Clone, Copy, Debug)]
+#[derive(Clone, Debug)]
 struct Candidate {
     axis: Axis,
     scale_px: f64,
     /// E of its greatest band.
     texture: f64,
+    /// Which step of the sweep that is.
+    step: usize,
+    membership: Vec<f64>,
+    /// Trends that alternate with it over the same ground.
+    limbs: Vec<Axis>,
+}
+
+impl Candidate {
+    /// Angle to its trend or to the nearest of its limbs, degrees.
+    fn to(&self, axis: Axis) -> f64 {
+        self.limbs.iter().map(|limb| limb.separation(axis)).fold(self.axis.separation(axis), f64::min)
+    }
 }
 
 /// Modes of every band, gathered by trend.
@@ -173,33 +191,66 @@ fn candidates(
     let textures: Vec<f64> = sweep.iter().map(|(_, field)| texture(field, None)).collect();
     let greatest = textures.iter().copied().fold(0.0, f64::max);
     let mut seen: Vec<Candidate> = Vec::new();
-    for ((step, field), all) in sweep.iter().zip(&textures) {
+    for (i, ((step, field), all)) in sweep.iter().zip(&textures).enumerate() {
         if step.share < TEXTURE * settings.significance || *all < LEAST_SHARE * greatest {
             continue;
         }
         for group in groups(field, ground, settings, seed, work)? {
             let texture = texture(field, Some(&group.membership));
-            seen.push(Candidate { axis: group.axis, scale_px: field.gradient_scale_px, texture });
+            let scale_px = field.gradient_scale_px;
+            let Group { axis, membership } = group;
+            seen.push(Candidate { axis, scale_px, texture, step: i, membership, limbs: Vec::new() });
         }
     }
     // The strongest first: the others join it where they run alike.
     seen.sort_by(|a, b| b.texture.total_cmp(&a.texture));
     let mut kept: Vec<Candidate> = Vec::new();
     for candidate in &seen {
-        if kept.iter().all(|k| k.axis.separation(candidate.axis) >= LEAST_APART_DEG) {
-            kept.push(*candidate);
+        if kept.iter().any(|k| k.to(candidate.axis) < LEAST_APART_DEG) {
+            continue;
+        }
+        match kept.iter_mut().find(|k| alternate(k, candidate, &seen, sweep, ground)) {
+            Some(k) => k.limbs.push(candidate.axis),
+            None => kept.push(candidate.clone()),
         }
     }
     // Under broader bedforms the finest band that is nearly as strong holds least of their slopes.
     let broadest = kept.iter().map(|k| k.scale_px).fold(0.0, f64::max);
     for k in kept.iter_mut().filter(|k| k.scale_px * ONE_SCALE <= broadest) {
-        let alike = seen.iter().filter(|c| c.axis.separation(k.axis) < LEAST_APART_DEG);
+        let alike = seen.iter().filter(|c| k.to(c.axis) < LEAST_APART_DEG);
         let strong = alike.filter(|c| c.texture >= NEARLY * k.texture);
         k.scale_px = strong.map(|c| c.scale_px).fold(k.scale_px, f64::min);
     }
     let sum: f64 = kept.iter().map(|k| k.texture).sum();
     kept.retain(|k| k.texture >= LEAST_SHARE * sum);
     Ok(kept)
+}
+
+/// Whether two trends seen in the greatest band of either do not hold ground of their own there.
+fn alternate(
+    a: &Candidate,
+    b: &Candidate,
+    seen: &[Candidate],
+    sweep: &[(ScaleStep, NodeField)],
+    ground: Ground,
+) -> bool {
+    let mingled = |own: &Candidate, other: &Candidate| {
+        let field = &sweep[own.step].1;
+        let near = |c: &&Candidate| {
+            let off = c.axis.separation(other.axis);
+            c.step == own.step && off < LEAST_APART_DEG && off < c.axis.separation(own.axis)
+        };
+        let Some(there) = seen.iter().filter(near).find(|c| c.texture >= SEEN * own.texture) else {
+            return false;
+        };
+        let both = own.membership.iter().zip(&there.membership);
+        let places: Vec<(Point, f64, f64)> =
+            field.nodes.iter().zip(both).map(|(n, (r, s))| (ground.of(n.at), *r, *s)).collect();
+        // Overtones wind with the broad crests they belong to.
+        let coarser = (other.scale_px / field.gradient_scale_px).max(1.0);
+        held_apart(&places, coarser * node_spacing(field)) < LEAST_HELD
+    };
+    mingled(a, b) || mingled(b, a)
 }
 
 /// E = σ² ⟨r C energy⟩ over all nodes, r = 0 within the noise.
@@ -277,8 +328,8 @@ fn share(m: &Mixture, component: usize, phi: f64) -> f64 {
     if all > 0.0 { density(&m.components[component], phi) / all } else { 0.0 }
 }
 
-/// Modes that stand apart: those joined by a density above a quarter of the lesser top are one, as the two slopes of wavy
-/// crests are; so are those closer than 30°. Modes so wide that they are background are left out.
+/// Modes that stand apart: those joined by a density above half of the lesser top are one;
+/// so are those closer than 25°. Modes so wide that they are background are left out.
 fn distinct(m: &Mixture) -> Vec<Vec<usize>> {
     let narrow: Vec<usize> =
         (0..m.components.len()).filter(|c| m.components[*c].kappa >= LEAST_KAPPA).collect();
@@ -324,8 +375,7 @@ fn measure(
     let band = Band { scale_px: candidate.scale_px, without_broader };
     let field = band_nodes(image, patch, place, band, settings.significance, settings.logarithm, work)?;
     let near = |axis: Axis| {
-        let to = |c: &Candidate| c.axis.separation(axis);
-        to(candidate) <= LEAST_APART_DEG && all.iter().all(|other| to(candidate) <= to(other))
+        candidate.to(axis) <= LEAST_APART_DEG && all.iter().all(|other| candidate.to(axis) <= other.to(axis))
     };
     let mut membership = vec![0.0; field.nodes.len()];
     for group in groups(&field, ground, settings, seed, work)?.iter().filter(|g| near(g.axis)) {
