@@ -434,8 +434,8 @@ fn weigh(
         .collect();
     let layers = Layers::of(&layers);
     let count = found.len();
-    for i in 0..count {
-        found[i].superposed = (0..count).any(|j| j != i && layers.overlap(i, j) > OVERLAP);
+    for (i, population) in found.iter_mut().enumerate() {
+        population.superposed = (0..count).any(|j| j != i && layers.overlap(i, j) > OVERLAP);
     }
     let weights = if found.iter().any(|p| p.superposed) {
         let wave = |p: &Population| {
