@@ -53,7 +53,7 @@ fn a_quarter_turn_of_ground_and_light_turns_everything() {
         assert_close!(other.share, trend.share, 0.02, "share at {}", trend.trend.deg());
         assert!(other.found.abs_diff(trend.found) <= 1, "{trend:?} {other:?}");
         if let (Some(x), Some(y)) = (trend.bias_deg, other.bias_deg) {
-            assert_close!(x, y, 0.5, "bias at {}", trend.trend.deg());
+            assert_close!(x, y, 1.0, "bias at {}", trend.trend.deg());
         }
     }
     let turn = |r: &RecoveryFinding| r.corrected.expect("a trend").axis;

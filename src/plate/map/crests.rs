@@ -328,7 +328,8 @@ mod tests {
         let few = [crest(500.0, 800.0, CrestOrigin::Traced, 1.0)];
         let many: Vec<CrestLine> = (0..3000)
             .map(|i| {
-                crest(0.33 * f64::from(i), if i % 3 == 0 { 20.0 } else { 700.0 }, CrestOrigin::Traced, 1.0)
+                let long = if i % 3 == 0 { 20.0 } else { 700.0 + 0.01 * f64::from(i) };
+                crest(0.33 * f64::from(i), long, CrestOrigin::Traced, 1.0)
             })
             .collect();
         let set = |lines| shown(&[MapCrests { lines, ..MapCrests::default() }], &sheet());
