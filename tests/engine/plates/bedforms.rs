@@ -50,7 +50,7 @@ fn line(points: Vec<Point>, ends: [End; 2], n: usize) -> CrestLine {
         bridged_px: 6.0 * chance(n, 3),
         model: CrestModel::BrightRidge,
         origin,
-        accepted: n % 5 == 0,
+        accepted: n.is_multiple_of(5),
         by_hand_px: if origin == CrestOrigin::Traced { 0.0 } else { 40.0 },
     }
 }
