@@ -28,7 +28,7 @@ fn bedforms_of_all_trends_on_clean_ground_lie_across_the_light_above_the_analyti
     assert!((1.0 / 3.0 - 0.03..0.56).contains(&contrast), "by contrast {contrast}");
     assert!((0.5 - 0.03..0.65).contains(&energy) && contrast < energy, "by energy {energy}");
     let axis = found.uniform_axis.expect("an axis");
-    assert!(axis.separation(Axis::from_deg(13.0)) < 2.0, "across the light: {axis:?}");
+    assert!(axis.separation(Axis::from_deg(13.0)) < 8.0, "across the light: {axis:?}");
     // Across the light nothing is missed, along it everything may be.
     let across = found.trends.iter().find(|t| t.trend.separation(Axis::from_deg(13.0)) < 1e-9).expect("13°");
     assert_eq!(across.found, across.tries, "{across:?}");
