@@ -7,8 +7,8 @@ use crate::plate::Figure;
 use crate::study::{Id, OpenRaster, TogetherFinding};
 
 use super::{
-    Charted, Command, Delivery, Import, Measured, Model, Opened, PenAnswer, Reading, SheetCommand, Slot,
-    WindResult, apply, pen,
+    Charted, Command, Compared, Delivery, Import, Measured, Model, Opened, PenAnswer, Reading, Recovered,
+    SheetCommand, Slot, WindResult, apply, pen,
 };
 
 /// An answer from a job.
@@ -18,6 +18,9 @@ pub enum Answer {
     Raster(Id, Option<Box<OpenRaster>>, Opened),
     Patch(Id, Box<Measured>),
     Network(Id, Box<Charted>),
+    Comparison(Id, Box<Compared>),
+    /// What synthetic bedforms in a patch say.
+    Recovery(Id, Box<Recovered>),
     Pen(PenAnswer),
     Winds(Vec<WindResult>),
     /// What all patches say together, as the sheet of this fingerprint stood.
@@ -51,6 +54,12 @@ pub fn absorb(model: &mut Model) -> bool {
                 if slot == Slot::Networks {
                     model.session.pause_charting();
                 }
+                if slot == Slot::Comparisons {
+                    model.session.comparing.pause();
+                }
+                if slot == Slot::Recovery {
+                    model.session.recovering.pause();
+                }
                 let text = format!("A fault in the program ended the work “{slot:?}”: {text}");
                 model.session.notices.problem(text);
             }
@@ -72,6 +81,8 @@ fn take(model: &mut Model, answer: Answer) {
             session.rasters.insert(id, opened);
         }
         Answer::Patch(id, measured) => session.results.take_patch(id, *measured),
+        Answer::Comparison(id, compared) => session.results.take_comparison(id, *compared),
+        Answer::Recovery(id, recovered) => session.results.take_recovery(id, *recovered),
         Answer::Network(id, charted) => session.results.take_network(id, *charted),
         Answer::Pen(answer) => pen::take(model, answer),
         Answer::Winds(results) => results.into_iter().for_each(|r| session.results.take_wind(r)),

@@ -1,5 +1,6 @@
 //! The evidence as rows of label and value, page by page; the window sets them in type.
 
+use crate::files::raster::Light;
 use crate::ground::{LengthUnit, Method};
 use crate::plate::numbers;
 use crate::science;
@@ -60,6 +61,10 @@ pub fn ground(entry: &RasterEntry, open: &OpenRaster) -> Vec<Fact> {
     ));
     facts.push(fact("Body", raster.body, "Whose shape, gravity and air are used."));
     facts.push(fact("Reference", raster.projection, "Angles are turned to true north point by point."));
+    if let Some(from) = info.light.and_then(Light::from).filter(|_| entry.light_from.is_none()) {
+        let value = format!("from {:.1}° by a tag, not stated yet", from.deg());
+        facts.push(fact("Light", value, "State it on the page Light to hold trends against it."));
+    }
     if let Some(nodata) = raster.nodata {
         let nodata = if nodata.is_nan() { "not a number".to_owned() } else { nodata.to_string() };
         facts.push(fact("No data", nodata, "Pixels of this value are missing."));
@@ -430,7 +435,7 @@ pub fn obstacle(finding: &ObstacleFinding) -> Vec<Fact> {
 mod tests {
     use super::{spacing, trend};
     use crate::ground::LengthUnit;
-    use crate::study::{Id, PatchFinding, SpectrumFinding, TrendFinding};
+    use crate::study::{Id, PatchFinding, PatternFinding, SpectrumFinding, TrendFinding};
 
     #[test]
     fn every_method_that_a_fact_names_has_a_record() {
@@ -451,6 +456,7 @@ mod tests {
             cautions: Vec::new(),
             birth: Vec::new(),
             crests: Err("not traced".into()),
+            pattern: PatternFinding::default(),
             obstacles: None,
         };
         let facts = trend(&finding).into_iter().chain(spacing(&finding));

@@ -20,6 +20,10 @@ pub enum Slot {
     Measure,
     /// Channel networks.
     Networks,
+    /// Two pictures of one ground.
+    Comparisons,
+    /// Bedforms laid into a patch and sought again.
+    Recovery,
     /// The pen: its ground and the way to the pointer.
     Pen,
     /// What ways between random places cost.
@@ -30,11 +34,13 @@ pub enum Slot {
 }
 
 impl Slot {
-    pub const ALL: [Self; 9] = [
+    pub const ALL: [Self; 11] = [
+        Self::Comparisons,
         Self::OpenRaster,
         Self::Demo,
         Self::Measure,
         Self::Networks,
+        Self::Recovery,
         Self::Pen,
         Self::Chance,
         Self::ReadWinds,

@@ -48,7 +48,9 @@ pub fn follow(model: &mut Model) {
     let in_hand = model.selected_patch().map(|p| p.id);
     let standing = in_hand.map(|id| model.session.results.standing(id));
     let unseen = matches!(standing, Some(Standing::Unmeasured | Standing::OutOfDate));
-    if let Some(id) = in_hand.filter(|_| unseen) {
+    // After an edit of crests a quick look would show what is known already, and no crests.
+    let known = in_hand.is_some_and(|id| model.session.results.knows_texture(&model.sheet, id));
+    if let Some(id) = in_hand.filter(|_| unseen && !known) {
         start(model, Task::Quick, vec![id]);
     } else if !model.session.history.is_dragging() {
         let wanting = model.session.results.wanting(&model.sheet);
@@ -67,7 +69,6 @@ pub(super) fn still_opening(model: &Model) -> bool {
 }
 
 fn start(model: &mut Model, task: Task, patches: Vec<Id>) {
-    let session = &mut model.session;
     let label = match (&task, patches.as_slice()) {
         (Task::Quick, _) => "A first look".to_owned(),
         (Task::Exact(_), [one]) => {
@@ -76,12 +77,8 @@ fn start(model: &mut Model, task: Task, patches: Vec<Id>) {
         (Task::Exact(_), []) => "Comparing patches".to_owned(),
         (Task::Exact(_), many) => format!("Measuring {} patches", many.len()),
     };
-    let round = Round {
-        sheet: model.sheet.clone(),
-        rasters: session.sources.clone(),
-        kept: Arc::clone(&session.kept),
-        patches,
-    };
+    let round = round(model, patches);
+    let session = &mut model.session;
     let quick = task == Task::Quick;
     session.measuring = Some(task);
     session.jobs.start(Slot::Measure, label, move |work, post| {
@@ -90,11 +87,21 @@ fn start(model: &mut Model, task: Task, patches: Vec<Id>) {
     });
 }
 
+/// What a job takes along.
+pub(super) fn round(model: &Model, patches: Vec<Id>) -> Round {
+    Round {
+        sheet: model.sheet.clone(),
+        rasters: model.session.sources.clone(),
+        kept: Arc::clone(&model.session.kept),
+        patches,
+    }
+}
+
 /// One job's view of the study.
-struct Round {
-    sheet: Sheet,
+pub(super) struct Round {
+    pub(super) sheet: Sheet,
     rasters: std::collections::BTreeMap<Id, OpenRaster>,
-    kept: Arc<Kept>,
+    pub(super) kept: Arc<Kept>,
     patches: Vec<Id>,
 }
 
@@ -168,13 +175,14 @@ impl Round {
             outcome: outcome.map(|finding| (*finding).clone()),
             fingerprint: fingerprint::of_patch(&self.sheet, patch),
             exact: detail == Detail::Exact,
+            texture: fingerprint::of_texture(&self.sheet, patch),
         };
         post.answer(Answer::Patch(id, Box::new(measured)));
         Ok(())
     }
 
     /// The open rasters and the wind records, read once for each way of reading them.
-    fn sources(&self) -> (Sources, Vec<Failure>) {
+    pub(super) fn sources(&self) -> (Sources, Vec<Failure>) {
         let mut sources = Sources { rasters: self.rasters.clone(), ..Sources::default() };
         let mut failures = Vec::new();
         for entry in &self.sheet.winds {

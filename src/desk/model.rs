@@ -7,7 +7,10 @@ use crate::ground::{Body, LonLat, Point};
 use crate::study::judges::{self, Judges};
 use crate::study::{Id, NetworkEntry, Obstacle, Patch, RasterEntry, Sheet, WindEntry};
 
-use super::{Opened, Session, Tool, View, Wake, charting, engine, laying, measuring, pen, plates};
+use super::{
+    Opened, Session, Tool, View, Wake, charting, comparing, engine, laying, measuring, pen, plates,
+    recovering,
+};
 
 /// What panels draw from. It changes only in [`super::apply`] and [`super::absorb`].
 #[derive(Debug)]
@@ -60,6 +63,12 @@ impl Model {
             network.image().is_some()
         };
         fits.then_some(network)
+    }
+
+    /// The patch whose crests the tools work on: the selected one, when it lies on the raster on the table.
+    pub fn crest_patch(&self) -> Option<&Patch> {
+        let shown = self.shown_raster()?.id;
+        self.selected_patch().filter(|patch| patch.raster == shown)
     }
 
     /// The wind record on the bench: the user's choice, the selected patch's own, or the first.
@@ -123,6 +132,8 @@ impl Model {
         laying::follow(self);
         measuring::follow(self);
         charting::follow(self);
+        comparing::follow(self);
+        recovering::follow(self);
         pen::follow(self);
         plates::follow(self);
     }

@@ -8,9 +8,9 @@ use serde::{Deserialize, Serialize};
 use crate::files::save;
 use crate::plate::{Figure, PngSize, Theme, compose, pdf, png, svg};
 use crate::study::handover::write_all;
-use crate::study::{Findings, Id, Sheet, Sources, WindFinding, fingerprint, run};
+use crate::study::{Findings, Id, Patch, Sheet, Sources, fingerprint, run};
 
-use super::{Answer, Model, Page, Slot};
+use super::{Answer, Model, Page, Slot, comparing, recovering};
 
 /// What the plate is to be; saved with the view.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
@@ -21,6 +21,8 @@ pub struct PlateChoice {
     pub format: Format,
     /// Of a PNG.
     pub dpi: f64,
+    /// The trend on a patch's map as a flow texture, in place of strokes.
+    pub flow: bool,
 }
 
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
@@ -29,6 +31,8 @@ pub enum Motif {
     /// The selected patch.
     #[default]
     Patch,
+    /// The crests of the selected patch.
+    Crests,
     /// The selected network.
     Network,
     /// The raster on the table with all its patches and networks.
@@ -55,7 +59,13 @@ pub struct Preview {
 
 impl Default for PlateChoice {
     fn default() -> Self {
-        Self { motif: Motif::default(), width_mm: compose::WIDTH_MM, format: Format::default(), dpi: 300.0 }
+        Self {
+            motif: Motif::default(),
+            width_mm: compose::WIDTH_MM,
+            format: Format::default(),
+            dpi: 300.0,
+            flow: false,
+        }
     }
 }
 
@@ -103,7 +113,19 @@ fn key(model: &Model) -> String {
     let choice = &model.view.plate;
     let results = &model.session.results;
     let subject: Vec<String> = match choice.motif {
-        Motif::Patch => model.selected_patch().iter().map(|p| results.stamp(p.id)).collect(),
+        Motif::Patch | Motif::Crests => {
+            let stamps = |p: &&Patch| {
+                let recovery = results.recovered(p.id).map(|r| r.fingerprint.as_str());
+                let recovered = format!("{recovery:?} {:?}", results.recovery_standing(p.id));
+                let of_patch = model.sheet.comparisons.iter().filter(|c| c.patch == p.id);
+                let compared = of_patch.map(|c| {
+                    let made = results.compared(c.id).map(|made| made.fingerprint.as_str());
+                    format!("{made:?} {:?}", results.comparison_standing(c.id))
+                });
+                [results.stamp(p.id), recovered].into_iter().chain(compared).collect::<Vec<_>>()
+            };
+            model.selected_patch().iter().flat_map(stamps).collect()
+        }
         // Its plate shows the patches of the raster and the networks it is compared with.
         Motif::Network | Motif::Overview => {
             let chosen = model.view.network.map(|id| format!("{id:?}"));
@@ -113,7 +135,8 @@ fn key(model: &Model) -> String {
         }
     };
     let raster = model.shown_raster().map(|r| (r.id, r.tone, model.session.sources.contains_key(&r.id)));
-    format!("{:?} {} {subject:?} {raster:?} {}", choice.motif, choice.width_mm, model.sheet.title)
+    let form = (choice.motif, choice.width_mm, choice.flow);
+    format!("{form:?} {subject:?} {raster:?} {}", model.sheet.title)
 }
 
 /// Everything a plate is composed of, apart from the model.
@@ -147,8 +170,14 @@ impl Subject {
                 let id = self.patch.ok_or("no patch is selected")?;
                 let finding = self.findings.patches.iter().find(|p| p.id == id);
                 let finding = finding.ok_or("the patch is not measured yet")?;
-                let winds: Vec<WindFinding> = self.findings.winds.clone();
-                compose::of_patch(&self.sheet, &self.sources, finding, &winds, choice.width_mm, &theme, work)
+                let print = compose::Print { width_mm: choice.width_mm, theme: &theme, flow: choice.flow };
+                compose::of_patch(&self.sheet, &self.sources, finding, &self.findings, &print, work)
+            }
+            Motif::Crests => {
+                let id = self.patch.ok_or("no patch is selected")?;
+                let finding = self.findings.patches.iter().find(|p| p.id == id);
+                let finding = finding.ok_or("the patch is not measured yet")?;
+                compose::of_crests(&self.sheet, &self.sources, finding, choice.width_mm, &theme, work)
             }
             Motif::Network => {
                 let id = self.network.ok_or("no network is selected")?;
@@ -208,6 +237,8 @@ fn findings(model: &Model) -> Findings {
             .filter_map(|n| session.results.network(n.id).map(|finding| (**finding).clone()))
             .collect(),
         together: session.results.together().cloned().unwrap_or_default(),
+        recoveries: recovering::current(sheet, &session.results),
+        comparisons: comparing::current(sheet, &session.results),
         failures: session.results.failures(sheet),
     }
 }

@@ -7,8 +7,10 @@ use std::sync::Arc;
 use crate::ground::{Place, Point, Polygon};
 use crate::study::{Id, OpenRaster, Sheet, fingerprint};
 
+use super::comparing::Comparing;
 use super::laying::OpenedAs;
 use super::measuring::{Kept, Task};
+use super::recovering::Recovering;
 use super::{
     Answer, Command, History, Import, Jobs, Notices, PenGround, Preview, Results, Slot, TileShelf, Tracing,
     Wake,
@@ -38,6 +40,10 @@ pub struct Session {
     /// The fingerprints of the networks that the running job measures, and of those at which the user stopped it.
     pub(super) charting: Vec<String>,
     pub(super) charts_stopped_at: Option<Vec<String>>,
+    /// What the recovery job is about.
+    pub(super) recovering: Recovering,
+    /// What the comparing job is about.
+    pub(super) comparing: Comparing,
     /// Whether patches are measured as they change.
     pub measures: bool,
     /// The plate on the bench.
@@ -48,7 +54,7 @@ pub struct Session {
     pub tool: Tool,
     /// The outline under way.
     pub draft: Option<Draft>,
-    /// The channel under way.
+    /// The channel or crest under way.
     pub tracing: Option<Tracing>,
     pub(super) pen_ground: Option<PenGround>,
     /// Where the pointer (or the keyboard cross) is on the raster.
@@ -112,6 +118,18 @@ pub enum Tool {
     Strike,
     /// Two clicks: the water went this way.
     Arrow,
+    /// Draws a crest from pick to pick, or lengthens one from its end.
+    Ridge,
+    /// Two clicks: from the end of one crest to the end of another.
+    Join,
+    /// One click: where a crest is cut in two.
+    Cut,
+    /// One click: a traced line that is no crest.
+    Reject,
+    /// One click: a traced line that was looked at and stands.
+    Accept,
+    /// Corners of ground that is no bedform.
+    Mask,
 }
 
 /// An outline under way.
@@ -160,6 +178,7 @@ pub enum Purpose {
     OpenRaster,
     ImportWinds,
     BringPatches,
+    ImportCrests,
     ExportPlate,
     /// A folder for everything.
     HandOver,
@@ -179,6 +198,7 @@ impl Purpose {
             Self::OpenRaster => "Open raster",
             Self::ImportWinds => "Import winds",
             Self::BringPatches => "Bring in patches",
+            Self::ImportCrests => "Import crests",
             Self::ExportPlate => "Export plate",
             Self::HandOver => "Hand everything over",
         }
@@ -190,6 +210,9 @@ impl Purpose {
             Self::SaveSheet => "The sheet is written as NAME.sheet.json; rasters stay where they are.",
             Self::ImportWinds => "A time series (CSV or blanks) or a table of sectors and speed classes.",
             Self::BringPatches => "GeoPackage, or GeoJSON whose \"frame\" says what its numbers are.",
+            Self::ImportCrests => {
+                "Lines of a GeoPackage, or of GeoJSON whose \"frame\" says what its numbers are."
+            }
             Self::ExportPlate => "The ending is that of the chosen format when left out.",
             Self::HandOver => "A folder; files of the same names in it are replaced.",
             Self::OpenRaster => "GeoTIFF, TIFF, PNG or JPEG; a world file beside it is read too.",
@@ -200,7 +223,7 @@ impl Purpose {
     pub fn verb(self) -> &'static str {
         match self {
             Self::OpenSheet | Self::OpenRaster | Self::BringPatches => "Open",
-            Self::ImportWinds => "Read",
+            Self::ImportWinds | Self::ImportCrests => "Read",
             Self::SaveSheet => "Save",
             Self::ExportPlate | Self::HandOver => "Write",
         }
@@ -220,6 +243,7 @@ impl Purpose {
         match self {
             Self::OpenSheet | Self::SaveSheet => &[("Sheets", &["json"])],
             Self::BringPatches => &[("Outlines", &["gpkg", "geojson", "json"])],
+            Self::ImportCrests => &[("Lines", &["gpkg", "geojson", "json"])],
             Self::ExportPlate => &[("Figures", &["svg", "png", "pdf"])],
             Self::HandOver => &[],
             Self::ImportWinds => &[("Tables", &["csv", "txt", "dat", "tsv"]), ("All files", &["*"])],
@@ -236,6 +260,8 @@ impl Session {
         self.measuring = None;
         self.stopped_at = None;
         self.charts_stopped_at = None;
+        self.recovering = Recovering::default();
+        self.comparing = Comparing::default();
     }
 
     /// Measures nothing more until the sheet changes or the user asks.
@@ -291,6 +317,8 @@ impl Session {
             stopped_at: None,
             charting: Vec::new(),
             charts_stopped_at: None,
+            recovering: Recovering::default(),
+            comparing: Comparing::default(),
             measures: true,
             preview: Preview::default(),
             import: None,
@@ -332,6 +360,9 @@ impl Tool {
     /// For networks from elevation, and for those on images.
     pub const DRAINAGE: [Self; 2] = [Self::Outlet, Self::Lake];
     pub const CHANNELS: [Self; 3] = [Self::Pen, Self::Strike, Self::Arrow];
+    /// For the crests of the selected patch.
+    pub const CRESTS: [Self; 6] =
+        [Self::Ridge, Self::Join, Self::Cut, Self::Reject, Self::Accept, Self::Mask];
 
     /// Whether the tool lays down points.
     pub fn draws(self) -> bool {
@@ -345,7 +376,12 @@ impl Tool {
 
     /// Whether each point does something by itself.
     pub fn takes_one(self) -> bool {
-        matches!(self, Self::Outlet | Self::Strike)
+        matches!(self, Self::Outlet | Self::Strike | Self::Cut | Self::Reject | Self::Accept)
+    }
+
+    /// Whether the pen finds the way between its points.
+    pub fn traces(self) -> bool {
+        matches!(self, Self::Pen | Self::Ridge | Self::Join)
     }
 }
 

@@ -49,7 +49,9 @@ pub enum Page {
     Ground,
     #[default]
     Trend,
+    Light,
     Spacing,
+    Crests,
     Winds,
     Verdict,
     Regimes,
@@ -72,6 +74,10 @@ pub struct Camera {
 #[serde(default)]
 pub struct Layers {
     pub strokes: bool,
+    /// The trend as a flow texture, in place of strokes.
+    pub flow: bool,
+    /// Crest lines.
+    pub crests: bool,
     pub outlines: bool,
     pub names: bool,
     pub graticule: bool,
@@ -86,6 +92,8 @@ impl Default for Layers {
     fn default() -> Self {
         Self {
             strokes: true,
+            flow: false,
+            crests: true,
             outlines: true,
             names: true,
             graticule: true,
@@ -136,10 +144,12 @@ impl Theme {
 }
 
 impl Page {
-    pub const ALL: [Self; 9] = [
+    pub const ALL: [Self; 11] = [
         Self::Ground,
         Self::Trend,
+        Self::Light,
         Self::Spacing,
+        Self::Crests,
         Self::Winds,
         Self::Verdict,
         Self::Regimes,
@@ -152,7 +162,9 @@ impl Page {
         match self {
             Self::Ground => "Ground",
             Self::Trend => "Trend",
+            Self::Light => "Light",
             Self::Spacing => "Spacing",
+            Self::Crests => "Crests",
             Self::Winds => "Winds",
             Self::Verdict => "Verdict",
             Self::Obstacles => "Obstacles",

@@ -6,12 +6,12 @@ use std::sync::{Arc, Mutex};
 /// Handed to every long kernel as an ordinary parameter; clones share one state.
 #[derive(Clone, Debug, Default)]
 pub struct Work {
+    stop: Arc<AtomicBool>,
     shared: Arc<Shared>,
 }
 
 #[derive(Debug, Default)]
 struct Shared {
-    stop: AtomicBool,
     done: AtomicU64,
     total: AtomicU64,
     phase: Mutex<String>,
@@ -37,6 +37,12 @@ impl Work {
         Self::default()
     }
 
+    /// A part of this work: it stops with it, but its phases and steps are its own, so that many parts at once
+    /// do not talk over each other.
+    pub fn part(&self) -> Self {
+        Self { stop: Arc::clone(&self.stop), shared: Arc::default() }
+    }
+
     /// Begins a phase of `total` steps (0 = unknown).
     pub fn phase(&self, name: &str, total: u64) {
         let mut phase = self.shared.phase.lock().unwrap_or_else(|poisoned| poisoned.into_inner());
@@ -56,11 +62,11 @@ impl Work {
 
     /// Asks the work to stop.
     pub fn stop(&self) {
-        self.shared.stop.store(true, Ordering::Relaxed);
+        self.stop.store(true, Ordering::Relaxed);
     }
 
     pub fn is_stopped(&self) -> bool {
-        self.shared.stop.load(Ordering::Relaxed)
+        self.stop.load(Ordering::Relaxed)
     }
 
     pub fn progress(&self) -> Progress {

@@ -60,6 +60,13 @@ pub struct Measure {
     /// valid raster is one patch when absent.
     #[arg(long, value_name = "FILE")]
     pub patches: Option<PathBuf>,
+    /// Crest lines of your own as GeoPackage or GeoJSON line strings ("frame" as for patches), beside those that are
+    /// traced in each patch.
+    #[arg(long, value_name = "FILE")]
+    pub crests: Option<PathBuf>,
+    /// Only the lines of --crests count: nothing is traced.
+    #[arg(long, requires = "crests")]
+    pub crests_only: bool,
     /// A wind record: a text table as time series, or sectors by speed classes.
     #[arg(long, value_name = "FILE")]
     pub winds: Option<PathBuf>,

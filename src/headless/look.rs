@@ -4,7 +4,7 @@ use std::path::Path;
 
 use serde_json::json;
 
-use crate::files::raster::{Limits, Raster};
+use crate::files::raster::{Light, Limits, Raster};
 use crate::ground::Point;
 use crate::study::Placement;
 use crate::study::sources::{OpenRaster, place_raster};
@@ -51,6 +51,12 @@ fn print_words(open: &OpenRaster) {
     let mut missing: Vec<String> = info.nodata.iter().map(|v| format!("nodata {v}")).collect();
     missing.extend(info.alpha.then(|| "opacity band".into()));
     missing.extend(info.mask.then(|| "mask".into()));
+    if let Some(from) = info.light.and_then(Light::from) {
+        line(
+            "light",
+            format!("from {:.1}° by a tag; measure takes it unless --light-from says otherwise", from.deg()),
+        );
+    }
     line("missing", if missing.is_empty() { "nothing marked".into() } else { missing.join(", ") });
     line("place", open.label.clone());
     for (i, text) in open.place.description(centre(open)).lines().enumerate() {

@@ -3,10 +3,11 @@
 use std::path::{Path, PathBuf};
 
 use crate::files::layers::read_patches;
-use crate::files::raster::{Bands, Limits, Raster};
+use crate::files::raster::{Bands, Light, Limits, Raster};
 use crate::files::text;
 use crate::files::wind_table::{self, WindImport};
 use crate::ground::{Azimuth, Body, LonLat, Polygon};
+use crate::study::crest_edits::{crest_lines, strokes_in};
 use crate::study::sheet_file::SheetFile;
 use crate::study::sources::{OpenRaster, place_raster};
 use crate::study::{Id, ImageKind, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
@@ -35,6 +36,7 @@ pub fn measure(options: &Measure) -> Result<Outcome, Trouble> {
     if band == 0 || band > bands {
         return Err(wrong(format!("--band {band}: the file has bands 1 to {bands}")));
     }
+    let by_tag = open.raster.info().light.and_then(Light::from);
     let name = path.file_stem().map_or("raster".into(), |n| n.to_string_lossy().into_owned());
     let mut sheet = Sheet::empty(name.clone());
     sheet.rasters.push(RasterEntry {
@@ -45,11 +47,14 @@ pub fn measure(options: &Measure) -> Result<Outcome, Trouble> {
         kind: if options.radar { ImageKind::Radar } else { ImageKind::Optical },
         placement,
         tone: Tone::default(),
-        light_from: options.light_from.map(Azimuth::from_deg),
+        light_from: options.light_from.map(Azimuth::from_deg).or(by_tag),
     });
     for (name, outline, tags) in patches(options, &open)? {
         let id = sheet.fresh_id();
         sheet.patches.push(Patch { tags, ..Patch::new(id, name, Id(1), outline) });
+    }
+    if let Some(file) = &options.crests {
+        crests(file, options.crests_only, &open, &mut sheet.patches)?;
     }
     if let Some(file) = &options.winds {
         let centres: Vec<LonLat> =
@@ -90,6 +95,27 @@ fn patches(options: &Measure, open: &OpenRaster) -> Result<Vec<(String, Polygon,
         eprintln!("patches: {note}");
     }
     Ok(read.shapes.into_iter().map(|s| (s.name, s.outline, s.tags)).collect())
+}
+
+/// Lines of a file laid into every patch they touch; what they gave is told.
+fn crests(file: &Path, only: bool, open: &OpenRaster, patches: &mut [Patch]) -> Result<(), Trouble> {
+    let read = crest_lines(file, open).map_err(|e| {
+        Trouble::new(
+            format!("{} gives no crests", file.display()),
+            e,
+            "Crests are GeoPackage or GeoJSON line strings; \"frame\" says whether numbers are lonlat, map or pixel.",
+        )
+    })?;
+    for note in &read.notes {
+        eprintln!("crests: {note}");
+    }
+    for patch in patches {
+        let (strokes, _) = strokes_in(&read, patch);
+        eprintln!("crests: {} laid into {}", strokes.len(), patch.name);
+        patch.crests.strokes = strokes;
+        patch.crests.drawn_only = only;
+    }
+    Ok(())
 }
 
 /// Wind records read as guessed, of many stations or cells the nearest to each patch; the guess is told, so

@@ -2,6 +2,7 @@
 
 use std::path::Path;
 
+use crate::plate::crest_sentence;
 use crate::study::check::problems;
 use crate::study::run::{Memo, run as run_study};
 use crate::study::{Findings, Sheet, Sources};
@@ -69,6 +70,12 @@ fn print(findings: &Findings) {
     }
     for patch in &findings.patches {
         println!("{}", patch.sentence);
+        if patch.crests.is_ok() {
+            println!("  {}", crest_sentence(patch));
+        }
+        for recovery in findings.recoveries.iter().filter(|r| r.patch == patch.id) {
+            println!("  {}", recovery.sentence);
+        }
         for caution in patch.cautions.iter().chain(patch.verdicts.iter().flat_map(|v| &v.cautions)) {
             println!("  caution: {} [{}]", caution.text, caution.code);
         }
@@ -83,6 +90,12 @@ fn print(findings: &Findings) {
             );
         }
         for caution in &network.cautions {
+            println!("  caution: {} [{}]", caution.text, caution.code);
+        }
+    }
+    for comparison in &findings.comparisons {
+        println!("{}", comparison.sentence);
+        for caution in &comparison.cautions {
             println!("  caution: {} [{}]", caution.text, caution.code);
         }
     }

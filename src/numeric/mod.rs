@@ -1,5 +1,6 @@
 //! Mathematics without meaning: special functions, tails of distributions, sums in a fixed order,
-//! quantiles, roots and maxima, kernels, transforms, small matrices, distances and thinning of masks.
+//! quantiles, roots and maxima, kernels, transforms, small matrices, distances and thinning of masks, streaks
+//! along axes.
 
 pub mod bessel;
 pub mod distance;
@@ -11,13 +12,16 @@ pub mod gauss;
 pub mod harmonics;
 pub mod huber;
 pub mod lattice;
+pub mod least_path;
 pub mod maximum;
 pub mod quantile;
 pub mod resample;
 pub mod root;
 pub mod separable;
 pub mod shift;
+pub mod streaks;
 pub mod sum;
 pub mod tail;
 pub mod taper;
 pub mod thin;
+pub mod transform;

@@ -44,6 +44,18 @@ pub fn across_rows(kernel: &Kernel, rows: &[&[f32]], out: &mut [f32]) {
 /// # Errors
 /// [`Stopped`].
 pub fn smooth_valid(grid: &Grid<f32>, sigma: [f64; 2], work: &Work) -> Result<Grid<f32>, Stopped> {
+    Ok(smooth_supported(grid, sigma, work)?.0)
+}
+
+/// The same with Σ G over the valid cells at each cell: 1 where the whole kernel falls on valid ground.
+///
+/// # Errors
+/// [`Stopped`].
+pub fn smooth_supported(
+    grid: &Grid<f32>,
+    sigma: [f64; 2],
+    work: &Work,
+) -> Result<(Grid<f32>, Grid<f32>), Stopped> {
     let (width, height) = (grid.width(), grid.height());
     let weight = Grid::from_fn(width, height, |c, r| if grid.is_valid(c, r) { 1.0 } else { 0.0f32 });
     let filled = Grid::from_fn(width, height, |c, r| grid.get(c, r).unwrap_or(0.0));
@@ -52,7 +64,7 @@ pub fn smooth_valid(grid: &Grid<f32>, sigma: [f64; 2], work: &Work) -> Result<Gr
     let share = zero_padded(&weight, &kernels, work)?;
     let valid: Vec<bool> = share.values().iter().map(|w| *w > 1e-6).collect();
     let values = sum.values().iter().zip(share.values()).map(|(s, w)| if *w > 1e-6 { s / w } else { 0.0 });
-    Ok(Grid::from_parts(width, height, values.collect(), Some(valid)))
+    Ok((Grid::from_parts(width, height, values.collect(), Some(valid)), share))
 }
 
 /// Both passes with zeros outside the grid.

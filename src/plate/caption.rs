@@ -2,11 +2,12 @@
 //! reproduces it.
 
 use crate::ground::{Caution, Method, ReachOrigin, Read, Source};
+use crate::science::crest::CrestOrigin;
 use crate::science::drainage::condition::Conditioning;
 use crate::science::drainage::heads::HeadRule;
 use crate::science::drainage::routing::Router;
-use crate::science::{channel, drainage, network};
-use crate::study::{NetworkFinding, PatchFinding, WindFinding};
+use crate::science::{channel, crest, drainage, network};
+use crate::study::{CrestsFinding, NetworkFinding, PatchFinding, WindFinding};
 
 /// What made a plate.
 #[derive(Clone, Debug, PartialEq)]
@@ -28,6 +29,13 @@ const SPECTRUM: &[&str] = &["orientation.spectrum"];
 const WINDS: &[&str] = &["wind.log-law", "wind.transport-law", "wind.resultant-drift"];
 const OBSTACLES: &[&str] = &["obstacle.potential-flow", "obstacle.obliquity", "obstacle.virtual"];
 const SEVERAL_OBSTACLES: &str = "obstacle.combined";
+const SCALES: &[&str] = &["orientation.scale-sweep", "orientation.plateau"];
+const POPULATIONS: &[&str] = &["orientation.populations", "orientation.band"];
+const LIGHT: &str = "orientation.look-bias";
+/// Injection and recovery.
+pub(super) const RECOVERY: &[&str] = &["scene.bedforms", "scene.texture"];
+/// Two pictures of one ground, beside the tests that were made.
+pub(super) const COMPARISON: &[&str] = &["axial.two-samples", "axial.paired", "crest.shift"];
 const VERDICT: &[&str] = &["alignment.obliquity", "alignment.bayes-factor"];
 
 /// Where sand moves, people may be in its way.
@@ -44,9 +52,17 @@ pub(super) fn methods_of(patch: &PatchFinding) -> Vec<&'static str> {
     if patch.trend.modes.len() > 1 {
         keys.push(MIXTURE);
     }
+    if !patch.pattern.scales.is_empty() {
+        keys.extend(SCALES);
+    }
+    if !patch.pattern.populations.is_empty() {
+        keys.extend(POPULATIONS);
+    }
+    keys.extend(patch.pattern.light.is_some().then_some(LIGHT));
     if patch.spectrum.windows > 0 {
         keys.extend(SPECTRUM);
     }
+    keys.extend(methods_of_crests(patch));
     if !patch.verdicts.is_empty() {
         keys.extend(WINDS);
         keys.extend(VERDICT);
@@ -64,6 +80,23 @@ pub(super) fn methods_of(patch: &PatchFinding) -> Vec<&'static str> {
         keys.extend(found.combined.is_some().then_some(SEVERAL_OBSTACLES));
     }
     keys
+}
+
+/// The keys of the methods the crests of a patch rest on; none where none were traced.
+pub(super) fn methods_of_crests(patch: &PatchFinding) -> Vec<&'static str> {
+    let Ok(found) = &patch.crests else { return Vec::new() };
+    crest::METHODS.iter().map(|m| m.id).filter(|id| serves_crests(found, id)).collect()
+}
+
+/// Whether a method of crests had a part in the finding; one that is not listed always has.
+fn serves_crests(found: &CrestsFinding, id: &str) -> bool {
+    let by_hand = |l: &crest::CrestLine| matches!(l.origin, CrestOrigin::Edited | CrestOrigin::Drawn);
+    match id {
+        "crest.pen" | "crest.editing" => found.lines.iter().any(by_hand),
+        "crest.fork-polarity" => found.forks.is_some(),
+        "crest.shift" => false,
+        _ => true,
+    }
 }
 
 /// The keys of the methods a network's results rest on: those of its source, then the measures.
@@ -176,7 +209,11 @@ pub(super) fn cautions(patch: &PatchFinding, winds: &[WindFinding]) -> Vec<Cauti
         winds.iter().filter(|w| patch.verdicts.iter().any(|v| v.winds == w.id)).flat_map(|w| &w.cautions);
     let mut all: Vec<Caution> = Vec::new();
     let of_outcrops = patch.obstacles.iter().flat_map(|o| &o.cautions);
-    for caution in patch.cautions.iter().chain(of_verdicts).chain(of_winds).chain(of_outcrops) {
+    let of_crests = patch.crests.iter().flat_map(|c| &c.cautions);
+    let of_populations = patch.pattern.populations.iter().flat_map(|p| &p.cautions);
+    let of_pattern = of_crests.chain(of_populations);
+    let of_findings = of_verdicts.chain(of_winds).chain(of_outcrops).chain(of_pattern);
+    for caution in patch.cautions.iter().chain(of_findings) {
         if !all.iter().any(|c| c.text == caution.text) {
             all.push(caution.clone());
         }
@@ -246,9 +283,18 @@ mod tests {
     #[test]
     fn every_method_a_caption_may_cite_is_known() {
         let known = crate::science::methods();
-        let keys =
-            [TREND, INTERVAL, &[BOOTSTRAP, MIXTURE, SEVERAL_OBSTACLES], SPECTRUM, WINDS, VERDICT, OBSTACLES]
-                .concat();
+        let keys = [
+            TREND,
+            INTERVAL,
+            &[BOOTSTRAP, MIXTURE, SEVERAL_OBSTACLES, LIGHT],
+            SPECTRUM,
+            WINDS,
+            VERDICT,
+            OBSTACLES,
+            SCALES,
+            POPULATIONS,
+        ]
+        .concat();
         for key in keys {
             assert!(known.iter().any(|m| m.id == key), "{key}");
         }

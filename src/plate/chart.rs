@@ -206,7 +206,7 @@ impl Chart {
             let at = self.x.at(*value);
             sketch.line(Point::new(at, bottom), Point::new(at, bottom + 0.9), rule);
             let half = 0.5 * font::text_width(label, look.size_mm, false);
-            if at - half > free && at + half < bottom_right.x + RIGHT_MM + 0.2 {
+            if at - half > free && at + half < bottom_right.x + RIGHT_MM + 0.4 {
                 let base = Point::new(at, bottom + 1.3 + look.size_mm);
                 sketch.text(base, label.as_str(), look.anchored(TextAnchor::Middle));
                 free = at + half + 1.0;

@@ -3,14 +3,14 @@
 use crate::ground::{Bounds, Network, Point, Polygon, Work};
 use crate::study::glance::{Glance, glance};
 use crate::study::{
-    Findings, Id, NetworkFinding, OpenRaster, PatchFinding, RasterEntry, Sheet, Sources, WindFinding,
-    fingerprint, run,
+    Findings, Id, NetworkFinding, OpenRaster, PatchFinding, RasterEntry, Sheet, Sources, fingerprint, run,
 };
 
-use super::map::{MapNetwork, MapPatch, MapView, surroundings, toned};
+use super::map::{FlowField, MapNetwork, MapPatch, MapView, Picture};
+use super::map::{close_up, flow, overlaid, surroundings, toned};
 use super::network_plate::bare;
-use super::{Figure, NetworkPlate, OverviewPlate, PatchPlate, PngSize, Recipe, Theme};
-use super::{network_plate, overview_plate, patch_plate, pdf, png, svg};
+use super::{CrestPlate, Figure, NetworkPlate, OverviewPlate, PatchPlate, PngSize, Recipe, Theme};
+use super::{crest_plate, network_plate, overview_plate, patch_plate, pdf, png, svg};
 
 /// Cells a side of the picture on a plate: 300 dpi over half a page and some.
 const LONGEST: usize = 1400;
@@ -30,6 +30,18 @@ pub fn recipe(sheet: &Sheet) -> Recipe {
     }
 }
 
+/// Texels a side of the picture under a flow texture: ten a millimetre over half a page and some.
+const FLOW_TEXELS: usize = 1200;
+
+/// How a patch plate is printed.
+#[derive(Clone, Copy, Debug)]
+pub struct Print<'a> {
+    pub width_mm: f64,
+    pub theme: &'a Theme,
+    /// The trend as a flow texture in place of strokes.
+    pub flow: bool,
+}
+
 /// The plate of one patch.
 ///
 /// # Errors
@@ -38,9 +50,8 @@ pub fn of_patch(
     sheet: &Sheet,
     sources: &Sources,
     finding: &PatchFinding,
-    winds: &[WindFinding],
-    width_mm: f64,
-    theme: &Theme,
+    findings: &Findings,
+    print: &Print,
     work: &Work,
 ) -> Result<Figure, String> {
     let (entry, open) = raster_of(sheet, sources, finding.raster)?;
@@ -48,19 +59,76 @@ pub fn of_patch(
     let info = open.raster.info();
     let bounds = surroundings(&patch.outline, [info.width as f64, info.height as f64]);
     let Glance { grid, covers } = glance(entry, open, bounds, LONGEST, work)?;
-    let picture = toned(&grid, &entry.tone);
+    let bare = toned(&grid, &entry.tone);
+    let picture = if print.flow {
+        let field = FlowField::of(&finding.trend, &patch.outline, &open.place);
+        &with_flow(&bare, &field, covers, print.theme, work)?
+    } else {
+        &bare
+    };
     let others = sheet.patches.iter().filter(|p| p.raster == finding.raster && p.id != finding.id);
     let plate = PatchPlate {
         patch: finding,
         outline: &patch.outline,
         neighbours: others.map(|p| (p.name.as_str(), &p.outline)).collect(),
         raster: &run::raster(entry, open),
-        view: MapView { picture: &picture, covers, place: &open.place },
-        winds,
+        view: MapView { picture, covers, place: &open.place },
+        bare: &bare,
+        winds: &findings.winds,
         recipe: &recipe(sheet),
+        masks: &patch.crests.masks,
+        crests: &sheet.settings.crest,
+        recovery: findings.recoveries.iter().find(|r| r.patch == finding.id),
+        comparisons: &findings.comparisons,
         annulus: [sheet.settings.obstacle.inner_radii, sheet.settings.obstacle.outer_radii],
+        flow: print.flow,
     };
-    Ok(patch_plate(&plate, width_mm, theme))
+    Ok(patch_plate(&plate, print.width_mm, print.theme))
+}
+
+/// The raster with the trend drawn over it as a flow texture, fine enough for print.
+fn with_flow(
+    picture: &Picture,
+    field: &FlowField,
+    covers: Bounds,
+    theme: &Theme,
+    work: &Work,
+) -> Result<Picture, String> {
+    let longer = covers.width().max(covers.height()).max(f64::MIN_POSITIVE);
+    let texels = |side: f64| ((FLOW_TEXELS as f64 * side / longer).round() as usize).max(1);
+    let size = [texels(covers.width()), texels(covers.height())];
+    let texture = flow(field, covers, size, theme, work).map_err(|stopped| stopped.to_string())?;
+    Ok(overlaid(picture, &texture))
+}
+
+/// The plate of the crests of one patch.
+///
+/// # Errors
+/// As [`of_patch`].
+pub fn of_crests(
+    sheet: &Sheet,
+    sources: &Sources,
+    finding: &PatchFinding,
+    width_mm: f64,
+    theme: &Theme,
+    work: &Work,
+) -> Result<Figure, String> {
+    let (entry, open) = raster_of(sheet, sources, finding.raster)?;
+    let patch = sheet.patch(finding.id).ok_or("the sheet no longer has this patch")?;
+    let info = open.raster.info();
+    let bounds = close_up(&patch.outline, [info.width as f64, info.height as f64]);
+    let Glance { grid, covers } = glance(entry, open, bounds, LONGEST, work)?;
+    let picture = toned(&grid, &entry.tone);
+    let plate = CrestPlate {
+        patch: finding,
+        outline: &patch.outline,
+        masks: &patch.crests.masks,
+        settings: &sheet.settings.crest,
+        raster: &run::raster(entry, open),
+        view: MapView { picture: &picture, covers, place: &open.place },
+        recipe: &recipe(sheet),
+    };
+    Ok(crest_plate(&plate, width_mm, theme))
 }
 
 /// The plate of one channel network.
@@ -175,8 +243,8 @@ pub fn overview(
     Ok(overview_plate(&plate, width_mm, theme))
 }
 
-/// Every plate of a study as files: name and bytes. One a patch, one a network and one a raster that has
-/// either, each as SVG and as PDF.
+/// Every plate of a study as files: name and bytes. One a patch and one of its crests, one a network and one a
+/// raster that has either, each as SVG and as PDF.
 ///
 /// # Errors
 /// As [`of_patch`], and when a figure cannot be written, naming the plate.
@@ -187,10 +255,15 @@ pub fn all(
     work: &Work,
 ) -> Result<Vec<(String, Vec<u8>)>, String> {
     let theme = Theme::print();
+    let print = Print { width_mm: WIDTH_MM, theme: &theme, flow: false };
     let mut figures = Vec::new();
     for patch in &findings.patches {
-        let figure = of_patch(sheet, sources, patch, &findings.winds, WIDTH_MM, &theme, work)?;
+        let figure = of_patch(sheet, sources, patch, findings, &print, work)?;
         figures.push((format!("patch-{}-{}", patch.id.0, file_stem(&patch.name)), figure));
+        if patch.crests.as_ref().is_ok_and(|c| !c.lines.is_empty()) {
+            let figure = of_crests(sheet, sources, patch, WIDTH_MM, &theme, work)?;
+            figures.push((format!("crests-{}-{}", patch.id.0, file_stem(&patch.name)), figure));
+        }
     }
     for network in &findings.networks {
         let figure = of_network(sheet, sources, network, findings, WIDTH_MM, &theme, work)?;

@@ -7,6 +7,7 @@ mod channels;
 mod chart;
 pub mod compose;
 mod contour;
+mod crest_plate;
 mod dial;
 mod drift_calendar;
 mod figure;
@@ -21,6 +22,7 @@ mod obstacle;
 mod overview_plate;
 mod page;
 mod patch_plate;
+mod pattern;
 mod profile;
 mod regime_map;
 mod rose;
@@ -28,6 +30,7 @@ mod sand_rose;
 mod sketch;
 mod spectrum;
 mod theme;
+mod words;
 mod write;
 
 pub use bars::{posterior_bars, verdict_bar};
@@ -37,6 +40,7 @@ pub use channels::{
     network_compare, network_numbers, order_plot, pattern_bars, planform_sketch, slope_area, threshold_maps,
     width_plot,
 };
+pub use crest_plate::{CrestPlate, crest_plate, crest_sentence, crests_on_map};
 pub use dial::{CLASS_LIMITS_DEG, CLASS_NAMES, dial};
 pub use drift_calendar::drift_calendar;
 pub use figure::{Figure, Fill, HALO, Item, Rgba, Stroke, TextAnchor};
@@ -47,9 +51,13 @@ pub use network_plate::{NetworkPlate, network_plate};
 pub use obstacle::{obstacle, obstacles_together};
 pub use overview_plate::{OverviewPlate, overview_plate};
 pub use patch_plate::{PatchPlate, patch_plate};
+pub use pattern::{
+    comparison_figure, crest_lengths, crest_numbers, crest_rose, defect_diagram, light_numbers,
+    populations_figure, recovery_curve, recovery_ring, scale_sweep, spacing_survival,
+};
 pub use profile::profile;
 pub use regime_map::{MapPoint, regime_at, regime_map};
-pub use rose::{rose, small_rose};
+pub use rose::{rose, small_rose, small_rose_of_populations};
 pub use sand_rose::sand_rose;
 pub use spectrum::spectrum;
 pub use theme::{TextSizes, Theme, Widths};

@@ -7,8 +7,9 @@ use crate::science::network::pattern::PATTERN_NAMES;
 use crate::study::{Findings, Id, NetworkFinding, PatchFinding, RasterFinding};
 
 use super::caption::{self, Recipe};
+use super::crest_plate::crests_on_map;
 use super::dial::CLASS_NAMES;
-use super::map::{MapNetwork, MapPatch, MapView, map, network_key};
+use super::map::{MapCrests, MapLayers, MapNetwork, MapPatch, MapView, crest_key, map_of, network_key};
 use super::page::Page;
 use super::rose::NO_TREND;
 use super::sketch::{Sketch, Type};
@@ -41,12 +42,20 @@ pub fn overview_plate(plate: &OverviewPlate, width_mm: f64, theme: &Theme) -> Fi
             Some(MapPatch { name, outline, nodes: &[], rose, is_subject: true })
         })
         .collect();
-    let picture = map(&plate.view, &marks, &plate.networks, [page.room(), 0.85 * page.room()], theme);
+    let crests: Vec<MapCrests> = patches.iter().map(|patch| crests_on_map(patch, &[])).collect();
+    let layers = MapLayers { patches: &marks, networks: &plate.networks, crests: &crests };
+    let size = [page.room(), 0.85 * page.room()];
+    let picture = map_of(&plate.view, &layers, size, theme);
     let inset = 0.5 * (page.room() - picture.width_mm);
     page.put(&picture, inset, page.y);
     page.space(picture.height_mm + 3.0);
     if !plate.networks.is_empty() {
-        let key = network_key(&plate.view, &plate.networks, [page.room(), 0.85 * page.room()], theme);
+        let key = network_key(&plate.view, &plate.networks, size, theme);
+        page.put(&key, 0.0, page.y - 1.0);
+        page.space(key.height_mm + 2.0);
+    }
+    let key = crest_key(&plate.view, &crests, size, theme);
+    if key.height_mm > 0.0 {
         page.put(&key, 0.0, page.y - 1.0);
         page.space(key.height_mm + 2.0);
     }

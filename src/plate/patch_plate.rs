@@ -3,15 +3,19 @@
 
 use crate::ground::{LengthUnit, Polygon};
 use crate::science;
-use crate::study::{ObstacleFinding, PatchFinding, RasterFinding, WindFinding};
+use crate::study::{
+    ComparisonFinding, CrestSettings, ObstacleFinding, PatchFinding, RasterFinding, RecoveryFinding,
+    WindFinding,
+};
 
 use super::caption::{self, Recipe};
+use super::crest_plate::{crest_map, crests_on_map, tracing_note};
 use super::dial::{class_bars, dial_face};
-use super::map::{MapPatch, MapView, map};
+use super::map::{MapPatch, MapView, Picture, map};
 use super::page::{Block, GAP_MM, Page};
 use super::sketch::Type;
 use super::{
-    Figure, Theme, bars, drift_calendar, flips, modes, numbers, obstacle, profile, regime_map, rose,
+    Figure, Theme, bars, drift_calendar, flips, modes, numbers, obstacle, pattern, profile, regime_map, rose,
     sand_rose, spectrum,
 };
 
@@ -25,11 +29,23 @@ pub struct PatchPlate<'a> {
     pub neighbours: Vec<(&'a str, &'a Polygon)>,
     pub raster: &'a RasterFinding,
     pub view: MapView<'a>,
+    /// The raster alone where the view's picture carries a flow texture: what lies under the map of crests.
+    pub bare: &'a Picture,
     /// The records its verdicts name; others are left out.
     pub winds: &'a [WindFinding],
     pub recipe: &'a Recipe,
+    /// Ground of the patch that the user said is no bedform.
+    pub masks: &'a [Polygon],
+    /// How crests were looked for.
+    pub crests: &'a CrestSettings,
+    /// What synthetic bedforms laid into it say.
+    pub recovery: Option<&'a RecoveryFinding>,
+    /// Those that hold it against other pictures; others are left out.
+    pub comparisons: &'a [ComparisonFinding],
     /// Inner and outer radii of the ground looked at round outcrops.
     pub annulus: [f64; 2],
+    /// The trend is in the picture already, as a flow texture: no strokes.
+    pub flow: bool,
 }
 
 /// Columns are about this wide, millimetres.
@@ -47,7 +63,11 @@ pub fn patch_plate(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Figure {
     let column = (page.room() - (columns - 1) as f64 * GAP_MM) / columns as f64;
     let wide = 2.0 * column + GAP_MM;
     let top = page.y;
-    let trend = Block { heading: "Trend".into(), figure: rose(&patch.trend, column, theme) };
+    let figure = match plate.recovery {
+        Some(recovery) => pattern::recovery_ring(recovery, &patch.trend, column, theme),
+        None => rose(&patch.trend, column, theme),
+    };
+    let trend = Block { heading: "Trend".into(), figure };
     let picture = patch_map(plate, [wide, 1.05 * wide], theme);
     page.put(&picture, 0.5 * (wide - picture.width_mm), top + 0.6);
     let below = top + picture.height_mm + 0.7 * GAP_MM;
@@ -56,13 +76,25 @@ pub fn patch_plate(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Figure {
     page.columns(&[trend], column, &mut tops);
     page.columns(&evidence(plate, column, theme), column, &mut tops);
 
-    let cautions = caption::cautions(patch, plate.winds);
+    let mut cautions = caption::cautions(patch, plate.winds);
+    let compared = plate.comparisons.iter().filter(|c| c.patch == patch.id).flat_map(|c| &c.cautions);
+    for caution in plate.recovery.iter().flat_map(|r| &r.cautions).chain(compared) {
+        if !cautions.iter().any(|c| c.text == caution.text) {
+            cautions.push(caution.clone());
+        }
+    }
     if !cautions.is_empty() {
         let head = page.heading("Cautions", 0.0, page.y, page.room());
         page.space(head);
         page.cautions(&cautions);
     }
     page.finish(&notes(plate), plate.recipe, Some(&patch.fingerprint))
+}
+
+/// The patch alone, without strokes.
+fn subject<'a>(plate: &'a PatchPlate) -> MapPatch<'a> {
+    let name = &plate.patch.name;
+    MapPatch { name, outline: plate.outline, nodes: &[], rose: None, is_subject: true }
 }
 
 fn patch_map(plate: &PatchPlate, size_mm: [f64; 2], theme: &Theme) -> Figure {
@@ -73,13 +105,8 @@ fn patch_map(plate: &PatchPlate, size_mm: [f64; 2], theme: &Theme) -> Figure {
         rose: None,
         is_subject: false,
     });
-    let subject = MapPatch {
-        name: &plate.patch.name,
-        outline: plate.outline,
-        nodes: &plate.patch.trend.nodes,
-        rose: None,
-        is_subject: true,
-    };
+    let nodes: &[_] = if plate.flow { &[] } else { &plate.patch.trend.nodes };
+    let subject = MapPatch { nodes, ..subject(plate) };
     let patches: Vec<MapPatch> = neighbours.chain([subject]).collect();
     map(&plate.view, &patches, &[], size_mm, theme)
 }
@@ -88,8 +115,16 @@ fn patch_map(plate: &PatchPlate, size_mm: [f64; 2], theme: &Theme) -> Figure {
 fn evidence(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
     let patch = plate.patch;
     let block = |heading: String, figure: Figure| Block { heading, figure };
-    let mut blocks = Vec::new();
-    if patch.trend.modes.len() > 1 {
+    let mut blocks = seen(plate, width_mm, theme);
+    let pattern = &patch.pattern;
+    if !pattern.scales.is_empty() {
+        let figure = pattern::scale_sweep(pattern, patch.unit, width_mm, theme);
+        blocks.push(block("Trend by scale".into(), figure));
+    }
+    if !pattern.populations.is_empty() {
+        let figure = pattern::populations_figure(pattern, patch.unit, width_mm, theme);
+        blocks.push(block("Populations".into(), figure));
+    } else if patch.trend.modes.len() > 1 {
         blocks.push(block("Several trends".into(), modes(&patch.trend, width_mm, theme)));
     }
     if patch.spectrum.windows > 0 {
@@ -97,6 +132,7 @@ fn evidence(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
         let figure = profile(&patch.spectrum, patch.unit, width_mm, theme);
         blocks.push(block("Power across the crests".into(), figure));
     }
+    blocks.extend(crests(plate, width_mm, theme));
     for verdict in &patch.verdicts {
         let winds = plate.winds.iter().find(|w| w.id == verdict.winds);
         if let Some(winds) = winds {
@@ -126,7 +162,45 @@ fn evidence(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
         blocks.push(block("Two winds that would make it".into(), figure));
     }
     blocks.extend(outcrops(plate, width_mm, theme));
+    for comparison in plate.comparisons.iter().filter(|c| c.patch == patch.id) {
+        let trends = pattern::trends_compared(comparison, width_mm, theme);
+        blocks.push(block(comparison.name.clone(), trends));
+        let moved = pattern::crests_moved(comparison, width_mm, theme);
+        blocks.push(block(format!("Movement: {}", comparison.name), moved));
+    }
     blocks
+}
+
+/// What the light does to the trend, and which trends would have been seen.
+fn seen(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
+    let (patch, mut blocks) = (plate.patch, Vec::new());
+    if let Some(recovery) = plate.recovery {
+        let figure = pattern::recovery_curve(recovery, &patch.trend, width_mm, theme);
+        blocks.push(Block { heading: "What would have been seen".into(), figure });
+    }
+    if let Some(light) = &patch.pattern.light {
+        let figure = pattern::light_numbers(light, &patch.trend, width_mm, theme);
+        blocks.push(Block { heading: "Light".into(), figure });
+    }
+    blocks
+}
+
+/// The crests on a small map, their direction, spacing and defects.
+fn crests(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
+    let (patch, unit) = (plate.patch, plate.patch.unit);
+    let Some(found) = patch.crests.as_ref().ok().filter(|c| !c.lines.is_empty()) else { return Vec::new() };
+    let block = |heading: &str, figure: Figure| Block { heading: heading.into(), figure };
+    let on_map = [crests_on_map(patch, plate.masks)];
+    let view = MapView { picture: plate.bare, ..plate.view };
+    vec![
+        block("Crests", crest_map(&view, subject(plate), &on_map, [width_mm, 1.4 * width_mm], theme)),
+        block("Direction of crests", pattern::crest_rose(found, &patch.trend, unit, width_mm, theme)),
+        block(
+            "Spacing from crest to crest",
+            pattern::spacing_survival(found, &patch.spectrum, unit, width_mm, theme),
+        ),
+        block("Ends and forks", pattern::defect_diagram(found, unit, width_mm, theme)),
+    ]
 }
 
 /// Each outcrop, and all together when there are several.
@@ -145,11 +219,30 @@ fn outcrops(plate: &PatchPlate, width_mm: f64, theme: &Theme) -> Vec<Block> {
 fn notes(plate: &PatchPlate) -> Vec<String> {
     let patch = plate.patch;
     let mut notes = vec![map_note(plate)];
-    notes.push(caption::cited(&caption::methods_of(patch), &science::methods()));
+    let tracing = tracing_note(&patch.crests, plate.crests);
+    notes.extend((!tracing.is_empty()).then_some(tracing));
+    notes.push(caption::cited(&methods(plate), &science::methods()));
     if !patch.verdicts.is_empty() {
         notes.push(caption::SAFETY.into());
     }
     notes
+}
+
+/// The keys of all methods behind the plate.
+fn methods(plate: &PatchPlate) -> Vec<&'static str> {
+    let mut methods = caption::methods_of(plate.patch);
+    if plate.recovery.is_some() {
+        methods.extend(caption::RECOVERY);
+    }
+    for comparison in plate.comparisons.iter().filter(|c| c.patch == plate.patch.id) {
+        let tests = comparison.axes.tests.iter().map(|t| t.method);
+        for method in caption::COMPARISON.iter().copied().chain(tests) {
+            if !methods.contains(&method) {
+                methods.push(method);
+            }
+        }
+    }
+    methods
 }
 
 fn map_note(plate: &PatchPlate) -> String {
@@ -168,15 +261,29 @@ fn map_note(plate: &PatchPlate) -> String {
     };
     format!(
         "Map: {} ({} × {} pixels {pixel}; {}). Margin: {margin}; intervals are 95 %. Patch of {area}, \
-         {} valid. Strokes: trend where the coherence passes {}, longer where it is higher, thinned for print; \
-         scales {} and {}\u{a0}px.",
+         {} valid. {} scales {} and {}\u{a0}px.",
         raster.name,
         raster.width,
         raster.height,
         raster.projection,
         numbers::percent(patch.valid_fraction),
-        numbers::significant(patch.trend.coherence_floor, 2),
+        trace_note(plate),
         numbers::plain(patch.trend.gradient_scale_px, 2),
         numbers::plain(patch.trend.integration_scale_px, 2),
     )
+}
+
+/// How the trend is drawn on the map.
+fn trace_note(plate: &PatchPlate) -> String {
+    let floor = numbers::significant(plate.patch.trend.coherence_floor, 2);
+    if plate.flow {
+        format!(
+            "Streaks: noise drawn out along the trend (line integral convolution), fading out where the coherence \
+             does not pass {floor};"
+        )
+    } else {
+        format!(
+            "Strokes: trend where the coherence passes {floor}, longer where it is higher, thinned for print;"
+        )
+    }
 }

@@ -63,7 +63,27 @@ pub fn rose(trend: &TrendFinding, size_mm: f64, theme: &Theme) -> Figure {
 
 /// The rose without words, `size_mm` square, for rows of the ledger and for maps.
 pub fn small_rose(trend: &TrendFinding, size_mm: f64, theme: &Theme) -> Figure {
-    let mut model = model(trend);
+    let model = model(trend);
+    let fill = shade(&model, theme);
+    small(model, fill, size_mm, theme)
+}
+
+/// The same with the axis of each population, the heaviest first, in place of a mean that none of them has.
+pub fn small_rose_of_populations(trend: &TrendFinding, axes: &[Axis], size_mm: f64, theme: &Theme) -> Figure {
+    let shown = Model { mean: None, modes: Vec::new(), ..model(trend) };
+    let mut figure = small(shown, theme.tint(theme.measured, 0.38), size_mm, theme);
+    let (centre, reach) = (Point::new(0.5 * size_mm, 0.5 * size_mm), 0.46 * size_mm);
+    let mut sketch = Sketch::default();
+    for (index, axis) in axes.iter().enumerate() {
+        let ends = [axis.azimuth(), axis.azimuth().reversed()].map(|a| toward(centre, reach, a));
+        let width = if index == 0 { 0.5 * theme.widths.bold } else { 0.3 * theme.widths.bold };
+        sketch.line(ends[0], ends[1], theme.stroke(theme.measured, width));
+    }
+    figure.items.extend(sketch.items);
+    figure
+}
+
+fn small(mut model: Model, fill: Rgba, size_mm: f64, theme: &Theme) -> Figure {
     // No scale is printed, so the longest petal may reach the rim.
     let longest = model.petals.iter().map(|p| p.2).fold(0.0, f64::max);
     model.petals.iter_mut().for_each(|p| p.2 /= longest);
@@ -76,7 +96,7 @@ pub fn small_rose(trend: &TrendFinding, size_mm: f64, theme: &Theme) -> Figure {
     };
     let mut sketch = Sketch::default();
     sketch.circle(layout.centre, rim, None, Some(theme.stroke(theme.rule, theme.widths.hair)));
-    petals(&mut sketch, &model, &layout, None, shade(&model, theme));
+    petals(&mut sketch, &model, &layout, None, fill);
     mean(&mut sketch, &model, &layout, theme, 0.5 * theme.widths.bold);
     sketch.finish(size_mm, size_mm)
 }
@@ -91,7 +111,7 @@ pub(super) fn bare_rose(
     size_mm: f64,
     theme: &Theme,
 ) -> Sketch {
-    let model = Model { modes: modes.to_vec(), ..of_shares(shares, bin_deg) };
+    let model = Model { modes: modes.to_vec(), ..of_shares(shares, bin_deg, rim_share(shares)) };
     let rim = 0.5 * size_mm - 5.0;
     let centre = Point::new(0.5 * size_mm, 0.5 * size_mm);
     let layout = Layout { centre, rim, interval: rim + 1.5, letters: rim + 3.5 };
@@ -104,8 +124,43 @@ pub(super) fn bare_rose(
     sketch
 }
 
+/// One of several roses on one scale.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct Face<'a> {
+    /// By bins of `bin_deg` from axis 0°.
+    pub shares: &'a [f64],
+    pub bin_deg: f64,
+    /// Drawn solid, with its interval.
+    pub mean: Option<(Axis, Option<f64>)>,
+    /// Another mean to compare with: a thin dashed line.
+    pub other: Option<Axis>,
+    pub modes: &'a [Axis],
+}
+
+/// Room a face takes beyond its rim, millimetres.
+pub(super) const FACE_PAD_MM: f64 = 4.0;
+
+/// Roses on one scale round their centres, without words.
+pub(super) fn faces(sketch: &mut Sketch, faces: &[(Face, Point)], rim: f64, theme: &Theme) {
+    let rim_share = rim_share(faces.iter().flat_map(|(face, _)| face.shares));
+    for (face, centre) in faces {
+        let of_petals = of_shares(face.shares, face.bin_deg, rim_share);
+        let model = Model { mean: face.mean, modes: face.modes.to_vec(), ..of_petals };
+        let layout = Layout { centre: *centre, rim, interval: rim + 1.2, letters: rim + 2.8 };
+        frame(sketch, &model, &layout, theme);
+        let edge = theme.stroke(theme.paper, theme.widths.hair);
+        petals(sketch, &model, &layout, Some(edge), shade(&model, theme));
+        if let Some(other) = face.other {
+            let [a, b] = [other.azimuth(), other.azimuth().reversed()].map(|way| toward(*centre, rim, way));
+            sketch.line(a, b, theme.dashed(theme.ink, 1.2 * theme.widths.thin));
+        }
+        labels(sketch, &model, &layout, theme);
+        mean(sketch, &model, &layout, theme, 0.8 * theme.widths.bold);
+    }
+}
+
 /// n, effective n, R̄, which interval (or the test that found no trend), bin width, and how to read the petals.
-fn caption(trend: &TrendFinding) -> String {
+pub(super) fn caption(trend: &TrendFinding) -> String {
     let interval = match trend.ci95_half_deg {
         Some(_) if trend.defined => format!("95 % interval by {} · ", trend.ci95_source),
         _ => trend.rayleigh_p.map(|p| format!("Rayleigh {} · ", numbers::p_value(p))).unwrap_or_default(),
@@ -123,13 +178,16 @@ fn caption(trend: &TrendFinding) -> String {
 fn model(trend: &TrendFinding) -> Model {
     let mean = trend.axis.filter(|_| trend.defined).map(|axis| (axis, trend.ci95_half_deg));
     let modes = if trend.modes.len() > 1 { trend.modes.iter().map(|m| m.axis).collect() } else { Vec::new() };
-    Model { mean, modes, ..of_shares(&trend.rose, trend.rose_bin_deg) }
+    Model { mean, modes, ..of_shares(&trend.rose, trend.rose_bin_deg, rim_share(&trend.rose)) }
 }
 
-/// Petals alone.
-fn of_shares(shares: &[f64], bin_deg: f64) -> Model {
-    let most = shares.iter().copied().filter(|s| s.is_finite()).fold(0.0, f64::max);
-    let rim_share = numbers::round_up(most);
+/// The round share at the rim that the longest petal stays within.
+fn rim_share<'a>(shares: impl IntoIterator<Item = &'a f64>) -> f64 {
+    numbers::round_up(shares.into_iter().copied().filter(|s| s.is_finite()).fold(0.0, f64::max))
+}
+
+/// Petals alone, on a scale with `rim_share` at the rim.
+fn of_shares(shares: &[f64], bin_deg: f64, rim_share: f64) -> Model {
     let petals = shares
         .iter()
         .enumerate()

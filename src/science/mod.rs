@@ -13,13 +13,14 @@ pub mod wind;
 
 use crate::ground::Method;
 
-/// Every method of the program, in the order of the reasoning: trend, spacing, statistics, crests, wind,
-/// verdict, outcrops, channels.
+/// Every method of the program, in the order of the reasoning: trend, spacing, statistics, crests, what
+/// light hides, wind, verdict, outcrops, channels.
 pub fn methods() -> Vec<&'static Method> {
     [
         orientation::METHODS,
         axial::METHODS,
         crest::METHODS,
+        scene::METHODS,
         wind::METHODS,
         alignment::METHODS,
         obstacle::METHODS,

@@ -9,7 +9,7 @@ use crate::science::alignment::backwards::{
 use crate::science::alignment::likelihood::{axial_sd_of_kappa, kappa_of_axial_sd};
 
 use super::verdict::evidences;
-use super::{Id, Patch, PatchFinding, Sheet, TrendFinding};
+use super::{Id, Patch, PatchFinding, PopulationFinding, Sheet, TrendFinding};
 
 /// The regimes consistent with one patch, or with several.
 #[derive(Clone, Debug, PartialEq)]
@@ -53,9 +53,10 @@ pub fn of_patch(
     sheet: &Sheet,
     patch: &Patch,
     trend: &TrendFinding,
+    populations: &[PopulationFinding],
     work: &Work,
 ) -> Result<Option<BackwardsFinding>, Stopped> {
-    let trends = trends(patch, trend);
+    let trends = trends(patch, trend, populations);
     if trends.is_empty() {
         return Ok(None);
     }
@@ -70,7 +71,7 @@ type Judged<'a> = (&'a Patch, Vec<(String, Observed)>);
 pub fn joint(sheet: &Sheet, found: &[&PatchFinding]) -> Vec<BackwardsFinding> {
     let judged: Vec<Judged> = found
         .iter()
-        .filter_map(|f| sheet.patch(f.id).map(|p| (p, trends(p, &f.trend))))
+        .filter_map(|f| sheet.patch(f.id).map(|p| (p, trends(p, &f.trend, &f.pattern.populations))))
         .filter(|(_, trends)| !trends.is_empty())
         .collect();
     let mut tags: Vec<&String> = judged.iter().flat_map(|(p, _)| &p.tags).collect();
@@ -121,8 +122,8 @@ fn settings(sheet: &Sheet) -> BackwardsSettings {
 }
 
 /// The trends of a patch with its cover; a stated sense goes to the trend it lies nearest.
-fn trends(patch: &Patch, trend: &TrendFinding) -> Vec<(String, Observed)> {
-    let found = evidences(&patch.name, trend);
+fn trends(patch: &Patch, trend: &TrendFinding, populations: &[PopulationFinding]) -> Vec<(String, Observed)> {
+    let found = evidences(&patch.name, trend, populations);
     let nearest = patch.sense.and_then(|sense| {
         let off = |e: &TrendEvidence| e.axis.separation(sense.toward.axis());
         let least = |a: &usize, b: &usize| off(&found[*a].1).total_cmp(&off(&found[*b].1));
@@ -200,9 +201,10 @@ mod tests {
     fn one_trend_says_so_and_none_has_no_finding() {
         let sheet = sheet(&[Cover::Unknown]);
         let quiet = Work::quiet();
-        let found = of_patch(&sheet, &sheet.patches[0], &trend(40.0), &quiet).expect("run").expect("a trend");
+        let found =
+            of_patch(&sheet, &sheet.patches[0], &trend(40.0), &[], &quiet).expect("run").expect("a trend");
         assert!(!found.tells() && clause(&found).contains("leaves divergence"), "{}", clause(&found));
-        let none = of_patch(&sheet, &sheet.patches[0], &TrendFinding::default(), &quiet).expect("run");
+        let none = of_patch(&sheet, &sheet.patches[0], &TrendFinding::default(), &[], &quiet).expect("run");
         assert_eq!(none, None);
     }
 
@@ -221,7 +223,7 @@ mod tests {
         });
         let trend = trend(finger.axis().deg());
         let found =
-            of_patch(&sheet, &sheet.patches[0], &trend, &Work::quiet()).expect("run").expect("a trend");
+            of_patch(&sheet, &sheet.patches[0], &trend, &[], &Work::quiet()).expect("run").expect("a trend");
         assert!(found.tells(), "{:?}", found.regimes.map_bits);
         let text = clause(&found);
         assert!(text.contains("drift toward"), "{text}");

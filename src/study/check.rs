@@ -4,8 +4,8 @@ use std::collections::BTreeSet;
 
 use crate::ground::Body;
 
-use super::network_check;
 use super::{Failure, Id, Sheet, Sources, WindChoice, all_settings, judges};
+use super::{comparison_check, crest_check, network_check};
 
 /// Bodies that cannot be, and names that mean two of them.
 fn bodies(sheet: &Sheet, say: &mut impl FnMut(String, String)) {
@@ -38,12 +38,13 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
         sheet.rasters.iter().map(|r| (r.id, &r.name)).chain(sheet.patches.iter().map(|p| (p.id, &p.name)));
     let all = all.chain(sheet.winds.iter().map(|w| (w.id, &w.name)));
     let all = all.chain(sheet.obstacles.iter().map(|o| (o.id, &o.name)));
+    let all = all.chain(sheet.comparisons.iter().map(|c| (c.id, &c.name)));
     for (Id(id), name) in all.chain(sheet.networks.iter().map(|n| (n.id, &n.name))) {
         if !ids.insert(id) {
             say(
                 name.clone(),
                 format!(
-                    "its id {id} is used twice; every raster, patch, record, outcrop and network needs its own"
+                    "its id {id} is used twice; every raster, patch, record, outcrop, network and comparison needs its own"
                 ),
             );
         }
@@ -55,6 +56,9 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
     }
     if sheet.settings.verdict.priors.weights().iter().sum::<f64>() <= 0.0 {
         say("settings".into(), "verdict.priors are all zero; at least one theory needs a weight".into());
+    }
+    if (1..12).contains(&sheet.settings.recovery.trends) {
+        say("settings".into(), "recovery.trends must be 12 or more, or 0 to leave the test out".into());
     }
     bodies(sheet, &mut say);
     let bins = 180.0 / sheet.settings.statistics.rose_bin_deg;
@@ -91,7 +95,9 @@ pub fn problems(sheet: &Sheet, sources: &Sources) -> Vec<Failure> {
         }
     }
     obstacles(sheet, sources, &mut say);
+    crest_check::crests(sheet, sources, &mut say);
     network_check::networks(sheet, sources, &mut say);
+    comparison_check::comparisons(sheet, sources, &mut say);
     found
 }
 
@@ -129,6 +135,16 @@ fn obstacles(sheet: &Sheet, sources: &Sources, say: &mut impl FnMut(String, Stri
 #[cfg(test)]
 mod tests {
     use super::*;
+
+    #[test]
+    fn too_few_trends_laid_in_are_refused_and_none_is_not() {
+        let mut sheet = Sheet::empty("t");
+        let said = |sheet: &Sheet| problems(sheet, &Sources::default()).len();
+        for (trends, problems) in [(0, 0), (1, 1), (11, 1), (12, 0), (90, 0)] {
+            sheet.settings.recovery.trends = trends;
+            assert_eq!(said(&sheet), problems, "{trends} trends");
+        }
+    }
 
     #[test]
     fn bodies_that_cannot_be_or_share_a_name_are_named() {

@@ -7,10 +7,10 @@
 use crate::ground::{Axis, Azimuth, Caution, Grid, LengthUnit, LonLat, Point, SandFlow};
 
 use super::{
-    BackwardsFinding, BirthFinding, BuildingFinding, CalendarFinding, CrestsFinding, DriftFinding,
-    ElongationFinding, EquivalenceFinding, GustFinding, Id, MigrationFinding, NetworkFinding,
-    ObstaclesFinding, RoundingFinding, SandFinding, SeasonFinding, SensitivityFinding, SetAside,
-    ThinningFinding,
+    BackwardsFinding, BirthFinding, BuildingFinding, CalendarFinding, ComparisonFinding, CrestsFinding,
+    DriftFinding, ElongationFinding, EquivalenceFinding, GustFinding, Id, MigrationFinding, NetworkFinding,
+    ObstaclesFinding, PatternFinding, RecoveryFinding, RoundingFinding, SandFinding, SeasonFinding,
+    SensitivityFinding, SetAside, ThinningFinding,
 };
 
 /// All results of one run.
@@ -22,6 +22,10 @@ pub struct Findings {
     pub winds: Vec<WindFinding>,
     pub patches: Vec<PatchFinding>,
     pub networks: Vec<NetworkFinding>,
+    /// What synthetic bedforms laid into patches say of what would have been seen there.
+    pub recoveries: Vec<RecoveryFinding>,
+    /// Patches held against the same ground on other rasters.
+    pub comparisons: Vec<ComparisonFinding>,
     /// What the patches say together.
     pub together: TogetherFinding,
     /// What failed, by name; everything else is complete.
@@ -80,6 +84,8 @@ pub struct PatchFinding {
     pub birth: Vec<BirthFinding>,
     /// The crests traced in it; in words why there are none.
     pub crests: Result<CrestsFinding, String>,
+    /// Its trend by scale, its populations, and what the light does to them; empty at a first look.
+    pub pattern: PatternFinding,
     /// What the outcrops in it say; `None` where the sheet has none there, or at a first look.
     pub obstacles: Option<ObstaclesFinding>,
 }

@@ -4,7 +4,7 @@
 use serde_json::{Value, json};
 use sha2::{Digest as _, Sha256};
 
-use super::{NetworkEntry, Patch, RasterEntry, Sheet, WindChoice, WindEntry};
+use super::{Comparison, NetworkEntry, Patch, RasterEntry, Sheet, WindChoice, WindEntry};
 
 /// SHA-256 of the sheet without what only changes how it looks (tone, notes) and without folders, so
 /// that a colleague's copy elsewhere has the same fingerprint.
@@ -18,7 +18,8 @@ pub fn of_sheet(sheet: &Sheet) -> String {
         winds,
         sheet.settings,
         sheet.obstacles,
-        sheet.networks
+        sheet.networks,
+        sheet.comparisons
     ]))
 }
 
@@ -32,6 +33,16 @@ pub fn of_patches(sheet: &Sheet) -> String {
 /// SHA-256 of all that makes a patch's finding: its outline, its raster, the outcrops on it, the settings,
 /// the winds it is judged by, the seed.
 pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
+    digest(&json!([texture(sheet, patch), patch.crests, patch.populations]))
+}
+
+/// SHA-256 of all of that but what the user said of crests and populations, which leave trend, spacing and
+/// verdicts of the whole patch as they are.
+pub fn of_texture(sheet: &Sheet, patch: &Patch) -> String {
+    digest(&texture(sheet, patch))
+}
+
+fn texture(sheet: &Sheet, patch: &Patch) -> Value {
     // Any record may become the nearest when it is moved, so all of them count there, with their places.
     let winds: Vec<_> = match &patch.winds {
         WindChoice::All | WindChoice::Nearest => sheet.winds.iter().map(placed_wind).collect(),
@@ -41,7 +52,7 @@ pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
     };
     // Their names too: findings print them.
     let obstacles: Vec<_> = sheet.obstacles.iter().filter(|o| o.raster == patch.raster).collect();
-    digest(&json!([
+    json!([
         obstacles,
         sheet.seed,
         patch.id,
@@ -53,7 +64,7 @@ pub fn of_patch(sheet: &Sheet, patch: &Patch) -> String {
         patch.winds == WindChoice::Nearest,
         winds,
         of_bedforms(sheet)
-    ]))
+    ])
 }
 
 /// SHA-256 of all that makes a network's finding: its own making, and the other networks it is compared with.
@@ -80,6 +91,17 @@ pub fn of_terrain(sheet: &Sheet, entry: &NetworkEntry) -> String {
     digest(&json!([sheet.raster(entry.raster).map(raster), entry.within, closed, how]))
 }
 
+/// SHA-256 of all that makes what synthetic bedforms in a patch say; its crests have no part in it.
+pub fn of_recovery(sheet: &Sheet, patch: &Patch) -> String {
+    digest(&json!([of_texture(sheet, patch), sheet.settings.recovery]))
+}
+
+/// SHA-256 of all that makes a comparison: its patch, the second raster, the settings.
+pub fn of_comparison(sheet: &Sheet, entry: &Comparison) -> String {
+    let patch = sheet.patch(entry.patch).map(|patch| of_patch(sheet, patch));
+    digest(&json!([patch, entry, sheet.raster(entry.raster).map(raster), sheet.settings.compare]))
+}
+
 /// SHA-256 of all that makes a record's finding.
 pub fn of_wind(sheet: &Sheet, entry: &WindEntry) -> String {
     let v = &sheet.settings.verdict;
@@ -89,7 +111,7 @@ pub fn of_wind(sheet: &Sheet, entry: &WindEntry) -> String {
 /// The settings that bear on patches; those of channels do not.
 fn of_bedforms(sheet: &Sheet) -> Value {
     let s = &sheet.settings;
-    json!([s.trend, s.spectrum, s.statistics, s.wind, s.verdict, s.obstacle, s.backwards])
+    json!([s.trend, s.spectrum, s.statistics, s.wind, s.verdict, s.obstacle, s.backwards, s.crest])
 }
 
 fn raster(r: &RasterEntry) -> Value {

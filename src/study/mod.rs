@@ -5,6 +5,13 @@ pub mod bulk;
 mod cautions;
 mod channel_settings;
 pub mod check;
+pub mod claim;
+mod comparison;
+mod comparison_check;
+mod crest_check;
+pub mod crest_edits;
+mod crest_entry;
+mod crest_words;
 mod crests;
 pub mod demo;
 mod findings;
@@ -13,6 +20,7 @@ pub mod glance;
 mod grains;
 pub mod handover;
 pub mod judges;
+mod light;
 mod migrate;
 mod network;
 mod network_check;
@@ -20,13 +28,18 @@ mod network_entry;
 mod network_findings;
 mod obstacles;
 mod patch;
+mod pattern_findings;
+mod pattern_settings;
 pub mod pen;
+mod populations;
 mod records;
+mod recovery;
 pub mod run;
 mod sentence;
 #[macro_use]
 mod setting_macros;
 mod channel_list;
+mod pattern_list;
 mod setting_list;
 mod settings;
 mod sheet;
@@ -50,6 +63,7 @@ pub use crate::science::wind::rounding::Rounding as RoundingFinding;
 pub use crate::science::wind::thinning::{Changed as ChangedFinding, Thinning as ThinningFinding};
 pub use backwards::{BackwardsFinding, arc_words};
 pub use channel_settings::{ChannelSettings, DrainageSettings, FlowSettings, NetworkSettings};
+pub use crest_entry::{CrestEntry, CrestStroke, PopulationName, StrokeKind};
 pub use crests::CrestsFinding;
 pub use findings::{
     Discovery, Failure, Findings, Flip, JointFinding, JointTheory, JointTrend, ModeFinding, Node,
@@ -60,11 +74,18 @@ pub use grains::{Birth, BirthFinding, Doubtful, FirstWave, SandFinding, SandThre
 pub use network_entry::{FromElevation, FromImage, NetworkEntry, NetworkSource, TracedChannel};
 pub use network_findings::{DrainageFinding, NetworkFinding, TracingFinding};
 pub use obstacles::{NodeAround, ObstacleFinding, ObstaclesFinding};
+pub use pattern_findings::{
+    ComparisonFinding, LightFinding, LooksFinding, PatternFinding, PlateauFinding, PopulationFinding,
+    PopulationSource, RecoveredTrend, RecoveryFinding, RefitFinding, ScaleFinding,
+};
+pub use pattern_settings::{CompareSettings, CrestSettings, RecoverySettings};
 pub use records::{Setting, SettingKind, SettingValue};
 pub use setting_list::all_settings;
 pub use settings::{
     BackwardsSettings, LettauConstant, ObstacleGround, ObstacleSettings, Priors, Settings, SpectrumSettings,
     StatisticsSettings, ThresholdLaw, TransportLaw, TrendSettings, VerdictSettings, WindSettings,
 };
-pub use sheet::{Id, ImageKind, Obstacle, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry};
+pub use sheet::{
+    Comparison, Id, ImageKind, Obstacle, Patch, Placement, RasterEntry, Sheet, Tone, WindChoice, WindEntry,
+};
 pub use sources::{OpenRaster, Sources};

@@ -10,14 +10,17 @@ use crate::science::orientation::{self, NodeField, Peak, Spectrum, TensorSetting
 
 use super::backwards;
 use super::cautions;
+use super::claim;
 use super::crests;
+use super::light;
 use super::obstacles;
+use super::populations;
 use super::verdict::verdict;
 use super::window::{self, Detail, PatchPixels};
 use super::winds::{self, WindStudy};
 use super::{
-    ImageKind, ModeFinding, Node, OpenRaster, Patch, PatchFinding, RasterEntry, Sheet, SpectrumFinding,
-    SpectrumPicture, TrendFinding, fingerprint, grains, sentence,
+    ImageKind, ModeFinding, Node, OpenRaster, Patch, PatchFinding, PatternFinding, RasterEntry, Sheet,
+    SpectrumFinding, SpectrumPicture, TrendFinding, fingerprint, grains, sentence,
 };
 
 /// Measures and judges a patch; in words what stood against it.
@@ -55,7 +58,7 @@ pub fn patch_finding(
             .extend(sheet.wind(winds.finding.id).and_then(|w| winds::other_body(w, &open.place.body)));
         verdicts.push(judged);
     }
-    let backwards = backwards::of_patch(sheet, patch, &trend, work)?;
+    let backwards = backwards::of_patch(sheet, patch, &trend, &[], work)?;
     let mut birth = Vec::new();
     let mut birth_cautions = Vec::new();
     for WindStudy { finding: record, .. } in judges.iter().map(|winds| &***winds) {
@@ -88,12 +91,21 @@ pub fn patch_finding(
         cautions,
         birth,
         crests: Err("not traced at a first look".into()),
+        pattern: PatternFinding::default(),
         obstacles: None,
     };
     if detail == Detail::Exact {
         let (trend, spectrum) = (&finding.trend, &finding.spectrum);
-        finding.crests = crests::study(&pixels, entry, trend, spectrum, finding.unit, work)?;
+        finding.pattern.light = light::of_trend(trend, entry);
+        finding.crests =
+            crests::study(sheet, patch, &pixels, entry, trend, spectrum, finding.unit, None, work)?;
         finding.obstacles = obstacles::study(sheet, patch, &open.place, &finding.trend, seed, work)?;
+        let ground = populations::Ground { sheet, patch, entry, open, pixels: &pixels, judges, seed };
+        populations::study(&ground, &mut finding, work)?;
+    }
+    if detail == Detail::Exact {
+        let trend_only = claim::caution(&finding);
+        finding.cautions.extend(trend_only);
     }
     finding.sentence = sentence::of_patch(&finding);
     Ok(Ok(finding))
@@ -102,7 +114,7 @@ pub fn patch_finding(
 /// Spectrum and tensor looked at together: the spectrum's spacing sets the scale unless the texture is
 /// clearly more coherent at another, as with broad dunes under fine grain; then the spacing is
 /// looked for anew around that scale.
-fn choose_scale(
+pub(super) fn choose_scale(
     sheet: &Sheet,
     entry: &RasterEntry,
     pixels: &PatchPixels,
@@ -150,7 +162,7 @@ fn choose_scale(
 
 /// A peak that passed its test and is a texture too: with power around it, one axis and one spacing. A
 /// camera's grain or a resampling can raise a single bin without either.
-fn regular_peak(s: &Spectrum) -> Option<Peak> {
+pub(super) fn regular_peak(s: &Spectrum) -> Option<Peak> {
     s.peak.filter(|p| {
         let [low, high] = p.spacing_ci95;
         s.defined && p.contrast > 0.0 && p.axis_ci95_half_deg < 45.0 && high < 3.0 * low
@@ -158,12 +170,12 @@ fn regular_peak(s: &Spectrum) -> Option<Peak> {
 }
 
 /// Ground size of the finer pixel direction at the middle of the patch.
-fn fine_pixel(pixels: &PatchPixels) -> f64 {
+pub(super) fn fine_pixel(pixels: &PatchPixels) -> f64 {
     let frame = pixels.outline.bounds().and_then(|b| pixels.place.local_frame(b.centre()));
     frame.map_or(1.0, |f| f.pixel_size().into_iter().fold(f64::INFINITY, f64::min))
 }
 
-fn measure_trend(
+pub(super) fn measure_trend(
     sheet: &Sheet,
     entry: &RasterEntry,
     pixels: &PatchPixels,
@@ -183,7 +195,7 @@ fn measure_trend(
 }
 
 /// The scales a patch is measured at when the user leaves them open, image pixels.
-struct Scales {
+pub(super) struct Scales {
     gradient: f64,
     integration: f64,
     step: f64,
@@ -202,20 +214,29 @@ impl Scales {
     }
 }
 
-/// Statistics of the trend field.
-///
+/// Whether a field of nodes claims a trend, and the numbers behind it.
+pub(super) struct Claim {
+    pub defined: bool,
+    /// Several times as many nodes pass the noise floor as chance lets pass.
+    pub has_texture: bool,
+    /// Of all nodes, and of those that passed.
+    pub test: Summary,
+    pub shown: Summary,
+    pub axes: Vec<Axis>,
+}
+
 /// Whether a trend is preferred is asked of ALL nodes: noise has no say in which are counted, so
 /// the test keeps its level on ground without texture. The trend itself is that of the nodes that
 /// passed the noise floor, since the others only blur it.
-fn summarise(
+pub(super) fn claim(
     sheet: &Sheet,
     pixels: &PatchPixels,
     field: &NodeField,
+    resamples: u32,
     seed: Seed,
     work: &Work,
-) -> Result<(TrendFinding, Vec<Caution>), Stopped> {
-    let s = &sheet.settings.statistics;
-    let settings = SummarySettings { significance: s.significance, resamples: s.resamples };
+) -> Result<Claim, Stopped> {
+    let settings = SummarySettings { significance: sheet.settings.statistics.significance, resamples };
     let positions = ground_positions(pixels, &field.nodes);
     let passed: Vec<usize> = (0..field.nodes.len()).filter(|i| field.nodes[*i].significant).collect();
     let every: Vec<usize> = (0..field.nodes.len()).collect();
@@ -225,12 +246,8 @@ fn summarise(
         let at: Vec<Point> = picked.iter().map(|i| positions[*i]).collect();
         let nodes = Nodes { at: &at, spacing, kernel_sigma: field.integration_scale_ground };
         let axes = axes_of(picked);
-        axial::summarise(
-            &AxialSample { axes: &axes, weights: None, nodes: Some(nodes) },
-            settings,
-            seed,
-            work,
-        )
+        let sample = AxialSample { axes: &axes, weights: None, nodes: Some(nodes) };
+        axial::summarise(&sample, settings, seed, work)
     };
     let test = summary_of(&every)?;
     let shown = summary_of(&passed)?;
@@ -238,7 +255,20 @@ fn summarise(
     let has_texture = passed.len() as f64 > 5.0 * sheet.settings.trend.significance * every.len() as f64;
     // An interval of all axes leaves no line to draw.
     let defined = test.preferred && has_texture && shown.interval.half_deg.is_some();
-    let axes = axes_of(&passed);
+    Ok(Claim { defined, has_texture, test, shown, axes: axes_of(&passed) })
+}
+
+/// Statistics of the trend field.
+pub(super) fn summarise(
+    sheet: &Sheet,
+    pixels: &PatchPixels,
+    field: &NodeField,
+    seed: Seed,
+    work: &Work,
+) -> Result<(TrendFinding, Vec<Caution>), Stopped> {
+    let s = &sheet.settings.statistics;
+    let Claim { defined, has_texture, test, shown, axes } =
+        claim(sheet, pixels, field, s.resamples, seed, work)?;
     let modes = if has_texture {
         let sample = AxialSample { axes: &axes, weights: None, nodes: None };
         axial::modes(&sample, shown.n_eff_test, s.most_modes, seed, work)?
@@ -286,7 +316,7 @@ fn summarise(
 }
 
 /// Nodes on a plane that touches the ground at the middle of the patch, ground units.
-fn ground_positions(pixels: &PatchPixels, nodes: &[TrendNode]) -> Vec<Point> {
+pub(super) fn ground_positions(pixels: &PatchPixels, nodes: &[TrendNode]) -> Vec<Point> {
     let centre = pixels.outline.bounds().map_or(Point::default(), |b| b.centre());
     let frame = pixels.place.local_frame(centre);
     let on_ground = |p: Point| {
@@ -299,11 +329,11 @@ fn ground_positions(pixels: &PatchPixels, nodes: &[TrendNode]) -> Vec<Point> {
 }
 
 /// The plug-in bandwidth with the effective number, since nodes repeat one another.
-fn density_bandwidth(summary: &Summary) -> f64 {
+pub(super) fn density_bandwidth(summary: &Summary) -> f64 {
     axial::density::plug_in(summary.n_eff_mean.max(2.0), summary.kappa.max(0.05))
 }
 
-fn spectrum_finding(s: &Spectrum, pixels: &PatchPixels) -> SpectrumFinding {
+pub(super) fn spectrum_finding(s: &Spectrum, pixels: &PatchPixels) -> SpectrumFinding {
     let peak = regular_peak(s);
     SpectrumFinding {
         defined: peak.is_some(),

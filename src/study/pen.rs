@@ -4,8 +4,10 @@ use std::sync::{Arc, OnceLock};
 
 use crate::files::raster::Window;
 use crate::ground::{Bounds, Grid, Point, Polyline, Seed, Stopped, Work};
+use crate::numeric::least_path::{CostField, Way, Ways};
 use crate::science::channel::chance::{chance, null_costs};
-use crate::science::channel::pen::{Ground, Way, Ways};
+use crate::science::channel::pen;
+use crate::science::crest::{self, CrestModel};
 
 use super::{ChannelSettings, ImageKind, OpenRaster, RasterEntry};
 
@@ -24,7 +26,9 @@ pub struct Pen {
 
 #[derive(Debug)]
 struct Inner {
-    ground: Arc<Ground>,
+    field: Arc<CostField>,
+    /// The pen of crests, whose picks are moved onto crest points; `None` for channels.
+    crests: Option<crest::Pen>,
     /// Full-resolution pixels per pixel walked, and the corner of the window.
     factor: f64,
     origin: Point,
@@ -36,6 +40,7 @@ struct Inner {
 #[derive(Clone, Debug)]
 pub struct PenWays {
     pen: Pen,
+    from: Point,
     ways: Ways,
 }
 
@@ -53,7 +58,8 @@ pub struct PenWay {
 }
 
 impl Pen {
-    /// Reads a window of a raster, the whole of it where the window is larger, and lays the ground.
+    /// The pen of channels: reads a window of a raster, the whole of it where the window is larger, and lays the
+    /// ground.
     ///
     /// # Errors
     /// Why the pixels could not be read, in words; "stopped".
@@ -64,33 +70,45 @@ impl Pen {
         settings: &ChannelSettings,
         work: &Work,
     ) -> Result<Self, String> {
-        let info = open.raster.info();
-        let clamp = |x: f64, most: usize| if x.is_finite() { x.clamp(0.0, most as f64) as usize } else { 0 };
-        let (col, row) = (clamp(window.min.x.floor(), info.width), clamp(window.min.y.floor(), info.height));
-        let right = clamp(window.max.x.ceil(), info.width);
-        let lower = clamp(window.max.y.ceil(), info.height);
-        let read = Window { col, row, width: right.saturating_sub(col), height: lower.saturating_sub(row) };
-        if read.width == 0 || read.height == 0 {
-            return Err("the window lies outside the raster".into());
-        }
-        let factor = (read.width as f64 * read.height as f64 / MOST_PIXELS).sqrt().ceil().max(1.0);
-        let image = open
-            .raster
-            .read_reduced(read, factor as usize, &entry.bands, work)
-            .map_err(|error| error.to_string())?;
+        let Pixels { image, factor, origin } = read(open, entry, window, work)?;
         let image = if entry.kind == ImageKind::Radar { logarithm(&image) } else { image };
         let widths = [settings.narrowest_px / factor, settings.widest_px / factor];
-        let ground =
-            Ground::of(&image, settings.tone, widths, work).map_err(|stopped| stopped.to_string())?;
-        let origin = Point::new(col as f64, row as f64);
-        let inner = Inner { ground: Arc::new(ground), factor, origin, null: OnceLock::new() };
+        let field =
+            pen::ground(&image, settings.tone, widths, work).map_err(|stopped| stopped.to_string())?;
+        let inner = Inner { field: Arc::new(field), crests: None, factor, origin, null: OnceLock::new() };
+        Ok(Self { inner: Arc::new(inner) })
+    }
+
+    /// The pen of crests, on a window as [`Pen::lay`] reads it. `model`: what a crest looks like, what fits the
+    /// window best when `None`; `scale_px`: scale of the crests in full-resolution pixels, as a patch's finding
+    /// has it ([`super::CrestsFinding::full_scale_px`]), that of a sweep when `None`. Picks within two scales of a
+    /// crest point are moved onto it. Its ways have no `cost_ratio` and no `p`.
+    ///
+    /// # Errors
+    /// Why the pixels could not be read, in words; "stopped".
+    pub fn lay_crests(
+        open: &OpenRaster,
+        entry: &RasterEntry,
+        window: Bounds,
+        model: Option<CrestModel>,
+        scale_px: Option<f64>,
+        work: &Work,
+    ) -> Result<Self, String> {
+        let Pixels { image, factor, origin } = read(open, entry, window, work)?;
+        let scale_px = scale_px.map(|px| px / factor);
+        let radar = entry.kind == ImageKind::Radar;
+        let crests = crest::Pen::of(&image, model, scale_px, radar, work).map_err(|s| s.to_string())?;
+        let field = Arc::clone(crests.field());
+        // Crests are many, and ways by chance run along them too: nothing is learnt from those.
+        let null = OnceLock::from(Vec::new());
+        let inner = Inner { field, crests: Some(crests), factor, origin, null };
         Ok(Self { inner: Arc::new(inner) })
     }
 
     /// Whether the window holds the point.
     pub fn covers(&self, p: Point) -> bool {
         let p = self.inward(p);
-        let ground = &self.inner.ground;
+        let ground = &self.inner.field;
         p.x >= 0.0 && p.y >= 0.0 && p.x < ground.width() as f64 && p.y < ground.height() as f64
     }
 
@@ -105,7 +123,7 @@ impl Pen {
     /// # Errors
     /// [`Stopped`].
     pub fn learn_chance(&self, seed: Seed, work: &Work) -> Result<(), Stopped> {
-        let ground = &self.inner.ground;
+        let ground = &self.inner.field;
         if self.inner.null.get().is_some() {
             return Ok(());
         }
@@ -129,8 +147,8 @@ impl Pen {
     /// # Errors
     /// [`Stopped`].
     pub fn ways_from(&self, pick: Point, work: &Work) -> Result<Option<PenWays>, Stopped> {
-        let ways = self.inner.ground.ways_from(self.inward(pick), work)?;
-        Ok(ways.map(|ways| PenWays { pen: self.clone(), ways }))
+        let ways = self.inner.field.ways_from(self.picked(pick), work)?;
+        Ok(ways.map(|ways| PenWays { pen: self.clone(), from: pick, ways }))
     }
 
     /// The way between two picks; `None` where there is none.
@@ -138,8 +156,14 @@ impl Pen {
     /// # Errors
     /// [`Stopped`].
     pub fn way(&self, from: Point, to: Point, work: &Work) -> Result<Option<PenWay>, Stopped> {
-        let way = self.inner.ground.way(self.inward(from), self.inward(to), work)?;
+        let way = self.inner.field.way(self.picked(from), self.picked(to), work)?;
         Ok(way.map(|way| self.outward(way)))
+    }
+
+    /// The pixel walked from or to for a pick: on the crest beside it.
+    fn picked(&self, pick: Point) -> Point {
+        let p = self.inward(pick);
+        self.inner.crests.as_ref().map_or(p, |crests| crests.snapped(p))
     }
 
     fn inward(&self, p: Point) -> Point {
@@ -151,7 +175,8 @@ impl Pen {
         let Inner { factor, origin, .. } = *self.inner;
         let (cost_ratio, p) = self.judged(&way).unzip();
         let full = |p: &Point| Point::new(origin.x + factor * p.x, origin.y + factor * p.y);
-        PenWay { line: Polyline(way.line.0.iter().map(full).collect()), cost_ratio, p: p.flatten() }
+        let line = self.inner.crests.as_ref().map_or_else(|| way.line.clone(), |crests| crests.line(&way));
+        PenWay { line: Polyline(line.0.iter().map(full).collect()), cost_ratio, p: p.flatten() }
     }
 
     /// (cost over the median, p) against the random ways nearest in length.
@@ -169,9 +194,7 @@ impl Pen {
 impl PenWays {
     /// The pick they start from.
     pub fn from(&self) -> Point {
-        let Inner { factor, origin, .. } = *self.pen.inner;
-        let p = self.ways.from();
-        Point::new(origin.x + factor * p.x, origin.y + factor * p.y)
+        self.from
     }
 
     /// The way to a point; `None` where there is none.
@@ -179,9 +202,35 @@ impl PenWays {
     /// # Errors
     /// [`Stopped`].
     pub fn to(&self, p: Point, work: &Work) -> Result<Option<PenWay>, Stopped> {
-        let way = self.ways.to(self.pen.inward(p), work)?;
+        let way = self.ways.to(self.pen.picked(p), work)?;
         Ok(way.map(|way| self.pen.outward(way)))
     }
+}
+
+/// Pixels of a window.
+struct Pixels {
+    image: Grid<f32>,
+    factor: f64,
+    origin: Point,
+}
+
+/// A window of a raster, averaged where it is large; in words why it could not be read.
+fn read(open: &OpenRaster, entry: &RasterEntry, window: Bounds, work: &Work) -> Result<Pixels, String> {
+    let info = open.raster.info();
+    let clamp = |x: f64, most: usize| if x.is_finite() { x.clamp(0.0, most as f64) as usize } else { 0 };
+    let (col, row) = (clamp(window.min.x.floor(), info.width), clamp(window.min.y.floor(), info.height));
+    let right = clamp(window.max.x.ceil(), info.width);
+    let lower = clamp(window.max.y.ceil(), info.height);
+    let read = Window { col, row, width: right.saturating_sub(col), height: lower.saturating_sub(row) };
+    if read.width == 0 || read.height == 0 {
+        return Err("the window lies outside the raster".into());
+    }
+    let factor = (read.width as f64 * read.height as f64 / MOST_PIXELS).sqrt().ceil().max(1.0);
+    let image = open
+        .raster
+        .read_reduced(read, factor as usize, &entry.bands, work)
+        .map_err(|error| error.to_string())?;
+    Ok(Pixels { image, factor, origin: Point::new(col as f64, row as f64) })
 }
 
 /// ln of the tone, so that speckle is of one strength everywhere; cut at a thousandth of the mean.

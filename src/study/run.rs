@@ -5,15 +5,17 @@ use std::sync::{Arc, Mutex, PoisonError};
 
 use crate::ground::{Stopped, Work};
 
+use super::comparison::comparison;
 use super::judges::{self, Judges};
 use super::network::{Terrains, agreements, network_finding};
 use super::patch::patch_finding;
+use super::recovery::recovery;
 use super::together::together;
 use super::window::Detail;
 use super::winds::{self, WindStudy};
 use super::{
-    Failure, Findings, Id, NetworkEntry, NetworkFinding, OpenRaster, PatchFinding, RasterEntry,
-    RasterFinding, Sheet, Sources, fingerprint,
+    ComparisonFinding, Failure, Findings, Id, NetworkEntry, NetworkFinding, OpenRaster, PatchFinding,
+    RasterEntry, RasterFinding, RecoveryFinding, Sheet, Sources, fingerprint,
 };
 
 /// Results kept by fingerprint, so that an edit recomputes only what it touches. With or without
@@ -23,6 +25,8 @@ pub struct Memo {
     winds: Mutex<HashMap<String, Arc<WindStudy>>>,
     patches: Mutex<HashMap<String, Arc<PatchFinding>>>,
     networks: Mutex<HashMap<String, Arc<NetworkFinding>>>,
+    recoveries: Mutex<HashMap<String, Arc<RecoveryFinding>>>,
+    comparisons: Mutex<HashMap<String, Arc<ComparisonFinding>>>,
     terrains: Terrains,
 }
 
@@ -47,6 +51,15 @@ pub fn run(sheet: &Sheet, sources: &Sources, memo: &Memo, work: &Work) -> Result
             Err(why) => failures.push(Failure { what: format!("network {}", entry.name), why }),
         }
     }
+    let (recoveries, refused) = run_recoveries(sheet, sources, &winds, memo, work)?;
+    failures.extend(refused);
+    let mut comparisons = Vec::new();
+    for entry in &sheet.comparisons {
+        match run_comparison(sheet, sources, entry.id, memo, work)? {
+            Ok(finding) => comparisons.push((*finding).clone()),
+            Err(why) => failures.push(Failure { what: format!("comparison {}", entry.name), why }),
+        }
+    }
     let rasters =
         sheet.rasters.iter().filter_map(|entry| Some(raster(entry, sources.rasters.get(&entry.id)?)));
     Ok(Findings {
@@ -56,6 +69,8 @@ pub fn run(sheet: &Sheet, sources: &Sources, memo: &Memo, work: &Work) -> Result
         winds: winds.into_iter().map(|w| w.finding.clone()).collect(),
         patches,
         networks,
+        recoveries,
+        comparisons,
         failures,
     })
 }
@@ -127,6 +142,62 @@ pub fn run_patch(
     }
 }
 
+/// Synthetic bedforms laid into one patch and sought again, whether or not its light is known; in words why that
+/// cannot be done. The patch itself is measured first where the memo does not hold it.
+///
+/// # Errors
+/// [`Stopped`].
+pub fn run_recovery(
+    sheet: &Sheet,
+    sources: &Sources,
+    id: Id,
+    winds: &[Arc<WindStudy>],
+    memo: &Memo,
+    work: &Work,
+) -> Result<Result<Arc<RecoveryFinding>, String>, Stopped> {
+    let found = match run_patch(sheet, sources, id, winds, Detail::Exact, memo, work)? {
+        Ok(found) => found,
+        Err(why) => return Ok(Err(why)),
+    };
+    let patch = sheet.patch(id);
+    let entry = patch.and_then(|patch| sheet.raster(patch.raster));
+    let open = patch.and_then(|patch| sources.rasters.get(&patch.raster));
+    let (Some(patch), Some(entry), Some(open)) = (patch, entry, open) else {
+        return Ok(Err("its raster is not open".into()));
+    };
+    let key = format!("{} {}", fingerprint::of_recovery(sheet, patch), patch.name);
+    if let Some(known) = recall(&memo.recoveries, &key) {
+        return Ok(Ok(known));
+    }
+    let finding = recovery(sheet, patch, entry, open, &found, work)?;
+    Ok(finding.map(|finding| keep(&memo.recoveries, key, finding)))
+}
+
+/// Bedforms laid into every patch that was measured and whose light is known, unless the settings leave that out.
+fn run_recoveries(
+    sheet: &Sheet,
+    sources: &Sources,
+    winds: &[Arc<WindStudy>],
+    memo: &Memo,
+    work: &Work,
+) -> Result<(Vec<RecoveryFinding>, Vec<Failure>), Stopped> {
+    let (mut found, mut failures) = (Vec::new(), Vec::new());
+    if sheet.settings.recovery.trends == 0 {
+        return Ok((found, failures));
+    }
+    let lit = |id| sheet.raster(id).is_some_and(|raster: &RasterEntry| raster.light_from.is_some());
+    for patch in sheet.patches.iter().filter(|patch| lit(patch.raster)) {
+        if run_patch(sheet, sources, patch.id, winds, Detail::Exact, memo, work)?.is_err() {
+            continue;
+        }
+        match run_recovery(sheet, sources, patch.id, winds, memo, work)? {
+            Ok(finding) => found.push((*finding).clone()),
+            Err(why) => failures.push(Failure { what: format!("bedforms laid into {}", patch.name), why }),
+        }
+    }
+    Ok((found, failures))
+}
+
 /// One channel network, or in words why it cannot be measured.
 ///
 /// # Errors
@@ -167,6 +238,33 @@ fn lone_network(
     }
     let finding = network_finding(sheet, entry, sources, &memo.terrains, work)?;
     Ok(finding.map(|finding| keep(&memo.networks, key, finding)))
+}
+
+/// A patch held against the same ground on another raster, or in words why it cannot be.
+///
+/// # Errors
+/// [`Stopped`].
+pub fn run_comparison(
+    sheet: &Sheet,
+    sources: &Sources,
+    id: Id,
+    memo: &Memo,
+    work: &Work,
+) -> Result<Result<Arc<ComparisonFinding>, String>, Stopped> {
+    let Some(entry) = sheet.comparison(id) else {
+        return Ok(Err(format!("the sheet has no comparison {}", id.0)));
+    };
+    // Names stand in findings, so what is renamed is computed anew.
+    let names = [
+        sheet.patch(entry.patch).map(|p| (p.name.as_str(), sheet.raster(p.raster).map(|r| r.name.as_str()))),
+        Some(("", sheet.raster(entry.raster).map(|r| r.name.as_str()))),
+    ];
+    let key = format!("{} {names:?}", fingerprint::of_comparison(sheet, entry));
+    if let Some(known) = recall(&memo.comparisons, &key) {
+        return Ok(Ok(known));
+    }
+    let finding = comparison(sheet, entry, sources, work)?;
+    Ok(finding.map(|finding| keep(&memo.comparisons, key, finding)))
 }
 
 /// What a raster is, as used.

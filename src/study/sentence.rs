@@ -5,13 +5,20 @@ use crate::ground::LengthUnit;
 use super::backwards;
 use super::cautions::WEAK_ALIGNMENT;
 use super::obstacles;
-use super::{PatchFinding, SpectrumFinding, TrendFinding, VerdictFinding};
+use super::populations::plain_name;
+use super::{
+    PatchFinding, PopulationFinding, PopulationSource, SpectrumFinding, TrendFinding, VerdictFinding,
+};
 
 /// The sentence of a patch.
 pub fn of_patch(finding: &PatchFinding) -> String {
-    let mut parts = vec![trend(&finding.trend)];
+    let mut parts = vec![trend(&finding.trend, finding.pattern.populations.len())];
     parts.extend(spacing(&finding.spectrum, finding.unit));
     let mut sentence = format!("{}: {}", finding.name, parts.join(", "));
+    if let Some(clause) = populations(&finding.pattern.populations, finding.unit) {
+        sentence.push_str("; ");
+        sentence.push_str(&clause);
+    }
     for verdict in &finding.verdicts {
         sentence.push_str("; ");
         sentence.push_str(&judged(verdict));
@@ -28,7 +35,7 @@ pub fn of_patch(finding: &PatchFinding) -> String {
     sentence
 }
 
-fn trend(t: &TrendFinding) -> String {
+fn trend(t: &TrendFinding, populations: usize) -> String {
     let (Some(axis), true) = (t.axis, t.defined) else {
         let share = format!("{} of {} places pass the noise floor", t.n, t.n_all);
         return match t.rayleigh_p {
@@ -46,12 +53,43 @@ fn trend(t: &TrendFinding) -> String {
         _ => "weakly aligned",
     };
     let mut text = format!("trend {:.0}° {interval} (95 %), {strength}", axis.deg() % 180.0);
-    if t.modes.len() > 1 {
+    // Populations say more than the modes of one scale, in a clause of their own.
+    if t.modes.len() > 1 && populations < 2 {
         let axes: Vec<_> =
             t.modes.iter().map(|m| format!("{:.0}° ({:.0} %)", m.axis.deg(), 100.0 * m.weight)).collect();
         text.push_str(&format!(", in {} trends: {}", t.modes.len(), axes.join(", ")));
     }
     text
+}
+
+/// "two populations: ripples, 84° ± 2°, spacing 12 m, 62 % of the texture; …"
+fn populations(list: &[PopulationFinding], unit: LengthUnit) -> Option<String> {
+    if list.len() < 2 {
+        return None;
+    }
+    let superposed = list.iter().any(|p| p.source == PopulationSource::Scale);
+    let of = if superposed { "texture" } else { "ground" };
+    let each: Vec<String> = list
+        .iter()
+        .map(|p| {
+            let trend = p.trend.axis.map_or(String::new(), |axis| {
+                let plain = p.name == plain_name(axis);
+                let trend = if plain { String::new() } else { format!(", {}", plain_name(axis)) };
+                trend + &p.trend.ci95_half_deg.map_or(String::new(), |h| format!(" ± {}°", degrees(h)))
+            });
+            let spacing = p
+                .spacing
+                .map_or(", spacing unknown".to_owned(), |s| format!(", spacing {}", length(s, unit)));
+            format!("{}{trend}{spacing}, {:.0} % of the {of}", p.name, 100.0 * p.weight)
+        })
+        .collect();
+    let count = match list.len() {
+        2 => "two".to_owned(),
+        3 => "three".to_owned(),
+        n => n.to_string(),
+    };
+    let how = if superposed { "one laid over the other" } else { "side by side" };
+    Some(format!("{count} populations {how}: {}", each.join(" and ")))
 }
 
 fn spacing(s: &SpectrumFinding, unit: LengthUnit) -> Option<String> {
@@ -150,7 +188,7 @@ mod tests {
     #[test]
     fn an_undefined_trend_is_a_sentence_not_a_number() {
         let trend = TrendFinding { rayleigh_p: Some(0.4), n: 9, n_all: 100, ..Default::default() };
-        let text = super::trend(&trend);
+        let text = super::trend(&trend, 0);
         assert!(text.starts_with("no preferred trend (p = 0.40"), "{text}");
         assert!(!text.contains('°'), "{text}");
     }

@@ -1,7 +1,7 @@
 //! Every setting of the sheet, each with its record.
 
 use super::records::{Setting, SettingKind, SettingValue};
-use super::{LettauConstant, ObstacleGround, ThresholdLaw, TransportLaw, channel_list};
+use super::{LettauConstant, ObstacleGround, ThresholdLaw, TransportLaw, channel_list, pattern_list};
 
 const THRESHOLD_LAWS: [(ThresholdLaw, &str, &str); 3] = [
     (ThresholdLaw::Bagnold, "bagnold", "Bagnold 1941"),
@@ -27,7 +27,7 @@ const OBSTACLE_GROUNDS: [(ObstacleGround, &str, &str); 2] = [
 
 /// Every setting, in the order of the reasoning.
 pub fn all_settings() -> impl Iterator<Item = &'static Setting> {
-    PATTERN.iter().chain(channel_list::CHANNELS)
+    PATTERN.iter().chain(pattern_list::BEDFORM_PATTERN).chain(channel_list::CHANNELS)
 }
 
 /// Bedforms, winds and verdicts.

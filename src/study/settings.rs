@@ -7,6 +7,7 @@ use crate::science::alignment::bed_instability::FLUX_UP;
 use crate::science::wind::threshold::COHESION;
 
 use super::channel_settings::{ChannelSettings, DrainageSettings, FlowSettings, NetworkSettings};
+use super::pattern_settings::{CompareSettings, CrestSettings, RecoverySettings};
 
 /// All settings of a sheet.
 #[derive(Clone, Debug, Default, PartialEq, Serialize, Deserialize)]
@@ -23,6 +24,9 @@ pub struct Settings {
     pub channel: ChannelSettings,
     pub network: NetworkSettings,
     pub flow: FlowSettings,
+    pub crest: CrestSettings,
+    pub recovery: RecoverySettings,
+    pub compare: CompareSettings,
 }
 
 /// Structure-tensor trend. Scales in pixels of the finer ground direction; `None` = from the data.

@@ -9,7 +9,7 @@ use crate::files::wind_table::WindImport;
 use crate::ground::{Axis, Azimuth, Body, LonLat, Polygon, Seed};
 use crate::science::alignment::backwards::{Cover, Sense};
 
-use super::{NetworkEntry, Settings};
+use super::{CrestEntry, NetworkEntry, PopulationName, Settings};
 
 /// The saved document.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
@@ -36,9 +36,12 @@ pub struct Sheet {
     /// Channel networks.
     #[serde(default, skip_serializing_if = "Vec::is_empty")]
     pub networks: Vec<NetworkEntry>,
+    /// Patches held against the same ground on another raster.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub comparisons: Vec<Comparison>,
 }
 
-/// Names a raster, patch, wind record, outcrop or network within one sheet; never reused.
+/// Names a raster, patch, wind record, outcrop, network or comparison within one sheet; never reused.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash, Serialize, Deserialize)]
 #[serde(transparent)]
 pub struct Id(pub u32);
@@ -133,13 +136,31 @@ pub struct Patch {
     /// Which way the sand goes, as read from the ground.
     #[serde(default, skip_serializing_if = "Option::is_none")]
     pub sense: Option<Sense>,
+    /// What the user says and draws of its crests.
+    #[serde(default, skip_serializing_if = "CrestEntry::is_empty")]
+    pub crests: CrestEntry,
+    /// Names given to its populations.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub populations: Vec<PopulationName>,
 }
 
 impl Patch {
     /// A patch of which nothing but its outline is said.
     pub fn new(id: Id, name: impl Into<String>, raster: Id, outline: Polygon) -> Self {
         let (name, tags, winds) = (name.into(), Vec::new(), WindChoice::All);
-        Self { id, name, raster, outline, tags, winds, stated_axis: None, cover: Cover::Unknown, sense: None }
+        Self {
+            id,
+            name,
+            raster,
+            outline,
+            tags,
+            winds,
+            stated_axis: None,
+            cover: Cover::Unknown,
+            sense: None,
+            crests: CrestEntry::default(),
+            populations: Vec::new(),
+        }
     }
 }
 
@@ -164,6 +185,21 @@ pub struct Obstacle {
     pub name: String,
     pub raster: Id,
     pub outline: Polygon,
+}
+
+/// A patch and another raster that shows the same ground: under another look, or at another time.
+#[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct Comparison {
+    pub id: Id,
+    pub name: String,
+    /// Outlined on the first raster.
+    pub patch: Id,
+    /// The second raster.
+    pub raster: Id,
+    /// Time from the first to the second, in years of the user's own reckoning; below 0 when the second is older.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub years: Option<f64>,
 }
 
 /// A wind record of the study and how to read it.
@@ -221,6 +257,7 @@ impl Sheet {
             bodies: Vec::new(),
             obstacles: Vec::new(),
             networks: Vec::new(),
+            comparisons: Vec::new(),
         }
     }
 
@@ -233,7 +270,8 @@ impl Sheet {
             .chain(self.patches.iter().map(|p| p.id))
             .chain(self.winds.iter().map(|w| w.id))
             .chain(self.obstacles.iter().map(|o| o.id))
-            .chain(self.networks.iter().map(|n| n.id));
+            .chain(self.networks.iter().map(|n| n.id))
+            .chain(self.comparisons.iter().map(|c| c.id));
         Id(used.max().map_or(1, |Id(n)| n + 1))
     }
 
@@ -256,6 +294,10 @@ impl Sheet {
 
     pub fn network(&self, id: Id) -> Option<&NetworkEntry> {
         self.networks.iter().find(|n| n.id == id)
+    }
+
+    pub fn comparison(&self, id: Id) -> Option<&Comparison> {
+        self.comparisons.iter().find(|c| c.id == id)
     }
 
     pub fn wind(&self, id: Id) -> Option<&WindEntry> {

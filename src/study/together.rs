@@ -21,10 +21,15 @@ pub fn together(sheet: &Sheet, patches: &[&PatchFinding], winds: &[Arc<WindStudy
 }
 
 fn joint(sheet: &Sheet, patches: &[&PatchFinding], winds: &WindStudy) -> Option<JointFinding> {
-    let judged =
-        |p: &&&PatchFinding| p.verdicts.iter().any(|v| v.winds == winds.finding.id && v.refused.is_none());
-    let trends: Vec<(String, TrendEvidence)> =
-        patches.iter().filter(judged).flat_map(|p| evidences(&p.name, &p.trend)).collect();
+    let judged = |p: &&&PatchFinding| {
+        let own = p.verdicts.iter().chain(p.pattern.populations.iter().flat_map(|q| &q.verdicts));
+        own.into_iter().any(|v| v.winds == winds.finding.id && v.refused.is_none())
+    };
+    let trends: Vec<(String, TrendEvidence)> = patches
+        .iter()
+        .filter(judged)
+        .flat_map(|p| evidences(&p.name, &p.trend, &p.pattern.populations))
+        .collect();
     if trends.len() < 2 {
         return None;
     }

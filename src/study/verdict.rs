@@ -8,7 +8,8 @@ use crate::science::alignment::{
 
 use super::winds::WindStudy;
 use super::{
-    ModeFinding, Patch, Sheet, TheoryFinding, TrendFinding, VerdictFinding, VerdictSettings, what_if,
+    ModeFinding, Patch, PopulationFinding, Sheet, TheoryFinding, TrendFinding, VerdictFinding,
+    VerdictSettings, what_if,
 };
 
 /// One verdict, or the words of its refusal.
@@ -64,9 +65,17 @@ fn evidence(trend: &TrendFinding) -> Option<TrendEvidence> {
     })
 }
 
-/// Every trend of a patch, named: its populations where it has two or more that each hold a tenth, else
-/// its mean.
-pub fn evidences(name: &str, trend: &TrendFinding) -> Vec<(String, TrendEvidence)> {
+/// Every trend of a patch, named: its populations where it has some; else the modes of its nodes where two or more
+/// hold a tenth each; else its mean.
+pub fn evidences(
+    name: &str,
+    trend: &TrendFinding,
+    populations: &[PopulationFinding],
+) -> Vec<(String, TrendEvidence)> {
+    if populations.len() > 1 {
+        let one = |p: &PopulationFinding| Some((format!("{name}, {}", p.name), evidence(&p.trend)?));
+        return populations.iter().filter_map(one).collect();
+    }
     let heavy: Vec<&ModeFinding> = trend.modes.iter().filter(|m| m.weight >= 0.1).collect();
     if heavy.len() < 2 {
         return evidence(trend).map(|e| (name.to_owned(), e)).into_iter().collect();

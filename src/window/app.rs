@@ -38,6 +38,11 @@ impl App {
         &self.model
     }
 
+    /// Whether no picture is still being made in the background for the table as last drawn.
+    pub fn is_settled(&self) -> bool {
+        self.table.is_settled()
+    }
+
     /// Gives a command, as a key or a button would.
     pub fn give(&mut self, command: Command) {
         apply(&mut self.model, command);

@@ -51,6 +51,9 @@ fn title_of(area: &str) -> &str {
         "wind" => "Winds and sand",
         "verdict" => "Verdict",
         "obstacle" => "Obstacles",
+        "crest" => "Crests",
+        "recovery" => "Injection and recovery",
+        "compare" => "Two pictures",
         other => other,
     }
 }
@@ -58,19 +61,31 @@ fn title_of(area: &str) -> &str {
 fn row(ui: &mut Ui, model: &Model, setting: &'static Setting, out: &mut Commands) {
     let soft = theme::color(look(model).ink_soft);
     let name = field_row(ui, setting.label, 210.0, |ui| {
-        if let Some(value) = field(ui, model, setting) {
-            out.push(Command::Setting(SettingCommand::Set { key: setting.key, value }));
-        }
-        if setting.unit != "1" {
-            ui.label(RichText::new(setting.unit).color(soft));
-        }
-        let now = (setting.get)(&model.sheet.settings);
-        if now != (setting.get)(&Settings::default()) && ui.small_button("Reset").clicked() {
-            out.push(Command::Setting(SettingCommand::Reset(setting.key)));
-        }
+        value(ui, model, setting, out);
         ui.label(RichText::new(range(setting)).small().color(soft));
     });
     name.on_hover_text(setting.help);
+}
+
+/// One setting on a page of the bench: its range is in what hovers over its name.
+pub(super) fn narrow_row(ui: &mut Ui, model: &Model, setting: &'static Setting, out: &mut Commands) {
+    let name = field_row(ui, setting.label, 130.0, |ui| value(ui, model, setting, out));
+    name.on_hover_text(format!("{} ({})", setting.help, range(setting)));
+}
+
+/// The field, its unit, and the way back to the default.
+fn value(ui: &mut Ui, model: &Model, setting: &'static Setting, out: &mut Commands) {
+    let soft = theme::color(look(model).ink_soft);
+    if let Some(value) = field(ui, model, setting) {
+        out.push(Command::Setting(SettingCommand::Set { key: setting.key, value }));
+    }
+    if setting.unit != "1" {
+        ui.label(RichText::new(setting.unit).color(soft));
+    }
+    let now = (setting.get)(&model.sheet.settings);
+    if now != (setting.get)(&Settings::default()) && ui.small_button("Reset").clicked() {
+        out.push(Command::Setting(SettingCommand::Reset(setting.key)));
+    }
 }
 
 fn field(ui: &mut Ui, model: &Model, setting: &'static Setting) -> Option<SettingValue> {

@@ -31,7 +31,9 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
 fn tools(ui: &mut Ui, model: &Model, out: &mut Commands) {
     let drainage = Tool::DRAINAGE.into_iter().filter(|tool| model.network_for(*tool).is_some());
     let channels = Tool::CHANNELS.into_iter().filter(|tool| model.network_for(*tool).is_some());
-    for tool in Tool::OUTLINING.into_iter().chain(drainage).chain(channels) {
+    // Those of crests are on their page; here only the one in hand, so that one word is always underlined.
+    let crests = Tool::CRESTS.into_iter().filter(|tool| model.session.tool == *tool);
+    for tool in Tool::OUTLINING.into_iter().chain(drainage).chain(channels).chain(crests) {
         let word = match tool {
             Tool::Hand => "Move",
             Tool::Polygon => "Polygon",
@@ -45,6 +47,12 @@ fn tools(ui: &mut Ui, model: &Model, out: &mut Commands) {
             Tool::Pen => "Trace",
             Tool::Strike => "Strike",
             Tool::Arrow => "Flow",
+            Tool::Ridge => "Draw crest",
+            Tool::Join => "Join",
+            Tool::Cut => "Cut",
+            Tool::Reject => "Reject",
+            Tool::Accept => "Accept",
+            Tool::Mask => "Mask",
         };
         let command = Command::Draw(DrawCommand::Take(tool));
         toggle(ui, model, out, command, word, model.session.tool == tool);

@@ -10,7 +10,8 @@ use super::controls::{Commands, button, look, rule};
 use super::{figure, ledger_networks, theme};
 use crate::desk::ledger::{Entry, entries};
 use crate::desk::{Command, Model, PatchCommand, RasterCommand, Standing, ViewCommand, WindCommand};
-use crate::plate::{Theme, small_rose, verdict_bar};
+use crate::ground::Axis;
+use crate::plate::{Theme, small_rose, small_rose_of_populations, verdict_bar};
 use crate::study::Id;
 
 const ENTRY_HEIGHT: f32 = 78.0;
@@ -83,7 +84,12 @@ pub(super) fn row(ui: &mut Ui, look: &Theme, selected: bool, spoken: &str, heigh
 
 fn picture(ui: &Ui, look: &Theme, entry: &Entry<'_>, rect: Rect) {
     if let Some(finding) = entry.finding {
-        let rose = small_rose(&finding.trend, ROSE_MM, look);
+        let axes: Vec<Axis> = finding.pattern.populations.iter().filter_map(|p| p.trend.axis).collect();
+        let rose = if axes.len() > 1 {
+            small_rose_of_populations(&finding.trend, &axes, ROSE_MM, look)
+        } else {
+            small_rose(&finding.trend, ROSE_MM, look)
+        };
         let scale = (ENTRY_HEIGHT - 18.0) / rose.height_mm as f32;
         figure::paint(ui.painter(), &rose, rect.min + vec2(12.0, 9.0), scale);
     }

@@ -14,8 +14,10 @@ use std::time::Instant;
 use rand::Rng as _;
 
 use ventifact::ground::{Grid, Point, Seed, Work};
+use ventifact::numeric::least_path::CostField;
 use ventifact::science::channel::detect::ChannelTone;
-use ventifact::science::channel::pen::Ground;
+use ventifact::science::channel::pen::ground;
+use ventifact::science::crest::{CrestModel, Pen};
 
 const PICKS: usize = 60;
 
@@ -61,7 +63,7 @@ fn response() {
         for (what, depth) in [("channels", 40.0), ("noise", 0.0)] {
             let picture = screen(width, height, depth);
             let (ground, laid) =
-                timed(|| Ground::of(&picture, ChannelTone::Dark, [2.0, 40.0], &work).expect("not stopped"));
+                timed(|| ground(&picture, ChannelTone::Dark, [2.0, 40.0], &work).expect("not stopped"));
             let ground = Arc::new(ground);
             let mut rng = Seed(5).stream("picks", 0);
             let (mut ways, mut fronts, mut live) = (Vec::new(), Vec::new(), Vec::new());
@@ -89,6 +91,41 @@ fn response() {
     }
 }
 
+/// Winding crests 30 px apart: the pen of crests, the same picks.
+fn along_crests() {
+    let work = Work::quiet();
+    let (width, height) = (2000, 1500);
+    let mut rng = Seed(7).stream("crests", 0);
+    let picture = Grid::from_fn(width, height, |c, r| {
+        let phase = (r as f64 + 20.0 * (c as f64 / 100.0).sin()) / 30.0;
+        ((TAU * phase).cos().max(0.0) + rng.random::<f64>()) as f32
+    });
+    let (pen, laid) = timed(|| {
+        Pen::of(&picture, Some(CrestModel::BrightRidge), Some(4.3), false, &work).expect("not stopped")
+    });
+    let (mut ways, mut fronts, mut live) = (Vec::new(), Vec::new(), Vec::new());
+    while ways.len() < PICKS {
+        let x = rng.random::<f64>() * 1000.0;
+        let (y, turn) = (rng.random::<f64>() * 1500.0, 1.2 * (rng.random::<f64>() - 0.5));
+        let (from, to) = (Point::new(x, y), Point::new(x + 1000.0 * turn.cos(), y + 1000.0 * turn.sin()));
+        if !(0.0..height as f64).contains(&to.y) {
+            continue;
+        }
+        let [from, to] = [from, to].map(|p| pen.snapped(p));
+        let (way, time) = timed(|| pen.field().way(from, to, &work).map(|way| way.map(|way| pen.line(&way))));
+        assert!(way.expect("not stopped").is_some());
+        ways.push(time);
+        let (front, time) = timed(|| pen.field().ways_from(from, &work));
+        fronts.push(time);
+        let front = front.expect("not stopped").expect("passable");
+        live.push(timed(|| front.to(to, &work).map(|way| way.map(|way| pen.line(&way)))).1);
+    }
+    println!("{width} × {height}, crests: ground laid in {:.0} ms (one of the threads)", 1e3 * laid);
+    println!("  way between two picks: {} (goal 100)", milliseconds(ways));
+    println!("  all ways from a pick: {}", milliseconds(fronts));
+    println!("  then the way to a pointer: {}", milliseconds(live));
+}
+
 /// Values of a two-dimensional little-endian f32 .npy file.
 fn read_npy(path: &Path, side: usize) -> Option<Vec<f32>> {
     let bytes = std::fs::read(path).ok()?;
@@ -114,7 +151,7 @@ fn peers() {
     let mut ratios = Vec::new();
     for _ in 0..5 {
         let (way, own) = pool.install(|| {
-            timed(|| Ground::of_costs(side, side, &costs).way(corner(0.1), corner(0.9), &Work::quiet()))
+            timed(|| CostField::new(side, side, &costs).way(corner(0.1), corner(0.9), &Work::quiet()))
         });
         let way = way.expect("not stopped").expect("a way");
         let output = Command::new(&python)
@@ -147,5 +184,6 @@ fn peers() {
 
 fn main() {
     response();
+    along_crests();
     peers();
 }

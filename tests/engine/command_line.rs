@@ -4,6 +4,9 @@ use std::fs;
 use std::path::Path;
 use std::process::{Command, Output};
 
+use ventifact::files::raster::write_tiff;
+use ventifact::ground::Grid;
+
 fn ventifact(args: &[&str], folder: &Path) -> Output {
     Command::new(env!("CARGO_BIN_EXE_ventifact"))
         .args(args)
@@ -92,4 +95,33 @@ fn methods_print_with_their_sources() {
     assert_eq!(text(&output.stdout), page);
     let bibliography = text(&ventifact(&["methods", "--bibtex"], folder.path()).stdout);
     assert!(bibliography.contains("@misc{"), "{bibliography}");
+}
+
+#[test]
+fn measure_takes_crests_of_ones_own() {
+    let folder = tempfile::tempdir().unwrap();
+    let waves = Grid::from_fn(320, 240, |c, r| ((c + 3 * r) % 16) as f32);
+    write_tiff(&folder.path().join("dunes.tif"), &waves, None).unwrap();
+    let lines = r#"{"type":"FeatureCollection","frame":"pixel","features":[{"type":"Feature","properties":{},
+        "geometry":{"type":"MultiLineString","coordinates":[[[20,40],[300,40]],[[-50,90],[500,90]]]}}]}"#;
+    fs::write(folder.path().join("own.geojson"), lines).unwrap();
+    let measure = |file: &str| {
+        let args = ["measure", "dunes.tif", "--crests", file, "--crests-only", "--out", "out"];
+        ventifact(&args, folder.path())
+    };
+    let output = measure("own.geojson");
+    let said = text(&output.stderr);
+    assert_eq!(output.status.code(), Some(0), "{said}");
+    assert!(said.contains("2 laid into Whole raster"), "{said}");
+    let found = fs::read_to_string(folder.path().join("out/findings.json")).unwrap();
+    let json: serde_json::Value = serde_json::from_str(&found).unwrap();
+    let crests = &json["patches"][0]["crests"];
+    assert_eq!((&crests["count"], &crests["origins"]["imported"]), (&2.into(), &2.into()));
+    // The second is cut at the raster's sides.
+    assert_eq!(crests["length"], 280.0 + 320.0);
+    fs::write(folder.path().join("bad.geojson"), lines.replace("[20,40]", "[20,null]")).unwrap();
+    let output = measure("bad.geojson");
+    let said = text(&output.stderr);
+    assert_eq!(output.status.code(), Some(2), "{said}");
+    assert!(said.contains("bad.geojson") && said.contains("feature 1: the position [20,null]"), "{said}");
 }

@@ -1,7 +1,9 @@
 //! Plates of invented findings from Sorrel Reach: exact bytes twice, real text, no missing glyph,
 //! nothing off the page. Set `VENTIFACT_PICTURES` to a folder to look at them.
 
+mod bedforms;
 mod networks;
+mod patterns;
 mod river_measures;
 mod rivers;
 mod sorrel;
@@ -14,7 +16,7 @@ use ventifact::plate::{
     dial, modes, pdf, png, posterior_bars, profile, rose, sand_rose, small_rose, spectrum,
 };
 use ventifact::plate::{svg, verdict_bar};
-use ventifact::study::{Findings, Id, PatchFinding, RasterFinding};
+use ventifact::study::{CrestSettings, Findings, Id, PatchFinding, RasterFinding};
 
 use sorrel::{
     Reach, drift, flow, no_trend, patch_finding, peak, plain_finding, raster_finding, reach, recipe,
@@ -92,6 +94,12 @@ fn plate_of(patch: &PatchFinding, outline: &Polygon, reach: &Reach, theme: &Them
         winds: &winds,
         recipe: &recipe,
         annulus: [1.0, 3.0],
+        bare: &picture,
+        masks: &[],
+        crests: &CrestSettings::default(),
+        recovery: None,
+        comparisons: &[],
+        flow: false,
     };
     patch_plate(&plate, 180.0, theme)
 }
@@ -111,6 +119,8 @@ fn overview(reach: &Reach, theme: &Theme) -> Figure {
     let covers = Bounds { min: Point::new(0.0, 0.0), max: Point::new(reach.size[0], reach.size[1]) };
     let findings = Findings {
         networks: Vec::new(),
+        recoveries: Vec::new(),
+        comparisons: Vec::new(),
         sheet_fingerprint: recipe().sheet_fingerprint,
         rasters: vec![raster_finding()],
         winds: vec![wind_finding()],
@@ -197,6 +207,12 @@ fn a_raster_without_ground_size_has_its_plate_in_pixels_and_landscape() {
         winds: &[],
         recipe: &recipe,
         annulus: [1.0, 3.0],
+        bare: &picture,
+        masks: &[],
+        crests: &CrestSettings::default(),
+        recovery: None,
+        comparisons: &[],
+        flow: false,
     };
     let figure = patch_plate(&plate, 277.0, &Theme::print());
     keep("pixels", &figure, 2400);

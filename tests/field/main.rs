@@ -3,6 +3,7 @@
 
 mod cells;
 mod channels;
+mod crests;
 mod drainage;
 mod look;
 mod measure;

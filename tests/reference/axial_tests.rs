@@ -3,11 +3,13 @@
 //! Data sets and abbreviations as in `axial.rs`.
 
 use ventifact::assert_close;
-use ventifact::ground::{Seed, Work};
+use ventifact::ground::{Axis, Seed, Work};
+use ventifact::science::axial::AxialSample;
 use ventifact::science::axial::equal_kappa::equal_kappa;
 use ventifact::science::axial::kuiper::kuiper;
 use ventifact::science::axial::mardia_watson_wheeler::{Form, mardia_watson_wheeler};
 use ventifact::science::axial::mixture::{MixtureSettings, mixtures};
+use ventifact::science::axial::two_samples::{AxesCompared, TwoSampleSettings, compare};
 use ventifact::science::axial::von_mises::{cdf, pdf};
 use ventifact::science::axial::wallraff::wallraff;
 use ventifact::science::axial::watson::{against_uniform, tail, u_squared_von_mises};
@@ -142,4 +144,32 @@ fn a14_cross_validated_bandwidth() {
     // SCIENCE A14: R gave 3.418 for B.6 set 1.
     let nu = ventifact::science::axial::density::likelihood_cv(&circle(&SET_1), None, 40.0);
     assert_close!(nu, 3.418, 5e-3, "ν, R bw.cv.ml.circular");
+}
+
+#[test]
+fn a22_a24_by_the_comparison_of_two_samples() {
+    // Independent axes are worth as many as they are: the comparison then gives the textbooks' numbers.
+    let halved = |deg: &[i32]| deg.iter().map(|d| Axis::from_deg(0.5 * f64::from(*d))).collect::<Vec<_>>();
+    let run = |a: &[i32], b: &[i32]| {
+        let (a, b) = (halved(a), halved(b));
+        let [first, second] = [&a, &b].map(|axes| AxialSample { axes, weights: None, nodes: None });
+        let settings = TwoSampleSettings { significance: 0.05, resamples: 99, permutations: 99 };
+        compare(&first, &second, &[], settings, Seed(1), &Work::quiet()).expect("nobody stops")
+    };
+    let test = |c: &AxesCompared, method: &str| {
+        let found = c.tests.iter().find(|t| t.method == method).expect("the test");
+        (found.statistic, found.p)
+    };
+    let zar = run(&ZAR_A, &ZAR_B);
+    assert_eq!(zar.tests[0].method, "axial.watson-williams", "κ above 2 and alike");
+    assert_close!(zar.tests[0].statistic, 1.612_773_299, 1e-6, "F, scipy; Zar prints 1.61");
+    // F with 1 and 18 degrees of freedom, R pf.
+    assert_close!(zar.tests[0].p, 0.220, 1e-3, "p");
+    let ranks = run(&RANKS_A, &RANKS_B);
+    let (u2, p) = test(&ranks, "axial.watson-two");
+    assert_close!(u2, 0.145_743_145_743, 1e-9, "U², R");
+    assert_close!(p, 0.112_603_45, 1e-6, "asymptotic p");
+    assert_close!(test(&ranks, "axial.mardia-watson-wheeler").0, 3.678_270_036, 1e-7, "W, R");
+    let spread = run(&SET_2, &SET_3);
+    assert_close!(test(&spread, "axial.wallraff").0, 2.941_692_604, 1e-7, "χ², R");
 }

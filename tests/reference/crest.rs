@@ -5,8 +5,8 @@ use std::f64::consts::{FRAC_PI_2, PI};
 use ventifact::assert_close;
 use ventifact::ground::{Azimuth, Grid, LocalFrame, Point, Polygon, Polyline, Seed, Work};
 use ventifact::science::crest::{
-    CrestLine, CrestModel, CrestSettings, Crests, End, Junction, SpacingSettings, binomial_p, crossings,
-    defects, detect, forks, numbers, spacing,
+    CrestLine, CrestModel, CrestOrigin, CrestSettings, Crests, End, Junction, SpacingSettings, binomial_p,
+    crossings, defects, detect, forks, numbers, spacing,
 };
 use ventifact::science::scene::{CrestScene, CrestShading, CrestTruth, speckle, speckled};
 
@@ -21,6 +21,9 @@ fn line(points: &[(f64, f64)], ends: [End; 2]) -> CrestLine {
         ends,
         bridged_px: 0.0,
         model: CrestModel::BrightRidge,
+        origin: CrestOrigin::Traced,
+        accepted: false,
+        by_hand_px: 0.0,
     }
 }
 

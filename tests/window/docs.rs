@@ -5,6 +5,7 @@ use std::sync::Arc;
 use std::time::{Duration, Instant};
 
 use egui::Theme;
+use egui_kittest::Harness;
 use ventifact::desk::{Command, Model, Opened, Page, PatchCommand, SheetCommand, ViewCommand};
 use ventifact::study::demo;
 use ventifact::window::App;
@@ -33,6 +34,19 @@ fn picture(size: [f32; 2], theme: Theme, page: Page, patch: usize, path: &str) {
     let chosen = app.model().sheet.patches.get(patch).map(|p| p.id);
     app.give(Command::Patch(PatchCommand::Select(chosen)));
 
+    rest(&mut harness);
+    if page == Page::Crests {
+        let app = harness.state_mut().as_mut().expect("the application");
+        app.give(Command::View(ViewCommand::WholePatch));
+        // Strokes would lie along the lines that are to be seen.
+        app.give(Command::View(ViewCommand::Strokes));
+        rest(&mut harness);
+    }
+    compare(&harness.render().expect("a picture"), path);
+}
+
+/// Draws frames until everything is measured and drawn.
+fn rest(harness: &mut Harness<'_, Option<App>>) {
     let end = Instant::now() + Duration::from_secs(240);
     let at_rest = |model: &Model| {
         let laid = || model.session.rasters.values().filter_map(Opened::laid);
@@ -51,7 +65,6 @@ fn picture(size: [f32; 2], theme: Theme, page: Page, patch: usize, path: &str) {
         quiet = if at_rest(model) { quiet + 1 } else { 0 };
         std::thread::sleep(Duration::from_millis(5));
     }
-    compare(&harness.render().expect("a picture"), path);
 }
 
 #[test]
@@ -72,4 +85,14 @@ fn verdict_by_day_on_a_large_screen() {
 #[test]
 fn spacing_by_night_on_a_large_screen() {
     picture([1920.0, 1200.0], Theme::Dark, Page::Spacing, 1, "docs/pictures/spacing-dark-1920x1200.png");
+}
+
+#[test]
+fn crests_by_day_on_a_small_screen() {
+    picture([1280.0, 800.0], Theme::Light, Page::Crests, 0, "docs/pictures/crests-light-1280x800.png");
+}
+
+#[test]
+fn crests_by_night_on_a_large_screen() {
+    picture([1920.0, 1200.0], Theme::Dark, Page::Crests, 1, "docs/pictures/crests-dark-1920x1200.png");
 }

@@ -6,7 +6,9 @@ use ventifact::desk::{Command, DrawCommand, Measured, Model, Opened, PatchComman
 use ventifact::ground::{Caution, Grid, LengthUnit, Place, Seed, Work};
 use ventifact::science::orientation::{TensorSettings, trend_nodes};
 use ventifact::science::scene::reach;
-use ventifact::study::{Id, Node, Patch, PatchFinding, SpectrumFinding, TrendFinding, fingerprint};
+use ventifact::study::{
+    Id, Node, Patch, PatchFinding, PatternFinding, SpectrumFinding, TrendFinding, fingerprint,
+};
 
 use super::harness::{self, compare};
 use super::{scene, table};
@@ -34,13 +36,14 @@ fn the_same_view_gives_the_same_bytes() {
 }
 
 /// Takes the trend of every patch, so that there are strokes to draw.
-fn measured(mut model: Model) -> Model {
+pub fn measured(mut model: Model) -> Model {
     let mosaic = reach::mosaic(Seed(1));
     let place = model.session.rasters.get(&Id(1)).and_then(Opened::laid).expect("laid").place.clone();
     for patch in model.sheet.patches.clone() {
         let fingerprint = fingerprint::of_patch(&model.sheet, &patch);
         let outcome = Ok(finding(&mosaic, &place, &patch, fingerprint.clone()));
-        model.session.results.take_patch(patch.id, Measured { outcome, fingerprint, exact: true });
+        let texture = fingerprint::of_texture(&model.sheet, &patch);
+        model.session.results.take_patch(patch.id, Measured { outcome, fingerprint, exact: true, texture });
     }
     model.session.results.follow(&model.sheet);
     model
@@ -84,6 +87,7 @@ fn finding(mosaic: &Grid<f32>, place: &Place, patch: &Patch, fingerprint: String
         cautions: Vec::<Caution>::new(),
         birth: Vec::new(),
         crests: Err("not traced".into()),
+        pattern: PatternFinding::default(),
         obstacles: None,
     }
 }

@@ -33,6 +33,13 @@ pub fn open(mut model: Model, size: [f32; 2], theme: Theme) -> Harness<'static, 
     harness
 }
 
+impl Bench {
+    /// Whether no texture is still being made.
+    pub fn is_settled(&self) -> bool {
+        self.table.is_settled()
+    }
+}
+
 /// Runs until tiles and drawing have come to rest.
 pub fn rest(harness: &mut Harness<'_, Bench>) {
     for _ in 0..3 {

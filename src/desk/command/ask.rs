@@ -4,7 +4,10 @@ use std::path::PathBuf;
 
 use crate::desk::{Ask, Model, Purpose};
 
-use super::{Command, PatchCommand, PlateCommand, RasterCommand, Record, SheetCommand, WindCommand, apply};
+use super::{
+    Command, CrestCommand, PatchCommand, PlateCommand, RasterCommand, Record, SheetCommand, WindCommand,
+    apply,
+};
 
 #[derive(Clone, Debug, PartialEq)]
 pub enum AskCommand {
@@ -56,6 +59,7 @@ fn follow_up(purpose: Purpose, path: PathBuf) -> Command {
         Purpose::OpenSheet => Command::Sheet(SheetCommand::Open(path)),
         Purpose::SaveSheet => Command::Sheet(SheetCommand::SaveAs(path)),
         Purpose::BringPatches => Command::Patch(PatchCommand::Bring(path)),
+        Purpose::ImportCrests => Command::Crest(CrestCommand::Import(path)),
         Purpose::ExportPlate => Command::Plate(PlateCommand::Export(path)),
         Purpose::HandOver => Command::Plate(PlateCommand::HandOver(path)),
         Purpose::ImportWinds => Command::Wind(WindCommand::Preview(path)),

@@ -3,7 +3,7 @@
 use crate::desk::{Draft, Model, Tool, Tracing, pen};
 use crate::ground::{Point, Polygon};
 
-use super::{Command, NetworkCommand, ObstacleCommand, PatchCommand, Record, apply};
+use super::{Command, CrestCommand, NetworkCommand, ObstacleCommand, PatchCommand, Record, apply, crest};
 
 #[derive(Clone, Debug, PartialEq)]
 pub enum DrawCommand {
@@ -32,6 +32,12 @@ impl DrawCommand {
         Self::Take(Tool::Pen),
         Self::Take(Tool::Strike),
         Self::Take(Tool::Arrow),
+        Self::Take(Tool::Ridge),
+        Self::Take(Tool::Join),
+        Self::Take(Tool::Cut),
+        Self::Take(Tool::Reject),
+        Self::Take(Tool::Accept),
+        Self::Take(Tool::Mask),
         Self::Finish,
         Self::Retract,
         Self::Cancel,
@@ -48,7 +54,7 @@ impl DrawCommand {
             Self::Finish => Record::new(
                 "draw.finish",
                 "Close the outline",
-                "Makes a patch of the outline; ends a traced channel.",
+                "Makes a patch of the outline; ends a traced channel or crest.",
             )
             .key("Enter"),
             Self::Cancel => {
@@ -73,6 +79,12 @@ impl DrawCommand {
                     "no network on the image on the table is selected"
                 })
             }
+            Self::Take(tool) if Tool::CRESTS.contains(tool) && model.crest_patch().is_none() => {
+                Some(crest::NO_PATCH)
+            }
+            Self::Lay(_) if Tool::CRESTS.contains(&model.session.tool) && model.crest_patch().is_none() => {
+                Some(crest::NO_PATCH)
+            }
             Self::Lay(_)
                 if needs_network(model.session.tool) && model.network_for(model.session.tool).is_none() =>
             {
@@ -84,7 +96,7 @@ impl DrawCommand {
             Self::Retract if tracing.is_some() => None,
             Self::Finish if tracing.is_some() => {
                 let whole = tracing.is_some_and(Tracing::is_whole);
-                (!whole).then_some("a channel needs two picks")
+                (!whole).then_some("a line needs two picks")
             }
             Self::Retract | Self::Finish if draft.is_none() => Some("no outline is under way"),
             Self::Finish if draft.and_then(Draft::finished).is_none() => {
@@ -103,6 +115,8 @@ impl DrawCommand {
                 model.session.tool = tool;
                 model.session.draft = None;
                 model.session.tracing = None;
+                // Nobody works on what is not seen.
+                model.view.layers.crests |= Tool::CRESTS.contains(&tool);
             }
             Self::Lay(point) => lay(model, point),
             Self::Retract if model.session.tracing.is_some() => pen::retract(model),
@@ -185,14 +199,54 @@ fn tool_record(tool: Tool) -> Record {
             Record::new("draw.arrow", "State the flow", "Two clicks beside a reach: the water went this way.")
                 .key("A")
         }
+        Tool::Ridge => Record::new(
+            "draw.ridge",
+            "Draw crest",
+            "Click along a crest, from the end of a line to lengthen it; Enter ends it.",
+        )
+        .shift("R"),
+        Tool::Join => {
+            Record::new("draw.join", "Join crests", "Click the end of one line, then the end of another.")
+                .shift("J")
+        }
+        Tool::Cut => Record::new(
+            "draw.cut",
+            "Cut crest",
+            "Click a line to make two of it; click the cut to take it back.",
+        )
+        .shift("C"),
+        Tool::Reject => Record::new(
+            "draw.reject",
+            "Reject crest",
+            "Click a line that is no crest; click its cross to bring it back.",
+        )
+        .shift("X"),
+        Tool::Accept => Record::new(
+            "draw.accept",
+            "Accept crest",
+            "Click a line you looked at and let stand; click it again to take that back.",
+        )
+        .shift("A"),
+        Tool::Mask => Record::new(
+            "draw.mask",
+            "Mask ground",
+            "Outline ground that is no bedform: a pond, a road, a seam; close with Enter.",
+        )
+        .shift("M"),
     }
 }
 
 fn lay(model: &mut Model, point: Point) {
     let Some(raster) = model.shown_raster().map(|r| r.id) else { return };
     let tool = model.session.tool;
-    if tool == Tool::Pen {
+    if tool.traces() {
         return pen::pick(model, point);
+    }
+    if tool.takes_one() && Tool::CRESTS.contains(&tool) {
+        if let Some(command) = CrestCommand::of_click(model, tool, point) {
+            apply(model, Command::Crest(command));
+        }
+        return;
     }
     if tool.takes_one() {
         if let Some(command) = NetworkCommand::of_click(model, tool, point) {
@@ -224,6 +278,11 @@ fn finish(model: &mut Model) {
             let Some(id) = model.network_for(Tool::Lake).map(|n| n.id) else { return };
             let outline = Polygon { outer: ring, holes: Vec::new() };
             Command::Network(NetworkCommand::MarkClosed { id, outline })
+        }
+        (Tool::Mask, _) => {
+            let Some(id) = model.crest_patch().map(|patch| patch.id) else { return };
+            let outline = Polygon { outer: ring, holes: Vec::new() };
+            Command::Crest(CrestCommand::Mask { id, outline })
         }
         (Tool::Arrow, _) => {
             let Some(id) = model.network_for(Tool::Arrow).map(|n| n.id) else { return };

@@ -1,6 +1,6 @@
 //! Stopping what runs in the background.
 
-use crate::desk::{Model, Slot};
+use crate::desk::{Model, Slot, recovering};
 
 use super::Record;
 
@@ -10,10 +10,12 @@ pub enum JobCommand {
     StopAll,
     /// Forgets what was measured and measures everything again.
     MeasureAgain,
+    /// Lays bedforms into the selected patch and seeks them again.
+    Recover,
 }
 
 impl JobCommand {
-    pub(super) const LISTED: &[Self] = &[Self::MeasureAgain, Self::StopAll];
+    pub(super) const LISTED: &[Self] = &[Self::MeasureAgain, Self::Recover, Self::StopAll];
 
     pub(super) fn record(&self) -> Record {
         match self {
@@ -22,6 +24,11 @@ impl JobCommand {
                 Record::new("job.measure", "Measure again", "Measures every patch and network anew.")
                     .key("F5")
             }
+            Self::Recover => Record::new(
+                "job.recover",
+                "Lay bedforms in",
+                "Lays bedforms of known trend into the selected patch and counts how many are found again.",
+            ),
             Self::StopAll => {
                 Record::new("job.stop-all", "Stop all work", "Ends everything that runs.").ctrl("Period")
             }
@@ -35,6 +42,10 @@ impl JobCommand {
             Self::MeasureAgain if model.sheet.patches.is_empty() && model.sheet.networks.is_empty() => {
                 Some("the sheet has neither patch nor network")
             }
+            Self::Recover if model.selected_patch().is_none() => Some("no patch is selected"),
+            Self::Recover if model.sheet.settings.recovery.trends == 0 => {
+                Some("the settings leave it out: no trend is laid in")
+            }
             _ => None,
         }
     }
@@ -46,8 +57,11 @@ impl JobCommand {
             Self::MeasureAgain => {
                 model.session.jobs.abandon(Slot::Measure);
                 model.session.jobs.abandon(Slot::Networks);
+                model.session.jobs.abandon(Slot::Comparisons);
+                model.session.jobs.abandon(Slot::Recovery);
                 model.session.forget_measured();
             }
+            Self::Recover => recovering::ask(model),
         }
     }
 }
@@ -62,5 +76,11 @@ fn stop(model: &mut Model, slots: &[Slot]) {
     }
     if slots.contains(&Slot::Networks) {
         model.session.pause_charting();
+    }
+    if slots.contains(&Slot::Recovery) {
+        model.session.recovering.pause();
+    }
+    if slots.contains(&Slot::Comparisons) {
+        model.session.comparing.pause();
     }
 }

@@ -2,6 +2,8 @@
 
 mod ask;
 mod body;
+mod compare;
+mod crest;
 mod draw;
 mod job;
 mod network;
@@ -16,6 +18,8 @@ mod wind;
 
 pub use ask::AskCommand;
 pub use body::BodyCommand;
+pub use compare::ComparisonCommand;
+pub use crest::CrestCommand;
 pub use draw::DrawCommand;
 pub use job::JobCommand;
 pub use network::NetworkCommand;
@@ -42,6 +46,8 @@ pub enum Command {
     Patch(PatchCommand),
     Obstacle(ObstacleCommand),
     Network(NetworkCommand),
+    Crest(CrestCommand),
+    Comparison(ComparisonCommand),
     Draw(DrawCommand),
     Wind(WindCommand),
     Plate(PlateCommand),
@@ -87,6 +93,10 @@ impl Record {
         Self { key: Some(Chord { command: false, shift: false, alt: false, key }), ..self }
     }
 
+    const fn shift(self, key: &'static str) -> Self {
+        Self { key: Some(Chord { command: false, shift: true, alt: false, key }), ..self }
+    }
+
     const fn ctrl(self, key: &'static str) -> Self {
         Self { key: Some(Chord { command: true, shift: false, alt: false, key }), ..self }
     }
@@ -121,6 +131,8 @@ impl Command {
             Self::Patch(c) => c.record(),
             Self::Obstacle(c) => c.record(),
             Self::Network(c) => c.record(),
+            Self::Crest(c) => c.record(),
+            Self::Comparison(c) => c.record(),
             Self::Draw(c) => c.record(),
             Self::Wind(c) => c.record(),
             Self::Plate(c) => c.record(),
@@ -151,6 +163,8 @@ impl Command {
             Self::Patch(c) => c.refusal(model),
             Self::Obstacle(c) => c.refusal(model),
             Self::Network(c) => c.refusal(model),
+            Self::Crest(c) => c.refusal(model),
+            Self::Comparison(c) => c.refusal(model),
             Self::Draw(c) => c.refusal(model),
             Self::Wind(c) => c.refusal(model),
             Self::Plate(c) => c.refusal(model),
@@ -172,6 +186,8 @@ impl Command {
             Self::Sheet(_)
             | Self::Ask(_)
             | Self::Obstacle(_)
+            | Self::Crest(_)
+            | Self::Comparison(_)
             | Self::Draw(_)
             | Self::Job(_)
             | Self::Plate(_)
@@ -199,8 +215,10 @@ pub fn listed() -> Vec<Command> {
     let view = ViewCommand::LISTED.iter().cloned().map(Command::View);
     let obstacle = ObstacleCommand::LISTED.iter().cloned().map(Command::Obstacle);
     let network = NetworkCommand::LISTED.iter().cloned().map(Command::Network);
+    let crest = CrestCommand::LISTED.iter().cloned().map(Command::Crest);
+    let compare = ComparisonCommand::LISTED.iter().cloned().map(Command::Comparison);
     let making = sheet.chain(raster).chain(wind).chain(draw).chain(patch).chain(obstacle).chain(network);
-    making.chain(plate).chain(setting).chain(job).chain(view).collect()
+    making.chain(crest).chain(compare).chain(plate).chain(setting).chain(job).chain(view).collect()
 }
 
 /// Does what `command` asks. The only way the sheet and the view change.
@@ -223,6 +241,8 @@ pub fn apply(model: &mut Model, command: Command) {
         Command::Patch(c) => c.apply(model),
         Command::Obstacle(c) => c.apply(model),
         Command::Network(c) => c.apply(model),
+        Command::Crest(c) => c.apply(model),
+        Command::Comparison(c) => c.apply(model),
         Command::Draw(c) => c.apply(model),
         Command::Wind(c) => c.apply(model),
         Command::Plate(c) => c.apply(model),

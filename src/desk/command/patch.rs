@@ -6,7 +6,7 @@ use crate::desk::{Ask, MergeKey, Model, Purpose};
 use crate::files::layers::read_patches;
 use crate::ground::{Axis, Point, Polygon};
 use crate::science::alignment::backwards::{Cover, Sense};
-use crate::study::{Id, Patch, WindChoice};
+use crate::study::{Id, Patch, PopulationName, WindChoice};
 
 use super::Record;
 
@@ -48,6 +48,12 @@ pub enum PatchCommand {
     StateAxis {
         id: Id,
         axis: Option<Axis>,
+    },
+    /// What the population of this trend is called; an empty name takes its name away.
+    NamePopulation {
+        id: Id,
+        axis: Axis,
+        name: String,
     },
     AskBring,
     /// Adds the outlines of a GeoPackage or GeoJSON file to the raster on the table.
@@ -91,6 +97,12 @@ impl PatchCommand {
                 "patch.state-axis",
                 "State an axis",
                 "An axis known from elsewhere, weighed like a theory.",
+            )
+            .editing(),
+            Self::NamePopulation { .. } => Record::new(
+                "patch.name-population",
+                "Name population",
+                "What the bedforms of this trend are called.",
             )
             .editing(),
             Self::AskBring => Record::new(
@@ -147,6 +159,7 @@ impl PatchCommand {
             | Self::Cover { id, .. }
             | Self::Sense { id, .. }
             | Self::StateAxis { id, .. }
+            | Self::NamePopulation { id, .. }
                 if model.sheet.patch(*id).is_none() =>
             {
                 Some("the patch is gone")
@@ -172,6 +185,9 @@ impl PatchCommand {
             Self::Cover { id, cover } => change(model, id, |patch| patch.cover = cover),
             Self::Sense { id, sense } => change(model, id, |patch| patch.sense = sense),
             Self::StateAxis { id, axis } => change(model, id, |patch| patch.stated_axis = axis),
+            Self::NamePopulation { id, axis, name } => change(model, id, |patch| {
+                name_population(&mut patch.populations, axis, name.trim());
+            }),
             Self::AskBring => model.session.ask = Some(Ask::new(Purpose::BringPatches, "")),
             Self::Bring(path) => bring(model, &path),
             Self::Select(id) => select(model, id),
@@ -205,6 +221,15 @@ fn bring(model: &mut Model, path: &Path) {
     }
     read.notes.iter().for_each(|note| model.session.notices.problem(note.as_str()));
     model.session.notices.done_with_undo(format!("Brought in {count} patches"));
+}
+
+/// Gives the population of this trend its name, in place of the one it had. Measured anew, its trend may
+/// have moved a little since.
+fn name_population(names: &mut Vec<PopulationName>, axis: Axis, name: &str) {
+    names.retain(|known| known.axis.separation(axis) > 10.0);
+    if !name.is_empty() {
+        names.push(PopulationName { axis, name: name.to_owned() });
+    }
 }
 
 fn change(model: &mut Model, id: Id, f: impl FnOnce(&mut Patch)) {
@@ -256,6 +281,7 @@ fn duplicate(model: &mut Model) {
 fn delete(model: &mut Model) {
     let Some(at) = model.sheet.patches.iter().position(|p| Some(p.id) == model.view.patch) else { return };
     let gone = model.sheet.patches.remove(at);
+    model.sheet.comparisons.retain(|c| c.patch != gone.id);
     let next = model.sheet.patches.get(at).or(model.sheet.patches.last()).map(|p| p.id);
     select(model, next);
     model.session.notices.done_with_undo(format!("Deleted {}", gone.name));

@@ -51,7 +51,9 @@ impl PlateCommand {
         };
         match self {
             Self::Choose(_) => None,
-            Self::AskExport | Self::Export(_) if model.view.plate.motif == Motif::Patch => {
+            Self::AskExport | Self::Export(_)
+                if matches!(model.view.plate.motif, Motif::Patch | Motif::Crests) =>
+            {
                 let id = model.view.patch;
                 let current = id.is_some_and(|id| model.session.results.standing(id).is_current());
                 (!current).then_some("no selected patch is measured as the sheet stands")
@@ -78,7 +80,9 @@ impl PlateCommand {
             }
             Self::AskExport => {
                 let name = match model.view.plate.motif {
-                    Motif::Patch => model.selected_patch().map_or("plate", |p| p.name.as_str()),
+                    Motif::Patch | Motif::Crests => {
+                        model.selected_patch().map_or("plate", |p| p.name.as_str())
+                    }
                     Motif::Network => model.selected_network().map_or("plate", |n| n.name.as_str()),
                     Motif::Overview => model.shown_raster().map_or("plate", |r| r.name.as_str()),
                 };

@@ -166,6 +166,8 @@ fn remove(model: &mut Model, id: Id) {
     let name = model.sheet.raster(id).map(|r| r.name.clone()).unwrap_or_default();
     model.sheet.rasters.retain(|r| r.id != id);
     model.sheet.patches.retain(|p| p.raster != id);
+    let patches: Vec<Id> = model.sheet.patches.iter().map(|p| p.id).collect();
+    model.sheet.comparisons.retain(|c| c.raster != id && patches.contains(&c.patch));
     model.sheet.obstacles.retain(|o| o.raster != id);
     model.sheet.networks.retain(|n| n.raster != id);
     for network in &mut model.sheet.networks {

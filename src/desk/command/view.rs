@@ -17,6 +17,8 @@ pub enum ViewCommand {
     PreviousPage,
     Theme,
     Strokes,
+    Flow,
+    Crests,
     Outlines,
     Names,
     Graticule,
@@ -54,7 +56,9 @@ impl ViewCommand {
         Self::Open(Dialog::Bodies),
         Self::Page(Page::Ground),
         Self::Page(Page::Trend),
+        Self::Page(Page::Light),
         Self::Page(Page::Spacing),
+        Self::Page(Page::Crests),
         Self::Page(Page::Winds),
         Self::Page(Page::Verdict),
         Self::Page(Page::Obstacles),
@@ -69,6 +73,8 @@ impl ViewCommand {
         Self::Closer,
         Self::Farther,
         Self::Strokes,
+        Self::Flow,
+        Self::Crests,
         Self::Outlines,
         Self::Names,
         Self::Graticule,
@@ -96,6 +102,15 @@ impl ViewCommand {
             }
             Self::Strokes => {
                 Record::new("view.strokes", "Trend strokes", "Shows or hides the strokes.").key("S")
+            }
+            Self::Flow => Record::new(
+                "view.flow",
+                "Flow texture",
+                "Shows the trend as a texture drawn out along it, in place of strokes.",
+            )
+            .key("Z"),
+            Self::Crests => {
+                Record::new("view.crests", "Crest lines", "Shows or hides the crest lines.").key("B")
             }
             Self::Outlines => {
                 Record::new("view.outlines", "Outlines", "Shows or hides the patches.").key("O")
@@ -165,6 +180,8 @@ impl ViewCommand {
             Self::PreviousPage => model.view.page = model.view.page.turned(-1),
             Self::Theme => model.view.theme = model.view.theme.other(),
             Self::Strokes => layers.strokes = !layers.strokes,
+            Self::Flow => layers.flow = !layers.flow,
+            Self::Crests => layers.crests = !layers.crests,
             Self::Outlines => layers.outlines = !layers.outlines,
             Self::Names => layers.names = !layers.names,
             Self::Graticule => layers.graticule = !layers.graticule,
@@ -238,19 +255,23 @@ fn page_record(page: Page) -> Record {
     match page {
         Page::Ground => Record::new("view.ground", "Bench: ground", "Place, north, light, tone.").alt("1"),
         Page::Trend => Record::new("view.trend", "Bench: trend", "Rose, modes, numbers.").alt("2"),
-        Page::Spacing => Record::new("view.spacing", "Bench: spacing", "Spectrum and wavelength.").alt("3"),
-        Page::Winds => Record::new("view.winds", "Bench: winds", "Sand rose and drift.").alt("4"),
-        Page::Verdict => Record::new("view.verdict", "Bench: verdict", "The dial and the theories.").alt("5"),
+        Page::Light => Record::new("view.light", "Bench: light", "What the light may fake or hide.").alt("3"),
+        Page::Spacing => Record::new("view.spacing", "Bench: spacing", "Spectrum and wavelength.").alt("4"),
+        Page::Crests => {
+            Record::new("view.crests-page", "Bench: crests", "Crest lines, lengths, ends and forks.").alt("5")
+        }
+        Page::Winds => Record::new("view.winds", "Bench: winds", "Sand rose and drift.").alt("6"),
+        Page::Verdict => Record::new("view.verdict", "Bench: verdict", "The dial and the theories.").alt("7"),
         Page::Regimes => {
-            Record::new("view.regimes", "Bench: regimes", "Two winds that would make the trend.").alt("6")
+            Record::new("view.regimes", "Bench: regimes", "Two winds that would make the trend.").alt("8")
         }
         Page::Obstacles => {
-            Record::new("view.obstacles", "Bench: obstacles", "Crests round outcrops as wind vanes.").alt("7")
+            Record::new("view.obstacles", "Bench: obstacles", "Crests round outcrops as wind vanes.").alt("9")
         }
         Page::Channels => {
             Record::new("view.channels", "Bench: channels", "Networks, their measures and palaeo-flow.")
-                .alt("8")
+                .alt("0")
         }
-        Page::Plate => Record::new("view.plate", "Bench: plate", "The figure for print.").alt("9"),
+        Page::Plate => Record::new("view.plate", "Bench: plate", "The figure for print.").alt("Minus"),
     }
 }

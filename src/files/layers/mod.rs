@@ -1,7 +1,9 @@
-//! Layers for other programs: GeoPackage, GeoJSON and CSV out; patches in.
+//! Layers for other programs: GeoPackage, GeoJSON and CSV out; patches and lines in.
 
+mod features;
 mod geojson;
 mod geopackage;
+mod lines;
 mod patches;
 mod srs;
 mod table;
@@ -17,6 +19,7 @@ use crate::ground::{Point, Polygon, Polyline};
 
 pub use geojson::write_geojson;
 pub use geopackage::write_geopackage;
+pub use lines::{LineImport, LineShape, read_lines};
 pub use patches::{PatchImport, PatchShape, read_patches, write_patches};
 pub use srs::Srs;
 pub use table::write_csv;
@@ -92,7 +95,7 @@ pub enum LayerError {
     Database { path: PathBuf, doing: &'static str, source: rusqlite::Error },
     #[error("{}: not valid JSON: {source}", path.display())]
     Json { path: PathBuf, source: serde_json::Error },
-    #[error("{} is larger than {limit} bytes, too large for a list of patches", path.display())]
+    #[error("{} is larger than {limit} bytes, too large for a list of features", path.display())]
     TooLarge { path: PathBuf, limit: u64 },
     #[error("{}: {problem}", path.display())]
     Content { path: PathBuf, problem: String },

@@ -196,7 +196,7 @@ impl Reader<'_> {
                 }
                 Geometry::MultiPolygon(parts)
             }
-            other => return Err(format!("geometries of type {other} are not read; polygons are")),
+            other => return Err(format!("geometries of type {other} are not read; polygons and lines are")),
         }))
     }
 

@@ -95,6 +95,13 @@ pub struct RasterInfo {
     pub cautions: Vec<Caution>,
 }
 
+impl Light {
+    /// Where the light comes from: the Sun's azimuth, else the way back along the radar's look.
+    pub fn from(self) -> Option<Azimuth> {
+        self.sun_azimuth.or_else(|| self.radar_look.map(Azimuth::reversed))
+    }
+}
+
 impl SampleType {
     /// `"u8"`, `"f32"`, ...
     pub fn name(self) -> &'static str {

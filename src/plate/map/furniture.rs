@@ -38,8 +38,8 @@ fn round_length(value: f64) -> f64 {
     finer.map_or(coarse, |l| l.max(coarse))
 }
 
-/// The bar from `at` to the right, its label and what it holds for after it.
-pub(super) fn draw_scale_bar(sketch: &mut Sketch, bar: &ScaleBar, at: Point, theme: &Theme) {
+/// The bar from `at` to the right, its label and, where `room_mm` allows, what it holds for after it.
+pub(super) fn draw_scale_bar(sketch: &mut Sketch, bar: &ScaleBar, at: Point, room_mm: f64, theme: &Theme) {
     let height = 1.0;
     let edge = theme.stroke(theme.ink, theme.widths.thin);
     let piece = bar.length_mm / 4.0;
@@ -53,8 +53,11 @@ pub(super) fn draw_scale_bar(sketch: &mut Sketch, bar: &ScaleBar, at: Point, the
     let x = at.x + bar.length_mm + 1.4;
     sketch.text(Point::new(x, base), bar.label.as_str(), Type::new(size, theme.ink).bold());
     let after = x + font::text_width(&bar.label, size, true) + 1.4;
-    let note = "along image rows at the map’s centre";
-    sketch.text(Point::new(after, base), note, Type::new(size, theme.ink_soft));
+    let notes = ["along image rows at the map’s centre", "along image rows"];
+    let fits = |note: &&str| after - at.x + font::text_width(note, size, false) <= room_mm;
+    if let Some(note) = notes.into_iter().find(fits) {
+        sketch.text(Point::new(after, base), note, Type::new(size, theme.ink_soft));
+    }
 }
 
 /// The direction of true north on the page at a pixel.

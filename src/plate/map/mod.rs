@@ -1,6 +1,9 @@
 //! The map: a raster inside a printed-map margin, with patches, trend strokes, small roses, a
 //! true-north arrow and a scale bar.
 
+mod crest_key;
+mod crests;
+mod flow;
 mod furniture;
 mod margin;
 mod networks;
@@ -9,6 +12,9 @@ mod strokes;
 mod tone;
 mod view;
 
+pub use crest_key::crest_key;
+pub use crests::MapCrests;
+pub use flow::{FlowField, flow, overlaid};
 pub use networks::{MapNetwork, network_key};
 pub use tone::{Picture, toned};
 pub use view::MapView;
@@ -34,6 +40,14 @@ pub struct MapPatch<'a> {
     pub is_subject: bool,
 }
 
+/// What lies over the raster.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub struct MapLayers<'a> {
+    pub patches: &'a [MapPatch<'a>],
+    pub networks: &'a [MapNetwork<'a>],
+    pub crests: &'a [MapCrests<'a>],
+}
+
 /// Distance between strokes, millimetres.
 const STROKE_PITCH_MM: f64 = 3.4;
 const ROSE_MM: f64 = 13.0;
@@ -49,6 +63,12 @@ pub fn map(
     size_mm: [f64; 2],
     theme: &Theme,
 ) -> Figure {
+    map_of(view, &MapLayers { patches, networks, crests: &[] }, size_mm, theme)
+}
+
+/// The map with crests as well.
+pub fn map_of(view: &MapView, layers: &MapLayers, size_mm: [f64; 2], theme: &Theme) -> Figure {
+    let MapLayers { patches, networks, crests } = *layers;
     let [_, _, right, bottom] = margin::ROOM;
     let sheet = laid(view, size_mm);
     let mut inside = Sketch::default();
@@ -63,6 +83,7 @@ pub fn map(
         let drawn = strokes::strokes(patch.nodes, &sheet, view.place, STROKE_PITCH_MM);
         strokes::draw(&mut inside, &drawn, theme);
     }
+    crests::draw(&mut inside, crests, &sheet, theme);
     for network in networks {
         networks::draw(&mut inside, network, &sheet, theme);
     }
@@ -85,7 +106,7 @@ pub fn map(
     margin::draw(&mut sketch, &sheet, view.place, theme);
     if let Some(bar) = furniture::scale_bar(&sheet, view.place) {
         let at = Point::new(sheet.min.x, sheet.max.y + bottom + 1.0);
-        furniture::draw_scale_bar(&mut sketch, &bar, at, theme);
+        furniture::draw_scale_bar(&mut sketch, &bar, at, sheet.width() + right, theme);
     }
     sketch.finish(sheet.max.x + right, sheet.max.y + bottom + SCALE_BAR_MM)
 }
@@ -172,6 +193,19 @@ fn around(centre: Point, half_width: f64, half_height: f64) -> Bounds {
 
 fn overlap(a: Bounds, b: Bounds) -> bool {
     a.min.x < b.max.x && b.min.x < a.max.x && a.min.y < b.max.y && b.min.y < a.max.y
+}
+
+/// The pixels of a patch and a twelfth more on every side, on the raster; the whole raster for an empty outline.
+pub fn close_up(outline: &Polygon, raster_px: [f64; 2]) -> Bounds {
+    let whole = Bounds { min: Point::default(), max: Point::new(raster_px[0], raster_px[1]) };
+    let Some(bounds) = outline.bounds() else { return whole };
+    let pad = bounds.width().max(bounds.height()) / 12.0;
+    let min = Point::new((bounds.min.x - pad).max(0.0).floor(), (bounds.min.y - pad).max(0.0).floor());
+    let max = Point::new(
+        (bounds.max.x + pad).min(raster_px[0]).ceil(),
+        (bounds.max.y + pad).min(raster_px[1]).ceil(),
+    );
+    if max.x > min.x && max.y > min.y { Bounds { min, max } } else { whole }
 }
 
 /// The pixels around a patch that its map shows: its bounds and a third more on every side, widened

@@ -13,6 +13,31 @@ pub struct MapView<'a> {
     pub place: &'a Place,
 }
 
+impl MapView<'_> {
+    /// The part of the picture that shows `to`, widened to whole cells of it, and the pixels it covers; `None` where
+    /// the two do not meet.
+    pub fn cropped(&self, to: Bounds) -> Option<(Picture, Bounds)> {
+        let Picture { width, height, rgba } = self.picture;
+        let cell = [self.covers.width() / *width as f64, self.covers.height() / *height as f64];
+        let origin = self.covers.min;
+        let first = |v: f64| v.floor().max(0.0) as usize;
+        let last = |v: f64, most: usize| (v.ceil().max(0.0) as usize).min(most);
+        let (left, right) =
+            (first((to.min.x - origin.x) / cell[0]), last((to.max.x - origin.x) / cell[0], *width));
+        let (top, bottom) =
+            (first((to.min.y - origin.y) / cell[1]), last((to.max.y - origin.y) / cell[1], *height));
+        if left >= right || top >= bottom {
+            return None;
+        }
+        let rows = (top..bottom).flat_map(|row| &rgba[4 * (row * width + left)..4 * (row * width + right)]);
+        let picture = Picture { width: right - left, height: bottom - top, rgba: rows.copied().collect() };
+        let at = |col: usize, row: usize| {
+            Point::new(origin.x + cell[0] * col as f64, origin.y + cell[1] * row as f64)
+        };
+        Some((picture, Bounds { min: at(left, top), max: at(right, bottom) }))
+    }
+}
+
 /// Pixels to millimetres: upright, scaled so that the ground has its true shape at the centre.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub(super) struct Sheet {
@@ -104,6 +129,20 @@ pub(super) mod tests {
         assert_close!(sheet.height() / sheet.width(), 2.0, 1e-12);
         let there = sheet.at(Point::new(30.0, 70.0));
         assert_close!(sheet.pixel(there).y, 70.0, 1e-9);
+    }
+
+    #[test]
+    fn a_cropped_view_keeps_its_pixels_in_place() {
+        let place = Place::pixels(0.0);
+        let rgba: Vec<u8> = (0..8 * 4).flat_map(|i| [i as u8; 4]).collect();
+        let picture = Picture { width: 8, height: 4, rgba: rgba.into() };
+        let view = MapView { picture: &picture, covers: covers(80.0, 40.0), place: &place };
+        let to = Bounds { min: Point::new(25.0, 10.0), max: Point::new(61.0, 500.0) };
+        let (part, bounds) = view.cropped(to).expect("a part");
+        assert_eq!((part.width, part.height, part.rgba[0]), (5, 3, 8 + 2));
+        assert_eq!((bounds.min, bounds.max), (Point::new(20.0, 10.0), Point::new(70.0, 40.0)));
+        let away = Bounds { min: Point::new(90.0, 0.0), max: Point::new(99.0, 9.0) };
+        assert_eq!(view.cropped(away), None);
     }
 
     #[test]

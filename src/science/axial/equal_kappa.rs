@@ -24,16 +24,25 @@ pub static METHOD: Method = Method {
 /// (χ², p) of samples of circle angles; two or more, each of at least five.
 pub fn equal_kappa(samples: &[&[f64]]) -> (f64, f64) {
     let each: Vec<Resultant> = samples.iter().map(|s| Resultant::of(s, None)).collect();
-    let pooled: Vec<f64> = samples.concat();
-    let overall = Resultant::of(&pooled, None).mean_length();
+    equal_kappa_of(&each)
+}
+
+/// The same from the resultants of the samples; their weights are the numbers of independent angles.
+pub fn equal_kappa_of(each: &[Resultant]) -> (f64, f64) {
+    let pooled = each.iter().fold(Resultant::default(), |a, r| Resultant {
+        cos: a.cos + r.cos,
+        sin: a.sin + r.sin,
+        weight: a.weight + r.weight,
+    });
+    let overall = pooled.mean_length();
     let chi2 = if overall < 0.45 {
-        stabilised(&each, |r| (1.5f64.sqrt() * r).min(1.0).asin(), |n| 4.0 * (n - 4.0) / 3.0)
+        stabilised(each, |r| (1.5f64.sqrt() * r).min(1.0).asin(), |n| 4.0 * (n - 4.0) / 3.0)
     } else if overall <= 0.7 {
-        stabilised(&each, |r| ((r - 1.089) / 0.258).asinh(), |n| (n - 3.0) / 0.798)
+        stabilised(each, |r| ((r - 1.089) / 0.258).asinh(), |n| (n - 3.0) / 0.798)
     } else {
-        bartlett(&each)
+        bartlett(each)
     };
-    (chi2, chi2_above(chi2, samples.len() as f64 - 1.0))
+    (chi2, chi2_above(chi2, each.len() as f64 - 1.0))
 }
 
 /// Σ wg² − (Σ wg)²/Σw for a transform g of R̄ that makes the variance 1/w.

@@ -8,6 +8,7 @@ pub mod bootstrap;
 pub mod density;
 pub mod effective;
 pub mod equal_kappa;
+mod exchanged;
 pub mod interval;
 pub mod kappa;
 pub mod known_correlation;
@@ -16,11 +17,14 @@ pub mod mardia_watson_wheeler;
 pub mod mean;
 pub mod mixture;
 mod modes;
+mod paired;
+mod rank;
 pub mod rayleigh;
 pub mod rose;
 pub(in crate::science) mod sources;
 pub mod spread;
 mod summary;
+pub mod two_samples;
 pub mod v_test;
 pub mod von_mises;
 pub mod wallraff;
@@ -54,4 +58,6 @@ pub const METHODS: &[&Method] = &[
     &mardia_watson_wheeler::METHOD,
     &wallraff::METHOD,
     &equal_kappa::METHOD,
+    &two_samples::METHOD,
+    &paired::METHOD,
 ];

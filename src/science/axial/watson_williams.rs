@@ -45,12 +45,17 @@ pub struct WatsonWilliams {
 /// Tests samples of circle angles; two or more, none empty.
 pub fn watson_williams(samples: &[&[f64]], kappa_from: KappaFrom) -> WatsonWilliams {
     let each: Vec<Resultant> = samples.iter().map(|s| Resultant::of(s, None)).collect();
+    watson_williams_of(&each, kappa_from)
+}
+
+/// The same from the resultants of the samples; their weights are the numbers of independent angles.
+pub fn watson_williams_of(each: &[Resultant], kappa_from: KappaFrom) -> WatsonWilliams {
     let pooled = each.iter().fold(Resultant::default(), |a, r| Resultant {
         cos: a.cos + r.cos,
         sin: a.sin + r.sin,
         weight: a.weight + r.weight,
     });
-    let (n, q) = (pooled.weight, samples.len() as f64);
+    let (n, q) = (pooled.weight, each.len() as f64);
     let within: f64 = each.iter().map(|r| r.length()).sum();
     let kappa = match kappa_from {
         KappaFrom::Within => inverse_ratio(within / n),

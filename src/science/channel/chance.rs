@@ -6,9 +6,8 @@ use rand::Rng as _;
 use rayon::prelude::*;
 
 use crate::ground::{Method, Point, Seed, Stopped, Symbol, Work};
+use crate::numeric::least_path::CostField;
 use crate::science::axial::sources::{DERIVED, at};
-
-use super::pen::Ground;
 
 pub static METHOD: Method = Method {
     id: "channel.pen-chance",
@@ -41,7 +40,7 @@ const TRIES: usize = 60;
 /// # Errors
 /// [`Stopped`].
 pub fn null_costs(
-    ground: &Ground,
+    ground: &CostField,
     length: f64,
     n: usize,
     seed: Seed,
@@ -86,7 +85,7 @@ pub fn chance(null: &[f64], cost: f64) -> Option<f64> {
 }
 
 /// The middle of the cheapest pixel within [`REACH`]; `None` where all are impassable.
-fn cheapest_near(ground: &Ground, p: Point) -> Option<Point> {
+fn cheapest_near(ground: &CostField, p: Point) -> Option<Point> {
     let middle = |v: f64, d: isize| v.floor() + d as f64 + 0.5;
     (-REACH..=REACH)
         .flat_map(|dr| (-REACH..=REACH).map(move |dc| Point::new(middle(p.x, dc), middle(p.y, dr))))

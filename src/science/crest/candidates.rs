@@ -13,7 +13,7 @@ pub static METHOD: Method = Method {
     id: "crest.curvilinear",
     name: "Sub-pixel crest points",
     question: "Where exactly does a crest run?",
-    formula: "ridge: n = eigenvector of the largest |λ| of the Hessian r_ij = (G_σ ∗ tone)_ij;  t = −(r_x n_x + r_y n_y)/(r_xx n_x² + 2 r_xy n_x n_y + r_yy n_y²);  |t n_x|, |t n_y| ≤ ½.  Bar of half-width w: σ ≥ w/√3, at σ = w/√3 |r″| = (6√3/√(2π)) e^(−3/2) h/w².  Slip face: n = ∇r/|∇r|, the maximum of |∇r| along n by a parabola through three values",
+    formula: "ridge: n = eigenvector of the largest |λ| of the Hessian r_ij = (G_σ ∗ tone)_ij;  t = −(r_x n_x + r_y n_y)/(r_xx n_x² + 2 r_xy n_x n_y + r_yy n_y²);  |t n_x|, |t n_y| ≤ ½.  Bar of half-width w: σ ≥ w/√3, at σ = w/√3 |r″| = (6√3/√(2π)) e^(−3/2) h/w².  Slip face: n = ∇r/|∇r|, the maximum of |∇r| along n by a parabola through three values.  Strength s = √(s_σ (σ₂/σ)^γ s_{σ₂}), σ₂ = 1.5σ, γ = 2 for a ridge and 1 for a step, so that a crest shows at both scales",
     symbols: &[
         Symbol { symbol: "r", meaning: "tone smoothed by a Gaussian of scale σ", unit: "tone" },
         Symbol { symbol: "n", meaning: "unit vector across the crest", unit: "1" },
@@ -117,6 +117,57 @@ pub fn crossings(
         moments.merge(&part);
     }
     Ok((all, moments))
+}
+
+/// (σ₂/σ)^γ: what normalises the response of a scale `ratio` times coarser.
+pub(super) fn confirming_gain(slip_face: bool, ratio: f64) -> f64 {
+    ratio.powi(if slip_face { 1 } else { 2 })
+}
+
+/// Strengths lowered to the geometric mean of themselves and of what a coarser scale shows across the same crest,
+/// both normalised so that an ideal step (or bar) answers alike at every scale: √(s · (σ₂/σ)^γ s₂), γ = 1 for a step
+/// and 2 for a ridge, 0 where the coarser scale shows the other sense.
+///
+/// # Errors
+/// [`Stopped`].
+pub(super) fn confirm(
+    points: &mut [Crossing],
+    image: &Grid<f32>,
+    slip_face: bool,
+    scales: [f64; 2],
+    work: &Work,
+) -> Result<(), Stopped> {
+    let (width, height) = (image.width(), image.height());
+    let kernels = Kernels::new(scales[1]);
+    let gain = confirming_gain(slip_face, scales[1] / scales[0]);
+    let mut strips: Vec<&mut [Crossing]> = Vec::new();
+    let mut left = points;
+    for strip in 0..height.div_ceil(STRIP) {
+        let count = left.partition_point(|p| (p.row as usize) < (strip + 1) * STRIP);
+        let (part, more) = left.split_at_mut(count);
+        strips.push(part);
+        left = more;
+    }
+    strips.into_par_iter().enumerate().try_for_each(|(strip, part)| {
+        if part.is_empty() {
+            return Ok(());
+        }
+        let first = strip * STRIP;
+        let fields = Fields::of(image, &kernels, first, STRIP.min(height - first), work)?;
+        for p in part {
+            let i = (p.row as usize - first + HALO) * width + p.col as usize;
+            let [nx, ny] = p.normal;
+            let seen = if slip_face {
+                f64::from(fields.x[i]) * nx + f64::from(fields.y[i]) * ny
+            } else {
+                let h = hessian(&fields, i);
+                let curve = h.xx * nx * nx + 2.0 * h.xy * nx * ny + h.yy * ny * ny;
+                if p.bright { -curve } else { curve }
+            };
+            p.strength = (p.strength * (gain * seen).max(0.0)).sqrt();
+        }
+        Ok(())
+    })
 }
 
 /// The Hessian at an index of the fields.

@@ -11,7 +11,7 @@ pub static METHOD: Method = Method {
     id: "crest.thresholds",
     name: "Noise floor and hysteresis of crest lines",
     question: "Which responses are more than noise and texture?",
-    formula: "floor = s g √(2 ln(N/p)),  N = A/(2πσ²);  high = max(floor, min(q₉₇ of the wrong sense, 0.85 q₉₀ of the right sense));  low = max(0.6 floor, 0.4 high)",
+    formula: "floor = √(f_σ (σ₂/σ)^γ f_{σ₂}),  f = s g √(2 ln(N/p)),  N = A/(2πσ²);  high = max(floor, min(q₉₇ of the wrong sense, 0.85 q₉₀ of the right sense));  low = max(0.6 floor, 0.4 high)",
     symbols: &[
         Symbol {
             symbol: "s",

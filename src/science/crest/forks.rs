@@ -4,6 +4,7 @@ use statrs::function::factorial::ln_binomial;
 
 use crate::ground::{Azimuth, LocalFrame, Method, Point, Read, Source, Symbol};
 
+use super::frames::OnGround;
 use super::numbers::on_ground;
 use super::{CrestLine, Junction};
 
@@ -63,14 +64,14 @@ pub fn binomial_p(k: usize, n: usize) -> f64 {
 pub fn forks(
     lines: &[CrestLine],
     junctions: &[Junction],
-    frame: LocalFrame,
+    frame: impl OnGround,
     direction: Azimuth,
     reach: f64,
 ) -> Forks {
     let (mut toward, mut away, mut unclear) = (0, 0, 0);
     let (de, dn) = direction.east_north();
     for junction in junctions.iter().filter(|j| j.branches.len() == 1) {
-        match opening(lines, junction, frame, reach) {
+        match opening(lines, junction, frame.frame(junction.at), reach) {
             Some([e, n]) if (e * de + n * dn).abs() >= ALONG => {
                 if e * de + n * dn > 0.0 {
                     toward += 1;
@@ -86,15 +87,15 @@ pub fn forks(
 
 /// The unit vector from the stem into the fork: the two arms that lie closest open it.
 fn opening(lines: &[CrestLine], junction: &Junction, frame: LocalFrame, reach: f64) -> Option<[f64; 2]> {
-    let at = on_ground(&[junction.at], frame)[0];
+    let at = on_ground(&[junction.at], &frame)[0];
     let (branch, end) = *junction.branches.first()?;
     let mut arms = Vec::new();
-    let branch = on_ground(&lines.get(branch)?.line.0, frame);
+    let branch = on_ground(&lines.get(branch)?.line.0, &frame);
     arms.push(match end {
         0 => arm(at, branch.iter().copied(), reach)?,
         _ => arm(at, branch.iter().rev().copied(), reach)?,
     });
-    let through = on_ground(&lines.get(junction.through)?.line.0, frame);
+    let through = on_ground(&lines.get(junction.through)?.line.0, &frame);
     let (near, _) = through
         .iter()
         .enumerate()

@@ -106,8 +106,8 @@ impl<'a> Index<'a> {
 
     /// Points whose pixels lie within `reach` pixels of a pixel, in row order.
     pub fn around(&self, col: u32, row: u32, reach: u32) -> impl Iterator<Item = usize> + '_ {
-        let last = (self.rows.len() as u32).saturating_sub(2).min(row + reach);
-        (row.saturating_sub(reach)..=last).flat_map(move |r| {
+        let end = (self.rows.len() as u32 - 1).min(row + reach + 1);
+        (row.saturating_sub(reach)..end).flat_map(move |r| {
             let line = &self.points[self.rows[r as usize]..self.rows[r as usize + 1]];
             let from = line.partition_point(|p| p.col < col.saturating_sub(reach));
             let to = line.partition_point(|p| p.col <= col + reach);

@@ -1,28 +1,43 @@
 //! Crest lines of bedforms in one picture, and the numbers reviewers ask for: length, spacing, defects.
 
 mod candidates;
+mod decoy;
 mod defects;
+mod edit;
 mod fields;
 mod floor;
 mod forks;
+mod frames;
 mod join;
 mod lines;
 mod link;
+mod meet;
 mod model;
 mod numbers;
+mod pen;
 mod scale;
+mod shift;
 mod simplify;
 mod spacing;
+mod square;
 mod survival;
 mod tone;
 
 pub use candidates::{Crossing, crossings};
 pub use defects::{Defects, defects};
+pub use edit::{CrestEdits, EditGround, Edited, Stroke, StrokeKind, clip, edit};
 pub use forks::{Forks, binomial_p, forks};
+pub use frames::{Frames, OnGround};
 pub use model::{CrestModel, Fit};
-pub use numbers::{CrestNumbers, numbers};
+pub use numbers::{CrestNumbers, length_rose, numbers};
+pub use pen::Pen;
+pub use scale::suited_scale;
+pub use shift::{Shift, ShiftChance, ShiftSettings, ShiftVector, shift};
 pub use spacing::{SpacingOnGround, SpacingSettings, spacing};
+pub use square::detect_on_ground;
 pub use survival::{Survival, kaplan_meier};
+
+use serde::{Deserialize, Serialize};
 
 use crate::ground::{Grid, Method, Point, Polygon, Polyline, Stopped, Work};
 
@@ -30,6 +45,7 @@ use crate::ground::{Grid, Method, Point, Polygon, Polyline, Stopped, Work};
 pub const METHODS: &[&Method] = &[
     &candidates::METHOD,
     &model::METHOD,
+    &decoy::METHOD,
     &floor::METHOD,
     &link::METHOD,
     &numbers::METHOD,
@@ -37,6 +53,9 @@ pub const METHODS: &[&Method] = &[
     &survival::METHOD,
     &defects::METHOD,
     &forks::METHOD,
+    &shift::METHOD,
+    &pen::METHOD,
+    &edit::METHOD,
 ];
 
 /// How crests are looked for.
@@ -102,8 +121,9 @@ pub struct CrestLine {
     /// Pixels. In the slip-face model and for one-sided walks the bright side lies to the left when the
     /// picture's rows run downward.
     pub line: Polyline,
-    /// Share of the line's evidence, 0 to 1: 1 where the response reaches the starting threshold, 0 at the
-    /// lower one and on bridged gaps, averaged over the length. Not a probability.
+    /// Chance, 0 to 1, that the line is a crest and not what the texture of the picture makes of nothing, judged
+    /// by its length and response against lines of the wrong sense. Where no model stands out it is held against
+    /// pixel noise only.
     pub confidence: f64,
     /// At the first and the last point.
     pub ends: [End; 2],
@@ -111,6 +131,39 @@ pub struct CrestLine {
     pub bridged_px: f64,
     /// Whether this is a bright ridge, a dark one or a slip face.
     pub model: CrestModel,
+    /// Where it comes from.
+    pub origin: CrestOrigin,
+    /// Whether the user looked at it and let it stand.
+    pub accepted: bool,
+    /// Length laid by hand, pixels.
+    pub by_hand_px: f64,
+}
+
+/// Where a crest line comes from.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
+#[serde(rename_all = "lowercase")]
+pub enum CrestOrigin {
+    /// By the detector alone.
+    #[default]
+    Traced,
+    /// By the detector, then cut, joined or extended by hand.
+    Edited,
+    /// By hand.
+    Drawn,
+    /// Out of a file.
+    Imported,
+}
+
+impl CrestOrigin {
+    /// One word for tables and layers.
+    pub fn name(self) -> &'static str {
+        match self {
+            Self::Traced => "traced",
+            Self::Edited => "edited",
+            Self::Drawn => "drawn",
+            Self::Imported => "imported",
+        }
+    }
 }
 
 /// A place where lines meet.
@@ -131,17 +184,25 @@ pub struct Crests {
     pub junctions: Vec<Junction>,
     /// The model the lines follow.
     pub model: CrestModel,
-    /// How well each model fits the patch, best first.
+    /// How well each model fits the patch, the one taken where nobody chose first.
     pub fits: Vec<Fit>,
+    /// Whether any model stands out from a symmetric pattern.
+    pub clear: bool,
     /// Direction from dark to bright across most slip faces, radians clockwise from the column axis as the
     /// picture is seen; `None` where both senses are traced.
     pub sense: Option<f64>,
     /// The greatest response noise alone reaches in the patch, in tone per pixel (slip face) or per px².
     pub floor: f64,
+    /// The response that a tenth of the crest points exceed, in the same unit: where it is below 2.4 floors,
+    /// speckle breaks and forks lines.
+    pub strong: f64,
     /// Responses at which lines start and to which they are followed, in the same unit.
     pub thresholds: [f64; 2],
-    /// Scales of the derivatives, pixels.
+    /// Scales of the derivatives, pixels: the one lines are traced at, and the one that confirms them.
     pub scales_px: Vec<f64>,
+    /// Side of the square pixels the lines were traced on, in the finer side of the picture's own; above 1 where
+    /// it was too large and was averaged.
+    pub side_px: f64,
 }
 
 /// Traces the crests inside `outline`. No crest is a result too: `lines` is then empty.
@@ -157,7 +218,7 @@ pub fn detect(
     work.phase("crests", 0);
     let ground = tone::Ground::new(image, outline, settings, work)?;
     let trace = match settings.scale_px.filter(|sigma| sigma.is_finite()) {
-        Some(sigma) => lines::trace(&ground, settings, sigma.clamp(1.0, scale::MOST_PX), work)?,
+        Some(sigma) => lines::trace(&ground, settings, sigma.clamp(1.0, scale::MOST_PX), None, work)?,
         None => scale::choose(&ground, settings, work)?,
     };
     Ok(trace.finished(&ground, settings))

@@ -1,5 +1,7 @@
 //! What a crest looks like in this picture: a bright ridge, a dark one, or the step at a slip face.
 
+use serde::{Deserialize, Serialize};
+
 use crate::ground::{Method, Read, Source, Symbol};
 
 use super::candidates::{hessian, main_curvature};
@@ -26,7 +28,9 @@ pub static METHOD: Method = Method {
         "slip faces of one patch fall to one half of the compass",
     ],
     limits: &[
-        "a sinusoidal pattern fits all models alike: bright ridges are traced then",
+        "a sinusoidal pattern fits all models alike: none stands out below 0.25 or three standard errors √(6/n), n = A/(2πσ²), and bright ridges are traced then",
+        "a model that leads by less than 0.1 does not count as better: bright ridge goes before dark ridge, that before slip face",
+        "one model holds for the whole patch",
         "light from along the crests shows no step",
     ],
     sources: &[Source {
@@ -41,10 +45,14 @@ pub static METHOD: Method = Method {
 };
 
 /// Skewness below which no model stands out from a symmetric pattern.
-pub const CLEAR: f64 = 0.25;
+const CLEAR: f64 = 0.25;
+
+/// Lead in skewness that counts.
+const LEAD: f64 = 0.1;
 
 /// What a crest looks like.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize, Deserialize)]
+#[serde(rename_all = "kebab-case")]
 pub enum CrestModel {
     /// A ridge brighter than both its sides.
     BrightRidge,
@@ -112,18 +120,32 @@ impl Moments {
         (direction, ratio(cube, square, self.count))
     }
 
-    /// All models, best first; a bright ridge before others that fit alike.
-    pub fn fits(&self) -> Vec<Fit> {
+    /// Skewness from which a model stands out at a scale: 0.25, or three standard errors √(6/n) of the skewness
+    /// of n = A/(2πσ²) independent responses, whichever is more.
+    pub fn clear(&self, sigma: f64) -> f64 {
+        let independent = (self.count / (std::f64::consts::TAU * sigma * sigma)).max(1.0);
+        CLEAR.max(3.0 * (6.0 / independent).sqrt())
+    }
+
+    /// All models, best first. One that leads by less than a tenth leads nothing: then, and where none stands
+    /// out, the order is bright ridge, dark ridge, slip face.
+    pub fn fits(&self, sigma: f64) -> Vec<Fit> {
         let bright = -ratio(self.curvature[1], self.curvature[0], self.count);
         let mut fits = vec![
             Fit { model: CrestModel::BrightRidge, skewness: bright },
             Fit { model: CrestModel::DarkRidge, skewness: -bright },
             Fit { model: CrestModel::SlipFace, skewness: self.slip_sense().1 },
         ];
+        let best = fits.iter().map(|fit| fit.skewness).fold(f64::NEG_INFINITY, f64::max);
+        let first = if best < self.clear(sigma) {
+            CrestModel::BrightRidge
+        } else {
+            fits.iter()
+                .find(|fit| fit.skewness >= best - LEAD)
+                .map_or(CrestModel::BrightRidge, |fit| fit.model)
+        };
         fits.sort_by(|a, b| b.skewness.total_cmp(&a.skewness));
-        if fits[0].skewness < CLEAR {
-            fits.sort_by_key(|fit| fit.model != CrestModel::BrightRidge);
-        }
+        fits.sort_by_key(|fit| fit.model != first);
         fits
     }
 }

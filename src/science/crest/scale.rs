@@ -19,9 +19,14 @@ fn spacings(model: CrestModel) -> f64 {
     if model == CrestModel::SlipFace { 20.0 } else { 4.0 * 3f64.sqrt() }
 }
 
+/// Scale of the derivatives that suits a spacing, both in pixels, from 1 px to the widest.
+pub fn suited_scale(model: CrestModel, spacing_px: f64) -> f64 {
+    (spacing_px / spacings(model)).clamp(1.0, MOST_PX)
+}
+
 /// Strong responses stand so many noise floors high at a scale that can be relied on: lines are then followed
 /// well above the noise.
-const RELIABLE: f64 = 2.0;
+const RELIABLE: f64 = 2.4;
 
 /// Coarsest scale as a share of the spacing: neighbours run into each other beyond.
 const COARSEST: f64 = 1.0 / 4.5;
@@ -32,13 +37,11 @@ const COARSEST: f64 = 1.0 / 4.5;
 pub(super) fn choose(ground: &Ground<'_>, settings: &CrestSettings, work: &Work) -> Result<Trace, Stopped> {
     let (mut trace, spacing) = match settings.spacing_px.filter(|s| s.is_finite() && *s > 0.0) {
         Some(spacing) => {
-            let model = match settings.model {
-                Some(model) => model,
-                None => lines::best_model(ground, (spacing / 12.0).clamp(1.0, MOST_PX), work)?,
-            };
+            let (best, sense) = lines::best_model(ground, (spacing / 12.0).clamp(1.0, MOST_PX), work)?;
+            let model = settings.model.unwrap_or(best);
             let settings = CrestSettings { model: Some(model), ..settings.clone() };
-            let sigma = (spacing / spacings(model)).clamp(1.0, MOST_PX);
-            (lines::trace(ground, &settings, sigma, work)?, spacing)
+            let sigma = suited_scale(model, spacing);
+            (lines::trace(ground, &settings, sigma, sense, work)?, spacing)
         }
         None => {
             let trace = sweep(ground, settings, work)?;
@@ -52,7 +55,7 @@ pub(super) fn choose(ground: &Ground<'_>, settings: &CrestSettings, work: &Work)
         if sigma > COARSEST * spacing || sigma > MOST_PX {
             break;
         }
-        trace = lines::trace(ground, &settings, sigma, work)?;
+        trace = lines::trace(ground, &settings, sigma, trace.sense, work)?;
     }
     Ok(trace)
 }
@@ -66,7 +69,7 @@ fn sweep(ground: &Ground<'_>, settings: &CrestSettings, work: &Work) -> Result<T
         if sigma > widest && step > 0 {
             break;
         }
-        let trace = lines::trace(ground, settings, sigma, work)?;
+        let trace = lines::trace(ground, settings, sigma, None, work)?;
         let length = trace.length();
         if length < 4.0 * settings.least_length_scales * sigma {
             finest.get_or_insert(trace);
@@ -84,6 +87,6 @@ fn sweep(ground: &Ground<'_>, settings: &CrestSettings, work: &Work) -> Result<T
     }
     match best.map(|(_, trace)| trace).or(finest) {
         Some(trace) => Ok(trace),
-        None => lines::trace(ground, settings, FINEST, work),
+        None => lines::trace(ground, settings, FINEST, None, work),
     }
 }

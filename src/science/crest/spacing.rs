@@ -5,10 +5,11 @@ use std::f64::consts::FRAC_PI_2;
 
 use rayon::prelude::*;
 
-use crate::ground::{LocalFrame, Method, Point, Polygon, Read, Source, Stopped, Symbol, Work};
+use crate::ground::{Method, Point, Polygon, Read, Source, Stopped, Symbol, Work};
 
 use super::CrestLine;
-use super::numbers::on_ground;
+use super::frames::OnGround;
+use super::numbers::{on_ground, region};
 use super::survival::{Survival, kaplan_meier};
 
 /// The record of crest spacing.
@@ -73,12 +74,12 @@ pub struct SpacingOnGround {
 pub fn spacing(
     lines: &[CrestLine],
     outline: &Polygon,
-    frame: LocalFrame,
+    frame: impl OnGround,
     settings: SpacingSettings,
     work: &Work,
 ) -> Result<SpacingOnGround, Stopped> {
-    let ground: Vec<Vec<Point>> = lines.iter().map(|l| on_ground(&l.line.0, frame)).collect();
-    let region = outline.map(|p| on_ground(&[p], frame)[0]);
+    let ground: Vec<Vec<Point>> = lines.iter().map(|l| on_ground(&l.line.0, &frame)).collect();
+    let region = region(outline, &frame);
     let total: f64 = ground.iter().flat_map(|l| l.windows(2)).map(|w| w[0].distance(w[1])).sum();
     let area = region.area();
     let stereology = (total > 0.0).then(|| area / total);

@@ -38,6 +38,8 @@ pub struct Survival {
     /// Lengths seen whole, and those cut.
     pub whole: usize,
     pub cut: usize,
+    /// The lengths that were cut, ascending.
+    pub cuts: Vec<f64>,
     /// The longest seen, whole or in part.
     pub longest: f64,
     /// Sum of all lengths.
@@ -63,6 +65,7 @@ pub fn kaplan_meier(lengths: &[(f64, bool)]) -> Survival {
         }
         out.whole += ended;
         out.cut += same - ended;
+        out.cuts.extend(std::iter::repeat_n(t, same - ended));
         out.longest = t;
         out.total += t * same as f64;
         i += same;
@@ -110,6 +113,7 @@ mod tests {
     fn a_curve_that_does_not_fall_to_half_has_no_median() {
         let s = kaplan_meier(&[(1.0, true), (2.0, false), (3.0, false)]);
         assert_eq!(s.quantile(0.5), None);
+        assert_eq!((s.cuts.as_slice(), s.cut), ([2.0, 3.0].as_slice(), 2));
         assert_eq!(kaplan_meier(&[]).restricted_mean(), None);
         assert_eq!(kaplan_meier(&[(f64::NAN, true)]).whole, 0);
     }

@@ -2,7 +2,7 @@
 
 use crate::ground::{Axis, Grid, Method, Place, Point, Polygon, Read, Source, Stopped, Symbol, Work};
 
-use super::tensor::{TensorSettings, trend_nodes};
+use super::tensor::{NodeField, TensorSettings, trend_nodes};
 
 /// The record of the scale sweep.
 pub static METHOD: Method = Method {
@@ -44,9 +44,9 @@ pub static METHOD: Method = Method {
 pub const INTEGRATION_RATIO: f64 = 3.0;
 
 /// Fewest nodes that say something about a scale.
-const FEWEST_NODES: usize = 40;
+pub(super) const FEWEST_NODES: usize = 40;
 /// Side of the part of a patch that is looked at, pixels.
-const MOST_SIDE: usize = 2048;
+pub(super) const MOST_SIDE: usize = 2048;
 /// Share of the nodes that must be above the noise before a scale counts as the ground's own.
 const LEAST_SHARE: f64 = 1.0 / 3.0;
 /// How much more coherent another scale must be before the preferred one is given up.
@@ -63,6 +63,30 @@ pub struct ScaleStep {
     pub share: f64,
     /// Mean axis of those nodes.
     pub axis: Option<Axis>,
+    /// Their doubled resultant length; 0 without any.
+    pub resultant_length: f64,
+}
+
+impl ScaleStep {
+    /// What a field of nodes says of its scale.
+    pub fn of(field: &NodeField) -> Self {
+        let n = field.nodes.len() as f64;
+        let noise = 2.0 / (field.effective_count + 1.0);
+        let (mut cos, mut sin, mut passed) = (0.0, 0.0, 0.0f64);
+        for node in field.nodes.iter().filter(|node| node.significant) {
+            cos += node.axis.doubled().cos();
+            sin += node.axis.doubled().sin();
+            passed += 1.0;
+        }
+        Self {
+            gradient_scale_px: field.gradient_scale_px,
+            beyond_noise: field.nodes.iter().map(|node| node.coherence.powi(2)).sum::<f64>() / n.max(1.0)
+                - noise,
+            share: passed / n.max(1.0),
+            axis: (passed > 0.0).then(|| Axis::from_doubled(f64::atan2(sin, cos))),
+            resultant_length: f64::hypot(cos, sin) / passed.max(1.0),
+        }
+    }
 }
 
 /// Coherence at every scale that fits the patch (pixel coordinates of `image`).
@@ -93,20 +117,7 @@ pub fn scale_sweep(
         if field.nodes.len() < FEWEST_NODES {
             break;
         }
-        let n = field.nodes.len() as f64;
-        let noise = 2.0 / (field.effective_count + 1.0);
-        let (mut cos, mut sin, mut passed) = (0.0, 0.0, 0.0);
-        for node in field.nodes.iter().filter(|node| node.significant) {
-            cos += node.axis.doubled().cos();
-            sin += node.axis.doubled().sin();
-            passed += 1.0;
-        }
-        steps.push(ScaleStep {
-            gradient_scale_px: field.gradient_scale_px,
-            beyond_noise: field.nodes.iter().map(|node| node.coherence.powi(2)).sum::<f64>() / n - noise,
-            share: passed / n,
-            axis: (passed > 0.0).then(|| Axis::from_doubled(f64::atan2(sin, cos))),
-        });
+        steps.push(ScaleStep::of(&field));
     }
     Ok(steps)
 }
@@ -129,7 +140,7 @@ pub fn coherent_scale(steps: &[ScaleStep], preferred: Option<f64>) -> Option<f64
 }
 
 /// The middle of a wide patch.
-fn middle(image: &Grid<f32>, patch: &Polygon, place: &Place) -> (Grid<f32>, Polygon, Place) {
+pub(super) fn middle(image: &Grid<f32>, patch: &Polygon, place: &Place) -> (Grid<f32>, Polygon, Place) {
     let (width, height) = (image.width().min(MOST_SIDE), image.height().min(MOST_SIDE));
     if (width, height) == (image.width(), image.height()) {
         return (image.clone(), patch.clone(), place.clone());

@@ -10,7 +10,10 @@ use crate::study::{
     TrendFinding, VerdictFinding, WindFinding,
 };
 
+use super::comparisons::comparisons;
 use super::networks::networks;
+use super::pattern_light;
+use super::populations;
 use super::records;
 use super::regimes::backwards;
 
@@ -26,10 +29,12 @@ pub fn findings_json(sheet: &Sheet, findings: &Findings) -> String {
         "seed": sheet.seed,
         "rasters": findings.rasters.iter().map(raster).collect::<Vec<_>>(),
         "winds": findings.winds.iter().map(wind).collect::<Vec<_>>(),
-        "patches": findings.patches.iter().map(patch).collect::<Vec<_>>(),
+        "patches": findings.patches.iter().map(|p| patch(p, findings)).collect::<Vec<_>>(),
         "together": together(&findings.together),
         "regimes": findings.together.regimes.iter().map(backwards).collect::<Vec<_>>(),
         "networks": networks(findings),
+        "recoveries": pattern_light::recoveries(findings),
+        "comparisons": comparisons(findings),
         "errors": findings.failures.iter().map(|f| json!({ "what": f.what, "why": f.why })).collect::<Vec<_>>(),
     });
     let mut text = serde_json::to_string_pretty(&document).unwrap_or_default();
@@ -59,8 +64,9 @@ fn degrees(axis: Option<Axis>) -> Value {
     json!(axis.map(Axis::deg))
 }
 
-fn patch(p: &PatchFinding) -> Value {
+fn patch(p: &PatchFinding, findings: &Findings) -> Value {
     let metres = p.unit == LengthUnit::Metre;
+    let caveats: Vec<_> = p.cautions.iter().cloned().chain(pattern_light::caveat(findings, p.id)).collect();
     json!({
         "id": p.id, "name": p.name, "raster": p.raster, "fingerprint": p.fingerprint,
         "length_unit": p.unit,
@@ -71,13 +77,16 @@ fn patch(p: &PatchFinding) -> Value {
         "verdicts": p.verdicts.iter().map(verdict).collect::<Vec<_>>(),
         "backwards": p.backwards.as_ref().map(backwards),
         "birth": p.birth.iter().map(sand::birth).collect::<Vec<_>>(),
-        "finding": p.sentence, "cautions": cautions(&p.cautions),
+        "finding": p.sentence, "cautions": caveats,
+        "light": pattern_light::light(p.pattern.light.as_ref()),
         "crests": super::crests::json(&p.crests),
+        "scales": populations::scales(p), "plateaus": populations::plateaus(p),
+        "populations": populations::populations(p),
         "obstacles": p.obstacles.as_ref().map(|o| super::obstacles::json(o, metres)),
     })
 }
 
-fn trend(t: &TrendFinding) -> Value {
+pub(super) fn trend(t: &TrendFinding) -> Value {
     json!({
         "defined": t.defined, "axis_deg": degrees(t.axis), "ci95_half_deg": t.ci95_half_deg,
         "ci95_source": t.ci95_source,
@@ -102,7 +111,7 @@ fn spectrum(s: &SpectrumFinding, metres: bool) -> Value {
     })
 }
 
-fn verdict(v: &VerdictFinding) -> Value {
+pub(super) fn verdict(v: &VerdictFinding) -> Value {
     let classes = |p: [f64; 3]| json!({ "longitudinal": p[0], "oblique": p[1], "transverse": p[2] });
     json!({
         "winds": v.winds, "winds_name": v.winds_name, "refused": v.refused,

@@ -2,12 +2,16 @@
 
 use std::collections::BTreeMap;
 
-use super::crests::crest_layer;
+use super::comparisons::comparison_layers;
+use super::crest_layers::crest_layers;
 use super::network_layers::network_layers;
 use super::obstacles::outcrop_layer;
+use super::populations::population_layer;
 use crate::files::layers::{Column, Geometry, GeometryKind, Layer, Row, Srs, Value};
 use crate::ground::{LengthUnit, Place, Point, Polyline};
-use crate::study::{Findings, Id, NetworkFinding, OpenRaster, PatchFinding, Sheet, Sources, VerdictFinding};
+use crate::study::{
+    ComparisonFinding, Findings, Id, NetworkFinding, OpenRaster, PatchFinding, Sheet, Sources, VerdictFinding,
+};
 
 /// The columns of a table and its rows, without geometry.
 pub struct Table {
@@ -229,11 +233,18 @@ pub fn layers(sheet: &Sheet, findings: &Findings, sources: &Sources) -> Vec<Laye
             // A raster with networks alone has no patch layers.
             let own = own.into_iter().filter(|_| !patches.is_empty());
             own.chain(outcrops)
-                .chain(crest_layer(open, &patches, &srs, &suffix))
+                .chain(population_layer(sheet, open, &patches, &srs, &suffix))
+                .chain(comparison_layers(open, &of_raster(findings, raster), &srs, &suffix))
+                .chain(crest_layers(open, &patches, &srs, &suffix))
                 .chain(network_layers(open, &networks, &srs, &suffix))
                 .collect::<Vec<_>>()
         })
         .collect()
+}
+
+/// The comparisons whose patch lies on a raster.
+fn of_raster(findings: &Findings, raster: Id) -> Vec<&ComparisonFinding> {
+    findings.comparisons.iter().filter(|c| c.rasters[0] == raster).collect()
 }
 
 /// Patches in longitude and latitude, for GeoJSON; only for rasters on Earth.

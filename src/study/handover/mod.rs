@@ -1,6 +1,8 @@
 //! What leaves the program: the findings as JSON, tables and layers, the methods as a page.
 
 mod bodies;
+mod comparisons;
+mod crest_layers;
 mod crests;
 mod json;
 mod layers;
@@ -8,6 +10,8 @@ mod methods;
 mod network_layers;
 mod networks;
 mod obstacles;
+mod pattern_light;
+mod populations;
 mod records;
 mod regimes;
 mod sand;

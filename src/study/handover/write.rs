@@ -6,11 +6,15 @@ use crate::files::layers::{LayerError, write_csv, write_geojson, write_geopackag
 use crate::files::save;
 use crate::study::{Findings, Sheet, Sources};
 
+use super::comparisons::comparison_table;
+use super::crest_layers::{crest_table, lonlat_crests};
 use super::layers::{layers, lonlat_patches, node_table, patch_table, verdict_table, wind_table};
 use super::network_layers::{
     drop_table, junction_table, lonlat_reaches, network_table, profile_table, reach_table, width_table,
 };
 use super::obstacles::{lonlat_outcrops, obstacle_table};
+use super::pattern_light::recovery_table;
+use super::populations::{population_table, scale_table};
 use super::records::calendar_table;
 use super::weighing::{flip_table, sensitivity_table, together_table};
 use super::{bibtex, findings_json};
@@ -58,12 +62,17 @@ pub fn write_all(
         sensitivity_table(findings),
         calendar_table(findings),
         obstacle_table(findings),
+        scale_table(findings),
+        population_table(findings),
+        crest_table(findings, sources),
+        recovery_table(findings),
         network_table(findings),
         reach_table(findings),
         profile_table(findings),
         width_table(findings),
         junction_table(findings),
         drop_table(findings),
+        comparison_table(findings),
     ];
     for table in tables.iter().filter(|t| !t.rows.is_empty()) {
         let name = format!("{}.csv", table.name);
@@ -82,6 +91,10 @@ pub fn write_all(
     if let Some(layer) = lonlat_outcrops(sheet, findings, sources) {
         write_geojson(&folder.join("outcrops.geojson"), &layer)?;
         written.push("outcrops.geojson".into());
+    }
+    if let Some(layer) = lonlat_crests(findings, sources) {
+        write_geojson(&folder.join("crests.geojson"), &layer)?;
+        written.push("crests.geojson".into());
     }
     if let Some(layer) = lonlat_reaches(findings, sources) {
         write_geojson(&folder.join("channels.geojson"), &layer)?;

@@ -3,9 +3,12 @@
 mod body;
 mod calendar;
 mod channels;
+mod crests;
+mod figures;
 mod ground;
 mod judges;
 mod laws;
+mod light;
 mod obstacles;
 mod plate;
 mod regimes;
@@ -41,11 +44,13 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
                 let finding = subject(ui, model, out);
                 obstacles::show(ui, model, finding, out);
             }
-            Page::Trend | Page::Spacing | Page::Verdict | Page::Regimes => {
+            Page::Trend | Page::Light | Page::Spacing | Page::Crests | Page::Verdict | Page::Regimes => {
                 let Some(finding) = subject(ui, model, out) else { return };
                 match model.view.page {
-                    Page::Trend => trend::show(ui, model, finding),
+                    Page::Trend => trend::show(ui, model, finding, out),
+                    Page::Light => light::show(ui, model, finding, out),
                     Page::Spacing => spacing::show(ui, model, finding),
+                    Page::Crests => crests::show(ui, model, finding, out),
                     Page::Regimes => regimes::show(ui, model, finding, out),
                     _ => verdict::show(ui, model, finding, out),
                 }

@@ -29,11 +29,16 @@ pub fn show(ui: &mut Ui, model: &Model, out: &mut Commands) {
 }
 
 fn options(ui: &mut Ui, model: &Model, choice: &mut PlateChoice) {
-    ui.horizontal(|ui| {
+    ui.horizontal_wrapped(|ui| {
         ui.radio_value(&mut choice.motif, Motif::Patch, "Selected patch");
+        ui.radio_value(&mut choice.motif, Motif::Crests, "Its crests");
         ui.radio_value(&mut choice.motif, Motif::Network, "Selected network");
         ui.radio_value(&mut choice.motif, Motif::Overview, "Whole raster");
     });
+    if choice.motif == Motif::Patch {
+        ui.checkbox(&mut choice.flow, "Trend as a flow texture")
+            .on_hover_text("Noise drawn out along the trend, in place of strokes.");
+    }
     ui.horizontal(|ui| {
         for format in Format::ALL {
             ui.radio_value(&mut choice.format, format, format.ending().to_uppercase());

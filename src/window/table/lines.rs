@@ -7,7 +7,7 @@ use crate::ground::{Bounds, Network, Point, Reach, ReachOrigin};
 use crate::study::NetworkFinding;
 
 /// How far a simplified line may lie from the true one, screen points.
-const SLACK: f64 = 0.6;
+pub const SLACK: f64 = 0.6;
 /// Basins smaller than this on the screen have no outline.
 const LEAST_BASIN: f64 = 14.0;
 
@@ -141,17 +141,17 @@ fn ranks(network: &Network) -> Vec<u32> {
     network.reaches.iter().map(rank).collect()
 }
 
-fn bounds(line: &[Point]) -> Bounds {
+pub fn bounds(line: &[Point]) -> Bounds {
     let far = Point::new(f64::INFINITY, f64::INFINITY);
     Bounds::of(line.iter().copied()).unwrap_or(Bounds { min: far, max: far })
 }
 
-fn meet(a: &Bounds, b: &Bounds) -> bool {
+pub fn meet(a: &Bounds, b: &Bounds) -> bool {
     a.min.x <= b.max.x && a.max.x >= b.min.x && a.min.y <= b.max.y && a.max.y >= b.min.y
 }
 
 /// The line with as few of its points as keep it within `slack` (Ramer 1972; Douglas & Peucker 1973).
-fn simplified(line: &[Point], slack: f64) -> Vec<Point> {
+pub fn simplified(line: &[Point], slack: f64) -> Vec<Point> {
     if line.len() <= 2 {
         return line.to_vec();
     }

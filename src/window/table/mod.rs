@@ -1,9 +1,13 @@
 //! The table: the raster inside a printed-map margin, with everything that lies on it. It draws from
 //! the model and answers with commands.
 
+mod crest_lines;
+mod crests;
 mod draw;
 mod fields;
+mod flow;
 mod hand;
+mod hatch;
 mod ink;
 mod lens;
 mod lines;
@@ -34,7 +38,9 @@ use pick::Corner;
 pub struct TableState {
     tiles: tiles::TileTextures,
     fields: fields::Fields,
+    flow: flow::FlowTextures,
     charts: networks::Charts,
+    crests: crests::Charts,
     drag: Option<Drag>,
     /// The corner in hand, for keys.
     corner: Option<Corner>,
@@ -175,8 +181,13 @@ fn paint(painter: &Painter, response: &Response, table: &Table<'_>, state: &mut 
     if layers.graticule {
         draw::crosses(&inside, &graticule.crosses, ink);
     }
-    if layers.strokes {
+    if layers.flow {
+        state.flow.draw(&inside, table);
+    } else if layers.strokes {
         draw::strokes(&inside, &state.fields.on_screen(table), ink);
+    }
+    if layers.crests {
+        state.crests.draw(&inside, table);
     }
     if layers.networks {
         state.charts.draw(&inside, table);
@@ -224,6 +235,13 @@ fn empty(painter: &Painter, outer: Rect, frame: Rect, ink: &Ink, text: &str) {
     );
     let place = Align2::CENTER_CENTER.anchor_size(frame.center(), galley.size());
     painter.galley(place.min, galley, ink.soft);
+}
+
+impl TableState {
+    /// Whether nothing that was asked for in the background is still to come for the view last drawn.
+    pub fn is_settled(&self) -> bool {
+        self.flow.is_settled()
+    }
 }
 
 impl std::fmt::Debug for TableState {

@@ -7,7 +7,9 @@ use ventifact::plate::map::{Picture, toned};
 use ventifact::study::{
     BuildingFinding, SpectrumPicture, TheoryFinding, Tone, TrendFinding, VerdictFinding, WindFinding,
 };
-use ventifact::study::{DriftFinding, Id, ModeFinding, Node, PatchFinding, RasterFinding, SpectrumFinding};
+use ventifact::study::{
+    DriftFinding, Id, ModeFinding, Node, PatchFinding, PatternFinding, RasterFinding, SpectrumFinding,
+};
 
 /// A trend about `axis` with the given spread of the rose.
 pub fn trend(axis: f64, spread: f64) -> TrendFinding {
@@ -344,6 +346,7 @@ pub fn patch_finding(reach: &Reach) -> PatchFinding {
         ],
         birth: Vec::new(),
             crests: Err("not traced".into()),
+            pattern: PatternFinding::default(),
             obstacles: None,
     }
 }

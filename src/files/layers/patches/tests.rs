@@ -7,7 +7,7 @@ use proptest::prelude::*;
 use super::*;
 use crate::assert_close;
 use crate::files::layers::{Column, GeometryKind, Layer, Row, Srs, Value, write_geojson, write_geopackage};
-use crate::ground::{Affine, Body, LatitudeKind, Projection};
+use crate::ground::{Affine, Body, Frame, LatitudeKind, LonLat, Projection};
 
 struct Folder(tempfile::TempDir);
 

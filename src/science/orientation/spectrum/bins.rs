@@ -1,6 +1,6 @@
 //! The frequency bins of one window size: where they lie on the ground, and which are looked at.
 
-use crate::ground::LocalFrame;
+use crate::ground::{Axis, LocalFrame};
 
 /// One bin of the half-plane, column frequency ≥ 0.
 #[derive(Clone, Copy, Debug)]
@@ -13,6 +13,8 @@ pub(super) struct Bin {
     pub ln_f: f64,
     /// Which axis line the bin lies on, to within the taper's width.
     pub line: Option<usize>,
+    /// Whether a peak is looked for here.
+    pub sought: bool,
 }
 
 /// Window and padded size, and the bins within the band.
@@ -54,7 +56,7 @@ impl Bins {
                 if trusted && f >= band[0] / BELOW && f <= band[1] {
                     // Within one bin of the unpadded transform.
                     let line = (0..2).find(|i| pixel[1 - i].abs() * window[1 - i] as f64 <= 1.0 + 1e-9);
-                    all.push(Bin { index: kc * rows + kr, pixel, ln_f: f.ln(), line });
+                    all.push(Bin { index: kc * rows + kr, pixel, ln_f: f.ln(), line, sought: true });
                 }
             }
         }
@@ -65,13 +67,24 @@ impl Bins {
         Self { window, padded, all, band_from, band_to }
     }
 
+    /// Peaks are looked for only where the trend lies within so many degrees of an axis.
+    pub fn along(mut self, frame: LocalFrame, trend: Option<(Axis, f64)>) -> Self {
+        if let Some((axis, within)) = trend {
+            for bin in &mut self.all {
+                let (east, north) = frame.gradient(bin.pixel[0], bin.pixel[1]);
+                bin.sought = Axis::from_east_north(east, north).perpendicular().separation(axis) <= within;
+            }
+        }
+        self
+    }
+
     pub fn band(&self) -> &[Bin] {
         &self.all[self.band_from..self.band_to]
     }
 
-    /// Number of independent bins in the band: as many as the unpadded transform has.
+    /// Number of independent bins looked at in the band: as many as the unpadded transform has.
     pub fn independent(&self) -> f64 {
         let padding = (self.padded[0] * self.padded[1]) as f64 / (self.window[0] * self.window[1]) as f64;
-        (self.band_to - self.band_from) as f64 / padding
+        self.band().iter().filter(|b| b.sought).count() as f64 / padding
     }
 }

@@ -1,6 +1,6 @@
 //! Is there a periodic texture at all? Mean power over background, and the chance of its highest peak.
 
-use crate::ground::{LocalFrame, Stopped, Work};
+use crate::ground::{Axis, LocalFrame, Stopped, Work};
 use crate::numeric::fft::PowerPlan;
 use crate::numeric::tail::chi2_above;
 
@@ -29,11 +29,12 @@ pub(super) fn survey(
     window: [usize; 2],
     frame: LocalFrame,
     band: [f64; 2],
+    trend: Option<(Axis, f64)>,
     work: &Work,
 ) -> Result<Option<Survey>, Stopped> {
     let windows = scene.windows(window, MOST_WINDOWS, work)?;
-    let bins = Bins::new(window, window, frame, band);
-    if windows.origins.is_empty() || bins.band().is_empty() {
+    let bins = Bins::new(window, window, frame, band).along(frame, trend);
+    if windows.origins.is_empty() || !bins.band().iter().any(|b| b.sought) {
         return Ok(None);
     }
     let rings = Rings::new(&bins, frame, None);
@@ -58,7 +59,8 @@ pub(super) fn survey(
         return Ok(None);
     }
     let independent_windows = windows.independent();
-    let Some(peak) = (bins.band_from..bins.band_to).max_by(|a, b| sum[*a].total_cmp(&sum[*b])) else {
+    let sought = (bins.band_from..bins.band_to).filter(|i| bins.all[*i].sought);
+    let Some(peak) = sought.max_by(|a, b| sum[*a].total_cmp(&sum[*b])) else {
         return Ok(None);
     };
     let ln_p = ln_global_p(sum[peak] / taken as f64, independent_windows, bins.independent());

@@ -68,7 +68,7 @@ pub(super) fn measure(
     let mut band = scale.band(size, settings);
     // A window fitted to a long spacing may hold fewer than three cycles of it.
     band[0] = band[0].min((seen.ln_f - STRETCH).exp());
-    let bins = Bins::new(window, padded, scale.frame, band);
+    let bins = Bins::new(window, padded, scale.frame, band).along(scale.frame, scale.trend);
     if windows.origins.is_empty() || bins.band().is_empty() {
         return Ok(Spectrum::default());
     }
@@ -163,7 +163,8 @@ fn locate(
 ) -> Option<(Peak, usize)> {
     let bins = &mean.bins;
     let near = &bins.all[stretch.from..stretch.to];
-    let top = (stretch.from..stretch.to).max_by(|a, b| mean.ratio[*a].total_cmp(&mean.ratio[*b]))?;
+    let sought = (stretch.from..stretch.to).filter(|i| bins.all[*i].sought);
+    let top = sought.max_by(|a, b| mean.ratio[*a].total_cmp(&mean.ratio[*b]))?;
     let bin = ground_bin(bins, mean.frame);
     let tested = readings.len() as f64;
     let local = near.iter().filter(|b| close(b, stretch, bins)).count() as f64 * bins.independent()
@@ -272,7 +273,7 @@ fn others(
     significance: f64,
 ) -> Vec<(Axis, f64, f64)> {
     let bins = &mean.bins;
-    let mut order: Vec<usize> = (bins.band_from..bins.band_to).collect();
+    let mut order: Vec<usize> = (bins.band_from..bins.band_to).filter(|i| bins.all[*i].sought).collect();
     order.sort_by(|a, b| mean.ratio[*b].total_cmp(&mean.ratio[*a]).then(a.cmp(b)));
     let mut taken: Vec<(Axis, f64, f64)> = vec![(first.axis, first.spacing, first.ratio)];
     for i in order {

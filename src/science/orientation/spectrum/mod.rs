@@ -6,6 +6,7 @@ mod detect;
 mod locate;
 mod measure;
 mod picture;
+pub mod shares;
 mod windows;
 
 pub use detect::{ln_global_p, ratio_floor};
@@ -151,14 +152,29 @@ pub fn spectrum(
     settings: &SpectrumSettings,
     work: &Work,
 ) -> Result<Spectrum, Stopped> {
+    spectrum_along(image, patch, place, settings, None, work)
+}
+
+/// The same with the peak sought only where the trend lies within so many degrees of an axis.
+///
+/// # Errors
+/// [`Stopped`].
+pub fn spectrum_along(
+    image: &Grid<f32>,
+    patch: &Polygon,
+    place: &Place,
+    settings: &SpectrumSettings,
+    trend: Option<(Axis, f64)>,
+    work: &Work,
+) -> Result<Spectrum, Stopped> {
     let tone = if settings.logarithm { Tone::logarithm(image) } else { Tone::Linear };
     let Some(scene) = Scene::new(image, patch, tone, place) else { return Ok(no_window()) };
     let Some(frame) = place.local_frame(scene.centre()) else { return Ok(no_window()) };
-    let scale = Scale::new(frame);
+    let scale = Scale { trend, ..Scale::new(frame) };
     let mut surveys = Vec::new();
     for size in sizes(&scene, &scale, settings, work)? {
         let band = scale.band(size, settings);
-        surveys.extend(survey(&scene, scale.window(size), frame, band, work)?.map(|s| (size, s)));
+        surveys.extend(survey(&scene, scale.window(size), frame, band, trend, work)?.map(|s| (size, s)));
     }
     let tried = surveys.len() as f64;
     let Some((size, best)) = surveys.into_iter().min_by(|a, b| a.1.ln_p.total_cmp(&b.1.ln_p)) else {
@@ -192,13 +208,15 @@ struct Scale {
     fine: f64,
     /// Column and row step in fine pixels.
     pixel: [f64; 2],
+    /// Peaks are sought within so many degrees of this trend.
+    trend: Option<(Axis, f64)>,
 }
 
 impl Scale {
     fn new(frame: LocalFrame) -> Self {
         let size = frame.pixel_size();
         let fine = size[0].min(size[1]);
-        Self { frame, fine, pixel: size.map(|s| s / fine) }
+        Self { frame, fine, pixel: size.map(|s| s / fine), trend: None }
     }
 
     /// Samples of a window `size` fine pixels on a side, square on the ground and quick to transform.

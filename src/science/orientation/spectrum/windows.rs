@@ -71,6 +71,11 @@ impl<'a> Scene<'a> {
         self.size
     }
 
+    /// Upper left corner of a window of the box, in pixel coordinates of the raster.
+    pub fn corner(&self, origin: [usize; 2]) -> Point {
+        self.middle(origin, [0, 0])
+    }
+
     pub fn centre(&self) -> Point {
         self.middle([0, 0], self.size)
     }

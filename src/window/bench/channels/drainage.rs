@@ -4,11 +4,11 @@ use std::sync::Arc;
 
 use egui::{Grid, RichText, Slider, Ui};
 
-use super::figures;
 use crate::desk::{Command, DrawCommand, Model, NetworkCommand, channel_facts, channels};
 use crate::ground::Network;
 use crate::plate::{drop_test, numbers, threshold_maps};
 use crate::study::{DrainageFinding, NetworkEntry, NetworkFinding};
+use crate::window::bench::figures;
 use crate::window::controls::{self, Commands, heading, look, optional_number, quiet};
 use crate::window::theme;
 

@@ -4,14 +4,13 @@ use std::sync::Arc;
 
 use egui::{Grid, RichText, Ui};
 
-use super::figures;
 use crate::desk::{Model, channel_facts, planform_facts};
 use crate::plate::{
     chi_plot, flow_ranges, hypsometric_curve, junction_rose, link_rose, long_profile, network_compare,
     numbers, order_plot, pattern_bars, planform_sketch, slope_area, width_plot,
 };
 use crate::study::{Id, NetworkFinding};
-use crate::window::bench::say;
+use crate::window::bench::{figures, say};
 use crate::window::controls::{self, caution, heading, look};
 use crate::window::theme;
 

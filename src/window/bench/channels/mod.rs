@@ -2,7 +2,6 @@
 //! where channels begin, then what is measured on them.
 
 mod drainage;
-mod figures;
 mod measures;
 mod picks;
 

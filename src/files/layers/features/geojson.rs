@@ -1,15 +1,21 @@
-//! Polygons from GeoJSON (RFC 7946).
+//! Polygons and lines from GeoJSON (RFC 7946).
 
 use std::path::Path;
 
 use serde_json::{Map, Value as Json};
 
-use crate::ground::{Point, Polygon};
+use crate::ground::{Point, Polygon, Polyline};
 
-use super::super::LayerError;
-use super::{Found, Meaning};
+use super::super::{Geometry, LayerError};
+use super::{Feature, Meaning, Wanted};
 
-pub(super) fn features(path: &Path, bytes: &[u8], notes: &mut Vec<String>) -> Result<Vec<Found>, LayerError> {
+pub(super) fn features(
+    path: &Path,
+    bytes: &[u8],
+    wanted: Wanted,
+    notes: &mut Vec<String>,
+) -> Result<Vec<Feature>, LayerError> {
+    let (one, many, kinds) = wanted.words();
     // Some editors put a byte order mark first.
     let bytes = bytes.strip_prefix(b"\xEF\xBB\xBF").unwrap_or(bytes);
     let root: Json =
@@ -21,8 +27,8 @@ pub(super) fn features(path: &Path, bytes: &[u8], notes: &mut Vec<String>) -> Re
             Some(list) => list.iter().collect(),
             None => return Err(content("the feature collection has no list of features".to_owned())),
         },
-        Some("Feature" | "Polygon" | "MultiPolygon") => vec![&root],
-        Some(other) => return Err(content(format!("a “{other}” holds no patches; expected polygons"))),
+        Some("Feature" | "Polygon" | "MultiPolygon" | "LineString" | "MultiLineString") => vec![&root],
+        Some(other) => return Err(content(format!("a “{other}” holds no {many}; expected {kinds}"))),
         None => return Err(content("this is no GeoJSON: it has no “type”".to_owned())),
     };
     let mut found = Vec::new();
@@ -43,18 +49,21 @@ pub(super) fn features(path: &Path, bytes: &[u8], notes: &mut Vec<String>) -> Re
             continue;
         };
         let coordinates = geometry.get("coordinates").unwrap_or(&Json::Null);
-        let parts = match text(geometry, "type") {
-            Some("Polygon") => vec![polygon(coordinates).map_err(fail)?],
-            Some("MultiPolygon") => array(coordinates, "parts")
-                .and_then(|parts| parts.iter().map(polygon).collect())
-                .map_err(fail)?,
-            kind => {
-                let kind = kind.unwrap_or("geometry without type");
-                notes.push(format!("{label}: a {kind} is no patch and was left out"));
-                continue;
-            }
+        let read = match text(geometry, "type") {
+            Some("Polygon") => Some(polygon(coordinates).map(Geometry::Polygon)),
+            Some("MultiPolygon") => Some(several(coordinates, polygon).map(Geometry::MultiPolygon)),
+            Some("LineString") => Some(line(coordinates).map(Geometry::LineString)),
+            Some("MultiLineString") => Some(several(coordinates, line).map(Geometry::MultiLineString)),
+            _ => None,
         };
-        found.push(Found { label, name, tags: properties.map(tags).unwrap_or_default(), parts, meaning });
+        let shape = read.transpose().map_err(fail)?.filter(|shape| wanted.takes(shape.kind()));
+        let Some(shape) = shape else {
+            let kind = text(geometry, "type").unwrap_or("geometry without type");
+            notes.push(format!("{label}: a {kind} is no {one} and was left out"));
+            continue;
+        };
+        let tags = properties.map(tags).unwrap_or_default();
+        found.push(Feature { label, name, tags, geometry: shape, meaning });
     }
     Ok(found)
 }
@@ -89,6 +98,14 @@ fn text<'a>(json: &'a Json, key: &str) -> Option<&'a str> {
 
 fn array<'a>(json: &'a Json, what: &str) -> Result<&'a Vec<Json>, String> {
     json.as_array().ok_or_else(|| format!("its {what} are not a list"))
+}
+
+fn several<T>(json: &Json, part: impl Fn(&Json) -> Result<T, String>) -> Result<Vec<T>, String> {
+    array(json, "parts")?.iter().map(part).collect()
+}
+
+fn line(json: &Json) -> Result<Polyline, String> {
+    array(json, "positions")?.iter().map(position).collect::<Result<_, _>>().map(Polyline)
 }
 
 fn polygon(json: &Json) -> Result<Polygon, String> {

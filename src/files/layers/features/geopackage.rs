@@ -1,4 +1,4 @@
-//! Polygons from the feature tables of a GeoPackage.
+//! Polygons and lines from the feature tables of a GeoPackage.
 
 use std::path::Path;
 
@@ -7,8 +7,11 @@ use rusqlite::{Connection, OpenFlags, Row};
 
 use crate::ground::Place;
 
-use super::super::{Geometry, LayerError, wkb, wkt};
-use super::{Found, Meaning};
+use super::super::{LayerError, wkb, wkt};
+use super::{Feature, Meaning, Wanted};
+
+/// How layers of crest lines are named; where there are such, other lines are not looked at.
+const CRESTS: &str = "crests";
 
 /// One feature table.
 struct Table {
@@ -26,20 +29,28 @@ pub(super) fn features(
     path: &Path,
     place: &Place,
     epsg: Option<u32>,
+    wanted: Wanted,
     notes: &mut Vec<String>,
-) -> Result<Vec<Found>, LayerError> {
+) -> Result<Vec<Feature>, LayerError> {
     let fail =
         |source| LayerError::Database { path: path.to_owned(), doing: "reading the GeoPackage", source };
     let flags = OpenFlags::SQLITE_OPEN_READ_ONLY | OpenFlags::SQLITE_OPEN_NO_MUTEX;
     let database = Connection::open_with_flags(path, flags).map_err(fail)?;
     let mut found = Vec::new();
-    for table in tables(&database).map_err(fail)? {
+    let mut all = tables(&database).map_err(fail)?;
+    // A package handed over by this program holds trend strokes and channels too.
+    let of_crests = all.iter().filter(|table| table.name.starts_with(CRESTS)).count();
+    if wanted == Wanted::Lines && (1..all.len()).contains(&of_crests) {
+        all.retain(|table| table.name.starts_with(CRESTS));
+        notes.push("only its layers of crests were read".to_owned());
+    }
+    for table in all {
         let meaning = meaning(&table, place, epsg).map_err(|problem| LayerError::Feature {
             path: path.to_owned(),
             feature: format!("layer “{}”", table.name),
             problem,
         })?;
-        read_table(path, &database, &table, meaning, notes, &mut found)?;
+        read_table(path, &database, &table, meaning, wanted, notes, &mut found)?;
     }
     Ok(found)
 }
@@ -113,8 +124,9 @@ fn read_table(
     database: &Connection,
     table: &Table,
     meaning: Meaning,
+    wanted: Wanted,
     notes: &mut Vec<String>,
-    found: &mut Vec<Found>,
+    found: &mut Vec<Feature>,
 ) -> Result<(), LayerError> {
     let fail =
         |source| LayerError::Database { path: path.to_owned(), doing: "reading the GeoPackage", source };
@@ -144,11 +156,11 @@ fn read_table(
             })?,
             _ => None,
         };
-        let parts = match geometry {
-            Some(Geometry::Polygon(polygon)) => vec![polygon],
-            Some(Geometry::MultiPolygon(parts)) => parts,
+        let geometry = match geometry {
+            Some(geometry) if wanted.takes(geometry.kind()) => geometry,
             Some(other) => {
-                notes.push(format!("{label}: a {:?} is no patch and was left out", other.kind()));
+                let (one, ..) = wanted.words();
+                notes.push(format!("{label}: a {:?} is no {one} and was left out", other.kind()));
                 continue;
             }
             None => {
@@ -157,7 +169,7 @@ fn read_table(
             }
         };
         let tags = tags_column.and_then(|column| words(row, column)).map(|text| super::split_tags(&text));
-        found.push(Found { label, name, tags: tags.unwrap_or_default(), parts, meaning });
+        found.push(Feature { label, name, tags: tags.unwrap_or_default(), geometry, meaning });
     }
     Ok(())
 }
